@@ -1,0 +1,254 @@
+"""The case file as typed tables: which keys there are, their units and ranges.
+
+Every table is strict: no unknown key, no text where a number belongs, no
+``nan``. A key may carry any unit suffix of its kind (``temperature_f`` for
+``temperature_c``); it is converted here, so that the rest sees one name.
+"""
+
+from __future__ import annotations
+
+from datetime import datetime  # noqa: TC003 (pydantic reads the annotation at run time)
+from typing import Annotated, Any, Literal
+
+from pydantic import BaseModel, ConfigDict, Field, ValidationInfo, field_validator, model_validator
+
+from orolift.sources.units import UNITS, alternatives, converted, suffix_of
+
+Share = Annotated[float, Field(ge=0.0, le=1.0)]
+Bearing = Annotated[float, Field(ge=0.0, le=360.0)]
+Longitude = Annotated[float, Field(ge=-180.0, le=360.0)]
+Latitude = Annotated[float, Field(ge=-89.9, le=89.9)]
+Elevation = Annotated[float, Field(ge=-430.0, le=9000.0)]
+Name = Annotated[str, Field(min_length=1, max_length=200)]
+
+
+def is_number(value: object) -> bool:
+    """Whether a TOML value is a number (true and false are not)."""
+    return isinstance(value, int | float) and not isinstance(value, bool)
+
+
+class Table(BaseModel):
+    """One table of the case file."""
+
+    model_config = ConfigDict(strict=True, extra="forbid", allow_inf_nan=False, frozen=True)
+
+    @model_validator(mode="before")
+    @classmethod
+    def _other_units(cls, data: Any, info: ValidationInfo) -> Any:
+        """Convert keys given in another unit to the one this table is written in."""
+        if not isinstance(data, dict):
+            return data
+        out = {key: value for key, value in data.items() if key in cls.model_fields}
+        for key, value in data.items():
+            if key in out:
+                continue
+            wanted = next((name for name in alternatives(key) if name in cls.model_fields), None)
+            if wanted is None:
+                out[key] = value
+                continue
+            if wanted in out:
+                raise ValueError(f"{wanted} and {key} say the same thing; keep one of them")
+            out[wanted] = value
+            if is_number(value):
+                parts = suffix_of(key)
+                target = suffix_of(wanted)
+                if parts is not None and target is not None:
+                    out[wanted] = converted(float(value), parts[1], target[1])
+                if isinstance(info.context, dict):
+                    info.context[(cls.__name__, wanted)] = f"{key} = {value}"
+        return out
+
+
+def exactly_one(table: Table, keys: tuple[str, ...], what: str) -> None:
+    """Refuse a table with none or several of the keys that say one thing."""
+    given = [key for key in keys if getattr(table, key) is not None]
+    if len(given) != 1:
+        have = "none is given" if not given else f"{' and '.join(given)} are given"
+        raise ValueError(f"{what}: exactly one of {', '.join(keys)} is needed, and {have}")
+
+
+def together(table: Table, keys: tuple[str, ...]) -> None:
+    """Refuse a table in which only some of the keys that belong together are given."""
+    given = [key for key in keys if getattr(table, key) is not None]
+    if given and len(given) < len(keys):
+        missing = [key for key in keys if key not in given]
+        raise ValueError(f"{given[0]} needs {' and '.join(missing)} beside it")
+
+
+class Place(Table):
+    """A point: longitude and latitude, or easting and northing in the raster's CRS."""
+
+    longitude: Longitude | None = Field(default=None, description="degrees east")
+    latitude: Latitude | None = Field(default=None, description="degrees north")
+    easting_m: float | None = Field(default=None, description="in the raster's coordinate system")
+    northing_m: float | None = Field(default=None, description="in the raster's coordinate system")
+
+    @model_validator(mode="after")
+    def _one_place(self) -> Place:
+        together(self, ("longitude", "latitude"))
+        together(self, ("easting_m", "northing_m"))
+        exactly_one(self, ("longitude", "easting_m"), "place")
+        return self
+
+
+class Terrain(Table):
+    """Where the ground comes from."""
+
+    elevation_file: Name | None = Field(default=None, description="any raster GDAL reads")
+    elevation_unit: Literal["m", "ft"] | None = Field(
+        default=None, description="unit of the raster's heights; default: the unit the raster declares, else metres"
+    )
+    ridge_km_m: list[list[float]] | None = Field(default=None, description="ridge by hand: [km, m] each")
+    ridge_file: Name | None = Field(default=None, description="ridge by hand as CSV: distance_km,elevation_m")
+    drawn_from_deg: Bearing | None = Field(
+        default=None, description="bearing a hand-entered ridge is drawn from, default wind_from_deg"
+    )
+    longitude: Longitude | None = Field(default=None, description="of a hand-entered crest, degrees east")
+    latitude: Latitude | None = Field(default=None, description="of a hand-entered crest, degrees north")
+
+    @field_validator("ridge_km_m")
+    @classmethod
+    def _pairs(cls, points: list[list[float]] | None) -> list[list[float]] | None:
+        for number, point in enumerate(points or [], start=1):
+            if len(point) != 2:
+                raise ValueError(
+                    f"point {number} has {len(point)} numbers; each needs two, [distance in km, height in m]"
+                )
+        return points
+
+    @model_validator(mode="after")
+    def _one_terrain(self) -> Terrain:
+        exactly_one(self, ("elevation_file", "ridge_km_m", "ridge_file"), "terrain")
+        together(self, ("longitude", "latitude"))
+        if self.elevation_file is None and self.elevation_unit is not None:
+            raise ValueError("elevation_unit belongs to elevation_file; a ridge carries its units in its keys")
+        if self.elevation_file is not None:
+            for key in ("drawn_from_deg", "longitude"):
+                if getattr(self, key) is not None:
+                    raise ValueError(f"{key} belongs to a hand-entered ridge; with elevation_file leave it out")
+        return self
+
+
+class TransectTable(Table):
+    """How the line is cut from the raster; only with elevation_file."""
+
+    through: Place | None = Field(default=None, description="default: through the first site, else the highest cell")
+    upwind_km: Annotated[float, Field(ge=20.0, le=1000.0)] = 120.0
+    downwind_km: Annotated[float, Field(ge=10.0, le=1000.0)] = 80.0
+    swath_km: Annotated[float, Field(ge=0.0, le=100.0)] = 10.0
+
+
+class Station(Table):
+    """A station report upwind of the range."""
+
+    elevation_m: Elevation
+    temperature_c: Annotated[float, Field(ge=-80.0, le=60.0)]
+    dew_point_c: Annotated[float, Field(ge=-100.0, le=45.0)] | None = None
+    relative_humidity_percent: Annotated[float, Field(gt=0.0, le=100.0)] | None = Field(
+        default=None, description="over liquid water; may stand for dew_point_c"
+    )
+    pressure_hpa: Annotated[float, Field(ge=300.0, le=1090.0)] | None = Field(
+        default=None, description="at the station's height, not reduced to sea level"
+    )
+    qnh_hpa: Annotated[float, Field(ge=860.0, le=1090.0)] | None = Field(
+        default=None, description="altimeter setting; may stand for pressure_hpa"
+    )
+    wind_kt: Annotated[float, Field(ge=0.0, le=250.0)] = Field(description="speed, never negative")
+    wind_from_deg: Bearing | None = Field(default=None, description="default: wind_from_deg of [incoming]")
+
+    @model_validator(mode="after")
+    def _one_each(self) -> Station:
+        exactly_one(self, ("dew_point_c", "relative_humidity_percent"), "humidity")
+        exactly_one(self, ("pressure_hpa", "qnh_hpa"), "pressure")
+        return self
+
+
+class Incoming(Table):
+    """The air before the range."""
+
+    wind_from_deg: Bearing = Field(description="bearing the wind comes from; the transect runs along it")
+    station: Station | None = None
+    sounding_file: Name | None = Field(default=None, description="CSV with units in the column names")
+    crest_wind_kt: Annotated[float, Field(ge=0.0, le=250.0)] | None = Field(
+        default=None, description="wind at crest height"
+    )
+    crest_wind_from_deg: Bearing | None = Field(default=None, description="default: wind_from_deg")
+    lapse_rate_c_per_km: Annotated[float, Field(ge=-10.0, le=11.0)] | None = Field(
+        default=None, description="above the station; default 6.5"
+    )
+
+    @model_validator(mode="after")
+    def _one_source(self) -> Incoming:
+        exactly_one(self, ("station", "sounding_file"), "incoming air")
+        if self.sounding_file is not None:
+            for key in ("crest_wind_kt", "crest_wind_from_deg", "lapse_rate_c_per_km"):
+                if getattr(self, key) is not None:
+                    raise ValueError(f"{key} belongs to a station; a sounding brings its own, leave the key out")
+        if self.crest_wind_from_deg is not None and self.crest_wind_kt is None:
+            raise ValueError("crest_wind_from_deg needs crest_wind_kt beside it")
+        return self
+
+
+class Rain(Table):
+    """How the condensed water leaves."""
+
+    removed_share: Share = Field(
+        default=0.7, description="share of the condensed water that rains out; 0 keeps all of it, 1 removes all of it"
+    )
+
+
+class SiteTable(Place):
+    """A named place for which values are wanted."""
+
+    name: Name
+    distance_km: float | None = Field(default=None, description="along a hand-entered ridge, in its own numbers")
+    elevation_m: Elevation | None = Field(default=None, description="default: the terrain's")
+
+    @model_validator(mode="after")
+    def _one_place(self) -> SiteTable:
+        together(self, ("longitude", "latitude"))
+        together(self, ("easting_m", "northing_m"))
+        exactly_one(self, ("longitude", "easting_m", "distance_km"), f"place of site '{self.name}'")
+        return self
+
+
+class Case(Table):
+    """One situation to work out."""
+
+    title: Name | None = None
+    valid_time: datetime | None = Field(default=None, description="with its zone, for example 2026-11-03T12:00:00Z")
+    terrain: Terrain
+    transect: TransectTable | None = None
+    incoming: Incoming
+    rain: Rain = Rain()
+    site: list[SiteTable] = Field(default_factory=list)
+
+    @field_validator("valid_time")
+    @classmethod
+    def _zone(cls, time: datetime | None) -> datetime | None:
+        if time is not None and time.tzinfo is None:
+            raise ValueError(f"{time.isoformat()} has no time zone; write {time.isoformat()}Z for UTC")
+        return time
+
+    @model_validator(mode="after")
+    def _fits_terrain(self) -> Case:
+        by_hand = self.terrain.elevation_file is None
+        if by_hand and self.transect is not None:
+            raise ValueError(
+                "[transect] cuts a line from a raster; a hand-entered ridge is the line, leave the table out"
+            )
+        names = [site.name for site in self.site]
+        twice = next((name for name in names if names.count(name) > 1), None)
+        if twice is not None:
+            raise ValueError(f"two sites are called '{twice}'; give each its own name")
+        for site in self.site:
+            if by_hand and site.distance_km is None:
+                raise ValueError(f"site '{site.name}' needs distance_km: a hand-entered ridge has no map")
+            if not by_hand and site.distance_km is not None:
+                raise ValueError(f"site '{site.name}' has distance_km; on a raster give longitude and latitude")
+        return self
+
+
+def described_units() -> dict[str, str]:
+    """Kind of quantity of every unit suffix, for the documentation."""
+    return {suffix: unit.kind for suffix, unit in UNITS.items()}
