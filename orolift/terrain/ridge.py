@@ -14,6 +14,7 @@ if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
 USUAL_INTERVALS = 511  # 512 points
+LEAST_POINTS = 3  # low ground upwind, the crest, low ground downwind
 LONGEST_RIDGE = 2.0e6  # [m] beyond it a straight line over a flat Earth is no transect: a judgement
 
 
@@ -93,9 +94,9 @@ def _checked_points(distance: ArrayLike, elevation: ArrayLike) -> tuple[NDArray[
     x = within("distance", distance, -LONGEST_RIDGE, LONGEST_RIDGE, "m", "Distances along the ridge are too large.")
     feet = "If the heights are in feet, say so by the name of the column or key."
     h = within("elevation", elevation, LOWEST_GROUND, HIGHEST_GROUND, "m", feet)
-    if x.ndim != 1 or x.shape != h.shape or x.size < 3:
+    if x.ndim != 1 or x.shape != h.shape or x.size < LEAST_POINTS:
         raise TerrainError(
-            f"the ridge has {x.size} distances and {h.size} elevations; it needs at least 3 points, "
+            f"the ridge has {x.size} distances and {h.size} elevations; it needs at least {LEAST_POINTS} points, "
             "each a distance and an elevation: low ground upwind, the crest, low ground downwind"
         )
     steps = np.diff(x)
