@@ -86,3 +86,9 @@ def condensate(q: Array, t: Array, freezing: bool) -> tuple[Array, Array, Array 
     slope = VAPORISATION_SLOPE + FUSION_SLOPE * f + 2.0 * df * (fusion + td)
     slope = slope - (2.0 * _PER_RAMP**2) * ramp * (t * td)
     return phi, latent + f * fusion + df * (t * td), slope
+
+
+def condensate_entropy(q: Array, t: Array, freezing: bool) -> Array:
+    """Entropy of a kilogram of condensate [J K-1 kg-1], zero for liquid at the triple point."""
+    phi, latent, _ = condensate(q, t, freezing)
+    return VAPORISATION + CP_VAPOUR * q - phi - latent / t
