@@ -1,0 +1,309 @@
+"""The results file: every key from the first version on, null where nothing is worked out yet."""
+
+from __future__ import annotations
+
+import platform
+from importlib import metadata
+from typing import TYPE_CHECKING, Literal
+
+from pydantic import BaseModel, ConfigDict, Field
+
+from orolift import __version__
+from orolift.air.column import column_vapour, freezing_level
+from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.sources.units import UNITS
+
+if TYPE_CHECKING:
+    from orolift.crossing.crossing import Crossing, LeeAir
+    from orolift.sources.case_model import Case
+
+SCHEMA_VERSION = "1"
+LIBRARIES = ("numpy", "scipy", "rasterio", "shapely", "jinja2", "contourpy", "pydantic", "click", "metar")
+
+Range = dict[str, tuple[float, float]]
+
+
+class Block(BaseModel):
+    """One block of the results; numbers are never NaN or infinite."""
+
+    model_config = ConfigDict(extra="forbid", allow_inf_nan=False, frozen=True)
+
+
+class Program(Block):
+    """What made the file."""
+
+    version: str
+    python: str
+    libraries: dict[str, str] = Field(description="versions of the libraries used")
+
+
+class CaseBlock(Block):
+    """Which case it was."""
+
+    title: str | None
+    valid_time: str | None = Field(description="ISO 8601 with zone")
+    seed: int | None = Field(description="of the random members; null when there are none")
+
+
+class IncomingBlock(Block):
+    """The air before the range, at the upwind ground unless said otherwise."""
+
+    temperature_c: float
+    dew_point_c: float
+    relative_humidity_percent: float = Field(description="over liquid water")
+    wind_ms: float
+    cross_range_wind_ms: float | None = Field(description="component along the transect, crest to crest + 500 m")
+    stability_per_s: float | None = Field(description="buoyancy frequency, mean from base to crest")
+    freezing_level_m: float | None = Field(description="above sea level; null when the whole column is below 0 degC")
+    column_vapour_kg_m2: float
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+
+
+class TerrainBlock(Block):
+    """Base, crest and lee foot; distances from the upwind end, or in the numbers of a hand-entered ridge."""
+
+    base_m: float
+    base_km: float
+    crest_m: float
+    crest_km: float
+    lee_foot_m: float
+    lee_foot_km: float
+    half_width_km: float
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+
+
+class FlowBlock(Block):
+    """How the air crosses."""
+
+    nondimensional_height: float | None
+    regime: str | None
+    dividing_height_m: float | None
+    blocked_top_m: float | None
+    blocked_top_range_m: tuple[float, float] | None
+    going_round_share: float | None
+    source_level_m: float | None
+    cloud_base_m: float | None = Field(description="above sea level; null when no cloud forms")
+    breaks_through: bool | None
+    wave_breaking: bool | None
+    pressure_difference_hpa: float | None
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+
+
+class RainBlock(Block):
+    """How much rains out, and where."""
+
+    rain_out_share: float | None = Field(description="precipitation / water that condensed; null when none did")
+    drying_ratio: float | None = Field(description="precipitation / incoming vapour of the crossing air")
+    drying_ratio_full_column: float | None
+    windward_share: float | None
+    peak_mm_per_h: float | None
+    peak_km: float | None
+    total_kg_per_m_s: float | None
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+
+
+class WarmingParts(Block):
+    """Warming at a site, split; adds up to `warming_c`."""
+
+    descent: float
+    latent: float
+    going_round: float
+    mixing: float
+    surface_heating: float
+    pressure: float
+
+
+class Profile(Block):
+    """Lee air above a site, to 3 km."""
+
+    height_above_ground_m: list[float]
+    temperature_c: list[float]
+    mixing_ratio_g_kg: list[float]
+
+
+class LeeBlock(Block):
+    """The air at one site."""
+
+    name: str
+    side: Literal["windward", "crest", "lee"]
+    distance_km: float
+    elevation_m: float
+    temperature_c: float
+    dew_point_c: float
+    relative_humidity_percent: float
+    wind_ms: float | None
+    wind_10m_ms: float | None
+    gust_ms: float | None
+    source_level_m: float | None
+    source_level_range_m: tuple[float, float] | None
+    warming_c: float = Field(description="site minus incoming air at the same height")
+    warming_parts_c: WarmingParts | None
+    popular_picture_c: float = Field(description="surface air lifted, all condensate removed, brought down")
+    descent_only_c: float | None
+    profile: Profile | None
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+
+
+class Results(Block):
+    """The whole results file."""
+
+    schema_version: str
+    orolift: Program
+    case: CaseBlock
+    incoming: IncomingBlock
+    terrain: TerrainBlock
+    flow: FlowBlock
+    rain: RainBlock
+    lee: list[LeeBlock]
+    fire: list[dict[str, float]] = Field(description="indices by site; empty until worked out")
+    flags: list[str]
+    cautions: list[str]
+    notes: list[str] = Field(description="assumptions made, in sentences")
+
+
+def celsius(kelvin: float) -> float:
+    """Degrees Celsius of a temperature in kelvin."""
+    return float(kelvin) - UNITS["c"].offset
+
+
+def results_of(crossing: Crossing, case: Case, cautions: tuple[str, ...] = ()) -> Results:
+    """Results of a crossing, unrounded.
+
+    Parameters
+    ----------
+    crossing : Crossing
+    case : Case
+    cautions : tuple of str
+        What the reading of the inputs found doubtful, put before those of the crossing.
+
+    Returns
+    -------
+    Results
+    """
+    rained = crossing.condensed > 0.0
+    return Results(
+        schema_version=SCHEMA_VERSION,
+        orolift=Program(
+            version=__version__,
+            python=platform.python_version(),
+            libraries={name: metadata.version(name) for name in LIBRARIES},
+        ),
+        case=CaseBlock(
+            title=case.title,
+            valid_time=None if case.valid_time is None else case.valid_time.isoformat(),
+            seed=None,
+        ),
+        incoming=_incoming(crossing),
+        terrain=_terrain(crossing),
+        flow=FlowBlock(
+            nondimensional_height=None,
+            regime=None,
+            dividing_height_m=None,
+            blocked_top_m=None,
+            blocked_top_range_m=None,
+            going_round_share=None,
+            source_level_m=None,
+            cloud_base_m=crossing.cloud_base,
+            breaks_through=None,
+            wave_breaking=None,
+            pressure_difference_hpa=None,
+        ),
+        rain=RainBlock(
+            rain_out_share=crossing.removed / crossing.condensed if rained else None,
+            drying_ratio=crossing.removed / crossing.vapour_in,
+            drying_ratio_full_column=None,
+            windward_share=None,
+            peak_mm_per_h=None,
+            peak_km=None,
+            total_kg_per_m_s=None,
+        ),
+        lee=[_lee(site, crossing) for site in crossing.lee],
+        fire=[],
+        flags=[],
+        cautions=[*cautions, *crossing.cautions],
+        notes=[*crossing.notes],
+    )
+
+
+def _incoming(crossing: Crossing) -> IncomingBlock:
+    air = crossing.incoming
+    pressure, temperature, vapour = air.pressure[0], air.temperature[0], air.vapour[0]
+    level = float(freezing_level(air))
+    return IncomingBlock(
+        temperature_c=celsius(temperature),
+        dew_point_c=celsius(float(dew_point_from_mixing_ratio(pressure, vapour))),
+        relative_humidity_percent=100.0 * float(relative_humidity_from_mixing_ratio(pressure, temperature, vapour)),
+        wind_ms=float((air.eastward_wind[0] ** 2 + air.northward_wind[0] ** 2) ** 0.5),
+        cross_range_wind_ms=crossing.crest_wind,
+        stability_per_s=None,
+        freezing_level_m=level if level == level else None,  # noqa: PLR0124 (NaN means none)
+        column_vapour_kg_m2=float(column_vapour(air)),
+    )
+
+
+def _terrain(crossing: Crossing) -> TerrainBlock:
+    shape, origin = crossing.features, crossing.transect.origin
+    return TerrainBlock(
+        base_m=shape.base,
+        base_km=(shape.base_distance + origin) / 1000.0,
+        crest_m=shape.crest,
+        crest_km=(shape.crest_distance + origin) / 1000.0,
+        lee_foot_m=shape.lee_foot,
+        lee_foot_km=(shape.lee_foot_distance + origin) / 1000.0,
+        half_width_km=shape.half_width / 1000.0,
+    )
+
+
+def _lee(site: LeeAir, crossing: Crossing) -> LeeBlock:
+    return LeeBlock(
+        name=site.name,
+        side=site.side,
+        distance_km=(site.distance + crossing.transect.origin) / 1000.0,
+        elevation_m=site.elevation,
+        temperature_c=celsius(site.temperature),
+        dew_point_c=celsius(site.dew_point),
+        relative_humidity_percent=100.0 * site.relative_humidity,
+        wind_ms=None,
+        wind_10m_ms=None,
+        gust_ms=None,
+        source_level_m=None,
+        source_level_range_m=None,
+        warming_c=site.warming,
+        warming_parts_c=None,
+        popular_picture_c=celsius(site.popular_picture),
+        descent_only_c=None,
+        profile=None,
+    )
+
+
+TABLE_COLUMNS = (
+    "name",
+    "side",
+    "distance_km",
+    "elevation_m",
+    "temperature_c",
+    "dew_point_c",
+    "relative_humidity_percent",
+    "wind_ms",
+    "wind_10m_ms",
+    "gust_ms",
+    "source_level_m",
+    "warming_c",
+    "popular_picture_c",
+    "descent_only_c",
+)
+
+
+def site_rows(results: Results) -> tuple[list[str], list[list[object]]]:
+    """Header and one row a site for the CSV table, unrounded.
+
+    Parameters
+    ----------
+    results : Results
+
+    Returns
+    -------
+    header : list of str
+    rows : list of lists
+    """
+    return list(TABLE_COLUMNS), [[getattr(site, key) for key in TABLE_COLUMNS] for site in results.lee]
