@@ -16,6 +16,7 @@ from orolift.errors import CaseError
 
 if TYPE_CHECKING:
     from orolift.crossing.crossing import Crossing
+    from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.results import Results
 
@@ -40,7 +41,7 @@ class Worked:
 @QUIET_OPTION
 @VERBOSE_OPTION
 def command(
-    cases: tuple[str, ...], *, report: str | None, results: str | None, table: str | None, units: str, quiet: bool
+    cases: tuple[str, ...], *, report: str | None, results: str | None, table: str | None, units: Units, quiet: bool
 ) -> None:
     """Work out the crossing of each CASE and write its report."""
     if len(cases) > 1:
@@ -71,7 +72,14 @@ def command(
         from orolift.cli.summary import summary_lines
 
         for worked, page in summaries:
-            click.echo("\n".join([*summary_lines(worked.crossing, worked.results, units), f"Report: {page}"]))
+            click.echo(
+                "\n".join(
+                    [
+                        *summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units),
+                        f"Report: {page}",
+                    ]
+                )
+            )
 
 
 def work_out(case: str) -> Worked:
@@ -91,7 +99,7 @@ def work_out(case: str) -> Worked:
     return Worked(inputs, crossing, results_of(crossing, inputs.case, inputs.cautions))
 
 
-def report_of(worked: Worked, units: str) -> str:
+def report_of(worked: Worked, units: Units) -> str:
     """The report as one HTML page; the time stamp honours SOURCE_DATE_EPOCH."""
     from orolift import __version__
     from orolift.report.page import page_of

@@ -148,7 +148,12 @@ class Crossing:
 
 
 def cross(
-    transect: Transect, incoming: IncomingAir, sites: tuple[Site, ...] = (), *, removed_share: float = 0.7
+    transect: Transect,
+    incoming: IncomingAir,
+    sites: tuple[Site, ...] = (),
+    *,
+    removed_share: float = 0.7,
+    freezing: bool = True,
 ) -> Crossing:
     """Incoming air taken over a transect.
 
@@ -161,6 +166,8 @@ def cross(
         Without any, the lee foot of the transect is the one site.
     removed_share : float [1]
         Share of the condensed water that rains out, 0 to 1.
+    freezing : bool
+        Whether condensate freezes between 0 and -20 degrees Celsius; False keeps it liquid.
 
     Returns
     -------
@@ -189,12 +196,12 @@ def cross(
         sites = (Site("Lee foot", shape.lee_foot_distance),)
     height = transect.elevation
     start = ground_air(incoming)
-    path = march(start, interpolated(incoming, height).pressure[:, np.newaxis], share)
+    path = march(start, interpolated(incoming, height).pressure[:, np.newaxis], share, freezing=freezing)
     dew_point = dew_point_from_mixing_ratio(path.pressure, path.vapour)
     crest = int(np.argmin(np.abs(transect.distance - shape.crest_distance)))
     base_height, base_distance = _cloud_edge(transect.distance[: crest + 1], height[: crest + 1], path, 0)
     end_height, end_distance = _cloud_edge(transect.distance[crest:][::-1], height[crest:][::-1], path, crest)
-    lee = tuple(_lee_air(site, transect, shape, incoming, path) for site in sites)
+    lee = tuple(_lee_air(site, transect, shape, incoming, path, freezing) for site in sites)
     return Crossing(
         incoming=incoming,
         transect=transect,
@@ -287,7 +294,7 @@ def ground_air(incoming: IncomingAir) -> Parcel:
     )
 
 
-def popular_picture(start: Parcel, crest_pressure: float, pressure: float) -> Parcel:
+def popular_picture(start: Parcel, crest_pressure: float, pressure: float, *, freezing: bool = True) -> Parcel:
     """Surface air lifted to the crest, all condensate removed, brought to a pressure: the textbook picture.
 
     Parameters
@@ -295,6 +302,7 @@ def popular_picture(start: Parcel, crest_pressure: float, pressure: float) -> Pa
     start : Parcel
         Air at the upwind ground.
     crest_pressure, pressure : float [Pa]
+    freezing : bool
 
     Returns
     -------
@@ -305,9 +313,9 @@ def popular_picture(start: Parcel, crest_pressure: float, pressure: float) -> Pa
     Cloud the air starts with is removed too. What it lifts over is the
     highest ground, whatever the flow; shown beside the crossing for comparison.
     """
-    top, _ = ascent(start, crest_pressure, removed_share=1.0)
+    top, _ = ascent(start, crest_pressure, removed_share=1.0, freezing=freezing)
     dry, _ = without_condensate(top, 1.0)
-    return moved_to(dry, pressure)
+    return moved_to(dry, pressure, freezing=freezing)
 
 
 def _cloud_edge(
@@ -339,7 +347,9 @@ def _cloud_edge(
     )
 
 
-def _lee_air(site: Site, transect: Transect, shape: Features, incoming: IncomingAir, path: March) -> LeeAir:
+def _lee_air(
+    site: Site, transect: Transect, shape: Features, incoming: IncomingAir, path: March, freezing: bool
+) -> LeeAir:
     """Air of the lowest streamline at a site, moved to its elevation without further removal."""
     ground = float(transect_elevation(transect, site.distance))
     elevation = ground if site.elevation is None else site.elevation
@@ -350,7 +360,7 @@ def _lee_air(site: Site, transect: Transect, shape: Features, incoming: Incoming
         Parcel(path.pressure[i, 0], path.temperature[i, 0], path.vapour[i, 0], path.cloud[i, 0]), pressure
     )
     dew_point = float(dew_point_from_mixing_ratio(pressure, arrived.vapour))
-    picture = popular_picture(ground_air(incoming), float(here.pressure[1]), pressure)
+    picture = popular_picture(ground_air(incoming), float(here.pressure[1]), pressure, freezing=freezing)
     return LeeAir(
         name=site.name,
         side=side_of(site.distance, shape),

@@ -195,6 +195,7 @@ class Rain(Table):
     removed_share: Share = Field(
         default=0.7, description="share of the condensed water that rains out; 0 keeps all of it, 1 removes all of it"
     )
+    freezing: bool = Field(default=True, description="condensate freezes between 0 and -20 degC; false keeps it liquid")
 
 
 class SiteTable(Place):

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.column_build import air_from_levels, air_from_station
+from orolift.air.column_build import CrestWind, air_from_levels, air_from_station
 from orolift.air.humidity import mixing_ratio_from_dew_point_checked, mixing_ratio_from_relative_humidity
 from orolift.air.standard import standard_pressure, station_pressure_from_qnh
 from orolift.constants import STANDARD_LAPSE_RATE
@@ -210,7 +210,7 @@ def _vapour(sounding: Sounding) -> tuple[NDArray[np.float64], tuple[str, ...]]:
     if sounding.dew_point is not None:
         return mixing_ratio_from_dew_point_checked(sounding.pressure, sounding.temperature, sounding.dew_point)
     humidity = np.maximum(np.asarray(sounding.relative_humidity), LEAST_HUMIDITY)
-    notes = ()
+    notes: tuple[str, ...] = ()
     if (np.asarray(sounding.relative_humidity) < LEAST_HUMIDITY).any():
         notes = (f"Relative humidity below {LEAST_HUMIDITY:.0%} is taken as that, the least a sensor resolves.",)
     return mixing_ratio_from_relative_humidity(sounding.pressure, sounding.temperature, humidity), notes
@@ -228,7 +228,7 @@ def _from_station(table: Incoming, station: Station, wind_from: float, crest: fl
     crest_wind = None
     if table.crest_wind_kt is not None:
         aloft = wind_from if table.crest_wind_from_deg is None else math.radians(table.crest_wind_from_deg)
-        crest_wind = (to_si(table.crest_wind_kt, "kt"), aloft, crest)
+        crest_wind = CrestWind(to_si(table.crest_wind_kt, "kt"), aloft, crest)
     lapse = STANDARD_LAPSE_RATE if table.lapse_rate_c_per_km is None else to_si(table.lapse_rate_c_per_km, "c_per_km")
     air = air_from_station(
         station.elevation_m,
