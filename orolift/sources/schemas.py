@@ -1,0 +1,161 @@
+"""JSON Schemas of the case file and the results file, made from their models.
+
+Run ``python -m orolift.sources.schemas docs`` to write both into a folder.
+"""
+
+from __future__ import annotations
+
+import json
+import sys
+from itertools import combinations
+from pathlib import Path
+from typing import Any
+
+from orolift.errors import CaseError
+from orolift.sources.case_model import Case
+from orolift.sources.files import write_all
+from orolift.sources.results import SCHEMA_VERSION, Results
+from orolift.sources.units import alternatives, converted, suffix_of
+
+DIALECT = "https://json-schema.org/draft/2020-12/schema"
+CASE_FILE, RESULTS_FILE = "case.schema.json", "results.schema.json"
+LIMIT_DIGITS = 6
+"""Decimals of a limit converted to another unit: finer than anybody writes, coarser than rounding of the factors."""
+UNIT_WORDS = {
+    "c": "degrees Celsius",
+    "f": "degrees Fahrenheit",
+    "m": "metres",
+    "ft": "feet",
+    "km": "kilometres",
+    "mi": "miles",
+    "ms": "metres per second",
+    "kt": "knots",
+    "kmh": "kilometres per hour",
+    "mph": "miles per hour",
+    "hpa": "hectopascals",
+    "inhg": "inches of mercury",
+    "deg": "degrees clockwise from north",
+    "percent": "per cent",
+    "c_per_km": "degrees Celsius per kilometre",
+    "f_per_1000ft": "degrees Fahrenheit per 1000 feet",
+}
+
+Schema = dict[str, Any]
+
+
+def case_schema() -> Schema:
+    """JSON Schema of a case file, every key in every unit it may be given in.
+
+    Returns
+    -------
+    dict
+        For editors that complete and check TOML. It knows names, types,
+        ranges and that a quantity is given in one unit only; which keys
+        exclude or need each other only the reader knows.
+
+    Notes
+    -----
+    A TOML date and time counts as the text JSON would carry.
+
+    Examples
+    --------
+    >>> sorted(key for key in case_schema()["$defs"]["Station"]["properties"] if key.startswith("temperature"))
+    ['temperature_c', 'temperature_f']
+    """
+    schema = _plain(Case.model_json_schema())
+    for table in [schema, *schema["$defs"].values()]:
+        _add_other_units(table)
+    return {"$schema": DIALECT, **schema, "title": "orolift case file"}
+
+
+def results_schema() -> Schema:
+    """JSON Schema of a results file: every key is there, null where nothing was worked out.
+
+    Returns
+    -------
+    dict
+
+    Examples
+    --------
+    >>> results_schema()["properties"]["schema_version"]["const"]
+    '1'
+    """
+    schema = _plain(Results.model_json_schema(mode="serialization"), keep_null=True)
+    for block in [schema, *schema["$defs"].values()]:
+        block["required"] = list(block["properties"])
+    schema["properties"]["schema_version"]["const"] = SCHEMA_VERSION
+    return {"$schema": DIALECT, **schema, "title": "orolift results file"}
+
+
+def schema_texts() -> dict[str, str]:
+    """Text of each published schema by the name of its file.
+
+    Returns
+    -------
+    dict of str to str
+    """
+    schemas = {CASE_FILE: case_schema(), RESULTS_FILE: results_schema()}
+    return {name: json.dumps(schema, indent=2, ensure_ascii=False) + "\n" for name, schema in schemas.items()}
+
+
+def _plain(node: Any, *, keep_null: bool = False) -> Any:
+    """The schema without generated titles and, unless kept, without null: TOML has none."""
+    if isinstance(node, list):
+        return [_plain(item, keep_null=keep_null) for item in node]
+    if not isinstance(node, dict):
+        return node
+    out: Schema = {}
+    for key, value in node.items():
+        if key in {"properties", "$defs"}:  # names of our own: one of them is 'title'
+            out[key] = {name: _plain(part, keep_null=keep_null) for name, part in value.items()}
+        elif key != "title":
+            out[key] = _plain(value, keep_null=keep_null)
+    if keep_null or {"type": "null"} not in out.get("anyOf", []):
+        return out
+    choices = [choice for choice in out.pop("anyOf") if choice != {"type": "null"}]
+    out.pop("default", None)
+    only: Schema = choices[0] if len(choices) == 1 else {"anyOf": choices}
+    return {**out, **only}
+
+
+def _add_other_units(table: Schema) -> None:
+    """Add to a table the same quantities in other units, one of which may be given."""
+    rules: list[Schema] = []
+    for key, field in list(table["properties"].items()):
+        if suffix_of(key) is None or field.get("type") != "number":
+            continue
+        names = [key, *alternatives(key)]
+        table["properties"] |= {name: _in_unit(field, key, name) for name in names}
+        if len(names) == 1:
+            continue
+        if key in table.get("required", []):
+            table["required"].remove(key)
+            rules.append({"oneOf": [{"required": [name]} for name in names]})
+        else:
+            rules.append({"not": {"anyOf": [{"required": list(pair)} for pair in combinations(names, 2)]}})
+    if rules:
+        table["allOf"] = rules
+
+
+def _in_unit(field: Schema, key: str, name: str) -> Schema:
+    """A number field described and limited in the unit of `name`."""
+    own, wanted = (suffix_of(key) or ("", ""))[1], (suffix_of(name) or ("", ""))[1]
+    text = f"{field.get('description', '')} [{UNIT_WORDS[wanted]}]".strip()
+    out = {"description": text, **{name: value for name, value in field.items() if name != "description"}}
+    for limit in ("minimum", "maximum", "exclusiveMinimum", "exclusiveMaximum", "default"):
+        if limit in out and own != wanted:
+            out[limit] = round(converted(float(out[limit]), own, wanted), LIMIT_DIGITS)
+    return out
+
+
+def main(arguments: list[str]) -> None:
+    """Write both schemas into the folder named by the one argument."""
+    if len(arguments) != 1:
+        raise CaseError("name the folder to write the schemas into: python -m orolift.sources.schemas docs")
+    folder = Path(arguments[0])
+    write_all({folder / name: text.encode() for name, text in schema_texts().items()})
+    sys.stdout.write(f"Written: {', '.join(str(folder / name) for name in schema_texts())}\n")
+
+
+if __name__ == "__main__":
+    main(sys.argv[1:])
