@@ -1,16 +1,15 @@
 """Temperature at which air of given entropy or enthalpy is in equilibrium: the fast, unchecked solvers.
 
 Scaled as in `phase`. Per kg of dry air, with total water r, vapour v, cloud
-r - v, dry pressure pd and phi = Rv ln(e / e_triple):
+c = r - v, dry pressure pd and entropy of vaporisation b = L / (Rv T),
 
-    entropy   s = (cpd + r cpv) q + r l - Rd ln(pd / p0) - r phi - (r - v) L / t
-    enthalpy  h / 273.16 K = (cpd + r cpv)(t - 1) + r l - (r - v) L
+    entropy / Rv               (cpd + r cpv) q + r l - (Rd/Rv) ln(pd / p0) - r ln e - c b
+    enthalpy / (Rv 273.16 K)   (cpd + r cpv)(t - 1) + r l - c b t
 
-where l is the scaled latent heat at the triple point and L the one of the
-condensate at t. In air that is not saturated, v = r and phi belongs to the
-vapour present; in cloud phi belongs to the condensate. Both cases are one
-formula with phi = min(phi of the condensate, phi of all the water as vapour),
-and one slope, ds/dq = dh/dT = cpd + r cpv - (r - v) dL/dT + L dv/dt: the
+where l = L / (Rv 273.16 K) at the triple point. In air that is not saturated
+v = r and e is that of the vapour present; in cloud e is that of
+saturation. Both cases are one formula with the smaller of the two, and have one
+slope, d(entropy)/dq = d(enthalpy)/dt = cpd + r cpv - c dL/dT + b dv/dq: the
 first law at constant pressure. In ln T, or T, the unsaturated branch is a
 straight line, so that Newton's step on it is the closed form.
 """
@@ -23,7 +22,6 @@ import numpy as np
 
 from orolift import constants
 from orolift.air import phase
-from orolift.air.lambert import lower_lambert
 from orolift.errors import OutOfRangeError
 
 if TYPE_CHECKING:
@@ -33,44 +31,49 @@ if TYPE_CHECKING:
 
     Array = NDArray[np.float64]
 
-REFERENCE = float(constants.REFERENCE_PRESSURE)
-TINY = 1e-30  # mixing ratio that stands for none where a logarithm is taken
-_PER_RV = 1.0 / phase.R_VAPOUR
-_PER_TRIPLE_PRESSURE = 1.0 / phase.TRIPLE_PRESSURE
+TINY = phase.number(1e-30)  # mixing ratio that stands for none where a logarithm is taken
+PER_TRIPLE = phase.number(1.0 / constants.TRIPLE_POINT_TEMPERATURE)
+PER_TRIPLE_PRESSURE = phase.number(1.0 / constants.TRIPLE_POINT_PRESSURE)
+PER_RV = phase.number(1.0 / constants.R_VAPOUR)
+REFERENCE = float(constants.REFERENCE_PRESSURE / constants.TRIPLE_POINT_PRESSURE)
+ENTROPY_ZERO = phase.number(constants.EPSILON * np.log(REFERENCE))
+_PER_ENTHALPY = phase.number(1.0 / (constants.R_VAPOUR * constants.TRIPLE_POINT_TEMPERATURE))
 _LOWEST, _HIGHEST = 0.25, 1.7  # bracket for t when Newton's method wanders: 68 K to 464 K
+_BRACKET_Q = (float(np.log(_LOWEST)), float(np.log(_HIGHEST)))
 _PLAIN_STEPS, _ALL_STEPS = 10, 100
+_KELVIN = 1.0 / 250.0  # a step of 1 K in q or t, near enough
 
 
 class Mixture(NamedTuple):
     """What the solvers need to know of air at a temperature."""
 
-    phi: Array  # Rv ln(e / e_triple) of the vapour present
-    latent: Array
-    latent_slope: Array | float
-    dry: Array  # dry pressure over the triple-point pressure
+    log_e: Array  # of the vapour present
+    bound: Array  # entropy of vaporisation
+    latent_slope: Array
+    dry: Array  # dry pressure
     vapour: Array
     cloud: Array
-    gain: Array  # d(vapour)/dt at constant pressure, 0 where not saturated
+    gain: Array  # d(vapour)/dq at constant pressure, 0 where not saturated
     heat: Array  # d(enthalpy)/dT at constant pressure
 
 
 def all_vapour(pressure: Array, water: Array) -> Array:
-    """Phi that the vapour has when all the water is vapour."""
-    share = np.maximum(water, TINY) / (water + phase.EPSILON)
-    return phase.R_VAPOUR * np.log(share * pressure * _PER_TRIPLE_PRESSURE)
+    """Logarithm of the vapour pressure when all the water is vapour."""
+    w = np.maximum(water, TINY)
+    return np.log(pressure * w / (w + phase.EPSILON))
 
 
-def mixture(q: Array, t: Array, pressure: Array, water: Array, phi_all: Array | np.float64, freezing: bool) -> Mixture:
-    """Air of given total water at t, its vapour no more than saturated; pressure over the triple-point pressure."""
-    phi_condensate, latent, slope = phase.condensate(q, t, freezing)
-    phi = np.minimum(phi_condensate, phi_all)
-    e = np.exp(phi * _PER_RV)
+def mixture(q: Array, t: Array, pressure: Array, water: Array, log_all: Array, cp: Array, freezing: bool) -> Mixture:
+    """Air of given total water, its vapour no more than saturated; `cp` is that with all water as vapour."""
+    log_saturation, bound, latent_slope = phase.condensate(q, t, freezing)
+    log_e = np.minimum(log_saturation, log_all)
+    e = np.exp(log_e)
     dry = pressure - e
     vapour = phase.EPSILON * e / dry
     cloud = water - vapour
-    gain = vapour * (pressure / dry) * (latent / (t * t)) * ((phi_condensate < phi_all) * _PER_RV)
-    heat = phase.CP_DRY + phase.CP_VAPOUR * water - cloud * slope + latent * gain
-    return Mixture(phi, latent, slope, dry, vapour, cloud, gain, heat)
+    gain = vapour * (pressure / dry) * bound * (log_saturation < log_all)
+    heat = cp - cloud * latent_slope + bound * gain
+    return Mixture(log_e, bound, latent_slope, dry, vapour, cloud, gain, heat)
 
 
 def root(
@@ -93,75 +96,71 @@ def root(
             x = x + dx if size < 0.1 else x + np.minimum(np.maximum(dx, -0.1), 0.1)
         else:
             below, above = np.where(dx > 0.0, x, below), np.where(dx > 0.0, above, x)
-            x = np.where((x + dx > below) & (x + dx < above), x + dx, 0.5 * (below + above))
+            inside = (np.abs(dx) <= tolerance) | ((x + dx > below) & (x + dx < above))
+            x = np.where(inside, x + dx, 0.5 * (below + above))
     raise OutOfRangeError(
         "no equilibrium temperature: a pressure, water content or energy of the air is not a number or far outside the "
         "atmosphere. orolift works in kelvin, pascal and kg per kg; check the units of what went in."
     )
 
 
-def start(dry_q: Array, phi_all: Array) -> Array:
-    """First guess of q: the unsaturated solution, or where all the water just saturates if that is warmer."""
-    slope, free = phase.VAPORISATION_SLOPE, phase.VAPORISATION - phase.VAPORISATION_SLOPE
-    ratio = free / slope
-    q_saturated = np.log(ratio / lower_lambert(phi_all / -slope + ratio + np.log(-ratio)))
-    return np.maximum(dry_q, q_saturated)
+def start(dry_q: Array, log_all: Array) -> Array:
+    """First guess of q: the unsaturated solution, or where all the water just saturates if that is warmer.
+
+    From there on cloudy air is reached from its warm end, on which Newton's
+    method runs down a convex curve and does not overshoot.
+    """
+    return np.maximum(dry_q, np.log(phase.saturation_point(log_all)) - 1e-6)
 
 
 def from_entropy(
     pressure: Array, entropy: Array, water: Array, *, freezing: bool, first_guess: Array | None, tolerance: float
 ) -> tuple[Array, Array]:
     """Temperature [K] and vapour of air in equilibrium with this entropy."""
-    phi_all = all_vapour(pressure, water)
-    scaled = pressure * _PER_TRIPLE_PRESSURE
-    target = entropy - phase.VAPORISATION * water + phase.R_DRY * _LOG_TRIPLE_OVER_REFERENCE
+    p = pressure * PER_TRIPLE_PRESSURE
+    log_all = all_vapour(p, water)
     cp = phase.CP_DRY + phase.CP_VAPOUR * water
+    target = entropy * PER_RV - phase.VAPORISATION * water - ENTROPY_ZERO
     if first_guess is None:
-        dry = scaled * phase.EPSILON / (phase.EPSILON + water)
-        q = start((target + phase.R_DRY * np.log(dry) + water * phi_all) / cp, phi_all)
+        dry = p * phase.EPSILON / (phase.EPSILON + water)
+        q = start((target + phase.EPSILON * np.log(dry) + water * log_all) / cp, log_all)
     else:
-        q = np.log(first_guess * (1.0 / phase.TRIPLE))
-    last: list[tuple[Array, Mixture]] = []
+        q = np.log(first_guess * PER_TRIPLE)
+    last: list[Mixture] = []
 
     def step(q: Array) -> Array:
-        t = np.exp(q)
-        m = mixture(q, t, scaled, water, phi_all, freezing)
-        last[:] = [(t, m)]
-        excess = cp * q - phase.R_DRY * np.log(m.dry) - water * m.phi - m.cloud * (m.latent / t) - target
-        return -excess / m.heat
+        m = mixture(q, np.exp(q), p, water, log_all, cp, freezing)
+        last[:] = [m]
+        lack = target - cp * q + phase.EPSILON * np.log(m.dry) + water * m.log_e + m.cloud * m.bound
+        return np.asarray(lack / m.heat)
 
-    q, dq = root(step, q, tolerance * (1.0 / 250.0), _BOUNDS_Q)
-    t, m = last[0]
-    return phase.TRIPLE * np.exp(q), _vapour(m, t * dq, water)
+    q, dq = root(step, q, tolerance * _KELVIN, _BRACKET_Q)
+    return phase.TRIPLE * np.exp(q), _vapour(last[0], dq, water)
 
 
 def from_enthalpy(
     pressure: Array, enthalpy: Array, water: Array, *, freezing: bool, first_guess: Array | None, tolerance: float
 ) -> tuple[Array, Array]:
     """Temperature [K] and vapour of air in equilibrium with this enthalpy."""
-    phi_all = all_vapour(pressure, water)
-    scaled = pressure * _PER_TRIPLE_PRESSURE
+    p = pressure * PER_TRIPLE_PRESSURE
+    log_all = all_vapour(p, water)
     cp = phase.CP_DRY + phase.CP_VAPOUR * water
-    target = enthalpy * (1.0 / phase.TRIPLE) - phase.VAPORISATION * water + cp
+    target = enthalpy * _PER_ENTHALPY - phase.VAPORISATION * water + cp
     if first_guess is None:
-        t = np.exp(start(np.log(np.maximum(target / cp, _LOWEST)), phi_all))
+        t = np.exp(start(np.log(np.maximum(target / cp, _LOWEST)), log_all))
     else:
-        t = first_guess * (1.0 / phase.TRIPLE)
+        t = first_guess * PER_TRIPLE
     last: list[Mixture] = []
 
     def step(t: Array) -> Array:
-        m = mixture(np.log(t), t, scaled, water, phi_all, freezing)
+        m = mixture(np.log(t), t, p, water, log_all, cp, freezing)
         last[:] = [m]
-        return (target - cp * t + m.cloud * m.latent) / m.heat
+        return np.asarray((target - cp * t + m.cloud * m.bound * t) / m.heat)
 
-    t, dt = root(step, t, tolerance * (1.0 / 250.0), (_LOWEST, _HIGHEST))
-    return phase.TRIPLE * t, _vapour(last[0], dt, water)
+    t, dt = root(step, t, tolerance * _KELVIN, (_LOWEST, _HIGHEST))
+    return phase.TRIPLE * t, _vapour(last[0], dt / t, water)
 
 
-def _vapour(m: Mixture, dt: Array, water: Array) -> Array:
+def _vapour(m: Mixture, dq: Array, water: Array) -> Array:
     """Vapour after the last step, to second order in it; all the water where nothing has condensed."""
-    return np.where(m.gain > 0.0, np.minimum(m.vapour + m.gain * dt, water), water)
-
-
-_BOUNDS_Q = (float(np.log(_LOWEST)), float(np.log(_HIGHEST)))
-_LOG_TRIPLE_OVER_REFERENCE = float(np.log(phase.TRIPLE_PRESSURE / REFERENCE))
+    return np.where(m.gain > phase.ZERO, np.minimum(m.vapour + m.gain * dq, water), water)

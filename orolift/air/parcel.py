@@ -82,14 +82,14 @@ def entropy(parcel: Parcel, *, freezing: bool = True) -> NDArray[np.float64]:
     True
     """
     v = np.asarray(parcel.vapour, dtype=np.float64)
-    t = np.asarray(parcel.temperature, dtype=np.float64) * (1.0 / phase.TRIPLE)
+    t = parcel.temperature * equilibrium.PER_TRIPLE
+    p = parcel.pressure * equilibrium.PER_TRIPLE_PRESSURE
     q = np.log(t)
-    e = parcel.pressure * v / (v + phase.EPSILON)
-    # TINY keeps v ln e finite, and zero, in dry air
-    phi = phase.R_VAPOUR * np.log((e + equilibrium.TINY) * (1.0 / phase.TRIPLE_PRESSURE))
-    vapour_part = v * (phase.VAPORISATION + phase.CP_VAPOUR * q - phi)
-    dry_part = phase.CP_DRY * q - phase.R_DRY * np.log((parcel.pressure - e) * (1.0 / equilibrium.REFERENCE))
-    return np.asarray(dry_part + vapour_part + parcel.cloud * phase.condensate_entropy(q, t, freezing))
+    e = p * v / (v + phase.EPSILON)
+    log_e = np.log(e + equilibrium.TINY)  # keeps v ln e finite, and zero, in dry air
+    dry = phase.CP_DRY * q - phase.EPSILON * np.log(p - e) + equilibrium.ENTROPY_ZERO
+    wet = v * (phase.VAPORISATION + phase.CP_VAPOUR * q - log_e)
+    return np.asarray(phase.R_VAPOUR * (dry + wet + parcel.cloud * phase.condensate_entropy(q, t, freezing)))
 
 
 def enthalpy(parcel: Parcel, *, freezing: bool = True) -> NDArray[np.float64]:
@@ -117,11 +117,12 @@ def enthalpy(parcel: Parcel, *, freezing: bool = True) -> NDArray[np.float64]:
     >>> round(float(enthalpy(dry)), 1)
     10057.0
     """
-    t = np.asarray(parcel.temperature, dtype=np.float64) * (1.0 / phase.TRIPLE)
+    t = parcel.temperature * equilibrium.PER_TRIPLE
     water = parcel.vapour + parcel.cloud
-    _, latent, _ = phase.condensate(np.log(t), t, freezing)
-    heat = (phase.CP_DRY + phase.CP_VAPOUR * water) * (t - 1.0)
-    return np.asarray(phase.TRIPLE * (heat + phase.VAPORISATION * water - parcel.cloud * latent))
+    _, bound, _ = phase.condensate(np.log(t), t, freezing)
+    heat = (phase.CP_DRY + phase.CP_VAPOUR * water) * (t - phase.ONE)
+    scaled = heat + phase.VAPORISATION * water - parcel.cloud * bound * t
+    return np.asarray(phase.R_VAPOUR * phase.TRIPLE * scaled)
 
 
 def equilibrium_from_entropy(
@@ -173,7 +174,7 @@ def equilibrium_from_entropy(
     >>> start = Parcel(np.array(95e3), np.array(287.15), np.array(0.008), np.array(0.0))
     >>> lifted = equilibrium_from_entropy(np.array(70e3), entropy(start), np.array(0.008))
     >>> print(lifted.temperature.round(2), lifted.cloud.round(5))
-    271.3 0.00324
+    271.29 0.00324
     """
     p = np.asarray(pressure, dtype=np.float64)
     water = np.asarray(total_water, dtype=np.float64)

@@ -30,7 +30,7 @@ if TYPE_CHECKING:
 
 LONGEST_STEP = 0.15
 _TOLERANCE = 1e-3 / 250.0  # what a Newton step of a millikelvin leaves is 3e-8 K
-_ANY_AMOUNT = np.float64(1e9)  # phi of the total water: none, the air is saturated by definition
+_ANY_AMOUNT = phase.number(1e9)  # ln e of the total water: none, the air is saturated by definition
 
 
 def lifted(
@@ -55,17 +55,13 @@ def first_saturation(
     pressure: Array, temperature: Array, vapour: Array, cloud: Array, *, freezing: bool
 ) -> tuple[Array, Array]:
     """Pressure [Pa] and temperature [K] at which a parcel first saturates on its way up."""
-    cp = phase.CP_DRY + phase.CP_VAPOUR * vapour
-    gas = phase.R_DRY + phase.R_VAPOUR * vapour
-    ratio = cp / gas  # d ln p / dq on the dry adiabat
-    q0 = np.log(temperature * (1.0 / phase.TRIPLE))
-    phi0 = equilibrium.all_vapour(pressure, vapour)
+    ratio = (phase.CP_DRY + phase.CP_VAPOUR * vapour) / (phase.EPSILON + vapour)  # d ln p / dq on the dry adiabat
+    q0 = np.log(temperature * equilibrium.PER_TRIPLE)
+    log_e0 = equilibrium.all_vapour(pressure * equilibrium.PER_TRIPLE_PRESSURE, vapour)
 
     def step(q: Array) -> Array:
-        t = np.exp(q)
-        phi, latent, _ = phase.condensate(q, t, freezing)
-        excess = phi - phi0 - phase.R_VAPOUR * ratio * (q - q0)
-        return -excess / (latent / t - phase.R_VAPOUR * ratio)
+        log_e, bound, _ = phase.condensate(q, np.exp(q), freezing)
+        return np.asarray((log_e0 + ratio * (q - q0) - log_e) / (bound - ratio))
 
     q, _ = equilibrium.root(step, q0, 1e-8, (-3.0, 1.0))
     q = np.where(cloud > 0.0, q0, np.minimum(q, q0))
@@ -87,7 +83,7 @@ def along(
     if steps is None:
         steps = max(1, int(np.ceil(np.max(np.abs(way), initial=0.0) / LONGEST_STEP)))
     h = way / steps
-    air = _saturated(np.log(temperature * (1.0 / phase.TRIPLE)), pressure, kept, share, freezing=freezing)
+    air = _saturated(np.log(temperature * equilibrium.PER_TRIPLE), pressure, kept, share, freezing=freezing)
     change = h * air.slope
     for i in range(1, steps + 1):
         new = _step(air, change, pressure * np.exp(h * i), kept, share, freezing=freezing)
@@ -104,23 +100,22 @@ class _Saturated(NamedTuple):
     s_condensate: Array
     y: Array
     slope: Array  # dq / d ln p on the way
-    d_condensate: Array | float  # d(s_condensate) / dq
+    d_condensate: Array  # d(s_condensate) / dq
     d_vapour: Array  # d(vapour) / dq at constant pressure
     d_y: Array  # dY / dq at constant pressure
 
 
 def _saturated(q: Array, pressure: Array, kept: Array | float, share: Array | float, *, freezing: bool) -> _Saturated:
     """Everything the rule above needs of saturated air."""
-    t = np.exp(q)
-    scaled = pressure * (1.0 / phase.TRIPLE_PRESSURE)
-    m = equilibrium.mixture(q, t, scaled, np.asarray(kept), _ANY_AMOUNT, freezing)
-    bound = m.latent / t  # entropy of vaporisation
-    s_condensate = phase.VAPORISATION + phase.CP_VAPOUR * q - m.phi - bound
-    y = phase.CP_DRY * q - phase.R_DRY * np.log(m.dry) + kept * s_condensate + m.vapour * bound
+    p = pressure * equilibrium.PER_TRIPLE_PRESSURE
+    cp = np.asarray(phase.CP_DRY + phase.CP_VAPOUR * kept)
+    m = equilibrium.mixture(q, np.exp(q), p, np.asarray(kept), _ANY_AMOUNT, cp, freezing)
+    s_condensate = phase.VAPORISATION + phase.CP_VAPOUR * q - m.log_e - m.bound
+    y = phase.CP_DRY * q - phase.EPSILON * np.log(m.dry) + kept * s_condensate + m.vapour * m.bound
     d_condensate = phase.CP_VAPOUR - m.latent_slope
     heat = m.heat + share * m.vapour * d_condensate  # kept + share * vapour is all the water there is
-    slope = (phase.R_DRY + bound * m.vapour) * (scaled / m.dry) / heat
-    return _Saturated(q, m.vapour, s_condensate, y, slope, d_condensate, t * m.gain, m.heat)
+    slope = (phase.EPSILON + m.bound * m.vapour) * (p / m.dry) / heat
+    return _Saturated(q, m.vapour, s_condensate, y, slope, d_condensate, m.gain, m.heat)
 
 
 def _step(

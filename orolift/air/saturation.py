@@ -12,7 +12,6 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.air import phase
-from orolift.air.lambert import lower_lambert
 from orolift.checks import within
 from orolift.errors import OutOfRangeError
 
@@ -27,6 +26,12 @@ def _temperature(values: ArrayLike) -> NDArray[np.float64]:
     """Temperature, checked, as an array."""
     hint = "orolift works in kelvin; add 273.15 to degrees Celsius."
     return within("temperature", values, LOWEST_TEMPERATURE, HIGHEST_TEMPERATURE, "K", hint)
+
+
+def _linear(latent: NDArray[np.float64], slope: NDArray[np.float64], temperature: ArrayLike) -> NDArray[np.float64]:
+    """Latent heat from its scaled value at the triple point and slope."""
+    t = _temperature(temperature) / phase.TRIPLE
+    return np.asarray(phase.R_VAPOUR * phase.TRIPLE * (latent + slope * (t - 1.0)))
 
 
 def latent_heat_of_vaporisation(temperature: ArrayLike) -> NDArray[np.float64]:
@@ -58,9 +63,7 @@ def latent_heat_of_vaporisation(temperature: ArrayLike) -> NDArray[np.float64]:
     >>> latent_heat_of_vaporisation([273.16, 293.15]).round(-2)
     array([2500900., 2456100.])
     """
-    return np.asarray(
-        phase.VAPORISATION * phase.TRIPLE + phase.VAPORISATION_SLOPE * (_temperature(temperature) - phase.TRIPLE)
-    )
+    return _linear(phase.VAPORISATION, phase.VAPORISATION_SLOPE, temperature)
 
 
 def latent_heat_of_fusion(temperature: ArrayLike) -> NDArray[np.float64]:
@@ -90,7 +93,7 @@ def latent_heat_of_fusion(temperature: ArrayLike) -> NDArray[np.float64]:
     >>> latent_heat_of_fusion(273.16).round(-2)
     np.float64(333500.0)
     """
-    return np.asarray(phase.FUSION * phase.TRIPLE + phase.FUSION_SLOPE * (_temperature(temperature) - phase.TRIPLE))
+    return _linear(phase.FUSION, phase.FUSION_SLOPE, temperature)
 
 
 def latent_heat_of_sublimation(temperature: ArrayLike) -> NDArray[np.float64]:
@@ -120,7 +123,7 @@ def latent_heat_of_sublimation(temperature: ArrayLike) -> NDArray[np.float64]:
     >>> latent_heat_of_sublimation(273.16).round(-2)
     np.float64(2834400.0)
     """
-    return np.asarray(latent_heat_of_vaporisation(temperature) + latent_heat_of_fusion(temperature))
+    return _linear(phase.SUBLIMATION, phase.SUBLIMATION_SLOPE, temperature)
 
 
 def saturation_vapour_pressure_over_liquid(temperature: ArrayLike) -> NDArray[np.float64]:
@@ -159,8 +162,8 @@ def saturation_vapour_pressure_over_liquid(temperature: ArrayLike) -> NDArray[np
     array([ 611.7, 2338. ])
     """
     t = _temperature(temperature) / phase.TRIPLE
-    phi, _, _ = phase.condensate(np.log(t), t, freezing=False)
-    return np.asarray(phase.TRIPLE_PRESSURE * np.exp(phi / phase.R_VAPOUR))
+    log_e, _, _ = phase.condensate(np.log(t), t, freezing=False)
+    return np.asarray(phase.TRIPLE_PRESSURE * np.exp(log_e))
 
 
 def saturation_vapour_pressure_over_ice(temperature: ArrayLike) -> NDArray[np.float64]:
@@ -191,10 +194,9 @@ def saturation_vapour_pressure_over_ice(temperature: ArrayLike) -> NDArray[np.fl
     array([611.7, 103.3])
     """
     t = _temperature(temperature) / phase.TRIPLE
-    slope = phase.VAPORISATION_SLOPE + phase.FUSION_SLOPE
-    sublimation = phase.VAPORISATION + phase.FUSION
-    phi = slope * np.log(t) + (sublimation - slope) * (1.0 - 1.0 / t)
-    return np.asarray(phase.TRIPLE_PRESSURE * np.exp(phi / phase.R_VAPOUR))
+    slope = phase.SUBLIMATION_SLOPE
+    log_e = slope * np.log(t) + (phase.SUBLIMATION - slope) * (1.0 - 1.0 / t)
+    return np.asarray(phase.TRIPLE_PRESSURE * np.exp(log_e))
 
 
 def ice_share(temperature: ArrayLike) -> NDArray[np.float64]:
@@ -217,15 +219,15 @@ def ice_share(temperature: ArrayLike) -> NDArray[np.float64]:
 
     Notes
     -----
-    x (2 - x) with x falling linearly from 1 to 0 over that range. Why it
-    is not linear itself: see `phase`.
+    x (2 - x), where x falls from 1 to 0 with ln T over that range. Why it
+    is not a straight line: see `phase`.
 
     Examples
     --------
     >>> ice_share([280.0, 263.155, 250.0]).round(3)
-    array([0.  , 0.75, 1.  ])
+    array([0.  , 0.74, 1.  ])
     """
-    return np.asarray(phase.ice_part(_temperature(temperature) / phase.TRIPLE))
+    return np.asarray(phase.ice_part(np.log(_temperature(temperature) / phase.TRIPLE)))
 
 
 def saturation_vapour_pressure(temperature: ArrayLike, *, freezing: bool = True) -> NDArray[np.float64]:
@@ -258,11 +260,11 @@ def saturation_vapour_pressure(temperature: ArrayLike, *, freezing: bool = True)
     Examples
     --------
     >>> saturation_vapour_pressure([283.15, 263.15, 243.15]).round(1)
-    array([1227.8,  266.4,   38. ])
+    array([1227.8,  266.6,   38. ])
     """
     t = _temperature(temperature) / phase.TRIPLE
-    phi, _, _ = phase.condensate(np.log(t), t, freezing=freezing)
-    return np.asarray(phase.TRIPLE_PRESSURE * np.exp(phi / phase.R_VAPOUR))
+    log_e, _, _ = phase.condensate(np.log(t), t, freezing=freezing)
+    return np.asarray(phase.TRIPLE_PRESSURE * np.exp(log_e))
 
 
 def latent_heat(temperature: ArrayLike, *, freezing: bool = True) -> NDArray[np.float64]:
@@ -297,8 +299,8 @@ def latent_heat(temperature: ArrayLike, *, freezing: bool = True) -> NDArray[np.
     array([2501000., 2839000.])
     """
     t = _temperature(temperature) / phase.TRIPLE
-    _, latent, _ = phase.condensate(np.log(t), t, freezing=freezing)
-    return np.asarray(latent * phase.TRIPLE)
+    _, bound, _ = phase.condensate(np.log(t), t, freezing=freezing)
+    return np.asarray(phase.R_VAPOUR * phase.TRIPLE * t * bound)
 
 
 def saturation_mixing_ratio(
@@ -340,14 +342,13 @@ def saturation_mixing_ratio(
     return np.asarray(phase.EPSILON * e / (p - e))
 
 
-def _saturation_temperature(vapour_pressure: ArrayLike, latent: float, slope: float) -> NDArray[np.float64]:
+def _saturation_temperature(
+    vapour_pressure: ArrayLike, latent: NDArray[np.float64], slope: NDArray[np.float64]
+) -> NDArray[np.float64]:
     """Temperature at which a substance with this scaled latent heat and slope saturates the vapour."""
     hint = "orolift works in pascal; air without any vapour has no dew point."
     e = within("vapour_pressure", vapour_pressure, 1e-8, 1.2e5, "Pa", hint)
-    # -slope ln w + (latent - slope)(1 - w) = Rv ln(e / e_triple), w = T_triple / T
-    ratio = (latent - slope) / slope  # negative: vapour has the smaller heat capacity
-    right = (phase.R_VAPOUR * np.log(e / phase.TRIPLE_PRESSURE)) / -slope + ratio + np.log(-ratio)
-    return np.asarray(phase.TRIPLE * ratio / lower_lambert(right))
+    return np.asarray(phase.TRIPLE * phase.saturation_point(np.log(e / phase.TRIPLE_PRESSURE), latent, slope))
 
 
 def dew_point(vapour_pressure: ArrayLike) -> NDArray[np.float64]:
@@ -406,5 +407,4 @@ def frost_point(vapour_pressure: ArrayLike) -> NDArray[np.float64]:
     >>> frost_point([611.657, 103.3]).round(2)
     array([273.16, 253.15])
     """
-    slope = phase.VAPORISATION_SLOPE + phase.FUSION_SLOPE
-    return _saturation_temperature(vapour_pressure, phase.VAPORISATION + phase.FUSION, slope)
+    return _saturation_temperature(vapour_pressure, phase.SUBLIMATION, phase.SUBLIMATION_SLOPE)
