@@ -12,7 +12,7 @@ if TYPE_CHECKING:
 
 
 SMOOTHING = 4000.0  # [m] standard deviation; takes out side valleys up to about 15 km apart: a judgement
-LEAST_KNOWN = 0.5  # share of the weight round a point that must be ground for its slope to count: a judgement
+LEAST_KNOWN = 0.9  # share of the weight round a point that must be ground for its slope to count: a judgement
 
 
 @dataclass(frozen=True)
@@ -95,7 +95,7 @@ def _smoothed(elevation: NDArray[np.float64], spacing: float) -> tuple[NDArray[n
 
 
 def _weights(size: int, spacing: float) -> NDArray[np.float64]:
-    """Matrix that smooths along one axis; each row adds up to one."""
+    """Matrix that smooths along one axis; rows add up to one but near the ends, where weight falls outside."""
     place = np.arange(size) * spacing
     matrix = np.exp(-0.5 * ((place[:, np.newaxis] - place) / SMOOTHING) ** 2)
-    return np.asarray(matrix / matrix.sum(axis=1, keepdims=True))
+    return np.asarray(matrix * (spacing / (np.sqrt(2.0 * np.pi) * SMOOTHING)))
