@@ -27,7 +27,7 @@ from orolift.air.column_profile import (
 )
 from orolift.air.humidity import relative_humidity_from_mixing_ratio
 from orolift.air.hydrostatic import hydrostatic_height
-from orolift.air.saturation import saturation_vapour_pressure_over_liquid
+from orolift.air.saturation import saturation_vapour_pressure, saturation_vapour_pressure_over_liquid
 from orolift.air.temperature import virtual_temperature
 from orolift.checks import within
 from orolift.constants import STANDARD_LAPSE_RATE, STANDARD_TROPOPAUSE
@@ -157,11 +157,11 @@ def air_from_station(
     t = np.maximum(fallen, np.minimum(t0, _COLDEST)[..., np.newaxis])
     vapour0, cloud0 = split_at_saturation(p0, t0, r0, freezing=freezing)
     humidity0 = relative_humidity_from_mixing_ratio(p0, t0, vapour0)
-    e_liquid = saturation_vapour_pressure_over_liquid(t)
+    e_liquid, e_most = saturation_vapour_pressure_over_liquid(t), saturation_vapour_pressure(t, freezing=freezing)
     p_kept = np.minimum(p0, _HUMIDITY_KEPT_TO)
 
     def moisture(p: Array) -> tuple[Array, Array]:
-        vapour = vapour_at(p, t, e_liquid, relaxed_humidity(p, humidity0, p_kept), freezing=freezing)
+        vapour = vapour_at(p, e_liquid, e_most, relaxed_humidity(p, humidity0, p_kept))
         vapour[..., 0] = vapour0
         cloud = np.zeros_like(vapour)
         cloud[..., 0] = cloud0
@@ -266,10 +266,10 @@ def _extended_up(air: IncomingAir, top: float, *, freezing: bool) -> IncomingAir
     t = np.maximum(air.temperature[-1] - STANDARD_LAPSE_RATE * warmest_part, min(float(air.temperature[-1]), _COLDEST))
     p_last = air.pressure[-1]
     humidity = relative_humidity_from_mixing_ratio(p_last, air.temperature[-1], air.vapour[-1])
-    e_liquid = saturation_vapour_pressure_over_liquid(t)
+    e_liquid, e_most = saturation_vapour_pressure_over_liquid(t), saturation_vapour_pressure(t, freezing=freezing)
 
     def moisture(p: Array) -> tuple[Array, Array]:
-        vapour = vapour_at(p, t, e_liquid, relaxed_humidity(p, humidity, p_last), freezing=freezing)
+        vapour = vapour_at(p, e_liquid, e_most, relaxed_humidity(p, humidity, p_last))
         vapour[0] = air.vapour[-1]
         cloud = np.zeros_like(vapour)
         cloud[0] = air.cloud[-1]

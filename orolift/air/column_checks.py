@@ -77,7 +77,9 @@ def checked_levels(
         If the levels do not form a column.
     """
     kelvin = "orolift works in kelvin; add 273.15 to degrees Celsius."
-    p = within("pressure", pressure, 100.0, 1.1e5, "Pa", "orolift works in pascals; multiply hectopascals by 100.")
+    pascals = "orolift works in pascals; multiply hectopascals by 100."
+    p = within("pressure", pressure, 100.0, 1.1e5, "Pa", pascals)
+    within("pressure of the lowest level", p.ravel()[:1], 3.0e4, 1.1e5, "Pa", pascals)
     t = within("temperature", temperature, 160.0, 330.0, "K", kelvin)
     r = within(
         "mixing_ratio",
@@ -241,7 +243,9 @@ def superadiabatic_notes(height: Array, temperature: Array) -> list[str]:
         f"{low:.0f} to {high:.0f} m ({fall / (high - low) * 1000.0:.0f} °C per km)" for low, high, fall in layers[:3]
     )
     more = f" and {len(layers) - 3} more" if len(layers) > 3 else ""
-    return [f"Temperature falls faster than 10.3 °C per km, rare but over heated ground; used as it is: {shown}{more}."]
+    return [
+        f"Temperature falls faster than 10.3 °C per km, rare except over heated ground (used as it is): {shown}{more}."
+    ]
 
 
 def filled_wind(height: Array, eastward: Array, northward: Array) -> tuple[Array, Array, list[str]]:

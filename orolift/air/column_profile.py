@@ -131,21 +131,25 @@ def relaxed_humidity(p: Array, humidity: Array, p_kept: Array) -> Array:
     return first + share * (np.minimum(first, DRY_HUMIDITY) - first)
 
 
-def vapour_at(p: Array, t: Array, e_liquid: Array, humidity: Array, *, freezing: bool) -> Array:
+def vapour_at(p: Array, e_liquid: Array, e_most: Array, humidity: Array) -> Array:
     """Mixing ratio of a relative humidity over liquid, at most that of saturation.
 
     Parameters
     ----------
-    p, t : ndarray, broadcast together [Pa, K]
-    e_liquid : ndarray, shape of `t` [Pa]
-        Saturation pressure over liquid, worked out once by the caller.
-    humidity : ndarray [1]
-    freezing : bool
-        False: saturation is over liquid at all temperatures.
+    p : ndarray (..., nz) [Pa]
+    e_liquid, e_most : ndarray (..., nz) [Pa]
+        Saturation pressure over liquid, and over the condensate the air forms;
+        worked out once by the caller, because temperature does not change.
+    humidity : ndarray (..., nz) [1]
 
     Returns
     -------
-    ndarray, broadcast shape [kg kg-1 of dry air]
+    ndarray (..., nz) [kg kg-1 of dry air]
+
+    Examples
+    --------
+    >>> vapour_at(np.array(5e4), np.array(287.0), np.array(270.0), np.array(0.5)).round(5)
+    np.float64(0.00179)
     """
-    e = humidity * e_liquid
-    return np.minimum(EPSILON * e / (p - e), saturation_mixing_ratio(p, t, freezing=freezing))
+    e = np.minimum(humidity * e_liquid, e_most)
+    return np.asarray(EPSILON * e / (p - e), dtype=np.float64)
