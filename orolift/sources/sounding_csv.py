@@ -184,6 +184,6 @@ def _refuse_swapped(temperature: NDArray[np.float64], dew_point: NDArray[np.floa
     above = dew_point > temperature + 0.5
     if above.mean() > 0.5:
         raise DataFileError(
-            f"{name}: dew point is above temperature at {int(above.sum())} of {above.size} levels, from line {line} on. "
+            f"{name}: dew point above temperature at {int(above.sum())} of {above.size} levels, from line {line} on. "
             "Are the two columns swapped?"
         )

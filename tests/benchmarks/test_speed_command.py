@@ -1,0 +1,46 @@
+"""Cold starts of the command: seconds and memory of a fresh process, beside a bare Python with numpy."""
+
+import resource
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pytest
+
+DEMO = Path(__file__).parents[2] / "demo_terrain"
+MEASURE = (
+    "import resource, sys; from orolift.cli.main import exit_code; code = exit_code(sys.argv[1:]);"
+    "print('peak_mb', resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024, file=sys.stderr); sys.exit(code)"
+)
+
+
+def best_of(arguments, folder, times=5) -> tuple[float, float]:
+    """Shortest wall time [s] of some fresh processes, and the peak memory [MB] of the last."""
+    shortest, peak = float("inf"), float("nan")
+    for _ in range(times):
+        began = time.perf_counter()
+        done = subprocess.run([sys.executable, *arguments], cwd=folder, capture_output=True, text=True, check=True)
+        shortest = min(shortest, time.perf_counter() - began)
+        peak = next((float(line.split()[1]) for line in done.stderr.splitlines() if line.startswith("peak_mb")), peak)
+    return shortest, peak
+
+
+@pytest.mark.speed
+@pytest.mark.parametrize(
+    ("name", "arguments", "seconds", "megabytes"),
+    [
+        ("help", ["--help"], 0.3, 250.0),
+        ("ridge", ["cross", str(DEMO / "varn_ridge.toml"), "--quiet"], 1.2, 250.0),
+        ("raster", ["cross", str(DEMO / "varn_moist.toml"), "--quiet"], 2.0, 400.0),
+        ("check", ["check", str(DEMO / "varn_ridge.toml")], 1.0, 250.0),
+    ],
+)
+def test_cold_command(name, arguments, seconds, megabytes, tmp_path):
+    """Seconds are for a quiet machine of two cores; the ratio to a bare start travels better."""
+    bare, _ = best_of(["-c", "import numpy"], tmp_path)
+    taken, peak = best_of(["-c", MEASURE, *arguments], tmp_path)
+    print(f"\n{name}: {taken:.2f} s, {taken / bare:.1f} times a bare start with numpy, peak {peak:.0f} MB")
+    assert taken <= seconds
+    assert peak <= megabytes
+    assert resource.getrusage(resource.RUSAGE_CHILDREN).ru_maxrss > 0
