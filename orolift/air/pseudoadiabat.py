@@ -9,10 +9,11 @@ ds = s_c dr becomes, with Y = s_dry + k s_c + v L / T,
 
 Y is a function of temperature and pressure alone. The right-hand side is
 small (the heat capacity of as much condensate as there is vapour), and zero for
-a reversible move. So a step is: the trapezoidal rule on the right, Newton's
-method for the temperature. It is of second order with a small constant, exact
-for g = 0, and the changes of slope at the ends of the freezing range do no harm
-because s_c itself is differenced. Scaled as in `phase`.
+a reversible move. A step takes the logarithmic mean of v, which is exact for an
+exponential, in the form (2 sqrt(v0 v1) + (v0 + v1) / 2) / 3, times the change of
+s_c, and Newton's method for the temperature. It is of second order with a small
+constant, exact for g = 0, and the changes of slope at the ends of the freezing
+range do little harm because s_c itself is differenced. Scaled as in `phase`.
 """
 
 from __future__ import annotations
@@ -28,7 +29,7 @@ if TYPE_CHECKING:
 
     Array = NDArray[np.float64]
 
-LONGEST_STEP = 0.15
+LONGEST_STEP, LONGEST_STEP_FREEZING = 0.15, 0.07  # in ln p: errors at 300 hPa below 0.003 K and 0.02 K
 _TOLERANCE = 1e-3 / 250.0  # what a Newton step of a millikelvin leaves is 3e-8 K
 _ANY_AMOUNT = phase.number(1e9)  # ln e of the total water: none, the air is saturated by definition
 
@@ -81,7 +82,8 @@ def along(
     """Temperature [K] and vapour of saturated air at the end of its way, up or down."""
     way = np.log(pressure_end / pressure)
     if steps is None:
-        steps = max(1, int(np.ceil(np.max(np.abs(way), initial=0.0) / LONGEST_STEP)))
+        longest = LONGEST_STEP_FREEZING if freezing else LONGEST_STEP
+        steps = max(1, int(np.ceil(np.max(np.abs(way), initial=0.0) / longest)))
     h = way / steps
     air = _saturated(np.log(temperature * equilibrium.PER_TRIPLE), pressure, kept, share, freezing=freezing)
     change = h * air.slope
@@ -128,9 +130,11 @@ def _step(
         new = _saturated(q, pressure, kept, share, freezing=freezing)
         last[0] = new
         rise = new.s_condensate - old.s_condensate
-        mean = share * 0.5 * (old.vapour + new.vapour)
+        fall = np.sqrt(new.vapour / old.vapour)
+        mean = share * old.vapour * (fall * (4.0 + fall) + 1.0) / 6.0
+        d_mean = share * (2.0 / fall + 1.0) / 6.0 * new.d_vapour
         excess = new.y - old.y + mean * rise
-        return -excess / (new.d_y + mean * new.d_condensate + 0.5 * share * rise * new.d_vapour)
+        return -excess / (new.d_y + mean * new.d_condensate + d_mean * rise)
 
     q, dq = equilibrium.root(newton, old.q + change, _TOLERANCE, (-3.0, 1.0))
     new = last[0]

@@ -12,25 +12,17 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.air import phase
+from orolift.air.ranges import checked_temperature
 from orolift.checks import within
 from orolift.errors import OutOfRangeError
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
-LOWEST_TEMPERATURE = 120.0
-HIGHEST_TEMPERATURE = 340.0
-
-
-def _temperature(values: ArrayLike) -> NDArray[np.float64]:
-    """Temperature, checked, as an array."""
-    hint = "orolift works in kelvin; add 273.15 to degrees Celsius."
-    return within("temperature", values, LOWEST_TEMPERATURE, HIGHEST_TEMPERATURE, "K", hint)
-
 
 def _linear(latent: NDArray[np.float64], slope: NDArray[np.float64], temperature: ArrayLike) -> NDArray[np.float64]:
     """Latent heat from its scaled value at the triple point and slope."""
-    t = _temperature(temperature) / phase.TRIPLE
+    t = checked_temperature(temperature) / phase.TRIPLE
     return np.asarray(phase.R_VAPOUR * phase.TRIPLE * (latent + slope * (t - 1.0)))
 
 
@@ -161,7 +153,7 @@ def saturation_vapour_pressure_over_liquid(temperature: ArrayLike) -> NDArray[np
     >>> saturation_vapour_pressure_over_liquid([273.16, 293.15]).round(1)
     array([ 611.7, 2338. ])
     """
-    t = _temperature(temperature) / phase.TRIPLE
+    t = checked_temperature(temperature) / phase.TRIPLE
     log_e, _, _ = phase.condensate(np.log(t), t, freezing=False)
     return np.asarray(phase.TRIPLE_PRESSURE * np.exp(log_e))
 
@@ -193,7 +185,7 @@ def saturation_vapour_pressure_over_ice(temperature: ArrayLike) -> NDArray[np.fl
     >>> saturation_vapour_pressure_over_ice([273.16, 253.15]).round(1)
     array([611.7, 103.3])
     """
-    t = _temperature(temperature) / phase.TRIPLE
+    t = checked_temperature(temperature) / phase.TRIPLE
     slope = phase.SUBLIMATION_SLOPE
     log_e = slope * np.log(t) + (phase.SUBLIMATION - slope) * (1.0 - 1.0 / t)
     return np.asarray(phase.TRIPLE_PRESSURE * np.exp(log_e))
@@ -227,7 +219,7 @@ def ice_share(temperature: ArrayLike) -> NDArray[np.float64]:
     >>> ice_share([280.0, 263.155, 250.0]).round(3)
     array([0.  , 0.74, 1.  ])
     """
-    return np.asarray(phase.ice_part(np.log(_temperature(temperature) / phase.TRIPLE)))
+    return np.asarray(phase.ice_part(np.log(checked_temperature(temperature) / phase.TRIPLE)))
 
 
 def saturation_vapour_pressure(temperature: ArrayLike, *, freezing: bool = True) -> NDArray[np.float64]:
@@ -262,7 +254,7 @@ def saturation_vapour_pressure(temperature: ArrayLike, *, freezing: bool = True)
     >>> saturation_vapour_pressure([283.15, 263.15, 243.15]).round(1)
     array([1227.8,  266.6,   38. ])
     """
-    t = _temperature(temperature) / phase.TRIPLE
+    t = checked_temperature(temperature) / phase.TRIPLE
     log_e, _, _ = phase.condensate(np.log(t), t, freezing=freezing)
     return np.asarray(phase.TRIPLE_PRESSURE * np.exp(log_e))
 
@@ -298,7 +290,7 @@ def latent_heat(temperature: ArrayLike, *, freezing: bool = True) -> NDArray[np.
     >>> latent_heat([273.16, 253.15]).round(-3)
     array([2501000., 2839000.])
     """
-    t = _temperature(temperature) / phase.TRIPLE
+    t = checked_temperature(temperature) / phase.TRIPLE
     _, bound, _ = phase.condensate(np.log(t), t, freezing=freezing)
     return np.asarray(phase.R_VAPOUR * phase.TRIPLE * t * bound)
 
