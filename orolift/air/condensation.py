@@ -1,4 +1,4 @@
-"""Where rising air first condenses, in closed form."""
+"""Where rising air first condenses: over liquid or ice in closed form, over both by Newton's method."""
 
 from __future__ import annotations
 
@@ -8,7 +8,9 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift import constants
+from orolift.air import pseudoadiabat
 from orolift.air.lambert import lower_lambert
+from orolift.air.parcel import Parcel
 from orolift.air.ranges import checked_mixing_ratio, checked_pressure, checked_temperature
 from orolift.checks import within
 
@@ -73,7 +75,7 @@ def lifting_condensation_level(
     """Level at which air lifted without exchange of heat saturates over liquid water.
 
     For saturation over the mixture of liquid and ice of `phase`, which comes
-    lower in cold air, use `condensation_point` in `parcel`.
+    lower in cold air, use `condensation_point`.
 
     Parameters
     ----------
@@ -141,6 +143,38 @@ def lifting_deposition_level(pressure: ArrayLike, temperature: ArrayLike, mixing
     252.5
     """
     return _level(*_checked(pressure, temperature, mixing_ratio), _ICE)
+
+
+def condensation_point(parcel: Parcel, *, freezing: bool = True) -> Parcel:
+    """Parcel at the place on its way up where it first saturates.
+
+    `lifting_condensation_level` gives the same over liquid in closed form.
+
+    Parameters
+    ----------
+    parcel : Parcel, any shape
+        With at least 1e-9 kg of vapour per kg; one that is saturated already stays where it is.
+    freezing : bool
+        False for saturation over liquid at all temperatures.
+
+    Returns
+    -------
+    Parcel
+
+    Raises
+    ------
+    OutOfRangeError
+        If a parcel is dry: it saturates nowhere.
+
+    Examples
+    --------
+    >>> start = Parcel(np.array(95e3), np.array(287.15), np.array(0.008), np.array(0.0))
+    >>> print(condensation_point(start).pressure.round(-1))
+    89080.0
+    """
+    v = checked_mixing_ratio(parcel.vapour, "parcel.vapour", 1e-9)
+    p, t = pseudoadiabat.first_saturation(parcel.pressure, parcel.temperature, v, parcel.cloud, freezing=freezing)
+    return Parcel(p, t, v, parcel.cloud)
 
 
 def condensation_temperature_bolton_1980(temperature: ArrayLike, vapour_pressure: ArrayLike) -> NDArray[np.float64]:

@@ -15,7 +15,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.air import equilibrium, phase, pseudoadiabat
-from orolift.air.ranges import checked_mixing_ratio, checked_pressure
+from orolift.air.ranges import checked_pressure
 from orolift.checks import within
 
 if TYPE_CHECKING:
@@ -91,6 +91,29 @@ def entropy(parcel: Parcel, *, freezing: bool = True) -> NDArray[np.float64]:
     dry = phase.CP_DRY * q - phase.EPSILON * np.log(p - e) + equilibrium.ENTROPY_ZERO
     wet = v * (phase.VAPORISATION + phase.CP_VAPOUR * q - log_e)
     return np.asarray(phase.R_VAPOUR * (dry + wet + parcel.cloud * phase.condensate_entropy(q, t, freezing)))
+
+
+def condensate_entropy(temperature: NDArray[np.float64], *, freezing: bool = True) -> NDArray[np.float64]:
+    """Entropy of a kilogram of condensate: what removed water takes along.
+
+    Parameters
+    ----------
+    temperature : ndarray, any shape [K]
+    freezing : bool
+        False keeps all condensate liquid.
+
+    Returns
+    -------
+    ndarray, shape of `temperature` [J K-1 kg-1]
+        Zero for liquid at 273.16 K. The range is not checked.
+
+    Examples
+    --------
+    >>> abs(float(condensate_entropy(np.array(273.16)))) < 1e-9
+    True
+    """
+    t = temperature * equilibrium.PER_TRIPLE
+    return np.asarray(phase.R_VAPOUR * phase.condensate_entropy(np.log(t), t, freezing))
 
 
 def enthalpy(parcel: Parcel, *, freezing: bool = True) -> NDArray[np.float64]:
@@ -266,38 +289,6 @@ def moved_to(parcel: Parcel, pressure: ArrayLike, *, freezing: bool = True) -> P
     return equilibrium_from_entropy(
         p, entropy(parcel, freezing=freezing), parcel.vapour + parcel.cloud, freezing=freezing
     )
-
-
-def condensation_point(parcel: Parcel, *, freezing: bool = True) -> Parcel:
-    """Parcel at the place on its way up where it first saturates.
-
-    `lifting_condensation_level` in `condensation` gives the same over liquid in closed form.
-
-    Parameters
-    ----------
-    parcel : Parcel, any shape
-        With at least 1e-9 kg of vapour per kg; one that is saturated already stays where it is.
-    freezing : bool
-        False for saturation over liquid at all temperatures.
-
-    Returns
-    -------
-    Parcel
-
-    Raises
-    ------
-    OutOfRangeError
-        If a parcel is dry: it saturates nowhere.
-
-    Examples
-    --------
-    >>> start = Parcel(np.array(95e3), np.array(287.15), np.array(0.008), np.array(0.0))
-    >>> print(condensation_point(start).pressure.round(-1))
-    89080.0
-    """
-    v = checked_mixing_ratio(parcel.vapour, "parcel.vapour", 1e-9)
-    p, t = pseudoadiabat.first_saturation(parcel.pressure, parcel.temperature, v, parcel.cloud, freezing=freezing)
-    return Parcel(p, t, v, parcel.cloud)
 
 
 def without_condensate(parcel: Parcel, share: ArrayLike) -> tuple[Parcel, NDArray[np.float64]]:

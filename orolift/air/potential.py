@@ -7,8 +7,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.air import pseudoadiabat
-from orolift.air.condensation import condensation_temperature_bolton_1980
-from orolift.air.parcel import Parcel, condensation_point, entropy
+from orolift.air.condensation import condensation_point, condensation_temperature_bolton_1980
+from orolift.air.parcel import Parcel, entropy
 from orolift.air.ranges import checked_mixing_ratio, checked_pressure, checked_temperature
 from orolift.checks import within
 from orolift.constants import (
