@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import logging
 import os
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -96,7 +96,8 @@ def work_out(case: str) -> Worked:
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
-    return Worked(inputs, crossing, results_of(crossing, inputs.case, inputs.cautions))
+    crossing = replace(crossing, cautions=(*inputs.cautions, *crossing.cautions))
+    return Worked(inputs, crossing, results_of(crossing, inputs.case))
 
 
 def report_of(worked: Worked, units: Units) -> str:
@@ -114,8 +115,7 @@ def report_of(worked: Worked, units: Units) -> str:
         valid_time=case.valid_time,
         made_at=made_at,
         version=__version__,
-        notes=tuple(worked.results.notes),
-        cautions=tuple(worked.results.cautions),
+        case_text=worked.inputs.text,
         units=units,
     )
     html = render(page)

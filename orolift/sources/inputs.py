@@ -15,8 +15,9 @@ from orolift.air.standard import standard_pressure, station_pressure_from_qnh
 from orolift.constants import STANDARD_LAPSE_RATE
 from orolift.crossing.crossing import Site
 from orolift.errors import CaseError, OroliftError
-from orolift.sources.case import read_case
+from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
+from orolift.sources.files import read_text
 from orolift.sources.ridge_csv import read_ridge
 from orolift.sources.sounding_csv import read_sounding
 from orolift.sources.units import to_si
@@ -55,6 +56,8 @@ class Inputs:
     case : Case
     path : Path
         The case file.
+    text : str
+        What stands in it.
     transect : Transect
     incoming : IncomingAir
     sites : tuple of Site
@@ -66,6 +69,7 @@ class Inputs:
 
     case: Case
     path: Path
+    text: str
     transect: Transect
     incoming: IncomingAir
     sites: tuple[Site, ...]
@@ -90,16 +94,17 @@ def read_inputs(path: str | Path) -> Inputs:
         One message that names the case file and the key, file or line at fault.
     """
     path = Path(path)
-    case = read_case(path)
+    text = read_text(path, "case")
+    case = case_from_text(text, str(path))
     try:
-        return _inputs(case, path)
+        return _inputs(case, path, text)
     except OroliftError as error:
-        if str(path) in str(error):
+        if str(error).startswith(str(path)):
             raise
         raise CaseError(f"{path}: {error}") from error
 
 
-def _inputs(case: Case, path: Path) -> Inputs:
+def _inputs(case: Case, path: Path, text: str) -> Inputs:
     folder = path.parent
     wind_from = math.radians(case.incoming.wind_from_deg)
     if case.terrain.elevation_file is None:
@@ -108,7 +113,7 @@ def _inputs(case: Case, path: Path) -> Inputs:
     else:
         transect, sites, offsets = _raster(case, folder, wind_from)
     incoming = _incoming(case.incoming, folder, features(transect).crest)
-    return Inputs(case, path, transect, incoming, sites, offsets, tuple(_remarks(case, transect, sites, offsets)))
+    return Inputs(case, path, text, transect, incoming, sites, offsets, tuple(_remarks(case, transect, sites, offsets)))
 
 
 def _ridge(terrain: Terrain, folder: Path, wind_from: float) -> Transect:

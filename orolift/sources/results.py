@@ -166,15 +166,13 @@ def celsius(kelvin: float) -> float:
     return float(kelvin) - UNITS["c"].offset
 
 
-def results_of(crossing: Crossing, case: Case, cautions: tuple[str, ...] = ()) -> Results:
+def results_of(crossing: Crossing, case: Case) -> Results:
     """Results of a crossing, unrounded.
 
     Parameters
     ----------
     crossing : Crossing
     case : Case
-    cautions : tuple of str
-        What the reading of the inputs found doubtful, put before those of the crossing.
 
     Returns
     -------
@@ -220,7 +218,7 @@ def results_of(crossing: Crossing, case: Case, cautions: tuple[str, ...] = ()) -
         lee=[_lee(site, crossing) for site in crossing.lee],
         fire=[],
         flags=[],
-        cautions=[*cautions, *crossing.cautions],
+        cautions=[*crossing.cautions],
         notes=[*crossing.notes],
     )
 

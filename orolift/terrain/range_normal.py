@@ -71,7 +71,7 @@ def range_normal(elevation: NDArray[np.float64], spacing: float, downwind: float
     90
     """
     smooth, weight = _smoothed(elevation, spacing)
-    south, east = np.gradient(smooth, spacing)
+    south, east = np.gradient(smooth, spacing, axis=0), np.gradient(smooth, spacing, axis=1)
     known = weight >= LEAST_KNOWN
     e, n = east[known], -south[known]
     total = float(np.sum(e * e + n * n))

@@ -54,7 +54,7 @@ def test_two_runs_are_equal_to_the_byte(case_folder, monkeypatch):
 
 WRONG = [
     ([(RIDGE, 'ridge_file = "nowhere.csv"')], r"ridge_file: .*nowhere.csv cannot be found"),
-    ([(RIDGE, 'elevation_file = "case.toml"'), ("distance_km = 50", "longitude = 5\nlatitude = 5")], r"case.toml"),
+    ([(RIDGE, 'elevation_file = "case.toml"'), ("distance_km = 50", "longitude = 5\nlatitude = 5")], "is not a raster that GDAL can read"),
     (
         [(RIDGE, 'elevation_file = "http://a.example/x.tif"'), ("distance_km = 50", "longitude = 5\nlatitude = 5")],
         "local files only",
@@ -65,7 +65,7 @@ WRONG = [
     ),
     ([("[25, 1850], [60, 210]", "[60, 1850], [25, 210]")], "do not increase"),
     ([("[[0, 40], [25, 1850], [60, 210]]", "[[0, 40], [25, 1850]]")], "at least 3 points"),
-    ([("1850", "65")], "the ridge is flat"),
+    ([("[25, 1850], [60, 210]", "[25, 65], [60, 41]")], "the ridge is flat"),
     ([("1850", "nan")], "nan is not a number"),
     ([("1850", "60700")], "elevation"),
     ([("dew_point_c = 11.0", "dew_point_c = 16.0")], "dew"),
