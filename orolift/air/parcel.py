@@ -176,7 +176,9 @@ def equilibrium_from_entropy(
         10 K it costs nothing in reliability, and a bad one only time.
     tolerance : float [K]
         Newton's method stops after a step no longer than this. What is left
-        is about 0.03 K-1 times its square: 3e-12 K by default.
+        is about 0.03 K-1 times its square, 3e-12 K by default; where the last step
+        crosses the edge of the cloud or of the freezing range, at most the step
+        itself. A march with a guess extrapolated from its last two steps can do with 0.02.
 
     Returns
     -------
