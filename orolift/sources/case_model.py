@@ -173,7 +173,7 @@ class Incoming(Table):
         default=None, description="wind at crest height"
     )
     crest_wind_from_deg: Bearing | None = Field(default=None, description="default: wind_from_deg")
-    lapse_rate_c_per_km: Annotated[float, Field(ge=-10.0, le=11.0)] | None = Field(
+    lapse_rate_c_per_km: Annotated[float, Field(ge=0.0, le=11.0)] | None = Field(
         default=None, description="above the station; default 6.5"
     )
 

@@ -11,6 +11,7 @@ from pydantic import BaseModel, ConfigDict, Field
 from orolift import __version__
 from orolift.air.column import column_vapour, freezing_level
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.constants import MELTING_POINT
 from orolift.sources.units import UNITS
 
 if TYPE_CHECKING:
@@ -234,7 +235,7 @@ def _incoming(crossing: Crossing) -> IncomingBlock:
         wind_ms=float((air.eastward_wind[0] ** 2 + air.northward_wind[0] ** 2) ** 0.5),
         cross_range_wind_ms=crossing.crest_wind,
         stability_per_s=None,
-        freezing_level_m=level if level == level else None,  # noqa: PLR0124 (NaN means none)
+        freezing_level_m=level if level > air.height[0] or temperature >= MELTING_POINT else None,
         column_vapour_kg_m2=float(column_vapour(air)),
     )
 
