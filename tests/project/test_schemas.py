@@ -78,7 +78,7 @@ def test_shipped_cases_are_valid(file):
 def test_a_results_file_is_valid():
     """What the starter case gives, as it is written; and each way of spoiling it is seen."""
     inputs = read_inputs(STARTER)
-    results = results_of(cross(inputs.transect, inputs.incoming, inputs.sites), inputs.case, inputs.cautions)
+    results = results_of(cross(inputs.transect, inputs.incoming, inputs.sites), inputs.case)
     data = json.loads(results.model_dump_json())
     assert faults(results_schema(), data) == []
     assert faults(results_schema(), {**data, "schema_version": "0"})
