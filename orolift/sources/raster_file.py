@@ -7,6 +7,7 @@ import re
 import warnings
 from contextlib import contextmanager
 from dataclasses import dataclass, field
+from pathlib import Path
 from typing import TYPE_CHECKING, Any, Literal
 from xml.etree import ElementTree as ET
 
@@ -19,7 +20,6 @@ from orolift.terrain.transect import HIGHEST_GROUND
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
-    from pathlib import Path
 
     from numpy.typing import NDArray
 
@@ -28,8 +28,9 @@ LONGITUDE_LATITUDE = "EPSG:4326"
 CACHE_MB = 64  # GDAL keeps decoded blocks up to this; its default is a share of the machine's memory
 OVERVIEW_CELLS = 2048  # longest side at which a whole raster is looked at
 CHUNK = 32  # points along a line read with one window, so that a slanting line does not read its whole bounding box
+ONE_WINDOW = 1_000_000  # cells; a bounding box with fewer is read at once
 _NO_GROUND = -12_000.0  # [m] below the deepest trench: a "missing" value nobody declared
-_ADDRESS = re.compile(r"/vsi|\b[a-z][a-z0-9+.-]+://", re.IGNORECASE)
+_ADDRESS = re.compile(r"(?<![\w.-])/vsi\w+|\b[a-z][a-z0-9+.-]+://", re.IGNORECASE)
 _UNIT_WORDS = {
     "": 1.0,
     **dict.fromkeys(("m", "metre", "metres", "meter", "meters"), 1.0),
@@ -117,7 +118,7 @@ def _refuse_hidden_addresses(path: Path, name: str) -> None:
     waiting = [path]
     while waiting:
         file = waiting.pop()
-        if file in seen or not file.is_file():
+        if file in seen or not _is_file(file):
             continue
         seen.add(file)
         text = _description(file)
@@ -127,7 +128,16 @@ def _refuse_hidden_addresses(path: Path, name: str) -> None:
                 f"{name} leads to an address ({text[found.start() : found.start() + 60].split()[0]}), and orolift "
                 "reads local files only. Save what it points to beside the case first."
             )
-        waiting += [file.parent / word for word in text.split("\n") if word and len(word) < 4096]
+        words = text.split("\n")
+        waiting += [file.parent / word for word in words] + [Path(word) for word in words]
+
+
+def _is_file(path: Path) -> bool:
+    """Whether a text names a file; sentences that are no path at all are none."""
+    try:
+        return path.is_file()
+    except (OSError, ValueError):
+        return False
 
 
 def _description(file: Path) -> str:
@@ -223,7 +233,8 @@ def sampled(raster: RasterFile, row: Any, column: Any, step: int) -> NDArray[np.
     """Ground at fractional rows and columns, from means of `step` x `step` cells.
 
     Reads only windows round the points, `CHUNK` points of the last axis at a
-    time, with the overviews of the file if it has them. NaN where there are no data.
+    time unless all of them lie close together, with the overviews of the file
+    if it has them. NaN where there are no data.
 
     Parameters
     ----------
@@ -237,8 +248,11 @@ def sampled(raster: RasterFile, row: Any, column: Any, step: int) -> NDArray[np.
     ndarray, shape (..., ns) [m]
     """
     ground = np.full(row.shape, np.nan)
-    for start in range(0, row.shape[-1], CHUNK):
-        part = (..., slice(start, start + CHUNK))
+    r0, r1 = _window_limits(row, step, raster.dataset.height)
+    c0, c1 = _window_limits(column, step, raster.dataset.width)
+    chunk = row.shape[-1] if (r1 - r0) * (c1 - c0) <= ONE_WINDOW else CHUNK
+    for start in range(0, row.shape[-1], chunk):
+        part = (..., slice(start, start + chunk))
         r0, r1 = _window_limits(row[part], step, raster.dataset.height)
         c0, c1 = _window_limits(column[part], step, raster.dataset.width)
         if r1 <= r0 or c1 <= c0:
