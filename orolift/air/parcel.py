@@ -357,9 +357,13 @@ def ascent(
 
     Notes
     -----
-    Up to saturation the move is exact. Beyond, see `pseudoadiabat`: what
-    leaves takes its own entropy along, and of the kept condensate the parcel carries the heat
-    capacity and, with `freezing`, the heat of fusion. With nothing removed the
+    Up to saturation the move is exact. Beyond, water that leaves takes its
+    entropy along: ds = s_c dr, where the total water r = k + g v follows the
+    saturated vapour v, g is the share removed and k = cloud + (1 - g) v at first saturation. With
+    Y = s_dry + k s_c + v L / T, a function of temperature and pressure, that
+    is dY = -g v ds_c; `pseudoadiabat` tells how it is stepped. Of the kept condensate
+    the parcel carries the heat capacity and, with `freezing`, the heat of
+    fusion; it evaporates first when the parcel sinks. With nothing removed the
     result is that of `moved_to`, without any step.
 
     Examples
