@@ -7,13 +7,18 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.parcel import Parcel, entropy, equilibrium_from_entropy, without_condensate
+from orolift.air.parcel import Parcel, condensate_entropy, entropy, equilibrium_from_entropy
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
+    Array = NDArray[np.float64]
 
-@dataclass(frozen=True)
+TOLERANCE = 1e-3
+"""Last Newton step [K] at which a place is left; what remains is below 1e-7 K."""
+
+
+@dataclass(frozen=True, eq=False)
 class March:
     """Air along streamlines, and the water that left it.
 
@@ -29,16 +34,16 @@ class March:
     removed : ndarray, shape (nx, ...) [kg per kg of dry air]
         Of it, the water that left the air there.
     entropy : ndarray, shape (nx, ...) [J K-1 per kg of dry air]
-        Moist entropy of what is left; falls only where water is removed.
+        Moist entropy of what is left; changes only where water is removed.
     """
 
-    pressure: NDArray[np.float64]
-    temperature: NDArray[np.float64]
-    vapour: NDArray[np.float64]
-    cloud: NDArray[np.float64]
-    condensed: NDArray[np.float64]
-    removed: NDArray[np.float64]
-    entropy: NDArray[np.float64]
+    pressure: Array
+    temperature: Array
+    vapour: Array
+    cloud: Array
+    condensed: Array
+    removed: Array
+    entropy: Array
 
 
 def march(start: Parcel, pressure: ArrayLike, removed_share: ArrayLike = 0.0, *, freezing: bool = True) -> March:
@@ -67,34 +72,66 @@ def march(start: Parcel, pressure: ArrayLike, removed_share: ArrayLike = 0.0, *,
     nothing removed the air returns exactly, whatever the step. The removal is
     first order in the step: with 512 steps the error of the lee temperature is
     below 0.01 K (see ``tests/crossing/test_march.py``).
+
+    Streamlines that never condense, or lose nothing, are solved for all
+    places at once; only the others are stepped.
     """
     path = np.asarray(pressure, dtype=np.float64)
     shape = np.broadcast_shapes(path.shape[1:], np.shape(start.temperature))
-    path = np.stack([np.broadcast_to(level, shape) for level in path])
-    share = np.broadcast_to(np.asarray(removed_share, dtype=np.float64), shape)
-    out = {key: np.empty(path.shape) for key in ("temperature", "vapour", "cloud", "condensed", "removed", "entropy")}
-    s = np.broadcast_to(np.asarray(entropy(start, freezing=freezing)), shape).copy()
-    water = np.broadcast_to(np.asarray(start.vapour + start.cloud), shape).copy()
-    cloud = np.broadcast_to(np.asarray(start.cloud, dtype=np.float64), shape)
-    guess = np.broadcast_to(np.asarray(start.temperature, dtype=np.float64), shape)
-    for i in range(path.shape[0]):
-        parcel = equilibrium_from_entropy(path[i], s, water, freezing=freezing, first_guess=guess)
+    path = np.stack([np.broadcast_to(level, shape) for level in path]).reshape(path.shape[0], -1)
+    share, s, water, cloud = (
+        np.broadcast_to(np.asarray(x, dtype=np.float64), shape).reshape(-1)
+        for x in (removed_share, entropy(start, freezing=freezing), start.vapour + start.cloud, start.cloud)
+    )
+    kept = equilibrium_from_entropy(path, s, water, freezing=freezing)
+    new = np.maximum(np.diff(kept.cloud, axis=0, prepend=cloud[np.newaxis]), 0.0)
+    out = {
+        "temperature": kept.temperature,
+        "vapour": kept.vapour,
+        "cloud": kept.cloud,
+        "condensed": new,
+        "removed": np.zeros_like(path),
+        "entropy": np.broadcast_to(s, path.shape).copy(),
+    }
+    losing = np.flatnonzero(np.any(new > 0.0, axis=0) & (share > 0.0))
+    if losing.size:
+        first = int(np.argmax(np.any(new[:, losing] > 0.0, axis=1)))
+        before = cloud[losing] if first == 0 else kept.cloud[first - 1, losing]
+        _step(out, path, losing, first, before, water[losing], share[losing], freezing=freezing)
+    whole = (path.shape[0], *shape)
+    return March(pressure=path.reshape(whole), **{key: value.reshape(whole) for key, value in out.items()})
+
+
+def _step(
+    out: dict[str, Array],
+    path: Array,
+    losing: NDArray[np.intp],
+    first: int,
+    cloud: Array,
+    water: Array,
+    share: Array,
+    *,
+    freezing: bool,
+) -> None:
+    """Step the streamlines that lose water downwind, from the first place at which one condenses."""
+    s = out["entropy"][first, losing]
+    guess = out["temperature"][first, losing]
+    last = guess
+    p = path[:, losing]
+    for i in range(first, path.shape[0]):
+        parcel = equilibrium_from_entropy(p[i], s, water, freezing=freezing, first_guess=guess, tolerance=TOLERANCE)
         new = np.maximum(parcel.cloud - cloud, 0.0)
         removed = share * new
-        if removed.any():
-            with np.errstate(invalid="ignore", divide="ignore"):
-                part = np.where(parcel.cloud > 0.0, removed / parcel.cloud, 0.0)
-            parcel, removed = without_condensate(parcel, part)
-            s = np.asarray(entropy(parcel, freezing=freezing))
-            water = parcel.vapour + parcel.cloud
-        cloud, guess = parcel.cloud, parcel.temperature
+        s = s - removed * condensate_entropy(parcel.temperature, freezing=freezing)
+        water = water - removed
+        cloud = parcel.cloud - removed
+        guess, last = 2.0 * parcel.temperature - last, parcel.temperature  # straight on: most places need one step
         for key, value in (
             ("temperature", parcel.temperature),
             ("vapour", parcel.vapour),
-            ("cloud", parcel.cloud),
+            ("cloud", cloud),
             ("condensed", new),
             ("removed", removed),
             ("entropy", s),
         ):
-            out[key][i] = value
-    return March(pressure=path, **out)
+            out[key][i, losing] = value
