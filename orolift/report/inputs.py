@@ -1,0 +1,191 @@
+"""What went in: the incoming air, the range, the options."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.air.column import column_vapour, interpolated
+from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.report.quantities import Amount
+
+if TYPE_CHECKING:
+    from orolift.crossing.crossing import Crossing
+    from orolift.report.words import Words
+
+LEVELS = (500.0, 1000.0, 1500.0, 2000.0, 3000.0, 4000.0, 5000.0, 7000.0, 9000.0)
+"""Heights above sea level [m] at which the incoming air is listed, with its ground."""
+
+
+@dataclass(frozen=True)
+class Fact:
+    """A name and what it is."""
+
+    name: str
+    words: Words
+
+
+@dataclass(frozen=True)
+class FactGroup:
+    """Facts that belong together."""
+
+    name: str
+    facts: tuple[Fact, ...]
+
+
+@dataclass(frozen=True)
+class Level:
+    """The incoming air at one height.
+
+    Attributes
+    ----------
+    height, pressure, temperature, dew_point, relative_humidity : Amount
+    wind_from, wind : Amount
+    origin : str
+        Where it comes from.
+    """
+
+    height: Amount
+    pressure: Amount
+    temperature: Amount
+    dew_point: Amount
+    relative_humidity: Amount
+    wind_from: Amount
+    wind: Amount
+    origin: str
+
+
+@dataclass(frozen=True)
+class Inputs:
+    """Everything that went in, as it was understood.
+
+    Attributes
+    ----------
+    heading : Words
+    groups : tuple of FactGroup
+    levels : tuple of Level
+    case_text : str or None
+        The case file, word for word.
+    """
+
+    heading: Words
+    groups: tuple[FactGroup, ...]
+    levels: tuple[Level, ...]
+    case_text: str | None
+
+
+def inputs(crossing: Crossing, bearing: float, freezing_level: float, case_text: str | None) -> Inputs:
+    """What went in.
+
+    Parameters
+    ----------
+    crossing : Crossing
+    bearing : float [rad]
+        Direction the wind comes from.
+    freezing_level : float [m]
+    case_text : str or None
+
+    Returns
+    -------
+    Inputs
+    """
+    levels = _levels(crossing)
+    ground = levels[0]
+    source = (
+        "A station report, continued upward"
+        if "measured" not in crossing.incoming.origin
+        else f"{crossing.incoming.origin.count('measured')} measured levels"
+    )
+    heading: Words = (
+        source,
+        ": ",
+        ground.temperature,
+        " and ",
+        ground.relative_humidity,
+        " humidity at ",
+        ground.height,
+    )
+    groups = (_air_facts(crossing, ground, freezing_level), _range_facts(crossing, bearing), _options(crossing))
+    return Inputs(heading=heading, groups=groups, levels=levels, case_text=case_text)
+
+
+def _air_facts(crossing: Crossing, ground: Level, freezing_level: float) -> FactGroup:
+    facts = (
+        Fact("Ground", (ground.height,)),
+        Fact("Pressure", (ground.pressure,)),
+        Fact("Temperature", (ground.temperature,)),
+        Fact("Dew point", (ground.dew_point,)),
+        Fact("Humidity", (ground.relative_humidity, " over liquid water")),
+        Fact("Wind", (ground.wind, " from ", ground.wind_from)),
+        Fact("Wind across the crest", (Amount(crossing.crest_wind, "wind", 1),)),
+        Fact("Freezing level", (Amount(freezing_level, "height"),)),
+        Fact("Vapour in the column", (Amount(float(column_vapour(crossing.incoming)), "water_depth", 1), " of water")),
+        Fact("Vapour carried along the line", (Amount(crossing.column_vapour_flux, "vapour_flux"),)),
+    )
+    return FactGroup("Incoming air (at its ground)", facts)
+
+
+def _range_facts(crossing: Crossing, bearing: float) -> FactGroup:
+    shape, line = crossing.features, crossing.transect
+    length = float(line.distance[-1] - line.distance[0])
+
+    def at(height: float, distance: float) -> Words:
+        return (Amount(height, "height"), " at ", Amount(distance + line.origin, "distance", 1))
+
+    facts = (
+        Fact("Line runs from", (Amount(bearing, "bearing"),)),
+        Fact("Length", (Amount(length, "distance", 1), f", {line.distance.size} points")),
+        Fact("Base", at(shape.base, shape.base_distance)),
+        Fact("Crest", at(shape.crest, shape.crest_distance)),
+        Fact("Lee foot", at(shape.lee_foot, shape.lee_foot_distance)),
+        Fact("Half width", (Amount(shape.half_width, "distance", 1),)),
+    )
+    return FactGroup("Range", facts)
+
+
+def _options(crossing: Crossing) -> FactGroup:
+    return FactGroup(
+        "Options",
+        (
+            Fact("Condensed water that leaves", (Amount(crossing.removed_share, "share"), ", prescribed, as it forms")),
+            Fact(
+                "Freezing of cloud",
+                (
+                    "ice share from none at ",
+                    Amount(273.15, "temperature"),
+                    " to all at ",
+                    Amount(253.15, "temperature"),
+                ),
+            ),
+            Fact("Streamlines", (f"{crossing.height.shape[1]}",)),
+        ),
+    )
+
+
+def _levels(crossing: Crossing) -> tuple[Level, ...]:
+    """The incoming air at its ground and at round heights above."""
+    column = crossing.incoming
+    ground, top = float(column.height[0]), float(column.height[-1])
+    heights = np.array([ground, *(h for h in LEVELS if ground + 100.0 < h <= top)])
+    air = interpolated(column, heights)
+    dew_point = dew_point_from_mixing_ratio(air.pressure, air.vapour)
+    humidity = relative_humidity_from_mixing_ratio(air.pressure, air.temperature, air.vapour)
+    nearest = np.abs(column.height[:, np.newaxis] - heights).argmin(axis=0)
+    wind_from = np.arctan2(-air.eastward_wind, -air.northward_wind) % (2.0 * math.pi)
+    wind = np.hypot(air.eastward_wind, air.northward_wind)
+    return tuple(
+        Level(
+            height=Amount(float(heights[i]), "height"),
+            pressure=Amount(float(air.pressure[i]), "pressure", 1),
+            temperature=Amount(float(air.temperature[i]), "temperature", 1),
+            dew_point=Amount(float(dew_point[i]), "temperature", 1),
+            relative_humidity=Amount(float(humidity[i]), "share"),
+            wind_from=Amount(float(wind_from[i]), "bearing"),
+            wind=Amount(float(wind[i]), "wind"),
+            origin=column.origin[int(nearest[i])] if column.origin else "",
+        )
+        for i in range(heights.size)
+    )

@@ -1,0 +1,118 @@
+"""The page as data: raw numbers and words, no HTML."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from orolift.air.column import freezing_level
+from orolift.crossing.crossing import toward
+from orolift.report.briefing import Briefing, briefing
+from orolift.report.cautions import Cautions, cautions
+from orolift.report.figures.path import path
+from orolift.report.figures.section import section
+from orolift.report.inputs import Inputs, inputs
+from orolift.report.method import Method, method
+from orolift.report.places import Journey, journey, section_heading
+from orolift.report.quantities import Units, quantity
+from orolift.report.sites import Sites, sites
+from orolift.report.words import Words, moment, point_of_compass
+
+if TYPE_CHECKING:
+    from datetime import datetime
+
+    from orolift.crossing.crossing import Crossing
+    from orolift.report.figures.drawing import Figure
+    from orolift.report.figures.path import PathDrawing
+    from orolift.report.figures.section import SectionDrawing
+
+
+@dataclass(frozen=True)
+class Page:
+    """Everything the report shows.
+
+    Attributes
+    ----------
+    title : str
+    valid, made : str
+        In words; `valid` is empty when the case names no time.
+    version : str
+    units : 'metric' or 'us'
+    briefing : Briefing
+    section_heading : Words
+    section : Figure
+    journey : Journey
+    path : Figure
+    sites : Sites
+    inputs : Inputs
+    method : Method
+    cautions : Cautions
+    """
+
+    title: str
+    valid: str
+    made: str
+    version: str
+    units: Units
+    briefing: Briefing
+    section_heading: Words
+    section: Figure[SectionDrawing]
+    journey: Journey
+    path: Figure[PathDrawing]
+    sites: Sites
+    inputs: Inputs
+    method: Method
+    cautions: Cautions
+
+
+def page_of(
+    crossing: Crossing,
+    *,
+    title: str | None,
+    valid_time: datetime | None,
+    made_at: datetime,
+    version: str,
+    case_text: str | None = None,
+    units: Units = "metric",
+) -> Page:
+    """The page of a crossing.
+
+    Parameters
+    ----------
+    crossing : Crossing
+    title : str or None
+        None takes one from wind and crest.
+    valid_time : datetime or None
+        When the case is valid, with its zone.
+    made_at : datetime
+        When the report is made; passed in so that equal input gives equal pages.
+    version : str
+        Of orolift.
+    case_text : str, optional
+        The case file, printed word for word.
+    units : 'metric' or 'us'
+
+    Returns
+    -------
+    Page
+    """
+    bearing = (toward(crossing.transect, crossing.incoming) + math.pi) % (2.0 * math.pi)
+    freezing = float(freezing_level(crossing.incoming))
+    crest = quantity(crossing.features.crest, "height", 0, units)
+    return Page(
+        title=title or f"Air from the {point_of_compass(bearing)} over a crest at {crest}",
+        valid="" if valid_time is None else moment(valid_time),
+        made=moment(made_at),
+        version=version,
+        units=units,
+        briefing=briefing(crossing, bearing, freezing),
+        section_heading=section_heading(crossing),
+        section=section(crossing, bearing, freezing, units),
+        journey=journey(crossing),
+        path=path(crossing, units),
+        sites=sites(crossing),
+        inputs=inputs(crossing, bearing, freezing, case_text),
+        method=method(),
+        cautions=cautions(crossing, freezing, valid_time),
+    )

@@ -1,0 +1,158 @@
+"""The air at every site, beside the incoming air at its height and beside the popular picture."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from orolift.report.briefing import SAME, difference
+from orolift.report.quantities import Amount
+from orolift.report.words import Words, counted, sentence
+
+if TYPE_CHECKING:
+    from orolift.crossing.crossing import Crossing, LeeAir
+
+TELLING = 2.0
+"""Answers further apart than this [K] are explained; a judgement."""
+
+
+@dataclass(frozen=True)
+class SiteRow:
+    """One site.
+
+    Attributes
+    ----------
+    number : int
+        Of its pin in the figures.
+    name, side : str
+    distance, elevation : Amount
+    temperature, dew_point, relative_humidity, mixing_ratio : Amount
+        The air that arrives.
+    upwind_temperature, upwind_dew_point : Amount
+        The incoming air at the same height.
+    warming : Amount
+        Site minus incoming air.
+    popular_picture, popular_gap : Amount or None
+        The textbook answer, and how far it is from ours; None on the windward
+        side, for which it gives none.
+    """
+
+    number: int
+    name: str
+    side: str
+    distance: Amount
+    elevation: Amount
+    temperature: Amount
+    dew_point: Amount
+    relative_humidity: Amount
+    mixing_ratio: Amount
+    upwind_temperature: Amount
+    upwind_dew_point: Amount
+    warming: Amount
+    popular_picture: Amount | None
+    popular_gap: Amount | None
+
+
+@dataclass(frozen=True)
+class Sites:
+    """The sites: a conclusion, the rows, what to know when reading them."""
+
+    heading: Words
+    rows: tuple[SiteRow, ...]
+    remarks: tuple[Words, ...]
+
+
+def sites(crossing: Crossing) -> Sites:
+    """The sites of a crossing, in the order of the case.
+
+    Parameters
+    ----------
+    crossing : Crossing
+
+    Returns
+    -------
+    Sites
+    """
+    rows = tuple(_row(air, number, crossing) for number, air in enumerate(crossing.lee, start=1))
+    return Sites(heading=_heading(crossing.lee), rows=rows, remarks=_remarks(crossing))
+
+
+def _row(air: LeeAir, number: int, crossing: Crossing) -> SiteRow:
+    over = air.side != "windward"
+    gap = air.popular_picture - air.temperature
+    return SiteRow(
+        number=number,
+        name=air.name,
+        side=air.side,
+        distance=Amount(air.distance + crossing.transect.origin, "distance", 1),
+        elevation=Amount(air.elevation, "height"),
+        temperature=Amount(air.temperature, "temperature", 1),
+        dew_point=Amount(air.dew_point, "temperature", 1),
+        relative_humidity=Amount(air.relative_humidity, "share"),
+        mixing_ratio=Amount(air.mixing_ratio, "mixing_ratio", 1),
+        upwind_temperature=Amount(air.upwind_temperature, "temperature", 1),
+        upwind_dew_point=Amount(air.upwind_dew_point, "temperature", 1),
+        warming=Amount(air.warming, "temperature_change", 1),
+        popular_picture=Amount(air.popular_picture, "temperature", 1) if over else None,
+        popular_gap=Amount(gap, "temperature_change", 1) if over else None,
+    )
+
+
+def _heading(lee: tuple[LeeAir, ...]) -> Words:
+    """How much warmer or cooler the sites are, one by name, several by their span."""
+    chosen = [air for air in lee if air.side == "lee"] or list(lee)
+    if len(chosen) == 1:
+        air = chosen[0]
+        words = difference(air.warming, "warmer than", "cooler than", "as warm as")
+        return (f"{air.name} is ", *words, " the incoming air at its height")
+    least, most = min(air.warming for air in chosen), max(air.warming for air in chosen)
+    noun = "lee site" if chosen[0].side == "lee" else "site"
+    start = f"{counted(len(chosen), noun, f'{noun}s')} are "
+    end = "the incoming air at their height"
+    if least > SAME or most < -SAME:
+        low, high = sorted((abs(least), abs(most)))
+        which = "warmer" if least > SAME else "cooler"
+        span: Words = (Amount(low, "temperature_difference", 1), " to ", Amount(high, "temperature_difference", 1))
+        if high - low < SAME:
+            span = (Amount(high, "temperature_difference", 1),)
+        return sentence((start, *span, f" {which} than {end}"))
+    return sentence(
+        (
+            start,
+            "between ",
+            *difference(least, "warmer", "cooler", "as warm"),
+            " and ",
+            *difference(most, "warmer than", "cooler than", "as warm as"),
+            f" {end}",
+        )
+    )
+
+
+def _remarks(crossing: Crossing) -> tuple[Words, ...]:
+    what = (
+        "The popular picture lifts the surface air over the crest, lets every drop that condenses fall out, and brings "
+        "the air down dry."
+    )
+    out: list[Words] = [(what,)]
+    gap = max(
+        (air.popular_picture - air.temperature for air in crossing.lee if air.side == "lee"), key=abs, default=0.0
+    )
+    if abs(gap) > TELLING:
+        why = (
+            "the water that stays in the air evaporates again on the way down and takes back the heat it gave"
+            if gap > 0.0
+            else "it lifts the air only once, over the highest ground"
+        )
+        size = Amount(abs(gap), "temperature_difference", 1)
+        out.append(("It differs by up to ", size, f" from the values here, because {why}."))
+    ground = float(crossing.incoming.height[0])
+    low = [air.name for air in crossing.lee if air.elevation < ground]
+    if low:
+        out.append(
+            (
+                f"Below the upwind ground at {', '.join(low)}: the incoming air is continued down from ",
+                Amount(ground, "height"),
+                ", so the comparison there is with air that does not exist.",
+            )
+        )
+    return tuple(out)

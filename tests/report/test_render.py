@@ -1,0 +1,253 @@
+"""The HTML file: self-contained, escaped, readable by machines and screen readers, the same every time."""
+
+import ast
+import re
+from dataclasses import replace
+from html.parser import HTMLParser
+from itertools import pairwise
+from pathlib import Path
+
+import pytest
+from jinja2 import UndefinedError
+
+import orolift.report
+from orolift.report import render as render_module
+from orolift.report.quantities import bare, shown
+from orolift.report.render import render
+
+REPORT = Path(orolift.report.__file__).parent
+TEMPLATES = sorted((REPORT / "templates").rglob("*.jinja"))
+STYLE = (REPORT / "templates" / "style.css").read_text(encoding="utf-8")
+VOID = {"meta", "br", "link", "img", "input", "hr"}
+
+
+class Reader(HTMLParser):
+    """Elements of a page: tag, attributes, own text, parents."""
+
+    def __init__(self, html):
+        super().__init__()
+        self.elements = []
+        self.stack = []
+        self.feed(html)
+        assert not self.stack
+
+    def handle_starttag(self, tag, attrs):
+        element = {"tag": tag, "attrs": dict(attrs), "text": "", "parents": [e["tag"] for e in self.stack]}
+        assert len(element["attrs"]) == len(attrs)
+        self.elements.append(element)
+        if tag not in VOID:
+            self.stack.append(element)
+
+    def handle_startendtag(self, tag, attrs):
+        self.elements.append({"tag": tag, "attrs": dict(attrs), "text": "", "parents": []})
+
+    def handle_endtag(self, tag):
+        assert self.stack.pop()["tag"] == tag
+
+    def handle_data(self, data):
+        for element in self.stack:
+            element["text"] += data
+
+    def all(self, tag):
+        return [element for element in self.elements if element["tag"] == tag]
+
+
+@pytest.fixture
+def read(page_for):
+    """The rendered page of a crossing, parsed."""
+
+    def parsed(crossing, **more):
+        return Reader(render(page_for(crossing, **more)))
+
+    return parsed
+
+
+def amounts_of(thing):
+    """Every amount anywhere inside a page."""
+    from dataclasses import fields, is_dataclass
+
+    from orolift.report.quantities import Amount
+
+    if isinstance(thing, Amount):
+        return [thing]
+    if is_dataclass(thing):
+        return [found for field in fields(thing) for found in amounts_of(getattr(thing, field.name))]
+    return [found for item in thing for found in amounts_of(item)] if isinstance(thing, tuple) else []
+
+
+@pytest.mark.parametrize("units", ["metric", "us"])
+def test_every_number_shown_is_a_rounded_number_of_the_page(page_for, any_crossing, units):
+    """Each data element reads as an amount of the page with the same raw value; and no amount is left out."""
+    page = page_for(any_crossing, units=units)
+    elements = Reader(render(page)).all("data")
+    readings = {}
+    for amount in amounts_of(page):
+        readings.setdefault(repr(float(amount.value)), set()).update({shown(amount, units), bare(amount, units)})
+    constants = {repr(row.value): row.digits for row in page.method.constants}
+    seen = set()
+    for element in elements:
+        raw, text = repr(float(element["attrs"]["value"])), element["text"]
+        assert text in readings.get(raw, ()) or text == constants.get(raw), (raw, text)
+        seen.add(raw)
+    assert seen == set(readings) | set(constants)
+
+
+def test_ids_are_unique_and_every_reference_leads_somewhere(read, any_crossing):
+    elements = read(any_crossing).elements
+    ids = [element["attrs"]["id"] for element in elements if "id" in element["attrs"]]
+    assert len(ids) == len(set(ids))
+    for element in elements:
+        for reference in element["attrs"].get("aria-labelledby", "").split():
+            assert reference in ids
+
+
+def test_figures_speak_to_those_who_cannot_see_them(read, any_crossing):
+    page = read(any_crossing)
+    figures = page.all("figure")
+    assert len(figures) == 2
+    assert len(page.all("figcaption")) == 2
+    drawings = page.all("svg")
+    assert len(drawings) == 4
+    for drawing in drawings:
+        assert drawing["attrs"]["role"] == "img"
+        title, alt = drawing["attrs"]["aria-labelledby"].split()
+        texts = {e["attrs"].get("id"): e["text"] for e in page.elements}
+        assert len(texts[title]) > 10
+        assert any_crossing.lee[0].name in texts[alt] or "path" in alt
+        assert "°C" in texts[alt]
+
+
+def test_tables_have_captions_and_scopes(read, crossing):
+    page = read(crossing)
+    assert len(page.all("table")) == len(page.all("caption")) == 4
+    for head in page.all("th"):
+        assert head["attrs"]["scope"] in {"col", "colgroup", "row"}
+
+
+def test_headings_step_down_one_level_at_a_time(read, crossing):
+    levels = [int(e["tag"][1]) for e in read(crossing).elements if re.fullmatch(r"h[1-6]", e["tag"])]
+    assert levels[0] == 1
+    assert levels.count(1) == 1
+    assert all(after - before <= 1 for before, after in pairwise(levels))
+
+
+def test_nothing_is_fetched_or_run(page_for, any_crossing):
+    """No script, no handler, no link, nothing with an address; and a policy that forbids all of it."""
+    html = render(page_for(any_crossing))
+    page = Reader(html)
+    assert not page.all("script")
+    assert not page.all("link")
+    assert not page.all("a")
+    for element in page.elements:
+        assert not any(name.startswith("on") or name == "style" for name in element["attrs"])
+        assert not {"src", "href", "xlink:href", "srcset", "action"} & set(element["attrs"])
+    assert "http" not in html.replace("http-equiv", "")
+    assert "url(" not in html
+    assert "@import" not in html
+    policy = next(e["attrs"]["content"] for e in page.all("meta") if "http-equiv" in e["attrs"])
+    assert policy.startswith("default-src 'none';")
+
+
+HOSTILE = "<script>alert('x')</script>\" onload=\"a{{ 7 * 7 }}&amp;]]>"
+
+
+def test_hostile_words_come_out_as_words(page_for, site_crossing):
+    """Title, site name, case file, notes and cautions: shown as written, none of it markup."""
+    crossing = site_crossing((HOSTILE, "lee", 52e3, 585.0, 290.45))
+    crossing = replace(crossing, notes=(HOSTILE,), cautions=(HOSTILE,))
+    html = render(page_for(crossing, title=HOSTILE, case_text=f"title = '{HOSTILE}'", version="0"))
+    page = Reader(html)
+    assert "<script" not in html
+    assert not page.all("script")
+    assert not any("onload" in element["attrs"] for element in page.elements)
+    assert page.all("h1")[0]["text"] == HOSTILE
+    assert page.all("pre")[0]["text"] == f"title = '{HOSTILE}'"
+    assert any(HOSTILE in head["text"] for head in page.all("th"))
+    assert "49" not in page.all("h1")[0]["text"]
+
+
+def test_same_page_gives_the_same_bytes(page_for, crossing):
+    first = render(page_for(crossing))
+    render_module._environment.cache_clear()
+    assert render(page_for(crossing)) == first
+
+
+def test_briefing_comes_first_and_cautions_come_with_it(read, crossing):
+    page = read(crossing)
+    order = [section["attrs"]["id"] for section in page.all("section")]
+    assert order == ["briefing", "section", "path", "sites", "inputs", "method", "cautions"]
+    assert "not a warning" in page.all("header")[0]["text"]
+
+
+def test_danger_is_marked_only_where_the_crossing_doubts_itself(read, any_crossing):
+    marked = [e for e in read(any_crossing).elements if "danger" in e["attrs"].get("class", "").split()]
+    assert len(marked) == len(any_crossing.cautions)
+
+
+def test_case_file_is_left_out_when_there_is_none(read, crossing):
+    assert not read(crossing).all("pre")
+    assert read(crossing, case_text="").all("pre")
+
+
+def test_misspelt_fields_stop_the_run(page_for, crossing):
+    template = render_module._environment().from_string("{{ page.no_such_field }}")
+    with pytest.raises(UndefinedError, match="no_such_field"):
+        template.render(page=page_for(crossing))
+
+
+@pytest.mark.parametrize("template", TEMPLATES, ids=lambda path: path.name)
+def test_templates_neither_vouch_for_markup_nor_compute(template):
+    text = template.read_text(encoding="utf-8")
+    assert not re.search(r"\|\s*safe\b|autoescape|Markup", text)
+    for expression in re.findall(r"\{[{%](.*?)[%}]\}", text, flags=re.DOTALL):
+        words = re.sub(r'"[^"]*"', '""', expression)
+        # "-" at the ends trims white space, "~" joins strings
+        assert not re.search(r"[+*/]|\s-\s", words), expression
+
+
+def test_only_the_renderer_knows_jinja2():
+    for module in (REPORT).rglob("*.py"):
+        tree = ast.parse(module.read_text(encoding="utf-8"))
+        names = {alias.name for node in ast.walk(tree) if isinstance(node, ast.Import) for alias in node.names}
+        names |= {node.module or "" for node in ast.walk(tree) if isinstance(node, ast.ImportFrom)}
+        roots = {name.partition(".")[0] for name in names}
+        assert (not {"jinja2", "markupsafe"} & roots) or module.name == "render.py"
+
+
+def test_every_class_drawn_is_known_to_the_style_sheet(read, any_crossing):
+    """A curve without a rule would be drawn in black or not at all."""
+    for element in read(any_crossing).elements:
+        if element["tag"] == "path":
+            assert any(f".{name}" in STYLE for name in element["attrs"]["class"].split()), element["attrs"]["class"]
+
+
+def colours(block):
+    return dict(re.findall(r"--([\w-]+):\s*(#[0-9a-f]{6});", block))
+
+
+def luminance(colour):
+    """Relative luminance, WCAG 2.2 definition."""
+    parts = [int(colour[i : i + 2], 16) / 255.0 for i in (1, 3, 5)]
+    red, green, blue = (c / 12.92 if c <= 0.04045 else ((c + 0.055) / 1.055) ** 2.4 for c in parts)
+    return 0.2126 * red + 0.7152 * green + 0.0722 * blue
+
+
+def contrast(one, other):
+    high, low = sorted((luminance(one), luminance(other)), reverse=True)
+    return (high + 0.05) / (low + 0.05)
+
+
+def test_contrast_formula_gives_the_published_extremes():
+    """WCAG 2.2: black on white is 21 to 1; #767676 is the well-known lightest grey that still passes on white."""
+    assert contrast("#000000", "#ffffff") == pytest.approx(21.0)
+    assert contrast("#767676", "#ffffff") == pytest.approx(4.54, abs=0.01)
+
+
+@pytest.mark.parametrize("light", ["light", "dark"])
+@pytest.mark.parametrize("name", ["ink", "soft", "warm", "water", "danger"])
+def test_words_stand_out_from_the_paper(light, name):
+    """WCAG 2.2 success criterion 1.4.3: at least 4.5 to 1 for text."""
+    first, second = re.findall(r":root \{(.*?)\}", STYLE, flags=re.DOTALL)
+    chosen = colours(first) if light == "light" else colours(second)
+    assert contrast(chosen[name], chosen["paper"]) >= 4.5
+    assert contrast(chosen["on-ground"], chosen["ground"]) >= 4.5
