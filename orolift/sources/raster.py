@@ -1,8 +1,8 @@
-"""A transect cut from an elevation raster along the wind, and the places of sites on it."""
+"""A transect cut from an elevation raster along the wind."""
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import replace
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -19,58 +19,20 @@ from orolift.sources.raster_file import (
     opened_raster,
     sampled,
 )
+from orolift.sources.raster_places import MapPoint, SitePositions, degrees, extent, local_system, site_positions
 from orolift.terrain.transect import MINIMUM_RELIEF, Transect
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
     from pathlib import Path
 
     from numpy.typing import NDArray
+
+__all__ = ["MapPoint", "SitePositions", "raster_transect", "site_positions"]
 
 POINTS = 512
 MOST_LINES = 21  # across the swath; more change its mean by less than the raster's own errors: a judgement
 LEAST_UPWIND = 20.0e3  # [m] upwind of the crest that a shortened transect must keep: about one half width of a range
 FILLED_CELLS = 3.0  # a hole up to this many cells long is filled
-
-
-@dataclass(frozen=True)
-class MapPoint:
-    """A point on the map.
-
-    Attributes
-    ----------
-    x, y : float
-        Longitude and latitude [degrees east, degrees north], or easting and
-        northing in the raster's coordinate system [its unit].
-    projected : bool
-        True for easting and northing.
-    """
-
-    x: float
-    y: float
-    projected: bool = False
-
-
-@dataclass(frozen=True)
-class SitePositions:
-    """Where sites lie on a transect.
-
-    Attributes
-    ----------
-    distance : ndarray, shape (n,) [m]
-        Along the transect from its upwind end; below 0 or beyond its length when a site lies off its ends.
-    offset : ndarray, shape (n,) [m]
-        Across it, positive to the right of the wind.
-    elevation : ndarray, shape (n,) [m]
-        Ground of the raster, NaN outside it.
-    longitude, latitude : ndarray, shape (n,) [degrees east, degrees north]
-    """
-
-    distance: NDArray[np.float64]
-    offset: NDArray[np.float64]
-    elevation: NDArray[np.float64]
-    longitude: NDArray[np.float64]
-    latitude: NDArray[np.float64]
 
 
 def raster_transect(
@@ -133,11 +95,13 @@ def raster_transect(
     90th percentile across it. Depths of the sea count as 0 m.
 
     Where the raster ends along the line the transect is shortened, if 20 km
-    remain upwind of its crest. Holes up to three cells (of the sampling) are
-    filled by straight lines. A swath line outside the raster is left out of the
-    mean as long as half of the lines are inside.
+    remain upwind of its crest. Holes up to three cells, or three steps of the
+    sampling where these are longer, are filled by straight lines. A swath line
+    outside the raster is left out of the mean as long as half of the lines are inside.
 
-    The highest cell is looked for in means of several cells if the raster has more than 2048 cells a side.
+    The highest cell is looked for in means of several cells if the raster has
+    overviews and more than 2048 cells a side; without overviews all of it is
+    read once, a few seconds for 200 million cells.
     """
     within("wind_from", wind_from, -10.0, 10.0, "rad", "Give radians, clockwise from north.")
     for key, value, low, high in (
@@ -149,100 +113,16 @@ def raster_transect(
         within(key, value, low, high, "points" if key == "points" else "m")
     with opened_raster(path, unit, where, folder) as raster:
         longitude, latitude = _centre(raster, through)
-        local = _local_system(longitude, latitude)
+        local = local_system(longitude, latitude)
         along = np.linspace(-upwind, downwind, points)
-        line = _swath_line(raster, local, wind_from + np.pi, along, swath)
+        cell = _cell_size(raster, local)
+        line = _swath_line(raster, local, cell, wind_from + np.pi, along, swath)
         first, last = _covered(raster, line)
         if last - first < points - 1:
             along = np.linspace(along[first], along[last], points)
-            line = _swath_line(raster, local, wind_from + np.pi, along, swath)
-        line = _filled(raster, line)
+            line = _swath_line(raster, local, cell, wind_from + np.pi, along, swath)
+        line = _filled(raster, line, FILLED_CELLS * max(cell, float(along[1] - along[0])))
     return replace(line, notes=(*line.notes, *raster.notes), distance=line.distance - line.distance[0])
-
-
-def site_positions(
-    path: str | Path,
-    transect: Transect,
-    sites: Sequence[MapPoint],
-    *,
-    unit: Literal["m", "ft"] | None = None,
-    folder: Path | None = None,
-    where: str = "elevation_file",
-) -> SitePositions:
-    """Places of sites on a transect, and the ground of the raster there.
-
-    Parameters
-    ----------
-    path : str or Path
-        The raster the transect was cut from.
-    transect : Transect
-        From `raster_transect`.
-    sites : sequence of MapPoint, length n
-    unit, folder, where
-        As in `raster_transect`.
-
-    Returns
-    -------
-    SitePositions
-
-    Raises
-    ------
-    MissingFileError, DataFileError
-        As in `raster_transect`.
-    TerrainError
-        If the transect carries no positions.
-
-    Notes
-    -----
-    Distance and offset are measured in the azimuthal equidistant projection
-    about the middle of the transect: exact along it, and within 5 m for a site 100 km from
-    that middle and 50 km off the line.
-    """
-    if transect.longitude is None or transect.latitude is None:
-        raise TerrainError("the transect was entered by hand and has no positions; give sites as distance_km")
-    with opened_raster(path, unit, where, folder) as raster:
-        x, y = _degrees(raster, sites)
-        middle = transect.distance.size // 2
-        local = _local_system(float(transect.longitude[middle]), float(transect.latitude[middle]))
-        ends = slice(middle - 1, middle + 2, 2)
-        east, north = map_positions(
-            raster, transect.longitude[ends], transect.latitude[ends], LONGITUDE_LATITUDE, local
-        )
-        bearing = np.arctan2(east[1] - east[0], north[1] - north[0])
-        east, north = map_positions(raster, x, y, LONGITUDE_LATITUDE, local)
-        row, column = cell_positions(raster, *map_positions(raster, x, y, LONGITUDE_LATITUDE, raster.dataset.crs))
-        # one window a site: sites may lie far apart
-        ground = np.array([sampled(raster, r[None], c[None], 1)[0] for r, c in zip(row, column, strict=True)])
-    return SitePositions(
-        distance=transect.distance[middle] + east * np.sin(bearing) + north * np.cos(bearing),
-        offset=east * np.cos(bearing) - north * np.sin(bearing),
-        elevation=ground,
-        longitude=x,
-        latitude=y,
-    )
-
-
-def _local_system(longitude: float, latitude: float) -> str:
-    """Azimuthal equidistant projection about a point: geodesics through it are straight and true to scale."""
-    return f"+proj=aeqd +lat_0={latitude!r} +lon_0={longitude!r} +datum=WGS84 +units=m"
-
-
-def _degrees(raster: RasterFile, places: Sequence[MapPoint]) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Longitude and latitude of points."""
-    x = np.array([place.x for place in places], dtype=np.float64)
-    y = np.array([place.y for place in places], dtype=np.float64)
-    projected = np.array([place.projected for place in places], dtype=bool)
-    if projected.any():
-        if raster.dataset.crs.is_geographic:
-            raise TerrainError(
-                f"{raster.name} is in longitude and latitude, so easting and northing mean nothing in it. "
-                "Give longitude and latitude."
-            )
-        crs = raster.dataset.crs
-        x[projected], y[projected] = map_positions(raster, x[projected], y[projected], crs, LONGITUDE_LATITUDE)
-    within("longitude", x, -180.0, 360.0, "degrees east")
-    within("latitude", y, -90.0, 90.0, "degrees north", "Are longitude and latitude exchanged?")
-    return x, y
 
 
 def _centre(raster: RasterFile, through: MapPoint | None) -> tuple[float, float]:
@@ -255,22 +135,15 @@ def _centre(raster: RasterFile, through: MapPoint | None) -> tuple[float, float]
         )
         raster.notes["The transect passes through the highest cell of the raster."] = None
         return float(longitude), float(latitude)
-    longitude, latitude = _degrees(raster, [through])
+    longitude, latitude = degrees(raster, [through])
     row, column = cell_positions(raster, *map_positions(raster, longitude, latitude, LONGITUDE_LATITUDE, dataset.crs))
     inside = (-0.5 <= row[0] <= dataset.height - 0.5) and (-0.5 <= column[0] <= dataset.width - 0.5)
     if not inside:
         raise TerrainError(
             f"the centre point of the transect ({longitude[0]:.4f} E, {latitude[0]:.4f} N) lies outside the raster. "
-            f"{raster.name} covers {_extent(raster)}."
+            f"{raster.name} covers {extent(raster)}."
         )
     return float(longitude[0]), float(latitude[0])
-
-
-def _extent(raster: RasterFile) -> str:
-    """Longitudes and latitudes a raster covers, for messages."""
-    rows, columns = np.meshgrid([-0.5, raster.dataset.height - 0.5], [-0.5, raster.dataset.width - 0.5])
-    x, y = map_positions(raster, *map_coordinates(raster, rows, columns), raster.dataset.crs, LONGITUDE_LATITUDE)
-    return f"{x.min():.3f} to {x.max():.3f} E, {y.min():.3f} to {y.max():.3f} N"
 
 
 def _cell_size(raster: RasterFile, local: str) -> float:
@@ -282,9 +155,10 @@ def _cell_size(raster: RasterFile, local: str) -> float:
     return float(np.hypot(east[1:] - east[0], north[1:] - north[0]).max())
 
 
-def _swath_line(raster: RasterFile, local: str, bearing: float, along: NDArray[np.float64], swath: float) -> Transect:
+def _swath_line(
+    raster: RasterFile, local: str, cell: float, bearing: float, along: NDArray[np.float64], swath: float
+) -> Transect:
     """Mean and high ground across a swath, NaN where fewer than half of its lines have data."""
-    cell = _cell_size(raster, local)
     spacing = float(along[1] - along[0])
     lines = min(2 * int(np.ceil(swath / 2.0 / cell)) + 1, MOST_LINES)
     offsets = np.linspace(-swath / 2.0, swath / 2.0, lines)[:, None] if lines > 1 else np.zeros((1, 1))
@@ -373,8 +247,8 @@ def _covered(raster: RasterFile, line: Transect) -> tuple[int, int]:
     return first, last
 
 
-def _filled(raster: RasterFile, line: Transect) -> Transect:
-    """The line with short holes filled; refuses long ones and flat ground."""
+def _filled(raster: RasterFile, line: Transect, longest: float) -> Transect:
+    """The line with holes up to `longest` [m] filled; refuses longer ones and flat ground."""
     first, last = np.flatnonzero(np.isfinite(line.elevation))[[0, -1]]
     kept = slice(int(first), int(last) + 1)
     x, ground = line.distance[kept], line.elevation[kept]
@@ -382,7 +256,7 @@ def _filled(raster: RasterFile, line: Transect) -> Transect:
     high = None if line.high_elevation is None else line.high_elevation[kept]
     notes = line.notes
     if not known.all():
-        notes = (*notes, _holes_note(raster, x, known))
+        notes = (*notes, _holes_note(raster, x, known, longest))
         ground = np.interp(x, x[known], ground[known])
         high = None if high is None else np.interp(x, x[known], high[known])
     relief = float(np.ptp(ground))
@@ -402,10 +276,9 @@ def _filled(raster: RasterFile, line: Transect) -> Transect:
     )
 
 
-def _holes_note(raster: RasterFile, x: NDArray[np.float64], known: NDArray[np.bool_]) -> str:
+def _holes_note(raster: RasterFile, x: NDArray[np.float64], known: NDArray[np.bool_], limit: float) -> str:
     """Sentence about holes that may be filled; refuses one that is too long."""
     spacing = float(x[1] - x[0])
-    limit = FILLED_CELLS * spacing
     edges = np.flatnonzero(np.diff(known.astype(np.int8)))
     starts, ends = edges[::2], edges[1::2]  # last point before a hole, last point in it
     lengths = (ends - starts) * spacing

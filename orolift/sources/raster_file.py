@@ -26,7 +26,8 @@ if TYPE_CHECKING:
 FEET = 0.3048
 LONGITUDE_LATITUDE = "EPSG:4326"
 CACHE_MB = 64  # GDAL keeps decoded blocks up to this; its default is a share of the machine's memory
-OVERVIEW_CELLS = 2048  # longest side at which a whole raster is looked at
+OVERVIEW_CELLS = 2048  # longest side at which a whole raster is looked at when it has overviews
+WINDOW_CELLS = 8_000_000  # cells read at once when it has none
 CHUNK = 32  # points along a line read with one window, so that a slanting line does not read its whole bounding box
 ONE_WINDOW = 1_000_000  # cells; a bounding box with fewer is read at once
 _NO_GROUND = -12_000.0  # [m] below the deepest trench: a "missing" value nobody declared
@@ -277,24 +278,29 @@ def _window_limits(position: NDArray[np.float64], step: int, size: int) -> tuple
 
 def _cells(raster: RasterFile, rows: tuple[int, int], columns: tuple[int, int], step: int) -> NDArray[np.float64]:
     """Ground of a window of cells in metres, missing as NaN, sea as 0."""
+    values: NDArray[np.float64] = _raw_cells(raster, rows, columns, step).astype(np.float64).filled(np.nan)
+    return _ground(raster, values)
+
+
+def _raw_cells(raster: RasterFile, rows: tuple[int, int], columns: tuple[int, int], step: int) -> Any:
+    """Cells of a window as the file holds them, missing ones masked; means of `step` x `step` cells."""
     from rasterio.enums import Resampling
     from rasterio.windows import Window
 
     shape = (-(-(rows[1] - rows[0]) // step), -(-(columns[1] - columns[0]) // step))
-    values = raster.dataset.read(
+    return raster.dataset.read(
         1,
         window=Window.from_slices(rows, columns),
         out_shape=shape,
         resampling=Resampling.average if step > 1 else Resampling.nearest,
         masked=True,
-        out_dtype="float64",
     )
-    scale, offset = raster.dataset.scales[0], raster.dataset.offsets[0]
-    return _ground(raster, values.filled(np.nan) * (scale * raster.metres) + offset * raster.metres)
 
 
-def _ground(raster: RasterFile, ground: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Plausible ground: refuses what cannot be metres, takes depths of the sea as 0."""
+def _ground(raster: RasterFile, values: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Ground in metres from raw values: refuses what cannot be ground, takes depths of the sea as 0."""
+    scale, offset = float(raster.dataset.scales[0]), float(raster.dataset.offsets[0])
+    ground = (values * scale + offset) * raster.metres
     ground[np.isinf(ground)] = np.nan
     known = ground[~np.isnan(ground)]
     highest, lowest = known.max(initial=0.0), known.min(initial=0.0)
@@ -322,14 +328,38 @@ def _ground(raster: RasterFile, ground: NDArray[np.float64]) -> NDArray[np.float
 def highest_cell(raster: RasterFile) -> tuple[float, float]:
     """Fractional row and column of the highest cell.
 
-    A raster of more than `OVERVIEW_CELLS` cells a side is looked at in means
-    of several cells, or in its overviews, and the middle of the highest mean is given.
+    A raster with overviews and more than `OVERVIEW_CELLS` cells a side is
+    looked at in means of several cells, and the middle of the highest mean is
+    given; any other is read whole, in parts.
     """
     dataset = raster.dataset
-    step = -(-max(dataset.height, dataset.width) // OVERVIEW_CELLS)
-    cells = _cells(raster, (0, dataset.height), (0, dataset.width), step)
-    if np.isnan(cells).all():
+    longest = max(dataset.height, dataset.width)
+    step = -(-longest // OVERVIEW_CELLS) if dataset.overviews(1) else 1
+    best = (-np.inf, 0.0, 0.0)
+    for rows, columns in _whole_blocks(dataset, step):
+        cells = np.ma.masked_invalid(_raw_cells(raster, rows, columns, step), copy=False)
+        highest = cells.max()
+        if highest is not np.ma.masked and highest > best[0]:
+            row, column = np.unravel_index(int(cells.argmax()), cells.shape)
+            scale_r, scale_c = (rows[1] - rows[0]) / cells.shape[0], (columns[1] - columns[0]) / cells.shape[1]
+            best = (
+                float(highest),
+                float(rows[0] + (row + 0.5) * scale_r - 0.5),
+                float(columns[0] + (column + 0.5) * scale_c - 0.5),
+            )
+    if not np.isfinite(best[0]):
         raise DataFileError(f"{raster.name} holds no elevation: every cell is missing.")
-    row, column = np.unravel_index(int(np.nanargmax(cells)), cells.shape)
-    scale_r, scale_c = dataset.height / cells.shape[0], dataset.width / cells.shape[1]
-    return (row + 0.5) * scale_r - 0.5, (column + 0.5) * scale_c - 0.5
+    _ground(raster, np.array([best[0]]))
+    return best[1], best[2]
+
+
+def _whole_blocks(dataset: Any, step: int) -> Iterator[tuple[tuple[int, int], tuple[int, int]]]:
+    """Rows and columns of windows that cover a raster and cut none of its blocks, which would be decoded twice."""
+    height, width = dataset.block_shapes[0]
+    if step > 1:  # blocks of an overview cover more; they are few
+        height, width = dataset.height, dataset.width
+    across = width * max(1, WINDOW_CELLS // (width * height))
+    down = height * max(1, WINDOW_CELLS // (min(across, dataset.width) * height))
+    for top in range(0, dataset.height, down):
+        for left in range(0, dataset.width, across):
+            yield (top, min(top + down, dataset.height)), (left, min(left + across, dataset.width))

@@ -153,19 +153,25 @@ def test_overviews_change_nothing_on_a_plane(plane):
     np.testing.assert_allclose(raster_transect(plane, **options).elevation, before.elevation, atol=0.05)
 
 
-def test_swath_gives_mean_and_ninetieth_percentile(tmp_path):
+@pytest.mark.parametrize("wind_from_deg", [0.0, 60.0])
+def test_swath_gives_mean_and_ninetieth_percentile(tmp_path, wind_from_deg):
     """Ground rises by 100 m per km away from the line, so over +-5 km: mean 250 m, 90th percentile 450 m.
 
     rtol: 21 lines instead of a continuous swath (mean 1 in 21 high), and cells of 250 m.
     """
     from rasterio.transform import from_origin
 
-    transform = from_origin(470_000.0, 5_134_000.0, 250.0, 250.0)
-    x, y = cell_centres((320, 240), transform)
-    ground = 0.1 * np.abs(x - 500_000.0) + 0.01 * (y - 5_054_000.0)
+    transform = from_origin(460_000.0, NORTHING + 40_000.0, 250.0, 250.0)
+    x, y = cell_centres((320, 320), transform)
+    east, north = np.sin(np.radians(wind_from_deg)), np.cos(np.radians(wind_from_deg))
+    upwind = (x - 500_000.0) * east + (y - NORTHING) * north
+    beside = (x - 500_000.0) * north - (y - NORTHING) * east
+    ground = 1000.0 + 0.1 * np.abs(beside) + 0.01 * upwind
     file = written(tmp_path / "trough.tif", ground.astype(np.float32), transform)
-    line = raster_transect(file, wind_from=0.0, through=MapPoint(*CENTRE), upwind=30e3, downwind=30e3)
-    floor = line.elevation - 0.01 * (NORTHING + 30e3 - line.distance - 5_054_000.0)
+    line = raster_transect(
+        file, wind_from=np.radians(wind_from_deg), through=MapPoint(*CENTRE), upwind=30e3, downwind=30e3
+    )
+    floor = line.elevation - 1000.0 - 0.01 * (30e3 - line.distance)
     np.testing.assert_allclose(floor, 250.0, rtol=0.08)
     np.testing.assert_allclose(line.high_elevation - line.elevation, 450.0 - 250.0, rtol=0.08)
     assert "mean of 21 lines across 10 km" in line.notes[0]
@@ -245,13 +251,19 @@ def test_real_range_keeps_its_crest_and_plain():
     assert np.mean(line.high_elevation) > np.mean(line.elevation) + 10.0
 
 
-def test_highest_cell_of_a_large_raster_is_found_in_means(tmp_path):
+@pytest.mark.parametrize("overviews", [[], [2, 4]])
+def test_highest_cell_of_a_large_raster_is_found(tmp_path, overviews):
+    import rasterio
+    from rasterio.enums import Resampling
     from rasterio.transform import from_origin
 
     transform = from_origin(485_000.0, 5_134_000.0, 30.0, 30.0)
     x, y = cell_centres((2600, 1200), transform)
     ground = 2000.0 - 0.03 * np.hypot(x - 503_000.0, y - 5_090_000.0)
     file = written(tmp_path / "fine.tif", ground.astype(np.float32), transform)
+    if overviews:
+        with rasterio.open(file, "r+") as dataset:
+            dataset.build_overviews(overviews, Resampling.average)
     line = raster_transect(file, wind_from=0.0, upwind=25e3, downwind=25e3, swath=0.0, points=501)
     assert line.elevation.max() == pytest.approx(2000.0, abs=3.0)
     assert line.distance[np.argmax(line.elevation)] == pytest.approx(25e3, abs=150.0)
@@ -311,6 +323,15 @@ def test_short_hole_is_filled_and_long_one_refused(tmp_path, nodata):
                 TerrainError, match=r"hole of (9\.\d+|10) km in the transect, 30\.?\d* km from its upwind"
             ):
                 raster_transect(file, **options)
+
+
+def test_a_hole_is_measured_in_cells_where_these_are_coarse(tmp_path):
+    """Two cells of 2 km are missing, more than ten points of the line but fewer than three cells."""
+    ground, transform = ridge_cells(cell=2000.0, size=100)
+    ground[:, 25:27] = -9999.0
+    file = written(tmp_path / "coarse.tif", ground.astype(np.float32), transform, nodata=-9999.0)
+    line = raster_transect(file, wind_from=WEST_WIND, through=MapPoint(*CENTRE), upwind=80e3, downwind=80e3)
+    assert any("filled by straight lines" in note for note in line.notes)
 
 
 def test_missing_cells_beside_the_line_are_left_out_of_the_mean(tmp_path):
