@@ -11,7 +11,7 @@ from orolift.air.column import interpolated
 from orolift.report.briefing import crest_index
 from orolift.report.figures.axes import Layout, Scale, Tick, level_ticks, place, ticks
 from orolift.report.figures.cloud import cloudy, runs
-from orolift.report.figures.drawing import Curve, Figure, Label, Pin, head_along, polyline
+from orolift.report.figures.drawing import Anchor, Curve, Figure, Label, Pin, head_along, polyline
 from orolift.report.figures.pins import ASIDE, Spot, pins
 from orolift.report.figures.placing import Board, Box, beside, put
 from orolift.report.quantities import Units, quantity
@@ -165,6 +165,7 @@ def _levels(
     labels: list[Label] = []
     lines: list[Line] = []
     frame = board.frame
+    ends: tuple[tuple[float, Anchor], ...] = ((frame.right - 4.0, "end"), (frame.left + 6.0, "start"))
     for name, level, digits in (
         ("crest", crossing.features.crest, 0),
         ("cloud base", crossing.cloud_base, -1),
@@ -175,14 +176,13 @@ def _levels(
         y = place(up, level)
         words = f"{name} {quantity(level, 'height', digits, units)}"
         curves.append(Curve(f"M{frame.left:.1f} {y:.1f}H{frame.right - 2.0:.1f}", "level"))
-        above, below = round(y - 5.0, 1), round(y + board.letter, 1)
         new, board = put(
             board,
             [
-                (Label(words, frame.right - 4.0, above, "end", "place"),),
-                (Label(words, frame.right - 4.0, below, "end", "place"),),
-                (Label(words, frame.left + 6.0, above, "start", "place"),),
-                (Label(words, frame.left + 6.0, below, "start", "place"),),
+                (Label(text, x, round(y + shift, 1), anchor, "place"),)
+                for text in (words, words.removeprefix("cloud "))
+                for x, anchor in ends
+                for shift in (-5.0, board.letter)
             ],
             needed=True,
         )

@@ -237,10 +237,11 @@ def _in_the_ground(x: float, y: float, words: str, side: float, letter: float) -
     anchor: Anchor = "start" if side < 0.0 else "end"
     return [
         (
-            Label(words, round(x - 5.0 * side, 1), round(y + drop, 1), anchor, "in-ground"),
+            Label(text, round(x - 5.0 * side, 1), round(y + drop, 1), anchor, "in-ground"),
             Curve(f"M{x:.1f} {y + 4.0:.1f}V{y + drop:.1f}", "in-ground"),
         )
-        for drop in (1.9 * letter, 2.6 * letter, 3.6 * letter)
+        for text in (words, words.removeprefix("cloud "))
+        for drop in (1.9 * letter, 2.6 * letter, 3.6 * letter, 5.0 * letter, 7.0 * letter, 9.0 * letter)
     ]
 
 
