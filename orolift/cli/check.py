@@ -34,7 +34,7 @@ def findings(inputs: Inputs) -> list[str]:
             f"{line.elevation.max():.0f} m, {line.distance.size} points."
         ),
         (
-            f"Incoming air: {air.origin.count('measured') or 1} levels given, ground {air.height[0]:.0f} m, "
+            f"Incoming air: {_given(inputs)}, ground {air.height[0]:.0f} m, "
             f"{air.pressure[0] / 100:.1f} hPa, {air.temperature[0] - 273.15:.1f} °C."
         ),
         f"Sites: {', '.join(site.name for site in inputs.sites) or 'none; the lee foot is used'}.",
@@ -42,3 +42,9 @@ def findings(inputs: Inputs) -> list[str]:
     lines += [f"Doubtful: {text}" for text in inputs.cautions]
     lines += [f"Assumed: {text}" for text in (*air.notes, *line.notes)]
     return lines
+
+
+def _given(inputs: Inputs) -> str:
+    """What of the column was given."""
+    levels = inputs.incoming.origin.count("measured")
+    return f"{levels} levels given" if levels else "a station report"

@@ -91,7 +91,14 @@ def work_out(case: str) -> Worked:
     inputs = read_inputs(case)
     log.debug("%s read", case)
     try:
-        crossing = cross(inputs.transect, inputs.incoming, inputs.sites, removed_share=inputs.case.rain.removed_share)
+        rain = inputs.case.rain
+        crossing = cross(
+            inputs.transect,
+            inputs.incoming,
+            inputs.sites,
+            removed_share=rain.removed_share,
+            freezing=rain.freezing,
+        )
     except ValueError as error:
         error.args = (f"{case}: {error}",)
         raise

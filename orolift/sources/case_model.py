@@ -48,15 +48,26 @@ class Table(BaseModel):
                 continue
             if wanted in out:
                 raise ValueError(f"{wanted} and {key} say the same thing; keep one of them")
-            out[wanted] = value
-            if is_number(value):
-                parts = suffix_of(key)
-                target = suffix_of(wanted)
-                if parts is not None and target is not None:
-                    out[wanted] = converted(float(value), parts[1], target[1])
-                if isinstance(info.context, dict):
-                    info.context[(cls.__name__, wanted)] = f"{key} = {value}"
+            out[wanted] = _converted(value, key, wanted)
+            if is_number(value) and isinstance(info.context, dict):
+                info.context[(cls.__name__, wanted)] = f"{key} = {value}"
         return out
+
+
+def _converted(value: Any, key: str, wanted: str) -> Any:
+    """Value given under `key` in the unit of `wanted`; of pairs, as a ridge has, the second number."""
+    given, usual = suffix_of(key), suffix_of(wanted)
+    if given is None or usual is None:
+        return value
+    if is_number(value):
+        return converted(float(value), given[1], usual[1])
+    if isinstance(value, list):
+        return [[*pair[:-1], _converted(pair[-1], key, wanted)] if _is_pair(pair) else pair for pair in value]
+    return value
+
+
+def _is_pair(value: object) -> bool:
+    return isinstance(value, list) and len(value) == 2
 
 
 def exactly_one(table: Table, keys: tuple[str, ...], what: str) -> None:
@@ -142,7 +153,7 @@ class Station(Table):
     """A station report upwind of the range."""
 
     elevation_m: Elevation
-    temperature_c: Annotated[float, Field(ge=-80.0, le=60.0)]
+    temperature_c: Annotated[float, Field(ge=-80.0, le=56.0)]
     dew_point_c: Annotated[float, Field(ge=-100.0, le=45.0)] | None = None
     relative_humidity_percent: Annotated[float, Field(gt=0.0, le=100.0)] | None = Field(
         default=None, description="over liquid water; may stand for dew_point_c"
@@ -169,6 +180,9 @@ class Incoming(Table):
     wind_from_deg: Bearing = Field(description="bearing the wind comes from; the transect runs along it")
     station: Station | None = None
     sounding_file: Name | None = Field(default=None, description="CSV with units in the column names")
+    sounding_elevation_m: Elevation | None = Field(
+        default=None, description="ground of a sounding that gives no heights"
+    )
     crest_wind_kt: Annotated[float, Field(ge=0.0, le=250.0)] | None = Field(
         default=None, description="wind at crest height"
     )
@@ -184,6 +198,8 @@ class Incoming(Table):
             for key in ("crest_wind_kt", "crest_wind_from_deg", "lapse_rate_c_per_km"):
                 if getattr(self, key) is not None:
                     raise ValueError(f"{key} belongs to a station; a sounding brings its own, leave the key out")
+        if self.sounding_elevation_m is not None and self.sounding_file is None:
+            raise ValueError("sounding_elevation_m belongs to sounding_file; a station has its own elevation_m")
         if self.crest_wind_from_deg is not None and self.crest_wind_kt is None:
             raise ValueError("crest_wind_from_deg needs crest_wind_kt beside it")
         return self

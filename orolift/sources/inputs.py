@@ -197,6 +197,12 @@ def _incoming(table: Incoming, folder: Path, crest: float) -> IncomingAir:
     if table.sounding_file is not None:
         sounding = read_sounding(table.sounding_file, "[incoming] sounding_file", folder)
         vapour, notes = _vapour(sounding)
+        ground = sounding.ground if table.sounding_elevation_m is None else table.sounding_elevation_m
+        if sounding.height is None and ground is None:
+            raise CaseError(
+                f"[incoming] sounding_file: {table.sounding_file} gives no height of its lowest level. "
+                "Add a column height_m, or give sounding_elevation_m, the height of its ground."
+            )
         air = air_from_levels(
             sounding.height,
             sounding.pressure,
@@ -204,6 +210,7 @@ def _incoming(table: Incoming, folder: Path, crest: float) -> IncomingAir:
             vapour,
             sounding.eastward_wind,
             sounding.northward_wind,
+            elevation=ground if sounding.height is None else None,
         )
         return replace(air, notes=(*sounding.notes, *notes, *air.notes))
     if table.station is None:  # the model has refused it already

@@ -37,7 +37,9 @@ class Sounding:
     pressure : ndarray (nz,) [Pa]
         Strictly falling.
     height : ndarray (nz,) [m above sea level] or None
-        None when the file has no heights.
+        None when the file has none, or not all.
+    ground : float or None [m above sea level]
+        Height of the lowest level, when it is given.
     temperature, dew_point : ndarray (nz,) [K]
         Dew point over liquid water. Either `dew_point` or `relative_humidity` is given.
     relative_humidity : ndarray (nz,) [1] or None
@@ -48,6 +50,7 @@ class Sounding:
 
     pressure: NDArray[np.float64]
     height: NDArray[np.float64] | None
+    ground: float | None
     temperature: NDArray[np.float64]
     dew_point: NDArray[np.float64] | None
     relative_humidity: NDArray[np.float64] | None
@@ -106,6 +109,7 @@ def sounding_from_text(text: str, name: str) -> Sounding:
         )
     eastward, northward = _winds(columns, name)
     pressure, height = columns["pressure"], columns.get("height")
+    ground = None if height is None or np.isnan(height[whole][0]) else float(height[whole][0])
     if height is not None and not np.isfinite(height[whole]).all():
         notes.append("Some heights of the sounding are missing: all of them are worked out from pressure.")
         height = None
@@ -113,9 +117,8 @@ def sounding_from_text(text: str, name: str) -> Sounding:
         _refuse_swapped(columns["temperature"][whole], columns["dew_point"][whole], name, int(line[whole][0]))
     return Sounding(
         pressure=pressure[whole],
-        height=columns["height"][whole]
-        if "height" in columns and np.isfinite(columns["height"][whole]).all()
-        else None,
+        height=None if height is None else height[whole],
+        ground=ground,
         temperature=columns["temperature"][whole],
         dew_point=columns["dew_point"][whole] if "dew_point" in columns else None,
         relative_humidity=columns["relative_humidity"][whole] if "dew_point" not in columns else None,
