@@ -8,8 +8,9 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.checks import within
+from orolift.constants import GRAVITY
 from orolift.errors import OutOfRangeError
-from orolift.flow.profiles import checked_height, integral_to
+from orolift.flow.profiles import checked_height, integral_to, value_at
 from orolift.flow.scales import LEAST_WIND
 
 if TYPE_CHECKING:
@@ -26,6 +27,8 @@ class Layers:
         From the lowest streamline to the top.
     density, wind, n_squared : ndarray, shape (..., nl) [kg m-3, m s-1, s-2]
         Wind across the range, at least `scales.LEAST_WIND`; stability at least 0.
+    compression : ndarray, shape (..., nl) [m-1]
+        Gravity over the square of the speed of sound, by which rising air expands; 0 for an incompressible column.
     jump : ndarray, shape (..., nl + 1) [m s-2]
         Reduced gravity ``g dtheta / theta`` of a sharp inversion at each edge; 0 at the others.
     carrying : ndarray of int, shape (...)
@@ -41,13 +44,22 @@ class Layers:
     density: NDArray[np.float64]
     wind: NDArray[np.float64]
     n_squared: NDArray[np.float64]
+    compression: NDArray[np.float64]
     jump: NDArray[np.float64]
     carrying: NDArray[np.intp]
     critical: NDArray[np.bool_]
     weak_below: NDArray[np.bool_]
 
 
-def layers(edge: ArrayLike, density: ArrayLike, wind: ArrayLike, n_squared: ArrayLike, jump: ArrayLike = 0.0) -> Layers:
+def layers(
+    edge: ArrayLike,
+    density: ArrayLike,
+    wind: ArrayLike,
+    n_squared: ArrayLike,
+    jump: ArrayLike = 0.0,
+    *,
+    compression: ArrayLike = 0.0,
+) -> Layers:
     """Layers from values that are constant in each.
 
     Use `layers_of_column` for profiles given at levels.
@@ -65,6 +77,8 @@ def layers(edge: ArrayLike, density: ArrayLike, wind: ArrayLike, n_squared: Arra
         Negative counts as neutral.
     jump : array_like, shape (..., nl + 1) or scalar [m s-2]
         Sharp inversions at the edges.
+    compression : array_like, shape (..., nl) or scalar [m-1]
+        Gravity over the square of the speed of sound; 0 leaves expansion out.
 
     Returns
     -------
@@ -91,9 +105,9 @@ def layers(edge: ArrayLike, density: ArrayLike, wind: ArrayLike, n_squared: Arra
     if edges.shape[-1] < 2 or not np.all(np.diff(edges, axis=-1) > 0.0):
         raise OutOfRangeError("edge: layers need at least 2 edges that strictly increase. Sort them and drop doubles.")
     count = edges.shape[-1] - 1
-    parts = [np.asarray(part, np.float64) for part in (density, wind, n_squared)]
+    parts = [np.asarray(part, np.float64) for part in (density, wind, n_squared, compression)]
     lead = np.broadcast_shapes(edges.shape[:-1], *(part.shape[:-1] for part in parts), np.shape(jump)[:-1])
-    rho, speed, stiffness = (np.broadcast_to(part, (*lead, count)) for part in parts)
+    rho, speed, stiffness, expansion = (np.broadcast_to(part, (*lead, count)) for part in parts)
     within("density", rho, 1e-6, 20.0, "kg m-3", "Give kilograms a cubic metre.")
     fast = speed >= LEAST_WIND
     reached = np.logical_or.accumulate(fast, axis=-1)
@@ -104,6 +118,7 @@ def layers(edge: ArrayLike, density: ArrayLike, wind: ArrayLike, n_squared: Arra
         density=rho,
         wind=np.maximum(speed, LEAST_WIND),
         n_squared=np.maximum(stiffness, 0.0),
+        compression=np.maximum(expansion, 0.0),
         jump=np.broadcast_to(np.asarray(jump, np.float64), (*lead, count + 1)),
         carrying=np.where(critical, np.argmax(stopped, axis=-1), count),
         critical=critical,
@@ -137,6 +152,11 @@ def layers_of_column(
     OutOfRangeError
         If heights or edges do not increase or a density is not positive.
 
+    Notes
+    -----
+    The compression is what the fall of density has beyond stability,
+    ``g / c^2 = -d ln(rho)/dz - N^2 / g``, for dry and saturated air alike; at least 0.
+
     Examples
     --------
     >>> column = ([0.0, 2e3], [1.2, 1.0], [10.0, 20.0], [1e-4, 1e-4])
@@ -149,7 +169,8 @@ def layers_of_column(
     if not np.all(depth > 0.0):
         raise OutOfRangeError("edge: layers need edges that strictly increase. Sort them and drop doubles.")
     means = [np.diff(integral_to(levels, part, edges), axis=-1) / depth for part in (density, wind, n_squared)]
-    return layers(edges, *means)
+    fall = -np.diff(value_at(levels, np.log(np.asarray(density, np.float64)), edges), axis=-1) / depth
+    return layers(edges, *means, compression=fall - np.maximum(means[2], 0.0) / GRAVITY)
 
 
 def least_richardson_number(column: Layers) -> NDArray[np.float64]:

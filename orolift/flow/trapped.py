@@ -19,7 +19,7 @@ LONGEST_WAVE = 60e3
 """Longest wave [m] that is looked for: rotation bends longer ones; a judgement."""
 SHORTEST_WAVE = 2e3
 """Shortest wave [m] that is looked for: none shorter than ``2 pi U / N`` of the slowest layers; a judgement."""
-_SAMPLES = 600
+_SAMPLES = 300
 _ROUNDING = 1e-9  # leak over wavenumber that the secant rule cannot tell from none
 
 

@@ -8,7 +8,7 @@ number of layers, whether waves spread or fade (reflection form).
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -24,8 +24,9 @@ FRICTION_LENGTH = 80e3
 """Distance [m] in which a trapped wave dies by a factor e: observed lee waves fade over 50 to 100 km; a judgement."""
 PADDING = 400e3
 """Level ground [m] added to the transect, five friction lengths, so that nothing wraps round; a judgement."""
-SHORTEST_WAVE = 1000.0
-"""Shortest wave [m] worked out layer by layer; shorter parts of the ground fade upward as this one would."""
+SHORTEST_WAVE = (1000.0, 4000.0)
+"""Waves [m] shorter than a length between these are not worked out layer by layer: see `waves`; a judgement."""
+_FADING = 2.0  # times the largest Scorer wavenumber: waves as short as this fade within 15 % as in neutral air
 _FRICTION_SHARE = (
     0.3  # of the Scorer wavenumber: longer waves are not damped; between hydrostatic and trapped, a judgement
 )
@@ -93,7 +94,10 @@ def response(
     Notes
     -----
     ``d/dz(rho U^2 d(eta)/dz) + rho (N^2 - k^2 U^2) eta = 0`` and ``p' = rho U^2 d(eta)/dz``,
-    steady linear flow without rotation (Scorer 1949, Smith 1979, written for displacement).
+    steady linear flow without rotation (Scorer 1949, Smith 1979, written for displacement). Where layers
+    have a `compression`, rising air also expands, and ``p' = rho U^2 (d(eta)/dz - g eta / c^2)``: then
+    ``eta exp(-G)`` and ``rho exp(2 G)``, G the integral of ``g / c^2``, obey the same equation; so the
+    pressure is that of the displaced column summed up hydrostatically.
     In each layer waves go as ``exp(+-imz)``, ``m^2 = N^2/U^2 - k^2``, real m with energy going
     up at the top, imaginary m fading. Pressure and displacement are continuous; across a sharp
     inversion pressure over displacement gains ``rho g'`` downward. Above the last layer
@@ -114,8 +118,9 @@ def response(
     True
     """
     k = np.atleast_1d(np.asarray(wavenumber))
-    slowing = np.asarray((1.0 - 1j * np.atleast_1d(np.asarray(friction, np.float64))) ** 2, np.complex128)
+    slowing = np.asarray((1.0 - 1j * np.atleast_2d(np.asarray(friction, np.float64))) ** 2, np.complex128)
     count = column.density.shape[-1]
+    column, rise = _without_expansion(column)
     jump = _edge_jump(column)[..., None]
     lead = np.broadcast_shapes(column.density.shape[:-1], slowing.shape[:-2])
     impedance = np.zeros((*lead, count + 1, k.size), np.complex128)
@@ -126,17 +131,22 @@ def response(
         parts = _layer_parts(column, block, k, slowing, hydrostatic)
         for j in range(block.stop - 1, block.start - 1, -1):
             step, plus, minus, square, admittance = (part[..., j - block.start, :] for part in parts)
-            if np.any(stops == j + 1):
-                above = np.where(stops == j + 1, admittance, above)
-                impedance[..., j + 1, :] = np.where(stops == j + 1, above, 0.0)
-            share = 1.0 / (plus + above * minus)
+            last = stops <= j + 1 if j == count - 1 else stops == j + 1
+            if np.any(last):  # nothing comes back from above
+                above = np.where(last, _open_top(column, j, slowing, admittance), above)
+                impedance[..., j + 1, :] = np.where(last, above, impedance[..., j + 1, :])
+            bottom = plus + above * minus
+            bottom[bottom == 0.0] = 1e-30  # exactly at the resonance of a column without friction
+            share = 1.0 / bottom
             ratio[..., j + 1, :] = 2.0 * step * share
             below = impedance[..., j, :] = (square + above * plus) * share
             above = below + jump[..., j, :]
     outside = np.arange(count + 1) > stops
     ratio[outside] = 1.0
     impedance[outside] = 0.0
-    return Response(np.asarray(np.cumprod(ratio, axis=-2), np.complex128), impedance)
+    expansion = np.exp(rise)[..., None]
+    displacement = np.asarray(np.cumprod(ratio, axis=-2) * expansion, np.complex128)
+    return Response(displacement, np.asarray(impedance / expansion**2, np.complex128))
 
 
 def waves(
@@ -147,7 +157,7 @@ def waves(
     hydrostatic: bool = False,
     friction_length: float = FRICTION_LENGTH,
     padding: float = PADDING,
-    shortest: float = SHORTEST_WAVE,
+    shortest: float | None = None,
     all_pressure: bool = False,
 ) -> WaveField:
     """Waves over a boundary that ends as high as it starts.
@@ -167,7 +177,7 @@ def waves(
         Distance in which trapped waves fade by a factor e; infinity for none.
     padding : float [m]
         Level ground added to the length.
-    shortest : float [m]
+    shortest : float, optional [m]
         Shortest wave worked out layer by layer.
     all_pressure : bool
         Also give the pressure at every edge.
@@ -186,9 +196,10 @@ def waves(
     See `response`. Weak friction keeps trapped waves from going round the periodic
     domain; it acts on waves shorter than about three times ``2 pi U / N``, so that hydrostatic waves
     are not touched. The mean of the padded boundary is carried with the limit of very long waves.
-    Parts of the boundary that are shorter than `shortest`, or that hold less than a millionth of its
-    energy, fade upward exponentially with the shortest scale worked out, so that the lowest
-    streamline is exactly the boundary.
+    Waves shorter than half of ``2 pi U / N`` at its smallest in the lowest 5 km (but no longer than 4 km, no shorter
+    than 1 km) fade upward almost as in neutral air; they, and those that hold less than a millionth of the
+    energy of the boundary, are carried with the fading of the shortest one worked out, so
+    that the lowest streamline is exactly the boundary.
 
     Examples
     --------
@@ -201,7 +212,7 @@ def waves(
     """
     ground = within("boundary", boundary, -9000.0, 9000.0, "m", "Give metres above the lowest edge.")
     step = float(within("spacing", spacing, 1.0, 1e5, "m", "Give metres."))
-    spectrum, wavenumber, length = _spectrum(ground, step, padding, shortest)
+    spectrum, wavenumber, length = _spectrum(ground, step, padding, shortest or _shortest(column))
     friction = _friction(column, wavenumber, friction_length)
     answer = response(column, wavenumber, friction=friction, hydrostatic=hydrostatic)
     count = ground.shape[-1]
@@ -211,10 +222,11 @@ def waves(
     displacement = _over_transect(known, length, count)
     short = ground[..., None, :] - displacement[..., :1, :]
     fade = np.exp(-wavenumber[-1] * (column.edge - column.edge[..., :1]))
+    suction = (column.density[..., :1] * column.wind[..., :1] ** 2) * wavenumber[-1]
     top = np.broadcast_to(column.carrying, pressure.shape[:-2])[..., None, None]
     return WaveField(
         displacement=displacement + short * fade[..., None],
-        surface_pressure=_over_transect(pressure[..., 0, :], length, count),
+        surface_pressure=_over_transect(pressure[..., 0, :], length, count) - suction * short[..., 0, :],
         top_pressure=_over_transect(np.take_along_axis(pressure, top, axis=-2)[..., 0, :], length, count),
         pressure=_over_transect(pressure, length, count) if all_pressure else None,
     )
@@ -246,6 +258,31 @@ def wave_drag(boundary: ArrayLike, spacing: float, surface_pressure: ArrayLike) 
     """
     slope = np.gradient(np.asarray(boundary, np.float64), spacing, axis=-1)
     return np.asarray(np.sum(np.asarray(surface_pressure) * slope, axis=-1) * spacing)
+
+
+def _open_top(
+    column: Layers, j: int, slowing: NDArray[np.complex128], admittance: NDArray[np.complex128]
+) -> NDArray[np.complex128]:
+    """Pressure over displacement at the top of a layer when all above is like it, with density changing as below."""
+    if j == 0:
+        return admittance
+    middle = 0.5 * (column.edge[..., 1:] + column.edge[..., :-1])
+    change = np.log(column.density[..., j] / column.density[..., j - 1]) / (middle[..., j] - middle[..., j - 1])
+    half = 0.5 * change[..., None]
+    stiffness = (column.density[..., j] * column.wind[..., j] ** 2)[..., None] * slowing[..., 0, :]
+    m = admittance / (1j * stiffness)
+    open_end = admittance * np.sqrt(1.0 - (half / m) ** 2) - half * stiffness
+    return np.asarray(
+        open_end * np.exp(half * (column.edge[..., j + 1, None] - column.edge[..., j, None])), np.complex128
+    )
+
+
+def _without_expansion(column: Layers) -> tuple[Layers, NDArray[np.float64]]:
+    """Column in which displacement is counted without the expansion of rising air, and that expansion's exponent."""
+    steps = column.compression * np.diff(column.edge, axis=-1)
+    rise = np.concatenate([np.zeros((*steps.shape[:-1], 1)), np.cumsum(steps, axis=-1)], axis=-1)
+    middle = 0.5 * (rise[..., 1:] + rise[..., :-1])
+    return replace(column, density=column.density * np.exp(2.0 * middle)), rise
 
 
 def _blocks(count: int, width: int) -> list[slice]:
@@ -293,12 +330,23 @@ def _edge_jump(column: Layers) -> NDArray[np.float64]:
     return np.asarray(density * column.jump)
 
 
+def _low_scorer(column: Layers) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Depth and N / U of the layers in the lowest 5 km, where trapped waves live; 0 above."""
+    depth = np.diff(column.edge, axis=-1)
+    low = np.cumsum(depth, axis=-1) - depth < 5000.0
+    return np.where(low, depth, 0.0), np.where(low, np.sqrt(column.n_squared) / column.wind, 0.0)
+
+
+def _shortest(column: Layers) -> float:
+    """Shortest wave to work out layer by layer, for all members."""
+    largest = float(np.max(_low_scorer(column)[1]))
+    return float(np.clip(2.0 * np.pi / max(_FADING * largest, 1e-9), *SHORTEST_WAVE))
+
+
 def _friction(column: Layers, wavenumber: NDArray[np.float64], length: float) -> NDArray[np.float64]:
     """Damping over kU, for waves short enough to be trapped."""
-    depth = np.diff(column.edge, axis=-1)
-    low = np.cumsum(depth, axis=-1) - depth < 5000.0  # [m] where trapped waves live
-    scorer = np.sum(np.where(low, depth * np.sqrt(column.n_squared) / column.wind, 0.0), axis=-1)
-    scorer = scorer / np.sum(np.where(low, depth, 0.0), axis=-1)
+    depth, scorer = _low_scorer(column)
+    scorer = np.sum(depth * scorer, axis=-1) / np.sum(depth, axis=-1)
     limit = np.maximum(_FRICTION_SHARE * scorer, 1e-5)[..., None, None]
     sharp = (wavenumber / limit) ** 4
     return np.asarray(sharp / (1.0 + sharp) / (wavenumber * length))

@@ -1,0 +1,231 @@
+"""Streamlines over a boundary: displaced, kept from crossing, with the wind that continuity asks for."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.checks import within
+from orolift.flow.profiles import value_at
+
+if TYPE_CHECKING:
+    from numpy.typing import ArrayLike, NDArray
+
+LEAST_STRETCHING = 0.25
+"""Least spacing of streamlines over their spacing upwind: below it the wave breaks and the wind would be more than four
+times the upwind one; a judgement."""
+LARGEST_WAVE_STRETCHING = 2.0
+"""Spacing by waves at which linear theory brings the air to rest (wind perturbation -U): there the wave breaks."""
+
+
+@dataclass(frozen=True)
+class Streamlines:
+    """Streamlines over a transect. Leading axes hold members.
+
+    Attributes
+    ----------
+    heights : ndarray, shape (..., nz, nx) [m]
+        Of each streamline; none crosses another.
+    stretching : ndarray, shape (..., nz, nx) [1]
+        Spacing over spacing upwind, at the streamlines.
+    breaking : ndarray of bool, shape (..., nz, nx)
+        Where the wave breaks.
+    """
+
+    heights: NDArray[np.float64]
+    stretching: NDArray[np.float64]
+    breaking: NDArray[np.bool_]
+
+
+def streamlines(
+    start_heights: ArrayLike,
+    displacement: ArrayLike,
+    *,
+    wave_displacement: ArrayLike | None = None,
+    least_stretching: float = LEAST_STRETCHING,
+) -> Streamlines:
+    """Streamlines from their displacements, rebuilt upward so that none crosses another.
+
+    Parameters
+    ----------
+    start_heights : array_like, shape (..., nz) [m]
+        Upwind, strictly increasing.
+    displacement : array_like, shape (..., nz, nx) [m]
+        The first row is that of the boundary.
+    wave_displacement : array_like, shape (..., nz, nx), optional [m]
+        Part of it that waves make, for telling where they break; all of it when left out.
+    least_stretching : float [1]
+        Spacing over spacing upwind is kept from falling below this; 0.01 to 1.
+
+    Returns
+    -------
+    Streamlines
+
+    Raises
+    ------
+    OutOfRangeError
+        If `least_stretching` is outside its range.
+
+    Notes
+    -----
+    A streamline that started at z0 is at ``z0 + eta(x, z0)``, so spacing changes by
+    ``1 + d(eta)/dz0``, taken between neighbours and kept from below. Heights are built
+    from the lowest line upward: each line lies at ``z0 + eta``, or as far above the one
+    below as the least spacing asks for, if that is higher. So lines pushed up where the wave breaks come back
+    to their place above it. The wave breaks where the spacing had to be kept, or where the wave alone
+    doubles it, which is where linear theory brings the wind to rest.
+
+    Examples
+    --------
+    >>> lines = streamlines([0.0, 100.0, 200.0], [[50.0], [-60.0], [0.0]])
+    >>> lines.heights[:, 0], lines.breaking[:, 0]
+    (array([ 50.,  75., 200.]), array([ True,  True, False]))
+    """
+    least = float(within("least_stretching", least_stretching, 0.01, 1.0, "", "It is a share of the upwind spacing."))
+    start = np.asarray(start_heights, np.float64)[..., None]
+    shift = np.asarray(displacement, np.float64)
+    gap = np.diff(start, axis=-2)
+    # with the least spacing taken off, lines must only not fall
+    heights = np.maximum.accumulate(shift + (1.0 - least) * start, axis=-2) + least * start
+    ratio = np.diff(heights, axis=-2) / gap
+    waves = shift if wave_displacement is None else np.asarray(wave_displacement, np.float64)
+    breaks = (ratio < least * (1.0 + 1e-9)) | (np.diff(waves, axis=-2) / gap > LARGEST_WAVE_STRETCHING - 1.0)
+    return Streamlines(heights, _at_streamlines(ratio, gap), _either_side(breaks))
+
+
+def density_scale(height: ArrayLike, density: ArrayLike, start_heights: ArrayLike) -> NDArray[np.float64]:
+    """Height over which density falls by a factor e, where streamlines start.
+
+    Parameters
+    ----------
+    height : array_like, shape (nz_column,) [m]
+        Strictly increasing.
+    density : array_like, shape (..., nz_column) [kg m-3]
+    start_heights : array_like, shape (..., nz) [m]
+
+    Returns
+    -------
+    ndarray, shape (..., nz) [m]
+        Infinite where density does not fall.
+
+    Examples
+    --------
+    >>> density_scale([0.0, 1e3, 2e3], np.exp([0.0, -0.1, -0.2]), [500.0]).round()
+    array([10000.])
+    """
+    levels = np.asarray(height, np.float64)
+    fall = -np.gradient(np.log(np.asarray(density, np.float64)), levels, axis=-1)
+    rate = value_at(levels, fall, start_heights)
+    falling = rate > 0.0
+    return np.asarray(np.where(falling, 1.0 / np.where(falling, rate, 1.0), np.inf))
+
+
+def speed_factor(lines: Streamlines, start_heights: ArrayLike, scale: ArrayLike) -> NDArray[np.float64]:
+    """Wind along streamlines over the wind where they started.
+
+    Parameters
+    ----------
+    lines : Streamlines
+    start_heights : array_like, shape (..., nz) [m]
+    scale : array_like, shape (..., nz) [m]
+        From `density_scale`.
+
+    Returns
+    -------
+    ndarray, shape (..., nz, nx) [1]
+
+    Notes
+    -----
+    Continuity between streamlines: ``U / U0 = rho0(z0) / (rho(z) (1 + d(eta)/dz0))``. Density at
+    the new height is taken as falling from that at z0 with its scale there.
+
+    Examples
+    --------
+    >>> lines = streamlines([0.0, 100.0], [[0.0], [-50.0]])
+    >>> speed_factor(lines, [0.0, 100.0], [np.inf, np.inf])
+    array([[2.],
+           [2.]])
+    """
+    shift = lines.heights - np.asarray(start_heights, np.float64)[..., None]
+    return np.asarray(np.exp(shift / np.asarray(scale, np.float64)[..., None]) / lines.stretching)
+
+
+def joined_streamlines(one: Streamlines, other: Streamlines, weight: ArrayLike) -> Streamlines:
+    """Two solutions over the same boundary, joined along the transect.
+
+    Parameters
+    ----------
+    one, other : Streamlines
+        With the same start heights, for example saturated and dry.
+    weight : array_like, shape (..., nx) [1]
+        Of the first, 0 to 1; from `join_weight`.
+
+    Returns
+    -------
+    Streamlines
+        Neither crossing nor below ground when the two are not.
+
+    Raises
+    ------
+    OutOfRangeError
+        If a weight is outside 0 to 1.
+
+    Examples
+    --------
+    >>> a = streamlines([0.0, 100.0], [[0.0, 0.0], [0.0, 0.0]])
+    >>> b = streamlines([0.0, 100.0], [[0.0, 0.0], [50.0, 50.0]])
+    >>> joined_streamlines(a, b, [1.0, 0.5]).heights[1]
+    array([100., 125.])
+    """
+    first = within("weight", weight, 0.0, 1.0, "", "It is a share.")[..., None, :]
+    second = 1.0 - first
+    return Streamlines(
+        heights=first * one.heights + second * other.heights,
+        stretching=first * one.stretching + second * other.stretching,
+        breaking=(one.breaking & (first > 0.0)) | (other.breaking & (second > 0.0)),
+    )
+
+
+def join_weight(
+    distance: ArrayLike, crest_distance: ArrayLike, cloud_end: ArrayLike, *, least_width: float = 2000.0
+) -> NDArray[np.float64]:
+    """Weight of the saturated solution along the transect.
+
+    Parameters
+    ----------
+    distance : array_like, shape (nx,) [m]
+    crest_distance : array_like, shape (...) [m]
+    cloud_end : array_like, shape (...) [m]
+        Distance at which cloud ends in the lee.
+    least_width : float [m]
+        Over which the weight falls, at least, so that streamlines stay smooth: a judgement.
+
+    Returns
+    -------
+    ndarray, shape (..., nx) [1]
+        1 up to the crest, falling with half a cosine to 0 where cloud ends.
+
+    Examples
+    --------
+    >>> join_weight([0.0, 10e3, 15e3, 20e3, 30e3], 10e3, 20e3)
+    array([1. , 1. , 0.5, 0. , 0. ])
+    """
+    crest = np.asarray(crest_distance, np.float64)[..., None]
+    width = np.maximum(np.asarray(cloud_end, np.float64)[..., None] - crest, least_width)
+    share = np.clip((np.asarray(distance, np.float64) - crest) / width, 0.0, 1.0)
+    return np.asarray(0.5 + 0.5 * np.cos(np.pi * share)).round(15)
+
+
+def _at_streamlines(ratio: NDArray[np.float64], gap: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Stretching at streamlines from that between them: the mean of both sides, weighted by their depth."""
+    weighted = ratio * gap
+    inner = (weighted[..., 1:, :] + weighted[..., :-1, :]) / (gap[..., 1:, :] + gap[..., :-1, :])
+    return np.concatenate([ratio[..., :1, :], inner, ratio[..., -1:, :]], axis=-2)
+
+
+def _either_side(breaks: NDArray[np.bool_]) -> NDArray[np.bool_]:
+    """Whether the layer below or above a streamline breaks."""
+    inner = breaks[..., 1:, :] | breaks[..., :-1, :]
+    return np.concatenate([breaks[..., :1, :], inner, breaks[..., -1:, :]], axis=-2)
