@@ -155,7 +155,8 @@ def airflow(
     wave_shift = _faded(field.displacement, column, critical_level)
     carried = carried_share(boundary, start)[..., None] * boundary.body[..., None, :]
     lines = streamlines(start, wave_shift + carried, wave_displacement=wave_shift)
-    by_waves = lines.heights - start[..., None] - carried
+    by_waves = np.subtract(lines.heights, start[..., None])
+    by_waves -= carried
     scale = density_scale(height, density, start)
     return Airflow(
         start_heights=start,

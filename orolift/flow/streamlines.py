@@ -87,12 +87,13 @@ def streamlines(
     start = np.asarray(start_heights, np.float64)[..., None]
     shift = np.asarray(displacement, np.float64)
     gap = np.diff(start, axis=-2)
-    # with the least spacing taken off, lines must only not fall
-    heights = np.maximum.accumulate(shift + (1.0 - least) * start, axis=-2) + least * start
-    ratio = np.diff(heights, axis=-2) / gap
+    heights = shift + (1.0 - least) * start
+    np.maximum.accumulate(heights, axis=-2, out=heights)  # with the least spacing taken off, lines must only not fall
+    heights += least * start
     waves = shift if wave_displacement is None else np.asarray(wave_displacement, np.float64)
-    breaks = (ratio < least * (1.0 + 1e-9)) | (np.diff(waves, axis=-2) / gap > LARGEST_WAVE_STRETCHING - 1.0)
-    return Streamlines(heights, _at_streamlines(ratio, gap), _either_side(breaks))
+    breaks = np.diff(heights, axis=-2) < least * (1.0 + 1e-9) * gap
+    breaks |= np.diff(waves, axis=-2) > (LARGEST_WAVE_STRETCHING - 1.0) * gap
+    return Streamlines(heights, _stretching(heights, start), _either_side(breaks))
 
 
 def density_scale(height: ArrayLike, density: ArrayLike, start_heights: ArrayLike) -> NDArray[np.float64]:
@@ -148,8 +149,11 @@ def speed_factor(lines: Streamlines, start_heights: ArrayLike, scale: ArrayLike)
     array([[2.],
            [2.]])
     """
-    shift = lines.heights - np.asarray(start_heights, np.float64)[..., None]
-    return np.asarray(np.exp(shift / np.asarray(scale, np.float64)[..., None]) / lines.stretching)
+    factor = lines.heights - np.asarray(start_heights, np.float64)[..., None]
+    factor /= np.asarray(scale, np.float64)[..., None]
+    np.exp(factor, out=factor)
+    factor /= lines.stretching
+    return factor
 
 
 def joined_streamlines(one: Streamlines, other: Streamlines, weight: ArrayLike) -> Streamlines:
@@ -218,11 +222,15 @@ def join_weight(
     return np.asarray(0.5 + 0.5 * np.cos(np.pi * share)).round(15)
 
 
-def _at_streamlines(ratio: NDArray[np.float64], gap: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Stretching at streamlines from that between them: the mean of both sides, weighted by their depth."""
-    weighted = ratio * gap
-    inner = (weighted[..., 1:, :] + weighted[..., :-1, :]) / (gap[..., 1:, :] + gap[..., :-1, :])
-    return np.concatenate([ratio[..., :1, :], inner, ratio[..., -1:, :]], axis=-2)
+def _stretching(heights: NDArray[np.float64], start: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Spacing over spacing upwind at the streamlines: between both neighbours, one-sided at the ends."""
+    ratio = np.empty_like(heights)
+    np.subtract(heights[..., 2:, :], heights[..., :-2, :], out=ratio[..., 1:-1, :])
+    ratio[..., 1:-1, :] /= start[..., 2:, :] - start[..., :-2, :]
+    for end, upper, lower in ((0, 1, 0), (-1, -1, -2)):
+        gap = start[..., upper, :] - start[..., lower, :]
+        ratio[..., end, :] = (heights[..., upper, :] - heights[..., lower, :]) / gap
+    return ratio
 
 
 def _either_side(breaks: NDArray[np.bool_]) -> NDArray[np.bool_]:

@@ -122,25 +122,26 @@ def response(
     count = column.density.shape[-1]
     column, rise = _without_expansion(column)
     jump = _edge_jump(column)[..., None]
+    jumps = bool(np.any(jump))
     lead = np.broadcast_shapes(column.density.shape[:-1], slowing.shape[:-2])
     impedance = np.zeros((*lead, count + 1, k.size), np.complex128)
     ratio = np.ones(impedance.shape, np.complex128)
     above = np.zeros((*lead, k.size), np.complex128)
     stops = column.carrying[..., None]
+    highest = {count - 1, *(int(one) - 1 for one in np.unique(stops))}
     for block in _blocks(count, impedance[..., 0, :].size):
         parts = _layer_parts(column, block, k, slowing, hydrostatic)
         for j in range(block.stop - 1, block.start - 1, -1):
             step, plus, minus, square, admittance = (part[..., j - block.start, :] for part in parts)
-            last = stops <= j + 1 if j == count - 1 else stops == j + 1
-            if np.any(last):  # nothing comes back from above
+            if j in highest:  # nothing comes back from above
+                last = stops <= j + 1 if j == count - 1 else stops == j + 1
                 above = np.where(last, _open_top(column, j, slowing, admittance), above)
                 impedance[..., j + 1, :] = np.where(last, above, impedance[..., j + 1, :])
-            bottom = plus + above * minus
-            bottom[bottom == 0.0] = 1e-30  # exactly at the resonance of a column without friction
-            share = 1.0 / bottom
-            ratio[..., j + 1, :] = 2.0 * step * share
-            below = impedance[..., j, :] = (square + above * plus) * share
-            above = below + jump[..., j, :]
+            with np.errstate(divide="ignore", invalid="ignore"):  # at the resonance of a column without friction
+                share = 1.0 / (plus + above * minus)
+                np.multiply(step, share, out=ratio[..., j + 1, :])
+                below = impedance[..., j, :] = (square + above * plus) * share
+            above = below + jump[..., j, :] if jumps else below
     outside = np.arange(count + 1) > stops
     ratio[outside] = 1.0
     impedance[outside] = 0.0
@@ -295,7 +296,7 @@ def _blocks(count: int, width: int) -> list[slice]:
 def _layer_parts(
     column: Layers, block: slice, k: NDArray[np.inexact], slowing: NDArray[np.complex128], hydrostatic: bool
 ) -> tuple[NDArray[np.complex128], ...]:
-    """What the recursion needs: with E = exp(2imd) and A = i rho U^2 m, exp(imd), 1 + E, (1 - E)/A, (1 - E) A and A."""
+    """What the recursion needs: with E = exp(2imd) and A = i rho U^2 m, 2 exp(imd), 1 + E, (1 - E)/A, (1 - E) A, A."""
     depth = np.diff(column.edge, axis=-1)[..., block, None]
     wind_squared = column.wind[..., block, None] ** 2
     ratio = column.n_squared[..., block, None] / wind_squared
@@ -308,7 +309,7 @@ def _layer_parts(
     twice = step * step
     admittance = np.asarray(1j * column.density[..., block, None] * wind_squared * slowing * m, np.complex128)
     minus = 1.0 - twice
-    return step, 1.0 + twice, minus / admittance, minus * admittance, admittance
+    return 2.0 * step, 1.0 + twice, minus / admittance, minus * admittance, admittance
 
 
 def _upward_root(square: NDArray[np.complex128]) -> NDArray[np.complex128]:
