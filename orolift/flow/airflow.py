@@ -10,10 +10,10 @@ import numpy as np
 from orolift.constants import GRAVITY, KAPPA
 from orolift.errors import OutOfRangeError
 from orolift.flow.boundary import Boundary, carried_share, crossing_boundary, split_boundary
-from orolift.flow.layers import Layers, layers_of_column, least_richardson_number
-from orolift.flow.profiles import layer_mean
+from orolift.flow.layers import Layers, compression, layers_of_column, least_richardson_number
+from orolift.flow.profiles import layer_mean, value_at
 from orolift.flow.scales import LEAST_WIND
-from orolift.flow.streamlines import Streamlines, density_scale, joined_streamlines, speed_factor, streamlines
+from orolift.flow.streamlines import Streamlines, joined_streamlines, speed_factor, streamlines
 from orolift.flow.trapped import TrappedWaves, trapped_waves
 from orolift.flow.waves import waves
 
@@ -46,8 +46,10 @@ class Airflow:
         Pressure perturbation at the highest streamline; `highest_pressure` turns it into a pressure.
     boundary : Boundary
         Lower boundary taken apart; `wave_share` below 1 says the range is too high for linear waves.
-    density_scale : ndarray, shape (..., nz) [m]
-        Over which density falls by a factor e.
+    start_wind : ndarray, shape (..., nz) [m s-1]
+        Wind across the range where the streamlines start, at least 2.5: times `speed_factor` it is the wind.
+    compression : ndarray, shape (..., nz) [m-1]
+        By which rising air expands, from `layers.compression`.
     critical_level : ndarray, shape (...) [m]
         Height above which waves do not go; infinite when there is none.
     least_richardson : ndarray, shape (...) [1]
@@ -65,7 +67,8 @@ class Airflow:
     breaking: NDArray[np.bool_]
     top_pressure: NDArray[np.float64]
     boundary: Boundary
-    density_scale: NDArray[np.float64]
+    start_wind: NDArray[np.float64]
+    compression: NDArray[np.float64]
     critical_level: NDArray[np.float64]
     least_richardson: NDArray[np.float64]
     weak_wind: NDArray[np.bool_]
@@ -157,16 +160,17 @@ def airflow(
     lines = streamlines(start, wave_shift + carried, wave_displacement=wave_shift)
     by_waves = np.subtract(lines.heights, start[..., None])
     by_waves -= carried
-    scale = density_scale(height, density, start)
+    expansion = compression(height, density, n_squared, start)
     return Airflow(
         start_heights=start,
         heights=lines.heights,
         stretching=lines.stretching,
-        speed_factor=speed_factor(lines, start, scale),
+        speed_factor=speed_factor(lines, start, expansion),
         breaking=lines.breaking,
         top_pressure=_top_pressure(field.surface_pressure, by_waves, column),
         boundary=boundary,
-        density_scale=scale,
+        start_wind=np.maximum(value_at(height, wind, start), LEAST_WIND),
+        compression=expansion,
         critical_level=np.where(column.critical, critical_level, np.inf),
         least_richardson=least_richardson_number(column),
         weak_wind=column.weak_below,
@@ -216,7 +220,7 @@ def joined(moist: Airflow, dry: Airflow, weight: ArrayLike) -> Airflow:
         heights=lines.heights,
         stretching=lines.stretching,
         breaking=lines.breaking,
-        speed_factor=speed_factor(lines, dry.start_heights, dry.density_scale),
+        speed_factor=speed_factor(lines, dry.start_heights, dry.compression),
         top_pressure=share * moist.top_pressure + (1.0 - share) * dry.top_pressure,
     )
 

@@ -6,14 +6,12 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.saturation import ice_share, latent_heat, saturation_mixing_ratio
+from orolift.air.saturation import latent_heat, saturation_mixing_ratio
 from orolift.checks import within
 from orolift.constants import (
     EPSILON,
     GRAVITY,
     HEAT_CAPACITY_DRY_AIR,
-    HEAT_CAPACITY_ICE,
-    HEAT_CAPACITY_LIQUID,
     HEAT_CAPACITY_VAPOUR,
     KAPPA,
     R_DRY,
@@ -101,10 +99,9 @@ def moist_n_squared(
     The full form of Durran and Klemp (1982) [1]_,
     ``N_m^2 = (g/T) (dT/dz + G) (1 + L qs / (R T)) - g / (1 + qw) dqw/dz`` with the
     saturated lapse rate G of air that keeps its cloud. The coefficients of this form
-    are written from memory of that paper; tests compare it with the buoyancy of
-    displaced parcels of this package's own thermodynamics, and with the
-    approximate form, which was read. Assumed: cloud is carried with the
-    air, hydrostatic balance.
+    are written from memory of that paper; the buoyancy of displaced parcels of this package's own
+    thermodynamics gives the same to a thousandth: see ``tests/flow/test_stability.py``. Assumed: cloud is
+    carried with the air, hydrostatic balance.
 
     References
     ----------
@@ -119,8 +116,9 @@ def moist_n_squared(
     """
     levels = checked_height(height)
     t, qs, heat, qw = _saturated(pressure, temperature, total_water, freezing)
-    share = ice_share(t) if freezing else np.zeros_like(t)
-    c_cloud = (1.0 - share) * HEAT_CAPACITY_LIQUID + share * HEAT_CAPACITY_ICE
+    # Kirchhoff: heat capacity of the condensate, with the heat of freezing while its ice share grows
+    warmer, colder = latent_heat(t + 0.05, freezing=freezing), latent_heat(t - 0.05, freezing=freezing)
+    c_cloud = HEAT_CAPACITY_VAPOUR - (warmer - colder) / 0.1
     release = 1.0 + heat * qs / (R_DRY * t)
     capacity = HEAT_CAPACITY_DRY_AIR + HEAT_CAPACITY_VAPOUR * qs + c_cloud * (qw - qs)
     phase = EPSILON * heat**2 * qs / (R_DRY * t**2) * (1.0 + qs / EPSILON)

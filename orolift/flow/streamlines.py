@@ -8,7 +8,6 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.checks import within
-from orolift.flow.profiles import value_at
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
@@ -96,42 +95,15 @@ def streamlines(
     return Streamlines(heights, _stretching(heights, start), _either_side(breaks))
 
 
-def density_scale(height: ArrayLike, density: ArrayLike, start_heights: ArrayLike) -> NDArray[np.float64]:
-    """Height over which density falls by a factor e, where streamlines start.
-
-    Parameters
-    ----------
-    height : array_like, shape (nz_column,) [m]
-        Strictly increasing.
-    density : array_like, shape (..., nz_column) [kg m-3]
-    start_heights : array_like, shape (..., nz) [m]
-
-    Returns
-    -------
-    ndarray, shape (..., nz) [m]
-        Infinite where density does not fall.
-
-    Examples
-    --------
-    >>> density_scale([0.0, 1e3, 2e3], np.exp([0.0, -0.1, -0.2]), [500.0]).round()
-    array([10000.])
-    """
-    levels = np.asarray(height, np.float64)
-    fall = -np.gradient(np.log(np.asarray(density, np.float64)), levels, axis=-1)
-    rate = value_at(levels, fall, start_heights)
-    falling = rate > 0.0
-    return np.asarray(np.where(falling, 1.0 / np.where(falling, rate, 1.0), np.inf))
-
-
-def speed_factor(lines: Streamlines, start_heights: ArrayLike, scale: ArrayLike) -> NDArray[np.float64]:
+def speed_factor(lines: Streamlines, start_heights: ArrayLike, compression: ArrayLike) -> NDArray[np.float64]:
     """Wind along streamlines over the wind where they started.
 
     Parameters
     ----------
     lines : Streamlines
     start_heights : array_like, shape (..., nz) [m]
-    scale : array_like, shape (..., nz) [m]
-        From `density_scale`.
+    compression : array_like, shape (..., nz) [m-1]
+        Gravity over the square of the speed of sound where they started, 8.5e-5 near the ground.
 
     Returns
     -------
@@ -139,18 +111,18 @@ def speed_factor(lines: Streamlines, start_heights: ArrayLike, scale: ArrayLike)
 
     Notes
     -----
-    Continuity between streamlines: ``U / U0 = rho0(z0) / (rho(z) (1 + d(eta)/dz0))``. Density at
-    the new height is taken as falling from that at z0 with its scale there.
+    Continuity between streamlines: ``U / U0 = rho0(z0) / (rho(z) (1 + d(eta)/dz0))``, with the density
+    that the air itself takes on by expanding, ``rho = rho0 exp(-eta g / c^2)``.
 
     Examples
     --------
     >>> lines = streamlines([0.0, 100.0], [[0.0], [-50.0]])
-    >>> speed_factor(lines, [0.0, 100.0], [np.inf, np.inf])
+    >>> speed_factor(lines, [0.0, 100.0], [0.0, 0.0])
     array([[2.],
            [2.]])
     """
     factor = lines.heights - np.asarray(start_heights, np.float64)[..., None]
-    factor /= np.asarray(scale, np.float64)[..., None]
+    factor *= np.asarray(compression, np.float64)[..., None]
     np.exp(factor, out=factor)
     factor /= lines.stretching
     return factor

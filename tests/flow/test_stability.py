@@ -5,6 +5,7 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from orolift.air.parcel import Parcel, moved_to
 from orolift.air.saturation import saturation_mixing_ratio
 from orolift.constants import EPSILON, GRAVITY, R_DRY
 from orolift.errors import OutOfRangeError
@@ -76,6 +77,41 @@ def test_full_and_approximate_form_agree(p, t, lapse, n_dry, n2_constant, n2_sat
     approximate = moist_n_squared_approximate_durran_klemp_1982(OFFSETS, pressure, temperature, water)[1]
     assert abs(full - approximate) < 0.05 * n_dry**2
     assert abs(full - n2_constant) < 0.05 * n_dry**2
+
+
+def density(pressure, temperature, vapour, cloud):
+    return pressure / (R_DRY * temperature * (1.0 + vapour / EPSILON) / (1.0 + vapour + cloud))
+
+
+# pressure [Pa], temperature [K], lapse rate [K m-1], cloud [kg kg-1], whether cloud freezes
+DISPLACED = [
+    pytest.param(85e3, 280.0, 5e-3, 1e-3, True, id="near neutral"),
+    pytest.param(90e3, 285.0, 4e-3, 1e-4, True, id="thin cloud"),
+    pytest.param(60e3, 262.0, 6e-3, 5e-4, True, id="freezing"),
+    pytest.param(60e3, 262.0, 6e-3, 5e-4, False, id="supercooled"),
+    pytest.param(95e3, 297.0, 4e-3, 2e-3, True, id="unstable"),
+]
+
+
+@pytest.mark.parametrize(("p", "t", "lapse", "cloud", "freezing"), DISPLACED)
+def test_full_form_is_the_buoyancy_of_displaced_parcels(p, t, lapse, cloud, freezing):
+    """Law: -g / rho times the density gradient of the column minus that of a parcel moved up and down reversibly.
+
+    Total water constant. atol 1e-3 of a dry stability of 1e-4: the column has steps of 1 m.
+    """
+    z = np.array([-1.0, 0.0, 1.0])
+    temperature = t - lapse * z
+    water = float(saturation_mixing_ratio(p, t, freezing=freezing)) + cloud
+    here = density(p, t, water - cloud, cloud)
+    pressure = p - GRAVITY * here * z
+    vapour = saturation_mixing_ratio(pressure, temperature, freezing=freezing)
+    column = density(pressure, temperature, vapour, water - vapour)
+    parcel = Parcel(np.full(2, p), np.full(2, t), np.full(2, water - cloud), np.full(2, cloud))
+    moved = moved_to(parcel, pressure[[0, 2]], freezing=freezing)
+    carried = density(moved.pressure, moved.temperature, moved.vapour, moved.cloud)
+    expected = -GRAVITY / here * ((column[2] - column[0]) - (carried[1] - carried[0])) / 2.0
+    found = moist_n_squared(z, pressure, temperature, np.full(3, water), freezing=freezing)[1]
+    assert found == pytest.approx(expected, abs=1e-7)
 
 
 def test_moist_stability_falls_to_the_dry_one_in_cold_air():
