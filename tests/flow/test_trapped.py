@@ -75,6 +75,17 @@ def test_stratosphere_lets_them_leak():
     assert 50e3 < near.decay_distance[0] < far.decay_distance[0] < np.inf
 
 
+def test_leaking_waves_fade_as_told():
+    """The solver without friction: amplitude falls by a factor e over the decay distance (5 %)."""
+    step = 250.0
+    x = np.arange(-100e3, 250e3, step)
+    column = layers([0.0, 1500.0, 3e3, 4.5e3, 12e3], 1.0, 10.0, [1e-4, 1e-4, 1.6e-5, 4e-4])
+    told = trapped_waves(column)
+    field = waves(100.0 / (1.0 + (x / 1500.0) ** 2), step, column, friction_length=np.inf, padding=3000e3)
+    near, far = (np.ptp(field.displacement[1, (x > start) & (x < start + 12e3)]) for start in (40e3, 100e3))
+    assert 60e3 / np.log(near / far) == pytest.approx(told.decay_distance[0], rel=0.05)
+
+
 def test_far_field_of_a_bell_ridge():
     """Amplitude in the lee from the residue at the pole: 2 pi hm a exp(-k a) F(k, z) / (dF(k, 0)/dk), by hand.
 

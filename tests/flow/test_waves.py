@@ -175,6 +175,8 @@ def test_expanding_air():
     level = round(2.0 * np.pi / m / 50.0)
     expected = np.exp((1j * m + 0.5 * fall) * edges[level])
     np.testing.assert_allclose(answer.displacement[level, 0], expected, rtol=1e-3)
+    aloft = np.exp(-fall * edges[level]) * U**2 * (1j * m - b)
+    np.testing.assert_allclose(answer.impedance[level, 0], aloft, rtol=3e-3)
 
 
 def test_a_thin_stable_layer_is_a_jump():
@@ -229,6 +231,17 @@ def test_lowest_streamline_is_the_boundary():
     rough = ridge(300.0, 9e3) * (1.0 + 0.5 * np.sign(np.sin(RIDGE_X)))
     field = waves(rough, 500.0, SHEARED)
     np.testing.assert_allclose(field.displacement[0], rough, atol=1e-9)
+
+
+def test_short_parts_press_as_fading_waves_do():
+    """Ripples of 2 km in neutral air: suction over their tops, rho U^2 k h when worked out, less when carried along."""
+    ripples = ridge(20.0, 8e3) * np.cos(2.0 * np.pi * RIDGE_X / 2e3)
+    column = layers(np.linspace(0.0, 10e3, 101), 1.0, U, 0.0)
+    exact = waves(ripples, 500.0, column, shortest=1000.0).surface_pressure
+    carried = waves(ripples, 500.0, column).surface_pressure
+    assert exact.min() == pytest.approx(-(U**2) * 2.0 * np.pi / 2e3 * 20.0, rel=0.03)
+    assert 0.3 * exact.min() > carried.min() > exact.min()
+    assert np.corrcoef(exact, carried)[0, 1] > 0.95
 
 
 @pytest.mark.parametrize("width", [3e3, 20e3])
