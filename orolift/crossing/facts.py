@@ -34,6 +34,8 @@ LOW_RIDGE = 100.0
 """A range lower than this [m] is worked out with a caution (design choice)."""
 SLOW_ROTATION = 1.0
 """Rossby number below which rotation matters; common practice, no published source."""
+LOW_BREAKING = 3000.0
+"""Height above the crest [m] below which breaking waves matter for the lee; a judgement."""
 UNSTABLE = 0.2
 """Share of the layer below the crest that may be unstable before it is said; a judgement."""
 
@@ -61,7 +63,7 @@ def clouds(solution: Solution, distance: Array, shape: Features) -> Cloud:
     streams = solution.streams
     x = distance[streams.place]
     height = streams.flow.heights[0][:, streams.place].T
-    cloud = streams.air.cloud[:, 0, :]
+    cloud = streams.air.cloud[:, 0, :] + streams.air.condensed[:, 0, :]  # all of it may have fallen out at once
     crest = int(np.argmin(np.abs(x - shape.crest_distance)))
     excess = _excess(solution)
     up = [_edge(x, height, cloud, excess, i, range(crest + 1)) for i in range(cloud.shape[1])]
@@ -179,7 +181,7 @@ def flow_facts(ground: Ground, solution: Solution, crest_wind: float, settings: 
         else float(deformation_radius(n, shape.crest - shape.base, latitude)),
         breaks_through=(pool is None) if lee.known else None,
         break_through_chance=chance_of_breaking_through(sun, crest_wind) if not lee.known else float(pool is None),
-        wave_breaking=bool(streams.flow.breaking[0].any()),
+        wave_breaking=_low_breaking(solution, shape.crest),
         trapped_wavelength=_trapped_wavelength(solution),
         critical_level=critical if np.isfinite(critical) else None,
         pressure_difference=_pressure_difference(ground, solution),
@@ -198,6 +200,12 @@ def _going_round_source(ground: Ground, settings: Settings) -> str:
     if ground.crest_line is not None:
         return "from the gaps of the crest line"
     return "assumed"
+
+
+def _low_breaking(solution: Solution, crest: float) -> bool:
+    """Whether the wave breaks less than 3 km above the crest; higher up thin air makes every wave steep."""
+    flow = solution.streams.flow
+    return bool(np.any(flow.breaking[0] & (flow.heights[0] < crest + LOW_BREAKING)))
 
 
 def _trapped_wavelength(solution: Solution) -> float | None:

@@ -10,7 +10,7 @@ import numpy as np
 from orolift.crossing.arrival import frozen_temperature, over, pressure_at
 from orolift.crossing.pool import Lee, Pool, pool_under
 from orolift.crossing.settings import DEFAULT_GOING_ROUND, each
-from orolift.crossing.streams import Streams, streams
+from orolift.crossing.streams import PASSES, Streams, streams
 from orolift.crossing.upwind import Blocking, Upwind, blocking, upwind_column
 from orolift.flow.gaps import gap_share, gap_share_from_pass, reach_along_crest
 from orolift.flow.scales import deformation_radius
@@ -111,7 +111,7 @@ def solve(
     *,
     members: int = 1,
     streamlines: int = 60,
-    passes: int = 3,
+    passes: int = PASSES,
 ) -> Solution:
     """Members of a crossing.
 

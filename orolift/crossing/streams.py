@@ -14,7 +14,7 @@ from orolift.air.temperature import virtual_temperature
 from orolift.constants import GRAVITY, KAPPA, R_DRY
 from orolift.crossing.march import March, march
 from orolift.crossing.upwind import LEAST_VAPOUR, Upwind
-from orolift.flow.airflow import Airflow, airflow, joined
+from orolift.flow.airflow import Airflow, airflow, highest_pressure, joined
 from orolift.flow.boundary import start_level
 from orolift.flow.streamlines import join_weight
 
@@ -29,8 +29,8 @@ CREST_CLOUD = 500.0
 """Streamlines that start up to this far above the crest [m] count for where cloud ends in the lee; a judgement."""
 LOWEST_SPACING = 25.0
 """Spacing [m] of the lowest streamlines upwind."""
-PASSES = 3
-"""Times the flow is worked out, each with the saturation of the one before."""
+PASSES = 4
+"""Most times the flow is worked out, each with the saturation of the one before."""
 EARLY_STRIDE = 8
 """In all passes but the last the air is marched over every eighth place: they need only to know where cloud is."""
 MOST_PLACES = 512
@@ -124,37 +124,39 @@ def streams(
     the first pass is that of the undisturbed column at each height, then that of the
     crossed column.
     """
-    members = blocked_top.size
     heights = start_heights(start_level(ground, blocked_top), float(upwind.height[-1]), count)
     start, source, mixed = starting_air(incoming, heights, inflow_depth, freezing=freezing)
-    wind = _on_streamlines(upwind.height, upwind.wind, heights)
-    moist_first = Parcel(start.pressure, start.temperature, np.maximum(start.vapour, LEAST_VAPOUR), start.cloud)
-    saturates = condensation_point(moist_first, freezing=freezing).pressure
-    share = np.zeros_like(heights)
-    end = np.full(members, distance[crest])
-    setup = _Setup(incoming, upwind, distance, ground, crest, blocked_top, pool_top, heights)
-    flow, last, air, place, change = None, None, None, np.arange(distance.size), np.ones((1, 1, distance.size))
-    for number in range(passes):
-        flow = _flow(setup, share, end)
-        stride = EARLY_STRIDE if number < passes - 1 else max(1, -(-distance.size // MOST_PLACES))
-        new_place = np.union1d(np.arange(0, distance.size, stride), [crest, distance.size - 1])
-        pressure, change = _pressure(setup, flow, start, new_place, air, place, change)
-        place = new_place
-        air = march(start, np.moveaxis(pressure, -1, 0), removed_share[:, np.newaxis], freezing=freezing)
-        share = _relaxed(share, _saturated_share(air, start, saturates, place <= crest), first=number == 0)
-        end = _cloud_end(setup, air, place)
-        moved = np.inf if last is None else _moved(setup, flow.heights, last)
-        last = flow.heights
-    if flow is None or air is None:
-        raise ValueError("at least one pass is needed")
-    settled = np.broadcast_to(np.asarray(moved) <= SETTLED, (members,)) | (passes == 1)
-    return Streams(start, source, mixed, inflow_depth, _mass(source.pressure), flow, wind, place, air, settled)
-
-
-def _moved(setup: _Setup, heights: Array, before: Array) -> Array:
-    """Largest change of a streamline that starts no higher than 2 km above the crest, (m,)."""
-    low = setup.heights <= setup.ground[setup.crest] + 2000.0
-    return np.asarray(np.max(np.abs(heights - before) * low[..., np.newaxis], axis=(-2, -1)))
+    wet = Parcel(start.pressure, start.temperature, np.maximum(start.vapour, LEAST_VAPOUR), start.cloud)
+    saturates = condensation_point(wet, freezing=freezing).pressure
+    setup = _Setup(
+        incoming,
+        upwind,
+        distance,
+        ground,
+        crest,
+        blocked_top,
+        pool_top,
+        heights,
+        start,
+        saturates,
+        removed_share,
+        freezing,
+    )
+    dry = _over(setup, upwind.dry)
+    rows = np.broadcast_to(upwind.lifted_share, (heights.shape[0], upwind.height.size))
+    lifted = np.stack([np.interp(z, upwind.height, row) for z, row in zip(heights, rows, strict=True)])
+    state = _Pass(dry, np.arange(distance.size), None, np.ones((1, 1, distance.size)), lifted, None, np.inf)
+    for _ in range(passes - 1):
+        state = _next(setup, dry, state, EARLY_STRIDE)
+        if np.all(state.moved <= SETTLED):
+            break
+    state = _next(setup, dry, state, max(1, -(-distance.size // MOST_PLACES)))
+    if state.air is None:
+        raise ValueError("the last pass marches the air")
+    settled = np.broadcast_to(np.asarray(state.moved) <= SETTLED, (blocked_top.size,)) | (passes == 1)
+    flow = state.flow
+    mass = _mass(source.pressure)
+    return Streams(start, source, mixed, inflow_depth, mass, flow, flow.start_wind, state.place, state.air, settled)
 
 
 @dataclass(frozen=True, eq=False)
@@ -169,31 +171,74 @@ class _Setup:
     blocked_top: Array
     pool_top: Array | None
     heights: Array
+    start: Parcel
+    saturates: Array
+    removed_share: Array
+    freezing: bool
 
 
-def _flow(setup: _Setup, share: Array, end: Array) -> Airflow:
+@dataclass(frozen=True, eq=False)
+class _Pass:
+    """What a pass hands on: flow, places of the march, its air and pressure ratio, saturated share, end of cloud."""
+
+    flow: Airflow
+    place: NDArray[np.intp]
+    air: March | None
+    change: Array
+    share: Array
+    end: Array | None
+    moved: Array | float
+
+
+def _next(setup: _Setup, dry: Airflow, before: _Pass, stride: int) -> _Pass:
+    """One pass: the flow with the saturation of the pass before, and the air marched through it."""
+    members, size = setup.blocked_top.size, setup.distance.size
+    end = np.full(members, setup.distance[setup.crest]) if before.end is None else before.end
+    flow = _flow(setup, dry, before.share, end)
+    place = np.union1d(np.arange(0, size, stride), [setup.crest, size - 1])
+    pressure, change = _pressure(setup, flow, setup.start, place, before.air, before.place, before.change)
+    air = march(setup.start, np.moveaxis(pressure, -1, 0), setup.removed_share[:, np.newaxis], freezing=setup.freezing)
+    found = _saturated_share(air, setup.start, setup.saturates, place <= setup.crest)
+    return _Pass(
+        flow=flow,
+        place=place,
+        air=air,
+        change=change,
+        share=found if before.air is None else 0.5 * (before.share + found),
+        end=_cloud_end(setup, air, place),
+        moved=np.inf if before.air is None else _moved(setup, flow.heights, before.flow.heights),
+    )
+
+
+def _moved(setup: _Setup, heights: Array, before: Array) -> Array:
+    """Largest change of a streamline that starts no higher than 2 km above the crest, (m,)."""
+    low = setup.heights <= setup.ground[setup.crest] + 2000.0
+    return np.asarray(np.max(np.abs(heights - before) * low[..., np.newaxis], axis=(-2, -1)))
+
+
+def _over(setup: _Setup, n_squared: Array) -> Airflow:
+    """Flow with one profile of stability."""
+    return airflow(
+        setup.distance,
+        setup.ground,
+        setup.upwind.height,
+        setup.upwind.density,
+        n_squared,
+        setup.upwind.wind,
+        setup.heights,
+        blocked_top=setup.blocked_top,
+        pool_top=setup.pool_top,
+        crest=setup.crest,
+    )
+
+
+def _flow(setup: _Setup, dry: Airflow, share: Array, end: Array) -> Airflow:
     """Flow with the stability of a pass: saturated up to the crest, dry from where the cloud ends."""
     upwind = setup.upwind
-
-    def over(n_squared: Array) -> Airflow:
-        return airflow(
-            setup.distance,
-            setup.ground,
-            upwind.height,
-            upwind.density,
-            n_squared,
-            upwind.wind,
-            setup.heights,
-            blocked_top=setup.blocked_top,
-            pool_top=setup.pool_top,
-            crest=setup.crest,
-        )
-
-    dry = over(upwind.dry)
     if not share.any():
         return dry
     on_levels = np.stack([np.interp(upwind.height, z, s) for z, s in zip(setup.heights, share, strict=True)])
-    moist = over((1.0 - on_levels) * upwind.dry + on_levels * upwind.moist)
+    moist = _over(setup, (1.0 - on_levels) * upwind.dry + on_levels * upwind.moist)
     return joined(moist, dry, join_weight(setup.distance, np.full(end.shape, setup.distance[setup.crest]), end))
 
 
@@ -221,7 +266,10 @@ def _pressure(
     theta_v = virtual_temperature(air.temperature, air.vapour, air.cloud) / air.pressure**KAPPA
     pressure = undisturbed * _between_places(change, x_before, x)
     virtual = _between_places(np.moveaxis(theta_v, 0, -1), x_before, x) * pressure**KAPPA
-    top = undisturbed[:, -1, :] + flow.top_pressure[..., place]
+    density = start.pressure[:, -1] / (
+        R_DRY * virtual_temperature(start.temperature[:, -1], start.vapour[:, -1], start.cloud[:, -1])
+    )
+    top = highest_pressure(flow, start.pressure[:, -1], density)[..., place]
     crossed = _thickness(heights, virtual)
     # what coarse levels miss of the column is taken from the undisturbed one, where the pressure is known
     level = setup.heights[..., np.newaxis]
@@ -255,10 +303,6 @@ def _saturated_share(air: March, start: Parcel, saturates: Array, upwind_side: N
     return np.clip(np.where(lift > 100.0, cloudy / np.maximum(lift, 100.0), 0.0), 0.0, 1.0)
 
 
-def _relaxed(share: Array, found: Array, *, first: bool) -> Array:
-    return found if first else 0.5 * (share + found)
-
-
 def _cloud_end(setup: _Setup, air: March, place: NDArray[np.intp]) -> Array:
     """Distance at which the cloud of the low streamlines ends in the lee, (m,); the crest where there is none."""
     low = setup.heights <= setup.ground[setup.crest] + CREST_CLOUD
@@ -267,16 +311,6 @@ def _cloud_end(setup: _Setup, air: March, place: NDArray[np.intp]) -> Array:
     lee = np.flatnonzero(place >= setup.crest)
     whole = np.cumprod(cloudy[lee], axis=0).sum(axis=0)
     return np.asarray(setup.distance[place[lee[np.maximum(whole - 1, 0)]]])
-
-
-def _on_streamlines(levels: Array, values: Array, heights: Array) -> Array:
-    """Column values (m, nc) at the start heights (m, nz)."""
-    return np.stack(
-        [
-            np.interp(z, levels, v)
-            for z, v in zip(heights, np.broadcast_to(values, (heights.shape[0], levels.size)), strict=True)
-        ]
-    )
 
 
 def start_heights(bottom: Array, top: float, count: int) -> Array:
@@ -363,4 +397,4 @@ def _mass(pressure: Array) -> Array:
     """Mass that belongs to each streamline, by pressure halfway to its neighbours."""
     edge = 0.5 * (pressure[..., 1:] + pressure[..., :-1])
     ends = np.concatenate([pressure[..., :1], edge, pressure[..., -1:]], axis=-1)
-    return ends[..., :-1] - ends[..., 1:]
+    return np.asarray(ends[..., :-1] - ends[..., 1:])

@@ -49,6 +49,8 @@ class Upwind:
     density : ndarray [kg m-3]
     dry, moist : ndarray [s-2]
         Buoyancy frequency squared, unsaturated and saturated.
+    lifted_share : ndarray [1]
+        Share of the way to the crest on which air of a level is saturated.
     lifted : ndarray [s-2]
         For air on its way to the crest: moist over the share of the lift on which it is saturated.
     """
@@ -59,6 +61,7 @@ class Upwind:
     density: NDArray[np.float64]
     dry: NDArray[np.float64]
     moist: NDArray[np.float64]
+    lifted_share: NDArray[np.float64]
     lifted: NDArray[np.float64]
 
 
@@ -132,7 +135,7 @@ def upwind_column(incoming: IncomingAir, bearing: float, base: float, crest: flo
     way = crest - height
     share = np.where(way > 0.0, np.clip((crest - base_of_cloud) / np.where(way > 0.0, way, 1.0), 0.0, 1.0), 0.0)
     lifted = effective_n_squared(dry, moist, share)
-    return Upwind(height, air, wind, density, dry, moist, lifted)
+    return Upwind(height, air, wind, density, dry, moist, share, lifted)
 
 
 def blocking(upwind: Upwind, crest: float, critical_value: ArrayLike) -> Blocking:

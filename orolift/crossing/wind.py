@@ -33,6 +33,8 @@ if TYPE_CHECKING:
 
 NEAR_GROUND = 300.0
 """Depth [m] over which the wind near the ground is averaged, by the spacing of streamlines; a judgement."""
+ALONG = 5000.0
+"""Distance [m] along the lee over which the strongest wind is a mean: one rock is no windstorm; a judgement."""
 GUST_DEPTH = 1000.0
 """Height above ground [m] from which turbulence may bring wind down; a judgement."""
 WELL_ABOVE = 3000.0
@@ -48,7 +50,7 @@ class LeeWinds:
     Attributes
     ----------
     strongest : float [m s-1]
-        By the spacing of the streamlines, mean over the lowest 300 m where it is largest in the lee.
+        By the spacing of the streamlines, mean over the lowest 300 m and over 5 km, where it is largest in the lee.
     strongest_distance : float [m]
         There.
     low, high : float [m s-1]
@@ -113,6 +115,8 @@ def lee_winds(ground: Ground, solution: Solution, crest_wind: float, pressure_dr
     shape, upwind, flow = ground.shape, solution.upwind, solution.streams.flow
     speed = _near_ground(flow.heights[0], solution.streams.wind[0][:, np.newaxis] * flow.speed_factor[0])
     lee = np.flatnonzero(ground.transect.distance >= shape.crest_distance)
+    step = float(ground.transect.distance[1] - ground.transect.distance[0]) * ground.cosine
+    speed = _running_mean(speed, int(np.ceil(ALONG / step)))
     strongest = int(lee[np.argmax(speed[lee])])
     bottom = float(flow.start_heights[0, 0])
     top = max(shape.crest, bottom + 500.0)
@@ -123,7 +127,6 @@ def lee_winds(ground: Ground, solution: Solution, crest_wind: float, pressure_dr
     )
     inversion = strongest_inversion(upwind.height, theta_v, bottom + 100.0, shape.crest + 1500.0)
     critical = float(flow.critical_level[0])
-    step = float(ground.transect.distance[1] - ground.transect.distance[0]) * ground.cosine
     mixed = [] if inversion is None else [inversion.height - bottom]
     mixed += [critical - bottom] if np.isfinite(critical) else []
     found = (
@@ -187,6 +190,13 @@ def _near_ground(height: Array, speed: Array) -> Array:
     depth = np.diff(above, axis=0)
     mean = 0.5 * (speed[1:] + speed[:-1])
     return np.asarray(np.sum(depth * mean, axis=0) / np.maximum(np.sum(depth, axis=0), 1.0))
+
+
+def _running_mean(values: Array, width: int) -> Array:
+    """Mean over a number of neighbours, the ends as they are beyond."""
+    half = max(width // 2, 0)
+    padded = np.concatenate([np.full(half, values[0]), values, np.full(half, values[-1])])
+    return np.convolve(padded, np.full(2 * half + 1, 1.0 / (2 * half + 1)), mode="valid")
 
 
 def _setting(

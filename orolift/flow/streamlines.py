@@ -12,9 +12,10 @@ from orolift.checks import within
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
-LEAST_STRETCHING = 0.25
-"""Least spacing of streamlines over their spacing upwind: below it the wave breaks and the wind would be more than four
-times the upwind one; a judgement."""
+LEAST_STRETCHING = 0.4
+"""Least spacing of streamlines over their spacing upwind: below it the wave breaks, and the wind would be more than 2.5
+times the upwind one. A judgement: 2.4 times is what transitional flow (Smith 1985, J. Atmos. Sci. 42, 2597-2603) reaches
+over a range of N h / U = 0.3, and 1.7 times what waves of finite amplitude reach before they overturn."""
 LARGEST_WAVE_STRETCHING = 2.0
 """Spacing by waves at which linear theory brings the air to rest (wind perturbation -U): there the wave breaks."""
 

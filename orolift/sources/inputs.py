@@ -13,7 +13,9 @@ from orolift.air.column_build import CrestWind, air_from_levels, air_from_statio
 from orolift.air.humidity import mixing_ratio_from_dew_point_checked, mixing_ratio_from_relative_humidity
 from orolift.air.standard import standard_pressure, station_pressure_from_qnh
 from orolift.constants import STANDARD_LAPSE_RATE
-from orolift.crossing.crossing import Site
+from orolift.crossing.pool import Lee
+from orolift.crossing.result import Site, When
+from orolift.crossing.settings import Settings
 from orolift.errors import CaseError, OroliftError
 from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
@@ -22,6 +24,7 @@ from orolift.sources.ridge_csv import read_ridge
 from orolift.sources.sounding_csv import read_sounding
 from orolift.sources.units import to_si
 from orolift.terrain.features import features
+from orolift.terrain.range_normal import RangeNormal
 from orolift.terrain.ridge import ridge_transect
 from orolift.terrain.transect import transect_elevation
 
@@ -29,7 +32,8 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
-    from orolift.sources.case_model import Case, Incoming, Place, Station, Terrain
+    from orolift.crossing.solve import CrestLine
+    from orolift.sources.case_model import Case, Incoming, LeeTable, Place, Station, Terrain
     from orolift.sources.raster import MapPoint
     from orolift.sources.sounding_csv import Sounding
     from orolift.terrain.transect import Transect
@@ -61,6 +65,13 @@ class Inputs:
     transect : Transect
     incoming : IncomingAir
     sites : tuple of Site
+    settings : Settings
+    lee : Lee
+    when : When
+    normal : RangeNormal or None
+        Of a raster, or as given.
+    crest_line : CrestLine or None
+        Of a raster.
     offsets : tuple of float or None [m]
         Distance of each site across the transect; None for a hand-entered ridge.
     cautions : tuple of str
@@ -73,6 +84,11 @@ class Inputs:
     transect: Transect
     incoming: IncomingAir
     sites: tuple[Site, ...]
+    settings: Settings
+    lee: Lee
+    when: When
+    normal: RangeNormal | None
+    crest_line: CrestLine | None
     offsets: tuple[float | None, ...]
     cautions: tuple[str, ...]
 
@@ -113,7 +129,81 @@ def _inputs(case: Case, path: Path, text: str) -> Inputs:
     else:
         transect, sites, offsets = _raster(case, folder, wind_from)
     incoming = _incoming(case.incoming, folder, features(transect).crest)
-    return Inputs(case, path, text, transect, incoming, sites, offsets, tuple(_remarks(case, transect, sites, offsets)))
+    normal, crest_line = _range(case, folder, transect)
+    return Inputs(
+        case=case,
+        path=path,
+        text=text,
+        transect=transect,
+        incoming=incoming,
+        sites=sites,
+        settings=_settings(case),
+        lee=_lee(case.lee, folder),
+        when=_when(case, transect),
+        normal=normal,
+        crest_line=crest_line,
+        offsets=offsets,
+        cautions=tuple(_remarks(case, transect, sites, offsets)),
+    )
+
+
+def _settings(case: Case) -> Settings:
+    return Settings(
+        removed_share=case.rain.removed_share,
+        going_round_share=case.flow.going_round_share,
+        mixing_depth=case.lee.mixing_depth_m,
+        roughness=case.lee.roughness_m,
+        freezing=case.rain.freezing,
+        surface_heat=case.heat.surface_heat,
+    )
+
+
+def _lee(table: LeeTable, folder: Path) -> Lee:
+    air = None
+    if table.sounding_file is not None:
+        air = _from_sounding(table.sounding_file, "[lee] sounding_file", folder, None)
+    temperature = None if table.temperature_c is None else to_si(table.temperature_c, "c")
+    return Lee(temperature=temperature, pool_top=table.pool_top_m, air=air)
+
+
+def _when(case: Case, transect: Transect) -> When:
+    """Time, and the position of the crest, as far as they are known."""
+    time = None if case.valid_time is None else case.valid_time.timestamp()
+    if transect.longitude is None or transect.latitude is None:
+        return When(time, case.terrain.longitude, case.terrain.latitude)
+    return When(time, *_crest_position(transect))
+
+
+def _crest_position(transect: Transect) -> tuple[float, float]:
+    if transect.longitude is None or transect.latitude is None:
+        raise CaseError("the ridge has no position")
+    i = int(np.argmin(np.abs(transect.distance - features(transect).crest_distance)))
+    return float(transect.longitude[i]), float(transect.latitude[i])
+
+
+def _range(case: Case, folder: Path, transect: Transect) -> tuple[RangeNormal | None, CrestLine | None]:
+    """Range normal and crest line: given, or read off the raster around the crest."""
+    downwind = transect.bearing or 0.0
+    given = None
+    if case.flow.range_normal_deg is not None:
+        bearing = math.radians(case.flow.range_normal_deg)
+        # a normal may be given either way; the one nearer to downwind counts
+        bearing += math.pi if math.cos(bearing - downwind) < 0.0 else 0.0
+        given = RangeNormal(bearing % (2.0 * math.pi), 1.0)
+    if case.terrain.elevation_file is None:
+        return given, None
+    from orolift.sources.raster_range import range_of_raster
+
+    found, line = range_of_raster(
+        case.terrain.elevation_file,
+        *_crest_position(transect),
+        downwind,
+        normal=None if given is None else given.bearing,
+        unit=case.terrain.elevation_unit,
+        folder=folder,
+        where="[terrain] elevation_file",
+    )
+    return given or found, line
 
 
 def _ridge(terrain: Terrain, folder: Path, wind_from: float) -> Transect:
@@ -195,27 +285,32 @@ def _map_point(place: Place) -> MapPoint:
 def _incoming(table: Incoming, folder: Path, crest: float) -> IncomingAir:
     wind_from = math.radians(table.wind_from_deg)
     if table.sounding_file is not None:
-        sounding = read_sounding(table.sounding_file, "[incoming] sounding_file", folder)
-        vapour, notes = _vapour(sounding)
-        ground = sounding.ground if table.sounding_elevation_m is None else table.sounding_elevation_m
-        if sounding.height is None and ground is None:
-            raise CaseError(
-                f"[incoming] sounding_file: {table.sounding_file} gives no height of its lowest level. "
-                "Add a column height_m, or give sounding_elevation_m, the height of its ground."
-            )
-        air = air_from_levels(
-            sounding.height,
-            sounding.pressure,
-            sounding.temperature,
-            vapour,
-            sounding.eastward_wind,
-            sounding.northward_wind,
-            elevation=ground if sounding.height is None else None,
-        )
-        return replace(air, notes=(*sounding.notes, *notes, *air.notes))
+        return _from_sounding(table.sounding_file, "[incoming] sounding_file", folder, table.sounding_elevation_m)
     if table.station is None:  # the model has refused it already
         raise CaseError("[incoming] needs a station or a sounding_file")
     return _from_station(table, table.station, wind_from, crest)
+
+
+def _from_sounding(file: str, where: str, folder: Path, elevation: float | None) -> IncomingAir:
+    """Column of a sounding file."""
+    sounding = read_sounding(file, where, folder)
+    vapour, notes = _vapour(sounding)
+    ground = sounding.ground if elevation is None else elevation
+    if sounding.height is None and ground is None:
+        raise CaseError(
+            f"{where}: {file} gives no height of its lowest level. "
+            "Add a column height_m, or give sounding_elevation_m, the height of its ground."
+        )
+    air = air_from_levels(
+        sounding.height,
+        sounding.pressure,
+        sounding.temperature,
+        vapour,
+        sounding.eastward_wind,
+        sounding.northward_wind,
+        elevation=ground if sounding.height is None else None,
+    )
+    return replace(air, notes=(*sounding.notes, *notes, *air.notes))
 
 
 def _vapour(sounding: Sounding) -> tuple[NDArray[np.float64], tuple[str, ...]]:
