@@ -19,7 +19,7 @@ from orolift.report.quantities import Units, quantity
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.crossing.crossing import Crossing
+    from orolift.crossing.result import Crossing
 
 WIDE = Layout("wide", 960.0, 520.0, 56.0, 934.0, 24.0, 478.0, 14.0, 8)
 NARROW = Layout("narrow", 344.0, 420.0, 42.0, 320.0, 24.0, 384.0, 12.5, 4)
@@ -168,8 +168,8 @@ def _levels(
     ends: tuple[tuple[float, Anchor], ...] = ((frame.right - 4.0, "end"), (frame.left + 6.0, "start"))
     for name, level, digits in (
         ("crest", crossing.features.crest, 0),
-        ("cloud base", crossing.cloud_base, -1),
-        ("cloud ends", crossing.cloud_end, -1),
+        ("cloud base", crossing.cloud.base, -1),
+        ("cloud ends", crossing.cloud.end, -1),
     ):
         if level is None:
             continue
@@ -229,7 +229,7 @@ def _names(crossing: Crossing, lines: dict[str, Line], board: Board, layout: Lay
         "dew rising": ("dew point, going up", "dew point, up"),
         "upwind": ("incoming air, before the range", "incoming air"),
     }
-    if crossing.condensed <= 0.0:
+    if crossing.water.condensed <= 0.0:
         words |= {"warm falling": ("temperature, up and down",), "dew falling": ("dew point, up and down",)}
         del words["warm rising"], words["dew rising"]
     for side, part in (
