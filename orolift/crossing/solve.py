@@ -29,6 +29,8 @@ NO_BLOCKING = 9.9
 """Critical value from which on nothing is blocked."""
 LEAST_CREST_POINTS = 5
 """Points of the crest line within reach from which on its gaps are measured; a judgement."""
+NOTHING = 1.0
+"""A blocked layer shallower than this [m] is none."""
 SHALLOW_POOL = 20.0
 """A pool shallower than this [m] is taken as displaced; a judgement."""
 
@@ -138,6 +140,9 @@ def solve(
     upwind = upwind_column(incoming, ground.normal, shape.base, shape.crest, freezing=settings.freezing)
     critical = each(settings.critical_value, members)
     blocked = blocking(upwind, shape.crest, critical)
+    if members > 1 and upwind.wind.shape[0] == 1 and np.all(blocked.highest_top <= shape.base + NOTHING):
+        # nothing is blocked by any criterion: the members of one column do not differ
+        return solve(ground, incoming, _first(settings), lee, streamlines=streamlines, passes=passes)
     # a critical value beyond the bracket stands for no blocking at all (see `no_blocking`)
     top = np.where(critical > NO_BLOCKING, shape.base, np.broadcast_to(blocked.top, (members,)))
     crest = int(np.argmin(np.abs(transect.distance - shape.crest_distance)))
@@ -202,6 +207,13 @@ def _pool(ground: Ground, found: Streams, lee: Lee, member: int) -> Pool:
         np.array([pressure]),
     )
     return pool_under(lee, shape.lee_foot, pressure, float(t[0]), float(here.vapour[member, 0]))
+
+
+def _first(settings: Settings) -> Settings:
+    """Settings of the first member."""
+    names = ("removed_share", "critical_value", "going_round_share", "mixing_depth")
+    values = {name: getattr(settings, name) for name in names}
+    return replace(settings, **{name: None if value is None else np.ravel(value)[:1] for name, value in values.items()})
 
 
 def ends(settings: Settings) -> Settings:
