@@ -211,9 +211,14 @@ def _pool(ground: Ground, found: Streams, lee: Lee, member: int) -> Pool:
 
 def _first(settings: Settings) -> Settings:
     """Settings of the first member."""
-    names = ("removed_share", "critical_value", "going_round_share", "mixing_depth")
-    values = {name: getattr(settings, name) for name in names}
-    return replace(settings, **{name: None if value is None else np.ravel(value)[:1] for name, value in values.items()})
+    share = settings.going_round_share
+    return replace(
+        settings,
+        removed_share=np.ravel(settings.removed_share)[:1],
+        critical_value=np.ravel(settings.critical_value)[:1],
+        going_round_share=None if share is None else np.ravel(share)[:1],
+        mixing_depth=np.ravel(settings.mixing_depth)[:1],
+    )
 
 
 def ends(settings: Settings) -> Settings:
