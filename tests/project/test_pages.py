@@ -6,7 +6,19 @@ from pathlib import Path
 import pytest
 
 from orolift.sources import ridge_csv, sounding_csv
-from orolift.sources.case_model import Case, Incoming, Place, Rain, SiteTable, Station, Terrain, TransectTable
+from orolift.sources.case_model import (
+    Case,
+    FlowTable,
+    HeatTable,
+    Incoming,
+    LeeTable,
+    Place,
+    Rain,
+    SiteTable,
+    Station,
+    Terrain,
+    TransectTable,
+)
 from orolift.sources.results import (
     CaseBlock,
     FlowBlock,
@@ -30,7 +42,10 @@ CASE_TABLES = {
     "A place": Place,
     "[incoming]": Incoming,
     "station": Station,
+    "[flow]": FlowTable,
     "[rain]": Rain,
+    "[lee]": LeeTable,
+    "[heat]": HeatTable,
     "[[site]]": SiteTable,
 }
 RESULTS_TABLES = {
