@@ -82,8 +82,8 @@ def coverage(polygon: Any, grid: ElevationGrid) -> Coverage:
     left, right = _window(x, nx)
     top, bottom = _window(y, ny)
     window = slice(top, bottom), slice(left, right)
-    if right <= left or bottom <= top:
-        return Coverage(*window, np.zeros((max(bottom - top, 0), max(right - left, 0))))
+    if right == left or bottom == top:
+        return Coverage(*window, np.zeros((bottom - top, right - left)))
     same = ring[1:] == ring[:-1]
     edges = tuple(part[same] for part in (x[:-1] - left, y[:-1] - top, x[1:] - left, y[1:] - top))
     return Coverage(*window, _covered(edges, bottom - top, right - left))
@@ -111,7 +111,8 @@ def _outline(polygon: Any) -> tuple[Index, Array]:
 
 def _window(values: Array, size: int) -> tuple[int, int]:
     """First and one past last cell that a range of positions touches, cut to the grid."""
-    return max(int(np.floor(values.min())), 0), min(int(np.ceil(values.max())), size)
+    first = min(max(int(np.floor(values.min())), 0), size)
+    return first, max(min(int(np.ceil(values.max())), size), first)
 
 
 def _covered(edges: tuple[Array, ...], ny: int, nx: int) -> Array:

@@ -188,8 +188,9 @@ def _model_at(
     if floor is not None:
         ground = np.maximum(ground, floor)
     slowest = replace(parameters, cloud_time=LONGEST, fall_time=0.5 * LONGEST)
-    shape = padding_for(ground.shape, spacing, slowest).shape
-    spectrum = spectrum_of(padded_ground(ground, shape, parameters))
+    padding = padding_for(ground.shape, spacing, slowest)
+    shape = padding.shape
+    spectrum = spectrum_of(padded_ground(ground, padding, parameters))
     ny, nx = ground.shape
     delay = np.linspace(0.0, np.sqrt(1.01 * LONGEST), NODES) ** 2
     rain = []

@@ -98,12 +98,14 @@ def _linearity(found: RainMap) -> Iterator[str]:
 
 
 def _blocking(found: RainMap, blocked_top: float | None) -> Iterator[str]:
-    if blocked_top is not None and blocked_top > found.inflow_ground + 1.0 and found.floor is not None:
+    if blocked_top is None or blocked_top <= float(np.nanmin(found.grid.elevation)) + 1.0:
+        return
+    if found.floor is not None:
         yield (
             f"Low air is blocked: ground below {blocked_top:.0f} m was taken off the terrain of the rain map. Rain "
             "that air makes rising over the blocked layer, upwind of the slope, is missing."
         )
-    elif blocked_top is not None and found.floor is None:
+    else:
         yield (
             f"Low air is blocked up to {blocked_top:.0f} m, but the rain map lets it climb; it has too much rain on "
             "the lower slopes."

@@ -115,7 +115,7 @@ def rain_map(grid: ElevationGrid, parameters: RainParameters, *, floor: float | 
     padding = padding_for(ground.shape, spacing, parameters)
     level = inflow_level(ground, parameters)
     highest = float(ground.max())
-    padded = padded_ground(ground, padding.shape, parameters)
+    padded = padded_ground(ground, padding, parameters)
     del ground
     spectrum = spectrum_of(padded)
     del padded

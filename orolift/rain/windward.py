@@ -76,7 +76,8 @@ def crest_divide(grid: ElevationGrid, bearing: float, *, width: float = STRIP) -
     Notes
     -----
     In strips whose crest rises less than a quarter as far above the lowest ground as the
-    highest crest (sea beside an island, a gap) the crest is interpolated between the strips on both sides.
+    highest crest (sea beside an island, a gap), or whose highest ground lies at the edge of the map (corners that the
+    range does not reach), the crest is interpolated between the strips on both sides.
 
     Examples
     --------
@@ -102,7 +103,12 @@ def crest_divide(grid: ElevationGrid, bearing: float, *, width: float = STRIP) -
     top = ground == crest[strip]
     place = np.bincount(strip[top], along[known][top], count) / np.maximum(np.bincount(strip[top], minlength=count), 1)
     low = float(ground.min())
-    clear = np.flatnonzero(crest - low >= LOW_CREST * (crest.max() - low))
+    high = crest - low >= LOW_CREST * (crest.max() - low)
+    start, end = np.full(count, np.inf), np.full(count, -np.inf)
+    np.minimum.at(start, strip, along[known])
+    np.maximum.at(end, strip, along[known])
+    inside = high & (place > start + width) & (place < end - width)
+    clear = np.flatnonzero(inside if inside.any() else high)
     number = np.arange(count)
     return Divide(bearing, width, first, number, np.interp(number, clear, place[clear]))
 
