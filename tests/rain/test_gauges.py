@@ -112,7 +112,7 @@ def test_perfect_gauges_give_back_what_made_them(ridge, places):
     assert fit.rms_left_out < 0.03 * fit.rms_of_mean
     assert fit.total_time.error < 50.0
     fitted = rain_map(ridge, with_fit(USUAL, fit)).rate
-    np.testing.assert_allclose(fitted, rain_map(ridge, TRUE).rate, atol=0.01 * fitted.max())
+    np.testing.assert_allclose(fitted, rain_map(ridge, TRUE).rate, atol=0.03 * fitted.max())
 
 
 def test_equal_times_are_found_too(ridge, places):
