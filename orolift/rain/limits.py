@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.rain.parameters import LEAST_STABILITY
+from orolift.rain.rain_map import map_drying_ratio
 
 if TYPE_CHECKING:
     from collections.abc import Iterator
@@ -130,24 +131,12 @@ def _moisture(found: RainMap, column: ColumnRain | None) -> Iterator[str]:
             f"The incoming air is not saturated: it must rise {column.dry_lift:.0f} m on average before it condenses; "
             f"{taken}."
         )
-    share = _share_of_vapour(found, column)
+    share = map_drying_ratio(found, column)
     if share > LARGE_SHARE:
         yield (
             f"The rain map takes {100.0 * share:.0f} % of the vapour that flows in. The theory does not use vapour "
             "up on the way; ranges downwind of the first get too much."
         )
-
-
-def _share_of_vapour(found: RainMap, column: ColumnRain) -> float:
-    """Rain above the background on the map, over the vapour that flows in across it."""
-    p = found.parameters
-    area = found.spacing[0] * found.spacing[1]
-    rain = float(np.nansum(np.maximum(found.rate - p.background, 0.0))) * area
-    ny, nx = found.rate.shape
-    width = (
-        nx * found.spacing[0] * abs(p.northward_wind) + ny * found.spacing[1] * abs(p.eastward_wind)
-    ) / p.wind_speed
-    return float(rain / (p.wind_speed * column.column_vapour * width))
 
 
 def _wind(column: ColumnRain | None, off_normal: float | None) -> Iterator[str]:

@@ -213,8 +213,8 @@ def column_rain(
     per_metre = mean(saturated) * float(latent_heat_of_vaporisation(t)) / (R_VAPOUR * t**2)
     east, north = mean(here.eastward_wind), mean(here.northward_wind)
     parameters = RainParameters(
-        eastward_wind=east * np.cos(grid_turn) + north * np.sin(grid_turn),
-        northward_wind=north * np.cos(grid_turn) - east * np.sin(grid_turn),
+        eastward_wind=float(east * np.cos(grid_turn) + north * np.sin(grid_turn)),
+        northward_wind=float(north * np.cos(grid_turn) - east * np.sin(grid_turn)),
         stability=max(float(np.sqrt(max(stability_squared, 0.0))), LEAST_STABILITY),
         vapour_height=depth,
         uplift_sensitivity=float(saturated_vapour_density(t)) * per_metre * depth,

@@ -15,7 +15,7 @@ from orolift.terrain.transect import HIGHEST_GROUND, LOWEST_GROUND
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.rain.parameters import RainParameters
+    from orolift.rain.parameters import ColumnRain, RainParameters
     from orolift.terrain.grid import ElevationGrid
 
 
@@ -140,3 +140,29 @@ def rain_map(grid: ElevationGrid, parameters: RainParameters, *, floor: float | 
         drifts=padding.drifts,
         notes=notes,
     )
+
+
+def map_drying_ratio(found: RainMap, column: ColumnRain) -> float:
+    """Rain above the background on the whole map, over the vapour that flows in across it.
+
+    Parameters
+    ----------
+    found : RainMap
+    column : ColumnRain
+        Where its parameters came from.
+
+    Returns
+    -------
+    float [1]
+        May exceed 1: the theory does not use the vapour up.
+
+    Notes
+    -----
+    The vapour flows in across the width of the map as the wind sees it, above the reference height.
+    """
+    p = found.parameters
+    dx, dy = found.spacing
+    rain = float(np.nansum(np.maximum(found.rate - p.background, 0.0))) * dx * dy
+    ny, nx = found.rate.shape
+    swept = nx * dx * abs(p.northward_wind) + ny * dy * abs(p.eastward_wind)  # width times wind speed
+    return float(rain / (swept * column.column_vapour))

@@ -10,7 +10,7 @@ from orolift.errors import IncomingAirError, OutOfRangeError, TerrainError
 from orolift.rain.ground import filled_ground, padded_ground, padding_for
 from orolift.rain.limits import limits_of_theory
 from orolift.rain.parameters import RainParameters, column_rain
-from orolift.rain.rain_map import rain_map
+from orolift.rain.rain_map import map_drying_ratio, rain_map
 from orolift.rain.spectral import periodic_rain
 from orolift.terrain.grid import ElevationGrid, grid_elevation
 
@@ -301,6 +301,17 @@ def test_sentences_about_the_column():
     assert "taken off the terrain" in sentences(column=dry, floor=200.0)
     assert "turns by 120 degrees" in sentences(column=replace(dry, turning=np.radians(120.0)))
     assert "% of the vapour" in sentences(column=replace(dry, column_vapour=0.05))
+
+
+def test_drying_ratio_of_a_ridge_across_the_map():
+    """Raw upslope, no delay: (Cw / vapour) h of what flows in, whatever the width. Tolerance 1 %: cells and edges."""
+    x = np.arange(-100e3, 101e3, 1e3)
+    ridge = ElevationGrid(800.0 * np.exp(-((x / 15e3) ** 2)) * np.ones((101, 1)), x, x[:101][::-1])
+    prompt = RainParameters(15.0, 0.0, 0.005, 0.0, 0.004, 0.0, 0.0, 2e-4)
+    column = replace(column_rain(saturated_air(), 0.0), column_vapour=10.0)
+    found = rain_map(ridge, prompt)
+    windward = np.where(x < 0.0, found.rate, 2e-4)  # in the lee the background is cut off, not below it
+    assert map_drying_ratio(replace(found, rate=windward), column) == pytest.approx(0.004 * 800.0 / 10.0, rel=0.01)
 
 
 def test_turning_of_the_wind():
