@@ -133,7 +133,7 @@ def _covered(edges: tuple[Array, ...], ny: int, nx: int) -> Array:
     counts = (rise != 0.0) & (middle_x < nx)
     rise, middle_x, middle_y = rise[counts], middle_x[counts], middle_y[counts]
     column = middle_x.astype(np.intp)
-    row = np.minimum(middle_y.astype(np.intp), ny - 1)
+    row = np.minimum(middle_y.astype(np.intp), ny - 1)  # a piece that ends on the last line may round onto it
     start = row * (nx + 1) + column
     part = rise * (middle_x - column)
     area = np.bincount(start, rise - part, ny * (nx + 1)) + np.bincount(start + 1, part, ny * (nx + 1))

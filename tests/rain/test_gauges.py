@@ -123,6 +123,26 @@ def test_equal_times_are_found_too(ridge, places):
     assert fit.rms_fitted < 0.1 * fit.rms_before
 
 
+@pytest.mark.parametrize(("cloud", "fall"), [(900.0, 900.0), (50.0, 50.0), (300.0, 3000.0), (3900.0, 4000.0)])
+def test_single_delays_make_any_pair(ridge, places, cloud, fall):
+    """The divided difference of maps with one delay is the map with two. 0.2 % of the most: the spline.
+
+    Padding is that of the fit, so that nothing else differs.
+    """
+    from orolift.rain import gauge_fit
+    from orolift.rain.ground import padded_ground, padding_for
+    from orolift.rain.spectral import rain_from_spectrum, spectrum_of
+
+    model = gauge_fit._model_at(ridge, USUAL, places[:, 0], places[:, 1], None, SIX)
+    pair = replace(USUAL, cloud_time=cloud, fall_time=fall)
+    padding = padding_for(ridge.elevation.shape, (2e3, 2e3), replace(USUAL, cloud_time=LONGEST, fall_time=LONGEST / 2))
+    rain = rain_from_spectrum(
+        spectrum_of(padded_ground(ridge.elevation, padding, pair)), padding.shape, (2e3, 2e3), pair
+    )
+    direct = SIX * np.maximum(rain_at(ridge, rain[:81, :81], places[:, 0], places[:, 1]) + 1e-4, 0.0)
+    np.testing.assert_allclose(model(np.array([cloud, fall, 1e-4])), direct, atol=2e-3 * direct.max())
+
+
 def test_noise_shows_as_doubt(ridge, places):
     """With 20 % noise the truth lies within three standard errors, left-out gauges are off by more than fitted ones."""
     fit = fit_to_gauges(made(ridge, places, noise=0.2), ridge, USUAL, SIX)

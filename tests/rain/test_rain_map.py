@@ -7,7 +7,7 @@ import pytest
 
 from orolift.air.column_build import air_from_levels, air_from_station
 from orolift.errors import IncomingAirError, OutOfRangeError, TerrainError
-from orolift.rain.ground import filled_ground, padded_ground, padding_for
+from orolift.rain.ground import filled_ground, inflow_level, padded_ground, padding_for
 from orolift.rain.limits import limits_of_theory
 from orolift.rain.parameters import RainParameters, column_rain
 from orolift.rain.rain_map import map_drying_ratio, rain_map
@@ -149,6 +149,18 @@ def test_padding_is_stated_and_smooth():
     for axis in (0, 1):
         around = np.concatenate([padded, padded.take([0], axis)], axis)
         assert np.abs(np.diff(around, axis=axis)).max() <= largest * 1.5
+
+
+@pytest.mark.parametrize(
+    ("wind", "level"),
+    [((15.0, 0.0), 1.0), ((-15.0, 0.0), 2.0), ((0.0, 15.0), 3.0), ((0.0, -15.0), 4.0), ((10.0, 10.0), 2.0)],
+)
+def test_inflow_edges(wind, level):
+    """Edges at 1 m in the west, 2 m in the east, 3 m in the south, 4 m in the north: the upwind ones count."""
+    ground = np.zeros((100, 100))
+    ground[0], ground[-1] = 4.0, 3.0
+    ground[:, 0], ground[:, -1] = 1.0, 2.0
+    assert inflow_level(ground, RainParameters(*wind, 0.005, 2500.0, 0.004)) == pytest.approx(level, abs=0.06)
 
 
 def test_a_map_too_fine_for_its_padding_is_refused():

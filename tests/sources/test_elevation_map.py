@@ -153,6 +153,25 @@ def test_large_and_fine_rasters_are_read_in_means(tmp_path):
     assert max(small.grid.elevation.shape) <= 50
 
 
+def test_means_of_a_fine_raster_in_degrees(tmp_path):
+    """Read in means of 3 x 3 cells, sides that 3 does not divide: the hill stays where it is, to 15 m of height."""
+    from rasterio.transform import from_origin
+
+    step_x, step_y = 0.0004, 0.0003  # 31 m by 33 m
+    longitude = 8.8 + step_x * (np.arange(1000) + 0.5)
+    latitude = 46.2 - step_y * (np.arange(1301) + 0.5)
+    x, y = (longitude - CENTRE[0]) * 77_400.0, (latitude - CENTRE[1]) * 111_150.0  # metres near the middle
+    ground = 1500.0 * np.exp(-((x / 9e3) ** 2) - ((y[:, np.newaxis] / 6e3) ** 2))
+    found = read_elevation_map(saved(tmp_path / "a.tif", ground, from_origin(8.8, 46.2, step_x, step_y), "EPSG:4326"))
+    from rasterio.warp import transform as moved
+
+    assert np.diff(found.grid.x)[0] == pytest.approx(100.0)
+    (east,), (north,) = moved("EPSG:4326", found.crs, [CENTRE[0]], [CENTRE[1]])
+    for dx, dy in [(0.0, 0.0), (6e3, 0.0), (-6e3, 3e3), (2e3, -8e3)]:
+        wanted = 1500.0 * np.exp(-((dx / 9e3) ** 2) - (dy / 6e3) ** 2)
+        assert grid_elevation(found.grid, east + dx, north + dy) == pytest.approx(wanted, abs=15.0)
+
+
 def test_sea_depths_count_as_sea_level(tmp_path):
     """As for transects, with the same note."""
     from rasterio.transform import from_origin
