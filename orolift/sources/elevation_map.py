@@ -12,6 +12,7 @@ from orolift.errors import DataFileError, TerrainError
 from orolift.sources.raster_file import (
     LONGITUDE_LATITUDE,
     RasterFile,
+    cell_positions,
     map_coordinates,
     map_positions,
     opened_raster,
@@ -67,21 +68,48 @@ class ElevationMap:
     notes: tuple[str, ...]
 
 
+@dataclass(frozen=True)
+class _Part:
+    """Rows and columns of a raster that are wanted: first and one past last."""
+
+    rows: tuple[int, int]
+    columns: tuple[int, int]
+
+    @property
+    def height(self) -> int:
+        return self.rows[1] - self.rows[0]
+
+    @property
+    def width(self) -> int:
+        return self.columns[1] - self.columns[0]
+
+    @property
+    def middle(self) -> tuple[float, float]:
+        """Fractional row and column, whole numbers being centres of cells."""
+        return 0.5 * (self.rows[0] + self.rows[1] - 1), 0.5 * (self.columns[0] + self.columns[1] - 1)
+
+
 def read_elevation_map(
     path: str | Path,
     *,
+    around: tuple[float, float] | None = None,
+    reach: float = 200.0e3,
     unit: Literal["m", "ft"] | None = None,
     folder: Path | None = None,
     where: str = "elevation_file",
     most_cells: int = MOST_CELLS,
     least_cell: float = LEAST_CELL,
 ) -> ElevationMap:
-    """Elevation of a whole raster on a square grid of true metres.
+    """Elevation of a raster, or of a part of it, on a square grid of true metres.
 
     Parameters
     ----------
     path : str or Path
         Any raster GDAL reads, in any coordinate system; local files only.
+    around : (float, float), optional
+        Longitude and latitude of a point [degrees east, degrees north]: only the raster round it is read.
+    reach : float [m]
+        How far from that point, in the directions of the raster's rows and columns, 1 km to 1000 km.
     unit : {"m", "ft"}, optional
         Unit of the heights, default what the raster declares, else metres.
     folder : Path, optional
@@ -102,7 +130,7 @@ def read_elevation_map(
     MissingFileError, DataFileError
         If the file is not there, not local or not a georeferenced elevation raster in the unit said.
     TerrainError
-        If it is smaller than 8 x 8 cells or longer than 2000 km.
+        If it is smaller than 8 x 8 cells or longer than 2000 km, or does not reach to the point.
     OutOfRangeError
         If a number is out of its range.
 
@@ -115,31 +143,55 @@ def read_elevation_map(
     """
     within("most_cells", most_cells, 16, 8192, "cells")
     within("least_cell", least_cell, 1.0, 1e5, "m")
+    within("reach", reach, 1e3, 1e6, "m")
     with opened_raster(path, unit, where, folder) as raster:
         dataset = raster.dataset
-        if min(dataset.height, dataset.width) < 8:
+        part = _Part((0, dataset.height), (0, dataset.width)) if around is None else _part(raster, around, reach)
+        if min(part.height, part.width) < 8:
             raise TerrainError(
-                f"{raster.name} has {dataset.height} x {dataset.width} cells; a map of rain needs at least 8 each way."
+                f"{raster.name} has {part.height} x {part.width} cells there; a map of rain needs at least 8 each way."
             )
-        longitude, latitude = _middle(raster)
+        longitude, latitude = _middle(raster, part)
         local = _equal_area(longitude, latitude)
-        if _is_fit(raster, local):
-            grid, crs, transform = _own_grid(raster, most_cells, least_cell)
+        if _is_fit(raster, part, local):
+            grid, crs, transform = _own_grid(raster, part, most_cells, least_cell)
         else:
-            grid, crs, transform = _warped(raster, local, most_cells, least_cell)
+            grid, crs, transform = _warped(raster, part, local, most_cells, least_cell)
         north = _north(raster, grid, crs)
         notes = tuple(raster.notes)
         source_crs = dataset.crs
     return ElevationMap(grid, crs, transform, source_crs, north, longitude, latitude, notes)
 
 
-def _middle(raster: RasterFile) -> tuple[float, float]:
-    """Longitude and latitude of the middle of a raster."""
-    dataset = raster.dataset
-    x, y = map_coordinates(raster, dataset.height / 2.0 - 0.5, dataset.width / 2.0 - 0.5)
-    longitude, latitude = map_positions(raster, x, y, dataset.crs, LONGITUDE_LATITUDE)
+def _part(raster: RasterFile, around: tuple[float, float], reach: float) -> _Part:
+    """Cells within `reach` of a point, cut to the raster."""
+    longitude, latitude = (float(value) for value in around)
+    within("around", longitude, -180.0, 360.0, "degrees east")
+    within("around", latitude, -90.0, 90.0, "degrees north", "Are longitude and latitude exchanged?")
+    share = np.linspace(-reach, reach, 21)
+    end = np.full(21, reach)
+    east, north = np.concatenate([share, share, end, -end]), np.concatenate([end, -end, share, share])
+    x, y = map_positions(raster, east, north, _equal_area(longitude, latitude), raster.dataset.crs)
+    row, column = cell_positions(raster, x, y)
+    limits = []
+    for values, size in ((row, raster.dataset.height), (column, raster.dataset.width)):
+        known = values[np.isfinite(values)]
+        first = int(np.clip(np.floor(known.min(initial=size)), 0, size))
+        limits.append((first, int(np.clip(np.ceil(known.max(initial=0.0)) + 1, first, size))))
+    part = _Part(*limits)
+    if part.height == 0 or part.width == 0:
+        raise TerrainError(
+            f"{raster.name} does not reach to {longitude:.3f} E, {latitude:.3f} N, round which a map of rain is wanted."
+        )
+    return part
+
+
+def _middle(raster: RasterFile, part: _Part) -> tuple[float, float]:
+    """Longitude and latitude of the middle."""
+    x, y = map_coordinates(raster, *part.middle)
+    longitude, latitude = map_positions(raster, x, y, raster.dataset.crs, LONGITUDE_LATITUDE)
     if not (np.isfinite(longitude) and np.isfinite(latitude)):
-        raise TerrainError(f"{raster.name}: the middle of the raster lies nowhere on Earth in its coordinate system.")
+        raise TerrainError(f"{raster.name}: its middle lies nowhere on Earth in its coordinate system.")
     return float(longitude), float(latitude)
 
 
@@ -147,13 +199,12 @@ def _equal_area(longitude: float, latitude: float) -> str:
     return f"+proj=laea +lat_0={latitude!r} +lon_0={longitude!r} +datum=WGS84 +units=m"
 
 
-def _outline_in(raster: RasterFile, local: str) -> tuple[Array, Array]:
-    """Coordinates, in a local projection, of points all along the edge of a raster."""
-    ny, nx = raster.dataset.height, raster.dataset.width
+def _outline_in(raster: RasterFile, part: _Part, local: str) -> tuple[Array, Array]:
+    """Coordinates, in a local projection, of points all along the edge."""
     share = np.linspace(0.0, 1.0, 21)
     zero, one = np.zeros(21), np.ones(21)
-    row = np.concatenate([zero, one, share, share]) * ny - 0.5
-    column = np.concatenate([share, share, zero, one]) * nx - 0.5
+    row = part.rows[0] + np.concatenate([zero, one, share, share]) * part.height - 0.5
+    column = part.columns[0] + np.concatenate([share, share, zero, one]) * part.width - 0.5
     try:
         east, north = map_positions(raster, *map_coordinates(raster, row, column), raster.dataset.crs, local)
         known = bool(np.isfinite(east).all() and np.isfinite(north).all())
@@ -164,7 +215,7 @@ def _outline_in(raster: RasterFile, local: str) -> tuple[Array, Array]:
     return np.asarray(east), np.asarray(north)
 
 
-def _is_fit(raster: RasterFile, local: str) -> bool:
+def _is_fit(raster: RasterFile, part: _Part, local: str) -> bool:
     """Whether a raster's own grid is one of true metres with square cells along its axes."""
     t, crs = raster.dataset.transform, raster.dataset.crs
     if crs.is_geographic or not crs.is_projected or abs(crs.linear_units_factor[1] - 1.0) > _SAME:
@@ -173,8 +224,9 @@ def _is_fit(raster: RasterFile, local: str) -> bool:
     if max(abs(t.b), abs(t.d)) > _SAME * cell or abs(abs(t.e) - cell) > SQUARE * cell:
         return False
     # lengths of one cell each way at the corners and in the middle, in the local projection
-    ny, nx = raster.dataset.height, raster.dataset.width
-    row, column = np.meshgrid([0.0, ny / 2.0, ny - 1.0], [0.0, nx / 2.0, nx - 1.0])
+    row, column = np.meshgrid(
+        [part.rows[0], part.middle[0], part.rows[1] - 1.0], [part.columns[0], part.middle[1], part.columns[1] - 1.0]
+    )
     x, y = map_coordinates(raster, row, column)
     here = np.array(map_positions(raster, x, y, crs, local))
     for step_x, step_y in ((cell, 0.0), (0.0, cell)):
@@ -197,26 +249,26 @@ def _note_step(raster: RasterFile, step: int, cell: float) -> None:
         )
 
 
-def _own_grid(raster: RasterFile, most_cells: int, least_cell: float) -> tuple[ElevationGrid, Any, Any]:
+def _own_grid(raster: RasterFile, part: _Part, most_cells: int, least_cell: float) -> tuple[ElevationGrid, Any, Any]:
     """The raster's own cells, or means of whole numbers of them."""
     from affine import Affine
 
-    dataset = raster.dataset
-    t = dataset.transform
-    side = max(dataset.height, dataset.width)
+    t = raster.dataset.transform
+    side = max(part.height, part.width)
     _refuse_long(raster, side * abs(t.a))
     step = _step(abs(t.a), side, most_cells, least_cell)
-    ny, nx = dataset.height // step, dataset.width // step
+    ny, nx = part.height // step, part.width // step
     if min(ny, nx) < 8:
         raise TerrainError(
-            f"{raster.name} is {min(dataset.height, dataset.width) * abs(t.a) / 1000.0:.1f} km wide; at cells of "
+            f"{raster.name} is {min(part.height, part.width) * abs(t.a) / 1000.0:.1f} km wide; at cells of "
             f"{step * abs(t.a):.0f} m that is {min(ny, nx)} of them, and a map of rain needs at least 8. Use a raster "
             "that covers the range."
         )
     _note_step(raster, step, step * abs(t.a))
-    ground = window_ground(raster, (0, ny * step), (0, nx * step), step)
-    x = t.c + t.a * step * (np.arange(nx) + 0.5)
-    y = t.f + t.e * step * (np.arange(ny) + 0.5)
+    row, column = part.rows[0], part.columns[0]
+    ground = window_ground(raster, (row, row + ny * step), (column, column + nx * step), step)
+    x = t.c + t.a * (column + step * (np.arange(nx) + 0.5))
+    y = t.f + t.e * (row + step * (np.arange(ny) + 0.5))
     if t.a < 0.0:
         ground, x = ground[:, ::-1], x[::-1]
     if t.e > 0.0:
@@ -224,21 +276,22 @@ def _own_grid(raster: RasterFile, most_cells: int, least_cell: float) -> tuple[E
     cell = step * abs(t.a)
     high = step * abs(t.e)
     grid = ElevationGrid(np.ascontiguousarray(ground), x, y)
-    return grid, dataset.crs, Affine(cell, 0.0, x[0] - 0.5 * cell, 0.0, -high, y[0] + 0.5 * high)
+    return grid, raster.dataset.crs, Affine(cell, 0.0, x[0] - 0.5 * cell, 0.0, -high, y[0] + 0.5 * high)
 
 
-def _warped(raster: RasterFile, local: str, most_cells: int, least_cell: float) -> tuple[ElevationGrid, Any, Any]:
+def _warped(
+    raster: RasterFile, part: _Part, local: str, most_cells: int, least_cell: float
+) -> tuple[ElevationGrid, Any, Any]:
     """The raster on a square grid in a local projection."""
     from affine import Affine
     from rasterio.crs import CRS
     from rasterio.enums import Resampling
     from rasterio.warp import reproject
 
-    dataset = raster.dataset
-    east, north = _outline_in(raster, local)
+    east, north = _outline_in(raster, part, local)
     sides = float(np.ptp(east)), float(np.ptp(north))
     _refuse_long(raster, max(sides))
-    own = _cell_sides(raster, local)
+    own = _cell_sides(raster, part, local)
     cell = max(least_cell, float(np.sqrt(own[0] * own[1])), max(sides) / most_cells)
     nx, ny = (int(side / cell) for side in sides)
     if min(nx, ny) < 8:
@@ -247,16 +300,17 @@ def _warped(raster: RasterFile, local: str, most_cells: int, least_cell: float) 
             "them, and a map of rain needs at least 8. Use a raster that covers the range."
         )
     step = max(1, int(cell / max(own) + SQUARE))
-    source = window_ground(raster, (0, dataset.height), (0, dataset.width), step)
-    wide, high = dataset.width / source.shape[1], dataset.height / source.shape[0]
-    t = dataset.transform
+    source = window_ground(raster, part.rows, part.columns, step)
+    wide, high = part.width / source.shape[1], part.height / source.shape[0]
+    t = raster.dataset.transform
+    corner = map_coordinates(raster, part.rows[0] - 0.5, part.columns[0] - 0.5)
     transform = Affine(cell, 0.0, east.min(), 0.0, -cell, north.max())
     ground = np.full((ny, nx), np.nan)
     reproject(
         source,
         ground,
-        src_transform=Affine(t.a * wide, t.b * high, t.c, t.d * wide, t.e * high, t.f),
-        src_crs=dataset.crs,
+        src_transform=Affine(t.a * wide, t.b * high, corner[0], t.d * wide, t.e * high, corner[1]),
+        src_crs=raster.dataset.crs,
         src_nodata=np.nan,
         dst_transform=transform,
         dst_crs=local,
@@ -273,9 +327,9 @@ def _warped(raster: RasterFile, local: str, most_cells: int, least_cell: float) 
     return ElevationGrid(ground, x, y), CRS.from_string(local), transform
 
 
-def _cell_sides(raster: RasterFile, local: str) -> tuple[float, float]:
-    """Lengths of the two sides of a cell in the middle of the raster [m]."""
-    row, column = raster.dataset.height / 2.0, raster.dataset.width / 2.0
+def _cell_sides(raster: RasterFile, part: _Part, local: str) -> tuple[float, float]:
+    """Lengths of the two sides of a cell in the middle [m]."""
+    row, column = part.middle
     x, y = map_coordinates(raster, row + np.array([0.0, 1.0, 0.0]), column + np.array([0.0, 0.0, 1.0]))
     east, north = map_positions(raster, x, y, raster.dataset.crs, local)
     sides = np.hypot(east[1:] - east[0], north[1:] - north[0])

@@ -32,10 +32,13 @@ def saved(file, ground, transform, crs="EPSG:32632", **options):
 
 
 def bell(longitude, latitude):
-    """A round hill of 1500 m about `CENTRE`, 12 km wide by the geodesic."""
-    flat = zip(np.ravel(longitude), np.ravel(latitude), strict=True)
-    away = [Geodesic.WGS84.Inverse(CENTRE[1], CENTRE[0], b, a, Geodesic.DISTANCE)["s12"] for a, b in flat]
-    return 1500.0 * np.exp(-((np.array(away) / 12e3) ** 2)).reshape(np.shape(longitude))
+    """A round hill of 1500 m about `CENTRE`, 12 km wide by the geodesic (azimuthal equidistant, true from its middle)."""
+    from rasterio.warp import transform as moved
+
+    about = f"+proj=aeqd +lat_0={CENTRE[1]} +lon_0={CENTRE[0]} +datum=WGS84"
+    east, north = moved("EPSG:4326", about, np.ravel(longitude), np.ravel(latitude))
+    away = np.hypot(east, north).reshape(np.shape(longitude))
+    return 1500.0 * np.exp(-((away / 12e3) ** 2))
 
 
 def layouts():
@@ -170,6 +173,28 @@ def test_means_of_a_fine_raster_in_degrees(tmp_path):
     for dx, dy in [(0.0, 0.0), (6e3, 0.0), (-6e3, 3e3), (2e3, -8e3)]:
         wanted = 1500.0 * np.exp(-((dx / 9e3) ** 2) - (dy / 6e3) ** 2)
         assert grid_elevation(found.grid, east + dx, north + dy) == pytest.approx(wanted, abs=15.0)
+
+
+@pytest.mark.parametrize("layout", ["longitude-latitude", "utm", "south-up", "rotated"])
+def test_part_of_a_raster(tmp_path, layout):
+    """Only the ground round a point: the same heights at the same places as from the whole, to 12 m."""
+    from rasterio.warp import transform as moved
+
+    crs, t = layouts()[layout]
+    column, row = np.meshgrid(np.arange(90) + 0.5, np.arange(90) + 0.5)
+    longitude, latitude = moved(
+        crs, "EPSG:4326", (t.a * column + t.b * row + t.c).ravel(), (t.d * column + t.e * row + t.f).ravel()
+    )
+    file = saved(tmp_path / "hill.tif", bell(longitude, latitude).reshape(90, 90), t, crs)
+    found = read_elevation_map(file, around=(9.05, 46.05), reach=10e3)
+    assert 18e3 < np.ptp(found.grid.x) < 42e3  # a turned raster is cut along its own rows
+    assert (found.longitude, found.latitude) == pytest.approx((9.05, 46.05), abs=0.01)
+    (x,), (y,) = moved("EPSG:4326", found.crs, [CENTRE[0]], [CENTRE[1]])
+    for east, north in [(2e3, 3e3), (6e3, 6e3), (10e3, 4e3)]:
+        wanted = 1500.0 * np.exp(-(east**2 + north**2) / 12e3**2)
+        assert grid_elevation(found.grid, x + east, y + north) == pytest.approx(wanted, abs=12.0)
+    with pytest.raises(TerrainError, match=r"does not reach to 20\.000 E, 46\.000 N"):
+        read_elevation_map(file, around=(20.0, 46.0), reach=10e3)
 
 
 def test_sea_depths_count_as_sea_level(tmp_path):
