@@ -115,7 +115,7 @@ def snow_share_jennings_2018(temperature: ArrayLike, relative_humidity: ArrayLik
     ----------
     .. [1] K. S. Jennings, T. S. Winchell, B. Livneh and N. P. Molotch (2018),
        "Spatial variation of the rain-snow temperature threshold across the
-       Northern Hemisphere", Nat. Commun. 9, 1148.
+       Northern Hemisphere", Nature Communications 9, 1148.
 
     Examples
     --------
