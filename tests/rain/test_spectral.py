@@ -253,6 +253,16 @@ def test_slope_spill_over(cloud, fall):
     assert slope_spill_over(30e3, 15.0, 1000.0, 0.0) == pytest.approx((1 - np.exp(-2.0)) / 2.0, rel=1e-12)
 
 
+def test_windier_air_and_slower_fall_spill_more():
+    """As reported of storms in New Zealand (Sinclair et al. 1997, Wratt et al. 2000): stronger wind, colder air (snow
+    falls more slowly), a narrower slope: more of the rain falls beyond the crest.
+    """
+    shares = [slope_spill_over(30e3, wind, 1000.0, 1000.0) for wind in (5.0, 10.0, 20.0, 40.0)]
+    assert np.all(np.diff(shares) > 0.0)
+    assert slope_spill_over(30e3, 15.0, 1000.0, 2000.0) > slope_spill_over(30e3, 15.0, 1000.0, 500.0)
+    assert slope_spill_over(15e3, 15.0, 1000.0, 1000.0) > slope_spill_over(60e3, 15.0, 1000.0, 1000.0)
+
+
 def test_slope_on_the_grid():
     """An even slope of 30 km up to a plateau: all of Cw U h falls, the share beyond the slope by the closed form.
 
