@@ -37,6 +37,8 @@ UNIT_WORDS = {
     "deg": "degrees clockwise from north",
     "percent": "per cent",
     "c_per_km": "degrees Celsius per kilometre",
+    "mm": "millimetres of water",
+    "in": "inches of water",
     "f_per_1000ft": "degrees Fahrenheit per 1000 feet",
 }
 

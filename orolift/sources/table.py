@@ -1,16 +1,16 @@
-"""A CSV table whose column names carry their units: names, numbers, line of each row."""
+"""A CSV table whose column names carry their units: numbers, texts, line of each row."""
 
 from __future__ import annotations
 
 import csv
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from orolift.errors import DataFileError
-from orolift.sources.units import UNITS, alternatives, nearest, suffix_of, to_si
+from orolift.sources.units import alternatives, converted, nearest, suffix_of, to_si
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping, Sequence
@@ -28,14 +28,18 @@ class Column:
     Attributes
     ----------
     name : str
-        Name with the usual unit, ``temperature_c``; other units of the kind are read too.
+        Name with the usual unit, ``temperature_c``; other units of the kind are read too. A name
+        that ends in no unit (``longitude``) is read as it is.
     low, high : float
         Plausible range, in the unit of `name`.
+    text : bool
+        True for a column of names; it has no range.
     """
 
     name: str
-    low: float
-    high: float
+    low: float = -math.inf
+    high: float = math.inf
+    text: bool = False
 
 
 @dataclass(frozen=True)
@@ -50,11 +54,14 @@ class NumberTable:
         By quantity, without the unit: ``temperature`` in K, ``height`` in m; NaN where missing.
     line : ndarray of int (n,)
         Line of the file each row stands on, first line 1.
+    texts : mapping of str to tuple of str, length n
+        Columns of text, as they stand.
     """
 
     name: str
     columns: Mapping[str, NDArray[np.float64]]
     line: NDArray[np.int64]
+    texts: Mapping[str, tuple[str, ...]] = field(default_factory=dict)
 
 
 def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable:
@@ -92,13 +99,17 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
     twice = next((stem for stem in stems if stems.count(stem) > 1), None)
     if twice is not None:
         raise DataFileError(f"{name}: line {cells[0][0]}: {twice} stands in two columns; keep one.")
-    rows = [
-        [_number(cell, head, f"{name}: line {number}") for cell, head in zip(row, heads, strict=True)]
-        for number, row in cells[1:]
-    ]
+    numeric = [(i, head) for i, head in enumerate(heads) if not head[0].text]
+    rows = [[_number(row[i], head, f"{name}: line {number}") for i, head in numeric] for number, row in cells[1:]]
     values = np.array(rows, dtype=np.float64)
-    columns = {stem: to_si(values[:, i], suffix) for i, (_, stem, suffix) in enumerate(heads)}
-    return NumberTable(name, columns, np.array([number for number, _ in cells[1:]], dtype=np.int64))
+    columns = {stem: _in_si(values[:, i], suffix) for i, (_, (_, stem, suffix)) in enumerate(numeric)}
+    texts = {stem: tuple(row[i] for _, row in cells[1:]) for i, (column, stem, _) in enumerate(heads) if column.text}
+    return NumberTable(name, columns, np.array([number for number, _ in cells[1:]], dtype=np.int64), texts)
+
+
+def _in_si(values: NDArray[np.float64], suffix: str) -> NDArray[np.float64]:
+    """Values in SI; without a suffix as they are."""
+    return to_si(values, suffix) if suffix else values
 
 
 def _holds_data(line: str) -> bool:
@@ -148,11 +159,10 @@ def _number(cell: str, head: tuple[Column, str, str], where: str) -> float:
         value = float(cell)
     except ValueError:
         raise DataFileError(f"{where}: {stem} '{cell[:40]}' is not a number.") from None
-    usual = UNITS[(suffix_of(column.name) or ("", suffix))[1]]
-    in_usual = (to_si(value, suffix) - usual.offset) / usual.factor
+    in_usual = converted(value, suffix, (suffix_of(column.name) or ("", suffix))[1]) if suffix else value
     if not column.low <= in_usual <= column.high:
         raise DataFileError(
-            f"{where}: {stem}_{suffix} {value:g} is outside the plausible range of {column.name}, "
-            f"{column.low:g} to {column.high:g}. Check the column and its unit."
+            f"{where}: {stem}{'_' if suffix else ''}{suffix} {value:g} is outside the plausible range of "
+            f"{column.name}, {column.low:g} to {column.high:g}. Check the column and its unit."
         )
     return value
