@@ -30,13 +30,13 @@ if TYPE_CHECKING:
     Array = NDArray[np.float64]
 
 RAIN_SPEED, SNOW_SPEED = 4.0, 1.2
-"""Fall speeds [m s-1] at the usual fall time of 1000 s; other fall times scale both. Rain 4 to 6, snow 1 to 1.5 m/s:
-common practice (Houze 1993, Cloud Dynamics, from memory)."""
+"""Fall speeds [m s-1] at the usual fall time of 1000 s; other fall times scale both. Common practice: rain 4 to 6, snow
+1 to 1.5 m/s (Houze 1993, Cloud Dynamics, from memory)."""
 USUAL_FALL_TIME = 1000.0
-"""Fall time [s] the speeds belong to: usual in Smith and Barstad (2004), J. Atmos. Sci. 61, 1377-1391."""
+"""Fall time [s] the speeds belong to, usual in Smith and Barstad (2004), J. Atmos. Sci. 61, 1377-1391."""
 MELTING_FROM, MELTING_TO = 273.15, 275.15
-"""Falling snow melts between these temperatures [K]; half and half at 1 degree Celsius as the mean rain-snow threshold of
-Jennings et al. (2018), Nature Comm. 9, 1148."""
+"""Falling snow melts between these temperatures [K]; half at 1 degree Celsius, the mean rain-snow threshold of Jennings
+et al. (2018), Nature Comm. 9, 1148."""
 BLOCK, NO_SHARE = 16, 1e-18
 """Layers whose running products are taken together, and the share that stands for none, so that none overflows."""
 
@@ -207,10 +207,29 @@ def _rained(
     return state, (down[:, 0], down[:, 0] * ice[:, 0], np.sum(carried * lost, axis=-1))
 
 
-def _sunk(flux: Array, leaving: Array) -> Array:
-    """Flux through the bottom of each layer: the share `leaving` of what is in it and falls into it goes on.
+def fallen_at_once(air: March, carried: Array, *, freezing: bool = True) -> Falling:
+    """Rain and snow of a march with a prescribed share: what leaves the air lands where it left.
 
-    ``out[i] = leaving[i] (flux[i] + out[i + 1])``, for blocks of layers at once with running products from the top down.
+    Parameters
+    ----------
+    air : March, fields (nk, m, nz)
+    carried : ndarray (m, nz) [kg m-1 s-1]
+    freezing : bool
+
+    Returns
+    -------
+    Falling
+    """
+    landed = np.sum(carried * air.removed, axis=-1)
+    ice = _ice_share(air.temperature[:, :, 0], freezing=freezing)
+    none = np.zeros_like(landed)
+    return Falling(landed, landed * ice, np.zeros_like(air.removed), np.zeros(landed.shape[1]), none)
+
+
+def _sunk(flux: Array, leaving: Array) -> Array:
+    """Flux through the bottom of each layer: the share `leaving` of what is in it or falls into it goes on.
+
+    ``out[i] = leaving[i] (flux[i] + out[i + 1])``, block by block with running products from the top down.
     """
     count = flux.shape[-1]
     out = np.empty_like(flux)

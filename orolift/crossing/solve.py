@@ -156,10 +156,8 @@ def solve(
             transect.elevation,
             crest,
             top,
-            each(settings.removed_share, members),
+            settings,
             pool_top=pool_top,
-            inflow_depth=settings.inflow_depth,
-            freezing=settings.freezing,
             count=streamlines,
             passes=passes,
         )
@@ -214,7 +212,9 @@ def _first(settings: Settings) -> Settings:
     share = settings.going_round_share
     return replace(
         settings,
-        removed_share=np.ravel(settings.removed_share)[:1],
+        removed_share=None if settings.removed_share is None else np.ravel(settings.removed_share)[:1],
+        cloud_time=np.ravel(settings.cloud_time)[:1],
+        fall_time=np.ravel(settings.fall_time)[:1],
         critical_value=np.ravel(settings.critical_value)[:1],
         going_round_share=None if share is None else np.ravel(share)[:1],
         mixing_depth=np.ravel(settings.mixing_depth)[:1],

@@ -54,6 +54,10 @@ UNITS: dict[str, Unit] = {
     "percent": Unit("share", 0.01),
     "c_per_km": Unit("lapse", 1.0e-3),
     "mm": Unit("water depth", 1.0),  # kg m-2
+    "mm_per_h": Unit("rain rate", 1.0 / 3600.0),  # kg m-2 s-1
+    "in_per_h": Unit("rain rate", 25.4 / 3600.0),
+    "s": Unit("time", 1.0),
+    "h": Unit("duration", 3600.0),
     "in": Unit("water depth", 25.4),
     "f_per_1000ft": Unit("lapse", 5.0 / 9.0 / 304.8),
 }
