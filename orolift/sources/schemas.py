@@ -40,6 +40,10 @@ UNIT_WORDS = {
     "mm": "millimetres of water",
     "in": "inches of water",
     "f_per_1000ft": "degrees Fahrenheit per 1000 feet",
+    "mm_per_h": "millimetres per hour",
+    "in_per_h": "inches per hour",
+    "s": "seconds",
+    "h": "hours",
 }
 
 Schema = dict[str, Any]
