@@ -36,7 +36,7 @@ PASSES = 4
 SLOWEST = 1.0
 """Wind [m s-1] below which time along a streamline is counted with this."""
 EARLY_POINTS, EARLY_PLACES = 256, 64
-"""Points of the transect and places of the march in all passes but the last, which only find where cloud is."""
+"""Points of the transect and places of the march in all passes but the last: they only find where cloud is."""
 MOST_PLACES = 256
 """Places of the march in the last pass: the removal of a prescribed share is then good to 0.02 K, and steps of some tens
 of seconds are short against a cloud time of 1000 s."""
