@@ -176,7 +176,9 @@ def _thinned(setup: _Setup, every: int) -> _Setup:
     if every == 1:
         return setup
     part = slice(setup.crest % every, None, every)
-    return replace(setup, distance=setup.distance[part], ground=setup.ground[part], crest=setup.crest // every)
+    ground = setup.ground[part].copy()
+    ground[0] = setup.ground[0]  # streamlines start at the same height
+    return replace(setup, distance=setup.distance[part], ground=ground, crest=setup.crest // every)
 
 
 @dataclass(frozen=True, eq=False)
