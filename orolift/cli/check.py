@@ -17,9 +17,11 @@ if TYPE_CHECKING:
 @VERBOSE_OPTION
 def command(case: str) -> None:
     """Read CASE and every file it names, and say what is wrong or doubtful."""
+    from orolift.cli.over_map import map_findings
     from orolift.sources.inputs import read_inputs
 
-    for line in findings(read_inputs(case)):
+    inputs = read_inputs(case)
+    for line in [*findings(inputs), *map_findings(inputs)]:
         click.echo(line)
 
 

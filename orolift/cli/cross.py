@@ -12,12 +12,14 @@ from typing import TYPE_CHECKING
 import click
 
 from orolift.cli.options import QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
 from orolift.errors import CaseError
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
+    from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
 
 log = logging.getLogger(__name__)
@@ -29,6 +31,8 @@ class Worked:
 
     inputs: Inputs
     crossing: Crossing
+    mapped: Mapped | None
+    flags: tuple[str, ...]
     results: Results
 
 
@@ -37,23 +41,38 @@ class Worked:
 @file_option("--report", "Report to write; default CASE.html in the current folder.")
 @file_option("--results", "Results to write as JSON.")
 @file_option("--table", "Table to write as CSV, one row a site.")
+@file_option("--geojson", "Sites to write as GeoJSON points.")
+@click.option("--maps", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps: rate, total, rain and snow.")
+@file_option("--catchments", "Catchments to write as CSV.")
+@file_option("--gauges", "Gauges to write as CSV, map beside observation.")
+@file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
 def command(
-    cases: tuple[str, ...], *, report: str | None, results: str | None, table: str | None, units: Units, quiet: bool
+    cases: tuple[str, ...],
+    *,
+    report: str | None,
+    results: str | None,
+    table: str | None,
+    units: Units,
+    quiet: bool,
+    **rain: str | None,
 ) -> None:
     """Work out the crossing of each CASE and write its report."""
+    files = RainFiles(**rain)
     if len(cases) > 1:
-        for option, value in (("--report", report), ("--results", results), ("--table", table)):
-            if value is not None:
+        named = {"--report": report, "--results": results, "--table": table, **files.asked()}
+        for option, value in named.items():
+            if value is not None and option != "--maps":
                 raise CaseError(f"{option} takes one case, and {len(cases)} are given. Run it once for each case.")
-    from orolift.sources.files import write_all
+    from orolift.sources.files import csv_text, write_all
+    from orolift.sources.results import site_rows
 
     contents: dict[Path, bytes] = {}
     summaries = []
     for case in cases:
-        worked = work_out(case)
+        worked = work_out(case, files)
         page = Path(report) if report else Path(f"{Path(case).stem}.html")
         if page in contents:
             raise CaseError(f"{case}: another case of this run already writes {page}. Give the cases different names.")
@@ -61,10 +80,8 @@ def command(
         if results:
             contents[Path(results)] = (worked.results.model_dump_json(indent=2) + "\n").encode()
         if table:
-            from orolift.sources.files import csv_text
-            from orolift.sources.results import site_rows
-
             contents[Path(table)] = csv_text(*site_rows(worked.results)).encode()
+        contents |= rain_files(files, worked.inputs, worked.mapped, worked.results)
         summaries.append((worked, page))
     write_all(contents)
     log.debug("written: %s", ", ".join(map(str, contents)))
@@ -82,8 +99,8 @@ def command(
             )
 
 
-def work_out(case: str) -> Worked:
-    """A case read and its crossing worked out."""
+def work_out(case: str, files: RainFiles | None = None) -> Worked:
+    """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
     from orolift.crossing.crossing import cross
     from orolift.sources.inputs import read_inputs
     from orolift.sources.results import results_of
@@ -91,6 +108,10 @@ def work_out(case: str) -> Worked:
 
     inputs = read_inputs(case)
     log.debug("%s read", case)
+    files = files or RainFiles()
+    refuse_what_cannot_be(files, inputs)
+    needed = files.maps is not None
+    found, doubts = map_inputs_of(inputs, needed=needed)
     try:
         crossing = cross(
             inputs.transect,
@@ -108,8 +129,25 @@ def work_out(case: str) -> Worked:
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
-    crossing = replace(crossing, cautions=(*inputs.cautions, *crossing.cautions))
-    return Worked(inputs, crossing, results_of(crossing, inputs.case))
+    mapped, more = map_of(found, inputs, crossing, needed=needed)
+    notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
+    crossing = replace(
+        crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
+    )
+    flags = flags_of(inputs, crossing, mapped)
+    return Worked(inputs, crossing, mapped, flags, results_of(crossing, inputs.case, mapped, flags))
+
+
+def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
+    """Danger thresholds reached, in sentences."""
+    from orolift.rain.winter import winter_flags
+
+    return winter_flags(
+        crossing,
+        snow_cover_above=inputs.case.rain.snow_cover_above_m,
+        grid=None if mapped is None else mapped.inputs.placed.grid,
+        rain_on_map=None if mapped is None else mapped.rain.rain,
+    )
 
 
 def report_of(worked: Worked, units: Units) -> str:

@@ -8,82 +8,23 @@ Every table is strict: no unknown key, no text where a number belongs, no
 from __future__ import annotations
 
 from datetime import datetime  # noqa: TC003 (pydantic reads the annotation at run time)
-from typing import Annotated, Any, Literal
+from typing import Annotated, Literal
 
-from pydantic import BaseModel, ConfigDict, Field, ValidationInfo, field_validator, model_validator
+from pydantic import Field, field_validator, model_validator
 
-from orolift.sources.units import UNITS, alternatives, converted, suffix_of
-
-Share = Annotated[float, Field(ge=0.0, le=1.0)]
-Bearing = Annotated[float, Field(ge=0.0, le=360.0)]
-Longitude = Annotated[float, Field(ge=-180.0, le=360.0)]
-Latitude = Annotated[float, Field(ge=-89.9, le=89.9)]
-Elevation = Annotated[float, Field(ge=-430.0, le=9000.0)]
-Name = Annotated[str, Field(min_length=1, max_length=200)]
-
-
-def is_number(value: object) -> bool:
-    """Whether a TOML value is a number (true and false are not)."""
-    return isinstance(value, int | float) and not isinstance(value, bool)
-
-
-class Table(BaseModel):
-    """One table of the case file."""
-
-    model_config = ConfigDict(strict=True, extra="forbid", allow_inf_nan=False, frozen=True)
-
-    @model_validator(mode="before")
-    @classmethod
-    def _other_units(cls, data: Any, info: ValidationInfo) -> Any:
-        """Convert keys given in another unit to the one this table is written in."""
-        if not isinstance(data, dict):
-            return data
-        out = {key: value for key, value in data.items() if key in cls.model_fields}
-        for key, value in data.items():
-            if key in out:
-                continue
-            wanted = next((name for name in alternatives(key) if name in cls.model_fields), None)
-            if wanted is None:
-                out[key] = value
-                continue
-            if wanted in out:
-                raise ValueError(f"{wanted} and {key} say the same thing; keep one of them")
-            out[wanted] = _converted(value, key, wanted)
-            if is_number(value) and isinstance(info.context, dict):
-                info.context[(cls.__name__, wanted)] = f"{key} = {value}"
-        return out
-
-
-def _converted(value: Any, key: str, wanted: str) -> Any:
-    """Value given under `key` in the unit of `wanted`; of pairs, as a ridge has, the second number."""
-    given, usual = suffix_of(key), suffix_of(wanted)
-    if given is None or usual is None:
-        return value
-    if is_number(value):
-        return converted(float(value), given[1], usual[1])
-    if isinstance(value, list):
-        return [[*pair[:-1], _converted(pair[-1], key, wanted)] if _is_pair(pair) else pair for pair in value]
-    return value
-
-
-def _is_pair(value: object) -> bool:
-    return isinstance(value, list) and len(value) == 2
-
-
-def exactly_one(table: Table, keys: tuple[str, ...], what: str) -> None:
-    """Refuse a table with none or several of the keys that say one thing."""
-    given = [key for key in keys if getattr(table, key) is not None]
-    if len(given) != 1:
-        have = "none is given" if not given else f"{' and '.join(given)} are given"
-        raise ValueError(f"{what}: exactly one of {', '.join(keys)} is needed, and {have}")
-
-
-def together(table: Table, keys: tuple[str, ...]) -> None:
-    """Refuse a table in which only some of the keys that belong together are given."""
-    given = [key for key in keys if getattr(table, key) is not None]
-    if given and len(given) < len(keys):
-        missing = [key for key in keys if key not in given]
-        raise ValueError(f"{given[0]} needs {' and '.join(missing)} beside it")
+from orolift.sources.case_table import (
+    Bearing,
+    Elevation,
+    Latitude,
+    Longitude,
+    Name,
+    Share,
+    Table,
+    exactly_one,
+    together,
+)
+from orolift.sources.rain_model import Catchments, GaugesTable, Rain, keys_of_a_map
+from orolift.sources.units import UNITS
 
 
 class Place(Table):
@@ -249,25 +190,6 @@ class HeatTable(Table):
     )
 
 
-class Rain(Table):
-    """How the condensed water leaves."""
-
-    cloud_time_s: Annotated[float, Field(ge=50.0, le=20000.0)] = Field(
-        default=1000.0, description="in which cloud turns to falling water"
-    )
-    fall_time_s: Annotated[float, Field(ge=50.0, le=20000.0)] = Field(
-        default=1000.0, description="in which falling water lands"
-    )
-    removed_share: Share | None = Field(
-        default=None,
-        description="share of the condensed water that leaves at once, instead of the two times",
-    )
-    background_mm_per_h: Annotated[float, Field(ge=0.0, le=50.0)] = Field(
-        default=0.0, description="rain that falls anyway, added everywhere"
-    )
-    freezing: bool = Field(default=True, description="condensate freezes between 0 and -20 degC; false keeps it liquid")
-
-
 class SiteTable(Place):
     """A named place for which values are wanted."""
 
@@ -295,6 +217,8 @@ class Case(Table):
     rain: Rain = Rain()
     lee: LeeTable = LeeTable()
     heat: HeatTable = HeatTable()
+    catchments: Catchments | None = None
+    gauges: GaugesTable | None = None
     site: list[SiteTable] = Field(default_factory=list)
 
     @field_validator("valid_time")
@@ -320,6 +244,15 @@ class Case(Table):
                 raise ValueError(f"site '{site.name}' needs distance_km: a hand-entered ridge has no map")
             if not by_hand and site.distance_km is not None:
                 raise ValueError(f"site '{site.name}' has distance_km; on a raster give longitude and latitude")
+        return self
+
+    @model_validator(mode="after")
+    def _fits_map(self) -> Case:
+        needing = keys_of_a_map(self.rain, self.catchments, self.gauges)
+        if needing and self.terrain.elevation_file is None:
+            raise ValueError(f"{needing[0]} needs rain over a map, and a hand-entered ridge has none: leave it out")
+        if needing and not self.rain.map:
+            raise ValueError(f"{needing[0]} needs rain over a map, and [rain] map = false leaves that out; drop one")
         return self
 
 

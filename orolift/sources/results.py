@@ -7,28 +7,30 @@ from dataclasses import asdict
 from importlib import metadata
 from typing import TYPE_CHECKING, Literal
 
-from pydantic import BaseModel, ConfigDict, Field
+from pydantic import Field
 
 from orolift import __version__
 from orolift.air.column import column_vapour, freezing_level
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.constants import MELTING_POINT
+from orolift.sources.rain_results import (
+    CatchmentBlock,
+    GaugesBlock,
+    MapBlock,
+    catchment_blocks,
+    gauges_block,
+    map_block,
+)
+from orolift.sources.result_block import Block, Range
 from orolift.sources.units import UNITS
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
     from orolift.sources.case_model import Case
+    from orolift.sources.map_inputs import Mapped
 
 SCHEMA_VERSION = "1"
 LIBRARIES = ("numpy", "scipy", "rasterio", "shapely", "jinja2", "contourpy", "pydantic", "click", "metar")
-
-Range = dict[str, tuple[float, float]]
-
-
-class Block(BaseModel):
-    """One block of the results; numbers are never NaN or infinite."""
-
-    model_config = ConfigDict(extra="forbid", allow_inf_nan=False, frozen=True)
 
 
 class Program(Block):
@@ -101,6 +103,8 @@ class RainBlock(Block):
     peak_mm_per_h: float | None
     peak_km: float | None
     total_kg_per_m_s: float | None
+    snow_share: float | None = Field(description="of what falls on the line; null without rain")
+    map: MapBlock | None = Field(description="rain over the map; null without a raster")
     range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
 
 
@@ -157,6 +161,8 @@ class Results(Block):
     flow: FlowBlock
     rain: RainBlock
     lee: list[LeeBlock]
+    catchments: list[CatchmentBlock]
+    gauges: GaugesBlock | None = Field(description="map against gauges; null without gauges")
     fire: list[dict[str, float]] = Field(description="indices by site; empty until worked out")
     flags: list[str]
     cautions: list[str]
@@ -168,13 +174,17 @@ def celsius(kelvin: float) -> float:
     return float(kelvin) - UNITS["c"].offset
 
 
-def results_of(crossing: Crossing, case: Case) -> Results:
+def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, flags: tuple[str, ...] = ()) -> Results:
     """Results of a crossing, unrounded.
 
     Parameters
     ----------
     crossing : Crossing
     case : Case
+    mapped : Mapped, optional
+        Rain over the map.
+    flags : tuple of str
+        Danger thresholds reached, in sentences.
 
     Returns
     -------
@@ -195,10 +205,12 @@ def results_of(crossing: Crossing, case: Case) -> Results:
         incoming=_incoming(crossing),
         terrain=_terrain(crossing),
         flow=_flow(crossing),
-        rain=_rain(crossing),
+        rain=_rain(crossing, mapped),
         lee=[_lee(site, crossing) for site in crossing.lee],
+        catchments=[] if mapped is None else catchment_blocks(mapped.rain),
+        gauges=None if mapped is None else gauges_block(mapped.rain),
         fire=[],
-        flags=[],
+        flags=[*flags],
         cautions=[*crossing.cautions],
         notes=[*crossing.notes],
     )
@@ -251,7 +263,7 @@ def _flow(crossing: Crossing) -> FlowBlock:
     )
 
 
-def _rain(crossing: Crossing) -> RainBlock:
+def _rain(crossing: Crossing, mapped: Mapped | None) -> RainBlock:
     water, rain = crossing.water, crossing.rain
     column = water.column_vapour_flux
     return RainBlock(
@@ -262,6 +274,8 @@ def _rain(crossing: Crossing) -> RainBlock:
         peak_mm_per_h=3600.0 * rain.peak_rate,
         peak_km=None if rain.peak_distance is None else (rain.peak_distance + crossing.transect.origin) / 1000.0,
         total_kg_per_m_s=rain.total,
+        snow_share=rain.snow_share,
+        map=None if mapped is None else map_block(mapped, crossing.transect.origin),
         range={"drying_ratio": (rain.drying_ratio_low, rain.drying_ratio_high)},
     )
 

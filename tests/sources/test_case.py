@@ -23,7 +23,8 @@ def test_a_good_case_reads():
     case = case_from_text(GOOD, "storm.toml")
     assert case.terrain.ridge_km_m[1] == [25.0, 1850.0]
     assert case.incoming.station.wind_kt == 25.0
-    assert case.rain.removed_share == 0.7
+    assert case.rain.cloud_time_s == 1000.0
+    assert case.rain.removed_share is None
 
 
 @pytest.mark.parametrize(
