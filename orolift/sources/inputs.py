@@ -19,6 +19,7 @@ from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
 from orolift.sources.files import read_text
 from orolift.sources.ridge_csv import read_ridge
+from orolift.sources.sounding import LEAST_HUMIDITY
 from orolift.sources.sounding_csv import read_sounding
 from orolift.sources.units import to_si
 from orolift.terrain.features import features
@@ -31,7 +32,7 @@ if TYPE_CHECKING:
     from orolift.air.column import IncomingAir
     from orolift.sources.case_model import Case, Incoming, Place, Station, Terrain
     from orolift.sources.raster import MapPoint
-    from orolift.sources.sounding_csv import Sounding
+    from orolift.sources.sounding import Sounding
     from orolift.terrain.transect import Transect
 
 PRESSURE_CONTRADICTION = 6000.0
@@ -43,8 +44,6 @@ OFF_LINE = 5000.0
 """A site this far beside the transect [m], half the default swath, gets a remark (a judgement)."""
 OBLIQUE_DEG = 45.0
 """Angle between wind and line beyond which it is remarked (a judgement)."""
-LEAST_HUMIDITY = 0.01
-"""Lowest relative humidity [1] taken from a sounding: the least a sensor resolves; common practice, no source."""
 
 
 @dataclass(frozen=True)
