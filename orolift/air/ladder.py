@@ -21,6 +21,8 @@ if TYPE_CHECKING:
 
     from numpy.typing import NDArray
 
+    from orolift.air.column_profile import Moisture
+
 
     Array = NDArray[np.float64]
 
@@ -202,7 +204,7 @@ def _mean(rung: list[LadderStation]) -> LadderStation:
     )
 
 
-def _pressure(height: Array, temperature: Array, rungs: list[LadderStation], moisture: object) -> tuple[Array, Array]:
+def _pressure(height: Array, temperature: Array, rungs: list[LadderStation], moisture: Moisture) -> tuple[Array, Array]:
     """Hydrostatic pressure that meets the lowest known one, with the vapour that belongs to it."""
     known = next(rung for rung in rungs if rung.pressure is not None)
     wanted = float(known.pressure or 0.0)
