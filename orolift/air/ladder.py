@@ -23,7 +23,6 @@ if TYPE_CHECKING:
 
     from orolift.air.column_profile import Moisture
 
-
     Array = NDArray[np.float64]
 
 SAME_ELEVATION = 20.0

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from math import degrees
 from typing import TYPE_CHECKING
 
 import click
@@ -23,6 +24,17 @@ def command(case: str) -> None:
         click.echo(line)
 
 
+def _found(inputs: Inputs) -> str:
+    """How the direction was found, if it was not given."""
+    given = inputs.case.incoming.wind_from_deg is not None
+    return "" if given else ", the mean wind from the base to 500 m above the crest"
+
+
+def _given(origin: tuple[str, ...]) -> int:
+    """Number of levels that were observed or come from a model."""
+    return sum(kind in {"measured", "model", "station", "surface report blended in"} for kind in origin)
+
+
 def findings(inputs: Inputs) -> list[str]:
     """What was read and what is doubtful, a line each."""
     line, air = inputs.transect, inputs.incoming
@@ -33,12 +45,18 @@ def findings(inputs: Inputs) -> list[str]:
             f"Line: {line.origin / 1000:g} to {end / 1000:.1f} km, ground {line.elevation.min():.0f} to "
             f"{line.elevation.max():.0f} m, {line.distance.size} points."
         ),
+        f"Wind: the line runs along {degrees(inputs.wind_from):.0f} degrees{_found(inputs)}.",
         (
-            f"Incoming air: {air.origin.count('measured') or 1} levels given, ground {air.height[0]:.0f} m, "
+            f"Incoming air: {_given(air.origin)} levels given, ground {air.height[0]:.0f} m, "
             f"{air.pressure[0] / 100:.1f} hPa, {air.temperature[0] - 273.15:.1f} °C."
         ),
         f"Sites: {', '.join(site.name for site in inputs.sites) or 'none; the lee foot is used'}.",
     ]
-    lines += [f"Doubtful: {text}" for text in inputs.cautions]
+    from orolift.sources.quality import cautions, table_lines
+
+    in_table = set(cautions(inputs.findings))
+    lines += [f"Doubtful: {text}" for text in inputs.cautions if text not in in_table]
+    if inputs.findings:
+        lines += ["Quality control of the incoming air:", *(f"  {row}" for row in table_lines(inputs.findings))]
     lines += [f"Assumed: {text}" for text in (*air.notes, *line.notes)]
     return lines

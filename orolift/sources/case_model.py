@@ -8,71 +8,25 @@ Every table is strict: no unknown key, no text where a number belongs, no
 from __future__ import annotations
 
 from datetime import datetime  # noqa: TC003 (pydantic reads the annotation at run time)
-from typing import Annotated, Any, Literal
+from typing import Annotated, Literal
 
-from pydantic import BaseModel, ConfigDict, Field, ValidationInfo, field_validator, model_validator
+from pydantic import Field, field_validator, model_validator
 
-from orolift.sources.units import UNITS, alternatives, converted, suffix_of
+from orolift.sources.case_table import (
+    Bearing,
+    Elevation,
+    Latitude,
+    Longitude,
+    Name,
+    Share,
+    Table,
+    exactly_one,
+    together,
+)
+from orolift.sources.incoming_model import Incoming, Station
+from orolift.sources.units import UNITS
 
-Share = Annotated[float, Field(ge=0.0, le=1.0)]
-Bearing = Annotated[float, Field(ge=0.0, le=360.0)]
-Longitude = Annotated[float, Field(ge=-180.0, le=360.0)]
-Latitude = Annotated[float, Field(ge=-89.9, le=89.9)]
-Elevation = Annotated[float, Field(ge=-430.0, le=9000.0)]
-Name = Annotated[str, Field(min_length=1, max_length=200)]
-
-
-def is_number(value: object) -> bool:
-    """Whether a TOML value is a number (true and false are not)."""
-    return isinstance(value, int | float) and not isinstance(value, bool)
-
-
-class Table(BaseModel):
-    """One table of the case file."""
-
-    model_config = ConfigDict(strict=True, extra="forbid", allow_inf_nan=False, frozen=True)
-
-    @model_validator(mode="before")
-    @classmethod
-    def _other_units(cls, data: Any, info: ValidationInfo) -> Any:
-        """Convert keys given in another unit to the one this table is written in."""
-        if not isinstance(data, dict):
-            return data
-        out = {key: value for key, value in data.items() if key in cls.model_fields}
-        for key, value in data.items():
-            if key in out:
-                continue
-            wanted = next((name for name in alternatives(key) if name in cls.model_fields), None)
-            if wanted is None:
-                out[key] = value
-                continue
-            if wanted in out:
-                raise ValueError(f"{wanted} and {key} say the same thing; keep one of them")
-            out[wanted] = value
-            if is_number(value):
-                parts = suffix_of(key)
-                target = suffix_of(wanted)
-                if parts is not None and target is not None:
-                    out[wanted] = converted(float(value), parts[1], target[1])
-                if isinstance(info.context, dict):
-                    info.context[(cls.__name__, wanted)] = f"{key} = {value}"
-        return out
-
-
-def exactly_one(table: Table, keys: tuple[str, ...], what: str) -> None:
-    """Refuse a table with none or several of the keys that say one thing."""
-    given = [key for key in keys if getattr(table, key) is not None]
-    if len(given) != 1:
-        have = "none is given" if not given else f"{' and '.join(given)} are given"
-        raise ValueError(f"{what}: exactly one of {', '.join(keys)} is needed, and {have}")
-
-
-def together(table: Table, keys: tuple[str, ...]) -> None:
-    """Refuse a table in which only some of the keys that belong together are given."""
-    given = [key for key in keys if getattr(table, key) is not None]
-    if given and len(given) < len(keys):
-        missing = [key for key in keys if key not in given]
-        raise ValueError(f"{given[0]} needs {' and '.join(missing)} beside it")
+__all__ = ["Case", "Incoming", "Place", "Rain", "SiteTable", "Station", "Terrain", "TransectTable"]
 
 
 class Place(Table):
@@ -136,57 +90,6 @@ class TransectTable(Table):
     upwind_km: Annotated[float, Field(ge=20.0, le=1000.0)] = 120.0
     downwind_km: Annotated[float, Field(ge=10.0, le=1000.0)] = 80.0
     swath_km: Annotated[float, Field(ge=0.0, le=100.0)] = 10.0
-
-
-class Station(Table):
-    """A station report upwind of the range."""
-
-    elevation_m: Elevation
-    temperature_c: Annotated[float, Field(ge=-80.0, le=60.0)]
-    dew_point_c: Annotated[float, Field(ge=-100.0, le=45.0)] | None = None
-    relative_humidity_percent: Annotated[float, Field(gt=0.0, le=100.0)] | None = Field(
-        default=None, description="over liquid water; may stand for dew_point_c"
-    )
-    pressure_hpa: Annotated[float, Field(ge=300.0, le=1090.0)] | None = Field(
-        default=None, description="at the station's height, not reduced to sea level"
-    )
-    qnh_hpa: Annotated[float, Field(ge=860.0, le=1090.0)] | None = Field(
-        default=None, description="altimeter setting; may stand for pressure_hpa"
-    )
-    wind_kt: Annotated[float, Field(ge=0.0, le=250.0)] = Field(description="speed, never negative")
-    wind_from_deg: Bearing | None = Field(default=None, description="default: wind_from_deg of [incoming]")
-
-    @model_validator(mode="after")
-    def _one_each(self) -> Station:
-        exactly_one(self, ("dew_point_c", "relative_humidity_percent"), "humidity")
-        exactly_one(self, ("pressure_hpa", "qnh_hpa"), "pressure")
-        return self
-
-
-class Incoming(Table):
-    """The air before the range."""
-
-    wind_from_deg: Bearing = Field(description="bearing the wind comes from; the transect runs along it")
-    station: Station | None = None
-    sounding_file: Name | None = Field(default=None, description="CSV with units in the column names")
-    crest_wind_kt: Annotated[float, Field(ge=0.0, le=250.0)] | None = Field(
-        default=None, description="wind at crest height"
-    )
-    crest_wind_from_deg: Bearing | None = Field(default=None, description="default: wind_from_deg")
-    lapse_rate_c_per_km: Annotated[float, Field(ge=0.0, le=11.0)] | None = Field(
-        default=None, description="above the station; default 6.5"
-    )
-
-    @model_validator(mode="after")
-    def _one_source(self) -> Incoming:
-        exactly_one(self, ("station", "sounding_file"), "incoming air")
-        if self.sounding_file is not None:
-            for key in ("crest_wind_kt", "crest_wind_from_deg", "lapse_rate_c_per_km"):
-                if getattr(self, key) is not None:
-                    raise ValueError(f"{key} belongs to a station; a sounding brings its own, leave the key out")
-        if self.crest_wind_from_deg is not None and self.crest_wind_kt is None:
-            raise ValueError("crest_wind_from_deg needs crest_wind_kt beside it")
-        return self
 
 
 class Rain(Table):

@@ -3,47 +3,51 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.column_build import CrestWind, air_from_levels, air_from_station
-from orolift.air.humidity import mixing_ratio_from_dew_point_checked, mixing_ratio_from_relative_humidity
-from orolift.air.standard import standard_pressure, station_pressure_from_qnh
-from orolift.constants import STANDARD_LAPSE_RATE
+from orolift.air.ground_layer import NO_GROUND_LAYER, GroundLayer, ground_layer
+from orolift.air.wind_layer import barrier_wind, turning_note
 from orolift.crossing.crossing import Site
 from orolift.errors import CaseError, OroliftError
 from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
 from orolift.sources.files import read_text
+from orolift.sources.incoming import read_incoming
+from orolift.sources.quality import Finding, cautions
+from orolift.sources.representative import representative_findings
 from orolift.sources.ridge_csv import read_ridge
-from orolift.sources.sounding import LEAST_HUMIDITY
-from orolift.sources.sounding_csv import read_sounding
 from orolift.sources.units import to_si
-from orolift.terrain.features import features
+from orolift.terrain.features import Features, features
 from orolift.terrain.ridge import ridge_transect
-from orolift.terrain.transect import transect_elevation
+from orolift.terrain.transect import Transect, transect_elevation
 
 if TYPE_CHECKING:
-    from numpy.typing import NDArray
+    from collections.abc import Callable
 
     from orolift.air.column import IncomingAir
-    from orolift.sources.case_model import Case, Incoming, Place, Station, Terrain
+    from orolift.sources.case_model import Case, Place, Terrain
+    from orolift.sources.incoming import IncomingReading, Observation
     from orolift.sources.raster import MapPoint
-    from orolift.sources.sounding import Sounding
-    from orolift.terrain.transect import Transect
 
-PRESSURE_CONTRADICTION = 6000.0
-"""Station pressure further than this from the standard atmosphere [Pa] contradicts the elevation: a judgement, wider
-than sea-level extremes of 870 and 1085 hPa would need for any station that is not in such a record storm."""
 ELEVATION_CONTRADICTION = 150.0
 """A site's elevation this far from the terrain [m] gets a remark (a judgement)."""
 OFF_LINE = 5000.0
 """A site this far beside the transect [m], half the default swath, gets a remark (a judgement)."""
+FIRST_CREST = 2500.0
+"""Depth above the ground of the column [m] whose mean wind begins the search for the line along the wind (a guess)."""
+SETTLED = math.radians(1.0)
+"""Turn of that wind [rad] below which the line is not cut again."""
+MOST_CUTS = 4
 OBLIQUE_DEG = 45.0
 """Angle between wind and line beyond which it is remarked (a judgement)."""
+
+Line = tuple[Transect, tuple[Site, ...], tuple[float | None, ...]]
+"""A transect, its sites and their distances across it."""
 
 
 @dataclass(frozen=True)
@@ -63,7 +67,13 @@ class Inputs:
     offsets : tuple of float or None [m]
         Distance of each site across the transect; None for a hand-entered ridge.
     cautions : tuple of str
-        What is doubtful about the places.
+        What is doubtful about the places and about the incoming air.
+    findings : tuple of Finding
+        Quality control of the incoming air; those that are more than remarks are among the cautions, too.
+    wind_from : float [rad]
+        Direction the transect is drawn from: given, or that of the mean wind before the range.
+    ground_layer : GroundLayer
+        Stagnant layer on the ground of the incoming air, to be kept out of the inflow.
     """
 
     case: Case
@@ -74,6 +84,9 @@ class Inputs:
     sites: tuple[Site, ...]
     offsets: tuple[float | None, ...]
     cautions: tuple[str, ...]
+    findings: tuple[Finding, ...]
+    wind_from: float
+    ground_layer: GroundLayer
 
 
 def read_inputs(path: str | Path) -> Inputs:
@@ -105,14 +118,83 @@ def read_inputs(path: str | Path) -> Inputs:
 
 def _inputs(case: Case, path: Path, text: str) -> Inputs:
     folder = path.parent
-    wind_from = math.radians(case.incoming.wind_from_deg)
-    if case.terrain.elevation_file is None:
+    reading = read_incoming(case.incoming, folder, case.valid_time, datetime.now(UTC))
+
+    def line(wind_from: float) -> Line:
+        if case.terrain.elevation_file is not None:
+            return _raster(case, folder, wind_from)
         transect = _ridge(case.terrain, folder, wind_from)
-        sites, offsets = _sites_on_ridge(case, transect)
+        return transect, *_sites_on_ridge(case, transect)
+
+    if case.incoming.wind_from_deg is None:
+        wind_from, (transect, sites, offsets) = _line_along_wind(reading, line)
     else:
-        transect, sites, offsets = _raster(case, folder, wind_from)
-    incoming = _incoming(case.incoming, folder, features(transect).crest)
-    return Inputs(case, path, text, transect, incoming, sites, offsets, tuple(_remarks(case, transect, sites, offsets)))
+        wind_from = math.radians(case.incoming.wind_from_deg)
+        transect, sites, offsets = line(wind_from)
+    shape = features(transect)
+    incoming = reading.column(shape.crest)
+    findings = [*reading.findings, *_where_observed(case, folder, reading.observations, transect, shape)]
+    layer = ground_layer(incoming, shape.crest) if incoming.origin[1:2] != ("lapse rate",) else NO_GROUND_LAYER
+    turning = turning_note(barrier_wind(incoming, shape.base, shape.crest))
+    remarks = _remarks(case, transect, sites, offsets, wind_from)
+    if turning is not None:
+        remarks.append(turning)
+    return Inputs(
+        case,
+        path,
+        text,
+        transect,
+        incoming,
+        sites,
+        offsets,
+        (*remarks, *cautions(findings)),
+        tuple(findings),
+        wind_from,
+        layer,
+    )
+
+
+def _line_along_wind(reading: IncomingReading, line: Callable[[float], Line]) -> tuple[float, Line]:
+    """Direction of the mean wind from base to 500 m above the crest, and the line along it.
+
+    Base and crest depend on the line: it is cut again until the direction stays.
+    """
+    first = reading.column(FIRST_CREST)
+    ground = float(first.height[0])
+    wind_from = float(barrier_wind(first, ground, ground + FIRST_CREST).from_direction)
+    for _ in range(MOST_CUTS):
+        found = line(wind_from)
+        shape = features(found[0])
+        wind = barrier_wind(reading.column(shape.crest), shape.base, shape.crest)
+        turned = (float(wind.from_direction) - wind_from + math.pi) % (2.0 * math.pi) - math.pi
+        if abs(turned) < SETTLED:
+            break
+        wind_from = float(wind.from_direction)
+    return wind_from, found
+
+
+def _where_observed(
+    case: Case, folder: Path, observations: tuple[Observation, ...], transect: Transect, shape: Features
+) -> list[Finding]:
+    """What place and elevation of the observations say about their use."""
+    found: list[Finding] = []
+    for one in observations:
+        distance = offset = None
+        if case.terrain.elevation_file is None:
+            distance = None if one.ridge_distance is None else one.ridge_distance - transect.origin
+        elif one.longitude is not None and one.latitude is not None:
+            distance, offset = _position(case, folder, transect, one.longitude, one.latitude)
+        found += representative_findings(one.what, transect, shape, one.elevation, distance=distance, offset=offset)
+    return found
+
+
+def _position(case: Case, folder: Path, transect: Transect, longitude: float, latitude: float) -> tuple[float, float]:
+    """Distance along and across the transect of a place."""
+    from orolift.sources.raster import MapPoint, site_positions
+
+    file, unit = str(case.terrain.elevation_file), case.terrain.elevation_unit
+    at = site_positions(file, transect, [MapPoint(longitude, latitude)], unit=unit, folder=folder)
+    return float(at.distance[0]), float(at.offset[0])
 
 
 def _ridge(terrain: Terrain, folder: Path, wind_from: float) -> Transect:
@@ -191,79 +273,13 @@ def _map_point(place: Place) -> MapPoint:
     return MapPoint(float(place.easting_m or 0.0), float(place.northing_m or 0.0), projected=True)
 
 
-def _incoming(table: Incoming, folder: Path, crest: float) -> IncomingAir:
-    wind_from = math.radians(table.wind_from_deg)
-    if table.sounding_file is not None:
-        sounding = read_sounding(table.sounding_file, "[incoming] sounding_file", folder)
-        vapour, notes = _vapour(sounding)
-        air = air_from_levels(
-            sounding.height,
-            sounding.pressure,
-            sounding.temperature,
-            vapour,
-            sounding.eastward_wind,
-            sounding.northward_wind,
-        )
-        return replace(air, notes=(*sounding.notes, *notes, *air.notes))
-    if table.station is None:  # the model has refused it already
-        raise CaseError("[incoming] needs a station or a sounding_file")
-    return _from_station(table, table.station, wind_from, crest)
-
-
-def _vapour(sounding: Sounding) -> tuple[NDArray[np.float64], tuple[str, ...]]:
-    if sounding.dew_point is not None:
-        return mixing_ratio_from_dew_point_checked(sounding.pressure, sounding.temperature, sounding.dew_point)
-    humidity = np.maximum(np.asarray(sounding.relative_humidity), LEAST_HUMIDITY)
-    notes: tuple[str, ...] = ()
-    if (np.asarray(sounding.relative_humidity) < LEAST_HUMIDITY).any():
-        notes = (f"Relative humidity below {LEAST_HUMIDITY:.0%} is taken as that, the least a sensor resolves.",)
-    return mixing_ratio_from_relative_humidity(sounding.pressure, sounding.temperature, humidity), notes
-
-
-def _from_station(table: Incoming, station: Station, wind_from: float, crest: float) -> IncomingAir:
-    temperature = to_si(station.temperature_c, "c")
-    pressure = _station_pressure(station)
-    if station.dew_point_c is not None:
-        vapour, notes = mixing_ratio_from_dew_point_checked(pressure, temperature, to_si(station.dew_point_c, "c"))
-    else:
-        humidity = to_si(float(station.relative_humidity_percent or 0.0), "percent")
-        vapour, notes = mixing_ratio_from_relative_humidity(pressure, temperature, humidity), ()
-    own_from = wind_from if station.wind_from_deg is None else math.radians(station.wind_from_deg)
-    crest_wind = None
-    if table.crest_wind_kt is not None:
-        aloft = wind_from if table.crest_wind_from_deg is None else math.radians(table.crest_wind_from_deg)
-        crest_wind = CrestWind(to_si(table.crest_wind_kt, "kt"), aloft, crest)
-    lapse = STANDARD_LAPSE_RATE if table.lapse_rate_c_per_km is None else to_si(table.lapse_rate_c_per_km, "c_per_km")
-    air = air_from_station(
-        station.elevation_m,
-        pressure,
-        temperature,
-        float(vapour),
-        to_si(station.wind_kt, "kt"),
-        own_from,
-        lapse_rate=lapse,
-        crest_wind=crest_wind,
-    )
-    return replace(air, notes=(*notes, *air.notes))
-
-
-def _station_pressure(station: Station) -> float:
-    """Pressure at the station, from itself or from the altimeter setting; refused when it contradicts the height."""
-    if station.pressure_hpa is None:
-        return float(station_pressure_from_qnh(to_si(float(station.qnh_hpa or 0.0), "hpa"), station.elevation_m))
-    pressure = to_si(station.pressure_hpa, "hpa")
-    usual = float(standard_pressure(station.elevation_m))
-    if abs(pressure - usual) > PRESSURE_CONTRADICTION:
-        low, high = ((usual + sign * PRESSURE_CONTRADICTION) / 100.0 for sign in (-1.0, 1.0))
-        raise CaseError(
-            f"[incoming] station: pressure_hpa {station.pressure_hpa:g} and elevation_m {station.elevation_m:g} "
-            f"contradict each other: {low:.0f} to {high:.0f} hPa is allowed at that height. "
-            "Is it reduced to sea level? Then call it qnh_hpa."
-        )
-    return pressure
-
-
-def _remarks(case: Case, transect: Transect, sites: tuple[Site, ...], offsets: tuple[float | None, ...]) -> list[str]:
+def _remarks(
+    case: Case,
+    transect: Transect,
+    sites: tuple[Site, ...],
+    offsets: tuple[float | None, ...],
+    wind_from: float,
+) -> list[str]:
     """What is doubtful about the places, as cautions."""
     found = []
     for site, offset in zip(sites, offsets, strict=True):
@@ -280,7 +296,7 @@ def _remarks(case: Case, transect: Transect, sites: tuple[Site, ...], offsets: t
             )
     drawn_from = case.terrain.drawn_from_deg
     if drawn_from is not None:
-        off = abs((case.incoming.wind_from_deg - drawn_from + 180.0) % 360.0 - 180.0)
+        off = abs((math.degrees(wind_from) - drawn_from + 180.0) % 360.0 - 180.0)
         if off > OBLIQUE_DEG:
             found.append(
                 f"The wind is {off:.0f} degrees off the line of the ridge: only its component along the line is used, "

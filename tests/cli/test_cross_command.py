@@ -54,7 +54,10 @@ def test_two_runs_are_equal_to_the_byte(case_folder, monkeypatch):
 
 WRONG = [
     ([(RIDGE, 'ridge_file = "nowhere.csv"')], r"ridge_file: .*nowhere.csv cannot be found"),
-    ([(RIDGE, 'elevation_file = "case.toml"'), ("distance_km = 50", "longitude = 5\nlatitude = 5")], "is not a raster that GDAL can read"),
+    (
+        [(RIDGE, 'elevation_file = "case.toml"'), ("distance_km = 50", "longitude = 5\nlatitude = 5")],
+        "is not a raster that GDAL can read",
+    ),
     (
         [(RIDGE, 'elevation_file = "http://a.example/x.tif"'), ("distance_km = 50", "longitude = 5\nlatitude = 5")],
         "local files only",
