@@ -21,6 +21,8 @@ STABLE = 1.0e-2
 near that of air whose temperature does not fall with height."""
 LEAST_DEFICIT = 1.5
 """Deficit of virtual potential temperature from ground to top [K] from which the layer counts: a judgement."""
+SHALLOWEST = 50.0
+"""Depth [m] below which it is left to the noise of the lowest levels: a judgement."""
 DEEPEST = 1500.0
 """Depth [m] to which the layer is looked for; deeper ones are the air mass itself (a judgement)."""
 BRIDGED = 100.0
@@ -80,7 +82,7 @@ def ground_layer(air: IncomingAir, crest: float | None = None) -> GroundLayer:
     -----
     From the ground up as long as virtual potential temperature rises by more
     than 10 K per km (less over at most 100 m), at most 1500 m; it counts when
-    the rise is 1.5 K or more in all and its wind is below 4 m/s or below half
+    it is 50 m deep, the rise is 1.5 K or more in all and its wind is below 4 m/s or below half
     of that above. A stable layer in strong wind is the air mass and stays.
     Assumed: columns drawn from station values by a lapse rate have none.
 
@@ -97,9 +99,9 @@ def ground_layer(air: IncomingAir, crest: float | None = None) -> GroundLayer:
     theta = virtual_potential_temperature(air.pressure, air.temperature, air.vapour, air.cloud)
     limit = DEEPEST if crest is None else min(DEEPEST, max(crest - float(air.height[0]), 0.0))
     top = _top_of_stable_layer(z, theta, limit)
-    if top == 0 or theta[top] - theta[0] < LEAST_DEFICIT:
-        return NO_GROUND_LAYER
     depth = float(z[top])
+    if depth < SHALLOWEST or theta[top] - theta[0] < LEAST_DEFICIT:
+        return NO_GROUND_LAYER
     inside = _mean_speed(air, 0.0, depth)
     above = _mean_speed(air, depth, depth + WIND_ABOVE)
     if inside >= STAGNANT_WIND and inside >= STAGNANT_SHARE * above:

@@ -24,10 +24,12 @@ def command(case: str) -> None:
         click.echo(line)
 
 
-def _found(inputs: Inputs) -> str:
-    """How the direction was found, if it was not given."""
-    given = inputs.case.incoming.wind_from_deg is not None
-    return "" if given else ", the mean wind from the base to 500 m above the crest"
+def _found(inputs: Inputs) -> list[str]:
+    """The direction of the line, if it was not given."""
+    if inputs.case.incoming.wind_from_deg is not None:
+        return []
+    direction = degrees(inputs.wind_from)
+    return [f"Wind: from {direction:.0f} degrees, the mean from the base of the range to 500 m above its crest."]
 
 
 def _given(origin: tuple[str, ...]) -> int:
@@ -45,7 +47,7 @@ def findings(inputs: Inputs) -> list[str]:
             f"Line: {line.origin / 1000:g} to {end / 1000:.1f} km, ground {line.elevation.min():.0f} to "
             f"{line.elevation.max():.0f} m, {line.distance.size} points."
         ),
-        f"Wind: the line runs along {degrees(inputs.wind_from):.0f} degrees{_found(inputs)}.",
+        *_found(inputs),
         (
             f"Incoming air: {_given(air.origin)} levels given, ground {air.height[0]:.0f} m, "
             f"{air.pressure[0] / 100:.1f} hPa, {air.temperature[0] - 273.15:.1f} °C."

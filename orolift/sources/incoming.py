@@ -18,7 +18,7 @@ from orolift.air.humidity import (
 from orolift.air.ladder import LadderStation, air_from_ladder
 from orolift.constants import STANDARD_LAPSE_RATE
 from orolift.errors import CaseError
-from orolift.sources.quality import Finding, age_findings
+from orolift.sources.quality import Finding, age_findings, shortened
 from orolift.sources.sounding import LEAST_HUMIDITY, sounding_from_levels
 from orolift.sources.station_ladder import ladder_findings
 from orolift.sources.station_values import StationValues, station_pressure, values_from_metar, values_from_station
@@ -38,6 +38,9 @@ if TYPE_CHECKING:
 AIR_MASS_OFF = 6.0
 """Difference of a surface report from the column it corrects [K] from which two air masses are suspected."""
 
+CLOUDY = 1.0e-6
+"""Excess over saturation [kg kg-1] that is said: 0.001 g/kg, far below what a sensor resolves."""
+
 
 @dataclass(frozen=True)
 class Observation:
@@ -52,6 +55,8 @@ class Observation:
     ridge_distance : float or None [m]
         Along a hand-entered ridge, in its own numbers.
     observed : datetime or None
+    lowest : bool
+        False for the upper stations of a ladder.
     """
 
     what: str
@@ -60,6 +65,7 @@ class Observation:
     latitude: float | None = None
     ridge_distance: float | None = None
     observed: datetime | None = None
+    lowest: bool = True
 
 
 @dataclass(frozen=True)
@@ -109,7 +115,15 @@ def read_incoming(
         reading = _column(table, folder, valid)
     else:
         reading = _station(table, valid)
-    ages = [finding for one in reading.observations for finding in age_findings(one.observed, valid, one.what, now)]
+    fresh = table.surface_station is not None or table.surface_metar is not None
+    done = "its lowest air is corrected by the surface report" if fresh else "used as it is"
+    ages = [
+        finding
+        for one in reading.observations
+        for finding in age_findings(
+            one.observed, valid, one.what, now, done=done if one is reading.observations[0] else "used as it is"
+        )
+    ]
     return replace(reading, findings=(*reading.findings, *ages))
 
 
@@ -191,6 +205,7 @@ def _ladder(table: Incoming, rungs: list[LadderRung]) -> IncomingReading:
             rung.latitude,
             None if rung.distance_km is None else rung.distance_km * 1000.0,
             rung.observed_time,
+            lowest=rung.elevation_m == min(other.elevation_m for other in rungs),
         )
         for name, rung in zip(names, rungs, strict=True)
     )
@@ -249,7 +264,7 @@ def _column(table: Incoming, folder: Path, valid: datetime | None) -> IncomingRe
         None if at is None or at.distance_km is None else at.distance_km * 1000.0,
         sounding.observed if at is None or at.observed_time is None else at.observed_time,
     )
-    findings = list(sounding.findings)
+    findings = [*sounding.findings, *shortened(_saturated_layers(air, what))]
     observations = [seen]
     fresh = _surface(table, valid, fresh=True)
     if fresh is not None:
@@ -294,6 +309,23 @@ def _vapour(sounding: Sounding) -> tuple[NDArray[np.float64], tuple[str, ...]]:
     if (np.asarray(sounding.relative_humidity) < LEAST_HUMIDITY).any():
         notes = (f"Relative humidity below {LEAST_HUMIDITY:.0%} is taken as that, the least a sensor resolves.",)
     return mixing_ratio_from_relative_humidity(sounding.pressure, sounding.temperature, humidity), notes
+
+
+def _saturated_layers(air: IncomingAir, what: str) -> list[Finding]:
+    """Layers whose vapour is above saturation, so that they begin with cloud."""
+    wet = np.concatenate([[False], air.cloud > CLOUDY, [False]]).astype(np.int8)
+    edges = np.flatnonzero(np.diff(wet))
+    layers = zip(edges[::2], edges[1::2] - 1, strict=True)
+    return [
+        Finding(
+            f"{what}, {air.height[low]:.0f} to {air.height[high]:.0f} m",
+            "supersaturated layer",
+            f"up to {air.cloud[low : high + 1].max() * 1000.0:.2g} g/kg too much",
+            "the excess starts as cloud",
+            "remark",
+        )
+        for low, high in layers
+    ]
 
 
 def _corrected(air: IncomingAir, fresh: StationValues) -> tuple[IncomingAir, list[Finding]]:

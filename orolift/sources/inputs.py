@@ -184,7 +184,9 @@ def _where_observed(
             distance = None if one.ridge_distance is None else one.ridge_distance - transect.origin
         elif one.longitude is not None and one.latitude is not None:
             distance, offset = _position(case, folder, transect, one.longitude, one.latitude)
-        found += representative_findings(one.what, transect, shape, one.elevation, distance=distance, offset=offset)
+        found += representative_findings(
+            one.what, transect, shape, one.elevation, distance=distance, offset=offset, lowest=one.lowest
+        )
     return found
 
 

@@ -40,6 +40,11 @@ GAP = 2000.0
 GAP_CHECKED_TO = 50000.0
 WIND_END = 300.0
 """Height of the lowest wind above the ground [m] from which that is said: a judgement, half a boundary layer."""
+STEEP = 12.0
+"""Fall of temperature [K per km] from which a superadiabatic layer is doubted: a judgement. Thin layers coded to 0.1 K
+reach 11, heated ground more."""
+HEATED = 500.0
+"""Depth [m] above the ground in which the sun may do that (a judgement)."""
 HEIGHT_OFF = 40.0
 """Departure of a height from the hydrostatic one [m] that is said, as in the column of the air layer."""
 HEIGHT_WRONG = 300.0
@@ -317,9 +322,7 @@ def layer_findings(name: str, height: Array, temperature: Array) -> list[Finding
     for low, high in superadiabatic_layers(height, temperature):
         rate = (temperature[low] - temperature[high]) / (height[high] - height[low]) * 1000.0
         place = f"{name}, {height[low]:.0f} to {height[high]:.0f} m"
-        severity = "remark" if low == 0 else "doubtful"
+        usual = rate < STEEP or height[high] - height[0] < HEATED
         value, done = f"{rate:.1f} °C per km", "used as it is"
-        found.append(
-            Finding(place, "superadiabatic layer", value, done, "remark" if severity == "remark" else "doubtful")
-        )
+        found.append(Finding(place, "superadiabatic layer", value, done, "remark" if usual else "doubtful"))
     return found

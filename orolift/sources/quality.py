@@ -159,7 +159,12 @@ def at_levels(
 
 
 def age_findings(
-    observed: datetime | None, valid: datetime | None, place: str, now: datetime | None = None
+    observed: datetime | None,
+    valid: datetime | None,
+    place: str,
+    now: datetime | None = None,
+    *,
+    done: str = "used as it is",
 ) -> list[Finding]:
     """What is to be said about the time of an observation.
 
@@ -172,6 +177,8 @@ def age_findings(
     place : str
     now : datetime or None
         The clock; given, an observation from the future is wrong.
+    done : str
+        What is done about an old one.
 
     Returns
     -------
@@ -202,11 +209,10 @@ def age_findings(
     hours = (valid - observed).total_seconds() / 3600.0
     if abs(hours) < STALE_HOURS:
         return found
-    stale = "doubtful" if abs(hours) < VERY_STALE_HOURS else "wrong"
     what = "older than the valid time" if hours > 0 else "observed after the valid time"
-    value = f"{abs(hours):.1f} h {'before' if hours > 0 else 'after'} valid_time"
-    done = "used as it is; a fresh surface report beside it would correct the lowest air"
-    found.append(Finding(place, what, value, done, "doubtful" if stale == "doubtful" else "wrong"))
+    size = f"{abs(hours):.1f} h" if abs(hours) < 100.0 else f"{abs(hours) / 24.0:.0f} days"
+    value = f"{size} {'before' if hours > 0 else 'after'} valid_time"
+    found.append(Finding(place, what, value, done, "doubtful" if abs(hours) < VERY_STALE_HOURS else "wrong"))
     return found
 
 

@@ -30,6 +30,7 @@ def representative_findings(
     *,
     distance: float | None = None,
     offset: float | None = None,
+    lowest: bool = True,
 ) -> list[Finding]:
     """What place and elevation of an observation say about its use as incoming air.
 
@@ -46,6 +47,8 @@ def representative_findings(
         Along the transect from its upwind end; negative before it. None: unknown.
     offset : float or None [m]
         Across the transect.
+    lowest : bool
+        False for the upper stations of a ladder, which may stand on the slope.
 
     Returns
     -------
@@ -63,15 +66,19 @@ def representative_findings(
     ['lower than all ground upwind, as low as the lee: a lee station given as upwind?']
     """
     if distance is not None:
-        return _by_place(place, transect, shape, elevation, distance, offset)
+        found = _by_place(place, transect, shape, elevation, distance, offset)
+        return (
+            [*found, *_on_the_slope(place, shape, elevation)] if lowest and distance < shape.crest_distance else found
+        )
     upwind = transect.elevation[transect.distance <= shape.crest_distance]
     lee = transect.elevation[transect.distance >= shape.crest_distance]
-    lowest, lowest_lee = float(upwind.min()), float(lee.min())
-    if elevation < lowest - TERRAIN_OFF and abs(elevation - lowest_lee) < max(TERRAIN_OFF, 0.25 * (lowest - elevation)):
-        value = f"{elevation:.0f} m; lowest ground upwind {lowest:.0f} m, in the lee {lowest_lee:.0f} m"
+    lowest_upwind, lowest_lee = float(upwind.min()), float(lee.min())
+    near_lee = abs(elevation - lowest_lee) < max(TERRAIN_OFF, 0.25 * (lowest_upwind - elevation))
+    if elevation < lowest_upwind - TERRAIN_OFF and near_lee:
+        value = f"{elevation:.0f} m; lowest ground upwind {lowest_upwind:.0f} m, in the lee {lowest_lee:.0f} m"
         what = "lower than all ground upwind, as low as the lee: a lee station given as upwind?"
         return [Finding(place, what, value, "used as it is", "doubtful")]
-    return _on_the_slope(place, shape, elevation)
+    return _on_the_slope(place, shape, elevation) if lowest else []
 
 
 def _by_place(
@@ -101,7 +108,7 @@ def _by_place(
                     place, "elevation does not fit the terrain: is the unit right?", value, "used as it is", "doubtful"
                 )
             )
-    return found if beyond > 0.0 else [*found, *_on_the_slope(place, shape, elevation)]
+    return found
 
 
 def _on_the_slope(place: str, shape: Features, elevation: float) -> list[Finding]:
