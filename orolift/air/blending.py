@@ -101,7 +101,7 @@ def blended_with_surface(air: IncomingAir, report: SurfaceValues) -> Blend:
     -----
     Assumptions, each in the notes of the result. Where the report's virtual
     potential temperature is above the column's, the air is mixed from the
-    ground to where the column is as warm (at most 3 km): potential temperature
+    ground to where the column is as warm (200 m to 3 km): potential temperature
     is the report's. Where it is below, the difference of temperature falls
     linearly to zero over its size / 10 K per km (200 m to 1 km). The
     differences of vapour and wind fall linearly to zero over the same depth;
@@ -170,7 +170,7 @@ def _top(air: IncomingAir, report: SurfaceValues, warmer: float) -> tuple[float,
         first = int(np.argmax(excess >= 0.0)) if (excess >= 0.0).any() else z.size - 1
         share = 1.0 if excess[first] <= 0.0 else -excess[first - 1] / (excess[first] - excess[first - 1])
         top = float(z[first - 1] + share * (z[first] - z[first - 1]))
-        return min(max(top, report.elevation + 1.0), report.elevation + DEEPEST_MIXED), True
+        return float(np.clip(top, report.elevation + SHALLOWEST, report.elevation + DEEPEST_MIXED)), True
     return report.elevation + float(np.clip(abs(warmer) / NIGHT_RATE, SHALLOWEST, DEEPEST_COOLED)), False
 
 
@@ -197,7 +197,7 @@ def _with_levels(air: IncomingAir, heights: tuple[float, ...]) -> IncomingAir:
 
 def _weight(height: Array, elevation: float, top: float) -> Array:
     """Share of the report's difference at each height: one at the station and below, zero at the top and above."""
-    depth = max(top - elevation, SHALLOWEST)
+    depth = top - elevation
     return np.clip((elevation + depth - height) / depth, 0.0, 1.0)
 
 

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.temperature import virtual_potential_temperature
+from orolift.air.temperature import virtual_potential_temperature, virtual_temperature
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -44,7 +44,7 @@ class GroundLayer:
     depth : float [m]
         To be kept out of the inflow of the range; 0 where there is none.
     deficit : float [K]
-        Virtual potential temperature of its top minus that of the ground.
+        How much colder the ground is than the air of its top brought down to it, as virtual temperature.
     wind, wind_above : float [m s-1]
         Speed of the mean wind in it and in the 500 m above it.
     note : str or None
@@ -106,7 +106,8 @@ def ground_layer(air: IncomingAir, crest: float | None = None) -> GroundLayer:
     above = _mean_speed(air, depth, depth + WIND_ABOVE)
     if inside >= STAGNANT_WIND and inside >= STAGNANT_SHARE * above:
         return NO_GROUND_LAYER
-    deficit = float(theta[top] - theta[0])
+    ground = float(virtual_temperature(air.temperature[0], air.vapour[0], air.cloud[0]))
+    deficit = ground * float(theta[top] / theta[0] - 1.0)
     note = (
         f"A cold layer {depth:.0f} m deep lies on the ground of the incoming air: {deficit:.1f} °C colder at the "
         f"ground than the air at its top brought down, {inside:.0f} m/s in it and {above:.0f} m/s above. It is kept "

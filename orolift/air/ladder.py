@@ -114,7 +114,9 @@ def air_from_ladder(
     z = np.array([rung.elevation for rung in rungs])
     t_known = np.array([rung.temperature for rung in rungs])
     rh_known = np.array([rung.relative_humidity for rung in rungs])
-    height = levels_through(tuple(z), _SPACING)
+    low_crest = crest_wind is not None and crest_wind.height <= z[-1]
+    kinks = (*z, crest_wind.height) if crest_wind is not None and crest_wind.height > z[0] and low_crest else tuple(z)
+    height = levels_through((z[0], *kinks, z[-1]), _SPACING)
     t = np.interp(height, z, t_known)
     humidity = np.interp(height, z, rh_known)
     e_liquid, e_most = saturation_vapour_pressure_over_liquid(t), saturation_vapour_pressure(t, freezing=freezing)
@@ -123,7 +125,6 @@ def air_from_ladder(
         return vapour_at(p, e_liquid, e_most, humidity), np.zeros_like(p)
 
     p, vapour = _pressure(height, t, rungs, moisture)
-    low_crest = crest_wind is not None and crest_wind.height <= z[-1]
     eastward, northward = _winds(height, rungs, crest_wind if low_crest else None)
     speed, direction = float(np.hypot(eastward[-1], northward[-1])), float(np.arctan2(-eastward[-1], -northward[-1]))
     above = air_from_station(
