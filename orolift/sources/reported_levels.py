@@ -226,8 +226,9 @@ def _merged(levels: ReportedLevels) -> ReportedLevels:
             findings.append(fault)
         elif levels.in_order and np.isfinite(merged["temperature"][g]) and np.isfinite(levels.temperature[i]):
             findings.append(Finding(place_of(levels, int(i)), "repeated level", "", "merged with the first", "remark"))
+        windy = bool(np.isfinite(merged["wind_speed"][g]))  # speed and direction come from one entry
         for name in FIELDS:
-            if np.isnan(merged[name][g]) and not (name.startswith("wind") and np.isfinite(merged["wind_speed"][g])):
+            if np.isnan(merged[name][g]) and not (name.startswith("wind") and windy):
                 merged[name][g] = getattr(levels, name)[i]
     out = replace(taken(levels, first), findings=(*levels.findings, *shortened(findings)))
     return replace(out, **merged)

@@ -19,6 +19,8 @@ KNOTS = 1852.0 / 3600.0
 """m s-1 in a knot: the international nautical mile, exact."""
 HECTOPASCALS_TO_1000 = 1000
 MOST_TENS_OF_DEGREES = 36
+HEIGHTS_ALOFT = {7000.0: 18400.0, 5000.0: 20600.0, 3000.0: 23900.0, 2000.0: 26500.0, 1000.0: 31100.0}
+"""Standard-atmosphere heights [m] of the levels of part C, to 100 m, from memory: they only decide ten thousands."""
 
 
 class GroupError(ValueError):
@@ -121,7 +123,8 @@ def standard_level_height(pressure: float, hhh: str) -> float:
     value, step = (float(number), 1000.0) if low else (10.0 * number, 10000.0)
     if pressure == 100000.0:
         return 500.0 - value if value >= 500.0 else value
-    return value + step * float(np.rint((float(standard_height(pressure)) - value) / step))
+    usual = HEIGHTS_ALOFT.get(pressure) or float(standard_height(pressure))
+    return value + step * float(np.rint((usual - value) / step))
 
 
 def temperature_and_dew_point(group: str) -> tuple[float, float]:
