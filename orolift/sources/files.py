@@ -113,7 +113,7 @@ def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
     full = existing_file(path, where, folder)
     try:
         with full.open("rb") as stream:
-            raw = stream.read(TEXT_LIMIT + 1)
+            raw = stream.read(min(full.stat().st_size, TEXT_LIMIT) + 1)  # reading sets aside as much as is asked for
     except OSError as error:
         raise MissingFileError(f"{where}: {full} cannot be read ({_reason(error)}).") from error
     if len(raw) > TEXT_LIMIT:

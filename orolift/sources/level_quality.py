@@ -47,6 +47,8 @@ HEATED = 500.0
 """Depth [m] above the ground in which the sun may do that (a judgement)."""
 HEIGHT_OFF = 40.0
 """Departure of a height from the hydrostatic one [m] that is said, as in the column of the air layer."""
+FAHRENHEIT_FITS = 120.0
+"""Departure [m] within which heights fit temperatures in another unit: a judgement; moisture alone makes up to 60 m."""
 HEIGHT_WRONG = 300.0
 """Departure [m] beyond which a height is wrong."""
 DEW_POINT_ABOVE = 0.5
@@ -293,6 +295,20 @@ def height_findings(levels: ReportedLevels, height: Array) -> list[Finding]:
     return found
 
 
+def _fits_as_fahrenheit(levels: ReportedLevels, checked: NDArray[np.bool_]) -> bool:
+    """Whether the heights fit once the temperatures are taken for degrees Fahrenheit."""
+    known = np.isfinite(levels.temperature)
+    kelvin = 273.15 + (levels.temperature[known] - 273.15 - 32.0) * 5.0 / 9.0
+    if kelvin.min() < 150.0:
+        return False
+    rise = hydrostatic_height(levels.pressure[known], kelvin, 0.0)
+    z, low = levels.height[known], checked[known]
+    if not low.any():
+        return False
+    off = (z - z[low][0] - (rise - rise[low][0]))[low]
+    return bool(np.abs(off).max() < FAHRENHEIT_FITS)
+
+
 def _height_cause(levels: ReportedLevels, height: Array, checked: NDArray[np.bool_]) -> str:
     """Likely cause of heights that contradict pressures throughout."""
     i = np.flatnonzero(checked)
@@ -302,6 +318,8 @@ def _height_cause(levels: ReportedLevels, height: Array, checked: NDArray[np.boo
         return "The heights seem to be in feet: call the column height_ft."
     if abs(ratio * FEET_PER_METRE - 1.0) < 0.07:
         return "The heights seem to be metres in a column of feet: call it height_m."
+    if _fits_as_fahrenheit(levels, checked):
+        return "The temperatures seem to be in Fahrenheit: call the column temperature_f."
     return "Check the units of height and pressure and the first level, or leave the heights out."
 
 
