@@ -23,6 +23,12 @@ AUTOCONVECTIVE = float(GRAVITY / R_DRY)
 """Fall of temperature [K m-1] at which density no longer falls with height: g/R, 34 K per km. Air cannot keep it."""
 SPIKE = 3.0
 """Least departure of a temperature from its neighbours [K] to be a spike: a judgement, many times a sensor's error."""
+UNBELIEVABLE = 15.0e-3
+"""Fall of temperature [K m-1] that no layer between two reported levels keeps, once it is this far off (a judgement)."""
+LARGE_SPIKE = 6.0
+"""Departure [K] that goes with it: a judgement."""
+HOT_GROUND = 50.0
+"""Depth [m] above the ground in which any fall of temperature is believed (a judgement)."""
 WIND_SPIKE = 25.0
 """Least departure of a wind from its neighbours [m s-1] to be a spike: a judgement."""
 WIND_NEIGHBOURS = 10.0
@@ -146,10 +152,11 @@ def _worst_spikes(log_p: Array, temperature: Array) -> tuple[NDArray[np.int64], 
     share = (x[1:-1] - x[:-2]) / (x[2:] - x[:-2])
     expected = t[:-2] + share * (t[2:] - t[:-2])
     thickness = np.diff(x) * 0.5 * (t[1:] + t[:-1]) / AUTOCONVECTIVE  # hypsometric: dz = (R/g) T d(-ln p)
-    steep = -np.diff(t) / thickness > AUTOCONVECTIVE
+    lapse = -np.diff(t) / thickness
     off = np.abs(t[1:-1] - expected)
-    spike = (steep[:-1] | steep[1:]) & (off > SPIKE)
-    spike[0] &= not steep[0]  # the lowest metres over hot ground may be that steep
+    lapse[0] = lapse[0] if thickness[0] >= HOT_GROUND else 0.0  # the lowest metres may be as steep as they like
+    steepest = np.maximum(lapse[:-1], lapse[1:])
+    spike = ((steepest > AUTOCONVECTIVE) & (off > SPIKE)) | ((steepest > UNBELIEVABLE) & (off > LARGE_SPIKE))
     off = np.concatenate([[0.0], np.where(spike, off, 0.0), [0.0]])
     worst = np.flatnonzero((off[1:-1] > off[:-2]) & (off[1:-1] >= off[2:]))
     return known[worst + 1], expected[worst]
