@@ -39,10 +39,10 @@ def within(name: str, values: ArrayLike, low: float, high: float, unit: str, hin
 
     Examples
     --------
-    >>> within("height", [280.0, 12.5], 100.0, 350.0, "m", "Give metres.")
+    >>> within("height", [280.0, 12.5], 100.0, 350.0, "m", "Metres?")
     Traceback (most recent call last):
         ...
-    orolift.errors.OutOfRangeError: height: 1 of 2 values lie outside 100 to 350 m (first: 12.5 at index (1,)). Give metres.
+    orolift.errors.OutOfRangeError: height: 1 of 2 values lie outside 100 to 350 m (first: 12.5 at index (1,)). Metres?
     """
     array = np.asarray(values, dtype=np.float64)
     bad = ~((array >= low) & (array <= high))  # written so that NaN counts as outside

@@ -45,6 +45,7 @@ class Sourced(float):
 
 
 GRAVITY = Sourced(9.80665, "m s-2", "3rd CGPM (1901), standard acceleration, exact by definition")
+EARTH_ROTATION_RATE = Sourced(7.292115e-5, "rad s-1", "WGS 84 (NIMA TR8350.2, 2000), angular velocity of the earth")
 GAS_CONSTANT = Sourced(8.314462618, "J mol-1 K-1", "CODATA 2018, exact by definition")
 MOLAR_MASS_WATER = Sourced(18.015268e-3, "kg mol-1", "IAPWS R6-95(2018)")
 MOLAR_MASS_DRY_AIR = Sourced(28.9644e-3, "kg mol-1", "US Standard Atmosphere 1976")

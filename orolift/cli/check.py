@@ -24,19 +24,6 @@ def command(case: str) -> None:
         click.echo(line)
 
 
-def _found(inputs: Inputs) -> list[str]:
-    """The direction of the line, if it was not given."""
-    if inputs.case.incoming.wind_from_deg is not None:
-        return []
-    direction = degrees(inputs.wind_from)
-    return [f"Wind: from {direction:.0f} degrees, the mean from the base of the range to 500 m above its crest."]
-
-
-def _given(origin: tuple[str, ...]) -> int:
-    """Number of levels that were observed or come from a model."""
-    return sum(kind in {"measured", "model", "station", "surface report blended in"} for kind in origin)
-
-
 def findings(inputs: Inputs) -> list[str]:
     """What was read and what is doubtful, a line each."""
     line, air = inputs.transect, inputs.incoming
@@ -49,7 +36,7 @@ def findings(inputs: Inputs) -> list[str]:
         ),
         *_found(inputs),
         (
-            f"Incoming air: {_given(air.origin)} levels given, ground {air.height[0]:.0f} m, "
+            f"Incoming air: {_given(inputs)}, ground {air.height[0]:.0f} m, "
             f"{air.pressure[0] / 100:.1f} hPa, {air.temperature[0] - 273.15:.1f} °C."
         ),
         f"Sites: {', '.join(site.name for site in inputs.sites) or 'none; the lee foot is used'}.",
@@ -62,3 +49,20 @@ def findings(inputs: Inputs) -> list[str]:
         lines += ["Quality control of the incoming air:", *(f"  {row}" for row in table_lines(inputs.findings))]
     lines += [f"Assumed: {text}" for text in (*air.notes, *line.notes)]
     return lines
+
+
+def _found(inputs: Inputs) -> list[str]:
+    """The direction of the line, if it was not given."""
+    if inputs.case.incoming.wind_from_deg is not None:
+        return []
+    direction = degrees(inputs.wind_from)
+    return [f"Wind: from {direction:.0f} degrees, the mean from the base of the range to 500 m above its crest."]
+
+
+def _given(inputs: Inputs) -> str:
+    """What of the column was given."""
+    origin = inputs.incoming.origin
+    levels = sum(kind in {"measured", "model", "surface report blended in"} for kind in origin)
+    stations = origin.count("station")
+    given = f"{stations} stations" if stations > 1 else "a station report"
+    return f"{levels} levels given" if levels else given

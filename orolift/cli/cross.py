@@ -15,7 +15,7 @@ from orolift.cli.options import QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file
 from orolift.errors import CaseError
 
 if TYPE_CHECKING:
-    from orolift.crossing.crossing import Crossing
+    from orolift.crossing.result import Crossing
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.results import Results
@@ -91,7 +91,17 @@ def work_out(case: str) -> Worked:
     inputs = read_inputs(case)
     log.debug("%s read", case)
     try:
-        crossing = cross(inputs.transect, inputs.incoming, inputs.sites, removed_share=inputs.case.rain.removed_share)
+        crossing = cross(
+            inputs.transect,
+            inputs.incoming,
+            inputs.sites,
+            inputs.settings,
+            lee=inputs.lee,
+            when=inputs.when,
+            normal=inputs.normal,
+            lowest_pass=inputs.case.terrain.pass_m,
+            crest_line=inputs.crest_line,
+        )
     except ValueError as error:
         error.args = (f"{case}: {error}",)
         raise

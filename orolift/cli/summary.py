@@ -10,13 +10,13 @@ from orolift.report.words import moment
 if TYPE_CHECKING:
     from collections.abc import Callable
 
-    from orolift.crossing.crossing import Crossing, LeeAir
+    from orolift.crossing.result import Crossing, LeeAir
     from orolift.report.quantities import Kind, Units
     from orolift.sources.case_model import Case
 
     Said = Callable[[float, Kind, int], str]
 
-MOST_SITES = 4
+MOST_SITES = 3
 """Sites shown on the terminal; the table and the report have all."""
 
 
@@ -49,8 +49,9 @@ def summary_lines(crossing: Crossing, case: Case, name: str, units: Units) -> li
         ),
         (
             f"Incoming  {said(float(air.temperature[0]), 'temperature', 1)} at {said(float(air.height[0]), 'height')}; "
-            f"{said(crossing.crest_wind, 'wind')} across the crest"
+            f"{said(crossing.flow.crest_wind, 'wind', 0)} across the crest"
         ),
+        f"Flow      {_flow(crossing, said)}",
         f"Cloud     {_cloud(crossing, said)}",
         f"Rain      {_rain(crossing, said)}",
     ]
@@ -61,29 +62,38 @@ def summary_lines(crossing: Crossing, case: Case, name: str, units: Units) -> li
 
 
 def _cloud(crossing: Crossing, said: Said) -> str:
-    if crossing.cloud_base is None:
+    cloud = crossing.cloud
+    if cloud.base is None:
         return "none forms: the air stays unsaturated all the way"
-    end = (
-        "reaches the end of the line"
-        if crossing.cloud_end is None
-        else f"ends at {said(crossing.cloud_end, 'height', -1)} in the lee"
+    end = "" if cloud.end is None else f", ends at {said(cloud.end, 'height', -1)} in the lee"
+    return f"base at {said(cloud.base, 'height', -1)} on the windward side{end}"
+
+
+def _flow(crossing: Crossing, said: Said) -> str:
+    flow = crossing.flow
+    if flow.blocked_top <= crossing.features.base + 1.0:
+        return f"{flow.regime} (N h/U {flow.nondimensional_height:.1f}); nothing is blocked"
+    return (
+        f"{flow.regime} (N h/U {flow.nondimensional_height:.1f}); blocked up to {said(flow.blocked_top, 'height', -1)} "
+        f"({said(flow.blocked_top_low, 'height', -1)} to {said(flow.blocked_top_high, 'height', -1)})"
     )
-    return f"base at {said(crossing.cloud_base, 'height', -1)} on the windward side, {end}"
 
 
 def _rain(crossing: Crossing, said: Said) -> str:
-    if crossing.condensed == 0.0:
+    water = crossing.water
+    if water.condensed == 0.0:
         return "none: nothing condenses"
     return (
-        f"{said(crossing.removed / crossing.vapour_in, 'share', 0)} of the vapour rains out "
-        f"({said(crossing.removed_share, 'share', 0)} of what condenses, as prescribed)"
+        f"{said(water.removed / water.vapour_in, 'share', 0)} of the crossing vapour rains out "
+        f"({said(water.removed / water.condensed, 'share', 0)} of what condenses, as prescribed)"
     )
 
 
 def _site(site: LeeAir, said: Said) -> str:
     change = said(site.warming, "temperature_change", 1)
+    source = "in the cold pool" if site.source_level is None else f"from {said(site.source_level, 'height', -1)}"
     return (
         f"{site.name[:24]} ({site.side})  {said(site.temperature, 'temperature', 1)}, "
         f"dew point {said(site.dew_point, 'temperature', 1)}, {said(site.relative_humidity, 'share', 0)}; "
-        f"{change} against the air before the range"
+        f"{change}; air {source}"
     )

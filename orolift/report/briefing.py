@@ -12,7 +12,7 @@ from orolift.report.quantities import Amount
 from orolift.report.words import Words, fraction_in_words, point_of_compass, sentence
 
 if TYPE_CHECKING:
-    from orolift.crossing.crossing import Crossing, LeeAir
+    from orolift.crossing.result import Crossing, LeeAir
 
 SAME = 0.05
 """Temperatures nearer than this [K] read alike at one decimal."""
@@ -91,24 +91,27 @@ def main_site(crossing: Crossing) -> LeeAir:
 
 def crest_index(crossing: Crossing) -> int:
     """Index of the crest along the transect."""
-    return int(np.argmin(np.abs(crossing.transect.distance - crossing.features.crest_distance)))
+    return int(np.argmin(np.abs(crossing.distance - crossing.features.crest_distance)))
 
 
 def starts_saturated(crossing: Crossing) -> bool:
     """Whether the air is in cloud from the upwind end on, to the rounding of heights."""
-    return crossing.cloud_base is not None and crossing.cloud_base - float(crossing.height[0, 0]) < ROUNDING
+    return crossing.cloud.base is not None and crossing.cloud.base - float(crossing.height[0, 0]) < ROUNDING
 
 
 def cloudy_to_the_end(crossing: Crossing) -> bool:
     """Whether cloud still touches the ground at the downwind end."""
-    return crossing.cloud_end_distance is not None and bool(
-        crossing.cloud_end_distance >= crossing.transect.distance[-1]
-    )
+    return crossing.cloud.end_distance is not None and bool(crossing.cloud.end_distance >= crossing.distance[-1])
 
 
 def fallen_share(crossing: Crossing) -> float:
     """Water that fell out, as a share of the vapour that came."""
-    return crossing.removed / crossing.vapour_in if crossing.vapour_in > 0.0 else 0.0
+    return crossing.water.removed / crossing.water.vapour_in if crossing.water.vapour_in > 0.0 else 0.0
+
+
+def prescribed_share(crossing: Crossing) -> Amount:
+    """Share of the condensed water that leaves, as prescribed."""
+    return Amount(float(np.asarray(crossing.settings.removed_share)), "share")
 
 
 def falling(crossing: Crossing) -> str:
@@ -139,9 +142,9 @@ def difference(amount: float, more: str, less: str, same: str) -> Words:
 
 def _cloud_and_rain(crossing: Crossing) -> Words:
     """Cloud base and what falls out, for headings."""
-    if crossing.cloud_base is None:
+    if crossing.cloud.base is None:
         return ("No cloud forms",)
-    start: Words = ("Cloud base at ", Amount(crossing.cloud_base, "height", -1))
+    start: Words = ("Cloud base at ", Amount(crossing.cloud.base, "height", -1))
     if starts_saturated(crossing):
         start = ("Cloud from the ground up",)
     return (*start, f"; {fraction_in_words(fallen_share(crossing))} of the vapour {falling(crossing)}")
@@ -161,9 +164,9 @@ def _windward(crossing: Crossing, bearing: float) -> Words:
         " to the crest at ",
         Amount(crossing.features.crest, "height"),
     )
-    if crossing.cloud_base is None:
+    if crossing.cloud.base is None:
         return (*start, "; it stays short of saturation, so there is no cloud and no rain from lifting.")
-    cloud: Words = ("; cloud forms at ", Amount(crossing.cloud_base, "height", -1))
+    cloud: Words = ("; cloud forms at ", Amount(crossing.cloud.base, "height", -1))
     if starts_saturated(crossing):
         cloud = ("; it arrives already saturated",)
     share = fallen_share(crossing)
@@ -202,18 +205,17 @@ def _lee(crossing: Crossing, site: LeeAir) -> Words:
 
 def _other_answer(crossing: Crossing, site: LeeAir) -> Words:
     gap = site.popular_picture - site.temperature
-    holds = "only if the low air really comes over the range, which is assumed here, not worked out."
     if site.side == "windward":
-        return (f"This holds {holds}",)
+        return ("This holds on the windward side.",)
     if abs(gap) < SAME:
-        why = "all the water that condenses falls out" if crossing.condensed > 0.0 else "nothing condenses"
-        return (f"The popular picture gives the same, because {why}; both hold {holds}",)
+        why = "all the water that condenses falls out" if crossing.water.condensed > 0.0 else "nothing condenses"
+        return (f"The popular picture gives the same, because {why}.",)
     return (
         "The popular picture, which lets all condensed water fall out, gives ",
         Amount(site.popular_picture, "temperature", 1),
         ", ",
         *difference(gap, "more", "less", ""),
-        f"; both hold {holds}",
+        ".",
     )
 
 
@@ -224,7 +226,11 @@ def _key_numbers(crossing: Crossing, site: LeeAir, freezing_level: float) -> tup
             "Falls out",
             Amount(fallen_share(crossing), "share"),
             "",
-            ("of the vapour that came; ", Amount(crossing.removed_share, "share"), " of what condenses, as prescribed"),
+            (
+                "of the vapour that came; ",
+                prescribed_share(crossing),
+                " of what condenses, as prescribed",
+            ),
         ),
         KeyNumber(
             f"{site.name}, temperature",
@@ -238,7 +244,7 @@ def _key_numbers(crossing: Crossing, site: LeeAir, freezing_level: float) -> tup
             "",
             ("dew point ", Amount(site.dew_point, "temperature", 1)),
         ),
-        KeyNumber("Wind across the crest", Amount(crossing.crest_wind, "wind"), "", _layer_words()),
+        KeyNumber("Wind across the crest", Amount(crossing.flow.crest_wind, "wind"), "", _layer_words()),
         _freezing_number(crossing, freezing_level),
     )
 
@@ -250,16 +256,16 @@ def _layer_words() -> Words:
 
 
 def _cloud_number(crossing: Crossing) -> KeyNumber:
-    if crossing.cloud_base is None:
+    if crossing.cloud.base is None:
         return KeyNumber("Cloud base", None, "no cloud", ("the air stays short of saturation",))
     if starts_saturated(crossing):
         return KeyNumber("Cloud base", None, "at the ground", ("the air is saturated from the upwind end on",))
     remark: Words = ("on the windward slope",)
     if cloudy_to_the_end(crossing):
         remark = ("on the windward slope; cloud to the downwind end",)
-    elif crossing.cloud_end is not None:
-        remark = ("on the windward slope; cloud ends at ", Amount(crossing.cloud_end, "height", -1), " in the lee")
-    return KeyNumber("Cloud base", Amount(crossing.cloud_base, "height", -1), "", remark)
+    elif crossing.cloud.end is not None:
+        remark = ("on the windward slope; cloud ends at ", Amount(crossing.cloud.end, "height", -1), " in the lee")
+    return KeyNumber("Cloud base", Amount(crossing.cloud.base, "height", -1), "", remark)
 
 
 def _freezing_number(crossing: Crossing, level: float) -> KeyNumber:

@@ -6,13 +6,13 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from orolift.constants import MELTING_POINT
-from orolift.report.briefing import crest_index, starts_saturated
+from orolift.report.briefing import crest_index, prescribed_share, starts_saturated
 from orolift.report.quantities import Amount
 
 if TYPE_CHECKING:
     from datetime import datetime
 
-    from orolift.crossing.crossing import Crossing
+    from orolift.crossing.result import Crossing
     from orolift.report.words import Words
 
 WEAK_WIND = 5.0
@@ -25,12 +25,12 @@ _NO_WARNING = (
     "licensed practice decide."
 )
 _MAY_BE_BLOCKED = (
-    "The surface air is assumed to follow the terrain whatever its stability. Stable low air is often blocked or goes "
-    "round the range; then the lee air comes from higher up and is usually warmer and drier than shown here."
+    "How much of the low air is blocked, and how much of it goes round, is an estimate with a wide range: the two "
+    "ends, no blocking and full blocking, are shown beside the answer."
 )
 _NOT_WORKED_OUT = (
-    "Not worked out here: cold air pooled in the lee, sun and night cooling, mixing, lee wind and gusts, mountain "
-    "waves, and how far rain drifts. No range of uncertainty is attached to the numbers."
+    "Not worked out here: how far rain drifts with the wind, a map, and the range that uncertain input gives the "
+    "numbers."
 )
 ALWAYS: tuple[Words, ...] = ((_NO_WARNING,), (_MAY_BE_BLOCKED,), (_NOT_WORKED_OUT,))
 """Cautions of every report in this form of the computation."""
@@ -74,7 +74,7 @@ def cautions(crossing: Crossing, freezing_level: float, valid_time: datetime | N
     if valid_time is None:
         here = (*here, ("The case names no valid time.",))
     return Cautions(
-        heading=("An estimate; the low air may not come over at all",),
+        heading=("An estimate, to be judged by a trained reader",),
         always=ALWAYS,
         here=here,
         notes=tuple(dict.fromkeys(crossing.notes)),
@@ -83,11 +83,11 @@ def cautions(crossing: Crossing, freezing_level: float, valid_time: datetime | N
 
 def _wind_and_rise(crossing: Crossing) -> tuple[Words, ...]:
     out: list[Words] = []
-    if crossing.crest_wind < WEAK_WIND:
+    if crossing.flow.crest_wind < WEAK_WIND:
         out.append(
             (
                 "The wind across the crest is weak (",
-                Amount(crossing.crest_wind, "wind", 1),
+                Amount(crossing.flow.crest_wind, "wind", 1),
                 "): low air is then likely to be blocked.",
             )
         )
@@ -108,12 +108,12 @@ def _wind_and_rise(crossing: Crossing) -> tuple[Words, ...]:
 
 
 def _water(crossing: Crossing, freezing_level: float) -> tuple[Words, ...]:
-    if crossing.cloud_base is None:
+    if crossing.cloud.base is None:
         return ()
     out: list[Words] = [
         (
             "What share of the condensed water leaves (",
-            Amount(crossing.removed_share, "share"),
+            prescribed_share(crossing),
             ") is prescribed, not worked out; it decides how warm and dry the lee is.",
         )
     ]

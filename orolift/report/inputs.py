@@ -10,10 +10,11 @@ import numpy as np
 
 from orolift.air.column import column_vapour, interpolated
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.report.briefing import prescribed_share
 from orolift.report.quantities import Amount
 
 if TYPE_CHECKING:
-    from orolift.crossing.crossing import Crossing
+    from orolift.crossing.result import Crossing
     from orolift.report.words import Words
 
 LEVELS = (500.0, 1000.0, 1500.0, 2000.0, 3000.0, 4000.0, 5000.0, 7000.0, 9000.0)
@@ -120,10 +121,10 @@ def _air_facts(crossing: Crossing, ground: Level, freezing_level: float) -> Fact
         Fact("Dew point", (ground.dew_point,)),
         Fact("Humidity", (ground.relative_humidity, " over liquid water")),
         Fact("Wind", (ground.wind, " from ", ground.wind_from)),
-        Fact("Wind across the crest", (Amount(crossing.crest_wind, "wind", 1),)),
+        Fact("Wind across the crest", (Amount(crossing.flow.crest_wind, "wind", 1),)),
         Fact("Freezing level", (Amount(freezing_level, "height"),)),
         Fact("Vapour in the column", (Amount(float(column_vapour(crossing.incoming)), "water_depth", 1), " of water")),
-        Fact("Vapour carried along the line", (Amount(crossing.column_vapour_flux, "vapour_flux"),)),
+        Fact("Vapour carried along the line", (Amount(crossing.water.column_vapour_flux, "vapour_flux"),)),
     )
     return FactGroup("Incoming air (at its ground)", facts)
 
@@ -150,7 +151,10 @@ def _options(crossing: Crossing) -> FactGroup:
     return FactGroup(
         "Options",
         (
-            Fact("Condensed water that leaves", (Amount(crossing.removed_share, "share"), ", prescribed, as it forms")),
+            Fact(
+                "Condensed water that leaves",
+                (prescribed_share(crossing), ", prescribed, as it forms"),
+            ),
             Fact(
                 "Freezing of cloud",
                 (

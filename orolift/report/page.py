@@ -22,7 +22,7 @@ from orolift.report.words import Words, moment, point_of_compass
 if TYPE_CHECKING:
     from datetime import datetime
 
-    from orolift.crossing.crossing import Crossing
+    from orolift.crossing.result import Crossing
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.path import PathDrawing
     from orolift.report.figures.section import SectionDrawing

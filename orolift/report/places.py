@@ -20,7 +20,7 @@ from orolift.report.briefing import (
 from orolift.report.quantities import Amount
 
 if TYPE_CHECKING:
-    from orolift.crossing.crossing import Crossing, LeeAir
+    from orolift.crossing.result import Crossing, LeeAir
     from orolift.report.words import Words
 
 
@@ -77,19 +77,19 @@ def journey(crossing: Crossing) -> Journey:
 def section_heading(crossing: Crossing) -> Words:
     """What the section shows, as a conclusion."""
     climb = crossing.features.crest - float(crossing.height[0, 0])
-    if crossing.cloud_base is None:
+    if crossing.cloud.base is None:
         return ("The air climbs ", Amount(climb, "height", -1), " to the crest and stays clear")
     if starts_saturated(crossing):
         start: Words = ("Cloud covers the whole windward slope",)
     else:
         start = (
             "Cloud covers the upper ",
-            Amount(crossing.features.crest - crossing.cloud_base, "height", -1),
+            Amount(crossing.features.crest - crossing.cloud.base, "height", -1),
             " of the windward slope",
         )
     if cloudy_to_the_end(crossing):
         return (*start, " and all of the lee")
-    down = 0.0 if crossing.cloud_end is None else crossing.features.crest - crossing.cloud_end
+    down = 0.0 if crossing.cloud.end is None else crossing.features.crest - crossing.cloud.end
     if down < ROUNDING:
         return (*start, " and ends at the crest")
     return (*start, " and reaches ", Amount(down, "height", -1), " down the lee side")
@@ -144,31 +144,28 @@ def _size(change: float) -> Amount:
 
 
 def _balance(crossing: Crossing) -> Words:
-    came = Amount(crossing.vapour_in, "mixing_ratio", 2)
-    if crossing.condensed <= 0.0:
+    came = Amount(crossing.water.vapour_in, "vapour_flux")
+    if crossing.water.condensed <= 0.0:
         return ("All of the ", came, " of vapour that came goes on, for nothing condenses.")
-    left = float(crossing.air.vapour[-1, 0] + crossing.air.cloud[-1, 0])
     return (
         "Of ",
         came,
         " of vapour that came, ",
-        Amount(crossing.condensed, "mixing_ratio", 2),
+        Amount(crossing.water.condensed, "vapour_flux"),
         " condensed on the way, ",
-        Amount(crossing.removed, "mixing_ratio", 2),
-        f" of it {falling(crossing)}, and ",
-        Amount(left, "mixing_ratio", 2),
-        " of water goes on at the downwind end.",
+        Amount(crossing.water.removed, "vapour_flux"),
+        f" of it {falling(crossing)}.",
     )
 
 
 def _places(crossing: Crossing) -> tuple[Place, ...]:
     shape = crossing.features
-    distance = crossing.transect.distance
+    distance = crossing.distance
     marks: list[tuple[float, str]] = [(float(distance[0]), "Upwind end"), (shape.crest_distance, "Crest")]
-    if crossing.cloud_base_distance is not None and not starts_saturated(crossing):
-        marks.append((crossing.cloud_base_distance, "Cloud base"))
-    if crossing.cloud_end_distance is not None and not cloudy_to_the_end(crossing):
-        marks.append((crossing.cloud_end_distance, "End of cloud"))
+    if crossing.cloud.base_distance is not None and not starts_saturated(crossing):
+        marks.append((crossing.cloud.base_distance, "Cloud base"))
+    if crossing.cloud.end_distance is not None and not cloudy_to_the_end(crossing):
+        marks.append((crossing.cloud.end_distance, "End of cloud"))
     marks.append((shape.lee_foot_distance, "Lee foot"))
     if shape.lee_foot_distance < distance[-1]:
         marks.append((float(distance[-1]), "Downwind end"))
@@ -177,7 +174,7 @@ def _places(crossing: Crossing) -> tuple[Place, ...]:
 
 def _place(crossing: Crossing, at: float, name: str) -> Place:
     """The lowest air at a distance, on straight lines between the points of the transect."""
-    air, x = crossing.air, crossing.transect.distance
+    air, x = crossing.air, crossing.distance
     pressure, temperature, vapour, cloud, dew_point, entropy, height, fallen = (
         float(np.interp(at, x, values[:, 0]))
         for values in (

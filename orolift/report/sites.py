@@ -10,7 +10,7 @@ from orolift.report.quantities import Amount
 from orolift.report.words import Words, counted, sentence
 
 if TYPE_CHECKING:
-    from orolift.crossing.crossing import Crossing, LeeAir
+    from orolift.crossing.result import Crossing, LeeAir
 
 TELLING = 2.0
 """Answers further apart than this [K] are explained; a judgement."""

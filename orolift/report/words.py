@@ -17,6 +17,7 @@ _FRACTIONS = (
     (0.05, "a twentieth"),
     (0.1, "a tenth"),
     (1.0 / 7.0, "a seventh"),
+    (1.0 / 6.0, "a sixth"),
     (0.2, "a fifth"),
     (0.25, "a quarter"),
     (1.0 / 3.0, "a third"),

@@ -26,7 +26,19 @@ from orolift.sources.case_table import (
 from orolift.sources.incoming_model import Incoming, Station
 from orolift.sources.units import UNITS
 
-__all__ = ["Case", "Incoming", "Place", "Rain", "SiteTable", "Station", "Terrain", "TransectTable"]
+__all__ = [
+    "Case",
+    "FlowTable",
+    "HeatTable",
+    "Incoming",
+    "LeeTable",
+    "Place",
+    "Rain",
+    "SiteTable",
+    "Station",
+    "Terrain",
+    "TransectTable",
+]
 
 
 class Place(Table):
@@ -54,6 +66,7 @@ class Terrain(Table):
     )
     ridge_km_m: list[list[float]] | None = Field(default=None, description="ridge by hand: [km, m] each")
     ridge_file: Name | None = Field(default=None, description="ridge by hand as CSV: distance_km,elevation_m")
+    pass_m: Elevation | None = Field(default=None, description="lowest pass of the range, if known")
     drawn_from_deg: Bearing | None = Field(
         default=None, description="bearing a hand-entered ridge is drawn from, default wind_from_deg"
     )
@@ -92,6 +105,49 @@ class TransectTable(Table):
     swath_km: Annotated[float, Field(ge=0.0, le=100.0)] = 10.0
 
 
+class FlowTable(Table):
+    """How the air meets the range."""
+
+    going_round_share: Share | None = Field(
+        default=None,
+        description="share of the low lee air that went round; default: from the gaps of the range, else 0.4",
+    )
+    range_normal_deg: Bearing | None = Field(
+        default=None, description="bearing across the range, either way; default: from the raster, else the line's"
+    )
+
+
+class LeeTable(Table):
+    """What is known of the air that lies in the lee."""
+
+    temperature_c: Annotated[float, Field(ge=-80.0, le=56.0)] | None = Field(
+        default=None, description="at the lee foot, before the crossing air arrives"
+    )
+    pool_top_m: Elevation | None = Field(default=None, description="top of the cold air, above sea level")
+    sounding_file: Name | None = Field(default=None, description="sounding of the lee, CSV as for [incoming]")
+    mixing_depth_m: Annotated[float, Field(ge=10.0, le=1000.0)] = Field(
+        default=100.0, description="depth over which the air of a site is mixed"
+    )
+    roughness_m: Annotated[float, Field(ge=0.0001, le=2.0)] = Field(
+        default=0.03, description="roughness length for the wind at 10 m: 0.03 open country, 1 forest or town"
+    )
+
+    @model_validator(mode="after")
+    def _one_lee(self) -> LeeTable:
+        given = [key for key in ("temperature_c", "pool_top_m", "sounding_file") if getattr(self, key) is not None]
+        if len(given) > 1:
+            raise ValueError(f"{' and '.join(given)} say the same thing; keep one of them")
+        return self
+
+
+class HeatTable(Table):
+    """Heat from the ground of the lee."""
+
+    surface_heat: bool = Field(
+        default=True, description="by sun and night, where valid_time and a position are known; false leaves it out"
+    )
+
+
 class Rain(Table):
     """How the condensed water leaves."""
 
@@ -124,7 +180,10 @@ class Case(Table):
     terrain: Terrain
     transect: TransectTable | None = None
     incoming: Incoming
+    flow: FlowTable = FlowTable()
     rain: Rain = Rain()
+    lee: LeeTable = LeeTable()
+    heat: HeatTable = HeatTable()
     site: list[SiteTable] = Field(default_factory=list)
 
     @field_validator("valid_time")

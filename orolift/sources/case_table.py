@@ -42,15 +42,26 @@ class Table(BaseModel):
                 continue
             if wanted in out:
                 raise ValueError(f"{wanted} and {key} say the same thing; keep one of them")
-            out[wanted] = value
-            if is_number(value):
-                parts = suffix_of(key)
-                target = suffix_of(wanted)
-                if parts is not None and target is not None:
-                    out[wanted] = converted(float(value), parts[1], target[1])
-                if isinstance(info.context, dict):
-                    info.context[(cls.__name__, wanted)] = f"{key} = {value}"
+            out[wanted] = _converted(value, key, wanted)
+            if is_number(value) and isinstance(info.context, dict):
+                info.context[(cls.__name__, wanted)] = f"{key} = {value}"
         return out
+
+
+def _converted(value: Any, key: str, wanted: str) -> Any:
+    """Value given under `key` in the unit of `wanted`; of pairs, as a ridge has, the second number."""
+    given, usual = suffix_of(key), suffix_of(wanted)
+    if given is None or usual is None:
+        return value
+    if is_number(value):
+        return converted(float(value), given[1], usual[1])
+    if isinstance(value, list):
+        return [[*pair[:-1], _converted(pair[-1], key, wanted)] if _is_pair(pair) else pair for pair in value]
+    return value
+
+
+def _is_pair(value: object) -> bool:
+    return isinstance(value, list) and len(value) == 2
 
 
 def exactly_one(table: Table, keys: tuple[str, ...], what: str) -> None:

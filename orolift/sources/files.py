@@ -80,9 +80,8 @@ def existing_file(path: str | Path, where: str, folder: Path | None = None) -> P
             raise DataFileError(f"{where}: {full} is a folder; name a file in it.")
         size = full.stat().st_size
     except (OSError, ValueError) as error:
-        raise MissingFileError(
-            f"{where}: {full} cannot be found ({_reason(error)}). Paths in a case are relative to the case file."
-        ) from error
+        hint = "Paths in a case are relative to the case file." if folder is not None else "Check its name and folder."
+        raise MissingFileError(f"{where}: {full} cannot be found ({_reason(error)}). {hint}") from error
     if size == 0:
         raise DataFileError(f"{where}: {full} is empty.")
     return full

@@ -241,20 +241,11 @@ def _rung(rung: LadderRung, table: Incoming, where: str) -> LadderStation:
 
 def _column(table: Incoming, folder: Path, valid: datetime | None) -> IncomingReading:
     """A sounding or model column, with a fresh surface report blended in where one is given."""
-    sounding, what = _sounding(table, folder, valid)
-    vapour, notes = _vapour(sounding)
-    air = air_from_levels(
-        sounding.height,
-        sounding.pressure,
-        sounding.temperature,
-        vapour,
-        sounding.eastward_wind,
-        sounding.northward_wind,
-        elevation=sounding.elevation,
-    )
+    what, sounding = _sounding(table, folder, valid)
+    key = "sounding_file" if table.model_file is None else "model_file"
+    air = air_from_sounding(sounding, f"[incoming] {key}")
     if table.model_file is not None:
         air = replace(air, origin=tuple("model" if kind == "measured" else kind for kind in air.origin))
-    air = replace(air, notes=(*sounding.notes, *notes, *air.notes))
     at = table.sounding_at
     seen = Observation(
         what,
@@ -274,31 +265,104 @@ def _column(table: Incoming, folder: Path, valid: datetime | None) -> IncomingRe
     return IncomingReading(lambda _crest: air, tuple(findings), tuple(observations))
 
 
-def _sounding(table: Incoming, folder: Path, valid: datetime | None) -> tuple[Sounding, str]:
-    """Levels made whole, and what they are called in findings."""
+def _sounding(table: Incoming, folder: Path, valid: datetime | None) -> tuple[str, Sounding]:
+    """What they are called in findings, and levels made whole."""
     if table.model_file is not None:
         from orolift.sources.model_column import read_model_column
 
-        at = table.model_at
+        place = table.model_at
         levels = read_model_column(
             table.model_file,
             "[incoming] model_file",
             folder,
-            longitude=None if at is None else at.longitude,
-            latitude=None if at is None else at.latitude,
-            time=valid if at is None or at.time is None else at.time,
-            method="nearest" if at is None else at.method,
+            longitude=None if place is None else place.longitude,
+            latitude=None if place is None else place.latitude,
+            time=valid if place is None or place.time is None else place.time,
+            method="nearest" if place is None else place.method,
         )
-        return sounding_from_levels(levels), "model column"
+        return "model column", sounding_from_levels(levels)
+    at = table.sounding_at
+    return "sounding", read_any_sounding(
+        str(table.sounding_file),
+        "[incoming] sounding_file",
+        folder,
+        elevation=table.sounding_elevation_m,
+        station=None if at is None else at.station,
+        near=valid if at is None or at.observed_time is None else at.observed_time,
+    )
+
+
+def read_any_sounding(
+    path: str,
+    where: str,
+    folder: Path | None,
+    *,
+    elevation: float | None = None,
+    station: str | None = None,
+    near: datetime | None = None,
+) -> Sounding:
+    """Sounding of a file in any of the forms that are read, made whole.
+
+    Parameters
+    ----------
+    path, where, folder
+        As in `orolift.sources.files.existing_file`.
+    elevation : float or None [m above sea level]
+        Of the ground; it goes before what the file says.
+    station : str or None
+        Where the file holds several soundings.
+    near : datetime or None
+        With a time zone: when the sounding was, roughly.
+
+    Returns
+    -------
+    Sounding
+
+    Raises
+    ------
+    OroliftError
+        If it cannot be read or used.
+    """
     from orolift.sources.sounding_file import read_sounding_levels
 
-    where = table.sounding_at
-    near = valid if where is None or where.observed_time is None else where.observed_time
-    station = None if where is None else where.station
-    levels = read_sounding_levels(
-        str(table.sounding_file), "[incoming] sounding_file", folder, station=station, near=near
+    levels = read_sounding_levels(path, where, folder, station=station, near=near)
+    return sounding_from_levels(levels, elevation=elevation)
+
+
+def air_from_sounding(sounding: Sounding, where: str) -> IncomingAir:
+    """Column of a sounding.
+
+    Parameters
+    ----------
+    sounding : Sounding
+    where : str
+        Key, for messages.
+
+    Returns
+    -------
+    IncomingAir
+
+    Raises
+    ------
+    CaseError
+        If nothing says how high its ground is.
+    """
+    if sounding.height is None and sounding.ground is None:
+        raise CaseError(
+            f"{where}: the file gives no height of its lowest level. "
+            "Add a column height_m, or give sounding_elevation_m, the height of its ground."
+        )
+    vapour, notes = _vapour(sounding)
+    air = air_from_levels(
+        sounding.height,
+        sounding.pressure,
+        sounding.temperature,
+        vapour,
+        sounding.eastward_wind,
+        sounding.northward_wind,
+        elevation=sounding.ground if sounding.height is None else None,
     )
-    return sounding_from_levels(levels, elevation=None if where is None else where.elevation_m), "sounding"
+    return replace(air, notes=(*sounding.notes, *notes, *air.notes))
 
 
 def _vapour(sounding: Sounding) -> tuple[NDArray[np.float64], tuple[str, ...]]:

@@ -9,7 +9,7 @@ from pydantic import Field, field_validator, model_validator
 
 from orolift.sources.case_table import Bearing, Elevation, Latitude, Longitude, Name, Table, exactly_one, together
 
-Temperature = Annotated[float, Field(ge=-80.0, le=60.0)]
+Temperature = Annotated[float, Field(ge=-80.0, le=56.0)]
 DewPoint = Annotated[float, Field(ge=-100.0, le=45.0)]
 Humidity = Annotated[float, Field(gt=0.0, le=100.0)]
 Pressure = Annotated[float, Field(ge=300.0, le=1090.0)]
@@ -100,7 +100,6 @@ class SoundingAt(Observed):
     """What a sounding file does not say."""
 
     station: Name | None = Field(default=None, description="number or call sign, where the file holds several")
-    elevation_m: Elevation | None = Field(default=None, description="of the ground; default: what the file says")
 
 
 class ModelAt(Table):
@@ -139,6 +138,9 @@ class Incoming(Table):
     sounding_file: Name | None = Field(
         default=None, description="CSV with units in the column names, TEMP text or BUFR"
     )
+    sounding_elevation_m: Elevation | None = Field(
+        default=None, description="ground of a sounding that gives no heights; goes before what the file says"
+    )
     sounding_at: SoundingAt | None = None
     metar: MetarTable | None = None
     model_file: Name | None = Field(default=None, description="NetCDF with CF names")
@@ -166,6 +168,7 @@ class Incoming(Table):
                 if getattr(self, key) is not None:
                     raise ValueError(f"{key} corrects a sounding_file or model_file, and none is given")
         self._belongs("sounding_at", "sounding_file")
+        self._belongs("sounding_elevation_m", "sounding_file")
         self._belongs("model_at", "model_file")
         if self.surface_station is not None and self.surface_metar is not None:
             raise ValueError("surface_station and surface_metar say the same thing; keep one of them")

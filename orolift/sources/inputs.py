@@ -11,43 +11,36 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.air.ground_layer import NO_GROUND_LAYER, GroundLayer, ground_layer
-from orolift.air.wind_layer import barrier_wind, turning_note
-from orolift.crossing.crossing import Site
+from orolift.crossing.pool import Lee
+from orolift.crossing.result import Site, When
+from orolift.crossing.settings import Settings
 from orolift.errors import CaseError, OroliftError
 from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
 from orolift.sources.files import read_text
-from orolift.sources.incoming import read_incoming
+from orolift.sources.incoming import air_from_sounding, read_any_sounding, read_incoming
 from orolift.sources.quality import Finding, cautions
-from orolift.sources.representative import representative_findings
 from orolift.sources.ridge_csv import read_ridge
 from orolift.sources.units import to_si
-from orolift.terrain.features import Features, features
+from orolift.sources.wind_line import Line, line_along_wind, turning_caution, where_observed
+from orolift.terrain.features import features
+from orolift.terrain.range_normal import RangeNormal
 from orolift.terrain.ridge import ridge_transect
-from orolift.terrain.transect import Transect, transect_elevation
+from orolift.terrain.transect import transect_elevation
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
-
     from orolift.air.column import IncomingAir
-    from orolift.sources.case_model import Case, Place, Terrain
-    from orolift.sources.incoming import IncomingReading, Observation
+    from orolift.crossing.solve import CrestLine
+    from orolift.sources.case_model import Case, LeeTable, Place, Terrain
     from orolift.sources.raster import MapPoint
+    from orolift.terrain.transect import Transect
 
 ELEVATION_CONTRADICTION = 150.0
 """A site's elevation this far from the terrain [m] gets a remark (a judgement)."""
 OFF_LINE = 5000.0
 """A site this far beside the transect [m], half the default swath, gets a remark (a judgement)."""
-FIRST_CREST = 2500.0
-"""Depth above the ground of the column [m] whose mean wind begins the search for the line along the wind (a guess)."""
-SETTLED = math.radians(1.0)
-"""Turn of that wind [rad] below which the line is not cut again."""
-MOST_CUTS = 4
 OBLIQUE_DEG = 45.0
 """Angle between wind and line beyond which it is remarked (a judgement)."""
-
-Line = tuple[Transect, tuple[Site, ...], tuple[float | None, ...]]
-"""A transect, its sites and their distances across it."""
 
 
 @dataclass(frozen=True)
@@ -64,6 +57,13 @@ class Inputs:
     transect : Transect
     incoming : IncomingAir
     sites : tuple of Site
+    settings : Settings
+    lee : Lee
+    when : When
+    normal : RangeNormal or None
+        Of a raster, or as given.
+    crest_line : CrestLine or None
+        Of a raster.
     offsets : tuple of float or None [m]
         Distance of each site across the transect; None for a hand-entered ridge.
     cautions : tuple of str
@@ -82,6 +82,11 @@ class Inputs:
     transect: Transect
     incoming: IncomingAir
     sites: tuple[Site, ...]
+    settings: Settings
+    lee: Lee
+    when: When
+    normal: RangeNormal | None
+    crest_line: CrestLine | None
     offsets: tuple[float | None, ...]
     cautions: tuple[str, ...]
     findings: tuple[Finding, ...]
@@ -126,77 +131,93 @@ def _inputs(case: Case, path: Path, text: str) -> Inputs:
         transect = _ridge(case.terrain, folder, wind_from)
         return transect, *_sites_on_ridge(case, transect)
 
-    if case.incoming.wind_from_deg is None:
-        wind_from, (transect, sites, offsets) = _line_along_wind(reading, line)
-    else:
-        wind_from = math.radians(case.incoming.wind_from_deg)
-        transect, sites, offsets = line(wind_from)
+    wind_from, (transect, sites, offsets) = line_along_wind(reading, line, case.incoming.wind_from_deg)
     shape = features(transect)
     incoming = reading.column(shape.crest)
-    findings = [*reading.findings, *_where_observed(case, folder, reading.observations, transect, shape)]
-    layer = ground_layer(incoming, shape.crest) if incoming.origin[1:2] != ("lapse rate",) else NO_GROUND_LAYER
-    turning = turning_note(barrier_wind(incoming, shape.base, shape.crest))
-    remarks = _remarks(case, transect, sites, offsets, wind_from)
-    if turning is not None:
-        remarks.append(turning)
+    findings = (*reading.findings, *where_observed(case, folder, reading.observations, transect, shape))
+    normal, crest_line = _range(case, folder, transect)
     return Inputs(
-        case,
-        path,
-        text,
-        transect,
-        incoming,
-        sites,
-        offsets,
-        (*remarks, *cautions(findings)),
-        tuple(findings),
-        wind_from,
-        layer,
+        case=case,
+        path=path,
+        text=text,
+        transect=transect,
+        incoming=incoming,
+        sites=sites,
+        settings=_settings(case),
+        lee=_lee(case.lee, folder, case.valid_time),
+        when=_when(case, transect),
+        normal=normal,
+        crest_line=crest_line,
+        offsets=offsets,
+        cautions=(
+            *_remarks(case, transect, sites, offsets, wind_from),
+            *turning_caution(incoming, shape),
+            *cautions(findings),
+        ),
+        findings=findings,
+        wind_from=wind_from,
+        ground_layer=NO_GROUND_LAYER if "lapse rate" in incoming.origin else ground_layer(incoming, shape.crest),
     )
 
 
-def _line_along_wind(reading: IncomingReading, line: Callable[[float], Line]) -> tuple[float, Line]:
-    """Direction of the mean wind from base to 500 m above the crest, and the line along it.
-
-    Base and crest depend on the line: it is cut again until the direction stays.
-    """
-    first = reading.column(FIRST_CREST)
-    ground = float(first.height[0])
-    wind_from = float(barrier_wind(first, ground, ground + FIRST_CREST).from_direction)
-    for _ in range(MOST_CUTS):
-        found = line(wind_from)
-        shape = features(found[0])
-        wind = barrier_wind(reading.column(shape.crest), shape.base, shape.crest)
-        turned = (float(wind.from_direction) - wind_from + math.pi) % (2.0 * math.pi) - math.pi
-        if abs(turned) < SETTLED:
-            break
-        wind_from = float(wind.from_direction)
-    return wind_from, found
+def _settings(case: Case) -> Settings:
+    return Settings(
+        removed_share=case.rain.removed_share,
+        going_round_share=case.flow.going_round_share,
+        mixing_depth=case.lee.mixing_depth_m,
+        roughness=case.lee.roughness_m,
+        freezing=case.rain.freezing,
+        surface_heat=case.heat.surface_heat,
+    )
 
 
-def _where_observed(
-    case: Case, folder: Path, observations: tuple[Observation, ...], transect: Transect, shape: Features
-) -> list[Finding]:
-    """What place and elevation of the observations say about their use."""
-    found: list[Finding] = []
-    for one in observations:
-        distance = offset = None
-        if case.terrain.elevation_file is None:
-            distance = None if one.ridge_distance is None else one.ridge_distance - transect.origin
-        elif one.longitude is not None and one.latitude is not None:
-            distance, offset = _position(case, folder, transect, one.longitude, one.latitude)
-        found += representative_findings(
-            one.what, transect, shape, one.elevation, distance=distance, offset=offset, lowest=one.lowest
-        )
-    return found
+def _lee(table: LeeTable, folder: Path, near: datetime | None) -> Lee:
+    air = None
+    if table.sounding_file is not None:
+        where = "[lee] sounding_file"
+        air = air_from_sounding(read_any_sounding(table.sounding_file, where, folder, near=near), where)
+    temperature = None if table.temperature_c is None else to_si(table.temperature_c, "c")
+    return Lee(temperature=temperature, pool_top=table.pool_top_m, air=air)
 
 
-def _position(case: Case, folder: Path, transect: Transect, longitude: float, latitude: float) -> tuple[float, float]:
-    """Distance along and across the transect of a place."""
-    from orolift.sources.raster import MapPoint, site_positions
+def _when(case: Case, transect: Transect) -> When:
+    """Time, and the position of the crest, as far as they are known."""
+    time = None if case.valid_time is None else case.valid_time.timestamp()
+    if transect.longitude is None or transect.latitude is None:
+        return When(time, case.terrain.longitude, case.terrain.latitude)
+    return When(time, *_crest_position(transect))
 
-    file, unit = str(case.terrain.elevation_file), case.terrain.elevation_unit
-    at = site_positions(file, transect, [MapPoint(longitude, latitude)], unit=unit, folder=folder)
-    return float(at.distance[0]), float(at.offset[0])
+
+def _crest_position(transect: Transect) -> tuple[float, float]:
+    if transect.longitude is None or transect.latitude is None:
+        raise CaseError("the ridge has no position")
+    i = int(np.argmin(np.abs(transect.distance - features(transect).crest_distance)))
+    return float(transect.longitude[i]), float(transect.latitude[i])
+
+
+def _range(case: Case, folder: Path, transect: Transect) -> tuple[RangeNormal | None, CrestLine | None]:
+    """Range normal and crest line: given, or read off the raster around the crest."""
+    downwind = transect.bearing or 0.0
+    given = None
+    if case.flow.range_normal_deg is not None:
+        bearing = math.radians(case.flow.range_normal_deg)
+        # a normal may be given either way; the one nearer to downwind counts
+        bearing += math.pi if math.cos(bearing - downwind) < 0.0 else 0.0
+        given = RangeNormal(bearing % (2.0 * math.pi), 1.0)
+    if case.terrain.elevation_file is None:
+        return given, None
+    from orolift.sources.raster_range import range_of_raster
+
+    found, line = range_of_raster(
+        case.terrain.elevation_file,
+        *_crest_position(transect),
+        downwind,
+        normal=None if given is None else given.bearing,
+        unit=case.terrain.elevation_unit,
+        folder=folder,
+        where="[terrain] elevation_file",
+    )
+    return given or found, line
 
 
 def _ridge(terrain: Terrain, folder: Path, wind_from: float) -> Transect:

@@ -24,7 +24,7 @@ AUTOCONVECTIVE = float(GRAVITY / R_DRY)
 SPIKE = 3.0
 """Least departure of a temperature from its neighbours [K] to be a spike: a judgement, many times a sensor's error."""
 UNBELIEVABLE = 15.0e-3
-"""Fall of temperature [K m-1] that no layer between two reported levels keeps, once it is this far off (a judgement)."""
+"""Fall of temperature [K m-1] that no layer between reported levels keeps, once one is this far off: a judgement."""
 LARGE_SPIKE = 6.0
 """Departure [K] that goes with it: a judgement."""
 HOT_GROUND = 50.0

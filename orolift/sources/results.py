@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import platform
+from dataclasses import asdict
 from importlib import metadata
 from typing import TYPE_CHECKING, Literal
 
@@ -15,7 +16,7 @@ from orolift.constants import MELTING_POINT
 from orolift.sources.units import UNITS
 
 if TYPE_CHECKING:
-    from orolift.crossing.crossing import Crossing, LeeAir
+    from orolift.crossing.result import Crossing, LeeAir
     from orolift.sources.case_model import Case
 
 SCHEMA_VERSION = "1"
@@ -179,7 +180,6 @@ def results_of(crossing: Crossing, case: Case) -> Results:
     -------
     Results
     """
-    rained = crossing.condensed > 0.0
     return Results(
         schema_version=SCHEMA_VERSION,
         orolift=Program(
@@ -194,28 +194,8 @@ def results_of(crossing: Crossing, case: Case) -> Results:
         ),
         incoming=_incoming(crossing),
         terrain=_terrain(crossing),
-        flow=FlowBlock(
-            nondimensional_height=None,
-            regime=None,
-            dividing_height_m=None,
-            blocked_top_m=None,
-            blocked_top_range_m=None,
-            going_round_share=None,
-            source_level_m=None,
-            cloud_base_m=crossing.cloud_base,
-            breaks_through=None,
-            wave_breaking=None,
-            pressure_difference_hpa=None,
-        ),
-        rain=RainBlock(
-            rain_out_share=crossing.removed / crossing.condensed if rained else None,
-            drying_ratio=crossing.removed / crossing.vapour_in,
-            drying_ratio_full_column=None,
-            windward_share=None,
-            peak_mm_per_h=None,
-            peak_km=None,
-            total_kg_per_m_s=None,
-        ),
+        flow=_flow(crossing),
+        rain=_rain(crossing),
         lee=[_lee(site, crossing) for site in crossing.lee],
         fire=[],
         flags=[],
@@ -233,8 +213,8 @@ def _incoming(crossing: Crossing) -> IncomingBlock:
         dew_point_c=celsius(float(dew_point_from_mixing_ratio(pressure, vapour))),
         relative_humidity_percent=100.0 * float(relative_humidity_from_mixing_ratio(pressure, temperature, vapour)),
         wind_ms=float((air.eastward_wind[0] ** 2 + air.northward_wind[0] ** 2) ** 0.5),
-        cross_range_wind_ms=crossing.crest_wind,
-        stability_per_s=None,
+        cross_range_wind_ms=crossing.flow.crest_wind,
+        stability_per_s=crossing.flow.stability,
         freezing_level_m=level if level > air.height[0] or temperature >= MELTING_POINT else None,
         column_vapour_kg_m2=float(column_vapour(air)),
     )
@@ -253,7 +233,43 @@ def _terrain(crossing: Crossing) -> TerrainBlock:
     )
 
 
+def _flow(crossing: Crossing) -> FlowBlock:
+    flow = crossing.flow
+    first = crossing.lee[0]
+    return FlowBlock(
+        nondimensional_height=flow.nondimensional_height,
+        regime=flow.regime,
+        dividing_height_m=flow.dividing_height,
+        blocked_top_m=flow.blocked_top,
+        blocked_top_range_m=(flow.blocked_top_low, flow.blocked_top_high),
+        going_round_share=flow.going_round_share,
+        source_level_m=first.source_level,
+        cloud_base_m=crossing.cloud.base,
+        breaks_through=flow.breaks_through,
+        wave_breaking=flow.wave_breaking,
+        pressure_difference_hpa=flow.pressure_difference / 100.0,
+    )
+
+
+def _rain(crossing: Crossing) -> RainBlock:
+    water = crossing.water
+    return RainBlock(
+        rain_out_share=water.removed / water.condensed if water.condensed > 0.0 else None,
+        drying_ratio=water.removed / water.vapour_in,
+        drying_ratio_full_column=water.removed / water.column_vapour_flux if water.column_vapour_flux > 0.0 else None,
+        windward_share=None,
+        peak_mm_per_h=None,
+        peak_km=None,
+        total_kg_per_m_s=water.removed,
+    )
+
+
 def _lee(site: LeeAir, crossing: Crossing) -> LeeBlock:
+    wind, parts, profile = site.wind, site.parts, site.profile
+    low, high = site.source_level_low, site.source_level_high
+    ranges: Range = {}
+    if wind is not None:
+        ranges = {"wind_ms": (wind.low, wind.high), "gust_ms": (wind.gust_low, wind.gust_high)}
     return LeeBlock(
         name=site.name,
         side=site.side,
@@ -262,16 +278,21 @@ def _lee(site: LeeAir, crossing: Crossing) -> LeeBlock:
         temperature_c=celsius(site.temperature),
         dew_point_c=celsius(site.dew_point),
         relative_humidity_percent=100.0 * site.relative_humidity,
-        wind_ms=None,
-        wind_10m_ms=None,
-        gust_ms=None,
-        source_level_m=None,
-        source_level_range_m=None,
+        wind_ms=None if wind is None else wind.wind,
+        wind_10m_ms=None if wind is None else wind.at_10m,
+        gust_ms=None if wind is None else 0.5 * (wind.gust_low + wind.gust_high),
+        source_level_m=site.source_level,
+        source_level_range_m=None if low is None or high is None else (low, high),
         warming_c=site.warming,
-        warming_parts_c=None,
+        warming_parts_c=None if parts is None else WarmingParts(**asdict(parts)),
         popular_picture_c=celsius(site.popular_picture),
-        descent_only_c=None,
-        profile=None,
+        descent_only_c=None if site.descent_only is None else celsius(site.descent_only),
+        profile=Profile(
+            height_above_ground_m=profile.height_above_ground.tolist(),
+            temperature_c=[celsius(t) for t in profile.temperature],
+            mixing_ratio_g_kg=(1000.0 * profile.vapour).tolist(),
+        ),
+        range=ranges,
     )
 
 

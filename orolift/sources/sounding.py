@@ -46,7 +46,7 @@ class Sounding:
     pressure : ndarray (nz,) [Pa]
         Strictly falling.
     height : ndarray (nz,) [m above sea level] or None
-        As reported where all levels have one that fits; else None, and only `elevation` counts.
+        As reported where all levels have one that fits; else None, and only `ground` counts.
     temperature, dew_point : ndarray (nz,) [K]
         Dew point over liquid water. Either `dew_point` or `relative_humidity` is given.
     relative_humidity : ndarray (nz,) [1] or None
@@ -54,8 +54,8 @@ class Sounding:
         Interpolated by components in the logarithm of pressure where missing between measured winds.
     notes : tuple of str
         What was assumed.
-    elevation : float or None [m above sea level]
-        Of the lowest level; None when nothing says it.
+    ground : float or None [m above sea level]
+        Height of the lowest level; None when nothing says it.
     findings : tuple of Finding
         What quality control has seen.
     observed : datetime or None
@@ -71,7 +71,7 @@ class Sounding:
     eastward_wind: Array
     northward_wind: Array
     notes: tuple[str, ...]
-    elevation: float | None = None
+    ground: float | None = None
     findings: tuple[Finding, ...] = ()
     observed: datetime | None = None
     longitude: float | None = None
@@ -141,7 +141,7 @@ def sounding_from_levels(levels: ReportedLevels, *, elevation: float | None = No
         eastward_wind=eastward,
         northward_wind=northward,
         notes=tuple(notes),
-        elevation=ground,
+        ground=ground,
         findings=(*levels.findings, *fill_findings, *ground_findings, *shortened(level_findings)),
         observed=levels.observed,
         longitude=levels.longitude,

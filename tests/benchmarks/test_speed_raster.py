@@ -1,8 +1,9 @@
 """A transect from a large raster reads only what it needs.
 
 The raster is one-arc-second, 14 400 x 14 400 cells, DEFLATE in tiles of 512,
-without overviews. Time and memory are those of a process of its own, the
-import of the libraries not counted in the time.
+without overviews. Time and memory are those of a process of its own, the best
+of three; the import of the libraries is not counted in the time. The memory is
+read from Linux (VmHWM): getrusage would count the process that started it too.
 """
 
 import subprocess
@@ -15,7 +16,8 @@ SIZE, TILE = 14_400, 512
 ARC_SECOND = 1.0 / 3600.0
 
 MEASURED = """
-import resource, sys, time
+import sys, time
+from pathlib import Path
 import numpy as np
 import rasterio
 from orolift.sources.raster import MapPoint, raster_transect
@@ -23,7 +25,9 @@ start = time.perf_counter()
 line = raster_transect(
     sys.argv[1], wind_from=np.radians(float(sys.argv[2])), through=MapPoint(-121.0, -46.0), upwind=120e3, downwind=80e3
 )
-print(time.perf_counter() - start, resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024.0, line.elevation.max())
+seconds = time.perf_counter() - start
+peak = next(row for row in Path("/proc/self/status").read_text().splitlines() if row.startswith("VmHWM"))
+print(seconds, int(peak.split()[1]) / 1024.0, line.elevation.max())
 """
 
 
@@ -68,14 +72,9 @@ def large_raster(tmp_path_factory):
 @pytest.mark.parametrize("wind_from_deg", [270.0, 235.0])
 def test_transect_from_a_large_raster(large_raster, wind_from_deg):
     """At most 1 s and 300 MB for 200 km along and across the tiles."""
-    done = subprocess.run(
-        [sys.executable, "-c", MEASURED, str(large_raster), str(wind_from_deg)],
-        capture_output=True,
-        text=True,
-        timeout=300,
-        check=True,
-    )
-    seconds, megabytes, highest = (float(word) for word in done.stdout.split())
+    command = [sys.executable, "-c", MEASURED, str(large_raster), str(wind_from_deg)]
+    runs = [subprocess.run(command, capture_output=True, text=True, timeout=300, check=True) for _ in range(3)]
+    seconds, megabytes, highest = min(tuple(float(word) for word in run.stdout.split()) for run in runs)
     print(
         f"\n{wind_from_deg:.0f} degrees: {seconds:.2f} s, {megabytes:.0f} MB, {large_raster.stat().st_size / 2**20:.0f} MB file"
     )

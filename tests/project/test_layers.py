@@ -43,6 +43,8 @@ def imported_layers(path: Path) -> set[str]:
 def test_imports_point_down(path):
     """A module imports only from its own layer and the ones below it."""
     layer = path.relative_to(PACKAGE).parts[0].removesuffix(".py")
+    if layer == "__main__":
+        return
     if layer == "__init__":
         assert imported_layers(path) == set()
         return
@@ -52,7 +54,7 @@ def test_imports_point_down(path):
 
 def test_every_layer_has_a_level():
     """A new folder must be given its place."""
-    here = {path.relative_to(PACKAGE).parts[0].removesuffix(".py") for path in MODULES} - {"__init__"}
+    here = {path.relative_to(PACKAGE).parts[0].removesuffix(".py") for path in MODULES} - {"__init__", "__main__"}
     assert here <= set(LEVEL)
 
 

@@ -46,3 +46,12 @@ def test_pages_name_no_place_of_one_machine():
     """No page holds a path of the machine it was written on, or says how the work is organised."""
     for page in PAGES:
         assert not re.search(r"/(?:home|work|root|tmp)/", page.read_text()), page
+
+
+def test_developers_page_renews_the_sample_report_as_its_test_does():
+    """One command, not two."""
+    lines = (TOP / "DEVELOPERS.md").read_text().splitlines()
+    command = next(line for line in lines if line.startswith("SOURCE_DATE_EPOCH="))
+    source = (TOP / "tests" / "project" / "test_sample_report.py").read_text()
+    assert command.split()[0].partition("=")[2] in source
+    assert "orolift cross demo_terrain/varn_moist.toml --report reports/varn_moist.html" in command

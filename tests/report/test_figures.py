@@ -112,6 +112,56 @@ def test_ground_is_drawn_at_its_heights_above_sea_level(page_for, crossing, layo
     assert outline[heights.argmax(), 0] == pytest.approx(layout.left + (layout.right - layout.left) * 25 / 60, abs=0.1)
 
 
+@pytest.mark.parametrize(
+    ("kind", "side", "field"),
+    [
+        ("warm rising", "up", "temperature"),
+        ("warm falling", "down", "temperature"),
+        ("dew rising", "up", "dew_point"),
+        ("dew falling", "down", "dew_point"),
+    ],
+)
+def test_path_curves_read_back_as_the_air(page_for, crossing, kind, side, field):
+    """Ends of each curve, read on the ticks; to 0.1 K and 10 m, the rounding of drawing coordinates twice over."""
+    drawing = page_for(crossing).path.drawing
+    across = [(float(t.text.split("\u00a0")[0]), t.at) for t in drawing.temperature_ticks]
+    levels = [(float(t.text), t.at) for t in drawing.height_ticks]
+    curve = points_of(next(curve.path for curve in drawing.curves if curve.kind == kind))
+    values = crossing.dew_point if field == "dew_point" else crossing.air.temperature
+    for point, index in zip(curve[[0, -1]], (0, 100) if side == "up" else (100, -1), strict=True):
+        assert read_off(across, point[0]) == pytest.approx(values[index, 0] - 273.15, abs=0.1)
+        assert read_off(levels, point[1]) == pytest.approx(crossing.height[index, 0], abs=10.0)
+
+
+def read_off(marks, at):
+    """Value at a drawing coordinate, on the straight scale through the first and last tick."""
+    (low, start), (high, end) = marks[0], marks[-1]
+    return low + (at - start) / (end - start) * (high - low)
+
+
+@pytest.mark.parametrize("name", ["crest", "cloud base", "cloud ends"])
+def test_marks_stand_by_what_they_name(page_for, crossing, name):
+    """The words of a mark are within a hand's breadth, 200 drawing units, of its point, and not below the ground."""
+    drawing = page_for(crossing).section.drawing
+    label = next(label for label in drawing.labels if label.text.startswith(name))
+    height, distance = {
+        "crest": (1850.0, 25.0),
+        "cloud base": (905.0, 11.95),
+        "cloud ends": (1240.0, 38.0),
+    }[name]
+    levels = [(tick.at, float(tick.text)) for tick in drawing.height_ticks]
+    across = [(tick.at, float(tick.text.split("\u00a0")[0])) for tick in drawing.distance_ticks]
+    x, y = at_value(across, distance), at_value(levels, height)
+    assert abs(label.x - x) < 200.0
+    assert -100.0 < label.y - y < 5.0
+
+
+def at_value(marks, value):
+    """Drawing coordinate of a value, on the straight scale through the first and last tick."""
+    (start, low), (end, high) = marks[0], marks[-1]
+    return start + (value - low) / (high - low) * (end - start)
+
+
 def test_stretch_is_the_ratio_of_the_scales(page_for, crossing):
     """Heights per unit over distances per unit, from the ticks, equal the factor written on the drawing."""
     drawing = page_for(crossing).section.drawing

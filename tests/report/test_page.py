@@ -4,6 +4,7 @@ import subprocess
 import sys
 from dataclasses import fields, is_dataclass, replace
 
+import numpy as np
 import pytest
 
 from orolift.constants import table
@@ -129,6 +130,20 @@ def test_places_follow_the_path_and_water_adds_up(page_for, crossing):
     assert distances == sorted(distances)
     assert places[0].fallen.value == 0.0
     assert places[-1].fallen.value == pytest.approx(crossing.removed)
+
+
+def test_places_hold_the_air_of_the_path_there(page_for, crossing):
+    top = next(place for place in page_for(crossing).journey.places if place.name == "Crest")
+    at = int(np.argmax(crossing.height[:, 0]))
+    assert top.height.value == 1850.0
+    assert top.temperature.value == pytest.approx(crossing.air.temperature[at, 0])
+    assert top.dew_point.value == pytest.approx(crossing.dew_point[at, 0])
+    assert top.pressure.value == pytest.approx(crossing.air.pressure[at, 0])
+    assert top.vapour.value == pytest.approx(crossing.air.vapour[at, 0])
+    assert top.cloud.value == pytest.approx(crossing.air.cloud[at, 0])
+    assert top.entropy.value == pytest.approx(crossing.air.entropy[at, 0])
+    start = page_for(crossing).journey.places[0]
+    assert start.dew_point.value == pytest.approx(start.temperature.value - 4.0)
 
 
 def test_cautions_are_always_there(page_for, any_crossing):

@@ -10,12 +10,12 @@ from orolift.report.quantities import METRIC, Amount, bare, displayed, from_disp
 PUBLISHED = [
     pytest.param(273.15, "temperature", 1, "us", "32.0~°F", id="ice point, NIST SP 811 B.9: 32 F"),
     pytest.param(373.15, "temperature", 0, "us", "212~°F", id="NIST SP 811 B.9: 100 C is 212 F"),
-    pytest.param(1609.344, "height", 0, "us", "5280~ft", id="NIST SP 811 B.8: a mile is 5280 ft"),
-    pytest.param(1609.344, "distance", 1, "us", "1.0~mi", id="NIST SP 811 B.8: a mile is 1609.344 m"),
+    pytest.param(1609.344, "height", 1, "us", "5280.0~ft", id="NIST SP 811 B.8: a mile is 5280 ft"),
+    pytest.param(1609344.0, "distance", 1, "us", "1000.0~mi", id="NIST SP 811 B.8: a mile is 1609.344 m"),
     pytest.param(101325.0, "pressure", 1, "us", "29.92~inHg", id="ICAO Doc 7488: 1013.25 hPa is 29.92 inHg"),
     pytest.param(101325.0, "pressure", 2, "metric", "1013.25~hPa", id="ICAO Doc 7488: standard pressure"),
     pytest.param(51.4444, "wind", 0, "metric", "51~m/s~(100~kt)", id="BIPM SI brochure: a knot is 1852/3600 m/s"),
-    pytest.param(44.704, "wind", 0, "us", "100~mph", id="NIST SP 811 B.8: a mile per hour is 0.44704 m/s"),
+    pytest.param(44.704, "wind", 2, "us", "100.00~mph", id="NIST SP 811 B.8: a mile per hour is 0.44704 m/s"),
     pytest.param(25.4, "water_depth", 0, "us", "1.00~in", id="NIST SP 811 B.8: an inch is 25.4 mm"),
     pytest.param(5.0, "temperature_difference", 1, "us", "9.0~°F", id="a difference has no offset: 5 K is 9 F"),
 ]

@@ -50,7 +50,7 @@ def test_small_file_becomes_columns():
         sounding = sounding_from_levels(read_bufr_sounding(SMALL, station=station))
         assert sounding.observed == datetime(2008, 12, 8, 12, tzinfo=UTC)
         assert -90.01 < sounding.latitude < 90.01  # one is the South Pole
-        assert sounding.elevation is not None
+        assert sounding.ground is not None
         assert np.all(np.diff(sounding.pressure) < 0)
         assert np.isfinite(sounding.eastward_wind).all()
 
@@ -61,7 +61,7 @@ def test_high_resolution_file():
     sounding = sounding_from_levels(levels)
     assert sounding.pressure.size > 400
     assert sounding.pressure[0] == pytest.approx(94051.0)
-    assert sounding.elevation == pytest.approx(760.0)
+    assert sounding.ground == pytest.approx(760.0)
     assert sounding.pressure[-1] == pytest.approx(50000.0, rel=0.02)
     assert sounding.observed.date().isoformat() == "2025-02-23"
     assert not any(finding.severity == "wrong" for finding in sounding.findings)

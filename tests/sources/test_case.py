@@ -38,11 +38,11 @@ def test_a_good_case_reads():
         ("temperature_c", "temperature_kt", r"a wind unit does not fit here. Use one of: temperature_c, temperature_f"),
         ("= 14.5", "= '14.5'", r"station.temperature_c: a number is needed, and '14.5' is given"),
         ("= 14.5", "= true", r"a number is needed, and True is given"),
-        ("= 14.5", "= nan", r"nan is not a number that can be used; give one within -80 to 60"),
+        ("= 14.5", "= nan", r"nan is not a number that can be used; give one within -80 to 56"),
         ("= 14.5", "= inf", r"inf is not a number that can be used"),
-        ("= 14.5", "= 145", r"145 is outside -80 to 60"),
+        ("= 14.5", "= 145", r"145 is outside -80 to 56"),
         ("temperature_c = 14.5", "temperature_c = 14.5, temperature_f = 58", r"say the same thing; keep one"),
-        ("temperature_c = 14.5", "temperature_f = 580", r"given as temperature_f = 580.*304.444 is outside -80 to 60"),
+        ("temperature_c = 14.5", "temperature_f = 580", r"given as temperature_f = 580.*304.444 is outside -80 to 56"),
         ("wind_kt = 25", "wind_kt = -25", r"wind_kt: -25 is outside 0 to 250"),
         ("pressure_hpa = 1004.0", "pressure_hpa = 100.4", r"pressure_hpa: 100.4 is outside 300 to 1090"),
         ("dew_point_c = 11.0", "relative_humidity_percent = 130", r"130 is outside the range above 0 and up to 100"),
@@ -138,3 +138,9 @@ def test_no_text_gives_a_traceback(text):
         case_from_text(text, "fuzz.toml")
     except OroliftError as error:
         assert str(error).startswith("fuzz.toml: ")
+
+
+def test_a_ridge_in_feet_is_converted():
+    """Of each pair the height is converted, the distance stays in kilometres."""
+    text = GOOD.replace("ridge_km_m = [[0, 40], [25, 1850]", "ridge_km_ft = [[0, 100], [25, 6000]")
+    assert case_from_text(text, "us.toml").terrain.ridge_km_m[1] == pytest.approx([25.0, 1828.8])

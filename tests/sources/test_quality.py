@@ -117,7 +117,7 @@ def test_one_height_in_feet_is_said_and_not_used():
     sounding = read(rows)
     assert ("height contradicts pressure: in feet?", "wrong") in kinds(sounding)
     assert sounding.height is None
-    assert sounding.elevation == 120.0
+    assert sounding.ground == 120.0
     assert right > 2000
 
 
@@ -126,7 +126,7 @@ def test_wrong_height_of_the_lowest_level():
     rows = clean_rows()
     rows[0][1] = "1120"
     sounding = read(rows)
-    assert sounding.elevation == pytest.approx(120.0, abs=12.0)
+    assert sounding.ground == pytest.approx(120.0, abs=12.0)
     assert ("height of the lowest level", "wrong") in kinds(sounding)
 
 

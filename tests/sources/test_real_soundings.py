@@ -33,7 +33,7 @@ def column(file):
     vapour, _ = mixing_ratio_from_dew_point_checked(sounding.pressure, sounding.temperature, sounding.dew_point)
     wind = sounding.eastward_wind, sounding.northward_wind
     return air_from_levels(
-        sounding.height, sounding.pressure, sounding.temperature, vapour, *wind, elevation=sounding.elevation
+        sounding.height, sounding.pressure, sounding.temperature, vapour, *wind, elevation=sounding.ground
     )
 
 
@@ -53,7 +53,7 @@ def test_reads_without_losing_a_level(file):
     np.testing.assert_allclose(sounding.temperature, given.temperature[order])
     np.testing.assert_allclose(sounding.dew_point, given.dew_point[order])
     assert not [finding for finding in sounding.findings if finding.severity == "wrong"]
-    assert sounding.elevation == given.height[0]
+    assert sounding.ground == given.height[0]
 
 
 def test_hydrostatic_heights_against_reported_ones():

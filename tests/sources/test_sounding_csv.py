@@ -109,3 +109,11 @@ def test_no_table_gives_a_traceback(text):
         sounding_from_text(HEADER + text, "fuzz.csv")
     except OroliftError as error:
         assert "fuzz.csv" in str(error)
+
+
+def test_the_ground_stands_for_missing_heights():
+    """Heights may be missing above; the lowest one sets the ground."""
+    text = HEADER + "\n".join([ROWS[0], ROWS[1].replace("900,990", "900,"), *ROWS[2:]])
+    sounding = sounding_from_text(text, "s.csv")
+    assert sounding.height is None
+    assert sounding.ground == 100.0

@@ -152,13 +152,13 @@ def test_heights_are_worked_out_when_missing():
     for cell in cells[:2] + cells[3:]:
         cell[1] = ""
     one = sounding_from_text(HEADER + "\n".join(",".join(row) for row in cells), "s.csv")
-    assert one.elevation == pytest.approx(100.0, abs=15.0)  # the invented heights are hydrostatic to that
+    assert one.ground == pytest.approx(100.0, abs=15.0)  # the invented heights are hydrostatic to that
     assert one.height is None
     cells[2][1] = ""
     none = HEADER + "\n".join(",".join(row) for row in cells)
-    assert sounding_from_text(none, "s.csv").elevation is None
-    assert sounding_from_text(none, "s.csv", elevation=250.0).elevation == 250.0
-    assert whole.elevation == 100.0
+    assert sounding_from_text(none, "s.csv").ground is None
+    assert sounding_from_text(none, "s.csv", elevation=250.0).ground == 250.0
+    assert whole.ground == 100.0
 
 
 def test_humidity_gaps():

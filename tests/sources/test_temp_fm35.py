@@ -183,7 +183,7 @@ def test_all_parts_make_one_column():
     assert sounding.temperature[hpa == 211][0] == pytest.approx(273.15 - 61.5)  # the tropopause, 88211 61580
     assert sounding.dew_point[hpa == 760][0] == pytest.approx(273.15 - 1.7 - 6.0)
     assert not any(finding.severity == "wrong" for finding in sounding.findings)
-    assert 0.0 < sounding.elevation < 20.0  # 1000 hPa at 110 m, 12 hPa below it about 100 m
+    assert 0.0 < sounding.ground < 20.0  # 1000 hPa at 110 m, 12 hPa below it about 100 m
 
 
 def test_metres_per_second_without_fifty():
@@ -202,7 +202,7 @@ def test_levels_below_the_ground_are_left_out():
     sounding = sounding_from_levels(levels_from_temp(text, "t.txt"))
     assert sounding.pressure[0] == 88000.0
     assert sounding.pressure.size == 10
-    assert 1150.0 < sounding.elevation < 1210.0  # 30 hPa below 850 hPa at 1479 m
+    assert 1150.0 < sounding.ground < 1210.0  # 30 hPa below 850 hPa at 1479 m
 
 
 def test_missing_groups_stay_missing():

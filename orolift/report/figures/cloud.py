@@ -12,7 +12,7 @@ from orolift.report.figures.drawing import Curve, area, path_data, thinned
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.crossing.crossing import Crossing
+    from orolift.crossing.result import Crossing
 
 LAYERS = 7
 """Layers of the soft edge of a cloud whose top is not worked out."""
@@ -58,7 +58,7 @@ def cloud_body(
         reach down behind the ground, which is drawn over them.
     """
     wet = cloudy(crossing)
-    x = place(across, crossing.transect.distance)
+    x = place(across, crossing.distance)
     heights = place(up, crossing.height)
     out: list[Curve] = []
     for first, last in runs(np.asarray(wet.any(axis=1))):
@@ -94,7 +94,7 @@ def falling_water(crossing: Crossing, across: Scale, up: Scale, depth: float, sp
     loss = crossing.air.removed.sum(axis=1)
     if not loss.any():
         return None
-    x = place(across, crossing.transect.distance)
+    x = place(across, crossing.distance)
     at = np.arange(x[0] + 0.5 * spacing, x[-1], spacing)
     tallied = np.interp(np.append(at - 0.5 * spacing, at[-1] + 0.5 * spacing), x, np.cumsum(loss))
     rate = np.convolve(np.diff(tallied), (0.25, 0.5, 0.25), mode="same")  # strokes stand for stretches, not for points

@@ -11,7 +11,7 @@ from orolift.air.column import interpolated
 from orolift.report.briefing import crest_index
 from orolift.report.figures.axes import Layout, Scale, Tick, level_ticks, place, ticks
 from orolift.report.figures.cloud import cloudy, runs
-from orolift.report.figures.drawing import Curve, Figure, Label, Pin, head_along, polyline
+from orolift.report.figures.drawing import Anchor, Curve, Figure, Label, Pin, head_along, polyline
 from orolift.report.figures.pins import ASIDE, Spot, pins
 from orolift.report.figures.placing import Board, Box, beside, put
 from orolift.report.quantities import Units, quantity
@@ -19,7 +19,7 @@ from orolift.report.quantities import Units, quantity
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.crossing.crossing import Crossing
+    from orolift.crossing.result import Crossing
 
 WIDE = Layout("wide", 960.0, 520.0, 56.0, 934.0, 24.0, 478.0, 14.0, 8)
 NARROW = Layout("narrow", 344.0, 420.0, 42.0, 320.0, 24.0, 384.0, 12.5, 4)
@@ -165,24 +165,24 @@ def _levels(
     labels: list[Label] = []
     lines: list[Line] = []
     frame = board.frame
+    ends: tuple[tuple[float, Anchor], ...] = ((frame.right - 4.0, "end"), (frame.left + 6.0, "start"))
     for name, level, digits in (
         ("crest", crossing.features.crest, 0),
-        ("cloud base", crossing.cloud_base, -1),
-        ("cloud ends", crossing.cloud_end, -1),
+        ("cloud base", crossing.cloud.base, -1),
+        ("cloud ends", crossing.cloud.end, -1),
     ):
         if level is None:
             continue
         y = place(up, level)
         words = f"{name} {quantity(level, 'height', digits, units)}"
         curves.append(Curve(f"M{frame.left:.1f} {y:.1f}H{frame.right - 2.0:.1f}", "level"))
-        above, below = round(y - 5.0, 1), round(y + board.letter, 1)
         new, board = put(
             board,
             [
-                (Label(words, frame.right - 4.0, above, "end", "place"),),
-                (Label(words, frame.right - 4.0, below, "end", "place"),),
-                (Label(words, frame.left + 6.0, above, "start", "place"),),
-                (Label(words, frame.left + 6.0, below, "start", "place"),),
+                (Label(text, x, round(y + shift, 1), anchor, "place"),)
+                for text in (words, words.removeprefix("cloud "))
+                for x, anchor in ends
+                for shift in (-5.0, board.letter)
             ],
             needed=True,
         )
@@ -229,7 +229,7 @@ def _names(crossing: Crossing, lines: dict[str, Line], board: Board, layout: Lay
         "dew rising": ("dew point, going up", "dew point, up"),
         "upwind": ("incoming air, before the range", "incoming air"),
     }
-    if crossing.condensed <= 0.0:
+    if crossing.water.condensed <= 0.0:
         words |= {"warm falling": ("temperature, up and down",), "dew falling": ("dew point, up and down",)}
         del words["warm rising"], words["dew rising"]
     for side, part in (

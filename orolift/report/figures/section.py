@@ -30,7 +30,7 @@ from orolift.report.words import point_of_compass
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.crossing.crossing import Crossing
+    from orolift.crossing.result import Crossing
 
 WIDE = Layout("wide", 960.0, 446.0, 56.0, 934.0, 50.0, 408.0, 14.0, 8)
 NARROW = Layout("narrow", 344.0, 330.0, 42.0, 320.0, 50.0, 298.0, 12.5, 4)
@@ -80,7 +80,7 @@ def section(crossing: Crossing, bearing: float, freezing_level: float, units: Un
     alt = (
         f"Section along the wind, which blows from left to right. The ground rises from "
         f"{quantity(float(crossing.height[0, 0]), 'height', 0, units)} to the crest at {crest}, "
-        f"{quantity(shape.crest_distance - float(crossing.transect.distance[0]), 'distance', 0, units)} from the "
+        f"{quantity(shape.crest_distance - float(crossing.distance[0]), 'distance', 0, units)} from the "
         f"upwind end, and falls to {quantity(shape.lee_foot, 'height', 0, units)} at the lee foot. "
         + _cloud_words(crossing, units)
         + "".join(
@@ -100,14 +100,14 @@ def section(crossing: Crossing, bearing: float, freezing_level: float, units: Un
 
 
 def _cloud_words(crossing: Crossing, units: Units) -> str:
-    if crossing.cloud_base is None:
+    if crossing.cloud.base is None:
         return "No cloud forms."
-    words = f"Cloud from {quantity(crossing.cloud_base, 'height', -1, units)} on the windward side"
+    words = f"Cloud from {quantity(crossing.cloud.base, 'height', -1, units)} on the windward side"
     if cloudy_to_the_end(crossing):
         return f"{words} to the downwind end."
-    if crossing.cloud_end is None:
+    if crossing.cloud.end is None:
         return f"{words}."
-    return f"{words} to {quantity(crossing.cloud_end, 'height', -1, units)} in the lee."
+    return f"{words} to {quantity(crossing.cloud.end, 'height', -1, units)} in the lee."
 
 
 def _caption(crossing: Crossing) -> str:
@@ -115,9 +115,9 @@ def _caption(crossing: Crossing) -> str:
         "Wind blows from left to right; heights are above sea level and stretched as marked.",
         "The coloured line is the lowest air, with its temperature.",
     ]
-    if crossing.cloud_base is not None and crossing.height.shape[1] == 1:
+    if crossing.cloud.base is not None and crossing.height.shape[1] == 1:
         parts.append("Grey is cloud: where it begins and ends on the slope is worked out, its top is not.")
-    if crossing.removed > 0.0:
+    if crossing.water.removed > 0.0:
         parts.append("Blue strokes are water leaving the air, longer where more of it falls.")
     if crossing.transect.high_elevation is not None:
         parts.append("The paler ground behind is the higher ridges beside the line.")
@@ -141,9 +141,9 @@ def _up(crossing: Crossing, freezing_level: float, layout: Layout, units: Units)
 
 
 def _drawing(crossing: Crossing, bearing: float, freezing_level: float, units: Units, layout: Layout) -> SectionDrawing:
-    across = distance_scale(crossing.transect.distance, layout)
+    across = distance_scale(crossing.distance, layout)
     up = _up(crossing, freezing_level, layout, units)
-    x, ground = place(across, crossing.transect.distance), place(up, crossing.height[:, 0])
+    x, ground = place(across, crossing.distance), place(up, crossing.height[:, 0])
     outline = thinned(x, ground)
     depth = 0.2 * (layout.bottom - layout.top)
     board = Board(Box(layout.left, layout.top - 6.0, layout.right + 2.0, layout.bottom), layout.letter, x, ground)
@@ -237,10 +237,11 @@ def _in_the_ground(x: float, y: float, words: str, side: float, letter: float) -
     anchor: Anchor = "start" if side < 0.0 else "end"
     return [
         (
-            Label(words, round(x - 5.0 * side, 1), round(y + drop, 1), anchor, "in-ground"),
+            Label(text, round(x - 5.0 * side, 1), round(y + drop, 1), anchor, "in-ground"),
             Curve(f"M{x:.1f} {y + 4.0:.1f}V{y + drop:.1f}", "in-ground"),
         )
-        for drop in (1.9 * letter, 2.6 * letter, 3.6 * letter)
+        for text in (words, words.removeprefix("cloud "))
+        for drop in (1.9 * letter, 2.6 * letter, 3.6 * letter, 5.0 * letter, 7.0 * letter, 9.0 * letter)
     ]
 
 
@@ -259,16 +260,16 @@ def _marks(
 ) -> tuple[tuple[Label, ...], tuple[Curve, ...], Board]:
     """Crest, cloud base and end of cloud with their heights, and the temperature of the air at its start."""
     labels, board = _crest(crossing, units, across, up, board)
-    start = place(across, float(crossing.transect.distance[0])), place(up, float(crossing.height[0, 0]))
+    start = place(across, float(crossing.distance[0])), place(up, float(crossing.height[0, 0]))
     warm = quantity(float(crossing.air.temperature[0, 0]), "temperature", 1, units)
     rises = (9.0, 16.0, 24.0, 36.0, 48.0, 64.0, 80.0)
     more, leaders, board = _put_flag(board, (_flags(*start, warm, "value", 1.0, rises), False))
     labels += more
-    base = None if starts_saturated(crossing) else crossing.cloud_base
-    end = None if cloudy_to_the_end(crossing) else crossing.cloud_end
+    base = None if starts_saturated(crossing) else crossing.cloud.base
+    end = None if cloudy_to_the_end(crossing) else crossing.cloud.end
     for name, height, distance, side in (
-        ("cloud base", base, crossing.cloud_base_distance, -1.0),
-        ("cloud ends", end, crossing.cloud_end_distance, 1.0),
+        ("cloud base", base, crossing.cloud.base_distance, -1.0),
+        ("cloud ends", end, crossing.cloud.end_distance, 1.0),
     ):
         if height is None or distance is None:
             continue
@@ -334,7 +335,7 @@ def _header(
     times = f"{stretch:.0f}" if stretch >= 9.5 else f"{stretch:.1f}"
     wind = f"from the {point_of_compass(bearing)}"
     if layout is WIDE:
-        speed = quantity(crossing.crest_wind, "wind", 0, units)
+        speed = quantity(crossing.flow.crest_wind, "wind", 0, units)
         wind = f"wind {wind}, {quantity(bearing, 'bearing', 0, units)}; {speed} across the crest"
     factor = f"heights stretched {times} times" if layout is WIDE else f"heights × {times}"
     y = 16.0 + 0.34 * layout.letter

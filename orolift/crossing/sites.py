@@ -1,0 +1,216 @@
+"""The air at a site: what arrives, the pool it may lie in, the blocked air before the range."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.air.column import interpolated
+from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.crossing.arrival import Arrival, Here, arrival, lee_profile, over, pressure_at
+from orolift.crossing.heat import SurfaceHeat, heating_at, surface_heat
+from orolift.crossing.picture import popular_picture, side_of, upwind_ground_air
+from orolift.crossing.pool import pool_air
+from orolift.crossing.result import LeeAir, LeeProfile, SimpleAir, WarmingParts
+from orolift.crossing.settings import each
+from orolift.crossing.wind import site_wind
+from orolift.terrain.transect import transect_elevation
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from orolift.air.column import IncomingAir
+    from orolift.crossing.result import Side, Site, When
+    from orolift.crossing.settings import Settings
+    from orolift.crossing.solve import Ground, Solution
+    from orolift.crossing.wind import LeeWinds, SiteWind
+
+    Array = NDArray[np.float64]
+
+PROFILE = np.concatenate([np.arange(0.0, 500.0, 50.0), np.arange(500.0, 3001.0, 100.0)])
+"""Heights above ground [m] of the lee profile."""
+SLOWEST = 1.0
+"""Wind [m s-1] below which the travel time is counted with this."""
+
+
+def site_air(
+    site: Site,
+    ground: Ground,
+    incoming: IncomingAir,
+    solution: Solution,
+    settings: Settings,
+    when: When,
+    winds: LeeWinds,
+) -> LeeAir:
+    """The air at a site.
+
+    Parameters
+    ----------
+    site : Site
+    ground : Ground
+    incoming : IncomingAir
+    solution : Solution
+        Three members: the answer, no blocking, full blocking.
+    settings : Settings
+    when : When
+    winds : LeeWinds
+
+    Returns
+    -------
+    LeeAir
+    """
+    shape, line = ground.shape, ground.transect
+    elevation = float(transect_elevation(line, site.distance)) if site.elevation is None else site.elevation
+    side = side_of(site.distance, shape)
+    here = over(solution.streams, line.distance, site.distance)
+    members = solution.blocked_top.size
+    round_share = solution.going_round if side == "lee" else np.zeros(members)
+    heat = _heat(site, ground, solution, settings, when) if side == "lee" else None
+    came = arrival(
+        incoming,
+        solution.streams,
+        here,
+        elevation,
+        depth=each(settings.mixing_depth, members),
+        blocked_top=solution.blocked_top,
+        going_round=round_share,
+        heating=np.full(members, 0.0 if heat is None else heat.day + heat.night),
+        freezing=settings.freezing,
+    )
+    profile = _profile(incoming, here, elevation, solution, round_share, heat, freezing=settings.freezing)
+    place = _Place(site.name, side, site.distance, elevation, shape.crest)
+    wind = site_wind(here, winds, settings.roughness)
+    return _put_together(place, incoming, solution, here, came, profile, wind, freezing=settings.freezing)
+
+
+def _heat(site: Site, ground: Ground, solution: Solution, settings: Settings, when: When) -> SurfaceHeat | None:
+    """Heat from the ground between crest and site; None where time or place is unknown or it is switched off."""
+    if not settings.surface_heat or when.time is None or when.longitude is None or when.latitude is None:
+        return None
+    line, streams = ground.transect, solution.streams
+    wind = streams.wind[0, :1] * streams.flow.speed_factor[0, 0]
+    way = (line.distance >= ground.shape.crest_distance) & (line.distance <= site.distance)
+    step = float(line.distance[1] - line.distance[0]) * ground.cosine
+    travel = float(np.sum(step / np.maximum(wind[way], SLOWEST)))
+    return surface_heat(when.time, when.longitude, when.latitude, travel, DENSITY)
+
+
+DENSITY = 1.2
+"""Density of the heated air [kg m-3]: within a fifth of it for any valley; common practice, no published source."""
+
+
+def _profile(
+    incoming: IncomingAir,
+    here: Here,
+    elevation: float,
+    solution: Solution,
+    round_share: Array,
+    heat: SurfaceHeat | None,
+    *,
+    freezing: bool,
+) -> LeeProfile:
+    """Air over the site up to 3 km, the pool's below its top."""
+    members = solution.blocked_top.size
+    height = np.broadcast_to(elevation + PROFILE, (members, PROFILE.size))
+    heating = np.zeros_like(height) if heat is None else np.broadcast_to(heating_at(heat, PROFILE), height.shape)
+    air = lee_profile(
+        incoming,
+        here,
+        height,
+        blocked_top=solution.blocked_top,
+        going_round=round_share,
+        heating=heating,
+        freezing=freezing,
+    )
+    t, v = air.temperature[0].copy(), air.vapour[0].copy()
+    pool = solution.pools[0]
+    if pool is not None:
+        inside = (height[0] < pool.top) & (height[0] < here.height[0, 0])
+        t[inside], v[inside] = (x[inside] for x in pool_air(pool, height[0]))
+    return LeeProfile(PROFILE, t, v)
+
+
+@dataclass(frozen=True)
+class _Place:
+    """A site with its height, and the crest it belongs to."""
+
+    name: str
+    side: Side
+    distance: float
+    elevation: float
+    crest: float
+
+
+def _put_together(
+    place: _Place,
+    incoming: IncomingAir,
+    solution: Solution,
+    here: Here,
+    came: Arrival,
+    profile: LeeProfile,
+    wind: SiteWind,
+    *,
+    freezing: bool,
+) -> LeeAir:
+    """The answer at a site out of its members, or the pool's or the blocked air where it lies in that."""
+    upwind = interpolated(incoming, np.array([place.elevation, place.crest]))
+    pool = solution.pools[0]
+    in_pool = pool is not None and place.side == "lee" and place.elevation < min(pool.top, float(here.height[0, 0]))
+    blocked = place.side == "windward" and place.elevation < float(solution.blocked_top[0])
+    pressure = float(pressure_at(here, np.full((here.height.shape[0], 1), place.elevation))[0, 0])
+    t, v = float(came.air.temperature[0]), float(came.air.vapour[0])
+    if in_pool and pool is not None:
+        t, v = (float(x) for x in pool_air(pool, place.elevation))
+    elif blocked:
+        pressure, t, v = (float(x[0]) for x in (upwind.pressure, upwind.temperature, upwind.vapour))
+    p_up, t_up, v_up = (float(x[0]) for x in (upwind.pressure, upwind.temperature, upwind.vapour))
+    parts = None if in_pool else _parts(came, nothing=blocked)
+    level = np.full(3, place.elevation) if blocked else came.source_level[0]
+    picture = popular_picture(upwind_ground_air(incoming), float(upwind.pressure[1]), p_up, freezing=freezing)
+    return LeeAir(
+        name=place.name,
+        side=place.side,
+        distance=place.distance,
+        elevation=place.elevation,
+        pressure=pressure,
+        temperature=t,
+        dew_point=_dew_point(pressure, v),
+        relative_humidity=float(relative_humidity_from_mixing_ratio(pressure, t, v)),
+        mixing_ratio=v,
+        upwind_temperature=t_up,
+        upwind_dew_point=_dew_point(p_up, v_up),
+        in_pool=in_pool,
+        in_blocked_air=blocked,
+        source_level=None if in_pool else float(level[1]),
+        source_level_low=None if in_pool else float(level[0]),
+        source_level_high=None if in_pool else float(level[2]),
+        went_round=0.0 if in_pool else float(came.went_round[0]),
+        parts=parts,
+        popular_picture=float(picture.temperature),
+        descent_only=None if in_pool else t_up + (0.0 if blocked else float(came.warming.descent[0])),
+        no_blocking=_simple(came, 1),
+        full_blocking=_simple(came, 2),
+        wind=None if in_pool or blocked else wind,
+        profile=profile,
+    )
+
+
+def _dew_point(pressure: float, vapour: float) -> float:
+    return float(dew_point_from_mixing_ratio(pressure, max(vapour, LEAST_VAPOUR)))
+
+
+LEAST_VAPOUR = 1e-8
+"""Vapour [kg per kg] below which a dew point is that of this much."""
+
+
+def _parts(came: Arrival, *, nothing: bool) -> WarmingParts:
+    names = [field.name for field in fields(WarmingParts)]
+    return WarmingParts(**{name: 0.0 if nothing else float(getattr(came.warming, name)[0]) for name in names})
+
+
+def _simple(came: Arrival, member: int) -> SimpleAir:
+    air = came.air
+    dew_point = _dew_point(float(air.pressure[member]), float(air.vapour[member]))
+    return SimpleAir(float(air.temperature[member]), dew_point)

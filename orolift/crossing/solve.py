@@ -1,0 +1,214 @@
+"""A crossing worked out for several members at once: column, blocking, streamlines, pool."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.crossing.arrival import frozen_temperature, over, pressure_at
+from orolift.crossing.pool import Lee, Pool, pool_under
+from orolift.crossing.settings import DEFAULT_GOING_ROUND, each
+from orolift.crossing.streams import PASSES, Streams, streams
+from orolift.crossing.upwind import Blocking, Upwind, blocking, upwind_column
+from orolift.flow.gaps import gap_share, gap_share_from_pass, reach_along_crest
+from orolift.flow.scales import deformation_radius
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from orolift.air.column import IncomingAir
+    from orolift.crossing.settings import Settings
+    from orolift.terrain.features import Features
+    from orolift.terrain.transect import Transect
+
+    Array = NDArray[np.float64]
+
+NO_BLOCKING = 9.9
+"""Critical value from which on nothing is blocked."""
+LEAST_CREST_POINTS = 5
+"""Points of the crest line within reach from which on its gaps are measured; a judgement."""
+SHALLOW_POOL = 20.0
+"""A pool shallower than this [m] is taken as displaced; a judgement."""
+
+
+@dataclass(frozen=True)
+class CrestLine:
+    """Highest ground along the range, for the gaps in it.
+
+    Attributes
+    ----------
+    distance : ndarray (n,) [m]
+        Along the range, 0 where the transect crosses it.
+    elevation : ndarray (n,) [m above sea level]
+    """
+
+    distance: Array
+    elevation: Array
+
+
+@dataclass(frozen=True, eq=False)
+class Solution:
+    """Members of a crossing. Arrays (m, ...).
+
+    Attributes
+    ----------
+    across : ndarray (nx,) [m]
+        Points of the transect measured along the range normal.
+    crest : int
+        Number of the crest's point.
+    upwind : Upwind
+    blocking : Blocking
+    blocked_top : ndarray (m,) [m above sea level]
+        Used for the flow.
+    going_round : ndarray (m,) [1]
+    streams : Streams
+    pools : tuple of (Pool or None), one for each member
+    """
+
+    across: Array
+    crest: int
+    upwind: Upwind
+    blocking: Blocking
+    blocked_top: Array
+    going_round: Array
+    streams: Streams
+    pools: tuple[Pool | None, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class Ground:
+    """Terrain of a crossing with what is known of it.
+
+    Attributes
+    ----------
+    transect : Transect
+    shape : Features
+    normal : float [rad]
+        Bearing across the range, downwind.
+    cosine : float [1]
+        Of the angle between transect and normal: distance along the normal over distance.
+    lowest_pass : float or None [m above sea level]
+    crest_line : CrestLine or None
+    latitude : float or None [degrees north]
+    """
+
+    transect: Transect
+    shape: Features
+    normal: float
+    cosine: float
+    lowest_pass: float | None = None
+    crest_line: CrestLine | None = None
+    latitude: float | None = None
+
+
+def solve(
+    ground: Ground,
+    incoming: IncomingAir,
+    settings: Settings,
+    lee: Lee,
+    *,
+    members: int = 1,
+    streamlines: int = 60,
+    passes: int = PASSES,
+) -> Solution:
+    """Members of a crossing.
+
+    Parameters
+    ----------
+    ground : Ground
+    incoming : IncomingAir, fields (m, nz) or (nz,)
+    settings : Settings
+        Arrays of shape (m,) or single values.
+    lee : Lee
+    members : int
+    streamlines, passes : int
+
+    Returns
+    -------
+    Solution
+
+    Notes
+    -----
+    The pool is found with the air brought down to the lee foot as if there
+    were none; where it is deeper than 20 m the flow is worked out again over its top.
+    """
+    shape, transect = ground.shape, ground.transect
+    upwind = upwind_column(incoming, ground.normal, shape.base, shape.crest, freezing=settings.freezing)
+    critical = each(settings.critical_value, members)
+    blocked = blocking(upwind, shape.crest, critical)
+    # a critical value beyond the bracket stands for no blocking at all (see `no_blocking`)
+    top = np.where(critical > NO_BLOCKING, shape.base, np.broadcast_to(blocked.top, (members,)))
+    crest = int(np.argmin(np.abs(transect.distance - shape.crest_distance)))
+    across = transect.distance * ground.cosine
+
+    def worked(pool_top: Array | None) -> Streams:
+        return streams(
+            incoming,
+            upwind,
+            across,
+            transect.elevation,
+            crest,
+            top,
+            each(settings.removed_share, members),
+            pool_top=pool_top,
+            inflow_depth=settings.inflow_depth,
+            freezing=settings.freezing,
+            count=streamlines,
+            passes=passes,
+        )
+
+    found = worked(None)
+    pools: tuple[Pool | None, ...] = (None,) * members
+    if lee.known:
+        pools = tuple(_pool(ground, found, lee, member) for member in range(members))
+        depth = np.array([0.0 if pool is None else pool.depth for pool in pools])
+        if np.any(depth > SHALLOW_POOL):
+            foot = shape.lee_foot
+            found = worked(np.where(depth > SHALLOW_POOL, foot + depth, -1000.0))
+        pools = tuple(pool if pool is not None and pool.depth > SHALLOW_POOL else None for pool in pools)
+    return Solution(across, crest, upwind, blocked, top, going_round(ground, blocked, top, settings), found, pools)
+
+
+def going_round(ground: Ground, blocked: Blocking, top: Array, settings: Settings) -> Array:
+    """Share of the low lee air that went round: given, or from the gaps of the range, (m,)."""
+    if settings.going_round_share is not None:
+        return np.array(each(settings.going_round_share, top.size))
+    shape = ground.shape
+    if ground.lowest_pass is not None:
+        return np.asarray(gap_share_from_pass(ground.lowest_pass, shape.base, shape.crest, top))
+    line = ground.crest_line
+    if line is not None:
+        latitude = np.radians(45.0 if ground.latitude is None else ground.latitude)
+        radius = deformation_radius(blocked.stability, shape.crest - shape.base, latitude)
+        near = np.abs(line.distance) <= reach_along_crest(float(np.max(radius)))
+        if near.sum() >= LEAST_CREST_POINTS:
+            return np.asarray(gap_share(line.distance[near], line.elevation[near], shape.base, top))
+    return np.full(top.size, DEFAULT_GOING_ROUND)
+
+
+def _pool(ground: Ground, found: Streams, lee: Lee, member: int) -> Pool:
+    """Pool under the air of one member, brought down to the lee foot."""
+    shape = ground.shape
+    here = over(found, ground.transect.distance, shape.lee_foot_distance)
+    at = np.full((here.height.shape[0], 1), shape.lee_foot)
+    pressure = float(pressure_at(here, at)[member, 0])
+    t = frozen_temperature(
+        here.pressure[member, :1],
+        here.temperature[member, :1],
+        here.vapour[member, :1],
+        here.cloud[member, :1],
+        np.array([pressure]),
+    )
+    return pool_under(lee, shape.lee_foot, pressure, float(t[0]), float(here.vapour[member, 0]))
+
+
+def ends(settings: Settings) -> Settings:
+    """Three members: the settings, no blocking, and full blocking with nothing going round."""
+    share = settings.going_round_share
+    return replace(
+        settings,
+        critical_value=np.array([float(np.asarray(settings.critical_value)), NO_BLOCKING + 0.1, 1.0]),
+        going_round_share=None if share is None else np.array([float(np.asarray(share)), 0.0, 0.0]),
+    )

@@ -1,0 +1,396 @@
+"""Steady linear mountain waves of a layered column, in displacement form.
+
+The lower boundary is taken apart into wavenumbers; for each, the ratio of
+pressure to displacement is carried down from a top that lets waves out, and the
+displacement is carried up again from the ground. Nothing grows with the
+number of layers, whether waves spread or fade (reflection form).
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.checks import within
+
+if TYPE_CHECKING:
+    from numpy.typing import ArrayLike, NDArray
+
+    from orolift.flow.layers import Layers
+
+FRICTION_LENGTH = 80e3
+"""Distance [m] in which a trapped wave dies by a factor e: observed lee waves fade over 50 to 100 km; a judgement."""
+PADDING = 400e3
+"""Level ground [m] added to the transect, five friction lengths, so that nothing wraps round; a judgement."""
+SHORTEST_WAVE = (1000.0, 4000.0)
+"""Waves [m] shorter than a length between these are not worked out layer by layer: see `waves`; a judgement."""
+_FADING = 2.0  # times the largest Scorer wavenumber: waves as short as this fade within 15 % as in neutral air
+_FRICTION_SHARE = (
+    0.3  # of the Scorer wavenumber: longer waves are not damped; between hydrostatic and trapped, a judgement
+)
+_TAIL = 1e-6  # share of the energy of the boundary that may be left to the shorter parts
+
+
+@dataclass(frozen=True)
+class Response:
+    """What a column answers to ground of unit height, wavenumber by wavenumber.
+
+    Attributes
+    ----------
+    displacement : ndarray of complex, shape (..., nl + 1, nk) [1]
+        At the edges, over that at the lowest edge.
+    impedance : ndarray of complex, shape (..., nl + 1, nk) [Pa m-1]
+        Pressure perturbation over displacement, just above each edge.
+    """
+
+    displacement: NDArray[np.complex128]
+    impedance: NDArray[np.complex128]
+
+
+@dataclass(frozen=True)
+class WaveField:
+    """Waves over a transect.
+
+    Attributes
+    ----------
+    displacement : ndarray, shape (..., nl + 1, nx) [m]
+        Height of each streamline minus its height upwind; at the lowest edge the boundary itself.
+    surface_pressure : ndarray, shape (..., nx) [Pa]
+        Perturbation along the lowest streamline.
+    top_pressure : ndarray, shape (..., nx) [Pa]
+        Perturbation at the highest edge that carries waves.
+    pressure : ndarray, shape (..., nl + 1, nx), or None [Pa]
+        Perturbation at all edges, when asked for.
+    """
+
+    displacement: NDArray[np.float64]
+    surface_pressure: NDArray[np.float64]
+    top_pressure: NDArray[np.float64]
+    pressure: NDArray[np.float64] | None
+
+
+def response(
+    column: Layers, wavenumber: ArrayLike, *, friction: ArrayLike = 0.0, hydrostatic: bool = False
+) -> Response:
+    """Answer of a column to ground of unit height at given wavenumbers.
+
+    Parameters
+    ----------
+    column : Layers
+    wavenumber : array_like, shape (nk,) [m-1]
+        More than 0; complex values (for leaking waves) with a positive real part.
+    friction : array_like, shape (nk,) or (..., 1, nk) [1]
+        Share by which the wind is made complex, ``U (1 - i friction)``, at least 0: the rate of
+        damping over ``k U``.
+    hydrostatic : bool
+        Leave vertical acceleration out.
+
+    Returns
+    -------
+    Response
+
+    Notes
+    -----
+    ``d/dz(rho U^2 d(eta)/dz) + rho (N^2 - k^2 U^2) eta = 0`` and ``p' = rho U^2 d(eta)/dz``,
+    steady linear flow without rotation (Scorer 1949, Smith 1979, written for displacement). Where layers
+    have a `compression`, rising air also expands, and ``p' = rho U^2 (d(eta)/dz - g eta / c^2)``: then
+    ``eta exp(-G)`` and ``rho exp(2 G)``, G the integral of ``g / c^2``, obey the same equation; so the
+    pressure is that of the displaced column summed up hydrostatically.
+    In each layer waves go as ``exp(+-imz)``, ``m^2 = N^2/U^2 - k^2``, real m with energy going
+    up at the top, imaginary m fading. Pressure and displacement are continuous; across a sharp
+    inversion pressure over displacement gains ``rho g'`` downward. Above the last layer
+    that carries waves the displacement is left as it is there.
+
+    References
+    ----------
+    .. [1] R. S. Scorer (1949), "Theory of waves in the lee of mountains",
+       Q. J. R. Meteorol. Soc. 75, 41-56.
+    .. [2] R. B. Smith (1979), "The influence of mountains on the atmosphere",
+       Adv. Geophys. 21, 87-230.
+
+    Examples
+    --------
+    >>> from orolift.flow.layers import layers
+    >>> answer = response(layers([0.0, 3141.593], 1.0, 10.0, 1e-4), [1e-9], hydrostatic=True)
+    >>> bool(abs(answer.displacement[1, 0] + 1.0) < 1e-6)  # half a vertical wavelength up: upside down
+    True
+    """
+    k = np.atleast_1d(np.asarray(wavenumber))
+    slowing = np.asarray((1.0 - 1j * np.atleast_2d(np.asarray(friction, np.float64))) ** 2, np.complex128)
+    count = column.density.shape[-1]
+    column, rise = _without_expansion(column)
+    jump = _edge_jump(column)[..., None]
+    jumps = bool(np.any(jump))
+    lead = np.broadcast_shapes(column.density.shape[:-1], slowing.shape[:-2])
+    impedance = np.zeros((*lead, count + 1, k.size), np.complex128)
+    ratio = np.ones(impedance.shape, np.complex128)
+    above = np.zeros((*lead, k.size), np.complex128)
+    stops = column.carrying[..., None]
+    highest = {count - 1, *(int(one) - 1 for one in np.unique(stops))}
+    for block in _blocks(count, impedance[..., 0, :].size):
+        parts = _layer_parts(column, block, k, slowing, hydrostatic)
+        for j in range(block.stop - 1, block.start - 1, -1):
+            step, plus, minus, square, admittance = (part[..., j - block.start, :] for part in parts)
+            if j in highest:  # nothing comes back from above
+                last = stops <= j + 1 if j == count - 1 else stops == j + 1
+                above = np.where(last, _open_top(column, j, slowing, admittance), above)
+                impedance[..., j + 1, :] = np.where(last, above, impedance[..., j + 1, :])
+            with np.errstate(divide="ignore", invalid="ignore"):  # at the resonance of a column without friction
+                share = 1.0 / (plus + above * minus)
+                np.multiply(step, share, out=ratio[..., j + 1, :])
+                below = impedance[..., j, :] = (square + above * plus) * share
+            above = below + jump[..., j, :] if jumps else below
+    outside = np.arange(count + 1) > stops
+    ratio[outside] = 1.0
+    impedance[outside] = 0.0
+    expansion = np.exp(rise)[..., None]
+    displacement = np.asarray(np.cumprod(ratio, axis=-2) * expansion, np.complex128)
+    return Response(displacement, np.asarray(impedance / expansion**2, np.complex128))
+
+
+def waves(
+    boundary: ArrayLike,
+    spacing: float,
+    column: Layers,
+    *,
+    hydrostatic: bool = False,
+    friction_length: float = FRICTION_LENGTH,
+    padding: float = PADDING,
+    shortest: float | None = None,
+    all_pressure: bool = False,
+) -> WaveField:
+    """Waves over a boundary that ends as high as it starts.
+
+    Parameters
+    ----------
+    boundary : array_like, shape (..., nx) [m]
+        Height above the lowest edge of the column, evenly spaced, wind from the left,
+        close to 0 at both ends (a step at an end makes waves too).
+    spacing : float [m]
+        1 m to 100 km.
+    column : Layers
+        Leading axes broadcast with those of `boundary`.
+    hydrostatic : bool
+        Leave vertical acceleration out.
+    friction_length : float [m]
+        Distance in which trapped waves fade by a factor e; infinity for none.
+    padding : float [m]
+        Level ground added to the length.
+    shortest : float, optional [m]
+        Shortest wave worked out layer by layer.
+    all_pressure : bool
+        Also give the pressure at every edge.
+
+    Returns
+    -------
+    WaveField
+
+    Raises
+    ------
+    OutOfRangeError
+        If a boundary value is not finite or the spacing is outside its range.
+
+    Notes
+    -----
+    See `response`. Weak friction keeps trapped waves from going round the periodic
+    domain; it acts on waves shorter than about three times ``2 pi U / N``, so that hydrostatic waves
+    are not touched. The mean of the padded boundary is carried with the limit of very long waves.
+    Waves shorter than half of ``2 pi U / N`` at its smallest in the lowest 5 km (but no longer than 4 km, no shorter
+    than 1 km) fade upward almost as in neutral air; they, and those that hold less than a millionth of the
+    energy of the boundary, are carried with the fading of the shortest one worked out, so
+    that the lowest streamline is exactly the boundary.
+
+    Examples
+    --------
+    >>> from orolift.flow.layers import layers
+    >>> x = np.arange(-300e3, 300e3, 500.0)
+    >>> bell = 500.0 / (1.0 + (x / 10e3) ** 2)
+    >>> field = waves(bell, 500.0, layers(np.arange(0.0, 12e3, 200.0), 1.2, 10.0, 1e-4), hydrostatic=True)
+    >>> bool(abs(field.surface_pressure.min() + 30.0) < 0.3)
+    True
+    """
+    ground = within("boundary", boundary, -9000.0, 9000.0, "m", "Give metres above the lowest edge.")
+    step = float(within("spacing", spacing, 1.0, 1e5, "m", "Give metres."))
+    spectrum, wavenumber, length = _spectrum(ground, step, padding, shortest or _shortest(column))
+    friction = _friction(column, wavenumber, friction_length)
+    answer = response(column, wavenumber, friction=friction, hydrostatic=hydrostatic)
+    count = ground.shape[-1]
+
+    known = answer.displacement * spectrum[..., None, :]
+    pressure = known * answer.impedance
+    displacement = _over_transect(known, length, count)
+    short = ground[..., None, :] - displacement[..., :1, :]
+    fade = np.exp(-wavenumber[-1] * (column.edge - column.edge[..., :1]))
+    suction = (column.density[..., :1] * column.wind[..., :1] ** 2) * wavenumber[-1]
+    top = np.broadcast_to(column.carrying, pressure.shape[:-2])[..., None, None]
+    return WaveField(
+        displacement=displacement + short * fade[..., None],
+        surface_pressure=_over_transect(pressure[..., 0, :], length, count) - suction * short[..., 0, :],
+        top_pressure=_over_transect(np.take_along_axis(pressure, top, axis=-2)[..., 0, :], length, count),
+        pressure=_over_transect(pressure, length, count) if all_pressure else None,
+    )
+
+
+def wave_drag(boundary: ArrayLike, spacing: float, surface_pressure: ArrayLike) -> NDArray[np.float64]:
+    """Drag of the ground on the air, for each metre across the transect.
+
+    Parameters
+    ----------
+    boundary : array_like, shape (..., nx) [m]
+    spacing : float [m]
+    surface_pressure : array_like, shape (..., nx) [Pa]
+        Perturbation along the boundary.
+
+    Returns
+    -------
+    ndarray, shape (...) [N m-1]
+        Positive when the ground slows the air.
+
+    Notes
+    -----
+    Integral of pressure times slope.
+
+    Examples
+    --------
+    >>> float(wave_drag([0.0, 1.0, 0.0], 1.0, [2.0, 0.0, -2.0]))
+    4.0
+    """
+    slope = np.gradient(np.asarray(boundary, np.float64), spacing, axis=-1)
+    return np.asarray(np.sum(np.asarray(surface_pressure) * slope, axis=-1) * spacing)
+
+
+def _open_top(
+    column: Layers, j: int, slowing: NDArray[np.complex128], admittance: NDArray[np.complex128]
+) -> NDArray[np.complex128]:
+    """Pressure over displacement at the top of a layer when all above is like it, with density changing as below."""
+    if j == 0:
+        return admittance
+    middle = 0.5 * (column.edge[..., 1:] + column.edge[..., :-1])
+    change = np.log(column.density[..., j] / column.density[..., j - 1]) / (middle[..., j] - middle[..., j - 1])
+    half = 0.5 * change[..., None]
+    stiffness = (column.density[..., j] * column.wind[..., j] ** 2)[..., None] * slowing[..., 0, :]
+    m = admittance / (1j * stiffness)
+    open_end = admittance * np.sqrt(1.0 - (half / m) ** 2) - half * stiffness
+    return np.asarray(
+        open_end * np.exp(half * (column.edge[..., j + 1, None] - column.edge[..., j, None])), np.complex128
+    )
+
+
+def _without_expansion(column: Layers) -> tuple[Layers, NDArray[np.float64]]:
+    """Column in which displacement is counted without the expansion of rising air, and that expansion's exponent."""
+    steps = column.compression * np.diff(column.edge, axis=-1)
+    rise = np.concatenate([np.zeros((*steps.shape[:-1], 1)), np.cumsum(steps, axis=-1)], axis=-1)
+    middle = 0.5 * (rise[..., 1:] + rise[..., :-1])
+    return replace(column, density=column.density * np.exp(2.0 * middle)), rise
+
+
+def _blocks(count: int, width: int) -> list[slice]:
+    """Layers in blocks from the top down, small enough for their arrays to stay in the processor's cache."""
+    size = max(1, 16384 // max(width, 1))
+    stops = range(count, 0, -size)
+    return [slice(max(stop - size, 0), stop) for stop in stops]
+
+
+def _layer_parts(
+    column: Layers, block: slice, k: NDArray[np.inexact], slowing: NDArray[np.complex128], hydrostatic: bool
+) -> tuple[NDArray[np.complex128], ...]:
+    """What the recursion needs: with E = exp(2imd) and A = i rho U^2 m, 2 exp(imd), 1 + E, (1 - E)/A, (1 - E) A, A."""
+    depth = np.diff(column.edge, axis=-1)[..., block, None]
+    wind_squared = column.wind[..., block, None] ** 2
+    ratio = column.n_squared[..., block, None] / wind_squared
+    m_squared = np.asarray(ratio / slowing - (0.0 if hydrostatic else k**2), np.complex128)
+    m = np.sqrt(m_squared) if np.iscomplexobj(k) else _upward_root(m_squared)
+    least = np.broadcast_to(1e-6 / depth, m.shape)
+    flat = np.abs(m) < least  # neither wave nor fading: the limit is taken through a very long wave
+    m[flat] = least[flat]
+    step = np.asarray(np.exp(1j * m * depth), np.complex128)
+    twice = step * step
+    admittance = np.asarray(1j * column.density[..., block, None] * wind_squared * slowing * m, np.complex128)
+    minus = 1.0 - twice
+    return 2.0 * step, 1.0 + twice, minus / admittance, minus * admittance, admittance
+
+
+def _upward_root(square: NDArray[np.complex128]) -> NDArray[np.complex128]:
+    """Root with no negative part: it fades or carries energy upward. Faster than the complex root."""
+    real, imag = square.real, np.abs(square.imag)
+    large = np.sqrt(0.5 * (np.sqrt(real**2 + imag**2) + np.abs(real)))
+    small = imag / np.maximum(2.0 * large, 1e-30)
+    root = np.empty_like(square)
+    forward = real >= 0.0
+    root.real = np.where(forward, large, small)
+    root.imag = np.where(forward, small, large)
+    return root
+
+
+def _edge_jump(column: Layers) -> NDArray[np.float64]:
+    """Density times reduced gravity at the edges [Pa m-1]."""
+    inner = 0.5 * (column.density[..., 1:] + column.density[..., :-1])
+    density = np.concatenate([column.density[..., :1], inner, column.density[..., -1:]], axis=-1)
+    return np.asarray(density * column.jump)
+
+
+def _low_scorer(column: Layers) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Depth and N / U of the layers in the lowest 5 km, where trapped waves live; 0 above."""
+    depth = np.diff(column.edge, axis=-1)
+    low = np.cumsum(depth, axis=-1) - depth < 5000.0
+    return np.where(low, depth, 0.0), np.where(low, np.sqrt(column.n_squared) / column.wind, 0.0)
+
+
+def _shortest(column: Layers) -> float:
+    """Shortest wave to work out layer by layer, for all members."""
+    largest = float(np.max(_low_scorer(column)[1]))
+    return float(np.clip(2.0 * np.pi / max(_FADING * largest, 1e-9), *SHORTEST_WAVE))
+
+
+def _friction(column: Layers, wavenumber: NDArray[np.float64], length: float) -> NDArray[np.float64]:
+    """Damping over kU, for waves short enough to be trapped."""
+    depth, scorer = _low_scorer(column)
+    scorer = np.sum(depth * scorer, axis=-1) / np.sum(depth, axis=-1)
+    limit = np.maximum(_FRICTION_SHARE * scorer, 1e-5)[..., None, None]
+    sharp = (wavenumber / limit) ** 4
+    return np.asarray(sharp / (1.0 + sharp) / (wavenumber * length))
+
+
+def _spectrum(
+    ground: NDArray[np.float64], step: float, padding: float, shortest: float
+) -> tuple[NDArray[np.complex128], NDArray[np.float64], int]:
+    """Spectrum of the padded boundary, the wavenumbers worth keeping, and the padded length."""
+    length = _fast_length(ground.shape[-1] + int(np.ceil(padding / step)))
+    spectrum = np.fft.rfft(ground, n=length, axis=-1)
+    wavenumber = np.asarray(2.0 * np.pi * np.fft.rfftfreq(length, step), np.float64)
+    energy = np.abs(spectrum) ** 2
+    energy = energy / np.maximum(np.sum(energy, axis=-1, keepdims=True), 1e-300)
+    tail = np.cumsum(energy[..., ::-1], axis=-1)[..., ::-1]
+    worth = np.any(np.reshape(tail > _TAIL, (-1, tail.shape[-1])), axis=0)
+    count = max(int(np.sum(worth & (wavenumber <= 2.0 * np.pi / shortest))), 2)
+    kept = wavenumber[:count].copy()
+    kept[0] = 1e-3 * kept[1]
+    return spectrum[..., :count], kept, length
+
+
+def _over_transect(spectral: NDArray[np.complex128], length: int, count: int) -> NDArray[np.float64]:
+    """Values at the points of the transect, a few levels at a time so that the padded arrays stay in the cache."""
+    rows = spectral.reshape(-1, spectral.shape[-1])
+    values = np.empty((rows.shape[0], count))
+    for start in range(0, rows.shape[0], 16):
+        some = rows[start : start + 16]
+        full = np.zeros((some.shape[0], length // 2 + 1), np.complex128)
+        full[:, : rows.shape[1]] = some
+        full[:, 0] = some[:, 0].real  # the mean: the limit of very long waves of either sign
+        values[start : start + 16] = np.fft.irfft(full, n=length, axis=-1)[:, :count]
+    return values.reshape(*spectral.shape[:-1], count)
+
+
+def _fast_length(least: int) -> int:
+    """Smallest even number of at least `least` with no prime factor above 5, for a fast transform."""
+    length = least + least % 2
+    while True:
+        rest = length
+        for prime in (2, 3, 5):
+            while rest % prime == 0:
+                rest //= prime
+        if rest == 1:
+            return length
+        length += 2
