@@ -7,6 +7,7 @@ import pytest
 
 from orolift.sources import ridge_csv, sounding_csv
 from orolift.sources.case_model import Case, Incoming, Place, Rain, SiteTable, Station, Terrain, TransectTable
+from orolift.sources.incoming_model import LadderRung, MetarTable, ModelAt, SoundingAt
 from orolift.sources.results import (
     CaseBlock,
     FlowBlock,
@@ -30,6 +31,10 @@ CASE_TABLES = {
     "A place": Place,
     "[incoming]": Incoming,
     "station": Station,
+    "stations": LadderRung,
+    "metar": MetarTable,
+    "sounding_at": SoundingAt,
+    "model_at": ModelAt,
     "[rain]": Rain,
     "[[site]]": SiteTable,
 }
@@ -98,6 +103,8 @@ def test_case_page_has_units_ranges_and_defaults(heading, model):
         assert (row["default"] == "needed") == info.is_required(), key
         if isinstance(info.default, bool):
             assert row["default"] == str(info.default).lower(), key
+        elif isinstance(info.default, str):
+            assert row["default"] == f'`"{info.default}"`', key
         elif isinstance(info.default, float):
             assert row["default"] == f"{info.default:g}", key
         assert row["meaning"], key
