@@ -3,6 +3,7 @@
 Origin, licence and weaknesses of the soundings: tests/data/real_crossings/README.md.
 """
 
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -74,8 +75,9 @@ def test_hydrostatic_heights_against_reported_ones():
 def test_column_vapour_by_the_formula_of_the_guide(file):
     """Specific humidity by the saturation formula of WMO-No. 8 (2018), annex 4.B, summed over pressure level by level.
 
-    e = 6.112 hPa exp(17.62 t / (243.12 + t)), q = 0.622 e / (p - 0.378 e). 1.5 %: that formula is up to 0.6 % off ours
-    above -40 degrees and more below, where there is little vapour; and ours goes on above the data (0.1 kg m-2).
+    e = 6.112 hPa exp(17.62 t / (243.12 + t)), q = 0.622 e / (p - 0.378 e). What is above saturation over ice counts as
+    cloud with us; here it is added again, and what we add above the data is left out. 0.4 %: that formula and ours
+    differ by at most 0.25 % above -40 degrees.
     """
     given = levels_from_text(file.read_text(), file.name)
     order = np.argsort(-given.pressure)
@@ -83,7 +85,11 @@ def test_column_vapour_by_the_formula_of_the_guide(file):
     e = 611.2 * np.exp(17.62 * t / (243.12 + t))
     q = 0.622 * e / (p - 0.378 * e)
     theirs = float(np.sum(0.5 * (q[1:] + q[:-1]) * -np.diff(p)) / 9.80665)
-    assert float(column_vapour(column(file))) == pytest.approx(theirs, rel=0.015, abs=0.1)
+    air, n = column(file), p.size
+    water = replace(
+        air, pressure=air.pressure[:n], vapour=(air.vapour + air.cloud)[:n], cloud=np.zeros(n), height=air.height[:n]
+    )
+    assert float(column_vapour(water)) == pytest.approx(theirs, rel=0.004)
 
 
 @pytest.mark.parametrize("file", FILES[::6], ids=lambda file: f"{file.parent.name}-{file.stem}")
