@@ -27,8 +27,8 @@ PART = re.compile(r"(?<![A-Z0-9])(TT|UU|II|XX|PP|QQ|EE)(AA|BB|CC|DD)(?![A-Z0-9])
 KINDS_READ = {"TT": "land station", "UU": "ship", "II": "mobile station"}
 MOST_PARTS = 400
 """Parts looked at in one file: more than any bulletin holds; keeps a wrong file from costing time."""
-SAME_PRESSURE = 50.0
-"""Parts A and B give the surface pressure alike [Pa], to the whole hectopascal."""
+MOST_HEADING_WORDS = 7
+"""Call sign, day, position in three groups, elevation, and one more: what a heading may take, and a group after it."""
 
 
 @dataclass(frozen=True)
@@ -38,7 +38,8 @@ class _Part:
     letter: str
     station: str
     day_group: str
-    groups: tuple[str, ...]
+    body: str
+    heading_words: int
     longitude: float | None = None
     latitude: float | None = None
     elevation: float | None = None
@@ -100,7 +101,7 @@ def levels_from_temp(
     (array([1012., 1000.,  850.,  700.]), array([  nan,  110., 1510., 3030.]))
     """
     parts = _one_report(_parts(text, name), name, station, near)
-    found = [part_levels(part.letter, part.day_group, part.groups) for part in parts]
+    found = [part_levels(part.letter, part.day_group, _groups(part)) for part in parts]
     levels = [level for part in found for level in part.levels]
     findings = _unread(text, name)
     findings += [
@@ -142,8 +143,7 @@ def _parts(text: str, name: str) -> list[_Part]:
         if mark.group(1) not in KINDS_READ:
             continue
         end = len(upper) if following is None else following.start()
-        body = upper[mark.end() : end].split("=")[0]
-        part = _part(mark.group(1), mark.group(2)[0], _figure_words(body))
+        part = _part(mark.group(1), mark.group(2)[0], upper[mark.end() : end].split("=")[0])
         if part is not None:
             found.append(part)
     if not found:
@@ -161,9 +161,15 @@ def _figure_words(body: str) -> list[str]:
     return words
 
 
-def _part(kind: str, letter: str, words: list[str]) -> _Part | None:
-    """Station, day and groups of a part; None when they are not there."""
+def _groups(part: _Part) -> list[str]:
+    """Groups of a part after its heading."""
+    return _figure_words(part.body)[part.heading_words :]
+
+
+def _part(kind: str, letter: str, body: str) -> _Part | None:
+    """Station and day of a part; None when they, or any group, are not there."""
     call = ""
+    words = body.split(maxsplit=MOST_HEADING_WORDS)[:MOST_HEADING_WORDS]
     if kind != "TT" and words and not re.fullmatch(r"[0-9/]{5}", words[0]):
         call, words = words[0], words[1:]
     if len(words) < 3 or not re.fullmatch(r"\d{4}[0-9/]", words[0], re.ASCII):
@@ -174,17 +180,16 @@ def _part(kind: str, letter: str, words: list[str]) -> _Part | None:
     if kind == "TT":
         if not re.fullmatch(r"\d{5}", words[1], re.ASCII):
             return None
-        return _Part(letter, words[1], words[0], tuple(words[2:]))
+        return _Part(letter, words[1], words[0], body, 2)
     try:
         longitude, latitude = position(*(checked_group(word) for word in words[1:3]))
         height = ground_elevation(checked_group(words[4])) if kind == "II" and len(words) > 4 else math.nan
     except GroupError:
         return None
     elevation = 0.0 if kind == "UU" else height
-    groups = tuple(words[5 if kind == "II" else 4 :])
-    return _Part(
-        letter, call or "unnamed", words[0], groups, longitude, latitude, None if math.isnan(elevation) else elevation
-    )
+    heading = (5 if kind == "II" else 4) + (1 if call else 0)
+    known = None if math.isnan(elevation) else elevation
+    return _Part(letter, call or "unnamed", words[0], body, heading, longitude, latitude, known)
 
 
 def _one_report(parts: list[_Part], name: str, station: str | None, near: datetime | None) -> list[_Part]:

@@ -309,7 +309,7 @@ def test_the_month_is_the_nearest(near, expected):
 @pytest.mark.parametrize(
     ("text", "message"),
     [
-        ("TTAA 53121 99999 NIL=", "none with a day, a station and levels"),
+        ("TTAA 53121 99999 NIL=", r"holds no level that can be read \(NIL\?\)"),
         ("XXAA 53121 99415 71305 12345 99012 15256 24008=", "dropsonde"),
         ("PPBB 53120 99999 90012 24008=", "no part TTAA"),
         ("TTAA 99121 99999 99012 15256 24008=", "none with a day"),
