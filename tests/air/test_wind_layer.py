@@ -68,7 +68,8 @@ def test_calm_air_has_no_turning():
 
 def test_layer_begins_at_the_ground_of_the_column():
     """A base lower than the column's ground: what lies below it is not there."""
-    assert barrier_wind(column_with_wind(10.0, 0.0), -50.0, 900.0).bottom == 100.0
+    wind = barrier_wind(column_with_wind(10.0, 0.0), -50.0, 900.0)
+    assert (wind.bottom, wind.top) == (100.0, 1400.0)  # to 500 m above the crest
 
 
 def test_members_keep_their_own_winds():

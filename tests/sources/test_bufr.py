@@ -17,7 +17,7 @@ SMALL, HIRES = DATA / "bufr" / "temp_small.bufr", DATA / "bufr" / "temp_hires.bu
 
 
 def direct(path):
-    """Messages as the decoder of the library's maker gives them, without pdbufr: station, pressure, temperature."""
+    """Messages as the decoder of the library's maker gives them, without pdbufr: station, pressure, temperature, ..."""
     import eccodes
 
     found = []
@@ -26,7 +26,10 @@ def direct(path):
             eccodes.codes_set(message, "unpack", 1)
             block = eccodes.codes_get(message, "blockNumber")
             number = eccodes.codes_get(message, "stationNumber")
-            arrays = [eccodes.codes_get_array(message, key) for key in ("pressure", "airTemperature", "windSpeed")]
+            arrays = [
+                eccodes.codes_get_array(message, key)
+                for key in ("pressure", "airTemperature", "windSpeed", "nonCoordinateGeopotential")
+            ]
             eccodes.codes_release(message)
             found.append((f"{block:02d}{number:03d}", *(np.where(one < -1e99, np.nan, one) for one in arrays)))
     return found
@@ -36,12 +39,13 @@ def test_levels_are_those_of_the_decoder():
     """Every station of the small file: pressures, temperatures and winds as decoded without pdbufr."""
     messages = direct(SMALL)
     assert len(messages) > 1
-    for station, pressure, temperature, speed in messages:
+    for station, pressure, temperature, speed, geopotential in messages:
         levels = read_bufr_sounding(SMALL, station=station)
         assert levels.station == station
         np.testing.assert_allclose(levels.pressure, pressure)
         np.testing.assert_allclose(levels.temperature, temperature)
         np.testing.assert_allclose(levels.wind_speed, speed)
+        np.testing.assert_allclose(levels.height, geopotential / 9.80665)  # standard gravity, 3rd CGPM
 
 
 def test_small_file_becomes_columns():

@@ -220,6 +220,8 @@ VALLEY = LadderStation(400.0, 288.0, 0.7, 96600.0, 3.0, 0.0)
         (LadderStation(410.0, 291.0, 0.6), "contradict each other"),
         (LadderStation(1400.0, 286.0, 1.0), "moister aloft"),
         (LadderStation(1400.0, 282.0, 0.7, 88900.0), "pressure contradicts"),
+        (LadderStation(1400.0, 282.0, 0.7, 86300.0), "pressure contradicts"),
+        (LadderStation(1400.0, 282.0, 0.7, 85850.0), None),
     ],
 )
 def test_ladders_that_contradict_themselves(other, what):

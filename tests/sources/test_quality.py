@@ -70,6 +70,30 @@ def test_a_spike_of_temperature_is_found_at_its_level(level, error):
     assert sounding.temperature[level] == pytest.approx(273.15 + right, abs=0.4)
 
 
+def test_a_small_spike_on_thin_layers_is_found():
+    """4.5 K off between levels 10 hPa apart: 50 K per km on one side, which no air keeps."""
+    rows = clean_rows()
+    p, z, t = (np.array([float(row[i]) for row in rows]) for i in range(3))
+    for hpa, error in ((845.0, 0.0), (840.0, 4.5), (835.0, 0.0)):
+        height, value = np.interp(-hpa, -p, z), np.interp(-hpa, -p, t) + error
+        rows.append([f"{hpa:.0f}", f"{height:.0f}", f"{value:.1f}", f"{value - 9:.1f}", "245", "14"])
+    rows.sort(key=lambda row: -float(row[0]))
+    said = [finding for finding in read(rows).findings if finding.what == "temperature spike"]
+    assert len(said) == 1
+    assert "840 hPa" in said[0].place
+
+
+@pytest.mark.parametrize(("off", "severity"), [(30.0, None), (120.0, "remark"), (-220.0, "remark"), (420.0, "wrong")])
+def test_heights_off_by_so_much(off, severity):
+    """40 m are said, 300 m are wrong and not used."""
+    rows = clean_rows()
+    rows[9][1] = f"{float(rows[9][1]) + off:.0f}"
+    sounding = read(rows)
+    said = [finding.severity for finding in sounding.findings if "height contradicts" in finding.what]
+    assert said == ([severity] if severity else [])
+    assert (sounding.height is None) == (severity == "wrong")
+
+
 def test_a_sharp_inversion_is_no_spike():
     """8 K warmer 10 hPa higher: a subsidence inversion, kept."""
     rows = clean_rows()
