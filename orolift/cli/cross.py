@@ -87,6 +87,7 @@ def work_out(case: str) -> Worked:
     from orolift.crossing.crossing import cross
     from orolift.sources.inputs import read_inputs
     from orolift.sources.results import results_of
+    from orolift.sources.units import to_si
 
     inputs = read_inputs(case)
     log.debug("%s read", case)
@@ -101,6 +102,7 @@ def work_out(case: str) -> Worked:
             normal=inputs.normal,
             lowest_pass=inputs.case.terrain.pass_m,
             crest_line=inputs.crest_line,
+            background=to_si(inputs.case.rain.background_mm_per_h, "mm_per_h"),
         )
     except ValueError as error:
         error.args = (f"{case}: {error}",)

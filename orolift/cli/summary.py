@@ -83,9 +83,11 @@ def _rain(crossing: Crossing, said: Said) -> str:
     water = crossing.water
     if water.condensed == 0.0:
         return "none: nothing condenses"
+    windward = crossing.rain.windward_share
+    side = "" if windward is None else f", {said(windward, 'share', 0)} of it on the windward side"
     return (
         f"{said(water.removed / water.vapour_in, 'share', 0)} of the crossing vapour rains out "
-        f"({said(water.removed / water.condensed, 'share', 0)} of what condenses, as prescribed)"
+        f"({said(water.removed / water.condensed, 'share', 0)} of what condenses){side}"
     )
 
 

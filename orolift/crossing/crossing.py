@@ -11,6 +11,7 @@ from orolift.air.humidity import dew_point_from_mixing_ratio
 from orolift.crossing.facts import clouds, flow_facts, remarks, water
 from orolift.crossing.march import March
 from orolift.crossing.pool import Lee
+from orolift.crossing.rainfall import rainfall
 from orolift.crossing.result import Crossing, Site, When
 from orolift.crossing.settings import Settings, checked
 from orolift.crossing.sites import site_air
@@ -45,6 +46,7 @@ def cross(
     normal: RangeNormal | None = None,
     lowest_pass: float | None = None,
     crest_line: CrestLine | None = None,
+    background: float = 0.0,
     streamlines: int = 60,
 ) -> Crossing:
     """Incoming air taken over a transect.
@@ -66,6 +68,8 @@ def cross(
     lowest_pass : float, optional [m above sea level]
     crest_line : CrestLine, optional
         Ground along the range, for its gaps.
+    background : float [kg m-2 s-1]
+        Rain that falls anyway.
     streamlines : int
         How many, 20 or more.
 
@@ -118,6 +122,7 @@ def cross(
         flow=flow,
         cloud=cloud,
         water=water(solution, float(vapour_flux(incoming, ground.normal))),
+        rain=rainfall(ground, solution, background),
         pool=solution.pools[0],
         winds=winds,
         lee=tuple(site_air(site, ground, incoming, solution, settings, when, winds) for site in sites),

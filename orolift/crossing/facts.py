@@ -116,22 +116,21 @@ def water(solution: Solution, column_vapour_flux: float) -> Water:
     Parameters
     ----------
     solution : Solution
+        The first member counts.
     column_vapour_flux : float [kg m-1 s-1]
 
     Returns
     -------
     Water
     """
-    streams, upwind = solution.streams, solution.upwind
-    z = streams.flow.start_heights[0]
-    density = np.interp(z, upwind.height, np.broadcast_to(upwind.density, (1, upwind.height.size))[0])
-    start = streams.start
-    dry = density / (1.0 + start.vapour[0] + start.cloud[0])
-    carried = dry * np.maximum(streams.wind[0], 0.0) * np.gradient(z)
+    streams = solution.streams
+    carried, start = streams.carried[0], streams.start
     return Water(
         vapour_in=float(np.sum(carried * start.vapour[0])),
         condensed=float(np.sum(carried * streams.air.condensed[:, 0, :].sum(axis=0))),
-        removed=float(np.sum(carried * streams.air.removed[:, 0, :].sum(axis=0))),
+        removed=float(streams.falling.landed[:, 0].sum()),
+        evaporated=float(streams.falling.evaporated[:, 0].sum()),
+        beyond=float(streams.falling.beyond[0]),
         column_vapour_flux=column_vapour_flux,
     )
 

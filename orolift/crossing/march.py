@@ -95,9 +95,10 @@ def march(start: Parcel, pressure: ArrayLike, removed_share: ArrayLike = 0.0, *,
     }
     losing = np.flatnonzero(np.any(new > 0.0, axis=0) & (share > 0.0))
     if losing.size:
-        first = int(np.argmax(np.any(new[:, losing] > 0.0, axis=1)))
-        before = cloud[losing] if first == 0 else kept.cloud[first - 1, losing]
-        _step(out, path, losing, first, before, water[losing], share[losing], freezing=freezing)
+        cloudy = np.flatnonzero(np.any(kept.cloud[:, losing] > 0.0, axis=1))
+        way = range(int(np.argmax(np.any(new[:, losing] > 0.0, axis=1))), int(cloudy[-1]) + 1)
+        before = cloud[losing] if way.start == 0 else kept.cloud[way.start - 1, losing]
+        _step(out, path, losing, way, before, water[losing], share[losing], freezing=freezing)
     whole = (path.shape[0], *shape)
     return March(pressure=path.reshape(whole), **{key: value.reshape(whole) for key, value in out.items()})
 
@@ -106,19 +107,22 @@ def _step(
     out: dict[str, Array],
     path: Array,
     losing: NDArray[np.intp],
-    first: int,
+    way: range,
     cloud: Array,
     water: Array,
     share: Array,
     *,
     freezing: bool,
 ) -> None:
-    """Step the streamlines that lose water downwind, from the first place at which one condenses."""
-    s = out["entropy"][first, losing]
-    guess = out["temperature"][first, losing]
+    """Step the streamlines that lose water from the first place at which one condenses to the last cloudy one.
+
+    Beyond, air that has lost water is even further from cloud than air that has not: all places are solved at once.
+    """
+    s = out["entropy"][way.start, losing]
+    guess = out["temperature"][way.start, losing]
     last = guess
     p = path[:, losing]
-    for i in range(first, path.shape[0]):
+    for i in way:
         parcel = equilibrium_from_entropy(p[i], s, water, freezing=freezing, first_guess=guess, tolerance=TOLERANCE)
         new = np.maximum(parcel.cloud - cloud, 0.0)
         removed = share * new
@@ -135,3 +139,10 @@ def _step(
             ("entropy", s),
         ):
             out[key][i, losing] = value
+    rest = slice(way.stop, path.shape[0])
+    if way.stop < path.shape[0]:
+        clear = equilibrium_from_entropy(p[rest], s, water, freezing=freezing)
+        for key, value in (("temperature", clear.temperature), ("vapour", clear.vapour), ("cloud", clear.cloud)):
+            out[key][rest, losing] = value
+        out["condensed"][rest, losing] = 0.0
+        out["entropy"][rest, losing] = s

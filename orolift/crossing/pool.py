@@ -20,7 +20,8 @@ if TYPE_CHECKING:
 POOL_STABILITY = 0.010
 """Rise of virtual potential temperature with height in a pool [K m-1]; a judgement."""
 POOL_HUMIDITY = 0.9
-"""Relative humidity [1] of a pool whose dew point nobody gave; a judgement."""
+"""Relative humidity [1] of a pool whose dew point nobody gave, at most: it holds no more vapour than the crossing air;
+a judgement."""
 DEEPEST = 3000.0
 """A pool of a lee sounding is not looked for above this height over the lee foot [m]; a judgement."""
 
@@ -106,16 +107,16 @@ def pool_under(lee: Lee, foot: float, pressure: float, temperature: float, vapou
     if lee.air is not None:
         return _from_sounding(lee.air, foot, arriving)
     if lee.pool_top is not None:
-        return _sloped(foot, max(lee.pool_top - foot, 0.0), pressure, arriving)
+        return _sloped(foot, max(lee.pool_top - foot, 0.0), pressure, arriving, vapour)
     if lee.temperature is not None:
         humidity = min(vapour, float(mixing_ratio_from_relative_humidity(pressure, lee.temperature, POOL_HUMIDITY)))
         lying = float(virtual_potential_temperature(pressure, lee.temperature, humidity))
-        return _sloped(foot, max(arriving - lying, 0.0) / POOL_STABILITY, pressure, arriving)
-    return _sloped(foot, 0.0, pressure, arriving)
+        return _sloped(foot, max(arriving - lying, 0.0) / POOL_STABILITY, pressure, arriving, vapour)
+    return _sloped(foot, 0.0, pressure, arriving, vapour)
 
 
-def _sloped(foot: float, depth: float, pressure: float, arriving: float) -> Pool:
-    """Pool whose virtual potential temperature rises evenly to that of the crossing air at its top."""
+def _sloped(foot: float, depth: float, pressure: float, arriving: float, most: float) -> Pool:
+    """Pool no moister than the crossing air, its virtual potential temperature rising evenly to that at its top."""
     height = foot + np.linspace(0.0, depth, 21)
     theta_v = arriving - POOL_STABILITY * (foot + depth - height)
     exner = (pressure / REFERENCE_PRESSURE) ** KAPPA - np.concatenate(
@@ -125,7 +126,7 @@ def _sloped(foot: float, depth: float, pressure: float, arriving: float) -> Pool
     p = REFERENCE_PRESSURE * exner ** (1.0 / KAPPA)
     temperature = virtual
     for _ in range(3):  # the little vapour of cold air settles the temperature to 1e-3 K
-        vapour = np.asarray(mixing_ratio_from_relative_humidity(p, temperature, POOL_HUMIDITY))
+        vapour = np.minimum(mixing_ratio_from_relative_humidity(p, temperature, POOL_HUMIDITY), most)
         temperature = virtual * (temperature / virtual_temperature(temperature, vapour))
     return Pool(foot, foot + depth, height, temperature, vapour)
 

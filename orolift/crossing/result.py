@@ -255,7 +255,9 @@ class Water:
     vapour_in : float
         Vapour flux of the crossing air before the range.
     condensed, removed : float
-        What condensed on the way, and what of it left as rain or snow.
+        What condensed on the way, and what of it reached the ground as rain or snow.
+    evaporated, beyond : float
+        What evaporated while falling, and what left the transect before it landed.
     column_vapour_flux : float
         Vapour flux of the whole incoming column, blocked part included.
     """
@@ -263,7 +265,46 @@ class Water:
     vapour_in: float
     condensed: float
     removed: float
+    evaporated: float
+    beyond: float
     column_vapour_flux: float
+
+
+@dataclass(frozen=True, eq=False)
+class Rain:
+    """Rain and snow of the crossing air along the transect; the background rate apart.
+
+    Attributes
+    ----------
+    rate, snow_rate : ndarray (nk,) [kg m-2 s-1]
+        What reaches the ground at the places of the crossing, and of it the snow.
+    background : float [kg m-2 s-1]
+        Rate that falls anyway; not part of the shares and sums.
+    total : float [kg m-1 s-1]
+        All of it, for each metre of the range.
+    windward_share : float or None [1]
+        Of it, what falls upwind of the crest; None without rain.
+    snow_share : float or None [1]
+    peak_rate : float [kg m-2 s-1]
+        With the background.
+    peak_distance : float or None [m]
+    lee_bands : tuple of (float, float, float)
+        Distance from and to beyond the crest [m], and the share of all rain that falls there.
+    drying_ratio_low, drying_ratio_high : float [1]
+        Of the crossing air: over the answer and the ends without and with full blocking.
+    """
+
+    rate: Array
+    snow_rate: Array
+    background: float
+    total: float
+    windward_share: float | None
+    snow_share: float | None
+    peak_rate: float
+    peak_distance: float | None
+    lee_bands: tuple[tuple[float, float, float], ...]
+    drying_ratio_low: float
+    drying_ratio_high: float
 
 
 @dataclass(frozen=True, eq=False)
@@ -290,6 +331,7 @@ class Crossing:
     flow : Flow
     cloud : Cloud
     water : Water
+    rain : Rain
     pool : Pool or None
     winds : LeeWinds
     lee : tuple of LeeAir
@@ -312,6 +354,7 @@ class Crossing:
     flow: Flow
     cloud: Cloud
     water: Water
+    rain: Rain
     pool: Pool | None
     winds: LeeWinds
     lee: tuple[LeeAir, ...]

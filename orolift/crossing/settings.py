@@ -15,6 +15,8 @@ if TYPE_CHECKING:
 
 DEFAULT_GOING_ROUND = 0.4
 """Share of low lee air that went round when nothing says otherwise: on 66 real pairs of soundings neither end holds."""
+USUAL_TIME = 1000.0
+"""Cloud time and fall time [s]: usual value of Smith and Barstad (2004), J. Atmos. Sci. 61, 1377-1391."""
 
 
 @dataclass(frozen=True)
@@ -23,8 +25,11 @@ class Settings:
 
     Attributes
     ----------
-    removed_share : array_like [1]
-        Share of the condensed water that leaves, 0 to 1.
+    removed_share : array_like or None [1]
+        Prescribed share of the condensed water that leaves at once, 0 to 1; None
+        lets rain form and fall in the two times.
+    cloud_time, fall_time : array_like [s]
+        In which cloud turns to falling water, and in which that falls; 50 to 20000.
     critical_value : array_like [1]
         Non-dimensional height at which a uniform column starts to be blocked, 0.75 to 3.
     going_round_share : array_like or None [1]
@@ -42,7 +47,9 @@ class Settings:
         Whether the ground heats and cools the lee air, where time and place are known.
     """
 
-    removed_share: ArrayLike = 0.7
+    removed_share: ArrayLike | None = None
+    cloud_time: ArrayLike = USUAL_TIME
+    fall_time: ArrayLike = USUAL_TIME
     critical_value: ArrayLike = 1.5
     going_round_share: ArrayLike | None = None
     mixing_depth: ArrayLike = 100.0
@@ -62,7 +69,11 @@ def checked(settings: Settings) -> Settings:
     """
     share = "It is a share, not a percentage."
     return Settings(
-        removed_share=within("removed_share", settings.removed_share, 0.0, 1.0, "1", share),
+        removed_share=None
+        if settings.removed_share is None
+        else within("removed_share", settings.removed_share, 0.0, 1.0, "1", share),
+        cloud_time=within("cloud_time", settings.cloud_time, 50.0, 20000.0, "s", "Give seconds, usually 1000."),
+        fall_time=within("fall_time", settings.fall_time, 50.0, 20000.0, "s", "Give seconds, usually 1000."),
         critical_value=within("critical_value", settings.critical_value, 0.1, 10.0, "1", "It is a number near 1.5."),
         going_round_share=None
         if settings.going_round_share is None

@@ -212,5 +212,6 @@ def _parts(came: Arrival, *, nothing: bool) -> WarmingParts:
 
 def _simple(came: Arrival, member: int) -> SimpleAir:
     air = came.air
+    member = min(member, air.temperature.size - 1)  # one member stands for all where nothing is blocked
     dew_point = _dew_point(float(air.pressure[member]), float(air.vapour[member]))
     return SimpleAir(float(air.temperature[member]), dew_point)

@@ -29,6 +29,8 @@ NO_BLOCKING = 9.9
 """Critical value from which on nothing is blocked."""
 LEAST_CREST_POINTS = 5
 """Points of the crest line within reach from which on its gaps are measured; a judgement."""
+NOTHING = 1.0
+"""A blocked layer shallower than this [m] is none."""
 SHALLOW_POOL = 20.0
 """A pool shallower than this [m] is taken as displaced; a judgement."""
 
@@ -138,6 +140,9 @@ def solve(
     upwind = upwind_column(incoming, ground.normal, shape.base, shape.crest, freezing=settings.freezing)
     critical = each(settings.critical_value, members)
     blocked = blocking(upwind, shape.crest, critical)
+    if members > 1 and upwind.wind.shape[0] == 1 and np.all(blocked.highest_top <= shape.base + NOTHING):
+        # nothing is blocked by any criterion: the members of one column do not differ
+        return solve(ground, incoming, _first(settings), lee, streamlines=streamlines, passes=passes)
     # a critical value beyond the bracket stands for no blocking at all (see `no_blocking`)
     top = np.where(critical > NO_BLOCKING, shape.base, np.broadcast_to(blocked.top, (members,)))
     crest = int(np.argmin(np.abs(transect.distance - shape.crest_distance)))
@@ -151,10 +156,8 @@ def solve(
             transect.elevation,
             crest,
             top,
-            each(settings.removed_share, members),
+            settings,
             pool_top=pool_top,
-            inflow_depth=settings.inflow_depth,
-            freezing=settings.freezing,
             count=streamlines,
             passes=passes,
         )
@@ -202,6 +205,20 @@ def _pool(ground: Ground, found: Streams, lee: Lee, member: int) -> Pool:
         np.array([pressure]),
     )
     return pool_under(lee, shape.lee_foot, pressure, float(t[0]), float(here.vapour[member, 0]))
+
+
+def _first(settings: Settings) -> Settings:
+    """Settings of the first member."""
+    share = settings.going_round_share
+    return replace(
+        settings,
+        removed_share=None if settings.removed_share is None else np.ravel(settings.removed_share)[:1],
+        cloud_time=np.ravel(settings.cloud_time)[:1],
+        fall_time=np.ravel(settings.fall_time)[:1],
+        critical_value=np.ravel(settings.critical_value)[:1],
+        going_round_share=None if share is None else np.ravel(share)[:1],
+        mixing_depth=np.ravel(settings.mixing_depth)[:1],
+    )
 
 
 def ends(settings: Settings) -> Settings:

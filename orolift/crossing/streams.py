@@ -12,7 +12,9 @@ from orolift.air.condensation import condensation_point
 from orolift.air.parcel import Parcel, entropy, equilibrium_from_entropy
 from orolift.air.temperature import virtual_temperature
 from orolift.constants import GRAVITY, KAPPA, R_DRY
+from orolift.crossing.falling import Falling, Path, fallen_at_once, march_with_rain
 from orolift.crossing.march import March, march
+from orolift.crossing.settings import each
 from orolift.crossing.upwind import LEAST_VAPOUR, Upwind
 from orolift.flow.airflow import Airflow, airflow, highest_pressure, joined
 from orolift.flow.boundary import start_level
@@ -22,6 +24,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
+    from orolift.crossing.settings import Settings
 
     Array = NDArray[np.float64]
 
@@ -31,10 +34,14 @@ LOWEST_SPACING = 25.0
 """Spacing [m] of the lowest streamlines upwind."""
 PASSES = 4
 """Most times the flow is worked out, each with the saturation of the one before."""
+SLOWEST = 1.0
+"""Wind [m s-1] below which time along a streamline is counted with this."""
 EARLY_STRIDE = 8
 """In all passes but the last the air is marched over every eighth place: they need only to know where cloud is."""
 MOST_PLACES = 512
 """Places at which the air is marched in the last pass: the removal of water is then good to 0.01 K."""
+MOST_RAIN_PLACES = 256
+"""The same where rain is worked out: steps of some tens of seconds are short against a cloud time of 1000 s."""
 SETTLED = 50.0
 """Change of a low streamline's height [m] in the last pass above which the passes have not settled; a judgement."""
 
@@ -60,6 +67,9 @@ class Streams:
     place : ndarray of int, (nk,)
         Numbers of the points of the transect at which the air is marched.
     air : March
+    carried : ndarray (m, nz) [kg m-1 s-1]
+        Dry air that flows in the layer of each streamline.
+    falling : Falling
     settled : ndarray of bool, (m,)
     """
 
@@ -72,6 +82,8 @@ class Streams:
     wind: Array
     place: NDArray[np.intp]
     air: March
+    carried: Array
+    falling: Falling
     settled: NDArray[np.bool_]
 
 
@@ -82,11 +94,9 @@ def streams(
     ground: Array,
     crest: int,
     blocked_top: Array,
-    removed_share: Array,
+    settings: Settings,
     *,
     pool_top: Array | None = None,
-    inflow_depth: float = 500.0,
-    freezing: bool = True,
     count: int = 60,
     passes: int = PASSES,
 ) -> Streams:
@@ -101,12 +111,9 @@ def streams(
     crest : int
         Number of the crest's point.
     blocked_top : ndarray (m,) [m above sea level]
-    removed_share : ndarray (m,) [1]
+    settings : Settings
     pool_top : ndarray (m,) [m above sea level], optional
         Top of the cold air in the lee that stays.
-    inflow_depth : float [m]
-        Depth of the lowest unblocked air that is mixed before it crosses.
-    freezing : bool
     count : int
         Streamlines.
     passes : int
@@ -125,6 +132,7 @@ def streams(
     crossed column.
     """
     heights = start_heights(start_level(ground, blocked_top), float(upwind.height[-1]), count)
+    freezing, inflow_depth = settings.freezing, settings.inflow_depth
     start, source, mixed = starting_air(incoming, heights, inflow_depth, freezing=freezing)
     wet = Parcel(start.pressure, start.temperature, np.maximum(start.vapour, LEAST_VAPOUR), start.cloud)
     saturates = condensation_point(wet, freezing=freezing).pressure
@@ -139,24 +147,27 @@ def streams(
         heights,
         start,
         saturates,
-        removed_share,
-        freezing,
+        settings,
     )
     dry = _over(setup, upwind.dry)
+    carried = _carried(upwind, start, heights, dry.start_wind)
     rows = np.broadcast_to(upwind.lifted_share, (heights.shape[0], upwind.height.size))
     lifted = np.stack([np.interp(z, upwind.height, row) for z, row in zip(heights, rows, strict=True)])
     state = _Pass(dry, np.arange(distance.size), None, np.ones((1, 1, distance.size)), lifted, None, np.inf)
     for _ in range(passes - 1):
-        state = _next(setup, dry, state, EARLY_STRIDE)
+        state = _next(setup, dry, state, carried, EARLY_STRIDE)
         if np.all(state.moved <= SETTLED):
             break
-    state = _next(setup, dry, state, max(1, -(-distance.size // MOST_PLACES)))
-    if state.air is None:
+    most = MOST_PLACES if settings.removed_share is not None else MOST_RAIN_PLACES
+    state = _next(setup, dry, state, carried, max(1, -(-distance.size // most)))
+    if state.air is None or state.falling is None:
         raise ValueError("the last pass marches the air")
     settled = np.broadcast_to(np.asarray(state.moved) <= SETTLED, (blocked_top.size,)) | (passes == 1)
     flow = state.flow
-    mass = _mass(source.pressure)
-    return Streams(start, source, mixed, inflow_depth, mass, flow, flow.start_wind, state.place, state.air, settled)
+    mass, place, air, falling = _mass(source.pressure), state.place, state.air, state.falling
+    return Streams(
+        start, source, mixed, inflow_depth, mass, flow, flow.start_wind, place, air, carried, falling, settled
+    )
 
 
 @dataclass(frozen=True, eq=False)
@@ -173,13 +184,12 @@ class _Setup:
     heights: Array
     start: Parcel
     saturates: Array
-    removed_share: Array
-    freezing: bool
+    settings: Settings
 
 
 @dataclass(frozen=True, eq=False)
 class _Pass:
-    """What a pass hands on: flow, places of the march, its air and pressure ratio, saturated share, end of cloud."""
+    """What a pass hands on: flow, places of the march, its air and rain, pressure ratio, saturated share, cloud end."""
 
     flow: Airflow
     place: NDArray[np.intp]
@@ -188,16 +198,17 @@ class _Pass:
     share: Array
     end: Array | None
     moved: Array | float
+    falling: Falling | None = None
 
 
-def _next(setup: _Setup, dry: Airflow, before: _Pass, stride: int) -> _Pass:
+def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, stride: int) -> _Pass:
     """One pass: the flow with the saturation of the pass before, and the air marched through it."""
     members, size = setup.blocked_top.size, setup.distance.size
     end = np.full(members, setup.distance[setup.crest]) if before.end is None else before.end
     flow = _flow(setup, dry, before.share, end)
     place = np.union1d(np.arange(0, size, stride), [setup.crest, size - 1])
     pressure, change = _pressure(setup, flow, setup.start, place, before.air, before.place, before.change)
-    air = march(setup.start, np.moveaxis(pressure, -1, 0), setup.removed_share[:, np.newaxis], freezing=setup.freezing)
+    air, falling = _marched(setup, flow, carried, place, np.moveaxis(pressure, -1, 0))
     found = _saturated_share(air, setup.start, setup.saturates, place <= setup.crest)
     return _Pass(
         flow=flow,
@@ -207,7 +218,34 @@ def _next(setup: _Setup, dry: Airflow, before: _Pass, stride: int) -> _Pass:
         share=found if before.air is None else 0.5 * (before.share + found),
         end=_cloud_end(setup, air, place),
         moved=np.inf if before.air is None else _moved(setup, flow.heights, before.flow.heights),
+        falling=falling,
     )
+
+
+def _marched(
+    setup: _Setup, flow: Airflow, carried: Array, place: NDArray[np.intp], pressure: Array
+) -> tuple[March, Falling]:
+    """Air marched over places, by the prescribed share or with rain worked out."""
+    settings, members = setup.settings, setup.blocked_top.size
+    if settings.removed_share is not None:
+        share = each(settings.removed_share, members)
+        air = march(setup.start, pressure, share[:, np.newaxis], freezing=settings.freezing)
+        return air, fallen_at_once(air, carried, freezing=settings.freezing)
+    slowness = 1.0 / np.maximum(flow.start_wind[..., np.newaxis] * flow.speed_factor[..., place], SLOWEST)
+    time = np.zeros(slowness.shape)
+    time[..., 1:] = 0.5 * (slowness[..., 1:] + slowness[..., :-1]) * np.diff(setup.distance[place])
+    path = Path(pressure, np.moveaxis(flow.heights[..., place], -1, 0), np.moveaxis(time, -1, 0), carried)
+    cloud_time, fall_time = each(settings.cloud_time, members), each(settings.fall_time, members)
+    return march_with_rain(setup.start, path, cloud_time, fall_time, freezing=settings.freezing)
+
+
+def _carried(upwind: Upwind, start: Parcel, heights: Array, wind: Array) -> Array:
+    """Dry air that flows in the layer of each streamline, for each metre along the range [kg m-1 s-1], (m, nz)."""
+    rows = np.broadcast_to(upwind.density, (heights.shape[0], upwind.height.size))
+    density = np.stack([np.interp(z, upwind.height, row) for z, row in zip(heights, rows, strict=True)])
+    edge = 0.5 * (heights[:, 1:] + heights[:, :-1])
+    depth = np.diff(np.concatenate([heights[:, :1], edge, heights[:, -1:]], axis=1), axis=1)
+    return np.asarray(density / (1.0 + start.vapour + start.cloud) * wind * depth)
 
 
 def _moved(setup: _Setup, heights: Array, before: Array) -> Array:

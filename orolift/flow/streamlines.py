@@ -14,8 +14,8 @@ if TYPE_CHECKING:
 
 LEAST_STRETCHING = 0.4
 """Least spacing of streamlines over their spacing upwind: below it the wave breaks, and the wind would be more than 2.5
-times the upwind one. A judgement: 2.4 times is what transitional flow (Smith 1985, J. Atmos. Sci. 42, 2597-2603) reaches
-over a range of N h / U = 0.3, and 1.7 times what waves of finite amplitude reach before they overturn."""
+times the upwind one. A judgement: transitional flow (Smith 1985, J. Atmos. Sci. 42, 2597-2603) over a range of
+N h / U = 0.3 reaches 2.4 times, waves of finite amplitude 1.7 times before they overturn."""
 LARGEST_WAVE_STRETCHING = 2.0
 """Spacing by waves at which linear theory brings the air to rest (wind perturbation -U): there the wave breaks."""
 
@@ -81,7 +81,7 @@ def streamlines(
     --------
     >>> lines = streamlines([0.0, 100.0, 200.0], [[50.0], [-60.0], [0.0]])
     >>> lines.heights[:, 0], lines.breaking[:, 0]
-    (array([ 50.,  75., 200.]), array([ True,  True, False]))
+    (array([ 50.,  90., 200.]), array([ True,  True, False]))
     """
     least = float(within("least_stretching", least_stretching, 0.01, 1.0, "", "It is a share of the upwind spacing."))
     start = np.asarray(start_heights, np.float64)[..., None]

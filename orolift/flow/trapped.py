@@ -151,8 +151,8 @@ def _pole(column: Layers, guess: complex) -> complex | None:
         step = new_ratio * (new - old) / change
         old, old_ratio = new, new_ratio
         new = new - step
-        if not 0.0 < new.real < 1.0:
-            return None
+        if abs(new - guess) > 0.5 * abs(guess):
+            return None  # the way leads to another pole, or to none
         if abs(step) < 1e-9 * abs(new):
             return new
     return None

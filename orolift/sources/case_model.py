@@ -151,8 +151,18 @@ class HeatTable(Table):
 class Rain(Table):
     """How the condensed water leaves."""
 
-    removed_share: Share = Field(
-        default=0.7, description="share of the condensed water that rains out; 0 keeps all of it, 1 removes all of it"
+    cloud_time_s: Annotated[float, Field(ge=50.0, le=20000.0)] = Field(
+        default=1000.0, description="in which cloud turns to falling water"
+    )
+    fall_time_s: Annotated[float, Field(ge=50.0, le=20000.0)] = Field(
+        default=1000.0, description="in which falling water lands"
+    )
+    removed_share: Share | None = Field(
+        default=None,
+        description="share of the condensed water that leaves at once, instead of the two times",
+    )
+    background_mm_per_h: Annotated[float, Field(ge=0.0, le=50.0)] = Field(
+        default=0.0, description="rain that falls anyway, added everywhere"
     )
     freezing: bool = Field(default=True, description="condensate freezes between 0 and -20 degC; false keeps it liquid")
 

@@ -163,6 +163,8 @@ def _inputs(case: Case, path: Path, text: str) -> Inputs:
 def _settings(case: Case) -> Settings:
     return Settings(
         removed_share=case.rain.removed_share,
+        cloud_time=case.rain.cloud_time_s,
+        fall_time=case.rain.fall_time_s,
         going_round_share=case.flow.going_round_share,
         mixing_depth=case.lee.mixing_depth_m,
         roughness=case.lee.roughness_m,

@@ -258,7 +258,7 @@ def sampled(raster: RasterFile, row: Any, column: Any, step: int) -> NDArray[np.
         c0, c1 = _window_limits(column[part], step, raster.dataset.width)
         if r1 <= r0 or c1 <= c0:
             continue
-        cells = _cells(raster, (r0, r1), (c0, c1), step)
+        cells = window_ground(raster, (r0, r1), (c0, c1), step)
         scale_r, scale_c = (r1 - r0) / cells.shape[0], (c1 - c0) / cells.shape[1]
         ground[part] = bilinear(
             cells, (row[part] + 0.5 - r0) / scale_r - 0.5, (column[part] + 0.5 - c0) / scale_c - 0.5
@@ -276,8 +276,23 @@ def _window_limits(position: NDArray[np.float64], step: int, size: int) -> tuple
     return max(first, 0), min(last, size)
 
 
-def _cells(raster: RasterFile, rows: tuple[int, int], columns: tuple[int, int], step: int) -> NDArray[np.float64]:
-    """Ground of a window of cells in metres, missing as NaN, sea as 0."""
+def window_ground(
+    raster: RasterFile, rows: tuple[int, int], columns: tuple[int, int], step: int
+) -> NDArray[np.float64]:
+    """Ground of a window of cells in metres, missing as NaN, sea as 0; means of `step` x `step` cells.
+
+    Parameters
+    ----------
+    raster : RasterFile
+    rows, columns : (int, int)
+        First and one past last.
+    step : int
+        1 for the cells themselves.
+
+    Returns
+    -------
+    ndarray, shape of the window over `step`, rounded up [m]
+    """
     values: NDArray[np.float64] = _raw_cells(raster, rows, columns, step).astype(np.float64).filled(np.nan)
     return _ground(raster, values)
 

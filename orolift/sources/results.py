@@ -252,15 +252,17 @@ def _flow(crossing: Crossing) -> FlowBlock:
 
 
 def _rain(crossing: Crossing) -> RainBlock:
-    water = crossing.water
+    water, rain = crossing.water, crossing.rain
+    column = water.column_vapour_flux
     return RainBlock(
         rain_out_share=water.removed / water.condensed if water.condensed > 0.0 else None,
         drying_ratio=water.removed / water.vapour_in,
-        drying_ratio_full_column=water.removed / water.column_vapour_flux if water.column_vapour_flux > 0.0 else None,
-        windward_share=None,
-        peak_mm_per_h=None,
-        peak_km=None,
-        total_kg_per_m_s=water.removed,
+        drying_ratio_full_column=water.removed / column if column > 0.0 else None,
+        windward_share=rain.windward_share,
+        peak_mm_per_h=3600.0 * rain.peak_rate,
+        peak_km=None if rain.peak_distance is None else (rain.peak_distance + crossing.transect.origin) / 1000.0,
+        total_kg_per_m_s=rain.total,
+        range={"drying_ratio": (rain.drying_ratio_low, rain.drying_ratio_high)},
     )
 
 

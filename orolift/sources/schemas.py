@@ -37,7 +37,13 @@ UNIT_WORDS = {
     "deg": "degrees clockwise from north",
     "percent": "per cent",
     "c_per_km": "degrees Celsius per kilometre",
+    "mm": "millimetres of water",
+    "in": "inches of water",
     "f_per_1000ft": "degrees Fahrenheit per 1000 feet",
+    "mm_per_h": "millimetres per hour",
+    "in_per_h": "inches per hour",
+    "s": "seconds",
+    "h": "hours",
 }
 
 Schema = dict[str, Any]

@@ -1,4 +1,4 @@
-"""A CSV table whose column names carry their units: names, numbers, line of each row."""
+"""A CSV table whose column names carry their units: numbers, texts, line of each row."""
 
 from __future__ import annotations
 
@@ -38,14 +38,18 @@ class Column:
     Attributes
     ----------
     name : str
-        Name with the usual unit, ``temperature_c``; other units of the kind are read too.
+        Name with the usual unit, ``temperature_c``; other units of the kind are read too. A name
+        that ends in no unit (``longitude``) is read as it is.
     low, high : float
         Plausible range, in the unit of `name`.
+    text : bool
+        True for a column of names; it has no range.
     """
 
     name: str
-    low: float
-    high: float
+    low: float = -math.inf
+    high: float = math.inf
+    text: bool = False
 
 
 @dataclass(frozen=True)
@@ -60,6 +64,8 @@ class NumberTable:
         By quantity, without the unit: ``temperature`` in K, ``height`` in m; NaN where missing.
     line : ndarray of int (n,)
         Line of the file each row stands on, first line 1.
+    texts : mapping of str to tuple of str, length n
+        Columns of text, as they stand.
     notes : tuple of str
         How unusual cells were read.
     """
@@ -67,6 +73,7 @@ class NumberTable:
     name: str
     columns: Mapping[str, NDArray[np.float64]]
     line: NDArray[np.int64]
+    texts: Mapping[str, tuple[str, ...]] = field(default_factory=dict)
     notes: tuple[str, ...] = ()
 
 
@@ -79,6 +86,7 @@ class _Head:
     usual: Column
     to_usual: tuple[float, float]
     values: array[float] = field(default_factory=lambda: array("d"))
+    texts: list[str] = field(default_factory=list)
     comma_line: int = 0
     could_be_thousands: bool = True
     code_line: int = 0
@@ -131,13 +139,28 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
                 f"{where}: more than {MOST_ROWS} rows. Is it the right file? If so, keep every tenth row."
             )
         for cell, head in zip(row, heads, strict=True):
-            head.values.append(_number(cell, head, number, where))
+            if head.usual.text:
+                head.texts.append(cell)
+            else:
+                head.values.append(_number(cell, head, number, where))
         line_numbers.append(number)
     if not line_numbers:
         raise DataFileError(f"{name}: has a header and no rows.")
     notes = _reading_notes(heads, name)
-    columns = {head.stem: to_si(np.frombuffer(head.values, dtype=np.float64), head.suffix) for head in heads}
-    return NumberTable(name, columns, np.frombuffer(line_numbers, dtype=np.int64), notes)
+    columns = {head.stem: _in_si(head) for head in heads if not head.usual.text}
+    texts = {head.stem: tuple(head.texts) for head in heads if head.usual.text}
+    return NumberTable(name, columns, np.frombuffer(line_numbers, dtype=np.int64), texts, notes)
+
+
+def _in_si(head: _Head) -> NDArray[np.float64]:
+    """Values in SI; of a column without a unit as they are."""
+    values = np.frombuffer(head.values, dtype=np.float64)
+    return to_si(values, head.suffix) if head.suffix else values.copy()
+
+
+def _key(head: _Head) -> str:
+    """Name of a column as it stands, for messages."""
+    return f"{head.stem}_{head.suffix}" if head.suffix else head.stem
 
 
 def _data_lines(text: str) -> Iterator[tuple[int, str]]:
@@ -179,17 +202,20 @@ def _heads(cells: list[str], allowed: Sequence[Column], where: str) -> list[_Hea
     heads = []
     for cell in cells:
         column, stem, suffix = _column(cell, allowed, where)
-        own, usual = UNITS.get(suffix), UNITS[(suffix_of(column.name) or ("", suffix))[1]]
-        if own is None:  # every column carries a unit
-            raise DataFileError(f"{where}: column '{cell}' has no unit.")
-        heads.append(
-            _Head(stem, suffix, column, (own.factor / usual.factor, (own.offset - usual.offset) / usual.factor))
-        )
+        heads.append(_Head(stem, suffix, column, _to_usual(column, suffix)))
     stems = [head.stem for head in heads]
     twice = next((stem for stem in stems if stems.count(stem) > 1), None)
     if twice is not None:
         raise DataFileError(f"{where}: {twice} stands in two columns; keep one.")
     return heads
+
+
+def _to_usual(column: Column, suffix: str) -> tuple[float, float]:
+    """Factor and offset from the unit of a column in the file to that of its usual name."""
+    if not suffix:
+        return 1.0, 0.0
+    own, usual = UNITS[suffix], UNITS[(suffix_of(column.name) or ("", suffix))[1]]
+    return own.factor / usual.factor, (own.offset - usual.offset) / usual.factor
 
 
 def _reading_notes(heads: list[_Head], name: str) -> tuple[str, ...]:
@@ -198,7 +224,7 @@ def _reading_notes(heads: list[_Head], name: str) -> tuple[str, ...]:
     for head in commas:
         if head.could_be_thousands:
             raise DataFileError(
-                f"{name}: line {head.comma_line}: the commas of {head.stem}_{head.suffix} may separate decimals or "
+                f"{name}: line {head.comma_line}: the commas of {_key(head)} may separate decimals or "
                 "thousands: every one is followed by three digits. Write decimal points."
             )
     notes = []
@@ -206,8 +232,7 @@ def _reading_notes(heads: list[_Head], name: str) -> tuple[str, ...]:
         line = min(head.comma_line for head in commas)
         notes.append(f"{name}: decimal commas are read as decimal points (first on line {line}).")
     notes += [
-        f"{name}: numbers such as 999 or 9999 in {head.stem}_{head.suffix} are read as no value (first on line "
-        f"{head.code_line})."
+        f"{name}: numbers such as 999 or 9999 in {_key(head)} are read as no value (first on line {head.code_line})."
         for head in heads
         if head.code_line
     ]
@@ -249,7 +274,7 @@ def _number(cell: str, head: _Head, line: int, where: str) -> float:
             head.code_line = head.code_line or line
             return math.nan
         raise DataFileError(
-            f"{where}: {head.stem}_{head.suffix} {value:g} is outside the plausible range of {head.usual.name}, "
+            f"{where}: {_key(head)} {value:g} is outside the plausible range of {head.usual.name}, "
             f"{head.usual.low:g} to {head.usual.high:g}. Check the column and its unit."
         )
     return value

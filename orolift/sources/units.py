@@ -36,7 +36,7 @@ class Unit:
     offset: float = 0.0
 
 
-# Factors: BIPM SI brochure (2019) for C; NIST SP 811 (2008) Appendix B for F, ft, mi, kt, mph, inHg (0 degC).
+# Factors: BIPM SI brochure (2019) for C; NIST SP 811 (2008) Appendix B for F, ft, mi, kt, mph, in, inHg (0 degC).
 UNITS: dict[str, Unit] = {
     "c": Unit("temperature", 1.0, 273.15),
     "f": Unit("temperature", 5.0 / 9.0, 273.15 - 32.0 * 5.0 / 9.0),
@@ -53,6 +53,12 @@ UNITS: dict[str, Unit] = {
     "deg": Unit("angle", 3.141592653589793 / 180.0),
     "percent": Unit("share", 0.01),
     "c_per_km": Unit("lapse", 1.0e-3),
+    "mm": Unit("water depth", 1.0),  # kg m-2
+    "mm_per_h": Unit("rain rate", 1.0 / 3600.0),  # kg m-2 s-1
+    "in_per_h": Unit("rain rate", 25.4 / 3600.0),
+    "s": Unit("time", 1.0),
+    "h": Unit("duration", 3600.0),
+    "in": Unit("water depth", 25.4),
     "f_per_1000ft": Unit("lapse", 5.0 / 9.0 / 304.8),
 }
 

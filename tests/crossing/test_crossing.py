@@ -242,8 +242,9 @@ def test_a_cold_pool_keeps_the_valley():
     assert cold.lee[0].parts is None
     assert cold.lee[0].temperature == pytest.approx(free.lee[0].temperature - 6.0, abs=1.0)
     assert not cold.lee[1].in_pool
-    # 10 K per km: a deficit of 6 K is a pool of about 600 m (design choice)
-    assert cold.pool.depth == pytest.approx(600.0, abs=120.0)
+    # 10 K per km: 2 K colder is about 200 m deeper (design choice)
+    colder = cross(hill(2000.0), air, sites, lee=Lee(temperature=free.lee[0].temperature - 8.0))
+    assert colder.pool.depth - cold.pool.depth == pytest.approx(200.0, abs=40.0)
 
 
 def test_a_site_on_a_bench_gets_its_own_height():

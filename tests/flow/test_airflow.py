@@ -261,9 +261,9 @@ def test_weight_falls_smoothly():
 
 
 def test_kept_streamlines_are_marked():
-    """Lines that would cross are kept a quarter of their distance apart."""
+    """Lines that would cross are kept two fifths of their distance apart."""
     lines = streamlines([0.0, 100.0, 200.0, 300.0], np.array([[0.0], [0.0], [-150.0], [0.0]]))
-    np.testing.assert_allclose(lines.heights[:, 0], [0.0, 100.0, 125.0, 300.0])
+    np.testing.assert_allclose(lines.heights[:, 0], [0.0, 100.0, 140.0, 300.0])
     np.testing.assert_array_equal(lines.breaking[:, 0], [False, True, True, True])
     assert speed_factor(lines, [0.0, 100.0, 200.0, 300.0], np.zeros(4)).max() <= 4.0
 

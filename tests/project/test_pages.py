@@ -6,7 +6,19 @@ from pathlib import Path
 import pytest
 
 from orolift.sources import ridge_csv, sounding_csv
-from orolift.sources.case_model import Case, Incoming, Place, Rain, SiteTable, Station, Terrain, TransectTable
+from orolift.sources.case_model import (
+    Case,
+    FlowTable,
+    HeatTable,
+    Incoming,
+    LeeTable,
+    Place,
+    Rain,
+    SiteTable,
+    Station,
+    Terrain,
+    TransectTable,
+)
 from orolift.sources.incoming_model import LadderRung, MetarTable, ModelAt, SoundingAt
 from orolift.sources.results import (
     CaseBlock,
@@ -35,7 +47,10 @@ CASE_TABLES = {
     "metar": MetarTable,
     "sounding_at": SoundingAt,
     "model_at": ModelAt,
+    "[flow]": FlowTable,
     "[rain]": Rain,
+    "[lee]": LeeTable,
+    "[heat]": HeatTable,
     "[[site]]": SiteTable,
 }
 RESULTS_TABLES = {

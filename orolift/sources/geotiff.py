@@ -1,0 +1,117 @@
+"""Maps as GeoTIFF: rate, total, rain and snow, with coordinates, units, missing cells and tags."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping, Sequence
+
+    from numpy.typing import NDArray
+
+    from orolift.sources.elevation_map import ElevationMap
+
+    Array = NDArray[np.float64]
+
+NODATA = -9999.0
+HOUR = 3600.0
+
+
+@dataclass(frozen=True, eq=False)
+class Band:
+    """One layer of a map file.
+
+    Attributes
+    ----------
+    name : str
+        What it shows, in words.
+    unit : str
+        In which it is written.
+    values : ndarray, shape (ny, nx)
+        In that unit; NaN where missing.
+    """
+
+    name: str
+    unit: str
+    values: Array
+
+
+def geotiff(bands: Sequence[Band], placed: ElevationMap, tags: Mapping[str, str] | None = None) -> bytes:
+    """A GeoTIFF, whole, to be written with `orolift.sources.files.write_all`.
+
+    Parameters
+    ----------
+    bands : sequence of Band
+        On the grid of the map.
+    placed : ElevationMap
+    tags : mapping of str to str, optional
+        Of the file: title, valid time, what made it.
+
+    Returns
+    -------
+    bytes
+        32-bit floats, compressed, in tiles; missing cells are -9999. The same input gives the same bytes.
+    """
+    from rasterio.io import MemoryFile
+
+    ny, nx = placed.grid.elevation.shape
+    profile = {
+        "driver": "GTiff",
+        "height": ny,
+        "width": nx,
+        "count": len(bands),
+        "dtype": "float32",
+        "crs": placed.crs,
+        "transform": placed.transform,
+        "nodata": NODATA,
+        "compress": "deflate",
+        "predictor": 3,
+        "tiled": True,
+        "blockxsize": 256,
+        "blockysize": 256,
+        "interleave": "band",
+    }
+    with MemoryFile() as memory:
+        with memory.open(**profile) as out:
+            out.update_tags(**(tags or {}))
+            for number, band in enumerate(bands, start=1):
+                out.write(np.where(np.isnan(band.values), NODATA, band.values).astype(np.float32), number)
+                out.set_band_description(number, band.name)
+                out.set_band_unit(number, band.unit)
+        return bytes(memory.read())
+
+
+def rain_maps(
+    placed: ElevationMap, rate: Array, duration: float, snow_share: Array | None, tags: Mapping[str, str]
+) -> dict[str, bytes]:
+    """The map files of a case: rate, total over the duration, and rain and snow apart.
+
+    Parameters
+    ----------
+    placed : ElevationMap
+    rate : ndarray, shape (ny, nx) [kg m-2 s-1]
+    duration : float [s]
+    snow_share : ndarray, shape (ny, nx), or None [1]
+    tags : mapping of str to str
+
+    Returns
+    -------
+    dict of str to bytes
+        Name of the file without its ending, and the GeoTIFF.
+    """
+    hours = duration / HOUR
+    over = f"{hours:g} hours"
+    maps = {
+        "rain_rate": [Band("precipitation rate", "mm h-1", rate * HOUR)],
+        "rain_total": [Band(f"precipitation over {over}", "mm", rate * duration)],
+    }
+    if snow_share is not None:
+        maps["rain_and_snow"] = [
+            Band(f"rain over {over}", "mm", rate * duration * (1.0 - snow_share)),
+            Band(f"snow over {over}, as water", "mm", rate * duration * snow_share),
+            Band("share of the precipitation that is snow", "1", snow_share),
+        ]
+    return {name: geotiff(bands, placed, {**tags, "duration_h": f"{hours:g}"}) for name, bands in maps.items()}
