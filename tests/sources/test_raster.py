@@ -317,7 +317,7 @@ def test_short_hole_is_filled_and_long_one_refused(tmp_path, nodata):
         if cells == 2:
             line = raster_transect(file, **options)
             assert any("filled by straight lines" in note for note in line.notes)
-            np.testing.assert_allclose(line.elevation, whole.ground, atol=3.0)
+            np.testing.assert_allclose(line.elevation, whole.elevation, atol=3.0)
         else:
             with pytest.raises(
                 TerrainError, match=r"hole of (9\.\d+|10) km in the transect, 30\.?\d* km from its upwind"
@@ -341,7 +341,7 @@ def test_missing_cells_beside_the_line_are_left_out_of_the_mean(tmp_path):
     whole = raster_transect(written(tmp_path / "whole.tif", ground, transform), **options)
     ground[203:207, 150:250] = -9999.0
     line = raster_transect(written(tmp_path / "part.tif", ground, transform, nodata=-9999.0), **options)
-    np.testing.assert_allclose(line.elevation, whole.ground, atol=1.0)
+    np.testing.assert_allclose(line.elevation, whole.elevation, atol=1.0)
     assert any("left out of its mean" in note for note in line.notes)
 
 

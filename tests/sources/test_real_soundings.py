@@ -20,9 +20,8 @@ REAL = Path(__file__).parents[1] / "data" / "real_crossings"
 def different_soundings():
     """Each sounding once: pairs share some."""
     found = {}
-    for file in sorted(REAL.glob("pair_*/*.csv")):
-        if not file.stem.endswith("winds"):
-            found.setdefault(file.read_bytes(), file)
+    for file in sorted([*REAL.glob("pair_*/upwind.csv"), *REAL.glob("pair_*/lee.csv")]):
+        found.setdefault(file.read_bytes(), file)
     return list(found.values())
 
 
