@@ -128,13 +128,16 @@ def blended_with_surface(air: IncomingAir, report: SurfaceValues) -> Blend:
         None if report.eastward_wind is None else report.eastward_wind - float(here.eastward_wind),
         None if report.northward_wind is None else report.northward_wind - float(here.northward_wind),
     )
-    top, mixed = _top(air, report, change.temperature)
-    finer = _with_levels(air, (report.elevation, top))
-    temperature = _temperature(finer, report, change.temperature, top, mixed=mixed)
+    mixed_top = _mixed_top(air, report)
+    depth = abs(change.temperature) / NIGHT_RATE if mixed_top is None else mixed_top - report.elevation
+    deepest = DEEPEST_COOLED if mixed_top is None else DEEPEST_MIXED
+    top = report.elevation + float(np.clip(depth, SHALLOWEST, deepest))
+    finer = _with_levels(air, (report.elevation, top, *(() if mixed_top is None else (mixed_top,))))
+    temperature = _temperature(finer, report, change.temperature, top, mixed_top)
     weight = _weight(finer.height, report.elevation, top)
     blended = _hydrostatic(finer, report, change, temperature, weight)
     origin = tuple(_BLENDED if height < top else kind for height, kind in zip(finer.height, finer.origin, strict=True))
-    note = _note(change, top - report.elevation, report, mixed=mixed)
+    note = _note(change, top - report.elevation, report, mixed=mixed_top is not None)
     return Blend(
         replace(blended, origin=origin, notes=(*air.notes, note)),
         top,
@@ -157,21 +160,21 @@ def _check(air: IncomingAir, report: SurfaceValues) -> None:
         )
 
 
-def _top(air: IncomingAir, report: SurfaceValues, warmer: float) -> tuple[float, bool]:
-    """Height to which the report reaches, and whether by mixing."""
+def _mixed_top(air: IncomingAir, report: SurfaceValues) -> float | None:
+    """Height to which air as warm as the report mixes; None where it is colder than the column."""
     here = interpolated(air, report.elevation)
     own = virtual_potential_temperature(here.pressure, report.temperature, report.mixing_ratio)
     theta = virtual_potential_temperature(air.pressure, air.temperature, air.vapour, air.cloud)
-    above = air.height > report.elevation
     there = virtual_potential_temperature(here.pressure, here.temperature, here.vapour, here.cloud)
-    if own > there:
-        z = np.concatenate([[report.elevation], air.height[above]])
-        excess = np.concatenate([[there], theta[above]]) - own
-        first = int(np.argmax(excess >= 0.0)) if (excess >= 0.0).any() else z.size - 1
-        share = 1.0 if excess[first] <= 0.0 else -excess[first - 1] / (excess[first] - excess[first - 1])
-        top = float(z[first - 1] + share * (z[first] - z[first - 1]))
-        return float(np.clip(top, report.elevation + SHALLOWEST, report.elevation + DEEPEST_MIXED)), True
-    return report.elevation + float(np.clip(abs(warmer) / NIGHT_RATE, SHALLOWEST, DEEPEST_COOLED)), False
+    if own <= there:
+        return None
+    above = air.height > report.elevation
+    z = np.concatenate([[report.elevation], air.height[above]])
+    excess = np.concatenate([[there], theta[above]]) - own
+    first = int(np.argmax(excess >= 0.0)) if (excess >= 0.0).any() else z.size - 1
+    share = 1.0 if excess[first] <= 0.0 else -excess[first - 1] / (excess[first] - excess[first - 1])
+    top = float(z[first - 1] + share * (z[first] - z[first - 1]))
+    return min(max(top, report.elevation + 1.0), report.elevation + DEEPEST_MIXED)
 
 
 def _with_levels(air: IncomingAir, heights: tuple[float, ...]) -> IncomingAir:
@@ -201,15 +204,13 @@ def _weight(height: Array, elevation: float, top: float) -> Array:
     return np.clip((elevation + depth - height) / depth, 0.0, 1.0)
 
 
-def _temperature(air: IncomingAir, report: SurfaceValues, warmer: float, top: float, *, mixed: bool) -> Array:
-    if not mixed:
+def _temperature(air: IncomingAir, report: SurfaceValues, warmer: float, top: float, mixed_top: float | None) -> Array:
+    if mixed_top is None:
         return np.asarray(air.temperature + warmer * _weight(air.height, report.elevation, top), dtype=np.float64)
     p_here = float(interpolated(air, report.elevation).pressure)
-    theta = potential_temperature(p_here, report.temperature)
-    adiabat = temperature_from_potential_temperature(air.pressure, theta)
-    below = air.temperature + warmer
-    within_layer = np.where(air.height < report.elevation, below, np.maximum(adiabat, air.temperature))
-    return np.asarray(np.where(air.height < top, within_layer, air.temperature), dtype=np.float64)
+    adiabat = temperature_from_potential_temperature(air.pressure, potential_temperature(p_here, report.temperature))
+    mixed = np.where(air.height < report.elevation, air.temperature + warmer, adiabat)
+    return np.asarray(np.where(air.height < mixed_top, mixed, air.temperature), dtype=np.float64)
 
 
 def _hydrostatic(
