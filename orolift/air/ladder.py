@@ -144,21 +144,16 @@ def air_from_ladder(
         f"Between the {len(rungs)} stations, from {z[0]:.0f} to {z[-1]:.0f} m, temperature, relative humidity and wind "
         "change evenly with height (assumed)."
     )
+    notes = (note,) if len(rungs) > 1 else ()
+    low = IncomingAir(height, p, t, vapour, np.zeros_like(vapour), eastward, northward, origin, notes)
+    return _joined(low, above)
 
-    def joined(low: Array, high: Array) -> Array:
-        return np.concatenate([low, high[1:]])
 
-    return IncomingAir(
-        height=joined(height, above.height),
-        pressure=joined(p, above.pressure),
-        temperature=joined(t, above.temperature),
-        vapour=joined(vapour, above.vapour),
-        cloud=joined(np.zeros_like(vapour), above.cloud),
-        eastward_wind=joined(eastward, above.eastward_wind),
-        northward_wind=joined(northward, above.northward_wind),
-        origin=(*origin, *above.origin[1:]),
-        notes=(note, *above.notes) if len(rungs) > 1 else above.notes,
-    )
+def _joined(low: IncomingAir, high: IncomingAir) -> IncomingAir:
+    """Two columns, the upper of which begins with the last level of the lower."""
+    names = ("height", "pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
+    fields = {name: np.concatenate([getattr(low, name), getattr(high, name)[1:]]) for name in names}
+    return IncomingAir(**fields, origin=(*low.origin, *high.origin[1:]), notes=(*low.notes, *high.notes))
 
 
 def _check(stations: Sequence[LadderStation]) -> None:

@@ -37,6 +37,8 @@ USUAL_FALL_TIME = 1000.0
 MELTING_FROM, MELTING_TO = 273.15, 275.15
 """Falling snow melts between these temperatures [K]; half at 1 degree Celsius, the mean rain-snow threshold of Jennings
 et al. (2018), Nature Comm. 9, 1148."""
+NOTHING_LEFT = 1e-9
+"""Falling water [kg m-1 s-1] below which, beyond the last cloud, the rest is counted as carried out of the transect."""
 BLOCK, NO_SHARE = 16, 1e-18
 """Layers whose running products are taken together, and the share that stands for none, so that none overflows."""
 
@@ -122,28 +124,52 @@ def march_with_rain(
     for all rain and one for all snow, no falling water upwind.
     """
     shape = (path.pressure.shape[0], *np.shape(start.temperature))
-    out = {key: np.zeros(shape) for key in ("temperature", "vapour", "cloud", "condensed", "removed", "entropy")}
+    s0, water = np.asarray(entropy(start, freezing=freezing)), start.vapour + start.cloud
+    kept = equilibrium_from_entropy(path.pressure, s0, water, freezing=freezing)
+    condensed = np.maximum(np.diff(kept.cloud, axis=0, prepend=start.cloud[np.newaxis]), 0.0)
+    out = {
+        "temperature": kept.temperature,
+        "vapour": kept.vapour,
+        "cloud": kept.cloud,
+        "condensed": condensed,
+        "removed": np.zeros(shape),
+        "entropy": np.broadcast_to(s0, shape).copy(),
+    }
     landed, snow, evaporated = (np.zeros(shape[:2]) for _ in range(3))
     aloft = np.zeros(shape)
-    state = _State(start, np.asarray(entropy(start, freezing=freezing)), np.zeros(shape[1:]), start.temperature)
-    depth = _layer_depth(path.height)
+    cloudy = kept.cloud > 0.0
+    if not cloudy.any():
+        return March(pressure=path.pressure, **out), Falling(landed, snow, aloft, np.zeros(shape[1]), evaporated)
+    # rain touches only streamlines up to the highest cloudy one, from the first cloudy place on
+    low = slice(0, int(np.flatnonzero(cloudy.any(axis=(0, 1)))[-1]) + 1)
+    places = np.flatnonzero(cloudy.any(axis=(1, 2)))
+    first, last = int(places[0]), int(places[-1])
+    state = _start(start, kept, s0, first, low)
+    rest = Path(path.pressure[..., low], path.height[..., low], path.step_time[..., low], path.carried[:, low])
+    depth = _layer_depth(path.height)[..., low]
     scale = (USUAL_FALL_TIME / fall_time)[:, np.newaxis]
-    turning = 1.0 - np.exp(-path.step_time / cloud_time[:, np.newaxis])
-    water = start.vapour + start.cloud
-    guess = start.temperature
-    for i in range(shape[0]):
+    turning = 1.0 - np.exp(-rest.step_time / cloud_time[:, np.newaxis])
+    stop = shape[0]
+    for i in range(first, shape[0]):
+        if i > last and float(np.sum(rest.carried * state.falling)) < NOTHING_LEFT:
+            stop = i
+            break
+        water = state.parcel.vapour + state.parcel.cloud
         parcel = equilibrium_from_entropy(
-            path.pressure[i], state.entropy, water, freezing=freezing, first_guess=guess, tolerance=1e-3
+            rest.pressure[i],
+            state.entropy,
+            water,
+            freezing=freezing,
+            first_guess=state.parcel.temperature,
+            tolerance=1e-3,
         )
         new = np.maximum(parcel.cloud - state.parcel.cloud, 0.0)
         turned = turning[i] * parcel.cloud
         state, step = _rained(
-            parcel, state, turned, path.carried, path.step_time[i], depth[i], scale, freezing=freezing
+            parcel, state, turned, rest.carried, rest.step_time[i], depth[i], scale, freezing=freezing
         )
         landed[i], snow[i], evaporated[i] = step
-        aloft[i] = state.falling
-        water = state.parcel.vapour + state.parcel.cloud
-        guess = state.parcel.temperature
+        aloft[i, :, low] = state.falling
         for key, value in (
             ("temperature", state.parcel.temperature),
             ("vapour", state.parcel.vapour),
@@ -152,9 +178,34 @@ def march_with_rain(
             ("removed", turned),
             ("entropy", state.entropy),
         ):
-            out[key][i] = value
-    beyond = np.sum(path.carried * state.falling, axis=-1)
+            out[key][i, :, low] = value
+    if stop < shape[0]:
+        _clear(out, rest.pressure, state, slice(stop, shape[0]), low, freezing=freezing)
+    beyond = np.sum(rest.carried * state.falling, axis=-1)
     return March(pressure=path.pressure, **out), Falling(landed, snow, aloft, beyond, evaporated)
+
+
+def _start(start: Parcel, kept: Parcel, s0: Array, first: int, low: slice) -> _State:
+    """Air just before the first cloudy place."""
+    if first == 0:
+        parcel = Parcel(*(np.broadcast_to(x, s0.shape)[:, low] for x in _fields(start)))
+    else:
+        parcel = Parcel(*(x[first - 1][:, low] for x in _fields(kept)))
+    return _State(parcel, s0[:, low], np.zeros_like(parcel.temperature), parcel.temperature)
+
+
+def _fields(parcel: Parcel) -> tuple[Array, Array, Array, Array]:
+    return parcel.pressure, parcel.temperature, parcel.vapour, parcel.cloud
+
+
+def _clear(out: dict[str, Array], pressure: Array, state: _State, rest: slice, low: slice, *, freezing: bool) -> None:
+    """Places beyond the last cloud and rain, solved at once."""
+    water = state.parcel.vapour + state.parcel.cloud
+    clear = equilibrium_from_entropy(pressure[rest], state.entropy, water, freezing=freezing)
+    for key, value in (("temperature", clear.temperature), ("vapour", clear.vapour), ("cloud", clear.cloud)):
+        out[key][rest, :, low] = value
+    out["condensed"][rest, :, low] = 0.0
+    out["entropy"][rest, :, low] = state.entropy
 
 
 @dataclass(frozen=True, eq=False)

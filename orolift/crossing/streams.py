@@ -2,19 +2,20 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from orolift.air.column import interpolated
 from orolift.air.condensation import condensation_point
-from orolift.air.parcel import Parcel, entropy, equilibrium_from_entropy
+from orolift.air.parcel import Parcel
 from orolift.air.temperature import virtual_temperature
 from orolift.constants import GRAVITY, KAPPA, R_DRY
 from orolift.crossing.falling import Falling, Path, fallen_at_once, march_with_rain
 from orolift.crossing.march import March, march
 from orolift.crossing.settings import each
+from orolift.crossing.start import mass_of_streamlines, start_heights, starting_air
 from orolift.crossing.upwind import LEAST_VAPOUR, Upwind
 from orolift.flow.airflow import Airflow, airflow, highest_pressure, joined
 from orolift.flow.boundary import start_level
@@ -30,18 +31,15 @@ if TYPE_CHECKING:
 
 CREST_CLOUD = 500.0
 """Streamlines that start up to this far above the crest [m] count for where cloud ends in the lee; a judgement."""
-LOWEST_SPACING = 25.0
-"""Spacing [m] of the lowest streamlines upwind."""
 PASSES = 4
 """Most times the flow is worked out, each with the saturation of the one before."""
 SLOWEST = 1.0
 """Wind [m s-1] below which time along a streamline is counted with this."""
-EARLY_STRIDE = 8
-"""In all passes but the last the air is marched over every eighth place: they need only to know where cloud is."""
-MOST_PLACES = 512
-"""Places at which the air is marched in the last pass: the removal of water is then good to 0.01 K."""
-MOST_RAIN_PLACES = 256
-"""The same where rain is worked out: steps of some tens of seconds are short against a cloud time of 1000 s."""
+EARLY_POINTS, EARLY_PLACES = 256, 64
+"""Points of the transect and places of the march in all passes but the last: they only find where cloud is."""
+MOST_PLACES = 256
+"""Places of the march in the last pass: the removal of a prescribed share is then good to 0.02 K, and steps of some tens
+of seconds are short against a cloud time of 1000 s."""
 SETTLED = 50.0
 """Change of a low streamline's height [m] in the last pass above which the passes have not settled; a judgement."""
 
@@ -137,37 +135,48 @@ def streams(
     wet = Parcel(start.pressure, start.temperature, np.maximum(start.vapour, LEAST_VAPOUR), start.cloud)
     saturates = condensation_point(wet, freezing=freezing).pressure
     setup = _Setup(
-        incoming,
-        upwind,
-        distance,
-        ground,
-        crest,
-        blocked_top,
-        pool_top,
-        heights,
-        start,
-        saturates,
-        settings,
+        incoming, upwind, distance, ground, crest, blocked_top, pool_top, heights, start, saturates, settings
     )
-    dry = _over(setup, upwind.dry)
+    coarse = _thinned(setup, max(1, distance.size // EARLY_POINTS))
+    dry = _over(coarse, upwind.dry)
     carried = _carried(upwind, start, heights, dry.start_wind)
     rows = np.broadcast_to(upwind.lifted_share, (heights.shape[0], upwind.height.size))
     lifted = np.stack([np.interp(z, upwind.height, row) for z, row in zip(heights, rows, strict=True)])
-    state = _Pass(dry, np.arange(distance.size), None, np.ones((1, 1, distance.size)), lifted, None, np.inf)
+    state = _Pass(dry, distance[:1], None, np.ones((1, 1, 1)), lifted, None, np.inf)
     for _ in range(passes - 1):
-        state = _next(setup, dry, state, carried, EARLY_STRIDE)
+        state = _next(coarse, dry, state, carried, max(1, coarse.distance.size // EARLY_PLACES))
         if np.all(state.moved <= SETTLED):
             break
-    most = MOST_PLACES if settings.removed_share is not None else MOST_RAIN_PLACES
-    state = _next(setup, dry, state, carried, max(1, -(-distance.size // most)))
+    moved = state.moved
+    dry = dry if coarse.distance.size == distance.size else _over(setup, upwind.dry)
+    state = _next(setup, dry, state, carried, max(1, -(-distance.size // MOST_PLACES)))
     if state.air is None or state.falling is None:
         raise ValueError("the last pass marches the air")
-    settled = np.broadcast_to(np.asarray(state.moved) <= SETTLED, (blocked_top.size,)) | (passes == 1)
+    settled = np.broadcast_to(np.asarray(moved) <= SETTLED, (blocked_top.size,)) | (passes < 3)
     flow = state.flow
-    mass, place, air, falling = _mass(source.pressure), state.place, state.air, state.falling
+    mass, place = mass_of_streamlines(source.pressure), np.searchsorted(distance, state.place)
     return Streams(
-        start, source, mixed, inflow_depth, mass, flow, flow.start_wind, place, air, carried, falling, settled
+        start,
+        source,
+        mixed,
+        inflow_depth,
+        mass,
+        flow,
+        flow.start_wind,
+        place,
+        state.air,
+        carried,
+        state.falling,
+        settled,
     )
+
+
+def _thinned(setup: _Setup, every: int) -> _Setup:
+    """The same on fewer points of the transect, the crest among them."""
+    if every == 1:
+        return setup
+    part = slice(setup.crest % every, None, every)
+    return replace(setup, distance=setup.distance[part], ground=setup.ground[part], crest=setup.crest // every)
 
 
 @dataclass(frozen=True, eq=False)
@@ -189,10 +198,10 @@ class _Setup:
 
 @dataclass(frozen=True, eq=False)
 class _Pass:
-    """What a pass hands on: flow, places of the march, its air and rain, pressure ratio, saturated share, cloud end."""
+    """What a pass hands on: flow, places of the march, its air, pressure ratio, saturated share, cloud end, rain."""
 
     flow: Airflow
-    place: NDArray[np.intp]
+    place: Array
     air: March | None
     change: Array
     share: Array
@@ -207,17 +216,18 @@ def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, stride: in
     end = np.full(members, setup.distance[setup.crest]) if before.end is None else before.end
     flow = _flow(setup, dry, before.share, end)
     place = np.union1d(np.arange(0, size, stride), [setup.crest, size - 1])
-    pressure, change = _pressure(setup, flow, setup.start, place, before.air, before.place, before.change)
+    pressure, change = _pressure(setup, flow, place, before)
     air, falling = _marched(setup, flow, carried, place, np.moveaxis(pressure, -1, 0))
     found = _saturated_share(air, setup.start, setup.saturates, place <= setup.crest)
+    same_points = before.air is not None and before.flow.heights.shape == flow.heights.shape
     return _Pass(
         flow=flow,
-        place=place,
+        place=setup.distance[place],
         air=air,
         change=change,
         share=found if before.air is None else 0.5 * (before.share + found),
         end=_cloud_end(setup, air, place),
-        moved=np.inf if before.air is None else _moved(setup, flow.heights, before.flow.heights),
+        moved=_moved(setup, flow.heights, before.flow.heights) if same_points else np.inf,
         falling=falling,
     )
 
@@ -280,29 +290,22 @@ def _flow(setup: _Setup, dry: Airflow, share: Array, end: Array) -> Airflow:
     return joined(moist, dry, join_weight(setup.distance, np.full(end.shape, setup.distance[setup.crest]), end))
 
 
-def _pressure(
-    setup: _Setup,
-    flow: Airflow,
-    start: Parcel,
-    place: NDArray[np.intp],
-    air: March | None,
-    before: NDArray[np.intp],
-    change: Array,
-) -> tuple[Array, Array]:
+def _pressure(setup: _Setup, flow: Airflow, place: NDArray[np.intp], before: _Pass) -> tuple[Array, Array]:
     """Pressure on the streamlines at places, (m, nz, nk), and its ratio to that of the undisturbed column there.
 
     Virtual potential temperature, which hardly changes along a streamline, is carried over from the places of the pass
-    before (there with ratio `change`), so that heights between them count in full.
+    before, so that heights between them count in full.
     """
+    air, start = before.air, setup.start
     heights = flow.heights[..., place]
     limited = np.minimum(heights, setup.incoming.height[-1])
     flat = limited.reshape(limited.shape[0], -1)
     undisturbed = interpolated(setup.incoming, flat).pressure.reshape(heights.shape)
     if air is None:
         return undisturbed, np.ones_like(undisturbed)
-    x_before, x = setup.distance[before], setup.distance[place]
+    x_before, x = before.place, setup.distance[place]
     theta_v = virtual_temperature(air.temperature, air.vapour, air.cloud) / air.pressure**KAPPA
-    pressure = undisturbed * _between_places(change, x_before, x)
+    pressure = undisturbed * _between_places(before.change, x_before, x)
     virtual = _between_places(np.moveaxis(theta_v, 0, -1), x_before, x) * pressure**KAPPA
     density = start.pressure[:, -1] / (
         R_DRY * virtual_temperature(start.temperature[:, -1], start.vapour[:, -1], start.cloud[:, -1])
@@ -349,90 +352,3 @@ def _cloud_end(setup: _Setup, air: March, place: NDArray[np.intp]) -> Array:
     lee = np.flatnonzero(place >= setup.crest)
     whole = np.cumprod(cloudy[lee], axis=0).sum(axis=0)
     return np.asarray(setup.distance[place[lee[np.maximum(whole - 1, 0)]]])
-
-
-def start_heights(bottom: Array, top: float, count: int) -> Array:
-    """Heights at which streamlines start, close together below, (m, nz).
-
-    Parameters
-    ----------
-    bottom : ndarray (m,) [m]
-    top : float [m]
-    count : int
-
-    Returns
-    -------
-    ndarray (m, nz) [m]
-        25 m apart below, their spacing growing by one factor upward.
-    """
-    steps = count - 1
-    out = np.empty((bottom.size, count))
-    for i, low in enumerate(bottom):
-        depth = top - float(low)
-        growth = _growth(depth / LOWEST_SPACING, steps)
-        spacing = growth ** np.arange(steps)
-        out[i] = low + np.concatenate([[0.0], np.cumsum(spacing)]) * (depth / spacing.sum())
-    return out
-
-
-def _growth(ratio: float, steps: int) -> float:
-    """Factor by which steps grow so that they add up to `ratio` first steps; at least 1."""
-    low, high = 1.0, 2.0
-    if steps >= ratio:
-        return 1.0
-    for _ in range(50):
-        middle = 0.5 * (low + high)
-        if (middle**steps - 1.0) / (middle - 1.0) > ratio:
-            high = middle
-        else:
-            low = middle
-    return high
-
-
-def starting_air(
-    incoming: IncomingAir, heights: Array, depth: float, *, freezing: bool
-) -> tuple[Parcel, Parcel, NDArray[np.bool_]]:
-    """Air of the streamlines before the range: mixed in the lowest layer, and as it is in the column.
-
-    Parameters
-    ----------
-    incoming : IncomingAir, fields (m, nz_column) or (nz_column,)
-    heights : ndarray (m, nz) [m above sea level]
-    depth : float [m]
-        Of the mixed layer.
-    freezing : bool
-
-    Returns
-    -------
-    start, source : Parcel, fields (m, nz)
-    mixed : ndarray of bool, (m, nz)
-
-    Notes
-    -----
-    Mixed air has the mean moist entropy and total water of the layer, by mass:
-    the potential temperature and the vapour of unsaturated air.
-    """
-    there = interpolated(incoming, heights)
-    source = Parcel(
-        *(np.broadcast_to(x, heights.shape) for x in (there.pressure, there.temperature, there.vapour, there.cloud))
-    )
-    mixed = heights <= heights[:, :1] + depth
-    mass = np.where(mixed, _mass(source.pressure), 0.0)
-    mass = mass / mass.sum(axis=-1, keepdims=True)
-    s, water = entropy(source, freezing=freezing), source.vapour + source.cloud
-    s_mean, water_mean = (np.sum(mass * x, axis=-1, keepdims=True) for x in (s, water))
-    start = equilibrium_from_entropy(
-        source.pressure,
-        np.where(mixed, s_mean, s),
-        np.where(mixed, water_mean, water),
-        freezing=freezing,
-        first_guess=source.temperature,
-    )
-    return start, source, mixed
-
-
-def _mass(pressure: Array) -> Array:
-    """Mass that belongs to each streamline, by pressure halfway to its neighbours."""
-    edge = 0.5 * (pressure[..., 1:] + pressure[..., :-1])
-    ends = np.concatenate([pressure[..., :1], edge, pressure[..., -1:]], axis=-1)
-    return np.asarray(ends[..., :-1] - ends[..., 1:])

@@ -1,24 +1,35 @@
-"""What to say in the briefing: three sentences and the key numbers."""
+"""What to say in the briefing: the flow, the air at the first site, its wind, and the key numbers with their ranges."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-import numpy as np
-
-from orolift.constants import MELTING_POINT
+from orolift.report.causes import cause_noun, main_cause
+from orolift.report.lee_wind import range_words
 from orolift.report.quantities import Amount
+from orolift.report.story import (
+    SAME,
+    blocked_words,
+    cloudy_to_the_end,
+    dew_point_ends,
+    difference,
+    drying_ends,
+    fallen_share,
+    falling,
+    is_blocked,
+    main_site,
+    rains,
+    reaches_the_ground_or_not,
+    source_words,
+    starts_saturated,
+    temperature_ends,
+    with_ends,
+)
 from orolift.report.words import Words, fraction_in_words, point_of_compass, sentence
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
-
-SAME = 0.05
-"""Temperatures nearer than this [K] read alike at one decimal."""
-
-ROUNDING = 10.0
-"""Heights of cloud are shown to this [m]."""
 
 
 @dataclass(frozen=True)
@@ -31,6 +42,8 @@ class KeyNumber:
     amount : Amount or None
         None when there is none; then `instead` is shown.
     instead : str
+    span : Words
+        Its range, shown smaller in the same line; empty without one.
     remark : Words
         What the number refers to.
     """
@@ -38,6 +51,7 @@ class KeyNumber:
     name: str
     amount: Amount | None
     instead: str
+    span: Words
     remark: Words
 
 
@@ -76,176 +90,270 @@ def briefing(crossing: Crossing, bearing: float, freezing_level: float) -> Brief
     Briefing
     """
     site = main_site(crossing)
+    both = (_both_answers(crossing, site),) if reaches_the_ground_or_not(crossing, site) else ()
     return Briefing(
         heading=_heading(crossing, site),
-        sentences=(_windward(crossing, bearing), _lee(crossing, site), _other_answer(crossing, site)),
+        sentences=(
+            *both,
+            (*_flow(crossing, bearing), " ", *_cloud(crossing)),
+            _lee(crossing, site),
+            _wind(crossing, site),
+        ),
         key_numbers=_key_numbers(crossing, site, freezing_level),
         doubts=crossing.cautions,
     )
 
 
-def main_site(crossing: Crossing) -> LeeAir:
-    """The site the page leads with: the first in the lee, else the first."""
-    return next((air for air in crossing.lee if air.side == "lee"), crossing.lee[0])
-
-
-def crest_index(crossing: Crossing) -> int:
-    """Index of the crest along the transect."""
-    return int(np.argmin(np.abs(crossing.distance - crossing.features.crest_distance)))
-
-
-def starts_saturated(crossing: Crossing) -> bool:
-    """Whether the air is in cloud from the upwind end on, to the rounding of heights."""
-    return crossing.cloud.base is not None and crossing.cloud.base - float(crossing.height[0, 0]) < ROUNDING
-
-
-def cloudy_to_the_end(crossing: Crossing) -> bool:
-    """Whether cloud still touches the ground at the downwind end."""
-    return crossing.cloud.end_distance is not None and bool(crossing.cloud.end_distance >= crossing.distance[-1])
-
-
-def fallen_share(crossing: Crossing) -> float:
-    """Water that fell out, as a share of the vapour that came."""
-    return crossing.water.removed / crossing.water.vapour_in if crossing.water.vapour_in > 0.0 else 0.0
-
-
-def prescribed_share(crossing: Crossing) -> Amount:
-    """Share of the condensed water that leaves, as prescribed."""
-    return Amount(float(np.asarray(crossing.settings.removed_share)), "share")
-
-
-def falling(crossing: Crossing) -> str:
-    """What falling out is called: rain, or rain or snow where the air at the crest is below freezing."""
-    cold = crossing.air.temperature[crest_index(crossing), 0] < MELTING_POINT
-    return "falls as rain or snow" if cold else "rains out"
-
-
-def difference(amount: float, more: str, less: str, same: str) -> Words:
-    """A temperature difference in words: how much, and which way.
-
-    Parameters
-    ----------
-    amount : float [K]
-    more, less : str
-        Words after the number when it is above or below zero.
-    same : str
-        Words when it reads as zero.
-
-    Returns
-    -------
-    Words
-    """
-    if abs(amount) < SAME:
-        return (same,)
-    return (Amount(abs(amount), "temperature_difference", 1), f" {more if amount > 0.0 else less}")
-
-
-def _cloud_and_rain(crossing: Crossing) -> Words:
-    """Cloud base and what falls out, for headings."""
-    if crossing.cloud.base is None:
-        return ("No cloud forms",)
-    start: Words = ("Cloud base at ", Amount(crossing.cloud.base, "height", -1))
-    if starts_saturated(crossing):
-        start = ("Cloud from the ground up",)
-    return (*start, f"; {fraction_in_words(fallen_share(crossing))} of the vapour {falling(crossing)}")
-
-
 def _heading(crossing: Crossing, site: LeeAir) -> Words:
-    place = {"lee": "in the lee", "crest": "on the crest", "windward": "on the windward side"}[site.side]
-    return (*_cloud_and_rain(crossing), "; ", Amount(site.temperature, "temperature", 1), f" {place}")
+    here = Amount(site.temperature, "temperature", 1)
+    if site.in_pool and crossing.pool is not None:
+        return (
+            "A cold pool up to ",
+            Amount(crossing.pool.top, "height", -1),
+            f" keeps {site.name} at ",
+            here,
+            "; the warm air passes over it",
+        )
+    if reaches_the_ground_or_not(crossing, site):
+        cold = Amount(site.upwind_temperature, "temperature", 1)
+        return (f"{site.name}: ", here, " if the air breaks through, about ", cold, " if a cold pool stays")
+    if site.in_blocked_air:
+        return ("Low air is blocked up to ", *blocked_words(crossing)[:1], f"; {site.name} lies in it, at ", here)
+    change = difference(site.warming, "warmer than it came", "cooler than it came", "as warm as it came")
+    return (*_flow_clause(crossing), f"; {site.name} has ", here, ", ", *change)
 
 
-def _windward(crossing: Crossing, bearing: float) -> Words:
-    start = (
+def _flow_clause(crossing: Crossing) -> Words:
+    """The flow in a few words."""
+    if is_blocked(crossing):
+        return ("Low air is blocked up to ", Amount(crossing.flow.blocked_top, "height", -1))
+    if rains(crossing):
+        return (
+            f"The air flows over and {fraction_in_words(fallen_share(crossing))} of its vapour {falling(crossing)}",
+        )
+    return ("The air flows over without rain",)
+
+
+def _both_answers(crossing: Crossing, site: LeeAir) -> Words:
+    """Both answers where nothing is known of the air in the lee."""
+    return (
+        "Nothing is known of the air lying in the lee; the chance that the crossing air reaches the ground is put at ",
+        Amount(crossing.flow.break_through_chance, "share"),
+        " (by hour and wind). If it breaks through, ",
+        f"{site.name} gets ",
+        *with_ends(Amount(site.temperature, "temperature", 1), temperature_ends(site)),
+        "; if a cold pool stays, it keeps roughly the temperature of the incoming air at its height, ",
+        Amount(site.upwind_temperature, "temperature", 1),
+        ".",
+    )
+
+
+def _flow(crossing: Crossing, bearing: float) -> Words:
+    """Wind, regime and what is blocked."""
+    flow = crossing.flow
+    start: Words = (
         f"Air from the {point_of_compass(bearing)} (",
         Amount(bearing, "bearing"),
-        ") climbs from ",
-        Amount(float(crossing.height[0, 0]), "height"),
-        " to the crest at ",
+        ") meets the crest at ",
         Amount(crossing.features.crest, "height"),
+        " with ",
+        Amount(flow.crest_wind, "wind"),
+        " across it: N h/U is ",
+        Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2),
+        f", so the flow {_regime_words(flow.regime)}",
     )
-    if crossing.cloud.base is None:
-        return (*start, "; it stays short of saturation, so there is no cloud and no rain from lifting.")
-    cloud: Words = ("; cloud forms at ", Amount(crossing.cloud.base, "height", -1))
-    if starts_saturated(crossing):
-        cloud = ("; it arrives already saturated",)
-    share = fallen_share(crossing)
-    if share <= 0.0:
-        return (*start, *cloud, ", and all the water that condenses stays in the air.")
+    others = [one for one in flow.possible_regimes if one != flow.regime]
+    if others:
+        start = (*start, f" ({' or '.join(_regime_words(one) for one in others)} within the uncertainty)")
+    if not is_blocked(crossing):
+        return (*start, ". Nothing is blocked: air from the ground up comes over.")
+    share = flow.going_round_share
+    round_words: Words = (", and none of it comes through gaps or round the ends ",)
+    if share > 0.0:
+        round_words = (
+            "; of the low air behind the range ",
+            Amount(share, "share"),
+            " comes through gaps or round the ends ",
+        )
     return (
         *start,
-        *cloud,
-        f", and {fraction_in_words(share)} of the vapour it brings (",
+        ". Air below ",
+        *blocked_words(crossing),
+        " is stopped",
+        *round_words,
+        f"({flow.going_round_source}).",
+    )
+
+
+def _regime_words(regime: str) -> str:
+    """A regime after the word 'flow'."""
+    words = {
+        "flows over": "goes over",
+        "flows over with steep waves": "goes over with steep waves",
+        "partly blocked": "is partly blocked",
+        "blocked": "is blocked",
+    }
+    return words.get(regime, regime)
+
+
+def _cloud(crossing: Crossing) -> Words:
+    """Cloud and rain of the crossing air."""
+    base = crossing.cloud.base
+    if base is None:
+        return ("The crossing air stays short of saturation: no cloud and no rain from lifting.",)
+    start: Words = ("Cloud forms at ", Amount(base, "height", -1))
+    if starts_saturated(crossing):
+        start = ("The air arrives already saturated",)
+    share = fallen_share(crossing)
+    if not rains(crossing):
+        return (*start, ", and hardly any water falls out.")
+    return (
+        *start,
+        f", and {fraction_in_words(share)} of the vapour (",
         Amount(share, "share"),
         f") {falling(crossing)}.",
     )
 
 
 def _lee(crossing: Crossing, site: LeeAir) -> Words:
+    """What arrives at the site, from where, and why it is so."""
     beyond = site.distance - crossing.features.crest_distance
     side = "beyond" if beyond >= 0.0 else "before"
-    return (
+    start: Words = (
         f"At {site.name} (",
         Amount(site.elevation, "height"),
         ", ",
         Amount(abs(beyond), "distance"),
-        f" {side} the crest) it arrives with ",
-        Amount(site.temperature, "temperature", 1),
-        ", dew point ",
-        Amount(site.dew_point, "temperature", 1),
-        ", humidity ",
-        Amount(site.relative_humidity, "share"),
+        f" {side} the crest) ",
+    )
+    if site.in_pool:
+        return (*start, "cold air stays: ", *_values(site), ". ", *_above_the_pool(crossing))
+    if site.in_blocked_air:
+        return (*start, "the air is stopped and stays as it came: ", *_values(site), ".")
+    return (
+        *start,
+        "air from ",
+        *source_words(site),
+        " arrives with ",
+        *_values(site),
         ": ",
         *difference(site.warming, "warmer than", "cooler than", "as warm as"),
-        " the incoming air at the same height, its dew point ",
-        *difference(site.dew_point - site.upwind_dew_point, "higher", "lower", "the same"),
+        " the incoming air at the same height",
+        *_mainly(crossing, site),
         ".",
     )
 
 
-def _other_answer(crossing: Crossing, site: LeeAir) -> Words:
-    gap = site.popular_picture - site.temperature
-    if site.side == "windward":
-        return ("This holds on the windward side.",)
-    if abs(gap) < SAME:
-        why = "all the water that condenses falls out" if crossing.water.condensed > 0.0 else "nothing condenses"
-        return (f"The popular picture gives the same, because {why}.",)
+def _values(site: LeeAir) -> Words:
     return (
-        "The popular picture, which lets all condensed water fall out, gives ",
-        Amount(site.popular_picture, "temperature", 1),
-        ", ",
-        *difference(gap, "more", "less", ""),
+        *with_ends(Amount(site.temperature, "temperature", 1), temperature_ends(site)),
+        ", dew point ",
+        *with_ends(Amount(site.dew_point, "temperature", 1), dew_point_ends(site)),
+        ", humidity ",
+        Amount(site.relative_humidity, "share"),
+    )
+
+
+def _above_the_pool(crossing: Crossing) -> Words:
+    if crossing.pool is None:
+        return ()
+    at = len(crossing.distance) - 1
+    return (
+        "Above ",
+        Amount(crossing.pool.top, "height", -1),
+        " the crossing air blows over it with ",
+        Amount(float(crossing.wind[at, 0]), "wind"),
+        ".",
+    )
+
+
+def _mainly(crossing: Crossing, site: LeeAir) -> Words:
+    found = main_cause(site)
+    if found is None or abs(site.warming) < SAME:
+        return ()
+    key, part = found
+    noun = cause_noun(crossing, site, key)
+    last = noun[-1]
+    bare = (*noun[:-1], last.rstrip(",") if isinstance(last, str) else last)
+    return (", mainly by ", *bare, " (", Amount(part, "temperature_change", 1), ")")
+
+
+def _wind(crossing: Crossing, site: LeeAir) -> Words:
+    """The wind down the lee and at the site."""
+    winds = crossing.winds
+    span = range_words(winds.low, winds.high)
+    start: Words = ("The wind down the lee slope reaches ", Amount(winds.strongest, "wind"))
+    if span:
+        start = (*start, ", ", *span, " by all methods")
+    if site.wind is None:
+        why = "lies in the cold pool" if site.in_pool else "lies in air that hardly moves"
+        return (*start, f"; {site.name} {why}.")
+    return (
+        *start,
+        f"; at {site.name} ",
+        Amount(site.wind.at_10m, "wind"),
+        " at 10 m, gusts ",
+        *(range_words(site.wind.gust_low, site.wind.gust_high) or (Amount(site.wind.gust_high, "wind"),)),
         ".",
     )
 
 
 def _key_numbers(crossing: Crossing, site: LeeAir, freezing_level: float) -> tuple[KeyNumber, ...]:
     return (
-        _cloud_number(crossing),
-        KeyNumber(
-            "Falls out",
-            Amount(fallen_share(crossing), "share"),
-            "",
-            (
-                "of the vapour that came; ",
-                prescribed_share(crossing),
-                " of what condenses, as prescribed",
-            ),
-        ),
-        KeyNumber(
-            f"{site.name}, temperature",
-            Amount(site.temperature, "temperature", 1),
-            "",
-            sentence(("incoming air at that height: ", Amount(site.upwind_temperature, "temperature", 1))),
-        ),
+        _temperature_number(crossing, site),
         KeyNumber(
             f"{site.name}, humidity",
             Amount(site.relative_humidity, "share"),
             "",
-            ("dew point ", Amount(site.dew_point, "temperature", 1)),
+            (),
+            ("dew point ", *with_ends(Amount(site.dew_point, "temperature", 1), dew_point_ends(site))),
         ),
-        KeyNumber("Wind across the crest", Amount(crossing.flow.crest_wind, "wind"), "", _layer_words()),
+        _wind_number(site),
+        _blocked_number(crossing),
+        _source_number(site),
+        _cloud_number(crossing),
+        _fallen_number(crossing),
+        KeyNumber("Wind across the crest", Amount(crossing.flow.crest_wind, "wind"), "", (), _layer_words()),
         _freezing_number(crossing, freezing_level),
+    )
+
+
+def _temperature_number(crossing: Crossing, site: LeeAir) -> KeyNumber:
+    here = Amount(site.temperature, "temperature", 1)
+    _, *span = with_ends(here, temperature_ends(site))
+    before = Amount(site.upwind_temperature, "temperature", 1)
+    remark: Words = sentence(("incoming air at that height: ", before))
+    if reaches_the_ground_or_not(crossing, site):
+        remark = ("if the air breaks through; about ", before, " if a cold pool stays")
+    return KeyNumber(f"{site.name}, temperature", here, "", tuple(span), remark)
+
+
+def _wind_number(site: LeeAir) -> KeyNumber:
+    name = f"{site.name}, wind"
+    if site.wind is None:
+        return KeyNumber(name, None, "hardly any", (), ("cold air that stays" if site.in_pool else "blocked air",))
+    gusts = range_words(site.wind.gust_low, site.wind.gust_high) or (Amount(site.wind.gust_high, "wind"),)
+    return KeyNumber(name, Amount(site.wind.at_10m, "wind"), "", (), ("at 10 m; gusts ", *gusts))
+
+
+def _blocked_number(crossing: Crossing) -> KeyNumber:
+    flow = crossing.flow
+    number = Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2)
+    if not is_blocked(crossing):
+        return KeyNumber("Blocked below", None, "nothing", (), ("N h/U ", number, f": {flow.regime}"))
+    top, *span = blocked_words(crossing)
+    share: Words = ("; ", Amount(flow.going_round_share, "share"), " of it goes round")
+    if not isinstance(top, Amount):
+        raise TypeError("a height comes first")
+    return KeyNumber("Blocked below", top, "", tuple(span), ("N h/U ", number, f": {flow.regime}", *share))
+
+
+def _source_number(site: LeeAir) -> KeyNumber:
+    words = source_words(site)
+    if not words or not isinstance(words[0], Amount):
+        return KeyNumber("Its air comes from", None, "the lee itself", (), ("a cold pool that stays",))
+    return KeyNumber(
+        "Its air comes from", words[0], "", words[1:], ("heights eight tenths of it come from, before the range",)
     )
 
 
@@ -256,23 +364,47 @@ def _layer_words() -> Words:
 
 
 def _cloud_number(crossing: Crossing) -> KeyNumber:
-    if crossing.cloud.base is None:
-        return KeyNumber("Cloud base", None, "no cloud", ("the air stays short of saturation",))
+    cloud = crossing.cloud
+    if cloud.base is None:
+        return KeyNumber("Cloud base", None, "no cloud", (), ("the air stays short of saturation",))
     if starts_saturated(crossing):
-        return KeyNumber("Cloud base", None, "at the ground", ("the air is saturated from the upwind end on",))
-    remark: Words = ("on the windward slope",)
+        return KeyNumber("Cloud base", None, "at the ground", (), ("the air is saturated from the upwind end on",))
+    where = "above the crest" if cloud.base > crossing.features.crest else "on the windward slope"
+    remark: Words = (where,)
     if cloudy_to_the_end(crossing):
-        remark = ("on the windward slope; cloud to the downwind end",)
-    elif crossing.cloud.end is not None:
-        remark = ("on the windward slope; cloud ends at ", Amount(crossing.cloud.end, "height", -1), " in the lee")
-    return KeyNumber("Cloud base", Amount(crossing.cloud.base, "height", -1), "", remark)
+        remark = (f"{where}; cloud to the downwind end",)
+    elif cloud.end is not None:
+        remark = (f"{where}; cloud ends at ", Amount(cloud.end, "height", -1), " in the lee")
+    return KeyNumber("Cloud base", Amount(cloud.base, "height", -1), "", (), remark)
+
+
+def _fallen_number(crossing: Crossing) -> KeyNumber:
+    if not rains(crossing):
+        why = "nothing condenses" if crossing.cloud.base is None else "hardly anything condenses"
+        return KeyNumber("Falls out", None, "nothing", (), (why,))
+    fallen = Amount(fallen_share(crossing), "share")
+    _, *span = with_ends(fallen, drying_ends(crossing))
+    return KeyNumber(
+        "Falls out",
+        fallen,
+        "",
+        tuple(span),
+        ("of the crossing vapour", *_windward_words(crossing)),
+    )
+
+
+def _windward_words(crossing: Crossing) -> Words:
+    share = crossing.rain.windward_share
+    return () if share is None else ("; ", Amount(share, "share"), " of it before the crest")
 
 
 def _freezing_number(crossing: Crossing, level: float) -> KeyNumber:
     column = crossing.incoming.height
     if level <= column[0]:
-        return KeyNumber("Freezing level", None, "at the ground", ("the incoming air is below freezing throughout",))
+        return KeyNumber(
+            "Freezing level", None, "at the ground", (), ("the incoming air is below freezing throughout",)
+        )
     above = level - crossing.features.crest
     where = "above" if above >= 0.0 else "below"
     remark: Words = ("in the incoming air, ", Amount(abs(above), "height", -1), f" {where} the crest")
-    return KeyNumber("Freezing level", Amount(level, "height", -1), "", remark)
+    return KeyNumber("Freezing level", Amount(level, "height", -1), "", (), remark)

@@ -5,9 +5,14 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from orolift.constants import MELTING_POINT
-from orolift.report.briefing import crest_index, prescribed_share, starts_saturated
 from orolift.report.quantities import Amount
+from orolift.report.story import (
+    is_blocked,
+    rains,
+    reaches_the_ground_or_not,
+    removal_words,
+    starts_saturated,
+)
 
 if TYPE_CHECKING:
     from datetime import datetime
@@ -17,22 +22,25 @@ if TYPE_CHECKING:
 
 WEAK_WIND = 5.0
 """Wind across the crest below this [m s-1] gets a caution; a judgement."""
-DEEP_RISE = 1000.0
-"""A climb of more than this [m] gets the caution that low air seldom makes it; a judgement."""
 
 _NO_WARNING = (
     "This is an estimate for trained people, not a warning. Official warning services, fire agencies, local codes and "
     "licensed practice decide."
 )
-_MAY_BE_BLOCKED = (
-    "How much of the low air is blocked, and how much of it goes round, is an estimate with a wide range: the two "
-    "ends, no blocking and full blocking, are shown beside the answer."
+_RANGE_OF_FLOW = (
+    "How much low air is blocked and how much of it goes round decides the lee temperature, and real ranges scatter "
+    "about the thresholds. The range in brackets runs from no blocking to full blocking; errors of input and "
+    "method come on top and are not in it."
+)
+_LINEAR = (
+    "Streamlines are those of linear waves: position and size of single waves and of the strongest wind are less sure "
+    "than how high the air comes from."
 )
 _NOT_WORKED_OUT = (
-    "Not worked out here: how far rain drifts with the wind, a map, and the range that uncertain input gives the "
-    "numbers."
+    "Not worked out: showers, flow along the "
+    "range and through single gaps, and the range that uncertain input gives the numbers."
 )
-ALWAYS: tuple[Words, ...] = ((_NO_WARNING,), (_MAY_BE_BLOCKED,), (_NOT_WORKED_OUT,))
+ALWAYS: tuple[Words, ...] = ((_NO_WARNING,), (_RANGE_OF_FLOW,), (_LINEAR,), (_NOT_WORKED_OUT,))
 """Cautions of every report in this form of the computation."""
 
 
@@ -56,23 +64,21 @@ class Cautions:
     notes: tuple[str, ...]
 
 
-def cautions(crossing: Crossing, freezing_level: float, valid_time: datetime | None) -> Cautions:
+def cautions(crossing: Crossing, valid_time: datetime | None) -> Cautions:
     """Cautions and notes of a crossing.
 
     Parameters
     ----------
     crossing : Crossing
-    freezing_level : float [m]
-        Of the incoming air.
     valid_time : datetime or None
 
     Returns
     -------
     Cautions
     """
-    here = (*((text,) for text in crossing.cautions), *_wind_and_rise(crossing), *_water(crossing, freezing_level))
+    here = (*((text,) for text in crossing.cautions), *_flow(crossing), *_water(crossing))
     if valid_time is None:
-        here = (*here, ("The case names no valid time.",))
+        here = (*here, ("The case names no valid time: sun and night are left out.",))
     return Cautions(
         heading=("An estimate, to be judged by a trained reader",),
         always=ALWAYS,
@@ -81,25 +87,28 @@ def cautions(crossing: Crossing, freezing_level: float, valid_time: datetime | N
     )
 
 
-def _wind_and_rise(crossing: Crossing) -> tuple[Words, ...]:
+def _flow(crossing: Crossing) -> tuple[Words, ...]:
+    """Limits that wind, blocking and the lee set."""
+    flow = crossing.flow
     out: list[Words] = []
-    if crossing.flow.crest_wind < WEAK_WIND:
+    if flow.crest_wind < WEAK_WIND:
+        out.append(
+            ("The wind across the crest is weak (", Amount(flow.crest_wind, "wind", 1), "): little air comes over.")
+        )
+    if is_blocked(crossing) and flow.going_round_source == "assumed":
         out.append(
             (
-                "The wind across the crest is weak (",
-                Amount(crossing.flow.crest_wind, "wind", 1),
-                "): low air is then likely to be blocked.",
+                "What share of the low air goes round (",
+                Amount(flow.going_round_share, "share"),
+                ") is assumed; the lowest pass of the range (pass_m) or an elevation raster would tell more.",
             )
         )
-    climb = crossing.features.crest - float(crossing.height[0, 0])
-    if climb > DEEP_RISE:
-        out.append(
-            (
-                "The air would have to climb ",
-                Amount(climb, "height", -1),
-                ". Air from near the ground comes over such a range only when it is nearly neutral or the wind strong.",
-            )
-        )
+    lee = next((air for air in crossing.lee if air.side == "lee"), None)
+    if flow.breaks_through is None and lee is not None:
+        chance = Amount(flow.break_through_chance, "share")
+        which = "open" if reaches_the_ground_or_not(crossing, lee) else "likely"
+        words = f"that the crossing air reaches the ground is {which} ("
+        out.append(("Nothing is known of the air lying in the lee: ", words, chance, ", by hour and wind)."))
     if "measured" not in crossing.incoming.origin:
         out.append(
             ("Only the ground of the incoming air was measured; all above it is assumed (see the notes below).",)
@@ -107,27 +116,21 @@ def _wind_and_rise(crossing: Crossing) -> tuple[Words, ...]:
     return tuple(out)
 
 
-def _water(crossing: Crossing, freezing_level: float) -> tuple[Words, ...]:
+def _water(crossing: Crossing) -> tuple[Words, ...]:
+    """Limits that cloud and rain set."""
     if crossing.cloud.base is None:
         return ()
-    out: list[Words] = [
-        (
-            "What share of the condensed water leaves (",
-            prescribed_share(crossing),
-            ") is prescribed, not worked out; it decides how warm and dry the lee is.",
-        )
-    ]
-    if starts_saturated(crossing):
-        out.append(("The air is saturated at the upwind end: how much fog or cloud it brings is not known.",))
-    cold = crossing.air.temperature[crest_index(crossing), 0] < MELTING_POINT
-    if cold:
+    out: list[Words] = []
+    if rains(crossing) and crossing.settings.removed_share is not None:
         out.append(
             (
-                "The air at the crest is below freezing (0 °C in the incoming air at ",
-                Amount(freezing_level, "height", -1),
-                "): part of what falls is snow, and how much is not worked out.",
+                "The share of water that leaves is prescribed; it decides how warm and dry the lee is: ",
+                *removal_words(crossing),
+                ".",
             )
         )
+    if starts_saturated(crossing):
+        out.append(("The air is saturated at the upwind end: how much fog or cloud it brings is not known.",))
     wet = [air.name for air in crossing.lee if air.side == "lee" and air.relative_humidity > 0.995]
     if wet:
         out.append((f"Cloud reaches the ground at {', '.join(wet)}.",))

@@ -10,8 +10,8 @@ import numpy as np
 
 from orolift.air.column import column_vapour, interpolated
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
-from orolift.report.briefing import prescribed_share
 from orolift.report.quantities import Amount
+from orolift.report.story import removal_words
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
@@ -109,7 +109,12 @@ def inputs(crossing: Crossing, bearing: float, freezing_level: float, case_text:
         " humidity at ",
         ground.height,
     )
-    groups = (_air_facts(crossing, ground, freezing_level), _range_facts(crossing, bearing), _options(crossing))
+    groups = (
+        _air_facts(crossing, ground, freezing_level),
+        _range_facts(crossing, bearing),
+        _flow_facts(crossing),
+        _options(crossing),
+    )
     return Inputs(heading=heading, groups=groups, levels=levels, case_text=case_text)
 
 
@@ -147,24 +152,53 @@ def _range_facts(crossing: Crossing, bearing: float) -> FactGroup:
     return FactGroup("Range", facts)
 
 
+def _flow_facts(crossing: Crossing) -> FactGroup:
+    """How the range and the column stand to each other."""
+    flow = crossing.flow
+    facts = [
+        Fact("Range normal, upwind", (Amount((flow.normal + math.pi) % (2.0 * math.pi), "bearing"),)),
+        Fact("Stability N, base to crest", (Amount(flow.stability, "stability", 4),)),
+        Fact("N h/U", (Amount(flow.nondimensional_height, "plain", 2), f", {flow.regime}")),
+        Fact("Dividing height (c = 1)", (Amount(flow.dividing_height, "height"),)),
+        Fact("Blocked top", (Amount(flow.blocked_top, "height"),)),
+        Fact("Goes round", (Amount(flow.going_round_share, "share"), f", {flow.going_round_source}")),
+        Fact("Pressure fall to the lee", (Amount(flow.pressure_difference, "pressure_difference", 1),)),
+    ]
+    if flow.rossby_number is not None and flow.deformation_radius is not None:
+        facts.append(Fact("Rossby number", (Amount(flow.rossby_number, "plain", 1),)))
+        facts.append(Fact("Deformation radius", (Amount(flow.deformation_radius, "distance"),)))
+    if flow.trapped_wavelength is not None:
+        facts.append(Fact("Trapped lee waves", (Amount(flow.trapped_wavelength, "distance"), " long")))
+    if flow.critical_level is not None:
+        facts.append(Fact("Critical level", (Amount(flow.critical_level, "height", -1),)))
+    return FactGroup("Flow", tuple(facts))
+
+
 def _options(crossing: Crossing) -> FactGroup:
+    settings = crossing.settings
+
+    def number(value: object) -> float:
+        return float(np.asarray(value, dtype=np.float64))
+
+    freezing: Words = ("none",)
+    if settings.freezing:
+        freezing = (
+            "ice share from none at ",
+            Amount(273.15, "temperature"),
+            " to all at ",
+            Amount(253.15, "temperature"),
+        )
     return FactGroup(
         "Options",
         (
-            Fact(
-                "Condensed water that leaves",
-                (prescribed_share(crossing), ", prescribed, as it forms"),
-            ),
-            Fact(
-                "Freezing of cloud",
-                (
-                    "ice share from none at ",
-                    Amount(273.15, "temperature"),
-                    " to all at ",
-                    Amount(253.15, "temperature"),
-                ),
-            ),
-            Fact("Streamlines", (f"{crossing.height.shape[1]}",)),
+            Fact("Rain and snow", removal_words(crossing)),
+            Fact("Critical N h/U", (Amount(number(settings.critical_value), "plain", 2),)),
+            Fact("Mixed before the range", ("lowest ", Amount(settings.inflow_depth, "height"), " of unblocked air")),
+            Fact("Mixed at a site", ("lowest ", Amount(number(settings.mixing_depth), "height"))),
+            Fact("Roughness length", (Amount(settings.roughness, "height", 2),)),
+            Fact("Heat from the ground", ("on" if settings.surface_heat else "off",)),
+            Fact("Freezing of cloud", freezing),
+            Fact("Streamlines", (f"{crossing.height.shape[1]}, at {crossing.distance.size} places",)),
         ),
     )
 

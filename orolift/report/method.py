@@ -34,25 +34,40 @@ class Method:
 STEPS = (
     (
         "The incoming air is a column in hydrostatic balance, with virtual temperature, from the upwind ground to at "
-        "least 16 km."
+        "least 16 km. Flow is worked out across the range, along the normal of its ground."
     ),
     (
-        "The air at the upwind ground follows the ground along the line. Its pressure at each place is that of the "
-        "undisturbed column at the height of the ground there."
+        "Stability is dry, or that of saturated air where lifting saturates it (Durran and Klemp 1982). The blocked "
+        "top is the highest level below the crest from which air lacks the energy to get over, with the critical "
+        "value of N h/U given above (Sheppard 1956 with 1). Calm and counter-flow below the crest count as blocked."
     ),
     (
-        "Each step along the line keeps moist entropy and total water: vapour, cloud water and ice are in "
-        "equilibrium, and the latent heat of what condenses or evaporates stays in the air. Cloud turns from water to "
-        "ice evenly between 0 and −20 °C."
+        "The lowest 500 m of air above the blocked top are mixed and cross. Of the lee air below the blocked top a "
+        "share went round through gaps and ends, at its own height, not lifted."
     ),
     (
-        "Of the water newly condensed on a step the prescribed share leaves at once, at constant pressure and "
-        "temperature, and takes its own entropy along. The rest stays as cloud and evaporates on the way down before "
-        "the air warms at the dry rate."
+        "Streamlines are steady linear waves of the layered column over the ground, or over the blocked air and the "
+        "cold pool; the part of the boundary that ends lower or higher than it starts is carried as a body. Waves that "
+        "would overturn are cut off and flagged. Moist and dry solutions are joined where the cloud ends."
     ),
     (
-        "At a site the air is moved to the height of the site without further loss. It is set beside the undisturbed "
-        "column at that height and beside the popular picture."
+        "Air is marched along all streamlines; each step keeps moist entropy and total water. Cloud turns to falling "
+        "water with the cloud time, which drifts downwind as it falls, snow slower than rain, melts, evaporates in the "
+        "air below cloud and cools it; or a prescribed share leaves at once. Remaining cloud evaporates on the way "
+        "down before the air warms at the dry rate. Cloud turns from water to ice evenly between "
+        "0 and −20 °C. Pressure is that of the crossed column."
+    ),
+    (
+        "Cold air known to lie in the lee stays where the crossing air is lighter; its virtual potential temperature "
+        "falls 10 K per km downward. The ground heats the lee air by day and cools it at night."
+    ),
+    (
+        "At a site the air of the mixing depth is mixed by mass, with what went round. The parts of its warming are "
+        "worked out one by one and add up to the total without a remainder."
+    ),
+    (
+        "Wind near the ground follows from the spacing of the streamlines and from continuity; other methods give its "
+        "range. Wind at 10 m is by the logarithmic law."
     ),
     (
         "Saturation pressure follows from constant heat capacities and latent heats linear in temperature "
@@ -74,7 +89,7 @@ def method() -> Method:
         ConstantRow(name, float(value), f"{float(value):.9g}", value.unit, value.source) for name, value in table()
     )
     return Method(
-        heading=("The lowest air is followed step by step; every constant names its source",),
+        heading=("The air is followed along streamlines; every constant names its source",),
         steps=STEPS,
         constants=rows,
     )

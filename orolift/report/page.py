@@ -8,21 +8,29 @@ from typing import TYPE_CHECKING
 
 from orolift.air.column import freezing_level
 from orolift.crossing.crossing import toward
+from orolift.report.answers import Answers, answers
 from orolift.report.briefing import Briefing, briefing
+from orolift.report.causes import Causes, causes
 from orolift.report.cautions import Cautions, cautions
+from orolift.report.figures.answers import answers_figure
+from orolift.report.figures.budget import budget
 from orolift.report.figures.path import path
 from orolift.report.figures.section import section
 from orolift.report.inputs import Inputs, inputs
+from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
 from orolift.report.places import Journey, journey, section_heading
 from orolift.report.quantities import Units, quantity
 from orolift.report.sites import Sites, sites
+from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
 
 if TYPE_CHECKING:
     from datetime import datetime
 
     from orolift.crossing.result import Crossing
+    from orolift.report.figures.answers import AnswersDrawing
+    from orolift.report.figures.budget import BudgetDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.path import PathDrawing
     from orolift.report.figures.section import SectionDrawing
@@ -44,7 +52,12 @@ class Page:
     section : Figure
     journey : Journey
     path : Figure
+    causes : Causes
+    budget : Figure or None
     sites : Sites
+    answers : Answers
+    answers_figure : Figure or None
+    lee_wind : LeeWind
     inputs : Inputs
     method : Method
     cautions : Cautions
@@ -60,7 +73,12 @@ class Page:
     section: Figure[SectionDrawing]
     journey: Journey
     path: Figure[PathDrawing]
+    causes: Causes
+    budget: Figure[BudgetDrawing] | None
     sites: Sites
+    answers: Answers
+    answers_figure: Figure[AnswersDrawing] | None
+    lee_wind: LeeWind
     inputs: Inputs
     method: Method
     cautions: Cautions
@@ -99,6 +117,7 @@ def page_of(
     """
     bearing = (toward(crossing.transect, crossing.incoming) + math.pi) % (2.0 * math.pi)
     freezing = float(freezing_level(crossing.incoming))
+    followed = trace(crossing)
     crest = quantity(crossing.features.crest, "height", 0, units)
     return Page(
         title=title or f"Air from the {point_of_compass(bearing)} over a crest at {crest}",
@@ -107,12 +126,17 @@ def page_of(
         version=version,
         units=units,
         briefing=briefing(crossing, bearing, freezing),
-        section_heading=section_heading(crossing),
-        section=section(crossing, bearing, freezing, units),
-        journey=journey(crossing),
-        path=path(crossing, units),
+        section_heading=section_heading(crossing, followed),
+        section=section(crossing, followed, bearing, freezing, units),
+        journey=journey(crossing, followed),
+        path=path(crossing, followed, units),
+        causes=causes(crossing),
+        budget=budget(crossing, units),
         sites=sites(crossing),
+        answers=answers(crossing),
+        answers_figure=answers_figure(crossing, units),
+        lee_wind=lee_wind(crossing),
         inputs=inputs(crossing, bearing, freezing, case_text),
         method=method(),
-        cautions=cautions(crossing, freezing, valid_time),
+        cautions=cautions(crossing, valid_time),
     )

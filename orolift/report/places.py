@@ -1,4 +1,4 @@
-"""The air at the places that matter along its path, number by number, for those who check."""
+"""The air at the places that matter along its way, number by number, for those who check."""
 
 from __future__ import annotations
 
@@ -8,25 +8,27 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.air.humidity import relative_humidity_from_mixing_ratio
-from orolift.report.briefing import (
+from orolift.report.figures.cloud import runs
+from orolift.report.quantities import Amount
+from orolift.report.story import (
     ROUNDING,
     cloudy_to_the_end,
-    crest_index,
     difference,
     falling,
-    main_site,
+    is_blocked,
+    rains,
     starts_saturated,
 )
-from orolift.report.quantities import Amount
 
 if TYPE_CHECKING:
-    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.crossing.result import Crossing
+    from orolift.report.trace import Trace
     from orolift.report.words import Words
 
 
 @dataclass(frozen=True)
 class Place:
-    """The lowest air at one place of its path.
+    """The followed air at one place of its way.
 
     Attributes
     ----------
@@ -53,71 +55,99 @@ class Place:
 
 @dataclass(frozen=True)
 class Journey:
-    """The path of the air in words and numbers."""
+    """The way of the air in words and numbers."""
 
     heading: Words
     balance: Words
     places: tuple[Place, ...]
 
 
-def journey(crossing: Crossing) -> Journey:
-    """The path of the lowest air.
+def journey(crossing: Crossing, trace: Trace) -> Journey:
+    """The way of the air that reaches the main site.
 
     Parameters
     ----------
     crossing : Crossing
+    trace : Trace
 
     Returns
     -------
     Journey
     """
-    return Journey(heading=_heading(crossing), balance=_balance(crossing), places=_places(crossing))
+    return Journey(heading=_heading(trace), balance=_balance(crossing), places=_places(crossing, trace))
 
 
-def section_heading(crossing: Crossing) -> Words:
+def section_heading(crossing: Crossing, trace: Trace) -> Words:
     """What the section shows, as a conclusion."""
-    climb = crossing.features.crest - float(crossing.height[0, 0])
+    name = trace.site.name if trace.site is not None else "the lee foot"
+    if crossing.pool is not None:
+        return (
+            "The crossing air rides over cold air that fills the lee up to ",
+            Amount(crossing.pool.top, "height", -1),
+        )
+    if is_blocked(crossing):
+        return (
+            "Low air is stopped below ",
+            Amount(crossing.flow.blocked_top, "height", -1),
+            "; air from ",
+            Amount(trace.source, "height", -1),
+            f" comes down to {name}",
+        )
     if crossing.cloud.base is None:
-        return ("The air climbs ", Amount(climb, "height", -1), " to the crest and stays clear")
+        return ("The air climbs to the crest at ", Amount(crossing.features.crest, "height"), " and stays clear")
+    return _cloud_heading(crossing)
+
+
+def _cloud_heading(crossing: Crossing) -> Words:
+    """How far the cloud reaches on both sides."""
+    cloud, crest = crossing.cloud, crossing.features.crest
     if starts_saturated(crossing):
         start: Words = ("Cloud covers the whole windward slope",)
+    elif cloud.base is None or cloud.base > crest:
+        return ("The air comes over whole; cloud forms only above the crest",)
     else:
-        start = (
-            "Cloud covers the upper ",
-            Amount(crossing.features.crest - crossing.cloud.base, "height", -1),
-            " of the windward slope",
-        )
+        start = ("Cloud covers the upper ", Amount(crest - cloud.base, "height", -1), " of the windward slope")
     if cloudy_to_the_end(crossing):
         return (*start, " and all of the lee")
-    down = 0.0 if crossing.cloud.end is None else crossing.features.crest - crossing.cloud.end
+    down = 0.0 if cloud.end is None else crest - cloud.end
     if down < ROUNDING:
         return (*start, " and ends at the crest")
     return (*start, " and reaches ", Amount(down, "height", -1), " down the lee side")
 
 
-def _rising_temperature(crossing: Crossing, level: float) -> float | None:
-    """Temperature of the air when it last passed a height on its way to the crest; None when it never did."""
-    crest = crest_index(crossing)
-    height = crossing.height[: crest + 1, 0]
-    below = np.flatnonzero(height <= level)
-    if not below.size or below[-1] == crest:
-        return None
-    last = int(below[-1])
-    pair = slice(last, last + 2)
-    return float(np.interp(level, height[pair], crossing.air.temperature[pair, 0]))
-
-
-def _heading(crossing: Crossing) -> Words:
-    site = main_site(crossing)
-    before = _rising_temperature(crossing, site.elevation) if site.side == "lee" else None
+def _heading(trace: Trace) -> Words:
+    """What the way does to the temperature, in one line."""
+    where = "the lee foot" if trace.site is None else trace.site.name
+    end_height, end = float(trace.height[-1]), float(trace.temperature[-1])
+    sinks = trace.source - end_height
+    if sinks > 100.0 and not trace.wet.any():
+        return (
+            "The air starts at ",
+            Amount(trace.source, "height", -1),
+            " with ",
+            Amount(float(trace.temperature[0]), "temperature", 1),
+            " and sinks to ",
+            Amount(end_height, "height", -1),
+            f" at {where}, where it has ",
+            Amount(end, "temperature", 1),
+        )
+    before = _rising_temperature(trace, end_height)
     if before is None:
-        return _cooling_and_warming(crossing, site)
+        start, top = float(trace.temperature[0]), float(trace.temperature[trace.top])
+        return (
+            f"The air {_verb(top - start)} by ",
+            _size(top - start),
+            " on its way up and ",
+            f"{_verb(end - top)} by ",
+            _size(end - top),
+            f" down to {where}",
+        )
     return (
         "Back at ",
-        Amount(site.elevation, "height"),
+        Amount(end_height, "height", -1),
         ", the air is ",
         *difference(
-            site.temperature - before,
+            end - before,
             "warmer than it was there on its way up",
             "cooler than it was there on its way up",
             "as warm as it was there on its way up",
@@ -125,14 +155,15 @@ def _heading(crossing: Crossing) -> Words:
     )
 
 
-def _cooling_and_warming(crossing: Crossing, site: LeeAir) -> Words:
-    """What the air loses on the way up and gains on the way down, for sites that it passes only once."""
-    start, top = (float(crossing.air.temperature[i, 0]) for i in (0, crest_index(crossing)))
-    words: Words = (f"The air {_verb(top - start)} by ", _size(top - start), " on its way up")
-    if site.side != "lee":
-        return words
-    change = site.temperature - top
-    return (*words, f" and {_verb(change)} by ", _size(change), f" down to {site.name}")
+def _rising_temperature(trace: Trace, level: float) -> float | None:
+    """Temperature of the air when it last passed a height on its way up; None when it never did or never came down."""
+    top = trace.top
+    height = trace.height[: top + 1]
+    below = np.flatnonzero(height <= level)
+    if not below.size or below[-1] == top or top == trace.height.size - 1:
+        return None
+    pair = slice(int(below[-1]), int(below[-1]) + 2)
+    return float(np.interp(level, height[pair], trace.temperature[pair]))
 
 
 def _verb(change: float) -> str:
@@ -144,61 +175,49 @@ def _size(change: float) -> Amount:
 
 
 def _balance(crossing: Crossing) -> Words:
-    came = Amount(crossing.water.vapour_in, "vapour_flux")
-    if crossing.water.condensed <= 0.0:
-        return ("All of the ", came, " of vapour that came goes on, for nothing condenses.")
+    """Water of all the crossing air."""
+    water = crossing.water
+    came = Amount(water.vapour_in, "vapour_flux")
+    if not rains(crossing):
+        return ("Each metre along the range ", came, " of vapour comes over, and practically none of it falls out.")
     return (
-        "Of ",
+        "Of the ",
         came,
-        " of vapour that came, ",
-        Amount(crossing.water.condensed, "vapour_flux"),
-        " condensed on the way, ",
-        Amount(crossing.water.removed, "vapour_flux"),
-        f" of it {falling(crossing)}.",
+        " of vapour that come over each metre of the range, ",
+        Amount(water.condensed, "vapour_flux"),
+        " condense on the way and ",
+        Amount(water.removed, "vapour_flux"),
+        f" {falling(crossing).replace('falls', 'fall').replace('rains', 'rain')}.",
     )
 
 
-def _places(crossing: Crossing) -> tuple[Place, ...]:
-    shape = crossing.features
-    distance = crossing.distance
-    marks: list[tuple[float, str]] = [(float(distance[0]), "Upwind end"), (shape.crest_distance, "Crest")]
-    if crossing.cloud.base_distance is not None and not starts_saturated(crossing):
-        marks.append((crossing.cloud.base_distance, "Cloud base"))
-    if crossing.cloud.end_distance is not None and not cloudy_to_the_end(crossing):
-        marks.append((crossing.cloud.end_distance, "End of cloud"))
-    marks.append((shape.lee_foot_distance, "Lee foot"))
-    if shape.lee_foot_distance < distance[-1]:
-        marks.append((float(distance[-1]), "Downwind end"))
-    return tuple(_place(crossing, at, name) for at, name in sorted(marks, key=lambda mark: mark[0]))
+def _places(crossing: Crossing, trace: Trace) -> tuple[Place, ...]:
+    marks: list[tuple[int, str]] = [(0, "Start"), (trace.top, "Highest point")]
+    wet = runs(trace.wet)
+    if wet and wet[0][0] > 0:
+        marks.append((wet[0][0], "Cloud base"))
+    if wet and trace.top < wet[-1][1] < trace.height.size - 1:
+        marks.append((wet[-1][1] + 1, "End of cloud"))
+    last = "Lee foot" if trace.site is None else f"Over {trace.site.name}"
+    if trace.top != trace.height.size - 1:
+        marks.append((trace.height.size - 1, last))
+    return tuple(_place(crossing, trace, at, name) for at, name in sorted(marks))
 
 
-def _place(crossing: Crossing, at: float, name: str) -> Place:
-    """The lowest air at a distance, on straight lines between the points of the transect."""
-    air, x = crossing.air, crossing.distance
-    pressure, temperature, vapour, cloud, dew_point, entropy, height, fallen = (
-        float(np.interp(at, x, values[:, 0]))
-        for values in (
-            air.pressure,
-            air.temperature,
-            air.vapour,
-            air.cloud,
-            crossing.dew_point,
-            air.entropy,
-            crossing.height,
-            np.cumsum(air.removed, axis=0),
-        )
-    )
+def _place(crossing: Crossing, trace: Trace, at: int, name: str) -> Place:
+    """The followed air at one of its points."""
+    pressure, temperature, vapour = (float(values[at]) for values in (trace.pressure, trace.temperature, trace.vapour))
     humidity = float(relative_humidity_from_mixing_ratio(pressure, temperature, vapour))
     return Place(
         name=name,
-        distance=Amount(at + crossing.transect.origin, "distance", 1),
-        height=Amount(height, "height"),
+        distance=Amount(float(trace.distance[at]) + crossing.transect.origin, "distance", 1),
+        height=Amount(float(trace.height[at]), "height"),
         pressure=Amount(pressure, "pressure", 1),
         temperature=Amount(temperature, "temperature", 2),
-        dew_point=Amount(dew_point, "temperature", 2),
+        dew_point=Amount(float(trace.dew_point[at]), "temperature", 2),
         relative_humidity=Amount(humidity, "share"),
         vapour=Amount(vapour, "mixing_ratio", 2),
-        cloud=Amount(cloud, "mixing_ratio", 2),
-        fallen=Amount(fallen, "mixing_ratio", 2),
-        entropy=Amount(entropy, "entropy", 2),
+        cloud=Amount(float(trace.cloud[at]), "mixing_ratio", 2),
+        fallen=Amount(float(trace.fallen[at]), "mixing_ratio", 2),
+        entropy=Amount(float(trace.entropy[at]), "entropy", 2),
     )

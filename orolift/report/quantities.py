@@ -20,6 +20,12 @@ Kind = Literal[
     "vapour_flux",
     "bearing",
     "entropy",
+    "potential_temperature",
+    "pressure_difference",
+    "stability",
+    "rain_rate",
+    "duration",
+    "plain",
 ]
 
 NO_BREAK_SPACE = "\u00a0"
@@ -39,11 +45,14 @@ class Amount:
         One of `Kind`.
     digits : int
         Decimals of the metric form; -1 rounds to tens.
+    bare : bool
+        Whether its unit is left out, because one beside it names it.
     """
 
     value: float
     kind: Kind
     digits: int = 0
+    bare: bool = False
 
 
 @dataclass(frozen=True)
@@ -92,6 +101,12 @@ METRIC: dict[Kind, Form] = {
     "vapour_flux": Form("kg/m/s"),
     "bearing": _BEARING,
     "entropy": Form("J/K"),
+    "potential_temperature": Form("K"),
+    "pressure_difference": Form("hPa", 0.01),
+    "stability": Form("per second"),
+    "rain_rate": Form("mm/h", 3600.0),
+    "duration": Form("s"),
+    "plain": Form(""),
 }
 # Factors: NIST SP 811 (2008) Appendix B; inHg at 0 degrees Celsius.
 US: dict[Kind, Form] = {
@@ -103,7 +118,9 @@ US: dict[Kind, Form] = {
     "distance": Form("mi", 1.0 / 1609.344),
     "wind": Form("mph", 1.0 / 0.44704),
     "pressure": Form("inHg", 1.0 / 3386.389, extra_digits=1),
+    "pressure_difference": Form("inHg", 1.0 / 3386.389, extra_digits=1),
     "water_depth": Form("in", 1.0 / 25.4, extra_digits=2),
+    "rain_rate": Form("in/h", 3600.0 / 25.4, extra_digits=2),
 }
 
 
@@ -170,6 +187,28 @@ def unit(kind: Kind, units: Units) -> str:
     return shape.unit if shape.beside is None else f"{shape.unit} ({shape.beside.unit})"
 
 
+def first_number(value: float, kind: Kind, digits: int, units: Units) -> str:
+    """A number without its unit and without a second unit, for the marks of an axis.
+
+    Examples
+    --------
+    >>> first_number(10.0, "wind", 0, "metric")
+    '10'
+    """
+    return _written(value, form(kind, units), digits)
+
+
+def first_unit(kind: Kind, units: Units) -> str:
+    """The unit of an axis.
+
+    Examples
+    --------
+    >>> first_unit("wind", "metric")
+    'm/s'
+    """
+    return form(kind, units).unit
+
+
 def quantity(value: float, kind: Kind, digits: int, units: Units) -> str:
     """A number with its unit, kept on one line by no-break spaces.
 
@@ -201,7 +240,9 @@ def quantity(value: float, kind: Kind, digits: int, units: Units) -> str:
 
 
 def shown(amount: Amount, units: Units) -> str:
-    """An amount with its unit."""
+    """An amount with its unit, or without where one beside it names it."""
+    if amount.bare:
+        return first_number(amount.value, amount.kind, amount.digits, units)
     return quantity(amount.value, amount.kind, amount.digits, units)
 
 

@@ -1,19 +1,18 @@
-"""The air at every site, beside the incoming air at its height and beside the popular picture."""
+"""The air at every site, where it comes from, beside the incoming air at its height."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from orolift.report.briefing import SAME, difference
+import numpy as np
+
 from orolift.report.quantities import Amount
+from orolift.report.story import SAME, difference, source_words
 from orolift.report.words import Words, counted, sentence
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
-
-TELLING = 2.0
-"""Answers further apart than this [K] are explained; a judgement."""
 
 
 @dataclass(frozen=True)
@@ -24,33 +23,35 @@ class SiteRow:
     ----------
     number : int
         Of its pin in the figures.
-    name, side : str
+    name, side, remark : str
+        `remark` says when it lies in a cold pool or in blocked air.
     distance, elevation : Amount
     temperature, dew_point, relative_humidity, mixing_ratio : Amount
-        The air that arrives.
+        Its air.
+    source : Words
+        Heights it comes from: median, 10 % and 90 %; empty in a pool.
+    went_round : Amount
     upwind_temperature, upwind_dew_point : Amount
         The incoming air at the same height.
     warming : Amount
         Site minus incoming air.
-    popular_picture, popular_gap : Amount or None
-        The textbook answer, and how far it is from ours; None on the windward
-        side, for which it gives none.
     """
 
     number: int
     name: str
     side: str
+    remark: str
     distance: Amount
     elevation: Amount
     temperature: Amount
     dew_point: Amount
     relative_humidity: Amount
     mixing_ratio: Amount
+    source: Words
+    went_round: Amount
     upwind_temperature: Amount
     upwind_dew_point: Amount
     warming: Amount
-    popular_picture: Amount | None
-    popular_gap: Amount | None
 
 
 @dataclass(frozen=True)
@@ -78,23 +79,22 @@ def sites(crossing: Crossing) -> Sites:
 
 
 def _row(air: LeeAir, number: int, crossing: Crossing) -> SiteRow:
-    over = air.side != "windward"
-    gap = air.popular_picture - air.temperature
     return SiteRow(
         number=number,
         name=air.name,
         side=air.side,
+        remark="in the cold pool" if air.in_pool else "in blocked air" if air.in_blocked_air else "",
         distance=Amount(air.distance + crossing.transect.origin, "distance", 1),
         elevation=Amount(air.elevation, "height"),
         temperature=Amount(air.temperature, "temperature", 1),
         dew_point=Amount(air.dew_point, "temperature", 1),
         relative_humidity=Amount(air.relative_humidity, "share"),
         mixing_ratio=Amount(air.mixing_ratio, "mixing_ratio", 1),
+        source=source_words(air),
+        went_round=Amount(air.went_round, "share"),
         upwind_temperature=Amount(air.upwind_temperature, "temperature", 1),
         upwind_dew_point=Amount(air.upwind_dew_point, "temperature", 1),
         warming=Amount(air.warming, "temperature_change", 1),
-        popular_picture=Amount(air.popular_picture, "temperature", 1) if over else None,
-        popular_gap=Amount(gap, "temperature_change", 1) if over else None,
     )
 
 
@@ -129,22 +129,12 @@ def _heading(lee: tuple[LeeAir, ...]) -> Words:
 
 
 def _remarks(crossing: Crossing) -> tuple[Words, ...]:
-    what = (
-        "The popular picture lifts the surface air over the crest, lets every drop that condenses fall out, and brings "
-        "the air down dry."
+    heights = (
+        " above it, mixed. It comes from the heights named: half of it, by mass, started below the first, a tenth "
+        "below and a tenth above those in brackets."
     )
-    out: list[Words] = [(what,)]
-    gap = max(
-        (air.popular_picture - air.temperature for air in crossing.lee if air.side == "lee"), key=abs, default=0.0
-    )
-    if abs(gap) > TELLING:
-        why = (
-            "the water that stays in the air evaporates again on the way down and takes back the heat it gave"
-            if gap > 0.0
-            else "it lifts the air only once, over the highest ground"
-        )
-        size = Amount(abs(gap), "temperature_difference", 1)
-        out.append(("It differs by up to ", size, f" from the values here, because {why}."))
+    depth = Amount(float(np.asarray(crossing.settings.mixing_depth)), "height")
+    out: list[Words] = [("A site has the air of the lowest ", depth, heights)]
     ground = float(crossing.incoming.height[0])
     low = [air.name for air in crossing.lee if air.elevation < ground]
     if low:

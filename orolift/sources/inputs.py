@@ -18,9 +18,10 @@ from orolift.errors import CaseError, OroliftError
 from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
 from orolift.sources.files import read_text
-from orolift.sources.incoming import air_from_sounding, read_any_sounding, read_incoming
+from orolift.sources.incoming import read_incoming
 from orolift.sources.quality import Finding, cautions
 from orolift.sources.ridge_csv import read_ridge
+from orolift.sources.sounding_air import air_from_sounding, read_any_sounding
 from orolift.sources.units import to_si
 from orolift.sources.wind_line import Line, line_along_wind, turning_caution, where_observed
 from orolift.terrain.features import features

@@ -61,7 +61,7 @@ def representative_findings(
     --------
     >>> from orolift.terrain.ridge import ridge_transect
     >>> from orolift.terrain.features import features
-    >>> ridge = ridge_transect(np.array([0, 30e3, 60e3]), np.array([500.0, 2000.0, 100.0]))
+    >>> ridge = ridge_transect([0, 30e3, 60e3], [500.0, 2000.0, 100.0])
     >>> [found.what for found in representative_findings("station", ridge, features(ridge), 110.0)]
     ['lower than all ground upwind, as low as the lee: a lee station given as upwind?']
     """

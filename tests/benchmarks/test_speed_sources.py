@@ -12,7 +12,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from orolift.sources.incoming import air_from_sounding, read_any_sounding
+from orolift.sources.sounding_air import air_from_sounding, read_any_sounding
 
 DATA = Path(__file__).parents[1] / "data"  # origin and licence in the READMEs beside the files
 pytestmark = pytest.mark.speed

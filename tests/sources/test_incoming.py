@@ -38,7 +38,7 @@ def case_in(folder, incoming, valid="valid_time = 2026-11-03T12:00:00Z\n", terra
     return read_inputs(path)
 
 
-def whats(inputs):
+def said_of(inputs):
     return [finding.what for finding in inputs.findings]
 
 
@@ -50,7 +50,7 @@ def test_metar_as_source(tmp_path):
     # QNH 1009 hPa at 40 m: 0.01 inch a foot, 12 Pa a metre near the sea, by the standard atmosphere
     assert air.pressure[0] == pytest.approx(100900 - 40 * 12.0, abs=10.0)
     assert math.degrees(math.atan2(-air.eastward_wind[0], -air.northward_wind[0])) % 360 == pytest.approx(240.0)
-    assert "older than the valid time" not in whats(inputs)
+    assert "older than the valid time" not in said_of(inputs)
 
 
 def test_station_ladder_as_source(tmp_path):
@@ -67,7 +67,7 @@ def test_sounding_in_bufr_as_source(tmp_path):
     """By its content, whatever its name."""
     inputs = case_in(tmp_path, f'sounding_file = "{BUFR}"')
     assert inputs.incoming.height[0] == pytest.approx(760.0)
-    assert "older than the valid time" in whats(inputs)
+    assert "older than the valid time" in said_of(inputs)
 
 
 def test_temp_text_as_source(tmp_path):
@@ -79,7 +79,7 @@ def test_temp_text_as_source(tmp_path):
     )
     inputs = case_in(tmp_path, 'sounding_file = "t.txt"')
     assert inputs.incoming.origin.count("measured") == 12
-    assert "older than the valid time" in whats(inputs)  # 06 UTC against 12 UTC
+    assert "older than the valid time" in said_of(inputs)  # 06 UTC against 12 UTC
     assert inputs.incoming.height[0] == pytest.approx(40.0, abs=15.0)
 
 
@@ -164,7 +164,7 @@ def test_what_is_wrong_is_said(tmp_path, incoming, message):
 def test_observation_from_the_future(tmp_path):
     """A date beyond the clock is wrong, and the crossing goes on."""
     inputs = case_in(tmp_path, 'sounding_file = "s.csv"\nsounding_at = { observed_time = 2200-01-01T00:00:00Z }')
-    assert "observed in the future" in whats(inputs)
+    assert "observed in the future" in said_of(inputs)
     assert any("in the future" in caution for caution in inputs.cautions)
 
 
@@ -248,7 +248,7 @@ def test_raster_case_finds_its_direction(tmp_path):
     )
     assert 225.0 < math.degrees(inputs.wind_from) < 245.0
     # 475 km east is 14.7 E: the sounding at 15.3 E lies downwind of the crest
-    assert "lies in the lee: a lee station given as upwind" in whats(inputs)
+    assert "lies in the lee: a lee station given as upwind" in said_of(inputs)
 
 
 def test_times_of_the_reading_are_utc(tmp_path):
@@ -257,6 +257,6 @@ def test_times_of_the_reading_are_utc(tmp_path):
         tmp_path, f"wind_from_deg = 235\nmetar = {{ {METAR} }}", valid="valid_time = 2026-11-03T13:00:00+01:00\n"
     )
     assert inputs.case.valid_time.astimezone(UTC) == datetime(2026, 11, 3, 12, tzinfo=UTC)
-    assert "older than the valid time" not in whats(inputs)
+    assert "older than the valid time" not in said_of(inputs)
     with pytest.raises(CaseError, match="has no time zone"):
         case_in(tmp_path, f"wind_from_deg = 235\nmetar = {{ {METAR} }}", valid="valid_time = 2026-11-03T13:00:00\n")

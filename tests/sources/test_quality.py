@@ -268,11 +268,11 @@ def test_words_and_tables():
 
 @settings(max_examples=50)
 @given(st.lists(st.sampled_from(["spike", "gap", "merge"]), max_size=40))
-def test_shortened_lists_lose_no_kind(whats):
+def test_shortened_lists_lose_no_kind(said_of):
     """Every kind stays, none has more than seven lines, and short lists stay as they are."""
-    findings = [Finding(f"line {i}", what, "", "done", "wrong") for i, what in enumerate(whats)]
+    findings = [Finding(f"line {i}", what, "", "done", "wrong") for i, what in enumerate(said_of)]
     short = shortened(findings)
-    assert {finding.what for finding in short} == set(whats)
-    assert all(sum(finding.what == what for finding in short) <= 6 for what in set(whats))
-    if all(whats.count(what) <= 6 for what in set(whats)):
+    assert {finding.what for finding in short} == set(said_of)
+    assert all(sum(finding.what == what for finding in short) <= 6 for what in set(said_of))
+    if all(said_of.count(what) <= 6 for what in set(said_of)):
         assert sorted(short, key=lambda finding: finding.place) == sorted(findings, key=lambda finding: finding.place)

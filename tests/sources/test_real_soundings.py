@@ -109,5 +109,5 @@ def test_spoilt_real_soundings_are_caught(file, kind, tmp_path):
     spoilt = tmp_path / "spoilt.csv"
     spoilt.write_text("\n".join([lines[0], *(",".join(row) for row in rows)]))
     sounding = read_sounding(spoilt)
-    whats = " ".join(finding.what for finding in sounding.findings if finding.severity != "remark")
-    assert {"spike": "temperature spike", "feet": "height contradicts", "knots gap": "lowest wind"}[kind] in whats
+    said_of = " ".join(finding.what for finding in sounding.findings if finding.severity != "remark")
+    assert {"spike": "temperature spike", "feet": "height contradicts", "knots gap": "lowest wind"}[kind] in said_of

@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, overload
 
-from orolift.report.quantities import Kind, Units, displayed, from_displayed, number, quantity, unit
+from orolift.report.quantities import Kind, Units, displayed, first_number, first_unit, from_displayed, number, quantity
 
 if TYPE_CHECKING:
     import numpy as np
@@ -147,8 +147,8 @@ def ticks(scale: Scale, kind: Kind, units: Units, about: int, *, shift: float = 
     )
 
 
-def level_ticks(scale: Scale, units: Units, about: int, letter: float) -> tuple[Tick, ...]:
-    """Round heights for a vertical axis; the unit stands above the last one.
+def level_ticks(scale: Scale, units: Units, about: int, letter: float, kind: Kind = "height") -> tuple[Tick, ...]:
+    """Round values of a vertical axis; the unit stands above the last one.
 
     Parameters
     ----------
@@ -157,17 +157,18 @@ def level_ticks(scale: Scale, units: Units, about: int, letter: float) -> tuple[
     about : int
     letter : float
         Height of the lettering.
+    kind : str
 
     Returns
     -------
     tuple of Tick
     """
-    values, digits = _round_values(scale, "height", units, about, 0.0)
+    values, digits = _round_values(scale, kind, units, about, 0.0)
     out = []
     for value in values:
         at = round(place(scale, value), 1)
-        last = unit("height", units) if value == values[-1] else ""
-        out.append(Tick(at, number(value, "height", digits, units), last, round(at - 1.2 * letter, 1)))
+        last = first_unit(kind, units) if value == values[-1] else ""
+        out.append(Tick(at, first_number(value, kind, digits, units), last, round(at - 1.2 * letter, 1)))
     return tuple(out)
 
 

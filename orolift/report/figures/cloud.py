@@ -6,21 +6,28 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.report.figures.axes import Scale, place
-from orolift.report.figures.drawing import Curve, area, path_data, thinned
+from orolift.air.saturation import saturation_mixing_ratio
+from orolift.report.figures.axes import place
+from orolift.report.figures.contours import contour_body
+from orolift.report.figures.drawing import Curve
+from orolift.report.figures.streams import rows_below
+from orolift.report.story import rains
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.crossing.result import Crossing
+    from orolift.report.figures.view import View
 
-LAYERS = 7
-"""Layers of the soft edge of a cloud whose top is not worked out."""
+    Array = NDArray[np.float64]
 
-
-def cloudy(crossing: Crossing) -> NDArray[np.bool_]:
-    """Where each streamline has cloud, shape (ns, nz): water in the air, or leaving as it condenses."""
-    return np.asarray((crossing.air.cloud > 0.0) | (crossing.air.removed > 0.0), dtype=np.bool_)
+DENSE = 3e-4
+"""Cloud water [kg per kg] from which cloud is drawn denser (design choice)."""
+SPACING = 9.0
+"""Drawing units between strokes."""
+LONGEST = 46.0
+"""Drawing units of the longest stroke."""
+LEAST_STROKE = 0.12
+"""Strokes shorter than this share of the longest are left out."""
 
 
 def runs(flags: NDArray[np.bool_]) -> list[tuple[int, int]]:
@@ -35,74 +42,50 @@ def runs(flags: NDArray[np.bool_]) -> list[tuple[int, int]]:
     return [(int(first), int(last) - 1) for first, last in zip(edges[::2], edges[1::2], strict=True)]
 
 
-def cloud_body(
-    crossing: Crossing, across: Scale, up: Scale, ground: NDArray[np.int_], depth: float
-) -> tuple[Curve, ...]:
-    """Areas that together make the cloud.
+def cloud_body(view: View) -> tuple[Curve, ...]:
+    """Areas that together make the cloud: all of it, and where it is dense.
 
     Parameters
     ----------
-    crossing : Crossing
-    across, up : Scale
-        Horizontal and vertical.
-    ground : ndarray of int, shape (m,)
-        Indices of the points that draw the ground.
-    depth : float
-        Drawn depth, in drawing units, of a cloud known on its lowest streamline only.
+    view : View
 
     Returns
     -------
     tuple of Curve
-        With several streamlines, from the lowest cloudy one to the highest;
-        with one, layers that fade upward, because the top is not known. These
-        reach down behind the ground, which is drawn over them.
+        The edge lies where the air just becomes saturated, between two places.
     """
-    wet = cloudy(crossing)
-    x = place(across, crossing.distance)
-    heights = place(up, crossing.height)
-    out: list[Curve] = []
-    for first, last in runs(np.asarray(wet.any(axis=1))):
-        if last - first < 2:
-            continue
-        part = slice(first, last + 1)
-        if wet.shape[1] > 1:
-            out.append(_between_streamlines(x[part], heights[part], wet[part]))
-            continue
-        index = np.unique(np.concatenate([ground, np.linspace(first, last, 32).round().astype(int)]))
-        index = index[(index >= first) & (index <= last)]
-        swell = np.sin(np.pi * (x[index] - x[first]) / (x[last] - x[first])).clip(0.0) ** 0.6
-        full = min(depth, 0.45 * float(x[last] - x[first]))  # narrow stretches of cloud are shallow ones
-        all_of_it = np.arange(index.size)
-        out += [
-            area(x[index], heights[index, 0] - full * swell * layer / LAYERS, up.start, "cloud layer", all_of_it)
-            for layer in range(1, LAYERS + 1)
-        ]
-    return tuple(out)
+    rows = slice(0, rows_below(view))
+    air, columns = view.crossing.air, view.columns
+    p, t, vapour = (values[columns, rows] for values in (air.pressure, air.temperature, air.vapour))
+    water = air.cloud[columns, rows]
+    made = water + air.condensed[columns, rows]  # all of it may have fallen out at once
+    wet = made > 0.0
+    if not wet.any():
+        return ()
+    saturated = saturation_mixing_ratio(p, t)
+    excess = np.where(wet, np.maximum(made / saturated, 1e-4), np.minimum(vapour / saturated - 1.0, -1e-4))
+    y = np.asarray(place(view.up, view.heights[:, rows]))
+    top = view.layout.top
+    found = [
+        contour_body(view.x, y, excess, 0.0, top, "cloud"),
+        contour_body(view.x, y, np.where(wet, water, 0.0), DENSE, top, "cloud"),
+    ]
+    return tuple(body for body in found if body is not None)
 
 
-def _between_streamlines(x: NDArray[np.float64], heights: NDArray[np.float64], wet: NDArray[np.bool_]) -> Curve:
-    """The body from the lowest cloudy streamline at each place to the highest."""
-    bottom = np.where(wet, heights, -np.inf).max(axis=1)
-    top = np.where(wet, heights, np.inf).min(axis=1)
-    over, under = thinned(x, top), thinned(x, bottom)[::-1]
-    outline = path_data(np.concatenate([x[over], x[under]]), np.concatenate([top[over], bottom[under]]), closed=True)
-    return Curve(outline, "cloud")
-
-
-def falling_water(crossing: Crossing, across: Scale, up: Scale, depth: float, spacing: float) -> Curve | None:
-    """Strokes down to the ground where water leaves the air, longer where more does; None without any."""
-    loss = crossing.air.removed.sum(axis=1)
-    if not loss.any():
+def falling_water(view: View) -> Curve | None:
+    """Strokes down to the ground where rain or snow lands, longer where more does; None without any."""
+    crossing = view.crossing
+    if not rains(crossing):
         return None
-    x = place(across, crossing.distance)
-    at = np.arange(x[0] + 0.5 * spacing, x[-1], spacing)
-    tallied = np.interp(np.append(at - 0.5 * spacing, at[-1] + 0.5 * spacing), x, np.cumsum(loss))
-    rate = np.convolve(np.diff(tallied), (0.25, 0.5, 0.25), mode="same")  # strokes stand for stretches, not for points
-    share = np.sqrt(rate / rate.max())  # the root keeps light rain visible
-    ground = np.interp(at, x, place(up, crossing.height[:, 0]))
+    x = place(view.across, crossing.distance)
+    at = np.arange(x[0] + 0.5 * SPACING, x[-1], SPACING)
+    rate = np.interp(at, x, crossing.rain.rate)
+    share = np.sqrt(np.maximum(rate, 0.0) / max(float(rate.max()), 1e-12))  # the root keeps light rain visible
+    ground = np.interp(at, view.ground_x, view.ground_y)
     strokes = [
-        f"M{a - 0.28 * depth * s:.1f} {g - depth * s:.1f}L{a:.1f} {g:.1f}"
+        f"M{a - 0.28 * LONGEST * s:.1f} {g - LONGEST * s:.1f}L{a:.1f} {g:.1f}"
         for a, g, s in zip(at.tolist(), ground.tolist(), share.tolist(), strict=True)
-        if s > 0.12
+        if s > LEAST_STROKE
     ]
     return Curve("".join(strokes), "rain") if strokes else None

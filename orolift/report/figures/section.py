@@ -7,37 +7,39 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.report.briefing import cloudy_to_the_end, crest_index, starts_saturated
-from orolift.report.figures.axes import Layout, Scale, Tick, distance_scale, level_ticks, place, ticks
+from orolift.report.figures import lettering, streams
+from orolift.report.figures.axes import Layout, Tick, level_ticks, place, ticks
 from orolift.report.figures.cloud import cloud_body, falling_water
-from orolift.report.figures.drawing import (
-    Anchor,
-    Curve,
-    Figure,
-    Label,
-    Pin,
-    area,
-    arrow_head,
-    head_along,
-    polyline,
-    thinned,
-)
-from orolift.report.figures.pins import UPRIGHT, Spot, pins
-from orolift.report.figures.placing import Board, Box, put, text_width, with_taken
-from orolift.report.quantities import Units, from_displayed, quantity
+from orolift.report.figures.drawing import Curve, Figure, Label, Pin, area, arrow_head, path_data
+from orolift.report.figures.low_air import blocked_air, cold_pool
+from orolift.report.figures.pins import UPRIGHT, pins
+from orolift.report.figures.placing import Board, Box, with_taken
+from orolift.report.figures.rain_panel import RainPanel, rain_panel
+from orolift.report.figures.view import View, view
+from orolift.report.figures.wind_panel import WindPanel, wind_panel
+from orolift.report.quantities import Units, quantity
+from orolift.report.story import cloudy_to_the_end, is_blocked, rains
 from orolift.report.words import point_of_compass
 
 if TYPE_CHECKING:
+    from collections.abc import Callable, Sequence
+
     from numpy.typing import NDArray
 
     from orolift.crossing.result import Crossing
+    from orolift.report.figures.lettering import Lettered
+    from orolift.report.quantities import Kind
+    from orolift.report.trace import Trace
 
-WIDE = Layout("wide", 960.0, 446.0, 56.0, 934.0, 50.0, 408.0, 14.0, 8)
-NARROW = Layout("narrow", 344.0, 330.0, 42.0, 320.0, 50.0, 298.0, 12.5, 4)
-Flag = tuple[Label, Curve | None]
-"""Words, and the line that leads to what they name."""
-MOST_LINES = 12
-"""Streamlines drawn of those worked out."""
+    Writer = Callable[[View, Board], Lettered]
+
+WIDE = Layout("wide", 960.0, 0.0, 56.0, 934.0, 50.0, 456.0, 14.0, 8)
+NARROW = Layout("narrow", 344.0, 0.0, 42.0, 320.0, 50.0, 306.0, 12.5, 4)
+GAP = 46.0
+"""Drawing units between the panels; room for the unit of the axis."""
+RAIN_DEPTH, WIND_DEPTH = 66.0, 96.0
+"""Drawing units of the panels under the section."""
+MOST_PLUMB_LINES = 10
 
 
 @dataclass(frozen=True)
@@ -47,24 +49,35 @@ class SectionDrawing:
     layout: Layout
     height_ticks: tuple[Tick, ...]
     distance_ticks: tuple[Tick, ...]
-    cloud: tuple[Curve, ...]
-    falling: Curve | None
-    freezing: Curve | None
     ridges: Curve | None
+    cloud: tuple[Curve, ...]
+    isentropes: tuple[Curve, ...]
+    freezing: tuple[Curve, ...]
+    low_air: tuple[Curve, ...]
+    falling: Curve | None
     ground: Curve
     streamlines: tuple[Curve, ...]
+    breaking: Curve | None
+    followed: tuple[Curve, ...]
+    plumb_lines: tuple[Curve, ...]
     leaders: tuple[Curve, ...]
     heads: tuple[Curve, ...]
     pins: tuple[Pin, ...]
     labels: tuple[Label, ...]
+    rain: RainPanel | None
+    wind: WindPanel
 
 
-def section(crossing: Crossing, bearing: float, freezing_level: float, units: Units) -> Figure[SectionDrawing]:
-    """The section through the range.
+def section(
+    crossing: Crossing, trace: Trace, bearing: float, freezing_level: float, units: Units
+) -> Figure[SectionDrawing]:
+    """The section through the range, with the wind along the ground under it.
 
     Parameters
     ----------
     crossing : Crossing
+    trace : Trace
+        The air that reaches the main site.
     bearing : float [rad]
         Direction the wind comes from, clockwise from north.
     freezing_level : float [m]
@@ -75,247 +88,198 @@ def section(crossing: Crossing, bearing: float, freezing_level: float, units: Un
     -------
     Figure of SectionDrawing
     """
-    shape = crossing.features
-    crest = quantity(shape.crest, "height", 0, units)
-    alt = (
-        f"Section along the wind, which blows from left to right. The ground rises from "
-        f"{quantity(float(crossing.height[0, 0]), 'height', 0, units)} to the crest at {crest}, "
-        f"{quantity(shape.crest_distance - float(crossing.distance[0]), 'distance', 0, units)} from the "
-        f"upwind end, and falls to {quantity(shape.lee_foot, 'height', 0, units)} at the lee foot. "
-        + _cloud_words(crossing, units)
-        + "".join(
-            f" {air.name}, at {quantity(air.elevation, 'height', 0, units)}: "
-            f"{quantity(air.temperature, 'temperature', 1, units)}."
-            for air in crossing.lee
-        )
-    )
+    forms = (_forms(crossing, layout) for layout in (WIDE, NARROW))
+    (wide, *wide_panels), (narrow, *narrow_panels) = ((view(crossing, trace, units, f[0]), *f[1:]) for f in forms)
     return Figure(
         key="section",
-        drawing=_drawing(crossing, bearing, freezing_level, units, WIDE),
-        narrow=_drawing(crossing, bearing, freezing_level, units, NARROW),
+        drawing=_drawing(wide, bearing, freezing_level, *wide_panels),
+        narrow=_drawing(narrow, bearing, freezing_level, *narrow_panels),
         title="Section through the range along the wind",
-        alt=alt,
-        caption=_caption(crossing),
+        alt=_alt(crossing, units),
+        caption=_caption(crossing, trace, units),
     )
 
 
-def _cloud_words(crossing: Crossing, units: Units) -> str:
-    if crossing.cloud.base is None:
-        return "No cloud forms."
-    words = f"Cloud from {quantity(crossing.cloud.base, 'height', -1, units)} on the windward side"
-    if cloudy_to_the_end(crossing):
-        return f"{words} to the downwind end."
-    if crossing.cloud.end is None:
-        return f"{words}."
-    return f"{words} to {quantity(crossing.cloud.end, 'height', -1, units)} in the lee."
+def _alt(crossing: Crossing, units: Units) -> str:
+    """The message of the picture for those who do not see it."""
 
+    def said(value: float, kind: Kind, digits: int = 0) -> str:
+        return quantity(value, kind, digits, units)
 
-def _caption(crossing: Crossing) -> str:
-    parts = [
-        "Wind blows from left to right; heights are above sea level and stretched as marked.",
-        "The coloured line is the lowest air, with its temperature.",
-    ]
-    if crossing.cloud.base is not None and crossing.height.shape[1] == 1:
-        parts.append("Grey is cloud: where it begins and ends on the slope is worked out, its top is not.")
-    if crossing.water.removed > 0.0:
-        parts.append("Blue strokes are water leaving the air, longer where more of it falls.")
-    if crossing.transect.high_elevation is not None:
-        parts.append("The paler ground behind is the higher ridges beside the line.")
-    parts.append("Numbered discs are the sites of the table.")
+    shape, flow, line = crossing.features, crossing.flow, crossing.transect
+    rise = (
+        f"The ground rises from {said(float(line.elevation[0]), 'height')} to the crest at "
+        f"{said(shape.crest, 'height')}, {said(shape.crest_distance - float(line.distance[0]), 'distance')} from the "
+        f"upwind end, and falls to {said(shape.lee_foot, 'height')} at the lee foot."
+    )
+    parts = ["Section along the wind, which blows from left to right.", rise]
+    if is_blocked(crossing):
+        parts.append(f"Air below {said(flow.blocked_top, 'height', -1)} is blocked before the range.")
+    else:
+        parts.append("All the air crosses.")
+    if crossing.pool is not None:
+        parts.append(f"In the lee cold air stays up to {said(crossing.pool.top, 'height', -1)}.")
+    parts.append(_cloud_words(crossing, units))
+    if flow.wave_breaking:
+        parts.append("Waves break over the range.")
+    for air in crossing.lee:
+        source = "" if air.source_level is None else f", air from {said(air.source_level, 'height', -1)}"
+        parts.append(
+            f"{air.name}, at {said(air.elevation, 'height')}: {said(air.temperature, 'temperature', 1)}{source}."
+        )
+    winds = crossing.winds
+    parts.append(f"The wind down the lee reaches {said(winds.strongest, 'wind')}.")
     return " ".join(parts)
 
 
-def _up(crossing: Crossing, freezing_level: float, layout: Layout, units: Units) -> Scale:
-    """Vertical scale: from sea level, unless all of the ground is far above it, to well above the crest."""
-    ground = crossing.height[:, 0]
-    lowest, highest = float(ground.min()), float(ground.max())
-    low = min(0.0, lowest)
-    if lowest > 0.4 * highest:
-        step = from_displayed(500.0 if units == "metric" else 2000.0, "height", units)
-        low = step * np.floor(0.95 * lowest / step)
-    span = highest - low
-    top = highest + 0.42 * span
-    if highest + 0.1 * span < freezing_level < highest + 0.75 * span:
-        top = max(top, freezing_level + 0.12 * span)
-    return Scale(float(low), float(top), layout.bottom, layout.top)
+def _cloud_words(crossing: Crossing, units: Units) -> str:
+    cloud = crossing.cloud
+    if cloud.base is None:
+        return "No cloud forms."
+    words = f"Cloud from {quantity(cloud.base, 'height', -1, units)} on the windward side"
+    if cloudy_to_the_end(crossing):
+        return f"{words} to the downwind end."
+    if cloud.end is None:
+        return f"{words}."
+    return f"{words} to {quantity(cloud.end, 'height', -1, units)} in the lee."
 
 
-def _drawing(crossing: Crossing, bearing: float, freezing_level: float, units: Units, layout: Layout) -> SectionDrawing:
-    across = distance_scale(crossing.distance, layout)
-    up = _up(crossing, freezing_level, layout, units)
-    x, ground = place(across, crossing.distance), place(up, crossing.height[:, 0])
-    outline = thinned(x, ground)
-    depth = 0.2 * (layout.bottom - layout.top)
-    board = Board(Box(layout.left, layout.top - 6.0, layout.right + 2.0, layout.bottom), layout.letter, x, ground)
-    freezing, labels, board = _freezing(freezing_level, units, up, board)
-    spots = _spots(crossing, units, across, up)
-    roots = [Box(spot.x - 2.0, spot.y - 3.4 * layout.letter, spot.x + 2.0, spot.y) for spot in spots]
-    more, leaders, marked = _marks(crossing, units, across, up, with_taken(board, *roots))
-    labels += more
-    board = replace(marked, taken=tuple(box for box in marked.taken if box not in roots))
-    sites, board = pins(spots, board, UPRIGHT, names=layout is WIDE)
+def _caption(crossing: Crossing, trace: Trace, units: Units) -> str:
+    """What the lines and areas stand for."""
+    low, high = (quantity(value, "temperature_difference", 0, units) for value in (1.0, 3.0))
+    looks = (
+        "Thin lines are other paths of the air: grey where it is about as warm as the incoming air at the same height, "
+        f"ochre where more than {low} warmer, thick where more than {high}, blue where cooler."
+    )
+    parts = [
+        "Wind blows from left to right; heights are above sea level and stretched as marked.",
+        _followed_words(trace),
+        looks,
+        "Dotted: equal potential temperature.",
+    ]
+    if is_blocked(crossing):
+        parts.append("Hatched: air that does not get over; the bar on it is the range of its top.")
+    if crossing.pool is not None:
+        parts.append("Level strokes: cold air that stays in the lee.")
+    if crossing.cloud.base is not None:
+        parts.append("Grey is cloud, darker where dense.")
+    if rains(crossing):
+        parts.append("Blue strokes are water that reaches the ground, longer where more does.")
+    if crossing.transect.high_elevation is not None:
+        parts.append("The paler ground behind is the higher ridges beside the line.")
+    parts.append(
+        "Numbered discs are the sites of the table. Below, on the same axis: "
+        f"{'rain at the ground and ' if rains(crossing) else ''}the wind along it."
+    )
+    return " ".join(parts)
+
+
+def _followed_words(trace: Trace) -> str:
+    if trace.site is None:
+        return "The bold line is the air that reaches the lee foot."
+    if trace.site.in_pool:
+        return f"The bold line is the air that passes over {trace.site.name}."
+    return (
+        f"The bold line is the air that reaches {trace.site.name}; the bar at its start spans the heights eight tenths "
+        "of that air come from."
+    )
+
+
+def _forms(crossing: Crossing, layout: Layout) -> tuple[Layout, Layout, Layout]:
+    """The section and the panels of rain and wind under it, all of one picture."""
+    share = 1.0 if layout.name == "wide" else 0.78
+    rain_top = layout.bottom + GAP
+    rain_bottom = rain_top + RAIN_DEPTH * share
+    wind_top = (rain_bottom if rains(crossing) else layout.bottom) + GAP
+    wind_bottom = wind_top + WIND_DEPTH * share
+    whole = replace(layout, height=wind_bottom + 34.0)
+    return (
+        whole,
+        replace(whole, top=rain_top, bottom=round(rain_bottom, 1)),
+        replace(whole, top=round(wind_top, 1), bottom=round(wind_bottom, 1)),
+    )
+
+
+def _drawing(seen: View, bearing: float, freezing_level: float, below: Layout, under: Layout) -> SectionDrawing:
+    """One form of the figure."""
+    crossing, layout, up = seen.crossing, seen.layout, seen.up
     high = crossing.transect.high_elevation
-    heads = [head_along(x, ground, share, 13.0, "head air") for share in (0.2, 0.8)]
+    followed, line = streams.followed(seen)
+    isentropes, levels = streams.isentropes(seen)
+    ice = streams.freezing(seen)
+    breaking, curls = streams.breaking(seen)
+    spots = lettering.spots(seen)
+    roots = [Box(spot.x - 2.0, spot.y - 3.4 * layout.letter, spot.x + 2.0, spot.y) for spot in spots]
+    board = with_taken(lettering.board_of(seen, line), *roots)
+    first = (lettering.crest, lettering.source, lettering.low_air, lettering.cloud_marks)
+    labels, leaders, board = _written(seen, board, first)
+    sites, board = pins(spots, _without(board, roots), UPRIGHT, names=layout.name == "wide")
+    then: tuple[Writer, ...] = (
+        lettering.on_the_way,
+        lambda v, b: lettering.breaking_mark(v, curls, b),
+        lambda v, b: lettering.freezing_marks(v, ice, freezing_level, b),
+        lettering.carried_marks,
+        lambda v, b: lettering.isentrope_marks(v, levels, b),
+    )
+    more, lines, board = _written(seen, board, then)
     return SectionDrawing(
         layout=layout,
-        height_ticks=level_ticks(up, units, 5, layout.letter),
-        distance_ticks=ticks(across, "distance", units, layout.ticks, shift=crossing.transect.origin),
-        cloud=cloud_body(crossing, across, up, outline, depth),
-        falling=falling_water(crossing, across, up, 0.62 * depth, 8.0),
-        freezing=freezing,
-        ridges=None if high is None else area(x, np.minimum(place(up, high), ground), layout.bottom, "ridges"),
-        ground=area(x, ground, layout.bottom, "ground", outline),
-        streamlines=_streamlines(crossing, x, up, outline),
-        leaders=leaders,
-        heads=(*(head for head in heads if head is not None), *_wind_arrow(layout)),
+        height_ticks=level_ticks(up, seen.units, 6, layout.letter),
+        distance_ticks=ticks(seen.across, "distance", seen.units, layout.ticks, shift=crossing.transect.origin),
+        ridges=None if high is None else _ridges(seen, high),
+        cloud=cloud_body(seen),
+        isentropes=isentropes,
+        freezing=tuple(Curve(path_data(*part), "freezing") for part in ice),
+        low_air=(*blocked_air(seen), *cold_pool(seen)),
+        falling=falling_water(seen),
+        ground=_ground(seen),
+        streamlines=streams.streamlines(seen),
+        breaking=breaking,
+        followed=followed,
+        plumb_lines=_plumb_lines(seen, under),
+        leaders=(*leaders, *lines),
+        heads=_wind_arrow(layout),
         pins=sites,
-        labels=(*labels, *_header(crossing, bearing, across, up, layout, units)),
+        labels=(*labels, *more, *_header(seen, bearing)),
+        rain=rain_panel(seen, below),
+        wind=wind_panel(seen, under),
     )
 
 
-def _streamlines(crossing: Crossing, x: NDArray[np.float64], up: Scale, outline: NDArray[np.int_]) -> tuple[Curve, ...]:
-    """The lowest streamline and an even choice of those above it that enter the frame."""
-    inside = np.flatnonzero(crossing.start_height <= up.high)
-    chosen = np.unique(np.linspace(0, inside[-1], min(MOST_LINES, inside.size)).round().astype(int))
-    lowest = place(up, crossing.height[:, 0])
-    return (
-        *(polyline(x, place(up, crossing.height[:, k]), "air") for k in chosen[:0:-1].tolist()),
-        polyline(x, lowest, "air casing", outline),
-        polyline(x, lowest, "air lowest", outline),
-    )
-
-
-def _freezing(level: float, units: Units, up: Scale, board: Board) -> tuple[Curve | None, tuple[Label, ...], Board]:
-    """The freezing level of the incoming air, as far as it stands free of the ground, with its name."""
-    words = f"0 °C in the incoming air: {quantity(level, 'height', -1, units)}"
-    if units == "us":
-        words = f"32 °F in the incoming air: {quantity(level, 'height', -1, units)}"
-    if text_width(words, board.letter) > 0.7 * (board.frame.right - board.frame.left):
-        words = f"freezing level {quantity(level, 'height', -1, units)}"
-    y = place(up, level)
-    if not up.low < level < up.high:
-        words += ", above this picture" if level >= up.high else ""
-        spot = (Label(words, board.frame.right - 2.0, board.frame.top + board.letter + 4.0, "end", "freezing"),)
-        labels, board = put(board, [spot], needed=level >= up.high)
-        return None, labels, board
-    line = Curve(f"M{board.frame.left:.1f} {y:.1f}H{board.frame.right:.1f}", "freezing")
-    above, below = round(y - 5.0, 1), round(y + board.letter, 1)
-    right, left = board.frame.right - 2.0, board.frame.left + 6.0
-    labels, board = put(
-        board,
-        [
-            (Label(words, right, above, "end", "freezing"),),
-            (Label(words, left, above, "start", "freezing"),),
-            (Label(words, right, below, "end", "freezing"),),
-            (Label(words, left, below, "start", "freezing"),),
-        ],
-    )
-    return line, labels, board
-
-
-def _flags(x: float, y: float, words: str, kind: str, side: float, rises: tuple[float, ...]) -> list[Flag]:
-    """Places for words above a point, on the wished side first; those far above get a leader down to it."""
-    anchors: tuple[tuple[Anchor, float], ...] = (("end", -5.0), ("start", 5.0))
-    out: list[Flag] = []
-    for rise in rises:
-        for anchor, shift in anchors[:: 1 if side < 0.0 else -1]:
-            leader = Curve(f"M{x:.1f} {y:.1f}V{y - rise - 8.0:.1f}", "leader") if rise > 24.0 else None
-            out.append((Label(words, round(x + shift, 1), round(y - rise, 1), anchor, kind), leader))
-    return out
-
-
-def _beside_the_slope(x: float, y: float, words: str, side: float, letter: float) -> list[Flag]:
-    """Places for words at the height of a point on a slope, on a line that runs out to the free side."""
-    end = x + side * (text_width(words, letter) + 10.0)
-    leader = Curve(f"M{x:.1f} {y:.1f}H{end:.1f}", "leader")
-    anchor: Anchor = "end" if side < 0.0 else "start"
-    return [(Label(words, round(x + 8.0 * side, 1), round(y - 6.0, 1), anchor, "place"), leader)]
-
-
-def _in_the_ground(x: float, y: float, words: str, side: float, letter: float) -> list[Flag]:
-    """Places for words under a point, for drawings without room above it."""
-    anchor: Anchor = "start" if side < 0.0 else "end"
-    return [
-        (
-            Label(text, round(x - 5.0 * side, 1), round(y + drop, 1), anchor, "in-ground"),
-            Curve(f"M{x:.1f} {y + 4.0:.1f}V{y + drop:.1f}", "in-ground"),
-        )
-        for text in (words, words.removeprefix("cloud "))
-        for drop in (1.9 * letter, 2.6 * letter, 3.6 * letter, 5.0 * letter, 7.0 * letter, 9.0 * letter)
-    ]
-
-
-def _put_flag(board: Board, *wishes: tuple[list[Flag], bool]) -> tuple[tuple[Label, ...], tuple[Curve, ...], Board]:
-    """The first flag that fits, with its leader; each list of wishes says whether it stands in the ground."""
-    for flags, underground in wishes:
-        labels, board = put(board, [(label,) for label, _ in flags], underground=underground)
-        if labels:
-            leaders = tuple(leader for label, leader in flags if leader is not None and (label,) == labels)
-            return labels, leaders[:1], board
-    return (), (), board
-
-
-def _marks(
-    crossing: Crossing, units: Units, across: Scale, up: Scale, board: Board
-) -> tuple[tuple[Label, ...], tuple[Curve, ...], Board]:
-    """Crest, cloud base and end of cloud with their heights, and the temperature of the air at its start."""
-    labels, board = _crest(crossing, units, across, up, board)
-    start = place(across, float(crossing.distance[0])), place(up, float(crossing.height[0, 0]))
-    warm = quantity(float(crossing.air.temperature[0, 0]), "temperature", 1, units)
-    rises = (9.0, 16.0, 24.0, 36.0, 48.0, 64.0, 80.0)
-    more, leaders, board = _put_flag(board, (_flags(*start, warm, "value", 1.0, rises), False))
-    labels += more
-    base = None if starts_saturated(crossing) else crossing.cloud.base
-    end = None if cloudy_to_the_end(crossing) else crossing.cloud.end
-    for name, height, distance, side in (
-        ("cloud base", base, crossing.cloud.base_distance, -1.0),
-        ("cloud ends", end, crossing.cloud.end_distance, 1.0),
-    ):
-        if height is None or distance is None:
-            continue
-        spot = place(across, distance), place(up, height)
-        words = f"{name} {quantity(height, 'height', -1, units)}"
-        more, lines, board = _put_flag(
-            board,
-            (_beside_the_slope(*spot, words, side, board.letter), False),
-            (_in_the_ground(*spot, words, side, board.letter), True),
-            (_flags(*spot, words, "place", side, (40.0, 60.0, 80.0, 100.0, 120.0, 150.0, 180.0)), False),
-        )
+def _written(seen: View, board: Board, writers: Sequence[Writer]) -> Lettered:
+    """Everything that writers put on a board, one after the other."""
+    labels: tuple[Label, ...] = ()
+    leaders: tuple[Curve, ...] = ()
+    for write in writers:
+        more, lines, board = write(seen, board)
         labels, leaders = labels + more, leaders + lines
     return labels, leaders, board
 
 
-def _crest(crossing: Crossing, units: Units, across: Scale, up: Scale, board: Board) -> tuple[tuple[Label, ...], Board]:
-    """Height and temperature at the crest; to one side of it where a site's pin needs the room."""
-    shape, letter = crossing.features, board.letter
-    x, y = place(across, shape.crest_distance), place(up, shape.crest)
-    words = f"crest {quantity(shape.crest, 'height', 0, units)}"
-    warm = quantity(float(crossing.air.temperature[crest_index(crossing), 0]), "temperature", 1, units)
-    gaps = [place(across, air.distance) - x for air in crossing.lee]
-    near = min(gaps, key=abs)
-    anchor: Anchor = "middle"
-    shift = 0.0
-    if abs(near) < 5.0 * letter:
-        anchor, shift = ("end", -letter) if near >= 0.0 else ("start", letter)
-    groups = []
-    for rise in (10.0, 28.0, 46.0):
-        first = Label(words, round(x + shift, 1), round(y - rise - 1.2 * letter, 1), anchor, "place")
-        second = Label(warm, round(x + shift, 1), round(y - rise, 1), anchor, "value")
-        groups.append((first,) if abs(near) < letter else (first, second))
-    return put(board, groups, needed=True)
+def _without(board: Board, boxes: list[Box]) -> Board:
+    return replace(board, taken=tuple(box for box in board.taken if box not in boxes))
 
 
-def _spots(crossing: Crossing, units: Units, across: Scale, up: Scale) -> list[Spot]:
-    return [
-        Spot(
-            number,
-            place(across, air.distance),
-            place(up, air.elevation),
-            air.name,
-            quantity(air.temperature, "temperature", 1, units),
-        )
-        for number, air in enumerate(crossing.lee, start=1)
-    ]
+def _ground(seen: View) -> Curve:
+    """The silhouette down to the foot of the frame."""
+    return area(seen.ground_x, seen.ground_y, seen.layout.bottom, "ground", np.arange(seen.ground_x.size))
+
+
+def _ridges(seen: View, high: NDArray[np.float64]) -> Curve:
+    """Higher ground beside the line."""
+    line = seen.crossing.transect
+    x = place(seen.across, line.distance)
+    return area(x, np.minimum(place(seen.up, high), place(seen.up, line.elevation)), seen.layout.bottom, "ridges")
+
+
+def _plumb_lines(seen: View, under: Layout) -> tuple[Curve, ...]:
+    """From every site down into the wind panel, so that both are read together; none where sites crowd."""
+    if len(seen.crossing.lee) > MOST_PLUMB_LINES:
+        return ()
+    return tuple(
+        Curve(f"M{x:.1f} {seen.layout.bottom:.1f}V{under.bottom:.1f}", "plumb")
+        for x in (place(seen.across, air.distance) for air in seen.crossing.lee)
+    )
 
 
 def _wind_arrow(layout: Layout) -> tuple[Curve, ...]:
@@ -327,17 +291,16 @@ def _wind_arrow(layout: Layout) -> tuple[Curve, ...]:
     )
 
 
-def _header(
-    crossing: Crossing, bearing: float, across: Scale, up: Scale, layout: Layout, units: Units
-) -> tuple[Label, ...]:
+def _header(seen: View, bearing: float) -> tuple[Label, ...]:
     """Where the wind comes from, and how far heights are stretched."""
-    stretch = up.units_per_value / across.units_per_value
+    layout, units = seen.layout, seen.units
+    stretch = seen.up.units_per_value / seen.across.units_per_value
     times = f"{stretch:.0f}" if stretch >= 9.5 else f"{stretch:.1f}"
     wind = f"from the {point_of_compass(bearing)}"
-    if layout is WIDE:
-        speed = quantity(crossing.flow.crest_wind, "wind", 0, units)
+    if layout.name == "wide":
+        speed = quantity(seen.crossing.flow.crest_wind, "wind", 0, units)
         wind = f"wind {wind}, {quantity(bearing, 'bearing', 0, units)}; {speed} across the crest"
-    factor = f"heights stretched {times} times" if layout is WIDE else f"heights × {times}"
+    factor = f"heights stretched {times} times" if layout.name == "wide" else f"heights × {times}"
     y = 16.0 + 0.34 * layout.letter
     return (
         Label(wind, layout.left + 42.0, y, "start", "note"),

@@ -1,0 +1,205 @@
+"""Three answers side by side: the popular picture, descent only, and this page; and why they differ."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from orolift.report.causes import cause_noun
+from orolift.report.quantities import Amount
+from orolift.report.story import SAME, difference, ends_of, main_site
+
+if TYPE_CHECKING:
+    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.report.words import Words
+
+TELLING = 2.0
+"""Answers further apart than this [K] are explained (design)."""
+
+
+@dataclass(frozen=True)
+class AnswerRow:
+    """The answers for one site; None where an answer says nothing of it.
+
+    Attributes
+    ----------
+    number : int
+    name, side : str
+    incoming, popular_picture, descent_only, own, no_blocking, full_blocking : Amount or None
+        Temperatures.
+    own_dew_point, no_blocking_dew_point, full_blocking_dew_point : Amount or None
+    """
+
+    number: int
+    name: str
+    side: str
+    incoming: Amount
+    popular_picture: Amount | None
+    descent_only: Amount | None
+    own: Amount
+    no_blocking: Amount | None
+    full_blocking: Amount | None
+    own_dew_point: Amount
+    no_blocking_dew_point: Amount | None
+    full_blocking_dew_point: Amount | None
+
+
+@dataclass(frozen=True)
+class Answers:
+    """A conclusion, the rows, and why the answers differ."""
+
+    heading: Words
+    rows: tuple[AnswerRow, ...]
+    remarks: tuple[Words, ...]
+
+
+def answers(crossing: Crossing) -> Answers:
+    """The answers for every site.
+
+    Parameters
+    ----------
+    crossing : Crossing
+
+    Returns
+    -------
+    Answers
+    """
+    site = main_site(crossing)
+    return Answers(
+        heading=_heading(site),
+        rows=tuple(_row(air, number) for number, air in enumerate(crossing.lee, start=1)),
+        remarks=(*_differences(crossing, site), *_ends(crossing, site)),
+    )
+
+
+def _row(site: LeeAir, number: int) -> AnswerRow:
+    over = site.side != "windward"
+
+    def warm(value: float | None) -> Amount | None:
+        return None if value is None else Amount(value, "temperature", 1)
+
+    ends = ends_of(site)
+    least, most = (None, None) if ends is None else ends
+    return AnswerRow(
+        number=number,
+        name=site.name,
+        side=site.side,
+        incoming=Amount(site.upwind_temperature, "temperature", 1),
+        popular_picture=warm(site.popular_picture if over else None),
+        descent_only=warm(site.descent_only if over else None),
+        own=Amount(site.temperature, "temperature", 1),
+        no_blocking=warm(None if least is None else least.temperature),
+        full_blocking=warm(None if most is None else most.temperature),
+        own_dew_point=Amount(site.dew_point, "temperature", 1),
+        no_blocking_dew_point=warm(None if least is None else least.dew_point),
+        full_blocking_dew_point=warm(None if most is None else most.dew_point),
+    )
+
+
+def _heading(site: LeeAir) -> Words:
+    if site.side == "windward":
+        return (f"The popular picture says nothing of {site.name}, which lies before the crest",)
+    gap = site.popular_picture - site.temperature
+    if site.in_pool:
+        return (
+            f"The popular picture gives {site.name} ",
+            Amount(site.popular_picture, "temperature", 1),
+            " and knows no cold pool",
+        )
+    if abs(gap) < SAME:
+        return (f"The popular picture gives the same temperature for {site.name}",)
+    return (
+        f"The popular picture gives {site.name} ",
+        Amount(site.popular_picture, "temperature", 1),
+        ", ",
+        *difference(gap, "more than this page", "less than this page", ""),
+    )
+
+
+def _differences(crossing: Crossing, site: LeeAir) -> list[Words]:
+    """A sentence for each answer that is more than 2 K off."""
+    if site.side == "windward" or site.in_pool:
+        return []
+    out: list[Words] = []
+    gap = site.popular_picture - site.temperature
+    if abs(gap) > TELLING:
+        size = Amount(abs(gap), "temperature_difference", 1)
+        side = "less" if gap < 0.0 else "more"
+        out.append(("The popular picture gives ", size, f" {side} because ", *_why_popular(site, gap), "."))
+    if site.descent_only is not None and site.parts is not None:
+        gap = site.descent_only - site.temperature
+        if abs(gap) > TELLING:
+            size = Amount(abs(gap), "temperature_difference", 1)
+            side = "less" if gap < 0.0 else "more"
+            out.append(
+                ("Descent only gives ", size, f" {side} because it leaves out ", *_left_out(crossing, site, gap), ".")
+            )
+    if not out:
+        out.append(
+            (
+                "The answers lie within ",
+                Amount(TELLING, "temperature_difference"),
+                " of this page: the simple pictures serve here.",
+            )
+        )
+    return out
+
+
+def _why_popular(site: LeeAir, gap: float) -> Words:
+    """What makes the popular picture differ, the largest reason first."""
+    parts = site.parts
+    if gap < 0.0 and site.source_level is not None and parts is not None and parts.descent > parts.latent:
+        return (
+            "it lifts the air of the upwind ground, which does not get over here: what arrives comes from ",
+            Amount(site.source_level, "height", -1),
+            " and is warmer once it is down",
+        )
+    if parts is not None and parts.going_round < -0.5 * gap and gap > 0.0:
+        return (
+            "all its air comes over the crest, while here ",
+            Amount(site.went_round, "share"),
+            " went round and stayed cool",
+        )
+    if gap > 0.0:
+        return (
+            "it lets every drop fall out, while here water stays in the air and takes its heat back on the way down",
+        )
+    return ("it starts with the air of the upwind ground alone and lifts it over the highest ground",)
+
+
+def _left_out(crossing: Crossing, site: LeeAir, gap: float) -> Words:
+    """The largest of the parts that descent alone leaves out, in the direction of the gap."""
+    parts = site.parts
+    if parts is None:
+        return ("everything else",)
+    others = {key: getattr(parts, key) for key in ("latent", "going_round", "mixing", "surface_heating", "pressure")}
+    key = max(others, key=lambda name: -others[name] * gap)
+    noun = cause_noun(crossing, site, key)
+    last = noun[-1]
+    words = (*noun[:-1], last.rstrip(",") if isinstance(last, str) else last)
+    if key == "latent":
+        words = ("the heat of condensation",)
+    return (*words, " (", Amount(others[key], "temperature_change", 1), ")")
+
+
+def _ends(crossing: Crossing, site: LeeAir) -> list[Words]:
+    """The two ends between which the answer lies."""
+    ends = ends_of(site)
+    if ends is None:
+        return []
+    least, most = ends
+    if abs(least.temperature - most.temperature) < SAME:
+        return [
+            ("Nothing is blocked, so that no blocking and full blocking give the same; the range says nothing here.",)
+        ]
+    return [
+        (
+            f"The ends of the range for {site.name}: ",
+            Amount(least.temperature, "temperature", 1),
+            " with no blocking (all the low air comes over) and ",
+            Amount(most.temperature, "temperature", 1),
+            " with full blocking (nothing below ",
+            Amount(crossing.flow.dividing_height, "height", -1),
+            " comes over, nothing goes round).",
+        )
+    ]
