@@ -27,7 +27,16 @@ from orolift.constants import (
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
-Origin = Literal["measured", "station", "lapse rate", "standard lapse above the data", "standard lapse below the data"]
+Origin = Literal[
+    "measured",
+    "model",
+    "station",
+    "between stations",
+    "surface report blended in",
+    "lapse rate",
+    "standard lapse above the data",
+    "standard lapse below the data",
+]
 
 _BELOW: Origin = "standard lapse below the data"
 _DEEPEST_EXTENSION = 3000.0  # m; further below the data a constant lapse is no more than a guess

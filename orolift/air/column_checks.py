@@ -216,6 +216,31 @@ def _refuse_contradiction(hydrostatic: Array, height: Array, worst: int, pressur
     )
 
 
+def superadiabatic_layers(height: Array, temperature: Array) -> list[tuple[int, int]]:
+    """Layers in which temperature falls faster than air can keep up.
+
+    Parameters
+    ----------
+    height : ndarray (nz,) [m above sea level]
+    temperature : ndarray (nz,) [K]
+
+    Returns
+    -------
+    list of (int, int)
+        Level numbers of bottom and top. Adjacent layers count as one; thinner
+        than 50 m they are left to the noise of the instrument.
+
+    Examples
+    --------
+    >>> superadiabatic_layers(np.array([0.0, 100.0, 200.0, 900.0]), np.array([290.0, 288.7, 287.4, 283.0]))
+    [(0, 2)]
+    """
+    steep = np.concatenate([[False], -np.diff(temperature) / np.diff(height) > NOTED_LAPSE_RATE, [False]])
+    edges = np.flatnonzero(np.diff(steep.astype(np.int8)))  # level numbers of bottom, top, bottom, top, ...
+    pairs = zip(edges[::2], edges[1::2], strict=True)
+    return [(int(low), int(high)) for low, high in pairs if height[high] - height[low] >= NOTED_LAYER]
+
+
 def superadiabatic_notes(height: Array, temperature: Array) -> list[str]:
     """What to say about layers in which temperature falls faster than air can keep up.
 
@@ -227,15 +252,11 @@ def superadiabatic_notes(height: Array, temperature: Array) -> list[str]:
     Returns
     -------
     list of str
-        One sentence, or none. Adjacent layers count as one; thinner than 50 m
-        they are left to the noise of the instrument.
+        One sentence, or none, on `superadiabatic_layers`.
     """
-    steep = np.concatenate([[False], -np.diff(temperature) / np.diff(height) > NOTED_LAPSE_RATE, [False]])
-    edges = np.flatnonzero(np.diff(steep.astype(np.int8)))  # level numbers of bottom, top, bottom, top, ...
     layers = [
         (float(height[low]), float(height[high]), float(temperature[low] - temperature[high]))
-        for low, high in zip(edges[::2], edges[1::2], strict=True)
-        if height[high] - height[low] >= NOTED_LAYER
+        for low, high in superadiabatic_layers(height, temperature)
     ]
     if not layers:
         return []

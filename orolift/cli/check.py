@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from math import degrees
 from typing import TYPE_CHECKING
 
 import click
@@ -35,18 +36,35 @@ def findings(inputs: Inputs) -> list[str]:
             f"Line: {line.origin / 1000:g} to {end / 1000:.1f} km, ground {line.elevation.min():.0f} to "
             f"{line.elevation.max():.0f} m, {line.distance.size} points."
         ),
+        *_found(inputs),
         (
             f"Incoming air: {_given(inputs)}, ground {air.height[0]:.0f} m, "
             f"{air.pressure[0] / 100:.1f} hPa, {air.temperature[0] - 273.15:.1f} °C."
         ),
         f"Sites: {', '.join(site.name for site in inputs.sites) or 'none; the lee foot is used'}.",
     ]
-    lines += [f"Doubtful: {text}" for text in inputs.cautions]
+    from orolift.sources.quality import cautions, table_lines
+
+    in_table = set(cautions(inputs.findings))
+    lines += [f"Doubtful: {text}" for text in inputs.cautions if text not in in_table]
+    if inputs.findings:
+        lines += ["Quality control of the incoming air:", *(f"  {row}" for row in table_lines(inputs.findings))]
     lines += [f"Assumed: {text}" for text in (*air.notes, *line.notes)]
     return lines
 
 
+def _found(inputs: Inputs) -> list[str]:
+    """The direction of the line, if it was not given."""
+    if inputs.case.incoming.wind_from_deg is not None:
+        return []
+    direction = degrees(inputs.wind_from)
+    return [f"Wind: from {direction:.0f} degrees, the mean from the base of the range to 500 m above its crest."]
+
+
 def _given(inputs: Inputs) -> str:
     """What of the column was given."""
-    levels = inputs.incoming.origin.count("measured")
-    return f"{levels} levels given" if levels else "a station report"
+    origin = inputs.incoming.origin
+    levels = sum(kind in {"measured", "model", "surface report blended in"} for kind in origin)
+    stations = origin.count("station")
+    given = f"{stations} stations" if stations > 1 else "a station report"
+    return f"{levels} levels given" if levels else given

@@ -23,8 +23,23 @@ from orolift.sources.case_table import (
     exactly_one,
     together,
 )
+from orolift.sources.incoming_model import Incoming, Station
 from orolift.sources.rain_model import Catchments, GaugesTable, Rain, keys_of_a_map
 from orolift.sources.units import UNITS
+
+__all__ = [
+    "Case",
+    "FlowTable",
+    "HeatTable",
+    "Incoming",
+    "LeeTable",
+    "Place",
+    "Rain",
+    "SiteTable",
+    "Station",
+    "Terrain",
+    "TransectTable",
+]
 
 
 class Place(Table):
@@ -89,62 +104,6 @@ class TransectTable(Table):
     upwind_km: Annotated[float, Field(ge=20.0, le=1000.0)] = 120.0
     downwind_km: Annotated[float, Field(ge=10.0, le=1000.0)] = 80.0
     swath_km: Annotated[float, Field(ge=0.0, le=100.0)] = 10.0
-
-
-class Station(Table):
-    """A station report upwind of the range."""
-
-    elevation_m: Elevation
-    temperature_c: Annotated[float, Field(ge=-80.0, le=56.0)]
-    dew_point_c: Annotated[float, Field(ge=-100.0, le=45.0)] | None = None
-    relative_humidity_percent: Annotated[float, Field(gt=0.0, le=100.0)] | None = Field(
-        default=None, description="over liquid water; may stand for dew_point_c"
-    )
-    pressure_hpa: Annotated[float, Field(ge=300.0, le=1090.0)] | None = Field(
-        default=None, description="at the station's height, not reduced to sea level"
-    )
-    qnh_hpa: Annotated[float, Field(ge=860.0, le=1090.0)] | None = Field(
-        default=None, description="altimeter setting; may stand for pressure_hpa"
-    )
-    wind_kt: Annotated[float, Field(ge=0.0, le=250.0)] = Field(description="speed, never negative")
-    wind_from_deg: Bearing | None = Field(default=None, description="default: wind_from_deg of [incoming]")
-
-    @model_validator(mode="after")
-    def _one_each(self) -> Station:
-        exactly_one(self, ("dew_point_c", "relative_humidity_percent"), "humidity")
-        exactly_one(self, ("pressure_hpa", "qnh_hpa"), "pressure")
-        return self
-
-
-class Incoming(Table):
-    """The air before the range."""
-
-    wind_from_deg: Bearing = Field(description="bearing the wind comes from; the transect runs along it")
-    station: Station | None = None
-    sounding_file: Name | None = Field(default=None, description="CSV with units in the column names")
-    sounding_elevation_m: Elevation | None = Field(
-        default=None, description="ground of a sounding that gives no heights"
-    )
-    crest_wind_kt: Annotated[float, Field(ge=0.0, le=250.0)] | None = Field(
-        default=None, description="wind at crest height"
-    )
-    crest_wind_from_deg: Bearing | None = Field(default=None, description="default: wind_from_deg")
-    lapse_rate_c_per_km: Annotated[float, Field(ge=0.0, le=11.0)] | None = Field(
-        default=None, description="above the station; default 6.5"
-    )
-
-    @model_validator(mode="after")
-    def _one_source(self) -> Incoming:
-        exactly_one(self, ("station", "sounding_file"), "incoming air")
-        if self.sounding_file is not None:
-            for key in ("crest_wind_kt", "crest_wind_from_deg", "lapse_rate_c_per_km"):
-                if getattr(self, key) is not None:
-                    raise ValueError(f"{key} belongs to a station; a sounding brings its own, leave the key out")
-        if self.sounding_elevation_m is not None and self.sounding_file is None:
-            raise ValueError("sounding_elevation_m belongs to sounding_file; a station has its own elevation_m")
-        if self.crest_wind_from_deg is not None and self.crest_wind_kt is None:
-            raise ValueError("crest_wind_from_deg needs crest_wind_kt beside it")
-        return self
 
 
 class FlowTable(Table):

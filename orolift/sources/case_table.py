@@ -1,4 +1,4 @@
-"""What every table of the case file is made of: strict types, ranges, and other units for the same key."""
+"""What every table of the case file has in common: strictness, units in the keys, ranges used more than once."""
 
 from __future__ import annotations
 

@@ -90,7 +90,7 @@ def existing_file(path: str | Path, where: str, folder: Path | None = None) -> P
 def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
     """Whole text of a local file, without its byte-order mark.
 
-    UTF-8 is expected; UTF-16 with a mark and Latin-1 letters are read too.
+    UTF-8 is expected; UTF-16, with a mark or without, and Latin-1 letters are read too.
 
     Parameters
     ----------
@@ -112,7 +112,7 @@ def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
     full = existing_file(path, where, folder)
     try:
         with full.open("rb") as stream:
-            raw = stream.read(TEXT_LIMIT + 1)
+            raw = stream.read(min(full.stat().st_size, TEXT_LIMIT) + 1)  # reading sets aside as much as is asked for
     except OSError as error:
         raise MissingFileError(f"{where}: {full} cannot be read ({_reason(error)}).") from error
     if len(raw) > TEXT_LIMIT:
@@ -124,16 +124,27 @@ def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
 
 def _decoded(raw: bytes, name: str) -> str:
     if raw.startswith((b"\xff\xfe", b"\xfe\xff")):
-        try:
-            return raw.decode("utf-16")
-        except UnicodeDecodeError as error:
-            raise DataFileError(f"{name} starts like UTF-16 text but is not. Save it as UTF-8.") from error
+        return _utf_16(raw, "utf-16", name)
     if b"\0" in raw:
-        raise DataFileError(f"{name} is a binary file, not text.")
+        zeros = raw[0::2].count(0), raw[1::2].count(0)
+        # Text in UTF-16 has its zeros on one side, one for most letters.
+        if len(raw) % 2 or min(zeros) > 0 or max(zeros) < len(raw) // 4:
+            raise DataFileError(f"{name} is a binary file, not text.")
+        return _utf_16(raw, "utf-16-le" if zeros[1] else "utf-16-be", name)
     try:
         return raw.decode("utf-8-sig")
     except UnicodeDecodeError:
         return raw.decode("latin-1")
+
+
+def _utf_16(raw: bytes, encoding: str, name: str) -> str:
+    try:
+        text = raw.decode(encoding)
+    except UnicodeDecodeError as error:
+        raise DataFileError(f"{name} starts like UTF-16 text but is not. Save it as UTF-8.") from error
+    if "\0" in text:
+        raise DataFileError(f"{name} is a binary file, or text in UTF-32. Save it as UTF-8.")
+    return text
 
 
 def _reason(error: Exception) -> str:

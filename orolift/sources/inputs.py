@@ -3,16 +3,14 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.column_build import CrestWind, air_from_levels, air_from_station
-from orolift.air.humidity import mixing_ratio_from_dew_point_checked, mixing_ratio_from_relative_humidity
-from orolift.air.standard import standard_pressure, station_pressure_from_qnh
-from orolift.constants import STANDARD_LAPSE_RATE
+from orolift.air.ground_layer import NO_GROUND_LAYER, GroundLayer, ground_layer
 from orolift.crossing.pool import Lee
 from orolift.crossing.result import Site, When
 from orolift.crossing.settings import Settings
@@ -20,35 +18,30 @@ from orolift.errors import CaseError, OroliftError
 from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
 from orolift.sources.files import read_text
+from orolift.sources.incoming import read_incoming
+from orolift.sources.quality import Finding, cautions
 from orolift.sources.ridge_csv import read_ridge
-from orolift.sources.sounding_csv import read_sounding
+from orolift.sources.sounding_air import air_from_sounding, read_any_sounding
 from orolift.sources.units import to_si
+from orolift.sources.wind_line import Line, line_along_wind, turning_caution, where_observed
 from orolift.terrain.features import features
 from orolift.terrain.range_normal import RangeNormal
 from orolift.terrain.ridge import ridge_transect
 from orolift.terrain.transect import transect_elevation
 
 if TYPE_CHECKING:
-    from numpy.typing import NDArray
-
     from orolift.air.column import IncomingAir
     from orolift.crossing.solve import CrestLine
-    from orolift.sources.case_model import Case, Incoming, LeeTable, Place, Station, Terrain
+    from orolift.sources.case_model import Case, LeeTable, Place, Terrain
     from orolift.sources.raster import MapPoint
-    from orolift.sources.sounding_csv import Sounding
     from orolift.terrain.transect import Transect
 
-PRESSURE_CONTRADICTION = 6000.0
-"""Station pressure further than this from the standard atmosphere [Pa] contradicts the elevation: a judgement, wider
-than sea-level extremes of 870 and 1085 hPa would need for any station that is not in such a record storm."""
 ELEVATION_CONTRADICTION = 150.0
 """A site's elevation this far from the terrain [m] gets a remark (a judgement)."""
 OFF_LINE = 5000.0
 """A site this far beside the transect [m], half the default swath, gets a remark (a judgement)."""
 OBLIQUE_DEG = 45.0
 """Angle between wind and line beyond which it is remarked (a judgement)."""
-LEAST_HUMIDITY = 0.01
-"""Lowest relative humidity [1] taken from a sounding: the least a sensor resolves; common practice, no source."""
 
 
 @dataclass(frozen=True)
@@ -75,7 +68,13 @@ class Inputs:
     offsets : tuple of float or None [m]
         Distance of each site across the transect; None for a hand-entered ridge.
     cautions : tuple of str
-        What is doubtful about the places.
+        What is doubtful about the places and about the incoming air.
+    findings : tuple of Finding
+        Quality control of the incoming air; those that are more than remarks are among the cautions, too.
+    wind_from : float [rad]
+        Direction the transect is drawn from: given, or that of the mean wind before the range.
+    ground_layer : GroundLayer
+        Stagnant layer on the ground of the incoming air, to be kept out of the inflow.
     """
 
     case: Case
@@ -91,6 +90,9 @@ class Inputs:
     crest_line: CrestLine | None
     offsets: tuple[float | None, ...]
     cautions: tuple[str, ...]
+    findings: tuple[Finding, ...]
+    wind_from: float
+    ground_layer: GroundLayer
 
 
 def read_inputs(path: str | Path) -> Inputs:
@@ -122,13 +124,18 @@ def read_inputs(path: str | Path) -> Inputs:
 
 def _inputs(case: Case, path: Path, text: str) -> Inputs:
     folder = path.parent
-    wind_from = math.radians(case.incoming.wind_from_deg)
-    if case.terrain.elevation_file is None:
+    reading = read_incoming(case.incoming, folder, case.valid_time, datetime.now(UTC))
+
+    def line(wind_from: float) -> Line:
+        if case.terrain.elevation_file is not None:
+            return _raster(case, folder, wind_from)
         transect = _ridge(case.terrain, folder, wind_from)
-        sites, offsets = _sites_on_ridge(case, transect)
-    else:
-        transect, sites, offsets = _raster(case, folder, wind_from)
-    incoming = _incoming(case.incoming, folder, features(transect).crest)
+        return transect, *_sites_on_ridge(case, transect)
+
+    wind_from, (transect, sites, offsets) = line_along_wind(reading, line, case.incoming.wind_from_deg)
+    shape = features(transect)
+    incoming = reading.column(shape.crest)
+    findings = (*reading.findings, *where_observed(case, folder, reading.observations, transect, shape))
     normal, crest_line = _range(case, folder, transect)
     return Inputs(
         case=case,
@@ -138,12 +145,19 @@ def _inputs(case: Case, path: Path, text: str) -> Inputs:
         incoming=incoming,
         sites=sites,
         settings=_settings(case),
-        lee=_lee(case.lee, folder),
+        lee=_lee(case.lee, folder, case.valid_time),
         when=_when(case, transect),
         normal=normal,
         crest_line=crest_line,
         offsets=offsets,
-        cautions=tuple(_remarks(case, transect, sites, offsets)),
+        cautions=(
+            *_remarks(case, transect, sites, offsets, wind_from),
+            *turning_caution(incoming, shape),
+            *cautions(findings),
+        ),
+        findings=findings,
+        wind_from=wind_from,
+        ground_layer=NO_GROUND_LAYER if "lapse rate" in incoming.origin else ground_layer(incoming, shape.crest),
     )
 
 
@@ -160,10 +174,11 @@ def _settings(case: Case) -> Settings:
     )
 
 
-def _lee(table: LeeTable, folder: Path) -> Lee:
+def _lee(table: LeeTable, folder: Path, near: datetime | None) -> Lee:
     air = None
     if table.sounding_file is not None:
-        air = _from_sounding(table.sounding_file, "[lee] sounding_file", folder, None)
+        where = "[lee] sounding_file"
+        air = air_from_sounding(read_any_sounding(table.sounding_file, where, folder, near=near), where)
     temperature = None if table.temperature_c is None else to_si(table.temperature_c, "c")
     return Lee(temperature=temperature, pool_top=table.pool_top_m, air=air)
 
@@ -284,91 +299,13 @@ def _map_point(place: Place) -> MapPoint:
     return MapPoint(float(place.easting_m or 0.0), float(place.northing_m or 0.0), projected=True)
 
 
-def _incoming(table: Incoming, folder: Path, crest: float) -> IncomingAir:
-    wind_from = math.radians(table.wind_from_deg)
-    if table.sounding_file is not None:
-        return _from_sounding(table.sounding_file, "[incoming] sounding_file", folder, table.sounding_elevation_m)
-    if table.station is None:  # the model has refused it already
-        raise CaseError("[incoming] needs a station or a sounding_file")
-    return _from_station(table, table.station, wind_from, crest)
-
-
-def _from_sounding(file: str, where: str, folder: Path, elevation: float | None) -> IncomingAir:
-    """Column of a sounding file."""
-    sounding = read_sounding(file, where, folder)
-    vapour, notes = _vapour(sounding)
-    ground = sounding.ground if elevation is None else elevation
-    if sounding.height is None and ground is None:
-        raise CaseError(
-            f"{where}: {file} gives no height of its lowest level. "
-            "Add a column height_m, or give sounding_elevation_m, the height of its ground."
-        )
-    air = air_from_levels(
-        sounding.height,
-        sounding.pressure,
-        sounding.temperature,
-        vapour,
-        sounding.eastward_wind,
-        sounding.northward_wind,
-        elevation=ground if sounding.height is None else None,
-    )
-    return replace(air, notes=(*sounding.notes, *notes, *air.notes))
-
-
-def _vapour(sounding: Sounding) -> tuple[NDArray[np.float64], tuple[str, ...]]:
-    if sounding.dew_point is not None:
-        return mixing_ratio_from_dew_point_checked(sounding.pressure, sounding.temperature, sounding.dew_point)
-    humidity = np.maximum(np.asarray(sounding.relative_humidity), LEAST_HUMIDITY)
-    notes: tuple[str, ...] = ()
-    if (np.asarray(sounding.relative_humidity) < LEAST_HUMIDITY).any():
-        notes = (f"Relative humidity below {LEAST_HUMIDITY:.0%} is taken as that, the least a sensor resolves.",)
-    return mixing_ratio_from_relative_humidity(sounding.pressure, sounding.temperature, humidity), notes
-
-
-def _from_station(table: Incoming, station: Station, wind_from: float, crest: float) -> IncomingAir:
-    temperature = to_si(station.temperature_c, "c")
-    pressure = _station_pressure(station)
-    if station.dew_point_c is not None:
-        vapour, notes = mixing_ratio_from_dew_point_checked(pressure, temperature, to_si(station.dew_point_c, "c"))
-    else:
-        humidity = to_si(float(station.relative_humidity_percent or 0.0), "percent")
-        vapour, notes = mixing_ratio_from_relative_humidity(pressure, temperature, humidity), ()
-    own_from = wind_from if station.wind_from_deg is None else math.radians(station.wind_from_deg)
-    crest_wind = None
-    if table.crest_wind_kt is not None:
-        aloft = wind_from if table.crest_wind_from_deg is None else math.radians(table.crest_wind_from_deg)
-        crest_wind = CrestWind(to_si(table.crest_wind_kt, "kt"), aloft, crest)
-    lapse = STANDARD_LAPSE_RATE if table.lapse_rate_c_per_km is None else to_si(table.lapse_rate_c_per_km, "c_per_km")
-    air = air_from_station(
-        station.elevation_m,
-        pressure,
-        temperature,
-        float(vapour),
-        to_si(station.wind_kt, "kt"),
-        own_from,
-        lapse_rate=lapse,
-        crest_wind=crest_wind,
-    )
-    return replace(air, notes=(*notes, *air.notes))
-
-
-def _station_pressure(station: Station) -> float:
-    """Pressure at the station, from itself or from the altimeter setting; refused when it contradicts the height."""
-    if station.pressure_hpa is None:
-        return float(station_pressure_from_qnh(to_si(float(station.qnh_hpa or 0.0), "hpa"), station.elevation_m))
-    pressure = to_si(station.pressure_hpa, "hpa")
-    usual = float(standard_pressure(station.elevation_m))
-    if abs(pressure - usual) > PRESSURE_CONTRADICTION:
-        low, high = ((usual + sign * PRESSURE_CONTRADICTION) / 100.0 for sign in (-1.0, 1.0))
-        raise CaseError(
-            f"[incoming] station: pressure_hpa {station.pressure_hpa:g} and elevation_m {station.elevation_m:g} "
-            f"contradict each other: {low:.0f} to {high:.0f} hPa is allowed at that height. "
-            "Is it reduced to sea level? Then call it qnh_hpa."
-        )
-    return pressure
-
-
-def _remarks(case: Case, transect: Transect, sites: tuple[Site, ...], offsets: tuple[float | None, ...]) -> list[str]:
+def _remarks(
+    case: Case,
+    transect: Transect,
+    sites: tuple[Site, ...],
+    offsets: tuple[float | None, ...],
+    wind_from: float,
+) -> list[str]:
     """What is doubtful about the places, as cautions."""
     found = []
     for site, offset in zip(sites, offsets, strict=True):
@@ -385,7 +322,7 @@ def _remarks(case: Case, transect: Transect, sites: tuple[Site, ...], offsets: t
             )
     drawn_from = case.terrain.drawn_from_deg
     if drawn_from is not None:
-        off = abs((case.incoming.wind_from_deg - drawn_from + 180.0) % 360.0 - 180.0)
+        off = abs((math.degrees(wind_from) - drawn_from + 180.0) % 360.0 - 180.0)
         if off > OBLIQUE_DEG:
             found.append(
                 f"The wind is {off:.0f} degrees off the line of the ridge: only its component along the line is used, "

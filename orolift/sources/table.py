@@ -4,13 +4,15 @@ from __future__ import annotations
 
 import csv
 import math
+import re
+from array import array
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from orolift.errors import DataFileError
-from orolift.sources.units import alternatives, converted, nearest, suffix_of, to_si
+from orolift.sources.units import UNITS, alternatives, nearest, suffix_of, to_si
 
 if TYPE_CHECKING:
     from collections.abc import Iterator, Mapping, Sequence
@@ -19,6 +21,14 @@ if TYPE_CHECKING:
 
 MISSING = frozenset({"", "-", "--", "/", "//", "///", "////", "na", "n/a", "nan", "null", "none", "-999", "-9999", "m"})
 """Cells that mean no value, in small letters; ``-9999`` forms with decimals count too."""
+MISSING_OUT_OF_RANGE = frozenset({999.0, 999.9, 999.99, 9999.0, 9999.9, 9999.99, 99999.0, 99999.9})
+"""Numbers that mean no value in a column where they are impossible anyway; noted. Common practice, no source."""
+MOST_ROWS = 100_000
+"""Rows read at most: a balloon that reports every second for three hours gives 10 800."""
+
+_DECIMAL_COMMA = re.compile(r"[+-]?\d+,\d+")
+_THOUSANDS = re.compile(r"[+-]?[1-9]\d{0,2},\d{3}")
+_PLAIN_NUMBER = re.compile(r"[+-]?((\d+\.?\d*|\.\d+)(e[+-]?\d+)?|inf|infinity)", re.ASCII | re.IGNORECASE)
 
 
 @dataclass(frozen=True)
@@ -56,16 +66,34 @@ class NumberTable:
         Line of the file each row stands on, first line 1.
     texts : mapping of str to tuple of str, length n
         Columns of text, as they stand.
+    notes : tuple of str
+        How unusual cells were read.
     """
 
     name: str
     columns: Mapping[str, NDArray[np.float64]]
     line: NDArray[np.int64]
     texts: Mapping[str, tuple[str, ...]] = field(default_factory=dict)
+    notes: tuple[str, ...] = ()
+
+
+@dataclass
+class _Head:
+    """A column while it is read: what it is, its range in its own unit, its numbers so far."""
+
+    stem: str
+    suffix: str
+    usual: Column
+    to_usual: tuple[float, float]
+    values: array[float] = field(default_factory=lambda: array("d"))
+    texts: list[str] = field(default_factory=list)
+    comma_line: int = 0
+    could_be_thousands: bool = True
+    code_line: int = 0
 
 
 def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable:
-    """Table of numbers from CSV text with one header line.
+    r"""Table of numbers from CSV text with one header line.
 
     Lines that start with ``#`` and blank lines are passed over. Commas,
     semicolons and tabs separate; the header decides which.
@@ -85,51 +113,130 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
     ------
     DataFileError
         If a column is unknown, doubled or in a unit of another kind, a row has
-        the wrong number of cells, or a cell is no number or out of range.
-    """
-    lines = [(number, line) for number, line in enumerate(text.split("\n"), start=1) if _holds_data(line)]
-    if not lines:
+        the wrong number of cells, a cell is no number or out of range, commas
+        may be decimal or thousands, or there are more than `MOST_ROWS` rows.
+
+    Examples
+    --------
+    >>> table = number_table("height_m;wind_kt\n100;7,5", "tower.csv", [Column("height_m", 0, 900), Column("wind_ms", 0, 90)])
+    >>> float(table.columns["wind"][0].round(3)), table.notes
+    (3.858, ('tower.csv: decimal commas are read as decimal points (first on line 2).',))
+    """  # noqa: E501 (a doctest in one line)
+    lines = _data_lines(text)
+    number, first = next(lines, (0, ""))
+    if not number:
         raise DataFileError(f"{name}: holds no header and no rows.")
-    separator = max(",;\t", key=lines[0][1].count)
-    cells = list(_rows(lines, separator, name))
-    if len(cells) == 1:
+    separator = max(",;\t", key=first.count)
+    heads = _heads(_cells(first, separator, f"{name}: line {number}"), allowed, f"{name}: line {number}")
+    line_numbers = array("q")
+    for number, line in lines:
+        where = f"{name}: line {number}"
+        row = _cells(line, separator, where)
+        if len(row) != len(heads):
+            raise DataFileError(_wrong_width(line, len(row), len(heads), separator, where))
+        if len(line_numbers) == MOST_ROWS:
+            raise DataFileError(
+                f"{where}: more than {MOST_ROWS} rows. Is it the right file? If so, keep every tenth row."
+            )
+        for cell, head in zip(row, heads, strict=True):
+            if head.usual.text:
+                head.texts.append(cell)
+            else:
+                head.values.append(_number(cell, head, number, where))
+        line_numbers.append(number)
+    if not line_numbers:
         raise DataFileError(f"{name}: has a header and no rows.")
-    heads = [_column(head, allowed, f"{name}: line {cells[0][0]}") for head in cells[0][1]]
-    stems = [stem for _, stem, _ in heads]
+    notes = _reading_notes(heads, name)
+    columns = {head.stem: _in_si(head) for head in heads if not head.usual.text}
+    texts = {head.stem: tuple(head.texts) for head in heads if head.usual.text}
+    return NumberTable(name, columns, np.frombuffer(line_numbers, dtype=np.int64), texts, notes)
+
+
+def _in_si(head: _Head) -> NDArray[np.float64]:
+    """Values in SI; of a column without a unit as they are."""
+    values = np.frombuffer(head.values, dtype=np.float64)
+    return to_si(values, head.suffix) if head.suffix else values.copy()
+
+
+def _key(head: _Head) -> str:
+    """Name of a column as it stands, for messages."""
+    return f"{head.stem}_{head.suffix}" if head.suffix else head.stem
+
+
+def _data_lines(text: str) -> Iterator[tuple[int, str]]:
+    """Number and text of each line that holds data, without a list of all of them."""
+    start, number = 0, 0
+    while start <= len(text):
+        end = text.find("\n", start)
+        end = len(text) if end < 0 else end
+        line, number, start = text[start:end], number + 1, end + 1
+        if line.strip() and not line.lstrip().startswith("#"):
+            yield number, line
+
+
+def _cells(line: str, separator: str, where: str) -> list[str]:
+    if '"' not in line:
+        return [cell.strip() for cell in line.split(separator)]
+    try:
+        return [cell.strip() for cell in next(csv.reader([line], delimiter=separator, strict=True))]
+    except (csv.Error, StopIteration) as error:
+        raise DataFileError(f"{where}: not a row of a CSV table ({error}).") from error
+
+
+def _wrong_width(line: str, have: int, wanted: int, separator: str, where: str) -> str:
+    """What to say about a row with the wrong number of cells."""
+    other = next((mark for mark in ",;\t" if mark != separator and line.count(mark) == wanted - 1), None)
+    if other is not None and wanted > 1:
+        marks = {",": "commas", ";": "semicolons", "\t": "tabs"}
+        cause = f"The header is separated by {marks[separator]}, this line by {marks[other]}; use one of them."
+    else:
+        cause = "Decimal commas need another separator, for example a semicolon."
+    return f"{where}: {have} cells, but the header has {wanted}. {cause}"
+
+
+def _heads(cells: list[str], allowed: Sequence[Column], where: str) -> list[_Head]:
+    if len(cells) == 1 and re.search(r"\S[\s|:]+\S", cells[0]):
+        raise DataFileError(
+            f"{where}: '{cells[0][:60]}' is one column. Separate columns by commas, semicolons or tabs, nothing else."
+        )
+    heads = []
+    for cell in cells:
+        column, stem, suffix = _column(cell, allowed, where)
+        heads.append(_Head(stem, suffix, column, _to_usual(column, suffix)))
+    stems = [head.stem for head in heads]
     twice = next((stem for stem in stems if stems.count(stem) > 1), None)
     if twice is not None:
-        raise DataFileError(f"{name}: line {cells[0][0]}: {twice} stands in two columns; keep one.")
-    numeric = [(i, head) for i, head in enumerate(heads) if not head[0].text]
-    rows = [[_number(row[i], head, f"{name}: line {number}") for i, head in numeric] for number, row in cells[1:]]
-    values = np.array(rows, dtype=np.float64)
-    columns = {stem: _in_si(values[:, i], suffix) for i, (_, (_, stem, suffix)) in enumerate(numeric)}
-    texts = {stem: tuple(row[i] for _, row in cells[1:]) for i, (column, stem, _) in enumerate(heads) if column.text}
-    return NumberTable(name, columns, np.array([number for number, _ in cells[1:]], dtype=np.int64), texts)
+        raise DataFileError(f"{where}: {twice} stands in two columns; keep one.")
+    return heads
 
 
-def _in_si(values: NDArray[np.float64], suffix: str) -> NDArray[np.float64]:
-    """Values in SI; without a suffix as they are."""
-    return to_si(values, suffix) if suffix else values
+def _to_usual(column: Column, suffix: str) -> tuple[float, float]:
+    """Factor and offset from the unit of a column in the file to that of its usual name."""
+    if not suffix:
+        return 1.0, 0.0
+    own, usual = UNITS[suffix], UNITS[(suffix_of(column.name) or ("", suffix))[1]]
+    return own.factor / usual.factor, (own.offset - usual.offset) / usual.factor
 
 
-def _holds_data(line: str) -> bool:
-    return bool(line.strip()) and not line.lstrip().startswith("#")
-
-
-def _rows(lines: list[tuple[int, str]], separator: str, name: str) -> Iterator[tuple[int, list[str]]]:
-    width = 0
-    for number, line in lines:
-        try:
-            row = [cell.strip() for cell in next(csv.reader([line], delimiter=separator, strict=True))]
-        except (csv.Error, StopIteration) as error:
-            raise DataFileError(f"{name}: line {number}: not a row of a CSV table ({error}).") from error
-        width = width or len(row)
-        if len(row) != width:
+def _reading_notes(heads: list[_Head], name: str) -> tuple[str, ...]:
+    """What to say about decimal commas and codes for missing values; refuses commas that may be thousands."""
+    commas = [head for head in heads if head.comma_line]
+    for head in commas:
+        if head.could_be_thousands:
             raise DataFileError(
-                f"{name}: line {number}: {len(row)} cells, but the header has {width}. "
-                "Decimal commas need another separator, for example a semicolon."
+                f"{name}: line {head.comma_line}: the commas of {_key(head)} may separate decimals or "
+                "thousands: every one is followed by three digits. Write decimal points."
             )
-        yield number, row
+    notes = []
+    if commas:
+        line = min(head.comma_line for head in commas)
+        notes.append(f"{name}: decimal commas are read as decimal points (first on line {line}).")
+    notes += [
+        f"{name}: numbers such as 999 or 9999 in {_key(head)} are read as no value (first on line {head.code_line})."
+        for head in heads
+        if head.code_line
+    ]
+    return tuple(notes)
 
 
 def _column(head: str, allowed: Sequence[Column], where: str) -> tuple[Column, str, str]:
@@ -150,19 +257,24 @@ def _column(head: str, allowed: Sequence[Column], where: str) -> tuple[Column, s
     raise DataFileError(f"{where}: column '{head}' is not known. {hint}")
 
 
-def _number(cell: str, head: tuple[Column, str, str], where: str) -> float:
-    column, stem, suffix = head
+def _number(cell: str, head: _Head, line: int, where: str) -> float:
     word = cell.lower()
     if word in MISSING or word.startswith(("-999.", "-9999.")):
         return math.nan
-    try:
-        value = float(cell)
-    except ValueError:
-        raise DataFileError(f"{where}: {stem} '{cell[:40]}' is not a number.") from None
-    in_usual = converted(value, suffix, (suffix_of(column.name) or ("", suffix))[1]) if suffix else value
-    if not column.low <= in_usual <= column.high:
+    if _DECIMAL_COMMA.fullmatch(cell):
+        head.comma_line = head.comma_line or line
+        head.could_be_thousands = head.could_be_thousands and _THOUSANDS.fullmatch(cell) is not None
+        cell = cell.replace(",", ".")
+    if not _PLAIN_NUMBER.fullmatch(cell):
+        raise DataFileError(f"{where}: {head.stem} '{cell[:40]}' is not a number.")
+    value = float(cell)
+    factor, offset = head.to_usual
+    if not head.usual.low <= round(value * factor + offset, 9) <= head.usual.high:
+        if value in MISSING_OUT_OF_RANGE:
+            head.code_line = head.code_line or line
+            return math.nan
         raise DataFileError(
-            f"{where}: {stem}{'_' if suffix else ''}{suffix} {value:g} is outside the plausible range of "
-            f"{column.name}, {column.low:g} to {column.high:g}. Check the column and its unit."
+            f"{where}: {_key(head)} {value:g} is outside the plausible range of {head.usual.name}, "
+            f"{head.usual.low:g} to {head.usual.high:g}. Check the column and its unit."
         )
     return value

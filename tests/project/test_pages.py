@@ -19,6 +19,7 @@ from orolift.sources.case_model import (
     Terrain,
     TransectTable,
 )
+from orolift.sources.incoming_model import LadderRung, MetarTable, ModelAt, SoundingAt
 from orolift.sources.results import (
     CaseBlock,
     FlowBlock,
@@ -42,6 +43,10 @@ CASE_TABLES = {
     "A place": Place,
     "[incoming]": Incoming,
     "station": Station,
+    "stations": LadderRung,
+    "metar": MetarTable,
+    "sounding_at": SoundingAt,
+    "model_at": ModelAt,
     "[flow]": FlowTable,
     "[rain]": Rain,
     "[lee]": LeeTable,
@@ -113,6 +118,8 @@ def test_case_page_has_units_ranges_and_defaults(heading, model):
         assert (row["default"] == "needed") == info.is_required(), key
         if isinstance(info.default, bool):
             assert row["default"] == str(info.default).lower(), key
+        elif isinstance(info.default, str):
+            assert row["default"] == f'`"{info.default}"`', key
         elif isinstance(info.default, float):
             assert row["default"] == f"{info.default:g}", key
         assert row["meaning"], key

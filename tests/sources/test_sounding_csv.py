@@ -46,7 +46,7 @@ def test_gaps_are_filled_or_left_out():
     """A missing wind is interpolated by components; a level without humidity is left out; missing heights are noted."""
     text = HEADER + "\n".join([ROWS[0], "900,,9,6,,", "850,1450,6,,250,13", *ROWS[2:]])
     sounding = sounding_from_text(text, "s.csv")
-    assert list(sounding.pressure) == [100000.0, 90000.0, 80000.0, 70000.0, 50000.0]
+    assert list(sounding.pressure) == [100000.0, 90000.0, 85000.0, 80000.0, 70000.0, 50000.0]
     assert sounding.height is None
     assert any("heights of the sounding are missing" in note for note in sounding.notes)
     assert sounding.eastward_wind[0] < sounding.eastward_wind[1] < sounding.eastward_wind[2]
@@ -58,8 +58,12 @@ def test_gaps_are_filled_or_left_out():
         ("temperature_c,dew_point_c", "dew_point_c,temperature_c", r"dew point above temperature at 5 of 5.*swapped\?"),
         ("900,990", "850,990", None),
         ("900,990", "750,990", r"s.csv: line 4: 800 hPa is out of order"),
-        ("900,990", "1000,990", r"lines 2 and 3 repeat 1000 hPa"),
-        ("900,990", ",990", r"line 3: no pressure"),
+        ("900,990", "1000,990", r"line 2 and line 3 repeat 1000 hPa with different values"),
+        (
+            "pressure_hpa,height_m",
+            "height_m,pressure_hpa",
+            r"line 4: pressure_hpa 1950 is outside the plausible range",
+        ),
         ("wind_ms", "wind_speed", r"line 1: column 'wind_speed' is not known. Did you mean wind_ms"),
         ("wind_ms", "wind_hpa", r"column 'wind_hpa': use one of wind_ms, wind_kt"),
         ("temperature_c", "temperature", r"column 'temperature' is not known. Did you mean temperature_c"),
