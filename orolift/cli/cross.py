@@ -123,6 +123,7 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
             normal=inputs.normal,
             lowest_pass=inputs.case.terrain.pass_m,
             crest_line=inputs.crest_line,
+            stagnant_top=stagnant_top(inputs),
             background=to_si(inputs.case.rain.background_mm_per_h, "mm_per_h"),
         )
     except ValueError as error:
@@ -148,6 +149,12 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
         grid=None if mapped is None else mapped.inputs.placed.grid,
         rain_on_map=None if mapped is None else mapped.rain.rain,
     )
+
+
+def stagnant_top(inputs: Inputs) -> float | None:
+    """Top of the stagnant layer at the ground of the incoming column, None where there is none."""
+    depth = inputs.ground_layer.depth
+    return float(inputs.incoming.height[0]) + depth if depth > 0.0 else None
 
 
 def report_of(worked: Worked, units: Units) -> str:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -46,6 +47,7 @@ def cross(
     normal: RangeNormal | None = None,
     lowest_pass: float | None = None,
     crest_line: CrestLine | None = None,
+    stagnant_top: float | None = None,
     background: float = 0.0,
     streamlines: int = 60,
 ) -> Crossing:
@@ -68,6 +70,8 @@ def cross(
     lowest_pass : float, optional [m above sea level]
     crest_line : CrestLine, optional
         Ground along the range, for its gaps.
+    stagnant_top : float, optional [m above sea level]
+        Top of a stagnant layer at the ground of the incoming column, which is no inflow of the range.
     background : float [kg m-2 s-1]
         Rain that falls anyway.
     streamlines : int
@@ -95,7 +99,8 @@ def cross(
     """
     settings, when, lee = checked(settings or Settings()), when or When(), lee or Lee()
     shape = features(transect, sites[0].distance if sites else None)
-    ground = _ground(transect, shape, incoming, normal, lowest_pass, crest_line, when)
+    ground = _ground(transect, shape, incoming, normal, when)
+    ground = replace(ground, lowest_pass=lowest_pass, crest_line=crest_line, stagnant_top=stagnant_top)
     crest_wind = crest_component(incoming, ground.normal, shape.crest)
     sites = sites or (Site("Lee foot", shape.lee_foot_distance),)
     solution = solve(ground, incoming, ends(settings), lee, members=3, streamlines=streamlines)
@@ -140,8 +145,6 @@ def _ground(
     shape: Features,
     incoming: IncomingAir,
     normal: RangeNormal | None,
-    lowest_pass: float | None,
-    crest_line: CrestLine | None,
     when: When,
 ) -> Ground:
     """Terrain with its normal; the transect's own direction where the ground has none."""
@@ -154,7 +157,7 @@ def _ground(
             f"the air does not cross: the line runs along the range, {off:.0f} degrees off the direction across it "
             f"({np.degrees(bearing):.0f} degrees). Check the wind direction, or give range_normal_deg in [flow]."
         )
-    return Ground(transect, shape, bearing, cosine, lowest_pass, crest_line, when.latitude)
+    return Ground(transect, shape, bearing, cosine, latitude=when.latitude)
 
 
 def toward(transect: Transect, incoming: IncomingAir) -> float:

@@ -11,7 +11,7 @@ from orolift.crossing.arrival import frozen_temperature, over, pressure_at
 from orolift.crossing.pool import Lee, Pool, pool_under
 from orolift.crossing.settings import DEFAULT_GOING_ROUND, each
 from orolift.crossing.streams import PASSES, Streams, streams
-from orolift.crossing.upwind import Blocking, Upwind, blocking, upwind_column
+from orolift.crossing.upwind import ROOM_BELOW_CREST, Blocking, Upwind, blocking, upwind_column
 from orolift.flow.gaps import gap_share, gap_share_from_pass, reach_along_crest
 from orolift.flow.scales import deformation_radius
 
@@ -94,6 +94,8 @@ class Ground:
     lowest_pass : float or None [m above sea level]
     crest_line : CrestLine or None
     latitude : float or None [degrees north]
+    stagnant_top : float or None [m above sea level]
+        Top of a stagnant layer at the ground of the incoming column, which is no inflow of the range.
     """
 
     transect: Transect
@@ -103,6 +105,7 @@ class Ground:
     lowest_pass: float | None = None
     crest_line: CrestLine | None = None
     latitude: float | None = None
+    stagnant_top: float | None = None
 
 
 def solve(
@@ -147,6 +150,9 @@ def solve(
     top = np.where(critical > NO_BLOCKING, shape.base, np.broadcast_to(blocked.top, (members,)))
     crest = int(np.argmin(np.abs(transect.distance - shape.crest_distance)))
     across = transect.distance * ground.cosine
+    bottom = top
+    if ground.stagnant_top is not None:
+        bottom = np.maximum(top, min(ground.stagnant_top, shape.crest - ROOM_BELOW_CREST))
 
     def worked(pool_top: Array | None) -> Streams:
         return streams(
@@ -155,7 +161,7 @@ def solve(
             across,
             transect.elevation,
             crest,
-            top,
+            bottom,
             settings,
             pool_top=pool_top,
             count=streamlines,

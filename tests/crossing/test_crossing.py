@@ -357,3 +357,14 @@ def test_background_rain_is_kept_apart():
     without, with_it = (cross(hill(1800.0), air, background=rate).rain for rate in (0.0, 1.0 / 3600.0))
     assert with_it.peak_rate - without.peak_rate == pytest.approx(1.0 / 3600.0)
     assert with_it.total == without.total
+
+
+def test_a_stagnant_layer_is_no_inflow():
+    """A layer at the station's ground that is told to be stagnant does not cross: the air comes from above it."""
+    air = column(vapour=0.003, wind=25.0)
+    whole, above = (
+        cross(hill(1000.0), air, (Site("valley", 115e3),), OVER, stagnant_top=top).lee[0] for top in (None, 800.0)
+    )
+    assert above.source_level_low > 800.0
+    assert whole.source_level_low < 600.0
+    assert above.temperature > whole.temperature
