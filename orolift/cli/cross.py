@@ -132,6 +132,8 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
     log.debug("crossing worked out")
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
+    if inputs.ground_layer.note is not None:
+        notes = (inputs.ground_layer.note, *notes)
     crossing = replace(
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
