@@ -9,6 +9,7 @@ from orolift.report.causes import cause_noun, main_cause
 from orolift.report.lee_wind import range_words
 from orolift.report.quantities import Amount
 from orolift.report.story import (
+    ROUNDING,
     SAME,
     blocked_words,
     cloudy_to_the_end,
@@ -112,7 +113,7 @@ def _heading(crossing: Crossing, site: LeeAir) -> Words:
             Amount(crossing.pool.top, "height", -1),
             f" keeps {site.name} at ",
             here,
-            "; the warm air passes over it",
+            "; the crossing air passes over it",
         )
     if reaches_the_ground_or_not(crossing, site):
         cold = Amount(site.upwind_temperature, "temperature", 1)
@@ -160,13 +161,13 @@ def _flow(crossing: Crossing, bearing: float) -> Words:
         Amount(flow.crest_wind, "wind"),
         " across it: N h/U is ",
         Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2),
-        f", so the flow {_regime_words(flow.regime)}",
+        f", so the flow {_CERTAIN.get(flow.regime, flow.regime)}",
     )
-    others = [one for one in flow.possible_regimes if one != flow.regime]
+    others = [_POSSIBLE.get(one, one) for one in flow.possible_regimes if one != flow.regime]
     if others:
-        start = (*start, f" ({' or '.join(_regime_words(one) for one in others)} within the uncertainty)")
+        start = (*start, f"; within the uncertainty it may also {' or '.join(others)}")
     if not is_blocked(crossing):
-        return (*start, ". Nothing is blocked: air from the ground up comes over.")
+        return (*start, *_unblocked(crossing))
     share = flow.going_round_share
     round_words: Words = (", and none of it comes through gaps or round the ends ",)
     if share > 0.0:
@@ -185,15 +186,26 @@ def _flow(crossing: Crossing, bearing: float) -> Words:
     )
 
 
-def _regime_words(regime: str) -> str:
-    """A regime after the word 'flow'."""
-    words = {
-        "flows over": "goes over",
-        "flows over with steep waves": "goes over with steep waves",
-        "partly blocked": "is partly blocked",
-        "blocked": "is blocked",
-    }
-    return words.get(regime, regime)
+_CERTAIN = {
+    "flows over": "goes over",
+    "flows over with steep waves": "goes over with steep waves",
+    "partly blocked": "is partly blocked",
+    "blocked": "is blocked",
+}
+_POSSIBLE = {
+    "flows over": "go over quietly",
+    "flows over with steep waves": "go over with steep waves",
+    "partly blocked": "be partly blocked",
+    "blocked": "be blocked",
+}
+
+
+def _unblocked(crossing: Crossing) -> Words:
+    """That nothing is blocked, and how far the range of that reaches."""
+    high = crossing.flow.blocked_top_high
+    if high > crossing.features.base + ROUNDING:
+        return (". Nothing is blocked, at most the air below ", Amount(high, "height", -1), ".")
+    return (". Nothing is blocked: air from the ground up comes over.",)
 
 
 def _cloud(crossing: Crossing) -> Words:
@@ -207,12 +219,11 @@ def _cloud(crossing: Crossing) -> Words:
     share = fallen_share(crossing)
     if not rains(crossing):
         return (*start, ", and hardly any water falls out.")
-    return (
-        *start,
-        f", and {fraction_in_words(share)} of the vapour (",
-        Amount(share, "share"),
-        f") {falling(crossing)}.",
-    )
+    rain, part = crossing.rain, fraction_in_words(share)
+    words: Words = (f", and {part} of the vapour (", Amount(share, "share"), f") {falling(crossing)}")
+    if rain.windward_share is not None:
+        words = (*words, ", ", Amount(rain.windward_share, "share"), " of it before the crest")
+    return (*start, *words, "; the most is ", Amount(rain.peak_rate, "rain_rate", 1), ".")
 
 
 def _lee(crossing: Crossing, site: LeeAir) -> Words:

@@ -25,6 +25,9 @@ if TYPE_CHECKING:
     from orolift.report.trace import Trace
     from orolift.report.words import Words
 
+DEEP = 100.0
+"""The heading speaks of descent when the air ends so far [m] below its start without cloud (design choice)."""
+
 
 @dataclass(frozen=True)
 class Place:
@@ -89,7 +92,7 @@ def section_heading(crossing: Crossing, trace: Trace) -> Words:
         return (
             "Low air is stopped below ",
             Amount(crossing.flow.blocked_top, "height", -1),
-            "; air from ",
+            "; air from about ",
             Amount(trace.source, "height", -1),
             f" comes down to {name}",
         )
@@ -120,17 +123,20 @@ def _heading(trace: Trace) -> Words:
     where = "the lee foot" if trace.site is None else trace.site.name
     end_height, end = float(trace.height[-1]), float(trace.temperature[-1])
     sinks = trace.source - end_height
-    if sinks > 100.0 and not trace.wet.any():
-        return (
-            "The air starts at ",
+    if sinks > DEEP and not trace.wet.any():
+        words: Words = (
+            "Air from ",
             Amount(trace.source, "height", -1),
-            " with ",
+            ", ",
             Amount(float(trace.temperature[0]), "temperature", 1),
-            " and sinks to ",
+            " there, comes down to ",
             Amount(end_height, "height", -1),
-            f" at {where}, where it has ",
+            f" at {where} with ",
             Amount(end, "temperature", 1),
         )
+        if trace.site is None or trace.site.went_round <= 0.0:
+            return words
+        return (*words, "; what went round brings it to ", Amount(trace.site.temperature, "temperature", 1))
     before = _rising_temperature(trace, end_height)
     if before is None:
         start, top = float(trace.temperature[0]), float(trace.temperature[trace.top])

@@ -20,8 +20,8 @@ LIKELY = 0.8
 """Chance of reaching the ground below which the page leads with both answers (design choice)."""
 SOME_SNOW = 0.02
 """Share of snow in what falls [1] below which it is called rain, and the other way round (design choice)."""
-HARDLY = 1e-4
-"""Share of air or vapour [1] below which it counts as none."""
+HARDLY = 0.005
+"""Share of the vapour [1] below which what falls out counts as none: it reads as 0 % (design choice)."""
 
 
 def main_site(crossing: Crossing) -> LeeAir:

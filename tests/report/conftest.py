@@ -1,188 +1,148 @@
-"""Crossings made by hand, with invented numbers, so that the report is tested apart from the physics."""
+"""Small crossings of invented air over invented ranges, worked out once, for the tests of the report."""
 
+import math
 from dataclasses import replace
 from datetime import UTC, datetime
+from functools import cache
 
 import numpy as np
 import pytest
 
 from orolift.air.column import IncomingAir
-from orolift.crossing.crossing import Crossing, LeeAir, Site
-from orolift.crossing.march import March
+from orolift.air.hydrostatic import hydrostatic_pressure
+from orolift.air.saturation import saturation_mixing_ratio
+from orolift.air.temperature import virtual_temperature
+from orolift.crossing.crossing import cross
+from orolift.crossing.pool import Lee
+from orolift.crossing.result import Site, When
+from orolift.crossing.settings import Settings
 from orolift.report.page import page_of
-from orolift.terrain import Features, Transect
+from orolift.terrain.ridge import ridge_transect
+
+NIGHT = When(1793692800.0, -121.0, -46.9)  # 2026-11-03T08:00Z, midnight on the invented range
 
 
-def made_up_column():
-    """A station's air with 6.5 K/km and a wind of 15 m/s from the west."""
-    height = np.array([40.0, 1000.0, 2000.0, 4000.0, 8000.0, 17000.0])
-    temperature = 288.15 - 0.0065 * np.minimum(height, 11000.0)
-    pressure = 101325.0 * np.exp(-height / 8000.0)
-    still = np.zeros(height.size)
-    return IncomingAir(
-        height=height,
-        pressure=pressure,
-        temperature=temperature,
-        vapour=0.007 * np.exp(-height / 2500.0),
-        cloud=still,
-        eastward_wind=still + 15.0,
-        northward_wind=still,
-        origin=("station", *("lapse rate",) * 5),
-        notes=("The air above the station is assumed.",),
+def small_column(temperature=285.0, humidity=0.8, wind=16.0, lapse=0.0065, ground=40.0, spacing=200.0):
+    """A hydrostatic column with a constant lapse, humidity and westerly wind."""
+    height = np.arange(ground, 17000.0, spacing)
+    t = np.maximum(temperature - lapse * (height - ground), 210.0)
+    pressure = 101000.0 * np.exp(-(height - ground) / 8000.0)
+    for _ in range(2):
+        vapour = humidity * np.exp(-(height - ground) / 9000.0) * saturation_mixing_ratio(pressure, t)
+        pressure = hydrostatic_pressure(height, virtual_temperature(t, vapour), 101000.0)
+    still = np.zeros_like(height)
+    notes = ("The air above the station is assumed.",)
+    origin = ("station", *("lapse rate",) * (height.size - 1))
+    return IncomingAir(height, pressure, t, vapour, still, still + wind, still, origin, notes)
+
+
+def small_ridge(crest=1850.0, foot=40.0, beyond=210.0):
+    """A triangle of 60 km, wind from the west."""
+    return ridge_transect(
+        [0.0, 8e3, 25e3, 52e3, 60e3], [foot, foot, crest, beyond, beyond], bearing=math.pi / 2, spacing=400.0
     )
 
 
-def made_up_lee(name, side, distance, elevation, temperature):
-    """The air at one site."""
-    return LeeAir(
-        name=name,
-        side=side,
-        distance=distance,
-        elevation=elevation,
-        pressure=97000.0,
-        temperature=temperature,
-        dew_point=278.35,
-        relative_humidity=0.44,
-        mixing_ratio=0.0056,
-        upwind_temperature=286.05,
-        upwind_dew_point=280.15,
-        popular_picture=temperature + 1.1,
-    )
+NOON = When(1793736000.0, -121.0, -46.9)  # 20:00Z, noon there
+
+TWO = (Site("Lower Tarn", 45e3), Site("Mill", 16e3))
+DRY = {"humidity": 0.25, "lapse": 0.003, "wind": 9.0}
 
 
-def made_up_crossing(**changes):
-    """A triangle of 1850 m with cloud from 905 m on the windward side to 1240 m in the lee."""
-    distance = np.linspace(0.0, 60e3, 241)
-    ground = np.interp(distance, [0.0, 25e3, 60e3], [40.0, 1850.0, 210.0])
-    crest = 100
-    up = np.arange(distance.size) <= crest
-    cloud = np.where(up, np.clip((ground - 905.0) * 1e-6, 0.0, None), np.clip((ground - 1240.0) * 1.5e-6, 0.0, None))
-    removed = np.where(up & (ground > 905.0), 2.7e-3 / np.count_nonzero(up & (ground > 905.0)), 0.0)
-    temperature = np.where(up, 287.65 - 0.0065 * ground, 293.0 - 0.0085 * ground)
-    lee = (made_up_lee("Lower Tarn", "lee", 52e3, 584.9, 290.45), made_up_lee("Mill", "windward", 12e3, 908.8, 281.6))
-    pressure = 101325.0 * np.exp(-ground / 8000.0)
-    column = made_up_column()
-    parts = {
-        "incoming": column,
-        "transect": Transect(distance, ground, bearing=np.pi / 2, notes=("The ridge was drawn by hand.",)),
-        "features": Features(40.0, 0.0, 1850.0, 25e3, 210.0, 60e3, 15e3),
-        "sites": tuple(Site(air.name, air.distance) for air in lee),
-        "removed_share": 0.7,
-        "start_height": np.array([40.0]),
-        "height": ground[:, np.newaxis],
-        "air": March(
-            pressure=pressure[:, np.newaxis],
-            temperature=temperature[:, np.newaxis],
-            vapour=np.full((distance.size, 1), 5.5e-3),
-            cloud=cloud[:, np.newaxis],
-            condensed=removed[:, np.newaxis] / 0.7,
-            removed=removed[:, np.newaxis],
-            entropy=np.full((distance.size, 1), 120.0),
+@cache
+def worked_out(name):
+    """One crossing by its name."""
+    ridge = small_ridge()
+    moist, dry = small_column(), small_column(**DRY)
+    made = {
+        "cloud and rain": lambda: cross(ridge, moist, TWO, Settings(removed_share=0.7), streamlines=30),
+        "rain that drifts": lambda: cross(ridge, moist, TWO, streamlines=30),
+        "snow": lambda: cross(ridge, small_column(temperature=270.0), TWO, streamlines=30),
+        "no cloud": lambda: cross(small_ridge(crest=600.0), small_column(humidity=0.2, wind=25.0), TWO, streamlines=30),
+        "all in cloud": lambda: cross(
+            ridge, small_column(humidity=1.3), TWO, Settings(removed_share=0.0), streamlines=30
         ),
-        "dew_point": np.where(cloud > 0.0, temperature, temperature - 4.0)[:, np.newaxis],
-        "crest_wind": 19.2,
-        "column_vapour_flux": 310.0,
-        "cloud_base": 905.0,
-        "cloud_base_distance": 11.95e3,
-        "cloud_end": 1240.0,
-        "cloud_end_distance": 38.0e3,
-        "vapour_in": 8.2e-3,
-        "condensed": 3.857e-3,
-        "removed": 2.7e-3,
-        "lee": lee,
-        "notes": ("The air above the station is assumed.", "The ridge was drawn by hand."),
-        "cautions": (),
+        "open at night": lambda: cross(ridge, dry, TWO, streamlines=30, when=NIGHT),
+        "blocked": lambda: cross(ridge, dry, (*TWO, Site("Bench", 35e3)), streamlines=30, when=NOON),
+        "cold pool": lambda: cross(ridge, dry, (*TWO, Site("Bench", 30e3)), lee=Lee(temperature=278.0), streamlines=30),
+        "pool displaced": lambda: cross(ridge, dry, TWO, lee=Lee(temperature=300.0), streamlines=30),
+        "blocked site only": lambda: cross(ridge, dry, (Site("Mill", 12e3),), streamlines=30),
+        "crowded sites": lambda: cross(
+            ridge, moist, tuple(Site(f"Hamlet {n}", 40e3 + 600.0 * n) for n in range(6)), streamlines=30
+        ),
+        "many sites": lambda: cross(
+            ridge, moist, tuple(Site(f"Farm {n}", 26e3 + 1400.0 * n) for n in range(24)), streamlines=30
+        ),
+        "site on the crest": lambda: cross(ridge, moist, (Site("Top", 25e3),), streamlines=30),
+        "high ground": lambda: cross(
+            small_ridge(crest=4350.0, foot=2540.0, beyond=2710.0),
+            small_column(temperature=278.0, ground=2540.0),
+            TWO,
+            streamlines=30,
+        ),
     }
-    return Crossing(**(parts | changes))
+    if name == "doubtful":
+        return replace(worked_out("cloud and rain"), cautions=("The wind is oblique to the range.",))
+    return made[name]()
 
 
-def without_cloud():
-    """The same crossing with air too dry for cloud."""
-    wet = made_up_crossing()
-    dry = np.zeros_like(wet.air.cloud)
-    return made_up_crossing(
-        air=replace(wet.air, cloud=dry, condensed=dry, removed=dry),
-        dew_point=wet.air.temperature - 12.0,
-        cloud_base=None,
-        cloud_base_distance=None,
-        cloud_end=None,
-        cloud_end_distance=None,
-        condensed=0.0,
-        removed=0.0,
-    )
+NAMES = (
+    "cloud and rain",
+    "rain that drifts",
+    "snow",
+    "no cloud",
+    "all in cloud",
+    "blocked",
+    "open at night",
+    "cold pool",
+    "pool displaced",
+    "blocked site only",
+    "crowded sites",
+    "many sites",
+    "site on the crest",
+    "high ground",
+    "doubtful",
+)
 
 
-def all_in_cloud():
-    """The same crossing with cloud from the first point to the last and no rain."""
-    wet = made_up_crossing()
-    return made_up_crossing(
-        air=replace(wet.air, cloud=np.full_like(wet.air.cloud, 1e-4), removed=np.zeros_like(wet.air.removed)),
-        dew_point=wet.air.temperature,
-        cloud_base=40.0,
-        cloud_base_distance=0.0,
-        cloud_end=210.0,
-        cloud_end_distance=60e3,
-        removed=0.0,
-        removed_share=0.0,
-    )
-
-
-def with_sites(*sites):
-    """The same crossing with other sites, each (name, side, distance, elevation, temperature)."""
-    lee = tuple(made_up_lee(*site) for site in sites)
-    return made_up_crossing(lee=lee, sites=tuple(Site(air.name, air.distance) for air in lee))
-
-
-CROSSINGS = {
-    "cloud and rain": made_up_crossing(),
-    "no cloud": without_cloud(),
-    "all in cloud": all_in_cloud(),
-    "crowded sites": with_sites(
-        *((f"Hamlet {n}", "lee", 40e3 + 600.0 * n, 1147.0 - 28.0 * n, 285.0 + n / 3) for n in range(6))
-    ),
-    "many sites": with_sites(
-        *((f"Farm {n}", "lee", 26e3 + 1400.0 * n, 1803.0 - 65.6 * n, 277.0 + n / 2) for n in range(24))
-    ),
-    "site on the crest": with_sites(("Top", "crest", 25e3, 1850.0, 275.6)),
-    "doubtful": made_up_crossing(cautions=("The wind is oblique to the range.",)),
-}
+PAGES = {}
+"""Pages built before, each with its crossing so that its id stays its own."""
 
 
 @pytest.fixture
 def page_for():
-    """Page of a crossing with fixed times."""
+    """Page of a crossing with fixed times; built once for each crossing and choice, unless fresh."""
 
-    def built(crossing, **more):
+    def built(crossing, *, fresh=False, **more):
         options = {
             "title": "Westerly over an invented range",
             "valid_time": datetime(2026, 11, 3, 12, tzinfo=UTC),
             "made_at": datetime(2026, 11, 3, 6, 5, tzinfo=UTC),
             "version": "0.0.0",
-        }
-        return page_of(crossing, **(options | more))
+        } | more
+        if fresh:
+            return page_of(crossing, **options)
+        key = id(crossing), tuple(sorted(options.items(), key=lambda item: item[0]))
+        if key not in PAGES:
+            PAGES[key] = page_of(crossing, **options), crossing
+        return PAGES[key][0]
 
     return built
 
 
 @pytest.fixture
+def named():
+    """A crossing by its name."""
+    return worked_out
+
+
+@pytest.fixture
 def crossing():
     """The crossing with cloud and rain."""
-    return made_up_crossing()
+    return worked_out("cloud and rain")
 
 
-@pytest.fixture
-def fog():
-    """The crossing that is in cloud all the way."""
-    return all_in_cloud()
-
-
-@pytest.fixture
-def site_crossing():
-    """Maker of crossings with given sites."""
-    return with_sites
-
-
-@pytest.fixture(params=CROSSINGS.values(), ids=CROSSINGS.keys())
+@pytest.fixture(params=NAMES)
 def any_crossing(request):
-    """Every made-up crossing in turn."""
-    return request.param
+    """Every crossing in turn."""
+    return worked_out(request.param)

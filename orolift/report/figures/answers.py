@@ -89,7 +89,7 @@ def _values(site: LeeAir) -> list[float]:
 
 def _drawing(shown: list[tuple[int, LeeAir]], units: Units, form: Layout) -> AnswersDrawing:
     wide = form.name == "wide"
-    row = ROW if wide else ROW + 22.0
+    row = ROW if wide else ROW + 28.0
     bottom = form.top + row * len(shown)
     layout = Layout(
         form.name, form.width, bottom + 34.0, form.left, form.right, form.top, bottom, form.letter, form.ticks

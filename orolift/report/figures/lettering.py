@@ -96,6 +96,8 @@ def source(view: View, board: Board) -> Lettered:
     span = f" ({ends[0]} to {ends[1]})" if site.source_level_high - site.source_level_low > ROUNDING else ""
     letter = board.letter
     choices = [f"air from {level}{span}, {start}", f"air from {level}, {start}", f"from {level}, {start}", start]
+    if site.went_round > 0.0:  # the level is then that of both ways together, and the line that of one
+        choices = [f"air from {level}{span}", f"air from {level}", f"from {level}"]
     places = [
         (Label(text, round(x + 9.0, 1), round(y, 1), "start", "value"),)
         for text in choices
@@ -159,6 +161,7 @@ def _blocked(view: View, board: Board) -> Lettered:
         (f"blocked up to {top} ({low} to {high})", round_words),
         (f"blocked up to {top}", round_words),
         (f"blocked up to {top}", ""),
+        (f"blocked {top}", ""),
         ("blocked", ""),
     ):
         for drop in (1.5, 2.4, 3.4):
@@ -302,8 +305,6 @@ def carried_marks(view: View, board: Board) -> Lettered:
 def isentrope_marks(view: View, lines: tuple[tuple[Line, float], ...], board: Board) -> Lettered:
     """Values of the lines of equal potential temperature, once each, near the downwind end."""
     labels: tuple[Label, ...] = ()
-    if view.layout.name == "narrow":
-        return (), (), board
     done: set[float] = set()
     for line, level in sorted(lines, key=lambda pair: -float(pair[0][0][-1])):
         if level in done or line[0][-1] - line[0][0] < 60.0:

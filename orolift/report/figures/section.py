@@ -34,7 +34,7 @@ if TYPE_CHECKING:
     Writer = Callable[[View, Board], Lettered]
 
 WIDE = Layout("wide", 960.0, 0.0, 56.0, 934.0, 50.0, 456.0, 14.0, 8)
-NARROW = Layout("narrow", 344.0, 0.0, 42.0, 320.0, 50.0, 306.0, 12.5, 4)
+NARROW = Layout("narrow", 344.0, 0.0, 47.0, 322.0, 50.0, 306.0, 12.5, 4)
 GAP = 46.0
 """Drawing units between the panels; room for the unit of the axis."""
 RAIN_DEPTH, WIND_DEPTH = 66.0, 96.0
@@ -169,7 +169,8 @@ def _caption(crossing: Crossing, trace: Trace, units: Units) -> str:
         parts.append("The paler ground behind is the higher ridges beside the line.")
     parts.append(
         "Numbered discs are the sites of the table. Below, on the same axis: "
-        f"{'rain at the ground and ' if rains(crossing) else ''}the wind along it."
+        f"{'rain at the ground and ' if rains(crossing) else ''}the wind along it, dashed over "
+        "air that stays."
     )
     return " ".join(parts)
 

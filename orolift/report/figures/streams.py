@@ -22,7 +22,7 @@ if TYPE_CHECKING:
     Array = NDArray[np.float64]
     Line = tuple[Array, Array]
 
-LINES = 11
+LINES = {"wide": 11, "narrow": 8}
 """Streamlines drawn, evenly spaced upwind."""
 CHANGES = (-1.0, 1.0, 3.0)
 """Air minus incoming air at the same height [K] at which a line changes its look (design choice)."""
@@ -31,7 +31,7 @@ SHORTEST_RUN = 4
 """Places; shorter stretches keep the look of the one before."""
 CURLS = 34.0
 """Drawing units between the curls of breaking waves."""
-ISENTROPES = 7
+ISENTROPES = 5
 """About how many lines of equal potential temperature are drawn."""
 
 
@@ -45,7 +45,8 @@ def chosen_starts(view: View) -> Array:
     """Heights [m] at which the drawn streamlines start: the lowest, then evenly to the top of the frame."""
     bottom = float(view.crossing.start_height[0])
     top = min(view.up.high, float(view.crossing.start_height[-1]))
-    return np.asarray(bottom + (np.arange(LINES) + 1.0) * (top - bottom) / (LINES + 0.5), dtype=np.float64)
+    count = LINES[view.layout.name]
+    return np.asarray(bottom + (np.arange(count) + 1.0) * (top - bottom) / (count + 0.5), dtype=np.float64)
 
 
 def streamlines(view: View) -> tuple[Curve, ...]:
@@ -100,7 +101,9 @@ def followed(view: View) -> tuple[tuple[Curve, ...], Line]:
 
 
 def isentropes(view: View) -> tuple[tuple[Curve, ...], tuple[tuple[Line, float], ...]]:
-    """Lines of equal potential temperature, and each with its value."""
+    """Lines of equal potential temperature, and each with its value; none where there is little room."""
+    if view.layout.name == "narrow":
+        return (), ()
     rows = slice(0, rows_below(view))
     air = view.crossing.air
     theta = potential_temperature(air.pressure[view.columns, rows], air.temperature[view.columns, rows])
