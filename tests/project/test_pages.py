@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 
-from orolift.sources import ridge_csv, sounding_csv
+from orolift.sources import gauges_csv, ridge_csv, sounding_csv
 from orolift.sources.case_model import (
     Case,
     FlowTable,
@@ -13,13 +13,25 @@ from orolift.sources.case_model import (
     Incoming,
     LeeTable,
     Place,
-    Rain,
     SiteTable,
     Station,
     Terrain,
     TransectTable,
 )
 from orolift.sources.incoming_model import LadderRung, MetarTable, ModelAt, SoundingAt
+from orolift.sources.rain_model import Catchments, GaugesTable, Rain
+from orolift.sources.rain_results import (
+    BandBlock,
+    CatchmentBlock,
+    EstimatesBlock,
+    FitBlock,
+    FittedBlock,
+    GaugeBlock,
+    GaugesBlock,
+    MapBlock,
+    OnLineBlock,
+    ParametersBlock,
+)
 from orolift.sources.results import (
     CaseBlock,
     FlowBlock,
@@ -49,6 +61,8 @@ CASE_TABLES = {
     "model_at": ModelAt,
     "[flow]": FlowTable,
     "[rain]": Rain,
+    "[catchments]": Catchments,
+    "[gauges]": GaugesTable,
     "[lee]": LeeTable,
     "[heat]": HeatTable,
     "[[site]]": SiteTable,
@@ -61,11 +75,21 @@ RESULTS_TABLES = {
     "terrain": TerrainBlock,
     "flow": FlowBlock,
     "rain": RainBlock,
+    "map": MapBlock,
+    "parameters": ParametersBlock,
+    "on_line": OnLineBlock,
+    "estimates": EstimatesBlock,
+    "bands": BandBlock,
     "lee": LeeBlock,
     "warming_parts_c": WarmingParts,
     "profile": Profile,
+    "catchments": CatchmentBlock,
+    "gauges": GaugesBlock,
+    "places": GaugeBlock,
+    "fit": FitBlock,
+    "fitted value": FittedBlock,
 }
-CSV_TABLES = {"Ridge CSV": ridge_csv.COLUMNS, "Sounding CSV": sounding_csv.COLUMNS}
+CSV_TABLES = {"Ridge CSV": ridge_csv.COLUMNS, "Sounding CSV": sounding_csv.COLUMNS, "Gauges CSV": gauges_csv.COLUMNS}
 
 
 def rows_under(page, heading):
@@ -132,7 +156,7 @@ def test_case_page_lists_the_columns_of_csv_files(heading, columns):
     assert list(rows) == [column.name for column in columns]
     for column in columns:
         assert listed(rows[column.name]["also"]) == alternatives(column.name)
-        assert rows[column.name]["range"] == f"{column.low:g} to {column.high:g}"
+        assert rows[column.name]["range"] == ("text" if column.text else f"{column.low:g} to {column.high:g}")
 
 
 def test_case_page_forgets_no_table():
