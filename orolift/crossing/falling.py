@@ -149,7 +149,7 @@ def march_with_rain(
     depth = _layer_depth(path.height)[..., low]
     scale = (USUAL_FALL_TIME / fall_time)[:, np.newaxis]
     turning = 1.0 - np.exp(-rest.step_time / cloud_time[:, np.newaxis])
-    stop = shape[0]
+    stop, earlier = shape[0], state.parcel.temperature
     for i in range(first, shape[0]):
         if i > last and float(np.sum(rest.carried * state.falling)) < NOTHING_LEFT:
             stop = i
@@ -160,9 +160,10 @@ def march_with_rain(
             state.entropy,
             water,
             freezing=freezing,
-            first_guess=state.parcel.temperature,
+            first_guess=2.0 * state.parcel.temperature - earlier,  # straight on: most places need one step
             tolerance=1e-3,
         )
+        earlier = state.parcel.temperature
         new = np.maximum(parcel.cloud - state.parcel.cloud, 0.0)
         turned = turning[i] * parcel.cloud
         state, step = _rained(

@@ -37,6 +37,8 @@ SLOWEST = 1.0
 """Wind [m s-1] below which time along a streamline is counted with this."""
 EARLY_POINTS, EARLY_PLACES = 256, 64
 """Points of the transect and places of the march in all passes but the last: they only find where cloud is."""
+EARLY_SHARE = 0.4
+"""Share of the condensed water that early passes let fall where rain is worked out only in the last; a judgement."""
 MOST_PLACES = 256
 """Places of the march in the last pass: the removal of a prescribed share is then good to 0.02 K, and steps of some
 tens of seconds are short against a cloud time of 1000 s."""
@@ -144,7 +146,7 @@ def streams(
     lifted = np.stack([np.interp(z, upwind.height, row) for z, row in zip(heights, rows, strict=True)])
     state = _Pass(dry, distance[:1], None, np.ones((1, 1, 1)), lifted, None, np.inf)
     for _ in range(passes - 1):
-        state = _next(coarse, dry, state, carried, max(1, coarse.distance.size // EARLY_PLACES))
+        state = _next(coarse, dry, state, carried, max(1, coarse.distance.size // EARLY_PLACES), early=True)
         if np.all(state.moved <= SETTLED):
             break
     moved = state.moved
@@ -212,14 +214,14 @@ class _Pass:
     falling: Falling | None = None
 
 
-def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, stride: int) -> _Pass:
+def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, stride: int, *, early: bool = False) -> _Pass:
     """One pass: the flow with the saturation of the pass before, and the air marched through it."""
     members, size = setup.blocked_top.size, setup.distance.size
     end = np.full(members, setup.distance[setup.crest]) if before.end is None else before.end
     flow = _flow(setup, dry, before.share, end)
     place = np.union1d(np.arange(0, size, stride), [setup.crest, size - 1])
     pressure, change = _pressure(setup, flow, place, before)
-    air, falling = _marched(setup, flow, carried, place, np.moveaxis(pressure, -1, 0))
+    air, falling = _marched(setup, flow, carried, place, np.moveaxis(pressure, -1, 0), early=early)
     found = _saturated_share(air, setup.start, setup.saturates, place <= setup.crest)
     same_points = before.air is not None and before.flow.heights.shape == flow.heights.shape
     return _Pass(
@@ -235,12 +237,12 @@ def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, stride: in
 
 
 def _marched(
-    setup: _Setup, flow: Airflow, carried: Array, place: NDArray[np.intp], pressure: Array
+    setup: _Setup, flow: Airflow, carried: Array, place: NDArray[np.intp], pressure: Array, *, early: bool
 ) -> tuple[March, Falling]:
-    """Air marched over places, by the prescribed share or with rain worked out."""
+    """Air marched over places, by the prescribed share or with rain worked out; early passes take a usual share."""
     settings, members = setup.settings, setup.blocked_top.size
-    if settings.removed_share is not None:
-        share = each(settings.removed_share, members)
+    if settings.removed_share is not None or early:
+        share = each(EARLY_SHARE if settings.removed_share is None else settings.removed_share, members)
         air = march(setup.start, pressure, share[:, np.newaxis], freezing=settings.freezing)
         return air, fallen_at_once(air, carried, freezing=settings.freezing)
     slowness = 1.0 / np.maximum(flow.start_wind[..., np.newaxis] * flow.speed_factor[..., place], SLOWEST)
