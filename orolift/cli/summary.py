@@ -72,7 +72,7 @@ def _cloud(crossing: Crossing, said: Said) -> str:
 def _flow(crossing: Crossing, said: Said) -> str:
     flow = crossing.flow
     if flow.blocked_top <= crossing.features.base + 1.0:
-        return f"{flow.regime} (N h/U {flow.nondimensional_height:.1f}); nothing is blocked"
+        return f"{flow.regime} (N h/U {flow.nondimensional_height:.1f}); no layer is stopped"
     return (
         f"{flow.regime} (N h/U {flow.nondimensional_height:.1f}); blocked up to {said(flow.blocked_top, 'height', -1)} "
         f"({said(flow.blocked_top_low, 'height', -1)} to {said(flow.blocked_top_high, 'height', -1)})"

@@ -89,12 +89,14 @@ class Here:
 
     Attributes
     ----------
+    share : float [1]
+        Of the way from the march's place before it to the next.
     number : int
         Of the march's place at or before it.
     height, start_height : ndarray [m above sea level]
     pressure : ndarray [Pa]
     entropy : ndarray [J K-1 per kg of dry air]
-    vapour, cloud, water : ndarray [kg per kg of dry air]
+    vapour, cloud : ndarray [kg per kg of dry air]
     temperature : ndarray [K]
     wind : ndarray [m s-1]
     """
@@ -213,8 +215,8 @@ def arrival(
     -----
     The budget is worked out at the height of the site at the pressure of the
     incoming air there, state by state: incoming air, source air brought dry,
-    the same after mixing before the range, after all phase changes (added up
-    step by step along the way), parts mixed by mass in enthalpy and water, heated;
+    the same after mixing before the range, after all phase changes (their effect on the temperature
+    at the site added up step by step along the way), parts mixed by mass in enthalpy and water, heated;
     last the move to the lee pressure. Each part is the difference that its own
     step makes.
     """

@@ -9,7 +9,7 @@ import numpy as np
 
 from orolift.air.column import interpolated, vapour_flux, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio
-from orolift.crossing.facts import clouds, flow_facts, remarks, water
+from orolift.crossing.facts import clouds, crest_line_notes, flow_facts, remarks, water
 from orolift.crossing.march import March
 from orolift.crossing.pool import Lee
 from orolift.crossing.rainfall import rainfall
@@ -61,6 +61,7 @@ def cross(
     sites : tuple of Site
         Without any, the lee foot of the transect is the one site.
     settings : Settings, optional
+        Single values.
     lee : Lee, optional
         What is known of the air lying in the lee.
     when : When, optional
@@ -110,7 +111,7 @@ def cross(
     flow = flow_facts(ground, solution, crest_wind, settings, lee, when)
     height = streams.flow.heights[0][:, streams.place].T
     winds = lee_winds(ground, solution, crest_wind, flow.pressure_difference)
-    cloud = clouds(solution, transect.distance, shape)
+    cloud = clouds(solution, transect.distance, shape, freezing=settings.freezing)
     return Crossing(
         incoming=incoming,
         transect=transect,
@@ -131,7 +132,7 @@ def cross(
         pool=solution.pools[0],
         winds=winds,
         lee=tuple(site_air(site, ground, incoming, solution, settings, when, winds) for site in sites),
-        notes=(*incoming.notes, *transect.notes),
+        notes=(*incoming.notes, *transect.notes, *crest_line_notes(ground, flow.blocked_top)),
         cautions=remarks(ground, solution, flow),
     )
 

@@ -34,13 +34,15 @@ LOW_RIDGE = 100.0
 """A range lower than this [m] is worked out with a caution (design choice)."""
 SLOW_ROTATION = 1.0
 """Rossby number below which rotation matters; common practice, no published source."""
+NEIGHBOURHOOD = 50e3
+"""Distance [m] along the range within which its crest line is described; a judgement."""
 LOW_BREAKING = 3000.0
 """Height above the crest [m] below which breaking waves matter for the lee; a judgement."""
 UNSTABLE = 0.2
 """Share of the layer below the crest that may be unstable before it is said; a judgement."""
 
 
-def clouds(solution: Solution, distance: Array, shape: Features) -> Cloud:
+def clouds(solution: Solution, distance: Array, shape: Features, *, freezing: bool = True) -> Cloud:
     """Cloud of the crossing air: its base on the windward side and its end in the lee.
 
     Parameters
@@ -50,6 +52,7 @@ def clouds(solution: Solution, distance: Array, shape: Features) -> Cloud:
     distance : ndarray (nx,) [m]
         Of the transect's points.
     shape : Features
+    freezing : bool
 
     Returns
     -------
@@ -65,7 +68,7 @@ def clouds(solution: Solution, distance: Array, shape: Features) -> Cloud:
     height = streams.flow.heights[0][:, streams.place].T
     cloud = streams.air.cloud[:, 0, :] + streams.air.condensed[:, 0, :]  # all of it may have fallen out at once
     crest = int(np.argmin(np.abs(x - shape.crest_distance)))
-    excess = _excess(solution)
+    excess = _excess(solution, freezing=freezing)
     up = [_edge(x, height, cloud, excess, i, range(crest + 1)) for i in range(cloud.shape[1])]
     found = [edge for edge in up if edge is not None]
     if not found:
@@ -84,11 +87,11 @@ def clouds(solution: Solution, distance: Array, shape: Features) -> Cloud:
     return Cloud(base, base_distance, end, end_distance)
 
 
-def _excess(solution: Solution) -> Array:
+def _excess(solution: Solution, *, freezing: bool) -> Array:
     """Vapour over saturation minus one, (nk, nz)."""
     air = solution.streams.air
     p, t, v = air.pressure[:, 0, :], air.temperature[:, 0, :], air.vapour[:, 0, :]
-    return np.asarray(v / saturation_mixing_ratio(p, t) - 1.0)
+    return np.asarray(v / saturation_mixing_ratio(p, t, freezing=freezing) - 1.0)
 
 
 def _edge(x: Array, height: Array, cloud: Array, excess: Array, stream: int, way: range) -> tuple[float, float] | None:
@@ -201,9 +204,42 @@ def _going_round_source(ground: Ground, settings: Settings) -> str:
     return "assumed"
 
 
+def crest_line_notes(ground: Ground, blocked_top: float) -> tuple[str, ...]:
+    """Lowest pass and mean crest of the range, and where low air gets through, in a sentence; nothing where unknown.
+
+    Parameters
+    ----------
+    ground : Ground
+    blocked_top : float [m above sea level]
+
+    Returns
+    -------
+    tuple of str
+    """
+    line = ground.crest_line
+    if line is None:
+        return ()
+    near = np.abs(line.distance) <= NEIGHBOURHOOD
+    if near.sum() < 2:
+        return ()
+    x, z = line.distance[near], line.elevation[near]
+    lowest = int(np.argmin(z))
+    side = "right" if x[lowest] > 0.0 else "left"
+    sentence = (
+        f"Within {NEIGHBOURHOOD / 1000:.0f} km along the range the crest line has a mean of {z.mean():.0f} m; its "
+        f"lowest pass, {z[lowest]:.0f} m, lies {abs(x[lowest]) / 1000:.0f} km to the {side} of the line, looking downwind."
+    )
+    if blocked_top <= ground.shape.base + 1.0:
+        return (sentence,)
+    way = "through it" if z[lowest] < blocked_top else "only over the crest: no pass is below the blocked top"
+    return (f"{sentence} Low air gets {way}.",)
+
+
 def _low_breaking(solution: Solution, crest: float) -> bool:
     """Whether the wave breaks less than 3 km above the crest; higher up thin air makes every wave steep."""
     flow = solution.streams.flow
+    if float(flow.boundary.wave_share[0]) >= 1.0:
+        return False  # not higher than linear waves bear: steep spots are those of the ground
     return bool(np.any(flow.breaking[0] & (flow.heights[0] < crest + LOW_BREAKING)))
 
 

@@ -32,7 +32,7 @@ class March:
     condensed : ndarray, shape (nx, ...) [kg per kg of dry air]
         Water newly condensed on the step that ends at each place.
     removed : ndarray, shape (nx, ...) [kg per kg of dry air]
-        Of it, the water that left the air there.
+        Of it, the water that left the air there; with rain worked out, that turned to falling water.
     entropy : ndarray, shape (nx, ...) [J K-1 per kg of dry air]
         Moist entropy of what is left; changes only where water is removed.
     """

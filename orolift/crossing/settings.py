@@ -31,7 +31,7 @@ class Settings:
     cloud_time, fall_time : array_like [s]
         In which cloud turns to falling water, and in which that falls; 50 to 20000.
     critical_value : array_like [1]
-        Non-dimensional height at which a uniform column starts to be blocked, 0.75 to 3.
+        Non-dimensional height at which a uniform column starts to be blocked, 0.1 to 10; 0.75 to 3 makes sense.
     going_round_share : array_like or None [1]
         Share of the lee air below the blocked top that went round, 0 to 1; None
         takes it from the gaps of the range where they are known, else 0.4.

@@ -143,10 +143,14 @@ def solve(
     upwind = upwind_column(incoming, ground.normal, shape.base, shape.crest, freezing=settings.freezing)
     critical = each(settings.critical_value, members)
     blocked = blocking(upwind, shape.crest, critical)
-    if members > 1 and upwind.wind.shape[0] == 1 and np.all(blocked.highest_top <= shape.base + NOTHING):
+    if (
+        members > 1
+        and upwind.wind.shape[0] == 1
+        and np.all(np.maximum(blocked.highest_top, blocked.top) <= shape.base + NOTHING)
+    ):
         # nothing is blocked by any criterion: the members of one column do not differ
         return solve(ground, incoming, _first(settings), lee, streamlines=streamlines, passes=passes)
-    # a critical value beyond the bracket stands for no blocking at all (see `no_blocking`)
+    # a critical value beyond the bracket stands for no blocking at all (see `NO_BLOCKING`)
     top = np.where(critical > NO_BLOCKING, shape.base, np.broadcast_to(blocked.top, (members,)))
     crest = int(np.argmin(np.abs(transect.distance - shape.crest_distance)))
     across = transect.distance * ground.cosine
@@ -181,7 +185,13 @@ def solve(
 
 
 def going_round(ground: Ground, blocked: Blocking, top: Array, settings: Settings) -> Array:
-    """Share of the low lee air that went round: given, or from the gaps of the range, (m,)."""
+    """Share of the low lee air that went round: given, or from the gaps of the range, (m,); 0 with nothing blocked."""
+    blocked_at_all = top > ground.shape.base + NOTHING
+    return np.where(blocked_at_all, _going_round(ground, blocked, top, settings), 0.0)
+
+
+def _going_round(ground: Ground, blocked: Blocking, top: Array, settings: Settings) -> Array:
+    """Share of the low lee air that went round, as if there were some."""
     if settings.going_round_share is not None:
         return np.array(each(settings.going_round_share, top.size))
     shape = ground.shape

@@ -31,7 +31,7 @@ if TYPE_CHECKING:
 
 CREST_CLOUD = 500.0
 """Streamlines that start up to this far above the crest [m] count for where cloud ends in the lee; a judgement."""
-PASSES = 4
+PASSES = 6
 """Most times the flow is worked out, each with the saturation of the one before."""
 SLOWEST = 1.0
 """Wind [m s-1] below which time along a streamline is counted with this."""

@@ -14,7 +14,6 @@ from orolift.air.saturation import saturation_mixing_ratio
 from orolift.air.temperature import virtual_potential_temperature, virtual_temperature
 from orolift.constants import GRAVITY, HEAT_CAPACITY_DRY_AIR, R_DRY
 from orolift.flow.blocking import counterflow_top, dividing_height
-from orolift.flow.scales import nondimensional_height
 from orolift.flow.stability import dry_n_squared, effective_n_squared, moist_n_squared
 
 if TYPE_CHECKING:
@@ -72,7 +71,7 @@ class Blocking:
     Attributes
     ----------
     dividing_height : ndarray [m above sea level]
-        Sheppard's, critical value 1; the base when nothing is blocked.
+        Sheppard's, critical value 1, counter-flow included; the base when nothing is blocked.
     top : ndarray [m above sea level]
         Top of the blocked layer with the member's critical value, counter-flow below the crest included.
     lowest_top, highest_top : ndarray [m above sea level]
@@ -81,7 +80,7 @@ class Blocking:
         Highest calm or counter-flowing air below the crest; the base when there is none.
     nondimensional_height : ndarray [1]
     stability : ndarray [s-1]
-        Mean buoyancy frequency from base to crest, saturated parts as such.
+        Buoyancy frequency from base to crest, saturated parts as such, weighted by the height still to be climbed.
     """
 
     dividing_height: NDArray[np.float64]
@@ -154,7 +153,9 @@ def blocking(upwind: Upwind, crest: float, critical_value: ArrayLike) -> Blockin
     Notes
     -----
     Dividing heights on the profile of the lifted air and the wind across the
-    range; calm and counter-flowing layers below the crest, and all air below
+    range. N and U of the non-dimensional height are means weighted by the height
+    still to be climbed, as the dividing height weights them: the same as plain
+    means in a uniform column. Calm and counter-flowing layers below the crest, and all air below
     them, belong to the blocked layer whatever the criterion.
     """
     z, n2, wind = upwind.height, upwind.lifted, upwind.wind
@@ -165,17 +166,21 @@ def blocking(upwind: Upwind, crest: float, critical_value: ArrayLike) -> Blockin
     def top(value: ArrayLike) -> NDArray[np.float64]:
         return np.minimum(np.maximum(dividing_height(z, n2, wind, crest, critical_value=value), counter), room)
 
-    inside = z <= crest
-    depth = np.gradient(z)[inside]
-    mean = np.sum(n2[:, inside] * depth, axis=-1) / np.sum(depth)
+    # weighted by the way to the crest, as the dividing height weights it, so that regime and blocked top agree
+    inside = z < crest
+    weight = np.gradient(z)[inside] * (crest - z[inside])
+    mean = np.maximum(np.sum(n2[:, inside] * weight, axis=-1) / np.sum(weight), 0.0)
+    speed = np.sum(wind[:, inside] * weight, axis=-1) / np.sum(weight)
+    rise = np.sqrt(mean) * (crest - base)
+    steepness = np.where(rise > 0.0, np.where(speed > 0.0, rise / np.maximum(speed, 1e-6), np.inf), 0.0)
     return Blocking(
         dividing_height=np.maximum(dividing_height(z, n2, wind, crest), counter),
         top=top(critical_value),
         lowest_top=top(MOST_CRITICAL),
         highest_top=top(LEAST_CRITICAL),
         counterflow_top=counter,
-        nondimensional_height=nondimensional_height(z, n2, wind, base, crest),
-        stability=np.sqrt(np.maximum(mean, 0.0)),
+        nondimensional_height=steepness,
+        stability=np.sqrt(mean),
     )
 
 

@@ -133,10 +133,10 @@ def _inputs(case: Case, path: Path, text: str) -> Inputs:
         return transect, *_sites_on_ridge(case, transect)
 
     wind_from, (transect, sites, offsets) = line_along_wind(reading, line, case.incoming.wind_from_deg)
-    shape = features(transect)
+    shape = features(transect, sites[0].distance if sites else None)
     incoming = reading.column(shape.crest)
     findings = (*reading.findings, *where_observed(case, folder, reading.observations, transect, shape))
-    normal, crest_line = _range(case, folder, transect)
+    normal, crest_line = _range(case, folder, transect, shape.crest_distance)
     return Inputs(
         case=case,
         path=path,
@@ -146,7 +146,7 @@ def _inputs(case: Case, path: Path, text: str) -> Inputs:
         sites=sites,
         settings=_settings(case),
         lee=_lee(case.lee, folder, case.valid_time),
-        when=_when(case, transect),
+        when=_when(case, transect, shape.crest_distance),
         normal=normal,
         crest_line=crest_line,
         offsets=offsets,
@@ -183,22 +183,22 @@ def _lee(table: LeeTable, folder: Path, near: datetime | None) -> Lee:
     return Lee(temperature=temperature, pool_top=table.pool_top_m, air=air)
 
 
-def _when(case: Case, transect: Transect) -> When:
+def _when(case: Case, transect: Transect, crest: float) -> When:
     """Time, and the position of the crest, as far as they are known."""
     time = None if case.valid_time is None else case.valid_time.timestamp()
     if transect.longitude is None or transect.latitude is None:
         return When(time, case.terrain.longitude, case.terrain.latitude)
-    return When(time, *_crest_position(transect))
+    return When(time, *_crest_position(transect, crest))
 
 
-def _crest_position(transect: Transect) -> tuple[float, float]:
+def _crest_position(transect: Transect, crest: float) -> tuple[float, float]:
     if transect.longitude is None or transect.latitude is None:
         raise CaseError("the ridge has no position")
-    i = int(np.argmin(np.abs(transect.distance - features(transect).crest_distance)))
+    i = int(np.argmin(np.abs(transect.distance - crest)))
     return float(transect.longitude[i]), float(transect.latitude[i])
 
 
-def _range(case: Case, folder: Path, transect: Transect) -> tuple[RangeNormal | None, CrestLine | None]:
+def _range(case: Case, folder: Path, transect: Transect, crest: float) -> tuple[RangeNormal | None, CrestLine | None]:
     """Range normal and crest line: given, or read off the raster around the crest."""
     downwind = transect.bearing or 0.0
     given = None
@@ -213,7 +213,7 @@ def _range(case: Case, folder: Path, transect: Transect) -> tuple[RangeNormal | 
 
     found, line = range_of_raster(
         case.terrain.elevation_file,
-        *_crest_position(transect),
+        *_crest_position(transect, crest),
         downwind,
         normal=None if given is None else given.bearing,
         unit=case.terrain.elevation_unit,

@@ -368,3 +368,23 @@ def test_a_stagnant_layer_is_no_inflow():
     assert above.source_level_low > 800.0
     assert whole.source_level_low < 600.0
     assert above.temperature > whole.temperature
+
+
+def test_latent_part_is_the_tallied_heat():
+    """The latent part agrees with heat of condensation less evaporation, added up on its own: L dv / cp a step.
+
+    On the lowest streamline, whose air alone fills a shallow mixed layer at the site; within 3 %: cp is that of moist
+    air, and removed water changes the exponent of the dry descent a little.
+    """
+    from orolift.air.saturation import latent_heat
+    from orolift.constants import HEAT_CAPACITY_DRY_AIR, HEAT_CAPACITY_VAPOUR, KAPPA
+
+    air = column(vapour=0.0095, wind=20.0, lapse=0.0062, temperature=289.15, mixed=600.0)
+    done = cross(hill(1800.0), air, (Site("foot", 150e3),), Settings(removed_share=0.8, mixing_depth=10.0))
+    path, site = done.air, done.lee[0]
+    here = int(np.argmin(np.abs(done.distance - 150e3)))
+    t, v, p = (x[: here + 1, 0] for x in (path.temperature, path.vapour, path.pressure))
+    condensed = -np.diff(v, prepend=v[:1])
+    heat = latent_heat(t) * condensed / (HEAT_CAPACITY_DRY_AIR + HEAT_CAPACITY_VAPOUR * v)
+    tally = float(np.sum(heat * (interpolated(air, site.elevation).pressure / p) ** KAPPA))
+    assert site.parts.latent == pytest.approx(tally, rel=0.03)
