@@ -176,6 +176,8 @@ def report_of(worked: Worked, units: Units) -> str:
         version=__version__,
         case_text=worked.inputs.text,
         units=units,
+        findings=worked.inputs.findings,
+        stagnant_top=stagnant_top(worked.inputs),
     )
     html = render(page)
     log.debug("report rendered, %d kB", len(html) // 1024)

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from orolift.report.inputs import PROFILE
 from orolift.report.quantities import Amount
 from orolift.report.story import (
     is_blocked,
@@ -109,7 +110,7 @@ def _flow(crossing: Crossing) -> tuple[Words, ...]:
         which = "open" if reaches_the_ground_or_not(crossing, lee) else "likely"
         words = f"that the crossing air reaches the ground is {which} ("
         out.append(("Nothing is known of the air lying in the lee: ", words, chance, ", by hour and wind)."))
-    if "measured" not in crossing.incoming.origin:
+    if not PROFILE & set(crossing.incoming.origin):
         out.append(
             ("Only the ground of the incoming air was measured; all above it is assumed (see the notes below).",)
         )

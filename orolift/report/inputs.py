@@ -21,6 +21,10 @@ LEVELS = (500.0, 1000.0, 1500.0, 2000.0, 3000.0, 4000.0, 5000.0, 7000.0, 9000.0)
 """Heights above sea level [m] at which the incoming air is listed, with its ground."""
 
 
+PROFILE = frozenset({"measured", "model", "between stations", "surface report blended in"})
+"""Origins of levels above the ground that are known from more than a lapse rate."""
+
+
 @dataclass(frozen=True)
 class Fact:
     """A name and what it is."""
@@ -95,13 +99,8 @@ def inputs(crossing: Crossing, bearing: float, freezing_level: float, case_text:
     """
     levels = _levels(crossing)
     ground = levels[0]
-    source = (
-        "A station report, continued upward"
-        if "measured" not in crossing.incoming.origin
-        else f"{crossing.incoming.origin.count('measured')} measured levels"
-    )
     heading: Words = (
-        source,
+        _source(crossing.incoming.origin),
         ": ",
         ground.temperature,
         " and ",
@@ -116,6 +115,18 @@ def inputs(crossing: Crossing, bearing: float, freezing_level: float, case_text:
         _options(crossing),
     )
     return Inputs(heading=heading, groups=groups, levels=levels, case_text=case_text)
+
+
+def _source(origin: tuple[str, ...]) -> str:
+    """What the incoming air comes from, in a few words."""
+    if not PROFILE & set(origin):
+        return "A station report, continued upward"
+    if "between stations" in origin:
+        return f"{origin.count('station')} stations at different heights"
+    fresh = " under a fresh surface report" if "surface report blended in" in origin else ""
+    if "model" in origin:
+        return f"{origin.count('model')} levels of a model column{fresh}"
+    return f"{origin.count('measured')} measured levels{fresh}"
 
 
 def _air_facts(crossing: Crossing, ground: Level, freezing_level: float) -> FactGroup:

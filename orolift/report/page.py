@@ -14,6 +14,7 @@ from orolift.report.causes import Causes, causes
 from orolift.report.cautions import Cautions, cautions
 from orolift.report.figures.answers import answers_figure
 from orolift.report.figures.budget import budget
+from orolift.report.figures.column import column
 from orolift.report.figures.path import path
 from orolift.report.figures.section import section
 from orolift.report.inputs import Inputs, inputs
@@ -26,14 +27,21 @@ from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
 
 if TYPE_CHECKING:
+    from collections.abc import Iterable
     from datetime import datetime
 
     from orolift.crossing.result import Crossing
     from orolift.report.figures.answers import AnswersDrawing
     from orolift.report.figures.budget import BudgetDrawing
+    from orolift.report.figures.column import ColumnDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.path import PathDrawing
     from orolift.report.figures.section import SectionDrawing
+    from orolift.sources.quality import Finding
+
+
+SEVERITIES = ("wrong", "doubtful", "remark")
+"""Severities of findings as the page lists them."""
 
 
 @dataclass(frozen=True)
@@ -59,6 +67,9 @@ class Page:
     answers_figure : Figure or None
     lee_wind : LeeWind
     inputs : Inputs
+    column : Figure
+    findings : tuple of Finding
+        Of quality control, the gravest first.
     method : Method
     cautions : Cautions
     """
@@ -80,6 +91,8 @@ class Page:
     answers_figure: Figure[AnswersDrawing] | None
     lee_wind: LeeWind
     inputs: Inputs
+    column: Figure[ColumnDrawing]
+    findings: tuple[Finding, ...]
     method: Method
     cautions: Cautions
 
@@ -93,6 +106,8 @@ def page_of(
     version: str,
     case_text: str | None = None,
     units: Units = "metric",
+    findings: Iterable[Finding] = (),
+    stagnant_top: float | None = None,
 ) -> Page:
     """The page of a crossing.
 
@@ -110,6 +125,10 @@ def page_of(
     case_text : str, optional
         The case file, printed word for word.
     units : 'metric' or 'us'
+    findings : iterable of Finding
+        What quality control has seen in the incoming air.
+    stagnant_top : float, optional [m above sea level]
+        Top of a stagnant layer at the ground of the incoming air, kept out of the inflow.
 
     Returns
     -------
@@ -137,6 +156,8 @@ def page_of(
         answers_figure=answers_figure(crossing, units),
         lee_wind=lee_wind(crossing),
         inputs=inputs(crossing, bearing, freezing, case_text),
+        column=column(crossing, stagnant_top, units),
+        findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),
         method=method(),
         cautions=cautions(crossing, valid_time),
     )
