@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from orolift.report.causes import cause_noun
 from orolift.report.quantities import Amount
-from orolift.report.story import SAME, difference, ends_of, main_site
+from orolift.report.story import SAME, difference, ends_of, main_site, where_words
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
@@ -24,7 +24,7 @@ class AnswerRow:
     Attributes
     ----------
     number : int
-    name, side : str
+    name, side, remark : str
     incoming, popular_picture, descent_only, own, no_blocking, full_blocking : Amount or None
         Temperatures.
     own_dew_point, no_blocking_dew_point, full_blocking_dew_point : Amount or None
@@ -33,6 +33,7 @@ class AnswerRow:
     number: int
     name: str
     side: str
+    remark: str
     incoming: Amount
     popular_picture: Amount | None
     descent_only: Amount | None
@@ -84,6 +85,7 @@ def _row(site: LeeAir, number: int) -> AnswerRow:
         number=number,
         name=site.name,
         side=site.side,
+        remark=where_words(site),
         incoming=Amount(site.upwind_temperature, "temperature", 1),
         popular_picture=warm(site.popular_picture if over else None),
         descent_only=warm(site.descent_only if over else None),

@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from orolift.report.quantities import Amount
-from orolift.report.story import SAME, difference, main_site, rains, removal_words
+from orolift.report.story import SAME, difference, main_site, rains, removal_words, where_words
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir, WarmingParts
@@ -36,7 +36,7 @@ class CauseRow:
     Attributes
     ----------
     number : int
-    name, side : str
+    name, side, remark : str
     descent, latent, going_round, mixing, surface_heating, pressure : Amount or None
         None in a pool that stays.
     total : Amount
@@ -46,6 +46,7 @@ class CauseRow:
     number: int
     name: str
     side: str
+    remark: str
     descent: Amount | None
     latent: Amount | None
     going_round: Amount | None
@@ -88,6 +89,7 @@ def _row(site: LeeAir, number: int) -> CauseRow:
         number=number,
         name=site.name,
         side=site.side,
+        remark=where_words(site),
         descent=part("descent"),
         latent=part("latent"),
         going_round=part("going_round"),

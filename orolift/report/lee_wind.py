@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from orolift.report.quantities import Amount
+from orolift.report.story import where_words
 from orolift.report.words import counted
 
 if TYPE_CHECKING:
@@ -153,7 +154,6 @@ def _remarks(crossing: Crossing) -> tuple[Words, ...]:
 
 def _row(site: LeeAir, number: int) -> WindRow:
     wind = site.wind
-    remark = "in the cold pool" if site.in_pool else "in blocked air" if site.in_blocked_air else ""
 
     def speed(name: str) -> Amount | None:
         return None if wind is None else Amount(getattr(wind, name), "wind")
@@ -162,7 +162,7 @@ def _row(site: LeeAir, number: int) -> WindRow:
         number=number,
         name=site.name,
         side=site.side,
-        remark=remark,
+        remark=where_words(site),
         wind=speed("wind"),
         low=speed("low"),
         high=speed("high"),

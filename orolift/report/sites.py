@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.report.quantities import Amount
-from orolift.report.story import SAME, difference, source_words
+from orolift.report.story import SAME, difference, source_words, where_words
 from orolift.report.words import Words, counted, sentence
 
 if TYPE_CHECKING:
@@ -83,7 +83,7 @@ def _row(air: LeeAir, number: int, crossing: Crossing) -> SiteRow:
         number=number,
         name=air.name,
         side=air.side,
-        remark="in the cold pool" if air.in_pool else "in blocked air" if air.in_blocked_air else "",
+        remark=where_words(air),
         distance=Amount(air.distance + crossing.transect.origin, "distance", 1),
         elevation=Amount(air.elevation, "height"),
         temperature=Amount(air.temperature, "temperature", 1),

@@ -126,6 +126,11 @@ def difference(amount: float, more: str, less: str, same: str) -> Words:
     return (Amount(abs(amount), "temperature_difference", 1), f" {more if amount > 0.0 else less}")
 
 
+def where_words(site: LeeAir) -> str:
+    """Air that stays in which a site lies; empty where the crossing air reaches it."""
+    return "in the cold pool" if site.in_pool else "in blocked air" if site.in_blocked_air else ""
+
+
 def ends_of(site: LeeAir) -> tuple[SimpleAir, SimpleAir] | None:
     """The ends without blocking and with full blocking; None where they say nothing of this site."""
     if site.in_pool or site.in_blocked_air or site.side == "windward":

@@ -505,7 +505,7 @@ def test_wind_panel_reads_back_as_the_wind(page_for, named):
     assert read_off(marks, points[:, 1].min()) == pytest.approx(near.max(), abs=2.0 * per_unit)
     gauge = next(one for one in panel.gauges if one.number == 1)
     wind = crossing.lee[0].wind
-    assert read_off(marks, gauge.y) == pytest.approx(wind.at_10m, abs=per_unit)
+    assert read_off(marks, gauge.point_y) == pytest.approx(wind.at_10m, abs=per_unit)
     low, high = (read_off(marks, float(y)) for y in re.match(r"M[\d.]+ ([\d.]+)V([\d.]+)", gauge.path).groups())
     assert (low, high) == pytest.approx((wind.gust_low, wind.gust_high), abs=per_unit)
     assert [one.number for one in panel.gauges] == [n for n, air in enumerate(crossing.lee, 1) if air.wind is not None]

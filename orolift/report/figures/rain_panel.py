@@ -35,6 +35,11 @@ class RainPanel:
     divide: Curve
     labels: tuple[Label, ...]
 
+    @property
+    def curves(self) -> tuple[Curve, ...]:
+        """Its areas and lines, from the back."""
+        return (self.rain, *(() if self.snow is None else (self.snow,)), self.divide)
+
 
 def rain_panel(view: View, layout: Layout) -> RainPanel | None:
     """Rain and snow along the ground.

@@ -67,6 +67,20 @@ class SectionDrawing:
     rain: RainPanel | None
     wind: WindPanel
 
+    @property
+    def behind(self) -> tuple[Curve, ...]:
+        """Everything behind the ground, from the back."""
+        ridges = () if self.ridges is None else (self.ridges,)
+        falling = () if self.falling is None else (self.falling,)
+        sky = (*ridges, *self.cloud, *self.isentropes, *self.low_air, *falling)
+        return (*sky, *self.streamlines, *self.freezing)
+
+    @property
+    def before(self) -> tuple[Curve, ...]:
+        """Everything before the ground, from the back."""
+        breaking = () if self.breaking is None else (self.breaking,)
+        return (*self.followed, *breaking, *self.heads, *self.plumb_lines, *self.leaders)
+
 
 def section(
     crossing: Crossing, trace: Trace, bearing: float, freezing_level: float, units: Units

@@ -10,7 +10,7 @@ import numpy as np
 from orolift.crossing.wind import NEAR_GROUND
 from orolift.report.figures.axes import Layout, Scale, Tick, level_ticks, place
 from orolift.report.figures.cloud import runs
-from orolift.report.figures.drawing import Curve, Label, path_data, polyline, thinned
+from orolift.report.figures.drawing import Curve, Label, Pin, path_data, polyline, thinned
 from orolift.report.figures.placing import Board, Box, put
 from orolift.report.quantities import from_displayed
 from orolift.report.story import main_site
@@ -27,28 +27,16 @@ OFF_GROUND = 30.0
 
 
 @dataclass(frozen=True)
-class Gauge:
-    """The wind at 10 m at a site, with its gusts: a bar with a point.
+class Gauge(Pin):
+    """The wind at 10 m at a site: a pin on it, and a bar for the gusts.
 
     Attributes
     ----------
-    number : int
-        Of the site.
     path : str
         The gusts.
-    x, y : float
-        The wind at 10 m.
-    disc_y, text_y, radius : float
-        The disc with the number.
     """
 
-    number: int
-    path: str
-    x: float
-    y: float
-    disc_y: float
-    text_y: float
-    radius: float
+    path: str = ""
 
 
 @dataclass(frozen=True)
@@ -61,6 +49,11 @@ class WindPanel:
     lines: tuple[Curve, ...]
     gauges: tuple[Gauge, ...]
     labels: tuple[Label, ...]
+
+    @property
+    def curves(self) -> tuple[Curve, ...]:
+        """Its area and lines, from the back."""
+        return (*(() if self.band is None else (self.band,)), *self.lines)
 
 
 def wind_panel(view: View, layout: Layout) -> WindPanel:
@@ -144,8 +137,18 @@ def _gauge(view: View, up: Scale, number: int, layout: Layout) -> Gauge:
     low, high, mean = (round(place(up, w), 1) for w in (site.wind.gust_low, site.wind.gust_high, site.wind.at_10m))
     radius = round(0.6 * layout.letter, 1)
     disc = round(max(high - radius - 3.0, layout.top - radius), 1)
-    path = f"M{x:.1f} {low:.1f}V{high:.1f}M{x - 4:.1f} {low:.1f}H{x + 4:.1f}M{x - 4:.1f} {high:.1f}H{x + 4:.1f}"
-    return Gauge(number, path, x, mean, disc, round(disc + 0.3 * layout.letter, 1), radius)
+    return Gauge(
+        number=number,
+        stem="",
+        x=x,
+        y=disc,
+        radius=radius,
+        text_y=round(disc + 0.3 * layout.letter, 1),
+        point_x=x,
+        point_y=mean,
+        labels=(),
+        path=f"M{x:.1f} {low:.1f}V{high:.1f}M{x - 4:.1f} {low:.1f}H{x + 4:.1f}M{x - 4:.1f} {high:.1f}H{x + 4:.1f}",
+    )
 
 
 def _names(view: View, layout: Layout, y: Array, high: Array, gauges: tuple[Gauge, ...]) -> tuple[Label, ...]:
@@ -158,7 +161,7 @@ def _names(view: View, layout: Layout, y: Array, high: Array, gauges: tuple[Gaug
         points_x=np.concatenate([fine, fine]),
         points_y=np.concatenate([np.interp(fine, view.x, y), np.interp(fine, view.x, high)]),
         taken=tuple(
-            Box(g.x - g.radius - 3.0, g.disc_y - g.radius - 2.0, g.x + g.radius + 3.0, g.y + 4.0) for g in gauges
+            Box(g.x - g.radius - 3.0, g.y - g.radius - 2.0, g.x + g.radius + 3.0, g.point_y + 4.0) for g in gauges
         ),
     )
     site = main_site(view.crossing)
