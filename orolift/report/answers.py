@@ -192,7 +192,7 @@ def _ends(crossing: Crossing, site: LeeAir) -> list[Words]:
     least, most = ends
     if abs(least.temperature - most.temperature) < SAME:
         return [
-            ("Nothing is blocked, so that no blocking and full blocking give the same; the range says nothing here.",)
+            ("No layer is stopped, so that no blocking and full blocking give the same; the range says nothing here.",)
         ]
     return [
         (

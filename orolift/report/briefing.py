@@ -204,8 +204,8 @@ def _unblocked(crossing: Crossing) -> Words:
     """That nothing is blocked, and how far the range of that reaches."""
     high = crossing.flow.blocked_top_high
     if high > crossing.features.base + ROUNDING:
-        return (". Nothing is blocked, at most the air below ", Amount(high, "height", -1), ".")
-    return (". Nothing is blocked: air from the ground up comes over.",)
+        return (". No layer is stopped, at most the air below ", Amount(high, "height", -1), ".")
+    return (". No layer is stopped: air from the ground up comes over.",)
 
 
 def _cloud(crossing: Crossing) -> Words:
@@ -351,12 +351,12 @@ def _blocked_number(crossing: Crossing) -> KeyNumber:
     flow = crossing.flow
     number = Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2)
     if not is_blocked(crossing):
-        return KeyNumber("Blocked below", None, "nothing", (), ("N h/U ", number, f": {flow.regime}"))
+        return KeyNumber("Air stopped below", None, "no layer", (), ("N h/U ", number, f": {flow.regime}"))
     top, *span = blocked_words(crossing)
     share: Words = ("; ", Amount(flow.going_round_share, "share"), " of it goes round")
     if not isinstance(top, Amount):
         raise TypeError("a height comes first")
-    return KeyNumber("Blocked below", top, "", tuple(span), ("N h/U ", number, f": {flow.regime}", *share))
+    return KeyNumber("Air stopped below", top, "", tuple(span), ("N h/U ", number, f": {flow.regime}", *share))
 
 
 def _source_number(site: LeeAir) -> KeyNumber:

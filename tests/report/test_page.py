@@ -51,7 +51,7 @@ def test_briefing_leads_with_the_flow_the_rain_and_the_lee(page_for, crossing):
     first, lee, wind = (text_of(words) for words in page.briefing.sentences)
     assert f"N h/U is {crossing.flow.nondimensional_height:.2f}, so the flow " in first
     assert "may also " in first
-    assert "Nothing is blocked" in first
+    assert "No layer is stopped" in first
     assert "% of it before the crest" in first
     assert lee.startswith("At Lower Tarn (")
     assert "mainly by heat of condensation" in lee
@@ -274,7 +274,7 @@ def test_ends_are_named_in_words(page_for, named):
     remarks = all_text(page_for(named("blocked")).answers.remarks)
     assert "with no blocking" in remarks
     assert "with full blocking" in remarks
-    assert "Nothing is blocked" in all_text(page_for(named("no cloud")).answers.remarks)
+    assert "No layer is stopped" in all_text(page_for(named("no cloud")).answers.remarks)
 
 
 # Wind

@@ -62,7 +62,7 @@ def cloud_body(view: View) -> tuple[Curve, ...]:
     wet = made > 0.0
     if not wet.any():
         return ()
-    saturated = saturation_mixing_ratio(p, t)
+    saturated = saturation_mixing_ratio(p, t, freezing=view.crossing.settings.freezing)
     excess = np.where(wet, np.maximum(made / saturated, 1e-4), np.minimum(vapour / saturated - 1.0, -1e-4))
     y = np.asarray(place(view.up, view.heights[:, rows]))
     top = view.layout.top

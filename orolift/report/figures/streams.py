@@ -134,6 +134,8 @@ def freezing(view: View) -> tuple[Line, ...]:
 
 def breaking(view: View) -> tuple[Curve | None, tuple[tuple[float, float], ...]]:
     """Curls where waves break, and their places; nothing where none do in the frame."""
+    if not view.crossing.flow.wave_breaking:
+        return None, ()
     broken = view.crossing.breaking[view.columns]
     y = np.asarray(place(view.up, view.heights))
     wide, deep = np.nonzero(broken & (y >= view.layout.top + 8.0))
