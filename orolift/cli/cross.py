@@ -176,6 +176,8 @@ def report_of(worked: Worked, units: Units) -> str:
         version=__version__,
         case_text=worked.inputs.text,
         units=units,
+        mapped=worked.mapped,
+        flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=stagnant_top(worked.inputs),
     )

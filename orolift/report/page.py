@@ -15,13 +15,17 @@ from orolift.report.cautions import Cautions, cautions
 from orolift.report.figures.answers import answers_figure
 from orolift.report.figures.budget import budget
 from orolift.report.figures.column import column
+from orolift.report.figures.gauge_scatter import gauge_scatter
 from orolift.report.figures.path import path
+from orolift.report.figures.rain_line import rain_line
 from orolift.report.figures.section import section
 from orolift.report.inputs import Inputs, inputs
 from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
 from orolift.report.places import Journey, journey, section_heading
 from orolift.report.quantities import Units, quantity
+from orolift.report.rain import RainOnLine, rain_on_line
+from orolift.report.rain_over_map import RainOverMap, rain_over_map
 from orolift.report.sites import Sites, sites
 from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
@@ -35,8 +39,12 @@ if TYPE_CHECKING:
     from orolift.report.figures.budget import BudgetDrawing
     from orolift.report.figures.column import ColumnDrawing
     from orolift.report.figures.drawing import Figure
+    from orolift.report.figures.gauge_scatter import ScatterDrawing
     from orolift.report.figures.path import PathDrawing
+    from orolift.report.figures.rain_line import RainLineDrawing
+    from orolift.report.figures.rain_map import RainMapDrawing
     from orolift.report.figures.section import SectionDrawing
+    from orolift.sources.map_inputs import Mapped
     from orolift.sources.quality import Finding
 
 
@@ -62,6 +70,11 @@ class Page:
     path : Figure
     causes : Causes
     budget : Figure or None
+    rain : RainOnLine
+    rain_line : Figure or None
+    rain_over_map : RainOverMap or None
+    rain_map : Figure or None
+    gauge_scatter : Figure or None
     sites : Sites
     answers : Answers
     answers_figure : Figure or None
@@ -86,6 +99,11 @@ class Page:
     path: Figure[PathDrawing]
     causes: Causes
     budget: Figure[BudgetDrawing] | None
+    rain: RainOnLine
+    rain_line: Figure[RainLineDrawing] | None
+    rain_over_map: RainOverMap | None
+    rain_map: Figure[RainMapDrawing] | None
+    gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
     answers: Answers
     answers_figure: Figure[AnswersDrawing] | None
@@ -106,6 +124,8 @@ def page_of(
     version: str,
     case_text: str | None = None,
     units: Units = "metric",
+    mapped: Mapped | None = None,
+    flags: tuple[str, ...] = (),
     findings: Iterable[Finding] = (),
     stagnant_top: float | None = None,
 ) -> Page:
@@ -125,6 +145,10 @@ def page_of(
     case_text : str, optional
         The case file, printed word for word.
     units : 'metric' or 'us'
+    mapped : Mapped, optional
+        Rain over the map.
+    flags : tuple of str
+        Danger thresholds reached.
     findings : iterable of Finding
         What quality control has seen in the incoming air.
     stagnant_top : float, optional [m above sea level]
@@ -151,6 +175,11 @@ def page_of(
         path=path(crossing, followed, units),
         causes=causes(crossing),
         budget=budget(crossing, units),
+        rain=rain_on_line(crossing, flags),
+        rain_line=rain_line(crossing, None if mapped is None else mapped.rain.on_line, units),
+        rain_over_map=None if mapped is None else rain_over_map(mapped),
+        rain_map=None if mapped is None else _rain_map(crossing, mapped, units),
+        gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
         sites=sites(crossing),
         answers=answers(crossing),
         answers_figure=answers_figure(crossing, units),
@@ -161,3 +190,10 @@ def page_of(
         method=method(),
         cautions=cautions(crossing, valid_time),
     )
+
+
+def _rain_map(crossing: Crossing, mapped: Mapped, units: Units) -> Figure[RainMapDrawing]:
+    """The map of rain; its module needs what only cases with a raster need."""
+    from orolift.report.figures.rain_map import rain_map_figure
+
+    return rain_map_figure(crossing, mapped, units)

@@ -25,6 +25,9 @@ Kind = Literal[
     "stability",
     "rain_rate",
     "duration",
+    "hours",
+    "area",
+    "volume",
     "plain",
 ]
 
@@ -106,9 +109,12 @@ METRIC: dict[Kind, Form] = {
     "stability": Form("per second"),
     "rain_rate": Form("mm/h", 3600.0),
     "duration": Form("s"),
+    "hours": Form("h", 1.0 / 3600.0),
+    "area": Form("km²", 1e-6),
+    "volume": Form("million m³", 1e-6),
     "plain": Form(""),
 }
-# Factors: NIST SP 811 (2008) Appendix B; inHg at 0 degrees Celsius.
+# Factors: NIST SP 811 (2008) Appendix B; inHg at 0 degrees Celsius; an acre-foot is 43 560 cubic feet.
 US: dict[Kind, Form] = {
     **METRIC,
     "temperature": Form("°F", 1.8, -459.67),
@@ -121,6 +127,8 @@ US: dict[Kind, Form] = {
     "pressure_difference": Form("inHg", 1.0 / 3386.389, extra_digits=1),
     "water_depth": Form("in", 1.0 / 25.4, extra_digits=2),
     "rain_rate": Form("in/h", 3600.0 / 25.4, extra_digits=2),
+    "area": Form("sq mi", 1.0 / 1609.344**2),
+    "volume": Form("thousand acre-ft", 1e-3 / (43560.0 * 0.3048**3)),
 }
 
 

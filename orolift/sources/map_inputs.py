@@ -20,7 +20,7 @@ if TYPE_CHECKING:
 
     from orolift.rain.gauges import Gauges
     from orolift.rain.over_map import MapRain
-    from orolift.sources.case_model import Case
+    from orolift.sources.case_model import Case, SiteTable
     from orolift.sources.elevation_map import ElevationMap
     from orolift.sources.inputs import Inputs
     from orolift.terrain.transect import Transect
@@ -45,6 +45,8 @@ class MapInputs:
     placed : ElevationMap
     line : MapLine
         The transect on it.
+    sites : tuple of (float, float) [m]
+        Places of the sites of the case on it; empty without any.
     catchments : tuple of Catchment
     divide : tuple of ndarray, or None
         Lines between windward and lee.
@@ -58,6 +60,7 @@ class MapInputs:
 
     placed: ElevationMap
     line: MapLine
+    sites: tuple[tuple[float, float], ...]
     catchments: tuple[Catchment, ...]
     divide: tuple[Array, ...] | None
     gauges: Gauges | None
@@ -125,6 +128,7 @@ def _read(case: Case, transect: Transect, folder: Path) -> MapInputs:
     return MapInputs(
         placed=placed,
         line=_line(transect.longitude, transect.latitude, placed, width),
+        sites=tuple(_site(site, placed) for site in case.site),
         catchments=catchments,
         divide=_divide(case, placed, folder),
         gauges=_gauges(case, placed, folder),
@@ -139,6 +143,16 @@ def _line(longitude: Array, latitude: Array, placed: ElevationMap, width: float)
 
     x, y = transform(_LONGITUDE_LATITUDE, placed.crs, longitude, latitude)
     return MapLine(np.asarray(x, dtype=np.float64), np.asarray(y, dtype=np.float64), width)
+
+
+def _site(site: SiteTable, placed: ElevationMap) -> tuple[float, float]:
+    from rasterio.warp import transform
+
+    if site.longitude is not None:
+        x, y = transform(_LONGITUDE_LATITUDE, placed.crs, [site.longitude], [site.latitude])
+    else:
+        x, y = transform(placed.source_crs, placed.crs, [site.easting_m], [site.northing_m])
+    return float(x[0]), float(y[0])
 
 
 def _catchments(case: Case, placed: ElevationMap, folder: Path) -> tuple[tuple[Catchment, ...], tuple[str, ...]]:

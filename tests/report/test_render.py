@@ -105,7 +105,8 @@ def test_figures_speak_to_those_who_cannot_see_them(read, page_for, any_crossing
     """Each drawing has a title and a text that gives its message in numbers."""
     built = page_for(any_crossing)
     page = read(any_crossing)
-    count = 3 + (built.budget is not None) + (built.answers_figure is not None)
+    made = (built.budget, built.answers_figure, built.rain_line)
+    count = 3 + sum(figure is not None for figure in made)
     assert len(page.all("figure")) == len(page.all("figcaption")) == count
     drawings = page.all("svg")
     assert len(drawings) == 2 * count
@@ -114,6 +115,9 @@ def test_figures_speak_to_those_who_cannot_see_them(read, page_for, any_crossing
         assert drawing["attrs"]["role"] == "img"
         title, alt = drawing["attrs"]["aria-labelledby"].split()
         assert len(texts[title]) > 10
+        if "rain-line" in title:
+            assert "mm/h" in texts[alt]
+            continue
         places = (*(air.name for air in any_crossing.lee), "lee foot", "ground of the column")
         assert any(place in texts[alt] for place in places)
         assert "°C" in texts[alt]
@@ -121,7 +125,7 @@ def test_figures_speak_to_those_who_cannot_see_them(read, page_for, any_crossing
 
 def test_tables_have_captions_and_scopes(read, crossing):
     page = read(crossing)
-    assert len(page.all("table")) == len(page.all("caption")) == 9
+    assert len(page.all("table")) == len(page.all("caption")) == 10
     for head in page.all("th"):
         assert head["attrs"]["scope"] in {"col", "colgroup", "row"}
 
@@ -182,6 +186,7 @@ def test_briefing_comes_first_and_cautions_come_with_it(read, crossing):
         "section",
         "path",
         "causes",
+        "rain",
         "sites",
         "answers",
         "wind",

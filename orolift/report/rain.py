@@ -1,0 +1,143 @@
+"""Rain along the line: how much, where it falls, rain or snow by side and height, and what it threatens."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from orolift.rain.winter import bands_of_sides
+from orolift.report.quantities import Amount
+from orolift.report.story import fallen_share, rains, removal_words, snow_words
+from orolift.report.words import fraction_in_words, sentence
+
+if TYPE_CHECKING:
+    from orolift.crossing.result import Crossing
+    from orolift.report.words import Words
+
+SOME = 0.02
+"""Share of the falling water [1] that evaporates from which on it is said (design choice)."""
+NEAR = 500.0
+"""A peak this near to the crest [m] is at it."""
+
+
+@dataclass(frozen=True)
+class BandRow:
+    """What falls between two heights of the ground on both sides; None where a side has no such ground."""
+
+    lower: Amount
+    upper: Amount
+    windward_rate: Amount | None
+    windward_snow: Amount | None
+    lee_rate: Amount | None
+    lee_snow: Amount | None
+
+
+@dataclass(frozen=True)
+class RainOnLine:
+    """Rain along the line.
+
+    Attributes
+    ----------
+    heading : Words
+    flags : tuple of str
+        Danger thresholds reached.
+    sentences : tuple of Words
+    rows : tuple of BandRow
+        Empty without rain.
+    """
+
+    heading: Words
+    flags: tuple[str, ...]
+    sentences: tuple[Words, ...]
+    rows: tuple[BandRow, ...]
+
+
+def rain_on_line(crossing: Crossing, flags: tuple[str, ...] = ()) -> RainOnLine:
+    """Rain along the line of a crossing.
+
+    Parameters
+    ----------
+    crossing : Crossing
+    flags : tuple of str
+        From `orolift.rain.winter.winter_flags`.
+
+    Returns
+    -------
+    RainOnLine
+    """
+    falls = rains(crossing) or crossing.rain.background > 0.0
+    return RainOnLine(
+        heading=_heading(crossing),
+        flags=flags,
+        sentences=_sentences(crossing),
+        rows=_rows(crossing) if falls else (),
+    )
+
+
+def _heading(crossing: Crossing) -> Words:
+    rain, shape = crossing.rain, crossing.features
+    if not rains(crossing) or rain.windward_share is None or rain.peak_distance is None:
+        if rain.background > 0.0:
+            return ("The range adds hardly any rain to the background of ", Amount(rain.background, "rain_rate", 1))
+        return ("Hardly any rain reaches the ground",)
+    part = f"{fraction_in_words(rain.windward_share)} of the {snow_words(crossing)}"
+    apart = rain.peak_distance - shape.crest_distance
+    words: Words = (*sentence((part,)), " falls before the crest; the most, ", Amount(rain.peak_rate, "rain_rate", 1))
+    if abs(apart) < NEAR:
+        return (*words, ", on it")
+    return (*words, ", ", Amount(abs(apart), "distance"), " behind it" if apart > 0.0 else " before it")
+
+
+def _sentences(crossing: Crossing) -> tuple[Words, ...]:
+    water, rain = crossing.water, crossing.rain
+    if water.condensed <= 0.0 or not rains(crossing):
+        return ()
+    out: list[Words] = [
+        (
+            "Of the vapour that crosses ",
+            Amount(fallen_share(crossing), "share"),
+            " reaches the ground, of what condenses ",
+            Amount(water.removed / water.condensed, "share"),
+            " (",
+            *removal_words(crossing),
+            ").",
+        )
+    ]
+    fell = water.removed + water.evaporated + water.beyond
+    if water.evaporated > SOME * fell:
+        out.append(
+            (
+                "On its way down ",
+                Amount(water.evaporated / fell, "share"),
+                " of the falling water evaporates, below the cloud and in the lee, and cools the air there.",
+            )
+        )
+    if rain.background > 0.0:
+        out.append(
+            (
+                "A background of ",
+                Amount(rain.background, "rain_rate", 1),
+                " falls everywhere beside it; it is in rates and peak, not in the shares.",
+            )
+        )
+    return tuple(out)
+
+
+def _rows(crossing: Crossing) -> tuple[BandRow, ...]:
+    """Both sides of each band, from the lowest up."""
+    bands = {(band.lower, band.side): band for band in bands_of_sides(crossing)}
+    rows = []
+    for lower in sorted({low for low, _ in bands}):
+        windward, lee = bands.get((lower, "windward")), bands.get((lower, "lee"))
+        upper = next(band.upper for band in (windward, lee) if band is not None)
+        rows.append(
+            BandRow(
+                lower=Amount(lower, "height", bare=True),
+                upper=Amount(upper, "height"),
+                windward_rate=None if windward is None else Amount(windward.rate, "rain_rate", 1),
+                windward_snow=None if windward is None else Amount(windward.snow_share, "share"),
+                lee_rate=None if lee is None else Amount(lee.rate, "rain_rate", 1),
+                lee_snow=None if lee is None else Amount(lee.snow_share, "share"),
+            )
+        )
+    return tuple(rows)
