@@ -227,7 +227,8 @@ def crest_line_notes(ground: Ground, blocked_top: float) -> tuple[str, ...]:
     side = "right" if x[lowest] > 0.0 else "left"
     sentence = (
         f"Within {NEIGHBOURHOOD / 1000:.0f} km along the range the crest line has a mean of {z.mean():.0f} m; its "
-        f"lowest pass, {z[lowest]:.0f} m, lies {abs(x[lowest]) / 1000:.0f} km to the {side} of the line, looking downwind."
+        f"lowest pass, {z[lowest]:.0f} m, lies {abs(x[lowest]) / 1000:.0f} km to the {side} of the line, looking "
+        "downwind."
     )
     if blocked_top <= ground.shape.base + 1.0:
         return (sentence,)
