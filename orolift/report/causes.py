@@ -116,6 +116,8 @@ def main_cause(site: LeeAir) -> tuple[str, float] | None:
 
 def cause_noun(crossing: Crossing, site: LeeAir, key: str) -> Words:
     """A cause as the subject of a sentence."""
+    if key == "descent" and site.went_round > 0.0:  # its source level is that of both ways together
+        return ("descent from aloft",)
     if key == "descent":
         if site.source_level is not None and site.source_level > site.elevation + 50.0:
             return ("descent from ", Amount(site.source_level, "height", -1))
@@ -134,7 +136,7 @@ def cause_noun(crossing: Crossing, site: LeeAir, key: str) -> Words:
 def cause_heading(crossing: Crossing, site: LeeAir) -> Words:
     """What explains the warmth of a site, in one line."""
     if site.in_pool:
-        return (f"{site.name} lies in cold air that stays; the warm air passes over it",)
+        return (f"{site.name} lies in cold air that stays; the crossing air passes over it",)
     if site.in_blocked_air:
         return (f"{site.name} lies in air that is stopped before the range, unchanged",)
     found = main_cause(site)
@@ -196,14 +198,8 @@ def _explanation(crossing: Crossing, site: LeeAir) -> tuple[Words, ...]:
         ".",
     )
     if site.parts.descent > COUNTS and site.source_level is not None:
-        first = (
-            *first,
-            " Brought down dry, air from ",
-            Amount(site.source_level, "height", -1),
-            " would be ",
-            Amount(site.parts.descent, "temperature_difference", 1),
-            " warmer than the incoming air there.",
-        )
+        by = Amount(site.parts.descent, "temperature_difference", 1)
+        first = (*first, " Brought down dry, the air that crosses would be ", by, " warmer than that air.")
     return (first, *_remarks(crossing, site))
 
 

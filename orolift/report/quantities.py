@@ -126,7 +126,7 @@ US: dict[Kind, Form] = {
     "pressure": Form("inHg", 1.0 / 3386.389, extra_digits=1),
     "pressure_difference": Form("inHg", 1.0 / 3386.389, extra_digits=1),
     "water_depth": Form("in", 1.0 / 25.4, extra_digits=2),
-    "rain_rate": Form("in/h", 3600.0 / 25.4, extra_digits=2),
+    "rain_rate": Form("in/h", 3600.0 / 25.4, extra_digits=1),
     "area": Form("sq mi", 1.0 / 1609.344**2),
     "volume": Form("thousand acre-ft", 1e-3 / (43560.0 * 0.3048**3)),
 }

@@ -177,10 +177,13 @@ def test_snow_is_called_snow(page_for, named):
 
 def test_cause_is_named_in_the_heading(page_for, named):
     """The largest part in the direction of the total explains it: descent without rain, condensation with it."""
-    dry = page_for(named("pool displaced"))
-    assert main_cause(named("pool displaced").lee[0])[0] == "descent"
-    level = text_of((Amount(named("pool displaced").lee[0].source_level, "height", -1),))
-    assert text_of(dry.causes.heading) == f"Descent from {level} explains the warmth; rain plays no part"
+    dry = named("pool displaced")
+    site = dry.lee[0]
+    assert main_cause(site)[0] == "descent"
+    assert text_of(page_for(dry).causes.heading) == "Descent from aloft explains the warmth; rain plays no part"
+    level = text_of((Amount(site.source_level, "height", -1),))
+    whole = page_for(warmed(dry, went_round=0.0))
+    assert text_of(whole.causes.heading) == f"Descent from {level} explains the warmth; rain plays no part"
     wet = page_for(named("cloud and rain"))
     assert text_of(wet.causes.heading).startswith(
         "Heat of condensation, kept because water fell out, explains the warmth"

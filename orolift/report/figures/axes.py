@@ -6,7 +6,17 @@ import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, overload
 
-from orolift.report.quantities import Kind, Units, displayed, first_number, first_unit, from_displayed, number, quantity
+from orolift.report.quantities import (
+    Kind,
+    Units,
+    displayed,
+    first_number,
+    first_unit,
+    form,
+    from_displayed,
+    number,
+    quantity,
+)
 
 if TYPE_CHECKING:
     import numpy as np
@@ -176,7 +186,7 @@ def _round_values(scale: Scale, kind: Kind, units: Units, about: int, shift: flo
     """Values [SI] that are round in the shown unit, and the decimals they need."""
     low, high = (displayed(value + shift, kind, units) for value in (scale.low, scale.high))
     step = round_step(high - low, about)
-    digits = max(0, -math.floor(math.log10(step) + 1e-9))
+    digits = max(0, -math.floor(math.log10(step) + 1e-9)) - form(kind, units).extra_digits
     first, last = math.ceil(low / step - 1e-6), math.floor(high / step + 1e-6)
     return [from_displayed(count * step, kind, units) for count in range(first, last + 1)], digits
 

@@ -41,7 +41,7 @@ def contour_lines(x: Array, y: Array, field: Array, level: float) -> list[Line]:
     >>> x = np.linspace(0.0, 100.0, 5)
     >>> y = np.tile([50.0, 0.0], (5, 1))
     >>> ((across, down),) = contour_lines(x, y, np.tile([0.0, 1.0], (5, 1)), 0.5)
-    >>> float(across[0]), float(across[-1]), float(down[2])
+    >>> float(across[0]), float(across[-1]), float(down[-1])
     (0.0, 100.0, 25.0)
     """
     from contourpy import LineType, contour_generator

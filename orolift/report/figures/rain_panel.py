@@ -21,7 +21,7 @@ if TYPE_CHECKING:
     Array = NDArray[np.float64]
 
 BACK = (0.0, 60.0, 120.0, 180.0, 240.0)
-"""Drawing units before the crest at which the windward share may stand."""
+"""Drawing units from the crest at which the shares may stand."""
 
 
 @dataclass(frozen=True)
@@ -100,7 +100,7 @@ def _names(view: View, layout: Layout, x: Array, rate: Array, crest: float) -> t
             f"{quantity(share, 'share', 0, units)} {side}"
             for share, side in zip((rain.windward_share, 1.0 - rain.windward_share), sides, strict=True)
         )
-        groups.append(down(behind, crest + 8.0, "start", "name dew"))
+        groups.append([spot for on in BACK for spot in down(behind, crest + 8.0 + on, "start", "name dew")])
         groups.append([spot for back in BACK for spot in down(before, crest - 8.0 - back, "end", "name dew")])
     if rain.peak_distance is not None and layout.name == "wide":
         words = f"peak {quantity(rain.peak_rate, 'rain_rate', 1, units)}"
