@@ -14,7 +14,7 @@ DATA = Path(__file__).parents[1] / "data"
     ("raster", "pair", "wind_from", "upwind_km", "downwind_km"),
     [
         ("coast_9km.tif", "pair_62", 280, 120, 120),
-        ("coast_9km.tif", "pair_08", 250, 120, 120),
+        ("coast_9km.tif", "pair_08", 300, 120, 120),
         ("range_90m.tif", "pair_01", 95, 36, 10),
     ],
 )
