@@ -214,8 +214,6 @@ def padding_for(shape: tuple[int, int], spacing: tuple[float, float], parameters
     >>> padding_for((2048, 2048), (100.0, 100.0), RainParameters(15.0, 0.0, 0.005, 2500.0, 0.004)).shape
     (3072, 4608)
     """
-    from scipy.fft import next_fast_len
-
     drift = parameters.cloud_time + parameters.fall_time
     winds = (parameters.northward_wind, parameters.eastward_wind)
 
@@ -225,7 +223,7 @@ def padding_for(shape: tuple[int, int], spacing: tuple[float, float], parameters
     def padded(drifts: float) -> tuple[int, int]:
         out = []
         for n, step, wave, wind in zip(shape, spacing[::-1], waves, winds, strict=True):
-            out.append(int(next_fast_len(n + int(np.ceil((wave + drifts * abs(wind) * drift) / step)), real=True)))
+            out.append(fast_length(n + int(np.ceil((wave + drifts * abs(wind) * drift) / step))))
         return out[0], out[1]
 
     for drifts in np.linspace(DRIFTS, LEAST_DRIFTS, 11):
@@ -238,6 +236,36 @@ def padding_for(shape: tuple[int, int], spacing: tuple[float, float], parameters
         f"{parameters.wind_speed * drift / 1000.0:.0f} km needs so much room around it that it would have "
         f"{found[0]} x {found[1]}. Use cells of {spacing[0] * factor:.0f} m or more."
     )
+
+
+def fast_length(least: int) -> int:
+    """Smallest length with no prime factor above 5: at these the transform is fast.
+
+    Parameters
+    ----------
+    least : int
+        1 or more.
+
+    Returns
+    -------
+    int
+        `least` or a little more.
+
+    Examples
+    --------
+    >>> fast_length(1001), fast_length(1024)
+    (1024, 1024)
+    """
+    best = 1 << max(least - 1, 0).bit_length()
+    five = 1
+    while five < best:
+        odd = five
+        while odd < best:
+            rest = -(-least // odd)
+            best = min(best, odd << max(rest - 1, 0).bit_length())
+            odd *= 3
+        five *= 5
+    return best
 
 
 def padded_ground(ground: Array, padding: Padding, parameters: RainParameters) -> Array:

@@ -16,6 +16,7 @@ if TYPE_CHECKING:
     Spectrum = NDArray[np.complex128]
 
 WORKERS = 2
+SMALL = 2**21  # cells up to which numpy transforms: loading scipy would cost more than its threads gain
 _BLOCK = 16_384  # wavenumbers worked on at a time: the temporaries then stay in the processor's cache
 _TINY = 1e-300
 
@@ -91,10 +92,14 @@ def spectrum_of(ground: Array) -> Spectrum:
     ndarray of complex, shape (ny, nx // 2 + 1)
         Without the waves of two cells' length, whose sign of travel is undefined.
     """
-    from scipy import fft
-
-    spectrum: Spectrum = fft.rfft2(ground, workers=WORKERS)
     ny, nx = ground.shape
+    spectrum: Spectrum
+    if ground.size <= SMALL:
+        spectrum = np.fft.rfft2(ground)
+    else:
+        from scipy import fft
+
+        spectrum = fft.rfft2(ground, workers=WORKERS)
     if nx % 2 == 0:
         spectrum[:, -1] = 0.0
     if ny % 2 == 0:
@@ -128,11 +133,9 @@ def rain_from_spectrum(
     ndarray, shape (ny, nx) [kg m-2 s-1]
         Negative where descent dries; the mean is zero.
     """
-    from scipy import fft
-
     ny, nx = shape
     k = np.arange(nx // 2 + 1, dtype=np.float64) * (2.0 * np.pi / (nx * spacing[0]))
-    rows = np.asarray(2.0 * np.pi * fft.fftfreq(ny, -spacing[1]), dtype=np.float64)  # rows run southward
+    rows = np.asarray(2.0 * np.pi * np.fft.fftfreq(ny, -spacing[1]), dtype=np.float64)  # rows run southward
     out = np.empty_like(spectrum) if keep else spectrum
     step = max(1, _BLOCK // k.size)
 
@@ -142,6 +145,10 @@ def rain_from_spectrum(
 
     with ThreadPoolExecutor(WORKERS) as pool:
         list(pool.map(work, range(0, ny, step)))
+    if ny * nx <= SMALL:
+        return np.asarray(np.fft.irfft2(out, s=shape), dtype=np.float64)
+    from scipy import fft
+
     rain: Array = fft.irfft2(out, s=shape, workers=WORKERS, overwrite_x=True)
     return rain
 

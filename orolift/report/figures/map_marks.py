@@ -7,8 +7,8 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from orolift.report.figures.axes import round_step
-from orolift.report.figures.contours import contour_lines
 from orolift.report.figures.drawing import Curve, Label, arrow_head, path_data
+from orolift.report.figures.map_contours import rain_lines
 from orolift.report.figures.map_ground import frame_box, on_drawing
 from orolift.report.figures.pins import shortened
 from orolift.report.figures.placing import Board, Box, box_of, meet, put, text_width, with_taken
@@ -188,13 +188,14 @@ def _led(x: float, y: float, text: str, kind: str, board: Board) -> tuple[tuple[
 
 def _crosses(board: Board, x: float, y: float, end_x: float, end_y: float) -> bool:
     """Whether a line from a point outward crosses what was placed before, its own mark apart."""
+    if not board.taken:
+        return False
     away = float(np.hypot(end_x - x, end_y - y))
-    share = np.linspace(min(2.0 * GAUGE / max(away, 1.0), 1.0), 1.0, 24)
-    return any(
-        meet(Box(at_x - 1.0, at_y - 1.0, at_x + 1.0, at_y + 1.0), box)
-        for at_x, at_y in zip(x + share * (end_x - x), y + share * (end_y - y), strict=True)
-        for box in board.taken
-    )
+    share = np.linspace(min(2.0 * GAUGE / max(away, 1.0), 1.0), 1.0, 24)[:, np.newaxis]
+    at_x, at_y = x + share * (end_x - x), y + share * (end_y - y)
+    left, top, right, bottom = np.array([(box.left, box.top, box.right, box.bottom) for box in board.taken]).T
+    covered = (at_x > left - 1.0) & (at_x < right + 1.0) & (at_y > top - 1.0) & (at_y < bottom + 1.0)
+    return bool(covered.any())
 
 
 def catchment_names(rain: MapRain, ground: Ground, board: Board) -> tuple[tuple[Curve, ...], tuple[Label, ...], Board]:
@@ -246,14 +247,14 @@ def _inside(drawn: Any, text: str, letter: float) -> list[tuple[Label, ...]]:
 
 
 def rain_contours(
-    field: tuple[Array, Array, Array], levels: list[float], board: Board, units: Units
+    made: Any, levels: list[float], board: Board, units: Units
 ) -> tuple[tuple[Curve, ...], tuple[Label, ...], Board]:
     """Lines of equal rain, the longest of each level lettered where there is room.
 
     Parameters
     ----------
-    field : (ndarray, ndarray, ndarray), shapes (n,), (n, m), (n, m)
-        Columns, rows by column and rate by column [kg m-2 s-1]; drawing coordinates.
+    made : contourpy ContourGenerator
+        Of the rate [kg m-2 s-1], in drawing coordinates.
     levels : list of float [kg m-2 s-1]
     board : Board
     units : 'metric' or 'us'
@@ -265,13 +266,13 @@ def rain_contours(
     curves: list[Curve] = []
     labels: tuple[Label, ...] = ()
     for level in levels:
-        lines = contour_lines(*field, level)
+        lines = rain_lines(made, level)
         curves += [Curve(path_data(*line), "rain-contour") for line in lines]
         shown = displayed(level, "rain_rate", units)
         digits = 0 if units == "metric" and abs(shown - round(shown)) < 1e-9 else 1
         text = quantity(level, "rain_rate", digits, units)
         spots = []
-        for x, y in sorted(lines, key=lambda line: -line[0].size)[:4]:
+        for x, y in lines[:4]:
             for share in (0.5, 0.3, 0.7, 0.15, 0.85):
                 i = min(int(share * x.size), x.size - 1)
                 at = (round(float(x[i]), 1), round(float(y[i]) + 0.3 * board.letter, 1))

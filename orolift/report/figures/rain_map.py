@@ -9,8 +9,8 @@ import numpy as np
 
 from orolift.rain.windward import divide_points
 from orolift.report.figures.axes import Layout, round_step
-from orolift.report.figures.contours import contour_body
 from orolift.report.figures.drawing import Curve, Figure, Label, Pin, arrow_head, path_data, thinned
+from orolift.report.figures.map_contours import contours_of, rain_layer
 from orolift.report.figures.map_ground import Ground, frame_box, ground_of, on_drawing, outline, parts_of
 from orolift.report.figures.map_marks import MOST_NAMES, catchment_names, corner_marks, gauge_marks, rain_contours
 from orolift.report.figures.pins import ASIDE, Spot, pins
@@ -31,7 +31,7 @@ if TYPE_CHECKING:
 WIDE_PAGE, NARROW_PAGE = (960.0, 878.0, 620.0, 14.0), (344.0, 328.0, 430.0, 12.5)
 """Width of the drawing, most width and most height of the map, height of the lettering."""
 PICTURE_POINTS = {"wide": 400, "narrow": 200}
-CONTOUR_CELLS = 200
+CONTOUR_CELLS = 120
 """Cells along the longer side that rain is contoured on."""
 STEPS = 5
 """About how many steps of rain there are."""
@@ -149,7 +149,7 @@ def _drawing(
     frame = ground.frame
     layout = Layout(name, width, height, frame.left, frame.right, frame.top, frame.bottom, letter, 0)
     levels = _levels(mapped.rain, units)
-    field = _field(mapped.rain, ground)
+    made = contours_of(*_field(mapped.rain, ground))
     line, swath = _line(mapped, ground)
     borders, outlines = _borders(mapped.rain, ground)
     points = [line, *outlines]
@@ -163,16 +163,14 @@ def _drawing(
     placed, board = pins(_spots(crossing, mapped, ground), board, ASIDE, names=name == "wide")
     gauges, words, board = gauge_marks(mapped.rain, ground, board, units)
     leaders, known, board = catchment_names(mapped.rain, ground, board)
-    contours, values, _ = rain_contours(field, levels, board, units)
+    contours, values, _ = rain_contours(made, levels, board, units)
     return RainMapDrawing(
         layout=layout,
         relief=relief(mapped.rain.found.grid, PICTURE_POINTS[name]),
         frame=frame,
         width=round(frame.right - frame.left, 1),
         height=round(frame.bottom - frame.top, 1),
-        layers=tuple(
-            body for level in levels if (body := contour_body(*field, level, frame.top, "rain-layer")) is not None
-        ),
+        layers=tuple(layer for level in levels if (layer := rain_layer(made, level, "rain-layer")) is not None),
         contours=contours,
         swath=swath,
         borders=borders,
@@ -194,13 +192,13 @@ def _levels(rain: MapRain, units: Units) -> list[float]:
 
 
 def _field(rain: MapRain, ground: Ground) -> tuple[Array, Array, Array]:
-    """Columns, and rows and rates by column, on cells coarse enough to draw."""
+    """Columns, rows and rates on cells coarse enough to draw."""
     grid = rain.found.grid
     step = max(1, -(-max(grid.elevation.shape) // CONTOUR_CELLS))
     rate = block_means(np.nan_to_num(rain.found.rate), step)
     x = block_means(np.tile(grid.x, (step, 1)), step)[0]
     y = block_means(np.tile(grid.y[:, np.newaxis], (1, step)), step)[:, 0]
-    return ground.across(x), np.tile(ground.down(y), (x.size, 1)), np.ascontiguousarray(rate.T)
+    return ground.across(x), ground.down(y), rate
 
 
 def _line(mapped: Mapped, ground: Ground) -> tuple[tuple[Array, Array], tuple[Curve, ...]]:
