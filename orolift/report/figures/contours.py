@@ -1,4 +1,4 @@
-"""Contours of a field on the streamlines, in drawing coordinates: the only import of contourpy."""
+"""Contours of a field on the streamlines, in drawing coordinates; those of the map have a module of their own."""
 
 from __future__ import annotations
 
