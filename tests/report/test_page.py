@@ -92,6 +92,9 @@ def test_temperature_carries_the_range_of_its_ends(page_for, named):
     values = [site.temperature, site.no_blocking.temperature, site.full_blocking.temperature]
     assert (low, high) == (min(values), max(values))
     assert text_of((number.amount, *number.span)).count("°C") == 1
+    warmest = max(values) + 1.0  # an answer beyond its ends still lies in its range
+    beyond = page_for(warmed(named("blocked"), temperature=warmest)).briefing.key_numbers[0].span
+    assert [amount.value for amount in amounts_in(beyond)] == [min(values[1:]), warmest]
     assert ends_of(site) == (site.no_blocking, site.full_blocking)
     assert not page_for(named("no cloud")).briefing.key_numbers[0].span
 
@@ -240,6 +243,8 @@ def test_answers_hold_the_values_of_their_sites(page_for, any_crossing):
             assert row.full_blocking_dew_point is None
         else:
             assert row.no_blocking.value == site.no_blocking.temperature
+            assert row.full_blocking.value == site.full_blocking.temperature
+            assert row.no_blocking_dew_point.value == site.no_blocking.dew_point
             assert row.full_blocking_dew_point.value == site.full_blocking.dew_point
 
 
