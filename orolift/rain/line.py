@@ -26,7 +26,7 @@ SAME_TOTAL = 0.15  # of the crossing's rain: two estimates nearer to each other 
 SAME_SHARE = 0.1  # of all rain: windward shares nearer to each other agree (a judgement)
 MUCH_LOST = 0.1  # of the falling water: less evaporation needs no sentence (a judgement)
 HARDLY_STABLE = 0.5  # of the wind over stability times vapour height: uplift then reaches through the moist layer
-NO_RAIN = 1e-9  # [kg m-1 s-1]
+NO_RAIN = 0.05 / 3600.0  # [kg m-2 s-1] peaks below it read as 0.0 mm/h and count as none
 
 
 @dataclass(frozen=True, eq=False)
@@ -162,18 +162,18 @@ def line_rain(crossing: Crossing, found: RainMap, column: ColumnRain, line: MapL
     rate = np.maximum(whole - background, 0.0)
     falling = np.nan_to_num(rate) * steps_across(crossing)
     total = float(falling.sum())
-    wet = total > NO_RAIN
+    wet = float(np.nanmax(rate, initial=0.0)) >= NO_RAIN
     windward = crossing.distance <= crossing.features.crest_distance
     share = float(falling[windward].sum() / total) if wet else None
     peak = int(np.argmax(np.nan_to_num(whole)))
-    own = crossing.rain.total
+    own = crossing.rain.total if _rains(crossing) else None
     return LineRain(
         rate=rate,
         total=total,
         windward_share=share,
         peak_rate=float(np.nan_to_num(whole)[peak]),
         peak_distance=float(crossing.distance[peak]) if wet else None,
-        ratio=total / own if wet and own > NO_RAIN else None,
+        ratio=total / own if wet and own is not None else None,
         difference=_difference(crossing, found, column, total, share),
     )
 
@@ -183,8 +183,8 @@ def _difference(
 ) -> tuple[str, ...]:
     """How far the two are apart, and why."""
     own, own_share = crossing.rain.total, crossing.rain.windward_share
-    if share is None or own_share is None or own <= NO_RAIN:
-        if share is None and own_share is None:
+    if share is None or own_share is None or not _rains(crossing):
+        if share is None and not _rains(crossing):
             return ("Neither the crossing nor the map has rain on the line.",)
         other = "crossing" if share is None else "map"
         return (
@@ -204,6 +204,11 @@ def _difference(
         *(_why_elsewhere(crossing, found, share - own_share) if apart[1] else ()),
     )
     return (said, *reasons)
+
+
+def _rains(crossing: Crossing) -> bool:
+    """Whether a crossing has rain to speak of."""
+    return float(crossing.rain.rate.max(initial=0.0)) >= NO_RAIN
 
 
 def _why_more_or_less(crossing: Crossing, found: RainMap, column: ColumnRain, ratio: float) -> Iterator[str]:

@@ -12,7 +12,7 @@ from orolift.rain.estimates import SimpleEstimates, simple_estimates
 from orolift.rain.gauge_fit import RainFit, fit_to_gauges
 from orolift.rain.gauges import GaugeComparison, Gauges, gauge_comparison
 from orolift.rain.limits import limits_of_theory
-from orolift.rain.line import LineRain, MapLine, line_rain
+from orolift.rain.line import NO_RAIN, LineRain, MapLine, line_rain
 from orolift.rain.parameters import ColumnRain, column_rain
 from orolift.rain.rain_map import RainMap, map_drying_ratio, rain_map
 from orolift.rain.snow import SnowByHeight, snow_by_height, snow_on_ground
@@ -29,6 +29,7 @@ if TYPE_CHECKING:
     Array = NDArray[np.float64]
 
 BELOW_COLUMN = 2900.0  # [m] how far below its ground the column is continued for the snow of lower ground
+STEP = 200.0  # [m] of the elevation bands
 HOUR = 3600.0
 
 
@@ -145,6 +146,11 @@ class MapRain:
     notes: tuple[str, ...]
 
     @property
+    def is_dry(self) -> bool:
+        """Whether no rain to speak of falls anywhere on the map."""
+        return self.peak_rate < NO_RAIN
+
+    @property
     def rain(self) -> Array:
         """Rain on the map, snow left out, shape (ny, nx) [kg m-2 s-1]."""
         return np.asarray(self.found.rate * (1.0 - self.snow_share))
@@ -238,7 +244,7 @@ def map_rain(
         snow=snow,
         snow_share=snow_share,
         snowing_share=float(np.nansum(found.rate * snow_share)) / falling if falling > 0.0 else None,
-        bands=elevation_bands(_frame(grid, found.spacing), grid, found.rate, snow_share),
+        bands=elevation_bands(_frame(grid, found.spacing), grid, found.rate, snow_share, step=STEP),
         line=line,
         on_line=on_line,
         estimates=simple_estimates(crossing, column, on_line, reference=reference, north=north),
@@ -251,6 +257,24 @@ def map_rain(
         limits=_limits(crossing, found, column, north),
         notes=(*column.notes, *found.notes, *border.notes),
     )
+
+
+def bands_of_map(rain: MapRain, step: float) -> ElevationBands | None:
+    """Rain and snow of the whole map by height of the ground, in bands of another height.
+
+    Parameters
+    ----------
+    rain : MapRain
+    step : float [m]
+        10 m to 2000 m.
+
+    Returns
+    -------
+    ElevationBands or None
+        None where the map has no ground.
+    """
+    found = rain.found
+    return elevation_bands(_frame(found.grid, found.spacing), found.grid, found.rate, rain.snow_share, step=step)
 
 
 def _limits(crossing: Crossing, found: RainMap, column: ColumnRain, north: float) -> tuple[str, ...]:

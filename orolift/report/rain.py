@@ -6,7 +6,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from orolift.rain.winter import bands_of_sides
-from orolift.report.quantities import Amount
+from orolift.report.quantities import Amount, Units, from_displayed
 from orolift.report.story import fallen_share, rains, removal_words, snow_words
 from orolift.report.words import fraction_in_words, sentence
 
@@ -52,7 +52,7 @@ class RainOnLine:
     rows: tuple[BandRow, ...]
 
 
-def rain_on_line(crossing: Crossing, flags: tuple[str, ...] = ()) -> RainOnLine:
+def rain_on_line(crossing: Crossing, flags: tuple[str, ...] = (), units: Units = "metric") -> RainOnLine:
     """Rain along the line of a crossing.
 
     Parameters
@@ -60,6 +60,8 @@ def rain_on_line(crossing: Crossing, flags: tuple[str, ...] = ()) -> RainOnLine:
     crossing : Crossing
     flags : tuple of str
         From `orolift.rain.winter.winter_flags`.
+    units : 'metric' or 'us'
+        In which the bands of height are round.
 
     Returns
     -------
@@ -70,7 +72,7 @@ def rain_on_line(crossing: Crossing, flags: tuple[str, ...] = ()) -> RainOnLine:
         heading=_heading(crossing),
         flags=flags,
         sentences=_sentences(crossing),
-        rows=_rows(crossing) if falls else (),
+        rows=_rows(crossing, band_step(units)) if falls else (),
     )
 
 
@@ -123,9 +125,14 @@ def _sentences(crossing: Crossing) -> tuple[Words, ...]:
     return tuple(out)
 
 
-def _rows(crossing: Crossing) -> tuple[BandRow, ...]:
+def band_step(units: Units) -> float:
+    """Height of a band of elevation [m] that is round in the units of the page."""
+    return from_displayed(200.0 if units == "metric" else 500.0, "height", units)
+
+
+def _rows(crossing: Crossing, step: float) -> tuple[BandRow, ...]:
     """Both sides of each band, from the lowest up."""
-    bands = {(band.lower, band.side): band for band in bands_of_sides(crossing)}
+    bands = {(band.lower, band.side): band for band in bands_of_sides(crossing, step=step)}
     rows = []
     for lower in sorted({low for low, _ in bands}):
         windward, lee = bands.get((lower, "windward")), bands.get((lower, "lee"))

@@ -6,10 +6,13 @@ import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from orolift.report.quantities import Amount
+from orolift.rain.over_map import bands_of_map
+from orolift.report.quantities import Amount, Units
+from orolift.report.rain import band_step
 from orolift.report.words import counted, fraction_in_words, sentence
 
 if TYPE_CHECKING:
+    from orolift.rain.catchments import ElevationBands
     from orolift.rain.gauge_fit import Fitted, RainFit
     from orolift.rain.over_map import MapRain, RainOnCatchment
     from orolift.report.words import Words
@@ -82,6 +85,7 @@ class RainOverMap:
     gauge_sentences : tuple of Words
     estimates : tuple of EstimateRow
     bands : tuple of BandRow
+        Both empty where no rain to speak of falls.
     duration : Amount or None
         Of the totals; None where there are none.
     """
@@ -98,12 +102,14 @@ class RainOverMap:
     duration: Amount | None
 
 
-def rain_over_map(mapped: Mapped) -> RainOverMap:
+def rain_over_map(mapped: Mapped, units: Units = "metric") -> RainOverMap:
     """Rain over the map of a crossing.
 
     Parameters
     ----------
     mapped : Mapped
+    units : 'metric' or 'us'
+        In which the bands of height are round.
 
     Returns
     -------
@@ -118,8 +124,8 @@ def rain_over_map(mapped: Mapped) -> RainOverMap:
         catchments=tuple(_catchment(one) for one in rain.catchments),
         gauges=_gauges(rain),
         gauge_sentences=(*_comparison(rain), *_fit(rain.fit)),
-        estimates=_estimates(rain),
-        bands=_bands(rain),
+        estimates=() if rain.is_dry else _estimates(rain),
+        bands=() if rain.is_dry else _bands(bands_of_map(rain, band_step(units))),
         duration=_duration(rain) if rain.catchments or rain.gauges is not None else None,
     )
 
@@ -129,8 +135,8 @@ def _duration(rain: MapRain) -> Amount:
 
 
 def _heading(rain: MapRain) -> Words:
-    if rain.windward_share is None:
-        return ("No rain falls anywhere on the map",)
+    if rain.windward_share is None or rain.is_dry:
+        return ("No rain to speak of falls anywhere on the map",)
     part = f"{fraction_in_words(rain.windward_share)} of the rain on the map"
     most: Words = (" falls on the windward side; the most is ", Amount(rain.peak_rate, "rain_rate", 1))
     return (*sentence((part,)), *most)
@@ -164,7 +170,7 @@ def _sentences(rain: MapRain, north: float) -> tuple[Words, ...]:
         Amount(rain.snow.melting_level, "height", -1),
         ".",
     )
-    return (theory, floor, *((snow,) if rain.snowing_share else ()))
+    return (theory, floor, *((snow,) if rain.snowing_share and not rain.is_dry else ()))
 
 
 def _catchment(one: RainOnCatchment) -> CatchmentRow:
@@ -296,8 +302,7 @@ def _estimates(rain: MapRain) -> tuple[EstimateRow, ...]:
     )
 
 
-def _bands(rain: MapRain) -> tuple[BandRow, ...]:
-    found = rain.bands
+def _bands(found: ElevationBands | None) -> tuple[BandRow, ...]:
     if found is None:
         return ()
     rows = []

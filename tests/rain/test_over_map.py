@@ -15,10 +15,11 @@ from orolift.crossing.result import Site
 from orolift.crossing.settings import Settings
 from orolift.errors import OutOfRangeError, TerrainError
 from orolift.rain.gauges import gauges_at
-from orolift.rain.line import MapLine
+from orolift.rain.line import MapLine, line_cosine, steps_across
 from orolift.rain.over_map import Catchment, map_rain
 from orolift.rain.winter import bands_of_sides, winter_flags
 from orolift.terrain.grid import ElevationGrid
+from orolift.terrain.range_normal import RangeNormal
 from orolift.terrain.transect import Transect
 
 HEIGHT, WIDTH = 1500.0, 12e3
@@ -125,6 +126,13 @@ def test_two_estimates_side_by_side(crossing, over):
     assert int(told[2]) == pytest.approx(100.0 * line.windward_share, abs=0.5)
     assert int(told[3]) == pytest.approx(100.0 * crossing.rain.windward_share, abs=0.5)
     assert len(line.difference) > 1
+
+
+def test_the_steps_of_the_line_hold_all_its_rain():
+    """Conservation: rate times the steps across the range is the total, also where the line is oblique to it."""
+    oblique = crossed(normal=RangeNormal(np.pi / 2 + np.radians(35.0), 1.0))
+    assert line_cosine(oblique) == pytest.approx(np.cos(np.radians(35.0)))
+    assert (oblique.rain.rate * steps_across(oblique)).sum() == pytest.approx(oblique.rain.total, rel=1e-9)
 
 
 def test_background_adds_to_totals_and_not_to_the_line(crossing, over):

@@ -328,3 +328,27 @@ def test_layouts_share_the_axis_of_the_section():
 
     for one, other in ((WIDE, section.WIDE), (NARROW, section.NARROW)):
         assert (one.left, one.right, one.width) == (other.left, other.right, other.width)
+
+
+def test_a_dry_map_is_words_only(page_for, over):
+    """Rain that reads as 0.0 mm/h everywhere: no drawing, no tables of zeros, and it is said."""
+    crossing, mapped = over
+    rate = mapped.rain.found.rate * 0.04 / 3600.0 / mapped.rain.peak_rate
+    found = replace(mapped.rain.found, rate=rate)
+    dry = replace(mapped, rain=replace(mapped.rain, found=found, peak_rate=float(rate.max())))
+    page = page_for(crossing, mapped=dry)
+    assert page.rain_map is None
+    assert "No rain to speak of" in plain(page.rain_over_map.heading, "metric")
+    ids = read(render(page)).ids
+    assert "map" in ids
+    assert "figure-rain-map" not in ids
+    assert "rain-estimates" not in ids
+
+
+def test_bands_are_round_in_the_units_of_the_page(named, over):
+    """Edges are multiples of 200 m, or of 500 ft."""
+    crossing, mapped = over
+    for units, step in (("metric", 200.0), ("us", 500.0 * 0.3048)):
+        rows = (*rain_on_line(crossing, (), units).rows, *rain_over_map(mapped, units).bands)
+        edges = np.array([row.lower.value for row in rows]) / step
+        np.testing.assert_allclose(edges, np.round(edges), atol=1e-6)

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.rain.line import line_cosine
+from orolift.rain.line import NO_RAIN, line_cosine
 from orolift.report.figures import section
 from orolift.report.figures.axes import Layout, Scale, Tick, distance_scale, level_ticks, place, round_step, ticks
 from orolift.report.figures.drawing import Curve, Figure, Label, area, polyline, thinned
@@ -90,7 +90,7 @@ def rain_line(crossing: Crossing, on_map: LineRain | None, units: Units) -> Figu
     """
     whole = crossing.rain.rate + crossing.rain.background
     most = max(float(whole.max()), 0.0 if on_map is None else on_map.peak_rate)
-    if most <= 0.0 or (not rains(crossing) and (on_map is None or on_map.total <= 0.0)):
+    if most < NO_RAIN or (not rains(crossing) and (on_map is None or on_map.windward_share is None)):
         return None
     return Figure(
         key="rain-line",
