@@ -120,7 +120,9 @@ def _heading(crossing: Crossing, site: LeeAir) -> Words:
         return (f"{site.name}: ", here, " if the air breaks through, about ", cold, " if a cold pool stays")
     if site.in_blocked_air:
         return ("Low air is blocked up to ", *blocked_words(crossing)[:1], f"; {site.name} lies in it, at ", here)
-    change = difference(site.warming, "warmer than it came", "cooler than it came", "as warm as it came")
+    change = difference(
+        site.warming, "warmer than the incoming air", "cooler than the incoming air", "as the incoming air"
+    )
     return (*_flow_clause(crossing), f"; {site.name} has ", here, ", ", *change)
 
 
@@ -363,9 +365,8 @@ def _source_number(site: LeeAir) -> KeyNumber:
     words = source_words(site)
     if not words or not isinstance(words[0], Amount):
         return KeyNumber("Its air comes from", None, "the lee itself", (), ("a cold pool that stays",))
-    return KeyNumber(
-        "Its air comes from", words[0], "", words[1:], ("heights eight tenths of it come from, before the range",)
-    )
+    remark = "before the range; eight tenths of it from the heights in brackets" if words[1:] else "its own height"
+    return KeyNumber("Its air comes from", words[0], "", words[1:], (remark,))
 
 
 def _layer_words() -> Words:

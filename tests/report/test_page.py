@@ -47,7 +47,7 @@ def test_briefing_leads_with_the_flow_the_rain_and_the_lee(page_for, crossing):
     heading = text_of(page.briefing.heading)
     assert heading.startswith("The air flows over and ")
     assert "Lower Tarn has " in heading
-    assert heading.endswith("warmer than it came")
+    assert heading.endswith("warmer than the incoming air")
     first, lee, wind = (text_of(words) for words in page.briefing.sentences)
     assert f"N h/U is {crossing.flow.nondimensional_height:.2f}, so the flow " in first
     assert "may also " in first
