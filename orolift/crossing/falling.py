@@ -245,7 +245,7 @@ def _rained(
     from_above = np.concatenate([down[:, 1:], np.zeros_like(down[:, :1])], axis=-1)
     kept = falling + (from_above - down) / carried
     left = Parcel(parcel.pressure, t, parcel.vapour, parcel.cloud - turned)
-    lost = _evaporation(left, kept, time, depth, freezing=freezing)
+    lost = _evaporation(left, kept, time, freezing=freezing)
     # Enthalpy: what came from above was at the temperature of the layer above; what was here, and its own cloud, at t.
     above = np.concatenate([t[:, 1:], t[:, -1:]], axis=-1)
     heat = enthalpy(parcel, freezing=freezing) + before.falling * _falling_enthalpy(
@@ -316,13 +316,12 @@ def _falling_enthalpy(temperature: Array, *, freezing: bool) -> Array:
     return np.asarray((1.0 - ice) * HEAT_CAPACITY_LIQUID * above + ice * (HEAT_CAPACITY_ICE * above - fusion))
 
 
-def _evaporation(air: Parcel, falling: Array, time: Array, depth: Array, *, freezing: bool) -> Array:
+def _evaporation(air: Parcel, falling: Array, time: Array, *, freezing: bool) -> Array:
     """Falling water that evaporates in a step, never so much that the air saturates.
 
     Klemp and Wilhelmson (1978), in cgs units as printed: ``C = 1.6 + 124.9 (rho q)^0.2046``, rate
     ``(1 - v / vs) C (rho q)^0.525 / (rho (5.4e5 + 2.55e6 / (p vs)))``, rho in g cm-3, p in hPa.
     """
-    del depth  # the rate is per volume; the layer's depth does not enter
     saturation = saturation_mixing_ratio(air.pressure, air.temperature, freezing=freezing)
     lack = np.where(air.cloud > 0.0, 0.0, np.maximum(1.0 - air.vapour / saturation, 0.0))
     rho = 1e-3 * air.pressure * EPSILON / ((air.vapour + EPSILON) * R_DRY * air.temperature)
