@@ -17,6 +17,7 @@ from orolift.errors import CaseError
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
+    from orolift.crossing.situation import Situation
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
@@ -30,6 +31,7 @@ class Worked:
     """One case worked out."""
 
     inputs: Inputs
+    situation: Situation
     crossing: Crossing
     mapped: Mapped | None
     flags: tuple[str, ...]
@@ -101,31 +103,19 @@ def command(
 
 def work_out(case: str, files: RainFiles | None = None) -> Worked:
     """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
-    from orolift.crossing.crossing import cross
-    from orolift.sources.inputs import read_inputs
+    from orolift.crossing.situation import crossing_of
+    from orolift.sources.inputs import read_inputs, situation_of
     from orolift.sources.results import results_of
-    from orolift.sources.units import to_si
 
     inputs = read_inputs(case)
+    situation = situation_of(inputs)
     log.debug("%s read", case)
     files = files or RainFiles()
     refuse_what_cannot_be(files, inputs)
     needed = files.maps is not None
     found, doubts = map_inputs_of(inputs, needed=needed)
     try:
-        crossing = cross(
-            inputs.transect,
-            inputs.incoming,
-            inputs.sites,
-            inputs.settings,
-            lee=inputs.lee,
-            when=inputs.when,
-            normal=inputs.normal,
-            lowest_pass=inputs.case.terrain.pass_m,
-            crest_line=inputs.crest_line,
-            stagnant_top=stagnant_top(inputs),
-            background=to_si(inputs.case.rain.background_mm_per_h, "mm_per_h"),
-        )
+        crossing = crossing_of(situation)
     except ValueError as error:
         error.args = (f"{case}: {error}",)
         raise
@@ -138,7 +128,7 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    return Worked(inputs, crossing, mapped, flags, results_of(crossing, inputs.case, mapped, flags))
+    return Worked(inputs, situation, crossing, mapped, flags, results_of(crossing, inputs.case, mapped, flags))
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -151,12 +141,6 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
         grid=None if mapped is None else mapped.inputs.placed.grid,
         rain_on_map=None if mapped is None else mapped.rain.rain,
     )
-
-
-def stagnant_top(inputs: Inputs) -> float | None:
-    """Top of the stagnant layer at the ground of the incoming column, None where there is none."""
-    depth = inputs.ground_layer.depth
-    return float(inputs.incoming.height[0]) + depth if depth > 0.0 else None
 
 
 def report_of(worked: Worked, units: Units) -> str:
@@ -179,7 +163,7 @@ def report_of(worked: Worked, units: Units) -> str:
         mapped=worked.mapped,
         flags=worked.flags,
         findings=worked.inputs.findings,
-        stagnant_top=stagnant_top(worked.inputs),
+        stagnant_top=worked.situation.stagnant_top,
     )
     html = render(page)
     log.debug("report rendered, %d kB", len(html) // 1024)

@@ -14,6 +14,7 @@ from orolift.air.ground_layer import NO_GROUND_LAYER, GroundLayer, ground_layer
 from orolift.crossing.pool import Lee
 from orolift.crossing.result import Site, When
 from orolift.crossing.settings import Settings
+from orolift.crossing.situation import Situation
 from orolift.errors import CaseError, OroliftError
 from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
@@ -120,6 +121,33 @@ def read_inputs(path: str | Path) -> Inputs:
         if str(error).startswith(str(path)):
             raise
         raise CaseError(f"{path}: {error}") from error
+
+
+def situation_of(inputs: Inputs) -> Situation:
+    """What the crossing of a case takes.
+
+    Parameters
+    ----------
+    inputs : Inputs
+
+    Returns
+    -------
+    Situation
+    """
+    depth = inputs.ground_layer.depth
+    return Situation(
+        inputs.transect,
+        inputs.incoming,
+        inputs.sites,
+        inputs.settings,
+        lee=inputs.lee,
+        when=inputs.when,
+        normal=inputs.normal,
+        lowest_pass=inputs.case.terrain.pass_m,
+        crest_line=inputs.crest_line,
+        stagnant_top=float(inputs.incoming.height[0]) + depth if depth > 0.0 else None,
+        background=to_si(inputs.case.rain.background_mm_per_h, "mm_per_h"),
+    )
 
 
 def _inputs(case: Case, path: Path, text: str) -> Inputs:
