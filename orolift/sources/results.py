@@ -13,6 +13,7 @@ from orolift import __version__
 from orolift.air.column import column_vapour, freezing_level
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.constants import MELTING_POINT
+from orolift.sources.fire_results import FireBlock, fire_blocks
 from orolift.sources.rain_results import (
     CatchmentBlock,
     GaugesBlock,
@@ -26,6 +27,7 @@ from orolift.sources.units import UNITS
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
+    from orolift.fire.sites import SiteFire
     from orolift.sources.case_model import Case
     from orolift.sources.map_inputs import Mapped
 
@@ -163,7 +165,7 @@ class Results(Block):
     lee: list[LeeBlock]
     catchments: list[CatchmentBlock]
     gauges: GaugesBlock | None = Field(description="map against gauges; null without gauges")
-    fire: list[dict[str, float]] = Field(description="indices by site; empty until worked out")
+    fire: list[FireBlock] = Field(description="fire weather by site")
     flags: list[str]
     cautions: list[str]
     notes: list[str] = Field(description="assumptions made, in sentences")
@@ -174,7 +176,13 @@ def celsius(kelvin: float) -> float:
     return float(kelvin) - UNITS["c"].offset
 
 
-def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, flags: tuple[str, ...] = ()) -> Results:
+def results_of(
+    crossing: Crossing,
+    case: Case,
+    mapped: Mapped | None = None,
+    flags: tuple[str, ...] = (),
+    fire: tuple[SiteFire, ...] = (),
+) -> Results:
     """Results of a crossing, unrounded.
 
     Parameters
@@ -185,6 +193,8 @@ def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, fla
         Rain over the map.
     flags : tuple of str
         Danger thresholds reached, in sentences.
+    fire : tuple of SiteFire
+        Fire weather at the sites.
 
     Returns
     -------
@@ -209,7 +219,7 @@ def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, fla
         lee=[_lee(site, crossing) for site in crossing.lee],
         catchments=[] if mapped is None else catchment_blocks(mapped.rain),
         gauges=None if mapped is None else gauges_block(mapped.rain),
-        fire=[],
+        fire=fire_blocks(fire),
         flags=[*flags],
         cautions=[*crossing.cautions],
         notes=[*crossing.notes],
