@@ -200,7 +200,7 @@ def page_of(
         answers=answers(crossing),
         answers_figure=answers_figure(crossing, units),
         lee_wind=lee_wind(crossing),
-        inputs=inputs(crossing, bearing, freezing, case_text),
+        inputs=inputs(crossing, bearing, freezing, case_text, units),
         column=column(crossing, stagnant_top, units),
         findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),
         method=method(),
