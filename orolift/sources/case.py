@@ -96,7 +96,7 @@ def _place(loc: tuple[int | str, ...]) -> str:
     """Location as a person would look for it: ``[incoming] station.temperature_c``."""
     if not loc:
         return ""
-    tables = set(Case.model_fields) - {"title", "valid_time"}
+    tables = set(Case.model_fields) - {"title", "valid_time", "sites_file"}
     first, rest = str(loc[0]), [f"item {part + 1}" if isinstance(part, int) else part for part in loc[1:]]
     head = f"[{first}]" if first in tables else first
     if rest and rest[0].startswith("item "):
