@@ -11,7 +11,7 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.options import QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
 from orolift.errors import CaseError
 
@@ -50,6 +50,8 @@ class Worked:
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -59,6 +61,8 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
+    jobs: int | None,
+    scheduler: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
@@ -71,12 +75,12 @@ def command(
             if value is not None and option != "--maps":
                 raise CaseError(f"{option} takes one case, and {len(cases)} are given. Run it once for each case.")
     from orolift.sources.files import csv_text, write_all
-    from orolift.sources.results import site_rows
+    from orolift.sources.site_table import site_rows
 
     contents: dict[Path, bytes] = {}
     summaries = []
     for case in cases:
-        worked = work_out(case, files)
+        worked = work_out(case, files, Work(jobs, scheduler, quiet))
         page = Path(report) if report else Path(f"{Path(case).stem}.html")
         if page in contents:
             raise CaseError(f"{case}: another case of this run already writes {page}. Give the cases different names.")
@@ -104,7 +108,16 @@ def command(
             )
 
 
-def work_out(case: str, files: RainFiles | None = None) -> Worked:
+@dataclass(frozen=True)
+class Work:
+    """Where many crossings are worked out, and whether progress is shown; as for `orolift.cli.executors`."""
+
+    jobs: int | None = None
+    scheduler: str | None = None
+    quiet: bool = True
+
+
+def work_out(case: str, files: RainFiles | None = None, work: Work | None = None) -> Worked:
     """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import read_inputs, situation_of
@@ -123,6 +136,11 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
+    if inputs.case.terrain.elevation_file is not None:
+        from orolift.cli.site_lines import with_own_lines
+
+        work = work or Work()
+        crossing = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -133,7 +151,7 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
     flags = flags_of(inputs, crossing, mapped)
     fire, reached, to_know = fire_of(inputs, crossing)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
-    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire)
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
     return Worked(inputs, situation, crossing, mapped, flags, fire, results)
 
 

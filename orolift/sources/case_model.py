@@ -181,6 +181,7 @@ class Case(Table):
     catchments: Catchments | None = None
     gauges: GaugesTable | None = None
     fire: Fire | None = None
+    sites_file: Name | None = Field(default=None, description="more sites: CSV, or GeoJSON points with a raster")
     site: list[SiteTable] = Field(default_factory=list)
 
     @field_validator("valid_time")
