@@ -76,7 +76,7 @@ def test_indices_are_those_of_the_air_at_the_site(crossing, found):
 def test_layer_begins_with_the_pressure_of_the_site(crossing):
     """Hydrostatic above it, near the crossing's own pressure a kilometre up."""
     air = crossing.lee[0]
-    weather = site_weather(crossing, air)
+    weather = site_weather(air)
     pressure = layer_pressure(weather)
     assert pressure[0] == pytest.approx(air.pressure)
     place = int(np.argmin(np.abs(crossing.distance - air.distance)))
