@@ -88,11 +88,11 @@ def test_marks_a_threshold_that_is_met_and_no_other(crossing):
     """The danger mark stands for what is met."""
     given = rules()
     text = section(page(crossing, judged(crossing, given), given))
-    assert 'class="threshold reached"' in text
+    assert text.count('class="danger"') == 4
     given = rules(humidity=0.001)
     text = section(page(crossing, judged(crossing, given), given))
     assert 'class="threshold"' in text
-    assert "reached" not in text
+    assert "danger" not in text
 
 
 def test_says_what_one_hour_cannot_say(crossing):
