@@ -87,8 +87,10 @@ WIND_LIMIT = 0.5
 def test_marks_a_threshold_that_is_met_and_no_other(crossing):
     """The danger mark stands for what is met."""
     given = rules()
-    text = section(page(crossing, judged(crossing, given), given))
-    assert text.count('class="danger"') == 4
+    found = judged(crossing, given)
+    met = [one.judged.status for site in found for one in site.thresholds].count("met")
+    assert met > 0
+    assert section(page(crossing, found, given)).count('class="danger"') == met
     given = rules(humidity=0.001)
     text = section(page(crossing, judged(crossing, given), given))
     assert 'class="threshold"' in text
