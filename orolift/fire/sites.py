@@ -187,10 +187,13 @@ def _values_of(
     values = site_values(together, _indices(together, chosen, ()), rules, roughness, others=others)
     ends = np.cumsum([0, *(site.amounts.size for site in sites)])
     size = int(ends[-1])
+    asked = {condition.quantity for rule in rules for condition in rule.conditions}
     parts: list[tuple[Shifted, dict[str | WindMeant, ArrayLike]]] = []
     for site, low, high in zip(sites, ends[:-1], ends[1:], strict=True):
         own: dict[str | WindMeant, ArrayLike] = {
-            name: np.broadcast_to(np.asarray(value), (size,))[low:high] for name, value in values.items()
+            name: np.broadcast_to(np.asarray(value), (size,))[low:high]
+            for name, value in values.items()
+            if name in asked
         }
         parts.append((site, own))
     return parts

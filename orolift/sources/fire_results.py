@@ -86,7 +86,7 @@ class FireBlock(Block):
     fosberg_index: float | None = Field(description="at most 100")
     fosberg_index_raw: float | None
     fosberg_index_with_drought: float | None
-    hot_dry_windy: float = Field(description="hPa m/s")
+    hot_dry_windy: float | None = Field(description="hPa m/s")
     fine_fuel_code: float | None = Field(description="daily")
     fine_fuel_code_after_1_h: float | None
     fine_fuel_code_after_3_h: float | None
@@ -146,7 +146,7 @@ def _block(site: SiteFire) -> FireBlock:
         fosberg_index=_known(found.fosberg_index),
         fosberg_index_raw=_known(found.fosberg_index_raw),
         fosberg_index_with_drought=_known(found.fosberg_index_with_drought),
-        hot_dry_windy=float(found.hot_dry_windy),
+        hot_dry_windy=_known(found.hot_dry_windy),
         fine_fuel_code=_known(found.fine_fuel_code),
         fine_fuel_code_after_1_h=hours[0],
         fine_fuel_code_after_3_h=hours[1],
