@@ -92,7 +92,7 @@ class _Head:
     code_line: int = 0
 
 
-def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable:
+def number_table(text: str, name: str, allowed: Sequence[Column], *, most_rows: int = MOST_ROWS) -> NumberTable:
     r"""Table of numbers from CSV text with one header line.
 
     Lines that start with ``#`` and blank lines are passed over. Commas,
@@ -104,6 +104,8 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
     name : str
         File, for messages.
     allowed : sequence of Column
+    most_rows : int
+        More rows are refused.
 
     Returns
     -------
@@ -114,7 +116,7 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
     DataFileError
         If a column is unknown, doubled or in a unit of another kind, a row has
         the wrong number of cells, a cell is no number or out of range, commas
-        may be decimal or thousands, or there are more than `MOST_ROWS` rows.
+        may be decimal or thousands, or there are more than `most_rows` rows.
 
     Examples
     --------
@@ -134,9 +136,9 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
         row = _cells(line, separator, where)
         if len(row) != len(heads):
             raise DataFileError(_wrong_width(line, len(row), len(heads), separator, where))
-        if len(line_numbers) == MOST_ROWS:
+        if len(line_numbers) == most_rows:
             raise DataFileError(
-                f"{where}: more than {MOST_ROWS} rows. Is it the right file? If so, keep every tenth row."
+                f"{where}: more than {most_rows} rows. Is it the right file? If so, keep every tenth row."
             )
         for cell, head in zip(row, heads, strict=True):
             if head.usual.text:
