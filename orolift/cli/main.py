@@ -12,6 +12,7 @@ from orolift import __version__
 COMMANDS = {
     "cross": "Work out a crossing and write its report.",
     "check": "Read everything a case names and say what is wrong or doubtful.",
+    "compare": "Hold a crossing against what was observed in the lee.",
     "starter": "Write a small commented case to edit.",
 }
 """Commands and their one-line help; each lives in a module of its name, imported only when it runs."""

@@ -101,7 +101,8 @@ def upwind_error(situation: Situation, place: int, observed: Observed, what: Wha
     -----
     Whole crossings, every other input as given: wind changes blocking, and
     with it the source level; humidity changes cloud and rain. A scan of seven factors, then a bounded
-    search (scipy) between the neighbours of the best one.
+    search (scipy) between the neighbours of the best one. An estimate that
+    is within the tolerance needs no error, and none is looked for.
     """
     found: dict[float, LeeAir] = {}
     refused: list[float] = []
@@ -119,7 +120,7 @@ def upwind_error(situation: Situation, place: int, observed: Observed, what: Wha
 
     before = misfit(1.0)
     factors = WIND_FACTORS if what == "wind" else HUMIDITY_FACTORS
-    scan = [misfit(factor) for factor in factors]
+    scan = [misfit(factor) for factor in factors] if before > 1.0 else [before]
     if max(_finite(scan), default=0.0) - min(_finite(scan)) > SAME:
         _search(misfit, factors, scan)
     best = min(found, key=lambda factor: (_misfit(observed, found[factor]), abs(np.log(factor))))

@@ -15,6 +15,7 @@ from orolift.report.quantities import bare, shown, unit
 from orolift.report.words import plain
 
 if TYPE_CHECKING:
+    from orolift.report.compare import ComparePage
     from orolift.report.page import Page
 
 INLINED = ("style.css", "reading.js")
@@ -49,6 +50,20 @@ def render(page: Page) -> str:
         The same text for the same page, whenever and wherever it is made.
     """
     return _environment().get_template("page.html.jinja").render(page=page)
+
+
+def render_compare(page: ComparePage) -> str:
+    """The page of a comparison as one self-contained HTML file.
+
+    Parameters
+    ----------
+    page : ComparePage
+
+    Returns
+    -------
+    str
+    """
+    return _environment().get_template("compare.html.jinja").render(page=page)
 
 
 @cache

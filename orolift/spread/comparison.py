@@ -284,6 +284,42 @@ def paired(seen: Observations, estimates: Sequence[Estimates], which: NDArray[np
     )
 
 
+def averaged(pairs: Paired) -> tuple[Paired, NDArray[np.int_]]:
+    """One pair for each place and estimate, its observation the mean of all near it, and how many those are.
+
+    Parameters
+    ----------
+    pairs : Paired
+
+    Returns
+    -------
+    Paired, ndarray of int
+        `row` is that of the first of them.
+    """
+    cells, first, member, count = np.unique(
+        np.stack([pairs.which, pairs.place], axis=-1),
+        axis=0,
+        return_index=True,
+        return_inverse=True,
+        return_counts=True,
+    )
+    mean = np.bincount(member.ravel(), weights=pairs.observed, minlength=len(cells)) / count
+    return (
+        Paired(
+            row=pairs.row[first],
+            which=pairs.which[first],
+            place=pairs.place[first],
+            estimated=pairs.estimated[first],
+            observed=mean,
+            low=pairs.low[first],
+            high=pairs.high[first],
+            references={name: values[first] for name, values in pairs.references.items()},
+            in_lee=pairs.in_lee[first],
+        ),
+        count,
+    )
+
+
 def verdict(pairs: Paired, quantity: Quantity) -> Verdict | None:
     """Scores over the pairs in the lee; None without any."""
     lee = pairs.in_lee

@@ -104,7 +104,7 @@ def onset_at_places(
 
 
 def _observed(rule: OnsetRule, seen: Observations, elevations: Sequence[float]) -> Array:
-    """Whether the rule holds in each row."""
+    """Whether the rule holds in each row; unknown without a crest, calm or not."""
     height = np.where(np.isnan(seen.elevation), np.asarray(elevations)[seen.place], seen.elevation)
     excess = potential_excess(
         seen.values["temperature"],
@@ -113,7 +113,7 @@ def _observed(rule: OnsetRule, seen: Observations, elevations: Sequence[float]) 
         elevations=(height, seen.crest_elevation),
     )
     speed = seen.values["wind"] if np.isfinite(seen.values["wind"]).any() else None
-    return holds(rule, excess, seen.wind_from, speed)
+    return np.where(np.isnan(excess), np.nan, holds(rule, excess, seen.wind_from, speed))
 
 
 def _estimated(rule: OnsetRule, crossing: Crossing, site: int | None) -> tuple[float, float]:
