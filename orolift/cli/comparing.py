@@ -14,6 +14,7 @@ from orolift.errors import CaseError
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+    from orolift.crossing.result import LeeAir
     from orolift.crossing.situation import Situation
     from orolift.sources.inputs import Inputs
     from orolift.sources.observed_places import Placed
@@ -23,6 +24,8 @@ if TYPE_CHECKING:
 
 log = logging.getLogger(__name__)
 
+FEW = 4
+"""So many crossings are worked out here: starting other processes would take longer."""
 Numbers = list[list[int | None]]
 """For each case the number of the site of every place; None where its line does not reach the place."""
 
@@ -65,6 +68,7 @@ def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Co
     from orolift.sources.observed import read_observed
     from orolift.sources.observed_places import placed
     from orolift.spread.compared import Compared, all_pairs, event_tables
+    from orolift.spread.compared_rules import rule_tables
     from orolift.spread.comparison import nearest_estimates
     from orolift.spread.onset_series import onset_at_places
 
@@ -73,8 +77,7 @@ def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Co
     inputs = _in_time(tuple(read_inputs(case) for case in cases))
     log.debug("%d rows and %d cases read", table.line.size, len(inputs))
     put = placed(table, inputs)
-    situations, places = _situations(inputs, put)
-    estimates = _estimates(situations, inputs, places, asked.jobs)
+    estimates, places = _estimates(put, asked.jobs)
     log.debug("crossings worked out")
     within = 60.0 * asked.within
     which = nearest_estimates(put.seen, estimates, within)
@@ -86,8 +89,8 @@ def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Co
             f"{_times_in_words(estimates)}. Check times and zones, or widen --within."
         )
     tables, event_notes = event_tables(events, pairs)
+    thresholds, threshold_notes = rule_tables(inputs[0].fire.rules, put.seen, estimates, which)
     rule, rule_notes = rule_of(asked, estimates[0], put)
-    elevations = [_elevation(put, i, estimates, places) for i in range(len(put.names))]
     cautions = (*table.cautions, *put.cautions, *_side_cautions(put, estimates, places))
     found = Compared(
         names=put.names,
@@ -97,12 +100,12 @@ def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Co
         within=within,
         pairs=pairs,
         verdicts=verdicts,
-        events=tables,
+        events=(*tables, *thresholds),
         rule=rule,
-        onset=onset_at_places(rule, put.seen, estimates, which, places, elevations),
-        explained=_explained(put, situations, places, estimates, pairs, which, asked.explain),
-        profile=_profile(asked, estimates, situations, inputs),
-        notes=(*notes, *event_notes, *rule_notes),
+        onset=onset_at_places(rule, put.seen, estimates, which, places, put.elevations),
+        explained=_explained(put, places, estimates, pairs, which, asked.explain),
+        profile=_profile(asked, estimates, put),
+        notes=(*notes, *event_notes, *threshold_notes, *rule_notes),
         cautions=cautions,
     )
     return found, inputs
@@ -122,40 +125,32 @@ def _in_time(inputs: tuple[Inputs, ...]) -> tuple[Inputs, ...]:
     return ordered
 
 
-def _situations(inputs: tuple[Inputs, ...], put: Placed) -> tuple[list[Situation], Numbers]:
-    """What each crossing takes, and the number of the site of every place in it."""
-    from orolift.sources.inputs import situation_of
-
-    situations, places = [], []
-    for one, leading, sites in zip(inputs, put.leading, put.sites, strict=True):
-        here = [site for site in sites if site is not None]
-        situations.append(replace(situation_of(one), sites=(*leading, *here)))
-        count = iter(range(len(leading), len(leading) + len(here)))
-        places.append([None if site is None else next(count) for site in sites])
-    return situations, places
-
-
-def _estimates(
-    situations: list[Situation], inputs: tuple[Inputs, ...], places: Numbers, jobs: int | None
-) -> tuple[Estimates, ...]:
-    """Crossings of all cases; the first that fails ends the run with its name."""
+def _estimates(put: Placed, jobs: int | None) -> tuple[tuple[Estimates, ...], Numbers]:
+    """Crossings of all cases, and where each has its places; the first that fails ends the run with its name."""
     from orolift.cli.executors import executor_of
+    from orolift.cli.site_lines import with_own_lines
     from orolift.crossing.situation import crossing_of
+    from orolift.sources.inputs import situation_of
     from orolift.spread.comparison import estimates_of
     from orolift.spread.engine import in_order, outcomes
 
-    with executor_of(1 if len(situations) < 4 else jobs) as executor:
+    situations = [situation_of(one) for one in put.cases]
+    with executor_of(1 if len(situations) < FEW else jobs) as executor:
         found = in_order(outcomes(crossing_of, situations, executor))
-    estimates = []
-    for outcome, one, sites in zip(found, inputs, places, strict=True):
+    estimates, places = [], []
+    for outcome, one, numbers in zip(found, put.cases, put.numbers, strict=True):
         if outcome.error is not None or outcome.value is None:
             error = outcome.error or CaseError("no crossing")
             error.args = (f"{one.path}: {error}",)
             raise error
-        crossing = replace(outcome.value, cautions=(*one.cautions, *outcome.value.cautions))
+        crossing = with_own_lines(one, outcome.value, jobs=jobs, quiet=True)
+        crossing = replace(crossing, cautions=(*one.cautions, *crossing.cautions))
+        where = {air.number: i for i, air in enumerate(crossing.lee)}
+        sites = [None if number is None else where.get(number) for number in numbers]
         time = one.case.valid_time
         estimates.append(estimates_of(crossing, None if time is None else time.timestamp(), sites))
-    return tuple(estimates)
+        places.append(sites)
+    return tuple(estimates), places
 
 
 def _time_notes(put: Placed, estimates: tuple[Estimates, ...], which: NDArray[np.int_], minutes: float) -> list[str]:
@@ -183,25 +178,16 @@ def _times_in_words(estimates: tuple[Estimates, ...]) -> str:
     return f"the {len(estimates)} cases" if times else "the case"
 
 
-def _elevation(put: Placed, place: int, estimates: tuple[Estimates, ...], places: Numbers) -> float:
-    """Height a place is worked out for."""
-    for one, numbers in zip(estimates, places, strict=True):
-        site = numbers[place]
-        if site is not None:
-            return one.crossing.lee[site].elevation
-    raise CaseError(f"{put.names[place]} is on no line")
-
-
 def _side_cautions(put: Placed, estimates: tuple[Estimates, ...], places: Numbers) -> list[str]:
-    """Places that are not in the lee."""
+    """Places that are not in the lee, and those that could not be worked out."""
+    failed = {one.name: one.reason for estimate in estimates for one in estimate.crossing.failed}
     found = []
     for i, name in enumerate(put.names):
-        sides = {
-            one.crossing.lee[numbers[i]].side  # type: ignore[index]  # None is left out below
-            for one, numbers in zip(estimates, places, strict=True)
-            if numbers[i] is not None
-        }
-        if "lee" not in sides:
+        pairs = [(one.crossing.lee, numbers[i]) for one, numbers in zip(estimates, places, strict=True)]
+        sides = {lee[number].side for lee, number in pairs if number is not None}
+        if not sides:
+            found.append(f"{name} could not be worked out: {failed.get(name, 'no line leads there.')}")
+        elif "lee" not in sides:
             where = "on the crest" if sides == {"crest"} else "on the windward side of the range"
             found.append(f"{name} lies {where}: it is shown, and does not count in the scores of the lee.")
     return found
@@ -209,7 +195,6 @@ def _side_cautions(put: Placed, estimates: tuple[Estimates, ...], places: Number
 
 def _explained(
     put: Placed,
-    situations: list[Situation],
     places: Numbers,
     estimates: tuple[Estimates, ...],
     pairs: dict[Quantity, Paired],
@@ -240,36 +225,46 @@ def _explained(
     site = places[one[0]][one[1]]
     if site is None:
         return None
-    log.debug("explaining %s", put.names[one[1]])
-    return explained(one, put.seen, which, estimates, situations[one[0]], site)
+    air = estimates[one[0]].crossing.lee[site]
+    log.debug("explaining %s", air.name)
+    situation, number = _line_of(put.cases[one[0]], air)
+    return explained(one, put.seen, which, estimates, air, situation, number)
 
 
-def _profile(
-    asked: Asked, estimates: tuple[Estimates, ...], situations: list[Situation], inputs: tuple[Inputs, ...]
-) -> ProfileComparison | None:
-    """The lee sounding against the estimate over a place."""
+def _line_of(inputs: Inputs, air: LeeAir) -> tuple[Situation, int]:
+    """The situation an estimate comes from, and the number of its site there."""
+    from orolift.sources.inputs import situation_of
+
+    if air.own is None:
+        on_line = [number for number, place in enumerate(inputs.places, start=1) if place.on_line]
+        return situation_of(inputs), on_line.index(air.number)
+    from orolift.sources.site_lines import site_groups
+
+    for group in site_groups(inputs):
+        numbers = [site.number for site in group.sites]
+        if air.number in numbers and group.situation is not None:
+            return group.situation, numbers.index(air.number)
+    raise CaseError(f"{inputs.path}: the line of {air.name} is gone")
+
+
+def _profile(asked: Asked, estimates: tuple[Estimates, ...], put: Placed) -> ProfileComparison | None:
+    """The lee sounding against the estimate over a place of the comparison."""
     if asked.lee_sounding is None:
         return None
     if len(estimates) > 1:
         raise CaseError("--lee-sounding is held against one case, and several are given. Run it once for each.")
-    from orolift.crossing.situation import crossing_of
     from orolift.sources.sounding_air import air_from_sounding, read_any_sounding
     from orolift.spread.compared import profile_comparison
 
-    sites = inputs[0].sites
-    crossing = estimates[0].crossing
+    lee = estimates[0].crossing.lee
+    air = next((air for air in lee if air.side == "lee"), lee[0])
     if asked.sounding_at is not None:
-        names = [site.name.casefold() for site in sites]
-        if asked.sounding_at.casefold() not in names:
-            have = ", ".join(site.name for site in sites) or "none"
-            raise CaseError(f"--at: '{asked.sounding_at}' is no site of the case. Its sites: {have}.")
-        site = sites[names.index(asked.sounding_at.casefold())]
-        known = [air for air in crossing.lee if air.name == site.name]
-        air = known[0] if known else crossing_of(replace(situations[0], sites=(*sites[:1], site))).lee[1]
-    else:
-        air = next((air for air in crossing.lee if air.side == "lee"), crossing.lee[0])
+        named = [one for one in lee if one.name.casefold() == asked.sounding_at.casefold()]
+        if not named:
+            have = ", ".join(one.name for one in lee)
+            raise CaseError(f"--at: '{asked.sounding_at}' is no place of the comparison. Its places: {have}.")
+        air = named[0]
     where = "--lee-sounding"
-    sounding = air_from_sounding(
-        read_any_sounding(asked.lee_sounding, where, None, near=inputs[0].case.valid_time), where
-    )
+    near = put.cases[0].case.valid_time
+    sounding = air_from_sounding(read_any_sounding(asked.lee_sounding, where, None, near=near), where)
     return profile_comparison(air, sounding)

@@ -22,7 +22,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.compare_timeline import TimelineDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.quantities import Units
-    from orolift.spread.compared import Compared, Event
+    from orolift.spread.compared import Compared
     from orolift.spread.comparison import Reference, Verdict
     from orolift.spread.onset_series import OnsetAtPlace
     from orolift.spread.verification import Contingency
@@ -183,7 +183,7 @@ def compare_page(
         timeline=compare_timeline(found, units),
         scores=tuple(_score_row(one) for one in found.verdicts if one.score.count > 1),
         scores_heading=_scores_heading(found),
-        events=tuple(_event_row(event, table) for event, table in found.events),
+        events=tuple(_event_row(words, table) for words, table in found.events),
         onset_heading=_onset_heading(found),
         onset=(rule_words(found.rule), *onset_words(found)),
         explanation=explanation(found),
@@ -352,12 +352,12 @@ def _scores_heading(found: Compared) -> Words:
     )
 
 
-def _event_row(event: Event, table: Contingency) -> EventRow:
+def _event_row(words: str, table: Contingency) -> EventRow:
     def share(value: float | None) -> Amount | None:
         return None if value is None else Amount(value, "share")
 
     return EventRow(
-        name=event.words,
+        name=words,
         hits=Amount(float(table.hits), "plain"),
         false_alarms=Amount(float(table.false_alarms), "plain"),
         misses=Amount(float(table.misses), "plain"),

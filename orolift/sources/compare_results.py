@@ -94,7 +94,7 @@ class ContingencyBlock(Block):
 
 
 class EventBlock(Block):
-    """A threshold, as given on the command line."""
+    """A threshold, of the command line or of the rules of the case."""
 
     event: str
     table: ContingencyBlock
@@ -266,7 +266,7 @@ def compare_results(found: Compared) -> CompareResults:
         cases=[_moment(one.time) for one in found.estimates],
         within_min=found.within / 60.0,
         scores=[_quantity(one) for one in found.verdicts],
-        events=[EventBlock(event=event.words, table=contingency_block(table)) for event, table in found.events],
+        events=[EventBlock(event=words, table=contingency_block(table)) for words, table in found.events],
         rule=RuleBlock(
             offset_k=rule.offset,
             sector_from_deg=None if rule.sector is None else math.degrees(rule.sector[0]) % 360.0,

@@ -35,7 +35,7 @@ COLUMNS = (
     Column("time", text=True),
     Column("site", text=True),
     Column("longitude", -180.0, 360.0),
-    Column("latitude", -90.0, 90.0),
+    Column("latitude", -89.9, 89.9),
     Column("easting_m", -1e8, 1e8),
     Column("northing_m", -1e8, 1e8),
     Column("distance_km", -2000.0, 5000.0),

@@ -3,19 +3,24 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from orolift.air.humidity import mixing_ratio_from_dew_point
-from orolift.crossing.result import Site
-from orolift.errors import DataFileError
-from orolift.sources.inputs import ELEVATION_CONTRADICTION, OFF_LINE
+from orolift.errors import CaseError, DataFileError
+from orolift.sources.case_model import Place, SiteTable, TransectTable
+from orolift.sources.site_places import (
+    ELEVATION_CONTRADICTION,
+    places_on_raster,
+    places_on_ridge,
+    sites_on_line,
+)
+from orolift.sources.sites_file import all_sites
 from orolift.sources.units import nearest
 from orolift.spread.comparison import Observations
 from orolift.terrain.features import features
-from orolift.terrain.transect import transect_elevation
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -24,10 +29,12 @@ if TYPE_CHECKING:
 
     from orolift.sources.inputs import Inputs
     from orolift.sources.observed import ObservedTable
+    from orolift.sources.site_places import SitePlace
 
     Array = NDArray[np.float64]
 
 _Key = tuple[str, float, float]
+LONGEST_NAME = 200
 MOST_PLACES = 1000
 """Places worked out at most: each is a site of the crossing."""
 
@@ -40,25 +47,28 @@ class Placed:
     ----------
     names : tuple of str
         Of the places.
-    leading : tuple of tuple of Site
-        For each case: the site that decides its crest and base, to be worked out before the places.
-    sites : tuple of tuple of (Site or None)
-        For each case: the places on its line; None for one that is not on it.
+    cases : tuple of Inputs
+        The cases, with the places of the observations as their sites, after the first of their own.
+    numbers : tuple of tuple of (int or None)
+        For each case the number of the site of every place, from 1; None where its terrain does not reach there.
+    elevations : tuple of float [m above sea level]
+        Of the places.
     seen : Observations
         Rows whose place is known in some case.
     notes, cautions : tuple of str
     """
 
     names: tuple[str, ...]
-    leading: tuple[tuple[Site, ...], ...]
-    sites: tuple[tuple[Site | None, ...], ...]
+    cases: tuple[Inputs, ...]
+    numbers: tuple[tuple[int | None, ...], ...]
+    elevations: tuple[float, ...]
     seen: Observations
     notes: tuple[str, ...]
     cautions: tuple[str, ...]
 
 
 def placed(table: ObservedTable, cases: Sequence[Inputs]) -> Placed:
-    """Observations put on the lines of cases.
+    """Observations put on the terrain of cases.
 
     Parameters
     ----------
@@ -72,13 +82,13 @@ def placed(table: ObservedTable, cases: Sequence[Inputs]) -> Placed:
     Raises
     ------
     DataFileError
-        If no row has a place on any line.
+        If no row has a place.
 
     Notes
     -----
     A row that names a site of the case belongs to it, whatever position it
-    gives. Any other needs a position; what lies off the ends of the line or outside the raster is left out, with a
-    caution.
+    gives. Any other needs a position, and becomes a site of its own; what lies off the ridge or outside the raster is
+    left out, with a caution.
     """
     kind = _position_kind(table)
     keys, of_row = _keys(table, kind)
@@ -88,23 +98,30 @@ def placed(table: ObservedTable, cases: Sequence[Inputs]) -> Placed:
         )
     lines = table.line[np.unique(of_row, return_index=True)[1]]
     cautions: dict[str, None] = {}
-    every = [_sites(table, inputs, keys, kind, lines, cautions) for inputs in cases]
-    known = [i for i in range(len(keys)) if any(sites[i] is not None for sites in every)]
+    every = [_with_places(table, inputs, keys, kind, lines, cautions) for inputs in cases]
+    known = [i for i in range(len(keys)) if any(numbers[i] is not None for _, numbers in every)]
     if not known:
         raise DataFileError(f"{table.name}: no row can be placed. {' '.join(cautions)}")
     number = np.full(len(keys), -1)
     number[known] = np.arange(len(known))
-    sites = tuple(tuple(found[i] for i in known) for found in every)
-    names = tuple(next(found[i].name for found in every if found[i] is not None) for i in known)  # type: ignore[union-attr]  # those that are not None
-    seen, notes = _observations(table, number[of_row], names, sites, cases)
-    return Placed(names, tuple(_leading(inputs) for inputs in cases), sites, seen, notes, tuple(cautions))
+    homes = [_home(i, every) for i in known]
+    names = tuple(home.name for home in homes)
+    elevations = tuple(home.height for home in homes)
+    seen, notes = _observations(table, number[of_row], names, elevations, cases[0])
+    return Placed(
+        names,
+        tuple(inputs for inputs, _ in every),
+        tuple(tuple(numbers[i] for i in known) for _, numbers in every),
+        elevations,
+        seen,
+        notes,
+        tuple(cautions),
+    )
 
 
-def _leading(inputs: Inputs) -> tuple[Site, ...]:
-    """The first site of the case, which decides crest and base; without sites the lee foot, as a crossing has it."""
-    if inputs.sites:
-        return inputs.sites[:1]
-    return (Site("Lee foot", features(inputs.transect).lee_foot_distance),)
+def _home(key: int, every: Sequence[tuple[Inputs, list[int | None]]]) -> SitePlace:
+    """A place in the first case that has it."""
+    return next(inputs.places[n - 1] for inputs, numbers in every if (n := numbers[key]) is not None)
 
 
 def _position_kind(table: ObservedTable) -> tuple[str, str] | None:
@@ -141,35 +158,101 @@ def _keys(table: ObservedTable, kind: tuple[str, str] | None) -> tuple[list[_Key
     return keys, of_row
 
 
-def _sites(
+def _with_places(
     table: ObservedTable,
     inputs: Inputs,
     keys: list[_Key],
     kind: tuple[str, str] | None,
     lines: NDArray[np.int64],
     cautions: dict[str, None],
-) -> list[Site | None]:
-    """Site of each place; None for one that cannot be used, with a caution."""
-    ours = {site.name.casefold(): site for site in inputs.sites}
-    found: list[Site | None] = [ours.get(name.casefold()) for name, _, _ in keys]
-    fresh = [
-        i for i, site in enumerate(found) if site is None and math.isfinite(keys[i][1]) and math.isfinite(keys[i][2])
-    ]
-    if fresh and kind is not None:
-        for i, site in zip(fresh, _new_sites(table, inputs, [keys[i] for i in fresh], kind, cautions), strict=True):
-            found[i] = site
-    for i, (name, _, _) in enumerate(keys):
-        if found[i] is None and i not in fresh:
-            if not name and len(inputs.sites) == 1:
-                found[i] = inputs.sites[0]
-            else:
-                cautions.setdefault(_unknown(table, inputs, name, int(lines[i])))
-    return found
+) -> tuple[Inputs, list[int | None]]:
+    """The case with the places as its sites, and the number of each; those it cannot have with a caution."""
+    listed = all_sites(inputs.case, inputs.path.parent)
+    ours = {site.name.casefold(): i for i, site in enumerate(listed)}
+    own: dict[int, int] = {}
+    fresh: dict[int, SiteTable] = {}
+    for i, key in enumerate(keys):
+        found = ours.get(key[0].casefold(), 0 if not key[0] and kind is None and len(listed) == 1 else None)
+        if found is not None:
+            own[i] = found
+        elif kind is not None and math.isfinite(key[1]) and math.isfinite(key[2]):
+            fresh[i] = _site(table, inputs, key, kind, int(lines[i]))
+        else:
+            cautions.setdefault(_unknown(table, listed, key[0], int(lines[i])))
+    # the first site, and the first on the line, decide crest and base: they stay, whether observed or not
+    leading = {0} if listed else set()
+    leading |= {next((i for i, place in enumerate(inputs.places) if place.on_line), 0)} if listed else set()
+    kept = sorted(leading | set(own.values()))
+    fresh = _usable(table, inputs, fresh, cautions)
+    tables = [*(listed[i] for i in kept), *fresh.values()]
+    numbers: list[int | None] = [None] * len(keys)
+    for i, site in own.items():
+        numbers[i] = kept.index(site) + 1
+    for count, i in enumerate(fresh):
+        numbers[i] = len(kept) + count + 1
+    return _extended(inputs, tables), numbers
 
 
-def _unknown(table: ObservedTable, inputs: Inputs, name: str, line: int) -> str:
+def _site(table: ObservedTable, inputs: Inputs, key: _Key, kind: tuple[str, str], line: int) -> SiteTable:
+    """A place of the file as a site."""
+    name, x, y = key
+    if len(name) > LONGEST_NAME:
+        raise DataFileError(f"{table.name}: line {line}: the name of the site has more than {LONGEST_NAME} letters.")
+    by_hand = inputs.case.terrain.elevation_file is None
+    if by_hand != (kind[0] == "distance"):
+        have = "drawn by hand: give places as distance_km" if by_hand else "a raster: give longitude and latitude"
+        raise DataFileError(f"{table.name}: the terrain of the case is {have}, not {kind[0]}.")
+    height = table.columns["elevation"][table.line == line][0]
+    elevation = None if math.isnan(height) else float(height)
+    if by_hand:
+        return SiteTable(name=name or f"km {x / 1000:.1f}", distance_km=x / 1000.0, elevation_m=elevation)
+    name = name or f"{y:.3f}, {x:.3f}"
+    if kind[0] == "easting":
+        return SiteTable(name=name, easting_m=x, northing_m=y, elevation_m=elevation)
+    return SiteTable(name=name, longitude=x, latitude=y, elevation_m=elevation)
+
+
+def _usable(
+    table: ObservedTable, inputs: Inputs, fresh: dict[int, SiteTable], cautions: dict[str, None]
+) -> dict[int, SiteTable]:
+    """Those of the new places that the terrain reaches; the rest with a caution."""
+    try:
+        _on_terrain(inputs, list(fresh.values()))
+    except CaseError:
+        found = {}
+        for i, site in fresh.items():
+            try:
+                _on_terrain(inputs, [site])
+                found[i] = site
+            except CaseError as error:
+                cautions.setdefault(f"{table.name}: {error} Left out.")
+        return found
+    return fresh
+
+
+def _on_terrain(inputs: Inputs, tables: list[SiteTable]) -> tuple[SitePlace, ...]:
+    if inputs.case.terrain.elevation_file is None:
+        return places_on_ridge(tables, inputs.transect)
+    return places_on_raster(inputs.case, tables, inputs.transect, inputs.path.parent)
+
+
+def _extended(inputs: Inputs, tables: list[SiteTable]) -> Inputs:
+    """The case with other sites, its line as it is."""
+    case, line = inputs.case, inputs.transect
+    if not inputs.places and line.longitude is not None and line.latitude is not None:
+        # a line without a site passes through its highest cell, and goes on doing so
+        table = case.transect or TransectTable()
+        if table.through is None:
+            crest = int(np.argmin(np.abs(line.distance - features(line).crest_distance)))
+            through = Place(longitude=float(line.longitude[crest]), latitude=float(line.latitude[crest]))
+            case = case.model_copy(update={"transect": table.model_copy(update={"through": through})})
+    places = _on_terrain(inputs, tables)
+    return replace(inputs, case=case, places=places, sites=sites_on_line(places))
+
+
+def _unknown(table: ObservedTable, listed: Sequence[SiteTable], name: str, line: int) -> str:
     """What to say of rows whose place is not known."""
-    names = [site.name for site in inputs.sites]
+    names = [site.name for site in listed]
     have = f"Sites of the case: {', '.join(names)}." if names else "The case has no sites."
     more = "Correct the name, add a [[site]] to the case, or give longitude and latitude or distance_km."
     if not name:
@@ -179,69 +262,19 @@ def _unknown(table: ObservedTable, inputs: Inputs, name: str, line: int) -> str:
     return f"{table.name}: '{name}' (line {line}) is no site of the case and has no position: left out. {hint} {more}"
 
 
-def _new_sites(
-    table: ObservedTable, inputs: Inputs, keys: list[_Key], kind: tuple[str, str], cautions: dict[str, None]
-) -> list[Site | None]:
-    """Sites at positions of the file."""
-    transect = inputs.transect
-    if kind[0] == "distance":
-        distance = np.array([key[1] for key in keys]) - transect.origin
-        offset = np.zeros(distance.size)
-        ground = np.zeros(distance.size)
-    elif inputs.case.terrain.elevation_file is None:
-        raise DataFileError(
-            f"{table.name}: the ridge of the case is drawn by hand and has no {kind[0]}; give places as distance_km."
-        )
-    else:
-        distance, offset, ground = _on_raster(inputs, keys, kind)
-    found: list[Site | None] = []
-    length = float(transect.distance[-1])
-    for i, (name, x, y) in enumerate(keys):
-        words = name or (f"km {x / 1000:.1f}" if kind[0] == "distance" else f"{x:.3f}, {y:.3f}")
-        if not 0.0 <= distance[i] <= length or math.isnan(ground[i]):
-            cautions.setdefault(
-                f"{table.name}: {words} lies off the line of the case ({distance[i] / 1000:.1f} km from its upwind "
-                f"end, the line is {length / 1000:.1f} km long) or outside the raster: left out."
-            )
-            found.append(None)
-            continue
-        if abs(offset[i]) > OFF_LINE:
-            cautions.setdefault(
-                f"{words} lies {abs(offset[i]) / 1000:.0f} km beside the line over the range; it is held against "
-                "the line at the same distance along the wind."
-            )
-        elevation = None if kind[0] == "distance" else float(ground[i])
-        found.append(Site(words, float(distance[i]), elevation))
-    return found
-
-
-def _on_raster(inputs: Inputs, keys: list[_Key], kind: tuple[str, str]) -> tuple[Array, Array, Array]:
-    from orolift.sources.raster import MapPoint, site_positions
-
-    projected = kind[0] == "easting"
-    where = site_positions(
-        str(inputs.case.terrain.elevation_file),
-        inputs.transect,
-        [MapPoint(x, y, projected=projected) for _, x, y in keys],
-        unit=inputs.case.terrain.elevation_unit,
-        folder=inputs.path.parent,
-    )
-    return where.distance, where.offset, where.elevation
-
-
 def _observations(
     table: ObservedTable,
     place: NDArray[np.int_],
     names: tuple[str, ...],
-    sites: tuple[tuple[Site | None, ...], ...],
-    cases: Sequence[Inputs],
+    elevations: tuple[float, ...],
+    first: Inputs,
 ) -> tuple[Observations, tuple[str, ...]]:
     """Rows that have a place, every quantity that follows from what they hold."""
     kept = place >= 0
     columns = {name: values[kept] for name, values in table.columns.items()}
     place = place[kept]
-    ground = np.array([_height(i, sites, cases) for i in range(len(names))])[place]
-    column = cases[0].incoming
+    ground = np.array(elevations)[place]
+    column = first.incoming
     assumed = np.exp(np.interp(ground, column.height, np.log(column.pressure)))
     pressure = np.where(np.isnan(columns["pressure"]), assumed, columns["pressure"])
     dew = columns["dew_point"]
@@ -271,13 +304,3 @@ def _observations(
         line=table.line[kept],
     )
     return seen, tuple(notes)
-
-
-def _height(number: int, sites: tuple[tuple[Site | None, ...], ...], cases: Sequence[Inputs]) -> float:
-    """Height of a place in the first case that has it."""
-    for found, inputs in zip(sites, cases, strict=True):
-        site = found[number]
-        if site is not None:
-            ground = float(transect_elevation(inputs.transect, site.distance))
-            return ground if site.elevation is None else site.elevation
-    raise DataFileError(f"place {number} is in no case")

@@ -106,7 +106,8 @@ class Compared:
     pairs : dict of Quantity to Paired
         Those with any pair.
     verdicts : tuple of Verdict
-    events : tuple of (Event, Contingency)
+    events : tuple of (str, Contingency)
+        Thresholds of the command line and of the case's rules, by their words.
     rule : OnsetRule
     onset : tuple of OnsetAtPlace
     explained : Explained or None
@@ -121,7 +122,7 @@ class Compared:
     within: float
     pairs: dict[Quantity, Paired]
     verdicts: tuple[Verdict, ...]
-    events: tuple[tuple[Event, Contingency], ...]
+    events: tuple[tuple[str, Contingency], ...]
     rule: OnsetRule
     onset: tuple[OnsetAtPlace, ...]
     explained: Explained | None
@@ -153,7 +154,7 @@ def all_pairs(
 
 def event_tables(
     events: Sequence[Event], pairs: dict[Quantity, Paired]
-) -> tuple[tuple[tuple[Event, Contingency], ...], tuple[str, ...]]:
+) -> tuple[tuple[tuple[str, Contingency], ...], tuple[str, ...]]:
     """Hits and false alarms of events, and notes on those that nothing was observed for."""
     tables, notes = [], []
     for event in events:
@@ -162,7 +163,7 @@ def event_tables(
         if table is None:
             notes.append(f"Nothing was observed in the lee to judge {event.words} by.")
         else:
-            tables.append((event, table))
+            tables.append((event.words, table))
     return tuple(tables), tuple(notes)
 
 

@@ -197,7 +197,7 @@ def estimates_of(
         for i, air in zip(places, sites, strict=True)
     ]
     ends = [{name: np.array([x.get(name, UNKNOWN)[end] for x in spans]) for name in QUANTITIES} for end in (0, 1)]
-    answers = [None if air is None else _simple(crossing, air.elevation) for air in sites]
+    answers = [None if air is None else _simple(crossing, air) for air in sites]
     references = {
         name: {
             quantity: np.array([np.nan if one is None else one[name][quantity] for one in answers])
@@ -368,6 +368,8 @@ def _value(crossing: Crossing, air: LeeAir, name: Quantity) -> float:
         return np.nan if air.wind is None else 0.5 * (air.wind.gust_low + air.wind.gust_high)
     if name == "rain_rate":
         rain = crossing.rain
+        if not crossing.distance[0] <= air.distance <= crossing.distance[-1]:
+            return np.nan
         return float(np.interp(air.distance, crossing.distance, rain.rate)) + rain.background
     return float(getattr(air, name))
 
@@ -389,9 +391,10 @@ def _ranges(air: LeeAir, given: Mapping[str, tuple[float, float]]) -> dict[str, 
     return {**found, "dew_point": (low, high), **given}
 
 
-def _simple(crossing: Crossing, elevation: float) -> dict[Reference, dict[Quantity, float]]:
-    """The simple answers at one height."""
-    found = simple_answers(crossing.incoming, crossing.features.crest, elevation, freezing=crossing.settings.freezing)
+def _simple(crossing: Crossing, air: LeeAir) -> dict[Reference, dict[Quantity, float]]:
+    """The simple answers at a site, over the crest of its own line."""
+    crest = crossing.features.crest if air.own is None else air.own.crest
+    found = simple_answers(crossing.incoming, crest, air.elevation, freezing=crossing.settings.freezing)
     return {name: _humid(getattr(found, name)) for name in REFERENCES}
 
 

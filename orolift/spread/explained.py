@@ -93,6 +93,7 @@ def explained(
     seen: Observations,
     which: NDArray[np.int_],
     estimates: Sequence[Estimates],
+    air: LeeAir,
     situation: Situation,
     site: int,
 ) -> Explained:
@@ -106,10 +107,12 @@ def explained(
     which : ndarray of int (n,)
         Number of the estimates each row belongs to.
     estimates : sequence of Estimates
+    air : LeeAir
+        The chosen estimate.
     situation : Situation
-        Of the chosen estimates.
+        It comes from; of the line of the place.
     site : int
-        Number of the place among its sites.
+        Number of the place among its sites, from 0.
 
     Returns
     -------
@@ -122,13 +125,13 @@ def explained(
     """
     number, place = chosen_one
     one = estimates[number]
-    crossing, air = one.crossing, one.crossing.lee[site]
+    crossing = one.crossing
     t, w = seen.values["temperature"], seen.values["mixing_ratio"]
     mine = (which == number) & (seen.place == place) & np.isfinite(t) & np.isfinite(w)
     observed = Observed(float(np.mean(t[mine])), float(np.mean(w[mine])))
     path = Path(
         crossing.incoming,
-        crossing.features.crest,
+        crossing.features.crest if air.own is None else air.own.crest,
         air.pressure,
         heating=0.0 if air.parts is None else air.parts.surface_heating,
         freezing=crossing.settings.freezing,
