@@ -101,6 +101,7 @@ def command(
                 "\n".join(
                     [
                         *summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units),
+                        *fire_lines(worked),
                         f"Report: {page}",
                     ]
                 )
@@ -174,6 +175,14 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
         grid=None if mapped is None else mapped.inputs.placed.grid,
         rain_on_map=None if mapped is None else mapped.rain.rain,
     )
+
+
+def fire_lines(worked: Worked) -> list[str]:
+    """What the fire thresholds of the case come to, a line; none without a rule file."""
+    from orolift.report.fire_thresholds import headline
+
+    words = headline(worked.fire).words
+    return [f"Fire      {words} (a threshold met is not a warning)"] if words else []
 
 
 def report_of(worked: Worked, units: Units) -> str:

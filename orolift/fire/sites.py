@@ -62,6 +62,8 @@ class SiteFire:
 
     Attributes
     ----------
+    number : int
+        Of the site in the case.
     name : str
     side : 'windward', 'crest' or 'lee'
     in_pool, in_blocked_air : bool
@@ -72,6 +74,7 @@ class SiteFire:
     thresholds : tuple of Threshold
     """
 
+    number: int
     name: str
     side: Side
     in_pool: bool
@@ -126,13 +129,15 @@ def fire_at(crossing: Crossing, air: LeeAir, when: When, settings: FireSettings 
         If a setting or the air at the site is out of the range of an index.
     """
     chosen = settings or FireSettings()
-    weather = site_weather(crossing, air)
+    weather = site_weather(air)
     indices = _indices(weather, chosen)
-    night = night_at(weather, air, crossing.features.crest, when)
+    night = night_at(weather, air, crossing.features.crest if air.own is None else air.own.crest, when)
     thresholds: tuple[Threshold, ...] = ()
     if chosen.rules is not None:
         thresholds = _thresholds(crossing, air, weather, indices, night, chosen)
-    return SiteFire(air.name, air.side, air.in_pool, air.in_blocked_air, weather, indices, night, thresholds)
+    return SiteFire(
+        air.number, air.name, air.side, air.in_pool, air.in_blocked_air, weather, indices, night, thresholds
+    )
 
 
 def _indices(weather: SiteWeather, chosen: FireSettings, hours: tuple[int, ...] = HOURS) -> Indices:
@@ -165,11 +170,10 @@ def _thresholds(
     values, windiest = (
         site_values(weather, indices, rules, roughness, others=others, end=end) for end in ("middle", "upper")
     )
+    crest_wind = crossing.flow.crest_wind if air.own is None else air.own.crest_wind
     changed = [
         (site, site_values(site.weather, _indices(site.weather, chosen, ()), rules, roughness, others=others))
-        for site in shifted(
-            weather, crossing.incoming, crest_wind=crossing.flow.crest_wind, source_level=air.source_level
-        )
+        for site in shifted(weather, crossing.incoming, crest_wind=crest_wind, source_level=air.source_level)
     ]
     return tuple(
         Threshold(

@@ -20,7 +20,7 @@ if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
     from orolift.air.column import IncomingAir
-    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.crossing.result import LeeAir
     from orolift.crossing.wind import SiteWind
 
     Array = NDArray[np.float64]
@@ -67,31 +67,20 @@ class SiteWeather:
     layer_wind: Array
 
 
-def site_weather(crossing: Crossing, air: LeeAir) -> SiteWeather:
+def site_weather(air: LeeAir) -> SiteWeather:
     """Fire weather's view of a site of a crossing.
 
     Parameters
     ----------
-    crossing : Crossing
     air : LeeAir
-        One of its sites.
 
     Returns
     -------
     SiteWeather, leading axes ()
         The wind of the layer is that across the range, from the streamlines over the site.
     """
-    profile, wind = air.profile, air.wind
-    at = crossing.distance
-    number = int(np.clip(np.searchsorted(at, air.distance, side="right") - 1, 0, at.size - 2))
-    share = float(np.clip((air.distance - at[number]) / (at[number + 1] - at[number]), 0.0, 1.0))
-    height, speed = (
-        (1.0 - share) * field[number] + share * field[number + 1] for field in (crossing.height, crossing.wind)
-    )
-    z = air.elevation + profile.height_above_ground
-    calm_below = 0.0 if wind is None else float(speed[0])
-    rain = float(np.interp(air.distance, at, crossing.rain.rate)) + crossing.rain.background
-    mean, low, high, gust_low, gust_high = (np.asarray(value) for value in _winds(wind))
+    profile = air.profile
+    mean, low, high, gust_low, gust_high = (np.asarray(value) for value in _winds(air.wind))
     return SiteWeather(
         pressure=np.asarray(air.pressure),
         temperature=np.asarray(air.temperature),
@@ -101,11 +90,11 @@ def site_weather(crossing: Crossing, air: LeeAir) -> SiteWeather:
         wind_high=high,
         gust_low=gust_low,
         gust_high=gust_high,
-        rain=np.asarray(rain),
+        rain=np.asarray(air.rain),
         height_above_ground=profile.height_above_ground,
         layer_temperature=profile.temperature,
         layer_vapour=np.maximum(profile.vapour, LEAST_VAPOUR),
-        layer_wind=np.maximum(np.interp(z, height, speed, left=calm_below), 0.0),
+        layer_wind=profile.wind,
     )
 
 

@@ -140,9 +140,9 @@ def fire_weather(crossing: Crossing, found: tuple[SiteFire, ...], rules: RuleSet
         heading=_heading(found),
         source=source,
         thresholds=threshold_rows(found, crossing.lee),
-        rows=tuple(_row(site, air, number) for number, (site, air) in enumerate(pairs, start=1)),
-        nights=tuple(_night(site, air, number) for number, (site, air) in enumerate(pairs, start=1)),
-        codes=tuple(_codes(site, air, number) for number, (site, air) in enumerate(pairs, start=1))
+        rows=tuple(_row(site, air, site.number) for site, air in pairs),
+        nights=tuple(_night(site, air, site.number) for site, air in pairs),
+        codes=tuple(_codes(site, air, site.number) for site, air in pairs)
         if any(_known(site.indices.fine_fuel_code) for site in found)
         else (),
         has_drought=any(_known(site.indices.fosberg_index_with_drought) for site in found),

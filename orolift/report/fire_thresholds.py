@@ -127,7 +127,8 @@ def headline(found: tuple[SiteFire, ...]) -> Headline:
             rules = list(dict.fromkeys(one.rule.name for _, one in here))
             names = tuple(dict.fromkeys(name for name, _ in here))
             where = names[0] if len(names) == 1 else counted(len(names), "site", "sites").lower()
-            what = f"“{rules[0]}” is" if len(rules) == 1 else f"{counted(len(rules), 'threshold', 'thresholds')} are"
+            many = counted(len(rules), "threshold", "thresholds").capitalize()
+            what = f"“{rules[0]}” is" if len(rules) == 1 else f"{many} are"
             return Headline(f"{what} met at {where}{how}", names)
     if all(one.status == ORDER[3] for _, one in judged):
         return Headline("No threshold can be judged", ())
