@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
-from concurrent.futures import FIRST_COMPLETED, wait
+from concurrent.futures import FIRST_COMPLETED, BrokenExecutor, CancelledError, wait
 from dataclasses import dataclass
 from itertools import islice
 from typing import TYPE_CHECKING, Generic, TypeVar
+
+from orolift.errors import WorkersError
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterable, Iterator
@@ -62,6 +64,11 @@ def outcomes(
     Outcome
         In the order they are finished; a failed task is an outcome too, and the rest goes on.
 
+    Raises
+    ------
+    WorkersError
+        If a process of the executor is lost; what was yielded before holds.
+
     Notes
     -----
     Nothing depends on the order: what is random is drawn before. When the
@@ -82,9 +89,14 @@ def outcomes(
             done, _ = wait(running, return_when=FIRST_COMPLETED)
             for future in sorted(done, key=running.__getitem__):
                 number, error = running.pop(future), future.exception()
-                if error is not None and not isinstance(error, Exception):
+                if isinstance(error, BrokenExecutor) or not isinstance(error, Exception | None):
                     raise error
                 yield Outcome(number, None if error else future.result(), error)
+    except (BrokenExecutor, CancelledError) as error:
+        raise WorkersError(
+            "a process that worked ended before its work was done, most likely for lack of memory; what was finished "
+            "is kept. Work with fewer at once, for example --jobs 1."
+        ) from error
     finally:
         for future in running:
             future.cancel()
