@@ -9,10 +9,10 @@ import numpy as np
 
 from orolift.air.column import interpolated
 from orolift.air.humidity import relative_humidity_from_dew_point
-from orolift.air.potential import potential_temperature
-from orolift.air.saturation import saturation_vapour_pressure
+from orolift.air.temperature import potential_temperature
 from orolift.crossing.situation import crossing_of
 from orolift.errors import NoCrossingError, OroliftError
+from orolift.fire.dryness import vapour_pressure_deficit
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -139,7 +139,7 @@ def _state(site: LeeAir, crossing: Crossing, observed_at: float) -> SiteState:
     rain, line = crossing.rain, crossing.transect
     before = line.distance <= site.distance
     shelter = int(np.argmax(np.where(before, line.elevation, -np.inf)))
-    deficit = float(saturation_vapour_pressure(site.temperature)) * max(1.0 - site.relative_humidity, 0.0)
+    deficit = float(vapour_pressure_deficit(site.temperature, min(site.relative_humidity, 1.0)))
     wind = site.wind
     return SiteState(
         status="crossing",
