@@ -130,7 +130,7 @@ def _read(case: Case, transect: Transect, folder: Path, most_cells: int) -> MapI
     return MapInputs(
         placed=placed,
         line=_line(transect.longitude, transect.latitude, placed, width),
-        sites=tuple(_site(site, placed) for site in case.site),
+        sites=tuple(place_on_map(site, placed) for site in case.site),
         catchments=catchments,
         divide=_divide(case, placed, folder),
         gauges=_gauges(case, placed, folder),
@@ -147,7 +147,8 @@ def _line(longitude: Array, latitude: Array, placed: ElevationMap, width: float)
     return MapLine(np.asarray(x, dtype=np.float64), np.asarray(y, dtype=np.float64), width)
 
 
-def _site(site: SiteTable, placed: ElevationMap) -> tuple[float, float]:
+def place_on_map(site: SiteTable, placed: ElevationMap) -> tuple[float, float]:
+    """Place of a site on a map [m]."""
     from rasterio.warp import transform
 
     if site.longitude is not None:

@@ -51,7 +51,7 @@ HOUR = 3600.0
 
 @dataclass(frozen=True, eq=False)
 class Series:
-    """A series of incoming air, in the order of time.
+    """A series of incoming air, in the order of time; hours that are not in it stand there as faults.
 
     Attributes
     ----------
@@ -68,7 +68,7 @@ class Series:
     files : tuple of str
         Sounding of each row; empty for other kinds.
     line : ndarray of int (n,)
-        Line of the file of each row.
+        Line of the file of each row; of model output the number of the time; 0 where there is none.
     faults : mapping of int to str
         Why a row cannot be used, by its number.
     notes : tuple of str
@@ -90,11 +90,6 @@ class Series:
     def step(self) -> float:
         """Usual time between two rows [s]: the median; an hour for a single row."""
         return float(np.median(np.diff(self.time))) if self.time.size > 1 else HOUR
-
-    @property
-    def gap_after(self) -> NDArray[np.bool_]:
-        """Whether rows are missing between a row and the next, (n - 1,)."""
-        return np.diff(self.time) > GAP * self.step
 
 
 def read_series(path: str | Path) -> Series:
@@ -122,7 +117,8 @@ def read_series(path: str | Path) -> Series:
     Notes
     -----
     Rows out of order are sorted, with a note: each carries its own time. A
-    row with a cell that is no number or out of range is kept as a fault of that row.
+    row with a cell that is no number or out of range is kept as a fault of that row, and where a step is longer than
+    1.5 usual ones the hours between are put in as faults: nothing is interpolated.
     """
     where = "series"
     full = existing_file(path, where)
@@ -134,7 +130,7 @@ def read_series(path: str | Path) -> Series:
         time = np.array([one.timestamp() for one in model_times(full, where)])
         order = np.arange(time.size)
         _refuse_twice(time, order + 1, str(path), "time")
-        return Series(str(path), "model", full, time, UTC, {}, (), order + 1, {}, ())
+        return _with_gaps(Series(str(path), "model", full, time, UTC, {}, (), order + 1, {}, ()))
     name = str(path)
     table = number_table(read_text(path, where), name, COLUMNS, most_rows=MOST_HOURS, forgiving=True)
     kind = _kind(table)
@@ -153,7 +149,7 @@ def read_series(path: str | Path) -> Series:
         _faults(table, kind),
         table.notes,
     )
-    return _checked(_sorted(series))
+    return _with_gaps(_checked(_sorted(series)))
 
 
 def _kind(table: NumberTable) -> Kind:
@@ -247,6 +243,50 @@ def _checked(series: Series) -> Series:
             "and units of the whole file."
         )
     return series
+
+
+def _with_gaps(series: Series) -> Series:
+    """The same with a fault for each hour that is not there."""
+    step = series.step
+    between = np.diff(series.time)
+    absent = np.where(between > GAP * step, np.rint(between / step) - 1.0, 0.0).astype(np.int64)
+    count = int(absent.sum())
+    if not count:
+        return series
+    longest = int(np.argmax(between))
+    dates = [
+        datetime.fromtimestamp(float(t), UTC).strftime("%Y-%m-%dT%H:%MZ") for t in series.time[longest : longest + 2]
+    ]
+    span = f"from {dates[0]} to {dates[1]}"
+    if count > MOST_HOURS:
+        raise DataFileError(
+            f"{series.name}: {count} steps of {step:g} s are missing, the longest gap {span}. Is a year mistyped? If "
+            "not, run the parts before and after the gap by themselves."
+        )
+    new = np.concatenate(
+        [a + d * np.arange(1, n + 1) / (n + 1) for a, d, n in zip(series.time, between, absent, strict=False) if n]
+    )
+    time = np.concatenate([series.time, new])
+    order = np.argsort(time, kind="stable")
+    number = np.empty_like(order)
+    number[order] = np.arange(order.size)
+
+    def longer(values: NDArray[np.float64]) -> NDArray[np.float64]:
+        return np.concatenate([values, np.full(count, np.nan)])[order]
+
+    files = (*series.files, *("",) * count)
+    faults = {int(number[i]): text for i, text in series.faults.items()}
+    faults |= {int(i): f"{series.name}: has no row for this hour." for i in number[series.time.size :]}
+    note = f"{series.name}: {count} steps are missing, the longest gap {span}. They are shown as gaps."
+    return replace(
+        series,
+        time=time[order],
+        columns={stem: longer(values) for stem, values in series.columns.items()},
+        files=tuple(files[i] for i in order) if series.files else (),
+        line=np.concatenate([series.line, np.zeros(count, dtype=np.int64)])[order],
+        faults=faults,
+        notes=(*series.notes, note),
+    )
 
 
 def _refuse_twice(time: NDArray[np.float64], line: NDArray[np.int64], name: str, what: str) -> None:

@@ -83,21 +83,17 @@ class HourTask:
         Of the row of the series.
     time : float [s]
         When the incoming air was observed, since 1970-01-01T00:00:00 UTC.
-    sites : int
-        How many the case has.
+    states : tuple of SiteState
+        One for each site of the case, with the reason where none of the lines is its own.
     lines : tuple of OneLine
-        Empty when the hour cannot be worked out.
-    fault : str
-        Why not.
     ground : MapGround or None
         None without catchments.
     """
 
     number: int
     time: float
-    sites: int
+    states: tuple[SiteState, ...]
     lines: tuple[OneLine, ...] = ()
-    fault: str = ""
     ground: MapGround | None = None
 
 
@@ -133,7 +129,7 @@ def worked_hour(task: HourTask) -> Hour:
     Hour
         Hours that cannot be worked out or do not cross say so at their sites.
     """
-    states = [SiteState("missing", task.fault)] * task.sites
+    states = list(task.states)
     first: Crossing | None = None
     for line in task.lines:
         situation = replace(line.situation, when=_arrives(line, task.time))
@@ -206,7 +202,7 @@ class SiteTimeline:
     name : str
     states : tuple of SiteState, length n
     arrival : ndarray (n,) [s]
-        When the air is at the site; for hours that do not cross the upwind time and the usual time on the way.
+        When the air is at the site, or would be; see `arrivals`.
     arrival_error : ndarray (n,) [s]
         One standard deviation; NaN where the air does not arrive.
     fine_fuel_code : ndarray (n,) [1]
@@ -216,7 +212,7 @@ class SiteTimeline:
         Sum over the hours that cross.
     crossing_hours : int
     overtaken : int
-        Hours whose air arrives before that of the hour before it.
+        Hours whose air is caught up by faster air behind it.
     """
 
     name: str
@@ -315,7 +311,10 @@ def hours_of(
             _timeline(name, time, step, tuple(hour.sites[i] for hour in hours), start_code)
             for i, name in enumerate(names)
         ),
-        catchments=tuple(_catchment(name, [hour.catchments[i] for hour in hours], step) for i, name in enumerate(catchments)),
+        catchments=tuple(
+            _catchment(name, [hour.catchments[i] if hour.catchments else None for hour in hours], step)
+            for i, name in enumerate(catchments)
+        ),
         planned=planned,
     )
 
@@ -323,8 +322,7 @@ def hours_of(
 def _timeline(name: str, time: Array, step: float, states: tuple[SiteState, ...], start_code: float) -> SiteTimeline:
     way = values_of(states, "travel.time")
     crosses = np.isfinite(way)
-    usual = float(np.median(way[crosses])) if crosses.any() else 0.0
-    arrival = time + np.where(crosses, way, usual)
+    arrival = arrivals(time, way)
     error = np.hypot(WIND_ERROR * way, values_of(states, "travel.spread"))
     return SiteTimeline(
         name=name,
@@ -335,8 +333,40 @@ def _timeline(name: str, time: Array, step: float, states: tuple[SiteState, ...]
         dry_winds=dry_winds(states, arrival, error),
         rain=float(np.nansum(values_of(states, "rain"))) * step,
         crossing_hours=int(crosses.sum()),
-        overtaken=int((np.diff(arrival[crosses]) < 0.0).sum()),
+        overtaken=int((arrival[crosses] < (time + way)[crosses]).sum()),
     )
+
+
+def arrivals(time: Array, way: Array) -> Array:
+    """When the air of each hour is at a site, in the order of the hours.
+
+    Parameters
+    ----------
+    time : ndarray (n,) [s]
+        Upwind, increasing.
+    way : ndarray (n,) [s]
+        Time on the way; NaN for air that does not arrive.
+
+    Returns
+    -------
+    ndarray (n,) [s]
+        Never decreasing.
+
+    Notes
+    -----
+    Air that faster air behind it would overtake is pushed by that and arrives with it. Hours whose air does
+    not arrive stand where it would, with the time on the way of the hours around them.
+
+    Examples
+    --------
+    >>> arrivals(np.array([0.0, 3600.0, 7200.0]), np.array([9000.0, 3600.0, np.nan]))
+    array([ 7200.,  7200., 10800.])
+    """
+    known = np.isfinite(way)
+    if not known.any():
+        return np.array(time)
+    there = time + np.interp(time, time[known], way[known])
+    return np.minimum.accumulate(there[::-1])[::-1]
 
 
 def values_of(states: Iterable[SiteState], key: str) -> Array:
@@ -383,7 +413,7 @@ def dry_winds(states: Sequence[SiteState], arrival: Array, error: Array) -> tupl
     travel time: 15 % of it for the wind along the way, and its spread between the streamlines that arrive.
     """
     known = np.array([one.status != "missing" for one in states], dtype=bool)
-    order = np.flatnonzero(known)[np.argsort(arrival[known], kind="stable")]
+    order = np.flatnonzero(known)
     met = np.array([states[i].descending is True for i in order], dtype=bool)
 
     def change(before: int, after: int) -> tuple[float, float]:
@@ -404,7 +434,7 @@ def dry_winds(states: Sequence[SiteState], arrival: Array, error: Array) -> tupl
                 onset_error=None if onset is None else onset[1],
                 end=None if end is None else end[0],
                 end_error=None if end is None else end[1],
-                unknown=int((~known[min(first, last) : max(first, last) + 1]).sum()),
+                unknown=int((~known[first : last + 1]).sum()),
             )
         )
     return tuple(out)

@@ -28,9 +28,9 @@ SLOWEST = 1.0
 """Wind [m s-1] below which the time on the way is counted with this, as for the heat of the ground."""
 LEAST_WARMING = 1.0
 """Warming [K] from which lee air counts as warm: half the stated model error; a judgement."""
-CREST_OFFSET = 2.0
-"""Potential temperature [K] by which lee air may stay below that of the crest and still counts as come down from
-there: the stated model error; a judgement."""
+HALFWAY = 0.5
+"""Share of the way from the potential temperature of the incoming air at the height of a site to that at the crest
+which air come down from the crest has made at least; what is short of the whole is mixing and low air; a judgement."""
 
 
 @dataclass(frozen=True)
@@ -217,16 +217,18 @@ def descending_warm_dry(crossing: Crossing, site: LeeAir) -> bool:
     Notes
     -----
     True where all of this holds: the site lies behind the crest, and neither in cold air that stays nor
-    under air that does not break through; its potential temperature is that of the incoming
-    air at the crest or at most 2 K below it; it is 1 K or more warmer than the incoming air at its
-    own height; and its relative humidity is lower than there. The two numbers are judgements.
+    under air that does not break through; its potential temperature is nearer to that of the incoming
+    air at the crest than to that of the incoming air at its own height; it is 1 K or more warmer than the latter;
+    and its relative humidity is lower. Both numbers are judgements.
     """
     if site.side != "lee" or site.in_pool or crossing.flow.breaks_through is False:
         return False
-    crest = interpolated(crossing.incoming, np.array([crossing.features.crest]))
-    theta_crest = float(potential_temperature(crest.pressure, crest.temperature)[0])
+    upwind = interpolated(crossing.incoming, np.array([site.elevation, crossing.features.crest]))
+    beside, crest = (float(t) for t in potential_temperature(upwind.pressure, upwind.temperature))
     theta = float(potential_temperature(site.pressure, site.temperature))
-    upwind = float(relative_humidity_from_dew_point(site.upwind_temperature, site.upwind_dew_point))
+    humidity = float(relative_humidity_from_dew_point(site.upwind_temperature, site.upwind_dew_point))
     return (
-        theta >= theta_crest - CREST_OFFSET and site.warming >= LEAST_WARMING and site.relative_humidity < upwind
+        theta >= beside + HALFWAY * (crest - beside)
+        and site.warming >= LEAST_WARMING
+        and site.relative_humidity < humidity
     )
