@@ -192,16 +192,8 @@ def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, fla
     """
     return Results(
         schema_version=SCHEMA_VERSION,
-        orolift=Program(
-            version=__version__,
-            python=platform.python_version(),
-            libraries={name: metadata.version(name) for name in LIBRARIES},
-        ),
-        case=CaseBlock(
-            title=case.title,
-            valid_time=None if case.valid_time is None else case.valid_time.isoformat(),
-            seed=None,
-        ),
+        orolift=program(),
+        case=case_block(case),
         incoming=_incoming(crossing),
         terrain=_terrain(crossing),
         flow=_flow(crossing),
@@ -213,6 +205,24 @@ def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, fla
         flags=[*flags],
         cautions=[*crossing.cautions],
         notes=[*crossing.notes],
+    )
+
+
+def program() -> Program:
+    """What makes a file: versions of orolift, Python and the libraries."""
+    return Program(
+        version=__version__,
+        python=platform.python_version(),
+        libraries={name: metadata.version(name) for name in LIBRARIES},
+    )
+
+
+def case_block(case: Case) -> CaseBlock:
+    """Which case it is."""
+    return CaseBlock(
+        title=case.title,
+        valid_time=None if case.valid_time is None else case.valid_time.isoformat(),
+        seed=None,
     )
 
 

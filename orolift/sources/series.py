@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from datetime import UTC, datetime, timedelta, timezone
-from pathlib import Path
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -16,6 +15,7 @@ from orolift.sources.table import Column, NumberTable, number_table
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
+    from pathlib import Path
 
     from numpy.typing import NDArray
 
@@ -160,7 +160,7 @@ def _kind(table: NumberTable) -> Kind:
     if "sounding_file" in table.texts:
         if have:
             raise DataFileError(
-                f"{table.name}: sounding_file and {sorted(have)[0]} both give the incoming air. Keep one of them."
+                f"{table.name}: sounding_file and {min(have)} both give the incoming air. Keep one of them."
             )
         return "sounding"
     for stems in (("temperature",), ("dew_point", "relative_humidity"), ("pressure", "qnh"), ("wind",)):
@@ -260,8 +260,8 @@ def _with_gaps(series: Series) -> Series:
     span = f"from {dates[0]} to {dates[1]}"
     if count > MOST_HOURS:
         raise DataFileError(
-            f"{series.name}: {count} steps of {step:g} s are missing, the longest gap {span}. Is a year mistyped? If "
-            "not, run the parts before and after the gap by themselves."
+            f"{series.name}: {count} steps of {step:g} s are missing, the longest gap from {span}. Is a year mistyped? "
+            "If not, run the parts before and after the gap by themselves."
         )
     new = np.concatenate(
         [a + d * np.arange(1, n + 1) / (n + 1) for a, d, n in zip(series.time, between, absent, strict=False) if n]
@@ -277,7 +277,7 @@ def _with_gaps(series: Series) -> Series:
     files = (*series.files, *("",) * count)
     faults = {int(number[i]): text for i, text in series.faults.items()}
     faults |= {int(i): f"{series.name}: has no row for this hour." for i in number[series.time.size :]}
-    note = f"{series.name}: {count} steps are missing, the longest gap {span}. They are shown as gaps."
+    note = f"{series.name}: {count} steps are missing, the longest gap from {span}. They are shown as gaps."
     return replace(
         series,
         time=time[order],
