@@ -23,6 +23,7 @@ Kind = Literal[
     "potential_temperature",
     "pressure_difference",
     "stability",
+    "lapse_rate",
     "rain_rate",
     "duration",
     "hours",
@@ -107,6 +108,7 @@ METRIC: dict[Kind, Form] = {
     "potential_temperature": Form("K"),
     "pressure_difference": Form("hPa", 0.01),
     "stability": Form("per second"),
+    "lapse_rate": Form("°C per km", 1e3),
     "rain_rate": Form("mm/h", 3600.0),
     "duration": Form("s"),
     "hours": Form("h", 1.0 / 3600.0),
@@ -127,6 +129,7 @@ US: dict[Kind, Form] = {
     "pressure_difference": Form("inHg", 1.0 / 3386.389, extra_digits=1),
     "water_depth": Form("in", 1.0 / 25.4, extra_digits=2),
     "rain_rate": Form("in/h", 3600.0 / 25.4, extra_digits=1),
+    "lapse_rate": Form("°F per 1000 ft", 1.8 * 304.8),
     "area": Form("sq mi", 1.0 / 1609.344**2),
     "volume": Form("thousand acre-ft", 1e-3 / (43560.0 * 0.3048**3)),
 }
