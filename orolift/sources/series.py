@@ -260,7 +260,7 @@ def _with_gaps(series: Series) -> Series:
     span = f"from {dates[0]} to {dates[1]}"
     if count > MOST_HOURS:
         raise DataFileError(
-            f"{series.name}: {count} steps of {step:g} s are missing, the longest gap from {span}. Is a year mistyped? "
+            f"{series.name}: {count} steps of {step:g} s are missing, the longest gap {span}. Is a year mistyped? "
             "If not, run the parts before and after the gap by themselves."
         )
     new = np.concatenate(
@@ -277,7 +277,7 @@ def _with_gaps(series: Series) -> Series:
     files = (*series.files, *("",) * count)
     faults = {int(number[i]): text for i, text in series.faults.items()}
     faults |= {int(i): f"{series.name}: has no row for this hour." for i in number[series.time.size :]}
-    note = f"{series.name}: {count} steps are missing, the longest gap from {span}. They are shown as gaps."
+    note = f"{series.name}: {count} steps are missing, the longest gap {span}. They are shown as gaps."
     return replace(
         series,
         time=time[order],
