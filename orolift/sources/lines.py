@@ -17,13 +17,13 @@ from orolift.terrain.features import features
 from orolift.terrain.grid import grid_elevation
 from orolift.terrain.grid_line import POINTS, grid_line
 from orolift.terrain.range_normal import RangeNormal
-from orolift.terrain.transect import Transect
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
     from orolift.crossing.situation import Situation
     from orolift.sources.elevation_map import ElevationMap
+    from orolift.terrain.transect import Transect
 
     Array = NDArray[np.float64]
 
