@@ -125,28 +125,43 @@ class HoursPage:
 
 
 HOW = (
-    "Each hour is one crossing of its own, as if its air and wind lasted while it crosses: what changes on the way is "
-    "left out.",
-    "The time at a site is the time upwind and the time on the way: along the streamlines that arrive there, with "
-    "their own wind, from where the air was observed or from the upwind end of the line. Air that faster air behind it "
-    "would overtake arrives with that.",
-    "Descending warm dry air: the site lies behind the crest and not in a cold pool that stays, its potential "
-    "temperature is nearer to that of the incoming air at the crest than to that of the incoming air at its own height, "
-    "it is at least 1 °C warmer than the latter, and its relative humidity is lower. The numbers are a judgement.",
-    "Onset and end lie halfway between the last hour without and the first with it. Their error, one standard "
-    "deviation, joins half the time between these hours, 15 % of the time on the way for the wind along it, and the "
-    "spread of that time between the streamlines that arrive. What else is uncertain, the incoming air first of all, "
-    "is not in it.",
-    "Nothing is interpolated: hours that are missing or cannot be used stay empty, and hours in which no air crosses "
-    "are shown as such.",
-    "The Fine Fuel Moisture Code is carried from hour to hour (Van Wagner 1977) from 85 before the first; over hours "
-    "without air it is not known and goes on from where it was.",
+    (
+        "Each hour is one crossing of its own, as if its air and wind lasted while it crosses: what changes on the "
+        "way is left out."
+    ),
+    (
+        "The time at a site is the time upwind and the time on the way: along the streamlines that arrive there, with "
+        "their own wind, from where the air was observed or from the upwind end of the line. Air that faster air "
+        "behind it would overtake arrives with that."
+    ),
+    (
+        "Descending warm dry air: the site lies behind the crest and not in a cold pool that stays, its potential "
+        "temperature is nearer to that of the incoming air at the crest than to that of the incoming air at its own "
+        "height, it is at least 1 °C warmer than the latter, and its relative humidity is lower. The numbers are a "
+        "judgement."
+    ),
+    (
+        "Onset and end lie halfway between the last hour without and the first with it. Their error, one standard "
+        "deviation, joins half the time between these hours, 15 % of the time on the way for the wind along it, and "
+        "the spread of that time between the streamlines that arrive. What else is uncertain, the incoming air first "
+        "of all, is not in it."
+    ),
+    (
+        "Nothing is interpolated: hours that are missing or cannot be used stay empty, and hours in which no air "
+        "crosses are shown as such."
+    ),
+    (
+        "The Fine Fuel Moisture Code is carried from hour to hour (Van Wagner 1977) from 85 before the first; over "
+        "hours without air it is not known and goes on from where it was."
+    ),
 )
 """How times and stretches are worked out, for the page."""
-NO_SPREAD: Words = (
-    "Ranges from uncertain input are not worked out hour by hour: a crossing of one hour with its members says how sure "
-    "a single hour is.",
+ONE_ANSWER: Words = (
+    "Each crossing is worked out once: how much low air is blocked and how much of it goes round decides the lee "
+    "temperature, and what that and uncertain input may change is not worked out here. The report of one crossing says "
+    "how sure it is.",
 )
+"""Caution of pages that hold many crossings."""
 
 
 def hours_page(
@@ -192,7 +207,7 @@ def hours_page(
         sites=tuple(_site(hours, number, zone, units) for number in range(len(hours.sites))),
         catchments=_catchments(hours, zone),
         how=HOW,
-        cautions=(ALWAYS[0], NO_SPREAD, *ALWAYS[1:3]),
+        cautions=(ALWAYS[0], ONE_ANSWER, ALWAYS[2]),
         notes=notes,
     )
 

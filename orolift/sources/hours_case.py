@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass, replace
-from functools import lru_cache
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -31,7 +30,6 @@ if TYPE_CHECKING:
     from orolift.crossing.situation import Situation
     from orolift.sources.incoming import IncomingReading
     from orolift.sources.inputs import Inputs
-    from orolift.sources.lines import Lines
     from orolift.sources.series import Series
     from orolift.terrain.features import Features
 
@@ -42,8 +40,6 @@ MAP_CELLS = 192
 TURN = math.radians(5.0)
 """Lines over a raster are cut at multiples of this; the wind off the line counts by its component, so that at most
 0.1 % of it is lost."""
-MOST_LINES = 720
-"""Lines kept in memory: ten sites in every direction."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -107,7 +103,9 @@ def read_hours(case: str | Path, series: str | Path) -> HourSetup:
     sites = inputs.sites or (Site("Lee foot", shape.lee_foot_distance),)
     own_line, places, observed = None, np.empty((0, 2)), None
     if inputs.case.terrain.elevation_file is not None:
-        own_line, places, observed = _own_lines(inputs, sites)
+        from orolift.sources.own_lines import own_lines
+
+        own_line, places, observed = own_lines(inputs, sites)
         notes += ("Every site has a line of its own, along the wind of each hour, cut at multiples of 5 degrees.",)
     setup = HourSetup(
         inputs=inputs,
@@ -138,73 +136,6 @@ def _refuse_nothing(setup: HourSetup) -> None:
             return
     if first is not None:
         raise first
-
-
-def _own_lines(
-    inputs: Inputs, sites: tuple[Site, ...]
-) -> tuple[Callable[[int, float], Situation], Array, tuple[float, float] | None]:
-    """Line of each site along any bearing, places of the sites on the map, and that of the observation."""
-    from orolift.sources.lines import read_lines, situation_through
-
-    lines = read_lines(inputs, beside=_beside(inputs, sites))
-    places = site_places(lines, inputs, sites)
-
-    @lru_cache(maxsize=MOST_LINES)
-    def own_line(number: int, bearing: float) -> Situation:
-        x, y = places[number]
-        site = Site(sites[number].name, 0.0, sites[number].elevation)
-        return replace(situation_through(lines, float(x), float(y), bearing, (site,)), ends_too=False)
-
-    return own_line, places, _observed(lines, inputs)
-
-
-def _beside(inputs: Inputs, sites: tuple[Site, ...]) -> float:
-    """Farthest site from the middle of the case's line [m]."""
-    middle = 0.5 * float(inputs.transect.distance[-1])
-    offsets = [offset or 0.0 for offset in inputs.offsets] or [0.0]
-    return max(math.hypot(site.distance - middle, offset) for site, offset in zip(sites, offsets, strict=False))
-
-
-def site_places(lines: Lines, inputs: Inputs, sites: tuple[Site, ...]) -> Array:
-    """Places of sites on the map of a case.
-
-    Parameters
-    ----------
-    lines : Lines
-    inputs : Inputs
-    sites : tuple of Site
-        Those of the case, or one that stands for them on its line.
-
-    Returns
-    -------
-    ndarray (ns, 2) [m]
-    """
-    from orolift.sources.lines import map_places
-    from orolift.sources.map_inputs import place_on_map
-
-    if inputs.case.site:
-        return np.array([place_on_map(site, lines.placed) for site in inputs.case.site])
-    line = inputs.transect
-    found = []
-    for site in sites:
-        i = int(np.argmin(np.abs(line.distance - site.distance)))
-        if line.longitude is None or line.latitude is None:
-            raise ValueError("lines over a map have positions")
-        x, y = map_places(lines.placed, line.longitude[i : i + 1], line.latitude[i : i + 1])
-        found.append((float(x[0]), float(y[0])))
-    return np.array(found)
-
-
-def _observed(lines: Lines, inputs: Inputs) -> tuple[float, float] | None:
-    """Where the case says that its air is observed, on the map."""
-    from orolift.sources.lines import map_places
-
-    table = inputs.case.incoming
-    at = table.station or table.metar or table.sounding_at or table.model_at
-    if at is None or at.longitude is None or at.latitude is None:
-        return None
-    x, y = map_places(lines.placed, [at.longitude], [at.latitude])
-    return float(x[0]), float(y[0])
 
 
 def _ground(inputs: Inputs) -> MapGround | None:

@@ -79,6 +79,8 @@ class SiteState:
         Highest ground of the line before the site.
     shelter_distance : float or None [m]
         From there to the site, along the line.
+    shelter_longitude, shelter_latitude : float or None [degrees east, degrees north]
+        Where that is; None for a hand-entered ridge.
     crest_wind : float or None [m s-1]
         Component across the range.
     breaks_through : bool or None
@@ -104,6 +106,8 @@ class SiteState:
     travel: Travel | None = None
     shelter_height: float | None = None
     shelter_distance: float | None = None
+    shelter_longitude: float | None = None
+    shelter_latitude: float | None = None
     crest_wind: float | None = None
     breaks_through: bool | None = None
     descending: bool | None = None
@@ -159,6 +163,8 @@ def _state(site: LeeAir, crossing: Crossing, observed_at: float) -> SiteState:
         travel=travel_to(crossing, site, observed_at),
         shelter_height=float(line.elevation[shelter]),
         shelter_distance=site.distance - float(line.distance[shelter]),
+        shelter_longitude=None if line.longitude is None else float(line.longitude[shelter]),
+        shelter_latitude=None if line.latitude is None else float(line.latitude[shelter]),
         crest_wind=crossing.flow.crest_wind,
         breaks_through=crossing.flow.breaks_through,
         descending=descending_warm_dry(crossing, site),

@@ -111,7 +111,7 @@ def timeline_figure(hours: Hours, number: int, zone: tzinfo, units: Units) -> Fi
     Figure of TimelineDrawing
         Scales are those of all sites together, so that sites can be compared.
     """
-    site = hours.sites[number]
+    site, words = hours.sites[number], zone_words(datetime.fromtimestamp(hours.time[0], zone))
     return Figure(
         key=f"timeline-{number + 1}",
         drawing=_drawing(hours, number, zone, units, WIDE),
@@ -119,7 +119,7 @@ def timeline_figure(hours: Hours, number: int, zone: tzinfo, units: Units) -> Fi
         title=f"{site.name} hour by hour",
         alt=_alt(site, units),
         caption=(
-            f"Times are those at which the air is at the site, {zone_words(datetime.fromtimestamp(hours.time[0], zone))}. "
+            f"Times are those at which the air is at the site, {words}. "
             "Upper strip: bold where descending warm dry air is there, thin where air crosses. Grey: nothing is known; "
             "hatched: no air crosses. All sites have the same scales."
         ),
@@ -128,15 +128,16 @@ def timeline_figure(hours: Hours, number: int, zone: tzinfo, units: Units) -> Fi
 
 def _alt(site: SiteTimeline, units: Units) -> str:
     parts = [f"{site.crossing_hours} of {len(site.states)} hours have air that crosses."]
-    for key, kind, name in (
+    shown: tuple[tuple[str, Kind, str], ...] = (
         ("temperature", "temperature", "Temperature"),
         ("relative_humidity", "share", "Humidity"),
         ("wind_10m", "wind", "Wind at 10 m"),
         ("warming", "temperature_change", "Warming"),
-    ):
+    )
+    for key, kind, name in shown:
         values = values_of(site.states, key)
         if np.isfinite(values).any():
-            low, high = (quantity(float(end(values)), kind, 0, units) for end in (np.nanmin, np.nanmax))  # type: ignore[arg-type]
+            low, high = (quantity(float(end(values)), kind, 0, units) for end in (np.nanmin, np.nanmax))
             parts.append(f"{name} {low} to {high}.")
     return " ".join(parts)
 
@@ -187,7 +188,7 @@ def plans(site: SiteTimeline) -> tuple[PanelPlan, ...]:
             (line("warming", "warm", "warming"),),
             least=4.0,
         ),
-        PanelPlan("Rain and snow", "rain_rate", 48.0, (line("rain", "rain-line", "rain"),), 0.0, 1.0 / 3600.0, True),
+        PanelPlan("Rain and snow", "rain_rate", 48.0, (line("rain", "dew", "rain"),), 0.0, 1.0 / 3600.0, filled=True),
     ]
     if np.isfinite(site.fine_fuel_code).any():
         code = Line(site.fine_fuel_code, "ink-line", "code")
@@ -366,7 +367,7 @@ def _beside(x: Array, y: Array, name: str, kind: str, layout: Layout) -> list[tu
     """Places for the name of a line: near it, anywhere along it."""
     known = np.flatnonzero(np.isfinite(y))
     word = {"warm": "name warm", "dew": "name dew"}.get(kind, "name soft" if "aloft" in kind else "name ink")
-    out = []
+    out: list[tuple[Label, ...]] = []
     for share in (0.05, 0.2, 0.35, 0.5, 0.65, 0.8, 0.95):
         if not known.size:
             break
