@@ -18,6 +18,7 @@ from orolift.cli.options import (
     UNITS_OPTION,
     VERBOSE_OPTION,
     file_option,
+    refuse_files,
 )
 
 if TYPE_CHECKING:
@@ -54,6 +55,8 @@ def command(
     from orolift.sources.files import write_all
     from orolift.spread.bearings import bearings_of
 
+    files["report"] = files["report"] or f"{Path(case).stem}_bearings.html"
+    refuse_files(files)
     setup = read_bearings(case, step)
     log.debug("%s read, %d directions", case, setup.directions)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
@@ -66,10 +69,9 @@ def command(
         given=setup.inputs.wind_from,
         planned=setup.directions,
     )
-    page = files["report"] or f"{Path(case).stem}_bearings.html"
-    write_all(contents_of(bearings, setup, units, {**files, "report": page}))
+    write_all(contents_of(bearings, setup, units, files))
     if not quiet:
-        click.echo("\n".join([*summary_of(bearings, setup), f"Report: {page}"]))
+        click.echo("\n".join([*summary_of(bearings, setup), f"Report: {files['report']}"]))
     if stopped:
         done = f"{bearings.wind_from.size} of {bearings.planned} directions"
         raise click.Abort(f"interrupted after {done}; what was finished is written.")

@@ -18,6 +18,7 @@ from orolift.cli.options import (
     UNITS_OPTION,
     VERBOSE_OPTION,
     file_option,
+    refuse_files,
 )
 
 if TYPE_CHECKING:
@@ -59,6 +60,8 @@ def command(
     from orolift.sources.hours_case import read_hours
     from orolift.spread.timeline import hours_of
 
+    files["report"] = files["report"] or f"{Path(case).stem}_hours.html"
+    refuse_files(files)
     if files["netcdf"] is not None:
         from orolift.sources.hours_netcdf import refuse_without_netcdf
 
@@ -76,10 +79,9 @@ def command(
         planned=setup.series.time.size,
         catchments=() if ground is None else [one.name for one in ground.catchments],
     )
-    page = files["report"] or f"{Path(case).stem}_hours.html"
-    write_all(contents_of(hours, setup, units, {**files, "report": page}))
+    write_all(contents_of(hours, setup, units, files))
     if not quiet:
-        click.echo("\n".join([*summary_of(hours, setup), f"Report: {page}"]))
+        click.echo("\n".join([*summary_of(hours, setup), f"Report: {files['report']}"]))
     if stopped:
         raise click.Abort(
             f"interrupted after {hours.time.size} of {hours.planned} hours; what was finished is written."

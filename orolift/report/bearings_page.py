@@ -7,8 +7,8 @@ from datetime import UTC
 from typing import TYPE_CHECKING
 
 from orolift.report.cautions import ALWAYS
-from orolift.report.hours_page import ONE_ANSWER
 from orolift.report.figures.roses import roses_figure
+from orolift.report.hours_page import ONE_ANSWER
 from orolift.report.quantities import Amount
 from orolift.report.words import moment
 
@@ -92,7 +92,7 @@ HOW = (
     "Each direction is one crossing with the same column, all its winds turned together.",
     (
         "Worst for fire is the direction with the largest product of the vapour pressure deficit of the air at the "
-        "site and the wind at 10 m there: the two that hot-dry-windy measures multiply (Srock et al. 2018), here at the "
+        "site and the wind at 10 m there: what hot-dry-windy measures multiply (Srock et al. 2018), here at the "
         "ground. Directions in which a cold pool or blocked air lies at the site have no wind and do not count."
     ),
     "Best for rain is the direction with the most rain and snow at the site along its line.",

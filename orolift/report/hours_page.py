@@ -157,9 +157,11 @@ HOW = (
 )
 """How times and stretches are worked out, for the page."""
 ONE_ANSWER: Words = (
-    "Each crossing is worked out once: how much low air is blocked and how much of it goes round decides the lee "
-    "temperature, and what that and uncertain input may change is not worked out here. The report of one crossing says "
-    "how sure it is.",
+    (
+        "Each crossing is worked out once: how much low air is blocked and how much of it goes round decides the lee "
+        "temperature, and what that and uncertain input may change is not worked out here. The report of one crossing "
+        "says how sure it is."
+    ),
 )
 """Caution of pages that hold many crossings."""
 
@@ -283,8 +285,7 @@ def _lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
                 " hours are here.",
             )
         )
-    for site in hours.sites[:NAMED]:
-        out.append((*_outcome(site, zone), "."))
+    out += [(*_outcome(site, zone), ".") for site in hours.sites[:NAMED]]
     if len(hours.sites) > NAMED:
         more = len(hours.sites) - NAMED
         out.append((f"{counted(more, 'more site follows', 'more sites follow')} below.".capitalize(),))

@@ -77,9 +77,11 @@ def read_bearings(case: str | Path, step_deg: int) -> BearingSetup:
     shape = features(inputs.transect, inputs.sites[0].distance if inputs.sites else None)
     sites = inputs.sites or (Site("Lee foot", shape.lee_foot_distance),)
     notes = [
-        f"All winds of the incoming air are turned together; in the case itself it comes from "
-        f"{math.degrees(inputs.wind_from):.0f} degrees. Temperature and humidity stay as they are: real air from "
-        "another direction has its own.",
+        (
+            "All winds of the incoming air are turned together; in the case itself it comes from "
+            f"{math.degrees(inputs.wind_from):.0f} degrees. Temperature and humidity stay as they are: real air from "
+            "another direction has its own."
+        )
     ]
     if inputs.lee.known:
         notes.append("What [lee] says of the air in the lee is left out: it holds for one side of the range.")

@@ -21,7 +21,7 @@ if TYPE_CHECKING:
     Array = NDArray[np.float64]
 
 WIDE = Layout("wide", 960.0, 308.0, 0.0, 960.0, 40.0, 250.0, 14.0, 4)
-NARROW = Layout("narrow", 344.0, 512.0, 0.0, 344.0, 36.0, 440.0, 12.5, 2)
+NARROW = Layout("narrow", 344.0, 488.0, 0.0, 344.0, 36.0, 440.0, 12.5, 2)
 FILL = 0.86
 """Share of its sector that a bar fills."""
 LEAST_SPAN = {"temperature_change": 1.0, "share": 1.0, "rain_rate": 1.0 / 3600.0, "height": 100.0}
@@ -179,8 +179,9 @@ def _rose(
     ]
     whole: Kind = "temperature_difference" if plan.quantity == "temperature_change" else plan.quantity
     rim = f"rim {quantity(full, whole, _digits(full, whole, units), units)}"
+    peak = _peak(values, bearings, plan, units, short=layout.name == "narrow")
     labels += [
-        Label(_peak(values, bearings, plan, units), x, round(y + radius + 2.4 * letter, 1), "middle", "name ink"),
+        Label(peak, x, round(y + radius + 2.4 * letter, 1), "middle", "name ink"),
         Label(rim, x, round(y + radius + 3.6 * letter, 1), "middle", "note"),
     ]
     return Rose(rings, tuple(bars), tuple(marks), tuple(labels))
@@ -192,13 +193,15 @@ def _digits(value: float, kind: Kind, units: Units) -> int:
     return 0 if abs(shown - round(shown)) < 1e-6 else 1
 
 
-def _peak(values: Array, bearings: Bearings, plan: RosePlan, units: Units) -> str:
+def _peak(values: Array, bearings: Bearings, plan: RosePlan, units: Units, *, short: bool) -> str:
     if not np.isfinite(values).any():
         return "no air crosses"
     i = int(np.nanargmin(values) if plan.lowest else np.nanargmax(values))
     if plan.quantity == "rain_rate" and displayed(float(values[i]), plan.quantity, units) < 0.05:
         return "no rain"
     said = quantity(float(values[i]), plan.quantity, plan.digits, units)
+    if short:
+        return f"{said}, from {_degrees(bearings.wind_from[i])}"
     return f"{plan.most} {said}, from {_degrees(bearings.wind_from[i])}"
 
 
