@@ -55,10 +55,16 @@ class Quantity:
 
 
 QUANTITIES = (
-    Quantity("temperature_c", "temperature", "degC", "air temperature", offset=-273.15, standard_name="air_temperature"),
+    Quantity(
+        "temperature_c", "temperature", "degC", "air temperature", offset=-273.15, standard_name="air_temperature"
+    ),
     Quantity("dew_point_c", "dew_point", "degC", "dew point", offset=-273.15, standard_name="dew_point_temperature"),
     Quantity(
-        "relative_humidity_percent", "relative_humidity", "percent", "relative humidity over liquid water", 100.0,
+        "relative_humidity_percent",
+        "relative_humidity",
+        "percent",
+        "relative humidity over liquid water",
+        100.0,
         standard_name="relative_humidity",
     ),
     Quantity("wind_10m_ms", "wind_10m", "m s-1", "wind at 10 m, across the range", standard_name="wind_speed"),
@@ -74,7 +80,7 @@ QUANTITIES = (
     ),
     Quantity("snow_mm_per_h", "snow", "mm h-1", "snow at the site, as water", 3600.0),
     Quantity("crest_wind_ms", "crest_wind", "m s-1", "wind component across the range at the crest"),
-)  # fmt: skip
+)
 """Numbers of a site and hour; the fine fuel code and the times come from the timeline."""
 
 
