@@ -16,7 +16,9 @@ from orolift.report.quantities import bare, shown, unit
 from orolift.report.words import plain
 
 if TYPE_CHECKING:
+    from orolift.report.bearings_page import BearingsPage
     from orolift.report.compare import ComparePage
+    from orolift.report.hours_page import HoursPage
     from orolift.report.page import Page
 
 INLINED = ("style.css", "reading.js")
@@ -65,6 +67,16 @@ def render_compare(page: ComparePage) -> str:
     str
     """
     return _environment().get_template("compare.html.jinja").render(page=page)
+
+
+def render_hours(page: HoursPage) -> str:
+    """The page of a series of hours as one self-contained HTML file, as `render`."""
+    return _environment().get_template("hours.html.jinja").render(page=page)
+
+
+def render_bearings(page: BearingsPage) -> str:
+    """The page of every wind direction as one self-contained HTML file, as `render`."""
+    return _environment().get_template("bearings.html.jinja").render(page=page)
 
 
 @cache
