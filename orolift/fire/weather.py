@@ -123,6 +123,30 @@ def stacked(weathers: list[SiteWeather]) -> SiteWeather:
     return SiteWeather(height_above_ground=weathers[0].height_above_ground, **fields)
 
 
+def joined(weathers: list[SiteWeather]) -> SiteWeather:
+    """Views with leading axes (n,) one after the other, to be worked out in one go.
+
+    Parameters
+    ----------
+    weathers : list of SiteWeather
+        With the same heights above ground.
+
+    Returns
+    -------
+    SiteWeather, leading axes (sum of n,)
+    """
+    sizes = [max(np.size(x) for x in (one.temperature, one.mixing_ratio, one.wind)) for one in weathers]
+    fields = {}
+    for name in SiteWeather.__dataclass_fields__:
+        if name != "height_above_ground":
+            rows = [np.asarray(getattr(one, name)) for one in weathers]
+            tail = (weathers[0].height_above_ground.size,) if name.startswith("layer_") else ()
+            fields[name] = np.concatenate(
+                [np.broadcast_to(row, (size, *tail)) for row, size in zip(rows, sizes, strict=True)]
+            )
+    return SiteWeather(height_above_ground=weathers[0].height_above_ground, **fields)
+
+
 def humidity(weather: SiteWeather) -> Array:
     """Relative humidity at the site, at most 1: air above saturation counts as saturated [1], (...)."""
     found = relative_humidity_from_mixing_ratio(weather.pressure, weather.temperature, weather.mixing_ratio)
