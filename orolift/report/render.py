@@ -16,6 +16,7 @@ from orolift.report.quantities import bare, shown, unit
 from orolift.report.words import plain
 
 if TYPE_CHECKING:
+    from orolift.report.index import IndexPage
     from orolift.report.page import Page
 
 INLINED = ("style.css", "reading.js")
@@ -37,19 +38,22 @@ class Inlined:
     hash: str
 
 
-def render(page: Page) -> str:
-    """The report as one self-contained HTML file.
+def render(page: Page | IndexPage, template: str = "page.html.jinja") -> str:
+    """A page as one self-contained HTML file.
 
     Parameters
     ----------
-    page : Page
+    page : Page or IndexPage
+        With at least a title, a version, a time it was made and units.
+    template : str
+        Name of the template that extends the skeleton.
 
     Returns
     -------
     str
         The same text for the same page, whenever and wherever it is made.
     """
-    return _environment().get_template("page.html.jinja").render(page=page)
+    return _environment().get_template(template).render(page=page)
 
 
 @cache
