@@ -17,7 +17,7 @@ from orolift.report.words import plain
 if TYPE_CHECKING:
     from orolift.report.page import Page
 
-INLINED = ("style.css", "reading.js")
+INLINED = ("style.css", "reading.js", "sorting.js")
 """Files of the package that pages carry inside them."""
 
 

@@ -118,6 +118,7 @@ def _placed(site: PlacedSite, air: LeeAir, crossing: Crossing) -> LeeAir:
     """The air at a site with its number in the case, and what its own line is like."""
     own = SiteLine(
         offset=site.offset,
+        base=crossing.features.base,
         crest=crossing.features.crest,
         blocked_top=crossing.flow.blocked_top,
         beyond_crest=air.distance - crossing.features.crest_distance,
