@@ -311,10 +311,10 @@ def _remarks(crossing: Crossing) -> tuple[Words, ...]:
     low = [air.name for air in crossing.lee if air.elevation < ground]
     if low:
         more = f" and {len(low) - MOST_LOW} more" if len(low) > MOST_LOW else ""
+        named = f"{', '.join(low[:MOST_LOW])}{more}"
         out.append(
             (
-                f"Below the upwind ground at {', '.join(low[:MOST_LOW])}{more}: "
-                "the incoming air is continued down from ",
+                f"Below the upwind ground at {named}: the incoming air is continued down from ",
                 Amount(ground, "height"),
                 ", so the comparison there is with air that does not exist.",
             )
