@@ -18,6 +18,7 @@ from orolift.errors import CaseError
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
     from orolift.crossing.situation import Situation
+    from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
@@ -35,6 +36,7 @@ class Worked:
     crossing: Crossing
     mapped: Mapped | None
     flags: tuple[str, ...]
+    fire: tuple[SiteFire, ...]
     results: Results
 
 
@@ -146,9 +148,20 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    return Worked(
-        inputs, situation, crossing, mapped, flags, results_of(crossing, inputs.case, mapped, flags, inputs.places)
-    )
+    fire, reached, to_know = fire_of(inputs, crossing)
+    crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, results)
+
+
+def fire_of(inputs: Inputs, crossing: Crossing) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
+    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    from orolift.fire.flags import fire_flags, windward_cautions
+    from orolift.fire.sites import fire_at_sites
+
+    found = fire_at_sites(crossing, inputs.when, inputs.fire)
+    rules = inputs.fire.rules
+    return found, fire_flags(found, rules), windward_cautions(found, rules)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -184,6 +197,8 @@ def report_of(worked: Worked, units: Units) -> str:
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
+        fire=worked.fire,
+        rules=worked.inputs.fire.rules,
     )
     html = render(page)
     log.debug("report rendered, %d kB", len(html) // 1024)

@@ -139,7 +139,7 @@ def _remarks(crossing: Crossing) -> tuple[Words, ...]:
         where = (*where, "The methods agree.")
     gusts = (
         "; gusts are the mean with 2.5 to 3.5 standard deviations of turbulence, or the strongest wind of the lowest "
-        "kilometre brought down whole where that is more."
+        "1 km brought down whole where that is more."
     )
     start = "Wind at 10 m by the logarithmic law over ground of roughness length "
     roughness: Words = (start, Amount(crossing.settings.roughness, "height", 2), gusts)

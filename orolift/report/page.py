@@ -19,6 +19,7 @@ from orolift.report.figures.gauge_scatter import gauge_scatter
 from orolift.report.figures.path import path
 from orolift.report.figures.rain_line import rain_line
 from orolift.report.figures.section import section
+from orolift.report.fire import FireWeather, fire_weather
 from orolift.report.inputs import Inputs, inputs
 from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
@@ -37,6 +38,8 @@ if TYPE_CHECKING:
     from datetime import datetime
 
     from orolift.crossing.result import Crossing
+    from orolift.fire.rules import RuleSet
+    from orolift.fire.sites import SiteFire
     from orolift.report.figures.answers import AnswersDrawing
     from orolift.report.figures.budget import BudgetDrawing
     from orolift.report.figures.column import ColumnDrawing
@@ -81,6 +84,7 @@ class Page:
     gauge_scatter : Figure or None
     sites : Sites
     sites_map : Figure or None
+    fire : FireWeather or None
     answers : Answers
     answers_figure : Figure or None
     lee_wind : LeeWind
@@ -112,6 +116,7 @@ class Page:
     gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
     sites_map: Figure[SitesMapDrawing] | None
+    fire: FireWeather | None
     answers: Answers
     answers_figure: Figure[AnswersDrawing] | None
     lee_wind: LeeWind
@@ -135,6 +140,8 @@ def page_of(
     flags: tuple[str, ...] = (),
     findings: Iterable[Finding] = (),
     stagnant_top: float | None = None,
+    fire: tuple[SiteFire, ...] = (),
+    rules: RuleSet | None = None,
 ) -> Page:
     """The page of a crossing.
 
@@ -160,6 +167,10 @@ def page_of(
         What quality control has seen in the incoming air.
     stagnant_top : float, optional [m above sea level]
         Top of a stagnant layer at the ground of the incoming air, kept out of the inflow.
+    fire : tuple of SiteFire
+        Fire weather at the sites, in their order; without, its section is left out.
+    rules : RuleSet, optional
+        Thresholds it was judged by.
 
     Returns
     -------
@@ -191,10 +202,11 @@ def page_of(
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
         sites=sites(crossing),
         sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
+        fire=fire_weather(crossing, fire, rules) if fire else None,
         answers=answers(few),
         answers_figure=answers_figure(few, units),
         lee_wind=lee_wind(few),
-        inputs=inputs(line, bearing, freezing, case_text),
+        inputs=inputs(line, bearing, freezing, case_text, units),
         column=column(line, stagnant_top, units),
         findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),
         method=method(),

@@ -19,6 +19,7 @@ from orolift.errors import CaseError, OroliftError
 from orolift.sources.case import case_from_text
 from orolift.sources.case_model import TransectTable
 from orolift.sources.files import read_text
+from orolift.sources.fire_inputs import fire_settings
 from orolift.sources.incoming import read_incoming
 from orolift.sources.quality import Finding, cautions
 from orolift.sources.ridge_csv import read_ridge
@@ -35,6 +36,7 @@ if TYPE_CHECKING:
     from orolift.air.column import IncomingAir
     from orolift.crossing.result import Site
     from orolift.crossing.solve import CrestLine
+    from orolift.fire.sites import FireSettings
     from orolift.sources.case_model import Case, LeeTable, SiteTable, Terrain
     from orolift.sources.site_places import SitePlace
     from orolift.terrain.transect import Transect
@@ -74,6 +76,8 @@ class Inputs:
         Direction the transect is drawn from: given, or that of the mean wind before the range.
     ground_layer : GroundLayer
         Stagnant layer on the ground of the incoming air, to be kept out of the inflow.
+    fire : FireSettings
+        Thresholds and memory of fire weather.
     """
 
     case: Case
@@ -92,6 +96,7 @@ class Inputs:
     findings: tuple[Finding, ...]
     wind_from: float
     ground_layer: GroundLayer
+    fire: FireSettings
 
 
 def read_inputs(path: str | Path) -> Inputs:
@@ -191,6 +196,7 @@ def _inputs(case: Case, path: Path, text: str) -> Inputs:
         findings=findings,
         wind_from=wind_from,
         ground_layer=NO_GROUND_LAYER if "lapse rate" in incoming.origin else ground_layer(incoming, shape.crest),
+        fire=fire_settings(case, folder),
     )
 
 

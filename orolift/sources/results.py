@@ -13,6 +13,7 @@ from orolift import __version__
 from orolift.air.column import column_vapour, freezing_level
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.constants import MELTING_POINT
+from orolift.sources.fire_results import FireBlock, fire_blocks
 from orolift.sources.rain_results import (
     CatchmentBlock,
     GaugesBlock,
@@ -28,6 +29,7 @@ if TYPE_CHECKING:
     from collections.abc import Sequence
 
     from orolift.crossing.result import Crossing, LeeAir
+    from orolift.fire.sites import SiteFire
     from orolift.sources.case_model import Case
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.site_places import SitePlace
@@ -183,7 +185,7 @@ class Results(Block):
     failed_sites: list[FailedSiteBlock] = Field(description="sites of which nothing could be worked out, and why")
     catchments: list[CatchmentBlock]
     gauges: GaugesBlock | None = Field(description="map against gauges; null without gauges")
-    fire: list[dict[str, float]] = Field(description="indices by site; empty until worked out")
+    fire: list[FireBlock] = Field(description="fire weather by site")
     flags: list[str]
     cautions: list[str]
     notes: list[str] = Field(description="assumptions made, in sentences")
@@ -199,6 +201,7 @@ def results_of(
     case: Case,
     mapped: Mapped | None = None,
     flags: tuple[str, ...] = (),
+    fire: tuple[SiteFire, ...] = (),
     places: Sequence[SitePlace] = (),
 ) -> Results:
     """Results of a crossing, unrounded.
@@ -211,6 +214,8 @@ def results_of(
         Rain over the map.
     flags : tuple of str
         Danger thresholds reached, in sentences.
+    fire : tuple of SiteFire
+        Fire weather at the sites.
     places : sequence of SitePlace
         Of all sites of the case, for their positions.
 
@@ -238,7 +243,7 @@ def results_of(
         failed_sites=[FailedSiteBlock(**asdict(site)) for site in crossing.failed],
         catchments=[] if mapped is None else catchment_blocks(mapped.rain),
         gauges=None if mapped is None else gauges_block(mapped.rain),
-        fire=[],
+        fire=fire_blocks(fire),
         flags=[*flags],
         cautions=[*crossing.cautions],
         notes=[*crossing.notes],

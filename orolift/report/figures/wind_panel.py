@@ -12,6 +12,7 @@ from orolift.report.figures.axes import Layout, Scale, Tick, level_ticks, place
 from orolift.report.figures.cloud import runs
 from orolift.report.figures.drawing import Curve, Label, Pin, path_data, polyline, thinned
 from orolift.report.figures.placing import Board, Box, put
+from orolift.report.local_units import local
 from orolift.report.quantities import from_displayed
 from orolift.report.story import main_site
 
@@ -165,13 +166,13 @@ def _names(view: View, layout: Layout, y: Array, high: Array, gauges: tuple[Gaug
         ),
     )
     site = main_site(view.crossing)
-    wanted = [("wind in the lowest 300 m", "name soft", 0.02, "start")]
+    wanted = [(local("wind in the lowest 300 m", view.units), "name soft", 0.02, "start")]
     if view.units == "us":
         wanted = [("wind in the lowest 1000 ft", "name soft", 0.02, "start")]
     if np.max(y - high) > 3.0:
         wanted.append(("range of methods", "name soft", 0.99, "end"))
     if gauges and site.wind is not None:
-        wanted.append(("10 m wind and gusts", "name ink", 0.99, "end"))
+        wanted.append((local("10 m wind and gusts", view.units), "name ink", 0.99, "end"))
     out: list[Label] = []
     for text, kind, share, anchor in wanted:
         shares = (share, 0.02, 0.2, 0.35, 0.99, 0.8, 0.66, 0.5)
