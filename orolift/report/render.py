@@ -22,7 +22,7 @@ if TYPE_CHECKING:
     from orolift.report.index import IndexPage
     from orolift.report.page import Page
 
-INLINED = ("style.css", "reading.js")
+INLINED = ("style.css", "reading.js", "sorting.js")
 """Files of the package that pages carry inside them."""
 
 
