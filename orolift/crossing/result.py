@@ -109,7 +109,7 @@ class SiteLine:
     ----------
     offset : float [m]
         Distance of the site across the crossing's own line, positive to the right of the wind.
-    crest, blocked_top : float [m above sea level]
+    base, crest, blocked_top : float [m above sea level]
         Of the site's line.
     beyond_crest : float [m]
         Distance of the site downwind of that crest.
@@ -121,6 +121,7 @@ class SiteLine:
     """
 
     offset: float
+    base: float
     crest: float
     blocked_top: float
     beyond_crest: float

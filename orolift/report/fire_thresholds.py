@@ -89,11 +89,11 @@ def threshold_rows(found: tuple[SiteFire, ...], lee: tuple[LeeAir, ...]) -> tupl
     rows = [
         (
             ORDER.index(threshold.judged.status),
-            number,
+            air.number,
             place,
-            _row(site, air, number, threshold.judged, threshold.movers),
+            _row(site, air, air.number, threshold.judged, threshold.movers),
         )
-        for number, (site, air) in enumerate(zip(found, lee, strict=True), start=1)
+        for site, air in zip(found, lee, strict=True)
         for place, threshold in enumerate(site.thresholds)
     ]
     rows.sort(key=lambda row: row[:3])
