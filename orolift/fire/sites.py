@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -15,6 +15,8 @@ from orolift.fire.values import site_values
 from orolift.fire.weather import SiteWeather, joined, site_weather, stacked
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     from numpy.typing import ArrayLike
 
     from orolift.crossing.result import Crossing, LeeAir, Side, When
@@ -73,6 +75,8 @@ class SiteFire:
     indices : Indices
     night : NightAtSite
     thresholds : tuple of Threshold
+    ranges : mapping of str to (float, float)
+        10 % and 90 % of the members by the name of an index, in SI; empty without members.
     """
 
     number: int
@@ -84,6 +88,7 @@ class SiteFire:
     indices: Indices
     night: NightAtSite
     thresholds: tuple[Threshold, ...]
+    ranges: Mapping[str, tuple[float, float]] = field(default_factory=dict)
 
 
 def fire_at_sites(crossing: Crossing, when: When, settings: FireSettings | None = None) -> tuple[SiteFire, ...]:

@@ -158,7 +158,35 @@ def _block(site: SiteFire) -> FireBlock:
         mixing_height_by_day_m=site.night.mixing_height_by_day,
         night=_night(site),
         rules=[_rule(threshold) for threshold in site.thresholds],
+        range=_ranges(site),
     )
+
+
+_RANGES = {
+    "vapour_pressure_deficit": ("vapour_pressure_deficit_hpa", 0.01),
+    "equilibrium_fuel_moisture": ("equilibrium_fuel_moisture_percent", 100.0),
+    **{
+        name: (name, 1.0)
+        for name in (
+            "fosberg_index",
+            "fosberg_index_raw",
+            "fosberg_index_with_drought",
+            "hot_dry_windy",
+            "fine_fuel_code",
+            "initial_spread_index",
+            "angstroem_index",
+        )
+    },
+}
+
+
+def _ranges(site: SiteFire) -> Range:
+    """Ranges of the members under the keys of the block."""
+    return {
+        key: (factor * site.ranges[name][0], factor * site.ranges[name][1])
+        for name, (key, factor) in _RANGES.items()
+        if name in site.ranges
+    }
 
 
 def _night(site: SiteFire) -> NightBlock:
