@@ -26,6 +26,7 @@ from orolift.report.places import Journey, journey, section_heading
 from orolift.report.quantities import Units, quantity
 from orolift.report.rain import RainOnLine, rain_on_line
 from orolift.report.rain_over_map import RainOverMap, rain_over_map
+from orolift.report.reading import Reading, reading
 from orolift.report.sites import Sites, sites
 from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
@@ -66,6 +67,7 @@ class Page:
     briefing : Briefing
     section_heading : Words
     section : Figure
+    reading : Reading
     journey : Journey
     path : Figure
     causes : Causes
@@ -95,6 +97,7 @@ class Page:
     briefing: Briefing
     section_heading: Words
     section: Figure[SectionDrawing]
+    reading: Reading
     journey: Journey
     path: Figure[PathDrawing]
     causes: Causes
@@ -171,6 +174,7 @@ def page_of(
         briefing=briefing(crossing, bearing, freezing),
         section_heading=section_heading(crossing, followed),
         section=section(crossing, followed, bearing, freezing, units),
+        reading=reading(crossing, units),
         journey=journey(crossing, followed),
         path=path(crossing, followed, units),
         causes=causes(crossing),

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+import base64
+import hashlib
+from dataclasses import dataclass
 from functools import cache
 from typing import TYPE_CHECKING
 
@@ -13,6 +16,24 @@ from orolift.report.words import plain
 
 if TYPE_CHECKING:
     from orolift.report.page import Page
+
+INLINED = ("style.css", "reading.js")
+"""Files of the package that pages carry inside them."""
+
+
+@dataclass(frozen=True)
+class Inlined:
+    """A file of this package as it stands in a page.
+
+    Attributes
+    ----------
+    text : Markup
+    hash : str
+        Of exactly this text, as a content security policy names it.
+    """
+
+    text: Markup
+    hash: str
 
 
 def render(page: Page) -> str:
@@ -41,8 +62,12 @@ def _environment() -> Environment:
         lstrip_blocks=True,
         auto_reload=False,
     )
-    style, _, _ = loader.get_source(environment, "style.css")
-    # The style sheet is ours and data: inside a template "{#" of a rule would open a comment.
-    environment.globals["style"] = Markup(style)  # noqa: S704 (a file of this package, no input reaches it)
+    environment.globals["inlined"] = {name: _inlined(loader.get_source(environment, name)[0]) for name in INLINED}
     environment.filters.update(shown=shown, bare=bare, unit=unit, plain=plain)
     return environment
+
+
+def _inlined(text: str) -> Inlined:
+    """A file as data: as a template "{#" of a style rule would open a comment."""
+    digest = base64.b64encode(hashlib.sha256(text.encode()).digest()).decode()
+    return Inlined(Markup(text), f"sha256-{digest}")  # noqa: S704 (a file of this package, no input reaches it)
