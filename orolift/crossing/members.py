@@ -16,7 +16,7 @@ from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air
 from orolift.crossing.result import Site, WarmingParts, When
 from orolift.crossing.settings import Settings, checked
 from orolift.crossing.sites import Arrived, arrived
-from orolift.crossing.solve import solve
+from orolift.crossing.solve import NOTHING, solve
 from orolift.crossing.sun import sun_height
 from orolift.crossing.wind import winds_at
 from orolift.terrain.features import features
@@ -34,8 +34,6 @@ if TYPE_CHECKING:
 
 PARTS = tuple(field.name for field in fields(WarmingParts))
 """Parts of the warming, by name."""
-RAINING = 0.1 / 3600.0
-"""Rate [kg m-2 s-1] from which it rains at a place: 0.1 mm/h, what gauges resolve; common practice, no source."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -141,7 +139,7 @@ def members_of(situation: Situation, variation: Variation, *, streamlines: int =
     lee = situation.lee or Lee() if part.lee is None else part.lee
     solution = solve(ground, part.incoming, part.settings, lee, members=count, streamlines=streamlines)
     if part.share is not None:
-        blocked = solution.blocked_top > shape.base + 1.0
+        blocked = solution.blocked_top > shape.base + NOTHING
         solution.going_round[:] = np.where(blocked, part.share(solution.going_round), 0.0)
     known = (lee if isinstance(lee, Lee) else lee[0]).known
     freezing = settings.freezing
@@ -220,6 +218,7 @@ def _of_flow(
         ),
         "dividing_height": np.broadcast_to(blocked.dividing_height, each),
         "blocked_top": solution.blocked_top,
+        "blocked": (solution.blocked_top > ground.shape.base + NOTHING).astype(np.float64),
         "going_round_share": solution.going_round,
         "cloud_base": cloud_bases(solution, ground.shape, ground.transect.distance, freezing=freezing),
         "breaks_through": chance,

@@ -161,7 +161,7 @@ def spread_of(
         failed += outcome.value[1]
     whole = _joined(parts, [min(CHUNK, members - first) for first in range(0, members, CHUNK)])
     named = dict(zip(COLUMNS, level.T, strict=True))
-    full = with_method_error(whole.sites, crossing, {name: normal(named[name]) for name in METHOD})
+    full = with_method_error(whole.sites, crossing, uncertainty, {name: normal(named[name]) for name in METHOD})
     return Spread(
         members=members,
         seed=seed,
@@ -240,7 +240,9 @@ def _joined(parts: list[Members], sizes: list[int]) -> Members:
     return Members(np.concatenate([part.crosses for part in parts]), values, sites)
 
 
-def with_method_error(sites: dict[str, Array], crossing: Crossing, error: dict[str, Array]) -> dict[str, Array]:
+def with_method_error(
+    sites: dict[str, Array], crossing: Crossing, uncertainty: Uncertainty, error: dict[str, Array]
+) -> dict[str, Array]:
     """What members give at the sites, with the error of the method added.
 
     Parameters
@@ -248,6 +250,8 @@ def with_method_error(sites: dict[str, Array], crossing: Crossing, error: dict[s
     sites : dict of str to ndarray (m, ns)
     crossing : Crossing
         For the range of the methods of the lee wind.
+    uncertainty : Uncertainty
+        Where it states the error of the method itself.
     error : dict of str to ndarray (m,)
         Standard normal numbers by the names in `uncertainty.METHOD`.
 
@@ -267,6 +271,10 @@ def with_method_error(sites: dict[str, Array], crossing: Crossing, error: dict[s
         return {}
     distance = np.array([place.distance for place in crossing.lee])
     sigma_t, sigma_v = model_error(distance)
+    if uncertainty.model_temperature is not None:
+        sigma_t = np.full_like(sigma_t, uncertainty.model_temperature)
+    if uncertainty.model_vapour is not None:
+        sigma_v = np.full_like(sigma_v, uncertainty.model_vapour)
     z_t, z_v, z_w = (error[name][:, np.newaxis] for name in METHOD)
     out = dict(sites)
     out["temperature"] = sites["temperature"] + sigma_t * z_t

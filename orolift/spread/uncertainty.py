@@ -55,6 +55,8 @@ class Uncertainty:
         Share of the members in which condensate does not freeze.
     lee_temperature : float [K]
         Of the air lying in the lee, where it is known; a pool top moves by 100 m for each of them.
+    model_temperature, model_vapour : float or None [K], [kg per kg of dry air]
+        Error of the method; None takes `orolift.crossing.model_error.model_error`.
     """
 
     temperature: float = 1.0
@@ -72,6 +74,8 @@ class Uncertainty:
     surface_heat: float = 0.4
     liquid_cloud: float = 0.0
     lee_temperature: float = 1.0
+    model_temperature: float | None = None
+    model_vapour: float | None = None
 
 
 MOST = {
@@ -107,8 +111,11 @@ def checked(uncertainty: Uncertainty) -> Uncertainty:
     OutOfRangeError
         If one is negative or too large.
     """
-    for name, (most, unit) in MOST.items():
-        within(name, getattr(uncertainty, name), 0.0, most, unit, "It is one standard deviation; 0 leaves it out.")
+    method = {"model_temperature": (15.0, "K"), "model_vapour": (0.02, "kg/kg")}
+    for name, (most, unit) in (MOST | method).items():
+        value = getattr(uncertainty, name)
+        if value is not None:
+            within(name, value, 0.0, most, unit, "It is one standard deviation; 0 leaves it out.")
     return uncertainty
 
 
