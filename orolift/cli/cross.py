@@ -11,8 +11,9 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.options import QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
+from orolift.cli.spreading import Workers, spread_for
 from orolift.errors import CaseError
 
 if TYPE_CHECKING:
@@ -22,6 +23,7 @@ if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
+    from orolift.spread.spread import Spread
 
 log = logging.getLogger(__name__)
 
@@ -36,6 +38,7 @@ class Worked:
     mapped: Mapped | None
     flags: tuple[str, ...]
     results: Results
+    spread: Spread | None
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
@@ -48,6 +51,8 @@ class Worked:
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -57,6 +62,8 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
+    jobs: int | None,
+    scheduler: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
@@ -74,7 +81,7 @@ def command(
     contents: dict[Path, bytes] = {}
     summaries = []
     for case in cases:
-        worked = work_out(case, files)
+        worked = work_out(case, files, Workers(jobs, scheduler, quiet))
         page = Path(report) if report else Path(f"{Path(case).stem}.html")
         if page in contents:
             raise CaseError(f"{case}: another case of this run already writes {page}. Give the cases different names.")
@@ -88,24 +95,27 @@ def command(
     write_all(contents)
     log.debug("written: %s", ", ".join(map(str, contents)))
     if not quiet:
-        from orolift.cli.summary import summary_lines
+        from orolift.cli.summary import members_words, summary_lines
 
         for worked, page in summaries:
             click.echo(
                 "\n".join(
                     [
-                        *summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units),
-                        f"Report: {page}",
+                        *summary_lines(
+                            worked.crossing, worked.inputs.case, worked.inputs.path.stem, units, worked.spread
+                        ),
+                        f"Report: {page}{members_words(worked.spread)}",
                     ]
                 )
             )
 
 
-def work_out(case: str, files: RainFiles | None = None) -> Worked:
-    """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
+def work_out(case: str, files: RainFiles | None = None, workers: Workers | None = None) -> Worked:
+    """A case read, its crossing, its members, and the rain over its map; refused where a file asked for cannot be."""
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import read_inputs, situation_of
     from orolift.sources.results import results_of
+    from orolift.spread.ranges import remarks
 
     inputs = read_inputs(case)
     situation = situation_of(inputs)
@@ -120,6 +130,8 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
+    spread = spread_for(inputs, situation, crossing, workers or Workers())
+    doubts = (*doubts, *(() if spread is None else remarks(spread)))
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -128,7 +140,8 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    return Worked(inputs, situation, crossing, mapped, flags, results_of(crossing, inputs.case, mapped, flags))
+    results = results_of(crossing, inputs.case, mapped, flags, spread)
+    return Worked(inputs, situation, crossing, mapped, flags, results, spread)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -164,6 +177,7 @@ def report_of(worked: Worked, units: Units) -> str:
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
+        spread=worked.spread,
     )
     html = render(page)
     log.debug("report rendered, %d kB", len(html) // 1024)

@@ -16,9 +16,11 @@ from orolift.report.figures.answers import answers_figure
 from orolift.report.figures.budget import budget
 from orolift.report.figures.column import column
 from orolift.report.figures.gauge_scatter import gauge_scatter
+from orolift.report.figures.influences import influences_figure
 from orolift.report.figures.path import path
 from orolift.report.figures.rain_line import rain_line
 from orolift.report.figures.section import section
+from orolift.report.how_sure import HowSure, how_sure
 from orolift.report.inputs import Inputs, inputs
 from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
@@ -28,6 +30,7 @@ from orolift.report.rain import RainOnLine, rain_on_line
 from orolift.report.rain_over_map import RainOverMap, rain_over_map
 from orolift.report.reading import Reading, reading
 from orolift.report.sites import Sites, sites
+from orolift.report.spans import Spans
 from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
 
@@ -41,12 +44,14 @@ if TYPE_CHECKING:
     from orolift.report.figures.column import ColumnDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.gauge_scatter import ScatterDrawing
+    from orolift.report.figures.influences import InfluencesDrawing
     from orolift.report.figures.path import PathDrawing
     from orolift.report.figures.rain_line import RainLineDrawing
     from orolift.report.figures.rain_map import RainMapDrawing
     from orolift.report.figures.section import SectionDrawing
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.quality import Finding
+    from orolift.spread.spread import Spread
 
 
 SEVERITIES = ("wrong", "doubtful", "remark")
@@ -78,6 +83,8 @@ class Page:
     rain_map : Figure or None
     gauge_scatter : Figure or None
     sites : Sites
+    how_sure : HowSure
+    influences : Figure or None
     answers : Answers
     answers_figure : Figure or None
     lee_wind : LeeWind
@@ -108,6 +115,8 @@ class Page:
     rain_map: Figure[RainMapDrawing] | None
     gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
+    how_sure: HowSure
+    influences: Figure[InfluencesDrawing] | None
     answers: Answers
     answers_figure: Figure[AnswersDrawing] | None
     lee_wind: LeeWind
@@ -131,6 +140,7 @@ def page_of(
     flags: tuple[str, ...] = (),
     findings: Iterable[Finding] = (),
     stagnant_top: float | None = None,
+    spread: Spread | None = None,
 ) -> Page:
     """The page of a crossing.
 
@@ -156,6 +166,8 @@ def page_of(
         What quality control has seen in the incoming air.
     stagnant_top : float, optional [m above sea level]
         Top of a stagnant layer at the ground of the incoming air, kept out of the inflow.
+    spread : Spread, optional
+        Members, for the ranges.
 
     Returns
     -------
@@ -164,6 +176,8 @@ def page_of(
     bearing = (toward(crossing.transect, crossing.incoming) + math.pi) % (2.0 * math.pi)
     freezing = float(freezing_level(crossing.incoming))
     followed = trace(crossing)
+    spans = Spans(crossing, spread)
+    sure = how_sure(spans)
     crest = quantity(crossing.features.crest, "height", 0, units)
     return Page(
         title=title or f"Air from the {point_of_compass(bearing)} over a crest at {crest}",
@@ -171,7 +185,7 @@ def page_of(
         made=moment(made_at),
         version=version,
         units=units,
-        briefing=briefing(crossing, bearing, freezing),
+        briefing=briefing(crossing, bearing, freezing, spans),
         section_heading=section_heading(crossing, followed),
         section=section(crossing, followed, bearing, freezing, units),
         reading=reading(crossing, units),
@@ -184,7 +198,9 @@ def page_of(
         rain_over_map=None if mapped is None else rain_over_map(mapped, units),
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
-        sites=sites(crossing),
+        sites=sites(crossing, spans),
+        how_sure=sure,
+        influences=influences_figure(sure),
         answers=answers(crossing),
         answers_figure=answers_figure(crossing, units),
         lee_wind=lee_wind(crossing),

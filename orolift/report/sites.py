@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.report.quantities import Amount
+from orolift.report.spans import Spans, digits_for
 from orolift.report.story import SAME, difference, source_words, where_words
 from orolift.report.words import Words, counted, sentence
 
@@ -35,6 +36,8 @@ class SiteRow:
         The incoming air at the same height.
     warming : Amount
         Site minus incoming air.
+    spans : dict of str to Words
+        Ranges of some of the columns, by their names.
     """
 
     number: int
@@ -52,6 +55,7 @@ class SiteRow:
     upwind_temperature: Amount
     upwind_dew_point: Amount
     warming: Amount
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -63,28 +67,30 @@ class Sites:
     remarks: tuple[Words, ...]
 
 
-def sites(crossing: Crossing) -> Sites:
+def sites(crossing: Crossing, spans: Spans | None = None) -> Sites:
     """The sites of a crossing, in the order of the case.
 
     Parameters
     ----------
     crossing : Crossing
+    spans : Spans, optional
+        Ranges.
 
     Returns
     -------
     Sites
     """
-    rows = tuple(_row(air, number, crossing) for number, air in enumerate(crossing.lee, start=1))
+    rows = tuple(_row(air, number, spans or Spans(crossing, None)) for number, air in enumerate(crossing.lee, start=1))
     return Sites(heading=_heading(crossing.lee), rows=rows, remarks=_remarks(crossing))
 
 
-def _row(air: LeeAir, number: int, crossing: Crossing) -> SiteRow:
+def _row(air: LeeAir, number: int, spans: Spans) -> SiteRow:
     return SiteRow(
         number=number,
         name=air.name,
         side=air.side,
         remark=where_words(air),
-        distance=Amount(air.distance + crossing.transect.origin, "distance", 1),
+        distance=Amount(air.distance + spans.crossing.transect.origin, "distance", 1),
         elevation=Amount(air.elevation, "height"),
         temperature=Amount(air.temperature, "temperature", 1),
         dew_point=Amount(air.dew_point, "temperature", 1),
@@ -95,7 +101,26 @@ def _row(air: LeeAir, number: int, crossing: Crossing) -> SiteRow:
         upwind_temperature=Amount(air.upwind_temperature, "temperature", 1),
         upwind_dew_point=Amount(air.upwind_dew_point, "temperature", 1),
         warming=Amount(air.warming, "temperature_change", 1),
+        spans={name: _span(spans.at(air, name), amount) for name, amount in _RANGED.items()},
     )
+
+
+_RANGED = {
+    "temperature": Amount(0.0, "temperature", 1),
+    "dew_point": Amount(0.0, "temperature", 1),
+    "relative_humidity": Amount(0.0, "share"),
+    "warming": Amount(0.0, "temperature_change", 1),
+}
+"""Columns that carry a range, and how finely it is shown at most."""
+
+
+def _span(ends: tuple[float, float] | None, like: Amount) -> Words:
+    """A range for the second line of a cell; nothing without one."""
+    if ends is None:
+        return ()
+    digits = digits_for(like, ends)
+    low, high = (Amount(value, like.kind, digits, bare=True) for value in ends)
+    return (low, " to ", high)
 
 
 def _heading(lee: tuple[LeeAir, ...]) -> Words:

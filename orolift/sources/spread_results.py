@@ -11,6 +11,7 @@ from orolift.crossing.members import PARTS
 from orolift.sources.result_block import Block, Chance, Range
 from orolift.sources.units import UNITS
 from orolift.spread.ranges import chance_of, influences, noise, range_of
+from orolift.spread.spread import CHANCE_OF_RAIN
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -65,8 +66,6 @@ KEYS: dict[str, dict[str, tuple[str, float, float]]] = {
     },
 }
 """Keys of each block, the member array each comes from, and the factor and offset from SI."""
-RAINING = 0.1 / 3600.0
-"""Rate [kg m-2 s-1] from which it rains at a place: 0.1 mm/h, what gauges resolve; common practice, no source."""
 
 
 class InfluenceBlock(Block):
@@ -128,7 +127,7 @@ def site_chances(spread: Spread, number: int) -> Chance:
     here = at_site(spread.sites, number)
     if not here:
         return {}
-    rain = np.where(np.isfinite(here["rain"]), here["rain"] >= RAINING, np.nan)
+    rain = np.where(np.isfinite(here["rain"]), here["rain"] >= CHANCE_OF_RAIN, np.nan)
     found = {"in_pool": chance_of(here["in_pool"]), "cloud": chance_of(here["cloudy"]), "rain": chance_of(rain)}
     return {name: value for name, value in found.items() if value is not None}
 

@@ -144,3 +144,27 @@ def influences(spread: Spread, values: Array, names: tuple[str, ...] | None = No
 def noise(members: int) -> float:
     """Rank correlation that pure chance exceeds once in about twenty times, among this many members [1]."""
     return 2.0 / float(np.sqrt(max(members - 1, 1)))
+
+
+def remarks(spread: Spread) -> tuple[str, ...]:
+    """What is doubtful about the members, as cautions: those that do not cross, and those that were lost.
+
+    Parameters
+    ----------
+    spread : Spread
+
+    Returns
+    -------
+    tuple of str
+    """
+    found = []
+    lost = len(spread.failed)
+    still = spread.members - lost - int(spread.crosses.sum())
+    if still:
+        found.append(
+            f"In {still} of {spread.members} members the wind across the crest is 2 m/s or less: the air may not cross "
+            "at all. The ranges are those of the members that cross."
+        )
+    if lost:
+        found.append(f"{lost} of {spread.members} members could not be worked out: {spread.failed[0].reason}")
+    return tuple(found)

@@ -33,6 +33,8 @@ LEAST_MEMBERS, MOST_MEMBERS = 10, 100_000
 """Fewer have no 10 % and 90 %; more do not fit into memory."""
 CHUNK = 50
 """Members marched together. It is fixed, so that nothing depends on the number of processes."""
+CHANCE_OF_RAIN = 0.1 / 3600.0
+"""Rate [kg m-2 s-1] from which it rains at a place: 0.1 mm/h, what gauges resolve; common practice, no source."""
 LEAST_VAPOUR = 1e-6
 """Vapour [kg per kg] that is left however dry the error of the method would make the air."""
 TENTH = 1.2815515655446004
@@ -283,7 +285,7 @@ def with_method_error(
     here = np.isfinite(t)
     most = np.full(t.shape, np.nan)
     most[here] = saturation_mixing_ratio(p[here], np.clip(t[here], 160.0, 340.0))
-    v = np.clip(sites["mixing_ratio"] + sigma_v * z_v, LEAST_VAPOUR, np.maximum(most, sites["mixing_ratio"]))
+    v = np.minimum(np.maximum(sites["mixing_ratio"] + sigma_v * z_v, LEAST_VAPOUR), most)
     out["mixing_ratio"] = v
     for name, value in (("dew_point", t), ("relative_humidity", t)):
         out[name] = np.full(value.shape, np.nan)
