@@ -30,14 +30,14 @@ class SiteRow:
     temperature, dew_point, relative_humidity, mixing_ratio : Amount
         Its air.
     source : Words
-        Heights it comes from: median, 10 % and 90 %; empty in a pool.
+        Median of the heights it comes from; empty in a pool.
     went_round : Amount
     upwind_temperature, upwind_dew_point : Amount
         The incoming air at the same height.
     warming : Amount
         Site minus incoming air.
     spans : dict of str to Words
-        Ranges of some of the columns, by their names.
+        Ranges of some of the columns, by their names; of the heights, 10 % and 90 % by mass.
     """
 
     number: int
@@ -96,12 +96,13 @@ def _row(air: LeeAir, number: int, spans: Spans) -> SiteRow:
         dew_point=Amount(air.dew_point, "temperature", 1),
         relative_humidity=Amount(air.relative_humidity, "share"),
         mixing_ratio=Amount(air.mixing_ratio, "mixing_ratio", 1),
-        source=source_words(air),
+        source=source_words(air)[:1],
         went_round=Amount(air.went_round, "share"),
         upwind_temperature=Amount(air.upwind_temperature, "temperature", 1),
         upwind_dew_point=Amount(air.upwind_dew_point, "temperature", 1),
         warming=Amount(air.warming, "temperature_change", 1),
-        spans={name: _span(spans.at(air, name), amount) for name, amount in _RANGED.items()},
+        spans={name: _span(spans.at(air, name), amount) for name, amount in _RANGED.items()}
+        | {"source": tuple(source_words(air)[2:5])},
     )
 
 
@@ -156,7 +157,7 @@ def _heading(lee: tuple[LeeAir, ...]) -> Words:
 def _remarks(crossing: Crossing) -> tuple[Words, ...]:
     heights = (
         " above it, mixed. It comes from the heights named: half of it, by mass, started below the first, a tenth "
-        "below and a tenth above those in brackets."
+        "below and a tenth above those beneath it."
     )
     depth = Amount(float(np.asarray(crossing.settings.mixing_depth)), "height")
     out: list[Words] = [("A site has the air of the lowest ", depth, heights)]

@@ -51,7 +51,7 @@ def influences_figure(sure: HowSure) -> Figure[InfluencesDrawing] | None:
         alt=" ".join(_words(panel, sure.noise) for panel in panels),
         caption=(
             "Rank correlation of each input with the result, over the members: 1 when more of the one always goes "
-            f"with more of the other, {MINUS}1 (hatched, to the left) when with less. Pale bars are within what "
+            f"with more of the other, {MINUS}1 when with less. Pale bars are within what "
             "chance alone gives among so many members. A wind direction counts clockwise."
         ),
     )
@@ -105,7 +105,7 @@ def _panel(
     step = 2.0 * ROW if stacked else ROW
     bottom = top + HEAD + step * len(panel.influences)
     zero = round(place(scale, 0.0), 1)
-    lines = [Curve(f"M{zero} {top + HEAD - 4.0:.1f}V{bottom:.1f}", "zero")]
+    lines = [] if stacked else [Curve(f"M{zero} {top + HEAD - 4.0:.1f}V{bottom:.1f}", "zero")]
     bars: list[Curve] = []
     labels = [Label(panel.title, round(left, 1), round(top + letter, 1), "start", "title")]
     for row, one in enumerate(panel.influences):
@@ -121,6 +121,8 @@ def _panel(
                 "part" if kind == "influence" else "nothing",
             )
         )
+        if stacked:
+            lines.append(Curve(f"M{zero} {y - 2.0:.1f}v{BAR + 4.0}", "zero"))
         end = round(place(scale, one.correlation), 1)
         start, stop = sorted((zero, end))
         bars.append(Curve(f"M{start} {y:.1f}H{stop}v{BAR}H{start}Z", kind))
