@@ -296,7 +296,7 @@ def _panels(spans: Spans, spread: Spread) -> tuple[Panel, ...]:
         panel(f"Dew point at {site.name}", spread.full_sites["dew_point"][:, number], "model_vapour"),
     ]
     total = spread.values["total"]
-    if np.nanmax(total) > 0.0:
+    if np.nanmedian(total) > 0.0:
         found.append(panel("All rain and snow on the line", total))
     return tuple(found)
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -97,6 +97,7 @@ class _Chunk:
     uncertainty: Uncertainty
     first: int
     level: Array
+    streamlines: int
 
 
 def spread_of(
@@ -108,6 +109,7 @@ def spread_of(
     seed: int = 0,
     executor: Executor | None = None,
     told: Callable[[int], object] | None = None,
+    streamlines: int = 60,
 ) -> Spread:
     """A situation in members.
 
@@ -125,6 +127,8 @@ def spread_of(
         None works here.
     told : callable, optional
         Is given the number of members that are done since the last call.
+    streamlines : int
+        As for `crossing.cross`.
 
     Returns
     -------
@@ -146,7 +150,7 @@ def spread_of(
     _check_count(members, seed)
     level = latin_hypercube(members, len(COLUMNS), seed)
     chunks = (
-        _Chunk(situation, checked(uncertainty), first, level[first : first + CHUNK])
+        _Chunk(situation, checked(uncertainty), first, level[first : first + CHUNK], streamlines)
         for first in range(0, members, CHUNK)
     )
     found = []
@@ -197,7 +201,7 @@ def _worked(chunk: _Chunk) -> tuple[Members, list[Failed]]:
             return Members(np.zeros(1, dtype=bool), {}, {}), [Failed(chunk.first, str(error))]
     parts, failed = [], []
     for i in range(chunk.level.shape[0]):
-        alone = _Chunk(chunk.situation, chunk.uncertainty, chunk.first + i, chunk.level[i : i + 1])
+        alone = replace(chunk, first=chunk.first + i, level=chunk.level[i : i + 1])
         part, lost = _worked(alone)
         parts.append(part)
         failed += lost
@@ -215,7 +219,8 @@ def _together(chunk: _Chunk) -> Members:
         some = np.flatnonzero(liquid != frozen)
         if some.size:
             own = {name: value[some] for name, value in drawn.items()}
-            parts.append(members_of(situation, variation_of(situation, uncertainty, own, freezing=frozen)))
+            variation = variation_of(situation, uncertainty, own, freezing=frozen)
+            parts.append(members_of(situation, variation, streamlines=chunk.streamlines))
             rows.append(some)
     whole = _joined(parts, [one.size for one in rows])
     back = np.argsort(np.concatenate(rows))
