@@ -19,6 +19,7 @@ from orolift.errors import CaseError
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
     from orolift.crossing.situation import Situation
+    from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
@@ -37,6 +38,7 @@ class Worked:
     crossing: Crossing
     mapped: Mapped | None
     flags: tuple[str, ...]
+    fire: tuple[SiteFire, ...]
     results: Results
     spread: Spread | None
 
@@ -76,7 +78,7 @@ def command(
             if value is not None and option != "--maps":
                 raise CaseError(f"{option} takes one case, and {len(cases)} are given. Run it once for each case.")
     from orolift.sources.files import csv_text, write_all
-    from orolift.sources.results import site_rows
+    from orolift.sources.site_table import site_rows
 
     contents: dict[Path, bytes] = {}
     summaries = []
@@ -130,7 +132,12 @@ def work_out(case: str, files: RainFiles | None = None, workers: Workers | None 
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
-    spread = spread_for(inputs, situation, crossing, workers or Workers())
+    workers = workers or Workers(quiet=True)
+    if inputs.case.terrain.elevation_file is not None:
+        from orolift.cli.site_lines import with_own_lines
+
+        crossing = with_own_lines(inputs, crossing, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet)
+    spread = spread_for(inputs, situation, crossing, workers)
     doubts = (*doubts, *(() if spread is None else remarks(spread)))
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
@@ -140,8 +147,20 @@ def work_out(case: str, files: RainFiles | None = None, workers: Workers | None 
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    results = results_of(crossing, inputs.case, mapped, flags, spread)
-    return Worked(inputs, situation, crossing, mapped, flags, results, spread)
+    fire, reached, to_know = fire_of(inputs, crossing)
+    crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, results, spread)
+
+
+def fire_of(inputs: Inputs, crossing: Crossing) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
+    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    from orolift.fire.flags import fire_flags, windward_cautions
+    from orolift.fire.sites import fire_at_sites
+
+    found = fire_at_sites(crossing, inputs.when, inputs.fire)
+    rules = inputs.fire.rules
+    return found, fire_flags(found, rules), windward_cautions(found, rules)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -178,6 +197,8 @@ def report_of(worked: Worked, units: Units) -> str:
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
         spread=worked.spread,
+        fire=worked.fire,
+        rules=worked.inputs.fire.rules,
     )
     html = render(page)
     log.debug("report rendered, %d kB", len(html) // 1024)

@@ -88,7 +88,9 @@ def alone(situation: Situation) -> Variation:
     )
 
 
-def members_of(situation: Situation, variation: Variation, *, streamlines: int = 60) -> Members:
+def members_of(
+    situation: Situation, variation: Variation, *, beside: tuple[Site, ...] = (), streamlines: int = 60
+) -> Members:
     """What a situation gives in each of its members.
 
     Parameters
@@ -96,6 +98,8 @@ def members_of(situation: Situation, variation: Variation, *, streamlines: int =
     situation : Situation
         The line stays where it is: a wind that turns turns against it.
     variation : Variation
+    beside : tuple of Site
+        More places on the line; unlike the situation's sites they have no say in what its crest is.
     streamlines : int
         How many, 20 or more.
 
@@ -117,7 +121,7 @@ def members_of(situation: Situation, variation: Variation, *, streamlines: int =
     settings, when = checked(variation.settings), situation.when or When()
     sites = situation.sites
     shape = features(situation.transect, sites[0].distance if sites else None)
-    sites = sites or (Site("Lee foot", shape.lee_foot_distance),)
+    sites = (*(sites or (Site("Lee foot", shape.lee_foot_distance),)), *beside)
     ground = ground_under(
         situation.transect,
         shape,

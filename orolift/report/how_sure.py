@@ -10,10 +10,12 @@ import numpy as np
 from orolift.report.quantities import Amount
 from orolift.report.spans import digits_for
 from orolift.report.story import where_words
+from orolift.spread.at_sites import column_of
 from orolift.spread.ranges import Influence, chance_of, influences, noise
 from orolift.spread.spread import CHANCE_OF_RAIN
 
 if TYPE_CHECKING:
+    from orolift.crossing.result import LeeAir
     from orolift.report.quantities import Kind
     from orolift.report.spans import Spans
     from orolift.report.words import Words
@@ -137,7 +139,7 @@ def how_sure(spans: Spans) -> HowSure:
     return HowSure(
         heading=_heading(spans),
         remarks=(_contents(spread), *_compared(spans), _counted(spread)),
-        rows=tuple(_row(spans, number) for number in range(len(spans.crossing.lee))),
+        rows=tuple(_row(spans, air) for air in spans.crossing.lee if column_of(spans.crossing, air) is not None),
         chances=_chances(spans, spread),
         inputs=_inputs(spread),
         panels=_panels(spans, spread),
@@ -207,9 +209,7 @@ def span_words(kind: Kind, digits: int, ends: tuple[float, float] | None) -> Wor
     return (Amount(ends[0], kind, fine, bare=True), " to ", Amount(ends[1], kind, fine))
 
 
-def _row(spans: Spans, number: int) -> RangeRow:
-    site = spans.crossing.lee[number]
-
+def _row(spans: Spans, site: LeeAir) -> RangeRow:
     def both(name: str, kind: Kind, digits: int) -> tuple[Words, Words]:
         found = (spans.at(site, name, inputs_only=True), spans.at(site, name))
         alone, full = (span_words(kind, digits, ends) for ends in found)
@@ -218,7 +218,7 @@ def _row(spans: Spans, number: int) -> RangeRow:
     temperature, dew_point = both("temperature", "temperature", 1), both("dew_point", "temperature", 1)
     humidity, wind = both("relative_humidity", "share", 0), both("wind_10m", "wind_alone", 0)
     return RangeRow(
-        number=number + 1,
+        number=site.number,
         name=site.name,
         side=site.side,
         remark=where_words(site),
@@ -250,7 +250,7 @@ def _crossing_row(spread: Spread) -> ChanceRow:
 def _chances(spans: Spans, spread: Spread) -> tuple[ChanceRow, ...]:
     """Chances of what matters most, among the members that cross."""
     values, site = spread.values, spans.main
-    number = spans.crossing.lee.index(site)
+    number = column_of(spans.crossing, site) or 0
     known = spans.crossing.flow.breaks_through is not None
     rain = spread.sites["rain"][:, number]
     rain = np.where(np.isfinite(rain), rain >= CHANCE_OF_RAIN, np.nan)
@@ -285,7 +285,7 @@ def _inputs(spread: Spread) -> tuple[InputRow, ...]:
 def _panels(spans: Spans, spread: Spread) -> tuple[Panel, ...]:
     """What matters for temperature and dew point at the main site, and for the rain."""
     site = spans.main
-    number = spans.crossing.lee.index(site)
+    number = column_of(spans.crossing, site) or 0
 
     def panel(title: str, values: np.ndarray[tuple[int, ...], np.dtype[np.float64]], method: str = "") -> Panel:
         names = (*spread.varied, method) if method else spread.varied

@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 from jinja2 import Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup
 
+from orolift.report.local_units import local
 from orolift.report.quantities import bare, shown, unit
 from orolift.report.words import plain
 
@@ -63,7 +64,7 @@ def _environment() -> Environment:
         auto_reload=False,
     )
     environment.globals["inlined"] = {name: _inlined(loader.get_source(environment, name)[0]) for name in INLINED}
-    environment.filters.update(shown=shown, bare=bare, unit=unit, plain=plain)
+    environment.filters.update(shown=shown, bare=bare, unit=unit, plain=plain, local=local)
     return environment
 
 

@@ -80,7 +80,7 @@ def sites(crossing: Crossing, spans: Spans | None = None) -> Sites:
     -------
     Sites
     """
-    rows = tuple(_row(air, number, spans or Spans(crossing, None)) for number, air in enumerate(crossing.lee, start=1))
+    rows = tuple(_row(air, air.number, spans or Spans(crossing, None)) for air in crossing.lee)
     return Sites(heading=_heading(crossing.lee), rows=rows, remarks=_remarks(crossing))
 
 

@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 from orolift.report.quantities import Amount, displayed
 from orolift.report.story import dew_point_ends, drying_ends, main_site, temperature_ends
+from orolift.spread.at_sites import column_of
 from orolift.spread.ranges import range_of
 
 if TYPE_CHECKING:
@@ -46,9 +47,10 @@ class Spans:
         if self.spread is None:
             return None
         arrays = self.spread.sites if inputs_only else self.spread.full_sites
-        if name not in arrays:
+        column = column_of(self.crossing, site)
+        if name not in arrays or column is None:
             return None
-        return range_of(arrays[name][:, self.crossing.lee.index(site)])
+        return range_of(arrays[name][:, column])
 
     def temperature(self, site: LeeAir) -> Ends | None:
         """Range of the temperature of a site, or its ends without members."""

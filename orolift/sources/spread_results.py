@@ -10,6 +10,7 @@ from pydantic import Field
 from orolift.crossing.members import PARTS
 from orolift.sources.result_block import Block, Chance, Range
 from orolift.sources.units import UNITS
+from orolift.spread.at_sites import on_the_line
 from orolift.spread.ranges import chance_of, influences, noise, range_of
 from orolift.spread.spread import CHANCE_OF_RAIN
 
@@ -18,6 +19,7 @@ if TYPE_CHECKING:
 
     from numpy.typing import NDArray
 
+    from orolift.crossing.result import Crossing
     from orolift.spread.spread import Spread
 
     Array = NDArray[np.float64]
@@ -132,29 +134,28 @@ def site_chances(spread: Spread, number: int) -> Chance:
     return {name: value for name, value in found.items() if value is not None}
 
 
-def spread_block(spread: Spread, site: int, name: str) -> SpreadBlock:
+def spread_block(spread: Spread, crossing: Crossing) -> SpreadBlock:
     """What the results say of the spread as a whole.
 
     Parameters
     ----------
     spread : Spread
-    site : int
-        Number of the site that counts most.
-    name : str
-        Its name.
+    crossing : Crossing
 
     Returns
     -------
     SpreadBlock
     """
-    crossing = int(spread.crosses.sum())
+    across = int(spread.crosses.sum())
+    line = on_the_line(crossing)
+    site = next((i for i, air in enumerate(line) if air.side == "lee"), 0)
     return SpreadBlock(
         members=spread.members,
-        crossing_members=crossing,
+        crossing_members=across,
         failed_members=len(spread.failed),
         failures=sorted({one.reason for one in spread.failed}),
         chance=chances(spread),
-        influences=_influences(spread, site, name) if crossing else None,
+        influences=_influences(spread, site, line[site].name) if across else None,
     )
 
 

@@ -7,22 +7,20 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
-from orolift.air.saturation import saturation_mixing_ratio
 from orolift.crossing.members import Members, members_of
-from orolift.crossing.model_error import model_error
 from orolift.errors import OroliftError, OutOfRangeError
+from orolift.spread.at_sites import centred, shadows, with_method_error
 from orolift.spread.draws import draws_of, variation_of, what_varies
 from orolift.spread.engine import in_order, outcomes
 from orolift.spread.uncertainty import COLUMNS, METHOD, Uncertainty, checked, latin_hypercube, normal
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterator
+    from collections.abc import Callable
     from concurrent.futures import Executor
 
     from numpy.typing import NDArray
 
-    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.crossing.result import Crossing, Site
     from orolift.crossing.situation import Situation
 
     Array = NDArray[np.float64]
@@ -35,10 +33,6 @@ CHUNK = 50
 """Members marched together. It is fixed, so that nothing depends on the number of processes."""
 CHANCE_OF_RAIN = 0.1 / 3600.0
 """Rate [kg m-2 s-1] from which it rains at a place: 0.1 mm/h, what gauges resolve; common practice, no source."""
-LEAST_VAPOUR = 1e-6
-"""Vapour [kg per kg] that is left however dry the error of the method would make the air."""
-TENTH = 1.2815515655446004
-"""Standard normal number above which a tenth lies."""
 
 
 @dataclass(frozen=True)
@@ -97,6 +91,7 @@ class _Chunk:
     uncertainty: Uncertainty
     first: int
     level: Array
+    beside: tuple[Site, ...]
     streamlines: int
 
 
@@ -117,7 +112,7 @@ def spread_of(
     ----------
     situation : Situation
     crossing : Crossing
-        Its crossing, for the range of the methods of the lee wind.
+        Its crossing, with the sites that have lines of their own.
     uncertainty : Uncertainty
     members : int
         10 to 100 000.
@@ -145,27 +140,41 @@ def spread_of(
     -----
     Everything is drawn before, and members are marched in groups of 50 whatever
     the executor: the same seed gives the same numbers anywhere. A member that
-    fails is counted and the rest goes on.
+    fails is counted and the rest goes on. A site with a line of its own takes the deviations of a
+    place of its height on this line, as far from the crest as it is from its own, around its own answer.
     """
     _check_count(members, seed)
     level = latin_hypercube(members, len(COLUMNS), seed)
+    beside = shadows(crossing)
+    middle = np.full((1, len(COLUMNS)), 0.5)  # what the deviations of those beside the line are from
+    firsts = range(0, members, CHUNK)
+    ends = [min(first + CHUNK, members) for first in firsts]
     chunks = (
-        _Chunk(situation, checked(uncertainty), first, level[first : first + CHUNK], streamlines)
-        for first in range(0, members, CHUNK)
+        _Chunk(
+            situation,
+            checked(uncertainty),
+            first,
+            np.concatenate([level[first:end], middle]) if beside and end == members else level[first:end],
+            beside,
+            streamlines,
+        )
+        for first, end in zip(firsts, ends, strict=True)
     )
     found = []
     for outcome in outcomes(_worked, chunks, executor):
         found.append(outcome)
         if told is not None:
-            told(min(CHUNK, members - outcome.number * CHUNK))
+            told(ends[outcome.number] - firsts[outcome.number])
     parts: list[Members] = []
     failed: list[Failed] = []
     for outcome in in_order(found):
         if outcome.value is None:
             raise outcome.error or OroliftError("a group of members was lost")
         parts.append(outcome.value[0])
-        failed += outcome.value[1]
-    whole = _joined(parts, [min(CHUNK, members - first) for first in range(0, members, CHUNK)])
+        failed += [one for one in outcome.value[1] if one.number < members]
+    whole = _joined(parts, [part.crosses.size for part in parts])
+    if beside:
+        whole = centred(whole, crossing)
     named = dict(zip(COLUMNS, level.T, strict=True))
     full = with_method_error(whole.sites, crossing, uncertainty, {name: normal(named[name]) for name in METHOD})
     return Spread(
@@ -220,7 +229,7 @@ def _together(chunk: _Chunk) -> Members:
         if some.size:
             own = {name: value[some] for name, value in drawn.items()}
             variation = variation_of(situation, uncertainty, own, freezing=frozen)
-            parts.append(members_of(situation, variation, streamlines=chunk.streamlines))
+            parts.append(members_of(situation, variation, beside=chunk.beside, streamlines=chunk.streamlines))
             rows.append(some)
     whole = _joined(parts, [one.size for one in rows])
     back = np.argsort(np.concatenate(rows))
@@ -245,69 +254,3 @@ def _joined(parts: list[Members], sizes: list[int]) -> Members:
             rows = [one(found, name, size, shape) for found, size in zip(dicts, sizes, strict=True)]
             out[name] = np.concatenate(rows)
     return Members(np.concatenate([part.crosses for part in parts]), values, sites)
-
-
-def with_method_error(
-    sites: dict[str, Array], crossing: Crossing, uncertainty: Uncertainty, error: dict[str, Array]
-) -> dict[str, Array]:
-    """What members give at the sites, with the error of the method added.
-
-    Parameters
-    ----------
-    sites : dict of str to ndarray (m, ns)
-    crossing : Crossing
-        For the range of the methods of the lee wind.
-    uncertainty : Uncertainty
-        Where it states the error of the method itself.
-    error : dict of str to ndarray (m,)
-        Standard normal numbers by the names in `uncertainty.METHOD`.
-
-    Returns
-    -------
-    dict of str to ndarray (m, ns)
-
-    Notes
-    -----
-    Temperature and vapour: `crossing.model_error.model_error` with the distance along the line, the same
-    sign at all sites. The vapour stays between nothing and saturation. The wind at a site is multiplied
-    by a log-normal factor, of its own width up and down, such that without any other doubt its 10 and
-    90 % are the range of the methods (wind and wind at 10 m) and of the gusts. For rain, cloud and
-    heights no error of the method is stated.
-    """
-    if not sites:
-        return {}
-    distance = np.array([place.distance for place in crossing.lee])
-    sigma_t, sigma_v = model_error(distance)
-    if uncertainty.model_temperature is not None:
-        sigma_t = np.full_like(sigma_t, uncertainty.model_temperature)
-    if uncertainty.model_vapour is not None:
-        sigma_v = np.full_like(sigma_v, uncertainty.model_vapour)
-    z_t, z_v, z_w = (error[name][:, np.newaxis] for name in METHOD)
-    out = dict(sites)
-    out["temperature"] = sites["temperature"] + sigma_t * z_t
-    out["warming"] = sites["warming"] + sigma_t * z_t
-    p, t = sites["pressure"], out["temperature"]
-    here = np.isfinite(t)
-    most = np.full(t.shape, np.nan)
-    most[here] = saturation_mixing_ratio(p[here], np.clip(t[here], 160.0, 340.0))
-    v = np.minimum(np.maximum(sites["mixing_ratio"] + sigma_v * z_v, LEAST_VAPOUR), most)
-    out["mixing_ratio"] = v
-    for name, value in (("dew_point", t), ("relative_humidity", t)):
-        out[name] = np.full(value.shape, np.nan)
-    out["dew_point"][here] = dew_point_from_mixing_ratio(p[here], v[here])
-    out["relative_humidity"][here] = relative_humidity_from_mixing_ratio(p[here], t[here], v[here])
-    for name, low, high in _wind_ranges(crossing.lee):
-        out[name] = sites[name] * np.exp(np.where(z_w < 0.0, low, high) * z_w / TENTH)
-    return out
-
-
-def _wind_ranges(lee: tuple[LeeAir, ...]) -> Iterator[tuple[str, Array, Array]]:
-    """Logarithm of answer over lower end, and of upper end over answer, by site; 0 where there is no wind."""
-    winds = [place.wind for place in lee]
-    low = np.array([0.0 if w is None else np.log(max(w.wind, 0.1) / max(w.low, 0.1)) for w in winds])
-    high = np.array([0.0 if w is None else np.log(max(w.high, 0.1) / max(w.wind, 0.1)) for w in winds])
-    yield "wind", np.maximum(low, 0.0), np.maximum(high, 0.0)
-    yield "wind_10m", np.maximum(low, 0.0), np.maximum(high, 0.0)
-    half = [0.0 if w is None else np.log(w.gust_high / max(0.5 * (w.gust_low + w.gust_high), 0.1)) for w in winds]
-    less = [0.0 if w is None else np.log(0.5 * (w.gust_low + w.gust_high) / max(w.gust_low, 0.1)) for w in winds]
-    yield "gust", np.hypot(low, np.maximum(less, 0.0)), np.hypot(high, np.maximum(half, 0.0))

@@ -10,8 +10,9 @@ from orolift.cli.executors import executor_of
 from orolift.crossing.situation import crossing_of
 from orolift.errors import OutOfRangeError
 from orolift.spread import spread as module
+from orolift.spread.at_sites import with_method_error
 from orolift.spread.ranges import range_of, remarks
-from orolift.spread.spread import spread_of, with_method_error
+from orolift.spread.spread import spread_of
 from orolift.spread.uncertainty import INPUTS, METHOD, Uncertainty, latin_hypercube, normal
 
 NONE = Uncertainty(**dict.fromkeys(INPUTS, 0.0))
