@@ -143,7 +143,7 @@ def _estimates(put: Placed, jobs: int | None) -> tuple[tuple[Estimates, ...], Nu
             error = outcome.error or CaseError("no crossing")
             error.args = (f"{one.path}: {error}",)
             raise error
-        crossing = with_own_lines(one, outcome.value, jobs=jobs, quiet=True)
+        crossing, _ = with_own_lines(one, outcome.value, jobs=jobs, quiet=True)
         crossing = replace(crossing, cautions=(*one.cautions, *crossing.cautions))
         where = {air.number: i for i, air in enumerate(crossing.lee)}
         sites = [None if number is None else where.get(number) for number in numbers]

@@ -185,12 +185,30 @@ def write_all(contents: Mapping[Path, bytes]) -> None:
             Path(aside).unlink(missing_ok=True)
 
 
-def _written_aside(path: Path, data: bytes) -> str:
+def refuse_unwritable(path: Path) -> None:
+    """Refuse a file that could not be written, before long work is done for it.
+
+    Parameters
+    ----------
+    path : Path
+
+    Raises
+    ------
+    MissingFileError
+        If its folder is missing or closed to us, or its name is taken by a folder.
+    """
     if path.is_dir():
         raise MissingFileError(f"{path} is a folder; give the name of a file in it.")
     folder = path.parent
     if not folder.is_dir():
         raise MissingFileError(f"{path} cannot be written: {folder} is not a folder. Make it first.")
+    if not os.access(folder, os.W_OK):
+        raise MissingFileError(f"{path} cannot be written: {folder} is closed to you.")
+
+
+def _written_aside(path: Path, data: bytes) -> str:
+    refuse_unwritable(path)
+    folder = path.parent
     aside = ""
     try:
         handle, aside = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".part", dir=folder)
