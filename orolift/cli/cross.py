@@ -14,6 +14,7 @@ import click
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
 from orolift.cli.outputs import Outputs
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
+from orolift.cli.spreading import Workers, spread_for
 from orolift.errors import CaseError, OroliftError
 
 if TYPE_CHECKING:
@@ -25,6 +26,7 @@ if TYPE_CHECKING:
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
     from orolift.spread.sites import GroupAir
+    from orolift.spread.spread import Spread
 
 log = logging.getLogger(__name__)
 
@@ -40,6 +42,7 @@ class Worked:
     flags: tuple[str, ...]
     fire: tuple[SiteFire, ...]
     results: Results
+    spread: Spread | None
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
@@ -80,7 +83,7 @@ def command(
     outputs = Outputs()
     for case in cases:
         outputs.keep(case, "a case")
-    work = Work(jobs, scheduler, quiet)
+    work = Workers(jobs, scheduler, quiet)
     if folder is not None:
         summaries = _into_folder(cases, Path(folder), units, outputs, work)
     else:
@@ -114,7 +117,7 @@ def _refuse_together(given: list[str], cases: int, folder: str | None) -> None:
             )
 
 
-def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Work) -> tuple[Worked, Path]:
+def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Workers) -> tuple[Worked, Path]:
     """Work out a case and take in the files asked for."""
     worked = work_out(case, wanted.rain, work)
     page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
@@ -136,7 +139,7 @@ def _add_results(worked: Worked, results: str | None, table: str | None, outputs
 
 
 def _into_folder(
-    cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Work
+    cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Workers
 ) -> list[tuple[Worked, Path]]:
     """Work out cases and take in everything they give, and the index."""
     from orolift.cli.folder import all_rain_files, entry, index_html
@@ -144,7 +147,7 @@ def _into_folder(
     summaries, entries = [], []
     for case in cases:
         before = set(outputs.contents)
-        worked = work_out(case, work=work)
+        worked = work_out(case, workers=work)
         stem = folder / worked.inputs.path.stem
         page = Path(f"{stem}.html")
         outputs.add(page, report_of(worked, units).encode(), f"the report of {case}")
@@ -175,27 +178,19 @@ def _write(outputs: Outputs, folder: str | None) -> None:
 
 def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
     """A few lines on each case."""
-    from orolift.cli.summary import summary_lines
+    from orolift.cli.summary import members_words, summary_lines
 
     for worked, page in summaries:
-        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units)
-        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}"]))
+        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units, worked.spread)
+        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.spread)}"]))
 
 
-@dataclass(frozen=True)
-class Work:
-    """Where many crossings are worked out, and whether progress is shown; as for `orolift.cli.executors`."""
-
-    jobs: int | None = None
-    scheduler: str | None = None
-    quiet: bool = True
-
-
-def work_out(case: str, files: RainFiles | None = None, work: Work | None = None) -> Worked:
-    """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
+def work_out(case: str, files: RainFiles | None = None, workers: Workers | None = None) -> Worked:
+    """A case read, its crossing, its members, and the rain over its map; refused where a file asked for cannot be."""
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import read_inputs, situation_of
     from orolift.sources.results import results_of
+    from orolift.spread.ranges import remarks
 
     inputs = read_inputs(case)
     situation = situation_of(inputs)
@@ -212,11 +207,15 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     log.debug("crossing worked out")
     own = crossing
     parts: tuple[GroupAir, ...] = ()
+    workers = workers or Workers(quiet=True)
     if inputs.case.terrain.elevation_file is not None:
         from orolift.cli.site_lines import with_own_lines
 
-        work = work or Work()
-        crossing, parts = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
+        crossing, parts = with_own_lines(
+            inputs, crossing, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet
+        )
+    spread = spread_for(inputs, situation, crossing, workers)
+    doubts = (*doubts, *(() if spread is None else remarks(spread)))
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -227,8 +226,8 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     flags = flags_of(inputs, crossing, mapped)
     fire, reached, to_know = fire_of(inputs, own, crossing, parts)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
-    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
-    return Worked(inputs, situation, crossing, mapped, flags, fire, results)
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, results, spread)
 
 
 def fire_of(
@@ -291,6 +290,7 @@ def report_of(worked: Worked, units: Units) -> str:
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
+        spread=worked.spread,
         fire=worked.fire,
         rules=worked.inputs.fire.rules,
     )
