@@ -224,14 +224,14 @@ def work_out(case: str, files: RainFiles | None = None, workers: Workers | None 
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    fire, reached, to_know = fire_of(inputs, own, crossing, parts)
+    fire, reached, to_know = fire_of(inputs, own, crossing, parts, spread)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
     results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
     return Worked(inputs, situation, crossing, mapped, flags, fire, results, spread)
 
 
 def fire_of(
-    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...]
+    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...], spread: Spread | None
 ) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
     """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
     from orolift.fire.flags import fire_flags, windward_cautions
@@ -241,6 +241,10 @@ def fire_of(
     at_own = fire_at_sites(own, inputs.when, inputs.fire)
     by_number = fire_by_number(crossing, at_own, parts)
     found = tuple(by_number[air.number] for air in crossing.lee)
+    if spread is not None:
+        from orolift.spread.fire_chances import fire_with_chances
+
+        found = fire_with_chances(found, crossing, spread, inputs.fire)
     rules = inputs.fire.rules
     return found, fire_flags(found, rules), windward_cautions(found, rules)
 
