@@ -11,13 +11,14 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.options import QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
-from orolift.cli.outputs import Outputs
+from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.outputs import Outputs, refuse_together
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
-from orolift.errors import CaseError, OroliftError
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
+    from orolift.crossing.situation import Situation
+    from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
@@ -31,9 +32,11 @@ class Worked:
     """One case worked out."""
 
     inputs: Inputs
+    situation: Situation
     crossing: Crossing
     mapped: Mapped | None
     flags: tuple[str, ...]
+    fire: tuple[SiteFire, ...]
     results: Results
 
 
@@ -50,6 +53,8 @@ class Worked:
 @click.option(
     "--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page: several cases."
 )
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -60,6 +65,8 @@ def command(
     results: str | None,
     table: str | None,
     folder: str | None,
+    jobs: int | None,
+    scheduler: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
@@ -67,16 +74,19 @@ def command(
     """Work out the crossing of each CASE and write its report."""
     files = RainFiles(**rain)
     named = {"--report": report, "--results": results, "--table": table, **files.asked()}
-    _refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
+    refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
     outputs = Outputs()
     for case in cases:
         outputs.keep(case, "a case")
+    work = Work(jobs, scheduler, quiet)
     if folder is not None:
-        summaries = _into_folder(cases, Path(folder), units, outputs)
+        from orolift.cli.folder import into_folder
+
+        summaries = into_folder(cases, Path(folder), units, outputs, work)
     else:
         wanted = Wanted(report, results, table, files)
-        summaries = [_one_by_one(case, wanted, units, outputs) for case in cases]
-    _write(outputs, folder)
+        summaries = [_one_by_one(case, wanted, units, outputs, work) for case in cases]
+    outputs.write(None if folder is None else Path(folder))
     if not quiet:
         _say(summaries, units)
         if folder is not None:
@@ -93,72 +103,26 @@ class Wanted:
     rain: RainFiles
 
 
-def _refuse_together(given: list[str], cases: int, folder: str | None) -> None:
-    """Say which options cannot be met together."""
-    for option in given:
-        if folder is not None:
-            raise CaseError(f"--folder writes everything there is; leave {option} out, or leave --folder out.")
-        if cases > 1 and option != "--maps":
-            raise CaseError(
-                f"{option} takes one case, and {cases} are given. Run it once for each case, or give --folder."
-            )
-
-
-def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs) -> tuple[Worked, Path]:
+def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Work) -> tuple[Worked, Path]:
     """Work out a case and take in the files asked for."""
-    worked = work_out(case, wanted.rain)
+    worked = work_out(case, wanted.rain, work)
     page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
     outputs.add(page, report_of(worked, units).encode(), "--report" if wanted.report else f"the report of {case}")
-    _add_results(worked, wanted.results, wanted.table, outputs)
+    add_results(worked, wanted.results, wanted.table, outputs)
     for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
         outputs.add(path, content, option)
     return worked, page
 
 
-def _add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+def add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+    """Take in the results and the table of the sites, each where it is asked for."""
     from orolift.sources.files import csv_text
-    from orolift.sources.results import site_rows
+    from orolift.sources.site_table import site_rows
 
     if results:
         outputs.add(results, (worked.results.model_dump_json(indent=2) + "\n").encode(), "--results")
     if table:
         outputs.add(table, csv_text(*site_rows(worked.results)).encode(), "--table")
-
-
-def _into_folder(cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs) -> list[tuple[Worked, Path]]:
-    """Work out cases and take in everything they give, and the index."""
-    from orolift.cli.folder import all_rain_files, entry, index_html
-
-    summaries, entries = [], []
-    for case in cases:
-        before = set(outputs.contents)
-        worked = work_out(case)
-        stem = folder / worked.inputs.path.stem
-        page = Path(f"{stem}.html")
-        outputs.add(page, report_of(worked, units).encode(), f"the report of {case}")
-        _add_results(worked, f"{stem}.json", f"{stem}.csv", outputs)
-        wanted = all_rain_files(worked, folder)
-        for path, (content, _) in rain_files(wanted, worked.inputs, worked.mapped, worked.results).items():
-            outputs.add(path, content, f"a file of {case}")
-        entries.append(entry(worked, page, [path for path in outputs.contents if path not in before and path != page]))
-        summaries.append((worked, page))
-    outputs.add(folder / "index.html", index_html(entries, units).encode(), "the index")
-    return summaries
-
-
-def _write(outputs: Outputs, folder: str | None) -> None:
-    """Write all that was taken in; a folder that had to be made for it goes when nothing is written."""
-    from orolift.cli.folder import made
-    from orolift.sources.files import write_all
-
-    new = folder is not None and made(Path(folder))
-    try:
-        write_all(outputs.contents)
-    except OroliftError:
-        if new and folder is not None:
-            Path(folder).rmdir()
-        raise
-    log.debug("written: %s", ", ".join(map(str, outputs.contents)))
 
 
 def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
@@ -170,37 +134,39 @@ def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
         click.echo("\n".join([*lines, f"Report: {page}"]))
 
 
-def work_out(case: str, files: RainFiles | None = None) -> Worked:
+@dataclass(frozen=True)
+class Work:
+    """Where many crossings are worked out, and whether progress is shown; as for `orolift.cli.executors`."""
+
+    jobs: int | None = None
+    scheduler: str | None = None
+    quiet: bool = True
+
+
+def work_out(case: str, files: RainFiles | None = None, work: Work | None = None) -> Worked:
     """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
-    from orolift.crossing.crossing import cross
-    from orolift.sources.inputs import read_inputs
+    from orolift.crossing.situation import crossing_of
+    from orolift.sources.inputs import read_inputs, situation_of
     from orolift.sources.results import results_of
-    from orolift.sources.units import to_si
 
     inputs = read_inputs(case)
+    situation = situation_of(inputs)
     log.debug("%s read", case)
     files = files or RainFiles()
     refuse_what_cannot_be(files, inputs)
     needed = files.maps is not None
     found, doubts = map_inputs_of(inputs, needed=needed)
     try:
-        crossing = cross(
-            inputs.transect,
-            inputs.incoming,
-            inputs.sites,
-            inputs.settings,
-            lee=inputs.lee,
-            when=inputs.when,
-            normal=inputs.normal,
-            lowest_pass=inputs.case.terrain.pass_m,
-            crest_line=inputs.crest_line,
-            stagnant_top=stagnant_top(inputs),
-            background=to_si(inputs.case.rain.background_mm_per_h, "mm_per_h"),
-        )
+        crossing = crossing_of(situation)
     except ValueError as error:
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
+    if inputs.case.terrain.elevation_file is not None:
+        from orolift.cli.site_lines import with_own_lines
+
+        work = work or Work()
+        crossing = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -209,7 +175,20 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    return Worked(inputs, crossing, mapped, flags, results_of(crossing, inputs.case, mapped, flags))
+    fire, reached, to_know = fire_of(inputs, crossing)
+    crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, results)
+
+
+def fire_of(inputs: Inputs, crossing: Crossing) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
+    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    from orolift.fire.flags import fire_flags, windward_cautions
+    from orolift.fire.sites import fire_at_sites
+
+    found = fire_at_sites(crossing, inputs.when, inputs.fire)
+    rules = inputs.fire.rules
+    return found, fire_flags(found, rules), windward_cautions(found, rules)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -222,12 +201,6 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
         grid=None if mapped is None else mapped.inputs.placed.grid,
         rain_on_map=None if mapped is None else mapped.rain.rain,
     )
-
-
-def stagnant_top(inputs: Inputs) -> float | None:
-    """Top of the stagnant layer at the ground of the incoming column, None where there is none."""
-    depth = inputs.ground_layer.depth
-    return float(inputs.incoming.height[0]) + depth if depth > 0.0 else None
 
 
 def made_now() -> datetime:
@@ -254,7 +227,9 @@ def report_of(worked: Worked, units: Units) -> str:
         mapped=worked.mapped,
         flags=worked.flags,
         findings=worked.inputs.findings,
-        stagnant_top=stagnant_top(worked.inputs),
+        stagnant_top=worked.situation.stagnant_top,
+        fire=worked.fire,
+        rules=worked.inputs.fire.rules,
     )
     html = render(page)
     log.debug("report rendered, %d kB", len(html) // 1024)

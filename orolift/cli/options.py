@@ -25,6 +25,19 @@ VERBOSE_OPTION = click.option(
     callback=lambda _context, _parameter, value: show_steps() if value else None,
     help="Say on stderr what is being done, and show the place of a fault.",
 )
+JOBS_OPTION = click.option(
+    "--jobs",
+    type=click.IntRange(min=1, max=1024),
+    default=None,
+    metavar="N",
+    help="Processes to work with; default: one for each usable core. 1 uses none but this.",
+)
+SCHEDULER_OPTION = click.option(
+    "--scheduler",
+    default=None,
+    metavar="ADDRESS",
+    help="Work on the cluster of this dask scheduler, as in tcp://HOST:8786 (needs the extra 'cluster').",
+)
 
 
 def show_steps() -> None:

@@ -145,7 +145,7 @@ def reading(crossing: Crossing, units: Units) -> Reading:
     place, air = _of_places(crossing), _of_air(crossing, start)
     site = crossing.lee[0].distance if crossing.lee else crossing.features.crest_distance
     first = int(np.argmin(np.abs(crossing.distance[columns] - site)))
-    ways = tuple(SiteWay(number, one.name, _way_words(one, units)) for number, one in enumerate(crossing.lee, 1))
+    ways = tuple(SiteWay(one.number, one.name, _way_words(one, units)) for one in crossing.lee)
     return Reading(
         of_place=OF_PLACE,
         of_air=OF_AIR,
