@@ -12,10 +12,9 @@ from typing import TYPE_CHECKING
 import click
 
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
-from orolift.cli.outputs import Outputs
+from orolift.cli.outputs import Outputs, refuse_together
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
 from orolift.cli.spreading import Workers, spread_for
-from orolift.errors import CaseError, OroliftError
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
@@ -55,11 +54,11 @@ class Worked:
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
-@JOBS_OPTION
-@SCHEDULER_OPTION
 @click.option(
     "--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page: several cases."
 )
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -69,9 +68,9 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
+    folder: str | None,
     jobs: int | None,
     scheduler: str | None,
-    folder: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
@@ -79,17 +78,19 @@ def command(
     """Work out the crossing of each CASE and write its report."""
     files = RainFiles(**rain)
     named = {"--report": report, "--results": results, "--table": table, **files.asked()}
-    _refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
+    refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
     outputs = Outputs()
     for case in cases:
         outputs.keep(case, "a case")
     work = Workers(jobs, scheduler, quiet)
     if folder is not None:
-        summaries = _into_folder(cases, Path(folder), units, outputs, work)
+        from orolift.cli.folder import into_folder
+
+        summaries = into_folder(cases, Path(folder), units, outputs, work)
     else:
         wanted = Wanted(report, results, table, files)
         summaries = [_one_by_one(case, wanted, units, outputs, work) for case in cases]
-    _write(outputs, folder)
+    outputs.write(None if folder is None else Path(folder))
     if not quiet:
         _say(summaries, units)
         if folder is not None:
@@ -106,29 +107,19 @@ class Wanted:
     rain: RainFiles
 
 
-def _refuse_together(given: list[str], cases: int, folder: str | None) -> None:
-    """Say which options cannot be met together."""
-    for option in given:
-        if folder is not None:
-            raise CaseError(f"--folder writes everything there is; leave {option} out, or leave --folder out.")
-        if cases > 1 and option != "--maps":
-            raise CaseError(
-                f"{option} takes one case, and {cases} are given. Run it once for each case, or give --folder."
-            )
-
-
 def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Workers) -> tuple[Worked, Path]:
     """Work out a case and take in the files asked for."""
     worked = work_out(case, wanted.rain, work)
     page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
     outputs.add(page, report_of(worked, units).encode(), "--report" if wanted.report else f"the report of {case}")
-    _add_results(worked, wanted.results, wanted.table, outputs)
+    add_results(worked, wanted.results, wanted.table, outputs)
     for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
         outputs.add(path, content, option)
     return worked, page
 
 
-def _add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+def add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+    """Take in the results and the table of the sites, each where it is asked for."""
     from orolift.sources.files import csv_text
     from orolift.sources.site_table import site_rows
 
@@ -136,44 +127,6 @@ def _add_results(worked: Worked, results: str | None, table: str | None, outputs
         outputs.add(results, (worked.results.model_dump_json(indent=2) + "\n").encode(), "--results")
     if table:
         outputs.add(table, csv_text(*site_rows(worked.results)).encode(), "--table")
-
-
-def _into_folder(
-    cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Workers
-) -> list[tuple[Worked, Path]]:
-    """Work out cases and take in everything they give, and the index."""
-    from orolift.cli.folder import all_rain_files, entry, index_html
-
-    summaries, entries = [], []
-    for case in cases:
-        before = set(outputs.contents)
-        worked = work_out(case, workers=work)
-        stem = folder / worked.inputs.path.stem
-        page = Path(f"{stem}.html")
-        outputs.add(page, report_of(worked, units).encode(), f"the report of {case}")
-        _add_results(worked, f"{stem}.json", f"{stem}.csv", outputs)
-        wanted = all_rain_files(worked, folder)
-        for path, (content, _) in rain_files(wanted, worked.inputs, worked.mapped, worked.results).items():
-            outputs.add(path, content, f"a file of {case}")
-        entries.append(entry(worked, page, [path for path in outputs.contents if path not in before and path != page]))
-        summaries.append((worked, page))
-    outputs.add(folder / "index.html", index_html(entries, units).encode(), "the index")
-    return summaries
-
-
-def _write(outputs: Outputs, folder: str | None) -> None:
-    """Write all that was taken in; a folder that had to be made for it goes when nothing is written."""
-    from orolift.cli.folder import made
-    from orolift.sources.files import write_all
-
-    new = folder is not None and made(Path(folder))
-    try:
-        write_all(outputs.contents)
-    except OroliftError:
-        if new and folder is not None:
-            Path(folder).rmdir()
-        raise
-    log.debug("written: %s", ", ".join(map(str, outputs.contents)))
 
 
 def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
