@@ -23,6 +23,7 @@ if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
+    from orolift.spread.sites import GroupAir
 
 log = logging.getLogger(__name__)
 
@@ -50,11 +51,11 @@ class Worked:
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @click.option(
     "--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page: several cases."
 )
-@JOBS_OPTION
-@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -64,9 +65,9 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
-    folder: str | None,
     jobs: int | None,
     scheduler: str | None,
+    folder: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
@@ -131,7 +132,7 @@ def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
 
     for worked, page in summaries:
         lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units)
-        click.echo("\n".join([*lines, f"Report: {page}"]))
+        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}"]))
 
 
 @dataclass(frozen=True)
@@ -162,11 +163,13 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
+    own = crossing
+    parts: tuple[GroupAir, ...] = ()
     if inputs.case.terrain.elevation_file is not None:
         from orolift.cli.site_lines import with_own_lines
 
         work = work or Work()
-        crossing = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
+        crossing, parts = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -175,18 +178,23 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    fire, reached, to_know = fire_of(inputs, crossing)
+    fire, reached, to_know = fire_of(inputs, own, crossing, parts)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
     results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
     return Worked(inputs, situation, crossing, mapped, flags, fire, results)
 
 
-def fire_of(inputs: Inputs, crossing: Crossing) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
+def fire_of(
+    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...]
+) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
     """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
     from orolift.fire.flags import fire_flags, windward_cautions
     from orolift.fire.sites import fire_at_sites
+    from orolift.spread.sites import fire_by_number
 
-    found = fire_at_sites(crossing, inputs.when, inputs.fire)
+    at_own = fire_at_sites(own, inputs.when, inputs.fire)
+    by_number = fire_by_number(crossing, at_own, parts)
+    found = tuple(by_number[air.number] for air in crossing.lee)
     rules = inputs.fire.rules
     return found, fire_flags(found, rules), windward_cautions(found, rules)
 
@@ -201,6 +209,14 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
         grid=None if mapped is None else mapped.inputs.placed.grid,
         rain_on_map=None if mapped is None else mapped.rain.rain,
     )
+
+
+def fire_lines(worked: Worked) -> list[str]:
+    """What the fire thresholds of the case come to, a line; none without a rule file."""
+    from orolift.report.fire_thresholds import headline
+
+    words = headline(worked.fire).words
+    return [f"Fire      {words} (a threshold met is not a warning)"] if words else []
 
 
 def made_now() -> datetime:
