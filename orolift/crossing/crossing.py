@@ -100,7 +100,7 @@ def cross(
     """
     settings, when, lee = checked(settings or Settings()), when or When(), lee or Lee()
     shape = features(transect, sites[0].distance if sites else None)
-    ground = _ground(transect, shape, incoming, normal, when)
+    ground = ground_under(transect, shape, incoming, normal, when)
     ground = replace(ground, lowest_pass=lowest_pass, crest_line=crest_line, stagnant_top=stagnant_top)
     crest_wind = crest_component(incoming, ground.normal, shape.crest)
     sites = sites or (Site("Lee foot", shape.lee_foot_distance),)
@@ -144,7 +144,7 @@ LEAST_VAPOUR = 1e-8
 """Vapour [kg per kg] below which a dew point is that of this much."""
 
 
-def _ground(
+def ground_under(
     transect: Transect,
     shape: Features,
     incoming: IncomingAir,
