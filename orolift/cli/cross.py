@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING
 
 import click
 
+from orolift.cli.lee_map import lee_files, mapped_lee
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
 from orolift.errors import CaseError
@@ -23,6 +24,7 @@ if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
+    from orolift.sources.strips import MappedLee
     from orolift.spread.sites import GroupAir
 
 log = logging.getLogger(__name__)
@@ -38,6 +40,7 @@ class Worked:
     mapped: Mapped | None
     flags: tuple[str, ...]
     fire: tuple[SiteFire, ...]
+    lee: MappedLee | None
     results: Results
 
 
@@ -48,6 +51,9 @@ class Worked:
 @file_option("--table", "Table to write as CSV, one row a site.")
 @file_option("--geojson", "Sites to write as GeoJSON points.")
 @click.option("--maps", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps: rate, total, rain and snow.")
+@click.option(
+    "--lee-map", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps of the lee, shown in the report."
+)
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
@@ -73,7 +79,7 @@ def command(
     if len(cases) > 1:
         named = {"--report": report, "--results": results, "--table": table, **files.asked()}
         for option, value in named.items():
-            if value is not None and option != "--maps":
+            if value is not None and option not in {"--maps", "--lee-map"}:
                 raise CaseError(f"{option} takes one case, and {len(cases)} are given. Run it once for each case.")
     from orolift.sources.files import csv_text, write_all
     from orolift.sources.site_table import site_rows
@@ -90,6 +96,7 @@ def command(
             contents[Path(results)] = (worked.results.model_dump_json(indent=2) + "\n").encode()
         if table:
             contents[Path(table)] = csv_text(*site_rows(worked.results)).encode()
+        contents |= lee_files(files.lee_map, worked.inputs, worked.lee)
         contents |= rain_files(files, worked.inputs, worked.mapped, worked.results)
         summaries.append((worked, page))
     write_all(contents)
@@ -150,11 +157,15 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     crossing = replace(
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
+    lee = None
+    if files.lee_map is not None:
+        work = work or Work()
+        lee = mapped_lee(inputs, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
     flags = flags_of(inputs, crossing, mapped)
     fire, reached, to_know = fire_of(inputs, own, crossing, parts)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
     results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
-    return Worked(inputs, situation, crossing, mapped, flags, fire, results)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results)
 
 
 def fire_of(
@@ -202,6 +213,7 @@ def report_of(worked: Worked, units: Units) -> str:
         case_text=worked.inputs.text,
         units=units,
         mapped=worked.mapped,
+        lee=worked.lee,
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,

@@ -21,6 +21,7 @@ from orolift.report.figures.rain_line import rain_line
 from orolift.report.figures.section import section
 from orolift.report.fire import FireWeather, fire_weather
 from orolift.report.inputs import Inputs, inputs
+from orolift.report.lee_map import LeeOnMap, lee_on_map
 from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
 from orolift.report.places import Journey, journey, section_heading
@@ -45,6 +46,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.column import ColumnDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.gauge_scatter import ScatterDrawing
+    from orolift.report.figures.lee_map import LeeMapDrawing
     from orolift.report.figures.path import PathDrawing
     from orolift.report.figures.rain_line import RainLineDrawing
     from orolift.report.figures.rain_map import RainMapDrawing
@@ -52,6 +54,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.sites_map import SitesMapDrawing
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.quality import Finding
+    from orolift.sources.strips import MappedLee
 
 
 SEVERITIES = ("wrong", "doubtful", "remark")
@@ -84,6 +87,7 @@ class Page:
     gauge_scatter : Figure or None
     sites : Sites
     sites_map : Figure or None
+    lee_map : LeeOnMap or None
     fire : FireWeather or None
     answers : Answers
     answers_figure : Figure or None
@@ -116,6 +120,7 @@ class Page:
     gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
     sites_map: Figure[SitesMapDrawing] | None
+    lee_map: LeeOnMap | None
     fire: FireWeather | None
     answers: Answers
     answers_figure: Figure[AnswersDrawing] | None
@@ -137,6 +142,7 @@ def page_of(
     case_text: str | None = None,
     units: Units = "metric",
     mapped: Mapped | None = None,
+    lee: MappedLee | None = None,
     flags: tuple[str, ...] = (),
     findings: Iterable[Finding] = (),
     stagnant_top: float | None = None,
@@ -161,6 +167,8 @@ def page_of(
     units : 'metric' or 'us'
     mapped : Mapped, optional
         Rain over the map.
+    lee : MappedLee, optional
+        The lee as a map.
     flags : tuple of str
         Danger thresholds reached.
     findings : iterable of Finding
@@ -202,6 +210,7 @@ def page_of(
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
         sites=sites(crossing),
         sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
+        lee_map=None if lee is None else lee_on_map(lee, _lee_maps(crossing, lee, units)),
         fire=fire_weather(crossing, fire, rules) if fire else None,
         answers=answers(few),
         answers_figure=answers_figure(few, units),
@@ -226,3 +235,10 @@ def _sites_map(crossing: Crossing, mapped: Mapped, units: Units) -> Figure[Sites
     from orolift.report.figures.sites_map import sites_map_figure
 
     return sites_map_figure(crossing, mapped, units)
+
+
+def _lee_maps(crossing: Crossing, lee: MappedLee, units: Units) -> tuple[Figure[LeeMapDrawing], ...]:
+    """The maps of the lee; their module needs what only cases with a raster need."""
+    from orolift.report.figures.lee_map import lee_map_figures
+
+    return lee_map_figures(crossing, lee, units)

@@ -12,17 +12,21 @@ from orolift.crossing.result import Site
 from orolift.errors import TerrainError
 from orolift.sources.elevation_map import read_elevation_map
 from orolift.sources.line_axis import Axis, axis_of, too_near_the_edge
-from orolift.sources.lines import PlacedLine, line_through, read_lines, situation_on
+from orolift.sources.lines import PlacedLine, line_through, map_places, read_lines, situation_on
 from orolift.spread.lee_map import Frame
 from orolift.spread.strips import Strip
 from orolift.terrain.features import features
 from orolift.terrain.range_normal import RangeNormal
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     from numpy.typing import NDArray
 
     from orolift.sources.elevation_map import ElevationMap
     from orolift.sources.inputs import Inputs
+    from orolift.sources.site_places import SitePlace
+    from orolift.spread.lee_map import LeeMap
 
     Array = NDArray[np.float64]
 
@@ -186,3 +190,28 @@ def _vector(strip: Strip) -> tuple[float, float]:
         return math.nan, math.nan
     normal = strip.situation.normal
     return normal.coherence * math.sin(normal.bearing), normal.coherence * math.cos(normal.bearing)
+
+
+@dataclass(frozen=True, eq=False)
+class MappedLee:
+    """The lee as a map, with what it was made from.
+
+    Attributes
+    ----------
+    plan : StripPlan
+    map : LeeMap
+    sites : tuple of (float, float) [m]
+        Places of the sites of the case on it.
+    """
+
+    plan: StripPlan
+    map: LeeMap
+    sites: tuple[tuple[float, float], ...]
+
+
+def sites_on(placed: ElevationMap, places: Sequence[SitePlace]) -> tuple[tuple[float, float], ...]:
+    """Places of sites on a map [m]."""
+    if not places:
+        return ()
+    x, y = map_places(placed, [place.longitude or 0.0 for place in places], [place.latitude or 0.0 for place in places])
+    return tuple((float(a), float(b)) for a, b in zip(x, y, strict=True))
