@@ -7,16 +7,13 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.parcel import Parcel, condensate_entropy, entropy, equilibrium_from_entropy
+from orolift.air import equilibrium, phase, steps
+from orolift.air.parcel import Parcel, entropy, equilibrium_from_entropy
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
     Array = NDArray[np.float64]
-
-TOLERANCE = 1e-3
-"""Last Newton step [K] at which a place is left; what remains is below 1e-7 K."""
-
 
 @dataclass(frozen=True, eq=False)
 class March:
@@ -98,7 +95,8 @@ def march(start: Parcel, pressure: ArrayLike, removed_share: ArrayLike = 0.0, *,
         cloudy = np.flatnonzero(np.any(kept.cloud[:, losing] > 0.0, axis=1))
         way = range(int(np.argmax(np.any(new[:, losing] > 0.0, axis=1))), int(cloudy[-1]) + 1)
         before = cloud[losing] if way.start == 0 else kept.cloud[way.start - 1, losing]
-        _step(out, path, losing, way, before, water[losing], share[losing], freezing=freezing)
+        warm = np.broadcast_to(start.temperature, shape).reshape(-1) if way.start == 0 else kept.temperature[way.start - 1]
+        _step(out, path, losing, way, warm[losing], before, water[losing], share[losing], freezing=freezing)
     whole = (path.shape[0], *shape)
     return March(pressure=path.reshape(whole), **{key: value.reshape(whole) for key, value in out.items()})
 
@@ -108,6 +106,7 @@ def _step(
     path: Array,
     losing: NDArray[np.intp],
     way: range,
+    before: Array,
     cloud: Array,
     water: Array,
     share: Array,
@@ -118,27 +117,30 @@ def _step(
 
     Beyond, air that has lost water is even further from cloud than air that has not: all places are solved at once.
     """
-    s = out["entropy"][way.start, losing]
-    guess = out["temperature"][way.start, losing]
-    last = guess
     p = path[:, losing]
+    scaled = p[way.start : way.stop] * equilibrium.PER_TRIPLE_PRESSURE
+    log_scaled = np.log(scaled)
+    s = out["entropy"][way.start, losing] * equilibrium.PER_RV
+    start = np.log(before * equilibrium.PER_TRIPLE)
+    air = steps.air_at(p[max(way.start - 1, 0)] * equilibrium.PER_TRIPLE_PRESSURE, start, water, freezing=freezing)
     for i in way:
-        parcel = equilibrium_from_entropy(p[i], s, water, freezing=freezing, first_guess=guess, tolerance=TOLERANCE)
-        new = np.maximum(parcel.cloud - cloud, 0.0)
+        air = steps.moved(air, scaled[i - way.start], log_scaled[i - way.start], s, freezing=freezing)
+        found = air.water - air.vapour
+        new = np.maximum(found - cloud, 0.0)
         removed = share * new
-        s = s - removed * condensate_entropy(parcel.temperature, freezing=freezing)
-        water = water - removed
-        cloud = parcel.cloud - removed
-        guess, last = 2.0 * parcel.temperature - last, parcel.temperature  # straight on: most places need one step
+        s = s - removed * steps.condensate_entropy(air)
+        cloud = found - removed
+        air = air._replace(water=air.water - removed)
         for key, value in (
-            ("temperature", parcel.temperature),
-            ("vapour", parcel.vapour),
+            ("temperature", phase.TRIPLE * air.t),
+            ("vapour", air.vapour),
             ("cloud", cloud),
             ("condensed", new),
             ("removed", removed),
-            ("entropy", s),
+            ("entropy", phase.R_VAPOUR * s),
         ):
             out[key][i, losing] = value
+    water, s = air.water, phase.R_VAPOUR * s
     rest = slice(way.stop, path.shape[0])
     if way.stop < path.shape[0]:
         clear = equilibrium_from_entropy(p[rest], s, water, freezing=freezing)
