@@ -132,17 +132,31 @@ def from_entropy(
     """Temperature [K] and vapour of air in equilibrium with this entropy."""
     p = pressure * PER_TRIPLE_PRESSURE
     if first_guess is None:
-        shape = np.broadcast_shapes(p.shape, entropy.shape, water.shape)
-        q, vapour = np.empty(shape), np.empty(shape)
-        rest = np.broadcast_to(entropy * PER_RV, shape), np.broadcast_to(water, shape)
-        for block in _blocks(shape):
-            q[block], vapour[block] = _afresh(
-                np.broadcast_to(p, shape)[block], rest[0][block], rest[1][block], freezing, tolerance * _KELVIN
-            )
+        q, vapour = _afresh(p, entropy * PER_RV, water, freezing, tolerance * _KELVIN)
     else:
         guess = np.log(first_guess * PER_TRIPLE)
-        q, vapour = from_entropy_guess(p, entropy * PER_RV, water, guess, freezing=freezing, tolerance=tolerance * _KELVIN)
+        q, vapour = from_entropy_guess(
+            p, entropy * PER_RV, water, guess, freezing=freezing, tolerance=tolerance * _KELVIN
+        )
     return phase.TRIPLE * np.exp(q), vapour
+
+
+def cloudless(
+    pressure: Array, entropy: Array, water: Array, *, freezing: bool
+) -> tuple[Array, NDArray[np.bool_]]:
+    """Temperature [K] of air of this entropy if all its water is vapour, and where that would be supersaturated."""
+    shape = np.broadcast_shapes(pressure.shape, entropy.shape, water.shape)
+    p, s, w = (np.broadcast_to(x, shape) for x in (pressure, entropy, water))
+    t, cloudy = np.empty(shape), np.empty(shape, bool)
+    for block in _blocks(shape):
+        log_p = np.log(p[block] * PER_TRIPLE_PRESSURE)
+        log_all, q = without_cloud(log_p, s[block] * PER_RV, w[block])
+        scaled = np.exp(q)
+        cloudy[block] = phase.condensate(q, scaled, freezing)[0] < log_all
+        t[block] = phase.TRIPLE * scaled
+    if not np.isfinite(t).all():
+        raise OutOfRangeError(NO_TEMPERATURE)
+    return t, cloudy
 
 
 def _blocks(shape: tuple[int, ...]) -> list[tuple[slice, ...]]:
@@ -155,17 +169,21 @@ def _blocks(shape: tuple[int, ...]) -> list[tuple[slice, ...]]:
 
 def _afresh(p: Array, entropy: Array, water: Array, freezing: bool, tolerance: float) -> tuple[Array, Array]:
     """q and vapour without a guess: cloudless air in closed form, and only where that is saturated, Newton's method."""
-    log_all, q = without_cloud(np.log(p), entropy, water)
-    log_saturation = phase.condensate(q, np.exp(q), freezing)[0]
-    cloudy = log_saturation < log_all
-    if not cloudy.any():
-        if not np.all(np.isfinite(q)):
+    shape = np.broadcast_shapes(p.shape, entropy.shape, water.shape)
+    whole = [np.broadcast_to(x, shape) for x in (p, entropy, water)]
+    q, vapour = np.empty(shape), np.array(whole[2])
+    for block in _blocks(shape):
+        pressure, s, w = (x[block] for x in whole)
+        log_all, dry_q = without_cloud(np.log(pressure), s, w)
+        if not np.isfinite(dry_q).all():
             raise OutOfRangeError(NO_TEMPERATURE)
-        return q, water
-    few = p[cloudy], entropy[cloudy], water[cloudy]
-    warm = start(q[cloudy], log_all[cloudy])
-    q, vapour = np.array(q), np.array(water)
-    q[cloudy], vapour[cloudy] = from_entropy_guess(*few, warm, freezing=freezing, tolerance=tolerance)
+        cloudy = phase.condensate(dry_q, np.exp(dry_q), freezing)[0] < log_all
+        q[block] = dry_q
+        if cloudy.any():
+            warm = start(dry_q[cloudy], log_all[cloudy])
+            q[block][cloudy], vapour[block][cloudy] = from_entropy_guess(
+                pressure[cloudy], s[cloudy], w[cloudy], warm, freezing=freezing, tolerance=tolerance
+            )
     return q, vapour
 
 

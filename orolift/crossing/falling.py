@@ -126,26 +126,26 @@ def march_with_rain(
     """
     shape = (path.pressure.shape[0], *np.shape(start.temperature))
     s0, water = np.asarray(entropy(start, freezing=freezing)), start.vapour + start.cloud
-    kept = equilibrium_from_entropy(path.pressure, s0, water, freezing=freezing)
-    condensed = np.maximum(np.diff(kept.cloud, axis=0, prepend=start.cloud[np.newaxis]), 0.0)
+    temperature, cloudy = equilibrium.cloudless(path.pressure, s0, water, freezing=freezing)
     out = {
-        "temperature": kept.temperature,
-        "vapour": kept.vapour,
-        "cloud": kept.cloud,
-        "condensed": condensed,
+        "temperature": temperature,
+        "vapour": np.broadcast_to(water, shape).copy(),
+        "cloud": np.zeros(shape),
+        "condensed": np.zeros(shape),
         "removed": np.zeros(shape),
         "entropy": np.broadcast_to(s0, shape).copy(),
     }
     landed, snow, evaporated = (np.zeros(shape[:2]) for _ in range(3))
     aloft = np.zeros(shape)
-    cloudy = kept.cloud > 0.0
     if not cloudy.any():
         return March(pressure=path.pressure, **out), Falling(landed, snow, aloft, np.zeros(shape[1]), evaporated)
     # rain touches only streamlines up to the highest cloudy one, from the first cloudy place on
     low = slice(0, int(np.flatnonzero(cloudy.any(axis=(0, 1)))[-1]) + 1)
     places = np.flatnonzero(cloudy.any(axis=(1, 2)))
     first, last = int(places[0]), int(places[-1])
-    before = start if first == 0 else Parcel(*(x[first - 1] for x in _fields(kept)))
+    before = start
+    if first > 0:
+        before = Parcel(path.pressure[first - 1], temperature[first - 1], water, np.zeros_like(water))
     state = _start(before, s0, low, freezing=freezing)
     way = _way(path, low, cloud_time, fall_time)
     stop = shape[0]
@@ -172,10 +172,6 @@ def march_with_rain(
         _clear(out, path.pressure[..., low], state, slice(stop, shape[0]), low, freezing=freezing)
     beyond = np.sum(way.carried * state.falling, axis=-1)
     return March(pressure=path.pressure, **out), Falling(landed, snow, aloft, beyond, evaporated)
-
-
-def _fields(parcel: Parcel) -> tuple[Array, Array, Array, Array]:
-    return parcel.pressure, parcel.temperature, parcel.vapour, parcel.cloud
 
 
 def _clear(out: dict[str, Array], pressure: Array, state: _State, rest: slice, low: slice, *, freezing: bool) -> None:
@@ -227,7 +223,8 @@ def _way(path: Path, low: slice, cloud_time: Array, fall_time: Array) -> _Way:
 
 def _start(parcel: Parcel, entropy: Array, low: slice, *, freezing: bool) -> _State:
     """Air just before the first cloudy place."""
-    p, t, v, cloud = (np.broadcast_to(x, entropy.shape)[:, low] for x in _fields(parcel))
+    fields = (parcel.pressure, parcel.temperature, parcel.vapour, parcel.cloud)
+    p, t, v, cloud = (np.broadcast_to(x, entropy.shape)[:, low] for x in fields)
     q = np.log(t * equilibrium.PER_TRIPLE)
     air = steps.air_at(p * equilibrium.PER_TRIPLE_PRESSURE, q, v + cloud, v, freezing=freezing)
     return _State(air, entropy[:, low] * equilibrium.PER_RV, np.zeros_like(t), _falling_enthalpy(air.t, np.zeros_like(t)))

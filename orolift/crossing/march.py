@@ -80,23 +80,30 @@ def march(start: Parcel, pressure: ArrayLike, removed_share: ArrayLike = 0.0, *,
         np.broadcast_to(np.asarray(x, dtype=np.float64), shape).reshape(-1)
         for x in (removed_share, entropy(start, freezing=freezing), start.vapour + start.cloud, start.cloud)
     )
-    kept = equilibrium_from_entropy(path, s, water, freezing=freezing)
-    new = np.maximum(np.diff(kept.cloud, axis=0, prepend=cloud[np.newaxis]), 0.0)
+    temperature, cloudy = equilibrium.cloudless(path, s, water, freezing=freezing)
     out = {
-        "temperature": kept.temperature,
-        "vapour": kept.vapour,
-        "cloud": kept.cloud,
-        "condensed": new,
+        "temperature": temperature,
+        "vapour": np.broadcast_to(water, path.shape).copy(),
+        "cloud": np.zeros_like(path),
+        "condensed": np.zeros_like(path),
         "removed": np.zeros_like(path),
         "entropy": np.broadcast_to(s, path.shape).copy(),
     }
-    losing = np.flatnonzero(np.any(new > 0.0, axis=0) & (share > 0.0))
+    saturated = cloudy.any(axis=0)
+    keeping, losing = np.flatnonzero(saturated & (share <= 0.0)), np.flatnonzero(saturated & (share > 0.0))
+    if keeping.size:
+        kept = equilibrium_from_entropy(path[:, keeping], s[keeping], water[keeping], freezing=freezing)
+        for key, value in (("temperature", kept.temperature), ("vapour", kept.vapour), ("cloud", kept.cloud)):
+            out[key][:, keeping] = value
+        out["condensed"][:, keeping] = np.maximum(np.diff(kept.cloud, axis=0, prepend=cloud[np.newaxis, keeping]), 0.0)
     if losing.size:
-        cloudy = np.flatnonzero(np.any(kept.cloud[:, losing] > 0.0, axis=1))
-        way = range(int(np.argmax(np.any(new[:, losing] > 0.0, axis=1))), int(cloudy[-1]) + 1)
-        before = cloud[losing] if way.start == 0 else kept.cloud[way.start - 1, losing]
-        warm = np.broadcast_to(start.temperature, shape).reshape(-1) if way.start == 0 else kept.temperature[way.start - 1]
-        _step(out, path, losing, way, warm[losing], before, water[losing], share[losing], freezing=freezing)
+        places = np.flatnonzero(cloudy[:, losing].any(axis=1))
+        way = range(int(places[0]), int(places[-1]) + 1)
+        if way.start == 0:
+            before = path[0, losing], np.broadcast_to(start.temperature, shape).reshape(-1)[losing], cloud[losing]
+        else:
+            before = path[way.start - 1, losing], temperature[way.start - 1, losing], np.zeros(losing.size)
+        _step(out, path, losing, way, before, water[losing], share[losing], freezing=freezing)
     whole = (path.shape[0], *shape)
     return March(pressure=path.reshape(whole), **{key: value.reshape(whole) for key, value in out.items()})
 
@@ -106,23 +113,23 @@ def _step(
     path: Array,
     losing: NDArray[np.intp],
     way: range,
-    before: Array,
-    cloud: Array,
+    before: tuple[Array, Array, Array],
     water: Array,
     share: Array,
     *,
     freezing: bool,
 ) -> None:
-    """Step the streamlines that lose water from the first place at which one condenses to the last cloudy one.
+    """Step the streamlines that lose water from the first cloudy place of one of them to the last.
 
-    Beyond, air that has lost water is even further from cloud than air that has not: all places are solved at once.
+    `before` is pressure, temperature and cloud just before. Beyond, air that has lost water is even further from cloud than air that has not: all places are solved at once.
     """
     p = path[:, losing]
     scaled = p[way.start : way.stop] * equilibrium.PER_TRIPLE_PRESSURE
     log_scaled = np.log(scaled)
     s = out["entropy"][way.start, losing] * equilibrium.PER_RV
-    start = np.log(before * equilibrium.PER_TRIPLE)
-    air = steps.air_at(p[max(way.start - 1, 0)] * equilibrium.PER_TRIPLE_PRESSURE, start, water, freezing=freezing)
+    pressure, temperature, cloud = before
+    start = np.log(temperature * equilibrium.PER_TRIPLE)
+    air = steps.air_at(pressure * equilibrium.PER_TRIPLE_PRESSURE, start, water, freezing=freezing)
     for i in way:
         air = steps.moved(air, scaled[i - way.start], log_scaled[i - way.start], s, freezing=freezing)
         found = air.water - air.vapour

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.column import interpolated
+from orolift.air.column import extended_down, interpolated
 from orolift.air.parcel import Parcel, entropy, equilibrium_from_entropy
 
 if TYPE_CHECKING:
@@ -105,3 +105,27 @@ def mass_of_streamlines(pressure: Array) -> Array:
     edge = 0.5 * (pressure[..., 1:] + pressure[..., :-1])
     ends = np.concatenate([pressure[..., :1], edge, pressure[..., -1:]], axis=-1)
     return np.asarray(ends[..., :-1] - ends[..., 1:])
+
+
+def undisturbed_pressure(incoming: IncomingAir, heights: Array) -> Array:
+    """Pressure of the incoming column at heights of its members; above its top that of the top.
+
+    Parameters
+    ----------
+    incoming : IncomingAir, fields (m, nz_column) or (nz_column,)
+    heights : ndarray (m, ...) [m above sea level]
+
+    Returns
+    -------
+    ndarray (m, ...) [Pa]
+        As `interpolated` gives it, which reads the other fields as well.
+    """
+    lowest = float(np.min(heights))
+    column = extended_down(incoming, lowest) if lowest < incoming.height[0] else incoming
+    members = heights.shape[0]
+    rows = np.broadcast_to(np.log(column.pressure), (members, column.height.size))
+    flat = heights.reshape(members, -1)
+    out = np.empty(flat.shape)
+    for z, row, found in zip(flat, rows, out, strict=True):
+        found[:] = np.interp(z, column.height, row)
+    return np.exp(out, out=out).reshape(heights.shape)

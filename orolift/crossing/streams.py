@@ -7,7 +7,6 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.column import interpolated
 from orolift.air.condensation import condensation_point
 from orolift.air.parcel import Parcel
 from orolift.air.temperature import virtual_temperature
@@ -15,7 +14,7 @@ from orolift.constants import GRAVITY, KAPPA, R_DRY
 from orolift.crossing.falling import Falling, Path, fallen_at_once, march_with_rain
 from orolift.crossing.march import March, march
 from orolift.crossing.settings import each
-from orolift.crossing.start import mass_of_streamlines, start_heights, starting_air
+from orolift.crossing.start import mass_of_streamlines, start_heights, starting_air, undisturbed_pressure
 from orolift.crossing.upwind import LEAST_VAPOUR, Upwind
 from orolift.flow.airflow import Airflow, airflow, highest_pressure, joined
 from orolift.flow.boundary import start_level
@@ -238,13 +237,13 @@ def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, stride: in
 
 def _marched(
     setup: _Setup, flow: Airflow, carried: Array, place: NDArray[np.intp], pressure: Array, *, early: bool
-) -> tuple[March, Falling]:
+) -> tuple[March, Falling | None]:
     """Air marched over places, by the prescribed share or with rain worked out; early passes take a usual share."""
     settings, members = setup.settings, setup.blocked_top.size
     if settings.removed_share is not None or early:
         share = each(EARLY_SHARE if settings.removed_share is None else settings.removed_share, members)
         air = march(setup.start, pressure, share[:, np.newaxis], freezing=settings.freezing)
-        return air, fallen_at_once(air, carried, freezing=settings.freezing)
+        return air, None if early else fallen_at_once(air, carried, freezing=settings.freezing)
     slowness = 1.0 / np.maximum(flow.start_wind[..., np.newaxis] * flow.speed_factor[..., place], SLOWEST)
     time = np.zeros(slowness.shape)
     time[..., 1:] = 0.5 * (slowness[..., 1:] + slowness[..., :-1]) * np.diff(setup.distance[place])
@@ -265,7 +264,9 @@ def _carried(upwind: Upwind, start: Parcel, heights: Array, wind: Array) -> Arra
 def _moved(setup: _Setup, heights: Array, before: Array) -> Array:
     """Largest change of a streamline that starts no higher than 2 km above the crest, (m,)."""
     low = setup.heights <= setup.ground[setup.crest] + 2000.0
-    return np.asarray(np.max(np.abs(heights - before) * low[..., np.newaxis], axis=(-2, -1)))
+    some = int(np.max(np.sum(low, axis=-1)))
+    change = np.abs(heights[:, :some] - before[:, :some])
+    return np.asarray(np.max(np.max(change, axis=-1) * low[:, :some], axis=-1))
 
 
 def _over(setup: _Setup, n_squared: Array) -> Airflow:
@@ -302,9 +303,7 @@ def _pressure(setup: _Setup, flow: Airflow, place: NDArray[np.intp], before: _Pa
     """
     air, start = before.air, setup.start
     heights = flow.heights[..., place]
-    limited = np.minimum(heights, setup.incoming.height[-1])
-    flat = limited.reshape(limited.shape[0], -1)
-    undisturbed = interpolated(setup.incoming, flat).pressure.reshape(heights.shape)
+    undisturbed = undisturbed_pressure(setup.incoming, heights)
     if air is None:
         return undisturbed, np.ones_like(undisturbed)
     x_before, x = before.place, setup.distance[place]
