@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
-from typing import TYPE_CHECKING
+from dataclasses import dataclass, fields, replace
+from typing import TYPE_CHECKING, TypeVar
 
 import numpy as np
 
@@ -14,10 +14,11 @@ from orolift.constants import GRAVITY, KAPPA, R_DRY
 from orolift.crossing.falling import Falling, Path, fallen_at_once, march_with_rain
 from orolift.crossing.march import March, march
 from orolift.crossing.settings import each
-from orolift.crossing.start import mass_of_streamlines, start_heights, starting_air, undisturbed_pressure
+from orolift.crossing.start import column_pressure, mass_of_streamlines, start_heights, starting_air, undisturbed_pressure
 from orolift.crossing.upwind import LEAST_VAPOUR, Upwind
 from orolift.flow.airflow import Airflow, airflow, highest_pressure, joined
 from orolift.flow.boundary import start_level
+from orolift.flow.members import some_members, together
 from orolift.flow.streamlines import join_weight
 
 if TYPE_CHECKING:
@@ -41,6 +42,8 @@ EARLY_SHARE = 0.4
 MOST_PLACES = 256
 """Places of the march in the last pass: the removal of a prescribed share is then good to 0.02 K, and steps of some
 tens of seconds are short against a cloud time of 1000 s."""
+TOGETHER = 16
+"""Members whose flow is worked out together."""
 SETTLED = 50.0
 """Change of a low streamline's height [m] in the last pass above which the passes have not settled; a judgement."""
 
@@ -135,27 +138,41 @@ def streams(
     start, source, mixed = starting_air(incoming, heights, inflow_depth, freezing=freezing)
     wet = Parcel(start.pressure, start.temperature, np.maximum(start.vapour, LEAST_VAPOUR), start.cloud)
     saturates = condensation_point(wet, freezing=freezing).pressure
+    levels, log_pressure = column_pressure(incoming, float(np.min(ground)), blocked_top.size)
     setup = _Setup(
-        incoming, upwind, distance, ground, crest, blocked_top, pool_top, heights, start, saturates, settings
+        levels,
+        log_pressure,
+        upwind,
+        distance,
+        ground,
+        crest,
+        blocked_top,
+        pool_top,
+        heights,
+        start,
+        saturates,
+        settings,
     )
     coarse = _thinned(setup, max(1, distance.size // EARLY_POINTS))
     dry = _over(coarse, upwind.dry)
     carried = _carried(upwind, start, heights, dry.start_wind)
     rows = np.broadcast_to(upwind.lifted_share, (heights.shape[0], upwind.height.size))
     lifted = np.stack([np.interp(z, upwind.height, row) for z, row in zip(heights, rows, strict=True)])
-    state = _Pass(dry, distance[:1], None, np.ones((1, 1, 1)), lifted, None, np.inf)
+    state = _Pass(dry.heights, distance[:1], np.ones((1, 1, 1)), None, lifted, None, np.full(blocked_top.size, np.inf))
+    left = np.arange(blocked_top.size)
     for _ in range(passes - 1):
-        state = _next(coarse, dry, state, carried, max(1, coarse.distance.size // EARLY_PLACES), early=True)
-        if np.all(state.moved <= SETTLED):
+        some = _next(_some(coarse, left), some_members(dry, left), _some(state, left), carried[left], early=True).known
+        state = some if left.size == blocked_top.size else _with(state, some, left)
+        left = left[some.moved > SETTLED]
+        if not left.size:
             break
-    moved = state.moved
+    settled = (state.moved <= SETTLED) | (passes < 3)
     dry = dry if coarse.distance.size == distance.size else _over(setup, upwind.dry)
-    state = _next(setup, dry, state, carried, max(1, -(-distance.size // MOST_PLACES)))
-    if state.air is None or state.falling is None:
-        raise ValueError("the last pass marches the air")
-    settled = np.broadcast_to(np.asarray(moved) <= SETTLED, (blocked_top.size,)) | (passes < 3)
-    flow = state.flow
-    mass, place = mass_of_streamlines(source.pressure), np.searchsorted(distance, state.place)
+    last = _next(setup, dry, state, carried)
+    if last.falling is None:
+        raise ValueError("the last pass lets rain fall")
+    flow = last.flow
+    mass, place = mass_of_streamlines(source.pressure), np.searchsorted(distance, last.known.place)
     return Streams(
         start,
         source,
@@ -165,9 +182,9 @@ def streams(
         flow,
         flow.start_wind,
         place,
-        state.air,
+        last.air,
         carried,
-        state.falling,
+        last.falling,
         settled,
     )
 
@@ -186,7 +203,8 @@ def _thinned(setup: _Setup, every: int) -> _Setup:
 class _Setup:
     """What stays the same from pass to pass."""
 
-    incoming: IncomingAir
+    levels: Array
+    log_pressure: Array  # of the incoming column there, (m, n)
     upwind: Upwind
     distance: Array
     ground: Array
@@ -201,38 +219,90 @@ class _Setup:
 
 @dataclass(frozen=True, eq=False)
 class _Pass:
-    """What a pass hands on: flow, places of the march, its air, pressure ratio, saturated share, cloud end, rain."""
+    """What a pass hands on; arrays (m, ...), places last."""
 
-    flow: Airflow
+    heights: Array
     place: Array
-    air: March | None
-    change: Array
-    share: Array
-    end: Array | None
-    moved: Array | float
-    falling: Falling | None = None
+    change: Array  # pressure over that of the undisturbed column at the same height
+    theta_v: Array | None  # virtual potential temperature but for a constant
+    share: Array  # of the lift on which a streamline is saturated
+    end: Array | None  # of the cloud in the lee
+    moved: Array
 
 
-def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, stride: int, *, early: bool = False) -> _Pass:
+@dataclass(frozen=True, eq=False)
+class _Done:
+    """A pass: what it hands on, and what it found."""
+
+    known: _Pass
+    flow: Airflow
+    air: March
+    falling: Falling | None
+
+
+Parts = TypeVar("Parts", _Setup, _Pass)
+
+
+def _some(whole: Parts, which: NDArray[np.intp]) -> Parts:
+    """Some of the members."""
+    if isinstance(whole, _Pass):
+        arrays = {f.name: getattr(whole, f.name) for f in fields(_Pass) if f.name != "place"}
+        return replace(whole, **{key: x if x is None or x.shape[0] == 1 else x[which] for key, x in arrays.items()})
+    members = whole.blocked_top.size
+    if which.size == members:
+        return whole
+
+    def part(x: Array) -> Array:
+        return x[which] if x.ndim > 1 and x.shape[0] == members else x
+
+    upwind, start, share = whole.upwind, whole.start, whole.settings.removed_share
+    return replace(
+        whole,
+        log_pressure=whole.log_pressure[which],
+        upwind=replace(
+            upwind, **{name: part(getattr(upwind, name)) for name in ("wind", "density", "dry", "moist")}
+        ),
+        blocked_top=whole.blocked_top[which],
+        pool_top=None if whole.pool_top is None else whole.pool_top[which],
+        heights=whole.heights[which],
+        start=Parcel(*(x[which] for x in (start.pressure, start.temperature, start.vapour, start.cloud))),
+        saturates=whole.saturates[which],
+        settings=replace(
+            whole.settings, removed_share=None if share is None else each(share, members)[which]
+        ),
+    )
+
+
+def _with(whole: _Pass, some: _Pass, which: NDArray[np.intp]) -> _Pass:
+    """All members, some of them anew."""
+    for f in fields(_Pass):
+        if f.name != "place":
+            getattr(whole, f.name)[which] = getattr(some, f.name)
+    return whole
+
+
+def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, *, early: bool = False) -> _Done:
     """One pass: the flow with the saturation of the pass before, and the air marched through it."""
     members, size = setup.blocked_top.size, setup.distance.size
     end = np.full(members, setup.distance[setup.crest]) if before.end is None else before.end
     flow = _flow(setup, dry, before.share, end)
-    place = np.union1d(np.arange(0, size, stride), [setup.crest, size - 1])
+    stride = size // EARLY_PLACES if early else -(-size // MOST_PLACES)
+    place = np.union1d(np.arange(0, size, max(1, stride)), [setup.crest, size - 1])
     pressure, change = _pressure(setup, flow, place, before)
     air, falling = _marched(setup, flow, carried, place, np.moveaxis(pressure, -1, 0), early=early)
+    first = before.theta_v is None
     found = _saturated_share(air, setup.start, setup.saturates, place <= setup.crest)
-    same_points = before.air is not None and before.flow.heights.shape == flow.heights.shape
-    return _Pass(
-        flow=flow,
+    theta_v = virtual_temperature(air.temperature, air.vapour, air.cloud) / air.pressure**KAPPA
+    known = _Pass(
+        heights=flow.heights,
         place=setup.distance[place],
-        air=air,
         change=change,
-        share=found if before.air is None else 0.5 * (before.share + found),
+        theta_v=np.moveaxis(theta_v, 0, -1),
+        share=found if first else 0.5 * (before.share + found),
         end=_cloud_end(setup, air, place),
-        moved=_moved(setup, flow.heights, before.flow.heights) if same_points else np.inf,
-        falling=falling,
+        moved=np.full(members, np.inf) if first or not early else _moved(setup, flow.heights, before.heights),
     )
+    return _Done(known, flow, air, falling)
 
 
 def _marched(
@@ -270,18 +340,26 @@ def _moved(setup: _Setup, heights: Array, before: Array) -> Array:
 
 
 def _over(setup: _Setup, n_squared: Array) -> Airflow:
-    """Flow with one profile of stability."""
-    return airflow(
-        setup.distance,
-        setup.ground,
-        setup.upwind.height,
-        setup.upwind.density,
-        n_squared,
-        setup.upwind.wind,
-        setup.heights,
-        blocked_top=setup.blocked_top,
-        pool_top=setup.pool_top,
-        crest=setup.crest,
+    """Flow with one profile of stability, for some members at a time: their arrays stay in the processor's cache."""
+    upwind, members = setup.upwind, setup.blocked_top.size
+
+    def part(x: Array, which: slice) -> Array:
+        return x[which] if x.shape[0] == members else x
+
+    return together(
+        [
+            airflow(
+                setup.distance,
+                setup.ground,
+                upwind.height,
+                *(part(x, which) for x in (upwind.density, n_squared, upwind.wind)),
+                setup.heights[which],
+                blocked_top=setup.blocked_top[which],
+                pool_top=None if setup.pool_top is None else setup.pool_top[which],
+                crest=setup.crest,
+            )
+            for which in (slice(first, first + TOGETHER) for first in range(0, members, TOGETHER))
+        ]
     )
 
 
@@ -301,15 +379,14 @@ def _pressure(setup: _Setup, flow: Airflow, place: NDArray[np.intp], before: _Pa
     Virtual potential temperature, which hardly changes along a streamline, is carried over from the places of the pass
     before, so that heights between them count in full.
     """
-    air, start = before.air, setup.start
+    start = setup.start
     heights = flow.heights[..., place]
-    undisturbed = undisturbed_pressure(setup.incoming, heights)
-    if air is None:
+    undisturbed = undisturbed_pressure(setup.levels, setup.log_pressure, heights)
+    if before.theta_v is None:
         return undisturbed, np.ones_like(undisturbed)
     x_before, x = before.place, setup.distance[place]
-    theta_v = virtual_temperature(air.temperature, air.vapour, air.cloud) / air.pressure**KAPPA
     pressure = undisturbed * _between_places(before.change, x_before, x)
-    virtual = _between_places(np.moveaxis(theta_v, 0, -1), x_before, x) * pressure**KAPPA
+    virtual = _between_places(before.theta_v, x_before, x) * pressure**KAPPA
     density = start.pressure[:, -1] / (
         R_DRY * virtual_temperature(start.temperature[:, -1], start.vapour[:, -1], start.cloud[:, -1])
     )
