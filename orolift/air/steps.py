@@ -23,8 +23,9 @@ if TYPE_CHECKING:
 
     Array = NDArray[np.float64]
 
-NEAR, NEAR_CLEAR = 1e-5, 4e-4
-"""Changes of q, 0.003 K in cloud and 0.1 K outside, up to which saturation is brought along: to 1e-9 and 1e-7."""
+NEAR, NEAR_CLEAR = 4e-5, 4e-4
+"""Changes of q, 0.01 K in cloud and 0.1 K outside, up to which saturation is brought along: to 1e-10 and 1e-7."""
+_ROUNDS = 3  # so often places that are still far are stepped by themselves, before Newton's method with its bracket
 _FINE = 1e-8  # last step in q of places that are solved by themselves: what is left is its square
 _ALL_ICE = phase.number(np.log(constants.ALL_ICE_TEMPERATURE / constants.TRIPLE_POINT_TEMPERATURE))
 _HALF, _TWO, _THREE = phase.number(0.5), phase.number(2.0), phase.number(3.0)
@@ -48,62 +49,43 @@ class Air(NamedTuple):
     latent_bend: Array  # its change with q
 
 
-def air_at(pressure: Array, q: Array, water: Array, vapour: Array | None = None, *, freezing: bool) -> Air:
+class _Goal(NamedTuple):
+    """What air is to reach: entropy, or enthalpy."""
+
+    value: Array
+    is_entropy: bool
+    log_all: Array  # logarithm of the vapour pressure with all water as vapour
+    clear_q: Array  # q at which air without cloud has reached it
+
+
+def air_at(pressure: Array, q: Array, water: Array, *, freezing: bool) -> Air:
     """Air at a temperature at which it is in equilibrium; its vapour is at most saturated."""
-    t = np.exp(q)
-    log_saturation, *heat = phase.condensate_and_bend(q, t, freezing)
-    saturation = _saturation(log_saturation, pressure)
-    v = np.minimum(saturation, water) if vapour is None else vapour
-    return Air(q, t, pressure, np.log(pressure), water, v, saturation, log_saturation, *heat)
+    air = _saturated(q, pressure, np.log(pressure), water, freezing=freezing)
+    return air._replace(vapour=np.minimum(air.saturation, water))
 
 
 def moved(air: Air, pressure: Array, log_pressure: Array, entropy: Array, *, freezing: bool) -> Air:
     """The same air, of known entropy, at a pressure that is not far from its own."""
-    water = air.water
-    log_all, clear_q = equilibrium.without_cloud(log_pressure, entropy, water)
-    # in cloud: first from the saturation of where it was, then once more with that of the temperature found
+    log_all, clear_q = equilibrium.without_cloud(log_pressure, entropy, air.water)
+    # first guess: in cloud from the saturation of where it was; cloud only warms
     e = air.pressure * air.saturation / (air.saturation + phase.EPSILON)
     here = air._replace(pressure=pressure, log_pressure=log_pressure, vapour=phase.EPSILON * e / (pressure - e))
-    guess = air.q + _halley(here, entropy - entropy_of(here, air.log_saturation))
-    q = np.maximum(clear_q, guess)  # cloud only warms
-    t = np.exp(q)
-    log_saturation, *heat = phase.condensate_and_bend(q, t, freezing)
-    saturation = _saturation(log_saturation, pressure)
-    near = Air(q, t, pressure, log_pressure, water, saturation, saturation, log_saturation, *heat)
-    to_clear = clear_q - q
-    clear = _log_saturation(near, to_clear) >= log_all
-    dq = np.where(clear, to_clear, _halley(near, entropy - entropy_of(near, log_saturation)))
-    after = _carried(near, dq, clear)
-    far = _far(near, dq, clear, freezing=freezing)
-    if far is None:
-        return after
-    p, w, start = pressure[far], water[far], (q + dq)[far]
-    found, _ = equilibrium.from_entropy_guess(p, entropy[far], w, start, freezing=freezing, tolerance=_FINE)
-    return _replaced(after, far, air_at(p, found, w, freezing=freezing))
+    goal = _Goal(entropy, True, log_all, clear_q)
+    q = np.maximum(clear_q, air.q + _halley(here, _lack(here, goal)))
+    return _settled(_saturated(q, pressure, log_pressure, air.water, freezing=freezing), goal, freezing=freezing)
 
 
 def heated(air: Air, enthalpy: Array, water: Array, *, freezing: bool) -> Air:
     """Air of given enthalpy and water at the pressure of air that is not far from it."""
     cp = phase.CP_DRY + phase.CP_VAPOUR * water
     log_all = air.log_pressure + np.log(np.maximum(water, equilibrium.TINY) / (water + phase.EPSILON))
-    x = (enthalpy - phase.VAPORISATION * water + cp) / (cp * air.t) - phase.ONE
-    to_clear = x * (phase.ONE - x * (_HALF - x * _THIRD))  # ln(1 + x)
-    clear = _log_saturation(air, to_clear) >= log_all
-    saturated = air._replace(water=water, vapour=air.saturation)
-    x = _halley(saturated, (enthalpy - enthalpy_of(saturated)) / air.t)
-    dq = np.where(clear, to_clear, x * (phase.ONE - x * (_HALF - x * _THIRD)))
-    after = _carried(saturated, dq, clear)
-    far = _far(air, dq, clear, freezing=freezing)
-    if far is None:
-        return after
-    p, w = air.pressure[far], water[far]
-    start = np.exp(air.q + dq)[far]
-    found = equilibrium.from_enthalpy_guess(p, enthalpy[far], w, start, freezing=freezing, tolerance=_FINE)[0]
-    return _replaced(after, far, air_at(p, np.log(found), w, freezing=freezing))
+    clear_q = np.log((enthalpy - phase.VAPORISATION * water) / cp + phase.ONE)
+    goal = _Goal(enthalpy, False, log_all, clear_q)
+    return _settled(air._replace(water=water, vapour=air.saturation), goal, freezing=freezing)
 
 
 def entropy_of(air: Air, log_e: Array | None = None) -> Array:
-    """Entropy, with the logarithm of the vapour pressure where that is known."""
+    """Entropy; the logarithm of the vapour pressure is worked out unless it is known."""
     weight = np.log(air.vapour + phase.EPSILON)
     if log_e is None:
         log_e = air.log_pressure + (np.log(np.maximum(air.vapour, equilibrium.TINY)) - weight)
@@ -126,6 +108,14 @@ def condensate_entropy(air: Air) -> Array:
     return np.asarray(phase.VAPORISATION + phase.CP_VAPOUR * air.q - air.log_saturation - air.bound)
 
 
+def _saturated(q: Array, pressure: Array, log_pressure: Array, water: Array, *, freezing: bool) -> Air:
+    """Saturated air, whatever water that takes."""
+    t = np.exp(q)
+    log_saturation, *heat = phase.condensate_and_bend(q, t, freezing)
+    v = _saturation(log_saturation, pressure)
+    return Air(q, t, pressure, log_pressure, water, v, v, log_saturation, *heat)
+
+
 def _saturation(log_saturation: Array, pressure: Array) -> Array:
     """Vapour of saturated air."""
     e = np.exp(log_saturation)
@@ -137,8 +127,15 @@ def _log_saturation(air: Air, dq: Array) -> Array:
     return np.asarray(air.log_saturation + dq * (air.bound + _HALF * (air.latent_slope - air.bound) * dq))
 
 
+def _lack(air: Air, goal: _Goal) -> Array:
+    """What saturated air lacks of its entropy, or of its enthalpy over t."""
+    if goal.is_entropy:
+        return goal.value - entropy_of(air, air.log_saturation)
+    return np.asarray((goal.value - enthalpy_of(air)) / air.t)
+
+
 def _halley(air: Air, lack: Array) -> Array:
-    """Change of q, or of t over t, by which saturated air gains what it lacks of entropy, or of enthalpy over t."""
+    """Change of q, or of t over t, by which saturated air gains what it lacks."""
     cloud = air.water - air.vapour
     per_dry = phase.ONE + air.vapour * _PER_EPSILON  # pressure over dry pressure
     gain = air.vapour * per_dry * air.bound
@@ -150,12 +147,37 @@ def _halley(air: Air, lack: Array) -> Array:
     return np.asarray(newton / np.maximum(phase.ONE + _HALF * newton * bend / heat, _HALF))
 
 
+def _settled(air: Air, goal: _Goal, *, freezing: bool, rounds: int = _ROUNDS) -> Air:
+    """Air at its goal, from saturated air near it: one step, and further ones for the places that are still far."""
+    to_clear = goal.clear_q - air.q
+    clear = _log_saturation(air, to_clear) >= goal.log_all
+    change = _halley(air, _lack(air, goal))
+    if not goal.is_entropy:
+        change *= phase.ONE - change * (_HALF - change * _THIRD)  # ln(1 + change)
+    dq = np.where(clear, to_clear, change)
+    after = _carried(air, dq, clear)
+    far = np.flatnonzero(_far(air, dq, clear, freezing=freezing))
+    if not far.size:
+        return after
+    p, q, w, log_p = (x.reshape(-1)[far] for x in (air.pressure, after.q, air.water, air.log_pressure))
+    log_all, value, clear_q = (x.reshape(-1)[far] for x in (goal.log_all, goal.value, goal.clear_q))
+    if rounds:
+        there = _saturated(q, p, log_p, w, freezing=freezing)
+        some = _Goal(value, goal.is_entropy, log_all, clear_q)
+        return _replaced(after, far, _settled(there, some, freezing=freezing, rounds=rounds - 1))
+    if goal.is_entropy:
+        q, _ = equilibrium.from_entropy_guess(p, value, w, q, freezing=freezing, tolerance=_FINE)
+    else:
+        t, _ = equilibrium.from_enthalpy_guess(p, value, w, np.exp(q), freezing=freezing, tolerance=_FINE)
+        q = np.log(t)
+    return _replaced(after, far, air_at(p, q, w, freezing=freezing))
+
+
 def _carried(air: Air, dq: Array, clear: NDArray[np.bool_]) -> Air:
     """Air at a temperature near by, saturation brought along."""
     q = air.q + dq
     log_saturation = _log_saturation(air, dq)
     curve = air.latent_slope - air.bound
-    bound = air.bound + dq * (curve + _HALF * dq * (air.latent_bend - curve))
     saturation = _saturation(log_saturation, air.pressure)
     return Air(
         q=q,
@@ -166,13 +188,13 @@ def _carried(air: Air, dq: Array, clear: NDArray[np.bool_]) -> Air:
         vapour=np.where(clear, air.water, np.minimum(saturation, air.water)),
         saturation=saturation,
         log_saturation=log_saturation,
-        bound=bound,
+        bound=air.bound + dq * (curve + _HALF * dq * (air.latent_bend - curve)),
         latent_slope=air.latent_slope + dq * air.latent_bend,
         latent_bend=air.latent_bend,
     )
 
 
-def _far(air: Air, dq: Array, clear: NDArray[np.bool_], *, freezing: bool) -> NDArray[np.bool_] | None:
+def _far(air: Air, dq: Array, clear: NDArray[np.bool_], *, freezing: bool) -> NDArray[np.bool_]:
     """Places whose change was too long, or crossed in cloud an end of the freezing range, where latent heat has a kink."""
     far = np.abs(dq) > np.where(clear, NEAR_CLEAR, NEAR)
     if freezing and air.latent_bend.ndim:  # else all of it is warm
@@ -180,10 +202,10 @@ def _far(air: Air, dq: Array, clear: NDArray[np.bool_], *, freezing: bool) -> ND
         crossed = (air.q > phase.ZERO) != (after > phase.ZERO)
         crossed |= (air.q > _ALL_ICE) != (after > _ALL_ICE)
         far |= crossed & ~clear
-    return far if far.any() else None
+    return np.asarray(far)
 
 
-def _replaced(air: Air, far: NDArray[np.bool_], some: Air) -> Air:
+def _replaced(air: Air, far: NDArray[np.intp], some: Air) -> Air:
     """Air with some places put in."""
     slope, bend = (np.array(np.broadcast_to(x, air.q.shape)) for x in (air.latent_slope, air.latent_bend))
     for whole, part in (
@@ -196,5 +218,5 @@ def _replaced(air: Air, far: NDArray[np.bool_], some: Air) -> Air:
         (slope, some.latent_slope),
         (bend, some.latent_bend),
     ):
-        whole[far] = part
+        whole.reshape(-1)[far] = part
     return air._replace(latent_slope=slope, latent_bend=bend)

@@ -226,7 +226,7 @@ def _start(parcel: Parcel, entropy: Array, low: slice, *, freezing: bool) -> _St
     fields = (parcel.pressure, parcel.temperature, parcel.vapour, parcel.cloud)
     p, t, v, cloud = (np.broadcast_to(x, entropy.shape)[:, low] for x in fields)
     q = np.log(t * equilibrium.PER_TRIPLE)
-    air = steps.air_at(p * equilibrium.PER_TRIPLE_PRESSURE, q, v + cloud, v, freezing=freezing)
+    air = steps.air_at(p * equilibrium.PER_TRIPLE_PRESSURE, q, v + cloud, freezing=freezing)
     return _State(air, entropy[:, low] * equilibrium.PER_RV, np.zeros_like(t), _falling_enthalpy(air.t, np.zeros_like(t)))
 
 
