@@ -141,9 +141,7 @@ def from_entropy(
     return phase.TRIPLE * np.exp(q), vapour
 
 
-def cloudless(
-    pressure: Array, entropy: Array, water: Array, *, freezing: bool
-) -> tuple[Array, NDArray[np.bool_]]:
+def cloudless(pressure: Array, entropy: Array, water: Array, *, freezing: bool) -> tuple[Array, NDArray[np.bool_]]:
     """Temperature [K] of air of this entropy if all its water is vapour, and where that would be supersaturated."""
     shape = np.broadcast_shapes(pressure.shape, entropy.shape, water.shape)
     p, s, w = (np.broadcast_to(x, shape) for x in (pressure, entropy, water))
@@ -159,20 +157,18 @@ def cloudless(
     return t, cloudy
 
 
-def _blocks(shape: tuple[int, ...]) -> list[tuple[slice, ...]]:
+def _blocks(shape: tuple[int, ...]) -> list[slice]:
     """Parts of an array along its first axis whose arrays stay in the processor's cache."""
-    if len(shape) < 2:
-        return [(Ellipsis,)]
     size = max(1, _BLOCK * shape[0] // max(int(np.prod(shape)), 1))
-    return [(slice(first, first + size),) for first in range(0, shape[0], size)]
+    return [slice(first, first + size) for first in range(0, shape[0], size)]
 
 
 def _afresh(p: Array, entropy: Array, water: Array, freezing: bool, tolerance: float) -> tuple[Array, Array]:
-    """q and vapour without a guess: cloudless air in closed form, and only where that is saturated, Newton's method."""
+    """Q and vapour without a guess: cloudless air in closed form, and only where that is saturated, Newton's method."""
     shape = np.broadcast_shapes(p.shape, entropy.shape, water.shape)
-    whole = [np.broadcast_to(x, shape) for x in (p, entropy, water)]
-    q, vapour = np.empty(shape), np.array(whole[2])
-    for block in _blocks(shape):
+    whole = [np.broadcast_to(x, shape or (1,)) for x in (p, entropy, water)]
+    q, vapour = np.empty(shape or (1,)), np.array(whole[2])
+    for block in _blocks(q.shape):
         pressure, s, w = (x[block] for x in whole)
         log_all, dry_q = without_cloud(np.log(pressure), s, w)
         if not np.isfinite(dry_q).all():
@@ -184,13 +180,13 @@ def _afresh(p: Array, entropy: Array, water: Array, freezing: bool, tolerance: f
             q[block][cloudy], vapour[block][cloudy] = from_entropy_guess(
                 pressure[cloudy], s[cloudy], w[cloudy], warm, freezing=freezing, tolerance=tolerance
             )
-    return q, vapour
+    return q.reshape(shape), vapour.reshape(shape)
 
 
 def from_entropy_guess(
     p: Array, entropy: Array, water: Array, q: Array, *, freezing: bool, tolerance: float
 ) -> tuple[Array, Array]:
-    """q and vapour by Newton's method from a guess of q, scaled."""
+    """Q and vapour by Newton's method from a guess of q, scaled."""
     log_all = all_vapour(p, water)
     cp = phase.CP_DRY + phase.CP_VAPOUR * water
     target = entropy - phase.VAPORISATION * water - ENTROPY_ZERO
@@ -225,7 +221,7 @@ def from_enthalpy(
 def from_enthalpy_guess(
     p: Array, enthalpy: Array, water: Array, t: Array, *, freezing: bool, tolerance: float
 ) -> tuple[Array, Array]:
-    """t and vapour by Newton's method from a guess of t, scaled."""
+    """T and vapour by Newton's method from a guess of t, scaled."""
     log_all = all_vapour(p, water)
     cp = phase.CP_DRY + phase.CP_VAPOUR * water
     target = enthalpy - phase.VAPORISATION * water + cp

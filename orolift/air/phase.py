@@ -85,9 +85,7 @@ def condensate(q: Array, t: Array, freezing: bool) -> tuple[Array, Array, Array]
     return condensate_and_bend(q, t, freezing, bend=False)[:3]
 
 
-def condensate_and_bend(
-    q: Array, t: Array, freezing: bool, *, bend: bool = True
-) -> tuple[Array, Array, Array, Array]:
+def condensate_and_bend(q: Array, t: Array, freezing: bool, *, bend: bool = True) -> tuple[Array, Array, Array, Array]:
     """The same, and the change of that slope with q, which is zero outside the freezing range."""
     w = np.reciprocal(t)
     free = _VAPORISATION_FREE * w

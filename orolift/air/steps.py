@@ -53,9 +53,9 @@ class _Goal(NamedTuple):
     """What air is to reach: entropy, or enthalpy."""
 
     value: Array
-    is_entropy: bool
     log_all: Array  # logarithm of the vapour pressure with all water as vapour
     clear_q: Array  # q at which air without cloud has reached it
+    is_entropy: bool = True
 
 
 def air_at(pressure: Array, q: Array, water: Array, *, freezing: bool) -> Air:
@@ -70,7 +70,7 @@ def moved(air: Air, pressure: Array, log_pressure: Array, entropy: Array, *, fre
     # first guess: in cloud from the saturation of where it was; cloud only warms
     e = air.pressure * air.saturation / (air.saturation + phase.EPSILON)
     here = air._replace(pressure=pressure, log_pressure=log_pressure, vapour=phase.EPSILON * e / (pressure - e))
-    goal = _Goal(entropy, True, log_all, clear_q)
+    goal = _Goal(entropy, log_all, clear_q)
     q = np.maximum(clear_q, air.q + _halley(here, _lack(here, goal)))
     return _settled(_saturated(q, pressure, log_pressure, air.water, freezing=freezing), goal, freezing=freezing)
 
@@ -80,7 +80,7 @@ def heated(air: Air, enthalpy: Array, water: Array, *, freezing: bool) -> Air:
     cp = phase.CP_DRY + phase.CP_VAPOUR * water
     log_all = air.log_pressure + np.log(np.maximum(water, equilibrium.TINY) / (water + phase.EPSILON))
     clear_q = np.log((enthalpy - phase.VAPORISATION * water) / cp + phase.ONE)
-    goal = _Goal(enthalpy, False, log_all, clear_q)
+    goal = _Goal(enthalpy, log_all, clear_q, is_entropy=False)
     return _settled(air._replace(water=water, vapour=air.saturation), goal, freezing=freezing)
 
 
@@ -163,7 +163,7 @@ def _settled(air: Air, goal: _Goal, *, freezing: bool, rounds: int = _ROUNDS) ->
     log_all, value, clear_q = (x.reshape(-1)[far] for x in (goal.log_all, goal.value, goal.clear_q))
     if rounds:
         there = _saturated(q, p, log_p, w, freezing=freezing)
-        some = _Goal(value, goal.is_entropy, log_all, clear_q)
+        some = _Goal(value, log_all, clear_q, goal.is_entropy)
         return _replaced(after, far, _settled(there, some, freezing=freezing, rounds=rounds - 1))
     if goal.is_entropy:
         q, _ = equilibrium.from_entropy_guess(p, value, w, q, freezing=freezing, tolerance=_FINE)
@@ -195,7 +195,7 @@ def _carried(air: Air, dq: Array, clear: NDArray[np.bool_]) -> Air:
 
 
 def _far(air: Air, dq: Array, clear: NDArray[np.bool_], *, freezing: bool) -> NDArray[np.bool_]:
-    """Places whose change was too long, or crossed in cloud an end of the freezing range, where latent heat has a kink."""
+    """Places whose change was too long, or in cloud crossed an end of the freezing range, a kink of latent heat."""
     far = np.abs(dq) > np.where(clear, NEAR_CLEAR, NEAR)
     if freezing and air.latent_bend.ndim:  # else all of it is warm
         after = air.q + dq

@@ -227,7 +227,8 @@ def _start(parcel: Parcel, entropy: Array, low: slice, *, freezing: bool) -> _St
     p, t, v, cloud = (np.broadcast_to(x, entropy.shape)[:, low] for x in fields)
     q = np.log(t * equilibrium.PER_TRIPLE)
     air = steps.air_at(p * equilibrium.PER_TRIPLE_PRESSURE, q, v + cloud, freezing=freezing)
-    return _State(air, entropy[:, low] * equilibrium.PER_RV, np.zeros_like(t), _falling_enthalpy(air.t, np.zeros_like(t)))
+    none = np.zeros_like(t)
+    return _State(air, entropy[:, low] * equilibrium.PER_RV, none, none)
 
 
 def _rained(
@@ -300,7 +301,7 @@ def _ice_share(temperature: Array, *, freezing: bool) -> Array:
 
 
 def _falling_enthalpy(temperature: Array, ice: Array) -> Array:
-    """Enthalpy of falling water, from liquid at the triple point; snow without its heat of fusion; scaled as `phase`."""
+    """Enthalpy of falling water from liquid at the triple point, scaled; snow is without its heat of fusion."""
     liquid, solid = HEAT_CAPACITY_LIQUID / R_VAPOUR, HEAT_CAPACITY_ICE / R_VAPOUR
     above = temperature - phase.ONE
     return np.asarray(liquid * above - ice * ((liquid - solid) * above + phase.FUSION))

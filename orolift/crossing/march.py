@@ -15,6 +15,7 @@ if TYPE_CHECKING:
 
     Array = NDArray[np.float64]
 
+
 @dataclass(frozen=True, eq=False)
 class March:
     """Air along streamlines, and the water that left it.
@@ -121,7 +122,8 @@ def _step(
 ) -> None:
     """Step the streamlines that lose water from the first cloudy place of one of them to the last.
 
-    `before` is pressure, temperature and cloud just before. Beyond, air that has lost water is even further from cloud than air that has not: all places are solved at once.
+    `before` is pressure, temperature and cloud just before. Beyond, air that has lost water is even
+    further from cloud than air that has not: all places are solved at once.
     """
     p = path[:, losing]
     scaled = p[way.start : way.stop] * equilibrium.PER_TRIPLE_PRESSURE

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import fields, replace
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -16,6 +16,9 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     Members = slice | NDArray[np.intp]
+
+_OF_BOUNDARY = tuple(f.name for f in fields(Boundary))
+_OF_FLOW = tuple(f.name for f in fields(Airflow) if f.name not in {"boundary", "trapped"})
 
 
 def some_members(flow: Airflow, which: Members) -> Airflow:
@@ -32,9 +35,9 @@ def some_members(flow: Airflow, which: Members) -> Airflow:
     -------
     Airflow
     """
-    boundary = replace(flow.boundary, **{f.name: getattr(flow.boundary, f.name)[which] for f in fields(Boundary)})
-    arrays = {name: getattr(flow, name)[which] for name in _ARRAYS}
-    return replace(flow, boundary=boundary, **arrays)
+    boundary = {name: getattr(flow.boundary, name)[which] for name in _OF_BOUNDARY}
+    arrays: dict[str, Any] = {name: getattr(flow, name)[which] for name in _OF_FLOW}
+    return replace(flow, boundary=replace(flow.boundary, **boundary), **arrays)
 
 
 def together(flows: Sequence[Airflow]) -> Airflow:
@@ -51,12 +54,7 @@ def together(flows: Sequence[Airflow]) -> Airflow:
     """
     if len(flows) == 1:
         return flows[0]
-    boundary = replace(
-        flows[0].boundary,
-        **{f.name: np.concatenate([getattr(flow.boundary, f.name) for flow in flows]) for f in fields(Boundary)},
-    )
-    arrays = {name: np.concatenate([getattr(flow, name) for flow in flows]) for name in _ARRAYS}
-    return replace(flows[0], boundary=boundary, **arrays)
-
-
-_ARRAYS = tuple(f.name for f in fields(Airflow) if f.name not in {"boundary", "trapped"})
+    first = flows[0]
+    boundary = {name: np.concatenate([getattr(flow.boundary, name) for flow in flows]) for name in _OF_BOUNDARY}
+    arrays: dict[str, Any] = {name: np.concatenate([getattr(flow, name) for flow in flows]) for name in _OF_FLOW}
+    return replace(first, boundary=replace(first.boundary, **boundary), **arrays)

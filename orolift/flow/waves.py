@@ -305,7 +305,7 @@ def _layer_parts(
         real, imag = m.real, m.imag
     else:
         fast = 1.0 / slowing
-        real, imag = _upward_root(ratio * fast.real - (0.0 if hydrostatic else k**2), ratio * fast.imag)
+        real, imag = _upward_root(ratio * fast.real - (0.0 if hydrostatic else k.real**2), ratio * fast.imag)
     # neither wave nor fading: the limit is taken through a very long wave
     real = np.where(np.abs(real) + np.abs(imag) < 1e-6 / depth, 1e-6 / depth, real)
     step = _wave_factor(real, imag, depth)
