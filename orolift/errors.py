@@ -8,7 +8,8 @@
     |-- TerrainError             the terrain allows no transect                     (ValueError)
     |-- IncomingAirError         the incoming air contradicts itself                (ValueError)
     |-- NoCrossingError          the air does not cross the range                   (ValueError)
-    `-- MissingExtraError        an optional library is needed                      (ImportError)
+    |-- MissingExtraError        an optional library is needed                      (ImportError)
+    `-- WorkersError             the processes that should do the work are not there (OSError)
 
 Every message is one string that names the file, key or argument, the allowed
 range and the next step; the facts are kept as attributes.
@@ -51,3 +52,7 @@ class NoCrossingError(OroliftError, ValueError):
 
 class MissingExtraError(OroliftError, ImportError):
     """An optional library is needed for this input."""
+
+
+class WorkersError(OroliftError, OSError):
+    """A scheduler does not answer, or a process ended before its work was done."""

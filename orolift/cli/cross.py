@@ -11,16 +11,21 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.options import QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.outputs import Outputs, refuse_together
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
-from orolift.errors import CaseError
+from orolift.cli.spreading import Workers, spread_for
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
+    from orolift.crossing.situation import Situation
+    from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
+    from orolift.spread.sites import GroupAir
+    from orolift.spread.spread import Spread
 
 log = logging.getLogger(__name__)
 
@@ -30,10 +35,13 @@ class Worked:
     """One case worked out."""
 
     inputs: Inputs
+    situation: Situation
     crossing: Crossing
     mapped: Mapped | None
     flags: tuple[str, ...]
+    fire: tuple[SiteFire, ...]
     results: Results
+    spread: Spread | None
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
@@ -46,6 +54,11 @@ class Worked:
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
+@click.option(
+    "--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page: several cases."
+)
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -55,81 +68,107 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
+    folder: str | None,
+    jobs: int | None,
+    scheduler: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
 ) -> None:
     """Work out the crossing of each CASE and write its report."""
     files = RainFiles(**rain)
-    if len(cases) > 1:
-        named = {"--report": report, "--results": results, "--table": table, **files.asked()}
-        for option, value in named.items():
-            if value is not None and option != "--maps":
-                raise CaseError(f"{option} takes one case, and {len(cases)} are given. Run it once for each case.")
-    from orolift.sources.files import csv_text, write_all
-    from orolift.sources.results import site_rows
-
-    contents: dict[Path, bytes] = {}
-    summaries = []
+    named = {"--report": report, "--results": results, "--table": table, **files.asked()}
+    refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
+    outputs = Outputs()
     for case in cases:
-        worked = work_out(case, files)
-        page = Path(report) if report else Path(f"{Path(case).stem}.html")
-        if page in contents:
-            raise CaseError(f"{case}: another case of this run already writes {page}. Give the cases different names.")
-        contents[page] = report_of(worked, units).encode()
-        if results:
-            contents[Path(results)] = (worked.results.model_dump_json(indent=2) + "\n").encode()
-        if table:
-            contents[Path(table)] = csv_text(*site_rows(worked.results)).encode()
-        contents |= rain_files(files, worked.inputs, worked.mapped, worked.results)
-        summaries.append((worked, page))
-    write_all(contents)
-    log.debug("written: %s", ", ".join(map(str, contents)))
+        outputs.keep(case, "a case")
+    work = Workers(jobs, scheduler, quiet)
+    if folder is not None:
+        from orolift.cli.folder import into_folder
+
+        summaries = into_folder(cases, Path(folder), units, outputs, work)
+    else:
+        wanted = Wanted(report, results, table, files)
+        summaries = [_one_by_one(case, wanted, units, outputs, work) for case in cases]
+    outputs.write(None if folder is None else Path(folder))
     if not quiet:
-        from orolift.cli.summary import summary_lines
-
-        for worked, page in summaries:
-            click.echo(
-                "\n".join(
-                    [
-                        *summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units),
-                        f"Report: {page}",
-                    ]
-                )
-            )
+        _say(summaries, units)
+        if folder is not None:
+            click.echo(f"Index: {Path(folder) / 'index.html'}")
 
 
-def work_out(case: str, files: RainFiles | None = None) -> Worked:
-    """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
-    from orolift.crossing.crossing import cross
-    from orolift.sources.inputs import read_inputs
+@dataclass(frozen=True)
+class Wanted:
+    """Files asked for by name."""
+
+    report: str | None
+    results: str | None
+    table: str | None
+    rain: RainFiles
+
+
+def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Workers) -> tuple[Worked, Path]:
+    """Work out a case and take in the files asked for."""
+    worked = work_out(case, wanted.rain, work)
+    page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
+    outputs.add(page, report_of(worked, units).encode(), "--report" if wanted.report else f"the report of {case}")
+    add_results(worked, wanted.results, wanted.table, outputs)
+    for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
+        outputs.add(path, content, option)
+    return worked, page
+
+
+def add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+    """Take in the results and the table of the sites, each where it is asked for."""
+    from orolift.sources.files import csv_text
+    from orolift.sources.site_table import site_rows
+
+    if results:
+        outputs.add(results, (worked.results.model_dump_json(indent=2) + "\n").encode(), "--results")
+    if table:
+        outputs.add(table, csv_text(*site_rows(worked.results)).encode(), "--table")
+
+
+def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
+    """A few lines on each case."""
+    from orolift.cli.summary import members_words, summary_lines
+
+    for worked, page in summaries:
+        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units, worked.spread)
+        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.spread)}"]))
+
+
+def work_out(case: str, files: RainFiles | None = None, workers: Workers | None = None) -> Worked:
+    """A case read, its crossing, its members, and the rain over its map; refused where a file asked for cannot be."""
+    from orolift.crossing.situation import crossing_of
+    from orolift.sources.inputs import read_inputs, situation_of
     from orolift.sources.results import results_of
-    from orolift.sources.units import to_si
+    from orolift.spread.ranges import remarks
 
     inputs = read_inputs(case)
+    situation = situation_of(inputs)
     log.debug("%s read", case)
     files = files or RainFiles()
     refuse_what_cannot_be(files, inputs)
     needed = files.maps is not None
     found, doubts = map_inputs_of(inputs, needed=needed)
     try:
-        crossing = cross(
-            inputs.transect,
-            inputs.incoming,
-            inputs.sites,
-            inputs.settings,
-            lee=inputs.lee,
-            when=inputs.when,
-            normal=inputs.normal,
-            lowest_pass=inputs.case.terrain.pass_m,
-            crest_line=inputs.crest_line,
-            stagnant_top=stagnant_top(inputs),
-            background=to_si(inputs.case.rain.background_mm_per_h, "mm_per_h"),
-        )
+        crossing = crossing_of(situation)
     except ValueError as error:
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
+    own = crossing
+    parts: tuple[GroupAir, ...] = ()
+    workers = workers or Workers(quiet=True)
+    if inputs.case.terrain.elevation_file is not None:
+        from orolift.cli.site_lines import with_own_lines
+
+        crossing, parts = with_own_lines(
+            inputs, crossing, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet
+        )
+    spread = spread_for(inputs, situation, crossing, workers)
+    doubts = (*doubts, *(() if spread is None else remarks(spread)))
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -138,7 +177,25 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    return Worked(inputs, crossing, mapped, flags, results_of(crossing, inputs.case, mapped, flags))
+    fire, reached, to_know = fire_of(inputs, own, crossing, parts)
+    crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, results, spread)
+
+
+def fire_of(
+    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...]
+) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
+    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    from orolift.fire.flags import fire_flags, windward_cautions
+    from orolift.fire.sites import fire_at_sites
+    from orolift.spread.sites import fire_by_number
+
+    at_own = fire_at_sites(own, inputs.when, inputs.fire)
+    by_number = fire_by_number(crossing, at_own, parts)
+    found = tuple(by_number[air.number] for air in crossing.lee)
+    rules = inputs.fire.rules
+    return found, fire_flags(found, rules), windward_cautions(found, rules)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -153,33 +210,42 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
     )
 
 
-def stagnant_top(inputs: Inputs) -> float | None:
-    """Top of the stagnant layer at the ground of the incoming column, None where there is none."""
-    depth = inputs.ground_layer.depth
-    return float(inputs.incoming.height[0]) + depth if depth > 0.0 else None
+def fire_lines(worked: Worked) -> list[str]:
+    """What the fire thresholds of the case come to, a line; none without a rule file."""
+    from orolift.report.fire_thresholds import headline
+
+    words = headline(worked.fire).words
+    return [f"Fire      {words} (a threshold met is not a warning)"] if words else []
+
+
+def made_now() -> datetime:
+    """The time that pages carry; it honours SOURCE_DATE_EPOCH."""
+    stamp = os.environ.get("SOURCE_DATE_EPOCH")
+    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
 
 
 def report_of(worked: Worked, units: Units) -> str:
-    """The report as one HTML page; the time stamp honours SOURCE_DATE_EPOCH."""
+    """The report as one HTML page."""
     from orolift import __version__
     from orolift.report.page import page_of
     from orolift.report.render import render
 
-    stamp = os.environ.get("SOURCE_DATE_EPOCH")
-    made_at = datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
     case = worked.inputs.case
     page = page_of(
         worked.crossing,
         title=case.title or worked.inputs.path.stem,
         valid_time=case.valid_time,
-        made_at=made_at,
+        made_at=made_now(),
         version=__version__,
         case_text=worked.inputs.text,
         units=units,
         mapped=worked.mapped,
         flags=worked.flags,
         findings=worked.inputs.findings,
-        stagnant_top=stagnant_top(worked.inputs),
+        stagnant_top=worked.situation.stagnant_top,
+        spread=worked.spread,
+        fire=worked.fire,
+        rules=worked.inputs.fire.rules,
     )
     html = render(page)
     log.debug("report rendered, %d kB", len(html) // 1024)

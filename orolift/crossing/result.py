@@ -83,11 +83,14 @@ class LeeProfile:
     height_above_ground : ndarray (n,) [m]
     temperature : ndarray (n,) [K]
     vapour : ndarray (n,) [kg per kg of dry air]
+    wind : ndarray (n,) [m s-1]
+        Of the crossing air, across the range; a calm below it where the site lies in a pool or in blocked air.
     """
 
     height_above_ground: Array
     temperature: Array
     vapour: Array
+    wind: Array
 
 
 @dataclass(frozen=True)
@@ -96,6 +99,44 @@ class SimpleAir:
 
     temperature: float
     dew_point: float
+
+
+@dataclass(frozen=True)
+class SiteLine:
+    """The line of a site that does not lie on the crossing's own.
+
+    Attributes
+    ----------
+    offset : float [m]
+        Distance of the site across the crossing's own line, positive to the right of the wind.
+    base, crest, blocked_top : float [m above sea level]
+        Of the site's line.
+    beyond_crest : float [m]
+        Distance of the site downwind of that crest.
+    crest_wind : float [m s-1]
+        Component across the range there.
+    cloud_base : float or None [m above sea level]
+    cautions : tuple of str
+        What is doubtful on its line.
+    """
+
+    offset: float
+    base: float
+    crest: float
+    blocked_top: float
+    beyond_crest: float
+    crest_wind: float
+    cloud_base: float | None
+    cautions: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class FailedSite:
+    """A site that could not be worked out, and why."""
+
+    number: int
+    name: str
+    reason: str
 
 
 @dataclass(frozen=True, eq=False)
@@ -135,6 +176,13 @@ class LeeAir:
     wind : SiteWind or None
         None in a pool and in blocked air.
     profile : LeeProfile
+    rain : float [kg m-2 s-1]
+        Rain and snow there, the background included.
+    number : int
+        Of the site in the case, from 1: its pin.
+    own : SiteLine or None
+        Its line, where it does not lie on the crossing's own; `distance` is then that abreast of it on the
+        crossing's own line, and may lie beyond its ends.
     """
 
     name: str
@@ -161,6 +209,9 @@ class LeeAir:
     full_blocking: SimpleAir
     wind: SiteWind | None
     profile: LeeProfile
+    rain: float = 0.0
+    number: int = 0
+    own: SiteLine | None = None
 
     @property
     def warming(self) -> float:
@@ -335,8 +386,12 @@ class Crossing:
     pool : Pool or None
     winds : LeeWinds
     lee : tuple of LeeAir
-        One for every site, in their order.
+        One for every site that was worked out, in their order, whatever line they are on.
     notes, cautions : tuple of str
+    on_line : tuple of LeeAir or None
+        Those on the crossing's own line, or its lee foot, where others have lines of their own; None when
+        all of `lee` is on it.
+    failed : tuple of FailedSite
     """
 
     incoming: IncomingAir
@@ -360,3 +415,5 @@ class Crossing:
     lee: tuple[LeeAir, ...]
     notes: tuple[str, ...]
     cautions: tuple[str, ...]
+    on_line: tuple[LeeAir, ...] | None = None
+    failed: tuple[FailedSite, ...] = ()

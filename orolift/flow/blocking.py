@@ -8,8 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.checks import within
-from orolift.errors import NoCrossingError
-from orolift.flow.profiles import checked_height, layer_mean, value_at
+from orolift.flow.profiles import checked_height, value_at
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
@@ -236,73 +235,6 @@ def counterflow_top(height: ArrayLike, wind: ArrayLike, crest: ArrayLike) -> NDA
     """
     level, _, speed = _below_crest(height, wind, wind, crest)
     return _highest_positive(level, np.where(speed == 0.0, 1e-9, -speed))
-
-
-def mean_crossing_wind(
-    height: ArrayLike, wind: ArrayLike, crest: ArrayLike, *, depth: float = 500.0
-) -> NDArray[np.float64]:
-    """Component across the range, averaged over a layer above the crest.
-
-    Parameters
-    ----------
-    height : array_like, shape (nz,) [m]
-        Above sea level, strictly increasing.
-    wind : array_like, shape (..., nz) [m s-1]
-        Across the range, positive toward it.
-    crest : array_like, shape (...) [m]
-        Above sea level.
-    depth : float [m]
-        Of the layer.
-
-    Returns
-    -------
-    ndarray, shape (...) [m s-1]
-
-    Examples
-    --------
-    >>> mean_crossing_wind([0.0, 4000.0], [0.0, 16.0], 2000.0)
-    array(9.)
-    """
-    foot = np.asarray(crest, np.float64)
-    return layer_mean(height, wind, foot, foot + depth)
-
-
-def checked_crossing_wind(height: ArrayLike, wind: ArrayLike, crest: float, *, least: float = 2.0) -> float:
-    """Mean crossing wind from the crest to 500 m above it, refused when the air does not cross.
-
-    Parameters
-    ----------
-    height : array_like, shape (nz,) [m]
-        Above sea level, strictly increasing.
-    wind : array_like, shape (nz,) [m s-1]
-        Across the range, positive toward it.
-    crest : float [m]
-        Above sea level.
-    least : float [m s-1]
-        The mean must be more than this; a judgement, no published source.
-
-    Returns
-    -------
-    float [m s-1]
-
-    Raises
-    ------
-    NoCrossingError
-        If the mean is not more than `least`.
-
-    Examples
-    --------
-    >>> checked_crossing_wind([0.0, 4000.0], [0.0, 16.0], 2000.0)
-    9.0
-    """
-    mean = float(mean_crossing_wind(height, wind, crest))
-    if not mean > least:
-        raise NoCrossingError(
-            f"the air does not cross the range: its component across it, averaged from the crest ({crest:.0f} m) to "
-            f"500 m above, is {mean:.1f} m/s, and more than {least:g} m/s is needed. Check the wind direction and the "
-            "range normal, or give the wind at crest height."
-        )
-    return mean
 
 
 def _below_crest(

@@ -10,15 +10,18 @@ import numpy as np
 
 from orolift.air.column import column_vapour, interpolated
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
-from orolift.report.quantities import Amount
+from orolift.report.quantities import Amount, Units, from_displayed
 from orolift.report.story import removal_words
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
     from orolift.report.words import Words
 
-LEVELS = (500.0, 1000.0, 1500.0, 2000.0, 3000.0, 4000.0, 5000.0, 7000.0, 9000.0)
-"""Heights above sea level [m] at which the incoming air is listed, with its ground."""
+LEVELS: dict[Units, tuple[float, ...]] = {
+    "metric": (500.0, 1000.0, 1500.0, 2000.0, 3000.0, 4000.0, 5000.0, 7000.0, 9000.0),
+    "us": (1000.0, 3000.0, 5000.0, 7000.0, 10e3, 13e3, 16e3, 23e3, 30e3),
+}
+"""Heights above sea level, in shown units, at which the incoming air is listed with its ground."""
 
 
 PROFILE = frozenset({"measured", "model", "between stations", "surface report blended in"})
@@ -82,7 +85,9 @@ class Inputs:
     case_text: str | None
 
 
-def inputs(crossing: Crossing, bearing: float, freezing_level: float, case_text: str | None) -> Inputs:
+def inputs(
+    crossing: Crossing, bearing: float, freezing_level: float, case_text: str | None, units: Units = "metric"
+) -> Inputs:
     """What went in.
 
     Parameters
@@ -92,12 +97,14 @@ def inputs(crossing: Crossing, bearing: float, freezing_level: float, case_text:
         Direction the wind comes from.
     freezing_level : float [m]
     case_text : str or None
+    units : 'metric' or 'us'
+        In which the heights listed are round.
 
     Returns
     -------
     Inputs
     """
-    levels = _levels(crossing)
+    levels = _levels(crossing, units)
     ground = levels[0]
     heading: Words = (
         _source(crossing.incoming.origin),
@@ -214,11 +221,12 @@ def _options(crossing: Crossing) -> FactGroup:
     )
 
 
-def _levels(crossing: Crossing) -> tuple[Level, ...]:
+def _levels(crossing: Crossing, units: Units) -> tuple[Level, ...]:
     """The incoming air at its ground and at round heights above."""
     column = crossing.incoming
     ground, top = float(column.height[0]), float(column.height[-1])
-    heights = np.array([ground, *(h for h in LEVELS if ground + 100.0 < h <= top)])
+    wanted = (from_displayed(level, "height", units) for level in LEVELS[units])
+    heights = np.array([ground, *(h for h in wanted if ground + 100.0 < h <= top)])
     air = interpolated(column, heights)
     dew_point = dew_point_from_mixing_ratio(air.pressure, air.vapour)
     humidity = relative_humidity_from_mixing_ratio(air.pressure, air.temperature, air.vapour)

@@ -100,7 +100,7 @@ def lee_wind(crossing: Crossing) -> LeeWind:
         heading=_heading(crossing),
         remarks=_remarks(crossing),
         methods=(first, *others),
-        sites=tuple(_row(site, number) for number, site in enumerate(crossing.lee, start=1)),
+        sites=tuple(_row(site, site.number) for site in crossing.lee),
         conditions=tuple(ConditionRow(one.statement, ANSWERS[one.met], one.source) for one in winds.conditions),
     )
 
@@ -139,7 +139,7 @@ def _remarks(crossing: Crossing) -> tuple[Words, ...]:
         where = (*where, "The methods agree.")
     gusts = (
         "; gusts are the mean with 2.5 to 3.5 standard deviations of turbulence, or the strongest wind of the lowest "
-        "kilometre brought down whole where that is more."
+        "1 km brought down whole where that is more."
     )
     start = "Wind at 10 m by the logarithmic law over ground of roughness length "
     roughness: Words = (start, Amount(crossing.settings.roughness, "height", 2), gusts)

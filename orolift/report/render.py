@@ -7,7 +7,10 @@ own modules: in `__pycache__`, if that may be written and Python is not told oth
 
 from __future__ import annotations
 
+import base64
+import hashlib
 import sys
+from dataclasses import dataclass
 from functools import cache
 from pathlib import Path
 from tempfile import NamedTemporaryFile
@@ -16,28 +19,78 @@ from typing import TYPE_CHECKING
 from jinja2 import BytecodeCache, Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup
 
+from orolift.report.local_units import local
 from orolift.report.quantities import bare, shown, unit
 from orolift.report.words import plain
 
 if TYPE_CHECKING:
     from jinja2.bccache import Bucket
 
+    from orolift.report.bearings_page import BearingsPage
+    from orolift.report.compare import ComparePage
+    from orolift.report.hours_page import HoursPage
+    from orolift.report.index import IndexPage
     from orolift.report.page import Page
 
+INLINED = ("style.css", "reading.js", "sorting.js")
+"""Files of the package that pages carry inside them."""
 
-def render(page: Page) -> str:
-    """The report as one self-contained HTML file.
+
+@dataclass(frozen=True)
+class Inlined:
+    """A file of this package as it stands in a page.
+
+    Attributes
+    ----------
+    text : Markup
+    hash : str
+        Of exactly this text, as a content security policy names it.
+    """
+
+    text: Markup
+    hash: str
+
+
+def render(page: Page | IndexPage, template: str = "page.html.jinja") -> str:
+    """A page as one self-contained HTML file.
 
     Parameters
     ----------
-    page : Page
+    page : Page or IndexPage
+        With at least a title, a version, a time it was made and units.
+    template : str
+        Name of the template that extends the skeleton.
 
     Returns
     -------
     str
         The same text for the same page, whenever and wherever it is made.
     """
-    return _environment().get_template("page.html.jinja").render(page=page)
+    return _environment().get_template(template).render(page=page)
+
+
+def render_compare(page: ComparePage) -> str:
+    """The page of a comparison as one self-contained HTML file.
+
+    Parameters
+    ----------
+    page : ComparePage
+
+    Returns
+    -------
+    str
+    """
+    return _environment().get_template("compare.html.jinja").render(page=page)
+
+
+def render_hours(page: HoursPage) -> str:
+    """The page of a series of hours as one self-contained HTML file, as `render`."""
+    return _environment().get_template("hours.html.jinja").render(page=page)
+
+
+def render_bearings(page: BearingsPage) -> str:
+    """The page of every wind direction as one self-contained HTML file, as `render`."""
+    return _environment().get_template("bearings.html.jinja").render(page=page)
 
 
 class _BesideTemplates(BytecodeCache):
@@ -49,6 +102,7 @@ class _BesideTemplates(BytecodeCache):
         return self.folder / f"{bucket.key}.{sys.implementation.cache_tag}.compiled"
 
     def load_bytecode(self, bucket: Bucket) -> None:
+        """What was kept; nothing where nothing can be read."""
         try:
             with self._file(bucket).open("rb") as stream:
                 bucket.load_bytecode(stream)
@@ -56,13 +110,14 @@ class _BesideTemplates(BytecodeCache):
             bucket.reset()
 
     def dump_bytecode(self, bucket: Bucket) -> None:
+        """Keep it whole or not at all."""
         if sys.dont_write_bytecode:
             return
         try:
             self.folder.mkdir(exist_ok=True)
             with NamedTemporaryFile(dir=self.folder, delete=False) as stream:
                 bucket.write_bytecode(stream)
-            Path(stream.name).replace(self._file(bucket))  # whole, or not at all
+            Path(stream.name).replace(self._file(bucket))
         except OSError:
             return
 
@@ -79,8 +134,12 @@ def _environment() -> Environment:
         auto_reload=False,
         bytecode_cache=_BesideTemplates(),
     )
-    style, _, _ = loader.get_source(environment, "style.css")
-    # The style sheet is ours and data: inside a template "{#" of a rule would open a comment.
-    environment.globals["style"] = Markup(style)  # noqa: S704 (a file of this package, no input reaches it)
-    environment.filters.update(shown=shown, bare=bare, unit=unit, plain=plain)
+    environment.globals["inlined"] = {name: _inlined(loader.get_source(environment, name)[0]) for name in INLINED}
+    environment.filters.update(shown=shown, bare=bare, unit=unit, plain=plain, local=local)
     return environment
+
+
+def _inlined(text: str) -> Inlined:
+    """A file as data: as a template "{#" of a style rule would open a comment."""
+    digest = base64.b64encode(hashlib.sha256(text.encode()).digest()).decode()
+    return Inlined(Markup(text), f"sha256-{digest}")  # noqa: S704 (a file of this package, no input reaches it)

@@ -12,6 +12,7 @@ from orolift.sources.raster_places import local_system
 from orolift.terrain.range_normal import RangeNormal, range_normal
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
     from pathlib import Path
 
     from numpy.typing import NDArray
@@ -29,6 +30,8 @@ ALONG = 100.0e3
 ACROSS = 10.0e3
 """Distance [m] to both sides over which the crest line is the highest ground; a judgement."""
 ACROSS_SPACING = 500.0
+LEAST_POINTS = 5
+"""Points of a crest line that must be covered; a judgement."""
 LEAST_COVERED = 0.5
 """Share of the window that must be inside the raster for a range normal; a judgement."""
 
@@ -79,19 +82,39 @@ def range_of_raster(
     """
     with opened_raster(path, unit, where, folder) as raster:
         local = local_system(longitude, latitude)
-        side = np.arange(-WINDOW / 2.0, WINDOW / 2.0 + 1.0, SPACING)
-        window = _ground(raster, local, side, side[::-1, np.newaxis])
-        found = None
-        if np.isfinite(window).mean() >= LEAST_COVERED:
-            found = range_normal(window, SPACING, downwind)
-        bearing = normal if normal is not None else downwind if found is None else found.bearing
-        along = np.arange(-ALONG, ALONG + 1.0, SPACING)
-        across = np.arange(-ACROSS, ACROSS + 1.0, ACROSS_SPACING)[:, np.newaxis]
-        east = along * np.cos(bearing) + across * np.sin(bearing)
-        north = -along * np.sin(bearing) + across * np.cos(bearing)
-        strip = _ground(raster, local, east, north)
+        return range_around(lambda east, north: _ground(raster, local, east, north), downwind, normal)
+
+
+def range_around(
+    ground: Callable[[Array, Array], Array], downwind: float, normal: float | None = None
+) -> tuple[RangeNormal | None, CrestLine | None]:
+    """Range normal and crest line around a crest, from anything that gives ground.
+
+    Parameters
+    ----------
+    ground : callable
+        Of arrays of distances east and north of the crest [m], which broadcast: the ground [m], NaN where unknown.
+    downwind, normal
+        As for `range_of_raster`.
+
+    Returns
+    -------
+    RangeNormal or None, CrestLine or None
+        As `range_of_raster`.
+    """
+    side = np.arange(-WINDOW / 2.0, WINDOW / 2.0 + 1.0, SPACING)
+    window = ground(side, side[::-1, np.newaxis])
+    found = None
+    if np.isfinite(window).mean() >= LEAST_COVERED:
+        found = range_normal(window, SPACING, downwind)
+    bearing = normal if normal is not None else downwind if found is None else found.bearing
+    along = np.arange(-ALONG, ALONG + 1.0, SPACING)
+    across = np.arange(-ACROSS, ACROSS + 1.0, ACROSS_SPACING)[:, np.newaxis]
+    east = along * np.cos(bearing) + across * np.sin(bearing)
+    north = -along * np.sin(bearing) + across * np.cos(bearing)
+    strip = ground(east, north)
     known = np.isfinite(strip).all(axis=0)
-    if known.sum() < 5:
+    if known.sum() < LEAST_POINTS:
         return found, None
     return found, CrestLine(along[known], np.max(strip[:, known], axis=0))
 

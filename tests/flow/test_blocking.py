@@ -5,14 +5,12 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from orolift.errors import NoCrossingError, OutOfRangeError
+from orolift.errors import OutOfRangeError
 from orolift.flow.blocking import (
     Regime,
     blocked_top_lott_miller_1997,
-    checked_crossing_wind,
     counterflow_top,
     dividing_height,
-    mean_crossing_wind,
     possible_regimes,
     regime,
 )
@@ -118,14 +116,6 @@ def test_regimes_and_their_uncertainty():
     assert possible_regimes(4.0) == (Regime.BLOCKED,)
     with pytest.raises(OutOfRangeError, match="nondimensional_height: 1 of 1"):
         regime(-0.1)
-
-
-def test_air_that_does_not_cross_is_refused():
-    """The message gives crest, component and the next step."""
-    column = ([0.0, 4000.0], [1.0, 1.0])
-    assert float(mean_crossing_wind(*column, 1500.0)) == 1.0
-    with pytest.raises(NoCrossingError, match=r"crest \(1500 m\).*is 1\.0 m/s.*range normal"):
-        checked_crossing_wind(*column, 1500.0)
 
 
 def test_gap_share_of_simple_crest_lines():

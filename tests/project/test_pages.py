@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 
-from orolift.sources import gauges_csv, ridge_csv, sounding_csv
+from orolift.sources import compare_results, gauges_csv, observed, ridge_csv, sounding_csv
 from orolift.sources.case_model import (
     Case,
     FlowTable,
@@ -18,6 +18,8 @@ from orolift.sources.case_model import (
     Terrain,
     TransectTable,
 )
+from orolift.sources.fire_model import Fire
+from orolift.sources.fire_results import ConditionBlock, FireBlock, MoverBlock, NightBlock, RuleBlock
 from orolift.sources.incoming_model import LadderRung, MetarTable, ModelAt, SoundingAt
 from orolift.sources.rain_model import Catchments, GaugesTable, Rain
 from orolift.sources.rain_results import (
@@ -44,7 +46,8 @@ from orolift.sources.results import (
     TerrainBlock,
     WarmingParts,
 )
-from orolift.sources.schemas import case_schema, results_schema
+from orolift.sources.rules_file import QUANTITY_KEYS, RuleCondition, RulesFile, RuleTable
+from orolift.sources.schemas import case_schema, compare_schema, results_schema, rules_schema
 from orolift.sources.units import alternatives
 
 DOCS = Path(__file__).resolve().parents[2] / "docs"
@@ -63,6 +66,7 @@ CASE_TABLES = {
     "[rain]": Rain,
     "[catchments]": Catchments,
     "[gauges]": GaugesTable,
+    "[fire]": Fire,
     "[lee]": LeeTable,
     "[heat]": HeatTable,
     "[[site]]": SiteTable,
@@ -83,13 +87,42 @@ RESULTS_TABLES = {
     "lee": LeeBlock,
     "warming_parts_c": WarmingParts,
     "profile": Profile,
+    "fire": FireBlock,
+    "night": NightBlock,
+    "rules": RuleBlock,
+    "conditions": ConditionBlock,
+    "movers": MoverBlock,
     "catchments": CatchmentBlock,
     "gauges": GaugesBlock,
     "places": GaugeBlock,
     "fit": FitBlock,
     "fitted value": FittedBlock,
 }
-CSV_TABLES = {"Ridge CSV": ridge_csv.COLUMNS, "Sounding CSV": sounding_csv.COLUMNS, "Gauges CSV": gauges_csv.COLUMNS}
+RULE_TABLES = {"Rule file": RulesFile, "rule": RuleTable, "condition": RuleCondition}
+COMPARE_TABLES = {
+    "Top level": compare_results.CompareResults,
+    "scores": compare_results.QuantityBlock,
+    "score": compare_results.ScoreBlock,
+    "simple answer": compare_results.ReferenceBlock,
+    "events": compare_results.EventBlock,
+    "table": compare_results.ContingencyBlock,
+    "rule": compare_results.RuleBlock,
+    "onset": compare_results.OnsetBlock,
+    "spell": compare_results.SpellBlock,
+    "explanation": compare_results.ExplanationBlock,
+    "valleys": compare_results.ValleyBlock,
+    "way": compare_results.WayBlock,
+    "upwind": compare_results.UpwindErrorBlock,
+    "profile": compare_results.ProfileBlock,
+    "layers": compare_results.LayerBlock,
+    "values": compare_results.ValueBlock,
+}
+CSV_TABLES = {
+    "Ridge CSV": ridge_csv.COLUMNS,
+    "Sounding CSV": sounding_csv.COLUMNS,
+    "Gauges CSV": gauges_csv.COLUMNS,
+    "Observed CSV": observed.COLUMNS,
+}
 
 
 def rows_under(page, heading):
@@ -149,6 +182,23 @@ def test_case_page_has_units_ranges_and_defaults(heading, model):
         assert row["meaning"], key
 
 
+@pytest.mark.parametrize(("heading", "model"), RULE_TABLES.items(), ids=RULE_TABLES)
+def test_case_page_lists_the_keys_of_rule_files(heading, model):
+    """Names, other spellings, and which are needed; every quantity is named."""
+    schema = rules_schema()
+    fields = (schema if model is RulesFile else schema["$defs"][model.__name__])["properties"]
+    rows = rows_under("case.md", heading)
+    assert list(rows) == list(model.model_fields)
+    for key, row in rows.items():
+        assert listed(row["also"]) == [name for name in alternatives(key) if name in fields], key
+        assert (row["default"] == "needed") == model.model_fields[key].is_required(), key
+        field = fields[key]
+        if "maximum" in field:
+            assert row["range"] == f"{field['minimum']:g} to {field['maximum']:g}", key
+    text = (DOCS / "case.md").read_text()
+    assert all(f"`{key}`" in text for key in QUANTITY_KEYS)
+
+
 @pytest.mark.parametrize(("heading", "columns"), CSV_TABLES.items(), ids=CSV_TABLES)
 def test_case_page_lists_the_columns_of_csv_files(heading, columns):
     """Names, other spellings and ranges of the columns."""
@@ -183,3 +233,21 @@ def test_results_page_says_what_may_be_null(heading, model):
 def test_results_page_forgets_no_block():
     """A new block of the models needs its own heading."""
     assert {model.__name__ for model in RESULTS_TABLES.values()} == {"Results", *results_schema()["$defs"]}
+
+
+@pytest.mark.parametrize(("heading", "model"), COMPARE_TABLES.items(), ids=COMPARE_TABLES)
+def test_compare_page_lists_the_keys_of_the_block(heading, model):
+    """Every key of a comparison has a row, in the order of the file, and says where it may be null."""
+    schema = compare_schema()
+    fields = (schema if heading == "Top level" else schema["$defs"][model.__name__])["properties"]
+    rows = rows_under("compare.md", heading)
+    assert list(rows) == list(model.model_fields)
+    for key, row in rows.items():
+        assert bool(row["null"]) == ({"type": "null"} in fields[key].get("anyOf", [])), key
+        assert row["meaning"], key
+
+
+def test_compare_page_forgets_no_block():
+    """A new block needs its own heading."""
+    named = {model.__name__ for model in COMPARE_TABLES.values()}
+    assert named == {"CompareResults", *compare_schema()["$defs"]} - {"Program"}

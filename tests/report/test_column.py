@@ -91,7 +91,7 @@ def test_every_origin_has_a_style_of_its_own_sheet():
     from orolift.air.column import Origin
     from orolift.report.render import _environment
 
-    style = _environment().globals["style"]
+    style = _environment().globals["inlined"]["style.css"].text
     assert set(get_args(Origin)) == set(KINDS)
     for kind in KINDS.values():
         assert f"\n.{kind} {{" in style

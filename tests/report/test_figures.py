@@ -480,7 +480,7 @@ def test_rain_strokes_stand_only_where_water_lands(page_for, named):
 
 
 def test_rain_panel_reads_back_as_the_rain(page_for, named):
-    """Peak of the area on its own axis, and the shares beside the crest."""
+    """Peak of the area on its own axis, and the peak in words."""
     crossing = named("rain that drifts")
     panel = page_for(crossing).section.drawing.rain
     outline = points_of(panel.rain.path)
@@ -488,7 +488,7 @@ def test_rain_panel_reads_back_as_the_rain(page_for, named):
     step = marks[-1][0] - marks[0][0]
     assert read_off(marks, outline[:, 1].min()) == pytest.approx(crossing.rain.peak_rate * 3600.0, abs=0.02 * step)
     words = " ".join(label.text for label in panel.labels).replace("\u00a0", " ")
-    assert f"{100 * crossing.rain.windward_share:.0f} % before the crest" in words
+    assert f"peak {3600.0 * crossing.rain.peak_rate:.1f} mm/h" in words
     assert panel.snow is not None
 
 

@@ -1,6 +1,9 @@
 """The HTML file: self-contained, escaped, readable by machines and screen readers, the same every time."""
 
 import ast
+import base64
+import hashlib
+import json
 import re
 from dataclasses import replace
 from html.parser import HTMLParser
@@ -101,6 +104,25 @@ def test_ids_are_unique_and_every_reference_leads_somewhere(read, any_crossing):
             assert reference in ids
 
 
+@pytest.mark.parametrize("units", ["metric", "us"])
+def test_no_section_is_empty(page_for, any_crossing, units):
+    """Under its margin word and heading each says something, and no heading or cell shows a None or a nan."""
+    html = render(page_for(any_crossing, units=units))
+    sections = re.findall(r"(?s)<section id=.*?</h2>(.*?)</section>", html)
+    assert len(sections) == len(re.findall("<section ", html))
+    for section in sections:
+        words = re.sub(r"(?s)<script.*?</script>|<[^>]*>", " ", section)
+        assert len(words.split()) >= 8
+        assert not re.search(r"\b(?:None|nan|inf)\b", words)
+
+
+def test_contents_lead_to_every_section_in_its_order(read, any_crossing):
+    """All but the briefing, which is where the reader already is."""
+    page = read(any_crossing)
+    links = [a["attrs"]["href"].removeprefix("#") for a in page.all("a")]
+    assert links == [section["attrs"]["id"] for section in page.all("section")][1:]
+
+
 def test_figures_speak_to_those_who_cannot_see_them(read, page_for, any_crossing):
     """Each drawing has a title and a text that gives its message in numbers."""
     built = page_for(any_crossing)
@@ -125,9 +147,9 @@ def test_figures_speak_to_those_who_cannot_see_them(read, page_for, any_crossing
 
 def test_tables_have_captions_and_scopes(read, crossing):
     page = read(crossing)
-    assert len(page.all("table")) == len(page.all("caption")) == 10
+    assert len(page.all("table")) == len(page.all("caption")) == 11
     for head in page.all("th"):
-        assert head["attrs"]["scope"] in {"col", "colgroup", "row"}
+        assert head["attrs"]["scope"] in {"col", "colgroup", "row", "rowgroup"}
 
 
 def test_headings_step_down_one_level_at_a_time(read, crossing):
@@ -137,34 +159,49 @@ def test_headings_step_down_one_level_at_a_time(read, crossing):
     assert all(after - before <= 1 for before, after in pairwise(levels))
 
 
-def test_nothing_is_fetched_or_run(page_for, any_crossing):
-    """No script, no handler, no link, nothing with an address; and a policy that forbids all of it."""
+def digest(text):
+    """Hash of a text as a content security policy names it."""
+    return f"'sha256-{base64.b64encode(hashlib.sha256(text.encode()).digest()).decode()}'"
+
+
+def test_nothing_is_fetched_and_only_our_script_runs(page_for, any_crossing):
+    """No handler, nothing with an address; and a policy that lets run one script and one style by their hashes."""
     html = render(page_for(any_crossing))
     page = Reader(html)
-    assert not page.all("script")
+    data, ours = page.all("script")
+    assert data["attrs"] == {"type": "application/json", "id": "reading-data"}
+    assert not ours["attrs"]
     assert not page.all("link")
-    assert not page.all("a")
     for element in page.elements:
         assert not any(name.startswith("on") or name == "style" for name in element["attrs"])
-        assert not {"src", "href", "xlink:href", "srcset", "action"} & set(element["attrs"])
-    assert "http" not in html.replace("http-equiv", "")
+        assert not {"src", "xlink:href", "srcset", "action"} & set(element["attrs"])
+        assert element["attrs"].get("href", "#").startswith("#")
+    assert "http" not in html.replace("http-equiv", "").replace("http://www.w3.org/2000/svg", "")
     assert "url(" not in html
     assert "@import" not in html
+    (style,) = page.all("style")
     policy = next(e["attrs"]["content"] for e in page.all("meta") if "http-equiv" in e["attrs"])
-    assert policy.startswith("default-src 'none';")
+    assert [part.strip() for part in policy.split(";")] == [
+        "default-src 'none'",
+        f"style-src {digest(style['text'])}",
+        f"script-src {digest(ours['text'])}",
+        "img-src data:",
+        "base-uri 'none'",
+        "form-action 'none'",
+    ]
 
 
 HOSTILE = "<script>alert('x')</script>\" onload=\"a{{ 7 * 7 }}&amp;]]>"
 
 
 def test_hostile_words_come_out_as_words(page_for, crossing):
-    """Title, site name, case file, notes and cautions: shown as written, none of it markup."""
+    """Title, site name, case file, notes and cautions, also in the data of the script: shown as written, none of it markup."""
     lee = (replace(crossing.lee[0], name=HOSTILE), *crossing.lee[1:])
     crossing = replace(crossing, lee=lee, notes=(HOSTILE,), cautions=(HOSTILE,))
     html = render(page_for(crossing, title=HOSTILE, case_text=f"title = '{HOSTILE}'", version="0"))
     page = Reader(html)
-    assert "<script" not in html
-    assert not page.all("script")
+    assert html.count("<script") == len(page.all("script")) == 2
+    assert HOSTILE in json.loads(page.all("script")[0]["text"])["ways"]["1"]
     assert not any("onload" in element["attrs"] for element in page.elements)
     assert page.all("h1")[0]["text"] == HOSTILE
     assert page.all("pre")[0]["text"] == f"title = '{HOSTILE}'"
@@ -181,19 +218,8 @@ def test_same_page_gives_the_same_bytes(page_for, crossing):
 def test_briefing_comes_first_and_cautions_come_with_it(read, crossing):
     page = read(crossing)
     order = [section["attrs"]["id"] for section in page.all("section")]
-    assert order == [
-        "briefing",
-        "section",
-        "path",
-        "causes",
-        "rain",
-        "sites",
-        "answers",
-        "wind",
-        "inputs",
-        "method",
-        "cautions",
-    ]
+    assert order[:4] == ["briefing", "section", "causes", "sites"]
+    assert order[4:] == ["path", "rain", "wind", "answers", "inputs", "method", "cautions"]
     assert "not a warning" in page.all("header")[0]["text"]
 
 

@@ -1,4 +1,4 @@
-"""Rain and snow along the ground, under the section and on its axis."""
+"""Rain and snow along the ground, under the section and on its axis; the shares are told where rain has its section."""
 
 from __future__ import annotations
 
@@ -20,9 +20,6 @@ if TYPE_CHECKING:
 
     Array = NDArray[np.float64]
 
-BACK = (0.0, 60.0, 120.0, 180.0, 240.0)
-"""Drawing units from the crest at which the shares may stand."""
-
 
 @dataclass(frozen=True)
 class RainPanel:
@@ -32,13 +29,12 @@ class RainPanel:
     ticks: tuple[Tick, ...]
     rain: Curve
     snow: Curve | None
-    divide: Curve
     labels: tuple[Label, ...]
 
     @property
     def curves(self) -> tuple[Curve, ...]:
         """Its areas and lines, from the back."""
-        return (self.rain, *(() if self.snow is None else (self.snow,)), self.divide)
+        return (self.rain, *(() if self.snow is None else (self.snow,)))
 
 
 def rain_panel(view: View, layout: Layout) -> RainPanel | None:
@@ -66,19 +62,17 @@ def rain_panel(view: View, layout: Layout) -> RainPanel | None:
     x = np.asarray(place(view.across, crossing.distance))
     rate = np.asarray(place(up, rain.rate + rain.background))
     snow = np.asarray(place(up, rain.snow_rate))
-    crest = place(view.across, crossing.features.crest_distance)
     return RainPanel(
         layout=layout,
         ticks=level_ticks(up, view.units, 2, layout.letter, "rain_rate"),
         rain=area(x, rate, layout.bottom, "landed rain-fill", thinned(x, rate)),
         snow=area(x, snow, layout.bottom, "landed snow-fill", thinned(x, snow)) if rain.snow_rate.any() else None,
-        divide=Curve(f"M{crest:.1f} {layout.top:.1f}V{layout.bottom:.1f}", "divide"),
-        labels=_names(view, layout, x, rate, crest),
+        labels=_names(view, layout, x, rate),
     )
 
 
-def _names(view: View, layout: Layout, x: Array, rate: Array, crest: float) -> tuple[Label, ...]:
-    """What falls, the shares on the two sides, and the peak."""
+def _names(view: View, layout: Layout, x: Array, rate: Array) -> tuple[Label, ...]:
+    """What falls, and the peak."""
     rain, units, letter = view.crossing.rain, view.units, layout.letter
     fine = np.linspace(x[0], x[-1], 400)
     board = Board(
@@ -94,15 +88,7 @@ def _names(view: View, layout: Layout, x: Array, rate: Array, crest: float) -> t
         return [(Label(text, round(x, 1), round(top + drop * letter, 1), anchor, kind),) for drop in drops]
 
     groups = [down(f"{snow_words(view.crossing)} at the ground", layout.left + 4.0, "start", "name soft")]
-    if rain.windward_share is not None:
-        sides = ("windward", "lee") if layout.name == "narrow" else ("before the crest", "in the lee")
-        before, behind = (
-            f"{quantity(share, 'share', 0, units)} {side}"
-            for share, side in zip((rain.windward_share, 1.0 - rain.windward_share), sides, strict=True)
-        )
-        groups.append([spot for on in BACK for spot in down(behind, crest + 8.0 + on, "start", "name dew")])
-        groups.append([spot for back in BACK for spot in down(before, crest - 8.0 - back, "end", "name dew")])
-    if rain.peak_distance is not None and layout.name == "wide":
+    if rain.peak_distance is not None:
         words = f"peak {quantity(rain.peak_rate, 'rain_rate', 1, units)}"
         at = place(view.across, rain.peak_distance)
         ends: tuple[tuple[float, Anchor], ...] = ((-10.0, "end"), (10.0, "start"), (0.0, "middle"))

@@ -10,15 +10,16 @@ import numpy as np
 from orolift.report.figures import lettering, streams
 from orolift.report.figures.axes import Layout, Tick, level_ticks, place, ticks
 from orolift.report.figures.cloud import cloud_body, falling_water
-from orolift.report.figures.drawing import Curve, Figure, Label, Pin, area, arrow_head, path_data
+from orolift.report.figures.drawing import Curve, Figure, Label, Pin, area, arrow_head, path_data, thinned
 from orolift.report.figures.low_air import blocked_air, cold_pool
 from orolift.report.figures.pins import UPRIGHT, pins
 from orolift.report.figures.placing import Board, Box, with_taken
 from orolift.report.figures.rain_panel import RainPanel, rain_panel
 from orolift.report.figures.view import View, view
 from orolift.report.figures.wind_panel import WindPanel, wind_panel
-from orolift.report.quantities import Units, quantity
+from orolift.report.quantities import Units, displayed, quantity
 from orolift.report.story import cloudy_to_the_end, is_blocked, rains
+from orolift.report.trace import way
 from orolift.report.words import point_of_compass
 
 if TYPE_CHECKING:
@@ -40,6 +41,33 @@ GAP = 46.0
 RAIN_DEPTH, WIND_DEPTH = 66.0, 96.0
 """Drawing units of the panels under the section."""
 MOST_PLUMB_LINES = 10
+
+
+@dataclass(frozen=True)
+class SiteWay:
+    """The way of the air that reaches a site, drawn when it is asked for.
+
+    Attributes
+    ----------
+    number : int
+        Of the site.
+    curves : tuple of Curve
+        The bar over the heights it comes from, the casing of the line, the line.
+    """
+
+    number: int
+    curves: tuple[Curve, ...]
+
+
+@dataclass(frozen=True)
+class Ruler:
+    """Where the edges of the frame stand in shown units, for the line that reads the section off."""
+
+    start: float
+    end: float
+    low: float
+    high: float
+    foot: float
 
 
 @dataclass(frozen=True)
@@ -66,6 +94,8 @@ class SectionDrawing:
     labels: tuple[Label, ...]
     rain: RainPanel | None
     wind: WindPanel
+    ways: tuple[SiteWay, ...]
+    ruler: Ruler
 
     @property
     def behind(self) -> tuple[Curve, ...]:
@@ -258,7 +288,34 @@ def _drawing(seen: View, bearing: float, freezing_level: float, below: Layout, u
         labels=(*labels, *more, *_header(seen, bearing)),
         rain=rain_panel(seen, below),
         wind=wind_panel(seen, under),
+        ways=_ways(seen),
+        ruler=_ruler(seen, under),
     )
+
+
+def _ways(seen: View) -> tuple[SiteWay, ...]:
+    """Back from each site to where its air comes from; none for air that stays."""
+    out = []
+    for site in seen.crossing.lee:
+        if site.in_pool or site.in_blocked_air:
+            continue
+        gone = way(seen.crossing, site)
+        x, y = np.asarray(place(seen.across, gone.distance)), np.asarray(place(seen.up, gone.height))
+        keep = thinned(x, y)
+        line = path_data(x[keep], y[keep])
+        curves: tuple[Curve, ...] = (Curve(line, "way-casing"), Curve(line, "way-line"))
+        if site.source_level_low is not None and site.source_level_high is not None:
+            low, high = (place(seen.up, level) for level in (site.source_level_low, site.source_level_high))
+            curves = (Curve(f"M{x[0]:.1f} {low:.1f}V{high:.1f}", "source"), *curves)
+        out.append(SiteWay(site.number, curves))
+    return tuple(out)
+
+
+def _ruler(seen: View, under: Layout) -> Ruler:
+    shift, units = seen.crossing.transect.origin, seen.units
+    start, end = (round(displayed(edge + shift, "distance", units), 3) for edge in (seen.across.low, seen.across.high))
+    low, high = (round(displayed(edge, "height", units), 1) for edge in (seen.up.low, seen.up.high))
+    return Ruler(start, end, low, high, under.bottom)
 
 
 def _written(seen: View, board: Board, writers: Sequence[Writer]) -> Lettered:

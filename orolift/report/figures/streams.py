@@ -17,13 +17,14 @@ from orolift.report.figures.drawing import Curve, Label, head_along, path_data, 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+    from orolift.crossing.result import Crossing
     from orolift.report.figures.view import View
 
     Array = NDArray[np.float64]
     Line = tuple[Array, Array]
 
-LINES = {"wide": 11, "narrow": 8}
-"""Streamlines drawn, evenly spaced upwind."""
+LINES, FEW_LINES = 11, 8
+"""Streamlines drawn, evenly spaced upwind, on a page and on a narrow screen."""
 CHANGES = (-1.0, 1.0, 3.0)
 """Air minus incoming air at the same height [K] at which a line changes its look (design choice)."""
 LOOKS = ("air cooler", "air", "air warmer", "air warmest")
@@ -41,19 +42,21 @@ def rows_below(view: View) -> int:
     return int(min(enter[-1] + 2, view.heights.shape[1]))
 
 
-def chosen_starts(view: View) -> Array:
-    """Heights [m] at which the drawn streamlines start: the lowest, then evenly to the top of the frame."""
-    bottom = float(view.crossing.start_height[0])
-    top = min(view.up.high, float(view.crossing.start_height[-1]))
-    count = LINES[view.layout.name]
+def starts(crossing: Crossing, top: float, count: int) -> Array:
+    """Heights [m] at which some streamlines start: evenly from the lowest to the top of the frame."""
+    bottom = float(crossing.start_height[0])
+    top = min(top, float(crossing.start_height[-1]))
     return np.asarray(bottom + (np.arange(count) + 1.0) * (top - bottom) / (count + 0.5), dtype=np.float64)
 
 
 def streamlines(view: View) -> tuple[Curve, ...]:
     """Streamlines, each in stretches that look like the air in them."""
     crossing, columns = view.crossing, view.columns
-    number = np.interp(chosen_starts(view), crossing.start_height, np.arange(crossing.start_height.size))
-    height, temperature = (_at(values[columns], number) for values in (crossing.height, crossing.air.temperature))
+    chosen = starts(crossing, view.up.high, LINES if view.layout.name == "wide" else FEW_LINES)
+    number = np.interp(chosen, crossing.start_height, np.arange(crossing.start_height.size))
+    height, temperature = (
+        at_numbers(values[columns], number) for values in (crossing.height, crossing.air.temperature)
+    )
     limited: Array = np.clip(height, crossing.incoming.height[0], crossing.incoming.height[-1])
     before = interpolated(crossing.incoming, limited.ravel()).temperature.reshape(height.shape)
     change = temperature - before
@@ -71,7 +74,7 @@ def streamlines(view: View) -> tuple[Curve, ...]:
     return tuple(out)
 
 
-def _at(values: Array, number: Array) -> Array:
+def at_numbers(values: Array, number: Array) -> Array:
     """Values (n, nz) at streamline numbers, (n, m)."""
     below = np.clip(number.astype(np.intp), 0, values.shape[1] - 2)
     share = number - below

@@ -86,7 +86,7 @@ def view(crossing: Crossing, trace: Trace, units: Units, layout: Layout) -> View
     View
     """
     across = distance_scale(crossing.transect.distance, layout)
-    up = _up(crossing, units, layout)
+    up = Scale(*frame_heights(crossing, units), layout.bottom, layout.top)
     stride = max(1, int(SPACING * crossing.distance.size / (layout.right - layout.left)))
     crest = int(np.argmin(np.abs(crossing.distance - crossing.features.crest_distance)))
     columns = np.union1d(np.arange(0, crossing.distance.size, stride), [crest, crossing.distance.size - 1])
@@ -108,13 +108,23 @@ def view(crossing: Crossing, trace: Trace, units: Units, layout: Layout) -> View
     )
 
 
-def _up(crossing: Crossing, units: Units, layout: Layout) -> Scale:
-    """Vertical scale: from sea level, unless all of the ground is far above it, to well above the crest."""
+def frame_heights(crossing: Crossing, units: Units) -> tuple[float, float]:
+    """Lowest and highest height [m] drawn: from sea level, unless all of the ground is far above it, to well above it.
+
+    Parameters
+    ----------
+    crossing : Crossing
+    units : 'metric' or 'us'
+        In which the lowest is round.
+
+    Returns
+    -------
+    (float, float)
+    """
     ground = crossing.transect.elevation
     lowest, highest = float(ground.min()), float(ground.max())
     low = min(0.0, lowest)
     if lowest > 0.4 * highest:
         step = from_displayed(500.0 if units == "metric" else 2000.0, "height", units)
         low = step * np.floor(0.95 * lowest / step)
-    top = highest + max(ABOVE * (highest - low), LEAST_ABOVE)
-    return Scale(float(low), float(top), layout.bottom, layout.top)
+    return float(low), float(highest + max(ABOVE * (highest - low), LEAST_ABOVE))

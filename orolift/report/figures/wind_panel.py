@@ -12,12 +12,14 @@ from orolift.report.figures.axes import Layout, Scale, Tick, level_ticks, place
 from orolift.report.figures.cloud import runs
 from orolift.report.figures.drawing import Curve, Label, Pin, path_data, polyline, thinned
 from orolift.report.figures.placing import Board, Box, put
+from orolift.report.local_units import local
 from orolift.report.quantities import from_displayed
 from orolift.report.story import main_site
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+    from orolift.crossing.result import LeeAir
     from orolift.report.figures.view import View
 
     Array = NDArray[np.float64]
@@ -86,7 +88,7 @@ def wind_panel(view: View, layout: Layout) -> WindPanel:
     up = Scale(0.0, float(top), layout.bottom, layout.top)
     band = _band(view.x[lee], *(np.asarray(place(up, side[lee])) for side in (low, high)))
     y = np.asarray(place(up, wind))
-    gauges = tuple(_gauge(view, up, number, layout) for number, site in enumerate(crossing.lee, 1) if site.wind)
+    gauges = tuple(_gauge(view, up, site, layout) for site in crossing.lee if site.wind)
     return WindPanel(
         layout=layout,
         ticks=level_ticks(up, view.units, 3, layout.letter, "wind"),
@@ -129,8 +131,7 @@ def _lines(view: View, y: Array) -> tuple[Curve, ...]:
     return tuple(out)
 
 
-def _gauge(view: View, up: Scale, number: int, layout: Layout) -> Gauge:
-    site = view.crossing.lee[number - 1]
+def _gauge(view: View, up: Scale, site: LeeAir, layout: Layout) -> Gauge:
     if site.wind is None:
         raise ValueError("a gauge needs a wind")
     x = round(place(view.across, site.distance), 1)
@@ -138,7 +139,7 @@ def _gauge(view: View, up: Scale, number: int, layout: Layout) -> Gauge:
     radius = round(0.6 * layout.letter, 1)
     disc = round(max(high - radius - 3.0, layout.top - radius), 1)
     return Gauge(
-        number=number,
+        number=site.number,
         stem="",
         x=x,
         y=disc,
@@ -165,13 +166,13 @@ def _names(view: View, layout: Layout, y: Array, high: Array, gauges: tuple[Gaug
         ),
     )
     site = main_site(view.crossing)
-    wanted = [("wind in the lowest 300 m", "name soft", 0.02, "start")]
+    wanted = [(local("wind in the lowest 300 m", view.units), "name soft", 0.02, "start")]
     if view.units == "us":
         wanted = [("wind in the lowest 1000 ft", "name soft", 0.02, "start")]
     if np.max(y - high) > 3.0:
         wanted.append(("range of methods", "name soft", 0.99, "end"))
     if gauges and site.wind is not None:
-        wanted.append(("10 m wind and gusts", "name ink", 0.99, "end"))
+        wanted.append((local("10 m wind and gusts", view.units), "name ink", 0.99, "end"))
     out: list[Label] = []
     for text, kind, share, anchor in wanted:
         shares = (share, 0.02, 0.2, 0.35, 0.99, 0.8, 0.66, 0.5)

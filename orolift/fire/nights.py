@@ -1,0 +1,147 @@
+"""The night at a site and over it: recovery of humidity by height, and how deep the air mixes by day."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.air.humidity import relative_humidity_from_mixing_ratio
+from orolift.air.temperature import virtual_potential_temperature, virtual_temperature
+from orolift.constants import R_DRY
+from orolift.crossing.heat import DAY_DEPTH, LONGEST, NIGHT_DEPTH, NIGHT_FLUX, surface_heat
+from orolift.crossing.sun import sun_height
+from orolift.fire.mixing_height import mixing_height
+from orolift.fire.night import STILL_DEPTH, humidity_after_cooling, night_cooling
+from orolift.fire.weather import layer_pressure
+
+if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from numpy.typing import ArrayLike, NDArray
+
+    from orolift.crossing.result import LeeAir, When
+    from orolift.fire.weather import SiteWeather
+
+    Array = NDArray[np.float64]
+
+USUAL_NIGHT = 12.0 * 3600.0
+"""Length of the night [s] where time or place is not known; a judgement."""
+DAY = 86400.0
+_QUARTERS = 97  # moments of a day, a quarter of an hour apart
+
+
+@dataclass(frozen=True)
+class NightAtSite:
+    """Highest relative humidity of the night by place, and depth of mixing; NaN where there is no such place.
+
+    Attributes
+    ----------
+    length : float [s]
+        Of the night.
+    length_known : bool
+        Whether from the sun; else assumed.
+    floor_windy, floor_still : float [1]
+        At the site, taken as the floor of its valley: where wind keeps the air mixed, and where it comes to rest.
+    mid_slope, ridge : float [1]
+        Half-way up to the crest, and at its height: without cooling.
+    mid_slope_height, ridge_height : float [m above sea level]
+    mixing_height, mixing_height_by_day : float [m above ground]
+        At the valid time, and the greatest in the 24 hours from then, by the ground's heat alone.
+    """
+
+    length: float
+    length_known: bool
+    floor_windy: float
+    floor_still: float
+    mid_slope: float
+    ridge: float
+    mid_slope_height: float
+    ridge_height: float
+    mixing_height: float
+    mixing_height_by_day: float
+
+
+def nights_at(weather: SiteWeather, lee: Sequence[LeeAir], crests: ArrayLike, when: When) -> tuple[NightAtSite, ...]:
+    """The coming night at sites.
+
+    Parameters
+    ----------
+    weather : SiteWeather, leading axes (n,)
+        Of the sites.
+    lee : sequence of LeeAir, n
+        The same sites.
+    crests : array_like (n,) [m above sea level]
+    when : When
+
+    Returns
+    -------
+    tuple of NightAtSite, n
+
+    Notes
+    -----
+    The air stays that of the crossing all night, its heat from the ground taken off. The floor then loses 30 W/m2: with
+    wind from 800 m for at most 8 hours, as `orolift.crossing.heat` has it; at rest, from `night.STILL_DEPTH` and all
+    night. Slope and ridge stay in the free air over the site, without cooling and with their vapour: on a ridge
+    humidity can stay low all night. For the depth of mixing, heat of the last 8 hours, none once the sun is down.
+    """
+    z, vapour = weather.height_above_ground, weather.mixing_ratio
+    heating = np.array([0.0 if air.parts is None else air.parts.surface_heating for air in lee])
+    base = weather.temperature - heating
+    reached = z <= np.where(heating > 0.0, DAY_DEPTH, NIGHT_DEPTH)[:, np.newaxis]
+    layer = weather.layer_temperature - np.where(reached, heating[:, np.newaxis], 0.0)
+    density = np.clip(weather.pressure / (R_DRY * virtual_temperature(base, vapour)), 0.3, 1.6)
+    length = _night_length(when)
+    hours = USUAL_NIGHT if length is None else length
+    before = np.minimum(relative_humidity_from_mixing_ratio(weather.pressure, base, vapour), 1.0)
+    windy = humidity_after_cooling(base, before, night_cooling(min(hours, LONGEST), -NIGHT_FLUX, NIGHT_DEPTH, density))
+    still = humidity_after_cooling(base, before, night_cooling(hours, -NIGHT_FLUX, STILL_DEPTH, density))
+    pressure = layer_pressure(weather)
+    over = np.minimum(relative_humidity_from_mixing_ratio(pressure, layer, weather.layer_vapour), 1.0)
+    theta = virtual_potential_temperature(pressure, layer, weather.layer_vapour)
+    now, by_day = (mixing_height(z, theta, heat=heat / density) for heat in _heats(when))
+    out = []
+    for number, (air, crest) in enumerate(zip(lee, np.asarray(crests, np.float64).tolist(), strict=True)):
+        half = 0.5 * (air.elevation + crest)
+        slope, ridge = (_over(height - air.elevation, z, over[number]) for height in (half, crest))
+        out.append(
+            NightAtSite(
+                length=hours,
+                length_known=length is not None,
+                floor_windy=float(windy[number]),
+                floor_still=float(still[number]),
+                mid_slope=slope,
+                ridge=ridge,
+                mid_slope_height=half,
+                ridge_height=crest,
+                mixing_height=float(now[number]),
+                mixing_height_by_day=float(by_day[number]),
+            )
+        )
+    return tuple(out)
+
+
+def _over(above: float, z: Array, values: Array) -> float:
+    """Value of a profile at a height above ground, NaN at the ground, below it and above the profile."""
+    return float(np.interp(above, z, values)) if 0.0 < above <= z[-1] else float("nan")
+
+
+def _night_length(when: When) -> float | None:
+    """How long the sun is down in the 24 hours from the valid time [s]; None where time or place is unknown."""
+    if when.time is None or when.longitude is None or when.latitude is None:
+        return None
+    times = when.time + np.linspace(0.0, DAY, _QUARTERS)
+    down = sun_height(times, when.longitude, when.latitude) <= 0.0
+    return float(np.mean(down) * DAY)
+
+
+def _heats(when: When) -> tuple[float, float]:
+    """Heat from the sun over heat capacity [kg m-2 K]: now, and the most of the 24 hours from now."""
+    if when.time is None or when.longitude is None or when.latitude is None:
+        return 0.0, 0.0
+    times = when.time + np.arange(0.0, DAY + 1.0, 7200.0)
+    place = (when.longitude, when.latitude)
+    days = [float(surface_heat(float(time), *place, LONGEST, 1.0).day) * DAY_DEPTH for time in times]
+    shines = float(sun_height(when.time, *place)) > 0.0
+    return days[0] if shines else 0.0, max(days)

@@ -1,0 +1,1 @@
+"""Many crossings: how sure an answer is, hours, bearings, the lee as a map."""
