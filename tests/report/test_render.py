@@ -312,3 +312,22 @@ def test_words_stand_out_from_the_paper(light, name):
     chosen = colours(first) if light == "light" else colours(second)
     assert contrast(chosen[name], chosen["paper"]) >= 4.5
     assert contrast(chosen["on-ground"], chosen["ground"]) >= 4.5
+
+
+def test_compiled_templates_are_kept_and_never_trusted(tmp_path, monkeypatch, page_for, crossing):
+    """They are used again; spoilt ones, or a folder that cannot be written, change nothing but the time."""
+    page = page_for(crossing)
+    expected = render(page)
+    for folder in (tmp_path / "kept", tmp_path / "file" / "under"):
+        (tmp_path / "file").write_text("no folder")
+        monkeypatch.setattr(render_module._BesideTemplates, "folder", folder)
+        render_module._environment.cache_clear()
+        assert render(page) == expected
+    kept = sorted((tmp_path / "kept").iterdir())
+    assert len(kept) > 10
+    for file in kept:
+        file.write_bytes(file.read_bytes()[:100])
+    monkeypatch.setattr(render_module._BesideTemplates, "folder", tmp_path / "kept")
+    render_module._environment.cache_clear()
+    assert render(page) == expected
+    render_module._environment.cache_clear()
