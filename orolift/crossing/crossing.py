@@ -50,6 +50,7 @@ def cross(
     stagnant_top: float | None = None,
     background: float = 0.0,
     streamlines: int = 60,
+    ends_too: bool = True,
 ) -> Crossing:
     """Incoming air taken over a transect.
 
@@ -77,6 +78,9 @@ def cross(
         Rain that falls anyway.
     streamlines : int
         How many, 20 or more.
+    ends_too : bool
+        Whether the ends without blocking and with full blocking are worked out beside the answer. False saves
+        their time, and they are then the answer itself.
 
     Returns
     -------
@@ -112,7 +116,8 @@ def cross(
     )
     crest_wind = crest_component(incoming, ground.normal, shape.crest)
     sites = sites or (Site("Lee foot", shape.lee_foot_distance),)
-    solution = solve(ground, incoming, ends(settings), lee, members=3, streamlines=streamlines)
+    tried, members = (ends(settings), 3) if ends_too else (settings, 1)
+    solution = solve(ground, incoming, tried, lee, members=members, streamlines=streamlines)
     solution.going_round[1:] = 0.0
     streams = solution.streams
     air = March(**{key: getattr(streams.air, key)[:, 0, :] for key in March.__dataclass_fields__})
@@ -120,13 +125,14 @@ def cross(
     height = streams.flow.heights[0][:, streams.place].T
     winds = lee_winds(ground, solution, crest_wind, flow.pressure_difference)
     cloud = clouds(solution, transect.distance, shape, freezing=settings.freezing)
+    places, rain = transect.distance[streams.place], rainfall(ground, solution, background)
     return Crossing(
         incoming=incoming,
         transect=transect,
         features=shape,
         sites=sites,
         settings=settings,
-        distance=transect.distance[streams.place],
+        distance=places,
         start_height=streams.flow.start_heights[0],
         height=height,
         air=air,
@@ -136,11 +142,15 @@ def cross(
         flow=flow,
         cloud=cloud,
         water=water(solution, float(vapour_flux(incoming, ground.normal))),
-        rain=rainfall(ground, solution, background),
+        rain=rain,
         pool=solution.pools[0],
         winds=winds,
         lee=tuple(
-            replace(site_air(site, ground, incoming, solution, settings, when, winds), number=number)
+            replace(
+                site_air(site, ground, incoming, solution, settings, when, winds),
+                number=number,
+                rain=float(np.interp(site.distance, places, rain.rate)) + rain.background,
+            )
             for number, site in enumerate(sites, start=1)
         ),
         notes=(*incoming.notes, *transect.notes, *crest_line_notes(ground, flow.blocked_top)),

@@ -53,6 +53,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.rain_line import RainLineDrawing
     from orolift.report.figures.rain_map import RainMapDrawing
     from orolift.report.figures.section import SectionDrawing
+    from orolift.report.figures.sites_map import SitesMapDrawing
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.quality import Finding
     from orolift.spread.spread import Spread
@@ -87,6 +88,7 @@ class Page:
     rain_map : Figure or None
     gauge_scatter : Figure or None
     sites : Sites
+    sites_map : Figure or None
     fire : FireWeather or None
     how_sure : HowSure
     influences : Figure or None
@@ -120,6 +122,7 @@ class Page:
     rain_map: Figure[RainMapDrawing] | None
     gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
+    sites_map: Figure[SitesMapDrawing] | None
     fire: FireWeather | None
     how_sure: HowSure
     influences: Figure[InfluencesDrawing] | None
@@ -211,6 +214,7 @@ def page_of(
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
         sites=sites(crossing, Spans(crossing, spread)),
+        sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
         how_sure=sure,
         influences=influences_figure(sure),
         fire=fire_weather(crossing, fire, rules) if fire else None,
@@ -230,3 +234,10 @@ def _rain_map(crossing: Crossing, mapped: Mapped, units: Units) -> Figure[RainMa
     from orolift.report.figures.rain_map import rain_map_figure
 
     return rain_map_figure(crossing, mapped, units)
+
+
+def _sites_map(crossing: Crossing, mapped: Mapped, units: Units) -> Figure[SitesMapDrawing] | None:
+    """The map of the sites; its module needs what only cases with a raster need."""
+    from orolift.report.figures.sites_map import sites_map_figure
+
+    return sites_map_figure(crossing, mapped, units)

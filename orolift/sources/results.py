@@ -247,16 +247,8 @@ def results_of(
     """
     return Results(
         schema_version=SCHEMA_VERSION,
-        orolift=Program(
-            version=__version__,
-            python=platform.python_version(),
-            libraries={name: metadata.version(name) for name in LIBRARIES},
-        ),
-        case=CaseBlock(
-            title=case.title,
-            valid_time=None if case.valid_time is None else case.valid_time.isoformat(),
-            seed=None if spread is None else spread.seed,
-        ),
+        orolift=program(),
+        case=case_block(case, None if spread is None else spread.seed),
         incoming=_incoming(crossing, spread),
         terrain=_terrain(crossing),
         flow=_flow(crossing, spread),
@@ -270,6 +262,24 @@ def results_of(
         flags=[*flags],
         cautions=[*crossing.cautions],
         notes=[*crossing.notes],
+    )
+
+
+def program() -> Program:
+    """What makes a file: versions of orolift, Python and the libraries."""
+    return Program(
+        version=__version__,
+        python=platform.python_version(),
+        libraries={name: metadata.version(name) for name in LIBRARIES},
+    )
+
+
+def case_block(case: Case, seed: int | None = None) -> CaseBlock:
+    """Which case it is, and the seed of its members."""
+    return CaseBlock(
+        title=case.title,
+        valid_time=None if case.valid_time is None else case.valid_time.isoformat(),
+        seed=seed,
     )
 
 

@@ -9,18 +9,24 @@ import json
 import sys
 from itertools import combinations
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from orolift.errors import CaseError
 from orolift.sources.case_model import Case
+from orolift.sources.compare_results import SCHEMA_VERSION as COMPARE_VERSION
+from orolift.sources.compare_results import CompareResults
 from orolift.sources.files import write_all
 from orolift.sources.results import SCHEMA_VERSION, Results
 from orolift.sources.rules_file import RulesFile
 from orolift.sources.spread_model import SpreadTable
 from orolift.sources.units import alternatives, converted, suffix_of
 
+if TYPE_CHECKING:
+    from pydantic import BaseModel
+
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
 CASE_FILE, RESULTS_FILE, RULES_FILE = "case.schema.json", "results.schema.json", "rules.schema.json"
+COMPARE_FILE = "compare.schema.json"
 LIMIT_DIGITS = 6
 """Decimals of a limit converted to another unit: finer than anybody writes, coarser than rounding of the factors."""
 UNIT_WORDS = {
@@ -108,11 +114,30 @@ def results_schema() -> Schema:
     >>> results_schema()["properties"]["schema_version"]["const"]
     '1'
     """
-    schema = _plain(Results.model_json_schema(mode="serialization"), keep_null=True)
+    return _written_schema(Results, SCHEMA_VERSION, "orolift results file")
+
+
+def compare_schema() -> Schema:
+    """JSON Schema of the results of a comparison, as `results_schema`.
+
+    Returns
+    -------
+    dict
+
+    Examples
+    --------
+    >>> "explanation" in compare_schema()["required"]
+    True
+    """
+    return _written_schema(CompareResults, COMPARE_VERSION, "orolift comparison file")
+
+
+def _written_schema(model: type[BaseModel], version: str, title: str) -> Schema:
+    schema = _plain(model.model_json_schema(mode="serialization"), keep_null=True)
     for block in [schema, *schema["$defs"].values()]:
         block["required"] = list(block["properties"])
-    schema["properties"]["schema_version"]["const"] = SCHEMA_VERSION
-    return {"$schema": DIALECT, **schema, "title": "orolift results file"}
+    schema["properties"]["schema_version"]["const"] = version
+    return {"$schema": DIALECT, **schema, "title": title}
 
 
 def schema_texts() -> dict[str, str]:
@@ -123,6 +148,7 @@ def schema_texts() -> dict[str, str]:
     dict of str to str
     """
     schemas = {CASE_FILE: case_schema(), RESULTS_FILE: results_schema(), RULES_FILE: rules_schema()}
+    schemas[COMPARE_FILE] = compare_schema()
     return {name: json.dumps(schema, indent=2, ensure_ascii=False) + "\n" for name, schema in schemas.items()}
 
 
