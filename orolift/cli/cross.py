@@ -18,7 +18,7 @@ from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, r
 from orolift.cli.spreading import Workers, spread_for
 
 if TYPE_CHECKING:
-    from orolift.crossing.result import Crossing
+    from orolift.crossing.result import Crossing, LeeAir
     from orolift.crossing.situation import Situation
     from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
@@ -188,16 +188,16 @@ def work_out(case: str, files: RainFiles | None = None, workers: Workers | None 
     if files.lee_map is not None:
         lee = mapped_lee(inputs, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet)
     flags = flags_of(inputs, crossing, mapped)
-    fire, reached, to_know = fire_of(inputs, own, crossing, parts)
+    fire, reached, to_know = fire_of(inputs, own, crossing, parts, spread)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
     results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
     return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results, spread)
 
 
 def fire_of(
-    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...]
+    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...], spread: Spread | None = None
 ) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
-    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    """Fire weather at the sites, with chances by the members; thresholds met in sentences, what to know about them."""
     from orolift.fire.flags import fire_flags, windward_cautions
     from orolift.fire.sites import fire_at_sites
     from orolift.spread.sites import fire_by_number
@@ -205,8 +205,21 @@ def fire_of(
     at_own = fire_at_sites(own, inputs.when, inputs.fire)
     by_number = fire_by_number(crossing, at_own, parts)
     found = tuple(by_number[air.number] for air in crossing.lee)
+    if spread is not None and spread.crosses.any():
+        found = tuple(
+            _with_chances(one, air, inputs, crossing, spread) for one, air in zip(found, crossing.lee, strict=True)
+        )
     rules = inputs.fire.rules
     return found, fire_flags(found, rules), windward_cautions(found, rules)
+
+
+def _with_chances(one: SiteFire, air: LeeAir, inputs: Inputs, crossing: Crossing, spread: Spread) -> SiteFire:
+    """Fire weather of a site judged on the members, the error of the method included."""
+    from orolift.fire.chances import with_members
+    from orolift.spread.at_sites import members_at
+
+    arrays = members_at(spread, crossing, air)
+    return one if arrays is None else with_members(one, arrays, inputs.fire, crossing.settings.roughness)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:

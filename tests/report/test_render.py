@@ -75,6 +75,8 @@ def amounts_of(thing):
         return [thing]
     if is_dataclass(thing):
         return [found for field in fields(thing) for found in amounts_of(getattr(thing, field.name))]
+    if isinstance(thing, dict):
+        return amounts_of(tuple(thing.values()))
     return [found for item in thing for found in amounts_of(item)] if isinstance(thing, tuple) else []
 
 
@@ -220,7 +222,7 @@ def test_briefing_comes_first_and_cautions_come_with_it(read, crossing):
     page = read(crossing)
     order = [section["attrs"]["id"] for section in page.all("section")]
     assert order[:4] == ["briefing", "section", "causes", "sites"]
-    assert order[4:] == ["path", "rain", "wind", "answers", "inputs", "method", "cautions"]
+    assert order[4:] == ["how-sure", "path", "rain", "wind", "answers", "inputs", "method", "cautions"]
     assert "not a warning" in page.all("header")[0]["text"]
 
 
