@@ -167,7 +167,7 @@ def compare_page(
     ComparePage
     """
     rows = value_rows(found)
-    cautions = dict.fromkeys([*found.cautions, *(text for one in found.estimates for text in one.crossing.cautions)])
+    cautions = dict.fromkeys(found.cautions)
     return ComparePage(
         title=f"{title}: against what was observed",
         when=_when(found, observed),
@@ -229,7 +229,7 @@ def value_rows(found: Compared) -> tuple[ValueRow, ...]:
                     order,
                     ValueRow(
                         name=found.names[place],
-                        time=_time(found.estimates[which].time),
+                        time=_time(float(found.estimates[which].arrival[place])),
                         quantity=QUANTITY_NAMES[quantity],
                         estimate=estimate,
                         observed=(Amount(float(means.observed[i]), kind, digits), several),
@@ -242,8 +242,8 @@ def value_rows(found: Compared) -> tuple[ValueRow, ...]:
     return tuple(row for _, _, _, row in sorted(rows, key=lambda item: item[:3]))
 
 
-def _time(time: float | None) -> str:
-    return "" if time is None else f"{datetime.fromtimestamp(time, UTC):%d %b %H:%M}"
+def _time(time: float) -> str:
+    return "" if np.isnan(time) else f"{datetime.fromtimestamp(time, UTC):%d %b %H:%M}"
 
 
 def _when(found: Compared, observed: str) -> str:

@@ -81,8 +81,8 @@ def compare_timeline(found: Compared, units: Units) -> Figure[TimelineDrawing] |
     counts = np.bincount(seen.place[known], minlength=len(found.names))
     places = sorted(np.argsort(-counts, kind="stable")[:MOST_PLACES].tolist())
     places = [number for number in places if counts[number] > 0]
-    times = np.concatenate([seen.time[known], [one.time for one in found.estimates if one.time is not None]])
-    first, last = float(times.min()), float(times.max())
+    times = np.concatenate([seen.time[known], *(one.arrival for one in found.estimates)])
+    first, last = float(np.nanmin(times)), float(np.nanmax(times))
     pad = max(0.5 * (LEAST_SPAN - (last - first)), 0.02 * (last - first))
     span = (first - pad, last + pad)
     left_out = (
@@ -155,7 +155,8 @@ def _panel(found: Compared, number: int, across: Scale, units: Units, layout: La
     mine = seen.place == number
     series = {name: _binned(seen.time[mine], seen.values[name][mine], across) for name in KINDS}
     series = {name: pair for name, pair in series.items() if pair[0].size}
-    estimates = [(one, one.time) for one in found.estimates if one.time is not None]
+    estimates = [(one, float(one.arrival[number])) for one in found.estimates]
+    estimates = [(one, time) for one, time in estimates if np.isfinite(time)]
     bars = {
         name: np.array(
             [[t, one.values[name][number], one.low[name][number], one.high[name][number]] for one, t in estimates]
