@@ -11,19 +11,23 @@ from typing import TYPE_CHECKING
 
 import click
 
+from orolift.cli.lee_map import lee_files, mapped_lee
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
 from orolift.cli.outputs import Outputs, refuse_together
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
+from orolift.cli.spreading import Workers, spread_for
 
 if TYPE_CHECKING:
-    from orolift.crossing.result import Crossing
+    from orolift.crossing.result import Crossing, LeeAir
     from orolift.crossing.situation import Situation
     from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
+    from orolift.sources.strips import MappedLee
     from orolift.spread.sites import GroupAir
+    from orolift.spread.spread import Spread
 
 log = logging.getLogger(__name__)
 
@@ -38,7 +42,9 @@ class Worked:
     mapped: Mapped | None
     flags: tuple[str, ...]
     fire: tuple[SiteFire, ...]
+    lee: MappedLee | None
     results: Results
+    spread: Spread | None
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
@@ -48,14 +54,17 @@ class Worked:
 @file_option("--table", "Table to write as CSV, one row a site.")
 @file_option("--geojson", "Sites to write as GeoJSON points.")
 @click.option("--maps", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps: rate, total, rain and snow.")
+@click.option(
+    "--lee-map", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps of the lee, shown in the report."
+)
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
-@JOBS_OPTION
-@SCHEDULER_OPTION
 @click.option(
     "--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page: several cases."
 )
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -65,9 +74,9 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
+    folder: str | None,
     jobs: int | None,
     scheduler: str | None,
-    folder: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
@@ -79,7 +88,7 @@ def command(
     outputs = Outputs()
     for case in cases:
         outputs.keep(case, "a case")
-    work = Work(jobs, scheduler, quiet)
+    work = Workers(jobs, scheduler, quiet)
     if folder is not None:
         from orolift.cli.folder import into_folder
 
@@ -104,7 +113,7 @@ class Wanted:
     rain: RainFiles
 
 
-def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Work) -> tuple[Worked, Path]:
+def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Workers) -> tuple[Worked, Path]:
     """Work out a case and take in the files asked for."""
     worked = work_out(case, wanted.rain, work)
     page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
@@ -112,6 +121,8 @@ def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work:
     add_results(worked, wanted.results, wanted.table, outputs)
     for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
         outputs.add(path, content, option)
+    for path, content in lee_files(wanted.rain.lee_map, worked.inputs, worked.lee).items():
+        outputs.add(path, content, "--lee-map")
     return worked, page
 
 
@@ -128,27 +139,19 @@ def add_results(worked: Worked, results: str | None, table: str | None, outputs:
 
 def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
     """A few lines on each case."""
-    from orolift.cli.summary import summary_lines
+    from orolift.cli.summary import members_words, summary_lines
 
     for worked, page in summaries:
-        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units)
-        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}"]))
+        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units, worked.spread)
+        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.spread)}"]))
 
 
-@dataclass(frozen=True)
-class Work:
-    """Where many crossings are worked out, and whether progress is shown; as for `orolift.cli.executors`."""
-
-    jobs: int | None = None
-    scheduler: str | None = None
-    quiet: bool = True
-
-
-def work_out(case: str, files: RainFiles | None = None, work: Work | None = None) -> Worked:
-    """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
+def work_out(case: str, files: RainFiles | None = None, workers: Workers | None = None) -> Worked:
+    """A case read, its crossing, its members, and the rain over its map; refused where a file asked for cannot be."""
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import read_inputs, situation_of
     from orolift.sources.results import results_of
+    from orolift.spread.ranges import remarks
 
     inputs = read_inputs(case)
     situation = situation_of(inputs)
@@ -165,11 +168,15 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     log.debug("crossing worked out")
     own = crossing
     parts: tuple[GroupAir, ...] = ()
+    workers = workers or Workers(quiet=True)
     if inputs.case.terrain.elevation_file is not None:
         from orolift.cli.site_lines import with_own_lines
 
-        work = work or Work()
-        crossing, parts = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
+        crossing, parts = with_own_lines(
+            inputs, crossing, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet
+        )
+    spread = spread_for(inputs, situation, crossing, workers)
+    doubts = (*doubts, *(() if spread is None else remarks(spread)))
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -177,17 +184,20 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     crossing = replace(
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
+    lee = None
+    if files.lee_map is not None:
+        lee = mapped_lee(inputs, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet)
     flags = flags_of(inputs, crossing, mapped)
-    fire, reached, to_know = fire_of(inputs, own, crossing, parts)
+    fire, reached, to_know = fire_of(inputs, own, crossing, parts, spread)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
-    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
-    return Worked(inputs, situation, crossing, mapped, flags, fire, results)
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results, spread)
 
 
 def fire_of(
-    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...]
+    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...], spread: Spread | None = None
 ) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
-    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    """Fire weather at the sites, with chances by the members; thresholds met in sentences, what to know about them."""
     from orolift.fire.flags import fire_flags, windward_cautions
     from orolift.fire.sites import fire_at_sites
     from orolift.spread.sites import fire_by_number
@@ -195,8 +205,21 @@ def fire_of(
     at_own = fire_at_sites(own, inputs.when, inputs.fire)
     by_number = fire_by_number(crossing, at_own, parts)
     found = tuple(by_number[air.number] for air in crossing.lee)
+    if spread is not None and spread.crosses.any():
+        found = tuple(
+            _with_chances(one, air, inputs, crossing, spread) for one, air in zip(found, crossing.lee, strict=True)
+        )
     rules = inputs.fire.rules
     return found, fire_flags(found, rules), windward_cautions(found, rules)
+
+
+def _with_chances(one: SiteFire, air: LeeAir, inputs: Inputs, crossing: Crossing, spread: Spread) -> SiteFire:
+    """Fire weather of a site judged on the members, the error of the method included."""
+    from orolift.fire.chances import with_members
+    from orolift.spread.at_sites import members_at
+
+    arrays = members_at(spread, crossing, air)
+    return one if arrays is None else with_members(one, arrays, inputs.fire, crossing.settings.roughness)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -241,9 +264,11 @@ def report_of(worked: Worked, units: Units) -> str:
         case_text=worked.inputs.text,
         units=units,
         mapped=worked.mapped,
+        lee=worked.lee,
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
+        spread=worked.spread,
         fire=worked.fire,
         rules=worked.inputs.fire.rules,
     )

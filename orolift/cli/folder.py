@@ -10,8 +10,9 @@ from orolift.cli.over_map import RainFiles, rain_files
 if TYPE_CHECKING:
     from collections.abc import Iterable
 
-    from orolift.cli.cross import Work, Worked
+    from orolift.cli.cross import Worked
     from orolift.cli.outputs import Outputs
+    from orolift.cli.spreading import Workers
     from orolift.report.index import Entry
     from orolift.report.quantities import Units
 
@@ -24,7 +25,7 @@ SAID = {
 
 
 def into_folder(
-    cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Work
+    cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Workers
 ) -> list[tuple[Worked, Path]]:
     """Work out cases, and take in everything they give and the index.
 
@@ -35,7 +36,7 @@ def into_folder(
     units : 'metric' or 'us'
     outputs : Outputs
         Takes in the files.
-    work : Work
+    work : Workers
 
     Returns
     -------
@@ -47,7 +48,7 @@ def into_folder(
     summaries, entries = [], []
     for case in cases:
         before = set(outputs.contents)
-        worked = work_out(case, work=work)
+        worked = work_out(case, workers=work)
         stem = folder / worked.inputs.path.stem
         page = Path(f"{stem}.html")
         outputs.add(page, report_of(worked, units).encode(), f"the report of {case}")
