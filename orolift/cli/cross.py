@@ -13,8 +13,9 @@ import click
 
 from orolift.cli.lee_map import lee_files, mapped_lee
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.outputs import Outputs, refuse_together
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
-from orolift.errors import CaseError
+from orolift.cli.spreading import Workers, spread_for
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
@@ -26,6 +27,7 @@ if TYPE_CHECKING:
     from orolift.sources.results import Results
     from orolift.sources.strips import MappedLee
     from orolift.spread.sites import GroupAir
+    from orolift.spread.spread import Spread
 
 log = logging.getLogger(__name__)
 
@@ -42,6 +44,7 @@ class Worked:
     fire: tuple[SiteFire, ...]
     lee: MappedLee | None
     results: Results
+    spread: Spread | None
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
@@ -57,6 +60,9 @@ class Worked:
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
+@click.option(
+    "--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page: several cases."
+)
 @JOBS_OPTION
 @SCHEDULER_OPTION
 @UNITS_OPTION
@@ -68,6 +74,7 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
+    folder: str | None,
     jobs: int | None,
     scheduler: str | None,
     units: Units,
@@ -76,59 +83,75 @@ def command(
 ) -> None:
     """Work out the crossing of each CASE and write its report."""
     files = RainFiles(**rain)
-    if len(cases) > 1:
-        named = {"--report": report, "--results": results, "--table": table, **files.asked()}
-        for option, value in named.items():
-            if value is not None and option not in {"--maps", "--lee-map"}:
-                raise CaseError(f"{option} takes one case, and {len(cases)} are given. Run it once for each case.")
-    from orolift.sources.files import csv_text, write_all
-    from orolift.sources.site_table import site_rows
-
-    contents: dict[Path, bytes] = {}
-    summaries = []
+    named = {"--report": report, "--results": results, "--table": table, **files.asked()}
+    refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
+    outputs = Outputs()
     for case in cases:
-        worked = work_out(case, files, Work(jobs, scheduler, quiet))
-        page = Path(report) if report else Path(f"{Path(case).stem}.html")
-        if page in contents:
-            raise CaseError(f"{case}: another case of this run already writes {page}. Give the cases different names.")
-        contents[page] = report_of(worked, units).encode()
-        if results:
-            contents[Path(results)] = (worked.results.model_dump_json(indent=2) + "\n").encode()
-        if table:
-            contents[Path(table)] = csv_text(*site_rows(worked.results)).encode()
-        contents |= lee_files(files.lee_map, worked.inputs, worked.lee)
-        contents |= rain_files(files, worked.inputs, worked.mapped, worked.results)
-        summaries.append((worked, page))
-    write_all(contents)
-    log.debug("written: %s", ", ".join(map(str, contents)))
-    if not quiet:
-        from orolift.cli.summary import summary_lines
+        outputs.keep(case, "a case")
+    work = Workers(jobs, scheduler, quiet)
+    if folder is not None:
+        from orolift.cli.folder import into_folder
 
-        for worked, page in summaries:
-            click.echo(
-                "\n".join(
-                    [
-                        *summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units),
-                        f"Report: {page}",
-                    ]
-                )
-            )
+        summaries = into_folder(cases, Path(folder), units, outputs, work)
+    else:
+        wanted = Wanted(report, results, table, files)
+        summaries = [_one_by_one(case, wanted, units, outputs, work) for case in cases]
+    outputs.write(None if folder is None else Path(folder))
+    if not quiet:
+        _say(summaries, units)
+        if folder is not None:
+            click.echo(f"Index: {Path(folder) / 'index.html'}")
 
 
 @dataclass(frozen=True)
-class Work:
-    """Where many crossings are worked out, and whether progress is shown; as for `orolift.cli.executors`."""
+class Wanted:
+    """Files asked for by name."""
 
-    jobs: int | None = None
-    scheduler: str | None = None
-    quiet: bool = True
+    report: str | None
+    results: str | None
+    table: str | None
+    rain: RainFiles
 
 
-def work_out(case: str, files: RainFiles | None = None, work: Work | None = None) -> Worked:
-    """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
+def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Workers) -> tuple[Worked, Path]:
+    """Work out a case and take in the files asked for."""
+    worked = work_out(case, wanted.rain, work)
+    page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
+    outputs.add(page, report_of(worked, units).encode(), "--report" if wanted.report else f"the report of {case}")
+    add_results(worked, wanted.results, wanted.table, outputs)
+    for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
+        outputs.add(path, content, option)
+    for path, content in lee_files(wanted.rain.lee_map, worked.inputs, worked.lee).items():
+        outputs.add(path, content, "--lee-map")
+    return worked, page
+
+
+def add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+    """Take in the results and the table of the sites, each where it is asked for."""
+    from orolift.sources.files import csv_text
+    from orolift.sources.site_table import site_rows
+
+    if results:
+        outputs.add(results, (worked.results.model_dump_json(indent=2) + "\n").encode(), "--results")
+    if table:
+        outputs.add(table, csv_text(*site_rows(worked.results)).encode(), "--table")
+
+
+def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
+    """A few lines on each case."""
+    from orolift.cli.summary import members_words, summary_lines
+
+    for worked, page in summaries:
+        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units, worked.spread)
+        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.spread)}"]))
+
+
+def work_out(case: str, files: RainFiles | None = None, workers: Workers | None = None) -> Worked:
+    """A case read, its crossing, its members, and the rain over its map; refused where a file asked for cannot be."""
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import read_inputs, situation_of
     from orolift.sources.results import results_of
+    from orolift.spread.ranges import remarks
 
     inputs = read_inputs(case)
     situation = situation_of(inputs)
@@ -145,11 +168,15 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     log.debug("crossing worked out")
     own = crossing
     parts: tuple[GroupAir, ...] = ()
+    workers = workers or Workers(quiet=True)
     if inputs.case.terrain.elevation_file is not None:
         from orolift.cli.site_lines import with_own_lines
 
-        work = work or Work()
-        crossing, parts = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
+        crossing, parts = with_own_lines(
+            inputs, crossing, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet
+        )
+    spread = spread_for(inputs, situation, crossing, workers)
+    doubts = (*doubts, *(() if spread is None else remarks(spread)))
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -159,13 +186,12 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     )
     lee = None
     if files.lee_map is not None:
-        work = work or Work()
-        lee = mapped_lee(inputs, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
+        lee = mapped_lee(inputs, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet)
     flags = flags_of(inputs, crossing, mapped)
     fire, reached, to_know = fire_of(inputs, own, crossing, parts)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
-    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
-    return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results)
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results, spread)
 
 
 def fire_of(
@@ -195,20 +221,32 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
     )
 
 
+def fire_lines(worked: Worked) -> list[str]:
+    """What the fire thresholds of the case come to, a line; none without a rule file."""
+    from orolift.report.fire_thresholds import headline
+
+    words = headline(worked.fire).words
+    return [f"Fire      {words} (a threshold met is not a warning)"] if words else []
+
+
+def made_now() -> datetime:
+    """The time that pages carry; it honours SOURCE_DATE_EPOCH."""
+    stamp = os.environ.get("SOURCE_DATE_EPOCH")
+    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
+
+
 def report_of(worked: Worked, units: Units) -> str:
-    """The report as one HTML page; the time stamp honours SOURCE_DATE_EPOCH."""
+    """The report as one HTML page."""
     from orolift import __version__
     from orolift.report.page import page_of
     from orolift.report.render import render
 
-    stamp = os.environ.get("SOURCE_DATE_EPOCH")
-    made_at = datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
     case = worked.inputs.case
     page = page_of(
         worked.crossing,
         title=case.title or worked.inputs.path.stem,
         valid_time=case.valid_time,
-        made_at=made_at,
+        made_at=made_now(),
         version=__version__,
         case_text=worked.inputs.text,
         units=units,
@@ -217,6 +255,7 @@ def report_of(worked: Worked, units: Units) -> str:
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
+        spread=worked.spread,
         fire=worked.fire,
         rules=worked.inputs.fire.rules,
     )

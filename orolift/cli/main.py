@@ -11,7 +11,10 @@ from orolift import __version__
 
 COMMANDS = {
     "cross": "Work out a crossing and write its report.",
+    "hours": "Work out one crossing for each hour of a series.",
+    "bearings": "Work out the crossing of every wind direction.",
     "check": "Read everything a case names and say what is wrong or doubtful.",
+    "compare": "Hold a crossing against what was observed in the lee.",
     "starter": "Write a small commented case to edit.",
 }
 """Commands and their one-line help; each lives in a module of its name, imported only when it runs."""
@@ -70,8 +73,8 @@ def exit_code(arguments: list[str]) -> int:
         text = error.format_message() if isinstance(error, click.ClickException) else str(error)
         hint = " 'orolift --help' lists what there is." if isinstance(error, click.UsageError) else ""
         code, message = 2, f"{text}{hint}"
-    except (click.Abort, KeyboardInterrupt):
-        code, message = 130, "interrupted; nothing more is written."
+    except (click.Abort, KeyboardInterrupt) as error:
+        code, message = 130, str(error) or "interrupted; nothing more is written."
     except BrokenPipeError:
         code, message = 0, ""  # the reader of our output has seen enough
     except Exception as error:

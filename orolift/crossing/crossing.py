@@ -50,6 +50,7 @@ def cross(
     stagnant_top: float | None = None,
     background: float = 0.0,
     streamlines: int = 60,
+    ends_too: bool = True,
 ) -> Crossing:
     """Incoming air taken over a transect.
 
@@ -77,6 +78,9 @@ def cross(
         Rain that falls anyway.
     streamlines : int
         How many, 20 or more.
+    ends_too : bool
+        Whether the ends without blocking and with full blocking are worked out beside the answer. False saves
+        their time, and they are then the answer itself.
 
     Returns
     -------
@@ -100,11 +104,20 @@ def cross(
     """
     settings, when, lee = checked(settings or Settings()), when or When(), lee or Lee()
     shape = features(transect, sites[0].distance if sites else None)
-    ground = ground_under(transect, shape, incoming, normal, when)
-    ground = replace(ground, lowest_pass=lowest_pass, crest_line=crest_line, stagnant_top=stagnant_top)
+    ground = ground_under(
+        transect,
+        shape,
+        incoming,
+        normal,
+        when,
+        lowest_pass=lowest_pass,
+        crest_line=crest_line,
+        stagnant_top=stagnant_top,
+    )
     crest_wind = crest_component(incoming, ground.normal, shape.crest)
     sites = sites or (Site("Lee foot", shape.lee_foot_distance),)
-    solution = solve(ground, incoming, ends(settings), lee, members=3, streamlines=streamlines)
+    tried, members = (ends(settings), 3) if ends_too else (settings, 1)
+    solution = solve(ground, incoming, tried, lee, members=members, streamlines=streamlines)
     solution.going_round[1:] = 0.0
     streams = solution.streams
     air = March(**{key: getattr(streams.air, key)[:, 0, :] for key in March.__dataclass_fields__})
@@ -112,13 +125,14 @@ def cross(
     height = streams.flow.heights[0][:, streams.place].T
     winds = lee_winds(ground, solution, crest_wind, flow.pressure_difference)
     cloud = clouds(solution, transect.distance, shape, freezing=settings.freezing)
+    places, rain = transect.distance[streams.place], rainfall(ground, solution, background)
     return Crossing(
         incoming=incoming,
         transect=transect,
         features=shape,
         sites=sites,
         settings=settings,
-        distance=transect.distance[streams.place],
+        distance=places,
         start_height=streams.flow.start_heights[0],
         height=height,
         air=air,
@@ -128,11 +142,15 @@ def cross(
         flow=flow,
         cloud=cloud,
         water=water(solution, float(vapour_flux(incoming, ground.normal))),
-        rain=rainfall(ground, solution, background),
+        rain=rain,
         pool=solution.pools[0],
         winds=winds,
         lee=tuple(
-            replace(site_air(site, ground, incoming, solution, settings, when, winds), number=number)
+            replace(
+                site_air(site, ground, incoming, solution, settings, when, winds),
+                number=number,
+                rain=float(np.interp(site.distance, places, rain.rate)) + rain.background,
+            )
             for number, site in enumerate(sites, start=1)
         ),
         notes=(*incoming.notes, *transect.notes, *crest_line_notes(ground, flow.blocked_top)),
@@ -150,8 +168,33 @@ def ground_under(
     incoming: IncomingAir,
     normal: RangeNormal | None,
     when: When,
+    *,
+    lowest_pass: float | None = None,
+    crest_line: CrestLine | None = None,
+    stagnant_top: float | None = None,
 ) -> Ground:
-    """Terrain with its normal; the transect's own direction where the ground has none."""
+    """Terrain with its normal; the transect's own direction where the ground has none.
+
+    Parameters
+    ----------
+    transect : Transect
+    shape : Features
+    incoming : IncomingAir
+        Of one member.
+    normal : RangeNormal or None
+    when : When
+    lowest_pass, crest_line, stagnant_top
+        As for `cross`.
+
+    Returns
+    -------
+    Ground
+
+    Raises
+    ------
+    NoCrossingError
+        If the transect runs along the range.
+    """
     along = toward(transect, incoming)
     bearing = along if normal is None or normal.coherence < LEAST_COHERENCE else normal.bearing
     cosine = float(np.cos(bearing - along))
@@ -161,7 +204,16 @@ def ground_under(
             f"the air does not cross: the line runs along the range, {off:.0f} degrees off the direction across it "
             f"({np.degrees(bearing):.0f} degrees). Check the wind direction, or give range_normal_deg in [flow]."
         )
-    return Ground(transect, shape, bearing, cosine, latitude=when.latitude)
+    return Ground(
+        transect,
+        shape,
+        bearing,
+        cosine,
+        lowest_pass=lowest_pass,
+        crest_line=crest_line,
+        latitude=when.latitude,
+        stagnant_top=stagnant_top,
+    )
 
 
 def toward(transect: Transect, incoming: IncomingAir) -> float:

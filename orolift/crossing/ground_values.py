@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -123,8 +123,12 @@ def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, s
     )
     line, incoming = situation.transect, situation.incoming
     shape = features(line, situation.sites[0].distance if situation.sites else None)
-    ground = replace(
-        ground_under(line, shape, incoming, situation.normal, when),
+    ground = ground_under(
+        line,
+        shape,
+        incoming,
+        situation.normal,
+        when,
         lowest_pass=situation.lowest_pass,
         crest_line=situation.crest_line,
         stagnant_top=situation.stagnant_top,

@@ -83,11 +83,14 @@ class LeeProfile:
     height_above_ground : ndarray (n,) [m]
     temperature : ndarray (n,) [K]
     vapour : ndarray (n,) [kg per kg of dry air]
+    wind : ndarray (n,) [m s-1]
+        Of the crossing air, across the range; a calm below it where the site lies in a pool or in blocked air.
     """
 
     height_above_ground: Array
     temperature: Array
     vapour: Array
+    wind: Array
 
 
 @dataclass(frozen=True)
@@ -173,6 +176,8 @@ class LeeAir:
     wind : SiteWind or None
         None in a pool and in blocked air.
     profile : LeeProfile
+    rain : float [kg m-2 s-1]
+        Rain and snow there, the background included.
     number : int
         Of the site in the case, from 1: its pin.
     own : SiteLine or None
@@ -204,6 +209,7 @@ class LeeAir:
     full_blocking: SimpleAir
     wind: SiteWind | None
     profile: LeeProfile
+    rain: float = 0.0
     number: int = 0
     own: SiteLine | None = None
 

@@ -23,7 +23,8 @@ class Situation:
 
     Attributes
     ----------
-    transect, incoming, sites, settings, lee, when, normal, lowest_pass, crest_line, stagnant_top, background
+    transect, incoming, sites, settings, lee, when, normal, lowest_pass, crest_line, stagnant_top, background,
+    ends_too
         As the arguments of `orolift.crossing.crossing.cross`.
     """
 
@@ -38,6 +39,7 @@ class Situation:
     crest_line: CrestLine | None = None
     stagnant_top: float | None = None
     background: float = 0.0
+    ends_too: bool = True
 
 
 def crossing_of(situation: Situation) -> Crossing:
@@ -60,4 +62,5 @@ def crossing_of(situation: Situation) -> Crossing:
         crest_line=situation.crest_line,
         stagnant_top=situation.stagnant_top,
         background=situation.background,
+        ends_too=situation.ends_too,
     )

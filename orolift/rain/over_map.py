@@ -206,18 +206,8 @@ def map_rain(
     base, or the top of the blocked layer. All ground lower than that and than the lift the air needs before it
     condenses is taken off the terrain.
     """
-    reference = max(crossing.flow.blocked_top, crossing.features.base, float(crossing.incoming.height[0]))
-    column = column_rain(
-        crossing.incoming,
-        reference,
-        cloud_time=float(np.asarray(crossing.settings.cloud_time)),
-        fall_time=float(np.asarray(crossing.settings.fall_time)),
-        background=crossing.rain.background,
-        grid_turn=north,
-        freezing=crossing.settings.freezing,
-    )
+    found, column, reference = rates_over_map(crossing, grid, north)
     floor = reference + column.dry_lift
-    found = rain_map(grid, column.parameters, floor=floor)
     bearing = column.parameters.bearing
     border = crest_divide(grid, bearing) if divide is None else line_divide(divide, grid, bearing)
     windward = windward_cells(grid, border)
@@ -257,6 +247,34 @@ def map_rain(
         limits=_limits(crossing, found, column, north),
         notes=(*column.notes, *found.notes, *border.notes),
     )
+
+
+def rates_over_map(crossing: Crossing, grid: ElevationGrid, north: float = 0.0) -> tuple[RainMap, ColumnRain, float]:
+    """Rain over the map of a crossing, the rates alone.
+
+    Parameters
+    ----------
+    crossing, grid, north
+        As in `map_rain`.
+
+    Returns
+    -------
+    found : RainMap
+    column : ColumnRain
+    reference : float [m above sea level]
+        Lowest air that crosses.
+    """
+    reference = max(crossing.flow.blocked_top, crossing.features.base, float(crossing.incoming.height[0]))
+    column = column_rain(
+        crossing.incoming,
+        reference,
+        cloud_time=float(np.asarray(crossing.settings.cloud_time)),
+        fall_time=float(np.asarray(crossing.settings.fall_time)),
+        background=crossing.rain.background,
+        grid_turn=north,
+        freezing=crossing.settings.freezing,
+    )
+    return rain_map(grid, column.parameters, floor=reference + column.dry_lift), column, reference
 
 
 def bands_of_map(rain: MapRain, step: float) -> ElevationBands | None:

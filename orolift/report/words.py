@@ -104,6 +104,33 @@ def point_of_compass(bearing: float) -> str:
     return _POINTS[round(math.degrees(bearing) / 45.0) % 8]
 
 
+def month(time: datetime) -> str:
+    """Name of the month of a time.
+
+    Examples
+    --------
+    >>> from datetime import datetime
+    >>> month(datetime(2026, 11, 3))
+    'November'
+    """
+    return _MONTHS[time.month - 1]
+
+
+def zone_words(time: datetime) -> str:
+    """The zone of a time.
+
+    Examples
+    --------
+    >>> from datetime import datetime, timedelta, timezone
+    >>> zone_words(datetime(2026, 11, 3, tzinfo=timezone(timedelta(hours=-3, minutes=-30))))
+    'UTC-03:30'
+    """
+    offset = time.utcoffset()
+    minutes = 0 if offset is None else round(offset.total_seconds() / 60.0)
+    sign = "-" if minutes < 0 else "+"
+    return "UTC" if minutes == 0 else f"UTC{sign}{abs(minutes) // 60:02d}:{abs(minutes) % 60:02d}"
+
+
 def moment(time: datetime) -> str:
     """A time for people, in its own zone and with the zone named.
 
@@ -122,11 +149,7 @@ def moment(time: datetime) -> str:
     >>> moment(datetime(2026, 11, 3, 12, 0, tzinfo=timezone.utc))
     '3 November 2026, 12:00 UTC'
     """
-    offset = time.utcoffset()
-    minutes = 0 if offset is None else round(offset.total_seconds() / 60.0)
-    sign = "-" if minutes < 0 else "+"
-    zone = "UTC" if minutes == 0 else f"UTC{sign}{abs(minutes) // 60:02d}:{abs(minutes) % 60:02d}"
-    return f"{time.day} {_MONTHS[time.month - 1]} {time.year}, {time.hour:02d}:{time.minute:02d} {zone}"
+    return f"{time.day} {_MONTHS[time.month - 1]} {time.year}, {time.hour:02d}:{time.minute:02d} {zone_words(time)}"
 
 
 def day(date: str) -> str:

@@ -87,7 +87,7 @@ def existing_file(path: str | Path, where: str, folder: Path | None = None) -> P
     return full
 
 
-def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
+def read_text(path: str | Path, where: str, folder: Path | None = None, *, limit: int = TEXT_LIMIT) -> str:
     """Whole text of a local file, without its byte-order mark.
 
     UTF-8 is expected; UTF-16, with a mark or without, and Latin-1 letters are read too.
@@ -96,6 +96,8 @@ def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
     ----------
     path, where, folder
         As in `existing_file`.
+    limit : int
+        Most bytes that are read.
 
     Returns
     -------
@@ -105,19 +107,19 @@ def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
     Raises
     ------
     DataFileError
-        If it is larger than `TEXT_LIMIT` or is no text.
+        If it is larger than `limit` or is no text.
     MissingFileError
         If it cannot be read.
     """
     full = existing_file(path, where, folder)
     try:
         with full.open("rb") as stream:
-            raw = stream.read(min(full.stat().st_size, TEXT_LIMIT) + 1)  # reading sets aside as much as is asked for
+            raw = stream.read(min(full.stat().st_size, limit) + 1)  # reading sets aside as much as is asked for
     except OSError as error:
         raise MissingFileError(f"{where}: {full} cannot be read ({_reason(error)}).") from error
-    if len(raw) > TEXT_LIMIT:
+    if len(raw) > limit:
         raise DataFileError(
-            f"{where}: {full} is larger than {TEXT_LIMIT // 2**20} MB, the limit for text. Is it the right file?"
+            f"{where}: {full} is larger than {limit // 2**20} MB, the limit for text. Is it the right file?"
         )
     return _decoded(raw, f"{where}: {full}").replace("\r\n", "\n").replace("\r", "\n")
 
@@ -183,12 +185,30 @@ def write_all(contents: Mapping[Path, bytes]) -> None:
             Path(aside).unlink(missing_ok=True)
 
 
-def _written_aside(path: Path, data: bytes) -> str:
+def refuse_unwritable(path: Path) -> None:
+    """Refuse a file that could not be written, before long work is done for it.
+
+    Parameters
+    ----------
+    path : Path
+
+    Raises
+    ------
+    MissingFileError
+        If its folder is missing or closed to us, or its name is taken by a folder.
+    """
     if path.is_dir():
         raise MissingFileError(f"{path} is a folder; give the name of a file in it.")
     folder = path.parent
     if not folder.is_dir():
         raise MissingFileError(f"{path} cannot be written: {folder} is not a folder. Make it first.")
+    if not os.access(folder, os.W_OK):
+        raise MissingFileError(f"{path} cannot be written: {folder} is closed to you.")
+
+
+def _written_aside(path: Path, data: bytes) -> str:
+    refuse_unwritable(path)
+    folder = path.parent
     aside = ""
     try:
         handle, aside = tempfile.mkstemp(prefix=f".{path.name}.", suffix=".part", dir=folder)

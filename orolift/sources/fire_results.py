@@ -79,13 +79,14 @@ class RuleBlock(Block):
 class FireBlock(Block):
     """Fire weather at one site."""
 
+    number: int = Field(description="of the site in the case, as in `lee`")
     name: str
     vapour_pressure_deficit_hpa: float
     equilibrium_fuel_moisture_percent: float
     fosberg_index: float | None = Field(description="at most 100")
     fosberg_index_raw: float | None
     fosberg_index_with_drought: float | None
-    hot_dry_windy: float = Field(description="hPa m/s")
+    hot_dry_windy: float | None = Field(description="hPa m/s")
     fine_fuel_code: float | None = Field(description="daily")
     fine_fuel_code_after_1_h: float | None
     fine_fuel_code_after_3_h: float | None
@@ -114,17 +115,38 @@ def fire_blocks(sites: Iterable[SiteFire]) -> list[FireBlock]:
     return [_block(site) for site in sites]
 
 
+def flat_fire(block: FireBlock) -> dict[str, object]:
+    """Single values of a block under names of their own, for tables and points on a map.
+
+    Parameters
+    ----------
+    block : FireBlock
+
+    Returns
+    -------
+    dict
+        Keys of `fire`; of the night ``night_valley_floor_still_percent`` and so on; last `thresholds_met`, the names
+        of the rules that are met.
+    """
+    values = block.model_dump()
+    flat = {key: value for key, value in values.items() if key not in {"number", "name", "night", "rules", "range"}}
+    flat |= {f"night_{key}": value for key, value in values["night"].items()}
+    flat["thresholds_met"] = "; ".join(rule.name for rule in block.rules if rule.status == "met")
+    return flat
+
+
 def _block(site: SiteFire) -> FireBlock:
     found = site.indices
     hours = [_known(value) for value in np.ravel(found.fine_fuel_code_hours)]
     return FireBlock(
+        number=site.number,
         name=site.name,
         vapour_pressure_deficit_hpa=float(found.vapour_pressure_deficit) / 100.0,
         equilibrium_fuel_moisture_percent=100.0 * float(found.equilibrium_fuel_moisture),
         fosberg_index=_known(found.fosberg_index),
         fosberg_index_raw=_known(found.fosberg_index_raw),
         fosberg_index_with_drought=_known(found.fosberg_index_with_drought),
-        hot_dry_windy=float(found.hot_dry_windy),
+        hot_dry_windy=_known(found.hot_dry_windy),
         fine_fuel_code=_known(found.fine_fuel_code),
         fine_fuel_code_after_1_h=hours[0],
         fine_fuel_code_after_3_h=hours[1],
@@ -136,7 +158,35 @@ def _block(site: SiteFire) -> FireBlock:
         mixing_height_by_day_m=site.night.mixing_height_by_day,
         night=_night(site),
         rules=[_rule(threshold) for threshold in site.thresholds],
+        range=_ranges(site),
     )
+
+
+_RANGES = {
+    "vapour_pressure_deficit": ("vapour_pressure_deficit_hpa", 0.01),
+    "equilibrium_fuel_moisture": ("equilibrium_fuel_moisture_percent", 100.0),
+    **{
+        name: (name, 1.0)
+        for name in (
+            "fosberg_index",
+            "fosberg_index_raw",
+            "fosberg_index_with_drought",
+            "hot_dry_windy",
+            "fine_fuel_code",
+            "initial_spread_index",
+            "angstroem_index",
+        )
+    },
+}
+
+
+def _ranges(site: SiteFire) -> Range:
+    """Ranges of the members under the keys of the block."""
+    return {
+        key: (factor * site.ranges[name][0], factor * site.ranges[name][1])
+        for name, (key, factor) in _RANGES.items()
+        if name in site.ranges
+    }
 
 
 def _night(site: SiteFire) -> NightBlock:

@@ -84,13 +84,15 @@ class Mapped:
     rain: MapRain
 
 
-def read_map_inputs(inputs: Inputs) -> MapInputs:
+def read_map_inputs(inputs: Inputs, most_cells: int = MOST_CELLS) -> MapInputs:
     """Raster, catchments, divide and gauges of a case.
 
     Parameters
     ----------
     inputs : Inputs
         Of a case with a raster.
+    most_cells : int
+        Of the map along its longer side.
 
     Returns
     -------
@@ -102,14 +104,14 @@ def read_map_inputs(inputs: Inputs) -> MapInputs:
         One message that names the case file and the key, file or feature at fault.
     """
     try:
-        return _read(inputs.case, inputs.transect, inputs.places, inputs.path.parent)
+        return _read(inputs.case, inputs.transect, inputs.places, inputs.path.parent, most_cells)
     except OroliftError as error:
         if isinstance(error, TerrainError):
             raise TerrainError(f"{inputs.path}: {error}") from error
         raise CaseError(f"{inputs.path}: {error}") from error
 
 
-def _read(case: Case, transect: Transect, places: tuple[SitePlace, ...], folder: Path) -> MapInputs:
+def _read(case: Case, transect: Transect, places: tuple[SitePlace, ...], folder: Path, most_cells: int) -> MapInputs:
     from orolift.sources.elevation_map import read_elevation_map
 
     if transect.longitude is None or transect.latitude is None:
@@ -122,7 +124,7 @@ def _read(case: Case, transect: Transect, places: tuple[SitePlace, ...], folder:
         unit=case.terrain.elevation_unit,
         folder=folder,
         where="[terrain] elevation_file",
-        most_cells=MOST_CELLS,
+        most_cells=most_cells,
     )
     catchments, notes = _catchments(case, placed, folder)
     width = (case.transect or TransectTable()).swath_km * 1000.0

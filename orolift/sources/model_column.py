@@ -106,6 +106,41 @@ def read_model_column(
             raise DataFileError(f"{where}: {full} cannot be used ({type(error).__name__}: {error}).") from error
 
 
+def model_times(path: str | Path, where: str = "model_file", folder: Path | None = None) -> list[datetime]:
+    """Times that a file of model output holds.
+
+    Parameters
+    ----------
+    path, where, folder
+        As in `orolift.sources.files.existing_file`.
+
+    Returns
+    -------
+    list of datetime
+        In UTC, in the order of the file.
+
+    Raises
+    ------
+    MissingExtraError, DataFileError, MissingFileError
+        As `read_model_column`.
+    """
+    full = existing_file(path, where, folder)
+    with _opened(full, where) as data:
+        try:
+            temperature = _variable(data, NAMES["temperature"], "temperature")
+            if temperature is None:
+                raise DataFileError(f"{path}: no variable with the CF standard_name air_temperature.")
+            dimension = _time_axis(data, temperature)
+            axis = data.variables.get(dimension) if dimension else _scalar_time(data)
+            if axis is None:
+                raise DataFileError(f"{path}: has no times; give temperature a dimension of time.")
+            return _moments(axis)
+        except (OSError, RuntimeError, IndexError, KeyError, ValueError, AttributeError, TypeError) as error:
+            if isinstance(error, DataFileError):
+                raise
+            raise DataFileError(f"{where}: {full} cannot be used ({type(error).__name__}: {error}).") from error
+
+
 @contextlib.contextmanager
 def _opened(path: Path, where: str) -> Iterator[Any]:
     try:
@@ -199,14 +234,7 @@ def _time(data: Any, variable: Any, wanted: datetime | None, name: str) -> tuple
     axis = data.variables.get(dimension) if dimension else _scalar_time(data)
     if axis is None:
         return None, None
-    import netCDF4
-
-    raw = np.ma.filled(np.ma.atleast_1d(axis[...]).astype(np.float64), np.nan)
-    calendar = getattr(axis, "calendar", "standard")
-    times = [
-        datetime(one.year, one.month, one.day, one.hour, one.minute, one.second, tzinfo=UTC)
-        for one in np.ravel(np.asarray(netCDF4.num2date(raw, axis.units, calendar), dtype=object))
-    ]
+    times = _moments(axis)
     index = 0
     if len(times) > 1:
         if wanted is None:
@@ -214,6 +242,18 @@ def _time(data: Any, variable: Any, wanted: datetime | None, name: str) -> tuple
         moment = wanted
         index = min(range(len(times)), key=lambda i: abs((times[i] - moment).total_seconds()))
     return times[index], index if dimension else None
+
+
+def _moments(axis: Any) -> list[datetime]:
+    """Times of an axis."""
+    import netCDF4
+
+    raw = np.ma.filled(np.ma.atleast_1d(axis[...]).astype(np.float64), np.nan)
+    calendar = getattr(axis, "calendar", "standard")
+    return [
+        datetime(one.year, one.month, one.day, one.hour, one.minute, one.second, tzinfo=UTC)
+        for one in np.ravel(np.asarray(netCDF4.num2date(raw, axis.units, calendar), dtype=object))
+    ]
 
 
 def _scalar_time(data: Any) -> Any | None:

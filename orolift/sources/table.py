@@ -21,7 +21,7 @@ if TYPE_CHECKING:
 
 MISSING = frozenset({"", "-", "--", "/", "//", "///", "////", "na", "n/a", "nan", "null", "none", "-999", "-9999", "m"})
 """Cells that mean no value, in small letters; ``-9999`` forms with decimals count too."""
-MISSING_OUT_OF_RANGE = frozenset({999.0, 999.9, 999.99, 9999.0, 9999.9, 9999.99, 99999.0, 99999.9})
+MISSING_OUT_OF_RANGE = frozenset({-99.0, -99.9, 999.0, 999.9, 999.99, 9999.0, 9999.9, 9999.99, 99999.0, 99999.9})
 """Numbers that mean no value in a column where they are impossible anyway; noted. Common practice, no source."""
 MOST_ROWS = 100_000
 """Rows read at most: a balloon that reports every second for three hours gives 10 800."""
@@ -68,6 +68,8 @@ class NumberTable:
         Columns of text, as they stand.
     notes : tuple of str
         How unusual cells were read.
+    faults : mapping of int to str
+        What is wrong with a row, by its number from 0; only where faults are forgiven.
     """
 
     name: str
@@ -75,6 +77,7 @@ class NumberTable:
     line: NDArray[np.int64]
     texts: Mapping[str, tuple[str, ...]] = field(default_factory=dict)
     notes: tuple[str, ...] = ()
+    faults: Mapping[int, str] = field(default_factory=dict)
 
 
 @dataclass
@@ -92,7 +95,9 @@ class _Head:
     code_line: int = 0
 
 
-def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable:
+def number_table(
+    text: str, name: str, allowed: Sequence[Column], *, most_rows: int = MOST_ROWS, forgiving: bool = False
+) -> NumberTable:
     r"""Table of numbers from CSV text with one header line.
 
     Lines that start with ``#`` and blank lines are passed over. Commas,
@@ -104,6 +109,11 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
     name : str
         File, for messages.
     allowed : sequence of Column
+    most_rows : int
+        More rows are refused.
+    forgiving : bool
+        Whether a cell that is no number or out of range makes a fault of its
+        row, with NaN in its place, and does not refuse the file.
 
     Returns
     -------
@@ -114,7 +124,7 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
     DataFileError
         If a column is unknown, doubled or in a unit of another kind, a row has
         the wrong number of cells, a cell is no number or out of range, commas
-        may be decimal or thousands, or there are more than `MOST_ROWS` rows.
+        may be decimal or thousands, or there are more than `most_rows` rows.
 
     Examples
     --------
@@ -129,27 +139,40 @@ def number_table(text: str, name: str, allowed: Sequence[Column]) -> NumberTable
     separator = max(",;\t", key=first.count)
     heads = _heads(_cells(first, separator, f"{name}: line {number}"), allowed, f"{name}: line {number}")
     line_numbers = array("q")
+    faults: dict[int, str] | None = {} if forgiving else None
     for number, line in lines:
         where = f"{name}: line {number}"
         row = _cells(line, separator, where)
         if len(row) != len(heads):
             raise DataFileError(_wrong_width(line, len(row), len(heads), separator, where))
-        if len(line_numbers) == MOST_ROWS:
+        if len(line_numbers) == most_rows:
             raise DataFileError(
-                f"{where}: more than {MOST_ROWS} rows. Is it the right file? If so, keep every tenth row."
+                f"{where}: more than {most_rows} rows. Is it the right file? If so, keep every tenth row."
             )
-        for cell, head in zip(row, heads, strict=True):
-            if head.usual.text:
-                head.texts.append(cell)
-            else:
-                head.values.append(_number(cell, head, number, where))
+        _take(row, heads, number, where, faults, len(line_numbers))
         line_numbers.append(number)
     if not line_numbers:
         raise DataFileError(f"{name}: has a header and no rows.")
     notes = _reading_notes(heads, name)
     columns = {head.stem: _in_si(head) for head in heads if not head.usual.text}
     texts = {head.stem: tuple(head.texts) for head in heads if head.usual.text}
-    return NumberTable(name, columns, np.frombuffer(line_numbers, dtype=np.int64), texts, notes)
+    return NumberTable(name, columns, np.frombuffer(line_numbers, dtype=np.int64), texts, notes, faults or {})
+
+
+def _take(row: list[str], heads: list[_Head], line: int, where: str, faults: dict[int, str] | None, at: int) -> None:
+    """Add the cells of a row to its columns; a wrong one is noted among the faults where there are any."""
+    for cell, head in zip(row, heads, strict=True):
+        if head.usual.text:
+            head.texts.append(cell)
+            continue
+        try:
+            value = _number(cell, head, line, where)
+        except DataFileError as error:
+            if faults is None:
+                raise
+            value = math.nan
+            faults.setdefault(at, str(error))
+        head.values.append(value)
 
 
 def _in_si(head: _Head) -> NDArray[np.float64]:

@@ -1,0 +1,147 @@
+"""`orolift bearings`: every wind direction in turn, and a rose for each site."""
+
+from __future__ import annotations
+
+import logging
+import math
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from orolift.cli.executors import executor_of, progress
+from orolift.cli.hours import time_stamp
+from orolift.cli.options import (
+    JOBS_OPTION,
+    QUIET_OPTION,
+    SCHEDULER_OPTION,
+    UNITS_OPTION,
+    VERBOSE_OPTION,
+    file_option,
+    refuse_files,
+)
+
+if TYPE_CHECKING:
+    from orolift.report.quantities import Units
+    from orolift.sources.bearings_case import BearingSetup
+    from orolift.spread.bearings import Bearings, Direction
+
+log = logging.getLogger(__name__)
+
+
+@click.command(context_settings={"help_option_names": ["-h", "--help"]})
+@click.argument("case")
+@click.option("--step", type=int, default=10, show_default=True, metavar="DEGREES", help="Between two directions.")
+@file_option("--report", "Page to write; default CASE_bearings.html in the current folder.")
+@file_option("--table", "Table to write as CSV, one row for each site and direction.")
+@file_option("--results", "Results to write as JSON.")
+@JOBS_OPTION
+@SCHEDULER_OPTION
+@UNITS_OPTION
+@QUIET_OPTION
+@VERBOSE_OPTION
+def command(
+    case: str,
+    *,
+    step: int,
+    jobs: int | None,
+    scheduler: str | None,
+    units: Units,
+    quiet: bool,
+    **files: str | None,
+) -> None:
+    """Work out the crossing of CASE for every direction its wind could come from."""
+    from orolift.sources.bearings_case import read_bearings
+    from orolift.sources.files import write_all
+    from orolift.spread.bearings import bearings_of
+
+    files["report"] = files["report"] or f"{Path(case).stem}_bearings.html"
+    refuse_files(files)
+    setup = read_bearings(case, step)
+    log.debug("%s read, %d directions", case, setup.directions)
+    found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
+    if not found:
+        raise click.Abort
+    bearings = bearings_of(
+        found,
+        [site.name for site in setup.sites],
+        step=math.radians(step),
+        given=setup.inputs.wind_from,
+        planned=setup.directions,
+    )
+    write_all(contents_of(bearings, setup, units, files))
+    if not quiet:
+        click.echo("\n".join([*summary_of(bearings, setup), f"Report: {files['report']}"]))
+    if stopped:
+        done = f"{bearings.wind_from.size} of {bearings.planned} directions"
+        raise click.Abort(f"interrupted after {done}; what was finished is written.")
+
+
+def worked(
+    setup: BearingSetup, jobs: int | None, scheduler: str | None, *, quiet: bool
+) -> tuple[list[Direction], bool]:
+    """Directions worked out, and whether the person stopped the work before its end."""
+    from orolift.sources.bearings_case import bearing_tasks
+    from orolift.spread.bearings import Direction, worked_direction
+    from orolift.spread.engine import outcomes
+    from orolift.spread.site_state import SiteState
+
+    found: list[Direction] = []
+    try:
+        with executor_of(jobs, scheduler) as executor, progress(setup.directions, "Directions", quiet=quiet) as bar:
+            for outcome in outcomes(worked_direction, bearing_tasks(setup), executor):
+                direction = outcome.value
+                if direction is None:
+                    state = SiteState("missing", f"a fault of orolift itself: {outcome.error}")
+                    wind_from = math.radians(outcome.number * setup.step_deg)
+                    direction = Direction(wind_from, (state,) * len(setup.sites))
+                found.append(direction)
+                bar.update(1)
+    except KeyboardInterrupt:
+        return found, True
+    return found, False
+
+
+def contents_of(
+    bearings: Bearings, setup: BearingSetup, units: Units, files: dict[str, str | None]
+) -> dict[Path, bytes]:
+    """What stands in each file that was asked for."""
+    from orolift import __version__
+    from orolift.report.bearings_page import bearings_page
+    from orolift.report.render import render_bearings
+    from orolift.sources.bearings_results import bearing_rows, bearings_results
+    from orolift.sources.files import csv_text
+
+    page = bearings_page(
+        bearings,
+        title=f"{setup.inputs.case.title or setup.inputs.path.stem}: every wind direction",
+        made_at=time_stamp(),
+        version=__version__,
+        notes=setup.notes,
+        units=units,
+    )
+    out = {Path(str(files["report"])): render_bearings(page).encode()}
+    results = bearings_results(bearings, setup)
+    if files["table"] is not None:
+        out[Path(files["table"])] = csv_text(*bearing_rows(results)).encode()
+    if files["results"] is not None:
+        out[Path(files["results"])] = (results.model_dump_json(indent=1) + "\n").encode()
+    return out
+
+
+def summary_of(bearings: Bearings, setup: BearingSetup) -> list[str]:
+    """What was found, a line a site, at most ten lines."""
+    lines = [setup.inputs.case.title or setup.inputs.path.stem]
+
+    def said(number: int | None) -> str:
+        return "none" if number is None else f"{math.degrees(bearings.wind_from[number]):.0f} degrees"
+
+    for site in bearings.sites[:6]:
+        crossing = sum(state.status == "crossing" for state in site.states)
+        lines.append(
+            f"{site.name[:24]}  air crosses from {crossing} of {len(site.states)} directions; warmest from "
+            f"{said(site.warmest)}, worst for fire {said(site.fire)}, best for rain {said(site.rain)}"
+        )
+    if len(bearings.sites) > 6:
+        lines.append(f"          and {len(bearings.sites) - 6} more sites: see the report or --table")
+    return lines

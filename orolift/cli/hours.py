@@ -1,0 +1,176 @@
+"""`orolift hours`: one crossing an hour, and a timeline for each site."""
+
+from __future__ import annotations
+
+import logging
+import os
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from orolift.cli.executors import executor_of, progress
+from orolift.cli.options import (
+    JOBS_OPTION,
+    QUIET_OPTION,
+    SCHEDULER_OPTION,
+    UNITS_OPTION,
+    VERBOSE_OPTION,
+    file_option,
+    refuse_files,
+)
+
+if TYPE_CHECKING:
+    from orolift.report.quantities import Units
+    from orolift.sources.hours_case import HourSetup
+    from orolift.spread.hours import Hour
+    from orolift.spread.timeline import Hours
+
+log = logging.getLogger(__name__)
+
+
+@click.command(context_settings={"help_option_names": ["-h", "--help"]})
+@click.argument("case")
+@click.argument("series")
+@file_option("--report", "Page to write; default CASE_hours.html in the current folder.")
+@file_option("--table", "Table to write as CSV, one row for each site and hour.")
+@file_option("--results", "Results to write as JSON.")
+@file_option("--netcdf", "Results to write as NetCDF (needs the extra 'netcdf').")
+@JOBS_OPTION
+@SCHEDULER_OPTION
+@UNITS_OPTION
+@QUIET_OPTION
+@VERBOSE_OPTION
+def command(
+    case: str,
+    series: str,
+    *,
+    jobs: int | None,
+    scheduler: str | None,
+    units: Units,
+    quiet: bool,
+    **files: str | None,
+) -> None:
+    """Work out one crossing for each hour of SERIES over the terrain of CASE.
+
+    SERIES is a CSV table of station values or of sounding files, each row with its time, or NetCDF with times.
+    """
+    from orolift.sources.files import write_all
+    from orolift.sources.hours_case import read_hours
+    from orolift.spread.timeline import hours_of
+
+    files["report"] = files["report"] or f"{Path(case).stem}_hours.html"
+    refuse_files(files)
+    if files["netcdf"] is not None:
+        from orolift.sources.hours_netcdf import refuse_without_netcdf
+
+        refuse_without_netcdf("--netcdf")
+    setup = read_hours(case, series)
+    log.debug("%s and %s read, %d hours", case, series, setup.series.time.size)
+    found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
+    if not found:
+        raise click.Abort
+    ground = setup.ground
+    hours = hours_of(
+        found,
+        [site.name for site in setup.sites],
+        setup.series.step,
+        planned=setup.series.time.size,
+        catchments=() if ground is None else [one.name for one in ground.catchments],
+    )
+    write_all(contents_of(hours, setup, units, files))
+    if not quiet:
+        click.echo("\n".join([*summary_of(hours, setup), f"Report: {files['report']}"]))
+    if stopped:
+        raise click.Abort(
+            f"interrupted after {hours.time.size} of {hours.planned} hours; what was finished is written."
+        )
+
+
+def worked(setup: HourSetup, jobs: int | None, scheduler: str | None, *, quiet: bool) -> tuple[list[Hour], bool]:
+    """Hours worked out, and whether the person stopped the work before its end."""
+    from orolift.sources.hours_case import hour_tasks
+    from orolift.spread.engine import outcomes
+    from orolift.spread.hours import Hour, worked_hour
+    from orolift.spread.site_state import SiteState
+
+    found: list[Hour] = []
+    count = setup.series.time.size
+    try:
+        with (
+            executor_of(1 if jobs is None and count == 1 and scheduler is None else jobs, scheduler) as executor,
+            progress(count, "Hours", quiet=quiet) as bar,
+        ):
+            for outcome in outcomes(worked_hour, hour_tasks(setup), executor):
+                hour = outcome.value
+                if hour is None:
+                    state = SiteState("missing", f"a fault of orolift itself: {outcome.error}")
+                    time = float(setup.series.time[outcome.number])
+                    hour = Hour(outcome.number, time, (state,) * len(setup.sites))
+                found.append(hour)
+                bar.update(1)
+    except KeyboardInterrupt:
+        return found, True
+    return found, False
+
+
+def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, str | None]) -> dict[Path, bytes]:
+    """What stands in each file that was asked for."""
+    from orolift import __version__
+    from orolift.report.hours_page import hours_page
+    from orolift.report.render import render_hours
+    from orolift.sources.files import csv_text
+    from orolift.sources.hours_results import hour_rows, hours_results, notes_of
+
+    made_at = time_stamp()
+    page = hours_page(
+        hours,
+        title=setup.inputs.case.title or setup.inputs.path.stem,
+        zone=setup.series.zone,
+        made_at=made_at,
+        version=__version__,
+        notes=notes_of(hours, setup),
+        units=units,
+    )
+    out = {Path(str(files["report"])): render_hours(page).encode()}
+    results = hours_results(hours, setup)
+    if files["table"] is not None:
+        out[Path(files["table"])] = csv_text(*hour_rows(results)).encode()
+    if files["results"] is not None:
+        out[Path(files["results"])] = (results.model_dump_json(indent=1) + "\n").encode()
+    if files["netcdf"] is not None:
+        from orolift.sources.hours_netcdf import hours_netcdf
+
+        out[Path(files["netcdf"])] = hours_netcdf(hours, setup, __version__)
+    return out
+
+
+def time_stamp() -> datetime:
+    """When a page is made; honours SOURCE_DATE_EPOCH."""
+    stamp = os.environ.get("SOURCE_DATE_EPOCH")
+    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
+
+
+def summary_of(hours: Hours, setup: HourSetup) -> list[str]:
+    """What happened, a line a site, at most ten lines."""
+    from orolift.report.hours_page import stamp
+
+    zone = setup.series.zone
+    lines = [setup.inputs.case.title or setup.inputs.path.stem]
+    lines += [f"Note      {text}" for text in setup.series.notes[:2]]
+    for site in hours.sites[:5]:
+        spells = [
+            f"{'the start' if one.onset is None else stamp(one.onset, zone)} to "
+            f"{'the end' if one.end is None else stamp(one.end, zone)}"
+            for one in site.dry_winds[:2]
+        ]
+        more = f", and {len(site.dry_winds) - 2} more times" if len(site.dry_winds) > 2 else ""
+        dry = f"descending warm dry air from {', from '.join(spells)}{more}" if spells else "no descending warm dry air"
+        lines.append(
+            f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; "
+            f"{site.rain:.0f} mm of rain and snow"
+        )
+    if len(hours.sites) > 5:
+        lines.append(f"          and {len(hours.sites) - 5} more sites: see the report or --table")
+    return lines

@@ -1,0 +1,319 @@
+"""Hours worked out as a results file and as a table: numbers by site and hour, unrounded."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from typing import TYPE_CHECKING, Literal
+
+import numpy as np
+from pydantic import Field
+
+from orolift.sources.result_block import Block
+from orolift.sources.results import CaseBlock, Program, case_block, program
+from orolift.spread.timeline import values_of
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from orolift.sources.hours_case import HourSetup
+    from orolift.spread.timeline import Hours, SiteTimeline
+
+    Array = NDArray[np.float64]
+
+HOURS_VERSION = "1"
+Numbers = list[float | None]
+Flags = list[bool | None]
+
+
+@dataclass(frozen=True)
+class Quantity:
+    """One number of a site and hour, as every file has it.
+
+    Attributes
+    ----------
+    key : str
+        In JSON and CSV, with its unit.
+    of : str
+        Of a state; see `orolift.spread.timeline.values_of`.
+    factor, offset : float
+        Value in the file = SI value x factor + offset.
+    unit : str
+        As CF conventions write it.
+    words : str
+    standard_name : str
+        Of the CF table; empty where it has none.
+    """
+
+    key: str
+    of: str
+    unit: str
+    words: str
+    factor: float = 1.0
+    offset: float = 0.0
+    standard_name: str = ""
+
+
+QUANTITIES = (
+    Quantity(
+        "temperature_c", "temperature", "degC", "air temperature", offset=-273.15, standard_name="air_temperature"
+    ),
+    Quantity("dew_point_c", "dew_point", "degC", "dew point", offset=-273.15, standard_name="dew_point_temperature"),
+    Quantity(
+        "relative_humidity_percent",
+        "relative_humidity",
+        "percent",
+        "relative humidity over liquid water",
+        100.0,
+        standard_name="relative_humidity",
+    ),
+    Quantity("wind_10m_ms", "wind_10m", "m s-1", "wind at 10 m, across the range", standard_name="wind_speed"),
+    Quantity("gust_ms", "gust", "m s-1", "gust, middle of its range", standard_name="wind_speed_of_gust"),
+    Quantity("warming_c", "warming", "K", "site minus incoming air at its height"),
+    *(
+        Quantity(f"warming_{part}_c", f"parts.{part}", "K", f"part of the warming: {part.replace('_', ' ')}")
+        for part in ("descent", "latent", "going_round", "mixing", "surface_heating", "pressure")
+    ),
+    Quantity("source_level_m", "source_level", "m", "median height above sea level the air comes from"),
+    Quantity(
+        "rain_mm_per_h", "rain", "mm h-1", "rain and snow at the site", 3600.0, standard_name="precipitation_rate"
+    ),
+    Quantity("snow_mm_per_h", "snow", "mm h-1", "snow at the site, as water", 3600.0),
+    Quantity("crest_wind_ms", "crest_wind", "m s-1", "wind component across the range at the crest"),
+)
+"""Numbers of a site and hour; the fine fuel code and the times come from the timeline."""
+
+
+class SeriesBlock(Block):
+    """The series of incoming air."""
+
+    file: str
+    kind: Literal["station", "sounding", "model"]
+    first_time: str | None
+    last_time: str | None
+    step_s: float = Field(description="usual time between two hours")
+    hours: int = Field(description="hours from the first to the last, gaps included")
+    worked: int = Field(description="hours worked out; fewer when interrupted")
+
+
+class DryWindBlock(Block):
+    """A stretch of descending warm dry air."""
+
+    first_hour: int = Field(description="number of its first hour in the arrays, from 0")
+    last_hour: int
+    onset: str | None = Field(description="null when it blows from the first hour that is known")
+    onset_error_h: float | None = Field(description="one standard deviation")
+    end: str | None = Field(description="null when it blows to the last hour that is known")
+    end_error_h: float | None
+    unknown_hours: int = Field(description="hours in it of which nothing is known")
+
+
+class HourColumns(Block):
+    """Arrays, one value for each hour, in the order of `time`."""
+
+    time: list[str] = Field(description="upwind, ISO 8601 in UTC")
+    status: list[Literal["crossing", "no crossing", "missing"]]
+    reason: list[str] = Field(description="why there is no crossing; empty where there is one")
+    arrival_time: list[str | None] = Field(description="when the air is at the site; null where it does not arrive")
+    arrival_error_h: Numbers
+    side: list[Literal["windward", "crest", "lee"] | None]
+    temperature_c: Numbers
+    dew_point_c: Numbers
+    relative_humidity_percent: Numbers
+    wind_10m_ms: Numbers
+    gust_ms: Numbers
+    warming_c: Numbers
+    warming_descent_c: Numbers
+    warming_latent_c: Numbers
+    warming_going_round_c: Numbers
+    warming_mixing_c: Numbers
+    warming_surface_heating_c: Numbers
+    warming_pressure_c: Numbers
+    source_level_m: Numbers
+    rain_mm_per_h: Numbers
+    snow_mm_per_h: Numbers
+    crest_wind_ms: Numbers
+    in_cold_pool: Flags
+    breaks_through: Flags = Field(description="null when nothing is known of the lee")
+    descending_warm_dry: Flags
+    fine_fuel_code: Numbers = Field(description="hourly Fine Fuel Moisture Code, carried on; null where not known")
+
+
+class SiteHoursBlock(Block):
+    """One site through the hours."""
+
+    name: str
+    hours: HourColumns
+    dry_winds: list[DryWindBlock]
+    rain_mm: float = Field(description="over the hours that cross")
+    crossing_hours: int
+    caught_up_hours: int = Field(description="hours whose air is caught up by faster air behind it")
+
+
+class CatchmentHoursBlock(Block):
+    """One catchment through the hours."""
+
+    name: str
+    rain_mm_per_h: Numbers = Field(description="mean over it, by upwind hour")
+    rain_mm: float = Field(description="over the hours that are known")
+    known_hours: int
+
+
+class HoursResults(Block):
+    """The whole file of hours."""
+
+    schema_version: str
+    orolift: Program
+    case: CaseBlock
+    series: SeriesBlock
+    interrupted: bool = Field(description="whether the work was stopped before its end")
+    sites: list[SiteHoursBlock]
+    catchments: list[CatchmentHoursBlock]
+    notes: list[str]
+
+
+def hours_results(hours: Hours, setup: HourSetup) -> HoursResults:
+    """The results file of hours worked out.
+
+    Parameters
+    ----------
+    hours : Hours
+    setup : HourSetup
+
+    Returns
+    -------
+    HoursResults
+    """
+    case, time = setup.inputs.case, hours.time
+    return HoursResults(
+        schema_version=HOURS_VERSION,
+        orolift=program(),
+        case=case_block(case),
+        series=SeriesBlock(
+            file=setup.series.name,
+            kind=setup.series.kind,
+            first_time=iso(time[0]) if time.size else None,
+            last_time=iso(time[-1]) if time.size else None,
+            step_s=hours.step,
+            hours=hours.planned,
+            worked=time.size,
+        ),
+        interrupted=hours.interrupted,
+        sites=[_site(site, hours) for site in hours.sites],
+        catchments=[
+            CatchmentHoursBlock(
+                name=one.name, rain_mm_per_h=numbers(3600.0 * one.rate), rain_mm=one.total, known_hours=one.known_hours
+            )
+            for one in hours.catchments
+        ],
+        notes=[*notes_of(hours, setup)],
+    )
+
+
+def notes_of(hours: Hours, setup: HourSetup) -> tuple[str, ...]:
+    """What was assumed, with a first sentence when the work was interrupted."""
+    if not hours.interrupted:
+        return setup.notes
+    note = f"Interrupted: {hours.time.size} of {hours.planned} hours were worked out, and only they are here."
+    return (note, *setup.notes)
+
+
+def iso(seconds: float) -> str:
+    """A time as text, in UTC.
+
+    Examples
+    --------
+    >>> iso(0.0)
+    '1970-01-01T00:00:00Z'
+    """
+    return datetime.fromtimestamp(round(float(seconds)), UTC).strftime("%Y-%m-%dT%H:%M:%SZ")
+
+
+def numbers(values: Array) -> Numbers:
+    """Values with None for NaN.
+
+    Examples
+    --------
+    >>> numbers(np.array([1.5, np.nan]))
+    [1.5, None]
+    """
+    return [value if value == value else None for value in values.tolist()]  # noqa: PLR0124 (NaN is not itself)
+
+
+def columns_of(site: SiteTimeline) -> dict[str, Array]:
+    """Numbers of a site by the key of the files, NaN where there are none.
+
+    Parameters
+    ----------
+    site : SiteTimeline
+
+    Returns
+    -------
+    dict of str to ndarray (n,)
+    """
+    found = {one.key: values_of(site.states, one.of) * one.factor + one.offset for one in QUANTITIES}
+    return {**found, "fine_fuel_code": site.fine_fuel_code}
+
+
+def _site(site: SiteTimeline, hours: Hours) -> SiteHoursBlock:
+    states = site.states
+    arrives = np.isfinite(site.arrival_error).tolist()
+    return SiteHoursBlock(
+        name=site.name,
+        hours=HourColumns(
+            time=[iso(time) for time in hours.time],
+            status=[state.status for state in states],
+            reason=[state.reason for state in states],
+            arrival_time=[iso(time) if there else None for time, there in zip(site.arrival, arrives, strict=True)],
+            arrival_error_h=numbers(site.arrival_error / 3600.0),
+            side=[state.side for state in states],
+            in_cold_pool=[state.in_pool for state in states],
+            breaks_through=[state.breaks_through for state in states],
+            descending_warm_dry=[state.descending for state in states],
+            **{key: numbers(values) for key, values in columns_of(site).items()},
+        ),
+        dry_winds=[
+            DryWindBlock(
+                first_hour=one.first,
+                last_hour=one.last,
+                onset=None if one.onset is None else iso(one.onset),
+                onset_error_h=None if one.onset_error is None else one.onset_error / 3600.0,
+                end=None if one.end is None else iso(one.end),
+                end_error_h=None if one.end_error is None else one.end_error / 3600.0,
+                unknown_hours=one.unknown,
+            )
+            for one in site.dry_winds
+        ],
+        rain_mm=site.rain,
+        crossing_hours=site.crossing_hours,
+        caught_up_hours=site.overtaken,
+    )
+
+
+def hour_rows(results: HoursResults) -> tuple[list[str], list[list[object]]]:
+    """Header and one row for each site and hour, for the CSV table.
+
+    Parameters
+    ----------
+    results : HoursResults
+
+    Returns
+    -------
+    header : list of str
+    rows : list of lists
+        All hours of the first site, then of the next.
+    """
+    keys = list(HourColumns.model_fields)
+    header = ["site", "upwind_time", *keys[1:]]
+    rows: list[list[object]] = []
+    for site in results.sites:
+        columns = [getattr(site.hours, key) for key in keys]
+        rows += [[site.name, *(_said(value) for value in row)] for row in zip(*columns, strict=True)]
+    return header, rows
+
+
+def _said(value: object) -> object:
+    """Truth as a word, for a table."""
+    if isinstance(value, bool):
+        return "true" if value else "false"
+    return value

@@ -1,0 +1,120 @@
+"""Lines of their own for the sites of a case with a raster, along any bearing."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import replace
+from functools import lru_cache
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.crossing.result import Site
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from numpy.typing import NDArray
+
+    from orolift.crossing.situation import Situation
+    from orolift.sources.inputs import Inputs
+    from orolift.sources.lines import Lines
+
+    Array = NDArray[np.float64]
+
+MOST_LINES = 720
+"""Lines kept in memory: ten sites in every direction."""
+
+
+def own_lines(
+    inputs: Inputs, sites: tuple[Site, ...]
+) -> tuple[Callable[[int, float], Situation], Array, tuple[float, float] | None]:
+    """Lines over a raster, one for each site along any bearing.
+
+    Parameters
+    ----------
+    inputs : Inputs
+        Of a case with a raster.
+    sites : tuple of Site
+        Those of the case, or one that stands for them on its line.
+
+    Returns
+    -------
+    own_line : callable
+        The situation of a site, by its number, along a bearing [rad]: that site alone, without the ends. Lines are
+        kept for the next time.
+    places : ndarray (ns, 2) [m]
+        Of the sites on the map.
+    observed : (float, float) or None [m]
+        Where the case says that its air is observed, on the map.
+
+    Raises
+    ------
+    OroliftError
+        If the raster cannot be read; `own_line` where the map has no line with a range in it.
+    """
+    from orolift.sources.lines import read_lines, situation_through
+
+    lines = read_lines(inputs, beside=_beside(inputs, sites))
+    places = site_places(lines, inputs, sites)
+
+    @lru_cache(maxsize=MOST_LINES)
+    def own_line(number: int, bearing: float) -> Situation:
+        x, y = places[number]
+        site = Site(sites[number].name, 0.0, sites[number].elevation)
+        return replace(situation_through(lines, float(x), float(y), bearing, (site,)), ends_too=False)
+
+    return own_line, places, _observed(lines, inputs)
+
+
+def _beside(inputs: Inputs, sites: tuple[Site, ...]) -> float:
+    """Farthest site from the middle of the case's line [m]."""
+    middle = 0.5 * float(inputs.transect.distance[-1])
+    offsets = [place.offset or 0.0 for place in inputs.places] or [0.0]
+    return max(math.hypot(site.distance - middle, offset) for site, offset in zip(sites, offsets, strict=False))
+
+
+def site_places(lines: Lines, inputs: Inputs, sites: tuple[Site, ...]) -> Array:
+    """Places of sites on the map of a case.
+
+    Parameters
+    ----------
+    lines : Lines
+    inputs : Inputs
+    sites : tuple of Site
+        Those of the case, or one that stands for them on its line.
+
+    Returns
+    -------
+    ndarray (ns, 2) [m]
+    """
+    from orolift.sources.lines import map_places
+
+    if inputs.places:
+        x, y = map_places(
+            lines.placed,
+            np.array([place.longitude for place in inputs.places], dtype=np.float64),
+            np.array([place.latitude for place in inputs.places], dtype=np.float64),
+        )
+        return np.column_stack([x, y])
+    line = inputs.transect
+    found = []
+    for site in sites:
+        i = int(np.argmin(np.abs(line.distance - site.distance)))
+        if line.longitude is None or line.latitude is None:
+            raise ValueError("lines over a map have positions")
+        x, y = map_places(lines.placed, line.longitude[i : i + 1], line.latitude[i : i + 1])
+        found.append((float(x[0]), float(y[0])))
+    return np.array(found)
+
+
+def _observed(lines: Lines, inputs: Inputs) -> tuple[float, float] | None:
+    """Where the case says that its air is observed, on the map."""
+    from orolift.sources.lines import map_places
+
+    table = inputs.case.incoming
+    at = table.station or table.metar or table.sounding_at or table.model_at
+    if at is None or at.longitude is None or at.latitude is None:
+        return None
+    x, y = map_places(lines.placed, [at.longitude], [at.latitude])
+    return float(x[0]), float(y[0])

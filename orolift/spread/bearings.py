@@ -1,0 +1,232 @@
+"""Every wind direction in turn: what each does to each site, and which is worst for fire and best for rain."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.spread.site_state import SiteState, states_of
+
+if TYPE_CHECKING:
+    from collections.abc import Iterable, Sequence
+
+    from numpy.typing import NDArray
+
+    from orolift.air.column import IncomingAir
+    from orolift.crossing.situation import Situation
+    from orolift.spread.hours import OneLine
+
+    Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True, eq=False)
+class BearingTask:
+    """A wind direction to be worked out.
+
+    Attributes
+    ----------
+    wind_from : float [rad]
+    states : tuple of SiteState
+        One for each site of the case, with the reason where none of the lines is its own.
+    lines : tuple of OneLine
+        With the air turned to that direction.
+    """
+
+    wind_from: float
+    states: tuple[SiteState, ...]
+    lines: tuple[OneLine, ...] = ()
+
+
+@dataclass(frozen=True)
+class Direction:
+    """A wind direction worked out.
+
+    Attributes
+    ----------
+    wind_from : float [rad]
+    sites : tuple of SiteState
+        In the order of the case.
+    """
+
+    wind_from: float
+    sites: tuple[SiteState, ...]
+
+
+@dataclass(frozen=True)
+class SiteBearings:
+    """One site under every wind direction.
+
+    Attributes
+    ----------
+    name : str
+    states : tuple of SiteState
+        In the order of the directions.
+    warmest, driest, fire, rain : int or None
+        Numbers of the directions with the strongest warming, the lowest humidity, the largest product of vapour
+        pressure deficit and wind at 10 m, and the most rain; None where there is none.
+    """
+
+    name: str
+    states: tuple[SiteState, ...]
+    warmest: int | None
+    driest: int | None
+    fire: int | None
+    rain: int | None
+
+
+@dataclass(frozen=True, eq=False)
+class Bearings:
+    """Every wind direction worked out.
+
+    Attributes
+    ----------
+    wind_from : ndarray (n,) [rad]
+        Increasing from north.
+    step : float [rad]
+    given : float [rad]
+        Direction of the case itself.
+    sites : tuple of SiteBearings
+    planned : int
+        Directions asked for; more than n when the work was interrupted.
+    """
+
+    wind_from: Array
+    step: float
+    given: float
+    sites: tuple[SiteBearings, ...]
+    planned: int
+
+    @property
+    def interrupted(self) -> bool:
+        """Whether directions were not worked out."""
+        return self.wind_from.size < self.planned
+
+
+NO_RAIN = 0.05 / 3600.0
+"""Rain [kg m-2 s-1] below which no direction is the best for it: it reads as none."""
+
+
+def worked_direction(task: BearingTask) -> Direction:
+    """A wind direction worked out along each of its lines.
+
+    Parameters
+    ----------
+    task : BearingTask
+
+    Returns
+    -------
+    Direction
+        Directions that do not cross say so at their sites.
+    """
+    states = list(task.states)
+    for line in task.lines:
+        found, _ = states_of(line.situation, line.observed_at)
+        for number, state in zip(line.numbers, found, strict=True):
+            states[number] = state
+    return Direction(task.wind_from, tuple(states))
+
+
+def bearings_of(
+    found: Iterable[Direction], names: Sequence[str], *, step: float, given: float, planned: int
+) -> Bearings:
+    """Directions put together, worked out in any order.
+
+    Parameters
+    ----------
+    found : iterable of Direction
+    names : sequence of str
+        Of the sites.
+    step : float [rad]
+    given : float [rad]
+        Direction of the case itself.
+    planned : int
+        Directions asked for.
+
+    Returns
+    -------
+    Bearings
+    """
+    directions = sorted(found, key=lambda one: one.wind_from)
+    return Bearings(
+        wind_from=np.array([one.wind_from for one in directions]),
+        step=step,
+        given=given,
+        sites=tuple(_site(name, tuple(one.sites[number] for one in directions)) for number, name in enumerate(names)),
+        planned=planned,
+    )
+
+
+def _site(name: str, states: tuple[SiteState, ...]) -> SiteBearings:
+    rain = _most(states, "rain", 1.0)
+    wet = rain is not None and (states[rain].rain or 0.0) >= NO_RAIN
+    return SiteBearings(
+        name=name,
+        states=states,
+        warmest=_most(states, "warming", 1.0),
+        driest=_most(states, "relative_humidity", -1.0),
+        fire=_most(states, "drying_power", 1.0),
+        rain=rain if wet else None,
+    )
+
+
+def _most(states: Sequence[SiteState], key: str, sign: float) -> int | None:
+    """Number of the state with the largest value, times a sign; the first of several, None without any."""
+    known = [(sign * getattr(state, key), -i) for i, state in enumerate(states) if getattr(state, key) is not None]
+    return -max(known)[1] if known else None
+
+
+def turned_air(air: IncomingAir, angle: float) -> IncomingAir:
+    """A column with all its winds turned together.
+
+    Parameters
+    ----------
+    air : IncomingAir
+    angle : float [rad]
+        Clockwise.
+
+    Returns
+    -------
+    IncomingAir
+        Speeds and shear as before.
+    """
+    c, s = math.cos(angle), math.sin(angle)
+    east, north = air.eastward_wind, air.northward_wind
+    return replace(air, eastward_wind=east * c + north * s, northward_wind=north * c - east * s)
+
+
+def reversed_situation(situation: Situation) -> Situation:
+    """The same line with the wind from its other end.
+
+    Parameters
+    ----------
+    situation : Situation
+
+    Returns
+    -------
+    Situation
+        Line, sites and range normal the other way round; its distances start at the other end.
+    """
+    line = situation.transect
+    length = float(line.distance[-1])
+
+    def flipped(values: Array | None) -> Array | None:
+        return None if values is None else values[::-1].copy()
+
+    normal = situation.normal
+    return replace(
+        situation,
+        transect=replace(
+            line,
+            elevation=line.elevation[::-1].copy(),
+            bearing=None if line.bearing is None else (line.bearing + math.pi) % (2.0 * math.pi),
+            high_elevation=flipped(line.high_elevation),
+            longitude=flipped(line.longitude),
+            latitude=flipped(line.latitude),
+            origin=0.0,
+        ),
+        sites=tuple(replace(site, distance=length - site.distance) for site in situation.sites),
+        normal=None if normal is None else replace(normal, bearing=(normal.bearing + math.pi) % (2.0 * math.pi)),
+    )

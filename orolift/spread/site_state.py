@@ -1,0 +1,240 @@
+"""What one crossing is for its sites, in a few numbers each: small enough to keep for thousands of crossings."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Literal
+
+import numpy as np
+
+from orolift.air.column import interpolated
+from orolift.air.humidity import relative_humidity_from_dew_point
+from orolift.air.temperature import potential_temperature
+from orolift.crossing.situation import crossing_of
+from orolift.errors import NoCrossingError, OroliftError
+from orolift.fire.dryness import vapour_pressure_deficit
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from orolift.crossing.result import Crossing, LeeAir, Side, WarmingParts
+    from orolift.crossing.situation import Situation
+
+    Array = NDArray[np.float64]
+
+Status = Literal["crossing", "no crossing", "missing"]
+
+SLOWEST = 1.0
+"""Wind [m s-1] below which the time on the way is counted with this, as for the heat of the ground."""
+LEAST_WARMING = 1.0
+"""Warming [K] from which lee air counts as warm: half the stated model error; a judgement."""
+HALFWAY = 0.5
+"""Share of the way from the potential temperature of the incoming air at the height of a site to that at the crest
+which air come down from the crest has made at least; what is short of the whole is mixing and low air; a judgement."""
+
+
+@dataclass(frozen=True)
+class Travel:
+    """Time the air takes to a site, from where it was observed [s].
+
+    Attributes
+    ----------
+    time : float
+        Mean over the streamlines that arrive in the mixing depth, by the air they carry past the site.
+    spread : float
+        Standard deviation between them.
+    """
+
+    time: float
+    spread: float
+
+
+@dataclass(frozen=True)
+class SiteState:
+    """One site in one crossing; None where there is nothing to say.
+
+    Attributes
+    ----------
+    status : 'crossing', 'no crossing' or 'missing'
+    reason : str
+        Why there is no crossing.
+    side : 'windward', 'crest', 'lee' or None
+    in_pool : bool or None
+    temperature, dew_point : float or None [K]
+    relative_humidity : float or None [1]
+    drying_power : float or None [Pa m s-1]
+        Vapour pressure deficit times the wind at 10 m.
+    wind_10m, gust : float or None [m s-1]
+        None in a pool and in blocked air.
+    warming : float or None [K]
+        Against the incoming air at the height of the site.
+    parts : WarmingParts or None
+    source_level : float or None [m above sea level]
+    rain : float or None [kg m-2 s-1]
+        Rain and snow at the site on the line, background included.
+    snow : float or None [kg m-2 s-1]
+        Of it, the snow.
+    travel : Travel or None
+    shelter_height : float or None [m above sea level]
+        Highest ground of the line before the site.
+    shelter_distance : float or None [m]
+        From there to the site, along the line.
+    shelter_longitude, shelter_latitude : float or None [degrees east, degrees north]
+        Where that is; None for a hand-entered ridge.
+    crest_wind : float or None [m s-1]
+        Component across the range.
+    breaks_through : bool or None
+    descending : bool or None
+        Whether the air there is descending warm dry air; see `descending_warm_dry`.
+    """
+
+    status: Status
+    reason: str = ""
+    side: Side | None = None
+    in_pool: bool | None = None
+    temperature: float | None = None
+    dew_point: float | None = None
+    relative_humidity: float | None = None
+    drying_power: float | None = None
+    wind_10m: float | None = None
+    gust: float | None = None
+    warming: float | None = None
+    parts: WarmingParts | None = None
+    source_level: float | None = None
+    rain: float | None = None
+    snow: float | None = None
+    travel: Travel | None = None
+    shelter_height: float | None = None
+    shelter_distance: float | None = None
+    shelter_longitude: float | None = None
+    shelter_latitude: float | None = None
+    crest_wind: float | None = None
+    breaks_through: bool | None = None
+    descending: bool | None = None
+
+
+def states_of(situation: Situation, observed_at: float = 0.0) -> tuple[tuple[SiteState, ...], Crossing | None]:
+    """The sites of a situation, whether it crosses or not.
+
+    Parameters
+    ----------
+    situation : Situation
+        With one site at least.
+    observed_at : float [m]
+        Where on the transect the incoming air was observed; times on the way are counted from there.
+
+    Returns
+    -------
+    states : tuple of SiteState
+        In the order of the sites.
+    crossing : Crossing or None
+        None without a crossing.
+    """
+    try:
+        crossing = crossing_of(situation)
+    except NoCrossingError as error:
+        return (SiteState("no crossing", str(error)),) * len(situation.sites), None
+    except OroliftError as error:
+        return (SiteState("missing", str(error)),) * len(situation.sites), None
+    return tuple(_state(site, crossing, observed_at) for site in crossing.lee), crossing
+
+
+def _state(site: LeeAir, crossing: Crossing, observed_at: float) -> SiteState:
+    rain, line = crossing.rain, crossing.transect
+    before = line.distance <= site.distance
+    shelter = int(np.argmax(np.where(before, line.elevation, -np.inf)))
+    deficit = float(vapour_pressure_deficit(site.temperature, min(site.relative_humidity, 1.0)))
+    wind = site.wind
+    return SiteState(
+        status="crossing",
+        side=site.side,
+        in_pool=site.in_pool,
+        temperature=site.temperature,
+        dew_point=site.dew_point,
+        relative_humidity=site.relative_humidity,
+        drying_power=None if wind is None else deficit * wind.at_10m,
+        wind_10m=None if wind is None else wind.at_10m,
+        gust=None if wind is None else 0.5 * (wind.gust_low + wind.gust_high),
+        warming=site.warming,
+        parts=site.parts,
+        source_level=site.source_level,
+        rain=float(np.interp(site.distance, crossing.distance, rain.rate)) + rain.background,
+        snow=float(np.interp(site.distance, crossing.distance, rain.snow_rate)),
+        travel=travel_to(crossing, site, observed_at),
+        shelter_height=float(line.elevation[shelter]),
+        shelter_distance=site.distance - float(line.distance[shelter]),
+        shelter_longitude=None if line.longitude is None else float(line.longitude[shelter]),
+        shelter_latitude=None if line.latitude is None else float(line.latitude[shelter]),
+        crest_wind=crossing.flow.crest_wind,
+        breaks_through=crossing.flow.breaks_through,
+        descending=descending_warm_dry(crossing, site),
+    )
+
+
+def travel_to(crossing: Crossing, site: LeeAir, observed_at: float) -> Travel:
+    """Time the air that reaches a site takes from where it was observed.
+
+    Parameters
+    ----------
+    crossing : Crossing
+    site : LeeAir
+    observed_at : float [m]
+        From the upwind end of the transect; a site before it takes no time.
+
+    Returns
+    -------
+    Travel
+
+    Notes
+    -----
+    Along each streamline dx / u is summed over the places of the crossing, x
+    along the range normal as u is, with 1 m/s at least. Over the site those
+    count that lie in the mixing depth above its lowest streamline, weighted by
+    the depth of each there times its wind.
+    """
+    x = crossing.distance
+    way = np.clip(x, min(observed_at, site.distance), site.distance)
+    bearing = crossing.transect.bearing
+    cosine = 1.0 if bearing is None else float(np.cos(crossing.flow.normal - bearing))
+    slowness = 1.0 / np.maximum(crossing.wind, SLOWEST)
+    middle = 0.5 * (slowness[1:] + slowness[:-1])
+    taken = cosine * np.sum(np.diff(way)[:, np.newaxis] * middle, axis=0)
+    at = int(np.argmin(np.abs(x - site.distance)))
+    height = crossing.height[at]
+    arrives = height <= height[0] + float(np.asarray(crossing.settings.mixing_depth))
+    weight = np.gradient(height)[arrives] * np.maximum(crossing.wind[at, arrives], SLOWEST)
+    mean = float(np.average(taken[arrives], weights=weight))
+    spread = float(np.sqrt(np.average((taken[arrives] - mean) ** 2, weights=weight)))
+    return Travel(mean, spread)
+
+
+def descending_warm_dry(crossing: Crossing, site: LeeAir) -> bool:
+    """Whether the air at a site is descending warm dry air.
+
+    Parameters
+    ----------
+    crossing : Crossing
+    site : LeeAir
+
+    Returns
+    -------
+    bool
+
+    Notes
+    -----
+    True where all of this holds: the site lies behind the crest, and neither in cold air that stays nor
+    under air that does not break through; its potential temperature is nearer to that of the incoming
+    air at the crest than to that of the incoming air at its own height; it is 1 K or more warmer than the latter;
+    and its relative humidity is lower. Both numbers are judgements.
+    """
+    if site.side != "lee" or site.in_pool or crossing.flow.breaks_through is False:
+        return False
+    upwind = interpolated(crossing.incoming, np.array([site.elevation, crossing.features.crest]))
+    beside, crest = (float(t) for t in potential_temperature(upwind.pressure, upwind.temperature))
+    theta = float(potential_temperature(site.pressure, site.temperature))
+    humidity = float(relative_humidity_from_dew_point(site.upwind_temperature, site.upwind_dew_point))
+    return (
+        theta >= beside + HALFWAY * (crest - beside)
+        and site.warming >= LEAST_WARMING
+        and site.relative_humidity < humidity
+    )
