@@ -13,8 +13,8 @@ from typing import TYPE_CHECKING, Any
 
 from orolift.errors import CaseError
 from orolift.sources.case_model import Case
+from orolift.sources.compare_blocks import CompareResults
 from orolift.sources.compare_results import SCHEMA_VERSION as COMPARE_VERSION
-from orolift.sources.compare_results import CompareResults
 from orolift.sources.files import write_all
 from orolift.sources.results import SCHEMA_VERSION, Results
 from orolift.sources.rules_file import RulesFile
