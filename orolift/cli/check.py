@@ -9,6 +9,9 @@ import click
 
 from orolift.cli.options import VERBOSE_OPTION
 
+MOST_NAMES = 12
+"""Sites that are named."""
+
 if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
 
@@ -41,7 +44,7 @@ def findings(inputs: Inputs) -> list[str]:
             f"Incoming air: {_given(inputs)}, ground {air.height[0]:.0f} m, "
             f"{air.pressure[0] / 100:.1f} hPa, {air.temperature[0] - 273.15:.1f} °C."
         ),
-        f"Sites: {', '.join(site.name for site in inputs.sites) or 'none; the lee foot is used'}.",
+        f"Sites: {_named_sites(inputs)}.",
     ]
     from orolift.sources.quality import cautions, table_lines
 
@@ -51,6 +54,17 @@ def findings(inputs: Inputs) -> list[str]:
         lines += ["Quality control of the incoming air:", *(f"  {row}" for row in table_lines(inputs.findings))]
     lines += [f"Assumed: {text}" for text in (*air.notes, *line.notes)]
     return lines
+
+
+def _named_sites(inputs: Inputs) -> str:
+    """Names of the sites, the first dozen."""
+    names = [place.name for place in inputs.places]
+    if not names:
+        return "none; the lee foot is used"
+    more = f" and {len(names) - MOST_NAMES} more" if len(names) > MOST_NAMES else ""
+    beside = sum(not place.on_line for place in inputs.places)
+    own = f"; {beside} of them beside the line, on lines of their own" if beside else ""
+    return f"{', '.join(names[:MOST_NAMES])}{more}{own}"
 
 
 def _found(inputs: Inputs) -> list[str]:

@@ -11,13 +11,14 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.options import QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
 from orolift.errors import CaseError
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
     from orolift.crossing.situation import Situation
+    from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
@@ -35,6 +36,7 @@ class Worked:
     crossing: Crossing
     mapped: Mapped | None
     flags: tuple[str, ...]
+    fire: tuple[SiteFire, ...]
     results: Results
 
 
@@ -48,6 +50,8 @@ class Worked:
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -57,6 +61,8 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
+    jobs: int | None,
+    scheduler: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
@@ -69,12 +75,12 @@ def command(
             if value is not None and option != "--maps":
                 raise CaseError(f"{option} takes one case, and {len(cases)} are given. Run it once for each case.")
     from orolift.sources.files import csv_text, write_all
-    from orolift.sources.results import site_rows
+    from orolift.sources.site_table import site_rows
 
     contents: dict[Path, bytes] = {}
     summaries = []
     for case in cases:
-        worked = work_out(case, files)
+        worked = work_out(case, files, Work(jobs, scheduler, quiet))
         page = Path(report) if report else Path(f"{Path(case).stem}.html")
         if page in contents:
             raise CaseError(f"{case}: another case of this run already writes {page}. Give the cases different names.")
@@ -101,7 +107,16 @@ def command(
             )
 
 
-def work_out(case: str, files: RainFiles | None = None) -> Worked:
+@dataclass(frozen=True)
+class Work:
+    """Where many crossings are worked out, and whether progress is shown; as for `orolift.cli.executors`."""
+
+    jobs: int | None = None
+    scheduler: str | None = None
+    quiet: bool = True
+
+
+def work_out(case: str, files: RainFiles | None = None, work: Work | None = None) -> Worked:
     """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import read_inputs, situation_of
@@ -120,6 +135,11 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
+    if inputs.case.terrain.elevation_file is not None:
+        from orolift.cli.site_lines import with_own_lines
+
+        work = work or Work()
+        crossing = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -128,7 +148,20 @@ def work_out(case: str, files: RainFiles | None = None) -> Worked:
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    return Worked(inputs, situation, crossing, mapped, flags, results_of(crossing, inputs.case, mapped, flags))
+    fire, reached, to_know = fire_of(inputs, crossing)
+    crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, results)
+
+
+def fire_of(inputs: Inputs, crossing: Crossing) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
+    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    from orolift.fire.flags import fire_flags, windward_cautions
+    from orolift.fire.sites import fire_at_sites
+
+    found = fire_at_sites(crossing, inputs.when, inputs.fire)
+    rules = inputs.fire.rules
+    return found, fire_flags(found, rules), windward_cautions(found, rules)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -164,6 +197,8 @@ def report_of(worked: Worked, units: Units) -> str:
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
+        fire=worked.fire,
+        rules=worked.inputs.fire.rules,
     )
     html = render(page)
     log.debug("report rendered, %d kB", len(html) // 1024)

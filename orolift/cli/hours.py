@@ -78,6 +78,7 @@ def command(
         setup.series.step,
         planned=setup.series.time.size,
         catchments=() if ground is None else [one.name for one in ground.catchments],
+        fire=setup.inputs.fire,
     )
     write_all(contents_of(hours, setup, units, files))
     if not quiet:

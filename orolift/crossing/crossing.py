@@ -136,7 +136,10 @@ def cross(
         rain=rainfall(ground, solution, background),
         pool=solution.pools[0],
         winds=winds,
-        lee=tuple(site_air(site, ground, incoming, solution, settings, when, winds) for site in sites),
+        lee=tuple(
+            replace(site_air(site, ground, incoming, solution, settings, when, winds), number=number)
+            for number, site in enumerate(sites, start=1)
+        ),
         notes=(*incoming.notes, *transect.notes, *crest_line_notes(ground, flow.blocked_top)),
         cautions=remarks(ground, solution, flow),
     )

@@ -98,6 +98,43 @@ class SimpleAir:
     dew_point: float
 
 
+@dataclass(frozen=True)
+class SiteLine:
+    """The line of a site that does not lie on the crossing's own.
+
+    Attributes
+    ----------
+    offset : float [m]
+        Distance of the site across the crossing's own line, positive to the right of the wind.
+    crest, blocked_top : float [m above sea level]
+        Of the site's line.
+    beyond_crest : float [m]
+        Distance of the site downwind of that crest.
+    crest_wind : float [m s-1]
+        Component across the range there.
+    cloud_base : float or None [m above sea level]
+    cautions : tuple of str
+        What is doubtful on its line.
+    """
+
+    offset: float
+    crest: float
+    blocked_top: float
+    beyond_crest: float
+    crest_wind: float
+    cloud_base: float | None
+    cautions: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class FailedSite:
+    """A site that could not be worked out, and why."""
+
+    number: int
+    name: str
+    reason: str
+
+
 @dataclass(frozen=True, eq=False)
 class LeeAir:
     """The air at one site.
@@ -135,6 +172,11 @@ class LeeAir:
     wind : SiteWind or None
         None in a pool and in blocked air.
     profile : LeeProfile
+    number : int
+        Of the site in the case, from 1: its pin.
+    own : SiteLine or None
+        Its line, where it does not lie on the crossing's own; `distance` is then that abreast of it on the
+        crossing's own line, and may lie beyond its ends.
     """
 
     name: str
@@ -161,6 +203,8 @@ class LeeAir:
     full_blocking: SimpleAir
     wind: SiteWind | None
     profile: LeeProfile
+    number: int = 0
+    own: SiteLine | None = None
 
     @property
     def warming(self) -> float:
@@ -335,8 +379,12 @@ class Crossing:
     pool : Pool or None
     winds : LeeWinds
     lee : tuple of LeeAir
-        One for every site, in their order.
+        One for every site that was worked out, in their order, whatever line they are on.
     notes, cautions : tuple of str
+    on_line : tuple of LeeAir or None
+        Those on the crossing's own line, or its lee foot, where others have lines of their own; None when
+        all of `lee` is on it.
+    failed : tuple of FailedSite
     """
 
     incoming: IncomingAir
@@ -360,3 +408,5 @@ class Crossing:
     lee: tuple[LeeAir, ...]
     notes: tuple[str, ...]
     cautions: tuple[str, ...]
+    on_line: tuple[LeeAir, ...] | None = None
+    failed: tuple[FailedSite, ...] = ()

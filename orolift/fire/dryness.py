@@ -13,8 +13,8 @@ from orolift.constants import MELTING_POINT
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
-LOWEST_TEMPERATURE, HIGHEST_TEMPERATURE = 213.15, 333.15
-"""Air temperatures [K] that indices of fire weather are given for: -60 to 60 degrees Celsius."""
+LOWEST_TEMPERATURE, HIGHEST_TEMPERATURE = 173.15, 338.15
+"""Air temperatures [K] that indices of fire weather are given for; in hard frost they are formulas carried on."""
 
 _KELVIN = "orolift works in kelvin; add 273.15 to degrees Celsius."
 _SHARE = "Give a share; divide per cent by 100."
@@ -26,7 +26,7 @@ def fire_temperature(temperature: ArrayLike) -> NDArray[np.float64]:
     Raises
     ------
     OutOfRangeError
-        If any value is NaN or outside 213.15-333.15 K.
+        If any value is NaN or outside 173.15-338.15 K.
     """
     return within("temperature", temperature, LOWEST_TEMPERATURE, HIGHEST_TEMPERATURE, "K", _KELVIN)
 
@@ -59,7 +59,7 @@ def vapour_pressure_deficit(temperature: ArrayLike, relative_humidity: ArrayLike
     Parameters
     ----------
     temperature : array_like, any shape [K]
-        213.15 to 333.15 K.
+        173.15 to 338.15 K.
     relative_humidity : array_like, broadcasts with `temperature` [1]
         Over liquid water, 0 to 1.
 
@@ -100,7 +100,7 @@ def angstroem_index(temperature: ArrayLike, relative_humidity: ArrayLike) -> NDA
     Parameters
     ----------
     temperature : array_like, any shape [K]
-        213.15 to 333.15 K.
+        173.15 to 338.15 K.
     relative_humidity : array_like, broadcasts with `temperature` [1]
         0 to 1.
 

@@ -103,7 +103,7 @@ def fine_fuel_code_daily(
     previous : array_like, any shape [1]
         Yesterday's code, 0 to 101.
     temperature : array_like, broadcasts [K]
-        At noon local standard time, 213.15 to 333.15 K.
+        At noon local standard time, 173.15 to 338.15 K.
     relative_humidity : array_like, broadcasts [1]
         At noon, 0 to 1.
     wind : array_like, broadcasts [m s-1]

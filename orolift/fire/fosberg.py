@@ -30,7 +30,7 @@ def equilibrium_fuel_moisture(temperature: ArrayLike, relative_humidity: ArrayLi
     Parameters
     ----------
     temperature : array_like, any shape [K]
-        213.15 to 333.15 K.
+        173.15 to 338.15 K.
     relative_humidity : array_like, broadcasts with `temperature` [1]
         0 to 1.
 
@@ -83,7 +83,7 @@ def fosberg_index(
     Parameters
     ----------
     temperature : array_like, any shape [K]
-        213.15 to 333.15 K.
+        173.15 to 338.15 K.
     relative_humidity : array_like, broadcasts [1]
         0 to 1.
     wind : array_like, broadcasts [m s-1]

@@ -32,7 +32,7 @@ def hot_dry_windy(
     height_above_ground : array_like, shape (nz,) [m]
         Increasing, the first at most `depth`.
     temperature : array_like, shape (..., nz) [K]
-        213.15 to 333.15 K.
+        173.15 to 338.15 K.
     relative_humidity : array_like, shape (..., nz) [1]
         0 to 1.
     wind : array_like, shape (..., nz) [m s-1]

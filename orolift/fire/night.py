@@ -67,7 +67,7 @@ def humidity_after_cooling(temperature: ArrayLike, relative_humidity: ArrayLike,
     Parameters
     ----------
     temperature : array_like, any shape [K]
-        Before it cools, 213.15 to 333.15 K.
+        Before it cools, 173.15 to 338.15 K.
     relative_humidity : array_like, broadcasts [1]
         Before, 0 to 1.
     cooling : array_like, broadcasts [K]

@@ -68,7 +68,7 @@ def answers(crossing: Crossing) -> Answers:
     site = main_site(crossing)
     return Answers(
         heading=_heading(site),
-        rows=tuple(_row(air, number) for number, air in enumerate(crossing.lee, start=1)),
+        rows=tuple(_row(air, air.number) for air in crossing.lee),
         remarks=(*_differences(crossing, site), *_ends(crossing, site)),
     )
 

@@ -76,7 +76,7 @@ def causes(crossing: Crossing) -> Causes:
     -------
     Causes
     """
-    rows = tuple(_row(site, number) for number, site in enumerate(crossing.lee, start=1))
+    rows = tuple(_row(site, site.number) for site in crossing.lee)
     site = main_site(crossing)
     return Causes(heading=cause_heading(crossing, site), explanation=_explanation(crossing, site), rows=rows)
 

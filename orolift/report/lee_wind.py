@@ -100,7 +100,7 @@ def lee_wind(crossing: Crossing) -> LeeWind:
         heading=_heading(crossing),
         remarks=_remarks(crossing),
         methods=(first, *others),
-        sites=tuple(_row(site, number) for number, site in enumerate(crossing.lee, start=1)),
+        sites=tuple(_row(site, site.number) for site in crossing.lee),
         conditions=tuple(ConditionRow(one.statement, ANSWERS[one.met], one.source) for one in winds.conditions),
     )
 

@@ -19,6 +19,7 @@ from orolift.report.figures.gauge_scatter import gauge_scatter
 from orolift.report.figures.path import path
 from orolift.report.figures.rain_line import rain_line
 from orolift.report.figures.section import section
+from orolift.report.fire import FireWeather, fire_weather
 from orolift.report.inputs import Inputs, inputs
 from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
@@ -28,6 +29,7 @@ from orolift.report.rain import RainOnLine, rain_on_line
 from orolift.report.rain_over_map import RainOverMap, rain_over_map
 from orolift.report.reading import Reading, reading
 from orolift.report.sites import Sites, sites
+from orolift.report.story import first_sites, line_view
 from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
 
@@ -36,6 +38,8 @@ if TYPE_CHECKING:
     from datetime import datetime
 
     from orolift.crossing.result import Crossing
+    from orolift.fire.rules import RuleSet
+    from orolift.fire.sites import SiteFire
     from orolift.report.figures.answers import AnswersDrawing
     from orolift.report.figures.budget import BudgetDrawing
     from orolift.report.figures.column import ColumnDrawing
@@ -78,6 +82,7 @@ class Page:
     rain_map : Figure or None
     gauge_scatter : Figure or None
     sites : Sites
+    fire : FireWeather or None
     answers : Answers
     answers_figure : Figure or None
     lee_wind : LeeWind
@@ -108,6 +113,7 @@ class Page:
     rain_map: Figure[RainMapDrawing] | None
     gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
+    fire: FireWeather | None
     answers: Answers
     answers_figure: Figure[AnswersDrawing] | None
     lee_wind: LeeWind
@@ -131,6 +137,8 @@ def page_of(
     flags: tuple[str, ...] = (),
     findings: Iterable[Finding] = (),
     stagnant_top: float | None = None,
+    fire: tuple[SiteFire, ...] = (),
+    rules: RuleSet | None = None,
 ) -> Page:
     """The page of a crossing.
 
@@ -156,6 +164,10 @@ def page_of(
         What quality control has seen in the incoming air.
     stagnant_top : float, optional [m above sea level]
         Top of a stagnant layer at the ground of the incoming air, kept out of the inflow.
+    fire : tuple of SiteFire
+        Fire weather at the sites, in their order; without, its section is left out.
+    rules : RuleSet, optional
+        Thresholds it was judged by.
 
     Returns
     -------
@@ -163,7 +175,8 @@ def page_of(
     """
     bearing = (toward(crossing.transect, crossing.incoming) + math.pi) % (2.0 * math.pi)
     freezing = float(freezing_level(crossing.incoming))
-    followed = trace(crossing)
+    line, few = line_view(crossing), first_sites(crossing)
+    followed = trace(line)
     crest = quantity(crossing.features.crest, "height", 0, units)
     return Page(
         title=title or f"Air from the {point_of_compass(bearing)} over a crest at {crest}",
@@ -171,28 +184,29 @@ def page_of(
         made=moment(made_at),
         version=version,
         units=units,
-        briefing=briefing(crossing, bearing, freezing),
-        section_heading=section_heading(crossing, followed),
-        section=section(crossing, followed, bearing, freezing, units),
-        reading=reading(crossing, units),
-        journey=journey(crossing, followed),
-        path=path(crossing, followed, units),
-        causes=causes(crossing),
-        budget=budget(crossing, units),
-        rain=rain_on_line(crossing, flags, units),
-        rain_line=rain_line(crossing, None if mapped is None else mapped.rain.on_line, units),
+        briefing=briefing(line, bearing, freezing),
+        section_heading=section_heading(line, followed),
+        section=section(line, followed, bearing, freezing, units),
+        reading=reading(line, units),
+        journey=journey(line, followed),
+        path=path(line, followed, units),
+        causes=causes(few),
+        budget=budget(few, units),
+        rain=rain_on_line(line, flags, units),
+        rain_line=rain_line(line, None if mapped is None else mapped.rain.on_line, units),
         rain_over_map=None if mapped is None else rain_over_map(mapped, units),
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
         sites=sites(crossing),
-        answers=answers(crossing),
-        answers_figure=answers_figure(crossing, units),
-        lee_wind=lee_wind(crossing),
-        inputs=inputs(crossing, bearing, freezing, case_text, units),
-        column=column(crossing, stagnant_top, units),
+        fire=fire_weather(crossing, fire, rules) if fire else None,
+        answers=answers(few),
+        answers_figure=answers_figure(few, units),
+        lee_wind=lee_wind(few),
+        inputs=inputs(line, bearing, freezing, case_text, units),
+        column=column(line, stagnant_top, units),
         findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),
         method=method(),
-        cautions=cautions(crossing, valid_time),
+        cautions=cautions(few, valid_time),
     )
 
 

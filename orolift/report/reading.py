@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.crossing.result import Crossing, LeeAir
+    from orolift.report.quantities import Form
 
     Array = NDArray[np.float64]
 
@@ -37,33 +38,32 @@ class Field:
     ----------
     key, name : str
     kind : str
-    stored : int
-        Decimals (metric) with which the page carries it.
     digits : int
-        Decimals with which it is shown.
+        Decimals with which it is shown, and so carried: rounded once.
     """
 
     key: str
     name: str
     kind: Kind
-    stored: int
     digits: int
 
 
 OF_PLACE = (
-    Field("distance", "Place", "distance", 2, 1),
-    Field("ground", "Ground", "height", 0, -1),
-    Field("rain", "Rain and snow", "rain_rate", 2, 1),
-    Field("near_ground", "Wind near the ground", "wind", 2, 0),
+    Field("distance", "Place", "distance", 1),
+    Field("ground", "Ground", "height", -1),
+    Field("rain", "Rain and snow", "rain_rate", 1),
+    Field("near_ground", "Wind near the ground", "wind", 0),
 )
 OF_AIR = (
-    Field("height", "Height", "height", 0, -1),
-    Field("temperature", "Temperature", "temperature", 2, 1),
-    Field("dew_point", "Dew point", "temperature", 2, 1),
-    Field("humidity", "Humidity", "share", 0, 0),
-    Field("wind", "Wind", "wind", 2, 0),
-    Field("cloud", "Cloud water", "mixing_ratio", 2, 2),
+    Field("height", "Height", "height", -1),
+    Field("temperature", "Temperature", "temperature", 1),
+    Field("dew_point", "Dew point", "temperature", 1),
+    Field("humidity", "Humidity", "share", 0),
+    Field("wind", "Wind", "wind", 0),
+    Field("cloud", "Cloud water", "mixing_ratio", 2),
 )
+ACROSS, UP = Field("across", "", "distance", 3), Field("up", "", "height", 0)
+"""Finer than shown: what the line is drawn by."""
 
 
 @dataclass(frozen=True)
@@ -145,7 +145,7 @@ def reading(crossing: Crossing, units: Units) -> Reading:
     place, air = _of_places(crossing), _of_air(crossing, start)
     site = crossing.lee[0].distance if crossing.lee else crossing.features.crest_distance
     first = int(np.argmin(np.abs(crossing.distance[columns] - site)))
-    ways = tuple(SiteWay(number, one.name, _way_words(one, units)) for number, one in enumerate(crossing.lee, 1))
+    ways = tuple(SiteWay(one.number, one.name, _way_words(one, units)) for one in crossing.lee)
     return Reading(
         of_place=OF_PLACE,
         of_air=OF_AIR,
@@ -155,11 +155,11 @@ def reading(crossing: Crossing, units: Units) -> Reading:
         sites=ways,
         places=_table(place, air, start, units),
         data={
-            "fields": {field.key: _described(field, units) for field in (*OF_PLACE, *OF_AIR)},
+            "fields": {field.key: _described(field, units) for field in (*OF_PLACE, *OF_AIR, ACROSS, UP)},
             "starts": [plain((Amount(float(value), "height", -1),), units) for value in start],
-            "places": {field.key: _whole(place[field.key][columns], field, units) for field in OF_PLACE},
+            "places": _lists({key: values[columns] for key, values in place.items()}, (*OF_PLACE, ACROSS), units),
             "paths": [
-                {field.key: _whole(air[field.key][columns, row], field, units) for field in OF_AIR}
+                _lists({key: values[columns, row] for key, values in air.items()}, (*OF_AIR, UP), units)
                 for row in range(start.size)
             ],
             "ways": {str(way.number): way.words for way in ways},
@@ -171,6 +171,7 @@ def _of_places(crossing: Crossing) -> dict[str, Array]:
     line = crossing.transect
     return {
         "distance": crossing.distance + line.origin,
+        "across": crossing.distance + line.origin,
         "ground": np.interp(crossing.distance, line.distance, line.elevation),
         "rain": crossing.rain.rate + crossing.rain.background,
         "near_ground": near_ground(crossing.height, crossing.wind),
@@ -192,7 +193,12 @@ def _of_air(crossing: Crossing, start: Array) -> dict[str, Array]:
     }
     found = {key: at_numbers(values, number) for key, values in fields.items()}
     humidity = relative_humidity_from_mixing_ratio(found["pressure"], found["temperature"], found["vapour"])
-    return {**found, "humidity": humidity, "dew_point": np.minimum(found["dew_point"], found["temperature"])}
+    return {
+        **found,
+        "up": found["height"],
+        "humidity": humidity,
+        "dew_point": np.minimum(found["dew_point"], found["temperature"]),
+    }
 
 
 def _way_words(site: LeeAir, units: Units) -> str:
@@ -211,20 +217,23 @@ def _way_words(site: LeeAir, units: Units) -> str:
 def _described(field: Field, units: Units) -> dict[str, object]:
     """How the script writes a field."""
     shape = form(field.kind, units)
-    out: dict[str, object] = {
-        "unit": shape.unit,
-        "stored": field.stored + shape.extra_digits,
-        "digits": field.digits + shape.extra_digits,
-    }
-    if shape.beside is not None:
-        out |= {"beside": shape.beside.unit, "factor": shape.beside.factor}
+    out: dict[str, object] = {"unit": shape.unit, "digits": field.digits + shape.extra_digits}
+    return out if shape.beside is None else {**out, "beside": shape.beside.unit}
+
+
+def _lists(values: dict[str, Array], fields: tuple[Field, ...], units: Units) -> dict[str, list[int]]:
+    """Values in shown units as whole numbers of the last decimal shown; a second unit in a list of its own."""
+    out = {}
+    for field in fields:
+        shape = form(field.kind, units)
+        out[field.key] = _whole(values[field.key], shape, field.digits)
+        if shape.beside is not None:
+            out[f"{field.key}_beside"] = _whole(values[field.key], shape.beside, field.digits)
     return out
 
 
-def _whole(values: Array, field: Field, units: Units) -> list[int]:
-    """Values in shown units, as whole numbers of the last stored decimal."""
-    shape = form(field.kind, units)
-    scaled = (values * shape.factor + shape.offset) * 10.0 ** (field.stored + shape.extra_digits)
+def _whole(values: Array, shape: Form, digits: int) -> list[int]:
+    scaled = (values * shape.factor + shape.offset) * 10.0 ** (digits + shape.extra_digits)
     return [int(value) for value in np.round(scaled)]
 
 

@@ -74,7 +74,7 @@ def sites(crossing: Crossing) -> Sites:
     -------
     Sites
     """
-    rows = tuple(_row(air, number, crossing) for number, air in enumerate(crossing.lee, start=1))
+    rows = tuple(_row(air, air.number, crossing) for air in crossing.lee)
     return Sites(heading=_heading(crossing.lee), rows=rows, remarks=_remarks(crossing))
 
 

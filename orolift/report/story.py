@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -12,6 +13,10 @@ if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir, SimpleAir
     from orolift.report.words import Words
 
+MOST_IN_DETAIL = 12
+"""Sites that are taken one by one beyond the table of all (design choice)."""
+MOST_ON_LINE = 24
+"""Sites that the section shows (design choice)."""
 SAME = 0.05
 """Temperatures nearer than this [K] read alike at one decimal."""
 ROUNDING = 10.0
@@ -25,8 +30,24 @@ HARDLY = 0.005
 
 
 def main_site(crossing: Crossing) -> LeeAir:
-    """The site the page leads with: the first in the lee, else the first."""
-    return next((air for air in crossing.lee if air.side == "lee"), crossing.lee[0])
+    """The site the page leads with: the first in the lee of the crossing's own line, else the first on it, else any."""
+    own = [air for air in crossing.lee if air.own is None] or crossing.lee
+    return next((air for air in own if air.side == "lee"), own[0])
+
+
+def line_view(crossing: Crossing) -> Crossing:
+    """The crossing with the sites on its own line only, as the section and what goes with it show them."""
+    on_line = crossing.lee if crossing.on_line is None else crossing.on_line
+    return replace(crossing, lee=on_line[:MOST_ON_LINE])
+
+
+def first_sites(crossing: Crossing) -> Crossing:
+    """The crossing with a dozen sites at most, those that parts of the page take one by one: on its line first."""
+    if len(crossing.lee) <= MOST_IN_DETAIL:
+        return crossing
+    ordered = sorted(crossing.lee, key=lambda air: (air.own is not None, air.side != "lee", air.number))
+    chosen = sorted(ordered[:MOST_IN_DETAIL], key=lambda air: air.number)
+    return replace(crossing, lee=tuple(chosen))
 
 
 def crest_index(crossing: Crossing) -> int:

@@ -159,7 +159,7 @@ def trace(crossing: Crossing) -> Trace:
         "entropy": air.entropy,
     }
     along = {name: gone.along(values) for name, values in fields.items()}
-    number = 0 if site is None else 1 + [air is site for air in crossing.lee].index(True)
+    number = 0 if site is None else site.number
     return Trace(site=site, number=number, source=gone.source, distance=gone.distance, height=gone.height, **along)
 
 

@@ -152,6 +152,28 @@ def moment(time: datetime) -> str:
     return f"{time.day} {_MONTHS[time.month - 1]} {time.year}, {time.hour:02d}:{time.minute:02d} {zone_words(time)}"
 
 
+def day(date: str) -> str:
+    """A date for people.
+
+    Parameters
+    ----------
+    date : str
+        As ISO 8601 writes it.
+
+    Returns
+    -------
+    str
+        Kept on one line by no-break spaces.
+
+    Examples
+    --------
+    >>> day("2026-05-01").replace("\u00a0", " ")
+    '1 May 2026'
+    """
+    year, month, number = date.split("-")
+    return f"{int(number)}\u00a0{_MONTHS[int(month) - 1]}\u00a0{year}"
+
+
 def counted(count: int, one: str, many: str) -> str:
     """A count in words up to ten, with the noun in the right number.
 

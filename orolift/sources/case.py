@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import tomllib
-from typing import TYPE_CHECKING, Any, get_args
+from typing import TYPE_CHECKING, Any, TypeVar, get_args
 
 from pydantic import BaseModel, ValidationError
 
@@ -16,6 +16,8 @@ if TYPE_CHECKING:
     from pathlib import Path
 
     from pydantic_core import ErrorDetails
+
+Model = TypeVar("Model", bound=BaseModel)
 
 
 def read_case(path: str | Path) -> Case:
@@ -55,30 +57,52 @@ def case_from_text(text: str, name: str) -> Case:
         ...
     orolift.errors.CaseError: storm.toml: [incoming] is missing. docs/case.md lists every key.
     """
+    data = toml_data(text, name)
+    if not data:
+        raise CaseError(f"{name}: holds no keys. 'orolift starter DIR' writes a case to edit.")
+    return validated(Case, data, name)
+
+
+def toml_data(text: str, name: str) -> dict[str, Any]:
+    """What stands in TOML text; `name` stands for the file in messages.
+
+    Raises
+    ------
+    CaseError
+        If it is not valid TOML.
+    """
     try:
-        data = tomllib.loads(text)
+        return tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
         raise CaseError(f"{name}: not valid TOML: {error}. Text needs quotes, tables stand in [brackets].") from error
     except RecursionError as error:
         raise CaseError(f"{name}: not valid TOML: nested too deeply.") from error
-    if not data:
-        raise CaseError(f"{name}: holds no keys. 'orolift starter DIR' writes a case to edit.")
+
+
+def validated(root: type[Model], data: dict[str, Any], name: str) -> Model:
+    """Typed tables of TOML data; `name` stands for the file in messages.
+
+    Raises
+    ------
+    CaseError
+        If a key is missing, unknown, of the wrong unit or out of range.
+    """
     given: dict[tuple[str, str], str] = {}
     try:
-        return Case.model_validate(data, context=given)
+        return root.model_validate(data, context=given)
     except ValidationError as error:
         faults = sorted(error.errors(include_url=False), key=lambda fault: fault["type"] != "extra_forbidden")
-        message = _message(faults[0], given)
+        message = _message(faults[0], given, root)
         more = f" ({len(faults) - 1} more to mend after this one.)" if len(faults) > 1 else ""
         raise CaseError(f"{name}: {message}{more}") from error
 
 
-def _message(fault: ErrorDetails, given: dict[tuple[str, str], str]) -> str:
-    """One sentence on one fault, in the words of the case file."""
+def _message(fault: ErrorDetails, given: dict[tuple[str, str], str], root: type[BaseModel]) -> str:
+    """One sentence on one fault, in the words of the file."""
     loc = fault["loc"]
-    model = _model_at(loc[:-1])
+    model = _model_at(loc[:-1], root)
     key = str(loc[-1]) if loc else ""
-    place = _place(loc)
+    place = _place(loc, root)
     kind = fault["type"]
     if kind == "extra_forbidden":
         return f"{place}: {_unknown(key, model)}"
@@ -92,11 +116,11 @@ def _message(fault: ErrorDetails, given: dict[tuple[str, str], str]) -> str:
     return f"{place}{also}: {_wrong_value(fault, model, key)}"
 
 
-def _place(loc: tuple[int | str, ...]) -> str:
+def _place(loc: tuple[int | str, ...], root: type[BaseModel]) -> str:
     """Location as a person would look for it: ``[incoming] station.temperature_c``."""
     if not loc:
         return ""
-    tables = set(Case.model_fields) - {"title", "valid_time"}
+    tables = {key for key, field in root.model_fields.items() if _model_in(field.annotation) is not None}
     first, rest = str(loc[0]), [f"item {part + 1}" if isinstance(part, int) else part for part in loc[1:]]
     head = f"[{first}]" if first in tables else first
     if rest and rest[0].startswith("item "):
@@ -104,9 +128,9 @@ def _place(loc: tuple[int | str, ...]) -> str:
     return " ".join(part for part in (head, ".".join(rest).replace(".item", ", item")) if part)
 
 
-def _model_at(loc: tuple[int | str, ...]) -> type[BaseModel] | None:
+def _model_at(loc: tuple[int | str, ...], root: type[BaseModel]) -> type[BaseModel] | None:
     """Table class that the keys at a location belong to."""
-    model: type[BaseModel] | None = Case
+    model: type[BaseModel] | None = root
     for part in loc:
         if isinstance(part, int):
             continue
@@ -159,6 +183,7 @@ def _wrong_value(fault: ErrorDetails, model: type[BaseModel] | None, key: str) -
         "bool_type": "true or false is needed",
         "list_type": "a list in [brackets] is needed",
         "model_type": "a table is needed, { key = value }",
+        "date_type": "a date is needed, for example 2026-05-01 without quotes",
         "datetime_type": "a date and time is needed, for example 2026-11-03T12:00:00Z without quotes",
         "string_too_short": "the text is empty",
         "string_too_long": "the text is longer than 200 characters",

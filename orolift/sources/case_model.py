@@ -23,12 +23,14 @@ from orolift.sources.case_table import (
     exactly_one,
     together,
 )
+from orolift.sources.fire_model import Fire
 from orolift.sources.incoming_model import Incoming, Station
 from orolift.sources.rain_model import Catchments, GaugesTable, Rain, keys_of_a_map
 from orolift.sources.units import UNITS
 
 __all__ = [
     "Case",
+    "Fire",
     "FlowTable",
     "HeatTable",
     "Incoming",
@@ -178,6 +180,8 @@ class Case(Table):
     heat: HeatTable = HeatTable()
     catchments: Catchments | None = None
     gauges: GaugesTable | None = None
+    fire: Fire | None = None
+    sites_file: Name | None = Field(default=None, description="more sites: CSV, or GeoJSON points with a raster")
     site: list[SiteTable] = Field(default_factory=list)
 
     @field_validator("valid_time")

@@ -11,9 +11,10 @@ import numpy as np
 from orolift.air.ground_layer import ground_layer
 from orolift.air.wind_layer import barrier_wind
 from orolift.crossing.pool import Lee
-from orolift.crossing.result import Site, When
+from orolift.crossing.result import When
 from orolift.errors import OroliftError
 from orolift.sources.inputs import read_inputs, situation_of
+from orolift.sources.own_lines import own_lines, sites_of
 from orolift.sources.series import read_series
 from orolift.sources.series_air import reading_of_row, refuse_unfit
 from orolift.spread.hours import HourTask, MapGround, OneLine
@@ -27,6 +28,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
+    from orolift.crossing.result import Site
     from orolift.crossing.situation import Situation
     from orolift.sources.incoming import IncomingReading
     from orolift.sources.inputs import Inputs
@@ -100,13 +102,13 @@ def read_hours(case: str | Path, series: str | Path) -> HourSetup:
     notes = refuse_unfit(inputs, rows)
     situation = replace(situation_of(inputs), ends_too=False)
     shape = features(inputs.transect, inputs.sites[0].distance if inputs.sites else None)
-    sites = inputs.sites or (Site("Lee foot", shape.lee_foot_distance),)
+    sites = sites_of(inputs)
     own_line, places, observed = None, np.empty((0, 2)), None
     if inputs.case.terrain.elevation_file is not None:
-        from orolift.sources.own_lines import own_lines
-
         own_line, places, observed = own_lines(inputs, sites)
         notes += ("Every site has a line of its own, along the wind of each hour, cut at multiples of 5 degrees.",)
+    if inputs.fire.previous_code is None:
+        notes += ("The Fine Fuel Moisture Code starts from 85: [fire] gives no previous_fine_fuel_code.",)
     setup = HourSetup(
         inputs=inputs,
         series=rows,
@@ -188,7 +190,7 @@ def hour_task(setup: HourSetup, row: int) -> HourTask:
             tuple(range(len(setup.sites))),
             _distance_on_ridge(setup, reading),
         )
-        return HourTask(row, time, states, (line,), setup.ground)
+        return HourTask(row, time, states, (line,), setup.ground, setup.inputs.fire)
     return _over_map(setup, incoming, row)
 
 
@@ -208,7 +210,7 @@ def _over_map(setup: HourSetup, incoming: IncomingAir, row: int) -> HourTask:
         state, line = _line_of_site(setup, incoming, row, number, bearing)
         states.append(state)
         lines += [] if line is None else [line]
-    return HourTask(row, time, tuple(states), tuple(lines), setup.ground)
+    return HourTask(row, time, tuple(states), tuple(lines), setup.ground, setup.inputs.fire)
 
 
 def _line_of_site(

@@ -11,7 +11,7 @@ import numpy as np
 from orolift.crossing.result import Site, When
 from orolift.errors import CaseError
 from orolift.sources.case_model import TransectTable
-from orolift.sources.inputs import Inputs, situation_of
+from orolift.sources.inputs import situation_of
 from orolift.sources.raster_range import ALONG, range_around
 from orolift.terrain.features import features
 from orolift.terrain.grid import grid_elevation
@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 
     from orolift.crossing.situation import Situation
     from orolift.sources.elevation_map import ElevationMap
+    from orolift.sources.inputs import Inputs
     from orolift.terrain.transect import Transect
 
     Array = NDArray[np.float64]
@@ -106,9 +107,7 @@ def read_lines(inputs: Inputs, *, beside: float = 0.0) -> Lines:
     """
     case, transect = inputs.case, inputs.transect
     if case.terrain.elevation_file is None or transect.longitude is None or transect.latitude is None:
-        raise CaseError(
-            f"{inputs.path}: other lines need elevation_file; a hand-entered ridge is the only line it has."
-        )
+        raise CaseError(f"{inputs.path}: other lines need elevation_file; a ridge by hand is the only line it has.")
     from orolift.sources.elevation_map import read_elevation_map
 
     table = case.transect or TransectTable()

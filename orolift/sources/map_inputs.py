@@ -20,9 +20,10 @@ if TYPE_CHECKING:
 
     from orolift.rain.gauges import Gauges
     from orolift.rain.over_map import MapRain
-    from orolift.sources.case_model import Case, SiteTable
+    from orolift.sources.case_model import Case
     from orolift.sources.elevation_map import ElevationMap
     from orolift.sources.inputs import Inputs
+    from orolift.sources.site_places import SitePlace
     from orolift.terrain.transect import Transect
 
     Array = NDArray[np.float64]
@@ -103,14 +104,14 @@ def read_map_inputs(inputs: Inputs, most_cells: int = MOST_CELLS) -> MapInputs:
         One message that names the case file and the key, file or feature at fault.
     """
     try:
-        return _read(inputs.case, inputs.transect, inputs.path.parent, most_cells)
+        return _read(inputs.case, inputs.transect, inputs.places, inputs.path.parent, most_cells)
     except OroliftError as error:
         if isinstance(error, TerrainError):
             raise TerrainError(f"{inputs.path}: {error}") from error
         raise CaseError(f"{inputs.path}: {error}") from error
 
 
-def _read(case: Case, transect: Transect, folder: Path, most_cells: int) -> MapInputs:
+def _read(case: Case, transect: Transect, places: tuple[SitePlace, ...], folder: Path, most_cells: int) -> MapInputs:
     from orolift.sources.elevation_map import read_elevation_map
 
     if transect.longitude is None or transect.latitude is None:
@@ -130,7 +131,7 @@ def _read(case: Case, transect: Transect, folder: Path, most_cells: int) -> MapI
     return MapInputs(
         placed=placed,
         line=_line(transect.longitude, transect.latitude, placed, width),
-        sites=tuple(place_on_map(site, placed) for site in case.site),
+        sites=_sites(places, placed),
         catchments=catchments,
         divide=_divide(case, placed, folder),
         gauges=_gauges(case, placed, folder),
@@ -147,15 +148,18 @@ def _line(longitude: Array, latitude: Array, placed: ElevationMap, width: float)
     return MapLine(np.asarray(x, dtype=np.float64), np.asarray(y, dtype=np.float64), width)
 
 
-def place_on_map(site: SiteTable, placed: ElevationMap) -> tuple[float, float]:
-    """Place of a site on a map [m]."""
+def _sites(places: tuple[SitePlace, ...], placed: ElevationMap) -> tuple[tuple[float, float], ...]:
+    if not places:
+        return ()
     from rasterio.warp import transform
 
-    if site.longitude is not None:
-        x, y = transform(_LONGITUDE_LATITUDE, placed.crs, [site.longitude], [site.latitude])
-    else:
-        x, y = transform(placed.source_crs, placed.crs, [site.easting_m], [site.northing_m])
-    return float(x[0]), float(y[0])
+    x, y = transform(
+        _LONGITUDE_LATITUDE,
+        placed.crs,
+        [place.longitude for place in places],
+        [place.latitude for place in places],
+    )
+    return tuple((float(a), float(b)) for a, b in zip(x, y, strict=True))
 
 
 def _catchments(case: Case, placed: ElevationMap, folder: Path) -> tuple[tuple[Catchment, ...], tuple[str, ...]]:

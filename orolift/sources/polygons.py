@@ -2,28 +2,23 @@
 
 from __future__ import annotations
 
-import json
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from orolift.errors import DataFileError
-from orolift.sources.files import read_text
+from orolift.sources.geojson import AREAS, features_of, geojson_document, shape_of, source_crs
 
 if TYPE_CHECKING:
-    from collections.abc import Iterator
     from pathlib import Path
 
     from numpy.typing import NDArray
 
     Array = NDArray[np.float64]
 
-MOST_VERTICES = 2_000_000  # of a file: more need gigabytes and minutes
 LONGEST_EDGE = 0.02  # degrees, 2 km: an edge straight in degrees bends by less than 1 m in metres
-_AREAS = {"Polygon", "MultiPolygon"}
 _LINES = {"LineString", "MultiLineString"}
-_LONGITUDE_LATITUDE = "OGC:CRS84"
 _KNOWN_NAMES = 8  # properties listed in a message
 
 
@@ -87,15 +82,15 @@ def read_polygons(
     An invalid polygon (crossing itself) is repaired by shapely's make_valid, with a note. Features
     that are no areas are left out, with a note.
     """
-    document, name = _document(path, where, folder)
-    source = _source_crs(document, name)
+    document, name = geojson_document(path, where, folder)
+    source = source_crs(document, name)
     found: list[NamedPolygon] = []
     skipped: list[int] = []
     used: dict[str, int] = {}
-    for number, feature in enumerate(_features(document, name), start=1):
+    for number, feature in enumerate(features_of(document, name), start=1):
         place = f"{name}: feature {number}"
-        shape = _shape(feature, place)
-        if shape is None or shape.geom_type not in _AREAS:
+        shape = shape_of(feature, place)
+        if shape is None or shape.geom_type not in AREAS:
             skipped.append(number)
             continue
         label = _label(feature, name_field, number, place)
@@ -135,90 +130,18 @@ def read_lines(
     """
     import shapely
 
-    document, name = _document(path, where, folder)
-    source = _source_crs(document, name)
+    document, name = geojson_document(path, where, folder)
+    source = source_crs(document, name)
     lines = []
-    for number, feature in enumerate(_features(document, name), start=1):
+    for number, feature in enumerate(features_of(document, name), start=1):
         place = f"{name}: feature {number}"
-        shape = _shape(feature, place)
+        shape = shape_of(feature, place)
         if shape is not None and shape.geom_type in _LINES:
             parts = shapely.get_parts(_projected(shape, source, crs, place))
             lines += [shapely.get_coordinates(part) for part in parts]
     if not lines:
         raise DataFileError(f"{name} holds no line. A divide is a feature of type LineString or MultiLineString.")
     return tuple(lines)
-
-
-def _document(path: str | Path, where: str, folder: Path | None) -> tuple[dict[str, Any], str]:
-    """The GeoJSON object of a file, and the start of every message about it."""
-    name = f"{where}: {path}"
-    text = read_text(path, where, folder)
-    try:
-        document = json.loads(text)
-    except json.JSONDecodeError as error:
-        raise DataFileError(
-            f"{name}: line {error.lineno}: not JSON ({error.msg}). Export the areas or lines as GeoJSON."
-        ) from error
-    except RecursionError as error:
-        raise DataFileError(f"{name} is nested too deeply to be GeoJSON.") from error
-    if not isinstance(document, dict) or not isinstance(document.get("type"), str):
-        raise DataFileError(f"{name} is JSON, but no GeoJSON: it has no type. Export the areas or lines as GeoJSON.")
-    return document, name
-
-
-def _features(document: dict[str, Any], name: str) -> Iterator[dict[str, Any]]:
-    """Features of a document; a bare geometry counts as one."""
-    kind = document["type"]
-    if kind == "FeatureCollection":
-        features = document.get("features")
-        if not isinstance(features, list) or not all(isinstance(feature, dict) for feature in features):
-            raise DataFileError(f"{name}: its features are no list of objects; it is damaged.")
-        yield from features
-    elif kind == "Feature":
-        yield document
-    else:
-        yield {"type": "Feature", "properties": {}, "geometry": document}
-
-
-def _shape(feature: dict[str, Any], place: str) -> Any:
-    """Geometry of a feature; None where it has none."""
-    import shapely
-
-    geometry = feature.get("geometry")
-    if geometry is None:
-        return None
-    try:
-        shape = shapely.force_2d(shapely.from_geojson(json.dumps(geometry)))
-    except (shapely.errors.GEOSException, ValueError, TypeError, RecursionError) as error:
-        raise DataFileError(f"{place}: its geometry is damaged ({str(error)[:100]}).") from error
-    coordinates = shapely.get_coordinates(shape)
-    if coordinates.shape[0] > MOST_VERTICES:
-        raise DataFileError(
-            f"{place}: has {coordinates.shape[0]} vertices, at most {MOST_VERTICES}. Simplify it first."
-        )
-    if not np.isfinite(coordinates).all():
-        raise DataFileError(f"{place}: a coordinate is not a finite number.")
-    if shape.geom_type == "GeometryCollection":
-        areas = [part for part in shapely.get_parts(shape) if part.geom_type in _AREAS]
-        return shapely.union_all(areas) if areas else None
-    return None if shape.is_empty else shape
-
-
-def _source_crs(document: dict[str, Any], name: str) -> Any:
-    """Coordinate system of a document: the one its ``crs`` member names, else longitude and latitude."""
-    from rasterio.crs import CRS
-    from rasterio.errors import CRSError
-
-    member = document.get("crs")
-    if member is None:
-        return CRS.from_string(_LONGITUDE_LATITUDE)
-    try:
-        return CRS.from_user_input(str(member["properties"]["name"]))
-    except (CRSError, KeyError, TypeError) as error:
-        raise DataFileError(
-            f"{name}: its coordinate system {json.dumps(member)[:80]} is not known. Export it in longitude and "
-            "latitude."
-        ) from error
 
 
 def _projected(shape: Any, source: Any, crs: Any, place: str) -> Any:
@@ -269,7 +192,7 @@ def _repaired(polygon: Any, label: str, place: str) -> tuple[Any, tuple[str, ...
         parts = shapely.get_parts(shapely.make_valid(polygon))
     except shapely.errors.GEOSException:  # all its points are one
         parts = []
-    areas = [part for part in parts if part.geom_type in _AREAS]
+    areas = [part for part in parts if part.geom_type in AREAS]
     mended = shapely.union_all(areas) if areas else shapely.Polygon()
     if mended.is_empty or mended.area <= 0.0:
         raise DataFileError(f"{place}: '{label}' has no area.")

@@ -28,6 +28,10 @@ if TYPE_CHECKING:
     from orolift.terrain.transect import Transect
 
 
+SQUARE = 256
+"""Sites in one square of so many cells a side are read together; about a block of a tiled raster."""
+
+
 @dataclass(frozen=True)
 class MapPoint:
     """A point on the map.
@@ -119,8 +123,7 @@ def site_positions(
         bearing = np.arctan2(east[1] - east[0], north[1] - north[0])
         east, north = map_positions(raster, x, y, LONGITUDE_LATITUDE, local)
         row, column = cell_positions(raster, *map_positions(raster, x, y, LONGITUDE_LATITUDE, raster.dataset.crs))
-        # one window a site: sites may lie far apart
-        ground = np.array([sampled(raster, r[None], c[None], 1)[0] for r, c in zip(row, column, strict=True)])
+        ground = _ground_at(raster, row, column)
     return SitePositions(
         distance=transect.distance[middle] + east * np.sin(bearing) + north * np.cos(bearing),
         offset=east * np.cos(bearing) - north * np.sin(bearing),
@@ -128,6 +131,17 @@ def site_positions(
         longitude=x,
         latitude=y,
     )
+
+
+def _ground_at(raster: RasterFile, row: NDArray[np.float64], column: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Ground at points that may lie far apart: a window for all that lie in one square of cells."""
+    ground = np.full(row.shape, np.nan)
+    square = np.stack([np.floor(np.nan_to_num(v, nan=-1.0) / SQUARE) for v in (row, column)])
+    _, group = np.unique(square, axis=1, return_inverse=True)
+    for number in range(int(group.max()) + 1):
+        here = group == number
+        ground[here] = sampled(raster, row[here], column[here], 1)
+    return ground
 
 
 def local_system(longitude: float, latitude: float) -> str:

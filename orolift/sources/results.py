@@ -13,6 +13,7 @@ from orolift import __version__
 from orolift.air.column import column_vapour, freezing_level
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.constants import MELTING_POINT
+from orolift.sources.fire_results import FireBlock, fire_blocks
 from orolift.sources.rain_results import (
     CatchmentBlock,
     GaugesBlock,
@@ -25,9 +26,13 @@ from orolift.sources.result_block import Block, Range
 from orolift.sources.units import UNITS
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     from orolift.crossing.result import Crossing, LeeAir
+    from orolift.fire.sites import SiteFire
     from orolift.sources.case_model import Case
     from orolift.sources.map_inputs import Mapped
+    from orolift.sources.site_places import SitePlace
 
 SCHEMA_VERSION = "1"
 LIBRARIES = ("numpy", "scipy", "rasterio", "shapely", "jinja2", "contourpy", "pydantic", "click", "metar")
@@ -131,8 +136,16 @@ class LeeBlock(Block):
     """The air at one site."""
 
     name: str
-    side: Literal["windward", "crest", "lee"]
-    distance_km: float
+    number: int = Field(description="of the site in the case, from 1")
+    longitude: float | None = Field(description="degrees east; null without a raster")
+    latitude: float | None = Field(description="degrees north; null without a raster")
+    side: Literal["windward", "crest", "lee"] = Field(description="of the crest of its own line")
+    distance_km: float = Field(description="along the line of the case, abreast of the site")
+    offset_km: float | None = Field(description="across it, positive to the right of the wind; null without a raster")
+    own_line: bool = Field(description="whether the site has a line of its own, parallel to that of the case")
+    crest_m: float = Field(description="of its line, above sea level")
+    beyond_crest_km: float = Field(description="distance downwind of that crest")
+    blocked_top_m: float = Field(description="on its line, above sea level")
     elevation_m: float
     temperature_c: float
     dew_point_c: float
@@ -150,6 +163,14 @@ class LeeBlock(Block):
     range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
 
 
+class FailedSiteBlock(Block):
+    """A site that could not be worked out."""
+
+    number: int = Field(description="of the site in the case, from 1")
+    name: str
+    reason: str
+
+
 class Results(Block):
     """The whole results file."""
 
@@ -161,9 +182,10 @@ class Results(Block):
     flow: FlowBlock
     rain: RainBlock
     lee: list[LeeBlock]
+    failed_sites: list[FailedSiteBlock] = Field(description="sites of which nothing could be worked out, and why")
     catchments: list[CatchmentBlock]
     gauges: GaugesBlock | None = Field(description="map against gauges; null without gauges")
-    fire: list[dict[str, float]] = Field(description="indices by site; empty until worked out")
+    fire: list[FireBlock] = Field(description="fire weather by site")
     flags: list[str]
     cautions: list[str]
     notes: list[str] = Field(description="assumptions made, in sentences")
@@ -174,7 +196,14 @@ def celsius(kelvin: float) -> float:
     return float(kelvin) - UNITS["c"].offset
 
 
-def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, flags: tuple[str, ...] = ()) -> Results:
+def results_of(
+    crossing: Crossing,
+    case: Case,
+    mapped: Mapped | None = None,
+    flags: tuple[str, ...] = (),
+    fire: tuple[SiteFire, ...] = (),
+    places: Sequence[SitePlace] = (),
+) -> Results:
     """Results of a crossing, unrounded.
 
     Parameters
@@ -185,6 +214,10 @@ def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, fla
         Rain over the map.
     flags : tuple of str
         Danger thresholds reached, in sentences.
+    fire : tuple of SiteFire
+        Fire weather at the sites.
+    places : sequence of SitePlace
+        Of all sites of the case, for their positions.
 
     Returns
     -------
@@ -198,10 +231,11 @@ def results_of(crossing: Crossing, case: Case, mapped: Mapped | None = None, fla
         terrain=_terrain(crossing),
         flow=_flow(crossing),
         rain=_rain(crossing, mapped),
-        lee=[_lee(site, crossing) for site in crossing.lee],
+        lee=[_lee(site, crossing, places) for site in crossing.lee],
+        failed_sites=[FailedSiteBlock(**asdict(site)) for site in crossing.failed],
         catchments=[] if mapped is None else catchment_blocks(mapped.rain),
         gauges=None if mapped is None else gauges_block(mapped.rain),
-        fire=[],
+        fire=fire_blocks(fire),
         flags=[*flags],
         cautions=[*crossing.cautions],
         notes=[*crossing.notes],
@@ -257,7 +291,7 @@ def _terrain(crossing: Crossing) -> TerrainBlock:
 
 def _flow(crossing: Crossing) -> FlowBlock:
     flow = crossing.flow
-    first = crossing.lee[0]
+    first = (crossing.on_line or crossing.lee)[0]
     return FlowBlock(
         nondimensional_height=flow.nondimensional_height,
         regime=flow.regime,
@@ -290,16 +324,27 @@ def _rain(crossing: Crossing, mapped: Mapped | None) -> RainBlock:
     )
 
 
-def _lee(site: LeeAir, crossing: Crossing) -> LeeBlock:
+def _lee(site: LeeAir, crossing: Crossing, places: Sequence[SitePlace]) -> LeeBlock:
     wind, parts, profile = site.wind, site.parts, site.profile
     low, high = site.source_level_low, site.source_level_high
     ranges: Range = {}
     if wind is not None:
         ranges = {"wind_ms": (wind.low, wind.high), "gust_ms": (wind.gust_low, wind.gust_high)}
+    own, shape = site.own, crossing.features
+    place = places[site.number - 1] if 0 < site.number <= len(places) else None
+    offset = None if place is None else place.offset
     return LeeBlock(
         name=site.name,
+        number=site.number,
+        longitude=None if place is None else place.longitude,
+        latitude=None if place is None else place.latitude,
         side=site.side,
         distance_km=(site.distance + crossing.transect.origin) / 1000.0,
+        offset_km=None if offset is None else offset / 1000.0,
+        own_line=own is not None,
+        crest_m=shape.crest if own is None else own.crest,
+        beyond_crest_km=(site.distance - shape.crest_distance if own is None else own.beyond_crest) / 1000.0,
+        blocked_top_m=crossing.flow.blocked_top if own is None else own.blocked_top,
         elevation_m=site.elevation,
         temperature_c=celsius(site.temperature),
         dew_point_c=celsius(site.dew_point),
@@ -320,36 +365,3 @@ def _lee(site: LeeAir, crossing: Crossing) -> LeeBlock:
         ),
         range=ranges,
     )
-
-
-TABLE_COLUMNS = (
-    "name",
-    "side",
-    "distance_km",
-    "elevation_m",
-    "temperature_c",
-    "dew_point_c",
-    "relative_humidity_percent",
-    "wind_ms",
-    "wind_10m_ms",
-    "gust_ms",
-    "source_level_m",
-    "warming_c",
-    "popular_picture_c",
-    "descent_only_c",
-)
-
-
-def site_rows(results: Results) -> tuple[list[str], list[list[object]]]:
-    """Header and one row a site for the CSV table, unrounded.
-
-    Parameters
-    ----------
-    results : Results
-
-    Returns
-    -------
-    header : list of str
-    rows : list of lists
-    """
-    return list(TABLE_COLUMNS), [[getattr(site, key) for key in TABLE_COLUMNS] for site in results.lee]

@@ -1,6 +1,6 @@
-"""JSON Schemas of the case file and the results file, made from their models.
+"""JSON Schemas of the case file, the rule file and the results file, made from their models.
 
-Run ``python -m orolift.sources.schemas docs`` to write both into a folder.
+Run ``python -m orolift.sources.schemas docs`` to write them into a folder.
 """
 
 from __future__ import annotations
@@ -15,10 +15,11 @@ from orolift.errors import CaseError
 from orolift.sources.case_model import Case
 from orolift.sources.files import write_all
 from orolift.sources.results import SCHEMA_VERSION, Results
+from orolift.sources.rules_file import RulesFile
 from orolift.sources.units import alternatives, converted, suffix_of
 
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
-CASE_FILE, RESULTS_FILE = "case.schema.json", "results.schema.json"
+CASE_FILE, RESULTS_FILE, RULES_FILE = "case.schema.json", "results.schema.json", "rules.schema.json"
 LIMIT_DIGITS = 6
 """Decimals of a limit converted to another unit: finer than anybody writes, coarser than rounding of the factors."""
 UNIT_WORDS = {
@@ -74,6 +75,24 @@ def case_schema() -> Schema:
     return {"$schema": DIALECT, **schema, "title": "orolift case file"}
 
 
+def rules_schema() -> Schema:
+    """JSON Schema of a rule file, every limit of a wind in every unit it may be given in.
+
+    Returns
+    -------
+    dict
+
+    Examples
+    --------
+    >>> sorted(key for key in rules_schema()["$defs"]["RuleCondition"]["properties"] if key.startswith("height"))
+    ['height_ft', 'height_m']
+    """
+    schema = _plain(RulesFile.model_json_schema())
+    for table in schema["$defs"].values():
+        _add_other_units(table)
+    return {"$schema": DIALECT, **schema, "title": "orolift rule file"}
+
+
 def results_schema() -> Schema:
     """JSON Schema of a results file: every key is there, null where nothing was worked out.
 
@@ -100,7 +119,7 @@ def schema_texts() -> dict[str, str]:
     -------
     dict of str to str
     """
-    schemas = {CASE_FILE: case_schema(), RESULTS_FILE: results_schema()}
+    schemas = {CASE_FILE: case_schema(), RESULTS_FILE: results_schema(), RULES_FILE: rules_schema()}
     return {name: json.dumps(schema, indent=2, ensure_ascii=False) + "\n" for name, schema in schemas.items()}
 
 
@@ -155,7 +174,7 @@ def _in_unit(field: Schema, key: str, name: str) -> Schema:
 
 
 def main(arguments: list[str]) -> None:
-    """Write both schemas into the folder named by the one argument."""
+    """Write the schemas into the folder named by the one argument."""
     if len(arguments) != 1:
         raise CaseError("name the folder to write the schemas into: python -m orolift.sources.schemas docs")
     folder = Path(arguments[0])

@@ -7,14 +7,12 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from orolift.sources.raster_places import MapPoint, site_positions
+from orolift.sources.site_table import flat_failed, flat_site
 
 if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
-    from orolift.sources.results import LeeBlock, Results
+    from orolift.sources.results import Results
 
-NOT_A_VALUE = {"profile", "range", "warming_parts_c", "source_level_range_m"}
-"""Parts of a block that are no single number; those with names are flattened."""
 DIGITS = 7
 """Decimals of degrees: a centimetre."""
 
@@ -32,56 +30,35 @@ def sites_geojson(inputs: Inputs, results: Results) -> str:
     -------
     str
         GeoJSON in longitude and latitude (RFC 7946). Properties are the keys of `lee` in the results file; parts of
-        the warming and ends of ranges have names of their own.
+        the warming and ends of ranges have names of their own. A site that could not be worked out has its reason.
     """
-    places = zip(*_degrees(inputs, results), results.lee, strict=True)
+    found = {site.number: flat_site(site) for site in results.lee}
+    found |= {site.number: flat_failed(site) for site in results.failed_sites}
     features = [
         {
             "type": "Feature",
-            "geometry": {"type": "Point", "coordinates": [_wrapped(longitude), round(float(latitude), DIGITS)]},
-            "properties": _properties(site),
+            "geometry": {"type": "Point", "coordinates": _degrees(inputs, number, values)},
+            "properties": {key: value for key, value in values.items() if key not in {"longitude", "latitude"}},
         }
-        for longitude, latitude, site in places
+        for number, values in sorted(found.items())
     ]
     return json.dumps({"type": "FeatureCollection", "features": features}, indent=1, ensure_ascii=False) + "\n"
 
 
-def _degrees(inputs: Inputs, results: Results) -> tuple[Any, Any]:
-    """Longitude and latitude of the sites; of the lee foot, where the case names none."""
-    case, line = inputs.case, inputs.transect
-    if case.site:
-        points = [
-            MapPoint(float(site.longitude), float(site.latitude or 0.0))
-            if site.longitude is not None
-            else MapPoint(float(site.easting_m or 0.0), float(site.northing_m or 0.0), projected=True)
-            for site in case.site
-        ]
-        found = site_positions(
-            str(case.terrain.elevation_file),
-            line,
-            points,
-            unit=case.terrain.elevation_unit,
-            folder=inputs.path.parent,
-            where="[terrain] elevation_file",
+def _degrees(inputs: Inputs, number: int, values: dict[str, Any]) -> list[float]:
+    """Longitude and latitude of a site; of the lee foot, where the case names none."""
+    line = inputs.transect
+    if 0 < number <= len(inputs.places):
+        place = inputs.places[number - 1]
+        longitude, latitude = place.longitude, place.latitude
+    else:
+        distance = values["distance_km"] * 1000.0 - line.origin
+        longitude, latitude = (
+            float(np.interp(distance, line.distance, np.asarray(v))) for v in (line.longitude, line.latitude)
         )
-        return found.longitude, found.latitude
-    distance = np.array([site.distance_km for site in results.lee]) * 1000.0 - line.origin
-    return tuple(np.interp(distance, line.distance, np.asarray(v)) for v in (line.longitude, line.latitude))
+    return [_wrapped(float(longitude or 0.0)), round(float(latitude or 0.0), DIGITS)]
 
 
 def _wrapped(longitude: float) -> float:
     """Longitude from -180 to 180."""
-    return round((float(longitude) + 180.0) % 360.0 - 180.0, DIGITS)
-
-
-def _properties(site: LeeBlock) -> dict[str, Any]:
-    values = site.model_dump()
-    flat = {key: value for key, value in values.items() if key not in NOT_A_VALUE}
-    for part, value in (values["warming_parts_c"] or {}).items():
-        flat[f"warming_by_{part}_c"] = value
-    spans = dict(values["range"])
-    if values["source_level_range_m"] is not None:
-        spans["source_level_m"] = values["source_level_range_m"]
-    for key, (low, high) in spans.items():
-        flat[f"{key}_low"], flat[f"{key}_high"] = low, high
-    return flat
+    return round((longitude + 180.0) % 360.0 - 180.0, DIGITS)

@@ -6,11 +6,9 @@ import math
 from typing import TYPE_CHECKING
 
 from orolift.air.wind_layer import barrier_wind, turning_note
-from orolift.crossing.result import Site
 from orolift.errors import IncomingAirError
 from orolift.sources.representative import representative_findings
 from orolift.terrain.features import features
-from orolift.terrain.transect import Transect
 
 if TYPE_CHECKING:
     from collections.abc import Callable
@@ -21,9 +19,8 @@ if TYPE_CHECKING:
     from orolift.sources.incoming import IncomingReading, Observation
     from orolift.sources.quality import Finding
     from orolift.terrain.features import Features
+    from orolift.terrain.transect import Transect
 
-Line = tuple[Transect, tuple[Site, ...], tuple[float | None, ...]]
-"""A transect, its sites and their distances across it."""
 FIRST_CREST = 2500.0
 """Depth above the ground of the column [m] whose mean wind begins the search for the line (a guess)."""
 SETTLED = math.radians(1.0)
@@ -32,8 +29,8 @@ MOST_CUTS = 4
 
 
 def line_along_wind(
-    reading: IncomingReading, line: Callable[[float], Line], wind_from_deg: float | None
-) -> tuple[float, Line]:
+    reading: IncomingReading, line: Callable[[float], Transect], wind_from_deg: float | None
+) -> tuple[float, Transect]:
     """Direction the line is drawn from, and the line.
 
     Parameters
@@ -49,7 +46,7 @@ def line_along_wind(
     Returns
     -------
     wind_from : float [rad]
-    line : Line
+    line : Transect
     """
     if wind_from_deg is not None:
         return math.radians(wind_from_deg), line(math.radians(wind_from_deg))
@@ -58,7 +55,7 @@ def line_along_wind(
     wind_from = float(barrier_wind(first, ground, ground + FIRST_CREST).from_direction)
     found = line(wind_from)
     for _ in range(MOST_CUTS):
-        shape = features(found[0])
+        shape = features(found)
         new = float(barrier_wind(reading.column(shape.crest), shape.base, shape.crest).from_direction)
         turned = (new - wind_from + math.pi) % (2.0 * math.pi) - math.pi
         if abs(turned) < SETTLED:

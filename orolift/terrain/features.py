@@ -14,6 +14,9 @@ from orolift.terrain.transect import MINIMUM_RELIEF, Transect, transect_elevatio
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+FOOTHILL = 0.1
+"""A site is in the lee of what stands before it when that overtops it by this share of the climb to come; a judgement.
+A hillock before a range does not make a windward valley a lee."""
 EQUALLY_LOW = 1.0  # [m] ground this near to the lowest counts as equally low: a judgement, the rounding of most rasters
 
 
@@ -64,8 +67,8 @@ def features(transect: Transect, site_distance: float | None = None) -> Features
     Notes
     -----
     Crest: the highest point between the upwind end and the site, the first
-    of several; without a site, of the whole line. A site less than 30 m below
-    the highest point before it, with higher ground to come, is still on the
+    of several; without a site, of the whole line. A site less than 30 m, or a tenth of the climb to the highest
+    ground to come, below the highest point before it is still on the
     way up: then too the crest of the whole line is taken.
 
     Base and lee foot: the lowest ground upwind and downwind of the crest,
@@ -117,7 +120,8 @@ def _crest_index(transect: Transect, site_distance: float | None) -> int:
     hint = "The site lies beyond the ends of the transect: lengthen the transect or leave the site out."
     site = float(within("site_distance", site_distance, float(x[0]), float(x[-1]), "m", hint))
     before = int(np.argmax(h[: int(np.searchsorted(x, site, side="right"))]))
-    still_rising = float(transect_elevation(transect, site)) > h[before] - MINIMUM_RELIEF
+    own = float(transect_elevation(transect, site))
+    still_rising = own > h[before] - max(MINIMUM_RELIEF, FOOTHILL * (float(h[highest]) - own))
     return highest if still_rising else before
 
 

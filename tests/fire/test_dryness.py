@@ -93,7 +93,7 @@ def test_members_come_first():
 @pytest.mark.parametrize(
     ("call", "message"),
     [
-        (lambda: vapour_pressure_deficit(25.0, 0.3), "temperature: 1 of 1 values lie outside 213.15 to 333.15 K"),
+        (lambda: vapour_pressure_deficit(25.0, 0.3), "temperature: 1 of 1 values lie outside 173.15 to 338.15 K"),
         (lambda: vapour_pressure_deficit(298.0, 30.0), "relative_humidity: .* outside 0 to 1 .*divide per cent by 100"),
         (lambda: angstroem_index(np.nan, 0.3), "temperature: 1 of 1"),
         (lambda: hot_dry_windy([10.0], [300.0], [0.3], [-1.0]), "wind: .* never negative"),

@@ -18,6 +18,8 @@ from orolift.sources.case_model import (
     Terrain,
     TransectTable,
 )
+from orolift.sources.fire_model import Fire
+from orolift.sources.fire_results import ConditionBlock, FireBlock, MoverBlock, NightBlock, RuleBlock
 from orolift.sources.incoming_model import LadderRung, MetarTable, ModelAt, SoundingAt
 from orolift.sources.rain_model import Catchments, GaugesTable, Rain
 from orolift.sources.rain_results import (
@@ -44,7 +46,8 @@ from orolift.sources.results import (
     TerrainBlock,
     WarmingParts,
 )
-from orolift.sources.schemas import case_schema, results_schema
+from orolift.sources.rules_file import QUANTITY_KEYS, RuleCondition, RulesFile, RuleTable
+from orolift.sources.schemas import case_schema, results_schema, rules_schema
 from orolift.sources.units import alternatives
 
 DOCS = Path(__file__).resolve().parents[2] / "docs"
@@ -63,6 +66,7 @@ CASE_TABLES = {
     "[rain]": Rain,
     "[catchments]": Catchments,
     "[gauges]": GaugesTable,
+    "[fire]": Fire,
     "[lee]": LeeTable,
     "[heat]": HeatTable,
     "[[site]]": SiteTable,
@@ -83,12 +87,18 @@ RESULTS_TABLES = {
     "lee": LeeBlock,
     "warming_parts_c": WarmingParts,
     "profile": Profile,
+    "fire": FireBlock,
+    "night": NightBlock,
+    "rules": RuleBlock,
+    "conditions": ConditionBlock,
+    "movers": MoverBlock,
     "catchments": CatchmentBlock,
     "gauges": GaugesBlock,
     "places": GaugeBlock,
     "fit": FitBlock,
     "fitted value": FittedBlock,
 }
+RULE_TABLES = {"Rule file": RulesFile, "rule": RuleTable, "condition": RuleCondition}
 CSV_TABLES = {"Ridge CSV": ridge_csv.COLUMNS, "Sounding CSV": sounding_csv.COLUMNS, "Gauges CSV": gauges_csv.COLUMNS}
 
 
@@ -147,6 +157,23 @@ def test_case_page_has_units_ranges_and_defaults(heading, model):
         elif isinstance(info.default, float):
             assert row["default"] == f"{info.default:g}", key
         assert row["meaning"], key
+
+
+@pytest.mark.parametrize(("heading", "model"), RULE_TABLES.items(), ids=RULE_TABLES)
+def test_case_page_lists_the_keys_of_rule_files(heading, model):
+    """Names, other spellings, and which are needed; every quantity is named."""
+    schema = rules_schema()
+    fields = (schema if model is RulesFile else schema["$defs"][model.__name__])["properties"]
+    rows = rows_under("case.md", heading)
+    assert list(rows) == list(model.model_fields)
+    for key, row in rows.items():
+        assert listed(row["also"]) == [name for name in alternatives(key) if name in fields], key
+        assert (row["default"] == "needed") == model.model_fields[key].is_required(), key
+        field = fields[key]
+        if "maximum" in field:
+            assert row["range"] == f"{field['minimum']:g} to {field['maximum']:g}", key
+    text = (DOCS / "case.md").read_text()
+    assert all(f"`{key}`" in text for key in QUANTITY_KEYS)
 
 
 @pytest.mark.parametrize(("heading", "columns"), CSV_TABLES.items(), ids=CSV_TABLES)

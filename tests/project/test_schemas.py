@@ -13,13 +13,15 @@ from orolift.errors import CaseError, MissingFileError
 from orolift.sources.case import case_from_text
 from orolift.sources.inputs import read_inputs
 from orolift.sources.results import results_of
-from orolift.sources.schemas import UNIT_WORDS, case_schema, main, results_schema, schema_texts
+from orolift.sources.rules_file import rules_from_text
+from orolift.sources.schemas import UNIT_WORDS, case_schema, main, results_schema, rules_schema, schema_texts
 from orolift.sources.units import UNITS, alternatives, converted, suffix_of
 
 TOP = Path(__file__).resolve().parents[2]
 RENEW = "python -m orolift.sources.schemas docs"
 STARTER = Path(str(resources.files("orolift.cli") / "starter_case" / "case.toml"))
-CASES = [STARTER, *sorted((TOP / "demo_terrain").glob("*.toml"))]
+RULES = TOP / "demo_terrain" / "varn_rules.toml"
+CASES = [STARTER, *(file for file in sorted((TOP / "demo_terrain").glob("*.toml")) if file != RULES)]
 TABLES = """
 [terrain]
 ridge_km_m = [[0, 40], [25, 1850], [60, 210]]
@@ -62,7 +64,7 @@ def test_published_schema_is_that_of_the_models(name):
     assert same, f"docs/{name} is stale: the models have changed. Renew it with: {RENEW}"
 
 
-@pytest.mark.parametrize("schema", [case_schema(), results_schema()], ids=["case", "results"])
+@pytest.mark.parametrize("schema", [case_schema(), results_schema(), rules_schema()], ids=["case", "results", "rules"])
 def test_is_a_json_schema(schema):
     """Both keep to the dialect they name."""
     jsonschema.Draft202012Validator.check_schema(schema)
@@ -73,6 +75,17 @@ def test_is_a_json_schema(schema):
 def test_shipped_cases_are_valid(file):
     """The starter and every demo case."""
     assert faults(case_schema(), as_json(file.read_text())) == []
+
+
+def test_shipped_rules_are_valid():
+    """By schema and reader; a misspelt key by neither."""
+    text = RULES.read_text()
+    assert faults(rules_schema(), as_json(text)) == []
+    assert rules_from_text(text, "rules.toml").rules
+    wrong = text.replace("height_m", "hight_m")
+    assert faults(rules_schema(), as_json(wrong)) != []
+    with pytest.raises(CaseError, match="Did you mean height_m"):
+        rules_from_text(wrong, "rules.toml")
 
 
 def test_a_results_file_is_valid():

@@ -16,7 +16,7 @@ SCRIPT = (Path(orolift.report.__file__).parent / "templates" / "reading.js").rea
 
 @pytest.mark.parametrize("units", ["metric", "us"])
 def test_numbers_carried_are_those_of_the_crossing(named, units):
-    """Every field at every place within half of its last stored decimal; the lowest path is the lowest streamline."""
+    """Every field at every place within half of its last decimal; the lowest path is the lowest streamline."""
     crossing = named("cloud and rain")
     data = reading(crossing, units).data
     lowest = data["paths"][0]
@@ -26,7 +26,7 @@ def test_numbers_carried_are_those_of_the_crossing(named, units):
         ("wind", "wind", crossing.wind[:, 0]),
         ("cloud", "mixing_ratio", crossing.air.cloud[:, 0]),
     ):
-        scale = 10.0 ** data["fields"][key]["stored"]
+        scale = 10.0 ** data["fields"][key]["digits"]
         columns = np.unique(np.linspace(0, values.size - 1, len(lowest[key])).round().astype(int))
         wanted = [displayed(float(value), kind, units) for value in values[columns]]
         np.testing.assert_allclose(np.array(lowest[key]) / scale, wanted, rtol=0.0, atol=0.501 / scale)
@@ -36,11 +36,11 @@ def test_data_are_whole_numbers_of_one_length(any_crossing):
     """Valid JSON without a number that is none, as many values in every list, and paths that do not cross."""
     found = reading(any_crossing, "metric")
     text = json.dumps(found.data, allow_nan=False)
-    assert len(text) < 120_000
+    assert len(text) < 160_000
     count = found.last_place + 1
-    lists = [*found.data["places"].values(), *(path[field.key] for path in found.data["paths"] for field in OF_AIR)]
+    lists = [*found.data["places"].values(), *(values for path in found.data["paths"] for values in path.values())]
     assert all(len(values) == count and all(isinstance(value, int) for value in values) for values in lists)
-    heights = np.array([path["height"] for path in found.data["paths"]])
+    heights = np.array([path["up"] for path in found.data["paths"]])
     assert (np.diff(heights, axis=0) >= 0).all()
     assert 0 <= found.first_place <= found.last_place
 

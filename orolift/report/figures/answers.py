@@ -52,7 +52,7 @@ def answers_figure(crossing: Crossing, units: Units) -> Figure[AnswersDrawing] |
     Figure of AnswersDrawing or None
         None when there is no site on the crest or behind it.
     """
-    shown = [(number, site) for number, site in enumerate(crossing.lee, start=1) if site.side != "windward"]
+    shown = [(site.number, site) for site in crossing.lee if site.side != "windward"]
     if not shown:
         return None
     shown = shown[:MOST_SITES]

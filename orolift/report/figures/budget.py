@@ -66,9 +66,7 @@ def budget(crossing: Crossing, units: Units) -> Figure[BudgetDrawing] | None:
         None when no site has a budget.
     """
     shown = [
-        (number, site, site.parts)
-        for number, site in enumerate(crossing.lee, start=1)
-        if site.parts is not None and not site.in_blocked_air
+        (site.number, site, site.parts) for site in crossing.lee if site.parts is not None and not site.in_blocked_air
     ]
     if not shown:
         return None

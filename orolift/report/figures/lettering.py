@@ -46,13 +46,13 @@ def spots(view: View) -> list[Spot]:
     """The sites with their temperatures."""
     return [
         Spot(
-            number,
+            air.number,
             place(view.across, air.distance),
             place(view.up, air.elevation),
             air.name,
             quantity(air.temperature, "temperature", 1, view.units),
         )
-        for number, air in enumerate(view.crossing.lee, start=1)
+        for air in view.crossing.lee
     ]
 
 

@@ -17,6 +17,7 @@ from orolift.report.figures.pins import ASIDE, Spot, pins
 from orolift.report.figures.placing import Board, Box
 from orolift.report.figures.relief import block_means, relief
 from orolift.report.quantities import Units, displayed, from_displayed, quantity
+from orolift.report.story import first_sites
 from orolift.report.words import point_of_compass
 
 if TYPE_CHECKING:
@@ -266,12 +267,12 @@ def _spots(crossing: Crossing, mapped: Mapped, ground: Ground) -> list[Spot]:
     """The sites that lie in the frame."""
     line, frame = mapped.inputs.line, ground.frame
     out = []
-    for i, air in enumerate(crossing.lee):
-        if i < len(mapped.inputs.sites):
-            x, y = mapped.inputs.sites[i]
+    for air in first_sites(crossing).lee:
+        if 0 < air.number <= len(mapped.inputs.sites):
+            x, y = mapped.inputs.sites[air.number - 1]
         else:
             x, y = (float(np.interp(air.distance, crossing.transect.distance, v)) for v in (line.x, line.y))
         at_x, at_y = float(ground.across(np.array(x))), float(ground.down(np.array(y)))
         if frame.left < at_x < frame.right and frame.top < at_y < frame.bottom:
-            out.append(Spot(i + 1, at_x, at_y, air.name))
+            out.append(Spot(air.number, at_x, at_y, air.name))
     return out

@@ -296,7 +296,7 @@ def _drawing(seen: View, bearing: float, freezing_level: float, below: Layout, u
 def _ways(seen: View) -> tuple[SiteWay, ...]:
     """Back from each site to where its air comes from; none for air that stays."""
     out = []
-    for number, site in enumerate(seen.crossing.lee, 1):
+    for site in seen.crossing.lee:
         if site.in_pool or site.in_blocked_air:
             continue
         gone = way(seen.crossing, site)
@@ -307,7 +307,7 @@ def _ways(seen: View) -> tuple[SiteWay, ...]:
         if site.source_level_low is not None and site.source_level_high is not None:
             low, high = (place(seen.up, level) for level in (site.source_level_low, site.source_level_high))
             curves = (Curve(f"M{x[0]:.1f} {low:.1f}V{high:.1f}", "source"), *curves)
-        out.append(SiteWay(number, curves))
+        out.append(SiteWay(site.number, curves))
     return tuple(out)
 
 

@@ -219,7 +219,8 @@ def _drawing(hours: Hours, number: int, zone: tzinfo, units: Units, layout: Layo
     half = 0.5 * hours.step
     across = Scale(min(ends) - half, max(ends) + half, layout.left, layout.right)
     x = np.asarray(place(across, site.arrival))
-    top = layout.top + STRIP + GAP
+    dangers, words, below = _dangers(site, x, half * across.units_per_value, layout)
+    top = below + GAP
     panels = []
     for i, plan in enumerate(own):
         frame = replace(layout, top=top, bottom=top + plan.height)
@@ -234,17 +235,36 @@ def _drawing(hours: Hours, number: int, zone: tzinfo, units: Units, layout: Layo
     return TimelineDrawing(
         layout=whole,
         blanks=_blanks(site, x, width, layout.top, bottom),
-        states=states,
+        states=(*states, *dangers),
         days=tuple(
-            Curve(f"M{tick.at} {layout.top + STRIP + GAP}V{bottom}", "grid")
+            Curve(f"M{tick.at} {below + GAP}V{bottom}", "grid")
             for tick in marks
             if tick.text == "00" or not any(one.day for one in marks)
         ),
         panels=tuple(panels),
         time_ticks=marks,
         day_words=round(whole.foot_words + 1.15 * layout.letter, 1),
-        labels=labels,
+        labels=(*labels, *words),
     )
+
+
+def _dangers(
+    site: SiteTimeline, x: Array, half: float, layout: Layout
+) -> tuple[tuple[Curve, ...], tuple[Label, ...], float]:
+    """A row for each threshold of the region, marked where it is met; and where the rows end."""
+    curves, labels = [], []
+    bottom = layout.top + STRIP
+    for one in site.thresholds:
+        bottom += 2.1 * layout.letter
+        y = bottom - 0.35 * layout.letter
+        curves.append(Curve(f"M{layout.left} {y:.1f}H{layout.right}", "grid"))
+        curves += [
+            Curve(f"M{x[first] - half:.1f} {y:.1f}H{x[last - 1] + half:.1f}", "met") for first, last in runs(one.met)
+        ]
+        words = f"threshold met: {one.rule.name}" if one.met.any() else f"threshold not met: {one.rule.name}"
+        kind = "note danger-words" if one.met.any() else "note"
+        labels.append(Label(words, layout.left, round(y - 0.5 * layout.letter, 1), "start", kind))
+    return tuple(curves), tuple(labels), bottom
 
 
 def runs(flags: NDArray[np.bool_]) -> list[tuple[int, int]]:

@@ -19,6 +19,7 @@ from orolift.report.story import main_site
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
+    from orolift.crossing.result import LeeAir
     from orolift.report.figures.view import View
 
     Array = NDArray[np.float64]
@@ -87,7 +88,7 @@ def wind_panel(view: View, layout: Layout) -> WindPanel:
     up = Scale(0.0, float(top), layout.bottom, layout.top)
     band = _band(view.x[lee], *(np.asarray(place(up, side[lee])) for side in (low, high)))
     y = np.asarray(place(up, wind))
-    gauges = tuple(_gauge(view, up, number, layout) for number, site in enumerate(crossing.lee, 1) if site.wind)
+    gauges = tuple(_gauge(view, up, site, layout) for site in crossing.lee if site.wind)
     return WindPanel(
         layout=layout,
         ticks=level_ticks(up, view.units, 3, layout.letter, "wind"),
@@ -130,8 +131,7 @@ def _lines(view: View, y: Array) -> tuple[Curve, ...]:
     return tuple(out)
 
 
-def _gauge(view: View, up: Scale, number: int, layout: Layout) -> Gauge:
-    site = view.crossing.lee[number - 1]
+def _gauge(view: View, up: Scale, site: LeeAir, layout: Layout) -> Gauge:
     if site.wind is None:
         raise ValueError("a gauge needs a wind")
     x = round(place(view.across, site.distance), 1)
@@ -139,7 +139,7 @@ def _gauge(view: View, up: Scale, number: int, layout: Layout) -> Gauge:
     radius = round(0.6 * layout.letter, 1)
     disc = round(max(high - radius - 3.0, layout.top - radius), 1)
     return Gauge(
-        number=number,
+        number=site.number,
         stem="",
         x=x,
         y=disc,

@@ -12,21 +12,18 @@
   const forms = [...figure.querySelectorAll("svg")].map((svg) => ({ svg, ruler: svg.querySelector(".ruler") }));
   let kept = null;
 
-  const real = (key, list, at) => list[at] / 10 ** data.fields[key].stored;
+  const real = (key, lists, at) => lists[key][at] / 10 ** data.fields[key].digits;
 
-  function written(value, digits, unit) {
-    const step = 10 ** Math.max(-digits, 0);
-    const rounded = (Math.round(value / step) * step).toFixed(Math.max(digits, 0));
-    const text = Number(rounded) === 0 ? rounded.replace("-", "") : rounded.replace("-", "\u2212");
-    const grouped = Math.abs(value) >= 1e4 ? text.replace(/\B(?=(\d{3})+$)/, "\u202f") : text;
-    return `${grouped}\u00a0${unit}`;
+  function written(whole, digits, unit) {
+    const text = Math.abs(whole / 10 ** digits).toFixed(Math.max(digits, 0));
+    const grouped = text.length > 4 && !text.includes(".") ? text.replace(/\B(?=(\d{3})+$)/, "\u202f") : text;
+    return `${whole < 0 ? "\u2212" : ""}${grouped}\u00a0${unit}`;
   }
 
-  function reading(key, list, at) {
+  function reading(key, lists, at) {
     const field = data.fields[key];
-    const value = real(key, list, at);
-    const text = written(value, field.digits, field.unit);
-    return field.beside ? `${text}\u00a0(${written(value * field.factor, field.digits, field.beside)})` : text;
+    const text = written(lists[key][at], field.digits, field.unit);
+    return field.beside ? `${text}\u00a0(${written(lists[`${key}_beside`][at], field.digits, field.beside)})` : text;
   }
 
   const edges = (ruler) => Object.fromEntries(Object.entries(ruler.dataset).map(([key, text]) => [key, Number(text)]));
@@ -35,9 +32,9 @@
     const edge = edges(ruler);
     const across = (value) => edge.left + (value - edge.start) / (edge.end - edge.start) * (edge.right - edge.left);
     const down = (value) => edge.bottom + (value - edge.low) / (edge.high - edge.low) * (edge.top - edge.bottom);
-    const x = (at) => across(real("distance", data.places.distance, at));
-    const y = (at) => down(real("height", data.paths[path].height, at));
-    const seen = data.places.distance.map((_, at) => y(at) >= edge.top);
+    const x = (at) => across(real("across", data.places, at));
+    const y = (at) => down(real("up", data.paths[path], at));
+    const seen = data.places.across.map((_, at) => y(at) >= edge.top);
     const step = (at) => `${seen[at - 1] ? "L" : "M"}${x(at).toFixed(1)} ${y(at).toFixed(1)}`;
     ruler.querySelector(".ruler-line").setAttribute("transform", `translate(${x(place).toFixed(1)} 0)`);
     ruler.querySelector(".ruler-path").setAttribute("d", seen.map((is, at) => (is ? step(at) : "")).join("") || "M0 0");
@@ -50,8 +47,9 @@
     const place = Number(along.value);
     const path = Number(upward.value);
     const texts = { start: data.starts[path] };
-    for (const key of Object.keys(data.places)) texts[key] = reading(key, data.places[key], place);
-    for (const key of Object.keys(data.paths[path])) texts[key] = reading(key, data.paths[path][key], place);
+    for (const lists of [data.places, data.paths[path]]) {
+      for (const key of Object.keys(data.fields)) if (key in lists) texts[key] = reading(key, lists, place);
+    }
     for (const spot of panel.querySelectorAll("[data-field]")) spot.textContent = texts[spot.dataset.field];
     const air = `${texts.temperature}, dew point ${texts.dew_point}, humidity ${texts.humidity}, wind ${texts.wind}`;
     along.setAttribute("aria-valuetext", `${texts.distance}, ground ${texts.ground}; air at ${texts.height}: ${air}`);
@@ -91,11 +89,10 @@
     const x = (event.clientX - box.left) / box.width * svg.viewBox.baseVal.width;
     const y = (event.clientY - box.top) / box.height * svg.viewBox.baseVal.height;
     const distance = edge.start + (x - edge.left) / (edge.right - edge.left) * (edge.end - edge.start);
-    const places = data.places.distance.map((_, at) => real("distance", data.places.distance, at));
-    along.value = String(nearest(places, distance));
+    along.value = String(nearest(data.places.across.map((_, at) => real("across", data.places, at)), distance));
     if (y <= edge.bottom) {
       const height = edge.low + (y - edge.bottom) / (edge.top - edge.bottom) * (edge.high - edge.low);
-      upward.value = String(nearest(data.paths.map((path) => real("height", path.height, Number(along.value))), height));
+      upward.value = String(nearest(data.paths.map((path) => real("up", path, Number(along.value))), height));
     }
     read();
   }
