@@ -306,16 +306,16 @@ def hours() -> str:
         wet = np.exp(-(((hour - 27.0) / 2.5) ** 2))
         sun = np.cos(2.0 * np.pi * (hour - 19.0) / 24.0)  # warmest at 01 UTC, early afternoon there
         temperature = 13.0 + 2.0 * sun - 4.0 * front
-        dew_point = temperature - 3.0 - 7.0 * rise * (1.0 - front) * (1.0 - 0.9 * wet) - 2.5 * front * (1.0 - wet)
+        dew_point = temperature - 3.0 - 6.0 * rise * (1.0 - front) * (1.0 - 0.9 * wet) - 2.5 * front * (1.0 - wet)
         pressure = 1019.0 - 9.0 * rise + 6.0 * front
-        wind = 8.0 + 14.0 * rise * (1.0 - 0.6 * front)
+        wind = 7.0 + 9.0 * rise * (1.0 - 0.6 * front)
         veer = 85.0 * front
-        lee = 6.0 + 1.5 * sun + 11.0 * rise - 3.0 * front
+        lee = 6.0 + 1.5 * sun + 14.0 * rise - 3.0 * front
         if hour in {15, 16}:
             continue
         rows.append(
             f"{(start + timedelta(hours=hour)).isoformat().replace('+00:00', 'Z')},{temperature:.1f},{dew_point:.1f},"
-            f"{pressure:.1f},{235.0 + veer:.0f},{wind:.0f},{1.7 * wind:.0f},{240.0 + veer:.0f},{lee:.1f}"
+            f"{pressure:.1f},{235.0 + veer:.0f},{wind:.0f},{1.2 * wind:.0f},{240.0 + veer:.0f},{lee:.1f}"
         )
     return "\n".join(rows) + "\n"
 

@@ -321,11 +321,11 @@ def _outcome(site: SiteTimeline, zone: tzinfo) -> Words:
 def _from_to(one: Stretch, zone: tzinfo) -> Words:
     parts: list[str | Amount] = []
     if one.onset is None or one.onset_error is None:
-        parts.append("from the first hour known")
+        parts.append("from the first hour that can be judged")
     else:
         parts += [f"from {about(one.onset, one.onset_error, zone)} (± ", Amount(one.onset_error, "hours", 1), ")"]
     if one.end is None or one.end_error is None:
-        parts.append(" to the last hour known")
+        parts.append(" to the last that can be judged")
     else:
         parts += [f" to {about(one.end, one.end_error, zone)} (± ", Amount(one.end_error, "hours", 1), ")"]
     return tuple(parts)
@@ -395,9 +395,9 @@ def _dry_wind(site: SiteTimeline, one: Stretch, zone: tzinfo) -> StretchRow:
         return Amount((max if most else min)(values), kind, digits) if values else None
 
     return StretchRow(
-        onset="before the first hour" if one.onset is None else about(one.onset, one.onset_error or 0.0, zone),
+        onset="before what can be judged" if one.onset is None else about(one.onset, one.onset_error or 0.0, zone),
         onset_error=None if one.onset_error is None else Amount(one.onset_error, "hours", 1),
-        end="after the last hour" if one.end is None else about(one.end, one.end_error or 0.0, zone),
+        end="after what can be judged" if one.end is None else about(one.end, one.end_error or 0.0, zone),
         end_error=None if one.end_error is None else Amount(one.end_error, "hours", 1),
         length=None if one.onset is None or one.end is None else Amount(one.end - one.onset, "hours", 0),
         warmest=end("temperature", "temperature", 0, most=True),
