@@ -26,6 +26,8 @@ if TYPE_CHECKING:
 
 MOST_ROWS = 400
 """Hours of a site in the table of the page; more are in the CSV table."""
+LEAST_RAIN = 0.1
+"""Rain [kg m-2] below which none is said to fall."""
 NAMED = 4
 """Sites named one by one at the head of the page."""
 
@@ -299,7 +301,7 @@ def _lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
         more = len(hours.sites) - NAMED
         out.append((f"{counted(more, 'more site follows', 'more sites follow')} below.".capitalize(),))
     wettest = max(hours.sites, key=lambda site: site.rain)
-    if wettest.rain >= 0.1:
+    if wettest.rain >= LEAST_RAIN:
         out.append((f"Most rain falls at {wettest.name}: ", Amount(wettest.rain, "water_depth", 0), " in all."))
     return tuple(out)
 
@@ -374,9 +376,11 @@ def _counts(site: SiteTimeline) -> tuple[Words, ...]:
             " hours",
             *((", in ", Amount(still, "plain"), " it does not") if still else ()),
             *((", and ", Amount(missing, "plain"), " are missing") if missing else ()),
-            "; ",
-            Amount(site.rain, "water_depth", 1),
-            " of rain and snow fall in the hours that cross.",
+            *(
+                ("; ", Amount(site.rain, "water_depth", 1), " of rain and snow fall in the hours that cross.")
+                if site.rain >= LEAST_RAIN
+                else ("; no rain to speak of falls.",)
+            ),
         )
     ]
     reasons = [state.reason for state in site.states if state.status == "missing" and state.reason]

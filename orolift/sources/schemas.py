@@ -9,17 +9,23 @@ import json
 import sys
 from itertools import combinations
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from orolift.errors import CaseError
+from orolift.sources.bearings_results import BEARINGS_VERSION, BearingsResults
 from orolift.sources.case_model import Case
 from orolift.sources.files import write_all
+from orolift.sources.hours_results import HOURS_VERSION, HoursResults
 from orolift.sources.results import SCHEMA_VERSION, Results
 from orolift.sources.rules_file import RulesFile
 from orolift.sources.units import alternatives, converted, suffix_of
 
+if TYPE_CHECKING:
+    from orolift.sources.result_block import Block
+
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
 CASE_FILE, RESULTS_FILE, RULES_FILE = "case.schema.json", "results.schema.json", "rules.schema.json"
+HOURS_FILE, BEARINGS_FILE = "hours.schema.json", "bearings.schema.json"
 LIMIT_DIGITS = 6
 """Decimals of a limit converted to another unit: finer than anybody writes, coarser than rounding of the factors."""
 UNIT_WORDS = {
@@ -105,11 +111,25 @@ def results_schema() -> Schema:
     >>> results_schema()["properties"]["schema_version"]["const"]
     '1'
     """
-    schema = _plain(Results.model_json_schema(mode="serialization"), keep_null=True)
+    return _of_blocks(Results, SCHEMA_VERSION, "orolift results file")
+
+
+def hours_schema() -> Schema:
+    """JSON Schema of the results file of hours, as `results_schema`."""
+    return _of_blocks(HoursResults, HOURS_VERSION, "orolift results file of hours")
+
+
+def bearings_schema() -> Schema:
+    """JSON Schema of the results file of wind directions, as `results_schema`."""
+    return _of_blocks(BearingsResults, BEARINGS_VERSION, "orolift results file of wind directions")
+
+
+def _of_blocks(model: type[Block], version: str, title: str) -> Schema:
+    schema = _plain(model.model_json_schema(mode="serialization"), keep_null=True)
     for block in [schema, *schema["$defs"].values()]:
         block["required"] = list(block["properties"])
-    schema["properties"]["schema_version"]["const"] = SCHEMA_VERSION
-    return {"$schema": DIALECT, **schema, "title": "orolift results file"}
+    schema["properties"]["schema_version"]["const"] = version
+    return {"$schema": DIALECT, **schema, "title": title}
 
 
 def schema_texts() -> dict[str, str]:
@@ -119,7 +139,13 @@ def schema_texts() -> dict[str, str]:
     -------
     dict of str to str
     """
-    schemas = {CASE_FILE: case_schema(), RESULTS_FILE: results_schema(), RULES_FILE: rules_schema()}
+    schemas = {
+        CASE_FILE: case_schema(),
+        RESULTS_FILE: results_schema(),
+        RULES_FILE: rules_schema(),
+        HOURS_FILE: hours_schema(),
+        BEARINGS_FILE: bearings_schema(),
+    }
     return {name: json.dumps(schema, indent=2, ensure_ascii=False) + "\n" for name, schema in schemas.items()}
 
 

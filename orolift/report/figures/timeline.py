@@ -33,6 +33,10 @@ STRIP = 10.0
 """Height of the strip of states at the top, drawing units."""
 
 
+NO_RAIN = 0.05 / 3600.0
+"""Sum over the hours [kg m-2 s-1] up to which rain has no panel of its own: it would read as none."""
+
+
 @dataclass(frozen=True)
 class Line:
     """One line of a panel: its values through the hours, and what it is called."""
@@ -214,6 +218,8 @@ def _range(panels: list[PanelPlan], units: Units) -> tuple[float, float]:
 
 def _drawing(hours: Hours, number: int, zone: tzinfo, units: Units, layout: Layout) -> TimelineDrawing:
     every = [plans(site) for site in hours.sites]
+    if not any(np.nansum(line.values) > NO_RAIN for own in every for plan in own if plan.filled for line in plan.lines):
+        every = [tuple(plan for plan in own if not plan.filled) for own in every]
     site, own = hours.sites[number], every[number]
     ends = [float(end(one.arrival)) for one in hours.sites for end in (np.min, np.max)]
     half = 0.5 * hours.step
