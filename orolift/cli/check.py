@@ -46,6 +46,10 @@ def findings(inputs: Inputs) -> list[str]:
         ),
         f"Sites: {_named_sites(inputs)}.",
     ]
+    rules = inputs.fire.rules
+    if rules is not None:
+        count = len(rules.rules)
+        lines.append(f"Fire: {count} {'rule' if count == 1 else 'rules'} of {rules.region}, by {rules.authority}.")
     from orolift.sources.quality import cautions, table_lines
 
     in_table = set(cautions(inputs.findings))

@@ -12,8 +12,9 @@ from typing import TYPE_CHECKING
 import click
 
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.outputs import Outputs
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
-from orolift.errors import CaseError
+from orolift.errors import CaseError, OroliftError
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
@@ -23,6 +24,7 @@ if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
+    from orolift.spread.sites import GroupAir
 
 log = logging.getLogger(__name__)
 
@@ -52,6 +54,9 @@ class Worked:
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
 @JOBS_OPTION
 @SCHEDULER_OPTION
+@click.option(
+    "--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page: several cases."
+)
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -63,48 +68,118 @@ def command(
     table: str | None,
     jobs: int | None,
     scheduler: str | None,
+    folder: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
 ) -> None:
     """Work out the crossing of each CASE and write its report."""
     files = RainFiles(**rain)
-    if len(cases) > 1:
-        named = {"--report": report, "--results": results, "--table": table, **files.asked()}
-        for option, value in named.items():
-            if value is not None and option != "--maps":
-                raise CaseError(f"{option} takes one case, and {len(cases)} are given. Run it once for each case.")
-    from orolift.sources.files import csv_text, write_all
+    named = {"--report": report, "--results": results, "--table": table, **files.asked()}
+    _refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
+    outputs = Outputs()
+    for case in cases:
+        outputs.keep(case, "a case")
+    work = Work(jobs, scheduler, quiet)
+    if folder is not None:
+        summaries = _into_folder(cases, Path(folder), units, outputs, work)
+    else:
+        wanted = Wanted(report, results, table, files)
+        summaries = [_one_by_one(case, wanted, units, outputs, work) for case in cases]
+    _write(outputs, folder)
+    if not quiet:
+        _say(summaries, units)
+        if folder is not None:
+            click.echo(f"Index: {Path(folder) / 'index.html'}")
+
+
+@dataclass(frozen=True)
+class Wanted:
+    """Files asked for by name."""
+
+    report: str | None
+    results: str | None
+    table: str | None
+    rain: RainFiles
+
+
+def _refuse_together(given: list[str], cases: int, folder: str | None) -> None:
+    """Say which options cannot be met together."""
+    for option in given:
+        if folder is not None:
+            raise CaseError(f"--folder writes everything there is; leave {option} out, or leave --folder out.")
+        if cases > 1 and option != "--maps":
+            raise CaseError(
+                f"{option} takes one case, and {cases} are given. Run it once for each case, or give --folder."
+            )
+
+
+def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Work) -> tuple[Worked, Path]:
+    """Work out a case and take in the files asked for."""
+    worked = work_out(case, wanted.rain, work)
+    page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
+    outputs.add(page, report_of(worked, units).encode(), "--report" if wanted.report else f"the report of {case}")
+    _add_results(worked, wanted.results, wanted.table, outputs)
+    for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
+        outputs.add(path, content, option)
+    return worked, page
+
+
+def _add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+    from orolift.sources.files import csv_text
     from orolift.sources.site_table import site_rows
 
-    contents: dict[Path, bytes] = {}
-    summaries = []
-    for case in cases:
-        worked = work_out(case, files, Work(jobs, scheduler, quiet))
-        page = Path(report) if report else Path(f"{Path(case).stem}.html")
-        if page in contents:
-            raise CaseError(f"{case}: another case of this run already writes {page}. Give the cases different names.")
-        contents[page] = report_of(worked, units).encode()
-        if results:
-            contents[Path(results)] = (worked.results.model_dump_json(indent=2) + "\n").encode()
-        if table:
-            contents[Path(table)] = csv_text(*site_rows(worked.results)).encode()
-        contents |= rain_files(files, worked.inputs, worked.mapped, worked.results)
-        summaries.append((worked, page))
-    write_all(contents)
-    log.debug("written: %s", ", ".join(map(str, contents)))
-    if not quiet:
-        from orolift.cli.summary import summary_lines
+    if results:
+        outputs.add(results, (worked.results.model_dump_json(indent=2) + "\n").encode(), "--results")
+    if table:
+        outputs.add(table, csv_text(*site_rows(worked.results)).encode(), "--table")
 
-        for worked, page in summaries:
-            click.echo(
-                "\n".join(
-                    [
-                        *summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units),
-                        f"Report: {page}",
-                    ]
-                )
-            )
+
+def _into_folder(
+    cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Work
+) -> list[tuple[Worked, Path]]:
+    """Work out cases and take in everything they give, and the index."""
+    from orolift.cli.folder import all_rain_files, entry, index_html
+
+    summaries, entries = [], []
+    for case in cases:
+        before = set(outputs.contents)
+        worked = work_out(case, work=work)
+        stem = folder / worked.inputs.path.stem
+        page = Path(f"{stem}.html")
+        outputs.add(page, report_of(worked, units).encode(), f"the report of {case}")
+        _add_results(worked, f"{stem}.json", f"{stem}.csv", outputs)
+        wanted = all_rain_files(worked, folder)
+        for path, (content, _) in rain_files(wanted, worked.inputs, worked.mapped, worked.results).items():
+            outputs.add(path, content, f"a file of {case}")
+        entries.append(entry(worked, page, [path for path in outputs.contents if path not in before and path != page]))
+        summaries.append((worked, page))
+    outputs.add(folder / "index.html", index_html(entries, units).encode(), "the index")
+    return summaries
+
+
+def _write(outputs: Outputs, folder: str | None) -> None:
+    """Write all that was taken in; a folder that had to be made for it goes when nothing is written."""
+    from orolift.cli.folder import made
+    from orolift.sources.files import write_all
+
+    new = folder is not None and made(Path(folder))
+    try:
+        write_all(outputs.contents)
+    except OroliftError:
+        if new and folder is not None:
+            Path(folder).rmdir()
+        raise
+    log.debug("written: %s", ", ".join(map(str, outputs.contents)))
+
+
+def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
+    """A few lines on each case."""
+    from orolift.cli.summary import summary_lines
+
+    for worked, page in summaries:
+        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units)
+        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}"]))
 
 
 @dataclass(frozen=True)
@@ -135,11 +210,13 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
         error.args = (f"{case}: {error}",)
         raise
     log.debug("crossing worked out")
+    own = crossing
+    parts: tuple[GroupAir, ...] = ()
     if inputs.case.terrain.elevation_file is not None:
         from orolift.cli.site_lines import with_own_lines
 
         work = work or Work()
-        crossing = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
+        crossing, parts = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -148,18 +225,23 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
     flags = flags_of(inputs, crossing, mapped)
-    fire, reached, to_know = fire_of(inputs, crossing)
+    fire, reached, to_know = fire_of(inputs, own, crossing, parts)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
     results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
     return Worked(inputs, situation, crossing, mapped, flags, fire, results)
 
 
-def fire_of(inputs: Inputs, crossing: Crossing) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
+def fire_of(
+    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...]
+) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
     """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
     from orolift.fire.flags import fire_flags, windward_cautions
     from orolift.fire.sites import fire_at_sites
+    from orolift.spread.sites import fire_by_number
 
-    found = fire_at_sites(crossing, inputs.when, inputs.fire)
+    at_own = fire_at_sites(own, inputs.when, inputs.fire)
+    by_number = fire_by_number(crossing, at_own, parts)
+    found = tuple(by_number[air.number] for air in crossing.lee)
     rules = inputs.fire.rules
     return found, fire_flags(found, rules), windward_cautions(found, rules)
 
@@ -176,20 +258,32 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
     )
 
 
+def fire_lines(worked: Worked) -> list[str]:
+    """What the fire thresholds of the case come to, a line; none without a rule file."""
+    from orolift.report.fire_thresholds import headline
+
+    words = headline(worked.fire).words
+    return [f"Fire      {words} (a threshold met is not a warning)"] if words else []
+
+
+def made_now() -> datetime:
+    """The time that pages carry; it honours SOURCE_DATE_EPOCH."""
+    stamp = os.environ.get("SOURCE_DATE_EPOCH")
+    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
+
+
 def report_of(worked: Worked, units: Units) -> str:
-    """The report as one HTML page; the time stamp honours SOURCE_DATE_EPOCH."""
+    """The report as one HTML page."""
     from orolift import __version__
     from orolift.report.page import page_of
     from orolift.report.render import render
 
-    stamp = os.environ.get("SOURCE_DATE_EPOCH")
-    made_at = datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
     case = worked.inputs.case
     page = page_of(
         worked.crossing,
         title=case.title or worked.inputs.path.stem,
         valid_time=case.valid_time,
-        made_at=made_at,
+        made_at=made_now(),
         version=__version__,
         case_text=worked.inputs.text,
         units=units,

@@ -14,6 +14,7 @@ COMMANDS = {
     "hours": "Work out one crossing for each hour of a series.",
     "bearings": "Work out the crossing of every wind direction.",
     "check": "Read everything a case names and say what is wrong or doubtful.",
+    "compare": "Hold a crossing against what was observed in the lee.",
     "starter": "Write a small commented case to edit.",
 }
 """Commands and their one-line help; each lives in a module of its name, imported only when it runs."""

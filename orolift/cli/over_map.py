@@ -194,8 +194,10 @@ def map_findings(inputs: Inputs) -> list[str]:
     return lines + [f"Assumed: {text}" for text in found.notes]
 
 
-def rain_files(wanted: RainFiles, inputs: Inputs, mapped: Mapped | None, results: Results) -> dict[Path, bytes]:
-    """The files about rain that were asked for.
+def rain_files(
+    wanted: RainFiles, inputs: Inputs, mapped: Mapped | None, results: Results
+) -> dict[Path, tuple[bytes, str]]:
+    """The files about rain that were asked for, each with the option that asked.
 
     Parameters
     ----------
@@ -207,18 +209,28 @@ def rain_files(wanted: RainFiles, inputs: Inputs, mapped: Mapped | None, results
 
     Returns
     -------
-    dict of Path to bytes
+    dict of Path to (bytes, str)
+
+    Raises
+    ------
+    CaseError
+        If two options name one file.
     """
-    out: dict[Path, bytes] = {}
+    found: list[tuple[str, Path, bytes]] = []
     if wanted.geojson is not None:
         from orolift.sources.sites_geojson import sites_geojson
 
-        out[Path(wanted.geojson)] = sites_geojson(inputs, results).encode()
-    if mapped is None:
-        return out
-    if wanted.maps is not None:
-        out |= _maps(Path(wanted.maps), inputs, mapped)
-    return out | _tables(wanted, mapped)
+        found.append(("--geojson", Path(wanted.geojson), sites_geojson(inputs, results).encode()))
+    if mapped is not None:
+        if wanted.maps is not None:
+            found += [("--maps", path, content) for path, content in _maps(Path(wanted.maps), inputs, mapped).items()]
+        found += _tables(wanted, mapped)
+    out: dict[Path, tuple[bytes, str]] = {}
+    for option, path, content in found:
+        if path in out:
+            raise CaseError(f"{option}: {path} is already what {out[path][1]} writes. Give another name.")
+        out[path] = content, option
+    return out
 
 
 def _maps(folder: Path, inputs: Inputs, mapped: Mapped) -> dict[Path, bytes]:
@@ -233,17 +245,17 @@ def _maps(folder: Path, inputs: Inputs, mapped: Mapped) -> dict[Path, bytes]:
     return {folder / f"{inputs.path.stem}_{name}.tif": content for name, content in maps.items()}
 
 
-def _tables(wanted: RainFiles, mapped: Mapped) -> dict[Path, bytes]:
+def _tables(wanted: RainFiles, mapped: Mapped) -> list[tuple[str, Path, bytes]]:
     from orolift.sources.gauges_csv import fitted_rain_toml
     from orolift.sources.rain_tables import catchments_csv, gauges_csv
 
     rain = mapped.rain
-    out: dict[Path, bytes] = {}
+    out: list[tuple[str, Path, bytes]] = []
     if wanted.catchments is not None:
         rows = [(one.catchment.name, one.rain) for one in rain.catchments]
-        out[Path(wanted.catchments)] = catchments_csv(rows).encode()
+        out.append(("--catchments", Path(wanted.catchments), catchments_csv(rows).encode()))
     if wanted.gauges is not None and rain.gauges is not None and rain.comparison is not None:
-        out[Path(wanted.gauges)] = gauges_csv(rain.gauges, rain.comparison).encode()
+        out.append(("--gauges", Path(wanted.gauges), gauges_csv(rain.gauges, rain.comparison).encode()))
     if wanted.fit is not None and rain.fit is not None:
-        out[Path(wanted.fit)] = fitted_rain_toml(rain.fit).encode()
+        out.append(("--fit", Path(wanted.fit), fitted_rain_toml(rain.fit).encode()))
     return out

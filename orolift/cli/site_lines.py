@@ -29,7 +29,7 @@ MOST_SAID = 4
 
 def with_own_lines(
     inputs: Inputs, crossing: Crossing, *, jobs: int | None = None, scheduler: str | None = None, quiet: bool = False
-) -> Crossing:
+) -> tuple[Crossing, tuple[GroupAir, ...]]:
     """The crossing of a case with the air at all its sites.
 
     Parameters
@@ -45,7 +45,9 @@ def with_own_lines(
 
     Returns
     -------
-    Crossing
+    crossing : Crossing
+    parts : tuple of GroupAir
+        What came of the lines.
 
     Raises
     ------
@@ -54,7 +56,7 @@ def with_own_lines(
     """
     beside = sum(not place.on_line for place in inputs.places)
     if not beside:
-        return crossing
+        return crossing, ()
     from orolift.sources.site_lines import site_groups
     from orolift.spread.sites import air_of_groups, with_sites
 
@@ -69,10 +71,11 @@ def with_own_lines(
         nullcontext() if few else executor_of(jobs, scheduler) as executor,
         progress(beside, "Sites", quiet=quiet or few) as bar,
     ):
-        parts = list(_counted(air_of_groups(groups, executor), bar))
+        parts = tuple(_counted(air_of_groups(groups, executor), bar))
     on_line = tuple(number for number, place in enumerate(inputs.places, start=1) if place.on_line)
     out = with_sites(crossing, on_line, parts, elsewhere=True)
-    return replace(out, notes=(*out.notes, _note(groups, beside)), cautions=(*out.cautions, *_cautions(out)))
+    out = replace(out, notes=(*out.notes, _note(groups, beside)), cautions=(*out.cautions, *_cautions(out)))
+    return out, parts
 
 
 def _counted(parts: Iterator[GroupAir], bar: Progress) -> Iterator[GroupAir]:

@@ -117,13 +117,14 @@ def cross(
     height = streams.flow.heights[0][:, streams.place].T
     winds = lee_winds(ground, solution, crest_wind, flow.pressure_difference)
     cloud = clouds(solution, transect.distance, shape, freezing=settings.freezing)
+    places, rain = transect.distance[streams.place], rainfall(ground, solution, background)
     return Crossing(
         incoming=incoming,
         transect=transect,
         features=shape,
         sites=sites,
         settings=settings,
-        distance=transect.distance[streams.place],
+        distance=places,
         start_height=streams.flow.start_heights[0],
         height=height,
         air=air,
@@ -133,11 +134,15 @@ def cross(
         flow=flow,
         cloud=cloud,
         water=water(solution, float(vapour_flux(incoming, ground.normal))),
-        rain=rainfall(ground, solution, background),
+        rain=rain,
         pool=solution.pools[0],
         winds=winds,
         lee=tuple(
-            replace(site_air(site, ground, incoming, solution, settings, when, winds), number=number)
+            replace(
+                site_air(site, ground, incoming, solution, settings, when, winds),
+                number=number,
+                rain=float(np.interp(site.distance, places, rain.rate)) + rain.background,
+            )
             for number, site in enumerate(sites, start=1)
         ),
         notes=(*incoming.notes, *transect.notes, *crest_line_notes(ground, flow.blocked_top)),

@@ -7,6 +7,8 @@ from typing import TYPE_CHECKING
 from orolift.air.parcel import Parcel, ascent, moved_to, without_condensate
 
 if TYPE_CHECKING:
+    from numpy.typing import ArrayLike
+
     from orolift.air.column import IncomingAir
     from orolift.crossing.result import Side
     from orolift.terrain.features import Features
@@ -34,14 +36,15 @@ def upwind_ground_air(incoming: IncomingAir) -> Parcel:
     )
 
 
-def popular_picture(start: Parcel, crest_pressure: float, pressure: float, *, freezing: bool = True) -> Parcel:
+def popular_picture(start: Parcel, crest_pressure: float, pressure: ArrayLike, *, freezing: bool = True) -> Parcel:
     """Surface air lifted to the crest, all condensate removed, brought to a pressure: the textbook picture.
 
     Parameters
     ----------
     start : Parcel
         Air at the upwind ground.
-    crest_pressure, pressure : float [Pa]
+    crest_pressure : float [Pa]
+    pressure : array_like [Pa]
     freezing : bool
 
     Returns

@@ -83,11 +83,14 @@ class LeeProfile:
     height_above_ground : ndarray (n,) [m]
     temperature : ndarray (n,) [K]
     vapour : ndarray (n,) [kg per kg of dry air]
+    wind : ndarray (n,) [m s-1]
+        Of the crossing air, across the range; a calm below it where the site lies in a pool or in blocked air.
     """
 
     height_above_ground: Array
     temperature: Array
     vapour: Array
+    wind: Array
 
 
 @dataclass(frozen=True)
@@ -106,7 +109,7 @@ class SiteLine:
     ----------
     offset : float [m]
         Distance of the site across the crossing's own line, positive to the right of the wind.
-    crest, blocked_top : float [m above sea level]
+    base, crest, blocked_top : float [m above sea level]
         Of the site's line.
     beyond_crest : float [m]
         Distance of the site downwind of that crest.
@@ -118,6 +121,7 @@ class SiteLine:
     """
 
     offset: float
+    base: float
     crest: float
     blocked_top: float
     beyond_crest: float
@@ -172,6 +176,8 @@ class LeeAir:
     wind : SiteWind or None
         None in a pool and in blocked air.
     profile : LeeProfile
+    rain : float [kg m-2 s-1]
+        Rain and snow there, the background included.
     number : int
         Of the site in the case, from 1: its pin.
     own : SiteLine or None
@@ -203,6 +209,7 @@ class LeeAir:
     full_blocking: SimpleAir
     wind: SiteWind | None
     profile: LeeProfile
+    rain: float = 0.0
     number: int = 0
     own: SiteLine | None = None
 

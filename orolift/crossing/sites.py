@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -129,7 +129,8 @@ def _profile(
     if pool is not None:
         inside = (height[0] < pool.top) & (height[0] < here.height[0, 0])
         t[inside], v[inside] = (x[inside] for x in pool_air(pool, height[0]))
-    return LeeProfile(PROFILE, t, v)
+    wind = np.maximum(np.interp(height[0], here.height[0], here.wind[0]), 0.0)
+    return LeeProfile(PROFILE, t, v, wind)
 
 
 @dataclass(frozen=True)
@@ -193,8 +194,14 @@ def _put_together(
         no_blocking=_simple(came, 1),
         full_blocking=_simple(came, 2),
         wind=None if in_pool or blocked else wind,
-        profile=profile,
+        profile=_calm_below(profile, place.elevation, float(here.height[0, 0])) if in_pool or blocked else profile,
     )
+
+
+def _calm_below(profile: LeeProfile, elevation: float, lowest: float) -> LeeProfile:
+    """A profile without wind below the lowest crossing air."""
+    calm = elevation + profile.height_above_ground < lowest
+    return replace(profile, wind=np.where(calm, 0.0, profile.wind))
 
 
 def _dew_point(pressure: float, vapour: float) -> float:

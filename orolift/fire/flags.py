@@ -12,6 +12,8 @@ if TYPE_CHECKING:
     from orolift.fire.sites import SiteFire
     from orolift.fire.words import Measure
 
+MOST_NAMES = 8
+"""Sites that are named in one sentence."""
 _WRITTEN: dict[Measure, tuple[float, str]] = {
     "share": (100.0, " %"),
     "temperature": (1.0, " °C"),
@@ -64,15 +66,21 @@ def windward_cautions(sites: tuple[SiteFire, ...], rules: RuleSet | None) -> tup
     out = []
     windward = [site.name for site in sites if site.side == "windward"]
     if windward:
-        where = f"{', '.join(windward)} {'lies' if len(windward) == 1 else 'lie'} on the windward side"
+        where = f"{_listed(windward)} {'lies' if len(windward) == 1 else 'lie'} on the windward side"
         out.append(f"Fire thresholds: {where}; what is judged there is air before the crest, not lee air.")
     still = [site.name for site in sites if site.in_pool or site.in_blocked_air]
     if still:
         out.append(
-            f"Fire thresholds: the wind at {', '.join(still)} is not known (cold pool or blocked air), so rules with "
+            f"Fire thresholds: the wind at {_listed(still)} is not known (cold pool or blocked air), so rules with "
             "a wind cannot be judged there."
         )
     return tuple(out)
+
+
+def _listed(names: list[str]) -> str:
+    """Names, the first ones of very many."""
+    more = f" and {len(names) - MOST_NAMES} more" if len(names) > MOST_NAMES else ""
+    return ", ".join(names[:MOST_NAMES]) + more
 
 
 def _sentence(site: SiteFire, judged: JudgedRule, rules: RuleSet) -> str:

@@ -63,6 +63,21 @@ class Indices:
     angstroem_index: Array
 
 
+def one_of(indices: Indices, number: int) -> Indices:
+    """Indices of one member, hour or site of the first axis.
+
+    Parameters
+    ----------
+    indices : Indices, leading axes (n, ...)
+    number : int
+
+    Returns
+    -------
+    Indices, leading axes (...)
+    """
+    return Indices(**{name: getattr(indices, name)[number] for name in Indices.__dataclass_fields__})
+
+
 def site_fire(
     weather: SiteWeather,
     *,

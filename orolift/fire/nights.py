@@ -17,7 +17,9 @@ from orolift.fire.night import STILL_DEPTH, humidity_after_cooling, night_coolin
 from orolift.fire.weather import layer_pressure
 
 if TYPE_CHECKING:
-    from numpy.typing import NDArray
+    from collections.abc import Sequence
+
+    from numpy.typing import ArrayLike, NDArray
 
     from orolift.crossing.result import LeeAir, When
     from orolift.fire.weather import SiteWeather
@@ -61,19 +63,21 @@ class NightAtSite:
     mixing_height_by_day: float
 
 
-def night_at(weather: SiteWeather, air: LeeAir, crest: float, when: When) -> NightAtSite:
-    """The coming night at a site.
+def nights_at(weather: SiteWeather, lee: Sequence[LeeAir], crests: ArrayLike, when: When) -> tuple[NightAtSite, ...]:
+    """The coming night at sites.
 
     Parameters
     ----------
-    weather : SiteWeather, leading axes ()
-    air : LeeAir
-    crest : float [m above sea level]
+    weather : SiteWeather, leading axes (n,)
+        Of the sites.
+    lee : sequence of LeeAir, n
+        The same sites.
+    crests : array_like (n,) [m above sea level]
     when : When
 
     Returns
     -------
-    NightAtSite
+    tuple of NightAtSite, n
 
     Notes
     -----
@@ -82,44 +86,45 @@ def night_at(weather: SiteWeather, air: LeeAir, crest: float, when: When) -> Nig
     night. Slope and ridge stay in the free air over the site, without cooling and with their vapour: on a ridge
     humidity can stay low all night. For the depth of mixing, heat of the last 8 hours, none once the sun is down.
     """
-    heating = 0.0 if air.parts is None else air.parts.surface_heating
-    z = weather.height_above_ground
-    depth = DAY_DEPTH if heating > 0.0 else NIGHT_DEPTH
-    layer = weather.layer_temperature - np.where(z <= depth, heating, 0.0)
-    base = float(weather.temperature) - heating
-    virtual = float(virtual_temperature(base, float(weather.mixing_ratio)))
-    density = float(np.clip(float(weather.pressure) / (R_DRY * virtual), 0.3, 1.6))
+    z, vapour = weather.height_above_ground, weather.mixing_ratio
+    heating = np.array([0.0 if air.parts is None else air.parts.surface_heating for air in lee])
+    base = weather.temperature - heating
+    reached = z <= np.where(heating > 0.0, DAY_DEPTH, NIGHT_DEPTH)[:, np.newaxis]
+    layer = weather.layer_temperature - np.where(reached, heating[:, np.newaxis], 0.0)
+    density = np.clip(weather.pressure / (R_DRY * virtual_temperature(base, vapour)), 0.3, 1.6)
     length = _night_length(when)
-    before = min(
-        float(relative_humidity_from_mixing_ratio(weather.pressure, base, weather.mixing_ratio)),
-        1.0,
-    )
     hours = USUAL_NIGHT if length is None else length
-    windy = night_cooling(min(hours, LONGEST), -NIGHT_FLUX, NIGHT_DEPTH, density)
-    still = night_cooling(hours, -NIGHT_FLUX, STILL_DEPTH, density)
+    before = np.minimum(relative_humidity_from_mixing_ratio(weather.pressure, base, vapour), 1.0)
+    windy = humidity_after_cooling(base, before, night_cooling(min(hours, LONGEST), -NIGHT_FLUX, NIGHT_DEPTH, density))
+    still = humidity_after_cooling(base, before, night_cooling(hours, -NIGHT_FLUX, STILL_DEPTH, density))
     pressure = layer_pressure(weather)
     over = np.minimum(relative_humidity_from_mixing_ratio(pressure, layer, weather.layer_vapour), 1.0)
-
-    def at(height: float) -> float:
-        above = height - air.elevation
-        return float(np.interp(above, z, over)) if 0.0 < above <= z[-1] else float("nan")
-
-    half = 0.5 * (air.elevation + crest)
     theta = virtual_potential_temperature(pressure, layer, weather.layer_vapour)
-    now, by_day = _heats(when, density)
-    deep = mixing_height(z, theta, heat=np.array([now, by_day]))
-    return NightAtSite(
-        length=hours,
-        length_known=length is not None,
-        floor_windy=float(humidity_after_cooling(base, before, windy)),
-        floor_still=float(humidity_after_cooling(base, before, still)),
-        mid_slope=at(half),
-        ridge=at(crest),
-        mid_slope_height=half,
-        ridge_height=crest,
-        mixing_height=float(deep[0]),
-        mixing_height_by_day=float(deep[1]),
-    )
+    now, by_day = (mixing_height(z, theta, heat=heat / density) for heat in _heats(when))
+    out = []
+    for number, (air, crest) in enumerate(zip(lee, np.asarray(crests, np.float64).tolist(), strict=True)):
+        half = 0.5 * (air.elevation + crest)
+        slope, ridge = (_over(height - air.elevation, z, over[number]) for height in (half, crest))
+        out.append(
+            NightAtSite(
+                length=hours,
+                length_known=length is not None,
+                floor_windy=float(windy[number]),
+                floor_still=float(still[number]),
+                mid_slope=slope,
+                ridge=ridge,
+                mid_slope_height=half,
+                ridge_height=crest,
+                mixing_height=float(now[number]),
+                mixing_height_by_day=float(by_day[number]),
+            )
+        )
+    return tuple(out)
+
+
+def _over(above: float, z: Array, values: Array) -> float:
+    """Value of a profile at a height above ground, NaN at the ground, below it and above the profile."""
+    return float(np.interp(above, z, values)) if 0.0 < above <= z[-1] else float("nan")
 
 
 def _night_length(when: When) -> float | None:
@@ -131,12 +136,12 @@ def _night_length(when: When) -> float | None:
     return float(np.mean(down) * DAY)
 
 
-def _heats(when: When, density: float) -> tuple[float, float]:
-    """Heat from the sun over density and heat capacity [K m]: now, and the most of the 24 hours from now."""
+def _heats(when: When) -> tuple[float, float]:
+    """Heat from the sun over heat capacity [kg m-2 K]: now, and the most of the 24 hours from now."""
     if when.time is None or when.longitude is None or when.latitude is None:
         return 0.0, 0.0
     times = when.time + np.arange(0.0, DAY + 1.0, 7200.0)
     place = (when.longitude, when.latitude)
-    days = [surface_heat(float(time), *place, LONGEST, density).day * DAY_DEPTH for time in times]
+    days = [surface_heat(float(time), *place, LONGEST, 1.0).day * DAY_DEPTH for time in times]
     shines = float(sun_height(when.time, *place)) > 0.0
     return days[0] if shines else 0.0, max(days)

@@ -7,17 +7,18 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.fire.indices import HOUR, HOURS, Indices, site_fire
-from orolift.fire.movers import Mover, movers, shifted
-from orolift.fire.nights import NightAtSite, night_at
-from orolift.fire.rules import JudgedRule, RuleSet, judged
+from orolift.fire.indices import HOUR, HOURS, Indices, one_of, site_fire
+from orolift.fire.movers import Mover, Shifted, movers, shifted
+from orolift.fire.nights import NightAtSite, nights_at
+from orolift.fire.rules import JudgedRule, Rule, RuleSet, judged
 from orolift.fire.values import site_values
-from orolift.fire.weather import SiteWeather, site_weather
+from orolift.fire.weather import SiteWeather, joined, site_weather, stacked
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike
 
     from orolift.crossing.result import Crossing, LeeAir, Side, When
+    from orolift.fire.winds import WindMeant
 
 
 @dataclass(frozen=True)
@@ -62,6 +63,8 @@ class SiteFire:
 
     Attributes
     ----------
+    number : int
+        Of the site in the case.
     name : str
     side : 'windward', 'crest' or 'lee'
     in_pool, in_blocked_air : bool
@@ -72,6 +75,7 @@ class SiteFire:
     thresholds : tuple of Threshold
     """
 
+    number: int
     name: str
     side: Side
     in_pool: bool
@@ -102,37 +106,29 @@ def fire_at_sites(crossing: Crossing, when: When, settings: FireSettings | None 
     OutOfRangeError
         If a setting or the air at a site is out of the range of an index.
     """
-    return tuple(fire_at(crossing, air, when, settings) for air in crossing.lee)
-
-
-def fire_at(crossing: Crossing, air: LeeAir, when: When, settings: FireSettings | None = None) -> SiteFire:
-    """Fire weather at one site of a crossing.
-
-    Parameters
-    ----------
-    crossing : Crossing
-    air : LeeAir
-        The site.
-    when : When
-    settings : FireSettings, optional
-
-    Returns
-    -------
-    SiteFire
-
-    Raises
-    ------
-    OutOfRangeError
-        If a setting or the air at the site is out of the range of an index.
-    """
     chosen = settings or FireSettings()
-    weather = site_weather(crossing, air)
-    indices = _indices(weather, chosen)
-    night = night_at(weather, air, crossing.features.crest, when)
-    thresholds: tuple[Threshold, ...] = ()
-    if chosen.rules is not None:
-        thresholds = _thresholds(crossing, air, weather, indices, night, chosen)
-    return SiteFire(air.name, air.side, air.in_pool, air.in_blocked_air, weather, indices, night, thresholds)
+    weathers = [site_weather(air) for air in crossing.lee]
+    together = stacked(weathers)
+    indices = _indices(together, chosen)
+    crests = [crossing.features.crest if air.own is None else air.own.crest for air in crossing.lee]
+    nights = nights_at(together, crossing.lee, crests, when)
+    out = []
+    for number, (air, weather, night) in enumerate(zip(crossing.lee, weathers, nights, strict=True)):
+        own = one_of(indices, number)
+        out.append(
+            SiteFire(
+                number=air.number,
+                name=air.name,
+                side=air.side,
+                in_pool=air.in_pool,
+                in_blocked_air=air.in_blocked_air,
+                weather=weather,
+                indices=own,
+                night=night,
+                thresholds=_thresholds(crossing, air, weather, own, night, chosen),
+            )
+        )
+    return tuple(out)
 
 
 def _indices(weather: SiteWeather, chosen: FireSettings, hours: tuple[int, ...] = HOURS) -> Indices:
@@ -153,8 +149,10 @@ def _thresholds(
     night: NightAtSite,
     chosen: FireSettings,
 ) -> tuple[Threshold, ...]:
-    """Each rule judged, with the changes that would turn its conditions."""
-    rules = () if chosen.rules is None else chosen.rules.rules
+    """Each rule judged, with the changes that would turn its conditions; none without rules."""
+    if chosen.rules is None:
+        return ()
+    rules = chosen.rules.rules
     roughness = float(np.asarray(crossing.settings.roughness))
     others: dict[str, ArrayLike] = {
         "drought_index": np.nan if chosen.drought_index is None else chosen.drought_index,
@@ -165,12 +163,9 @@ def _thresholds(
     values, windiest = (
         site_values(weather, indices, rules, roughness, others=others, end=end) for end in ("middle", "upper")
     )
-    changed = [
-        (site, site_values(site.weather, _indices(site.weather, chosen, ()), rules, roughness, others=others))
-        for site in shifted(
-            weather, crossing.incoming, crest_wind=crossing.flow.crest_wind, source_level=air.source_level
-        )
-    ]
+    crest_wind = crossing.flow.crest_wind if air.own is None else air.own.crest_wind
+    sites = shifted(weather, crossing.incoming, crest_wind=crest_wind, source_level=air.source_level)
+    changed = _values_of(sites, rules, roughness, others, chosen)
     return tuple(
         Threshold(
             judged(rule, values, windiest=windiest),
@@ -178,3 +173,24 @@ def _thresholds(
         )
         for rule in rules
     )
+
+
+def _values_of(
+    sites: tuple[Shifted, ...],
+    rules: tuple[Rule, ...],
+    roughness: float,
+    others: dict[str, ArrayLike],
+    chosen: FireSettings,
+) -> list[tuple[Shifted, dict[str | WindMeant, ArrayLike]]]:
+    """Values of a site with each input changed, all worked out in one go."""
+    together = joined([site.weather for site in sites])
+    values = site_values(together, _indices(together, chosen, ()), rules, roughness, others=others)
+    ends = np.cumsum([0, *(site.amounts.size for site in sites)])
+    size = int(ends[-1])
+    parts: list[tuple[Shifted, dict[str | WindMeant, ArrayLike]]] = []
+    for site, low, high in zip(sites, ends[:-1], ends[1:], strict=True):
+        own: dict[str | WindMeant, ArrayLike] = {
+            name: np.broadcast_to(np.asarray(value), (size,))[low:high] for name, value in values.items()
+        }
+        parts.append((site, own))
+    return parts

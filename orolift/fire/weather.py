@@ -20,7 +20,7 @@ if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
     from orolift.air.column import IncomingAir
-    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.crossing.result import LeeAir
     from orolift.crossing.wind import SiteWind
 
     Array = NDArray[np.float64]
@@ -67,31 +67,20 @@ class SiteWeather:
     layer_wind: Array
 
 
-def site_weather(crossing: Crossing, air: LeeAir) -> SiteWeather:
+def site_weather(air: LeeAir) -> SiteWeather:
     """Fire weather's view of a site of a crossing.
 
     Parameters
     ----------
-    crossing : Crossing
     air : LeeAir
-        One of its sites.
 
     Returns
     -------
     SiteWeather, leading axes ()
         The wind of the layer is that across the range, from the streamlines over the site.
     """
-    profile, wind = air.profile, air.wind
-    at = crossing.distance
-    number = int(np.clip(np.searchsorted(at, air.distance, side="right") - 1, 0, at.size - 2))
-    share = float(np.clip((air.distance - at[number]) / (at[number + 1] - at[number]), 0.0, 1.0))
-    height, speed = (
-        (1.0 - share) * field[number] + share * field[number + 1] for field in (crossing.height, crossing.wind)
-    )
-    z = air.elevation + profile.height_above_ground
-    calm_below = 0.0 if wind is None else float(speed[0])
-    rain = float(np.interp(air.distance, at, crossing.rain.rate)) + crossing.rain.background
-    mean, low, high, gust_low, gust_high = (np.asarray(value) for value in _winds(wind))
+    profile = air.profile
+    mean, low, high, gust_low, gust_high = (np.asarray(value) for value in _winds(air.wind))
     return SiteWeather(
         pressure=np.asarray(air.pressure),
         temperature=np.asarray(air.temperature),
@@ -101,11 +90,11 @@ def site_weather(crossing: Crossing, air: LeeAir) -> SiteWeather:
         wind_high=high,
         gust_low=gust_low,
         gust_high=gust_high,
-        rain=np.asarray(rain),
+        rain=np.asarray(air.rain),
         height_above_ground=profile.height_above_ground,
         layer_temperature=profile.temperature,
         layer_vapour=np.maximum(profile.vapour, LEAST_VAPOUR),
-        layer_wind=np.maximum(np.interp(z, height, speed, left=calm_below), 0.0),
+        layer_wind=profile.wind,
     )
 
 
@@ -131,6 +120,30 @@ def stacked(weathers: list[SiteWeather]) -> SiteWeather:
     """
     names = [name for name in SiteWeather.__dataclass_fields__ if name != "height_above_ground"]
     fields = {name: np.stack([np.asarray(getattr(one, name)) for one in weathers]) for name in names}
+    return SiteWeather(height_above_ground=weathers[0].height_above_ground, **fields)
+
+
+def joined(weathers: list[SiteWeather]) -> SiteWeather:
+    """Views with leading axes (n,) one after the other, to be worked out in one go.
+
+    Parameters
+    ----------
+    weathers : list of SiteWeather
+        With the same heights above ground.
+
+    Returns
+    -------
+    SiteWeather, leading axes (sum of n,)
+    """
+    sizes = [max(np.size(x) for x in (one.temperature, one.mixing_ratio, one.wind)) for one in weathers]
+    fields = {}
+    for name in SiteWeather.__dataclass_fields__:
+        if name != "height_above_ground":
+            rows = [np.asarray(getattr(one, name)) for one in weathers]
+            tail = (weathers[0].height_above_ground.size,) if name.startswith("layer_") else ()
+            fields[name] = np.concatenate(
+                [np.broadcast_to(row, (size, *tail)) for row, size in zip(rows, sizes, strict=True)]
+            )
     return SiteWeather(height_above_ground=weathers[0].height_above_ground, **fields)
 
 

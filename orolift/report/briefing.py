@@ -69,7 +69,7 @@ def briefing(crossing: Crossing, bearing: float, freezing_level: float) -> Brief
     site = main_site(crossing)
     both = (_both_answers(crossing, site),) if reaches_the_ground_or_not(crossing, site) else ()
     return Briefing(
-        heading=_heading(crossing, site),
+        heading=briefing_heading(crossing),
         sentences=(
             *both,
             (*_flow(crossing, bearing), " ", *_cloud(crossing)),
@@ -81,7 +81,18 @@ def briefing(crossing: Crossing, bearing: float, freezing_level: float) -> Brief
     )
 
 
-def _heading(crossing: Crossing, site: LeeAir) -> Words:
+def briefing_heading(crossing: Crossing) -> Words:
+    """The conclusion of a crossing in one line.
+
+    Parameters
+    ----------
+    crossing : Crossing
+
+    Returns
+    -------
+    Words
+    """
+    site = main_site(crossing)
     here = Amount(site.temperature, "temperature", 1)
     if site.in_pool and crossing.pool is not None:
         return (

@@ -11,7 +11,7 @@ import numpy as np
 from orolift.fire.dryness import angstroem_words
 from orolift.report.fire_thresholds import ThresholdRow, headline, threshold_rows
 from orolift.report.quantities import Amount
-from orolift.report.story import where_words
+from orolift.report.story import first_sites, where_words
 from orolift.report.words import day
 
 if TYPE_CHECKING:
@@ -23,6 +23,8 @@ if TYPE_CHECKING:
     from orolift.report.quantities import Kind
     from orolift.report.words import Words
 
+MOST_SITES = 24
+"""Sites that the tables hold (design choice)."""
 FAST_WIND = 40.0 / 3.6
 """Wind [m s-1] up to which the spread index was fitted: Van Wagner (1987)."""
 SOME_RAIN = 0.1 / 3600.0
@@ -132,7 +134,7 @@ def fire_weather(crossing: Crossing, found: tuple[SiteFire, ...], rules: RuleSet
     -------
     FireWeather
     """
-    pairs = list(zip(found, crossing.lee, strict=True))
+    pairs = _shown(list(zip(found, crossing.lee, strict=True)), crossing)
     source = ""
     if rules is not None:
         source = f"Thresholds of {rules.region}, set by {rules.authority}, taken over on {day(rules.taken)}."
@@ -140,9 +142,9 @@ def fire_weather(crossing: Crossing, found: tuple[SiteFire, ...], rules: RuleSet
         heading=_heading(found),
         source=source,
         thresholds=threshold_rows(found, crossing.lee),
-        rows=tuple(_row(site, air, number) for number, (site, air) in enumerate(pairs, start=1)),
-        nights=tuple(_night(site, air, number) for number, (site, air) in enumerate(pairs, start=1)),
-        codes=tuple(_codes(site, air, number) for number, (site, air) in enumerate(pairs, start=1))
+        rows=tuple(_row(site, air, air.number) for site, air in pairs),
+        nights=tuple(_night(site, air, air.number) for site, air in pairs),
+        codes=tuple(_codes(site, air, air.number) for site, air in pairs)
         if any(_known(site.indices.fine_fuel_code) for site in found)
         else (),
         has_drought=any(_known(site.indices.fosberg_index_with_drought) for site in found),
@@ -151,6 +153,19 @@ def fire_weather(crossing: Crossing, found: tuple[SiteFire, ...], rules: RuleSet
         night_remark=_night_remark(found[0]),
         cautions=CAUTIONS,
     )
+
+
+def _shown(pairs: list[tuple[SiteFire, LeeAir]], crossing: Crossing) -> list[tuple[SiteFire, LeeAir]]:
+    """The sites of the tables, in the order of the case: of very many those where most is met, and the first dozen."""
+    if len(pairs) <= MOST_SITES:
+        return pairs
+
+    def met(site: SiteFire) -> int:
+        return sum(one.judged.status == "met" for one in site.thresholds)
+
+    first = {air.number for air in first_sites(crossing).lee}
+    ordered = sorted(pairs, key=lambda pair: (-met(pair[0]), pair[1].number not in first, pair[1].number))
+    return sorted(ordered[:MOST_SITES], key=lambda pair: pair[1].number)
 
 
 CAUTIONS = (

@@ -88,11 +88,11 @@ def threshold_rows(found: tuple[SiteFire, ...], lee: tuple[LeeAir, ...]) -> tupl
     rows = [
         (
             ORDER.index(threshold.judged.status),
-            number,
+            air.number,
             place,
-            _row(site, air, number, threshold.judged, threshold.movers),
+            _row(site, air, air.number, threshold.judged, threshold.movers),
         )
-        for number, (site, air) in enumerate(zip(found, lee, strict=True), start=1)
+        for site, air in zip(found, lee, strict=True)
         for place, threshold in enumerate(site.thresholds)
     ]
     rows.sort(key=lambda row: row[:3])
@@ -127,7 +127,8 @@ def headline(found: tuple[SiteFire, ...]) -> Headline:
             rules = list(dict.fromkeys(one.rule.name for _, one in here))
             names = tuple(dict.fromkeys(name for name, _ in here))
             where = names[0] if len(names) == 1 else counted(len(names), "site", "sites").lower()
-            what = f"“{rules[0]}” is" if len(rules) == 1 else f"{counted(len(rules), 'threshold', 'thresholds')} are"
+            many = counted(len(rules), "threshold", "thresholds").capitalize()
+            what = f"“{rules[0]}” is" if len(rules) == 1 else f"{many} are"
             return Headline(f"{what} met at {where}{how}", names)
     if all(one.status == ORDER[3] for _, one in judged):
         return Headline("No threshold can be judged", ())

@@ -49,6 +49,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.rain_line import RainLineDrawing
     from orolift.report.figures.rain_map import RainMapDrawing
     from orolift.report.figures.section import SectionDrawing
+    from orolift.report.figures.sites_map import SitesMapDrawing
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.quality import Finding
 
@@ -82,6 +83,7 @@ class Page:
     rain_map : Figure or None
     gauge_scatter : Figure or None
     sites : Sites
+    sites_map : Figure or None
     fire : FireWeather or None
     answers : Answers
     answers_figure : Figure or None
@@ -113,6 +115,7 @@ class Page:
     rain_map: Figure[RainMapDrawing] | None
     gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
+    sites_map: Figure[SitesMapDrawing] | None
     fire: FireWeather | None
     answers: Answers
     answers_figure: Figure[AnswersDrawing] | None
@@ -198,6 +201,7 @@ def page_of(
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
         sites=sites(crossing),
+        sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
         fire=fire_weather(crossing, fire, rules) if fire else None,
         answers=answers(few),
         answers_figure=answers_figure(few, units),
@@ -215,3 +219,10 @@ def _rain_map(crossing: Crossing, mapped: Mapped, units: Units) -> Figure[RainMa
     from orolift.report.figures.rain_map import rain_map_figure
 
     return rain_map_figure(crossing, mapped, units)
+
+
+def _sites_map(crossing: Crossing, mapped: Mapped, units: Units) -> Figure[SitesMapDrawing] | None:
+    """The map of the sites; its module needs what only cases with a raster need."""
+    from orolift.report.figures.sites_map import sites_map_figure
+
+    return sites_map_figure(crossing, mapped, units)

@@ -92,8 +92,10 @@ def _heading(crossing: Crossing) -> Words:
 
 def _sentences(crossing: Crossing) -> tuple[Words, ...]:
     water, rain = crossing.water, crossing.rain
-    if water.condensed <= 0.0 or not rains(crossing):
-        return ()
+    if water.condensed <= 0.0:
+        return (("Nothing condenses on the way over: the air stays short of saturation.",),)
+    if not rains(crossing):
+        return (("What condenses on the way over evaporates again; next to nothing of it falls.",),)
     out: list[Words] = [
         (
             "Of the vapour that crosses ",

@@ -17,10 +17,12 @@ from orolift.report.words import plain
 
 if TYPE_CHECKING:
     from orolift.report.bearings_page import BearingsPage
+    from orolift.report.compare import ComparePage
     from orolift.report.hours_page import HoursPage
+    from orolift.report.index import IndexPage
     from orolift.report.page import Page
 
-INLINED = ("style.css", "reading.js")
+INLINED = ("style.css", "reading.js", "sorting.js")
 """Files of the package that pages carry inside them."""
 
 
@@ -39,19 +41,36 @@ class Inlined:
     hash: str
 
 
-def render(page: Page) -> str:
-    """The report as one self-contained HTML file.
+def render(page: Page | IndexPage, template: str = "page.html.jinja") -> str:
+    """A page as one self-contained HTML file.
 
     Parameters
     ----------
-    page : Page
+    page : Page or IndexPage
+        With at least a title, a version, a time it was made and units.
+    template : str
+        Name of the template that extends the skeleton.
 
     Returns
     -------
     str
         The same text for the same page, whenever and wherever it is made.
     """
-    return _environment().get_template("page.html.jinja").render(page=page)
+    return _environment().get_template(template).render(page=page)
+
+
+def render_compare(page: ComparePage) -> str:
+    """The page of a comparison as one self-contained HTML file.
+
+    Parameters
+    ----------
+    page : ComparePage
+
+    Returns
+    -------
+    str
+    """
+    return _environment().get_template("compare.html.jinja").render(page=page)
 
 
 def render_hours(page: HoursPage) -> str:

@@ -7,12 +7,19 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.report.quantities import Amount
-from orolift.report.story import SAME, difference, source_words, where_words
+from orolift.report.quantities import Amount, Kind
+from orolift.report.story import SAME, difference, first_sites, source_words, where_words
 from orolift.report.words import Words, counted, sentence
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
+
+MOST_FULL = 24
+"""Sites from which on the table has one short row for each (design choice)."""
+MOST_FAILED = 12
+"""Failed sites that are named for one reason."""
+MOST_LOW = 6
+"""Sites below the upwind ground that are named."""
 
 
 @dataclass(frozen=True)
@@ -55,11 +62,72 @@ class SiteRow:
 
 
 @dataclass(frozen=True)
+class ShortRow:
+    """One of very many sites."""
+
+    number: int
+    name: str
+    side: str
+    remark: str
+    beyond_crest: Amount
+    elevation: Amount
+    temperature: Amount
+    relative_humidity: Amount
+    warming: Amount
+    wind_10m: Amount | None
+    source: Amount | None
+
+
+@dataclass(frozen=True)
+class SideRow:
+    """All sites of one side: how many, and from where to where their values reach."""
+
+    side: str
+    count: str
+    temperature: Words
+    relative_humidity: Words
+    warming: Words
+    wind_10m: Words
+
+
+@dataclass(frozen=True)
+class Panel:
+    """A site by itself."""
+
+    number: int
+    name: str
+    side: str
+    remark: str
+    facts: tuple[tuple[str, Words], ...]
+
+
+@dataclass(frozen=True)
 class Sites:
-    """The sites: a conclusion, the rows, what to know when reading them."""
+    """The sites.
+
+    Attributes
+    ----------
+    heading : Words
+        A conclusion.
+    rows : tuple of SiteRow
+        All sites, in the order of the case; empty where they are very many.
+    short_rows : tuple of ShortRow
+        Very many sites, the most warmed first.
+    sides : tuple of SideRow
+        What very many have in common.
+    panels : tuple of Panel
+        A dozen sites one by one.
+    failed : tuple of (str, str)
+        Sites of which nothing could be worked out, by the reason.
+    remarks : tuple of Words
+    """
 
     heading: Words
     rows: tuple[SiteRow, ...]
+    short_rows: tuple[ShortRow, ...]
+    sides: tuple[SideRow, ...]
+    panels: tuple[Panel, ...]
+    failed: tuple[tuple[str, str], ...]
     remarks: tuple[Words, ...]
 
 
@@ -74,8 +142,112 @@ def sites(crossing: Crossing) -> Sites:
     -------
     Sites
     """
-    rows = tuple(_row(air, air.number, crossing) for air in crossing.lee)
-    return Sites(heading=_heading(crossing.lee), rows=rows, remarks=_remarks(crossing))
+    many = len(crossing.lee) > MOST_FULL
+    by_warmth = sorted(crossing.lee, key=lambda air: -air.warming) if many else []
+    return Sites(
+        heading=_heading(crossing.lee),
+        rows=() if many else tuple(_row(air, air.number, crossing) for air in crossing.lee),
+        short_rows=tuple(_short(air, crossing) for air in by_warmth),
+        sides=_sides(crossing.lee) if many else (),
+        panels=tuple(_panel(air, crossing) for air in first_sites(crossing).lee),
+        failed=_failed(crossing),
+        remarks=_remarks(crossing),
+    )
+
+
+def _beyond(air: LeeAir, crossing: Crossing) -> float:
+    """Distance downwind of the crest of its line [m]."""
+    return air.distance - crossing.features.crest_distance if air.own is None else air.own.beyond_crest
+
+
+def _short(air: LeeAir, crossing: Crossing) -> ShortRow:
+    return ShortRow(
+        number=air.number,
+        name=air.name,
+        side=air.side,
+        remark=where_words(air),
+        beyond_crest=Amount(_beyond(air, crossing), "distance", 1),
+        elevation=Amount(air.elevation, "height"),
+        temperature=Amount(air.temperature, "temperature", 1),
+        relative_humidity=Amount(air.relative_humidity, "share"),
+        warming=Amount(air.warming, "temperature_change", 1),
+        wind_10m=None if air.wind is None else Amount(air.wind.at_10m, "wind"),
+        source=None if air.source_level is None else Amount(air.source_level, "height", -1),
+    )
+
+
+def _sides(lee: tuple[LeeAir, ...]) -> tuple[SideRow, ...]:
+    out = []
+    for side in ("windward", "crest", "lee"):
+        here = [air for air in lee if air.side == side]
+        if not here:
+            continue
+        winds = [air.wind.at_10m for air in here if air.wind is not None]
+        out.append(
+            SideRow(
+                side=side,
+                count=str(len(here)),
+                temperature=_span([air.temperature for air in here], "temperature", 1),
+                relative_humidity=_span([air.relative_humidity for air in here], "share"),
+                warming=_span([air.warming for air in here], "temperature_change", 1),
+                wind_10m=_span(winds, "wind") if winds else ("–",),
+            )
+        )
+    return tuple(out)
+
+
+def _span(values: list[float], kind: Kind, digits: int = 0) -> Words:
+    return (Amount(min(values), kind, digits, bare=True), " to ", Amount(max(values), kind, digits, bare=True))
+
+
+def _panel(air: LeeAir, crossing: Crossing) -> Panel:
+    """What matters at one site, in words."""
+    facts: list[tuple[str, Words]] = [
+        (
+            "Air",
+            (
+                Amount(air.temperature, "temperature", 1),
+                ", dew point ",
+                Amount(air.dew_point, "temperature", 1),
+                ", ",
+                Amount(air.relative_humidity, "share"),
+            ),
+        ),
+        (
+            "Warming",
+            difference(
+                air.warming, "warmer than the incoming air", "cooler than the incoming air", "as the incoming air"
+            ),
+        ),
+    ]
+    if air.wind is not None:
+        gusts = Amount(air.wind.gust_low, "wind", bare=True), " to ", Amount(air.wind.gust_high, "wind")
+        facts.append(("Wind", (Amount(air.wind.at_10m, "wind"), " at 10 m, gusts ", *gusts)))
+    if air.source_level is not None:
+        facts.append(("Comes from", source_words(air)))
+    crest = crossing.features.crest if air.own is None else air.own.crest
+    beyond = _beyond(air, crossing)
+    where = " behind" if beyond >= 0.0 else " before"
+    facts.append(("Crest", (Amount(crest, "height"), ", ", Amount(abs(beyond), "distance", 1), where)))
+    if air.own is not None:
+        wind, top = Amount(air.own.crest_wind, "wind"), air.own.blocked_top
+        stopped: Words = ("; blocked below ", Amount(top, "height", -1))
+        if top <= air.own.base + 1.0:
+            stopped = ("; nothing is blocked",)
+        facts.append(("Own line", (wind, " across its crest", *stopped)))
+    return Panel(air.number, air.name, air.side, where_words(air), tuple(facts))
+
+
+def _failed(crossing: Crossing) -> tuple[tuple[str, str], ...]:
+    """Names of failed sites, put together by their reason."""
+    by_reason: dict[str, list[str]] = {}
+    for site in crossing.failed:
+        by_reason.setdefault(site.reason, []).append(site.name)
+    out = []
+    for reason, names in by_reason.items():
+        more = f" and {len(names) - MOST_FAILED} more" if len(names) > MOST_FAILED else ""
+        out.append((", ".join(names[:MOST_FAILED]) + more, reason))
+    return tuple(out)
 
 
 def _row(air: LeeAir, number: int, crossing: Crossing) -> SiteRow:
@@ -138,9 +310,11 @@ def _remarks(crossing: Crossing) -> tuple[Words, ...]:
     ground = float(crossing.incoming.height[0])
     low = [air.name for air in crossing.lee if air.elevation < ground]
     if low:
+        more = f" and {len(low) - MOST_LOW} more" if len(low) > MOST_LOW else ""
+        named = f"{', '.join(low[:MOST_LOW])}{more}"
         out.append(
             (
-                f"Below the upwind ground at {', '.join(low)}: the incoming air is continued down from ",
+                f"Below the upwind ground at {named}: the incoming air is continued down from ",
                 Amount(ground, "height"),
                 ", so the comparison there is with air that does not exist.",
             )

@@ -87,7 +87,7 @@ def existing_file(path: str | Path, where: str, folder: Path | None = None) -> P
     return full
 
 
-def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
+def read_text(path: str | Path, where: str, folder: Path | None = None, *, limit: int = TEXT_LIMIT) -> str:
     """Whole text of a local file, without its byte-order mark.
 
     UTF-8 is expected; UTF-16, with a mark or without, and Latin-1 letters are read too.
@@ -96,6 +96,8 @@ def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
     ----------
     path, where, folder
         As in `existing_file`.
+    limit : int
+        Most bytes that are read.
 
     Returns
     -------
@@ -105,19 +107,19 @@ def read_text(path: str | Path, where: str, folder: Path | None = None) -> str:
     Raises
     ------
     DataFileError
-        If it is larger than `TEXT_LIMIT` or is no text.
+        If it is larger than `limit` or is no text.
     MissingFileError
         If it cannot be read.
     """
     full = existing_file(path, where, folder)
     try:
         with full.open("rb") as stream:
-            raw = stream.read(min(full.stat().st_size, TEXT_LIMIT) + 1)  # reading sets aside as much as is asked for
+            raw = stream.read(min(full.stat().st_size, limit) + 1)  # reading sets aside as much as is asked for
     except OSError as error:
         raise MissingFileError(f"{where}: {full} cannot be read ({_reason(error)}).") from error
-    if len(raw) > TEXT_LIMIT:
+    if len(raw) > limit:
         raise DataFileError(
-            f"{where}: {full} is larger than {TEXT_LIMIT // 2**20} MB, the limit for text. Is it the right file?"
+            f"{where}: {full} is larger than {limit // 2**20} MB, the limit for text. Is it the right file?"
         )
     return _decoded(raw, f"{where}: {full}").replace("\r\n", "\n").replace("\r", "\n")
 

@@ -79,6 +79,7 @@ class RuleBlock(Block):
 class FireBlock(Block):
     """Fire weather at one site."""
 
+    number: int = Field(description="of the site in the case, as in `lee`")
     name: str
     vapour_pressure_deficit_hpa: float
     equilibrium_fuel_moisture_percent: float
@@ -114,10 +115,31 @@ def fire_blocks(sites: Iterable[SiteFire]) -> list[FireBlock]:
     return [_block(site) for site in sites]
 
 
+def flat_fire(block: FireBlock) -> dict[str, object]:
+    """Single values of a block under names of their own, for tables and points on a map.
+
+    Parameters
+    ----------
+    block : FireBlock
+
+    Returns
+    -------
+    dict
+        Keys of `fire`; of the night ``night_valley_floor_still_percent`` and so on; last `thresholds_met`, the names
+        of the rules that are met.
+    """
+    values = block.model_dump()
+    flat = {key: value for key, value in values.items() if key not in {"number", "name", "night", "rules", "range"}}
+    flat |= {f"night_{key}": value for key, value in values["night"].items()}
+    flat["thresholds_met"] = "; ".join(rule.name for rule in block.rules if rule.status == "met")
+    return flat
+
+
 def _block(site: SiteFire) -> FireBlock:
     found = site.indices
     hours = [_known(value) for value in np.ravel(found.fine_fuel_code_hours)]
     return FireBlock(
+        number=site.number,
         name=site.name,
         vapour_pressure_deficit_hpa=float(found.vapour_pressure_deficit) / 100.0,
         equilibrium_fuel_moisture_percent=100.0 * float(found.equilibrium_fuel_moisture),

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.crossing.result import Site
+from orolift.sources.site_places import every_site
 from orolift.terrain.features import features
 
 if TYPE_CHECKING:
@@ -80,11 +81,7 @@ def sites_of(inputs: Inputs) -> tuple[Site, ...]:
     tuple of Site
         Distances along the case's own line.
     """
-    if inputs.places and inputs.case.terrain.elevation_file is not None:
-        return tuple(Site(place.name, place.along, place.height) for place in inputs.places)
-    if inputs.sites:
-        return inputs.sites
-    return (Site("Lee foot", features(inputs.transect).lee_foot_distance),)
+    return every_site(inputs.places) or (Site("Lee foot", features(inputs.transect).lee_foot_distance),)
 
 
 def _beside(inputs: Inputs, sites: tuple[Site, ...]) -> float:

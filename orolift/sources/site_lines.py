@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections import defaultdict
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -116,7 +116,8 @@ def site_groups(inputs: Inputs) -> Iterator[SiteGroup]:
         placed = PlacedSite(number, place.name, place.along, place.offset or 0.0)
         keyed[_key(axis, along, across)].append((placed, Site(place.name, along, place.height)))
     for key, sites in keyed.items():
-        yield from _groups(axis, key, sites)
+        for group in _groups(axis, key, sites):
+            yield replace(group, fire=inputs.fire)
 
 
 def _axis(inputs: Inputs, lines: Lines) -> _Axis:

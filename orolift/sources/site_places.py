@@ -202,10 +202,13 @@ def sites_on_line(places: Sequence[SitePlace]) -> tuple[Site, ...]:
 
     With a map they have the height of the terrain there, which the mean ground of a swath is not.
     """
+    return every_site([place for place in places if place.on_line])
+
+
+def every_site(places: Sequence[SitePlace]) -> tuple[Site, ...]:
+    """All sites, those beside the case's own line too, by their distance along it."""
     return tuple(
-        Site(place.name, place.along, place.elevation if place.offset is None else place.height)
-        for place in places
-        if place.on_line
+        Site(place.name, place.along, place.elevation if place.offset is None else place.height) for place in places
     )
 
 

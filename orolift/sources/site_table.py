@@ -4,7 +4,10 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
+from orolift.sources.fire_results import flat_fire
+
 if TYPE_CHECKING:
+    from orolift.sources.fire_results import FireBlock
     from orolift.sources.results import FailedSiteBlock, LeeBlock, Results
 
 NOT_A_VALUE = {"profile", "range", "warming_parts_c", "source_level_range_m"}
@@ -14,18 +17,21 @@ RANGES = ("source_level_m", "wind_ms", "gust_ms")
 """Ranges that every table has columns for; others are added where they are known."""
 
 
-def flat_site(site: LeeBlock) -> dict[str, Any]:
+def flat_site(site: LeeBlock, fire: FireBlock | None = None) -> dict[str, Any]:
     """Every value of a site under a name of its own.
 
     Parameters
     ----------
     site : LeeBlock
+    fire : FireBlock, optional
+        Its fire weather.
 
     Returns
     -------
     dict
         Keys of `lee` in the results file; parts of the warming as ``warming_by_descent_c``, ends of ranges as
-        ``wind_ms_low`` and ``wind_ms_high``; last `reason`, None for a site that was worked out.
+        ``wind_ms_low`` and ``wind_ms_high``; then those of fire weather (`fire_results.flat_fire`); last `reason`,
+        None for a site that was worked out.
     """
     values = site.model_dump()
     flat = {key: value for key, value in values.items() if key not in NOT_A_VALUE}
@@ -37,7 +43,13 @@ def flat_site(site: LeeBlock) -> dict[str, Any]:
     for key in (*RANGES, *(key for key in spans if key not in RANGES)):
         low, high = spans.get(key, (None, None))
         flat[f"{key}_low"], flat[f"{key}_high"] = low, high
-    return {**flat, "reason": None}
+    return {**flat, **({} if fire is None else flat_fire(fire)), "reason": None}
+
+
+def flat_sites(results: Results) -> list[dict[str, Any]]:
+    """Every site that was worked out, with its fire weather."""
+    fire = {block.number: block for block in results.fire}
+    return [flat_site(site, fire.get(site.number)) for site in results.lee]
 
 
 def flat_failed(site: FailedSiteBlock) -> dict[str, Any]:
@@ -58,7 +70,7 @@ def site_rows(results: Results) -> tuple[list[str], list[list[object]]]:
     rows : list of lists
         Failed sites have their number, name and reason, and nothing else.
     """
-    rows = [flat_site(site) for site in results.lee]
+    rows = flat_sites(results)
     header = list(dict.fromkeys(key for row in rows for key in row if key != "reason"))
     header.append("reason")
     rows = sorted([*rows, *(flat_failed(site) for site in results.failed_sites)], key=lambda row: int(row["number"]))

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from orolift.sources.site_table import flat_failed, flat_site
+from orolift.sources.site_table import flat_failed, flat_sites
 
 if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
@@ -32,7 +32,7 @@ def sites_geojson(inputs: Inputs, results: Results) -> str:
         GeoJSON in longitude and latitude (RFC 7946). Properties are the keys of `lee` in the results file; parts of
         the warming and ends of ranges have names of their own. A site that could not be worked out has its reason.
     """
-    found = {site.number: flat_site(site) for site in results.lee}
+    found = {int(values["number"]): values for values in flat_sites(results)}
     found |= {site.number: flat_failed(site) for site in results.failed_sites}
     features = [
         {

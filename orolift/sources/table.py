@@ -21,7 +21,7 @@ if TYPE_CHECKING:
 
 MISSING = frozenset({"", "-", "--", "/", "//", "///", "////", "na", "n/a", "nan", "null", "none", "-999", "-9999", "m"})
 """Cells that mean no value, in small letters; ``-9999`` forms with decimals count too."""
-MISSING_OUT_OF_RANGE = frozenset({999.0, 999.9, 999.99, 9999.0, 9999.9, 9999.99, 99999.0, 99999.9})
+MISSING_OUT_OF_RANGE = frozenset({-99.0, -99.9, 999.0, 999.9, 999.99, 9999.0, 9999.9, 9999.99, 99999.0, 99999.9})
 """Numbers that mean no value in a column where they are impossible anyway; noted. Common practice, no source."""
 MOST_ROWS = 100_000
 """Rows read at most: a balloon that reports every second for three hours gives 10 800."""
@@ -110,7 +110,7 @@ def number_table(
         File, for messages.
     allowed : sequence of Column
     most_rows : int
-        More are refused.
+        More rows are refused.
     forgiving : bool
         Whether a cell that is no number or out of range makes a fault of its
         row, with NaN in its place, and does not refuse the file.

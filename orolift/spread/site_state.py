@@ -15,9 +15,9 @@ from orolift.crossing.situation import crossing_of
 from orolift.errors import NoCrossingError, OroliftError
 from orolift.fire.dryness import vapour_pressure_deficit
 from orolift.fire.indices import site_fire
-from orolift.fire.nights import night_at
+from orolift.fire.nights import nights_at
 from orolift.fire.values import site_values
-from orolift.fire.weather import site_weather
+from orolift.fire.weather import site_weather, stacked
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -178,7 +178,7 @@ def rule_values(crossing: Crossing, site: LeeAir, when: When, fire: FireSettings
     """
     rules = () if fire.rules is None else fire.rules.rules
     wanted = {condition.quantity for rule in rules for condition in rule.conditions}
-    weather = site_weather(crossing, site)
+    weather = site_weather(site)
     indices = site_fire(weather, drought_index=fire.drought_index, hours=())
     others = {
         "drought_index": np.nan if fire.drought_index is None else fire.drought_index,
@@ -187,7 +187,8 @@ def rule_values(crossing: Crossing, site: LeeAir, when: When, fire: FireSettings
         "warming": site.warming,
     }
     if "mixing_height" in wanted:
-        others["mixing_height"] = night_at(weather, site, crossing.features.crest, when).mixing_height
+        (night,) = nights_at(stacked([weather]), [site], [crossing.features.crest], when)
+        others["mixing_height"] = night.mixing_height
     roughness = float(np.asarray(crossing.settings.roughness))
     values = site_values(weather, indices, rules, roughness, others=others)
     return {key: float(np.asarray(values.get(key, np.nan))) for key in wanted}

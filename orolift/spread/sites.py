@@ -5,9 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from orolift.crossing.result import FailedSite, SiteLine
+from orolift.crossing.result import FailedSite, SiteLine, When
 from orolift.crossing.situation import crossing_of
 from orolift.errors import OroliftError
+from orolift.fire.sites import fire_at_sites
 from orolift.spread.engine import outcomes
 
 if TYPE_CHECKING:
@@ -16,6 +17,7 @@ if TYPE_CHECKING:
 
     from orolift.crossing.result import Crossing, LeeAir
     from orolift.crossing.situation import Situation
+    from orolift.fire.sites import FireSettings, SiteFire
 
 
 @dataclass(frozen=True)
@@ -48,18 +50,22 @@ class SiteGroup:
         Their line, with the same sites in the same order; None when it cannot be drawn.
     reason : str
         Why not.
+    fire : FireSettings or None
+        What fire weather there is judged by.
     """
 
     sites: tuple[PlacedSite, ...]
     situation: Situation | None
     reason: str = ""
+    fire: FireSettings | None = None
 
 
 @dataclass(frozen=True, eq=False)
 class GroupAir:
-    """What came of a group: the air at its sites, or why there is none."""
+    """What came of a group: air and fire weather at its sites, or why there is none."""
 
     found: tuple[LeeAir, ...]
+    fire: tuple[SiteFire, ...]
     failed: tuple[FailedSite, ...]
 
 
@@ -105,19 +111,23 @@ def group_air(group: SiteGroup) -> GroupAir:
         return _failed(group, group.reason)
     try:
         crossing = crossing_of(group.situation)
+        fire = fire_at_sites(crossing, group.situation.when or When(), group.fire)
     except OroliftError as error:
         return _failed(group, str(error))
-    return GroupAir(tuple(map(lambda site, air: _placed(site, air, crossing), group.sites, crossing.lee)), ())
+    return GroupAir(
+        tuple(_placed(site, air, crossing) for site, air in zip(group.sites, crossing.lee, strict=True)), fire, ()
+    )
 
 
 def _failed(group: SiteGroup, reason: str) -> GroupAir:
-    return GroupAir((), tuple(FailedSite(site.number, site.name, reason) for site in group.sites))
+    return GroupAir((), (), tuple(FailedSite(site.number, site.name, reason) for site in group.sites))
 
 
 def _placed(site: PlacedSite, air: LeeAir, crossing: Crossing) -> LeeAir:
     """The air at a site with its number in the case, and what its own line is like."""
     own = SiteLine(
         offset=site.offset,
+        base=crossing.features.base,
         crest=crossing.features.crest,
         blocked_top=crossing.flow.blocked_top,
         beyond_crest=air.distance - crossing.features.crest_distance,
@@ -126,6 +136,28 @@ def _placed(site: PlacedSite, air: LeeAir, crossing: Crossing) -> LeeAir:
         cautions=crossing.cautions,
     )
     return replace(air, number=site.number, distance=site.along, own=own)
+
+
+def fire_by_number(crossing: Crossing, own: Iterable[SiteFire], parts: Iterable[GroupAir]) -> dict[int, SiteFire]:
+    """Fire weather at sites by their numbers in the case.
+
+    Parameters
+    ----------
+    crossing : Crossing
+        Of all sites, from `with_sites`.
+    own : iterable of SiteFire
+        At the sites of the case's own line.
+    parts : iterable of GroupAir
+
+    Returns
+    -------
+    dict of int to SiteFire
+    """
+    on_line = crossing.lee if crossing.on_line is None else crossing.on_line
+    found = {air.number: fire for air, fire in zip(on_line, own, strict=True)}
+    for part in parts:
+        found |= {air.number: fire for air, fire in zip(part.found, part.fire, strict=True)}
+    return found
 
 
 def with_sites(crossing: Crossing, on_line: tuple[int, ...], parts: Iterable[GroupAir], *, elsewhere: bool) -> Crossing:

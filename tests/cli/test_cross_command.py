@@ -113,7 +113,7 @@ def test_bad_input_is_one_message_and_no_file(changes, message, edited, case_fol
         (["cross", "case.toml", "--report", "nofolder/x.html"], "nofolder is not a folder"),
         (["cross", "case.toml", "--report", "ridge.csv/x.html"], "is not a folder"),
         (["cross", "case.toml", "--units", "imperial"], "'imperial' is not one of 'metric', 'us'"),
-        (["cross", "case.toml", "case.toml"], "already writes case.html"),
+        (["cross", "case.toml", "case.toml"], "case.toml is given twice"),
         (["cross", "case.toml", "other.toml", "--report", "x.html"], "--report takes one case"),
         (["crss", "case.toml"], "No such command 'crss'"),
         (["starter", "."], "case.toml is there already"),

@@ -72,11 +72,11 @@ def test_code_and_moisture_undo_each_other(code):
     np.testing.assert_allclose(code_from_fuel_moisture(fuel_moisture_from_code(code)), code, atol=0.06)
 
 
-@settings(max_examples=10)
+@settings(max_examples=6)
 @given(st.floats(0, 101), st.floats(263, 313), st.floats(0, 1), st.floats(0, 30))
 def test_comes_to_rest_between_the_equilibria(start, temperature, humidity, wind):
     """After weeks of the same air, wet and dry starts lie on either side of the same narrow band."""
-    long = [fine_fuel_code_hourly(f, temperature, humidity, wind, hours=300) for f in (0.0, start, 101.0)]
+    long = [fine_fuel_code_hourly(f, temperature, humidity, wind, hours=200) for f in (0.0, start, 101.0)]
     assert long[0] <= long[1] + 1e-9
     assert long[1] <= long[2] + 1e-9
     twice = fine_fuel_code_hourly(long[1], temperature, humidity, wind, hours=10)

@@ -219,7 +219,8 @@ def test_cause_heading_follows_the_parts(page_for, crossing, parts, heading):
 
 def test_parts_add_up_to_the_total_shown(page_for, any_crossing):
     """The budget closes to 1e-6 K; the row holds the raw parts."""
-    for row, site in zip(page_for(any_crossing).causes.rows, any_crossing.lee, strict=True):
+    for row in page_for(any_crossing).causes.rows:
+        site = any_crossing.lee[row.number - 1]
         assert row.total.value == site.warming
         if site.parts is None:
             assert row.latent is None
@@ -231,7 +232,8 @@ def test_parts_add_up_to_the_total_shown(page_for, any_crossing):
 
 
 def test_answers_hold_the_values_of_their_sites(page_for, any_crossing):
-    for row, site in zip(page_for(any_crossing).answers.rows, any_crossing.lee, strict=True):
+    for row in page_for(any_crossing).answers.rows:
+        site = any_crossing.lee[row.number - 1]
         assert row.own.value == site.temperature
         assert (row.popular_picture is None) == (site.side == "windward")
         if row.popular_picture is not None:
@@ -316,7 +318,8 @@ def test_conditions_may_be_unknown(page_for, crossing):
 
 
 def test_site_winds_are_those_of_the_sites(page_for, any_crossing):
-    for row, site in zip(page_for(any_crossing).lee_wind.sites, any_crossing.lee, strict=True):
+    for row in page_for(any_crossing).lee_wind.sites:
+        site = any_crossing.lee[row.number - 1]
         if site.wind is None:
             assert row.at_10m is None
             assert row.remark

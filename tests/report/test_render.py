@@ -104,6 +104,18 @@ def test_ids_are_unique_and_every_reference_leads_somewhere(read, any_crossing):
             assert reference in ids
 
 
+@pytest.mark.parametrize("units", ["metric", "us"])
+def test_no_section_is_empty(page_for, any_crossing, units):
+    """Under its margin word and heading each says something, and no heading or cell shows a None or a nan."""
+    html = render(page_for(any_crossing, units=units))
+    sections = re.findall(r"(?s)<section id=.*?</h2>(.*?)</section>", html)
+    assert len(sections) == len(re.findall("<section ", html))
+    for section in sections:
+        words = re.sub(r"(?s)<script.*?</script>|<[^>]*>", " ", section)
+        assert len(words.split()) >= 8
+        assert not re.search(r"\b(?:None|nan|inf)\b", words)
+
+
 def test_contents_lead_to_every_section_in_its_order(read, any_crossing):
     """All but the briefing, which is where the reader already is."""
     page = read(any_crossing)

@@ -13,7 +13,7 @@ from orolift.report.figures.placing import Box
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.rain.over_map import MapRain
+    from orolift.terrain.grid import ElevationGrid
 
     Array = NDArray[np.float64]
 
@@ -45,12 +45,12 @@ class Ground:
         return np.asarray(self.frame.top + (self.north - y) * self.scale)
 
 
-def ground_of(rain: MapRain, width: float, most_wide: float, most_high: float) -> tuple[Ground, float]:
+def ground_of(grid: ElevationGrid, width: float, most_wide: float, most_high: float) -> tuple[Ground, float]:
     """Where a map lies on a drawing: as large as fits.
 
     Parameters
     ----------
-    rain : MapRain
+    grid : ElevationGrid
     width : float
         Of the drawing.
     most_wide, most_high : float
@@ -62,7 +62,7 @@ def ground_of(rain: MapRain, width: float, most_wide: float, most_high: float) -
     height : float
         Of the drawing.
     """
-    grid, (dx, dy) = rain.found.grid, rain.found.spacing
+    dx, dy = float(grid.x[1] - grid.x[0]), float(grid.y[0] - grid.y[1])
     wide, high = grid.x.size * dx, grid.y.size * dy
     scale = min(most_wide / wide, most_high / high)
     left = 0.5 * (width - scale * wide)

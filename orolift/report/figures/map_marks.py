@@ -37,13 +37,14 @@ GAUGE = 5.0
 
 
 def corner_marks(
-    rain: MapRain, ground: Ground, board: Board, units: Units, *, wide: bool
+    wind: tuple[float, float], ground: Ground, board: Board, units: Units, *, wide: bool
 ) -> tuple[tuple[Curve, ...], tuple[Label, ...], Board]:
     """Scale bar and wind arrow, each in the first corner that is free.
 
     Parameters
     ----------
-    rain : MapRain
+    wind : (float, float) [m s-1], [rad]
+        Speed, and bearing on the map toward which it blows.
     ground : Ground
     board : Board
     units : 'metric' or 'us'
@@ -56,7 +57,7 @@ def corner_marks(
     """
     curves: tuple[Curve, ...] = ()
     labels: tuple[Label, ...] = ()
-    for places in (_scale_bar(ground, board, units), _wind(rain, ground, board, units, wide=wide)):
+    for places in (_scale_bar(ground, board, units), _wind(wind, ground, board, units, wide=wide)):
         for drawn, label, box in places:
             if not _covers(board, box):
                 board = with_taken(board, box)
@@ -88,12 +89,13 @@ def _scale_bar(ground: Ground, board: Board, units: Units) -> Iterator[Corner]:
             yield (bar,), label, Box(middle - 0.5 * room, y - 10.0 - letter, middle + 0.5 * room, y + 6.0)
 
 
-def _wind(rain: MapRain, ground: Ground, board: Board, units: Units, *, wide: bool) -> Iterator[Corner]:
+def _wind(wind: tuple[float, float], ground: Ground, board: Board, units: Units, *, wide: bool) -> Iterator[Corner]:
     """An arrow along the wind of the map, high in the map first."""
-    frame, letter, p = ground.frame, board.letter, rain.column.parameters
-    speed = quantity(p.wind_speed, "wind", 0, units)
+    frame, letter = ground.frame, board.letter
+    blows, bearing = wind
+    speed = quantity(blows, "wind", 0, units)
     text = f"wind {speed}" if wide else speed.split("\u00a0(")[0]
-    dx, dy = ARROW * float(np.sin(p.bearing)), -ARROW * float(np.cos(p.bearing))
+    dx, dy = ARROW * float(np.sin(bearing)), -ARROW * float(np.cos(bearing))
     room = text_width(text, letter)
     corners: tuple[tuple[float, float, Anchor], ...] = (
         (frame.left + ARROW + 12.0, 1.0, "start"),

@@ -146,12 +146,12 @@ def _drawing(
 ) -> RainMapDrawing:
     """One form of the map."""
     width, most_wide, most_high, letter = page
-    ground, height = ground_of(mapped.rain, width, most_wide, most_high)
+    ground, height = ground_of(mapped.rain.found.grid, width, most_wide, most_high)
     frame = ground.frame
     layout = Layout(name, width, height, frame.left, frame.right, frame.top, frame.bottom, letter, 0)
     levels = _levels(mapped.rain, units)
     made = contours_of(*_field(mapped.rain, ground))
-    line, swath = _line(mapped, ground)
+    line, swath = line_on_map(mapped, ground)
     borders, outlines = _borders(mapped.rain, ground)
     points = [line, *outlines]
     board = Board(
@@ -160,8 +160,8 @@ def _drawing(
         points_x=np.concatenate([part[0] for part in points]),
         points_y=np.concatenate([part[1] for part in points]),
     )
-    marks, labels, board = corner_marks(mapped.rain, ground, board, units, wide=name == "wide")
-    placed, board = pins(_spots(crossing, mapped, ground), board, ASIDE, names=name == "wide")
+    marks, labels, board = corner_marks(wind_of(mapped), ground, board, units, wide=name == "wide")
+    placed, board = pins(spots_on_map(crossing, mapped, ground), board, ASIDE, names=name == "wide")
     gauges, words, board = gauge_marks(mapped.rain, ground, board, units)
     leaders, known, board = catchment_names(mapped.rain, ground, board)
     contours, values, _ = rain_contours(made, levels, board, units)
@@ -175,7 +175,7 @@ def _drawing(
         contours=contours,
         swath=swath,
         borders=borders,
-        lines=(*_divide(mapped, ground), *_drawn_line(line), *marks, *leaders),
+        lines=(*divide_on_map(mapped, ground), *drawn_line(line), *marks, *leaders),
         gauges=gauges,
         labels=(*labels, *words, *known, *values),
         pins=placed,
@@ -202,7 +202,13 @@ def _field(rain: MapRain, ground: Ground) -> tuple[Array, Array, Array]:
     return ground.across(x), ground.down(y), rate
 
 
-def _line(mapped: Mapped, ground: Ground) -> tuple[tuple[Array, Array], tuple[Curve, ...]]:
+def wind_of(mapped: Mapped) -> tuple[float, float]:
+    """Speed of the wind of the map [m s-1], and the bearing on it toward which it blows [rad]."""
+    parameters = mapped.rain.column.parameters
+    return parameters.wind_speed, parameters.bearing
+
+
+def line_on_map(mapped: Mapped, ground: Ground) -> tuple[tuple[Array, Array], tuple[Curve, ...]]:
     """The transect in the frame, and its swath."""
     from shapely import LineString
 
@@ -218,7 +224,7 @@ def _line(mapped: Mapped, ground: Ground) -> tuple[tuple[Array, Array], tuple[Cu
     return (points[:, 0], points[:, 1]), tuple(outline(part, "swath") for part in parts_of(wide))
 
 
-def _drawn_line(line: tuple[Array, Array]) -> tuple[Curve, ...]:
+def drawn_line(line: tuple[Array, Array]) -> tuple[Curve, ...]:
     """The transect with an arrow where the air leaves it."""
     x, y = line
     if x.size < 2:
@@ -230,7 +236,7 @@ def _drawn_line(line: tuple[Array, Array]) -> tuple[Curve, ...]:
     return Curve(path, "map-line casing"), Curve(path, "map-line"), head
 
 
-def _divide(mapped: Mapped, ground: Ground) -> tuple[Curve, ...]:
+def divide_on_map(mapped: Mapped, ground: Ground) -> tuple[Curve, ...]:
     """Where the windward side ends."""
     from shapely import LineString
 
@@ -263,7 +269,7 @@ def _borders(rain: MapRain, ground: Ground) -> tuple[tuple[Curve, ...], list[tup
     return tuple(curves), points
 
 
-def _spots(crossing: Crossing, mapped: Mapped, ground: Ground) -> list[Spot]:
+def spots_on_map(crossing: Crossing, mapped: Mapped, ground: Ground) -> list[Spot]:
     """The sites that lie in the frame."""
     line, frame = mapped.inputs.line, ground.frame
     out = []

@@ -1,0 +1,115 @@
+"""`orolift compare`: a crossing against what was observed in the lee, and what would explain the difference."""
+
+from __future__ import annotations
+
+import os
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+import click
+
+from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+
+if TYPE_CHECKING:
+    from orolift.report.quantities import Units
+
+
+@click.command(context_settings={"help_option_names": ["-h", "--help"]})
+@click.argument("cases", nargs=-1, required=True, metavar="CASE...")
+@click.argument("observed", metavar="OBSERVED.csv")
+@file_option("--report", "Report to write; default CASE-compared.html in the current folder.")
+@file_option("--results", "Results to write as JSON.")
+@file_option("--table", "Table to write as CSV: one row for each estimate against an observation.")
+@click.option(
+    "--within",
+    type=click.FloatRange(0.0, 1440.0),
+    default=30.0,
+    show_default=True,
+    metavar="MINUTES",
+    help="Observations farther than this from the time of a case are not held against it.",
+)
+@click.option("--explain", default=None, metavar="SITE", help="Place to explain; default: where it is farthest off.")
+@click.option(
+    "--event",
+    "events",
+    multiple=True,
+    metavar="TEXT",
+    help="Threshold to count hits and false alarms of, as in 'gust_ms >= 20'; may be given several times.",
+)
+@click.option(
+    "--lee-sounding", default=None, metavar="FILE", help="Sounding in the lee, held against the estimated profile."
+)
+@click.option("--at", "sounding_at", default=None, metavar="SITE", help="Where that was; default: the first lee site.")
+@click.option(
+    "--onset-offset",
+    "offset",
+    type=click.FloatRange(-10.0, 20.0),
+    default=1.0,
+    show_default=True,
+    metavar="K",
+    help="By how much the potential temperature in the lee may fall short of that at the crest.",
+)
+@click.option(
+    "--onset-sector",
+    "sector",
+    default=None,
+    metavar="FROM-TO",
+    help="Lee wind directions in degrees that count, clockwise, as in 190-280; default: 60 either side of across.",
+)
+@click.option(
+    "--onset-wind",
+    "least_wind",
+    type=click.FloatRange(0.0, 50.0),
+    default=2.0,
+    show_default=True,
+    metavar="M/S",
+    help="Weakest lee wind that counts.",
+)
+@JOBS_OPTION
+@UNITS_OPTION
+@QUIET_OPTION
+@VERBOSE_OPTION
+def command(
+    cases: tuple[str, ...],
+    observed: str,
+    *,
+    report: str | None,
+    results: str | None,
+    table: str | None,
+    units: Units,
+    quiet: bool,
+    **asked: object,
+) -> None:
+    """Hold the crossing of each CASE against what was OBSERVED in the lee."""
+    from orolift import __version__
+    from orolift.cli.compare_summary import summary_lines
+    from orolift.cli.comparing import Asked, compared_of
+    from orolift.report.compare import compare_page
+    from orolift.report.render import render_compare
+    from orolift.sources.files import csv_text, write_all
+
+    found, inputs = compared_of(cases, observed, Asked(**asked))  # type: ignore[arg-type]  # click has checked the types
+    page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
+    title = inputs[0].case.title or inputs[0].path.stem
+    data = compare_page(
+        found, title=title, observed=Path(observed).name, made_at=_made_at(), version=__version__, units=units
+    )
+    contents = {page: render_compare(data).encode()}
+    if results:
+        from orolift.sources.compare_results import compare_results
+
+        contents[Path(results)] = (compare_results(found).model_dump_json(indent=2) + "\n").encode()
+    if table:
+        from orolift.sources.compare_results import value_rows
+
+        contents[Path(table)] = csv_text(*value_rows(found)).encode()
+    write_all(contents)
+    if not quiet:
+        click.echo("\n".join([*summary_lines(found, title, units), f"Report: {page}"]))
+
+
+def _made_at() -> datetime:
+    """Now, or what SOURCE_DATE_EPOCH says."""
+    stamp = os.environ.get("SOURCE_DATE_EPOCH")
+    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)

@@ -1,0 +1,123 @@
+"""`--folder`: everything of some cases side by side, with an index page that links it."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from orolift.cli.over_map import RainFiles
+from orolift.errors import MissingFileError
+
+if TYPE_CHECKING:
+    from collections.abc import Iterable
+    from pathlib import Path
+
+    from orolift.cli.cross import Worked
+    from orolift.report.index import Entry
+    from orolift.report.quantities import Units
+
+SAID = {
+    "json": "results",
+    "csv": "table of the sites",
+    "geojson": "sites on the map",
+    "toml": "fitted times",
+}
+
+
+def all_rain_files(worked: Worked, folder: Path) -> RainFiles:
+    """Every file about rain that a case can give, in a folder.
+
+    Parameters
+    ----------
+    worked : Worked
+    folder : Path
+
+    Returns
+    -------
+    RainFiles
+    """
+    stem, case, mapped = worked.inputs.path.stem, worked.inputs.case, worked.mapped
+    with_raster = case.terrain.elevation_file is not None
+    if mapped is None:
+        return RainFiles(geojson=str(folder / f"{stem}.geojson") if with_raster else None)
+    rain = mapped.rain
+    return RainFiles(
+        maps=str(folder),
+        geojson=str(folder / f"{stem}.geojson"),
+        catchments=str(folder / f"{stem}_catchments.csv") if rain.catchments else None,
+        gauges=str(folder / f"{stem}_gauges.csv") if rain.comparison is not None else None,
+        fit=str(folder / f"{stem}_fit.toml") if rain.fit is not None else None,
+    )
+
+
+def entry(worked: Worked, report: Path, files: Iterable[Path]) -> Entry:
+    """The line of a case in the index.
+
+    Parameters
+    ----------
+    worked : Worked
+    report : Path
+        Its page.
+    files : iterable of Path
+        What was written beside it.
+
+    Returns
+    -------
+    Entry
+    """
+    from orolift.report.index import entry_of
+
+    case, stem = worked.inputs.case, worked.inputs.path.stem
+    return entry_of(
+        worked.crossing,
+        title=case.title or stem,
+        valid_time=case.valid_time,
+        report=report.name,
+        files={_said(path, stem): path.name for path in files},
+    )
+
+
+def _said(path: Path, stem: str) -> str:
+    """What a file is, in words: the part of its name after that of the case, or its kind."""
+    own = path.stem.removeprefix(stem).strip("_").replace("_", " ")
+    return own or SAID.get(path.suffix.strip("."), path.suffix.strip("."))
+
+
+def index_html(entries: Iterable[Entry], units: Units) -> str:
+    """The index page.
+
+    Parameters
+    ----------
+    entries : iterable of Entry
+    units : 'metric' or 'us'
+
+    Returns
+    -------
+    str
+    """
+    from orolift import __version__
+    from orolift.cli.cross import made_now
+    from orolift.report.index import index_of
+    from orolift.report.render import render
+
+    found = tuple(entries)
+    page = index_of(found, title="Crossings side by side", made_at=made_now(), version=__version__, units=units)
+    return render(page, "index.html.jinja")
+
+
+def made(folder: Path) -> bool:
+    """Whether a folder had to be made; it is there afterwards.
+
+    Raises
+    ------
+    MissingFileError
+        If it cannot be made.
+    """
+    if folder.is_dir():
+        return False
+    try:
+        folder.mkdir()
+    except OSError as error:
+        raise MissingFileError(
+            f"--folder: {folder} cannot be made ({error.strerror}). Name a new folder in one that exists."
+        ) from error
+    return True
