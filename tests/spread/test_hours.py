@@ -1,15 +1,20 @@
 """One crossing an hour: a constant series is one crossing, hours at fault say why, times follow the wind."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from orolift.crossing.situation import crossing_of
 from orolift.errors import CaseError, DataFileError
+from orolift.fire.rules import Condition, Rule, RuleSet
+from orolift.fire.sites import FireSettings, fire_at_sites
+from orolift.fire.winds import WindMeant
 from orolift.rain.line import MapLine
 from orolift.rain.over_map import Catchment, map_rain
 from orolift.sources.hours_case import hour_task, hour_tasks, read_hours
 from orolift.sources.inputs import situation_of
-from orolift.spread.hours import MapGround, _catchment_rates, worked_hour
+from orolift.spread.hours import MapGround, _arrives, _catchment_rates, worked_hour
 from orolift.spread.site_state import states_of
 from orolift.terrain.grid import ElevationGrid
 
@@ -132,3 +137,24 @@ def test_rain_on_catchments_is_that_of_the_map(setup):
     assert rates[0] > 0.0
     assert rates[0] == pytest.approx(whole.catchments[0].rain.rate)
     assert _catchment_rates(MapGround(grid, 0.0, (basin,)), None) == (None,)
+
+
+def test_values_for_thresholds_are_those_of_fire_weather(setup):
+    """What rules are judged by in an hour is what they are judged by in a crossing, the depth of mixing too."""
+    rule = Rule(
+        "all",
+        (
+            Condition("relative_humidity", at_most=0.4),
+            Condition("fosberg_index", at_least=20.0),
+            Condition("mixing_height", at_least=500.0),
+            Condition(WindMeant(6.1, "gust", 3.0), at_least=7.0),
+        ),
+    )
+    fire = FireSettings(rules=RuleSet("Tarn", "none", "2026-05-01", (rule,)))
+    found = replace(hour_task(setup(SAME), 0), fire=fire)
+    values = worked_hour(found).sites[0].rule_values
+    situation = found.lines[0].situation
+    when = _arrives(found.lines[0], found.time)
+    judged = fire_at_sites(crossing_of(replace(situation, when=when)), when, fire)[0].thresholds[0].judged
+    for one in judged.conditions:
+        assert values[one.condition.quantity] == pytest.approx(one.value)
