@@ -73,7 +73,7 @@ def read_bearings(case: str | Path, step_deg: int) -> BearingSetup:
     if not 1 <= step_deg <= 90 or 360 % step_deg:
         raise CaseError(f"--step {step_deg}: it must divide 360 and be 1 to 90 degrees, for example 10.")
     inputs = read_inputs(case)
-    situation = replace(situation_of(inputs), ends_too=False, lee=None)
+    situation = replace(situation_of(inputs), in_full=False, lee=None)
     sites = sites_of(inputs)
     notes = [
         (

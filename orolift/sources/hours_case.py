@@ -100,7 +100,7 @@ def read_hours(case: str | Path, series: str | Path) -> HourSetup:
     """
     inputs, rows = read_inputs(case), read_series(series)
     notes = refuse_unfit(inputs, rows)
-    situation = replace(situation_of(inputs), ends_too=False)
+    situation = replace(situation_of(inputs), in_full=False)
     shape = features(inputs.transect, inputs.sites[0].distance if inputs.sites else None)
     sites = sites_of(inputs)
     own_line, places, observed = None, np.empty((0, 2)), None

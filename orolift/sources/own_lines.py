@@ -64,7 +64,7 @@ def own_lines(
     def own_line(number: int, bearing: float) -> Situation:
         x, y = places[number]
         site = Site(sites[number].name, 0.0, sites[number].elevation)
-        return replace(situation_through(lines, float(x), float(y), bearing, (site,)), ends_too=False)
+        return replace(situation_through(lines, float(x), float(y), bearing, (site,)), in_full=False)
 
     return own_line, places, _observed(lines, inputs)
 

@@ -50,7 +50,7 @@ def test_an_hour_beside_a_crossing_with_its_ends():
     tasks = [hour_task(setup, row) for row in rows]
     worked_hour(tasks[0])
     hour = cpu(worked_hour, tasks) + made
-    whole = cpu(lambda task: crossing_of(replace(task.lines[0].situation, ends_too=True)), tasks)
+    whole = cpu(lambda task: crossing_of(replace(task.lines[0].situation, in_full=True)), tasks)
     print(
         f"\none hour {hour:.3f} s of processor ({made:.4f} s of it the column), a crossing with its ends {whole:.3f} s"
     )
