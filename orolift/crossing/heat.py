@@ -11,7 +11,7 @@ from orolift.constants import HEAT_CAPACITY_DRY_AIR
 from orolift.crossing.sun import sun_height
 
 if TYPE_CHECKING:
-    from numpy.typing import NDArray
+    from numpy.typing import ArrayLike, NDArray
 
 SUN_SHARE = 0.21
 """Share of the sun's 1000 W m-2 that warms the air: on 66 real pairs of soundings it takes the day bias away."""
@@ -28,26 +28,26 @@ LONGEST = 8.0 * 3600.0
 _STEPS = 49
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class SurfaceHeat:
-    """Change of temperature of the lee air by the ground, in two layers.
+    """Change of temperature of the lee air by the ground, in two layers. Arrays of the shape of the travel time.
 
     Attributes
     ----------
-    day : float [K]
+    day : ndarray [K]
         Warming of the lowest 1500 m; 0 or more.
-    night : float [K]
+    night : ndarray [K]
         Cooling of the lowest 800 m; 0 or less.
-    duration : float [s]
+    duration : ndarray [s]
         Time over which it was gathered.
     """
 
-    day: float
-    night: float
-    duration: float
+    day: NDArray[np.float64]
+    night: NDArray[np.float64]
+    duration: NDArray[np.float64]
 
 
-def surface_heat(time: float, longitude: float, latitude: float, travel_time: float, density: float) -> SurfaceHeat:
+def surface_heat(time: float, longitude: float, latitude: float, travel_time: ArrayLike, density: float) -> SurfaceHeat:
     """Heat the lee air takes from the ground between the crest and a site.
 
     Parameters
@@ -55,7 +55,7 @@ def surface_heat(time: float, longitude: float, latitude: float, travel_time: fl
     time : float [s]
         Arrival, seconds since 1970-01-01T00:00:00 UTC.
     longitude, latitude : float [degrees east, degrees north]
-    travel_time : float [s]
+    travel_time : array_like, any shape [s]
         From the crest to the site; at most 8 hours of it count.
     density : float [kg m-3]
         Of the air at the site.
@@ -75,13 +75,13 @@ def surface_heat(time: float, longitude: float, latitude: float, travel_time: fl
     over 800 m while it is down, gathered over the last part of the way by the trapezoidal
     rule. Cloud, snow, wet ground and slope are not known to it.
     """
-    duration = float(min(max(travel_time, 0.0), LONGEST))
-    times = time - np.linspace(duration, 0.0, _STEPS)
+    duration = np.clip(np.asarray(travel_time, np.float64), 0.0, LONGEST)
+    times = time - duration[..., np.newaxis] * np.linspace(1.0, 0.0, _STEPS)
     up = np.sin(sun_height(times, longitude, latitude))
     capacity = density * HEAT_CAPACITY_DRY_AIR
-    day = np.trapezoid(np.maximum(up, 0.0), times) * SUN_SHARE * CLEAR_SUN / (capacity * DAY_DEPTH)
-    night = np.trapezoid((up <= 0.0).astype(np.float64), times) * NIGHT_FLUX / (capacity * NIGHT_DEPTH)
-    return SurfaceHeat(float(day), float(night), duration)
+    day = np.trapezoid(np.maximum(up, 0.0), times, axis=-1) * SUN_SHARE * CLEAR_SUN / (capacity * DAY_DEPTH)
+    night = np.trapezoid((up <= 0.0).astype(np.float64), times, axis=-1) * NIGHT_FLUX / (capacity * NIGHT_DEPTH)
+    return SurfaceHeat(np.asarray(day), np.asarray(night), duration)
 
 
 def heating_at(heat: SurfaceHeat, height_above_ground: NDArray[np.float64]) -> NDArray[np.float64]:
@@ -90,12 +90,13 @@ def heating_at(heat: SurfaceHeat, height_above_ground: NDArray[np.float64]) -> N
     Parameters
     ----------
     heat : SurfaceHeat
-    height_above_ground : ndarray, any shape [m]
+    height_above_ground : ndarray (q,) [m]
 
     Returns
     -------
-    ndarray, same shape [K]
+    ndarray, shape of the heat and (q,) [K]
     """
-    return np.where(height_above_ground <= DAY_DEPTH, heat.day, 0.0) + np.where(
-        height_above_ground <= NIGHT_DEPTH, heat.night, 0.0
+    day, night = (np.asarray(change)[..., np.newaxis] for change in (heat.day, heat.night))
+    return np.where(height_above_ground <= DAY_DEPTH, day, 0.0) + np.where(
+        height_above_ground <= NIGHT_DEPTH, night, 0.0
     )

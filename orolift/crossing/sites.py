@@ -61,6 +61,71 @@ def site_air(
     -------
     LeeAir
     """
+    found = arrived(site, ground, incoming, solution, settings, when)
+    wind = site_wind(found.here, winds, settings.roughness)
+    profile = _profile(incoming, found, solution, freezing=settings.freezing)
+    return _put_together(found, incoming, solution, profile, wind, crest=ground.shape.crest, freezing=settings.freezing)
+
+
+@dataclass(frozen=True, eq=False)
+class Arrived:
+    """What reaches a site in every member, before a pool or blocked air there takes its place.
+
+    Attributes
+    ----------
+    name : str
+    side : 'windward', 'crest' or 'lee'
+    distance, elevation : float [m]
+    here : Here
+        Streamlines over it.
+    pressure : ndarray (m,) [Pa]
+        At the site.
+    round_share : ndarray (m,) [1]
+        Of the low air that went round; 0 but in the lee.
+    heat : SurfaceHeat or None
+        From the ground.
+    came : Arrival
+    """
+
+    name: str
+    side: Side
+    distance: float
+    elevation: float
+    here: Here
+    pressure: Array
+    round_share: Array
+    heat: SurfaceHeat | None
+    came: Arrival
+
+
+def arrived(
+    site: Site,
+    ground: Ground,
+    incoming: IncomingAir,
+    solution: Solution,
+    settings: Settings,
+    when: When,
+    *,
+    heat_factor: Array | None = None,
+) -> Arrived:
+    """What reaches a site.
+
+    Parameters
+    ----------
+    site : Site
+    ground : Ground
+    incoming : IncomingAir, fields (m, nz) or (nz,)
+    solution : Solution
+    settings : Settings
+    when : When
+    heat_factor : ndarray (m,), optional [1]
+        Of the heat from the ground, each member by its own travel time; without
+        it all members take the heat of the first.
+
+    Returns
+    -------
+    Arrived
+    """
     shape, line = ground.shape, ground.transect
     elevation = float(transect_elevation(line, site.distance)) if site.elevation is None else site.elevation
     side = side_of(site.distance, shape)
@@ -68,6 +133,10 @@ def site_air(
     members = solution.blocked_top.size
     round_share = solution.going_round if side == "lee" else np.zeros(members)
     heat = _heat(site, ground, solution, settings, when) if side == "lee" else None
+    heating = np.zeros(members)
+    if heat is not None:
+        heating = heat.day + heat.night
+        heating = np.full(members, heating[0]) if heat_factor is None else heating * heat_factor
     came = arrival(
         incoming,
         solution.streams,
@@ -76,24 +145,31 @@ def site_air(
         depth=each(settings.mixing_depth, members),
         blocked_top=solution.blocked_top,
         going_round=round_share,
-        heating=np.full(members, 0.0 if heat is None else heat.day + heat.night),
+        heating=heating,
         freezing=settings.freezing,
     )
-    profile = _profile(incoming, here, elevation, solution, round_share, heat, freezing=settings.freezing)
-    place = _Place(site.name, side, site.distance, elevation, shape.crest)
-    wind = site_wind(here, winds, settings.roughness)
-    return _put_together(place, incoming, solution, here, came, profile, wind, freezing=settings.freezing)
+    return Arrived(
+        name=site.name,
+        side=side,
+        distance=site.distance,
+        elevation=elevation,
+        here=here,
+        pressure=pressure_at(here, np.full((here.height.shape[0], 1), elevation))[:, 0],
+        round_share=round_share,
+        heat=heat,
+        came=came,
+    )
 
 
 def _heat(site: Site, ground: Ground, solution: Solution, settings: Settings, when: When) -> SurfaceHeat | None:
-    """Heat from the ground between crest and site; None where time or place is unknown or it is switched off."""
+    """Heat from the ground between crest and site, (m,); None where time or place is unknown or it is switched off."""
     if not settings.surface_heat or when.time is None or when.longitude is None or when.latitude is None:
         return None
     line, streams = ground.transect, solution.streams
-    wind = streams.wind[0, :1] * streams.flow.speed_factor[0, 0]
+    wind = streams.wind[:, :1] * streams.flow.speed_factor[:, 0]
     way = (line.distance >= ground.shape.crest_distance) & (line.distance <= site.distance)
     step = float(line.distance[1] - line.distance[0]) * ground.cosine
-    travel = float(np.sum(step / np.maximum(wind[way], SLOWEST)))
+    travel = np.sum(step / np.maximum(wind[:, way], SLOWEST), axis=-1)
     return surface_heat(when.time, when.longitude, when.latitude, travel, DENSITY)
 
 
@@ -103,24 +179,22 @@ DENSITY = 1.2
 
 def _profile(
     incoming: IncomingAir,
-    here: Here,
-    elevation: float,
+    found: Arrived,
     solution: Solution,
-    round_share: Array,
-    heat: SurfaceHeat | None,
     *,
     freezing: bool,
 ) -> LeeProfile:
     """Air over the site up to 3 km, the pool's below its top."""
     members = solution.blocked_top.size
-    height = np.broadcast_to(elevation + PROFILE, (members, PROFILE.size))
-    heating = np.zeros_like(height) if heat is None else np.broadcast_to(heating_at(heat, PROFILE), height.shape)
+    here, heat = found.here, found.heat
+    height = np.broadcast_to(found.elevation + PROFILE, (members, PROFILE.size))
+    heating = np.zeros_like(height) if heat is None else np.broadcast_to(heating_at(heat, PROFILE)[0], height.shape)
     air = lee_profile(
         incoming,
         here,
         height,
         blocked_top=solution.blocked_top,
-        going_round=round_share,
+        going_round=found.round_share,
         heating=heating,
         freezing=freezing,
     )
@@ -133,34 +207,23 @@ def _profile(
     return LeeProfile(PROFILE, t, v, wind)
 
 
-@dataclass(frozen=True)
-class _Place:
-    """A site with its height, and the crest it belongs to."""
-
-    name: str
-    side: Side
-    distance: float
-    elevation: float
-    crest: float
-
-
 def _put_together(
-    place: _Place,
+    place: Arrived,
     incoming: IncomingAir,
     solution: Solution,
-    here: Here,
-    came: Arrival,
     profile: LeeProfile,
     wind: SiteWind,
     *,
+    crest: float,
     freezing: bool,
 ) -> LeeAir:
     """The answer at a site out of its members, or the pool's or the blocked air where it lies in that."""
-    upwind = interpolated(incoming, np.array([place.elevation, place.crest]))
+    here, came = place.here, place.came
+    upwind = interpolated(incoming, np.array([place.elevation, crest]))
     pool = solution.pools[0]
     in_pool = pool is not None and place.side == "lee" and place.elevation < min(pool.top, float(here.height[0, 0]))
     blocked = place.side == "windward" and place.elevation < float(solution.blocked_top[0])
-    pressure = float(pressure_at(here, np.full((here.height.shape[0], 1), place.elevation))[0, 0])
+    pressure = float(place.pressure[0])
     t, v = float(came.air.temperature[0]), float(came.air.vapour[0])
     if in_pool and pool is not None:
         t, v = (float(x) for x in pool_air(pool, place.elevation))

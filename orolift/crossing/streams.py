@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -145,9 +145,12 @@ def streams(
     rows = np.broadcast_to(upwind.lifted_share, (heights.shape[0], upwind.height.size))
     lifted = np.stack([np.interp(z, upwind.height, row) for z, row in zip(heights, rows, strict=True)])
     state = _Pass(dry, distance[:1], None, np.ones((1, 1, 1)), lifted, None, np.inf)
+    done = np.zeros(blocked_top.size, dtype=bool)
     for _ in range(passes - 1):
-        state = _next(coarse, dry, state, carried, max(1, coarse.distance.size // EARLY_PLACES), early=True)
-        if np.all(state.moved <= SETTLED):
+        after = _next(coarse, dry, state, carried, max(1, coarse.distance.size // EARLY_PLACES), early=True)
+        state = _held(state, after, done) if done.any() else after
+        done = np.broadcast_to(state.moved <= SETTLED, done.shape)
+        if done.all():
             break
     moved = state.moved
     dry = dry if coarse.distance.size == distance.size else _over(setup, upwind.dry)
@@ -233,6 +236,26 @@ def _next(setup: _Setup, dry: Airflow, before: _Pass, carried: Array, stride: in
         end=_cloud_end(setup, air, place),
         moved=_moved(setup, flow.heights, before.flow.heights) if same_points else np.inf,
         falling=falling,
+    )
+
+
+def _held(before: _Pass, after: _Pass, done: NDArray[np.bool_]) -> _Pass:
+    """A pass in which members that have settled stay as they were: none depends on its neighbours."""
+    if before.air is None or after.air is None or before.end is None or after.end is None:
+        raise ValueError("a member settles in the second pass at the earliest")
+    rows = done[:, np.newaxis, np.newaxis]
+    air = {
+        one.name: np.where(done[:, np.newaxis], getattr(before.air, one.name), getattr(after.air, one.name))
+        for one in fields(March)
+    }
+    return replace(
+        after,
+        air=March(**air),
+        flow=replace(after.flow, heights=np.where(rows, before.flow.heights, after.flow.heights)),
+        change=np.where(rows, before.change, after.change),
+        share=np.where(done[:, np.newaxis], before.share, after.share),
+        end=np.where(done, before.end, after.end),
+        moved=np.where(done, before.moved, after.moved),
     )
 
 

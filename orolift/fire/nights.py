@@ -142,6 +142,6 @@ def _heats(when: When) -> tuple[float, float]:
         return 0.0, 0.0
     times = when.time + np.arange(0.0, DAY + 1.0, 7200.0)
     place = (when.longitude, when.latitude)
-    days = [surface_heat(float(time), *place, LONGEST, 1.0).day * DAY_DEPTH for time in times]
+    days = [float(surface_heat(float(time), *place, LONGEST, 1.0).day) * DAY_DEPTH for time in times]
     shines = float(sun_height(when.time, *place)) > 0.0
     return days[0] if shines else 0.0, max(days)

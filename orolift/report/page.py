@@ -16,10 +16,12 @@ from orolift.report.figures.answers import answers_figure
 from orolift.report.figures.budget import budget
 from orolift.report.figures.column import column
 from orolift.report.figures.gauge_scatter import gauge_scatter
+from orolift.report.figures.influences import influences_figure
 from orolift.report.figures.path import path
 from orolift.report.figures.rain_line import rain_line
 from orolift.report.figures.section import section
 from orolift.report.fire import FireWeather, fire_weather
+from orolift.report.how_sure import HowSure, how_sure
 from orolift.report.inputs import Inputs, inputs
 from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
@@ -29,6 +31,7 @@ from orolift.report.rain import RainOnLine, rain_on_line
 from orolift.report.rain_over_map import RainOverMap, rain_over_map
 from orolift.report.reading import Reading, reading
 from orolift.report.sites import Sites, sites
+from orolift.report.spans import Spans
 from orolift.report.story import first_sites, line_view
 from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
@@ -45,6 +48,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.column import ColumnDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.gauge_scatter import ScatterDrawing
+    from orolift.report.figures.influences import InfluencesDrawing
     from orolift.report.figures.path import PathDrawing
     from orolift.report.figures.rain_line import RainLineDrawing
     from orolift.report.figures.rain_map import RainMapDrawing
@@ -52,6 +56,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.sites_map import SitesMapDrawing
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.quality import Finding
+    from orolift.spread.spread import Spread
 
 
 SEVERITIES = ("wrong", "doubtful", "remark")
@@ -85,6 +90,8 @@ class Page:
     sites : Sites
     sites_map : Figure or None
     fire : FireWeather or None
+    how_sure : HowSure
+    influences : Figure or None
     answers : Answers
     answers_figure : Figure or None
     lee_wind : LeeWind
@@ -117,6 +124,8 @@ class Page:
     sites: Sites
     sites_map: Figure[SitesMapDrawing] | None
     fire: FireWeather | None
+    how_sure: HowSure
+    influences: Figure[InfluencesDrawing] | None
     answers: Answers
     answers_figure: Figure[AnswersDrawing] | None
     lee_wind: LeeWind
@@ -142,6 +151,7 @@ def page_of(
     stagnant_top: float | None = None,
     fire: tuple[SiteFire, ...] = (),
     rules: RuleSet | None = None,
+    spread: Spread | None = None,
 ) -> Page:
     """The page of a crossing.
 
@@ -171,6 +181,8 @@ def page_of(
         Fire weather at the sites, in their order; without, its section is left out.
     rules : RuleSet, optional
         Thresholds it was judged by.
+    spread : Spread, optional
+        Members, for the ranges.
 
     Returns
     -------
@@ -180,6 +192,7 @@ def page_of(
     freezing = float(freezing_level(crossing.incoming))
     line, few = line_view(crossing), first_sites(crossing)
     followed = trace(line)
+    sure = how_sure(Spans(few, spread))
     crest = quantity(crossing.features.crest, "height", 0, units)
     return Page(
         title=title or f"Air from the {point_of_compass(bearing)} over a crest at {crest}",
@@ -187,7 +200,7 @@ def page_of(
         made=moment(made_at),
         version=version,
         units=units,
-        briefing=briefing(line, bearing, freezing),
+        briefing=briefing(line, bearing, freezing, Spans(line, spread)),
         section_heading=section_heading(line, followed),
         section=section(line, followed, bearing, freezing, units),
         reading=reading(line, units),
@@ -200,8 +213,10 @@ def page_of(
         rain_over_map=None if mapped is None else rain_over_map(mapped, units),
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
-        sites=sites(crossing),
+        sites=sites(crossing, Spans(crossing, spread)),
         sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
+        how_sure=sure,
+        influences=influences_figure(sure),
         fire=fire_weather(crossing, fire, rules) if fire else None,
         answers=answers(few),
         answers_figure=answers_figure(few, units),

@@ -152,7 +152,7 @@ def explained(
         explanation=explanation(path, observed, usual),
         own=own,
         upwind=(
-            upwind_error(situation, site, observed, "wind"),
-            upwind_error(situation, site, observed, "humidity"),
+            upwind_error(situation, site, observed, "wind", air),
+            upwind_error(situation, site, observed, "humidity", air),
         ),
     )

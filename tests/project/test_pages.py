@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 
-from orolift.sources import gauges_csv, ridge_csv, sounding_csv
+from orolift.sources import compare_results, gauges_csv, observed, ridge_csv, sounding_csv
 from orolift.sources.case_model import (
     Case,
     FlowTable,
@@ -47,7 +47,7 @@ from orolift.sources.results import (
     WarmingParts,
 )
 from orolift.sources.rules_file import QUANTITY_KEYS, RuleCondition, RulesFile, RuleTable
-from orolift.sources.schemas import case_schema, results_schema, rules_schema
+from orolift.sources.schemas import case_schema, compare_schema, results_schema, rules_schema
 from orolift.sources.units import alternatives
 
 DOCS = Path(__file__).resolve().parents[2] / "docs"
@@ -99,7 +99,30 @@ RESULTS_TABLES = {
     "fitted value": FittedBlock,
 }
 RULE_TABLES = {"Rule file": RulesFile, "rule": RuleTable, "condition": RuleCondition}
-CSV_TABLES = {"Ridge CSV": ridge_csv.COLUMNS, "Sounding CSV": sounding_csv.COLUMNS, "Gauges CSV": gauges_csv.COLUMNS}
+COMPARE_TABLES = {
+    "Top level": compare_results.CompareResults,
+    "scores": compare_results.QuantityBlock,
+    "score": compare_results.ScoreBlock,
+    "simple answer": compare_results.ReferenceBlock,
+    "events": compare_results.EventBlock,
+    "table": compare_results.ContingencyBlock,
+    "rule": compare_results.RuleBlock,
+    "onset": compare_results.OnsetBlock,
+    "spell": compare_results.SpellBlock,
+    "explanation": compare_results.ExplanationBlock,
+    "valleys": compare_results.ValleyBlock,
+    "way": compare_results.WayBlock,
+    "upwind": compare_results.UpwindErrorBlock,
+    "profile": compare_results.ProfileBlock,
+    "layers": compare_results.LayerBlock,
+    "values": compare_results.ValueBlock,
+}
+CSV_TABLES = {
+    "Ridge CSV": ridge_csv.COLUMNS,
+    "Sounding CSV": sounding_csv.COLUMNS,
+    "Gauges CSV": gauges_csv.COLUMNS,
+    "Observed CSV": observed.COLUMNS,
+}
 
 
 def rows_under(page, heading):
@@ -210,3 +233,21 @@ def test_results_page_says_what_may_be_null(heading, model):
 def test_results_page_forgets_no_block():
     """A new block of the models needs its own heading."""
     assert {model.__name__ for model in RESULTS_TABLES.values()} == {"Results", *results_schema()["$defs"]}
+
+
+@pytest.mark.parametrize(("heading", "model"), COMPARE_TABLES.items(), ids=COMPARE_TABLES)
+def test_compare_page_lists_the_keys_of_the_block(heading, model):
+    """Every key of a comparison has a row, in the order of the file, and says where it may be null."""
+    schema = compare_schema()
+    fields = (schema if heading == "Top level" else schema["$defs"][model.__name__])["properties"]
+    rows = rows_under("compare.md", heading)
+    assert list(rows) == list(model.model_fields)
+    for key, row in rows.items():
+        assert bool(row["null"]) == ({"type": "null"} in fields[key].get("anyOf", [])), key
+        assert row["meaning"], key
+
+
+def test_compare_page_forgets_no_block():
+    """A new block needs its own heading."""
+    named = {model.__name__ for model in COMPARE_TABLES.values()}
+    assert named == {"CompareResults", *compare_schema()["$defs"]} - {"Program"}

@@ -164,13 +164,14 @@ def digest(text):
     return f"'sha256-{base64.b64encode(hashlib.sha256(text.encode()).digest()).decode()}'"
 
 
-def test_nothing_is_fetched_and_only_our_script_runs(page_for, any_crossing):
-    """No handler, nothing with an address; and a policy that lets run one script and one style by their hashes."""
+def test_nothing_is_fetched_and_only_our_scripts_run(page_for, any_crossing):
+    """No handler, nothing with an address; and a policy that lets scripts and style run by their hashes."""
     html = render(page_for(any_crossing))
     page = Reader(html)
-    data, ours = page.all("script")
+    data, *ours = page.all("script")
     assert data["attrs"] == {"type": "application/json", "id": "reading-data"}
-    assert not ours["attrs"]
+    assert len(ours) == 2
+    assert not any(script["attrs"] for script in ours)
     assert not page.all("link")
     for element in page.elements:
         assert not any(name.startswith("on") or name == "style" for name in element["attrs"])
@@ -184,7 +185,7 @@ def test_nothing_is_fetched_and_only_our_script_runs(page_for, any_crossing):
     assert [part.strip() for part in policy.split(";")] == [
         "default-src 'none'",
         f"style-src {digest(style['text'])}",
-        f"script-src {digest(ours['text'])}",
+        f"script-src {' '.join(digest(script['text']) for script in ours)}",
         "img-src data:",
         "base-uri 'none'",
         "form-action 'none'",
@@ -200,7 +201,7 @@ def test_hostile_words_come_out_as_words(page_for, crossing):
     crossing = replace(crossing, lee=lee, notes=(HOSTILE,), cautions=(HOSTILE,))
     html = render(page_for(crossing, title=HOSTILE, case_text=f"title = '{HOSTILE}'", version="0"))
     page = Reader(html)
-    assert html.count("<script") == len(page.all("script")) == 2
+    assert html.count("<script") == len(page.all("script")) == 3
     assert HOSTILE in json.loads(page.all("script")[0]["text"])["ways"]["1"]
     assert not any("onload" in element["attrs"] for element in page.elements)
     assert page.all("h1")[0]["text"] == HOSTILE
