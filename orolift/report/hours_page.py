@@ -148,9 +148,9 @@ HOW = (
     ),
     (
         "Onset and end lie halfway between the last hour without and the first with it. Their error, one standard "
-        "deviation, joins half the time between these hours, 15 % of the time on the way for the wind along it, and "
-        "the spread of that time between the streamlines that arrive. What else is uncertain, the incoming air first "
-        "of all, is not in it."
+        "deviation, joins half the time between these hours, the share of the time on the way that the wind is "
+        "uncertain by, and the spread of that time between the streamlines that arrive. What else is uncertain, "
+        "the incoming air first of all, is not in it."
     ),
     (
         "Nothing is interpolated: hours that are missing or cannot be used stay empty, and hours in which no air "

@@ -16,7 +16,8 @@ from orolift.errors import OroliftError
 from orolift.sources.inputs import read_inputs, situation_of
 from orolift.sources.own_lines import own_lines, sites_of
 from orolift.sources.series import read_series
-from orolift.sources.series_air import reading_of_row, refuse_unfit
+from orolift.sources.series_air import reading_of_row, refuse_unfit, table_of_row
+from orolift.sources.spread_model import uncertainty_of
 from orolift.spread.hours import HourTask, MapGround, OneLine
 from orolift.spread.site_state import SiteState
 from orolift.terrain.features import features
@@ -67,6 +68,8 @@ class HourSetup:
         Where the incoming air is observed, on the map.
     ground : MapGround or None
         Where the case has catchments.
+    wind_error : float [1]
+        Standard deviation of the wind, as a share of it: as [spread] says, else by the kind of the series.
     notes : tuple of str
     """
 
@@ -79,6 +82,7 @@ class HourSetup:
     places: Array
     observed: tuple[float, float] | None
     ground: MapGround | None
+    wind_error: float
     notes: tuple[str, ...]
 
 
@@ -119,10 +123,20 @@ def read_hours(case: str | Path, series: str | Path) -> HourSetup:
         places=places,
         observed=observed,
         ground=_ground(inputs),
+        wind_error=_wind_error(inputs, rows),
         notes=(*rows.notes, *notes),
     )
     _refuse_nothing(setup)
     return setup
+
+
+def _wind_error(inputs: Inputs, series: Series) -> float:
+    """Uncertainty of the wind of a series, by its first row that can be used."""
+    first = next((row for row in range(series.time.size) if row not in series.faults), None)
+    if first is None:
+        return uncertainty_of(inputs.case).wind
+    table, _ = table_of_row(inputs, series, first)
+    return uncertainty_of(inputs.case.model_copy(update={"incoming": table})).wind
 
 
 def _refuse_nothing(setup: HourSetup) -> None:

@@ -42,7 +42,7 @@ HALFWAY = 0.5
 which air come down from the crest has made at least; what is short of the whole is mixing and low air; a judgement."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class Travel:
     """Time the air takes to a site, from where it was observed [s].
 
@@ -58,7 +58,7 @@ class Travel:
     spread: float
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class SiteState:
     """One site in one crossing; None where there is nothing to say.
 

@@ -25,7 +25,7 @@ if TYPE_CHECKING:
     Array = NDArray[np.float64]
 
 WIND_ERROR = 0.15
-"""Standard deviation of the wind along the way, as a share of it; a judgement."""
+"""Standard deviation of the wind along the way, as a share of it, when nothing says otherwise; a judgement."""
 START_CODE = 85.0
 """Fine Fuel Moisture Code before the first hour when nothing says otherwise: the usual start of a season."""
 HOUR = 3600.0
@@ -171,6 +171,7 @@ def hours_of(
     planned: int,
     catchments: Sequence[str] = (),
     fire: FireSettings | None = None,
+    wind_error: float = WIND_ERROR,
 ) -> Hours:
     """Timelines of hours worked out in any order.
 
@@ -186,6 +187,8 @@ def hours_of(
     catchments : sequence of str
     fire : FireSettings, optional
         Thresholds of the region, and the Fine Fuel Moisture Code before the first hour.
+    wind_error : float [1]
+        Standard deviation of the wind along the way, as a share of it.
 
     Returns
     -------
@@ -197,7 +200,8 @@ def hours_of(
         time=time,
         step=step,
         sites=tuple(
-            _timeline(name, time, step, tuple(hour.sites[i] for hour in hours), fire) for i, name in enumerate(names)
+            _timeline(name, time, step, tuple(hour.sites[i] for hour in hours), fire, wind_error)
+            for i, name in enumerate(names)
         ),
         catchments=tuple(
             _catchment(name, [hour.catchments[i] if hour.catchments else None for hour in hours], step)
@@ -208,12 +212,17 @@ def hours_of(
 
 
 def _timeline(
-    name: str, time: Array, step: float, states: tuple[SiteState, ...], fire: FireSettings | None
+    name: str,
+    time: Array,
+    step: float,
+    states: tuple[SiteState, ...],
+    fire: FireSettings | None,
+    wind_error: float,
 ) -> SiteTimeline:
     way = values_of(states, "travel.time")
     crosses = np.isfinite(way)
     arrival = arrivals(time, way)
-    error = np.hypot(WIND_ERROR * way, values_of(states, "travel.spread"))
+    error = np.hypot(wind_error * way, values_of(states, "travel.spread"))
     given = None if fire is None else fire.previous_code
     codes = _codes(states, step, START_CODE if given is None else given)
     known = np.array([one.status != "missing" for one in states], dtype=np.bool_)
@@ -329,7 +338,7 @@ def stretches(met: Sequence[bool], known: NDArray[np.bool_], arrival: Array, err
     Notes
     -----
     Hours of which nothing is known neither begin nor end a stretch. The error of onset and end joins half the time
-    between the two hours with that of the travel time: 15 % of it for the wind along the way, and its spread between
+    between the two hours with that of the travel time: its share that the wind is uncertain by, and its spread between
     the streamlines that arrive.
     """
     order = np.flatnonzero(known)
