@@ -177,13 +177,14 @@ def digest(text):
     return f"'sha256-{base64.b64encode(hashlib.sha256(text.encode()).digest()).decode()}'"
 
 
-def test_nothing_is_fetched_and_only_our_script_runs(page_for, any_crossing):
-    """No handler, nothing with an address; and a policy that lets run one script and one style by their hashes."""
+def test_nothing_is_fetched_and_only_our_scripts_run(page_for, any_crossing):
+    """No handler, nothing with an address; and a policy that lets scripts and style run by their hashes."""
     html = render(page_for(any_crossing))
     page = Reader(html)
-    data, ours = page.all("script")
+    data, *ours = page.all("script")
     assert data["attrs"] == {"type": "application/json", "id": "reading-data"}
-    assert not ours["attrs"]
+    assert len(ours) == 2
+    assert not any(script["attrs"] for script in ours)
     assert not page.all("link")
     for element in page.elements:
         assert not any(name.startswith("on") or name == "style" for name in element["attrs"])
@@ -197,7 +198,7 @@ def test_nothing_is_fetched_and_only_our_script_runs(page_for, any_crossing):
     assert [part.strip() for part in policy.split(";")] == [
         "default-src 'none'",
         f"style-src {digest(style['text'])}",
-        f"script-src {digest(ours['text'])}",
+        f"script-src {' '.join(digest(script['text']) for script in ours)}",
         "img-src data:",
         "base-uri 'none'",
         "form-action 'none'",
@@ -213,7 +214,7 @@ def test_hostile_words_come_out_as_words(page_for, crossing):
     crossing = replace(crossing, lee=lee, notes=(HOSTILE,), cautions=(HOSTILE,))
     html = render(page_for(crossing, title=HOSTILE, case_text=f"title = '{HOSTILE}'", version="0"))
     page = Reader(html)
-    assert html.count("<script") == len(page.all("script")) == 2
+    assert html.count("<script") == len(page.all("script")) == 3
     assert HOSTILE in json.loads(page.all("script")[0]["text"])["ways"]["1"]
     assert not any("onload" in element["attrs"] for element in page.elements)
     assert page.all("h1")[0]["text"] == HOSTILE
@@ -324,3 +325,22 @@ def test_words_stand_out_from_the_paper(light, name):
     chosen = colours(first) if light == "light" else colours(second)
     assert contrast(chosen[name], chosen["paper"]) >= 4.5
     assert contrast(chosen["on-ground"], chosen["ground"]) >= 4.5
+
+
+def test_compiled_templates_are_kept_and_never_trusted(tmp_path, monkeypatch, page_for, crossing):
+    """They are used again; spoilt ones, or a folder that cannot be written, change nothing but the time."""
+    page = page_for(crossing)
+    expected = render(page)
+    for folder in (tmp_path / "kept", tmp_path / "file" / "under"):
+        (tmp_path / "file").write_text("no folder")
+        monkeypatch.setattr(render_module._BesideTemplates, "folder", folder)
+        render_module._environment.cache_clear()
+        assert render(page) == expected
+    kept = sorted((tmp_path / "kept").iterdir())
+    assert len(kept) > 10
+    for file in kept:
+        file.write_bytes(file.read_bytes()[:100])
+    monkeypatch.setattr(render_module._BesideTemplates, "folder", tmp_path / "kept")
+    render_module._environment.cache_clear()
+    assert render(page) == expected
+    render_module._environment.cache_clear()
