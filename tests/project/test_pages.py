@@ -37,6 +37,7 @@ from orolift.sources.rain_results import (
 )
 from orolift.sources.results import (
     CaseBlock,
+    FailedSiteBlock,
     FlowBlock,
     IncomingBlock,
     LeeBlock,
@@ -90,6 +91,7 @@ RESULTS_TABLES = {
     "lee": LeeBlock,
     "warming_parts_c": WarmingParts,
     "profile": Profile,
+    "failed_sites": FailedSiteBlock,
     "spread": SpreadBlock,
     "influences": InfluencesBlock,
     "influence": InfluenceBlock,
