@@ -115,6 +115,31 @@ def test_several_cases_are_compared_in_time(observed, edited, case_folder):
     assert results["explanation"] is None  # no humidity was observed
 
 
+@pytest.mark.usefixtures("few_crossings")
+def test_hours_of_a_series_are_compared_when_their_air_is_there(observed, case_folder, capsys):
+    """Each hour arrives later than it was observed upwind, and is held against the row at that time."""
+    head = "time,temperature_c,dew_point_c,pressure_hpa,wind_from_deg,wind_kt,crest_wind_kt,crest_wind_from_deg"
+    rows = [f"2026-11-03T{hour:02d}:00Z,14.5,11,1004,235,25,38,235" for hour in (9, 10)]
+    (case_folder / "series.csv").write_text("\n".join([head, *rows]) + "\n")
+    every = [f"2026-11-03T{9 + i // 6:02d}:{i % 6}0Z,Lower Tarn,{15 + 0.01 * i:.2f},6" for i in range(24)]
+    name = observed(*every, head="time,site,temperature_c,dew_point_c")
+    options = ["--series", "series.csv", "--within", "5", "--quiet", "--results", "r.json"]
+    assert exit_code(["compare", "case.toml", name, *options]) == 0, capsys.readouterr().err
+    results = json.loads((case_folder / "r.json").read_text())
+    assert results["cases"] == [f"2026-11-03T{hour}:00:00Z" for hour in ("09", "10")]
+    warm = [row for row in results["values"] if row["quantity"] == "temperature_c"]
+    assert len(warm) == 2  # ten-minute rows, five minutes either way, two hours
+    assert warm[0]["time"] > "2026-11-03T09:10"
+    assert results["explanation"]["place"] == "Lower Tarn"
+
+
+def test_a_series_is_for_one_case(observed, case_folder, capsys):
+    """Several cases have their own air."""
+    (case_folder / "again.toml").write_text((case_folder / "case.toml").read_text())
+    assert exit_code(["compare", "case.toml", "again.toml", observed(*HOURS), "--series", "series.csv"]) == 2
+    assert "--series gives the hours over one case" in capsys.readouterr().err
+
+
 def test_a_lee_sounding_is_compared(observed, case_folder):
     """The column before the range as the lee's: layers in both heights."""
     name = observed("2026-11-03T12:00Z,Lower Tarn,15", head="time,site,temperature_c")

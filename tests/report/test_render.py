@@ -83,7 +83,18 @@ def amounts_of(thing):
 @pytest.mark.parametrize("units", ["metric", "us"])
 def test_every_number_shown_is_a_rounded_number_of_the_page(page_for, any_crossing, units):
     """Each data element reads as an amount of the page with the same raw value; and no amount is left out."""
-    page = page_for(any_crossing, units=units)
+    numbers_are_those_of(page_for(any_crossing, units=units), units)
+
+
+@pytest.mark.parametrize("units", ["metric", "us"])
+def test_every_number_of_a_page_with_members_is_one_of_the_page(page_for, with_members, units):
+    """The same with ranges."""
+    crossing, spread = with_members
+    numbers_are_those_of(page_for(crossing, units=units, spread=spread), units)
+
+
+def numbers_are_those_of(page, units):
+    """Every data element reads as an amount of the page, and no amount is left out."""
     elements = Reader(render(page)).all("data")
     readings = {}
     for amount in amounts_of(page):
