@@ -150,7 +150,7 @@ def cloudless(pressure: Array, entropy: Array, water: Array, *, freezing: bool) 
         log_p = np.log(p[block] * PER_TRIPLE_PRESSURE)
         log_all, q = without_cloud(log_p, s[block] * PER_RV, w[block])
         scaled = np.exp(q)
-        cloudy[block] = phase.condensate(q, scaled, freezing)[0] < log_all
+        cloudy[block] = phase.log_saturation(q, scaled, freezing) < log_all
         t[block] = phase.TRIPLE * scaled
     if not np.isfinite(t).all():
         raise OutOfRangeError(NO_TEMPERATURE)
@@ -173,7 +173,7 @@ def _afresh(p: Array, entropy: Array, water: Array, freezing: bool, tolerance: f
         log_all, dry_q = without_cloud(np.log(pressure), s, w)
         if not np.isfinite(dry_q).all():
             raise OutOfRangeError(NO_TEMPERATURE)
-        cloudy = phase.condensate(dry_q, np.exp(dry_q), freezing)[0] < log_all
+        cloudy = phase.log_saturation(dry_q, np.exp(dry_q), freezing) < log_all
         q[block] = dry_q
         if cloudy.any():
             warm = start(dry_q[cloudy], log_all[cloudy])

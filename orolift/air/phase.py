@@ -76,6 +76,15 @@ def ice_part(q: Array) -> Array:
     return x * (2.0 - x)
 
 
+def log_saturation(q: Array, t: Array, freezing: bool) -> Array:
+    """ln(e / e_triple) over the condensate alone."""
+    w = np.reciprocal(t)
+    log_e = VAPORISATION_SLOPE * q + (_VAPORISATION_FREE - _VAPORISATION_FREE * w)
+    if not freezing or q.min() >= 0.0:
+        return log_e
+    return log_e + ice_part(q) * (FUSION_SLOPE * q + (_FUSION_FREE - _FUSION_FREE * w))
+
+
 def condensate(q: Array, t: Array, freezing: bool) -> tuple[Array, Array, Array]:
     """Saturation and latent heat over the condensate.
 

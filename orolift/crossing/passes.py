@@ -243,6 +243,8 @@ def _thickness(heights: Array, virtual: Array) -> Array:
 
 def _between_places(values: Array, before: Array, after: Array) -> Array:
     """Values (..., n) given at some places, at others, by straight lines."""
+    if np.array_equal(before, after):
+        return values
     index = np.clip(np.searchsorted(before, after, side="right") - 1, 0, before.size - 2)
     share = (after - before[index]) / (before[index + 1] - before[index])
     return np.asarray((1.0 - share) * values[..., index] + share * values[..., index + 1])

@@ -288,7 +288,7 @@ def _without_expansion(column: Layers) -> tuple[Layers, NDArray[np.float64]]:
 
 def _blocks(count: int, width: int) -> list[slice]:
     """Layers in blocks from the top down, small enough for their arrays to stay in the processor's cache."""
-    size = max(1, 16384 // max(width, 1))
+    size = max(1, 8192 // max(width, 1))
     stops = range(count, 0, -size)
     return [slice(max(stop - size, 0), stop) for stop in stops]
 
