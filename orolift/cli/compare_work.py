@@ -23,6 +23,12 @@ FEW = 4
 """So many crossings are worked out here: starting other processes would take longer."""
 
 
+METHOD_ONLY = (
+    "No members were worked out: the range of temperature and humidity is the error of the method alone, that of wind "
+    "and gust spans the methods."
+)
+
+
 @dataclass(frozen=True, eq=False)
 class Estimated:
     """Everything that was estimated.
@@ -95,9 +101,10 @@ def cases_estimated(put: Placed, jobs: int | None) -> Estimated:
     """
     from orolift.cli.executors import executor_of
     from orolift.cli.site_lines import with_own_lines
+    from orolift.cli.spreading import Workers, spread_for
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import situation_of
-    from orolift.spread.comparison import estimates_of, site_estimate
+    from orolift.spread.comparison import estimates_of, ranges_of, site_estimate
     from orolift.spread.engine import in_order, outcomes
     from orolift.spread.explained import Source
 
@@ -107,7 +114,7 @@ def cases_estimated(put: Placed, jobs: int | None) -> Estimated:
     estimates: list[Estimates] = []
     crossings: list[Crossing] = []
     cautions: dict[str, None] = {}
-    for outcome, one, numbers in zip(found, put.cases, put.numbers, strict=True):
+    for outcome, one, situation, numbers in zip(found, put.cases, situations, put.numbers, strict=True):
         if outcome.error is not None or outcome.value is None:
             error = outcome.error or CaseError("no crossing")
             error.args = (f"{one.path}: {error}",)
@@ -116,8 +123,12 @@ def cases_estimated(put: Placed, jobs: int | None) -> Estimated:
         cautions |= dict.fromkeys((*one.cautions, *crossing.cautions))
         airs = {air.number: air for air in crossing.lee}
         here = [None if number is None else airs.get(number) for number in numbers]
+        spread = spread_for(one, situation, crossing, Workers(jobs, None, quiet=True))
+        sites = [
+            None if air is None else site_estimate(crossing, air, ranges_of(spread, crossing, air)) for air in here
+        ]
         time = None if one.case.valid_time is None else one.case.valid_time.timestamp()
-        estimates.append(estimates_of([None if air is None else site_estimate(crossing, air) for air in here], time))
+        estimates.append(estimates_of(sites, time))
         crossings.append(crossing)
 
     def source(which: int, place: int) -> Source | None:
@@ -133,7 +144,7 @@ def cases_estimated(put: Placed, jobs: int | None) -> Estimated:
         source=source,
         airs=crossings[0].lee if len(crossings) == 1 else (),
         failed={one.name: one.reason for crossing in crossings for one in crossing.failed},
-        notes=(),
+        notes=() if any(one.case.spread.members for one in put.cases) else (METHOD_ONLY,),
         cautions=tuple(cautions),
     )
 
@@ -204,7 +215,11 @@ def series_estimated(put: Placed, series: str | Path, jobs: int | None, *, quiet
 
     reasons = Counter(hour.reason for hour in still if hour.reason)
     why = f" Most often: {reasons.most_common(1)[0][0]}" if reasons else ""
-    notes = [*setup.notes, "Each hour is held against the observations at the time its air is at the place."]
+    notes = [
+        *setup.notes,
+        METHOD_ONLY,
+        "Each hour is held against the observations at the time its air is at the place.",
+    ]
     if still:
         notes.append(f"{len(still)} of {count} hours give no estimate.{why}")
     return Estimated(estimates, source, (), {}, tuple(notes), put.cases[0].cautions)

@@ -50,7 +50,7 @@ def cross(
     stagnant_top: float | None = None,
     background: float = 0.0,
     streamlines: int = 60,
-    ends_too: bool = True,
+    in_full: bool = True,
 ) -> Crossing:
     """Incoming air taken over a transect.
 
@@ -78,9 +78,9 @@ def cross(
         Rain that falls anyway.
     streamlines : int
         How many, 20 or more.
-    ends_too : bool
-        Whether the ends without blocking and with full blocking are worked out beside the answer. False saves
-        their time, and they are then the answer itself.
+    in_full : bool
+        False leaves out what many crossings do without: the ends without blocking and with full blocking are then
+        the answer itself, and trapped waves are not looked for.
 
     Returns
     -------
@@ -116,12 +116,12 @@ def cross(
     )
     crest_wind = crest_component(incoming, ground.normal, shape.crest)
     sites = sites or (Site("Lee foot", shape.lee_foot_distance),)
-    tried, members = (ends(settings), 3) if ends_too else (settings, 1)
+    tried, members = (ends(settings), 3) if in_full else (settings, 1)
     solution = solve(ground, incoming, tried, lee, members=members, streamlines=streamlines)
     solution.going_round[1:] = 0.0
     streams = solution.streams
     air = March(**{key: getattr(streams.air, key)[:, 0, :] for key in March.__dataclass_fields__})
-    flow = flow_facts(ground, solution, crest_wind, settings, lee, when)
+    flow = flow_facts(ground, solution, crest_wind, settings, lee, when, trapped=in_full)
     height = streams.flow.heights[0][:, streams.place].T
     winds = lee_winds(ground, solution, crest_wind, flow.pressure_difference)
     cloud = clouds(solution, transect.distance, shape, freezing=settings.freezing)

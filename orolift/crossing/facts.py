@@ -173,7 +173,16 @@ def water(solution: Solution, column_vapour_flux: float) -> Water:
     )
 
 
-def flow_facts(ground: Ground, solution: Solution, crest_wind: float, settings: Settings, lee: Lee, when: When) -> Flow:
+def flow_facts(
+    ground: Ground,
+    solution: Solution,
+    crest_wind: float,
+    settings: Settings,
+    lee: Lee,
+    when: When,
+    *,
+    trapped: bool = True,
+) -> Flow:
     """How the air meets the range, as plain numbers.
 
     Parameters
@@ -185,6 +194,8 @@ def flow_facts(ground: Ground, solution: Solution, crest_wind: float, settings: 
     settings : Settings
     lee : Lee
     when : When
+    trapped : bool
+        Whether trapped waves are looked for.
 
     Returns
     -------
@@ -219,7 +230,7 @@ def flow_facts(ground: Ground, solution: Solution, crest_wind: float, settings: 
         breaks_through=(pool is None) if lee.known else None,
         break_through_chance=chance_of_breaking_through(sun, crest_wind) if not lee.known else float(pool is None),
         wave_breaking=bool(low_breaking(solution, shape.crest)[0]),
-        trapped_wavelength=_trapped_wavelength(solution),
+        trapped_wavelength=_trapped_wavelength(solution) if trapped else None,
         critical_level=critical if np.isfinite(critical) else None,
         pressure_difference=float(pressure_differences(ground, solution)[0]),
     )

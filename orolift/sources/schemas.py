@@ -12,10 +12,12 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from orolift.errors import CaseError
+from orolift.sources.bearings_results import BEARINGS_VERSION, BearingsResults
 from orolift.sources.case_model import Case
 from orolift.sources.compare_results import SCHEMA_VERSION as COMPARE_VERSION
 from orolift.sources.compare_results import CompareResults
 from orolift.sources.files import write_all
+from orolift.sources.hours_results import HOURS_VERSION, HoursResults
 from orolift.sources.results import SCHEMA_VERSION, Results
 from orolift.sources.rules_file import RulesFile
 from orolift.sources.spread_model import SpreadTable
@@ -27,6 +29,7 @@ if TYPE_CHECKING:
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
 CASE_FILE, RESULTS_FILE, RULES_FILE = "case.schema.json", "results.schema.json", "rules.schema.json"
 COMPARE_FILE = "compare.schema.json"
+HOURS_FILE, BEARINGS_FILE = "hours.schema.json", "bearings.schema.json"
 LIMIT_DIGITS = 6
 """Decimals of a limit converted to another unit: finer than anybody writes, coarser than rounding of the factors."""
 UNIT_WORDS = {
@@ -132,6 +135,16 @@ def compare_schema() -> Schema:
     return _written_schema(CompareResults, COMPARE_VERSION, "orolift comparison file")
 
 
+def hours_schema() -> Schema:
+    """JSON Schema of the results file of hours, as `results_schema`."""
+    return _written_schema(HoursResults, HOURS_VERSION, "orolift results file of hours")
+
+
+def bearings_schema() -> Schema:
+    """JSON Schema of the results file of wind directions, as `results_schema`."""
+    return _written_schema(BearingsResults, BEARINGS_VERSION, "orolift results file of wind directions")
+
+
 def _written_schema(model: type[BaseModel], version: str, title: str) -> Schema:
     schema = _plain(model.model_json_schema(mode="serialization"), keep_null=True)
     for block in [schema, *schema["$defs"].values()]:
@@ -149,6 +162,7 @@ def schema_texts() -> dict[str, str]:
     """
     schemas = {CASE_FILE: case_schema(), RESULTS_FILE: results_schema(), RULES_FILE: rules_schema()}
     schemas[COMPARE_FILE] = compare_schema()
+    schemas |= {HOURS_FILE: hours_schema(), BEARINGS_FILE: bearings_schema()}
     return {name: json.dumps(schema, indent=2, ensure_ascii=False) + "\n" for name, schema in schemas.items()}
 
 

@@ -8,9 +8,12 @@ from typing import TYPE_CHECKING, Literal
 import numpy as np
 
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.crossing.model_error import model_error
 from orolift.crossing.onset import potential_excess
 from orolift.crossing.simple import simple_answers
 from orolift.crossing.sites import LEAST_VAPOUR
+from orolift.spread.at_sites import TENTH, members_at
+from orolift.spread.ranges import range_of
 from orolift.spread.verification import Score, contingency, coverage, score, skill
 
 if TYPE_CHECKING:
@@ -20,6 +23,7 @@ if TYPE_CHECKING:
 
     from orolift.air.parcel import Parcel
     from orolift.crossing.result import Crossing, LeeAir, Side
+    from orolift.spread.spread import Spread
     from orolift.spread.verification import Contingency
 
     Array = NDArray[np.float64]
@@ -40,14 +44,19 @@ QUANTITIES: tuple[Quantity, ...] = (
     "rain_rate",
 )
 REFERENCES: tuple[Reference, ...] = ("unchanged", "popular_picture", "crest_air")
-MODEL_ERROR: dict[Quantity, float] = {"temperature": 2.0, "mixing_ratio": 8e-4}
-"""Standard deviation of the error of the model itself, in K and kg per kg; a judgement."""
+MEMBER_NAMES: dict[Quantity, str] = {
+    "temperature": "temperature",
+    "dew_point": "dew_point",
+    "mixing_ratio": "mixing_ratio",
+    "relative_humidity": "relative_humidity",
+    "wind": "wind_10m",
+    "gust": "gust",
+    "pressure": "pressure",
+}
+"""Names of the quantities in the arrays of a spread."""
 HUMID: tuple[Quantity, ...] = ("temperature", "mixing_ratio", "dew_point", "relative_humidity")
 """Quantities the simple answers speak of."""
 UNKNOWN = (np.nan, np.nan)
-TEN_PER_CENT = 1.2815515655446004
-"""Standard deviations from the mean to the 10 % and 90 % points of the normal distribution."""
-
 Values = dict[Quantity, "Array"]
 
 
@@ -214,7 +223,7 @@ def site_estimate(
     air : LeeAir
         One of its sites.
     ranges : mapping of Quantity to (float, float), optional
-        The 10 % and 90 % of many crossings. What they do not hold gets the model error alone.
+        The 10 % and 90 % of many crossings. What they do not hold gets the error of the method alone.
     way : float [s]
         Time from where the air was observed.
 
@@ -231,6 +240,28 @@ def site_estimate(
         wind_from=(crossing.flow.normal + np.pi) % (2.0 * np.pi),
         way=way,
     )
+
+
+def ranges_of(spread: Spread | None, crossing: Crossing, air: LeeAir) -> dict[Quantity, tuple[float, float]]:
+    """Full ranges at a site, 10 and 90 % of the members with the error of the method.
+
+    Parameters
+    ----------
+    spread : Spread or None
+    crossing : Crossing
+        That the spread is of.
+    air : LeeAir
+
+    Returns
+    -------
+    dict of Quantity to (float, float)
+        Empty without members.
+    """
+    members = None if spread is None else members_at(spread, crossing, air)
+    if members is None:
+        return {}
+    found = {name: range_of(members[key]) for name, key in MEMBER_NAMES.items() if key in members}
+    return {name: ends for name, ends in found.items() if ends is not None}
 
 
 def estimates_of(
@@ -459,15 +490,15 @@ def _value(crossing: Crossing, air: LeeAir, name: Quantity) -> float:
 
 
 def _ranges(air: LeeAir, given: Mapping[Quantity, tuple[float, float]]) -> dict[Quantity, tuple[float, float]]:
-    """Ranges at one place: those given, else the model error; of the wind those of the methods."""
+    """Ranges at one place: those given, else the error of the method; of the wind those of the methods."""
     found: dict[Quantity, tuple[float, float]] = {}
     wind = air.wind
     if wind is not None:
         share = wind.at_10m / wind.wind if wind.wind > 0.0 else 1.0
         found |= {"wind": (share * wind.low, share * wind.high), "gust": (wind.gust_low, wind.gust_high)}
-    for name, error in MODEL_ERROR.items():
-        middle, half = float(getattr(air, name)), TEN_PER_CENT * error
-        found[name] = (middle - half, middle + half)
+    warm, moist = (TENTH * float(error) for error in model_error(max(air.distance, 0.0)))
+    found["temperature"] = (air.temperature - warm, air.temperature + warm)
+    found["mixing_ratio"] = (air.mixing_ratio - moist, air.mixing_ratio + moist)
     found["mixing_ratio"] = (max(found["mixing_ratio"][0], 0.0), found["mixing_ratio"][1])
     low, high = (
         float(dew_point_from_mixing_ratio(air.pressure, max(vapour, LEAST_VAPOUR))) for vapour in found["mixing_ratio"]

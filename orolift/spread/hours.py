@@ -15,6 +15,7 @@ from orolift.terrain.features import features
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
     from orolift.crossing.situation import Situation
+    from orolift.fire.sites import FireSettings
     from orolift.rain.over_map import Catchment
     from orolift.terrain.grid import ElevationGrid
 
@@ -74,6 +75,8 @@ class HourTask:
     lines : tuple of OneLine
     ground : MapGround or None
         None without catchments.
+    fire : FireSettings or None
+        With the thresholds of a region, where there are any.
     """
 
     number: int
@@ -81,6 +84,7 @@ class HourTask:
     states: tuple[SiteState, ...]
     lines: tuple[OneLine, ...] = ()
     ground: MapGround | None = None
+    fire: FireSettings | None = None
 
 
 @dataclass(frozen=True)
@@ -119,7 +123,7 @@ def worked_hour(task: HourTask) -> Hour:
     first: Crossing | None = None
     for line in task.lines:
         situation = replace(line.situation, when=when_there(line, task.time))
-        found, crossing = states_of(situation, line.observed_at)
+        found, crossing = states_of(situation, line.observed_at, task.fire)
         first = first or crossing
         for number, state in zip(line.numbers, found, strict=True):
             states[number] = state

@@ -25,12 +25,14 @@ HOURS = [
     ]
 ]
 EARLIER = ("valid_time = 2026-11-03T12:00:00Z", "valid_time = 2026-11-03T10:00:00Z")
+NO_MEMBERS = ("[rain]", "[spread]\nmembers = 0\n[rain]")
 VOID = {"meta", "br", "link", "img", "input", "hr"}
 
 
 @pytest.fixture
-def observed(case_folder):
-    """Write a file of observations."""
+def observed(case_folder, edited):
+    """Write a file of observations, beside a case without members."""
+    edited(NO_MEMBERS)
 
     def write(*rows, head=HEAD, name="obs.csv"):
         (case_folder / name).write_text("\n".join([head, *rows]) + "\n")
@@ -69,9 +71,10 @@ def few_crossings(monkeypatch):
 
 
 @pytest.mark.usefixtures("few_crossings")
-def test_the_whole_of_it(observed, case_folder, capsys):
+def test_the_whole_of_it(observed, edited, case_folder, capsys):
     """One run: page, results and table agree, the onset is found, the difference is explained or said not to be."""
     name = observed(*HOURS)
+    edited(("[rain]", "[spread]\nmembers = 10\n[rain]"))
     options = ["--results", "r.json", "--table", "t.csv", "--event", "temperature_c >= 15"]
     assert exit_code(["compare", "case.toml", name, *options]) == 0
     said = capsys.readouterr()
@@ -87,6 +90,8 @@ def test_the_whole_of_it(observed, case_folder, capsys):
     assert value["difference"] == pytest.approx(value["estimate"] - 19.0)
     assert value["line"] == 5
     assert value["inside"] is (value["low"] <= 19.0 <= value["high"])
+    damp = next(row for row in results["values"] if row["quantity"] == "relative_humidity_percent")
+    assert damp["low"] < damp["high"]  # only members give it a range
     (onset,) = results["onset"]
     assert [(s["start"][11:16], s["end"][11:16]) for s in onset["observed_spells"]] == [("10:00", "13:00")]
     assert results["explanation"]["nearest"]["misfit"] >= 0.0
@@ -103,9 +108,9 @@ def test_the_whole_of_it(observed, case_folder, capsys):
 
 def test_several_cases_are_compared_in_time(observed, edited, case_folder):
     """Each observation goes to its nearest case; scores are over both."""
-    edited(EARLIER)
+    edited(EARLIER, NO_MEMBERS)
     (case_folder / "case.toml").rename(case_folder / "early.toml")
-    edited()
+    edited(NO_MEMBERS)
     name = observed(*HOURS, head=HEAD.replace("dew_point_c", "gust_ms"))
     assert exit_code(["compare", "case.toml", "early.toml", name, "--quiet", "--results", "r.json"]) == 0
     results = json.loads((case_folder / "r.json").read_text())

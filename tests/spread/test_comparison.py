@@ -1,6 +1,7 @@
 """Crossings against rows: which estimate a row belongs to, ranges, averages, a sounding, onset."""
 
 from dataclasses import replace
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -20,6 +21,7 @@ from orolift.spread.comparison import (
     event_table,
     nearest_estimates,
     paired,
+    ranges_of,
     site_estimate,
 )
 from orolift.spread.explained import chosen
@@ -97,6 +99,14 @@ def test_range_is_that_of_the_stated_model_error(estimates, crossing):
     assert one.high["temperature"][0] - one.values["temperature"][0] == pytest.approx(2.563, abs=1e-3)
     assert one.low["mixing_ratio"][0] == pytest.approx(crossing.lee[0].mixing_ratio - 1.0252e-3, abs=1e-6)
     assert one.low["dew_point"][0] < one.values["dew_point"][0] < one.high["dew_point"][0]
+
+
+def test_ranges_of_members_are_their_tenths(crossing):
+    """By hand: 0 to 10 in eleven members has 1 and 9; without members there is no range."""
+    values = np.arange(11.0)[:, np.newaxis] * np.ones((1, 2))
+    spread = SimpleNamespace(full_sites={"temperature": 280.0 + values, "wind_10m": values})
+    assert ranges_of(spread, crossing, crossing.lee[0]) == {"temperature": (281.0, 289.0), "wind": (1.0, 9.0)}
+    assert ranges_of(None, crossing, crossing.lee[0]) == {}
 
 
 def test_given_ranges_go_before_the_model_error(crossing):
