@@ -1,7 +1,7 @@
 """Runs the commands of the pages for the three readers, and renews what they print and draw.
 
-Each page (`forecaster.md`, `fire_analyst.md`, `hydrologist.md`) has blocks marked `<!-- tour -->`: a command, and what it
-prints. This script runs all of them in one empty folder beside a copy of `demo_terrain`, writes the output back into
+Each page (`forecaster.md`, `fire_analyst.md`, `hydrologist.md`) has blocks marked `<!-- tour -->`: a command, and what
+it prints. This script runs all of them in one empty folder beside a copy of `demo_terrain`, writes the output back into
 the pages, cuts the figures out of the reports and says which numbers of the text no longer stand in any output or
 report (numbers of the text that come from a run stand `in backquotes`):
 
@@ -42,7 +42,6 @@ FIGURES = {
     "rain_line": ("storm/varn_moist.html", "rain-line"),
 }
 TOUR = re.compile(r"(?<=<!-- tour -->\n```console\n)\$ orolift ([^\n]*)\n(.*?)(?=^```$)", re.MULTILINE | re.DOTALL)
-QUOTED = re.compile(r"`([^`=_]*\d[^`=_]*)`")
 MANY = ("cross", "hours", "bearings", "compare")  # commands that may use several processes
 
 
@@ -97,7 +96,8 @@ def readable(page: Path) -> str:
 
 def quoted_numbers(text: str) -> list[str]:
     """What a page quotes from outputs and reports: words with a number, `in backquotes`, outside blocks."""
-    return [" ".join(quoted.split()) for quoted in QUOTED.findall(re.sub(r"(?ms)^```.*?^```", "", text))]
+    spans = re.findall(r"`([^`]*)`", re.sub(r"(?ms)^```.*?^```", "", text))
+    return [" ".join(span.split()) for span in spans if re.search(r"\d", span) and not re.search("[=_]", span)]
 
 
 def loose_numbers(text: str, found: dict[str, str], folder: Path) -> list[str]:
