@@ -11,19 +11,21 @@ from typing import TYPE_CHECKING
 
 import click
 
+from orolift.cli.lee_map import lee_files, mapped_lee
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
 from orolift.cli.outputs import Outputs, refuse_together
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
 from orolift.cli.spreading import Workers, spread_for
 
 if TYPE_CHECKING:
-    from orolift.crossing.result import Crossing
+    from orolift.crossing.result import Crossing, LeeAir
     from orolift.crossing.situation import Situation
     from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
+    from orolift.sources.strips import MappedLee
     from orolift.spread.sites import GroupAir
     from orolift.spread.spread import Spread
 
@@ -40,6 +42,7 @@ class Worked:
     mapped: Mapped | None
     flags: tuple[str, ...]
     fire: tuple[SiteFire, ...]
+    lee: MappedLee | None
     results: Results
     spread: Spread | None
 
@@ -51,6 +54,9 @@ class Worked:
 @file_option("--table", "Table to write as CSV, one row a site.")
 @file_option("--geojson", "Sites to write as GeoJSON points.")
 @click.option("--maps", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps: rate, total, rain and snow.")
+@click.option(
+    "--lee-map", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps of the lee, shown in the report."
+)
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
@@ -115,6 +121,8 @@ def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work:
     add_results(worked, wanted.results, wanted.table, outputs)
     for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
         outputs.add(path, content, option)
+    for path, content in lee_files(wanted.rain.lee_map, worked.inputs, worked.lee).items():
+        outputs.add(path, content, "--lee-map")
     return worked, page
 
 
@@ -176,17 +184,20 @@ def work_out(case: str, files: RainFiles | None = None, workers: Workers | None 
     crossing = replace(
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
+    lee = None
+    if files.lee_map is not None:
+        lee = mapped_lee(inputs, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet)
     flags = flags_of(inputs, crossing, mapped)
-    fire, reached, to_know = fire_of(inputs, own, crossing, parts)
+    fire, reached, to_know = fire_of(inputs, own, crossing, parts, spread)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
     results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
-    return Worked(inputs, situation, crossing, mapped, flags, fire, results, spread)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results, spread)
 
 
 def fire_of(
-    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...]
+    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...], spread: Spread | None = None
 ) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
-    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    """Fire weather at the sites, with chances by the members; thresholds met in sentences, what to know about them."""
     from orolift.fire.flags import fire_flags, windward_cautions
     from orolift.fire.sites import fire_at_sites
     from orolift.spread.sites import fire_by_number
@@ -194,8 +205,21 @@ def fire_of(
     at_own = fire_at_sites(own, inputs.when, inputs.fire)
     by_number = fire_by_number(crossing, at_own, parts)
     found = tuple(by_number[air.number] for air in crossing.lee)
+    if spread is not None and spread.crosses.any():
+        found = tuple(
+            _with_chances(one, air, inputs, crossing, spread) for one, air in zip(found, crossing.lee, strict=True)
+        )
     rules = inputs.fire.rules
     return found, fire_flags(found, rules), windward_cautions(found, rules)
+
+
+def _with_chances(one: SiteFire, air: LeeAir, inputs: Inputs, crossing: Crossing, spread: Spread) -> SiteFire:
+    """Fire weather of a site judged on the members, the error of the method included."""
+    from orolift.fire.chances import with_members
+    from orolift.spread.at_sites import members_at
+
+    arrays = members_at(spread, crossing, air)
+    return one if arrays is None else with_members(one, arrays, inputs.fire, crossing.settings.roughness)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -240,6 +264,7 @@ def report_of(worked: Worked, units: Units) -> str:
         case_text=worked.inputs.text,
         units=units,
         mapped=worked.mapped,
+        lee=worked.lee,
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,

@@ -105,7 +105,7 @@ def refuse_together(given: list[str], cases: int, folder: str | None) -> None:
     for option in given:
         if folder is not None:
             raise CaseError(f"--folder writes everything there is; leave {option} out, or leave --folder out.")
-        if cases > 1 and option != "--maps":
+        if cases > 1 and option not in {"--maps", "--lee-map"}:
             raise CaseError(
                 f"{option} takes one case, and {cases} are given. Run it once for each case, or give --folder."
             )

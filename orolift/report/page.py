@@ -23,6 +23,7 @@ from orolift.report.figures.section import section
 from orolift.report.fire import FireWeather, fire_weather
 from orolift.report.how_sure import HowSure, how_sure
 from orolift.report.inputs import Inputs, inputs
+from orolift.report.lee_map import LeeOnMap, lee_on_map
 from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
 from orolift.report.places import Journey, journey, section_heading
@@ -49,6 +50,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.gauge_scatter import ScatterDrawing
     from orolift.report.figures.influences import InfluencesDrawing
+    from orolift.report.figures.lee_map import LeeMapDrawing
     from orolift.report.figures.path import PathDrawing
     from orolift.report.figures.rain_line import RainLineDrawing
     from orolift.report.figures.rain_map import RainMapDrawing
@@ -56,6 +58,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.sites_map import SitesMapDrawing
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.quality import Finding
+    from orolift.sources.strips import MappedLee
     from orolift.spread.spread import Spread
 
 
@@ -89,6 +92,7 @@ class Page:
     gauge_scatter : Figure or None
     sites : Sites
     sites_map : Figure or None
+    lee_map : LeeOnMap or None
     fire : FireWeather or None
     how_sure : HowSure
     influences : Figure or None
@@ -123,6 +127,7 @@ class Page:
     gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
     sites_map: Figure[SitesMapDrawing] | None
+    lee_map: LeeOnMap | None
     fire: FireWeather | None
     how_sure: HowSure
     influences: Figure[InfluencesDrawing] | None
@@ -146,6 +151,7 @@ def page_of(
     case_text: str | None = None,
     units: Units = "metric",
     mapped: Mapped | None = None,
+    lee: MappedLee | None = None,
     flags: tuple[str, ...] = (),
     findings: Iterable[Finding] = (),
     stagnant_top: float | None = None,
@@ -171,6 +177,8 @@ def page_of(
     units : 'metric' or 'us'
     mapped : Mapped, optional
         Rain over the map.
+    lee : MappedLee, optional
+        The lee as a map.
     flags : tuple of str
         Danger thresholds reached.
     findings : iterable of Finding
@@ -217,6 +225,7 @@ def page_of(
         sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
         how_sure=sure,
         influences=influences_figure(sure),
+        lee_map=None if lee is None else lee_on_map(lee, _lee_maps(crossing, lee, units)),
         fire=fire_weather(crossing, fire, rules) if fire else None,
         answers=answers(few),
         answers_figure=answers_figure(few, units),
@@ -241,3 +250,10 @@ def _sites_map(crossing: Crossing, mapped: Mapped, units: Units) -> Figure[Sites
     from orolift.report.figures.sites_map import sites_map_figure
 
     return sites_map_figure(crossing, mapped, units)
+
+
+def _lee_maps(crossing: Crossing, lee: MappedLee, units: Units) -> tuple[Figure[LeeMapDrawing], ...]:
+    """The maps of the lee; their module needs what only cases with a raster need."""
+    from orolift.report.figures.lee_map import lee_map_figures
+
+    return lee_map_figures(crossing, lee, units)

@@ -102,7 +102,26 @@ def read_hours(case: str | Path, series: str | Path) -> HourSetup:
     OroliftError
         If either cannot be read, the two do not fit, or no hour of the series can be used.
     """
-    inputs, rows = read_inputs(case), read_series(series)
+    return hours_over(read_inputs(case), read_series(series))
+
+
+def hours_over(inputs: Inputs, rows: Series) -> HourSetup:
+    """The hours of a series over the terrain of a case, both read already.
+
+    Parameters
+    ----------
+    inputs : Inputs
+    rows : Series
+
+    Returns
+    -------
+    HourSetup
+
+    Raises
+    ------
+    OroliftError
+        As `read_hours`.
+    """
     notes = refuse_unfit(inputs, rows)
     situation = replace(situation_of(inputs), in_full=False)
     shape = features(inputs.transect, inputs.sites[0].distance if inputs.sites else None)

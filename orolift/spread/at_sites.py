@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.crossing.result import Crossing, LeeAir
+    from orolift.spread.spread import Spread
 
     Array = NDArray[np.float64]
 
@@ -41,6 +42,26 @@ def columns_of(crossing: Crossing) -> tuple[LeeAir, ...]:
 def column_of(crossing: Crossing, site: LeeAir) -> int | None:
     """Column of a site in the arrays of a spread; None when it has none."""
     return next((i for i, air in enumerate(columns_of(crossing)) if air.number == site.number), None)
+
+
+def members_at(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Array] | None:
+    """What the members give at a site, the error of the method included.
+
+    Parameters
+    ----------
+    spread : Spread
+    crossing : Crossing
+    site : LeeAir
+
+    Returns
+    -------
+    dict of str to ndarray (m,) or None
+        In SI, NaN where a member has no such value; None for a site that is in no column.
+    """
+    column = column_of(crossing, site)
+    if column is None or not spread.full_sites:
+        return None
+    return {name: value[:, column] for name, value in spread.full_sites.items()}
 
 
 def shadows(crossing: Crossing) -> tuple[Site, ...]:

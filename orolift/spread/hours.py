@@ -122,7 +122,7 @@ def worked_hour(task: HourTask) -> Hour:
     states = list(task.states)
     first: Crossing | None = None
     for line in task.lines:
-        situation = replace(line.situation, when=_arrives(line, task.time))
+        situation = replace(line.situation, when=when_there(line, task.time))
         found, crossing = states_of(situation, line.observed_at, task.fire)
         first = first or crossing
         for number, state in zip(line.numbers, found, strict=True):
@@ -130,8 +130,19 @@ def worked_hour(task: HourTask) -> Hour:
     return Hour(task.number, task.time, tuple(states), _catchment_rates(task.ground, first))
 
 
-def _arrives(line: OneLine, time: float) -> Any:
-    """When the air of a line is about at its first site, for the height of the sun there."""
+def when_there(line: OneLine, time: float) -> Any:
+    """When the air of a line is about at its first site, for the height of the sun there.
+
+    Parameters
+    ----------
+    line : OneLine
+    time : float [s]
+        At which it was observed.
+
+    Returns
+    -------
+    When or None
+    """
     situation = line.situation
     when = situation.when
     if when is None or not situation.sites:

@@ -25,12 +25,14 @@ HOURS = [
     ]
 ]
 EARLIER = ("valid_time = 2026-11-03T12:00:00Z", "valid_time = 2026-11-03T10:00:00Z")
+NO_MEMBERS = ("[rain]", "[spread]\nmembers = 0\n[rain]")
 VOID = {"meta", "br", "link", "img", "input", "hr"}
 
 
 @pytest.fixture
-def observed(case_folder):
-    """Write a file of observations."""
+def observed(case_folder, edited):
+    """Write a file of observations, beside a case without members."""
+    edited(NO_MEMBERS)
 
     def write(*rows, head=HEAD, name="obs.csv"):
         (case_folder / name).write_text("\n".join([head, *rows]) + "\n")
@@ -69,9 +71,10 @@ def few_crossings(monkeypatch):
 
 
 @pytest.mark.usefixtures("few_crossings")
-def test_the_whole_of_it(observed, case_folder, capsys):
+def test_the_whole_of_it(observed, edited, case_folder, capsys):
     """One run: page, results and table agree, the onset is found, the difference is explained or said not to be."""
     name = observed(*HOURS)
+    edited(("[rain]", "[spread]\nmembers = 10\n[rain]"))
     options = ["--results", "r.json", "--table", "t.csv", "--event", "temperature_c >= 15"]
     assert exit_code(["compare", "case.toml", name, *options]) == 0
     said = capsys.readouterr()
@@ -87,6 +90,8 @@ def test_the_whole_of_it(observed, case_folder, capsys):
     assert value["difference"] == pytest.approx(value["estimate"] - 19.0)
     assert value["line"] == 5
     assert value["inside"] is (value["low"] <= 19.0 <= value["high"])
+    damp = next(row for row in results["values"] if row["quantity"] == "relative_humidity_percent")
+    assert damp["low"] < damp["high"]  # only members give it a range
     (onset,) = results["onset"]
     assert [(s["start"][11:16], s["end"][11:16]) for s in onset["observed_spells"]] == [("10:00", "13:00")]
     assert results["explanation"]["nearest"]["misfit"] >= 0.0
@@ -103,9 +108,9 @@ def test_the_whole_of_it(observed, case_folder, capsys):
 
 def test_several_cases_are_compared_in_time(observed, edited, case_folder):
     """Each observation goes to its nearest case; scores are over both."""
-    edited(EARLIER)
+    edited(EARLIER, NO_MEMBERS)
     (case_folder / "case.toml").rename(case_folder / "early.toml")
-    edited()
+    edited(NO_MEMBERS)
     name = observed(*HOURS, head=HEAD.replace("dew_point_c", "gust_ms"))
     assert exit_code(["compare", "case.toml", "early.toml", name, "--quiet", "--results", "r.json"]) == 0
     results = json.loads((case_folder / "r.json").read_text())
@@ -113,6 +118,31 @@ def test_several_cases_are_compared_in_time(observed, edited, case_folder):
     (warm,) = [one for one in results["scores"] if one["quantity"] == "temperature_c"]
     assert warm["score"]["count"] == 2
     assert results["explanation"] is None  # no humidity was observed
+
+
+@pytest.mark.usefixtures("few_crossings")
+def test_hours_of_a_series_are_compared_when_their_air_is_there(observed, case_folder, capsys):
+    """Each hour arrives later than it was observed upwind, and is held against the row at that time."""
+    head = "time,temperature_c,dew_point_c,pressure_hpa,wind_from_deg,wind_kt,crest_wind_kt,crest_wind_from_deg"
+    rows = [f"2026-11-03T{hour:02d}:00Z,14.5,11,1004,235,25,38,235" for hour in (9, 10)]
+    (case_folder / "series.csv").write_text("\n".join([head, *rows]) + "\n")
+    every = [f"2026-11-03T{9 + i // 6:02d}:{i % 6}0Z,Lower Tarn,{15 + 0.01 * i:.2f},6" for i in range(24)]
+    name = observed(*every, head="time,site,temperature_c,dew_point_c")
+    options = ["--series", "series.csv", "--within", "5", "--quiet", "--results", "r.json"]
+    assert exit_code(["compare", "case.toml", name, *options]) == 0, capsys.readouterr().err
+    results = json.loads((case_folder / "r.json").read_text())
+    assert results["cases"] == [f"2026-11-03T{hour}:00:00Z" for hour in ("09", "10")]
+    warm = [row for row in results["values"] if row["quantity"] == "temperature_c"]
+    assert len(warm) == 2  # ten-minute rows, five minutes either way, two hours
+    assert warm[0]["time"] > "2026-11-03T09:10"
+    assert results["explanation"]["place"] == "Lower Tarn"
+
+
+def test_a_series_is_for_one_case(observed, case_folder, capsys):
+    """Several cases have their own air."""
+    (case_folder / "again.toml").write_text((case_folder / "case.toml").read_text())
+    assert exit_code(["compare", "case.toml", "again.toml", observed(*HOURS), "--series", "series.csv"]) == 2
+    assert "--series gives the hours over one case" in capsys.readouterr().err
 
 
 def test_a_lee_sounding_is_compared(observed, case_folder):

@@ -14,6 +14,7 @@ from orolift.sources.case_model import (
     LeeTable,
     Place,
     SiteTable,
+    SpreadTable,
     Station,
     Terrain,
     TransectTable,
@@ -48,6 +49,7 @@ from orolift.sources.results import (
 )
 from orolift.sources.rules_file import QUANTITY_KEYS, RuleCondition, RulesFile, RuleTable
 from orolift.sources.schemas import case_schema, compare_schema, results_schema, rules_schema
+from orolift.sources.spread_results import InfluenceBlock, InfluencesBlock, SpreadBlock
 from orolift.sources.units import alternatives
 
 DOCS = Path(__file__).resolve().parents[2] / "docs"
@@ -69,6 +71,7 @@ CASE_TABLES = {
     "[fire]": Fire,
     "[lee]": LeeTable,
     "[heat]": HeatTable,
+    "[spread]": SpreadTable,
     "[[site]]": SiteTable,
 }
 RESULTS_TABLES = {
@@ -87,6 +90,9 @@ RESULTS_TABLES = {
     "lee": LeeBlock,
     "warming_parts_c": WarmingParts,
     "profile": Profile,
+    "spread": SpreadBlock,
+    "influences": InfluencesBlock,
+    "influence": InfluenceBlock,
     "fire": FireBlock,
     "night": NightBlock,
     "rules": RuleBlock,
@@ -148,6 +154,8 @@ def range_words(field):
     if kind == "number" and "maximum" in field:
         low = f"above {field['exclusiveMinimum']:g}" if "exclusiveMinimum" in field else f"{field['minimum']:g}"
         return f"{low} to {field['maximum']:g}"
+    if kind == "integer":
+        return f"whole number, {field['minimum']} to {field['maximum']}"
     if kind == "string" and "maxLength" in field:
         return f"text, up to {field['maxLength']} letters"
     if kind == "array":

@@ -1,6 +1,7 @@
 """Crossings against rows: which estimate a row belongs to, ranges, averages, a sounding, onset."""
 
 from dataclasses import replace
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -13,7 +14,16 @@ from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.winds import WindMeant
 from orolift.spread.compared import all_pairs, profile_comparison
 from orolift.spread.compared_rules import rule_tables
-from orolift.spread.comparison import Observations, averaged, estimates_of, event_table, nearest_estimates, paired
+from orolift.spread.comparison import (
+    Observations,
+    averaged,
+    estimates_of,
+    event_table,
+    nearest_estimates,
+    paired,
+    ranges_of,
+    site_estimate,
+)
 from orolift.spread.explained import chosen
 from orolift.spread.onset_series import onset_at_places
 from orolift.terrain import ridge_transect
@@ -34,7 +44,8 @@ def crossing():
 @pytest.fixture(scope="module")
 def estimates(crossing):
     """The crossing as if valid at three hours, and a place that it does not have."""
-    return tuple(estimates_of(crossing, hour * HOUR, (0, 1, None)) for hour in range(3))
+    sites = [*(site_estimate(crossing, air) for air in crossing.lee), None]
+    return tuple(estimates_of(sites, hour * HOUR) for hour in range(3))
 
 
 def rows(time, place, **values):
@@ -63,6 +74,14 @@ def test_rows_go_to_the_nearest_estimate_within_reach(estimates):
     assert nearest_estimates(seen, estimates[:1], 1800.0).tolist() == [0, -1, -1, -1, -1, 0]
 
 
+def test_each_place_has_its_own_arrival(crossing):
+    """Air that takes an hour to place 0 and no time to place 1: rows go to the estimate whose air is there."""
+    sites = [site_estimate(crossing, air) for air in crossing.lee]
+    estimates = [estimates_of(sites, hour * HOUR, [(hour + 1) * HOUR, hour * HOUR]) for hour in range(2)]
+    seen = rows([HOUR, HOUR, 0.0], [0, 1, 0], temperature=[280.0] * 3)
+    assert nearest_estimates(seen, estimates, 1800.0).tolist() == [0, 1, -1]
+
+
 def test_an_estimate_held_against_itself_has_no_error(estimates):
     """Round trip: bias and error 0, all inside, skill 1 against every simple answer."""
     own = estimates[0].values
@@ -82,10 +101,19 @@ def test_range_is_that_of_the_stated_model_error(estimates, crossing):
     assert one.low["dew_point"][0] < one.values["dew_point"][0] < one.high["dew_point"][0]
 
 
+def test_ranges_of_members_are_their_tenths(crossing):
+    """By hand: 0 to 10 in eleven members has 1 and 9; without members there is no range."""
+    values = np.arange(11.0)[:, np.newaxis] * np.ones((1, 2))
+    spread = SimpleNamespace(full_sites={"temperature": 280.0 + values, "wind_10m": values})
+    assert ranges_of(spread, crossing, crossing.lee[0]) == {"temperature": (281.0, 289.0), "wind": (1.0, 9.0)}
+    assert ranges_of(None, crossing, crossing.lee[0]) == {}
+
+
 def test_given_ranges_go_before_the_model_error(crossing):
     """Those of many crossings."""
-    one = estimates_of(crossing, None, (0,), [{"temperature": (270.0, 300.0)}])
-    assert (one.low["temperature"][0], one.high["temperature"][0]) == (270.0, 300.0)
+    one = site_estimate(crossing, crossing.lee[0], {"temperature": (270.0, 300.0)})
+    assert one.ranges["temperature"] == (270.0, 300.0)
+    assert one.ranges["mixing_ratio"][0] > 0.0
 
 
 def test_a_place_that_a_line_misses_has_no_pairs(estimates):
@@ -116,7 +144,7 @@ def test_rules_are_judged_alike_for_estimates_and_observations(estimates):
     dry = Rule("dry and windy", (Condition("relative_humidity", at_most=0.99), Condition(wind, at_least=1.0)))
     index = Rule("index", (Condition("fosberg_index", at_least=1.0),))
     seen = rows([0.0, HOUR], [0, 0], relative_humidity=[0.5, 0.5], wind=[8.0, 0.2])
-    tables, notes = rule_tables(RuleSet("r", "a", "2026-01-01", (dry, index)), seen, estimates, np.array([0, 1]))
+    tables, notes = rule_tables(RuleSet("r", "a", "2026-01-01", (dry, index)), seen, estimates, np.array([0, 1]), 0.03)
     ((name, table),) = tables
     assert (name, table.hits, table.false_alarms) == ("dry and windy", 1, 1)
     assert "'index' cannot be judged" in notes[0]
@@ -164,7 +192,7 @@ def test_onset_of_a_made_up_series(estimates):
         crest_elevation=[1850.0] * 4,
     )
     which = nearest_estimates(seen, estimates, 1800.0)
-    (found,) = onset_at_places(OnsetRule(bridge=0.0), seen, estimates, which, [(0, 1, None)] * 3, [310.0, 100.0, 0.0])
+    (found,) = onset_at_places(OnsetRule(bridge=0.0), seen, estimates, which, [310.0, 100.0, 0.0])
     (spell,) = found.observed_spells
     assert (spell.start, spell.end) == (HOUR, 2 * HOUR)
     assert found.times == 4

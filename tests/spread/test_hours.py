@@ -16,7 +16,7 @@ from orolift.rain.line import MapLine
 from orolift.rain.over_map import Catchment, map_rain
 from orolift.sources.hours_case import hour_task, hour_tasks, read_hours
 from orolift.sources.inputs import situation_of
-from orolift.spread.hours import MapGround, _arrives, _catchment_rates, worked_hour
+from orolift.spread.hours import MapGround, _catchment_rates, when_there, worked_hour
 from orolift.spread.site_state import descending_warm_dry, states_of
 from orolift.terrain.grid import ElevationGrid
 
@@ -156,7 +156,7 @@ def test_values_for_thresholds_are_those_of_fire_weather(setup):
     found = replace(hour_task(setup(SAME), 0), fire=fire)
     values = worked_hour(found).sites[0].rule_values
     situation = found.lines[0].situation
-    when = _arrives(found.lines[0], found.time)
+    when = when_there(found.lines[0], found.time)
     judged = fire_at_sites(crossing_of(replace(situation, when=when)), when, fire)[0].thresholds[0].judged
     for one in judged.conditions:
         assert values[one.condition.quantity] == pytest.approx(one.value)
