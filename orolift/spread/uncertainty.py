@@ -40,7 +40,7 @@ class Uncertainty:
     lapse_rate : float [K m-1]
         Of the lapse rate in the lowest 5 km.
     going_round_share : float [1]
-        Normal, cut at 0 and 0.8.
+        Normal; what falls beyond 0 or 0.8 is put there.
     critical_value : float [1]
         Log-normal, cut at 0.75 and 3.
     cloud_time, fall_time : float [1]
