@@ -12,8 +12,8 @@ if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
 TEMPERATURE_ERROR, TEMPERATURE_GROWTH = 1.5, 0.5e-5
-"""Standard deviation of the lee temperature [K] right at the incoming air, a judgement (no pair nearer than
-150 km), and its growth [K m-1], so that 80 % of 66 real pairs of soundings lie in the 10 to 90 % range: docs/accuracy.md."""
+"""Standard deviation of the lee temperature [K] right at the incoming air, a judgement (no pair nearer than 150 km);
+and its growth [K m-1], so that 80 % of 66 real pairs of soundings lie in the 10 to 90 % range: docs/accuracy.md."""
 VAPOUR_ERROR, VAPOUR_GROWTH = 0.6e-3, 0.25e-8
 """The same of the lee mixing ratio [kg per kg], [kg per kg m-1]."""
 
