@@ -12,6 +12,7 @@ from __future__ import annotations
 
 import heapq
 import sys
+from datetime import UTC, datetime, timedelta
 from pathlib import Path
 
 import numpy as np
@@ -289,6 +290,36 @@ def sounding(levels: tuple[tuple[float, ...], ...], ground_pressure: float, titl
     return "\n".join(rows) + "\n"
 
 
+def hours() -> str:
+    """36 hours at an invented coastal station: south-westerly rises behind a high, a front, then north-westerly.
+
+    Cold air lies in the lee until the wind is strong enough to take its place; two hours failed to report.
+    """
+    rows = [
+        "# Invented: a dry south-westerly over the Varn range, then a front. Two hours did not report.",
+        "time,temperature_c,dew_point_c,pressure_hpa,wind_from_deg,wind_kt,crest_wind_kt,crest_wind_from_deg,lee_temperature_c",
+    ]
+    start = datetime(2027, 2, 14, 6, tzinfo=UTC)
+    for hour in range(36):
+        rise = 1.0 / (1.0 + np.exp(-(hour - 9.0) / 2.0))
+        front = 1.0 / (1.0 + np.exp(-(hour - 27.0) / 0.8))
+        wet = np.exp(-(((hour - 27.0) / 2.5) ** 2))
+        sun = np.cos(2.0 * np.pi * (hour - 19.0) / 24.0)  # warmest at 01 UTC, early afternoon there
+        temperature = 13.0 + 2.0 * sun - 4.0 * front
+        dew_point = temperature - 3.0 - 6.0 * rise * (1.0 - front) * (1.0 - 0.9 * wet) - 2.5 * front * (1.0 - wet)
+        pressure = 1019.0 - 9.0 * rise + 6.0 * front
+        wind = 7.0 + 9.0 * rise * (1.0 - 0.6 * front)
+        veer = 85.0 * front
+        lee = 6.0 + 1.5 * sun + 14.0 * rise - 3.0 * front
+        if hour in {15, 16}:
+            continue
+        rows.append(
+            f"{(start + timedelta(hours=hour)).isoformat().replace('+00:00', 'Z')},{temperature:.1f},{dew_point:.1f},"
+            f"{pressure:.1f},{235.0 + veer:.0f},{wind:.0f},{1.2 * wind:.0f},{240.0 + veer:.0f},{lee:.1f}"
+        )
+    return "\n".join(rows) + "\n"
+
+
 if __name__ == "__main__":
     folder = Path(sys.argv[1]) if len(sys.argv) > 1 else Path(__file__).parent
     (folder / "ridge.csv").write_text(RIDGE, encoding="utf-8")
@@ -296,4 +327,5 @@ if __name__ == "__main__":
     dry = sounding(DRY, 1019.2, "Dry, stable south-westerly behind a high.")
     (folder / "sounding.csv").write_text(moist, encoding="utf-8")
     (folder / "sounding_dry.csv").write_text(dry, encoding="utf-8")
+    (folder / "varn_hours.csv").write_text(hours(), encoding="utf-8")
     write_raster(folder / "varn.tif", varn_ground())

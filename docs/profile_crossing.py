@@ -15,9 +15,10 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.air.column_change import with_values
 from orolift.crossing.crossing import cross, toward
 from orolift.crossing.pool import Lee
-from orolift.crossing.settings import checked
+from orolift.crossing.settings import Settings, checked
 from orolift.crossing.solve import Ground, solve
 from orolift.sources.inputs import read_inputs
 from orolift.sources.ridge_csv import read_ridge
@@ -27,17 +28,15 @@ from orolift.terrain.ridge import ridge_transect
 if TYPE_CHECKING:
     from collections.abc import Callable
 
-    from orolift.crossing.settings import Settings
-
 DEMO = Path(__file__).resolve().parents[1] / "demo_terrain"
-TIMES = 7
+TIMES, MANY = 7, 32
 # row of the table: functions whose time, with all they call, counts for it, and functions in them that do not
 ROWS: tuple[tuple[str, tuple[str, ...], tuple[str, ...]], ...] = (
     ("march, share prescribed", ("march.py:march",), ()),
     ("march with rain worked out", ("falling.py:march_with_rain",), ()),
     ("waves: solver and transforms", ("waves.py:waves",), ()),
     ("layers, boundary, streamlines, speed", ("airflow.py:airflow", "airflow.py:joined"), ("waves.py:waves",)),
-    ("pressure", ("streams.py:_pressure",), ()),
+    ("pressure", ("passes.py:_pressure",), ()),
     ("column, stability, blocking", ("upwind.py:upwind_column", "upwind.py:blocking"), ()),
     ("lee wind, trapped waves", ("wind.py:lee_winds", "trapped.py:trapped_waves"), ()),
     ("sites: arrival, profile, popular picture", ("sites.py:site_air",), ()),
@@ -52,7 +51,17 @@ def runs() -> dict[str, Callable[[], object]]:
     fine = ridge_transect(distance, elevation, spacing=spacing, bearing=inputs.transect.bearing)
     shape = features(fine, inputs.sites[0].distance)
     ground = Ground(fine, shape, toward(fine, inputs.incoming), 1.0)
-    found: dict[str, Callable[[], object]] = {}
+    coarse = ridge_transect(
+        distance, elevation, spacing=float(np.ptp(distance)) / 511.0, bearing=ground.transect.bearing
+    )
+    grounds = Ground(coarse, features(coarse, inputs.sites[0].distance), ground.normal, 1.0)
+    warmer = np.linspace(-2.0, 2.0, MANY)[:, np.newaxis]
+    many = with_values(inputs.incoming, temperature=inputs.incoming.temperature + warmer)
+    found: dict[str, Callable[[], object]] = {
+        f"`solve`, {MANY} members, rain worked out": lambda: solve(
+            grounds, many, checked(Settings()), Lee(), members=MANY
+        )
+    }
     for name, share in (("70 % removed", 0.7), ("rain worked out", None)):
         settings = checked(replace(inputs.settings, removed_share=share))
 

@@ -67,7 +67,7 @@ def axe():
     """The accessibility engine axe-core as a script: OROLIFT_AXE names its axe.min.js."""
     path = os.environ.get("OROLIFT_AXE")
     if not path:
-        reason = "OROLIFT_AXE does not name axe.min.js (npm install --prefix /tmp/axe axe-core)"
+        reason = "OROLIFT_AXE does not name axe.min.js (npm install --prefix ../axe axe-core)"
         assert not REQUIRED, reason
         pytest.skip(reason)
     return Path(path).read_text(encoding="utf-8")

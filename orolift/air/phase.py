@@ -66,7 +66,8 @@ FUSION_SLOPE = number(SUBLIMATION_SLOPE - VAPORISATION_SLOPE)
 _VAPORISATION_FREE = number(VAPORISATION - VAPORISATION_SLOPE)
 _FUSION_FREE = number(FUSION - FUSION_SLOPE)
 _PER_RAMP = number(1.0 / np.log(c.ALL_ICE_TEMPERATURE / c.TRIPLE_POINT_TEMPERATURE))  # dx/dq, negative
-_TWO_PER_RAMP = number(2.0 * _PER_RAMP)
+_TWO_PER_RAMP, _MINUS_PER_RAMP = number(2.0 * _PER_RAMP), number(-_PER_RAMP)
+_THREE, _THRICE_FUSION_SLOPE = number(3.0), number(3.0 * FUSION_SLOPE)
 
 
 def ice_part(q: Array) -> Array:
@@ -75,29 +76,45 @@ def ice_part(q: Array) -> Array:
     return x * (2.0 - x)
 
 
+def log_saturation(q: Array, t: Array, freezing: bool) -> Array:
+    """ln(e / e_triple) over the condensate alone."""
+    w = np.reciprocal(t)
+    log_e = VAPORISATION_SLOPE * q + (_VAPORISATION_FREE - _VAPORISATION_FREE * w)
+    if not freezing or q.min() >= 0.0:
+        return log_e
+    return log_e + ice_part(q) * (FUSION_SLOPE * q + (_FUSION_FREE - _FUSION_FREE * w))
+
+
 def condensate(q: Array, t: Array, freezing: bool) -> tuple[Array, Array, Array]:
     """Saturation and latent heat over the condensate.
 
     Returns ln(e / e_triple), the entropy of vaporisation L / (Rv T) and
     the slope of the latent heat dL/dT / Rv.
     """
+    return condensate_and_bend(q, t, freezing, bend=False)[:3]
+
+
+def condensate_and_bend(q: Array, t: Array, freezing: bool, *, bend: bool = True) -> tuple[Array, Array, Array, Array]:
+    """The same, and the change of that slope with q, which is zero outside the freezing range."""
     w = np.reciprocal(t)
     free = _VAPORISATION_FREE * w
     log_e = VAPORISATION_SLOPE * q + (_VAPORISATION_FREE - free)
     bound = VAPORISATION_SLOPE + free
     if not freezing or q.min() >= 0.0:
-        return log_e, bound, VAPORISATION_SLOPE
+        return log_e, bound, VAPORISATION_SLOPE, ZERO
     x = np.minimum(np.maximum(q * _PER_RAMP, ZERO), ONE)
     y = ONE - x
     xy = x * y
     f = x + xy
     ramp = (xy > ZERO) * _TWO_PER_RAMP  # zero outside the ramp; there df/dq = ramp y, d2f/dq2 = -ramp dx/dq
     df = ramp * y
+    ddf = ramp * _MINUS_PER_RAMP
     free = _FUSION_FREE * w
     d = FUSION_SLOPE * q + (_FUSION_FREE - free)  # ln(e_ice / e_liquid)
     melting = FUSION_SLOPE + free  # Lf / (Rv T), which is dd/dq
-    slope = VAPORISATION_SLOPE + FUSION_SLOPE * f + df * (d + melting + melting) - ramp * (d * _PER_RAMP)
-    return log_e + f * d, bound + f * melting + df * d, slope
+    slope = VAPORISATION_SLOPE + FUSION_SLOPE * f + df * (d + melting + melting) + ddf * d
+    change = df * (_THRICE_FUSION_SLOPE - melting) + ddf * (d + _THREE * melting) if bend else ZERO
+    return log_e + f * d, bound + f * melting + df * d, slope, change
 
 
 def condensate_entropy(q: Array, t: Array, freezing: bool) -> Array:

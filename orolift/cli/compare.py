@@ -22,6 +22,12 @@ if TYPE_CHECKING:
 @file_option("--results", "Results to write as JSON.")
 @file_option("--table", "Table to write as CSV: one row for each estimate against an observation.")
 @click.option(
+    "--series",
+    default=None,
+    metavar="FILE",
+    help="Incoming air of many hours, as for 'orolift hours', in place of the case's own.",
+)
+@click.option(
     "--within",
     type=click.FloatRange(0.0, 1440.0),
     default=30.0,
@@ -89,7 +95,7 @@ def command(
     from orolift.report.render import render_compare
     from orolift.sources.files import csv_text, write_all
 
-    found, inputs = compared_of(cases, observed, Asked(**asked))  # type: ignore[arg-type]  # click has checked the types
+    found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
     page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
     title = inputs[0].case.title or inputs[0].path.stem
     data = compare_page(

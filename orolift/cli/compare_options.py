@@ -11,6 +11,8 @@ import numpy as np
 from orolift.errors import CaseError
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
     from orolift.cli.comparing import Asked
     from orolift.crossing.onset import OnsetRule
     from orolift.sources.observed_places import Placed
@@ -22,13 +24,13 @@ SECTOR_HALF_WIDTH = math.radians(60.0)
 EVENT = re.compile(r"\s*([a-z][a-z0-9_]*)\s*(>=|<=|>|<)\s*([-+]?\d+(?:\.\d+)?)\s*")
 
 
-def rule_of(asked: Asked, first: Estimates, put: Placed) -> tuple[OnsetRule, list[str]]:
+def rule_of(asked: Asked, estimates: Sequence[Estimates], put: Placed) -> tuple[OnsetRule, list[str]]:
     """The rule of the onset test, and notes on what is missing for it.
 
     Parameters
     ----------
     asked : Asked
-    first : Estimates
+    estimates : sequence of Estimates
     put : Placed
 
     Returns
@@ -42,7 +44,9 @@ def rule_of(asked: Asked, first: Estimates, put: Placed) -> tuple[OnsetRule, lis
     if asked.sector is not None:
         sector = sector_of(asked.sector)
     elif np.isfinite(put.seen.wind_from).any():
-        upwind = first.crossing.flow.normal + math.pi
+        bearings = np.concatenate([one.wind_from for one in estimates])
+        bearings = bearings[np.isfinite(bearings)]
+        upwind = math.atan2(float(np.sin(bearings).sum()), float(np.cos(bearings).sum()))
         sector = ((upwind - SECTOR_HALF_WIDTH) % math.tau, (upwind + SECTOR_HALF_WIDTH) % math.tau)
     else:
         notes.append("No wind direction was observed: the onset test asks for potential temperature and speed only.")

@@ -13,8 +13,8 @@ if TYPE_CHECKING:
     from orolift.report.quantities import Units
     from orolift.spread.compared import Compared
 
-MOST_VALUES = 12
-"""Values listed on the terminal; the rest is on the page."""
+MOST_VALUES = 16
+"""Values beyond which none is listed on the terminal."""
 
 
 def summary_lines(found: Compared, title: str, units: Units) -> list[str]:
@@ -32,14 +32,14 @@ def summary_lines(found: Compared, title: str, units: Units) -> list[str]:
     """
     lines = [title]
     rows = value_rows(found)
-    for row in rows[:MOST_VALUES]:
+    for row in rows if len(rows) <= MOST_VALUES else ():
         inside = {True: "inside the range", False: "outside the range", None: "no range"}[row.is_inside]
         lines.append(
             f"{row.name}: {row.quantity} {plain(row.estimate, units)}, observed {plain(row.observed, units)}, "
             f"difference {plain(row.difference, units)}, {inside}"
         )
     if len(rows) > MOST_VALUES:
-        lines.append(f"({len(rows) - MOST_VALUES} more values are on the page.)")
+        lines.append(f"{len(rows)} values compared; the page shows them.")
     for one in found.verdicts:
         if one.score.count > 1:
             kind, digits = QUANTITY_KINDS[one.quantity].difference

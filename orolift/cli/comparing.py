@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import logging
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from datetime import UTC, datetime
 from typing import TYPE_CHECKING
 
@@ -14,8 +14,7 @@ from orolift.errors import CaseError
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.crossing.result import LeeAir
-    from orolift.crossing.situation import Situation
+    from orolift.cli.compare_work import Estimated
     from orolift.sources.inputs import Inputs
     from orolift.sources.observed_places import Placed
     from orolift.spread.compared import Compared, ProfileComparison
@@ -23,11 +22,6 @@ if TYPE_CHECKING:
     from orolift.spread.explained import Explained
 
 log = logging.getLogger(__name__)
-
-FEW = 4
-"""So many crossings are worked out here: starting other processes would take longer."""
-Numbers = list[list[int | None]]
-"""For each case the number of the site of every place; None where its line does not reach the place."""
 
 
 @dataclass(frozen=True)
@@ -42,7 +36,9 @@ class Asked:
     least_wind: float
     lee_sounding: str | None
     sounding_at: str | None
+    series: str | None
     jobs: int | None
+    quiet: bool = False
 
 
 def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Compared, tuple[Inputs, ...]]:
@@ -64,6 +60,7 @@ def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Co
         If a case or the observations are at fault.
     """
     from orolift.cli.compare_options import event_of, rule_of
+    from orolift.cli.compare_work import cases_estimated, in_time, series_estimated
     from orolift.sources.inputs import read_inputs
     from orolift.sources.observed import read_observed
     from orolift.sources.observed_places import placed
@@ -74,10 +71,16 @@ def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Co
 
     events = tuple(event_of(text) for text in asked.events)
     table = read_observed(observed)
-    inputs = _in_time(tuple(read_inputs(case) for case in cases))
+    if asked.series is not None and len(cases) > 1:
+        raise CaseError("--series gives the hours over one case, and several are given. Give one.")
+    inputs = in_time(tuple(read_inputs(case) for case in cases))
     log.debug("%d rows and %d cases read", table.line.size, len(inputs))
     put = placed(table, inputs)
-    estimates, places = _estimates(put, asked.jobs)
+    if asked.series is None:
+        work = cases_estimated(put, asked.jobs)
+    else:
+        work = series_estimated(put, asked.series, asked.jobs, quiet=asked.quiet)
+    estimates = work.estimates
     log.debug("crossings worked out")
     within = 60.0 * asked.within
     which = nearest_estimates(put.seen, estimates, within)
@@ -89,9 +92,11 @@ def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Co
             f"{_times_in_words(estimates)}. Check times and zones, or widen --within."
         )
     tables, event_notes = event_tables(events, pairs)
-    thresholds, threshold_notes = rule_tables(inputs[0].fire.rules, put.seen, estimates, which)
-    rule, rule_notes = rule_of(asked, estimates[0], put)
-    cautions = (*table.cautions, *put.cautions, *_side_cautions(put, estimates, places))
+    thresholds, threshold_notes = rule_tables(
+        inputs[0].fire.rules, put.seen, estimates, which, inputs[0].settings.roughness
+    )
+    rule, rule_notes = rule_of(asked, estimates, put)
+    cautions = (*table.cautions, *put.cautions, *_side_cautions(put, work), *work.cautions)
     found = Compared(
         names=put.names,
         estimates=estimates,
@@ -102,55 +107,13 @@ def compared_of(cases: tuple[str, ...], observed: str, asked: Asked) -> tuple[Co
         verdicts=verdicts,
         events=(*tables, *thresholds),
         rule=rule,
-        onset=onset_at_places(rule, put.seen, estimates, which, places, put.elevations),
-        explained=_explained(put, places, estimates, pairs, which, asked.explain),
-        profile=_profile(asked, estimates, put),
-        notes=(*notes, *event_notes, *threshold_notes, *rule_notes),
+        onset=onset_at_places(rule, put.seen, estimates, which, put.elevations),
+        explained=_explained(put, work, pairs, which, asked.explain),
+        profile=_profile(asked, work, put),
+        notes=(*notes, *work.notes, *event_notes, *threshold_notes, *rule_notes),
         cautions=cautions,
     )
     return found, inputs
-
-
-def _in_time(inputs: tuple[Inputs, ...]) -> tuple[Inputs, ...]:
-    """Cases in order of time; several need one each, and different ones."""
-    if len(inputs) == 1:
-        return inputs
-    for one in inputs:
-        if one.case.valid_time is None:
-            raise CaseError(f"{one.path}: has no valid_time, and several cases are told apart by it. Add valid_time.")
-    ordered = tuple(sorted(inputs, key=lambda one: one.case.valid_time.timestamp() if one.case.valid_time else 0.0))
-    for one, other in zip(ordered[1:], ordered, strict=False):
-        if one.case.valid_time == other.case.valid_time:
-            raise CaseError(f"{one.path}: has the valid_time of {other.path}. Give each case its own.")
-    return ordered
-
-
-def _estimates(put: Placed, jobs: int | None) -> tuple[tuple[Estimates, ...], Numbers]:
-    """Crossings of all cases, and where each has its places; the first that fails ends the run with its name."""
-    from orolift.cli.executors import executor_of
-    from orolift.cli.site_lines import with_own_lines
-    from orolift.crossing.situation import crossing_of
-    from orolift.sources.inputs import situation_of
-    from orolift.spread.comparison import estimates_of
-    from orolift.spread.engine import in_order, outcomes
-
-    situations = [situation_of(one) for one in put.cases]
-    with executor_of(1 if len(situations) < FEW else jobs) as executor:
-        found = in_order(outcomes(crossing_of, situations, executor))
-    estimates, places = [], []
-    for outcome, one, numbers in zip(found, put.cases, put.numbers, strict=True):
-        if outcome.error is not None or outcome.value is None:
-            error = outcome.error or CaseError("no crossing")
-            error.args = (f"{one.path}: {error}",)
-            raise error
-        crossing, _ = with_own_lines(one, outcome.value, jobs=jobs, quiet=True)
-        crossing = replace(crossing, cautions=(*one.cautions, *crossing.cautions))
-        where = {air.number: i for i, air in enumerate(crossing.lee)}
-        sites = [None if number is None else where.get(number) for number in numbers]
-        time = one.case.valid_time
-        estimates.append(estimates_of(crossing, None if time is None else time.timestamp(), sites))
-        places.append(sites)
-    return tuple(estimates), places
 
 
 def _time_notes(put: Placed, estimates: tuple[Estimates, ...], which: NDArray[np.int_], minutes: float) -> list[str]:
@@ -178,15 +141,13 @@ def _times_in_words(estimates: tuple[Estimates, ...]) -> str:
     return f"the {len(estimates)} cases" if times else "the case"
 
 
-def _side_cautions(put: Placed, estimates: tuple[Estimates, ...], places: Numbers) -> list[str]:
+def _side_cautions(put: Placed, work: Estimated) -> list[str]:
     """Places that are not in the lee, and those that could not be worked out."""
-    failed = {one.name: one.reason for estimate in estimates for one in estimate.crossing.failed}
     found = []
     for i, name in enumerate(put.names):
-        pairs = [(one.crossing.lee, numbers[i]) for one, numbers in zip(estimates, places, strict=True)]
-        sides = {lee[number].side for lee, number in pairs if number is not None}
+        sides = {one.side[i] for one in work.estimates} - {None}
         if not sides:
-            found.append(f"{name} could not be worked out: {failed.get(name, 'no line leads there.')}")
+            found.append(f"{name} could not be worked out: {work.failed.get(name, 'no line leads there.')}")
         elif "lee" not in sides:
             where = "on the crest" if sides == {"crest"} else "on the windward side of the range"
             found.append(f"{name} lies {where}: it is shown, and does not count in the scores of the lee.")
@@ -195,8 +156,7 @@ def _side_cautions(put: Placed, estimates: tuple[Estimates, ...], places: Number
 
 def _explained(
     put: Placed,
-    places: Numbers,
-    estimates: tuple[Estimates, ...],
+    work: Estimated,
     pairs: dict[Quantity, Paired],
     which: NDArray[np.int_],
     name: str | None,
@@ -222,41 +182,23 @@ def _explained(
                 f"--explain: {name} has no temperature and humidity observed together in the lee near a case."
             )
         return None
-    site = places[one[0]][one[1]]
-    if site is None:
+    source = work.source(*one)
+    if source is None:
         return None
-    air = estimates[one[0]].crossing.lee[site]
-    log.debug("explaining %s", air.name)
-    situation, number = _line_of(put.cases[one[0]], air)
-    return explained(one, put.seen, which, estimates, air, situation, number)
+    log.debug("explaining %s", source.air.name)
+    return explained(one, put.seen, which, source)
 
 
-def _line_of(inputs: Inputs, air: LeeAir) -> tuple[Situation, int]:
-    """The situation an estimate comes from, and the number of its site there."""
-    from orolift.sources.inputs import situation_of
-
-    if air.own is None:
-        on_line = [number for number, place in enumerate(inputs.places, start=1) if place.on_line]
-        return situation_of(inputs), on_line.index(air.number)
-    from orolift.sources.site_lines import site_groups
-
-    for group in site_groups(inputs):
-        numbers = [site.number for site in group.sites]
-        if air.number in numbers and group.situation is not None:
-            return group.situation, numbers.index(air.number)
-    raise CaseError(f"{inputs.path}: the line of {air.name} is gone")
-
-
-def _profile(asked: Asked, estimates: tuple[Estimates, ...], put: Placed) -> ProfileComparison | None:
+def _profile(asked: Asked, work: Estimated, put: Placed) -> ProfileComparison | None:
     """The lee sounding against the estimate over a place of the comparison."""
     if asked.lee_sounding is None:
         return None
-    if len(estimates) > 1:
-        raise CaseError("--lee-sounding is held against one case, and several are given. Run it once for each.")
+    if not work.airs:
+        raise CaseError("--lee-sounding is held against one case, and several or a series are given. Run it for one.")
     from orolift.sources.sounding_air import air_from_sounding, read_any_sounding
     from orolift.spread.compared import profile_comparison
 
-    lee = estimates[0].crossing.lee
+    lee = work.airs
     air = next((air for air in lee if air.side == "lee"), lee[0])
     if asked.sounding_at is not None:
         named = [one for one in lee if one.name.casefold() == asked.sounding_at.casefold()]

@@ -11,20 +11,23 @@ from typing import TYPE_CHECKING
 
 import click
 
+from orolift.cli.lee_map import lee_files, mapped_lee
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
-from orolift.cli.outputs import Outputs
+from orolift.cli.outputs import Outputs, refuse_together
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
-from orolift.errors import CaseError, OroliftError
+from orolift.cli.spreading import Workers, spread_for
 
 if TYPE_CHECKING:
-    from orolift.crossing.result import Crossing
+    from orolift.crossing.result import Crossing, LeeAir
     from orolift.crossing.situation import Situation
     from orolift.fire.sites import SiteFire
     from orolift.report.quantities import Units
     from orolift.sources.inputs import Inputs
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.results import Results
+    from orolift.sources.strips import MappedLee
     from orolift.spread.sites import GroupAir
+    from orolift.spread.spread import Spread
 
 log = logging.getLogger(__name__)
 
@@ -39,7 +42,9 @@ class Worked:
     mapped: Mapped | None
     flags: tuple[str, ...]
     fire: tuple[SiteFire, ...]
+    lee: MappedLee | None
     results: Results
+    spread: Spread | None
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
@@ -49,14 +54,17 @@ class Worked:
 @file_option("--table", "Table to write as CSV, one row a site.")
 @file_option("--geojson", "Sites to write as GeoJSON points.")
 @click.option("--maps", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps: rate, total, rain and snow.")
+@click.option(
+    "--lee-map", default=None, metavar="FOLDER", help="Folder for GeoTIFF maps of the lee, shown in the report."
+)
 @file_option("--catchments", "Catchments to write as CSV.")
 @file_option("--gauges", "Gauges to write as CSV, map beside observation.")
 @file_option("--fit", "TOML to write with the times fitted to the gauges; the case needs fit = true.")
-@JOBS_OPTION
-@SCHEDULER_OPTION
 @click.option(
     "--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page: several cases."
 )
+@JOBS_OPTION
+@SCHEDULER_OPTION
 @UNITS_OPTION
 @QUIET_OPTION
 @VERBOSE_OPTION
@@ -66,9 +74,9 @@ def command(
     report: str | None,
     results: str | None,
     table: str | None,
+    folder: str | None,
     jobs: int | None,
     scheduler: str | None,
-    folder: str | None,
     units: Units,
     quiet: bool,
     **rain: str | None,
@@ -76,17 +84,19 @@ def command(
     """Work out the crossing of each CASE and write its report."""
     files = RainFiles(**rain)
     named = {"--report": report, "--results": results, "--table": table, **files.asked()}
-    _refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
+    refuse_together([option for option, value in named.items() if value is not None], len(cases), folder)
     outputs = Outputs()
     for case in cases:
         outputs.keep(case, "a case")
-    work = Work(jobs, scheduler, quiet)
+    work = Workers(jobs, scheduler, quiet)
     if folder is not None:
-        summaries = _into_folder(cases, Path(folder), units, outputs, work)
+        from orolift.cli.folder import into_folder
+
+        summaries = into_folder(cases, Path(folder), units, outputs, work)
     else:
         wanted = Wanted(report, results, table, files)
         summaries = [_one_by_one(case, wanted, units, outputs, work) for case in cases]
-    _write(outputs, folder)
+    outputs.write(None if folder is None else Path(folder))
     if not quiet:
         _say(summaries, units)
         if folder is not None:
@@ -103,29 +113,21 @@ class Wanted:
     rain: RainFiles
 
 
-def _refuse_together(given: list[str], cases: int, folder: str | None) -> None:
-    """Say which options cannot be met together."""
-    for option in given:
-        if folder is not None:
-            raise CaseError(f"--folder writes everything there is; leave {option} out, or leave --folder out.")
-        if cases > 1 and option != "--maps":
-            raise CaseError(
-                f"{option} takes one case, and {cases} are given. Run it once for each case, or give --folder."
-            )
-
-
-def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Work) -> tuple[Worked, Path]:
+def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Workers) -> tuple[Worked, Path]:
     """Work out a case and take in the files asked for."""
     worked = work_out(case, wanted.rain, work)
     page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
     outputs.add(page, report_of(worked, units).encode(), "--report" if wanted.report else f"the report of {case}")
-    _add_results(worked, wanted.results, wanted.table, outputs)
+    add_results(worked, wanted.results, wanted.table, outputs)
     for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
         outputs.add(path, content, option)
+    for path, content in lee_files(wanted.rain.lee_map, worked.inputs, worked.lee).items():
+        outputs.add(path, content, "--lee-map")
     return worked, page
 
 
-def _add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+def add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+    """Take in the results and the table of the sites, each where it is asked for."""
     from orolift.sources.files import csv_text
     from orolift.sources.site_table import site_rows
 
@@ -135,67 +137,21 @@ def _add_results(worked: Worked, results: str | None, table: str | None, outputs
         outputs.add(table, csv_text(*site_rows(worked.results)).encode(), "--table")
 
 
-def _into_folder(
-    cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Work
-) -> list[tuple[Worked, Path]]:
-    """Work out cases and take in everything they give, and the index."""
-    from orolift.cli.folder import all_rain_files, entry, index_html
-
-    summaries, entries = [], []
-    for case in cases:
-        before = set(outputs.contents)
-        worked = work_out(case, work=work)
-        stem = folder / worked.inputs.path.stem
-        page = Path(f"{stem}.html")
-        outputs.add(page, report_of(worked, units).encode(), f"the report of {case}")
-        _add_results(worked, f"{stem}.json", f"{stem}.csv", outputs)
-        wanted = all_rain_files(worked, folder)
-        for path, (content, _) in rain_files(wanted, worked.inputs, worked.mapped, worked.results).items():
-            outputs.add(path, content, f"a file of {case}")
-        entries.append(entry(worked, page, [path for path in outputs.contents if path not in before and path != page]))
-        summaries.append((worked, page))
-    outputs.add(folder / "index.html", index_html(entries, units).encode(), "the index")
-    return summaries
-
-
-def _write(outputs: Outputs, folder: str | None) -> None:
-    """Write all that was taken in; a folder that had to be made for it goes when nothing is written."""
-    from orolift.cli.folder import made
-    from orolift.sources.files import write_all
-
-    new = folder is not None and made(Path(folder))
-    try:
-        write_all(outputs.contents)
-    except OroliftError:
-        if new and folder is not None:
-            Path(folder).rmdir()
-        raise
-    log.debug("written: %s", ", ".join(map(str, outputs.contents)))
-
-
 def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
     """A few lines on each case."""
-    from orolift.cli.summary import summary_lines
+    from orolift.cli.summary import members_words, summary_lines
 
     for worked, page in summaries:
-        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units)
-        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}"]))
+        lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units, worked.spread)
+        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.spread)}"]))
 
 
-@dataclass(frozen=True)
-class Work:
-    """Where many crossings are worked out, and whether progress is shown; as for `orolift.cli.executors`."""
-
-    jobs: int | None = None
-    scheduler: str | None = None
-    quiet: bool = True
-
-
-def work_out(case: str, files: RainFiles | None = None, work: Work | None = None) -> Worked:
-    """A case read, its crossing worked out, and the rain over its map; refused where a file asked for cannot be."""
+def work_out(case: str, files: RainFiles | None = None, workers: Workers | None = None) -> Worked:
+    """A case read, its crossing, its members, and the rain over its map; refused where a file asked for cannot be."""
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import read_inputs, situation_of
     from orolift.sources.results import results_of
+    from orolift.spread.ranges import remarks
 
     inputs = read_inputs(case)
     situation = situation_of(inputs)
@@ -212,11 +168,15 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     log.debug("crossing worked out")
     own = crossing
     parts: tuple[GroupAir, ...] = ()
+    workers = workers or Workers(quiet=True)
     if inputs.case.terrain.elevation_file is not None:
         from orolift.cli.site_lines import with_own_lines
 
-        work = work or Work()
-        crossing, parts = with_own_lines(inputs, crossing, jobs=work.jobs, scheduler=work.scheduler, quiet=work.quiet)
+        crossing, parts = with_own_lines(
+            inputs, crossing, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet
+        )
+    spread = spread_for(inputs, situation, crossing, workers)
+    doubts = (*doubts, *(() if spread is None else remarks(spread)))
     mapped, more = map_of(found, inputs, crossing, needed=needed)
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
@@ -224,17 +184,20 @@ def work_out(case: str, files: RainFiles | None = None, work: Work | None = None
     crossing = replace(
         crossing, cautions=(*inputs.cautions, *crossing.cautions, *doubts, *more), notes=(*crossing.notes, *notes)
     )
+    lee = None
+    if files.lee_map is not None:
+        lee = mapped_lee(inputs, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet)
     flags = flags_of(inputs, crossing, mapped)
-    fire, reached, to_know = fire_of(inputs, own, crossing, parts)
+    fire, reached, to_know = fire_of(inputs, own, crossing, parts, spread)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
-    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places)
-    return Worked(inputs, situation, crossing, mapped, flags, fire, results)
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results, spread)
 
 
 def fire_of(
-    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...]
+    inputs: Inputs, own: Crossing, crossing: Crossing, parts: tuple[GroupAir, ...], spread: Spread | None = None
 ) -> tuple[tuple[SiteFire, ...], tuple[str, ...], tuple[str, ...]]:
-    """Fire weather at the sites, the thresholds met in sentences, and what to know about them."""
+    """Fire weather at the sites, with chances by the members; thresholds met in sentences, what to know about them."""
     from orolift.fire.flags import fire_flags, windward_cautions
     from orolift.fire.sites import fire_at_sites
     from orolift.spread.sites import fire_by_number
@@ -242,8 +205,21 @@ def fire_of(
     at_own = fire_at_sites(own, inputs.when, inputs.fire)
     by_number = fire_by_number(crossing, at_own, parts)
     found = tuple(by_number[air.number] for air in crossing.lee)
+    if spread is not None and spread.crosses.any():
+        found = tuple(
+            _with_chances(one, air, inputs, crossing, spread) for one, air in zip(found, crossing.lee, strict=True)
+        )
     rules = inputs.fire.rules
     return found, fire_flags(found, rules), windward_cautions(found, rules)
+
+
+def _with_chances(one: SiteFire, air: LeeAir, inputs: Inputs, crossing: Crossing, spread: Spread) -> SiteFire:
+    """Fire weather of a site judged on the members, the error of the method included."""
+    from orolift.fire.chances import with_members
+    from orolift.spread.at_sites import members_at
+
+    arrays = members_at(spread, crossing, air)
+    return one if arrays is None else with_members(one, arrays, inputs.fire, crossing.settings.roughness)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
@@ -288,9 +264,11 @@ def report_of(worked: Worked, units: Units) -> str:
         case_text=worked.inputs.text,
         units=units,
         mapped=worked.mapped,
+        lee=worked.lee,
         flags=worked.flags,
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
+        spread=worked.spread,
         fire=worked.fire,
         rules=worked.inputs.fire.rules,
     )

@@ -2,16 +2,17 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import TYPE_CHECKING
 
-from orolift.cli.over_map import RainFiles
-from orolift.errors import MissingFileError
+from orolift.cli.over_map import RainFiles, rain_files
 
 if TYPE_CHECKING:
     from collections.abc import Iterable
-    from pathlib import Path
 
     from orolift.cli.cross import Worked
+    from orolift.cli.outputs import Outputs
+    from orolift.cli.spreading import Workers
     from orolift.report.index import Entry
     from orolift.report.quantities import Units
 
@@ -21,6 +22,44 @@ SAID = {
     "geojson": "sites on the map",
     "toml": "fitted times",
 }
+
+
+def into_folder(
+    cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Workers
+) -> list[tuple[Worked, Path]]:
+    """Work out cases, and take in everything they give and the index.
+
+    Parameters
+    ----------
+    cases : tuple of str
+    folder : Path
+    units : 'metric' or 'us'
+    outputs : Outputs
+        Takes in the files.
+    work : Workers
+
+    Returns
+    -------
+    list of (Worked, Path)
+        Each case and its page.
+    """
+    from orolift.cli.cross import add_results, report_of, work_out
+
+    summaries, entries = [], []
+    for case in cases:
+        before = set(outputs.contents)
+        worked = work_out(case, workers=work)
+        stem = folder / worked.inputs.path.stem
+        page = Path(f"{stem}.html")
+        outputs.add(page, report_of(worked, units).encode(), f"the report of {case}")
+        add_results(worked, f"{stem}.json", f"{stem}.csv", outputs)
+        wanted = all_rain_files(worked, folder)
+        for path, (content, _) in rain_files(wanted, worked.inputs, worked.mapped, worked.results).items():
+            outputs.add(path, content, f"a file of {case}")
+        entries.append(entry(worked, page, [path for path in outputs.contents if path not in before and path != page]))
+        summaries.append((worked, page))
+    outputs.add(folder / "index.html", index_html(entries, units).encode(), "the index")
+    return summaries
 
 
 def all_rain_files(worked: Worked, folder: Path) -> RainFiles:
@@ -102,22 +141,3 @@ def index_html(entries: Iterable[Entry], units: Units) -> str:
     found = tuple(entries)
     page = index_of(found, title="Crossings side by side", made_at=made_now(), version=__version__, units=units)
     return render(page, "index.html.jinja")
-
-
-def made(folder: Path) -> bool:
-    """Whether a folder had to be made; it is there afterwards.
-
-    Raises
-    ------
-    MissingFileError
-        If it cannot be made.
-    """
-    if folder.is_dir():
-        return False
-    try:
-        folder.mkdir()
-    except OSError as error:
-        raise MissingFileError(
-            f"--folder: {folder} cannot be made ({error.strerror}). Name a new folder in one that exists."
-        ) from error
-    return True

@@ -78,6 +78,8 @@ def command(
         setup.series.step,
         planned=setup.series.time.size,
         catchments=() if ground is None else [one.name for one in ground.catchments],
+        fire=setup.inputs.fire,
+        wind_error=setup.wind_error,
     )
     write_all(contents_of(hours, setup, units, files))
     if not quiet:

@@ -2,10 +2,13 @@
 
 from __future__ import annotations
 
+import logging
 import os
 from pathlib import Path
 
-from orolift.errors import CaseError
+from orolift.errors import CaseError, MissingFileError
+
+log = logging.getLogger(__name__)
 
 
 class Outputs:
@@ -59,6 +62,66 @@ class Outputs:
             raise CaseError(f"{what}: {path} is already {self._taken[place]}. Nothing is written; give another name.")
         self._taken[place] = f"what {what} writes"
         self.contents[Path(path)] = content
+
+    def write(self, folder: Path | None) -> None:
+        """Write all that was taken in, or nothing.
+
+        Parameters
+        ----------
+        folder : Path or None
+            Made for it when it is not there; gone again when nothing is written.
+
+        Raises
+        ------
+        MissingFileError
+            If something cannot be written.
+        """
+        from orolift.sources.files import write_all
+
+        new = folder is not None and _made(folder)
+        try:
+            write_all(self.contents)
+        except MissingFileError:
+            if new and folder is not None:
+                folder.rmdir()
+            raise
+        log.debug("written: %s", ", ".join(map(str, self.contents)))
+
+
+def refuse_together(given: list[str], cases: int, folder: str | None) -> None:
+    """Say which options cannot be met together.
+
+    Parameters
+    ----------
+    given : list of str
+        Options that name a file.
+    cases : int
+    folder : str or None
+
+    Raises
+    ------
+    CaseError
+    """
+    for option in given:
+        if folder is not None:
+            raise CaseError(f"--folder writes everything there is; leave {option} out, or leave --folder out.")
+        if cases > 1 and option not in {"--maps", "--lee-map"}:
+            raise CaseError(
+                f"{option} takes one case, and {cases} are given. Run it once for each case, or give --folder."
+            )
+
+
+def _made(folder: Path) -> bool:
+    """Whether a folder had to be made; it is there afterwards."""
+    if folder.is_dir():
+        return False
+    try:
+        folder.mkdir()
+    except OSError as error:
+        raise MissingFileError(
+            f"--folder: {folder} cannot be made ({error.strerror}). Name a new folder in one that exists."
+        ) from error
+    return True
 
 
 def _place(path: str | Path) -> str:

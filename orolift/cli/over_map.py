@@ -33,6 +33,8 @@ class RainFiles:
         The sites as points.
     fit : str or None
         TOML with the fitted values.
+    lee_map : str or None
+        Folder for GeoTIFF maps of the lee.
     """
 
     maps: str | None = None
@@ -40,6 +42,7 @@ class RainFiles:
     gauges: str | None = None
     geojson: str | None = None
     fit: str | None = None
+    lee_map: str | None = None
 
     def asked(self) -> dict[str, str]:
         """Options given, and their values."""
@@ -49,6 +52,7 @@ class RainFiles:
             "--gauges": self.gauges,
             "--geojson": self.geojson,
             "--fit": self.fit,
+            "--lee-map": self.lee_map,
         }
         return {option: value for option, value in values.items() if value is not None}
 
@@ -68,12 +72,15 @@ def refuse_what_cannot_be(wanted: RainFiles, inputs: Inputs) -> None:
         "--catchments": (case.catchments is not None, "[catchments]: name their file there"),
         "--gauges": (case.gauges is not None, "[gauges]: name their file there"),
         "--geojson": (with_raster, "elevation_file: a hand-entered ridge puts no site on the map"),
+        "--lee-map": (with_raster, "elevation_file: a hand-entered ridge has no map"),
         "--fit": (case.gauges is not None and case.gauges.fit, "[gauges] with fit = true: nothing is fitted unasked"),
     }
     for option in wanted.asked():
         possible, what = lacks[option]
         if not possible:
             raise CaseError(f"{path}: {option} cannot be written: the case has no {what}.")
+    if wanted.lee_map is not None and not Path(wanted.lee_map).is_dir():  # it takes a minute: say so before
+        raise CaseError(f"--lee-map {wanted.lee_map} is not a folder. Make it first.")
 
 
 def map_inputs_of(inputs: Inputs, *, needed: bool = False) -> tuple[MapInputs | None, tuple[str, ...]]:

@@ -4,23 +4,30 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from orolift.report.quantities import quantity
-from orolift.report.words import moment
+from orolift.report.quantities import Amount
+from orolift.report.spans import Spans, ranged
+from orolift.report.words import moment, plain
 
 if TYPE_CHECKING:
-    from collections.abc import Callable
+    from typing import Protocol
 
     from orolift.crossing.result import Crossing, LeeAir
     from orolift.report.quantities import Kind, Units
     from orolift.sources.case_model import Case
+    from orolift.spread.spread import Spread
 
-    Said = Callable[[float, Kind, int], str]
+    class Said(Protocol):
+        """A number in words, with its range."""
+
+        def __call__(self, value: float, kind: Kind, digits: int = 0, ends: tuple[float, float] | None = None) -> str:
+            """Text of the number."""
+
 
 MOST_SITES = 3
 """Sites shown on the terminal; the table and the report have all."""
 
 
-def summary_lines(crossing: Crossing, case: Case, name: str, units: Units) -> list[str]:
+def summary_lines(crossing: Crossing, case: Case, name: str, units: Units, spread: Spread | None = None) -> list[str]:
     """What happened, in at most ten lines.
 
     Parameters
@@ -30,14 +37,17 @@ def summary_lines(crossing: Crossing, case: Case, name: str, units: Units) -> li
     name : str
         Stands for a missing title.
     units : 'metric' or 'us'
+    spread : Spread, optional
+        Members, for the ranges.
 
     Returns
     -------
     list of str
     """
+    spans = Spans(crossing, spread)
 
-    def said(value: float, kind: Kind, digits: int = 0) -> str:
-        return quantity(value, kind, digits, units).replace("\u00a0", " ")
+    def said(value: float, kind: Kind, digits: int = 0, ends: tuple[float, float] | None = None) -> str:
+        return plain(ranged(Amount(value, kind, digits), ends), units).replace("\u00a0", " ")
 
     shape, air = crossing.features, crossing.incoming
     when = "" if case.valid_time is None else f", {moment(case.valid_time)}"
@@ -49,53 +59,71 @@ def summary_lines(crossing: Crossing, case: Case, name: str, units: Units) -> li
         ),
         (
             f"Incoming  {said(float(air.temperature[0]), 'temperature', 1)} at {said(float(air.height[0]), 'height')}; "
-            f"{said(crossing.flow.crest_wind, 'wind', 0)} across the crest"
+            f"{said(crossing.flow.crest_wind, 'wind', 0, spans.of('cross_range_wind'))} across the crest"
         ),
-        f"Flow      {_flow(crossing, said)}",
-        f"Cloud     {_cloud(crossing, said)}",
-        f"Rain      {_rain(crossing, said)}",
+        f"Flow      {_flow(spans, said)}",
+        f"Cloud     {_cloud(spans, said)}",
+        f"Rain      {_rain(spans, said)}",
     ]
-    lines += [_site(site, said) for site in crossing.lee[:MOST_SITES]]
+    lines += [_site(spans, site, said) for site in crossing.lee[:MOST_SITES]]
     if len(crossing.lee) > MOST_SITES:
         lines[-1] = f"          and {len(crossing.lee) - MOST_SITES + 1} more sites: see the report or --table"
     return lines
 
 
-def _cloud(crossing: Crossing, said: Said) -> str:
-    cloud = crossing.cloud
+def members_words(spread: Spread | None) -> str:
+    """What the ranges are, for the last line; empty without members."""
+    if spread is None:
+        return ""
+    lost = f", {len(spread.failed)} failed" if spread.failed else ""
+    still = spread.members - len(spread.failed) - int(spread.crosses.sum())
+    calm = f", {still} without a crossing" if still else ""
+    return f"; ranges: 10 to 90 % of {spread.members} members{calm}{lost}"
+
+
+def _cloud(spans: Spans, said: Said) -> str:
+    cloud = spans.crossing.cloud
     if cloud.base is None:
         return "none forms: the air stays unsaturated all the way"
     end = "" if cloud.end is None else f", ends at {said(cloud.end, 'height', -1)} in the lee"
-    return f"base at {said(cloud.base, 'height', -1)} on the windward side{end}"
+    return f"base at {said(cloud.base, 'height', -1, spans.of('cloud_base'))} on the windward side{end}"
 
 
-def _flow(crossing: Crossing, said: Said) -> str:
-    flow = crossing.flow
-    if flow.blocked_top <= crossing.features.base + 1.0:
-        return f"{flow.regime} (N h/U {flow.nondimensional_height:.1f}); no layer is stopped"
-    return (
-        f"{flow.regime} (N h/U {flow.nondimensional_height:.1f}); blocked up to {said(flow.blocked_top, 'height', -1)} "
-        f"({said(flow.blocked_top_low, 'height', -1)} to {said(flow.blocked_top_high, 'height', -1)})"
-    )
+def _flow(spans: Spans, said: Said) -> str:
+    flow = spans.crossing.flow
+    number = f"N h/U {flow.nondimensional_height:.1f}"
+    if flow.blocked_top <= spans.crossing.features.base + 1.0:
+        return f"{flow.regime} ({number}); no layer is stopped"
+    ends = spans.of("blocked_top") or (flow.blocked_top_low, flow.blocked_top_high)
+    return f"{flow.regime} ({number}); blocked up to {said(flow.blocked_top, 'height', -1, ends)}"
 
 
-def _rain(crossing: Crossing, said: Said) -> str:
-    water = crossing.water
+def _rain(spans: Spans, said: Said) -> str:
+    crossing, water = spans.crossing, spans.crossing.water
     if water.condensed == 0.0:
         return "none: nothing condenses"
     windward = crossing.rain.windward_share
-    side = "" if windward is None else f", {said(windward, 'share', 0)} of it on the windward side"
+    side = (
+        ""
+        if windward is None
+        else f"; {said(windward, 'share', 0, spans.of('windward_share'))} of it on the windward side"
+    )
     return (
-        f"{said(water.removed / water.vapour_in, 'share', 0)} of the crossing vapour rains out "
-        f"({said(water.removed / water.condensed, 'share', 0)} of what condenses){side}"
+        f"{said(water.removed / water.vapour_in, 'share', 0, spans.drying())} of the crossing vapour rains out, "
+        f"{said(water.removed / water.condensed, 'share', 0, spans.of('rain_out_share'))} of what condenses{side}"
     )
 
 
-def _site(site: LeeAir, said: Said) -> str:
-    change = said(site.warming, "temperature_change", 1)
-    source = "in the cold pool" if site.source_level is None else f"from {said(site.source_level, 'height', -1)}"
+def _site(spans: Spans, site: LeeAir, said: Said) -> str:
+    change = said(site.warming, "temperature_change", 1, spans.at(site, "warming"))
+    source = (
+        "in the cold pool"
+        if site.source_level is None
+        else f"from {said(site.source_level, 'height', -1, spans.at(site, 'source_level'))}"
+    )
     return (
-        f"{site.name[:24]} ({site.side})  {said(site.temperature, 'temperature', 1)}, "
-        f"dew point {said(site.dew_point, 'temperature', 1)}, {said(site.relative_humidity, 'share', 0)}; "
+        f"{site.name[:24]} ({site.side})  {said(site.temperature, 'temperature', 1, spans.temperature(site))}, "
+        f"dew point {said(site.dew_point, 'temperature', 1, spans.dew_point(site))}, "
+        f"{said(site.relative_humidity, 'share', 0, spans.at(site, 'relative_humidity'))}; "
         f"{change}; air {source}"
     )

@@ -250,7 +250,7 @@ def arrival(
     weighted = mean((1.0 - round_share) * parts.arrived + round_share * low_t)
     p = p_up[:, 0]
     mixed = equilibrium_from_enthalpy(p, heat, water, freezing=freezing)
-    heated = _changed(mixed, heating, moistening, freezing=freezing)
+    heated = with_ground(mixed, heating, moistening, freezing=freezing)
     water = heated.vapour + heated.cloud
     lee_pressure = pressure_at(here, np.broadcast_to(elevation, (members, 1)))[:, 0]
     air = equilibrium_from_entropy(lee_pressure, entropy(heated, freezing=freezing), water, freezing=freezing)
@@ -303,11 +303,23 @@ def lee_profile(
     total = (1.0 - share) * water + share * (low.vapour + low.cloud)
     heat = (1.0 - share) * enthalpy(crossing, freezing=freezing) + share * low_heat
     mixed = equilibrium_from_enthalpy(pressure, heat, total, freezing=freezing)
-    return _changed(mixed, heating, moistening, freezing=freezing)
+    return with_ground(mixed, heating, moistening, freezing=freezing)
 
 
-def _changed(air: Parcel, warming: Array, moistening: Array | None, *, freezing: bool) -> Parcel:
-    """Air with heat and vapour of the ground added at constant pressure; what it does to cloud follows."""
+def with_ground(air: Parcel, warming: Array, moistening: Array | None, *, freezing: bool) -> Parcel:
+    """Air with heat and vapour of the ground added at constant pressure; what it does to cloud follows.
+
+    Parameters
+    ----------
+    air : Parcel, any shape
+    warming : ndarray, broadcast with it [K]
+    moistening : ndarray or None, broadcast with it [kg per kg of dry air]
+    freezing : bool
+
+    Returns
+    -------
+    Parcel, broadcast shape
+    """
     vapour = air.vapour if moistening is None else np.maximum(air.vapour + moistening, 0.0)
     raw = Parcel(air.pressure, air.temperature + warming, vapour, air.cloud)
     return equilibrium_from_enthalpy(

@@ -50,7 +50,7 @@ def cross(
     stagnant_top: float | None = None,
     background: float = 0.0,
     streamlines: int = 60,
-    ends_too: bool = True,
+    in_full: bool = True,
 ) -> Crossing:
     """Incoming air taken over a transect.
 
@@ -78,9 +78,9 @@ def cross(
         Rain that falls anyway.
     streamlines : int
         How many, 20 or more.
-    ends_too : bool
-        Whether the ends without blocking and with full blocking are worked out beside the answer. False saves
-        their time, and they are then the answer itself.
+    in_full : bool
+        False leaves out what many crossings do without: the ends without blocking and with full blocking are then
+        the answer itself, and trapped waves are not looked for.
 
     Returns
     -------
@@ -104,16 +104,24 @@ def cross(
     """
     settings, when, lee = checked(settings or Settings()), when or When(), lee or Lee()
     shape = features(transect, sites[0].distance if sites else None)
-    ground = _ground(transect, shape, incoming, normal, when)
-    ground = replace(ground, lowest_pass=lowest_pass, crest_line=crest_line, stagnant_top=stagnant_top)
+    ground = ground_under(
+        transect,
+        shape,
+        incoming,
+        normal,
+        when,
+        lowest_pass=lowest_pass,
+        crest_line=crest_line,
+        stagnant_top=stagnant_top,
+    )
     crest_wind = crest_component(incoming, ground.normal, shape.crest)
     sites = sites or (Site("Lee foot", shape.lee_foot_distance),)
-    tried, members = (ends(settings), 3) if ends_too else (settings, 1)
+    tried, members = (ends(settings), 3) if in_full else (settings, 1)
     solution = solve(ground, incoming, tried, lee, members=members, streamlines=streamlines)
     solution.going_round[1:] = 0.0
     streams = solution.streams
     air = March(**{key: getattr(streams.air, key)[:, 0, :] for key in March.__dataclass_fields__})
-    flow = flow_facts(ground, solution, crest_wind, settings, lee, when)
+    flow = flow_facts(ground, solution, crest_wind, settings, lee, when, trapped=in_full)
     height = streams.flow.heights[0][:, streams.place].T
     winds = lee_winds(ground, solution, crest_wind, flow.pressure_difference)
     cloud = clouds(solution, transect.distance, shape, freezing=settings.freezing)
@@ -154,14 +162,39 @@ LEAST_VAPOUR = 1e-8
 """Vapour [kg per kg] below which a dew point is that of this much."""
 
 
-def _ground(
+def ground_under(
     transect: Transect,
     shape: Features,
     incoming: IncomingAir,
     normal: RangeNormal | None,
     when: When,
+    *,
+    lowest_pass: float | None = None,
+    crest_line: CrestLine | None = None,
+    stagnant_top: float | None = None,
 ) -> Ground:
-    """Terrain with its normal; the transect's own direction where the ground has none."""
+    """Terrain with its normal; the transect's own direction where the ground has none.
+
+    Parameters
+    ----------
+    transect : Transect
+    shape : Features
+    incoming : IncomingAir
+        Of one member.
+    normal : RangeNormal or None
+    when : When
+    lowest_pass, crest_line, stagnant_top
+        As for `cross`.
+
+    Returns
+    -------
+    Ground
+
+    Raises
+    ------
+    NoCrossingError
+        If the transect runs along the range.
+    """
     along = toward(transect, incoming)
     bearing = along if normal is None or normal.coherence < LEAST_COHERENCE else normal.bearing
     cosine = float(np.cos(bearing - along))
@@ -171,7 +204,16 @@ def _ground(
             f"the air does not cross: the line runs along the range, {off:.0f} degrees off the direction across it "
             f"({np.degrees(bearing):.0f} degrees). Check the wind direction, or give range_normal_deg in [flow]."
         )
-    return Ground(transect, shape, bearing, cosine, latitude=when.latitude)
+    return Ground(
+        transect,
+        shape,
+        bearing,
+        cosine,
+        lowest_pass=lowest_pass,
+        crest_line=crest_line,
+        latitude=when.latitude,
+        stagnant_top=stagnant_top,
+    )
 
 
 def toward(transect: Transect, incoming: IncomingAir) -> float:

@@ -122,7 +122,25 @@ class Valley:
     mixing_depth: tuple[float, float]
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
+class Track:
+    """What air from every source level gives, with one share and the usual depth; arrays (n,).
+
+    Attributes
+    ----------
+    removed_share : float [1]
+    source_level : ndarray [m above sea level]
+    temperature : ndarray [K]
+    mixing_ratio : ndarray [kg per kg of dry air]
+    """
+
+    removed_share: float
+    source_level: Array
+    temperature: Array
+    mixing_ratio: Array
+
+
+@dataclass(frozen=True, eq=False)
 class Explanation:
     """What would explain one observation.
 
@@ -135,12 +153,15 @@ class Explanation:
         The best there is, whether it reproduces the observation or not.
     bounds : (float, float) [m above sea level]
         Source levels looked at.
+    tracks : tuple of Track
+        Air of every level with nothing removed, the usual share, and all removed.
     """
 
     observed: Observed
     valleys: tuple[Valley, ...]
     nearest: Way
     bounds: tuple[float, float]
+    tracks: tuple[Track, ...]
 
 
 def lee_air_from_source(
@@ -247,7 +268,14 @@ def explanation(path: Path, observed: Observed, usual: tuple[float, float] = (0.
     lowest = np.unravel_index(int(np.argmin(misfit)), misfit.shape)
     start = (float(levels[lowest[0]]), float(shares[lowest[1]]), float(fine[2][lowest[2]]))
     nearest = _refined(path, observed, start, bounds, usual, 0.0)
-    return Explanation(observed, _valleys(path, observed, misfit, fine, usual), nearest, bounds)
+    valleys = _valleys(path, observed, misfit, fine, usual)
+    tracks = tuple(_track(path, axes[0], share, usual[1]) for share in sorted({0.0, usual[0], 1.0}))
+    return Explanation(observed, valleys, nearest, bounds, tracks)
+
+
+def _track(path: Path, levels: Array, share: float, depth: float) -> Track:
+    air, _ = lee_air_from_source(path, levels, share, depth)
+    return Track(share, levels, air.temperature, air.vapour)
 
 
 def _axes(path: Path) -> tuple[Array, Array, Array]:

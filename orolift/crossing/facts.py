@@ -87,6 +87,41 @@ def clouds(solution: Solution, distance: Array, shape: Features, *, freezing: bo
     return Cloud(base, base_distance, end, end_distance)
 
 
+def cloud_bases(solution: Solution, shape: Features, distance: Array, *, freezing: bool = True) -> Array:
+    """Cloud base of every member, as `clouds` gives it of the first.
+
+    Parameters
+    ----------
+    solution : Solution
+    shape : Features
+    distance : ndarray (nx,) [m]
+        Of the transect's points.
+    freezing : bool
+
+    Returns
+    -------
+    ndarray (m,) [m above sea level]
+        NaN without cloud.
+    """
+    streams = solution.streams
+    x, air = distance[streams.place], streams.air
+    up = slice(0, int(np.argmin(np.abs(x - shape.crest_distance))) + 1)
+    height = np.moveaxis(streams.flow.heights[..., streams.place[up]], -1, 0)
+    wet = (air.cloud[up] + air.condensed[up]) > 0.0
+    now = np.argmax(wet, axis=0)[np.newaxis]
+    before = np.maximum(now - 1, 0)
+
+    def excess(at: NDArray[np.intp]) -> Array:
+        p, t, v = (np.take_along_axis(y[up], at, axis=0)[0] for y in (air.pressure, air.temperature, air.vapour))
+        return np.asarray(v / saturation_mixing_ratio(p, t, freezing=freezing) - 1.0)
+
+    short, reached = excess(before), excess(now)
+    share = np.clip(-short / np.maximum(reached - short, 1e-12), 0.0, 1.0)
+    z0, z1 = (np.take_along_axis(height, at, axis=0)[0] for at in (before, now))
+    base = np.min(np.where(wet.any(axis=0), z0 + share * (z1 - z0), np.inf), axis=-1)
+    return np.where(np.isfinite(base), base, np.nan)
+
+
 def _excess(solution: Solution, *, freezing: bool) -> Array:
     """Vapour over saturation minus one, (nk, nz)."""
     air = solution.streams.air
@@ -138,7 +173,16 @@ def water(solution: Solution, column_vapour_flux: float) -> Water:
     )
 
 
-def flow_facts(ground: Ground, solution: Solution, crest_wind: float, settings: Settings, lee: Lee, when: When) -> Flow:
+def flow_facts(
+    ground: Ground,
+    solution: Solution,
+    crest_wind: float,
+    settings: Settings,
+    lee: Lee,
+    when: When,
+    *,
+    trapped: bool = True,
+) -> Flow:
     """How the air meets the range, as plain numbers.
 
     Parameters
@@ -150,6 +194,8 @@ def flow_facts(ground: Ground, solution: Solution, crest_wind: float, settings: 
     settings : Settings
     lee : Lee
     when : When
+    trapped : bool
+        Whether trapped waves are looked for.
 
     Returns
     -------
@@ -183,10 +229,10 @@ def flow_facts(ground: Ground, solution: Solution, crest_wind: float, settings: 
         else float(deformation_radius(n, shape.crest - shape.base, latitude)),
         breaks_through=(pool is None) if lee.known else None,
         break_through_chance=chance_of_breaking_through(sun, crest_wind) if not lee.known else float(pool is None),
-        wave_breaking=_low_breaking(solution, shape.crest),
-        trapped_wavelength=_trapped_wavelength(solution),
+        wave_breaking=bool(low_breaking(solution, shape.crest)[0]),
+        trapped_wavelength=_trapped_wavelength(solution) if trapped else None,
         critical_level=critical if np.isfinite(critical) else None,
-        pressure_difference=_pressure_difference(ground, solution),
+        pressure_difference=float(pressure_differences(ground, solution)[0]),
     )
 
 
@@ -236,12 +282,12 @@ def crest_line_notes(ground: Ground, blocked_top: float) -> tuple[str, ...]:
     return (f"{sentence} Low air gets {way}.",)
 
 
-def _low_breaking(solution: Solution, crest: float) -> bool:
-    """Whether the wave breaks less than 3 km above the crest; higher up thin air makes every wave steep."""
+def low_breaking(solution: Solution, crest: float) -> NDArray[np.bool_]:
+    """Whether the wave breaks less than 3 km above the crest, (m,); higher up thin air makes every wave steep."""
     flow = solution.streams.flow
-    if float(flow.boundary.wave_share[0]) >= 1.0:
-        return False  # not higher than linear waves bear: steep spots are those of the ground
-    return bool(np.any(flow.breaking[0] & (flow.heights[0] < crest + LOW_BREAKING)))
+    steep = np.any(flow.breaking & (flow.heights < crest + LOW_BREAKING), axis=(-2, -1))
+    # not higher than linear waves bear: steep spots are those of the ground
+    return np.asarray(steep & (flow.boundary.wave_share < 1.0))
 
 
 def _trapped_wavelength(solution: Solution) -> float | None:
@@ -254,18 +300,16 @@ def _trapped_wavelength(solution: Solution) -> float | None:
     return float(found[0]) if found.size else None
 
 
-def _pressure_difference(ground: Ground, solution: Solution) -> float:
-    """Incoming pressure minus lee pressure at the height of the lee foot [Pa]."""
+def pressure_differences(ground: Ground, solution: Solution) -> Array:
+    """Incoming pressure minus lee pressure at the height of the lee foot, (m,) [Pa]."""
     shape = ground.shape
     here = over(solution.streams, ground.transect.distance, shape.lee_foot_distance)
-    lee = float(pressure_at(here, np.full((here.height.shape[0], 1), shape.lee_foot))[0, 0])
-    air = solution.upwind.air
-    log_p = np.log(np.broadcast_to(air.pressure, (1, air.pressure.shape[-1]))[0])
-    z = solution.upwind.height
-    upwind = float(np.exp(np.interp(shape.lee_foot, z, log_p)))
+    lee = pressure_at(here, np.full((here.height.shape[0], 1), shape.lee_foot))[:, 0]
+    z, log_p = solution.upwind.height, np.log(solution.upwind.air.pressure)
+    upwind = np.exp(np.array([np.interp(shape.lee_foot, z, row) for row in log_p]))
     if shape.lee_foot < z[0]:
-        upwind *= float(np.exp((z[0] - shape.lee_foot) * (log_p[0] - log_p[1]) / (z[1] - z[0])))
-    return upwind - lee
+        upwind *= np.exp((z[0] - shape.lee_foot) * (log_p[:, 0] - log_p[:, 1]) / (z[1] - z[0]))
+    return np.asarray(upwind - lee)
 
 
 def remarks(ground: Ground, solution: Solution, flow: Flow) -> tuple[str, ...]:

@@ -11,15 +11,15 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.parcel import Parcel, enthalpy, entropy, equilibrium_from_enthalpy, equilibrium_from_entropy
-from orolift.air.saturation import saturation_mixing_ratio
+from orolift.air import equilibrium, phase, steps
+from orolift.air.parcel import Parcel, entropy, equilibrium_from_entropy
 from orolift.constants import (
     EPSILON,
     HEAT_CAPACITY_ICE,
     HEAT_CAPACITY_LIQUID,
-    LATENT_HEAT_SUBLIMATION_TRIPLE,
-    LATENT_HEAT_VAPORISATION_TRIPLE,
     R_DRY,
+    R_VAPOUR,
+    TRIPLE_POINT_PRESSURE,
     TRIPLE_POINT_TEMPERATURE,
 )
 from orolift.crossing.march import March
@@ -42,8 +42,9 @@ RAINS_FROM = 0.5e-3
 Meteorol. Monogr. 32: 0.5 g m-3, from memory)."""
 NOTHING_LEFT = 1e-9
 """Falling water [kg m-1 s-1] below which, beyond the last cloud, the rest is counted as carried out of the transect."""
-BLOCK, NO_SHARE = 16, 1e-18
-"""Layers whose running products are taken together, and the share that stands for none, so that none overflows."""
+_HECTOPASCAL = 0.01 * TRIPLE_POINT_PRESSURE
+_DENSITY = TRIPLE_POINT_PRESSURE * EPSILON / (R_DRY * TRIPLE_POINT_TEMPERATURE)
+"""Scaled pressure in hPa, and density [kg m-3] of dry air of scaled pressure and temperature 1, times epsilon."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -129,138 +130,135 @@ def march_with_rain(
     """
     shape = (path.pressure.shape[0], *np.shape(start.temperature))
     s0, water = np.asarray(entropy(start, freezing=freezing)), start.vapour + start.cloud
-    kept = equilibrium_from_entropy(path.pressure, s0, water, freezing=freezing)
-    condensed = np.maximum(np.diff(kept.cloud, axis=0, prepend=start.cloud[np.newaxis]), 0.0)
+    temperature, cloudy = equilibrium.cloudless(path.pressure, s0, water, freezing=freezing)
     out = {
-        "temperature": kept.temperature,
-        "vapour": kept.vapour,
-        "cloud": kept.cloud,
-        "condensed": condensed,
+        "temperature": temperature,
+        "vapour": np.broadcast_to(water, shape).copy(),
+        "cloud": np.zeros(shape),
+        "condensed": np.zeros(shape),
         "removed": np.zeros(shape),
         "entropy": np.broadcast_to(s0, shape).copy(),
     }
     landed, snow, evaporated = (np.zeros(shape[:2]) for _ in range(3))
     aloft = np.zeros(shape)
-    cloudy = kept.cloud > 0.0
     if not cloudy.any():
         return March(pressure=path.pressure, **out), Falling(landed, snow, aloft, np.zeros(shape[1]), evaporated)
     # rain touches only streamlines up to the highest cloudy one, from the first cloudy place on
     low = slice(0, int(np.flatnonzero(cloudy.any(axis=(0, 1)))[-1]) + 1)
     places = np.flatnonzero(cloudy.any(axis=(1, 2)))
     first, last = int(places[0]), int(places[-1])
-    state = _start(start, kept, s0, first, low)
-    rest = Path(path.pressure[..., low], path.height[..., low], path.step_time[..., low], path.carried[:, low])
-    depth = _layer_depth(path.height)[..., low]
-    scale = (USUAL_FALL_TIME / fall_time)[:, np.newaxis]
-    turning = 1.0 - np.exp(-rest.step_time / cloud_time[:, np.newaxis])
-    stop, earlier = shape[0], state.parcel.temperature
+    before = start
+    if first > 0:
+        before = Parcel(path.pressure[first - 1], temperature[first - 1], water, np.zeros_like(water))
+    state = _start(before, s0, low, freezing=freezing)
+    way = _way(path, low, cloud_time, fall_time)
+    stop = shape[0]
     for i in range(first, shape[0]):
-        if i > last and float(np.sum(rest.carried * state.falling)) < NOTHING_LEFT:
+        if i > last and float(np.sum(way.carried * state.falling)) < NOTHING_LEFT:
             stop = i
             break
-        water = state.parcel.vapour + state.parcel.cloud
-        parcel = equilibrium_from_entropy(
-            rest.pressure[i],
-            state.entropy,
-            water,
-            freezing=freezing,
-            first_guess=2.0 * state.parcel.temperature - earlier,  # straight on: most places need one step
-            tolerance=1e-3,
-        )
-        earlier = state.parcel.temperature
-        new = np.maximum(parcel.cloud - state.parcel.cloud, 0.0)
-        turned = turning[i] * np.maximum(parcel.cloud - RAINS_FROM, 0.0)
-        state, step = _rained(
-            parcel, state, turned, rest.carried, rest.step_time[i], depth[i], scale, freezing=freezing
-        )
-        landed[i], snow[i], evaporated[i] = step
-        aloft[i, :, low] = state.falling
+        cloud = state.air.water - state.air.vapour
+        air = steps.moved(state.air, way.pressure[i], way.log_pressure[i], state.entropy, freezing=freezing)
+        now = air.water - air.vapour
+        turned = way.turning[i] * np.maximum(now - RAINS_FROM, 0.0)
+        state, (landed[i], snow[i], evaporated[i]) = _rained(air, state, turned, way, i, freezing=freezing)
         for key, value in (
-            ("temperature", state.parcel.temperature),
-            ("vapour", state.parcel.vapour),
-            ("cloud", state.parcel.cloud),
-            ("condensed", new),
+            ("temperature", phase.TRIPLE * state.air.t),
+            ("vapour", state.air.vapour),
+            ("cloud", state.air.water - state.air.vapour),
+            ("condensed", np.maximum(now - cloud, 0.0)),
             ("removed", turned),
-            ("entropy", state.entropy),
+            ("entropy", phase.R_VAPOUR * state.entropy),
         ):
             out[key][i, :, low] = value
+        aloft[i, :, low] = state.falling
     if stop < shape[0]:
-        _clear(out, rest.pressure, state, slice(stop, shape[0]), low, freezing=freezing)
-    beyond = np.sum(rest.carried * state.falling, axis=-1)
+        _clear(out, path.pressure[..., low], state, slice(stop, shape[0]), low, freezing=freezing)
+    beyond = np.sum(way.carried * state.falling, axis=-1)
     return March(pressure=path.pressure, **out), Falling(landed, snow, aloft, beyond, evaporated)
-
-
-def _start(start: Parcel, kept: Parcel, s0: Array, first: int, low: slice) -> _State:
-    """Air just before the first cloudy place."""
-    if first == 0:
-        parcel = Parcel(*(np.broadcast_to(x, s0.shape)[:, low] for x in _fields(start)))
-    else:
-        parcel = Parcel(*(x[first - 1][:, low] for x in _fields(kept)))
-    return _State(parcel, s0[:, low], np.zeros_like(parcel.temperature), parcel.temperature)
-
-
-def _fields(parcel: Parcel) -> tuple[Array, Array, Array, Array]:
-    return parcel.pressure, parcel.temperature, parcel.vapour, parcel.cloud
 
 
 def _clear(out: dict[str, Array], pressure: Array, state: _State, rest: slice, low: slice, *, freezing: bool) -> None:
     """Places beyond the last cloud and rain, solved at once."""
-    water = state.parcel.vapour + state.parcel.cloud
-    clear = equilibrium_from_entropy(pressure[rest], state.entropy, water, freezing=freezing)
+    s = phase.R_VAPOUR * state.entropy
+    clear = equilibrium_from_entropy(pressure[rest], s, state.air.water, freezing=freezing)
     for key, value in (("temperature", clear.temperature), ("vapour", clear.vapour), ("cloud", clear.cloud)):
         out[key][rest, :, low] = value
     out["condensed"][rest, :, low] = 0.0
-    out["entropy"][rest, :, low] = state.entropy
+    out["entropy"][rest, :, low] = s
+
+
+@dataclass(frozen=True, eq=False)
+class _Way:
+    """What the steps need of the path, once for all places: pressure scaled as in `phase`."""
+
+    pressure: Array
+    log_pressure: Array
+    time: Array
+    turning: Array  # share of the cloud that turns to falling water
+    sinking: Array  # fall distance of rain over the depth of the layer
+    carried: Array
 
 
 @dataclass(frozen=True, eq=False)
 class _State:
-    """Air and falling water after a step."""
+    """Air and falling water after a step; entropy and enthalpy scaled as in `phase`."""
 
-    parcel: Parcel
+    air: steps.Air
     entropy: Array
     falling: Array
-    falling_temperature: Array
+    falling_enthalpy: Array  # of a kilogram of it
+
+
+def _way(path: Path, low: slice, cloud_time: Array, fall_time: Array) -> _Way:
+    """The path of the streamlines that rain can touch."""
+    pressure = np.ascontiguousarray(path.pressure[..., low]) * equilibrium.PER_TRIPLE_PRESSURE
+    time = np.ascontiguousarray(path.step_time[..., low])
+    speed = RAIN_SPEED * USUAL_FALL_TIME / fall_time
+    return _Way(
+        pressure=pressure,
+        log_pressure=np.log(pressure),
+        time=time,
+        turning=-np.expm1(time / -cloud_time[:, np.newaxis]),
+        sinking=speed[:, np.newaxis] * time / _layer_depth(path.height)[..., low],
+        carried=np.ascontiguousarray(path.carried[:, low]),
+    )
+
+
+def _start(parcel: Parcel, entropy: Array, low: slice, *, freezing: bool) -> _State:
+    """Air just before the first cloudy place."""
+    fields = (parcel.pressure, parcel.temperature, parcel.vapour, parcel.cloud)
+    p, t, v, cloud = (np.broadcast_to(x, entropy.shape)[:, low] for x in fields)
+    q = np.log(t * equilibrium.PER_TRIPLE)
+    air = steps.air_at(p * equilibrium.PER_TRIPLE_PRESSURE, q, v + cloud, freezing=freezing)
+    none = np.zeros_like(t)
+    return _State(air, entropy[:, low] * equilibrium.PER_RV, none, none)
 
 
 def _rained(
-    parcel: Parcel,
-    before: _State,
-    turned: Array,
-    carried: Array,
-    time: Array,
-    depth: Array,
-    scale: Array,
-    *,
-    freezing: bool,
+    air: steps.Air, before: _State, turned: Array, way: _Way, i: int, *, freezing: bool
 ) -> tuple[_State, tuple[Array, Array, Array]]:
     """Steps 2 to 5 of a place: what turned to falling water, sank, evaporated, landed, and the air after that."""
     falling = before.falling + turned
-    none = np.zeros(falling.shape[0])
     if not falling.any():
-        s = before.entropy
-        return _State(parcel, s, np.zeros_like(falling), parcel.temperature), (none, none, none)
-    t = parcel.temperature
-    ice = _ice_share(t, freezing=freezing)
-    speed = scale * (ice * SNOW_SPEED + (1.0 - ice) * RAIN_SPEED)
-    leaving = speed * time / depth
-    leaving = leaving / (1.0 + leaving)
-    down = _sunk(carried * falling, leaving)  # flux through the bottom of each layer
-    from_above = np.concatenate([down[:, 1:], np.zeros_like(down[:, :1])], axis=-1)
-    kept = falling + (from_above - down) / carried
-    left = Parcel(parcel.pressure, t, parcel.vapour, parcel.cloud - turned)
-    lost = _evaporation(left, kept, time, freezing=freezing)
+        none = np.zeros(falling.shape[0])
+        return _State(air, before.entropy, falling, before.falling_enthalpy), (none, none, none)
+    ice = _ice_share(air.t, freezing=freezing)
+    leaving = way.sinking[i] * (1.0 - ice * (1.0 - SNOW_SPEED / RAIN_SPEED))
+    leaving /= 1.0 + leaving
+    down = _sunk(way.carried * falling, leaving)  # flux through the bottom of each layer
+    from_above = np.zeros_like(down)
+    np.divide(down[:, 1:], way.carried[:, :-1], out=from_above[:, :-1])
+    whole = falling + from_above
+    kept = whole - down / way.carried
+    lost = _evaporation(air, kept, way.time[i])
     # Enthalpy: what came from above was at the temperature of the layer above; what was here, and its own cloud, at t.
-    above = np.concatenate([t[:, 1:], t[:, -1:]], axis=-1)
-    heat = enthalpy(parcel, freezing=freezing) + before.falling * _falling_enthalpy(
-        before.falling_temperature, freezing=freezing
-    )
-    heat = heat + from_above / carried * _falling_enthalpy(above, freezing=freezing)
-    heat = heat - (down / carried + kept - lost) * _falling_enthalpy(t, freezing=freezing)
-    water = left.vapour + left.cloud + lost
-    after = equilibrium_from_enthalpy(parcel.pressure, heat, water, freezing=freezing, first_guess=t, tolerance=1e-3)
-    state = _State(after, np.asarray(entropy(after, freezing=freezing)), kept - lost, t)
-    return state, (down[:, 0], down[:, 0] * ice[:, 0], np.sum(carried * lost, axis=-1))
+    own = _falling_enthalpy(air.t, ice)
+    above = np.concatenate([own[:, 1:], own[:, -1:]], axis=-1)
+    heat = steps.enthalpy_of(air) + before.falling * before.falling_enthalpy + from_above * above - (whole - lost) * own
+    after = steps.heated(air, heat, air.water - turned + lost, freezing=freezing)
+    state = _State(after, steps.entropy_of(after), kept - lost, own)
+    return state, (down[:, 0], down[:, 0] * ice[:, 0], np.sum(way.carried * lost, axis=-1))
 
 
 def fallen_at_once(air: March, carried: Array, *, freezing: bool = True) -> Falling:
@@ -277,7 +275,7 @@ def fallen_at_once(air: March, carried: Array, *, freezing: bool = True) -> Fall
     Falling
     """
     landed = np.sum(carried * air.removed, axis=-1)
-    ice = _ice_share(air.temperature[:, :, 0], freezing=freezing)
+    ice = _ice_share(air.temperature[:, :, 0] * equilibrium.PER_TRIPLE, freezing=freezing)
     none = np.zeros_like(landed)
     return Falling(landed, landed * ice, np.zeros_like(air.removed), np.zeros(landed.shape[1]), none)
 
@@ -285,55 +283,47 @@ def fallen_at_once(air: March, carried: Array, *, freezing: bool = True) -> Fall
 def _sunk(flux: Array, leaving: Array) -> Array:
     """Flux through the bottom of each layer: the share `leaving` of what is in it or falls into it goes on.
 
-    ``out[i] = leaving[i] (flux[i] + out[i + 1])``, block by block with running products from the top down.
+    ``out[i] = leaving[i] (flux[i] + out[i + 1])``, by doubling: after each round
+    what comes from twice as many layers is in it.
     """
-    count = flux.shape[-1]
-    out = np.empty_like(flux)
-    log_share = np.log(np.maximum(leaving, NO_SHARE))
-    above = np.zeros(flux.shape[:-1])
-    for stop in range(count, 0, -BLOCK):
-        block = slice(max(stop - BLOCK, 0), stop)
-        share = log_share[..., block][..., ::-1]
-        part = flux[..., block][..., ::-1].copy()
-        part[..., 0] += above
-        passed = np.cumsum(share, axis=-1)
-        lowest = passed[..., -1:]
-        # relative to the lowest layer of the block, so that nothing overflows
-        sums = np.cumsum(part * np.exp(lowest - passed + share), axis=-1) * np.exp(passed - lowest)
-        out[..., block] = sums[..., ::-1]
-        above = out[..., block.start]
+    out, share = leaving * flux, leaving.copy()
+    reach, count = 1, flux.shape[-1]
+    while reach < count:
+        out[..., :-reach] += share[..., :-reach] * out[..., reach:]
+        share[..., :-reach] *= share[..., reach:]
+        reach *= 2
     return out
 
 
 def _ice_share(temperature: Array, *, freezing: bool) -> Array:
-    """Share of falling water that is snow."""
+    """Share of falling water that is snow; temperature over 273.16 K."""
     if not freezing:
         return np.zeros_like(temperature)
-    return np.clip((MELTING_TO - temperature) / (MELTING_TO - MELTING_FROM), 0.0, 1.0)
+    span = MELTING_TO - MELTING_FROM
+    warm = MELTING_TO / span - (TRIPLE_POINT_TEMPERATURE / span) * temperature
+    return np.minimum(np.maximum(warm, 0.0), 1.0)
 
 
-def _falling_enthalpy(temperature: Array, *, freezing: bool) -> Array:
-    """Enthalpy of falling water [J kg-1], from liquid at the triple point; snow without its heat of fusion."""
-    fusion = LATENT_HEAT_SUBLIMATION_TRIPLE - LATENT_HEAT_VAPORISATION_TRIPLE
-    above = temperature - TRIPLE_POINT_TEMPERATURE
-    ice = _ice_share(temperature, freezing=freezing)
-    return np.asarray((1.0 - ice) * HEAT_CAPACITY_LIQUID * above + ice * (HEAT_CAPACITY_ICE * above - fusion))
+def _falling_enthalpy(temperature: Array, ice: Array) -> Array:
+    """Enthalpy of falling water from liquid at the triple point, scaled; snow is without its heat of fusion."""
+    liquid, solid = HEAT_CAPACITY_LIQUID / R_VAPOUR, HEAT_CAPACITY_ICE / R_VAPOUR
+    above = temperature - phase.ONE
+    return np.asarray(liquid * above - ice * ((liquid - solid) * above + phase.FUSION))
 
 
-def _evaporation(air: Parcel, falling: Array, time: Array, *, freezing: bool) -> Array:
+def _evaporation(air: steps.Air, falling: Array, time: Array) -> Array:
     """Falling water that evaporates in a step, never so much that the air saturates.
 
     Klemp and Wilhelmson (1978), in cgs units as printed: ``C = 1.6 + 124.9 (rho q)^0.2046``, rate
     ``(1 - v / vs) C (rho q)^0.525 / (rho (5.4e5 + 2.55e6 / (p vs)))``, rho in g cm-3, p in hPa.
     """
-    saturation = saturation_mixing_ratio(air.pressure, air.temperature, freezing=freezing)
-    lack = np.where(air.cloud > 0.0, 0.0, np.maximum(1.0 - air.vapour / saturation, 0.0))
-    rho = 1e-3 * air.pressure * EPSILON / ((air.vapour + EPSILON) * R_DRY * air.temperature)
-    water = np.maximum(rho * falling, 0.0)
-    ventilation = 1.6 + 124.9 * water**0.2046
-    rate = lack * ventilation * water**0.525 / (rho * (5.4e5 + 2.55e6 / (0.01 * air.pressure * saturation)))
+    lack = np.maximum(1.0 - air.vapour / air.saturation, 0.0)  # nothing in cloud
+    rho = (1e-3 * _DENSITY) * air.pressure / ((air.vapour + phase.EPSILON) * air.t)
+    log_water = np.log(np.maximum(rho * falling, equilibrium.TINY))
+    ventilation = (1.6 + 124.9 * np.exp(0.2046 * log_water)) * np.exp(0.525 * log_water)
+    rate = lack * ventilation / (rho * (5.4e5 + (2.55e6 / _HECTOPASCAL) / (air.pressure * air.saturation)))
     # evaporating cools: about a third of the lack can be filled before the air is saturated, at 0 degrees half
-    room = 0.3 * lack * saturation
+    room = 0.3 * lack * air.saturation
     return np.asarray(np.minimum(np.minimum(rate * time, 0.9 * np.maximum(falling, 0.0)), room))
 
 

@@ -7,15 +7,13 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.parcel import Parcel, condensate_entropy, entropy, equilibrium_from_entropy
+from orolift.air import equilibrium, phase, steps
+from orolift.air.parcel import Parcel, entropy, equilibrium_from_entropy
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
     Array = NDArray[np.float64]
-
-TOLERANCE = 1e-3
-"""Last Newton step [K] at which a place is left; what remains is below 1e-7 K."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -83,21 +81,29 @@ def march(start: Parcel, pressure: ArrayLike, removed_share: ArrayLike = 0.0, *,
         np.broadcast_to(np.asarray(x, dtype=np.float64), shape).reshape(-1)
         for x in (removed_share, entropy(start, freezing=freezing), start.vapour + start.cloud, start.cloud)
     )
-    kept = equilibrium_from_entropy(path, s, water, freezing=freezing)
-    new = np.maximum(np.diff(kept.cloud, axis=0, prepend=cloud[np.newaxis]), 0.0)
+    temperature, cloudy = equilibrium.cloudless(path, s, water, freezing=freezing)
     out = {
-        "temperature": kept.temperature,
-        "vapour": kept.vapour,
-        "cloud": kept.cloud,
-        "condensed": new,
+        "temperature": temperature,
+        "vapour": np.broadcast_to(water, path.shape).copy(),
+        "cloud": np.zeros_like(path),
+        "condensed": np.zeros_like(path),
         "removed": np.zeros_like(path),
         "entropy": np.broadcast_to(s, path.shape).copy(),
     }
-    losing = np.flatnonzero(np.any(new > 0.0, axis=0) & (share > 0.0))
+    saturated = cloudy.any(axis=0)
+    keeping, losing = np.flatnonzero(saturated & (share <= 0.0)), np.flatnonzero(saturated & (share > 0.0))
+    if keeping.size:
+        kept = equilibrium_from_entropy(path[:, keeping], s[keeping], water[keeping], freezing=freezing)
+        for key, value in (("temperature", kept.temperature), ("vapour", kept.vapour), ("cloud", kept.cloud)):
+            out[key][:, keeping] = value
+        out["condensed"][:, keeping] = np.maximum(np.diff(kept.cloud, axis=0, prepend=cloud[np.newaxis, keeping]), 0.0)
     if losing.size:
-        cloudy = np.flatnonzero(np.any(kept.cloud[:, losing] > 0.0, axis=1))
-        way = range(int(np.argmax(np.any(new[:, losing] > 0.0, axis=1))), int(cloudy[-1]) + 1)
-        before = cloud[losing] if way.start == 0 else kept.cloud[way.start - 1, losing]
+        places = np.flatnonzero(cloudy[:, losing].any(axis=1))
+        way = range(int(places[0]), int(places[-1]) + 1)
+        if way.start == 0:
+            before = path[0, losing], np.broadcast_to(start.temperature, shape).reshape(-1)[losing], cloud[losing]
+        else:
+            before = path[way.start - 1, losing], temperature[way.start - 1, losing], np.zeros(losing.size)
         _step(out, path, losing, way, before, water[losing], share[losing], freezing=freezing)
     whole = (path.shape[0], *shape)
     return March(pressure=path.reshape(whole), **{key: value.reshape(whole) for key, value in out.items()})
@@ -108,37 +114,42 @@ def _step(
     path: Array,
     losing: NDArray[np.intp],
     way: range,
-    cloud: Array,
+    before: tuple[Array, Array, Array],
     water: Array,
     share: Array,
     *,
     freezing: bool,
 ) -> None:
-    """Step the streamlines that lose water from the first place at which one condenses to the last cloudy one.
+    """Step the streamlines that lose water from the first cloudy place of one of them to the last.
 
-    Beyond, air that has lost water is even further from cloud than air that has not: all places are solved at once.
+    `before` is pressure, temperature and cloud just before. Beyond, air that has lost water is even
+    further from cloud than air that has not: all places are solved at once.
     """
-    s = out["entropy"][way.start, losing]
-    guess = out["temperature"][way.start, losing]
-    last = guess
     p = path[:, losing]
+    scaled = p[way.start : way.stop] * equilibrium.PER_TRIPLE_PRESSURE
+    log_scaled = np.log(scaled)
+    s = out["entropy"][way.start, losing] * equilibrium.PER_RV
+    pressure, temperature, cloud = before
+    start = np.log(temperature * equilibrium.PER_TRIPLE)
+    air = steps.air_at(pressure * equilibrium.PER_TRIPLE_PRESSURE, start, water, freezing=freezing)
     for i in way:
-        parcel = equilibrium_from_entropy(p[i], s, water, freezing=freezing, first_guess=guess, tolerance=TOLERANCE)
-        new = np.maximum(parcel.cloud - cloud, 0.0)
+        air = steps.moved(air, scaled[i - way.start], log_scaled[i - way.start], s, freezing=freezing)
+        found = air.water - air.vapour
+        new = np.maximum(found - cloud, 0.0)
         removed = share * new
-        s = s - removed * condensate_entropy(parcel.temperature, freezing=freezing)
-        water = water - removed
-        cloud = parcel.cloud - removed
-        guess, last = 2.0 * parcel.temperature - last, parcel.temperature  # straight on: most places need one step
+        s = s - removed * steps.condensate_entropy(air)
+        cloud = found - removed
+        air = air._replace(water=air.water - removed)
         for key, value in (
-            ("temperature", parcel.temperature),
-            ("vapour", parcel.vapour),
+            ("temperature", phase.TRIPLE * air.t),
+            ("vapour", air.vapour),
             ("cloud", cloud),
             ("condensed", new),
             ("removed", removed),
-            ("entropy", s),
+            ("entropy", phase.R_VAPOUR * s),
         ):
             out[key][i, losing] = value
+    water, s = air.water, phase.R_VAPOUR * s
     rest = slice(way.stop, path.shape[0])
     if way.stop < path.shape[0]:
         clear = equilibrium_from_entropy(p[rest], s, water, freezing=freezing)

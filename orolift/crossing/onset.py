@@ -94,7 +94,7 @@ def potential_excess(
     Examples
     --------
     >>> potential_excess([285.0], [275.0], elevations=([600.0], [1600.0])).round(2)
-    array([0.24])
+    array([0.25])
     """
     lee, crest = (np.asarray(t, dtype=np.float64) for t in (lee_temperature, crest_temperature))
     excess = np.full(np.broadcast_shapes(lee.shape, crest.shape), np.nan)

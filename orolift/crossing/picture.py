@@ -36,15 +36,14 @@ def upwind_ground_air(incoming: IncomingAir) -> Parcel:
     )
 
 
-def popular_picture(start: Parcel, crest_pressure: float, pressure: ArrayLike, *, freezing: bool = True) -> Parcel:
+def popular_picture(start: Parcel, crest_pressure: ArrayLike, pressure: ArrayLike, *, freezing: bool = True) -> Parcel:
     """Surface air lifted to the crest, all condensate removed, brought to a pressure: the textbook picture.
 
     Parameters
     ----------
     start : Parcel
         Air at the upwind ground.
-    crest_pressure : float [Pa]
-    pressure : array_like [Pa]
+    crest_pressure, pressure : array_like, shape of the parcel [Pa]
     freezing : bool
 
     Returns

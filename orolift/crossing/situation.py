@@ -24,7 +24,7 @@ class Situation:
     Attributes
     ----------
     transect, incoming, sites, settings, lee, when, normal, lowest_pass, crest_line, stagnant_top, background,
-    ends_too
+    in_full
         As the arguments of `orolift.crossing.crossing.cross`.
     """
 
@@ -39,7 +39,7 @@ class Situation:
     crest_line: CrestLine | None = None
     stagnant_top: float | None = None
     background: float = 0.0
-    ends_too: bool = True
+    in_full: bool = True
 
 
 def crossing_of(situation: Situation) -> Crossing:
@@ -62,5 +62,5 @@ def crossing_of(situation: Situation) -> Crossing:
         crest_line=situation.crest_line,
         stagnant_top=situation.stagnant_top,
         background=situation.background,
-        ends_too=situation.ends_too,
+        in_full=situation.in_full,
     )

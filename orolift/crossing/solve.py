@@ -112,7 +112,7 @@ def solve(
     ground: Ground,
     incoming: IncomingAir,
     settings: Settings,
-    lee: Lee,
+    lee: Lee | tuple[Lee, ...],
     *,
     members: int = 1,
     streamlines: int = 60,
@@ -126,7 +126,7 @@ def solve(
     incoming : IncomingAir, fields (m, nz) or (nz,)
     settings : Settings
         Arrays of shape (m,) or single values.
-    lee : Lee
+    lee : Lee, or a tuple with one for each member
     members : int
     streamlines, passes : int
 
@@ -174,8 +174,9 @@ def solve(
 
     found = worked(None)
     pools: tuple[Pool | None, ...] = (None,) * members
-    if lee.known:
-        pools = tuple(_pool(ground, found, lee, member) for member in range(members))
+    known = lee if isinstance(lee, tuple) else (lee,) * members
+    if known[0].known:
+        pools = _pools(ground, found, known)
         depth = np.array([0.0 if pool is None else pool.depth for pool in pools])
         if np.any(depth > SHALLOW_POOL):
             foot = shape.lee_foot
@@ -207,20 +208,14 @@ def _going_round(ground: Ground, blocked: Blocking, top: Array, settings: Settin
     return np.full(top.size, DEFAULT_GOING_ROUND)
 
 
-def _pool(ground: Ground, found: Streams, lee: Lee, member: int) -> Pool:
-    """Pool under the air of one member, brought down to the lee foot."""
-    shape = ground.shape
-    here = over(found, ground.transect.distance, shape.lee_foot_distance)
-    at = np.full((here.height.shape[0], 1), shape.lee_foot)
-    pressure = float(pressure_at(here, at)[member, 0])
-    t = frozen_temperature(
-        here.pressure[member, :1],
-        here.temperature[member, :1],
-        here.vapour[member, :1],
-        here.cloud[member, :1],
-        np.array([pressure]),
-    )
-    return pool_under(lee, shape.lee_foot, pressure, float(t[0]), float(here.vapour[member, 0]))
+def _pools(ground: Ground, found: Streams, lee: tuple[Lee, ...]) -> tuple[Pool, ...]:
+    """Pools under the air of the members, brought down to the lee foot."""
+    foot = ground.shape.lee_foot
+    here = over(found, ground.transect.distance, ground.shape.lee_foot_distance)
+    p = pressure_at(here, np.full((here.height.shape[0], 1), foot))[:, 0]
+    v = here.vapour[:, 0]
+    t = frozen_temperature(here.pressure[:, 0], here.temperature[:, 0], v, here.cloud[:, 0], p)
+    return tuple(pool_under(one, foot, float(p[i]), float(t[i]), float(v[i])) for i, one in enumerate(lee))
 
 
 def _first(settings: Settings) -> Settings:

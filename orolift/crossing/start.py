@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.air.column import interpolated
+from orolift.air.column import extended_down, interpolated
 from orolift.air.parcel import Parcel, entropy, equilibrium_from_entropy
 
 if TYPE_CHECKING:
@@ -105,3 +105,41 @@ def mass_of_streamlines(pressure: Array) -> Array:
     edge = 0.5 * (pressure[..., 1:] + pressure[..., :-1])
     ends = np.concatenate([pressure[..., :1], edge, pressure[..., -1:]], axis=-1)
     return np.asarray(ends[..., :-1] - ends[..., 1:])
+
+
+def column_pressure(incoming: IncomingAir, lowest: float, members: int) -> tuple[Array, Array]:
+    """Levels of the incoming column from the lowest ground up, and the logarithm of its pressure there.
+
+    Parameters
+    ----------
+    incoming : IncomingAir, fields (m, nz_column) or (nz_column,)
+    lowest : float [m above sea level]
+    members : int
+
+    Returns
+    -------
+    height : ndarray (n,) [m above sea level]
+    log_pressure : ndarray (m, n)
+    """
+    column = extended_down(incoming, lowest) if lowest < incoming.height[0] else incoming
+    return column.height, np.broadcast_to(np.log(column.pressure), (members, column.height.size))
+
+
+def undisturbed_pressure(levels: Array, log_pressure: Array, heights: Array) -> Array:
+    """Pressure of the incoming column at heights; above its top that of the top.
+
+    Parameters
+    ----------
+    levels, log_pressure : ndarray (n,) [m above sea level], (m, n)
+        From `column_pressure`.
+    heights : ndarray (m, ...) [m above sea level]
+
+    Returns
+    -------
+    ndarray (m, ...) [Pa]
+    """
+    flat = heights.reshape(heights.shape[0], -1)
+    out = np.empty(flat.shape)
+    for z, row, found in zip(flat, log_pressure, out, strict=True):
+        found[:] = np.interp(z, levels, row)
+    return np.exp(out, out=out).reshape(heights.shape)

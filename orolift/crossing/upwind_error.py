@@ -22,11 +22,11 @@ if TYPE_CHECKING:
 
 What = Literal["wind", "humidity"]
 
-WIND_FACTORS = (0.4, 0.55, 0.75, 1.0, 1.3, 1.7, 2.2)
+WIND_FACTORS = (0.4, 0.65, 1.0, 1.5, 2.2)
 """Factors of the wind that are looked at: beyond them it is another day's wind; a judgement."""
-HUMIDITY_FACTORS = (0.4, 0.55, 0.7, 0.85, 1.0, 1.2, 1.5)
+HUMIDITY_FACTORS = (0.4, 0.7, 1.0, 1.5)
 """Factors of the humidity that are looked at; no level goes above saturation. A judgement."""
-REFINEMENTS = 6
+REFINEMENTS = 5
 """Crossings spent on the best factor after the scan."""
 SAME = 0.05
 """A change that lessens the misfit by less than this explains nothing; a judgement."""
@@ -76,7 +76,9 @@ class UpwindError:
         return self.misfit < self.misfit_before - SAME
 
 
-def upwind_error(situation: Situation, place: int, observed: Observed, what: What) -> UpwindError:
+def upwind_error(
+    situation: Situation, place: int, observed: Observed, what: What, now: LeeAir | None = None
+) -> UpwindError:
     """The factor of the wind, or of the humidity, with which the crossing comes nearest to what was observed.
 
     Parameters
@@ -87,6 +89,8 @@ def upwind_error(situation: Situation, place: int, observed: Observed, what: Wha
         Number of the site.
     observed : Observed
     what : 'wind' or 'humidity'
+    now : LeeAir, optional
+        What the situation as it is gives at the site, where it is known already.
 
     Returns
     -------
@@ -100,11 +104,11 @@ def upwind_error(situation: Situation, place: int, observed: Observed, what: Wha
     Notes
     -----
     Whole crossings, every other input as given: wind changes blocking, and
-    with it the source level; humidity changes cloud and rain. A scan of seven factors, then a bounded
+    with it the source level; humidity changes cloud and rain. A scan of four or five factors, then a bounded
     search (scipy) between the neighbours of the best one. An estimate that
     is within the tolerance needs no error, and none is looked for.
     """
-    found: dict[float, LeeAir] = {}
+    found: dict[float, LeeAir] = {} if now is None else {1.0: now}
     refused: list[float] = []
 
     def misfit(factor: float) -> float:

@@ -148,6 +148,48 @@ def lee_winds(ground: Ground, solution: Solution, crest_wind: float, pressure_dr
     )
 
 
+@dataclass(frozen=True, eq=False)
+class WindsAt:
+    """Wind of every member over a place, across the range; arrays (m,) [m s-1].
+
+    Attributes
+    ----------
+    mean : ndarray
+        Over the lowest 300 m of crossing air.
+    at_10m, gust_low, gust_high : ndarray
+        As in `SiteWind`.
+    """
+
+    mean: Array
+    at_10m: Array
+    gust_low: Array
+    gust_high: Array
+
+
+def winds_at(here: Here, roughness: float) -> WindsAt:
+    """Wind of every member over a place.
+
+    Parameters
+    ----------
+    here : Here
+    roughness : float [m]
+        Roughness length.
+
+    Returns
+    -------
+    WindsAt
+
+    Notes
+    -----
+    The logarithmic law starts at 150 m, the middle of the layer the wind is averaged over.
+    """
+    bottom = here.height[:, :1]
+    mean = np.mean(sampled(here.height, here.wind, bottom + np.linspace(0.0, NEAR_GROUND, 7)), axis=-1)
+    aloft = np.max(sampled(here.height, here.wind, bottom + np.linspace(0.0, GUST_DEPTH, 11)), axis=-1)
+    at_10m = wind_near_ground(mean, 0.5 * NEAR_GROUND, roughness=roughness)
+    return WindsAt(mean, at_10m, *gust_range(at_10m, aloft, roughness=roughness))
+
+
 def site_wind(here: Here, winds: LeeWinds, roughness: float) -> SiteWind:
     """Wind at a site of the first member.
 
@@ -165,22 +207,18 @@ def site_wind(here: Here, winds: LeeWinds, roughness: float) -> SiteWind:
     Notes
     -----
     The range of the methods holds where the wind is strongest and is taken
-    in proportion elsewhere. The logarithmic law starts at 150 m, the
-    middle of the layer the wind is averaged over.
+    in proportion elsewhere.
     """
-    bottom = here.height[:1, :1]
-    wind = float(np.mean(sampled(here.height[:1], here.wind[:1], bottom + np.linspace(0.0, NEAR_GROUND, 7))))
-    aloft = float(np.max(sampled(here.height[:1], here.wind[:1], bottom + np.linspace(0.0, GUST_DEPTH, 11))))
+    all_of_them = winds_at(here, roughness)
+    wind = float(all_of_them.mean[0])
     part = wind / max(winds.strongest, 0.1)
-    at_10m = float(wind_near_ground(wind, 0.5 * NEAR_GROUND, roughness=roughness))
-    gust_low, gust_high = gust_range(at_10m, aloft, roughness=roughness)
     return SiteWind(
         wind=wind,
         low=min(winds.low * part, wind),
         high=max(winds.high * part, wind),
-        at_10m=at_10m,
-        gust_low=float(gust_low),
-        gust_high=float(gust_high),
+        at_10m=float(all_of_them.at_10m[0]),
+        gust_low=float(all_of_them.gust_low[0]),
+        gust_high=float(all_of_them.gust_high[0]),
     )
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -153,12 +153,19 @@ def site_fire(
 
 
 def _hot_dry_windy(weather: SiteWeather) -> Array:
-    """Of the levels up to the one above its layer: what lies higher may be too cold for an index."""
+    """Of the levels up to the one above its layer: what lies higher may be too cold for an index.
+
+    NaN where neither the wind at the site nor any crossing air in the layer is known: a deep cold pool is not calm.
+    """
     count = int(np.searchsorted(weather.height_above_ground, LAYER, side="right")) + 1
     low = (..., slice(0, count))
-    return hot_dry_windy(
-        weather.height_above_ground[:count],
-        weather.layer_temperature[low],
-        layer_humidity(weather)[low],
-        weather.layer_wind[low],
+    layer = replace(
+        weather,
+        height_above_ground=weather.height_above_ground[:count],
+        layer_temperature=weather.layer_temperature[low],
+        layer_vapour=weather.layer_vapour[low],
+        layer_wind=weather.layer_wind[low],
     )
+    found = hot_dry_windy(layer.height_above_ground, layer.layer_temperature, layer_humidity(layer), layer.layer_wind)
+    blows = np.any(layer.layer_wind[..., :-1] > 0.0, axis=-1)
+    return np.asarray(np.where(np.isfinite(weather.wind) | blows, found, np.nan))

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -196,17 +196,42 @@ def judged(
     >>> found.status, round(found.conditions[0].margin, 3), found.chance
     ('met', 0.03, 0.5)
     """
-    conditions = tuple(_condition(one, values, members) for one in rule.conditions)
+    conditions = tuple(_condition(one, values) for one in rule.conditions)
     status = _status(rule, values, windiest)
-    chance = None
-    if members is not None:
-        met, known = rule_met(rule, members)
-        chance = float(met[known].mean()) if known.any() else None
     if rule.hours == 1:
         lasts = status == "met" if status != "cannot be judged" else None
     elif status == "not met" and lasts is None:
         lasts = False
-    return JudgedRule(rule, status, conditions, chance, lasts)
+    found = JudgedRule(rule, status, conditions, None, lasts)
+    return found if members is None else with_chance(found, members)
+
+
+def with_chance(found: JudgedRule, members: Mapping[str | WindMeant, ArrayLike]) -> JudgedRule:
+    """A judged rule with the share of members that meet it, and each of its conditions.
+
+    Parameters
+    ----------
+    found : JudgedRule
+    members : mapping of quantity to array_like (m,)
+        Of a spread; NaN where a member does not know a value.
+
+    Returns
+    -------
+    JudgedRule
+        Members that cannot be judged do not count; without any that can, there is no chance.
+    """
+    met, known = rule_met(found.rule, members)
+    conditions = tuple(
+        replace(one, chance=_share(margins(one.condition, members.get(one.condition.quantity, np.nan))))
+        for one in found.conditions
+    )
+    return replace(found, conditions=conditions, chance=float(met[known].mean()) if known.any() else None)
+
+
+def _share(margin: NDArray[np.float64]) -> float | None:
+    """Of the known margins, the share that is met."""
+    known = margin[np.isfinite(margin)]
+    return float((known >= 0.0).mean()) if known.size else None
 
 
 def _status(
@@ -222,17 +247,8 @@ def _status(
     return "not met"
 
 
-def _condition(
-    condition: Condition,
-    values: Mapping[str | WindMeant, ArrayLike],
-    members: Mapping[str | WindMeant, ArrayLike] | None,
-) -> JudgedCondition:
+def _condition(condition: Condition, values: Mapping[str | WindMeant, ArrayLike]) -> JudgedCondition:
     value = float(np.asarray(values.get(condition.quantity, np.nan)))
     margin = float(margins(condition, value))
-    chance = None
-    if members is not None:
-        spread = margins(condition, members.get(condition.quantity, np.nan))
-        spread = spread[np.isfinite(spread)]
-        chance = float((spread >= 0.0).mean()) if spread.size else None
     known = np.isfinite(value)
-    return JudgedCondition(condition, value if known else None, margin if known else None, chance)
+    return JudgedCondition(condition, value if known else None, margin if known else None, None)

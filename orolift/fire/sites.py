@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -15,6 +15,8 @@ from orolift.fire.values import site_values
 from orolift.fire.weather import SiteWeather, joined, site_weather, stacked
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     from numpy.typing import ArrayLike
 
     from orolift.crossing.result import Crossing, LeeAir, Side, When
@@ -73,6 +75,8 @@ class SiteFire:
     indices : Indices
     night : NightAtSite
     thresholds : tuple of Threshold
+    ranges : mapping of str to (float, float)
+        10 % and 90 % of the members by the name of an index, in SI; empty without members.
     """
 
     number: int
@@ -84,6 +88,7 @@ class SiteFire:
     indices: Indices
     night: NightAtSite
     thresholds: tuple[Threshold, ...]
+    ranges: Mapping[str, tuple[float, float]] = field(default_factory=dict)
 
 
 def fire_at_sites(crossing: Crossing, when: When, settings: FireSettings | None = None) -> tuple[SiteFire, ...]:
@@ -187,10 +192,13 @@ def _values_of(
     values = site_values(together, _indices(together, chosen, ()), rules, roughness, others=others)
     ends = np.cumsum([0, *(site.amounts.size for site in sites)])
     size = int(ends[-1])
+    asked = {condition.quantity for rule in rules for condition in rule.conditions}
     parts: list[tuple[Shifted, dict[str | WindMeant, ArrayLike]]] = []
     for site, low, high in zip(sites, ends[:-1], ends[1:], strict=True):
         own: dict[str | WindMeant, ArrayLike] = {
-            name: np.broadcast_to(np.asarray(value), (size,))[low:high] for name, value in values.items()
+            name: np.broadcast_to(np.asarray(value), (size,))[low:high]
+            for name, value in values.items()
+            if name in asked
         }
         parts.append((site, own))
     return parts

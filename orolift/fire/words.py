@@ -54,9 +54,20 @@ def named(quantity: str | WindMeant) -> Named:
     """
     if not isinstance(quantity, WindMeant):
         return NAMES[quantity]
-    time = f"{quantity.averaging / 60.0:g} min" if quantity.averaging >= 60.0 else f"{quantity.averaging:g} s"
-    kind = "sustained wind" if quantity.kind == "sustained" else "gust"
-    return Named(f"{kind} at {quantity.height:.2g} m, mean of {time}", "wind", 1)
+    kind, average = wind_words(quantity)
+    return Named(f"{kind} at {quantity.height:.2g} m, mean of {average}", "wind", 1)
+
+
+def wind_words(meant: WindMeant) -> tuple[str, str]:
+    """Kind of a wind and its averaging time.
+
+    Examples
+    --------
+    >>> wind_words(WindMeant(10.0, "gust", 3.0))
+    ('gust', '3 s')
+    """
+    average = f"{meant.averaging / 60.0:g} min" if meant.averaging >= 60.0 else f"{meant.averaging:g} s"
+    return "sustained wind" if meant.kind == "sustained" else "gust", average
 
 
 def limit_words(condition: Condition) -> str:

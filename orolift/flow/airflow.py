@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -36,10 +37,6 @@ class Airflow:
         Heights of the streamlines in the upwind column, above sea level.
     heights : ndarray, shape (..., nz, nx) [m]
         Heights of the streamlines along the transect; the first is the lower boundary.
-    stretching : ndarray, shape (..., nz, nx) [1]
-        Spacing over spacing upwind.
-    speed_factor : ndarray, shape (..., nz, nx) [1]
-        Wind over the wind where the streamline started.
     breaking : ndarray of bool, shape (..., nz, nx)
         Where the wave breaks.
     top_pressure : ndarray, shape (..., nx) [Pa]
@@ -58,12 +55,14 @@ class Airflow:
         Whether wind at the lowest streamlines was raised to 2.5 m/s.
     trapped : TrappedWaves or None
         Trapped lee waves, when asked for.
+    stretching : ndarray, shape (..., nz, nx) [1]
+        Spacing over spacing upwind; this and the next are worked out when they are asked for.
+    speed_factor : ndarray, shape (..., nz, nx) [1]
+        Wind over the wind where the streamline started.
     """
 
     start_heights: NDArray[np.float64]
     heights: NDArray[np.float64]
-    stretching: NDArray[np.float64]
-    speed_factor: NDArray[np.float64]
     breaking: NDArray[np.bool_]
     top_pressure: NDArray[np.float64]
     boundary: Boundary
@@ -73,6 +72,21 @@ class Airflow:
     least_richardson: NDArray[np.float64]
     weak_wind: NDArray[np.bool_]
     trapped: TrappedWaves | None
+
+    @cached_property
+    def lines(self) -> Streamlines:
+        """The streamlines."""
+        return Streamlines(self.start_heights, self.heights, self.breaking)
+
+    @property
+    def stretching(self) -> NDArray[np.float64]:
+        """Spacing over spacing upwind."""
+        return self.lines.stretching
+
+    @cached_property
+    def speed_factor(self) -> NDArray[np.float64]:
+        """Wind over the wind where the streamline started."""
+        return speed_factor(self.lines, self.start_heights, self.compression)
 
 
 def airflow(
@@ -156,18 +170,16 @@ def airflow(
     field = waves(boundary.wave, spacing, column, hydrostatic=hydrostatic)
     critical_level = np.take_along_axis(column.edge, column.carrying[..., None], axis=-1)[..., 0]
     wave_shift = _faded(field.displacement, column, critical_level)
-    carried = carried_share(boundary, start)[..., None] * boundary.body[..., None, :]
-    lines = streamlines(start, wave_shift + carried, wave_displacement=wave_shift)
-    by_waves = np.subtract(lines.heights, start[..., None])
-    by_waves -= carried
+    carried = carried_share(boundary, start)
+    shift = carried[..., None] * boundary.body[..., None, :]
+    shift += wave_shift
+    lines = streamlines(start, shift, wave_displacement=wave_shift)
     expansion = compression(height, density, n_squared, start)
     return Airflow(
         start_heights=start,
         heights=lines.heights,
-        stretching=lines.stretching,
-        speed_factor=speed_factor(lines, start, expansion),
         breaking=lines.breaking,
-        top_pressure=_top_pressure(field.surface_pressure, by_waves, column),
+        top_pressure=_top_pressure(field.surface_pressure, lines.heights, carried, boundary.body, column),
         boundary=boundary,
         start_wind=np.maximum(value_at(height, wind, start), LEAST_WIND),
         compression=expansion,
@@ -211,16 +223,12 @@ def joined(moist: Airflow, dry: Airflow, weight: ArrayLike) -> Airflow:
     """
     if moist.start_heights.shape != dry.start_heights.shape or not np.allclose(moist.start_heights, dry.start_heights):
         raise OutOfRangeError("moist and dry start at different heights. Work out both with the same start_heights.")
-    one = Streamlines(moist.heights, moist.stretching, moist.breaking)
-    other = Streamlines(dry.heights, dry.stretching, dry.breaking)
-    lines = joined_streamlines(one, other, weight)
+    lines = joined_streamlines(moist.lines, dry.lines, weight)
     share = np.asarray(weight, np.float64)
     return replace(
         dry,
         heights=lines.heights,
-        stretching=lines.stretching,
         breaking=lines.breaking,
-        speed_factor=speed_factor(lines, dry.start_heights, dry.compression),
         top_pressure=share * moist.top_pressure + (1.0 - share) * dry.top_pressure,
     )
 
@@ -298,12 +306,24 @@ def _faded(
 
 
 def _top_pressure(
-    surface_pressure: NDArray[np.float64], displacement: NDArray[np.float64], column: Layers
+    surface_pressure: NDArray[np.float64],
+    heights: NDArray[np.float64],
+    carried: NDArray[np.float64],
+    body: NDArray[np.float64],
+    column: Layers,
 ) -> NDArray[np.float64]:
-    """Pressure perturbation at the top from that at the ground and the weight of the displaced column between."""
+    """Pressure perturbation at the top from that at the ground and the weight of the displaced column between.
+
+    Displaced by waves alone: heights less start heights and the carried part of the body.
+    """
     depth = np.diff(column.edge, axis=-1)
     swelling = column.compression * depth
     expansion = np.exp(np.cumsum(swelling, axis=-1))
     weight = column.density * column.n_squared * depth * np.exp(-0.5 * swelling) * expansion
-    middle = 0.5 * (displacement[..., 1:, :] + displacement[..., :-1, :])
-    return np.asarray((surface_pressure - np.sum(weight[..., None] * middle, axis=-2)) / expansion[..., -1:])
+    half = 0.5 * weight  # of a layer: for the streamline below it and the one above
+    level = np.concatenate([half, np.zeros_like(half[..., :1])], axis=-1)
+    level[..., 1:] += half
+    start = np.sum(level * column.edge, axis=-1, keepdims=True)
+    share = np.sum(level * carried, axis=-1, keepdims=True)
+    displaced = np.matmul(level[..., None, :], heights)[..., 0, :] - start - share * body
+    return np.asarray((surface_pressure - displaced) / expansion[..., -1:])

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -26,17 +27,24 @@ class Streamlines:
 
     Attributes
     ----------
+    start_heights : ndarray, shape (..., nz) [m]
+        Upwind.
     heights : ndarray, shape (..., nz, nx) [m]
         Of each streamline; none crosses another.
-    stretching : ndarray, shape (..., nz, nx) [1]
-        Spacing over spacing upwind, at the streamlines.
     breaking : ndarray of bool, shape (..., nz, nx)
         Where the wave breaks.
+    stretching : ndarray, shape (..., nz, nx) [1]
+        Spacing over spacing upwind, at the streamlines; worked out when it is asked for.
     """
 
+    start_heights: NDArray[np.float64]
     heights: NDArray[np.float64]
-    stretching: NDArray[np.float64]
     breaking: NDArray[np.bool_]
+
+    @cached_property
+    def stretching(self) -> NDArray[np.float64]:
+        """Spacing over spacing upwind."""
+        return stretching(self.start_heights, self.heights)
 
 
 def streamlines(
@@ -84,16 +92,19 @@ def streamlines(
     (array([ 50.,  90., 200.]), array([ True,  True, False]))
     """
     least = float(within("least_stretching", least_stretching, 0.01, 1.0, "", "It is a share of the upwind spacing."))
-    start = np.asarray(start_heights, np.float64)[..., None]
+    start = np.asarray(start_heights, np.float64)
     shift = np.asarray(displacement, np.float64)
-    gap = np.diff(start, axis=-2)
-    heights = shift + (1.0 - least) * start
-    np.maximum.accumulate(heights, axis=-2, out=heights)  # with the least spacing taken off, lines must only not fall
-    heights += least * start
+    gap = np.diff(start, axis=-1)[..., None]
+    heights = shift + ((1.0 - least) * start)[..., None]
+    for i in range(1, heights.shape[-2]):  # with the least spacing taken off, lines must only not fall
+        np.maximum(heights[..., i, :], heights[..., i - 1, :], out=heights[..., i, :])
+    heights += (least * start)[..., None]
     waves = shift if wave_displacement is None else np.asarray(wave_displacement, np.float64)
-    breaks = np.diff(heights, axis=-2) < least * (1.0 + 1e-9) * gap
-    breaks |= np.diff(waves, axis=-2) > (LARGEST_WAVE_STRETCHING - 1.0) * gap
-    return Streamlines(heights, _stretching(heights, start), _either_side(breaks))
+    spacing = heights[..., 1:, :] - heights[..., :-1, :]
+    breaks = spacing < least * (1.0 + 1e-9) * gap
+    np.subtract(waves[..., 1:, :], waves[..., :-1, :], out=spacing)
+    breaks |= spacing > (LARGEST_WAVE_STRETCHING - 1.0) * gap
+    return Streamlines(np.broadcast_to(start, heights.shape[:-1]), heights, _either_side(breaks))
 
 
 def speed_factor(lines: Streamlines, start_heights: ArrayLike, compression: ArrayLike) -> NDArray[np.float64]:
@@ -157,12 +168,11 @@ def joined_streamlines(one: Streamlines, other: Streamlines, weight: ArrayLike) 
     array([100., 125.])
     """
     first = within("weight", weight, 0.0, 1.0, "", "It is a share.")[..., None, :]
-    second = 1.0 - first
-    return Streamlines(
-        heights=first * one.heights + second * other.heights,
-        stretching=first * one.stretching + second * other.stretching,
-        breaking=(one.breaking & (first > 0.0)) | (other.breaking & (second > 0.0)),
-    )
+    heights = one.heights - other.heights
+    heights *= first
+    heights += other.heights
+    breaking = (one.breaking & (first > 0.0)) | (other.breaking & (first < 1.0))
+    return Streamlines(other.start_heights, heights, breaking)
 
 
 def join_weight(
@@ -195,8 +205,25 @@ def join_weight(
     return np.asarray(0.5 + 0.5 * np.cos(np.pi * share)).round(15)
 
 
-def _stretching(heights: NDArray[np.float64], start: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Spacing over spacing upwind at the streamlines: between both neighbours, one-sided at the ends."""
+def stretching(start_heights: ArrayLike, heights: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Spacing of streamlines over their spacing upwind.
+
+    Parameters
+    ----------
+    start_heights : array_like, shape (..., nz) [m]
+    heights : ndarray, shape (..., nz, nx) [m]
+
+    Returns
+    -------
+    ndarray, shape (..., nz, nx) [1]
+        At the streamlines: between both neighbours, one-sided at the ends.
+
+    Examples
+    --------
+    >>> stretching([0.0, 100.0, 200.0], np.array([[0.0], [50.0], [100.0]]))[:, 0]
+    array([0.5, 0.5, 0.5])
+    """
+    start = np.asarray(start_heights, np.float64)[..., None]
     ratio = np.empty_like(heights)
     np.subtract(heights[..., 2:, :], heights[..., :-2, :], out=ratio[..., 1:-1, :])
     ratio[..., 1:-1, :] /= start[..., 2:, :] - start[..., :-2, :]

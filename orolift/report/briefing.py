@@ -6,14 +6,14 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from orolift.report.causes import cause_noun, main_cause
-from orolift.report.key_numbers import KeyNumber, key_numbers
+from orolift.report.key_numbers import KeyNumber, blocked_with_range, gusts, key_numbers
 from orolift.report.lee_wind import range_words
 from orolift.report.quantities import Amount
+from orolift.report.spans import Spans, ranged
 from orolift.report.story import (
     ROUNDING,
     SAME,
     blocked_words,
-    dew_point_ends,
     difference,
     fallen_share,
     falling,
@@ -23,8 +23,6 @@ from orolift.report.story import (
     reaches_the_ground_or_not,
     source_words,
     starts_saturated,
-    temperature_ends,
-    with_ends,
 )
 from orolift.report.words import Words, fraction_in_words, point_of_compass
 
@@ -51,7 +49,7 @@ class Briefing:
     doubts: tuple[str, ...]
 
 
-def briefing(crossing: Crossing, bearing: float, freezing_level: float) -> Briefing:
+def briefing(crossing: Crossing, bearing: float, freezing_level: float, spans: Spans | None = None) -> Briefing:
     """The briefing of a crossing.
 
     Parameters
@@ -61,22 +59,25 @@ def briefing(crossing: Crossing, bearing: float, freezing_level: float) -> Brief
         Direction the wind comes from.
     freezing_level : float [m]
         Of the incoming air.
+    spans : Spans, optional
+        Ranges; without them the ends of blocking.
 
     Returns
     -------
     Briefing
     """
     site = main_site(crossing)
-    both = (_both_answers(crossing, site),) if reaches_the_ground_or_not(crossing, site) else ()
+    spans = spans or Spans(crossing, None)
+    both = (_both_answers(spans, site),) if reaches_the_ground_or_not(crossing, site) else ()
     return Briefing(
         heading=briefing_heading(crossing),
         sentences=(
             *both,
-            (*_flow(crossing, bearing), " ", *_cloud(crossing)),
-            _lee(crossing, site),
-            _wind(crossing, site),
+            (*_flow(spans, bearing), " ", *_cloud(spans)),
+            _lee(spans, site),
+            _wind(spans, site),
         ),
-        key_numbers=key_numbers(crossing, site, freezing_level),
+        key_numbers=key_numbers(spans, site, freezing_level),
         doubts=crossing.cautions,
     )
 
@@ -124,22 +125,24 @@ def _flow_clause(crossing: Crossing) -> Words:
     return ("The air flows over without rain",)
 
 
-def _both_answers(crossing: Crossing, site: LeeAir) -> Words:
+def _both_answers(spans: Spans, site: LeeAir) -> Words:
     """Both answers where nothing is known of the air in the lee."""
+    crossing = spans.crossing
     return (
         "Nothing is known of the air lying in the lee; the chance that the crossing air reaches the ground is put at ",
         Amount(crossing.flow.break_through_chance, "share"),
         " (by hour and wind). If it breaks through, ",
         f"{site.name} gets ",
-        *with_ends(Amount(site.temperature, "temperature", 1), temperature_ends(site)),
+        *ranged(Amount(site.temperature, "temperature", 1), spans.temperature(site)),
         "; if a cold pool stays, it keeps roughly the temperature of the incoming air at its height, ",
         Amount(site.upwind_temperature, "temperature", 1),
         ".",
     )
 
 
-def _flow(crossing: Crossing, bearing: float) -> Words:
+def _flow(spans: Spans, bearing: float) -> Words:
     """Wind, regime and what is blocked."""
+    crossing = spans.crossing
     flow = crossing.flow
     start: Words = (
         f"Air from the {point_of_compass(bearing)} (",
@@ -147,7 +150,7 @@ def _flow(crossing: Crossing, bearing: float) -> Words:
         ") meets the crest at ",
         Amount(crossing.features.crest, "height"),
         " with ",
-        Amount(flow.crest_wind, "wind"),
+        *ranged(Amount(flow.crest_wind, "wind"), spans.of("cross_range_wind")),
         " across it: N h/U is ",
         Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2),
         f", so the flow {_CERTAIN.get(flow.regime, flow.regime)}",
@@ -162,13 +165,13 @@ def _flow(crossing: Crossing, bearing: float) -> Words:
     if share > 0.0:
         round_words = (
             "; of the low air behind the range ",
-            Amount(share, "share"),
+            *ranged(Amount(share, "share"), spans.of("going_round_share")),
             " comes through gaps or round the ends ",
         )
     return (
         *start,
         ". Air below ",
-        *blocked_words(crossing),
+        *blocked_with_range(spans),
         " is stopped",
         *round_words,
         f"({flow.going_round_source}).",
@@ -197,26 +200,44 @@ def _unblocked(crossing: Crossing) -> Words:
     return (". No layer is stopped: air from the ground up comes over.",)
 
 
-def _cloud(crossing: Crossing) -> Words:
+def _cloud(spans: Spans) -> Words:
     """Cloud and rain of the crossing air."""
+    crossing = spans.crossing
     base = crossing.cloud.base
     if base is None:
         return ("The crossing air stays short of saturation: no cloud and no rain from lifting.",)
-    start: Words = ("Cloud forms at ", Amount(base, "height", -1))
+    start: Words = ("Cloud forms at ", *ranged(Amount(base, "height", -1), spans.of("cloud_base")))
     if starts_saturated(crossing):
         start = ("The air arrives already saturated",)
     share = fallen_share(crossing)
     if not rains(crossing):
         return (*start, ", and hardly any water falls out.")
     rain, part = crossing.rain, fraction_in_words(share)
-    words: Words = (f", and {part} of the vapour (", Amount(share, "share"), f") {falling(crossing)}")
+    words: Words = (f", and {part} of the vapour (", *_share_inside(share, spans), f") {falling(crossing)}")
     if rain.windward_share is not None:
-        words = (*words, ", ", Amount(rain.windward_share, "share"), " of it before the crest")
-    return (*start, *words, "; the most is ", Amount(rain.peak_rate, "rain_rate", 1), ".")
+        windward = ranged(Amount(rain.windward_share, "share"), spans.of("windward_share"))
+        words = (*words, ", ", *windward, " of it before the crest")
+    return (
+        *start,
+        *words,
+        "; the most is ",
+        *ranged(Amount(rain.peak_rate, "rain_rate", 1), spans.of("peak_rate")),
+        ".",
+    )
 
 
-def _lee(crossing: Crossing, site: LeeAir) -> Words:
+def _share_inside(share: float, spans: Spans) -> Words:
+    """A share that stands in brackets already: its range follows a comma."""
+    first, *rest = ranged(Amount(share, "share"), spans.drying())
+    if not rest:
+        return (first,)
+    low, high = rest[1], rest[3]
+    return (first, ", ", low, " to ", high)
+
+
+def _lee(spans: Spans, site: LeeAir) -> Words:
     """What arrives at the site, from where, and why it is so."""
+    crossing = spans.crossing
     beyond = site.distance - crossing.features.crest_distance
     side = "beyond" if beyond >= 0.0 else "before"
     start: Words = (
@@ -227,15 +248,15 @@ def _lee(crossing: Crossing, site: LeeAir) -> Words:
         f" {side} the crest) ",
     )
     if site.in_pool:
-        return (*start, "cold air stays: ", *_values(site), ". ", *_above_the_pool(crossing))
+        return (*start, "cold air stays: ", *_values(spans, site), ". ", *_above_the_pool(crossing))
     if site.in_blocked_air:
-        return (*start, "the air is stopped and stays as it came: ", *_values(site), ".")
+        return (*start, "the air is stopped and stays as it came: ", *_values(spans, site), ".")
     return (
         *start,
         "air from ",
         *source_words(site),
         " arrives with ",
-        *_values(site),
+        *_values(spans, site),
         ": ",
         *difference(site.warming, "warmer than", "cooler than", "as warm as"),
         " the incoming air at the same height",
@@ -244,13 +265,13 @@ def _lee(crossing: Crossing, site: LeeAir) -> Words:
     )
 
 
-def _values(site: LeeAir) -> Words:
+def _values(spans: Spans, site: LeeAir) -> Words:
     return (
-        *with_ends(Amount(site.temperature, "temperature", 1), temperature_ends(site)),
+        *ranged(Amount(site.temperature, "temperature", 1), spans.temperature(site)),
         ", dew point ",
-        *with_ends(Amount(site.dew_point, "temperature", 1), dew_point_ends(site)),
+        *ranged(Amount(site.dew_point, "temperature", 1), spans.dew_point(site)),
         ", humidity ",
-        Amount(site.relative_humidity, "share"),
+        *ranged(Amount(site.relative_humidity, "share"), spans.at(site, "relative_humidity")),
     )
 
 
@@ -278,9 +299,9 @@ def _mainly(crossing: Crossing, site: LeeAir) -> Words:
     return (", mainly by ", *bare, " (", Amount(part, "temperature_change", 1), ")")
 
 
-def _wind(crossing: Crossing, site: LeeAir) -> Words:
+def _wind(spans: Spans, site: LeeAir) -> Words:
     """The wind down the lee and at the site."""
-    winds = crossing.winds
+    winds = spans.crossing.winds
     span = range_words(winds.low, winds.high)
     start: Words = ("The wind down the lee slope reaches ", Amount(winds.strongest, "wind"))
     if span:
@@ -291,8 +312,8 @@ def _wind(crossing: Crossing, site: LeeAir) -> Words:
     return (
         *start,
         f"; at {site.name} ",
-        Amount(site.wind.at_10m, "wind"),
+        *ranged(Amount(site.wind.at_10m, "wind"), spans.at(site, "wind_10m")),
         " at 10 m, gusts ",
-        *(range_words(site.wind.gust_low, site.wind.gust_high) or (Amount(site.wind.gust_high, "wind"),)),
+        *gusts(spans, site.wind, site),
         ".",
     )

@@ -11,6 +11,7 @@ import numpy as np
 from orolift.report.compare_explained import Explanation, explanation
 from orolift.report.compare_words import ANSWER_NAMES, QUANTITY_KINDS, QUANTITY_NAMES, magnitude, signed
 from orolift.report.figures.compare_scatter import compare_scatter
+from orolift.report.figures.compare_sources import compare_sources
 from orolift.report.figures.compare_timeline import compare_timeline
 from orolift.report.quantities import Amount
 from orolift.report.words import Words, counted, moment
@@ -19,6 +20,7 @@ from orolift.spread.comparison import QUANTITIES, REFERENCES, averaged
 if TYPE_CHECKING:
     from orolift.crossing.onset import OnsetRule, Spell
     from orolift.report.figures.compare_scatter import ScatterDrawing
+    from orolift.report.figures.compare_sources import SourcesDrawing
     from orolift.report.figures.compare_timeline import TimelineDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.quantities import Units
@@ -27,8 +29,8 @@ if TYPE_CHECKING:
     from orolift.spread.onset_series import OnsetAtPlace
     from orolift.spread.verification import Contingency
 
-MOST_ROWS = 80
-"""Rows of values on the page; the table as CSV has all."""
+MOST_ROWS = 40
+"""Rows of values on the page, those farthest from the middle of their range; the table as CSV has all."""
 CAUTIONS = (
     (
         "This is an estimate for trained people, not a warning. Official warning services, fire agencies, local codes "
@@ -53,6 +55,8 @@ class ValueRow:
     inside : str
         In words.
     is_inside : bool or None
+    away : float
+        Distance from the middle of the range in units of half of it; 0 without one.
     """
 
     name: str
@@ -63,6 +67,7 @@ class ValueRow:
     difference: Words
     inside: str
     is_inside: bool | None
+    away: float
 
 
 @dataclass(frozen=True)
@@ -133,6 +138,7 @@ class ComparePage:
     onset_heading: Words
     onset: tuple[Words, ...]
     explanation: Explanation | None
+    sources: Figure[SourcesDrawing] | None
     layers: tuple[LayerRow, ...]
     profile_heading: Words
     always: tuple[str, ...]
@@ -167,7 +173,7 @@ def compare_page(
     ComparePage
     """
     rows = value_rows(found)
-    cautions = dict.fromkeys([*found.cautions, *(text for one in found.estimates for text in one.crossing.cautions)])
+    cautions = dict.fromkeys(found.cautions)
     return ComparePage(
         title=f"{title}: against what was observed",
         when=_when(found, observed),
@@ -176,7 +182,7 @@ def compare_page(
         units=units,
         heading=_heading(found, rows),
         sentences=_sentences(found),
-        rows=rows[:MOST_ROWS],
+        rows=_farthest(rows),
         rows_left_out=max(len(rows) - MOST_ROWS, 0),
         values_heading=_values_heading(rows),
         scatter=compare_scatter(found, units),
@@ -187,6 +193,7 @@ def compare_page(
         onset_heading=_onset_heading(found),
         onset=(rule_words(found.rule), *onset_words(found)),
         explanation=explanation(found),
+        sources=compare_sources(found, units),
         layers=_layers(found),
         profile_heading=_profile_heading(found),
         always=CAUTIONS,
@@ -229,21 +236,34 @@ def value_rows(found: Compared) -> tuple[ValueRow, ...]:
                     order,
                     ValueRow(
                         name=found.names[place],
-                        time=_time(found.estimates[which].time),
+                        time=_time(float(found.estimates[which].arrival[place])),
                         quantity=QUANTITY_NAMES[quantity],
                         estimate=estimate,
                         observed=(Amount(float(means.observed[i]), kind, digits), several),
                         difference=signed(float(means.estimated[i] - means.observed[i]), *kinds.difference),
                         inside="" if np.isnan(inside) else "inside" if inside > 0.5 else "outside",
                         is_inside=None if np.isnan(inside) else inside > 0.5,
+                        away=_away(float(means.low[i]), float(means.high[i]), float(means.observed[i])),
                     ),
                 )
             )
     return tuple(row for _, _, _, row in sorted(rows, key=lambda item: item[:3]))
 
 
-def _time(time: float | None) -> str:
-    return "" if time is None else f"{datetime.fromtimestamp(time, UTC):%d %b %H:%M}"
+def _away(low: float, high: float, value: float) -> float:
+    """Distance from the middle of a range in units of half of it; 0 without a range."""
+    half = 0.5 * (high - low)
+    return abs(value - 0.5 * (low + high)) / half if half > 0.0 else 0.0
+
+
+def _farthest(rows: tuple[ValueRow, ...]) -> tuple[ValueRow, ...]:
+    """As many rows as the page has room for, in their order: those farthest from the middle of their range."""
+    order = sorted(range(len(rows)), key=lambda i: -rows[i].away)
+    return tuple(rows[i] for i in sorted(order[:MOST_ROWS]))
+
+
+def _time(time: float) -> str:
+    return "" if np.isnan(time) else f"{datetime.fromtimestamp(time, UTC):%d %b %H:%M}"
 
 
 def _when(found: Compared, observed: str) -> str:
@@ -373,17 +393,17 @@ def rule_words(rule: OnsetRule) -> Words:
         "Air counts as air from over the crest when its potential temperature is at least that at the crest",
     )
     if rule.offset:
-        word = "less" if rule.offset > 0.0 else "more"
-        words = (*words, ", ", Amount(abs(rule.offset), "temperature_difference", 1), f" {word},")
+        sign = "less" if rule.offset > 0.0 else "plus"
+        words = (*words, f" {sign} ", Amount(abs(rule.offset), "temperature_difference", 1))
+    words = (*words, " and it blows with at least ", Amount(rule.least_speed, "wind"))
     if rule.sector is not None:
         start, end = (Amount(x % (2.0 * np.pi), "bearing") for x in rule.sector)
-        words = (*words, " the lee wind blows from ", start, " to ", end)
+        words = (*words, " from between ", start, " and ", end)
+    bridge = Amount(rule.bridge, "hours")
     return (
         *words,
-        " and it blows with at least ",
-        Amount(rule.least_speed, "wind"),
         " (Vergeiner 2004; Drechsel and Mayr 2008). Interruptions of up to ",
-        Amount(rule.bridge, "hours"),
+        bridge,
         " are bridged.",
     )
 
@@ -438,6 +458,9 @@ def _spell_words(spells: tuple[Spell, ...]) -> Words:
     parts = []
     for spell in spells[:6]:
         start, end = _time(spell.start), _time(spell.end)
+        if spell.start == spell.end:
+            parts.append(f"at {start} UTC")
+            continue
         first = f"from before {start}" if spell.open_start else f"from {start}"
         last = f"at least to {end}" if spell.open_end else f"to {end}"
         parts.append(f"{first} {last} UTC")

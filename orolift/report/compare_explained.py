@@ -58,12 +58,15 @@ class Explanation:
     heading : Words
     sentences : tuple of Words
     rows : tuple of ValueRow
+    best_name : str
+        What the column of best values holds.
     upwind : tuple of UpwindRow
     """
 
     heading: Words
     sentences: tuple[Words, ...]
     rows: tuple[ValueRow, ...]
+    best_name: str
     upwind: tuple[UpwindRow, ...]
 
 
@@ -85,6 +88,7 @@ def explanation(found: Compared) -> Explanation | None:
         heading=_heading(one),
         sentences=(_what(one, found.names[one.place]), _answers(one), *_own(one), _bounds(one)),
         rows=_rows(one),
+        best_name="One answer" if one.explanation.valleys else "Nearest",
         upwind=tuple(_upwind(error) for error in one.upwind),
     )
 

@@ -45,7 +45,7 @@ class FireRow:
     fuel: Amount
     fosberg: Amount | None
     drought: Amount | None
-    hot_dry_windy: Amount
+    hot_dry_windy: Amount | None
 
 
 @dataclass(frozen=True)
@@ -223,7 +223,7 @@ def _row(site: SiteFire, air: LeeAir, number: int) -> FireRow:
         fuel=Amount(float(one.equilibrium_fuel_moisture), "share", 1),
         fosberg=_amount(one.fosberg_index, "plain"),
         drought=_amount(one.fosberg_index_with_drought, "plain"),
-        hot_dry_windy=Amount(float(one.hot_dry_windy), "plain"),
+        hot_dry_windy=_amount(one.hot_dry_windy, "plain"),
     )
 
 

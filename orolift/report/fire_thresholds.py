@@ -6,7 +6,8 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from orolift.fire.movers import REACH
-from orolift.fire.words import limit_words, named
+from orolift.fire.winds import WindMeant
+from orolift.fire.words import limit_words, named, wind_words
 from orolift.report.quantities import Amount
 from orolift.report.story import where_words
 from orolift.report.words import counted
@@ -33,7 +34,7 @@ _DIFFERENCES: dict[str, Kind] = {
 class ConditionRow:
     """One condition: what, its limit, the value, by how much, what would turn it."""
 
-    what: str
+    what: Words
     limit: Words
     value: Amount | None
     margin: Words
@@ -126,7 +127,9 @@ def headline(found: tuple[SiteFire, ...]) -> Headline:
         if here:
             rules = list(dict.fromkeys(one.rule.name for _, one in here))
             names = tuple(dict.fromkeys(name for name, _ in here))
-            where = names[0] if len(names) == 1 else counted(len(names), "site", "sites").lower()
+            before = {site.name for site in found if site.side == "windward"}
+            one_name = f"{names[0]}, before the crest" if names[0] in before else names[0]
+            where = one_name if len(names) == 1 else counted(len(names), "site", "sites").lower()
             many = counted(len(rules), "threshold", "thresholds").capitalize()
             what = f"“{rules[0]}” is" if len(rules) == 1 else f"{many} are"
             return Headline(f"{what} met at {where}{how}", names)
@@ -166,14 +169,14 @@ def _status(judged: JudgedRule) -> str:
 
 
 def _condition(one: JudgedCondition, moves: tuple[Mover, ...]) -> ConditionRow:
-    words, measure, digits = named(one.condition.quantity)
+    _, measure, digits = named(one.condition.quantity)
     kind: Kind = measure
     apart: Words = ("not known",)
     if one.margin is not None:
         by = Amount(abs(one.margin), _DIFFERENCES.get(measure, kind), max(digits, 1))
         apart = ("met by " if one.margin >= 0.0 else "missed by ", by)
     return ConditionRow(
-        what=words,
+        what=_what(one.condition.quantity),
         limit=(f"{limit_words(one.condition)} ", Amount(one.condition.limit, kind, digits)),
         value=None if one.value is None else Amount(one.value, kind, digits),
         margin=apart,
@@ -181,6 +184,15 @@ def _condition(one: JudgedCondition, moves: tuple[Mover, ...]) -> ConditionRow:
         movers=_movers(moves),
         chance=None if one.chance is None else Amount(one.chance, "share"),
     )
+
+
+def _what(quantity: str | WindMeant) -> Words:
+    """Name of a quantity; of a wind with its height as an amount."""
+    if not isinstance(quantity, WindMeant):
+        return (named(quantity).words,)
+    digits = 0 if quantity.height == round(quantity.height) else 1
+    kind, average = wind_words(quantity)
+    return (f"{kind} at ", Amount(quantity.height, "height", digits), f", mean of {average}")
 
 
 def _movers(moves: tuple[Mover, ...]) -> Words:

@@ -22,16 +22,18 @@ if TYPE_CHECKING:
     from orolift.report.quantities import Kind, Units
     from orolift.report.words import Words
     from orolift.spread.site_state import SiteState
-    from orolift.spread.timeline import DryWind, Hours, SiteTimeline
+    from orolift.spread.timeline import Hours, SiteTimeline, Stretch
 
 MOST_ROWS = 400
 """Hours of a site in the table of the page; more are in the CSV table."""
+LEAST_RAIN = 0.1
+"""Rain [kg m-2] below which none is said to fall."""
 NAMED = 4
 """Sites named one by one at the head of the page."""
 
 
 @dataclass(frozen=True)
-class DryWindRow:
+class StretchRow:
     """A stretch of descending warm dry air, as the table has it; times in words."""
 
     onset: str
@@ -70,9 +72,10 @@ class SiteHours:
     number: int
     name: str
     heading: Words
+    dangers: tuple[Words, ...]
     sentences: tuple[Words, ...]
     figure: Figure[TimelineDrawing]
-    dry_winds: tuple[DryWindRow, ...]
+    dry_winds: tuple[StretchRow, ...]
     rows: tuple[HourRow, ...]
     left_out: int
 
@@ -100,6 +103,8 @@ class HoursPage:
     version : str
     units : 'metric' or 'us'
     heading : Words
+    dangers : tuple of Words
+        Thresholds met, at the sites named at the head.
     lead : tuple of Words
     sites : tuple of SiteHours
     catchments : tuple of CatchmentRow
@@ -116,6 +121,7 @@ class HoursPage:
     version: str
     units: Units
     heading: Words
+    dangers: tuple[Words, ...]
     lead: tuple[Words, ...]
     sites: tuple[SiteHours, ...]
     catchments: tuple[CatchmentRow, ...]
@@ -142,17 +148,21 @@ HOW = (
     ),
     (
         "Onset and end lie halfway between the last hour without and the first with it. Their error, one standard "
-        "deviation, joins half the time between these hours, 15 % of the time on the way for the wind along it, and "
-        "the spread of that time between the streamlines that arrive. What else is uncertain, the incoming air first "
-        "of all, is not in it."
+        "deviation, joins half the time between these hours, the share of the time on the way that the wind is "
+        "uncertain by, and the spread of that time between the streamlines that arrive. What else is uncertain, "
+        "the incoming air first of all, is not in it."
     ),
     (
         "Nothing is interpolated: hours that are missing or cannot be used stay empty, and hours in which no air "
         "crosses are shown as such."
     ),
     (
-        "The Fine Fuel Moisture Code is carried from hour to hour (Van Wagner 1977) from 85 before the first; over "
-        "hours without air it is not known and goes on from where it was."
+        "A threshold of the region counts as met in stretches as long as its rule asks for; hours without air that "
+        "crosses do not meet it, and missing hours cannot be judged."
+    ),
+    (
+        "The Fine Fuel Moisture Code is carried from hour to hour (Van Wagner 1977) from the code of the case, or 85; "
+        "over hours without air it is not known and goes on from where it was."
     ),
 )
 """How times and stretches are worked out, for the page."""
@@ -205,6 +215,7 @@ def hours_page(
         version=version,
         units=units,
         heading=_heading(hours),
+        dangers=tuple(words for site in hours.sites[:NAMED] for words in _dangers(site, zone)),
         lead=_lead(hours, zone),
         sites=tuple(_site(hours, number, zone, units) for number in range(len(hours.sites))),
         catchments=_catchments(hours, zone),
@@ -290,7 +301,7 @@ def _lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
         more = len(hours.sites) - NAMED
         out.append((f"{counted(more, 'more site follows', 'more sites follow')} below.".capitalize(),))
     wettest = max(hours.sites, key=lambda site: site.rain)
-    if wettest.rain >= 0.1:
+    if wettest.rain >= LEAST_RAIN:
         out.append((f"Most rain falls at {wettest.name}: ", Amount(wettest.rain, "water_depth", 0), " in all."))
     return tuple(out)
 
@@ -309,14 +320,14 @@ def _outcome(site: SiteTimeline, zone: tzinfo) -> Words:
     return (f"Descending warm dry air comes to {site.name} {times}, longest ", *_from_to(longest, zone))
 
 
-def _from_to(one: DryWind, zone: tzinfo) -> Words:
+def _from_to(one: Stretch, zone: tzinfo) -> Words:
     parts: list[str | Amount] = []
     if one.onset is None or one.onset_error is None:
-        parts.append("from the first hour known")
+        parts.append("from the first hour that can be judged")
     else:
         parts += [f"from {about(one.onset, one.onset_error, zone)} (± ", Amount(one.onset_error, "hours", 1), ")"]
     if one.end is None or one.end_error is None:
-        parts.append(" to the last hour known")
+        parts.append(" to the last that can be judged")
     else:
         parts += [f" to {about(one.end, one.end_error, zone)} (± ", Amount(one.end_error, "hours", 1), ")"]
     return tuple(parts)
@@ -329,12 +340,27 @@ def _site(hours: Hours, number: int, zone: tzinfo, units: Units) -> SiteHours:
         number=number + 1,
         name=site.name,
         heading=_outcome(site, zone),
+        dangers=_dangers(site, zone),
         sentences=_counts(site),
         figure=timeline_figure(hours, number, zone, units),
         dry_winds=tuple(_dry_wind(site, one, zone) for one in site.dry_winds[:MOST_ROWS]),
         rows=rows,
         left_out=len(site.states) - len(rows),
     )
+
+
+def _dangers(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
+    """Thresholds of the region that are met, and when."""
+    out: list[Words] = []
+    for one in site.thresholds:
+        found = one.stretches
+        if not found:
+            continue
+        longest = max(found, key=lambda stretch: stretch.last - stretch.first)
+        often = "" if len(found) == 1 else f" {counted(len(found), 'time', 'times')}, longest"
+        start = f"Threshold met at {site.name}: {one.rule.name},{often} "
+        out.append((start, *_from_to(longest, zone), "."))
+    return tuple(out)
 
 
 def _counts(site: SiteTimeline) -> tuple[Words, ...]:
@@ -350,9 +376,11 @@ def _counts(site: SiteTimeline) -> tuple[Words, ...]:
             " hours",
             *((", in ", Amount(still, "plain"), " it does not") if still else ()),
             *((", and ", Amount(missing, "plain"), " are missing") if missing else ()),
-            "; ",
-            Amount(site.rain, "water_depth", 1),
-            " of rain and snow fall in the hours that cross.",
+            *(
+                ("; ", Amount(site.rain, "water_depth", 1), " of rain and snow fall in the hours that cross.")
+                if site.rain >= LEAST_RAIN
+                else ("; no rain to speak of falls.",)
+            ),
         )
     ]
     reasons = [state.reason for state in site.states if state.status == "missing" and state.reason]
@@ -363,17 +391,17 @@ def _counts(site: SiteTimeline) -> tuple[Words, ...]:
     return tuple(out)
 
 
-def _dry_wind(site: SiteTimeline, one: DryWind, zone: tzinfo) -> DryWindRow:
+def _dry_wind(site: SiteTimeline, one: Stretch, zone: tzinfo) -> StretchRow:
     states = [state for state in site.states[one.first : one.last + 1] if state.status == "crossing"]
 
     def end(key: str, kind: Kind, digits: int, most: bool) -> Amount | None:
         values = [value for state in states if (value := getattr(state, key)) is not None]
         return Amount((max if most else min)(values), kind, digits) if values else None
 
-    return DryWindRow(
-        onset="before the first hour" if one.onset is None else about(one.onset, one.onset_error or 0.0, zone),
+    return StretchRow(
+        onset="before what can be judged" if one.onset is None else about(one.onset, one.onset_error or 0.0, zone),
         onset_error=None if one.onset_error is None else Amount(one.onset_error, "hours", 1),
-        end="after the last hour" if one.end is None else about(one.end, one.end_error or 0.0, zone),
+        end="after what can be judged" if one.end is None else about(one.end, one.end_error or 0.0, zone),
         end_error=None if one.end_error is None else Amount(one.end_error, "hours", 1),
         length=None if one.onset is None or one.end is None else Amount(one.end - one.onset, "hours", 0),
         warmest=end("temperature", "temperature", 0, most=True),

@@ -7,24 +7,22 @@ from typing import TYPE_CHECKING
 
 from orolift.report.lee_wind import range_words
 from orolift.report.quantities import Amount
+from orolift.report.spans import Spans, ranged
 from orolift.report.story import (
     blocked_words,
     cloudy_to_the_end,
-    dew_point_ends,
-    drying_ends,
     fallen_share,
     is_blocked,
     rains,
     reaches_the_ground_or_not,
     source_words,
     starts_saturated,
-    temperature_ends,
-    with_ends,
 )
 from orolift.report.words import Words, sentence
 
 if TYPE_CHECKING:
-    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.crossing.result import LeeAir
+    from orolift.crossing.wind import SiteWind
 
 
 @dataclass(frozen=True)
@@ -50,12 +48,13 @@ class KeyNumber:
     remark: Words
 
 
-def key_numbers(crossing: Crossing, site: LeeAir, freezing_level: float) -> tuple[KeyNumber, ...]:
+def key_numbers(spans: Spans, site: LeeAir, freezing_level: float) -> tuple[KeyNumber, ...]:
     """The key numbers of a crossing.
 
     Parameters
     ----------
-    crossing : Crossing
+    spans : Spans
+        The crossing with its ranges.
     site : LeeAir
         The main site.
     freezing_level : float [m]
@@ -65,53 +64,71 @@ def key_numbers(crossing: Crossing, site: LeeAir, freezing_level: float) -> tupl
     -------
     tuple of KeyNumber
     """
+    crossing = spans.crossing
+    crest_wind = _number(
+        "Wind across the crest", Amount(crossing.flow.crest_wind, "wind"), spans.of("cross_range_wind"), _layer_words()
+    )
+    dew_point = ranged(Amount(site.dew_point, "temperature", 1), spans.dew_point(site))
     return (
-        _temperature_number(crossing, site),
-        KeyNumber(
+        _temperature_number(spans, site),
+        _number(
             f"{site.name}, humidity",
             Amount(site.relative_humidity, "share"),
-            "",
-            (),
-            ("dew point ", *with_ends(Amount(site.dew_point, "temperature", 1), dew_point_ends(site))),
+            spans.at(site, "relative_humidity"),
+            ("dew point ", *dew_point),
         ),
-        _wind_number(site),
-        _blocked_number(crossing),
+        _wind_number(spans, site),
+        _blocked_number(spans),
         _source_number(site),
-        _cloud_number(crossing),
-        _fallen_number(crossing),
-        KeyNumber("Wind across the crest", Amount(crossing.flow.crest_wind, "wind"), "", (), _layer_words()),
-        _freezing_number(crossing, freezing_level),
+        _cloud_number(spans),
+        _fallen_number(spans),
+        crest_wind,
+        _freezing_number(spans, freezing_level),
     )
 
 
-def _temperature_number(crossing: Crossing, site: LeeAir) -> KeyNumber:
-    here = Amount(site.temperature, "temperature", 1)
-    _, *span = with_ends(here, temperature_ends(site))
+def _number(name: str, amount: Amount, ends: tuple[float, float] | None, remark: Words) -> KeyNumber:
+    """A key number with its range."""
+    first, *span = ranged(amount, ends)
+    if not isinstance(first, Amount):
+        raise TypeError("an amount comes first")
+    return KeyNumber(name, first, "", tuple(span), remark)
+
+
+def _temperature_number(spans: Spans, site: LeeAir) -> KeyNumber:
+    crossing = spans.crossing
     before = Amount(site.upwind_temperature, "temperature", 1)
     remark: Words = sentence(("incoming air at that height: ", before))
     if reaches_the_ground_or_not(crossing, site):
         remark = ("if the air breaks through; about ", before, " if a cold pool stays")
-    return KeyNumber(f"{site.name}, temperature", here, "", tuple(span), remark)
+    here = Amount(site.temperature, "temperature", 1)
+    return _number(f"{site.name}, temperature", here, spans.temperature(site), remark)
 
 
-def _wind_number(site: LeeAir) -> KeyNumber:
+def _wind_number(spans: Spans, site: LeeAir) -> KeyNumber:
     name = f"{site.name}, wind"
     if site.wind is None:
         return KeyNumber(name, None, "hardly any", (), ("cold air that stays" if site.in_pool else "blocked air",))
-    gusts = range_words(site.wind.gust_low, site.wind.gust_high) or (Amount(site.wind.gust_high, "wind"),)
-    return KeyNumber(name, Amount(site.wind.at_10m, "wind"), "", (), ("at 10 m; gusts ", *gusts))
+    span = gusts(spans, site.wind, site)
+    at_10m = Amount(site.wind.at_10m, "wind")
+    return _number(name, at_10m, spans.at(site, "wind_10m"), ("at 10 m; gusts ", *span))
 
 
-def _blocked_number(crossing: Crossing) -> KeyNumber:
-    flow = crossing.flow
-    number = Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2)
+def _blocked_number(spans: Spans) -> KeyNumber:
+    crossing, flow = spans.crossing, spans.crossing.flow
+    amount = Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2)
+    number = ranged(amount, spans.of("nondimensional_height"))
     if not is_blocked(crossing):
-        return KeyNumber("Air stopped below", None, "no layer", (), ("N h/U ", number, f": {flow.regime}"))
-    top, *span = blocked_words(crossing)
-    share: Words = ("; ", Amount(flow.going_round_share, "share"), " of it goes round")
+        return KeyNumber("Air stopped below", None, "no layer", (), ("N h/U ", *number, f": {flow.regime}"))
+    top, *span = blocked_with_range(spans)
+    share: Words = (
+        "; ",
+        *ranged(Amount(flow.going_round_share, "share"), spans.of("going_round_share")),
+        " of it goes round",
+    )
     if not isinstance(top, Amount):
         raise TypeError("a height comes first")
-    return KeyNumber("Air stopped below", top, "", tuple(span), ("N h/U ", number, f": {flow.regime}", *share))
+    return KeyNumber("Air stopped below", top, "", tuple(span), ("N h/U ", *number, f": {flow.regime}", *share))
 
 
 def _source_number(site: LeeAir) -> KeyNumber:
@@ -128,8 +145,8 @@ def _layer_words() -> Words:
     return ("mean of the lowest ", Amount(CREST_LAYER, "height"), " above it")
 
 
-def _cloud_number(crossing: Crossing) -> KeyNumber:
-    cloud = crossing.cloud
+def _cloud_number(spans: Spans) -> KeyNumber:
+    crossing, cloud = spans.crossing, spans.crossing.cloud
     if cloud.base is None:
         return KeyNumber("Cloud base", None, "no cloud", (), ("the air stays short of saturation",))
     if starts_saturated(crossing):
@@ -140,30 +157,27 @@ def _cloud_number(crossing: Crossing) -> KeyNumber:
         remark = (f"{where}; cloud to the downwind end",)
     elif cloud.end is not None:
         remark = (f"{where}; cloud ends at ", Amount(cloud.end, "height", -1), " in the lee")
-    return KeyNumber("Cloud base", Amount(cloud.base, "height", -1), "", (), remark)
+    return _number("Cloud base", Amount(cloud.base, "height", -1), spans.of("cloud_base"), remark)
 
 
-def _fallen_number(crossing: Crossing) -> KeyNumber:
+def _fallen_number(spans: Spans) -> KeyNumber:
+    crossing = spans.crossing
     if not rains(crossing):
         why = "nothing condenses" if crossing.cloud.base is None else "hardly anything condenses"
         return KeyNumber("Falls out", None, "nothing", (), (why,))
     fallen = Amount(fallen_share(crossing), "share")
-    _, *span = with_ends(fallen, drying_ends(crossing))
-    return KeyNumber(
-        "Falls out",
-        fallen,
-        "",
-        tuple(span),
-        ("of the crossing vapour", *_windward_words(crossing)),
-    )
+    return _number("Falls out", fallen, spans.drying(), ("of the crossing vapour", *_windward_words(spans)))
 
 
-def _windward_words(crossing: Crossing) -> Words:
-    share = crossing.rain.windward_share
-    return () if share is None else ("; ", Amount(share, "share"), " of it before the crest")
+def _windward_words(spans: Spans) -> Words:
+    share = spans.crossing.rain.windward_share
+    if share is None:
+        return ()
+    return ("; ", *ranged(Amount(share, "share"), spans.of("windward_share")), " of it before the crest")
 
 
-def _freezing_number(crossing: Crossing, level: float) -> KeyNumber:
+def _freezing_number(spans: Spans, level: float) -> KeyNumber:
+    crossing = spans.crossing
     column = crossing.incoming.height
     if level <= column[0]:
         return KeyNumber(
@@ -172,4 +186,17 @@ def _freezing_number(crossing: Crossing, level: float) -> KeyNumber:
     above = level - crossing.features.crest
     where = "above" if above >= 0.0 else "below"
     remark: Words = ("in the incoming air, ", Amount(abs(above), "height", -1), f" {where} the crest")
-    return KeyNumber("Freezing level", Amount(level, "height", -1), "", (), remark)
+    return _number("Freezing level", Amount(level, "height", -1), spans.of("freezing_level"), remark)
+
+
+def blocked_with_range(spans: Spans) -> Words:
+    """The blocked top with its range."""
+    if spans.spread is None:
+        return blocked_words(spans.crossing)
+    return ranged(Amount(spans.crossing.flow.blocked_top, "height", -1), spans.of("blocked_top"))
+
+
+def gusts(spans: Spans, wind: SiteWind, site: LeeAir) -> Words:
+    """The range of the gusts: of the members, else of the law alone."""
+    low, high = spans.at(site, "gust") or (wind.gust_low, wind.gust_high)
+    return range_words(low, high) or (Amount(high, "wind"),)

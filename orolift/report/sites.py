@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.report.quantities import Amount, Kind
+from orolift.report.spans import Spans, digits_for
 from orolift.report.story import SAME, difference, first_sites, source_words, where_words
 from orolift.report.words import Words, counted, sentence
 
@@ -36,12 +37,14 @@ class SiteRow:
     temperature, dew_point, relative_humidity, mixing_ratio : Amount
         Its air.
     source : Words
-        Heights it comes from: median, 10 % and 90 %; empty in a pool.
+        Median of the heights it comes from; empty in a pool.
     went_round : Amount
     upwind_temperature, upwind_dew_point : Amount
         The incoming air at the same height.
     warming : Amount
         Site minus incoming air.
+    spans : dict of str to Words
+        Ranges of some of the columns, by their names; of the heights, 10 % and 90 % by mass.
     """
 
     number: int
@@ -59,6 +62,7 @@ class SiteRow:
     upwind_temperature: Amount
     upwind_dew_point: Amount
     warming: Amount
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -131,22 +135,25 @@ class Sites:
     remarks: tuple[Words, ...]
 
 
-def sites(crossing: Crossing) -> Sites:
+def sites(crossing: Crossing, spans: Spans | None = None) -> Sites:
     """The sites of a crossing, in the order of the case.
 
     Parameters
     ----------
     crossing : Crossing
+    spans : Spans, optional
+        Ranges.
 
     Returns
     -------
     Sites
     """
+    spans = spans or Spans(crossing, None)
     many = len(crossing.lee) > MOST_FULL
     by_warmth = sorted(crossing.lee, key=lambda air: -air.warming) if many else []
     return Sites(
         heading=_heading(crossing.lee),
-        rows=() if many else tuple(_row(air, air.number, crossing) for air in crossing.lee),
+        rows=() if many else tuple(_row(air, air.number, spans) for air in crossing.lee),
         short_rows=tuple(_short(air, crossing) for air in by_warmth),
         sides=_sides(crossing.lee) if many else (),
         panels=tuple(_panel(air, crossing) for air in first_sites(crossing).lee),
@@ -187,16 +194,16 @@ def _sides(lee: tuple[LeeAir, ...]) -> tuple[SideRow, ...]:
             SideRow(
                 side=side,
                 count=str(len(here)),
-                temperature=_span([air.temperature for air in here], "temperature", 1),
-                relative_humidity=_span([air.relative_humidity for air in here], "share"),
-                warming=_span([air.warming for air in here], "temperature_change", 1),
-                wind_10m=_span(winds, "wind") if winds else ("–",),
+                temperature=_from_to([air.temperature for air in here], "temperature", 1),
+                relative_humidity=_from_to([air.relative_humidity for air in here], "share"),
+                warming=_from_to([air.warming for air in here], "temperature_change", 1),
+                wind_10m=_from_to(winds, "wind") if winds else ("–",),
             )
         )
     return tuple(out)
 
 
-def _span(values: list[float], kind: Kind, digits: int = 0) -> Words:
+def _from_to(values: list[float], kind: Kind, digits: int = 0) -> Words:
     return (Amount(min(values), kind, digits, bare=True), " to ", Amount(max(values), kind, digits, bare=True))
 
 
@@ -250,24 +257,44 @@ def _failed(crossing: Crossing) -> tuple[tuple[str, str], ...]:
     return tuple(out)
 
 
-def _row(air: LeeAir, number: int, crossing: Crossing) -> SiteRow:
+def _row(air: LeeAir, number: int, spans: Spans) -> SiteRow:
     return SiteRow(
         number=number,
         name=air.name,
         side=air.side,
         remark=where_words(air),
-        distance=Amount(air.distance + crossing.transect.origin, "distance", 1),
+        distance=Amount(air.distance + spans.crossing.transect.origin, "distance", 1),
         elevation=Amount(air.elevation, "height"),
         temperature=Amount(air.temperature, "temperature", 1),
         dew_point=Amount(air.dew_point, "temperature", 1),
         relative_humidity=Amount(air.relative_humidity, "share"),
         mixing_ratio=Amount(air.mixing_ratio, "mixing_ratio", 1),
-        source=source_words(air),
+        source=source_words(air)[:1],
         went_round=Amount(air.went_round, "share"),
         upwind_temperature=Amount(air.upwind_temperature, "temperature", 1),
         upwind_dew_point=Amount(air.upwind_dew_point, "temperature", 1),
         warming=Amount(air.warming, "temperature_change", 1),
+        spans={name: _span(spans.at(air, name), amount) for name, amount in _RANGED.items()}
+        | {"source": tuple(source_words(air)[2:5])},
     )
+
+
+_RANGED = {
+    "temperature": Amount(0.0, "temperature", 1),
+    "dew_point": Amount(0.0, "temperature", 1),
+    "relative_humidity": Amount(0.0, "share"),
+    "warming": Amount(0.0, "temperature_change", 1),
+}
+"""Columns that carry a range, and how finely it is shown at most."""
+
+
+def _span(ends: tuple[float, float] | None, like: Amount) -> Words:
+    """A range for the second line of a cell; nothing without one."""
+    if ends is None:
+        return ()
+    digits = digits_for(like, ends)
+    low, high = (Amount(value, like.kind, digits, bare=True) for value in ends)
+    return (low, " to ", high)
 
 
 def _heading(lee: tuple[LeeAir, ...]) -> Words:
@@ -303,7 +330,7 @@ def _heading(lee: tuple[LeeAir, ...]) -> Words:
 def _remarks(crossing: Crossing) -> tuple[Words, ...]:
     heights = (
         " above it, mixed. It comes from the heights named: half of it, by mass, started below the first, a tenth "
-        "below and a tenth above those in brackets."
+        "below and a tenth above those beneath it."
     )
     depth = Amount(float(np.asarray(crossing.settings.mixing_depth)), "height")
     out: list[Words] = [("A site has the air of the lowest ", depth, heights)]

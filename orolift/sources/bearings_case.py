@@ -6,19 +6,18 @@ import math
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from orolift.crossing.result import Site
 from orolift.errors import CaseError, OroliftError
 from orolift.sources.inputs import read_inputs, situation_of
-from orolift.sources.site_places import every_site
+from orolift.sources.own_lines import own_lines, sites_of
 from orolift.spread.bearings import BearingTask, reversed_situation, turned_air
 from orolift.spread.hours import OneLine
 from orolift.spread.site_state import SiteState
-from orolift.terrain.features import features
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Iterator
     from pathlib import Path
 
+    from orolift.crossing.result import Site
     from orolift.crossing.situation import Situation
     from orolift.sources.inputs import Inputs
 
@@ -74,9 +73,8 @@ def read_bearings(case: str | Path, step_deg: int) -> BearingSetup:
     if not 1 <= step_deg <= 90 or 360 % step_deg:
         raise CaseError(f"--step {step_deg}: it must divide 360 and be 1 to 90 degrees, for example 10.")
     inputs = read_inputs(case)
-    situation = replace(situation_of(inputs), ends_too=False, lee=None)
-    shape = features(inputs.transect, inputs.sites[0].distance if inputs.sites else None)
-    sites = every_site(inputs.places) or (Site("Lee foot", shape.lee_foot_distance),)
+    situation = replace(situation_of(inputs), in_full=False, lee=None)
+    sites = sites_of(inputs)
     notes = [
         (
             "All winds of the incoming air are turned together; in the case itself it comes from "
@@ -88,8 +86,6 @@ def read_bearings(case: str | Path, step_deg: int) -> BearingSetup:
         notes.append("What [lee] says of the air in the lee is left out: it holds for one side of the range.")
     own_line = None
     if inputs.case.terrain.elevation_file is not None:
-        from orolift.sources.own_lines import own_lines
-
         own_line = own_lines(inputs, sites)[0]
         notes.append("Every site has a line of its own in every direction.")
     else:

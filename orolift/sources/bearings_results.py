@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Literal
 
 from pydantic import Field
 
-from orolift.sources.hours_results import QUANTITIES, Flags, Numbers, numbers
+from orolift.sources.hours_results import QUANTITIES, Flags, Numbers, numbers, said
 from orolift.sources.result_block import Block
 from orolift.sources.results import CaseBlock, Program, case_block, program
 from orolift.spread.timeline import values_of
@@ -158,10 +158,3 @@ def bearing_rows(results: BearingsResults) -> tuple[list[str], list[list[object]
         columns = [getattr(site.directions, key) for key in keys]
         rows += [[site.name, *map(said, row)] for row in zip(*columns, strict=True)]
     return ["site", *keys], rows
-
-
-def said(value: object) -> object:
-    """Truth as a word, for a table."""
-    if isinstance(value, bool):
-        return "true" if value else "false"
-    return value

@@ -26,6 +26,7 @@ from orolift.sources.case_table import (
 from orolift.sources.fire_model import Fire
 from orolift.sources.incoming_model import Incoming, Station
 from orolift.sources.rain_model import Catchments, GaugesTable, Rain, keys_of_a_map
+from orolift.sources.spread_model import SpreadTable
 from orolift.sources.units import UNITS
 
 __all__ = [
@@ -38,6 +39,7 @@ __all__ = [
     "Place",
     "Rain",
     "SiteTable",
+    "SpreadTable",
     "Station",
     "Terrain",
     "TransectTable",
@@ -178,6 +180,7 @@ class Case(Table):
     rain: Rain = Rain()
     lee: LeeTable = LeeTable()
     heat: HeatTable = HeatTable()
+    spread: SpreadTable = SpreadTable()
     catchments: Catchments | None = None
     gauges: GaugesTable | None = None
     fire: Fire | None = None

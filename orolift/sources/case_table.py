@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from typing import Annotated, Any
+from typing import Annotated, Any, ClassVar
 
 from pydantic import BaseModel, ConfigDict, Field, ValidationInfo, model_validator
 
@@ -24,6 +24,9 @@ def is_number(value: object) -> bool:
 class Table(BaseModel):
     """One table of the case file."""
 
+    differences: ClassVar[bool] = False
+    """Whether its numbers are differences: a degree Fahrenheit is then 5/9 of a degree Celsius, without an offset."""
+
     model_config = ConfigDict(strict=True, extra="forbid", allow_inf_nan=False, frozen=True)
 
     @model_validator(mode="before")
@@ -42,19 +45,19 @@ class Table(BaseModel):
                 continue
             if wanted in out:
                 raise ValueError(f"{wanted} and {key} say the same thing; keep one of them")
-            out[wanted] = _converted(value, key, wanted)
+            out[wanted] = _converted(value, key, wanted, difference=cls.differences)
             if is_number(value) and isinstance(info.context, dict):
                 info.context[(cls.__name__, wanted)] = f"{key} = {value}"
         return out
 
 
-def _converted(value: Any, key: str, wanted: str) -> Any:
+def _converted(value: Any, key: str, wanted: str, *, difference: bool = False) -> Any:
     """Value given under `key` in the unit of `wanted`; of pairs, as a ridge has, the second number."""
     given, usual = suffix_of(key), suffix_of(wanted)
     if given is None or usual is None:
         return value
     if is_number(value):
-        return converted(float(value), given[1], usual[1])
+        return converted(float(value), given[1], usual[1], difference=difference)
     if isinstance(value, list):
         return [[*pair[:-1], _converted(pair[-1], key, wanted)] if _is_pair(pair) else pair for pair in value]
     return value

@@ -459,7 +459,7 @@ def _rows(found: Compared) -> Iterator[Sequence[object]]:
         time = found.seen.time[pairs.row]
         if pairs.row.size > MOST_LISTED:
             pairs, count = averaged(pairs)
-            time = np.array([found.estimates[k].time or np.nan for k in pairs.which.tolist()])
+            time = np.array([found.estimates[k].arrival[p] for k, p in zip(pairs.which, pairs.place, strict=True)])
         yield from _quantity_rows(found, quantity, pairs, time.tolist(), count.tolist())
 
 

@@ -86,7 +86,7 @@ class FireBlock(Block):
     fosberg_index: float | None = Field(description="at most 100")
     fosberg_index_raw: float | None
     fosberg_index_with_drought: float | None
-    hot_dry_windy: float = Field(description="hPa m/s")
+    hot_dry_windy: float | None = Field(description="hPa m/s")
     fine_fuel_code: float | None = Field(description="daily")
     fine_fuel_code_after_1_h: float | None
     fine_fuel_code_after_3_h: float | None
@@ -146,7 +146,7 @@ def _block(site: SiteFire) -> FireBlock:
         fosberg_index=_known(found.fosberg_index),
         fosberg_index_raw=_known(found.fosberg_index_raw),
         fosberg_index_with_drought=_known(found.fosberg_index_with_drought),
-        hot_dry_windy=float(found.hot_dry_windy),
+        hot_dry_windy=_known(found.hot_dry_windy),
         fine_fuel_code=_known(found.fine_fuel_code),
         fine_fuel_code_after_1_h=hours[0],
         fine_fuel_code_after_3_h=hours[1],
@@ -158,7 +158,35 @@ def _block(site: SiteFire) -> FireBlock:
         mixing_height_by_day_m=site.night.mixing_height_by_day,
         night=_night(site),
         rules=[_rule(threshold) for threshold in site.thresholds],
+        range=_ranges(site),
     )
+
+
+_RANGES = {
+    "vapour_pressure_deficit": ("vapour_pressure_deficit_hpa", 0.01),
+    "equilibrium_fuel_moisture": ("equilibrium_fuel_moisture_percent", 100.0),
+    **{
+        name: (name, 1.0)
+        for name in (
+            "fosberg_index",
+            "fosberg_index_raw",
+            "fosberg_index_with_drought",
+            "hot_dry_windy",
+            "fine_fuel_code",
+            "initial_spread_index",
+            "angstroem_index",
+        )
+    },
+}
+
+
+def _ranges(site: SiteFire) -> Range:
+    """Ranges of the members under the keys of the block."""
+    return {
+        key: (factor * site.ranges[name][0], factor * site.ranges[name][1])
+        for name, (key, factor) in _RANGES.items()
+        if name in site.ranges
+    }
 
 
 def _night(site: SiteFire) -> NightBlock:

@@ -1,4 +1,4 @@
-"""Maps as GeoTIFF: rate, total, rain and snow, with coordinates, units, missing cells and tags."""
+"""Maps as GeoTIFF, of rain and of the lee, with coordinates, units, missing cells and tags."""
 
 from __future__ import annotations
 
@@ -7,12 +7,15 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.sources.units import UNITS
+
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
 
     from numpy.typing import NDArray
 
     from orolift.sources.elevation_map import ElevationMap
+    from orolift.spread.lee_map import LeeMap
 
     Array = NDArray[np.float64]
 
@@ -115,3 +118,33 @@ def rain_maps(
             Band("share of the precipitation that is snow", "1", snow_share),
         ]
     return {name: geotiff(bands, placed, {**tags, "duration_h": f"{hours:g}"}) for name, bands in maps.items()}
+
+
+def lee_maps(placed: ElevationMap, found: LeeMap, tags: Mapping[str, str]) -> dict[str, bytes]:
+    """The map files of a lee: temperature, warming, humidity, wind, cloud.
+
+    Parameters
+    ----------
+    placed : ElevationMap
+    found : LeeMap
+        On the same grid.
+    tags : mapping of str to str
+
+    Returns
+    -------
+    dict of str to bytes
+        Name of the file without its ending, and the GeoTIFF.
+    """
+    zero = UNITS["c"].offset
+    maps = {
+        "lee_temperature": [Band("air temperature at the ground", "degC", found.temperature - zero)],
+        "lee_warming": [Band("temperature above the incoming air at the same height", "K", found.warming)],
+        "lee_relative_humidity": [Band("relative humidity at the ground", "%", 100.0 * found.relative_humidity)],
+        "lee_wind_10m": [Band("wind at 10 m across the range", "m s-1", found.wind_10m)],
+        "lee_cloud": [
+            Band("base of the lowest cloud above sea level", "m", found.cloud_base),
+            Band("water of all cloud over the ground", "kg m-2", found.cloud_water),
+        ],
+        "lee_behind_crest": [Band("distance behind the crest along the wind", "m", found.behind_crest)],
+    }
+    return {name: geotiff(bands, placed, tags) for name, bands in maps.items()}

@@ -11,12 +11,13 @@ import numpy as np
 from orolift.air.ground_layer import ground_layer
 from orolift.air.wind_layer import barrier_wind
 from orolift.crossing.pool import Lee
-from orolift.crossing.result import Site, When
+from orolift.crossing.result import When
 from orolift.errors import OroliftError
 from orolift.sources.inputs import read_inputs, situation_of
+from orolift.sources.own_lines import own_lines, sites_of
 from orolift.sources.series import read_series
-from orolift.sources.series_air import reading_of_row, refuse_unfit
-from orolift.sources.site_places import every_site
+from orolift.sources.series_air import reading_of_row, refuse_unfit, table_of_row
+from orolift.sources.spread_model import uncertainty_of
 from orolift.spread.hours import HourTask, MapGround, OneLine
 from orolift.spread.site_state import SiteState
 from orolift.terrain.features import features
@@ -28,6 +29,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
+    from orolift.crossing.result import Site
     from orolift.crossing.situation import Situation
     from orolift.sources.incoming import IncomingReading
     from orolift.sources.inputs import Inputs
@@ -66,6 +68,8 @@ class HourSetup:
         Where the incoming air is observed, on the map.
     ground : MapGround or None
         Where the case has catchments.
+    wind_error : float [1]
+        Standard deviation of the wind, as a share of it: as [spread] says, else by the kind of the series.
     notes : tuple of str
     """
 
@@ -78,6 +82,7 @@ class HourSetup:
     places: Array
     observed: tuple[float, float] | None
     ground: MapGround | None
+    wind_error: float
     notes: tuple[str, ...]
 
 
@@ -97,17 +102,36 @@ def read_hours(case: str | Path, series: str | Path) -> HourSetup:
     OroliftError
         If either cannot be read, the two do not fit, or no hour of the series can be used.
     """
-    inputs, rows = read_inputs(case), read_series(series)
+    return hours_over(read_inputs(case), read_series(series))
+
+
+def hours_over(inputs: Inputs, rows: Series) -> HourSetup:
+    """The hours of a series over the terrain of a case, both read already.
+
+    Parameters
+    ----------
+    inputs : Inputs
+    rows : Series
+
+    Returns
+    -------
+    HourSetup
+
+    Raises
+    ------
+    OroliftError
+        As `read_hours`.
+    """
     notes = refuse_unfit(inputs, rows)
-    situation = replace(situation_of(inputs), ends_too=False)
+    situation = replace(situation_of(inputs), in_full=False)
     shape = features(inputs.transect, inputs.sites[0].distance if inputs.sites else None)
-    sites = every_site(inputs.places) or (Site("Lee foot", shape.lee_foot_distance),)
+    sites = sites_of(inputs)
     own_line, places, observed = None, np.empty((0, 2)), None
     if inputs.case.terrain.elevation_file is not None:
-        from orolift.sources.own_lines import own_lines
-
         own_line, places, observed = own_lines(inputs, sites)
         notes += ("Every site has a line of its own, along the wind of each hour, cut at multiples of 5 degrees.",)
+    if inputs.fire.previous_code is None:
+        notes += ("The Fine Fuel Moisture Code starts from 85: [fire] gives no previous_fine_fuel_code.",)
     setup = HourSetup(
         inputs=inputs,
         series=rows,
@@ -118,10 +142,20 @@ def read_hours(case: str | Path, series: str | Path) -> HourSetup:
         places=places,
         observed=observed,
         ground=_ground(inputs),
+        wind_error=_wind_error(inputs, rows),
         notes=(*rows.notes, *notes),
     )
     _refuse_nothing(setup)
     return setup
+
+
+def _wind_error(inputs: Inputs, series: Series) -> float:
+    """Uncertainty of the wind of a series, by its first row that can be used."""
+    first = next((row for row in range(series.time.size) if row not in series.faults), None)
+    if first is None:
+        return uncertainty_of(inputs.case).wind
+    table, _ = table_of_row(inputs, series, first)
+    return uncertainty_of(inputs.case.model_copy(update={"incoming": table})).wind
 
 
 def _refuse_nothing(setup: HourSetup) -> None:
@@ -189,7 +223,7 @@ def hour_task(setup: HourSetup, row: int) -> HourTask:
             tuple(range(len(setup.sites))),
             _distance_on_ridge(setup, reading),
         )
-        return HourTask(row, time, states, (line,), setup.ground)
+        return HourTask(row, time, states, (line,), setup.ground, setup.inputs.fire)
     return _over_map(setup, incoming, row)
 
 
@@ -209,7 +243,7 @@ def _over_map(setup: HourSetup, incoming: IncomingAir, row: int) -> HourTask:
         state, line = _line_of_site(setup, incoming, row, number, bearing)
         states.append(state)
         lines += [] if line is None else [line]
-    return HourTask(row, time, tuple(states), tuple(lines), setup.ground)
+    return HourTask(row, time, tuple(states), tuple(lines), setup.ground, setup.inputs.fire)
 
 
 def _line_of_site(

@@ -17,7 +17,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.sources.hours_case import HourSetup
-    from orolift.spread.timeline import Hours, SiteTimeline
+    from orolift.spread.timeline import Hours, SiteTimeline, Stretch
 
     Array = NDArray[np.float64]
 
@@ -96,16 +96,25 @@ class SeriesBlock(Block):
     worked: int = Field(description="hours worked out; fewer when interrupted")
 
 
-class DryWindBlock(Block):
-    """A stretch of descending warm dry air."""
+class StretchBlock(Block):
+    """A stretch of time in which something holds at a site."""
 
     first_hour: int = Field(description="number of its first hour in the arrays, from 0")
     last_hour: int
-    onset: str | None = Field(description="null when it blows from the first hour that is known")
+    onset: str | None = Field(description="null when it holds from the first hour that is known")
     onset_error_h: float | None = Field(description="one standard deviation")
-    end: str | None = Field(description="null when it blows to the last hour that is known")
+    end: str | None = Field(description="null when it holds to the last hour that is known")
     end_error_h: float | None
     unknown_hours: int = Field(description="hours in it of which nothing is known")
+
+
+class ThresholdBlock(Block):
+    """A threshold of the region at a site."""
+
+    rule: str
+    hours_asked: int = Field(description="for how long in a row it must be met")
+    met: Flags = Field(description="hour by hour; null where it cannot be judged")
+    stretches: list[StretchBlock]
 
 
 class HourColumns(Block):
@@ -144,7 +153,8 @@ class SiteHoursBlock(Block):
 
     name: str
     hours: HourColumns
-    dry_winds: list[DryWindBlock]
+    dry_winds: list[StretchBlock] = Field(description="with descending warm dry air")
+    thresholds: list[ThresholdBlock] = Field(description="of the rule file; empty without one")
     rain_mm: float = Field(description="over the hours that cross")
     crossing_hours: int
     caught_up_hours: int = Field(description="hours whose air is caught up by faster air behind it")
@@ -272,21 +282,33 @@ def _site(site: SiteTimeline, hours: Hours) -> SiteHoursBlock:
             descending_warm_dry=[state.descending for state in states],
             **{key: numbers(values) for key, values in columns_of(site).items()},
         ),
-        dry_winds=[
-            DryWindBlock(
-                first_hour=one.first,
-                last_hour=one.last,
-                onset=None if one.onset is None else iso(one.onset),
-                onset_error_h=None if one.onset_error is None else one.onset_error / 3600.0,
-                end=None if one.end is None else iso(one.end),
-                end_error_h=None if one.end_error is None else one.end_error / 3600.0,
-                unknown_hours=one.unknown,
+        dry_winds=[_stretch(one) for one in site.dry_winds],
+        thresholds=[
+            ThresholdBlock(
+                rule=one.rule.name,
+                hours_asked=one.rule.hours,
+                met=[
+                    met if judged else None for met, judged in zip(one.met.tolist(), one.judged.tolist(), strict=True)
+                ],
+                stretches=[_stretch(stretch) for stretch in one.stretches],
             )
-            for one in site.dry_winds
+            for one in site.thresholds
         ],
         rain_mm=site.rain,
         crossing_hours=site.crossing_hours,
         caught_up_hours=site.overtaken,
+    )
+
+
+def _stretch(one: Stretch) -> StretchBlock:
+    return StretchBlock(
+        first_hour=one.first,
+        last_hour=one.last,
+        onset=None if one.onset is None else iso(one.onset),
+        onset_error_h=None if one.onset_error is None else one.onset_error / 3600.0,
+        end=None if one.end is None else iso(one.end),
+        end_error_h=None if one.end_error is None else one.end_error / 3600.0,
+        unknown_hours=one.unknown,
     )
 
 
@@ -304,15 +326,16 @@ def hour_rows(results: HoursResults) -> tuple[list[str], list[list[object]]]:
         All hours of the first site, then of the next.
     """
     keys = list(HourColumns.model_fields)
-    header = ["site", "upwind_time", *keys[1:]]
+    header = ["site", "upwind_time", *keys[1:], "thresholds_met"]
     rows: list[list[object]] = []
     for site in results.sites:
         columns = [getattr(site.hours, key) for key in keys]
-        rows += [[site.name, *(_said(value) for value in row)] for row in zip(*columns, strict=True)]
+        met = ["; ".join(one.rule for one in site.thresholds if one.met[i]) for i in range(len(columns[0]))]
+        rows += [[site.name, *map(said, row)] for row in zip(*columns, met, strict=True)]
     return header, rows
 
 
-def _said(value: object) -> object:
+def said(value: object) -> object:
     """Truth as a word, for a table."""
     if isinstance(value, bool):
         return "true" if value else "false"

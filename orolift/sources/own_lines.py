@@ -10,6 +10,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.crossing.result import Site
+from orolift.sources.site_places import every_site
+from orolift.terrain.features import features
 
 if TYPE_CHECKING:
     from collections.abc import Callable
@@ -56,56 +58,56 @@ def own_lines(
     from orolift.sources.lines import read_lines, situation_through
 
     lines = read_lines(inputs, beside=_beside(inputs, sites))
-    places = site_places(lines, inputs, sites)
+    places = _site_places(lines, inputs, sites)
 
     @lru_cache(maxsize=MOST_LINES)
     def own_line(number: int, bearing: float) -> Situation:
         x, y = places[number]
         site = Site(sites[number].name, 0.0, sites[number].elevation)
-        return replace(situation_through(lines, float(x), float(y), bearing, (site,)), ends_too=False)
+        return replace(situation_through(lines, float(x), float(y), bearing, (site,)), in_full=False)
 
     return own_line, places, _observed(lines, inputs)
+
+
+def sites_of(inputs: Inputs) -> tuple[Site, ...]:
+    """All sites of a case, on its line or beside it; the lee foot of its line where it has none.
+
+    Parameters
+    ----------
+    inputs : Inputs
+
+    Returns
+    -------
+    tuple of Site
+        Distances along the case's own line.
+    """
+    return every_site(inputs.places) or (Site("Lee foot", features(inputs.transect).lee_foot_distance),)
 
 
 def _beside(inputs: Inputs, sites: tuple[Site, ...]) -> float:
     """Farthest site from the middle of the case's line [m]."""
     middle = 0.5 * float(inputs.transect.distance[-1])
     offsets = [place.offset or 0.0 for place in inputs.places] or [0.0]
-    return max(math.hypot(site.distance - middle, offset) for site, offset in zip(sites, offsets, strict=False))
+    return max(math.hypot(site.distance - middle, offset) for site, offset in zip(sites, offsets, strict=True))
 
 
-def site_places(lines: Lines, inputs: Inputs, sites: tuple[Site, ...]) -> Array:
-    """Places of sites on the map of a case.
-
-    Parameters
-    ----------
-    lines : Lines
-    inputs : Inputs
-    sites : tuple of Site
-        Those of the case, or one that stands for them on its line.
-
-    Returns
-    -------
-    ndarray (ns, 2) [m]
-    """
+def _site_places(lines: Lines, inputs: Inputs, sites: tuple[Site, ...]) -> Array:
+    """Places of the sites on the map, (ns, 2)."""
     from orolift.sources.lines import map_places
 
+    line = inputs.transect
     if inputs.places:
         x, y = map_places(
             lines.placed,
-            np.array([place.longitude for place in inputs.places], dtype=np.float64),
-            np.array([place.latitude for place in inputs.places], dtype=np.float64),
+            [place.longitude or 0.0 for place in inputs.places],
+            [place.latitude or 0.0 for place in inputs.places],
         )
-        return np.column_stack([x, y])
-    line = inputs.transect
-    found = []
-    for site in sites:
-        i = int(np.argmin(np.abs(line.distance - site.distance)))
+    else:
+        at = [int(np.argmin(np.abs(line.distance - site.distance))) for site in sites]
         if line.longitude is None or line.latitude is None:
             raise ValueError("lines over a map have positions")
-        x, y = map_places(lines.placed, line.longitude[i : i + 1], line.latitude[i : i + 1])
-        found.append((float(x[0]), float(y[0])))
-    return np.array(found)
+        x, y = map_places(lines.placed, line.longitude[at], line.latitude[at])
+    return np.column_stack([x, y])
 
 
 def _observed(lines: Lines, inputs: Inputs) -> tuple[float, float] | None:

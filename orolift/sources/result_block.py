@@ -5,6 +5,7 @@ from __future__ import annotations
 from pydantic import BaseModel, ConfigDict
 
 Range = dict[str, tuple[float, float]]
+Chance = dict[str, float]
 
 
 class Block(BaseModel):

@@ -7,6 +7,7 @@ from dataclasses import asdict
 from importlib import metadata
 from typing import TYPE_CHECKING, Literal
 
+import numpy as np
 from pydantic import Field
 
 from orolift import __version__
@@ -22,8 +23,11 @@ from orolift.sources.rain_results import (
     gauges_block,
     map_block,
 )
-from orolift.sources.result_block import Block, Range
+from orolift.sources.result_block import Block, Chance, Range
+from orolift.sources.spread_results import SpreadBlock, at_site, ranges_of, site_chances, spread_block
 from orolift.sources.units import UNITS
+from orolift.spread.at_sites import column_of
+from orolift.spread.ranges import range_of
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -33,6 +37,7 @@ if TYPE_CHECKING:
     from orolift.sources.case_model import Case
     from orolift.sources.map_inputs import Mapped
     from orolift.sources.site_places import SitePlace
+    from orolift.spread.spread import Spread
 
 SCHEMA_VERSION = "1"
 LIBRARIES = ("numpy", "scipy", "rasterio", "shapely", "jinja2", "contourpy", "pydantic", "click", "metar")
@@ -65,7 +70,10 @@ class IncomingBlock(Block):
     stability_per_s: float | None = Field(description="buoyancy frequency, mean from base to crest")
     freezing_level_m: float | None = Field(description="above sea level; null when the whole column is below 0 degC")
     column_vapour_kg_m2: float
-    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+    range: Range = Field(
+        default_factory=dict, description="key: [10 %, 90 %], error of the method included where stated"
+    )
+    input_range: Range = Field(default_factory=dict, description="the same by the uncertainty of the inputs alone")
 
 
 class TerrainBlock(Block):
@@ -95,7 +103,10 @@ class FlowBlock(Block):
     breaks_through: bool | None
     wave_breaking: bool | None
     pressure_difference_hpa: float | None
-    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+    range: Range = Field(
+        default_factory=dict, description="key: [10 %, 90 %], error of the method included where stated"
+    )
+    input_range: Range = Field(default_factory=dict, description="the same by the uncertainty of the inputs alone")
 
 
 class RainBlock(Block):
@@ -110,7 +121,10 @@ class RainBlock(Block):
     total_kg_per_m_s: float | None
     snow_share: float | None = Field(description="of what falls on the line; null without rain")
     map: MapBlock | None = Field(description="rain over the map; null without a raster")
-    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+    range: Range = Field(
+        default_factory=dict, description="key: [10 %, 90 %], error of the method included where stated"
+    )
+    input_range: Range = Field(default_factory=dict, description="the same by the uncertainty of the inputs alone")
 
 
 class WarmingParts(Block):
@@ -160,7 +174,11 @@ class LeeBlock(Block):
     popular_picture_c: float = Field(description="surface air lifted, all condensate removed, brought down")
     descent_only_c: float | None
     profile: Profile | None
-    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+    chance: Chance = Field(default_factory=dict, description="in_pool, cloud, rain: 0 to 1, over the members")
+    range: Range = Field(
+        default_factory=dict, description="key: [10 %, 90 %], error of the method included where stated"
+    )
+    input_range: Range = Field(default_factory=dict, description="the same by the uncertainty of the inputs alone")
 
 
 class FailedSiteBlock(Block):
@@ -183,6 +201,7 @@ class Results(Block):
     rain: RainBlock
     lee: list[LeeBlock]
     failed_sites: list[FailedSiteBlock] = Field(description="sites of which nothing could be worked out, and why")
+    spread: SpreadBlock | None = Field(description="the members the ranges come from; null without")
     catchments: list[CatchmentBlock]
     gauges: GaugesBlock | None = Field(description="map against gauges; null without gauges")
     fire: list[FireBlock] = Field(description="fire weather by site")
@@ -203,6 +222,7 @@ def results_of(
     flags: tuple[str, ...] = (),
     fire: tuple[SiteFire, ...] = (),
     places: Sequence[SitePlace] = (),
+    spread: Spread | None = None,
 ) -> Results:
     """Results of a crossing, unrounded.
 
@@ -218,6 +238,8 @@ def results_of(
         Fire weather at the sites.
     places : sequence of SitePlace
         Of all sites of the case, for their positions.
+    spread : Spread, optional
+        Members, for the ranges.
 
     Returns
     -------
@@ -226,13 +248,14 @@ def results_of(
     return Results(
         schema_version=SCHEMA_VERSION,
         orolift=program(),
-        case=case_block(case),
-        incoming=_incoming(crossing),
+        case=case_block(case, None if spread is None else spread.seed),
+        incoming=_incoming(crossing, spread),
         terrain=_terrain(crossing),
-        flow=_flow(crossing),
-        rain=_rain(crossing, mapped),
-        lee=[_lee(site, crossing, places) for site in crossing.lee],
+        flow=_flow(crossing, spread),
+        rain=_rain(crossing, mapped, spread),
+        lee=[_lee(site, crossing, places, spread) for site in crossing.lee],
         failed_sites=[FailedSiteBlock(**asdict(site)) for site in crossing.failed],
+        spread=None if spread is None else spread_block(spread, crossing),
         catchments=[] if mapped is None else catchment_blocks(mapped.rain),
         gauges=None if mapped is None else gauges_block(mapped.rain),
         fire=fire_blocks(fire),
@@ -251,16 +274,22 @@ def program() -> Program:
     )
 
 
-def case_block(case: Case) -> CaseBlock:
-    """Which case it is."""
+def case_block(case: Case, seed: int | None = None) -> CaseBlock:
+    """Which case it is, and the seed of its members."""
     return CaseBlock(
         title=case.title,
         valid_time=None if case.valid_time is None else case.valid_time.isoformat(),
-        seed=None,
+        seed=seed,
     )
 
 
-def _incoming(crossing: Crossing) -> IncomingBlock:
+def _both(block: str, spread: Spread | None) -> dict[str, Range]:
+    """Range and input range of a block for whose numbers no error of the method is stated."""
+    found = {} if spread is None else ranges_of(block, spread.values)
+    return {"range": found, "input_range": found}
+
+
+def _incoming(crossing: Crossing, spread: Spread | None) -> IncomingBlock:
     air = crossing.incoming
     pressure, temperature, vapour = air.pressure[0], air.temperature[0], air.vapour[0]
     level = float(freezing_level(air))
@@ -273,6 +302,7 @@ def _incoming(crossing: Crossing) -> IncomingBlock:
         stability_per_s=crossing.flow.stability,
         freezing_level_m=level if level > air.height[0] or temperature >= MELTING_POINT else None,
         column_vapour_kg_m2=float(column_vapour(air)),
+        **_both("incoming", spread),
     )
 
 
@@ -289,9 +319,15 @@ def _terrain(crossing: Crossing) -> TerrainBlock:
     )
 
 
-def _flow(crossing: Crossing) -> FlowBlock:
+def _flow(crossing: Crossing, spread: Spread | None) -> FlowBlock:
     flow = crossing.flow
     first = (crossing.on_line or crossing.lee)[0]
+    source = None
+    if spread is not None and spread.sites:
+        source = range_of(spread.sites["source_level"][:, 0])
+    both = _both("flow", spread)
+    if source is not None:
+        both = {name: {**found, "source_level_m": source} for name, found in both.items()}
     return FlowBlock(
         nondimensional_height=flow.nondimensional_height,
         regime=flow.regime,
@@ -304,31 +340,44 @@ def _flow(crossing: Crossing) -> FlowBlock:
         breaks_through=flow.breaks_through,
         wave_breaking=flow.wave_breaking,
         pressure_difference_hpa=flow.pressure_difference / 100.0,
+        **both,
     )
 
 
-def _rain(crossing: Crossing, mapped: Mapped | None) -> RainBlock:
-    water, rain = crossing.water, crossing.rain
+def _rain(crossing: Crossing, mapped: Mapped | None, spread: Spread | None) -> RainBlock:
+    water, rain, origin = crossing.water, crossing.rain, crossing.transect.origin
     column = water.column_vapour_flux
+    both = _both("rain", spread)
+    if spread is None:
+        both["range"] = {"drying_ratio": (rain.drying_ratio_low, rain.drying_ratio_high)}
+    peak = None if spread is None else range_of(spread.values.get("peak_distance", np.empty(0)))
+    if peak is not None:
+        where = ((peak[0] + origin) / 1000.0, (peak[1] + origin) / 1000.0)
+        both = {name: {**found, "peak_km": where} for name, found in both.items()}
     return RainBlock(
         rain_out_share=water.removed / water.condensed if water.condensed > 0.0 else None,
         drying_ratio=water.removed / water.vapour_in,
         drying_ratio_full_column=water.removed / column if column > 0.0 else None,
         windward_share=rain.windward_share,
         peak_mm_per_h=3600.0 * rain.peak_rate,
-        peak_km=None if rain.peak_distance is None else (rain.peak_distance + crossing.transect.origin) / 1000.0,
+        peak_km=None if rain.peak_distance is None else (rain.peak_distance + origin) / 1000.0,
         total_kg_per_m_s=rain.total,
         snow_share=rain.snow_share,
-        map=None if mapped is None else map_block(mapped, crossing.transect.origin),
-        range={"drying_ratio": (rain.drying_ratio_low, rain.drying_ratio_high)},
+        map=None if mapped is None else map_block(mapped, origin),
+        **both,
     )
 
 
-def _lee(site: LeeAir, crossing: Crossing, places: Sequence[SitePlace]) -> LeeBlock:
+def _lee(site: LeeAir, crossing: Crossing, places: Sequence[SitePlace], spread: Spread | None) -> LeeBlock:
+    column = None if spread is None else column_of(crossing, site)
     wind, parts, profile = site.wind, site.parts, site.profile
     low, high = site.source_level_low, site.source_level_high
     ranges: Range = {}
-    if wind is not None:
+    inputs: Range = {}
+    if spread is not None and column is not None:
+        ranges = ranges_of("lee", at_site(spread.full_sites, column))
+        inputs = ranges_of("lee", at_site(spread.sites, column))
+    elif wind is not None:
         ranges = {"wind_ms": (wind.low, wind.high), "gust_ms": (wind.gust_low, wind.gust_high)}
     own, shape = site.own, crossing.features
     place = places[site.number - 1] if 0 < site.number <= len(places) else None
@@ -363,5 +412,7 @@ def _lee(site: LeeAir, crossing: Crossing, places: Sequence[SitePlace]) -> LeeBl
             temperature_c=[celsius(t) for t in profile.temperature],
             mixing_ratio_g_kg=(1000.0 * profile.vapour).tolist(),
         ),
+        chance={} if spread is None or column is None else site_chances(spread, column),
         range=ranges,
+        input_range=inputs,
     )

@@ -9,17 +9,27 @@ import json
 import sys
 from itertools import combinations
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from orolift.errors import CaseError
+from orolift.sources.bearings_results import BEARINGS_VERSION, BearingsResults
 from orolift.sources.case_model import Case
+from orolift.sources.compare_results import SCHEMA_VERSION as COMPARE_VERSION
+from orolift.sources.compare_results import CompareResults
 from orolift.sources.files import write_all
+from orolift.sources.hours_results import HOURS_VERSION, HoursResults
 from orolift.sources.results import SCHEMA_VERSION, Results
 from orolift.sources.rules_file import RulesFile
+from orolift.sources.spread_model import SpreadTable
 from orolift.sources.units import alternatives, converted, suffix_of
+
+if TYPE_CHECKING:
+    from pydantic import BaseModel
 
 DIALECT = "https://json-schema.org/draft/2020-12/schema"
 CASE_FILE, RESULTS_FILE, RULES_FILE = "case.schema.json", "results.schema.json", "rules.schema.json"
+COMPARE_FILE = "compare.schema.json"
+HOURS_FILE, BEARINGS_FILE = "hours.schema.json", "bearings.schema.json"
 LIMIT_DIGITS = 6
 """Decimals of a limit converted to another unit: finer than anybody writes, coarser than rounding of the factors."""
 UNIT_WORDS = {
@@ -37,6 +47,7 @@ UNIT_WORDS = {
     "inhg": "inches of mercury",
     "deg": "degrees clockwise from north",
     "percent": "per cent",
+    "g_per_kg": "grams per kilogram of dry air",
     "c_per_km": "degrees Celsius per kilometre",
     "mm": "millimetres of water",
     "in": "inches of water",
@@ -70,8 +81,9 @@ def case_schema() -> Schema:
     ['temperature_c', 'temperature_f']
     """
     schema = _plain(Case.model_json_schema())
-    for table in [schema, *schema["$defs"].values()]:
-        _add_other_units(table)
+    _add_other_units(schema)
+    for name, table in schema["$defs"].items():
+        _add_other_units(table, difference=name == SpreadTable.__name__)
     return {"$schema": DIALECT, **schema, "title": "orolift case file"}
 
 
@@ -105,11 +117,40 @@ def results_schema() -> Schema:
     >>> results_schema()["properties"]["schema_version"]["const"]
     '1'
     """
-    schema = _plain(Results.model_json_schema(mode="serialization"), keep_null=True)
+    return _written_schema(Results, SCHEMA_VERSION, "orolift results file")
+
+
+def compare_schema() -> Schema:
+    """JSON Schema of the results of a comparison, as `results_schema`.
+
+    Returns
+    -------
+    dict
+
+    Examples
+    --------
+    >>> "explanation" in compare_schema()["required"]
+    True
+    """
+    return _written_schema(CompareResults, COMPARE_VERSION, "orolift comparison file")
+
+
+def hours_schema() -> Schema:
+    """JSON Schema of the results file of hours, as `results_schema`."""
+    return _written_schema(HoursResults, HOURS_VERSION, "orolift results file of hours")
+
+
+def bearings_schema() -> Schema:
+    """JSON Schema of the results file of wind directions, as `results_schema`."""
+    return _written_schema(BearingsResults, BEARINGS_VERSION, "orolift results file of wind directions")
+
+
+def _written_schema(model: type[BaseModel], version: str, title: str) -> Schema:
+    schema = _plain(model.model_json_schema(mode="serialization"), keep_null=True)
     for block in [schema, *schema["$defs"].values()]:
         block["required"] = list(block["properties"])
-    schema["properties"]["schema_version"]["const"] = SCHEMA_VERSION
-    return {"$schema": DIALECT, **schema, "title": "orolift results file"}
+    schema["properties"]["schema_version"]["const"] = version
+    return {"$schema": DIALECT, **schema, "title": title}
 
 
 def schema_texts() -> dict[str, str]:
@@ -120,6 +161,8 @@ def schema_texts() -> dict[str, str]:
     dict of str to str
     """
     schemas = {CASE_FILE: case_schema(), RESULTS_FILE: results_schema(), RULES_FILE: rules_schema()}
+    schemas[COMPARE_FILE] = compare_schema()
+    schemas |= {HOURS_FILE: hours_schema(), BEARINGS_FILE: bearings_schema()}
     return {name: json.dumps(schema, indent=2, ensure_ascii=False) + "\n" for name, schema in schemas.items()}
 
 
@@ -143,14 +186,14 @@ def _plain(node: Any, *, keep_null: bool = False) -> Any:
     return {**out, **only}
 
 
-def _add_other_units(table: Schema) -> None:
+def _add_other_units(table: Schema, *, difference: bool = False) -> None:
     """Add to a table the same quantities in other units, one of which may be given."""
     rules: list[Schema] = []
     for key, field in list(table["properties"].items()):
         if suffix_of(key) is None or field.get("type") != "number":
             continue
         names = [key, *alternatives(key)]
-        table["properties"] |= {name: _in_unit(field, key, name) for name in names}
+        table["properties"] |= {name: _in_unit(field, key, name, difference=difference) for name in names}
         if len(names) == 1:
             continue
         if key in table.get("required", []):
@@ -162,14 +205,14 @@ def _add_other_units(table: Schema) -> None:
         table["allOf"] = rules
 
 
-def _in_unit(field: Schema, key: str, name: str) -> Schema:
+def _in_unit(field: Schema, key: str, name: str, *, difference: bool = False) -> Schema:
     """A number field described and limited in the unit of `name`."""
     own, wanted = (suffix_of(key) or ("", ""))[1], (suffix_of(name) or ("", ""))[1]
     text = f"{field.get('description', '')} [{UNIT_WORDS[wanted]}]".strip()
     out = {"description": text, **{name: value for name, value in field.items() if name != "description"}}
     for limit in ("minimum", "maximum", "exclusiveMinimum", "exclusiveMaximum", "default"):
         if limit in out and own != wanted:
-            out[limit] = round(converted(float(out[limit]), own, wanted), LIMIT_DIGITS)
+            out[limit] = round(converted(float(out[limit]), own, wanted, difference=difference), LIMIT_DIGITS)
     return out
 
 

@@ -88,8 +88,9 @@ class Series:
 
     @property
     def step(self) -> float:
-        """Usual time between two rows [s]: the median; an hour for a single row."""
-        return float(np.median(np.diff(self.time))) if self.time.size > 1 else HOUR
+        """Usual time between two rows [s]: the median, of two the shorter; an hour for a single row."""
+        between = np.diff(self.time)
+        return float(np.quantile(between, 0.5, method="lower")) if between.size else HOUR
 
 
 def read_series(path: str | Path) -> Series:

@@ -115,13 +115,24 @@ def reading_of_row(inputs: Inputs, series: Series, row: int) -> IncomingReading:
     if row in series.faults:
         raise DataFileError(series.faults[row])
     valid = datetime.fromtimestamp(float(series.time[row]), UTC)
-    make = {"station": _station, "sounding": _sounding, "model": _model}[series.kind]
     try:
-        table, folder = make(inputs, series, row)
+        table, folder = table_of_row(inputs, series, row)
         return read_incoming(table, folder, valid)
     except OroliftError as error:
         text = str(error).removeprefix("[incoming] station: ")
         raise DataFileError(f"{series.name}: {_row(series, row)}: {text}") from error
+
+
+def table_of_row(inputs: Inputs, series: Series, row: int) -> tuple[Incoming, Path]:
+    """The table [incoming] with the values of a row in it, and the folder its paths start from.
+
+    Raises
+    ------
+    DataFileError
+        If the row has a wind without direction, or no moisture at all.
+    """
+    make = {"station": _station, "sounding": _sounding, "model": _model}[series.kind]
+    return make(inputs, series, row)
 
 
 def _row(series: Series, row: int) -> str:

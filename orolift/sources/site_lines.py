@@ -11,8 +11,8 @@ import numpy as np
 
 from orolift.crossing.result import Site
 from orolift.errors import TerrainError
-from orolift.sources.lines import Lines, PlacedLine, line_through, map_places, read_lines, situation_on
-from orolift.sources.raster import LEAST_UPWIND
+from orolift.sources.line_axis import Axis, axis_of, too_near_the_edge
+from orolift.sources.lines import PlacedLine, line_through, map_places, read_lines, situation_on
 from orolift.spread.sites import PlacedSite, SiteGroup
 from orolift.terrain.features import features
 
@@ -20,10 +20,7 @@ if TYPE_CHECKING:
     from collections.abc import Iterator
 
     from orolift.sources.inputs import Inputs
-    from orolift.sources.site_places import SitePlace
 
-POINTS = 384
-"""Points of a line as long as the case's: on the demo terrain 512 give the same to 0.02 K."""
 LINE_SHARE = 0.2
 """Parallel lines of sites lie this share of the swath apart, so that none is farther from its sites than a tenth of
 it; on the demo terrain that moves their temperature by 0.08 K (standard deviation) and at most 0.3 K."""
@@ -39,42 +36,6 @@ class _Key:
     strip: int
     upwind: int
     downwind: int
-
-
-@dataclass(frozen=True, eq=False)
-class _Axis:
-    """Places measured along and across the case's own line, on the map.
-
-    Attributes
-    ----------
-    lines : Lines
-    turned : float [rad]
-        Bearing of the line on the map.
-    start, end : float [m]
-        Ends of the case's line, as asked for, along it from the middle of what the raster has of it.
-    width : float [m]
-        Between parallel lines: none is farther from its sites than half of it.
-    spacing : float [m]
-        Of points along lines.
-    """
-
-    lines: Lines
-    turned: float
-    start: float
-    end: float
-    width: float
-    spacing: float
-
-    def measured(self, x: float, y: float) -> tuple[float, float]:
-        """Distance along and across of a place on the map."""
-        east, north = x - self.lines.x, y - self.lines.y
-        s, c = math.sin(self.turned), math.cos(self.turned)
-        return east * s + north * c, east * c - north * s
-
-    def placed(self, along: float, across: float) -> tuple[float, float]:
-        """Place on the map."""
-        s, c = math.sin(self.turned), math.cos(self.turned)
-        return self.lines.x + along * s + across * c, self.lines.y + along * c - across * s
 
 
 def site_groups(inputs: Inputs) -> Iterator[SiteGroup]:
@@ -106,7 +67,7 @@ def site_groups(inputs: Inputs) -> Iterator[SiteGroup]:
         return
     far = max(math.hypot(place.offset or 0.0, place.along) for _, place in beside)
     lines = read_lines(inputs, beside=far + float(inputs.transect.distance[-1]))
-    axis = _axis(inputs, lines)
+    axis = axis_of(inputs, lines, LINE_SHARE)
     x, y = map_places(
         lines.placed, [place.longitude or 0.0 for _, place in beside], [place.latitude or 0.0 for _, place in beside]
     )
@@ -120,40 +81,7 @@ def site_groups(inputs: Inputs) -> Iterator[SiteGroup]:
             yield replace(group, fire=inputs.fire)
 
 
-def _axis(inputs: Inputs, lines: Lines) -> _Axis:
-    line = inputs.transect
-    centre = _centre(inputs) - float(line.distance[line.distance.size // 2])
-    spacing = (lines.upwind + lines.downwind) / (POINTS - 1)
-    return _Axis(
-        lines,
-        float(line.bearing or 0.0) + lines.north,
-        centre - lines.upwind,
-        centre + lines.downwind,
-        max(LINE_SHARE * lines.swath, spacing),
-        spacing,
-    )
-
-
-def _centre(inputs: Inputs) -> float:
-    """Distance along the case's line of the place it passes through; of its crest where that is the highest cell."""
-    table = inputs.case.transect
-    if table is not None and table.through is not None:
-        from orolift.sources.raster import site_positions
-        from orolift.sources.site_places import map_point
-
-        found = site_positions(
-            str(inputs.case.terrain.elevation_file),
-            inputs.transect,
-            [map_point(table.through)],
-            unit=inputs.case.terrain.elevation_unit,
-            folder=inputs.path.parent,
-        )
-        return float(found.distance[0])
-    first: SitePlace | None = inputs.places[0] if inputs.places else None
-    return features(inputs.transect).crest_distance if first is None else first.along
-
-
-def _key(axis: _Axis, along: float, across: float) -> _Key:
+def _key(axis: Axis, along: float, across: float) -> _Key:
     upwind, downwind = axis.lines.upwind, axis.lines.downwind
     return _Key(
         round(across / axis.width),
@@ -162,7 +90,7 @@ def _key(axis: _Axis, along: float, across: float) -> _Key:
     )
 
 
-def _groups(axis: _Axis, key: _Key, sites: list[tuple[PlacedSite, Site]]) -> Iterator[SiteGroup]:
+def _groups(axis: Axis, key: _Key, sites: list[tuple[PlacedSite, Site]]) -> Iterator[SiteGroup]:
     """Groups of the sites of one line, by crest."""
     try:
         line, start = _line(axis, key, sites[0][1].distance)
@@ -184,7 +112,7 @@ def _groups(axis: _Axis, key: _Key, sites: list[tuple[PlacedSite, Site]]) -> Ite
             yield SiteGroup(named, situation_on(axis.lines, line, tuple(site for _, site in members)))
 
 
-def _line(axis: _Axis, key: _Key, along: float) -> tuple[PlacedLine, float]:
+def _line(axis: Axis, key: _Key, along: float) -> tuple[PlacedLine, float]:
     """The line of a key, and where it starts along the axis; sampled at the same points whichever site asks."""
     start = axis.start - key.upwind * axis.lines.upwind
     end = axis.end + key.downwind * axis.lines.downwind
@@ -203,7 +131,7 @@ def _line(axis: _Axis, key: _Key, along: float) -> tuple[PlacedLine, float]:
     return line, axis.measured(line.x, line.y)[0]
 
 
-def _crest(axis: _Axis, key: _Key, line: PlacedLine, start: float, distance: float, length: float) -> float | str:
+def _crest(axis: Axis, key: _Key, line: PlacedLine, start: float, distance: float, length: float) -> float | str:
     """Distance of the crest that counts for a site, or why there is none."""
     if not 0.0 <= distance <= length:
         return "the elevation raster ends, or has a gap, between its line and the site. Use a raster that has both."
@@ -211,11 +139,4 @@ def _crest(axis: _Axis, key: _Key, line: PlacedLine, start: float, distance: flo
         crest = features(line.transect, distance).crest_distance
     except TerrainError as error:
         return str(error)
-    cut = start > axis.start - key.upwind * axis.lines.upwind + axis.spacing
-    if cut and crest < LEAST_UPWIND:
-        return (
-            f"the elevation raster ends {crest / 1000.0:.1f} km upwind of the crest of its line, and at least "
-            f"{LEAST_UPWIND / 1000.0:.0f} km are needed to see the foot of the range. Use a raster that reaches "
-            "further upwind."
-        )
-    return crest
+    return too_near_the_edge(axis, start, axis.start - key.upwind * axis.lines.upwind, crest) or crest

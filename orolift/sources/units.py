@@ -52,6 +52,7 @@ UNITS: dict[str, Unit] = {
     "inhg": Unit("pressure", 3386.389),
     "deg": Unit("angle", 3.141592653589793 / 180.0),
     "percent": Unit("share", 0.01),
+    "g_per_kg": Unit("mixing ratio", 1.0e-3),
     "c_per_km": Unit("lapse", 1.0e-3),
     "mm": Unit("water depth", 1.0),  # kg m-2
     "mm_per_h": Unit("rain rate", 1.0 / 3600.0),  # kg m-2 s-1
@@ -107,14 +108,18 @@ def to_si(value: Number, suffix: str) -> Number:
     return value * unit.factor + unit.offset
 
 
-def converted(value: float, suffix: str, wanted: str) -> float:
-    """Value in the unit `wanted` of a number given in the unit `suffix`.
+def converted(value: float, suffix: str, wanted: str, *, difference: bool = False) -> float:
+    """Value in the unit `wanted` of a number given in the unit `suffix`; of a difference, without any offset.
 
     Examples
     --------
     >>> round(converted(50.0, "f", "c"), 9)
     10.0
+    >>> round(converted(1.8, "f", "c", difference=True), 9)
+    1.0
     """
+    if difference:
+        return value * UNITS[suffix].factor / UNITS[wanted].factor
     si: float = to_si(value, suffix)
     unit = UNITS[wanted]
     return (si - unit.offset) / unit.factor

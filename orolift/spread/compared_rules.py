@@ -28,7 +28,11 @@ PLAIN = ("temperature", "dew_point", "relative_humidity", "vapour_pressure_defic
 
 
 def rule_tables(
-    rules: RuleSet | None, seen: Observations, estimates: Sequence[Estimates], which: NDArray[np.int_]
+    rules: RuleSet | None,
+    seen: Observations,
+    estimates: Sequence[Estimates],
+    which: NDArray[np.int_],
+    roughness: float,
 ) -> tuple[tuple[tuple[str, Contingency], ...], tuple[str, ...]]:
     """Hits and false alarms of thresholds over all rows in the lee near an estimate.
 
@@ -39,6 +43,8 @@ def rule_tables(
     estimates : sequence of Estimates
     which : ndarray of int (n,)
         Number of the estimates each row belongs to, -1 for none.
+    roughness : float [m]
+        For winds that a rule means at another height.
 
     Returns
     -------
@@ -59,7 +65,6 @@ def rule_tables(
         k, p = which[near], seen.place[near]
         lee = np.stack([one.in_lee for one in estimates])[k, p]
         near, k, p = near[lee], k[lee], p[lee]
-        roughness = estimates[0].crossing.settings.roughness
         names = estimates[0].values
         ours: Values = {name: np.stack([one.values[name] for one in estimates])[k, p] for name in names}
         theirs: Values = {name: values[near] for name, values in seen.values.items()}

@@ -8,17 +8,22 @@ from typing import TYPE_CHECKING, Literal
 import numpy as np
 
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.crossing.model_error import model_error
+from orolift.crossing.onset import potential_excess
 from orolift.crossing.simple import simple_answers
 from orolift.crossing.sites import LEAST_VAPOUR
+from orolift.spread.at_sites import TENTH, members_at
+from orolift.spread.ranges import range_of
 from orolift.spread.verification import Score, contingency, coverage, score, skill
 
 if TYPE_CHECKING:
     from collections.abc import Callable, Mapping, Sequence
 
-    from numpy.typing import NDArray
+    from numpy.typing import ArrayLike, NDArray
 
     from orolift.air.parcel import Parcel
-    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.crossing.result import Crossing, LeeAir, Side
+    from orolift.spread.spread import Spread
     from orolift.spread.verification import Contingency
 
     Array = NDArray[np.float64]
@@ -39,42 +44,84 @@ QUANTITIES: tuple[Quantity, ...] = (
     "rain_rate",
 )
 REFERENCES: tuple[Reference, ...] = ("unchanged", "popular_picture", "crest_air")
-MODEL_ERROR = {"temperature": 2.0, "mixing_ratio": 8e-4}
-"""Standard deviation of the error of the model itself, in K and kg per kg; a judgement."""
+MEMBER_NAMES: dict[Quantity, str] = {
+    "temperature": "temperature",
+    "dew_point": "dew_point",
+    "mixing_ratio": "mixing_ratio",
+    "relative_humidity": "relative_humidity",
+    "wind": "wind_10m",
+    "gust": "gust",
+    "pressure": "pressure",
+}
+"""Names of the quantities in the arrays of a spread."""
 HUMID: tuple[Quantity, ...] = ("temperature", "mixing_ratio", "dew_point", "relative_humidity")
 """Quantities the simple answers speak of."""
 UNKNOWN = (np.nan, np.nan)
-TEN_PER_CENT = 1.2815515655446004
-"""Standard deviations from the mean to the 10 % and 90 % points of the normal distribution."""
-
 Values = dict[Quantity, "Array"]
+
+
+@dataclass(frozen=True)
+class SiteEstimate:
+    """What one crossing gives at one site, in a few numbers: small enough to keep for thousands of hours.
+
+    Attributes
+    ----------
+    side : 'windward', 'crest' or 'lee'
+    values : dict of Quantity to float
+        In SI: K, kg per kg of dry air, 1, m s-1, Pa, kg m-2 s-1; NaN where nothing is estimated. `wind` is at 10 m,
+        `gust` the middle of its range.
+    ranges : dict of Quantity to (float, float)
+        10 % and 90 % for temperature and humidity, that of the methods for wind and gust.
+    references : dict of Reference to dict of Quantity to float
+        The simple answers, for temperature and humidity.
+    excess : float [K]
+        Potential temperature minus that of the lowest air over the crest.
+    wind_from : float [rad]
+        Direction from which the air crosses the range.
+    way : float [s]
+        Time from where the air was observed; 0 where it was not asked for.
+    """
+
+    side: Side
+    values: dict[Quantity, float]
+    ranges: dict[Quantity, tuple[float, float]]
+    references: dict[Reference, dict[Quantity, float]]
+    excess: float
+    wind_from: float
+    way: float = 0.0
 
 
 @dataclass(frozen=True, eq=False)
 class Estimates:
-    """What one crossing gives at all places; arrays (places,), NaN where nothing is estimated.
+    """What one case or hour gives at all places; arrays (places,), NaN where nothing is estimated.
 
     Attributes
     ----------
     time : float or None [s]
-        It is valid for; None when the case names none.
-    values : dict of Quantity to ndarray
-        In SI: K, kg per kg of dry air, 1, m s-1, Pa, kg m-2 s-1. `wind` is at 10 m, `gust` the middle of its range.
-    low, high : dict of Quantity to ndarray
-        Range: 10 % and 90 % for temperature and humidity, that of the methods for wind and gust.
+        Of the incoming air; None when the case names none.
+    arrival : ndarray [s]
+        Time each estimate is valid for.
+    values, low, high : dict of Quantity to ndarray
+        As in `SiteEstimate`.
     references : dict of Reference to dict of Quantity to ndarray
-        The simple answers, for temperature and humidity.
-    in_lee : ndarray of bool
-    crossing : Crossing
+    side : tuple of (Side or None)
+    excess, wind_from : ndarray [K], [rad]
     """
 
     time: float | None
+    arrival: Array
     values: Values
     low: Values
     high: Values
     references: dict[Reference, Values]
-    in_lee: NDArray[np.bool_]
-    crossing: Crossing
+    side: tuple[Side | None, ...]
+    excess: Array
+    wind_from: Array
+
+    @property
+    def in_lee(self) -> NDArray[np.bool_]:
+        """Which places lie in the lee."""
+        return np.array([side == "lee" for side in self.side], dtype=bool)
 
 
 @dataclass(frozen=True, eq=False)
@@ -165,55 +212,115 @@ class Verdict:
     skill: dict[Reference, float]
 
 
-def estimates_of(
-    crossing: Crossing,
-    time: float | None,
-    places: Sequence[int | None],
-    ranges: Sequence[Mapping[str, tuple[float, float]]] = (),
-) -> Estimates:
-    """What a crossing gives at places, with ranges and the simple answers.
+def site_estimate(
+    crossing: Crossing, air: LeeAir, ranges: Mapping[Quantity, tuple[float, float]] | None = None, *, way: float = 0.0
+) -> SiteEstimate:
+    """What a crossing gives at a site, with ranges and the simple answers.
 
     Parameters
     ----------
     crossing : Crossing
+    air : LeeAir
+        One of its sites.
+    ranges : mapping of Quantity to (float, float), optional
+        The 10 % and 90 % of many crossings. What they do not hold gets the error of the method alone.
+    way : float [s]
+        Time from where the air was observed.
+
+    Returns
+    -------
+    SiteEstimate
+    """
+    return SiteEstimate(
+        side=air.side,
+        values={name: _value(crossing, air, name) for name in QUANTITIES},
+        ranges=_ranges(air, ranges or {}),
+        references=_simple(crossing, air),
+        excess=crest_excess(crossing, air),
+        wind_from=(crossing.flow.normal + np.pi) % (2.0 * np.pi),
+        way=way,
+    )
+
+
+def ranges_of(spread: Spread | None, crossing: Crossing, air: LeeAir) -> dict[Quantity, tuple[float, float]]:
+    """Full ranges at a site, 10 and 90 % of the members with the error of the method.
+
+    Parameters
+    ----------
+    spread : Spread or None
+    crossing : Crossing
+        That the spread is of.
+    air : LeeAir
+
+    Returns
+    -------
+    dict of Quantity to (float, float)
+        Empty without members.
+    """
+    members = None if spread is None else members_at(spread, crossing, air)
+    if members is None:
+        return {}
+    found = {name: range_of(members[key]) for name, key in MEMBER_NAMES.items() if key in members}
+    return {name: ends for name, ends in found.items() if ends is not None}
+
+
+def estimates_of(
+    sites: Sequence[SiteEstimate | None], time: float | None, arrival: ArrayLike | None = None
+) -> Estimates:
+    """What one case or hour gives at places.
+
+    Parameters
+    ----------
+    sites : sequence of (SiteEstimate or None), one for each place
+        None for one that was not worked out.
     time : float or None [s]
-    places : sequence of (int or None)
-        For each place of the comparison the number of its site; None for one the line does not reach.
-    ranges : sequence of mapping, optional
-        For each site, by quantity, the 10 % and 90 % of many crossings. What
-        they do not hold gets the model error alone.
+    arrival : array_like (places,) [s], optional
+        Where the air takes time; by default all are valid at `time`.
 
     Returns
     -------
     Estimates
     """
-    sites = [None if i is None else crossing.lee[i] for i in places]
 
-    def over(read: Callable[[LeeAir], float]) -> Array:
-        return np.array([np.nan if air is None else read(air) for air in sites])
+    def over(read: Callable[[SiteEstimate], float]) -> Array:
+        return np.array([np.nan if site is None else read(site) for site in sites], dtype=np.float64)
 
-    spans = [
-        {} if air is None or i is None else _ranges(air, ranges[i] if i < len(ranges) else {})
-        for i, air in zip(places, sites, strict=True)
-    ]
-    ends = [{name: np.array([x.get(name, UNKNOWN)[end] for x in spans]) for name in QUANTITIES} for end in (0, 1)]
-    answers = [None if air is None else _simple(crossing, air) for air in sites]
-    references = {
-        name: {
-            quantity: np.array([np.nan if one is None else one[name][quantity] for one in answers])
-            for quantity in HUMID
-        }
-        for name in REFERENCES
-    }
+    when = np.nan if time is None else time
     return Estimates(
         time=time,
-        values={name: over(lambda air, name=name: _value(crossing, air, name)) for name in QUANTITIES},  # type: ignore[misc]  # a default binds the loop variable
-        low=ends[0],
-        high=ends[1],
-        references=references,
-        in_lee=np.array([air is not None and air.side == "lee" for air in sites], dtype=bool),
-        crossing=crossing,
+        arrival=np.full(len(sites), when) if arrival is None else np.asarray(arrival, dtype=np.float64),
+        values={name: over(lambda site, name=name: site.values[name]) for name in QUANTITIES},  # type: ignore[misc]  # a default binds the loop variable
+        low={name: over(lambda site, name=name: site.ranges.get(name, UNKNOWN)[0]) for name in QUANTITIES},  # type: ignore[misc]  # same
+        high={name: over(lambda site, name=name: site.ranges.get(name, UNKNOWN)[1]) for name in QUANTITIES},  # type: ignore[misc]  # same
+        references={
+            name: {
+                quantity: over(lambda site, name=name, quantity=quantity: site.references[name][quantity])  # type: ignore[misc]  # same
+                for quantity in HUMID
+            }
+            for name in REFERENCES
+        },
+        side=tuple(None if site is None else site.side for site in sites),
+        excess=over(lambda site: site.excess),
+        wind_from=over(lambda site: site.wind_from),
     )
+
+
+def crest_excess(crossing: Crossing, air: LeeAir) -> float:
+    """Potential temperature at a site minus that of the lowest air over the crest of the crossing's line [K].
+
+    Parameters
+    ----------
+    crossing : Crossing
+    air : LeeAir
+
+    Returns
+    -------
+    float [K]
+    """
+    top = int(np.argmin(np.abs(crossing.distance - crossing.features.crest_distance)))
+    march = crossing.air
+    pressures = ([air.pressure], [march.pressure[top, 0]])
+    return float(potential_excess([air.temperature], [march.temperature[top, 0]], pressures=pressures)[0])
 
 
 def nearest_estimates(seen: Observations, estimates: Sequence[Estimates], within: float) -> NDArray[np.int_]:
@@ -224,7 +331,7 @@ def nearest_estimates(seen: Observations, estimates: Sequence[Estimates], within
     seen : Observations
     estimates : sequence of Estimates
     within : float [s]
-        Rows farther than this from every estimate in time belong to none. A
+        Rows farther than this from every estimate of their place in time belong to none. A
         single case without a time takes every row, a row without a time belongs to a single case.
 
     Returns
@@ -233,13 +340,21 @@ def nearest_estimates(seen: Observations, estimates: Sequence[Estimates], within
     """
     if len(estimates) == 1 and estimates[0].time is None:
         return np.zeros(seen.time.size, dtype=np.int_)
-    times = np.array([np.nan if one.time is None else one.time for one in estimates])
-    order = np.argsort(times)
-    middle = 0.5 * (times[order][1:] + times[order][:-1])
-    which = order[np.searchsorted(middle, seen.time)]
-    away = np.abs(seen.time - times[which])
-    unknown = 0 if len(estimates) == 1 else -1
-    return np.asarray(np.where(np.isnan(seen.time), unknown, np.where(away <= within, which, -1)))
+    arrival = np.stack([one.arrival for one in estimates])
+    found = np.full(seen.time.size, -1)
+    for place in range(arrival.shape[1]):
+        rows = np.flatnonzero((seen.place == place) & np.isfinite(seen.time))
+        order = np.argsort(arrival[:, place], kind="stable")
+        order = order[np.isfinite(arrival[order, place])]
+        if not order.size:
+            continue
+        times = arrival[order, place]
+        nearest = np.searchsorted(0.5 * (times[1:] + times[:-1]), seen.time[rows])
+        near = np.abs(seen.time[rows] - times[nearest]) <= within
+        found[rows[near]] = order[nearest[near]]
+    if len(estimates) == 1:
+        found[np.isnan(seen.time)] = 0
+    return found
 
 
 def paired(seen: Observations, estimates: Sequence[Estimates], which: NDArray[np.int_], quantity: Quantity) -> Paired:
@@ -374,16 +489,16 @@ def _value(crossing: Crossing, air: LeeAir, name: Quantity) -> float:
     return float(getattr(air, name))
 
 
-def _ranges(air: LeeAir, given: Mapping[str, tuple[float, float]]) -> dict[str, tuple[float, float]]:
-    """Ranges at one place: those given, else the model error; of the wind those of the methods."""
-    found: dict[str, tuple[float, float]] = {}
+def _ranges(air: LeeAir, given: Mapping[Quantity, tuple[float, float]]) -> dict[Quantity, tuple[float, float]]:
+    """Ranges at one place: those given, else the error of the method; of the wind those of the methods."""
+    found: dict[Quantity, tuple[float, float]] = {}
     wind = air.wind
     if wind is not None:
         share = wind.at_10m / wind.wind if wind.wind > 0.0 else 1.0
         found |= {"wind": (share * wind.low, share * wind.high), "gust": (wind.gust_low, wind.gust_high)}
-    for name, error in MODEL_ERROR.items():
-        middle, half = float(getattr(air, name)), TEN_PER_CENT * error
-        found[name] = (middle - half, middle + half)
+    warm, moist = (TENTH * float(error) for error in model_error(max(air.distance, 0.0)))
+    found["temperature"] = (air.temperature - warm, air.temperature + warm)
+    found["mixing_ratio"] = (air.mixing_ratio - moist, air.mixing_ratio + moist)
     found["mixing_ratio"] = (max(found["mixing_ratio"][0], 0.0), found["mixing_ratio"][1])
     low, high = (
         float(dew_point_from_mixing_ratio(air.pressure, max(vapour, LEAST_VAPOUR))) for vapour in found["mixing_ratio"]

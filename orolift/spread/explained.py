@@ -11,18 +11,40 @@ from orolift.crossing.explain import Observed, Path, explanation, way
 from orolift.crossing.upwind_error import upwind_error
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
-
     from numpy.typing import NDArray
 
     from orolift.crossing.explain import Explanation, Way
-    from orolift.crossing.result import LeeAir
+    from orolift.crossing.result import Crossing, LeeAir
     from orolift.crossing.situation import Situation
     from orolift.crossing.upwind_error import UpwindError
-    from orolift.spread.comparison import Estimates, Observations, Paired
+    from orolift.spread.comparison import Observations, Paired
 
 USUAL_SHARE = 0.7
 """Share of condensate that leaves, where nothing condensed in the crossing to tell; a judgement."""
+
+
+@dataclass(frozen=True, eq=False)
+class Source:
+    """Where an estimate comes from.
+
+    Attributes
+    ----------
+    time : float or None [s]
+        It is valid for.
+    crossing : Crossing
+    air : LeeAir
+        The estimate.
+    situation : Situation
+        Of the line of the place.
+    site : int
+        Number of the place among its sites, from 0.
+    """
+
+    time: float | None
+    crossing: Crossing
+    air: LeeAir
+    situation: Situation
+    site: int
 
 
 @dataclass(frozen=True, eq=False)
@@ -92,10 +114,7 @@ def explained(
     chosen_one: tuple[int, int],
     seen: Observations,
     which: NDArray[np.int_],
-    estimates: Sequence[Estimates],
-    air: LeeAir,
-    situation: Situation,
-    site: int,
+    source: Source,
 ) -> Explained:
     """What would explain one comparison.
 
@@ -106,13 +125,8 @@ def explained(
     seen : Observations
     which : ndarray of int (n,)
         Number of the estimates each row belongs to.
-    estimates : sequence of Estimates
-    air : LeeAir
-        The chosen estimate.
-    situation : Situation
-        It comes from; of the line of the place.
-    site : int
-        Number of the place among its sites, from 0.
+    source : Source
+        Of the chosen estimate.
 
     Returns
     -------
@@ -124,8 +138,7 @@ def explained(
         If the situation cannot be worked out.
     """
     number, place = chosen_one
-    one = estimates[number]
-    crossing = one.crossing
+    crossing, air = source.crossing, source.air
     t, w = seen.values["temperature"], seen.values["mixing_ratio"]
     mine = (which == number) & (seen.place == place) & np.isfinite(t) & np.isfinite(w)
     observed = Observed(float(np.mean(t[mine])), float(np.mean(w[mine])))
@@ -144,7 +157,7 @@ def explained(
     return Explained(
         place=place,
         which=number,
-        time=one.time,
+        time=source.time,
         rows=int(mine.sum()),
         estimate=air,
         removed_share=share,
@@ -152,7 +165,7 @@ def explained(
         explanation=explanation(path, observed, usual),
         own=own,
         upwind=(
-            upwind_error(situation, site, observed, "wind"),
-            upwind_error(situation, site, observed, "humidity"),
+            upwind_error(source.situation, source.site, observed, "wind", air),
+            upwind_error(source.situation, source.site, observed, "humidity", air),
         ),
     )

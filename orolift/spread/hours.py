@@ -15,6 +15,7 @@ from orolift.terrain.features import features
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
     from orolift.crossing.situation import Situation
+    from orolift.fire.sites import FireSettings
     from orolift.rain.over_map import Catchment
     from orolift.terrain.grid import ElevationGrid
 
@@ -74,6 +75,8 @@ class HourTask:
     lines : tuple of OneLine
     ground : MapGround or None
         None without catchments.
+    fire : FireSettings or None
+        With the thresholds of a region, where there are any.
     """
 
     number: int
@@ -81,6 +84,7 @@ class HourTask:
     states: tuple[SiteState, ...]
     lines: tuple[OneLine, ...] = ()
     ground: MapGround | None = None
+    fire: FireSettings | None = None
 
 
 @dataclass(frozen=True)
@@ -118,16 +122,27 @@ def worked_hour(task: HourTask) -> Hour:
     states = list(task.states)
     first: Crossing | None = None
     for line in task.lines:
-        situation = replace(line.situation, when=_arrives(line, task.time))
-        found, crossing = states_of(situation, line.observed_at)
+        situation = replace(line.situation, when=when_there(line, task.time))
+        found, crossing = states_of(situation, line.observed_at, task.fire)
         first = first or crossing
         for number, state in zip(line.numbers, found, strict=True):
             states[number] = state
     return Hour(task.number, task.time, tuple(states), _catchment_rates(task.ground, first))
 
 
-def _arrives(line: OneLine, time: float) -> Any:
-    """When the air of a line is about at its first site, for the height of the sun there."""
+def when_there(line: OneLine, time: float) -> Any:
+    """When the air of a line is about at its first site, for the height of the sun there.
+
+    Parameters
+    ----------
+    line : OneLine
+    time : float [s]
+        At which it was observed.
+
+    Returns
+    -------
+    When or None
+    """
     situation = line.situation
     when = situation.when
     if when is None or not situation.sites:

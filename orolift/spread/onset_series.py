@@ -16,7 +16,6 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.crossing.onset import OnsetRule, Spell
-    from orolift.crossing.result import Crossing, LeeAir
     from orolift.spread.comparison import Estimates, Observations
     from orolift.spread.verification import Contingency
 
@@ -57,7 +56,6 @@ def onset_at_places(
     seen: Observations,
     estimates: Sequence[Estimates],
     which: NDArray[np.int_],
-    places: Sequence[Sequence[int | None]],
     elevations: Sequence[float],
 ) -> tuple[OnsetAtPlace, ...]:
     """The rule at every place in the lee.
@@ -69,8 +67,6 @@ def onset_at_places(
     estimates : sequence of Estimates
     which : ndarray of int (n,)
         Number of the estimates each row belongs to, -1 for none.
-    places : sequence of sequence of (int or None)
-        For each of the estimates the site number of each place.
     elevations : sequence of float [m above sea level]
         Of the places, where the file gives none.
 
@@ -83,12 +79,15 @@ def onset_at_places(
     for place in range(len(elevations)):
         if not any(one.in_lee[place] for one in estimates):
             continue
-        pairs = [_estimated(rule, one.crossing, sites[place]) for one, sites in zip(estimates, places, strict=True)]
-        own, excess = (np.array([pair[i] for pair in pairs]) for i in (0, 1))
+        excess, bearing, wind = (
+            np.array([values[place] for values in fields])
+            for fields in zip(*((one.excess, one.wind_from, one.values["wind"]) for one in estimates), strict=True)
+        )
+        own = holds(rule, excess, bearing, np.where(np.isnan(wind) & np.isfinite(excess), 0.0, wind))
         mine = seen.place == place
         known = mine & np.isfinite(state)
         near = known & (which >= 0)
-        times = np.array([np.nan if one.time is None else one.time for one in estimates])
+        times = np.array([one.arrival[place] for one in estimates])
         found.append(
             OnsetAtPlace(
                 place=place,
@@ -114,37 +113,3 @@ def _observed(rule: OnsetRule, seen: Observations, elevations: Sequence[float]) 
     )
     speed = seen.values["wind"] if np.isfinite(seen.values["wind"]).any() else None
     return np.where(np.isnan(excess), np.nan, holds(rule, excess, seen.wind_from, speed))
-
-
-def _estimated(rule: OnsetRule, crossing: Crossing, site: int | None) -> tuple[float, float]:
-    """Whether the rule holds in a crossing, and by how much the lee air exceeds that over the crest [K]."""
-    if site is None:
-        return np.nan, np.nan
-    air = crossing.lee[site]
-    excess = crest_excess(crossing, air)
-    bearing = np.array([crossing.flow.normal + np.pi])
-    wind = np.array([0.0 if air.wind is None else air.wind.at_10m])
-    return float(holds(rule, np.array([excess]), bearing, wind)[0]), excess
-
-
-def crest_excess(crossing: Crossing, air: LeeAir) -> float:
-    """Potential temperature at a site minus that of the lowest air over the crest [K].
-
-    Parameters
-    ----------
-    crossing : Crossing
-    air : LeeAir
-
-    Returns
-    -------
-    float [K]
-    """
-    top = int(np.argmin(np.abs(crossing.distance - crossing.features.crest_distance)))
-    march = crossing.air
-    return float(
-        potential_excess(
-            [air.temperature],
-            [march.temperature[top, 0]],
-            pressures=([air.pressure], [march.pressure[top, 0]]),
-        )[0]
-    )

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Literal
 
 import numpy as np
@@ -10,15 +10,24 @@ import numpy as np
 from orolift.air.column import interpolated
 from orolift.air.humidity import relative_humidity_from_dew_point
 from orolift.air.temperature import potential_temperature
+from orolift.crossing.result import When
 from orolift.crossing.situation import crossing_of
 from orolift.errors import NoCrossingError, OroliftError
 from orolift.fire.dryness import vapour_pressure_deficit
+from orolift.fire.indices import site_fire
+from orolift.fire.nights import nights_at
+from orolift.fire.values import site_values
+from orolift.fire.weather import site_weather, stacked
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     from numpy.typing import NDArray
 
     from orolift.crossing.result import Crossing, LeeAir, Side, WarmingParts
     from orolift.crossing.situation import Situation
+    from orolift.fire.sites import FireSettings
+    from orolift.fire.winds import WindMeant
 
     Array = NDArray[np.float64]
 
@@ -33,7 +42,7 @@ HALFWAY = 0.5
 which air come down from the crest has made at least; what is short of the whole is mixing and low air; a judgement."""
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class Travel:
     """Time the air takes to a site, from where it was observed [s].
 
@@ -49,7 +58,7 @@ class Travel:
     spread: float
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True)
 class SiteState:
     """One site in one crossing; None where there is nothing to say.
 
@@ -86,6 +95,8 @@ class SiteState:
     breaks_through : bool or None
     descending : bool or None
         Whether the air there is descending warm dry air; see `descending_warm_dry`.
+    rule_values : mapping of quantity to float, or None [SI]
+        What the thresholds of a region speak of, NaN where it is not known; None without thresholds.
     """
 
     status: Status
@@ -111,9 +122,12 @@ class SiteState:
     crest_wind: float | None = None
     breaks_through: bool | None = None
     descending: bool | None = None
+    rule_values: Mapping[str | WindMeant, float] | None = None
 
 
-def states_of(situation: Situation, observed_at: float = 0.0) -> tuple[tuple[SiteState, ...], Crossing | None]:
+def states_of(
+    situation: Situation, observed_at: float = 0.0, fire: FireSettings | None = None
+) -> tuple[tuple[SiteState, ...], Crossing | None]:
     """The sites of a situation, whether it crosses or not.
 
     Parameters
@@ -122,6 +136,8 @@ def states_of(situation: Situation, observed_at: float = 0.0) -> tuple[tuple[Sit
         With one site at least.
     observed_at : float [m]
         Where on the transect the incoming air was observed; times on the way are counted from there.
+    fire : FireSettings, optional
+        With the thresholds of a region.
 
     Returns
     -------
@@ -136,7 +152,46 @@ def states_of(situation: Situation, observed_at: float = 0.0) -> tuple[tuple[Sit
         return (SiteState("no crossing", str(error)),) * len(situation.sites), None
     except OroliftError as error:
         return (SiteState("missing", str(error)),) * len(situation.sites), None
-    return tuple(_state(site, crossing, observed_at) for site in crossing.lee), crossing
+    states = tuple(_state(site, crossing, observed_at) for site in crossing.lee)
+    if fire is None or fire.rules is None:
+        return states, crossing
+    when = situation.when or When()
+    values = [rule_values(crossing, site, when, fire) for site in crossing.lee]
+    return tuple(replace(state, rule_values=found) for state, found in zip(states, values, strict=True)), crossing
+
+
+def rule_values(crossing: Crossing, site: LeeAir, when: When, fire: FireSettings) -> dict[str | WindMeant, float]:
+    """What the thresholds of a region speak of, at one site.
+
+    Parameters
+    ----------
+    crossing : Crossing
+    site : LeeAir
+    when : When
+    fire : FireSettings
+        With rules.
+
+    Returns
+    -------
+    dict of quantity to float [SI]
+        NaN where it is not known, as the codes that are carried from hour to hour.
+    """
+    rules = () if fire.rules is None else fire.rules.rules
+    wanted = {condition.quantity for rule in rules for condition in rule.conditions}
+    weather = site_weather(site)
+    indices = site_fire(weather, drought_index=fire.drought_index, hours=())
+    others = {
+        "drought_index": np.nan if fire.drought_index is None else fire.drought_index,
+        "mixing_height": np.nan,
+        "source_level": np.nan if site.source_level is None else site.source_level,
+        "warming": site.warming,
+    }
+    if "mixing_height" in wanted:
+        (night,) = nights_at(stacked([weather]), [site], [crossing.features.crest], when)
+        others["mixing_height"] = night.mixing_height
+    roughness = float(np.asarray(crossing.settings.roughness))
+    values = site_values(weather, indices, rules, roughness, others=others)
+    return {key: float(np.asarray(values.get(key, np.nan))) for key in wanted}
 
 
 def _state(site: LeeAir, crossing: Crossing, observed_at: float) -> SiteState:

@@ -7,29 +7,33 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from orolift.fire.fine_fuel import fine_fuel_code_hourly
-from orolift.fire.night import spells
+from orolift.fire.fine_fuel import fine_fuel_code_hourly, initial_spread_index
+from orolift.fire.night import lasting, spells
+from orolift.fire.rules import rule_met
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Sequence
 
     from numpy.typing import NDArray
 
+    from orolift.fire.rules import Rule
+    from orolift.fire.sites import FireSettings
+    from orolift.fire.winds import WindMeant
     from orolift.spread.hours import Hour
     from orolift.spread.site_state import SiteState
 
     Array = NDArray[np.float64]
 
 WIND_ERROR = 0.15
-"""Standard deviation of the wind along the way, as a share of it; a judgement."""
+"""Standard deviation of the wind along the way, as a share of it, when nothing says otherwise; a judgement."""
 START_CODE = 85.0
 """Fine Fuel Moisture Code before the first hour when nothing says otherwise: the usual start of a season."""
 HOUR = 3600.0
 
 
 @dataclass(frozen=True)
-class DryWind:
-    """A stretch of time in which a site has descending warm dry air.
+class Stretch:
+    """A stretch of time in which something holds at a site.
 
     Attributes
     ----------
@@ -54,6 +58,27 @@ class DryWind:
 
 
 @dataclass(frozen=True, eq=False)
+class RuleStretches:
+    """A threshold of a region at a site through the hours.
+
+    Attributes
+    ----------
+    rule : Rule
+    met : ndarray of bool, (n,)
+        Long enough, as the rule asks for it.
+    judged : ndarray of bool, (n,)
+        Whether it can be judged.
+    stretches : tuple of Stretch
+        In which it is met.
+    """
+
+    rule: Rule
+    met: NDArray[np.bool_]
+    judged: NDArray[np.bool_]
+    stretches: tuple[Stretch, ...]
+
+
+@dataclass(frozen=True, eq=False)
 class SiteTimeline:
     """One site through all hours, in the order of the upwind time.
 
@@ -67,7 +92,10 @@ class SiteTimeline:
         One standard deviation; NaN where the air does not arrive.
     fine_fuel_code : ndarray (n,) [1]
         Carried from hour to hour; NaN where it is not known.
-    dry_winds : tuple of DryWind
+    dry_winds : tuple of Stretch
+        With descending warm dry air.
+    thresholds : tuple of RuleStretches
+        Of the region, as far as the case has any.
     rain : float [kg m-2]
         Sum over the hours that cross.
     crossing_hours : int
@@ -80,7 +108,8 @@ class SiteTimeline:
     arrival: Array
     arrival_error: Array
     fine_fuel_code: Array
-    dry_winds: tuple[DryWind, ...]
+    dry_winds: tuple[Stretch, ...]
+    thresholds: tuple[RuleStretches, ...]
     rain: float
     crossing_hours: int
     overtaken: int
@@ -141,7 +170,8 @@ def hours_of(
     *,
     planned: int,
     catchments: Sequence[str] = (),
-    start_code: float = START_CODE,
+    fire: FireSettings | None = None,
+    wind_error: float = WIND_ERROR,
 ) -> Hours:
     """Timelines of hours worked out in any order.
 
@@ -155,8 +185,10 @@ def hours_of(
     planned : int
         Hours of the series.
     catchments : sequence of str
-    start_code : float [1]
-        Fine Fuel Moisture Code before the first hour, 0 to 101.
+    fire : FireSettings, optional
+        Thresholds of the region, and the Fine Fuel Moisture Code before the first hour.
+    wind_error : float [1]
+        Standard deviation of the wind along the way, as a share of it.
 
     Returns
     -------
@@ -168,7 +200,7 @@ def hours_of(
         time=time,
         step=step,
         sites=tuple(
-            _timeline(name, time, step, tuple(hour.sites[i] for hour in hours), start_code)
+            _timeline(name, time, step, tuple(hour.sites[i] for hour in hours), fire, wind_error)
             for i, name in enumerate(names)
         ),
         catchments=tuple(
@@ -179,22 +211,56 @@ def hours_of(
     )
 
 
-def _timeline(name: str, time: Array, step: float, states: tuple[SiteState, ...], start_code: float) -> SiteTimeline:
+def _timeline(
+    name: str,
+    time: Array,
+    step: float,
+    states: tuple[SiteState, ...],
+    fire: FireSettings | None,
+    wind_error: float,
+) -> SiteTimeline:
     way = values_of(states, "travel.time")
     crosses = np.isfinite(way)
     arrival = arrivals(time, way)
-    error = np.hypot(WIND_ERROR * way, values_of(states, "travel.spread"))
+    error = np.hypot(wind_error * way, values_of(states, "travel.spread"))
+    given = None if fire is None else fire.previous_code
+    codes = _codes(states, step, START_CODE if given is None else given)
+    known = np.array([one.status != "missing" for one in states], dtype=np.bool_)
+    rules = () if fire is None or fire.rules is None else fire.rules.rules
     return SiteTimeline(
         name=name,
         states=states,
         arrival=arrival,
         arrival_error=error,
-        fine_fuel_code=_codes(states, step, start_code),
-        dry_winds=dry_winds(states, arrival, error),
+        fine_fuel_code=codes,
+        dry_winds=stretches([one.descending is True for one in states], known, arrival, error),
+        thresholds=tuple(_threshold(rule, states, codes, step, arrival, error) for rule in rules),
         rain=float(np.nansum(values_of(states, "rain"))) * step,
         crossing_hours=int(crosses.sum()),
         overtaken=int((arrival[crosses] < (time + way)[crosses]).sum()),
     )
+
+
+def _threshold(
+    rule: Rule, states: tuple[SiteState, ...], codes: Array, step: float, arrival: Array, error: Array
+) -> RuleStretches:
+    """A rule through the hours; it is not met in hours without air that crosses, and not judged in missing ones."""
+    nothing: dict[str | WindMeant, float] = {}
+    values: dict[str | WindMeant, Array] = {
+        condition.quantity: np.array([(one.rule_values or nothing).get(condition.quantity, np.nan) for one in states])
+        for condition in rule.conditions
+    }
+    values["fine_fuel_code"] = codes
+    wind = values_of(states, "wind_10m")
+    both = np.isfinite(codes) & np.isfinite(wind)
+    spread = np.full(codes.size, np.nan)
+    spread[both] = initial_spread_index(codes[both], wind[both])
+    values["initial_spread_index"] = spread
+    met, judged = rule_met(rule, values)
+    still = np.array([one.status == "no crossing" for one in states], dtype=np.bool_)
+    judged = (judged | still) & np.array([one.status != "missing" for one in states], dtype=np.bool_)
+    enough = lasting(met & judged, max(1, int(np.ceil(rule.hours * HOUR / step - 1e-6))))
+    return RuleStretches(rule, enough, judged, stretches(enough.tolist(), judged, arrival, error))
 
 
 def arrivals(time: Array, way: Array) -> Array:
@@ -252,42 +318,45 @@ def values_of(states: Iterable[SiteState], key: str) -> Array:
     return np.array([value(state) for state in states])
 
 
-def dry_winds(states: Sequence[SiteState], arrival: Array, error: Array) -> tuple[DryWind, ...]:
-    """Stretches of descending warm dry air at a site, with onset and end.
+def stretches(met: Sequence[bool], known: NDArray[np.bool_], arrival: Array, error: Array) -> tuple[Stretch, ...]:
+    """Stretches of time in which something holds at a site, with onset and end.
 
     Parameters
     ----------
-    states : sequence of SiteState
+    met : sequence of bool, length n
+        Whether it holds in each hour.
+    known : ndarray of bool, (n,)
+        Whether that is known.
     arrival, error : ndarray (n,) [s]
         As in `SiteTimeline`.
 
     Returns
     -------
-    tuple of DryWind
-        In the order of arrival.
+    tuple of Stretch
+        In order.
 
     Notes
     -----
-    Hours of which nothing is known neither begin nor end a stretch. An hour that does not cross is one
-    without descending air. The error of onset and end joins half the time between the two hours with that of the
-    travel time: 15 % of it for the wind along the way, and its spread between the streamlines that arrive.
+    Hours of which nothing is known neither begin nor end a stretch. The error of onset and end joins half the time
+    between the two hours with that of the travel time: its share that the wind is uncertain by, and its spread between
+    the streamlines that arrive.
     """
-    known = np.array([one.status != "missing" for one in states], dtype=bool)
     order = np.flatnonzero(known)
-    met = [states[int(i)].descending is True for i in order]
+    flags = np.asarray(met, dtype=bool)[order]
 
     def change(before: int, after: int) -> tuple[float, float]:
         a, b = order[before], order[after]
-        way = float(np.nanmax([error[a], error[b]]))
+        ways = [value for value in (error[a], error[b]) if np.isfinite(value)]
+        way = float(max(ways, default=0.0))
         return 0.5 * float(arrival[a] + arrival[b]), float(np.hypot(0.5 * (arrival[b] - arrival[a]), way))
 
     out = []
-    for one in spells(met):
+    for one in spells(flags):
         onset = None if one.open_start else change(one.start - 1, one.start)
         end = None if one.open_end else change(one.end - 1, one.end)
         first, last = int(order[one.start]), int(order[one.end - 1])
         out.append(
-            DryWind(
+            Stretch(
                 first=first,
                 last=last,
                 onset=None if onset is None else onset[0],

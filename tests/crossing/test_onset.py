@@ -103,3 +103,10 @@ def test_order_of_rows_does_not_matter_and_unknown_times_drop_out():
     again = spells(OnsetRule(bridge=0.0), [*time[mixed], np.nan], [*state[mixed], 1.0])
     assert plain == again
     assert len(plain) == 2
+
+
+def test_one_failure_between_hours_ends_a_spell_that_nothing_bridges():
+    """Held, failed, held: two spells without a bridge, one with two hours of it."""
+    time, state = np.arange(3) * HOUR, [1, 0, 1]
+    assert len(spells(OnsetRule(bridge=0.0), time, state)) == 2
+    assert len(spells(OnsetRule(bridge=2 * HOUR), time, state)) == 1

@@ -69,6 +69,12 @@ def test_parcel_rises_to_where_the_air_is_as_warm():
     np.testing.assert_allclose(mixing_height(Z, mixed), 1525.0, atol=2.0)
 
 
+def test_a_parcel_rises_from_the_heated_layer():
+    """Law: sqrt(2 H / G) filled, then the excess over the gradient on top."""
+    found = mixing_height(Z, 290.0 + 0.005 * Z, heat=2500.0, excess=1.0)
+    np.testing.assert_allclose(found, 1000.0 + 1.0 / 0.005, atol=3.0)
+
+
 def test_more_heat_never_mixes_less_and_members_come_first():
     """Heat (m,) over one profile; a profile (m, nz)."""
     heat = np.array([0.0, 500.0, 2000.0, 9000.0])

@@ -209,6 +209,9 @@ def test_in_a_cold_pool_the_wind_is_not_known():
     assert one.in_pool
     assert one.thresholds[0].judged.status == "cannot be judged"
     assert np.isnan(one.indices.fosberg_index)
+    assert one.indices.hot_dry_windy > 0.0
+    deep = replace(one.weather, layer_wind=np.zeros_like(one.weather.layer_wind))
+    assert np.isnan(site_fire(deep).hot_dry_windy)
     assert one.weather.layer_wind[0] == 0.0
     assert one.weather.layer_wind.max() > 5.0
     assert "is not known" in windward_cautions((one,), rules)[0]

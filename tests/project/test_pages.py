@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 
-from orolift.sources import gauges_csv, ridge_csv, sounding_csv
+from orolift.sources import compare_results, gauges_csv, observed, ridge_csv, sounding_csv
 from orolift.sources.case_model import (
     Case,
     FlowTable,
@@ -14,6 +14,7 @@ from orolift.sources.case_model import (
     LeeTable,
     Place,
     SiteTable,
+    SpreadTable,
     Station,
     Terrain,
     TransectTable,
@@ -47,7 +48,8 @@ from orolift.sources.results import (
     WarmingParts,
 )
 from orolift.sources.rules_file import QUANTITY_KEYS, RuleCondition, RulesFile, RuleTable
-from orolift.sources.schemas import case_schema, results_schema, rules_schema
+from orolift.sources.schemas import case_schema, compare_schema, results_schema, rules_schema
+from orolift.sources.spread_results import InfluenceBlock, InfluencesBlock, SpreadBlock
 from orolift.sources.units import alternatives
 
 DOCS = Path(__file__).resolve().parents[2] / "docs"
@@ -69,6 +71,7 @@ CASE_TABLES = {
     "[fire]": Fire,
     "[lee]": LeeTable,
     "[heat]": HeatTable,
+    "[spread]": SpreadTable,
     "[[site]]": SiteTable,
 }
 RESULTS_TABLES = {
@@ -87,6 +90,9 @@ RESULTS_TABLES = {
     "lee": LeeBlock,
     "warming_parts_c": WarmingParts,
     "profile": Profile,
+    "spread": SpreadBlock,
+    "influences": InfluencesBlock,
+    "influence": InfluenceBlock,
     "fire": FireBlock,
     "night": NightBlock,
     "rules": RuleBlock,
@@ -99,7 +105,30 @@ RESULTS_TABLES = {
     "fitted value": FittedBlock,
 }
 RULE_TABLES = {"Rule file": RulesFile, "rule": RuleTable, "condition": RuleCondition}
-CSV_TABLES = {"Ridge CSV": ridge_csv.COLUMNS, "Sounding CSV": sounding_csv.COLUMNS, "Gauges CSV": gauges_csv.COLUMNS}
+COMPARE_TABLES = {
+    "Top level": compare_results.CompareResults,
+    "scores": compare_results.QuantityBlock,
+    "score": compare_results.ScoreBlock,
+    "simple answer": compare_results.ReferenceBlock,
+    "events": compare_results.EventBlock,
+    "table": compare_results.ContingencyBlock,
+    "rule": compare_results.RuleBlock,
+    "onset": compare_results.OnsetBlock,
+    "spell": compare_results.SpellBlock,
+    "explanation": compare_results.ExplanationBlock,
+    "valleys": compare_results.ValleyBlock,
+    "way": compare_results.WayBlock,
+    "upwind": compare_results.UpwindErrorBlock,
+    "profile": compare_results.ProfileBlock,
+    "layers": compare_results.LayerBlock,
+    "values": compare_results.ValueBlock,
+}
+CSV_TABLES = {
+    "Ridge CSV": ridge_csv.COLUMNS,
+    "Sounding CSV": sounding_csv.COLUMNS,
+    "Gauges CSV": gauges_csv.COLUMNS,
+    "Observed CSV": observed.COLUMNS,
+}
 
 
 def rows_under(page, heading):
@@ -125,6 +154,8 @@ def range_words(field):
     if kind == "number" and "maximum" in field:
         low = f"above {field['exclusiveMinimum']:g}" if "exclusiveMinimum" in field else f"{field['minimum']:g}"
         return f"{low} to {field['maximum']:g}"
+    if kind == "integer":
+        return f"whole number, {field['minimum']} to {field['maximum']}"
     if kind == "string" and "maxLength" in field:
         return f"text, up to {field['maxLength']} letters"
     if kind == "array":
@@ -210,3 +241,21 @@ def test_results_page_says_what_may_be_null(heading, model):
 def test_results_page_forgets_no_block():
     """A new block of the models needs its own heading."""
     assert {model.__name__ for model in RESULTS_TABLES.values()} == {"Results", *results_schema()["$defs"]}
+
+
+@pytest.mark.parametrize(("heading", "model"), COMPARE_TABLES.items(), ids=COMPARE_TABLES)
+def test_compare_page_lists_the_keys_of_the_block(heading, model):
+    """Every key of a comparison has a row, in the order of the file, and says where it may be null."""
+    schema = compare_schema()
+    fields = (schema if heading == "Top level" else schema["$defs"][model.__name__])["properties"]
+    rows = rows_under("compare.md", heading)
+    assert list(rows) == list(model.model_fields)
+    for key, row in rows.items():
+        assert bool(row["null"]) == ({"type": "null"} in fields[key].get("anyOf", [])), key
+        assert row["meaning"], key
+
+
+def test_compare_page_forgets_no_block():
+    """A new block needs its own heading."""
+    named = {model.__name__ for model in COMPARE_TABLES.values()}
+    assert named == {"CompareResults", *compare_schema()["$defs"]} - {"Program"}

@@ -16,7 +16,10 @@ from orolift.crossing.crossing import cross
 from orolift.crossing.pool import Lee
 from orolift.crossing.result import Site, When
 from orolift.crossing.settings import Settings
+from orolift.crossing.situation import Situation
 from orolift.report.page import page_of
+from orolift.spread.spread import spread_of
+from orolift.spread.uncertainty import Uncertainty
 from orolift.terrain.ridge import ridge_transect
 
 NIGHT = When(1793692800.0, -121.0, -46.9)  # 2026-11-03T08:00Z, midnight on the invented range
@@ -146,3 +149,11 @@ def crossing():
 def any_crossing(request):
     """Every crossing in turn."""
     return worked_out(request.param)
+
+
+@pytest.fixture(scope="session")
+def with_members():
+    """A crossing and its members."""
+    crossing = worked_out("rain that drifts")
+    situation = Situation(crossing.transect, crossing.incoming, crossing.sites, crossing.settings)
+    return crossing, spread_of(situation, crossing, Uncertainty(), members=12, seed=1, streamlines=24)

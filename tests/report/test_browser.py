@@ -8,6 +8,8 @@ import numpy as np
 import pytest
 
 from orolift.cli.cross import report_of, work_out
+from orolift.cli.folder import index_html
+from orolift.report.index import entry_of
 from orolift.report.quantities import quantity
 from orolift.report.render import render
 
@@ -29,8 +31,20 @@ def demo():
 
 @pytest.fixture
 def html_of(page_for, named, demo):
-    """HTML of a case by its name."""
-    return lambda name, **more: demo if name == "rain over a map" else render(page_for(named(name), **more))
+    """HTML of a case by its name, or of an index of two."""
+
+    def made(name):
+        if name == "rain over a map":
+            return demo
+        if name == "index":
+            return index_html([entry(named(one), one) for one in ("rain that drifts", "cold pool")], "us")
+        return render(page_for(named(name)))
+
+    return made
+
+
+def entry(crossing, name):
+    return entry_of(crossing, title=name, valid_time=None, report=f"{name}.html", files={"results": f"{name}.json"})
 
 
 @pytest.fixture
@@ -65,7 +79,7 @@ def read_off(page):
     )
 
 
-@pytest.mark.parametrize("name", ["rain over a map", "blocked", "cold pool"])
+@pytest.mark.parametrize("name", ["rain over a map", "blocked", "cold pool", "index"])
 def test_no_fault_of_accessibility_in_light_and_dark(opened, html_of, axe, name):
     """Every rule of axe-core, with the numbers of the section open; in the dark those that colours decide."""
     page = opened(html_of(name), color_scheme="light")

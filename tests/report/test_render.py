@@ -75,13 +75,26 @@ def amounts_of(thing):
         return [thing]
     if is_dataclass(thing):
         return [found for field in fields(thing) for found in amounts_of(getattr(thing, field.name))]
+    if isinstance(thing, dict):
+        return amounts_of(tuple(thing.values()))
     return [found for item in thing for found in amounts_of(item)] if isinstance(thing, tuple) else []
 
 
 @pytest.mark.parametrize("units", ["metric", "us"])
 def test_every_number_shown_is_a_rounded_number_of_the_page(page_for, any_crossing, units):
     """Each data element reads as an amount of the page with the same raw value; and no amount is left out."""
-    page = page_for(any_crossing, units=units)
+    numbers_are_those_of(page_for(any_crossing, units=units), units)
+
+
+@pytest.mark.parametrize("units", ["metric", "us"])
+def test_every_number_of_a_page_with_members_is_one_of_the_page(page_for, with_members, units):
+    """The same with ranges."""
+    crossing, spread = with_members
+    numbers_are_those_of(page_for(crossing, units=units, spread=spread), units)
+
+
+def numbers_are_those_of(page, units):
+    """Every data element reads as an amount of the page, and no amount is left out."""
     elements = Reader(render(page)).all("data")
     readings = {}
     for amount in amounts_of(page):
@@ -164,13 +177,14 @@ def digest(text):
     return f"'sha256-{base64.b64encode(hashlib.sha256(text.encode()).digest()).decode()}'"
 
 
-def test_nothing_is_fetched_and_only_our_script_runs(page_for, any_crossing):
-    """No handler, nothing with an address; and a policy that lets run one script and one style by their hashes."""
+def test_nothing_is_fetched_and_only_our_scripts_run(page_for, any_crossing):
+    """No handler, nothing with an address; and a policy that lets scripts and style run by their hashes."""
     html = render(page_for(any_crossing))
     page = Reader(html)
-    data, ours = page.all("script")
+    data, *ours = page.all("script")
     assert data["attrs"] == {"type": "application/json", "id": "reading-data"}
-    assert not ours["attrs"]
+    assert len(ours) == 2
+    assert not any(script["attrs"] for script in ours)
     assert not page.all("link")
     for element in page.elements:
         assert not any(name.startswith("on") or name == "style" for name in element["attrs"])
@@ -184,7 +198,7 @@ def test_nothing_is_fetched_and_only_our_script_runs(page_for, any_crossing):
     assert [part.strip() for part in policy.split(";")] == [
         "default-src 'none'",
         f"style-src {digest(style['text'])}",
-        f"script-src {digest(ours['text'])}",
+        f"script-src {' '.join(digest(script['text']) for script in ours)}",
         "img-src data:",
         "base-uri 'none'",
         "form-action 'none'",
@@ -200,7 +214,7 @@ def test_hostile_words_come_out_as_words(page_for, crossing):
     crossing = replace(crossing, lee=lee, notes=(HOSTILE,), cautions=(HOSTILE,))
     html = render(page_for(crossing, title=HOSTILE, case_text=f"title = '{HOSTILE}'", version="0"))
     page = Reader(html)
-    assert html.count("<script") == len(page.all("script")) == 2
+    assert html.count("<script") == len(page.all("script")) == 3
     assert HOSTILE in json.loads(page.all("script")[0]["text"])["ways"]["1"]
     assert not any("onload" in element["attrs"] for element in page.elements)
     assert page.all("h1")[0]["text"] == HOSTILE
@@ -219,7 +233,7 @@ def test_briefing_comes_first_and_cautions_come_with_it(read, crossing):
     page = read(crossing)
     order = [section["attrs"]["id"] for section in page.all("section")]
     assert order[:4] == ["briefing", "section", "causes", "sites"]
-    assert order[4:] == ["path", "rain", "wind", "answers", "inputs", "method", "cautions"]
+    assert order[4:] == ["how-sure", "path", "rain", "wind", "answers", "inputs", "method", "cautions"]
     assert "not a warning" in page.all("header")[0]["text"]
 
 
@@ -311,3 +325,22 @@ def test_words_stand_out_from_the_paper(light, name):
     chosen = colours(first) if light == "light" else colours(second)
     assert contrast(chosen[name], chosen["paper"]) >= 4.5
     assert contrast(chosen["on-ground"], chosen["ground"]) >= 4.5
+
+
+def test_compiled_templates_are_kept_and_never_trusted(tmp_path, monkeypatch, page_for, crossing):
+    """They are used again; spoilt ones, or a folder that cannot be written, change nothing but the time."""
+    page = page_for(crossing)
+    expected = render(page)
+    for folder in (tmp_path / "kept", tmp_path / "file" / "under"):
+        (tmp_path / "file").write_text("no folder")
+        monkeypatch.setattr(render_module._BesideTemplates, "folder", folder)
+        render_module._environment.cache_clear()
+        assert render(page) == expected
+    kept = sorted((tmp_path / "kept").iterdir())
+    assert len(kept) > 10
+    for file in kept:
+        file.write_bytes(file.read_bytes()[:100])
+    monkeypatch.setattr(render_module._BesideTemplates, "folder", tmp_path / "kept")
+    render_module._environment.cache_clear()
+    assert render(page) == expected
+    render_module._environment.cache_clear()

@@ -25,7 +25,7 @@ if TYPE_CHECKING:
 WIDE, NARROW = (960.0, 400.0), (344.0, 640.0)
 MARKS: dict[Reference, str] = {"unchanged": "u", "popular_picture": "p", "crest_air": "c"}
 """Letters of the simple answers."""
-MOST_LETTERS = 30
+MOST_LETTERS = 12
 """Pairs beyond which the simple answers are not drawn."""
 MOST_SPANS = 120
 """Pairs beyond which ranges are not drawn."""

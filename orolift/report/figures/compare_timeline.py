@@ -81,8 +81,8 @@ def compare_timeline(found: Compared, units: Units) -> Figure[TimelineDrawing] |
     counts = np.bincount(seen.place[known], minlength=len(found.names))
     places = sorted(np.argsort(-counts, kind="stable")[:MOST_PLACES].tolist())
     places = [number for number in places if counts[number] > 0]
-    times = np.concatenate([seen.time[known], [one.time for one in found.estimates if one.time is not None]])
-    first, last = float(times.min()), float(times.max())
+    times = np.concatenate([seen.time[known], *(one.arrival for one in found.estimates)])
+    first, last = float(np.nanmin(times)), float(np.nanmax(times))
     pad = max(0.5 * (LEAST_SPAN - (last - first)), 0.02 * (last - first))
     span = (first - pad, last + pad)
     left_out = (
@@ -155,7 +155,8 @@ def _panel(found: Compared, number: int, across: Scale, units: Units, layout: La
     mine = seen.place == number
     series = {name: _binned(seen.time[mine], seen.values[name][mine], across) for name in KINDS}
     series = {name: pair for name, pair in series.items() if pair[0].size}
-    estimates = [(one, one.time) for one in found.estimates if one.time is not None]
+    estimates = [(one, float(one.arrival[number])) for one in found.estimates]
+    estimates = [(one, time) for one, time in estimates if np.isfinite(time)]
     bars = {
         name: np.array(
             [[t, one.values[name][number], one.low[name][number], one.high[name][number]] for one, t in estimates]
@@ -196,7 +197,7 @@ def _panel(found: Compared, number: int, across: Scale, units: Units, layout: La
         ),
         spans=tuple(spans),
         marks=tuple(marks),
-        labels=_labels(found.names[number], series, across, up, layout),
+        labels=_labels(found.names[number], series, up, layout),
     )
 
 
@@ -225,10 +226,8 @@ def _spells(onset: OnsetAtPlace | None, across: Scale, layout: Layout) -> tuple[
     return tuple(out)
 
 
-def _labels(
-    name: str, series: dict[Quantity, tuple[Array, Array]], across: Scale, up: Scale, layout: Layout
-) -> tuple[Label, ...]:
-    """Name of the place over the panel, names of the lines at their right ends, or beside it where that has no room."""
+def _labels(name: str, series: dict[Quantity, tuple[Array, Array]], up: Scale, layout: Layout) -> tuple[Label, ...]:
+    """Name of the place over the panel; names of the lines at the height of their ends, or beside the first."""
     out = [Label(shortened(name), layout.left, round(layout.top - 12.0, 1), "start", "title")]
     words: dict[Quantity, tuple[str, str]] = {
         "temperature": ("temperature", "name warm"),
@@ -241,8 +240,10 @@ def _labels(
             out.append(Label(text, round(edge, 1), round(layout.top - 12.0, 1), "end", kind))
             edge -= text_width(text, layout.letter) + 12.0
         return tuple(out)
-    for quantity, (x, y) in series.items():
+    ends = sorted((float(place(up, float(y[-1]))), quantity) for quantity, (_, y) in series.items())
+    last = -np.inf
+    for at, quantity in ends:
+        last = max(at, last + 1.15 * layout.letter)
         text, kind = words[quantity]
-        end_x, end_y = float(place(across, float(x[-1]))), float(place(up, float(y[-1])))
-        out.append(Label(text, round(end_x + 8.0, 1), round(end_y + 0.3 * layout.letter, 1), "start", kind))
+        out.append(Label(text, round(layout.right + 8.0, 1), round(last + 0.3 * layout.letter, 1), "start", kind))
     return tuple(out)

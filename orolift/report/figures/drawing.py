@@ -141,21 +141,36 @@ def thinned(x: NDArray[np.float64], y: NDArray[np.float64], tolerance: float = 0
     """
     keep = np.zeros(x.size, dtype=bool)
     keep[[0, -1]] = True
-    pending = [(0, x.size - 1)]
-    while pending:
-        first, last = pending.pop()
-        if last - first < 2:
-            continue
-        dx, dy = x[last] - x[first], y[last] - y[first]
-        px, py = x[first + 1 : last] - x[first], y[first + 1 : last] - y[first]
-        length = float(np.hypot(dx, dy))
-        away = np.abs(px * dy - py * dx) / length if length > 0.0 else np.hypot(px, py)
-        middle = int(np.argmax(away))
-        if away[middle] > tolerance:
-            middle += first + 1
-            keep[middle] = True
-            pending += [(first, middle), (middle, last)]
-    return np.flatnonzero(keep)
+    first, last = np.array([0]), np.array([x.size - 1])
+    while True:
+        wide = last - first > 1
+        first, last = first[wide], last[wide]
+        if not first.size:
+            return np.flatnonzero(keep)
+        middle, away = _farthest(x, y, first, last)
+        split = away > tolerance
+        first, middle, last = first[split], middle[split], last[split]
+        keep[middle] = True
+        first, last = np.concatenate([first, middle]), np.concatenate([middle, last])
+
+
+def _farthest(
+    x: NDArray[np.float64], y: NDArray[np.float64], first: NDArray[np.int_], last: NDArray[np.int_]
+) -> tuple[NDArray[np.int_], NDArray[np.float64]]:
+    """Of each stretch between two points the inner one farthest from the chord, and its distance; all at once."""
+    inner = last - first - 1
+    start = np.concatenate([[0], np.cumsum(inner)[:-1]])
+    index = np.arange(int(inner.sum())) + np.repeat(first + 1 - start, inner)
+    dx, dy = (np.repeat(v[last] - v[first], inner) for v in (x, y))
+    px, py = (v[index] - np.repeat(v[first], inner) for v in (x, y))
+    length = np.hypot(dx, dy)
+    closed = length == 0.0
+    away = np.where(closed, np.hypot(px, py), np.abs(px * dy - py * dx) / np.where(closed, 1.0, length))
+    most = np.maximum.reduceat(away, start)
+    top = np.flatnonzero(away == np.repeat(most, inner))
+    of_stretch = np.repeat(np.arange(first.size), inner)[top]
+    leading = np.concatenate([[True], np.diff(of_stretch) > 0])
+    return index[top[leading]], most
 
 
 def polyline(x: NDArray[np.float64], y: NDArray[np.float64], kind: str, index: NDArray[np.int_] | None = None) -> Curve:

@@ -26,6 +26,9 @@ Flag = tuple[Label, Curve | None]
 Lettered = tuple[tuple[Label, ...], tuple[Curve, ...], Board]
 """Words placed, lines that lead to them, and the board with their room taken."""
 
+WORDS_OF_SOURCE = 0.5
+"""Share of the width of the frame that the words at its upwind end may take (design choice)."""
+
 
 def board_of(view: View, followed: Line) -> Board:
     """The section before anything is written on it."""
@@ -98,17 +101,15 @@ def source(view: View, board: Board) -> Lettered:
     choices = [f"air from {level}{span}, {start}", f"air from {level}, {start}", f"from {level}, {start}", start]
     if site.went_round > 0.0:  # the level is then that of both ways together, and the line that of one
         choices = [f"air from {level}{span}", f"air from {level}", f"from {level}"]
+    room = WORDS_OF_SOURCE * (view.layout.right - view.layout.left)
+    near = (middle - 0.7 * letter, high - 0.5 * letter, high - 1.5 * letter, middle + 1.5 * letter)
+    far = (high - 3.0 * letter, high - 5.0 * letter)
     places = [
         (Label(text, round(x + 9.0, 1), round(y, 1), "start", "value"),)
+        for heights in (near, far)
         for text in choices
-        for y in (
-            middle - 0.7 * letter,
-            high - 0.5 * letter,
-            high - 1.5 * letter,
-            high - 3.0 * letter,
-            middle + 1.5 * letter,
-            high - 5.0 * letter,
-        )
+        if text_width(text, letter) <= room
+        for y in heights
     ]
     labels, board = put(board, places)
     return labels, (bar,), board

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 
 HOUR = 3600.0
 HOURS = (1, 3, 6, 12, 24)
-DAYS = (2, 7, 14)
+DAYS = (2, 7, 14, 28)
 MONTHS = (1, 3, 6, 12, 24, 60, 120)
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, replace
 from datetime import datetime
 from typing import TYPE_CHECKING
@@ -10,6 +11,7 @@ import numpy as np
 
 from orolift.report.figures.axes import Layout, Scale, Tick, level_ticks, place, round_step
 from orolift.report.figures.drawing import Curve, Figure, Label, area, polyline
+from orolift.report.figures.many_hours import all_of, any_of, means, runs, spans, together_of
 from orolift.report.figures.placing import Board, Box, put, text_width
 from orolift.report.figures.time_axis import TimeTick, time_ticks
 from orolift.report.quantities import Kind, Units, displayed, first_unit, from_displayed, quantity
@@ -31,6 +33,10 @@ GAP = 34.0
 """Room between two panels, drawing units."""
 STRIP = 10.0
 """Height of the strip of states at the top, drawing units."""
+
+
+NO_RAIN = 0.05 / 3600.0
+"""Sum over the hours [kg m-2 s-1] up to which rain has no panel of its own: it would read as none."""
 
 
 @dataclass(frozen=True)
@@ -112,6 +118,10 @@ def timeline_figure(hours: Hours, number: int, zone: tzinfo, units: Units) -> Fi
         Scales are those of all sites together, so that sites can be compared.
     """
     site, words = hours.sites[number], zone_words(datetime.fromtimestamp(hours.time[0], zone))
+    together = together_of(hours.time.size)
+    more = (
+        "" if together == 1 else f" Lines span the lowest and highest of {together} hours; shorter gaps are not drawn."
+    )
     return Figure(
         key=f"timeline-{number + 1}",
         drawing=_drawing(hours, number, zone, units, WIDE),
@@ -121,7 +131,7 @@ def timeline_figure(hours: Hours, number: int, zone: tzinfo, units: Units) -> Fi
         caption=(
             f"Times are those at which the air is at the site, {words}. "
             "Upper strip: bold where descending warm dry air is there, thin where air crosses. Grey: nothing is known; "
-            "hatched: no air crosses. All sites have the same scales."
+            f"hatched: no air crosses. All sites have the same scales.{more}"
         ),
     )
 
@@ -214,56 +224,70 @@ def _range(panels: list[PanelPlan], units: Units) -> tuple[float, float]:
 
 def _drawing(hours: Hours, number: int, zone: tzinfo, units: Units, layout: Layout) -> TimelineDrawing:
     every = [plans(site) for site in hours.sites]
+    if not any(np.nansum(line.values) > NO_RAIN for own in every for plan in own if plan.filled for line in plan.lines):
+        every = [tuple(plan for plan in own if not plan.filled) for own in every]
     site, own = hours.sites[number], every[number]
     ends = [float(end(one.arrival)) for one in hours.sites for end in (np.min, np.max)]
     half = 0.5 * hours.step
     across = Scale(min(ends) - half, max(ends) + half, layout.left, layout.right)
-    x = np.asarray(place(across, site.arrival))
-    top = layout.top + STRIP + GAP
+    together = together_of(hours.time.size)
+    x = means(np.asarray(place(across, site.arrival)), together)
+    width = half * together * across.units_per_value
+    dangers, words, below = _dangers(site, x, width, layout)
+    top = below + GAP
     panels = []
     for i, plan in enumerate(own):
         frame = replace(layout, top=top, bottom=top + plan.height)
         same = [one[i] for one in every if len(one) > i]
-        panels.append(_panel(plan, _range(same, units), x, frame, units))
+        panels.append(_panel(plan, _range(same, units), x, frame, units, together))
         top = frame.bottom + GAP
     bottom = top - GAP
     whole = replace(layout, bottom=bottom, height=bottom + 7.0 + 2.7 * layout.letter)
     marks = time_ticks(across, zone, layout.letter)
-    width = half * across.units_per_value
     states, labels = _states(site, x, width, layout)
     return TimelineDrawing(
         layout=whole,
         blanks=_blanks(site, x, width, layout.top, bottom),
-        states=states,
+        states=(*states, *dangers),
         days=tuple(
-            Curve(f"M{tick.at} {layout.top + STRIP + GAP}V{bottom}", "grid")
+            Curve(f"M{tick.at} {below + GAP}V{bottom}", "grid")
             for tick in marks
             if tick.text == "00" or not any(one.day for one in marks)
         ),
         panels=tuple(panels),
         time_ticks=marks,
         day_words=round(whole.foot_words + 1.15 * layout.letter, 1),
-        labels=labels,
+        labels=(*labels, *words),
     )
 
 
-def runs(flags: NDArray[np.bool_]) -> list[tuple[int, int]]:
-    """First and one past last of each stretch of true values.
-
-    Examples
-    --------
-    >>> runs(np.array([True, True, False, True]))
-    [(0, 2), (3, 4)]
-    """
-    edges = np.flatnonzero(np.diff(np.concatenate([[False], flags, [False]]).astype(np.int8)))
-    return list(zip(edges[::2].tolist(), edges[1::2].tolist(), strict=True))
+def _dangers(
+    site: SiteTimeline, x: Array, half: float, layout: Layout
+) -> tuple[tuple[Curve, ...], tuple[Label, ...], float]:
+    """A row for each threshold of the region, marked where it is met; and where the rows end."""
+    curves, labels = [], []
+    together = math.ceil(len(site.states) / x.size)
+    bottom = layout.top + STRIP
+    for one in site.thresholds:
+        bottom += 2.1 * layout.letter
+        y = bottom - 0.35 * layout.letter
+        curves.append(Curve(f"M{layout.left} {y:.1f}H{layout.right}", "grid"))
+        curves += [
+            Curve(f"M{x[first] - half:.1f} {y:.1f}H{x[last - 1] + half:.1f}", "met")
+            for first, last in runs(any_of(one.met.tolist(), together))
+        ]
+        words = f"threshold met: {one.rule.name}" if one.met.any() else f"threshold not met: {one.rule.name}"
+        kind = "note danger-words" if one.met.any() else "note"
+        labels.append(Label(words, layout.left, round(y - 0.5 * layout.letter, 1), "start", kind))
+    return tuple(curves), tuple(labels), bottom
 
 
 def _blanks(site: SiteTimeline, x: Array, half: float, top: float, bottom: float) -> tuple[Curve, ...]:
     """Stretches without air that crosses: nothing known, and no crossing."""
     out = []
+    together = math.ceil(len(site.states) / x.size)
     for status, kind in (("missing", "unknown"), ("no crossing", "no-crossing")):
-        flags = np.array([state.status == status for state in site.states], dtype=np.bool_)
+        flags = all_of((state.status == status for state in site.states), together)
         for first, last in runs(flags):
             a, b = x[first] - half, max(x[last - 1] + half, x[first] - half + 1.0)
             box = f"M{a:.1f} {top:.1f}H{b:.1f}V{bottom:.1f}H{a:.1f}Z"
@@ -290,16 +314,17 @@ def _states(site: SiteTimeline, x: Array, half: float, layout: Layout) -> tuple[
     """The strip at the top: thin where air crosses, bold where descending warm dry air arrives."""
     middle = layout.top + 0.5 * STRIP
     out: list[Curve] = []
-    crosses = np.array([state.status == "crossing" for state in site.states], dtype=np.bool_)
+    together = math.ceil(len(site.states) / x.size)
+    crosses = any_of((state.status == "crossing" for state in site.states), together)
     for first, last in runs(crosses):
         out.append(Curve(f"M{x[first] - half:.1f} {middle}H{x[last - 1] + half:.1f}", "crosses"))
     wishes = []
     for one in site.dry_winds:
-        a, b = float(x[one.first]) - half, float(x[one.last]) + half
+        a, b = float(x[one.first // together]) - half, float(x[one.last // together]) + half
         out.append(Curve(f"M{a:.1f} {middle}H{max(b, a + 1.0):.1f}", "dry-wind"))
         wishes.append((a, "descending warm dry air", "name warm"))
     for status, words in (("no crossing", "no air crosses"), ("missing", "nothing known")):
-        flags = np.array([state.status == status for state in site.states], dtype=np.bool_)
+        flags = all_of((state.status == status for state in site.states), together)
         wishes += [(float(x[first]) - half, words, "note") for first, _ in runs(flags)]
     return tuple(out), _apart(wishes, layout)
 
@@ -318,8 +343,10 @@ def _apart(wishes: list[tuple[float, str, str]], layout: Layout) -> tuple[Label,
     return tuple(labels)
 
 
-def _panel(plan: PanelPlan, ends: tuple[float, float], x: Array, layout: Layout, units: Units) -> Panel:
+def _panel(plan: PanelPlan, ends: tuple[float, float], x: Array, layout: Layout, units: Units, together: int) -> Panel:
     up = Scale(*ends, layout.bottom, layout.top)
+    x = np.repeat(x, 2) if together > 1 else x
+    plan = replace(plan, lines=tuple(replace(line, values=spans(line.values, together)) for line in plan.lines))
     curves: list[Curve] = []
     board = Board(
         Box(layout.left, layout.top - 4.0, layout.right, layout.bottom),

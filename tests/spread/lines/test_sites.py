@@ -14,20 +14,6 @@ from orolift.sources.site_table import site_rows
 from orolift.spread.sites import air_of_groups, with_sites
 
 NORTHING = 5_100_000.0
-CASE = """
-sites_file = "sites.csv"
-[terrain]
-elevation_file = "ridge.tif"
-[transect]
-through = {{ easting_m = 500000, northing_m = {middle} }}
-upwind_km = 50
-downwind_km = 50
-[incoming]
-wind_from_deg = 270
-station = {{ elevation_m = 10, temperature_c = 10, relative_humidity_percent = 60, pressure_hpa = 1010, wind_ms = 12 }}
-[flow]
-range_normal_deg = 270
-"""
 SITES = {
     "on the line": (525_000, 0),
     "north": (525_000, 30_000),
@@ -39,36 +25,10 @@ SITES = {
 }
 
 
-def case_in(folder, sites):
-    """A case over a bell ridge along grid north, 2000 m high, with a pass in the middle."""
-    import rasterio
-    from rasterio.transform import from_origin
-
-    x = (np.arange(220) + 0.5) * 500.0 - 55_000.0
-    y = ((np.arange(240) + 0.5) * 500.0 - 60_000.0)[:, np.newaxis]
-    ground = 2000.0 / (1.0 + (x / 10_000.0) ** 2) * (1.0 - 0.5 * np.exp(-((y / 8000.0) ** 2)))
-    with rasterio.open(
-        folder / "ridge.tif",
-        "w",
-        driver="GTiff",
-        height=240,
-        width=220,
-        count=1,
-        dtype="float32",
-        crs="EPSG:32632",
-        transform=from_origin(445_000.0, NORTHING + 60_000.0, 500.0, 500.0),
-    ) as out:
-        out.write(ground.astype(np.float32), 1)
-    rows = [f"{name},{x},{NORTHING + y}" for name, (x, y) in sites.items()]
-    (folder / "sites.csv").write_text("name,easting_m,northing_m\n" + "\n".join(rows) + "\n")
-    (folder / "case.toml").write_text(CASE.format(middle=NORTHING))
-    return folder / "case.toml"
-
-
 @pytest.fixture(scope="module")
-def worked(tmp_path_factory):
+def worked(tmp_path_factory, ridge_case):
     """Inputs, and the crossing with all sites."""
-    inputs = read_inputs(case_in(tmp_path_factory.mktemp("ridge"), SITES))
+    inputs = read_inputs(ridge_case(tmp_path_factory.mktemp("ridge"), SITES))
     own = crossing_of(situation_of(inputs))
     numbers = tuple(number for number, place in enumerate(inputs.places, start=1) if place.on_line)
     return inputs, own, with_sites(own, numbers, air_of_groups(site_groups(inputs)), elsewhere=True)
@@ -126,9 +86,9 @@ def test_sites_near_one_line_share_it(worked):
     ]
 
 
-def test_a_site_does_not_depend_on_the_others(worked, tmp_path):
+def test_a_site_does_not_depend_on_the_others(worked, tmp_path, ridge_case):
     """Alone it has the same line."""
-    alone = read_inputs(case_in(tmp_path, {"on the line": SITES["on the line"], "south": SITES["south"]}))
+    alone = read_inputs(ridge_case(tmp_path, {"on the line": SITES["on the line"], "south": SITES["south"]}))
     (one,) = site_groups(alone)
     same = next(group for group in site_groups(worked[0]) if group.sites[0].name == "south")
     np.testing.assert_array_equal(one.situation.transect.elevation, same.situation.transect.elevation)
@@ -162,15 +122,15 @@ def test_when_nothing_can_be_worked_out_the_lee_foot_stays(worked):
     assert {site.reason for site in crossing.failed} == {"no"}
 
 
-def test_a_site_outside_the_raster_is_an_error(tmp_path):
+def test_a_site_outside_the_raster_is_an_error(tmp_path, ridge_case):
     """It is said before anything is worked out."""
     with pytest.raises(CaseError, match="site 'off' lies outside the elevation raster"):
-        read_inputs(case_in(tmp_path, {"off": (600_000, 0)}))
+        read_inputs(ridge_case(tmp_path, {"off": (600_000, 0)}))
 
 
-def test_a_height_far_off_the_terrain_is_flagged(tmp_path):
+def test_a_height_far_off_the_terrain_is_flagged(tmp_path, ridge_case):
     """More than 150 m, with both heights; of many the number."""
-    path = case_in(tmp_path, SITES)
+    path = ridge_case(tmp_path, SITES)
     rows = [f"S{n},{500_000 + 1000 * n},{NORTHING:.0f},4000" for n in range(8)]
     (tmp_path / "sites.csv").write_text("name,easting_m,northing_m,elevation_m\n" + "\n".join(rows) + "\n")
     cautions = " ".join(read_inputs(path).cautions)

@@ -1,0 +1,297 @@
+"""The air near the ground all along a line, at several heights for the valleys and summits beside it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.air.column import interpolated
+from orolift.air.parcel import Parcel, enthalpy, entropy, equilibrium_from_enthalpy, equilibrium_from_entropy
+from orolift.constants import GRAVITY, REFERENCE_PRESSURE
+from orolift.crossing.arrival import SAMPLES, Here, frozen_temperature, lee_profile, pressure_at, sampled, with_ground
+from orolift.crossing.crossing import crest_component, ground_under
+from orolift.crossing.heat import ground_change, surface_heat
+from orolift.crossing.picture import CREST_BAND
+from orolift.crossing.pool import Lee, pool_air
+from orolift.crossing.result import When
+from orolift.crossing.settings import Settings, checked, each
+from orolift.crossing.sites import PROFILE, SLOWEST
+from orolift.crossing.solve import solve
+from orolift.crossing.wind import NEAR_GROUND
+from orolift.flow.surface_wind import wind_near_ground
+from orolift.terrain.features import features
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from orolift.air.column import IncomingAir
+    from orolift.crossing.situation import Situation
+    from orolift.crossing.solve import Ground, Solution
+
+    Array = NDArray[np.float64]
+
+LEVELS = (-1500.0, -700.0, -300.0, 0.0, 60.0, 120.0, 200.0, 300.0, 400.0, 550.0, 700.0, 900.0, 1200.0, 1500.0)
+"""Heights over the line's own ground [m] at which its air is worked out; close where it is stable."""
+
+
+@dataclass(frozen=True, eq=False)
+class GroundValues:
+    """Air near the ground along a line. Places (n,) along it, levels (q,).
+
+    Attributes
+    ----------
+    distance : ndarray (n,) [m]
+        From the upwind end of the transect.
+    ground : ndarray (n,) [m above sea level]
+        Of the line, a mean across its swath.
+    level : ndarray (q,) [m]
+        Heights over that ground.
+    temperature, vapour, pressure : ndarray (n, q) [K], [kg per kg of dry air], [Pa]
+        Of the air that a site at that height has where the crossing air reaches it.
+    wind, wind_10m : ndarray (n,) [m s-1]
+        Across the range: mean over the lowest 300 m of crossing air, and at 10 m.
+    cloud_base : ndarray (n,) [m above sea level]
+        Of the lowest cloud; infinite without any.
+    cloud_water : ndarray (n,) [kg m-2]
+        All cloud water over the place.
+    lowest : ndarray (n,) [m above sea level]
+        Lowest streamline.
+    crest, crest_distance, base, blocked_top : float [m]
+    band : float [m]
+        From the crest to where its lee begins, and its windward side ends.
+    pool_top : float or None [m above sea level]
+        Of cold air that stays in the lee.
+    pool_temperature, pool_vapour : ndarray (n, q), or None
+        Of that air at the heights of the levels.
+    """
+
+    distance: Array
+    ground: Array
+    level: Array
+    temperature: Array
+    vapour: Array
+    pressure: Array
+    wind: Array
+    wind_10m: Array
+    cloud_base: Array
+    cloud_water: Array
+    lowest: Array
+    crest: float
+    crest_distance: float
+    base: float
+    blocked_top: float
+    band: float
+    pool_top: float | None
+    pool_temperature: Array | None
+    pool_vapour: Array | None
+
+
+def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, streamlines: int = 60) -> GroundValues:
+    """Air near the ground all along the line of a situation.
+
+    Parameters
+    ----------
+    situation : Situation
+        Its first site says which crest counts.
+    levels : tuple of float [m]
+        Heights over the ground of the line.
+    streamlines : int
+
+    Returns
+    -------
+    GroundValues
+
+    Raises
+    ------
+    NoCrossingError, TerrainError, OutOfRangeError
+        As `orolift.crossing.crossing.cross`.
+
+    Notes
+    -----
+    The air of `orolift.crossing.sites.site_air` at every place of the march and every level at once: the same
+    mixing over the lowest layer, the same air that went round, heat from the ground and move to the lee pressure. Only
+    the answer is worked out, not its ends and not its budget.
+    """
+    settings, when, lee = (
+        checked(situation.settings or Settings()),
+        situation.when or When(),
+        situation.lee or Lee(),
+    )
+    line, incoming = situation.transect, situation.incoming
+    shape = features(line, situation.sites[0].distance if situation.sites else None)
+    ground = ground_under(
+        line,
+        shape,
+        incoming,
+        situation.normal,
+        when,
+        lowest_pass=situation.lowest_pass,
+        crest_line=situation.crest_line,
+        stagnant_top=situation.stagnant_top,
+    )
+    crest_component(incoming, ground.normal, shape.crest)
+    solution = solve(ground, incoming, settings, lee, members=1, streamlines=streamlines)
+    here = _here(solution)
+    place = solution.streams.place
+    distance, own = line.distance[place], line.elevation[place]
+    level = np.array(levels)
+    height = own[:, np.newaxis] + level
+    beyond = distance - shape.crest_distance
+    band = CREST_BAND * shape.half_width
+    is_lee = beyond > band
+    change = _ground_changes(distance, height, here, (incoming, ground, solution, settings, when), is_lee)
+    air = _arriving(incoming, solution, here, height, is_lee, change, settings)
+    pool = solution.pools[0]
+    still = (None, None) if pool is None else pool_air(pool, height)
+    wind = np.mean(sampled(here.height, here.wind, here.height[:, :1] + np.linspace(0.0, NEAR_GROUND, 7)), axis=1)
+    base, water = _clouds(here)
+    return GroundValues(
+        distance=distance,
+        ground=own,
+        level=level,
+        temperature=air.temperature,
+        vapour=air.vapour,
+        pressure=air.pressure,
+        wind=wind,
+        wind_10m=np.asarray(wind_near_ground(wind, 0.5 * NEAR_GROUND, roughness=settings.roughness)),
+        cloud_base=base,
+        cloud_water=water,
+        lowest=here.height[:, 0],
+        crest=shape.crest,
+        crest_distance=shape.crest_distance,
+        base=shape.base,
+        blocked_top=float(solution.blocked_top[0]),
+        band=band,
+        pool_top=None if pool is None else pool.top,
+        pool_temperature=still[0],
+        pool_vapour=still[1],
+    )
+
+
+def _here(solution: Solution) -> Here:
+    """Streamlines of the first member over all places of the march, the places in the place of members."""
+    streams, air = solution.streams, solution.streams.air
+    flow = streams.flow
+    first = {key: getattr(air, key)[:, 0, :] for key in ("pressure", "entropy", "temperature", "vapour", "cloud")}
+    return Here(
+        share=0.0,
+        number=0,
+        height=flow.heights[0][:, streams.place].T,
+        start_height=np.broadcast_to(flow.start_heights[0], first["pressure"].shape),
+        wind=(streams.wind[0][:, np.newaxis] * flow.speed_factor[0][:, streams.place]).T,
+        **first,
+    )
+
+
+def _ground_changes(
+    distance: Array,
+    elevation: Array,
+    here: Here,
+    situation: tuple[IncomingAir, Ground, Solution, Settings, When],
+    is_lee: NDArray[np.bool_],
+) -> tuple[Array, Array]:
+    """Warming and moistening by the ground over the mixing depth at elevations (n, q), as sites have it; else 0."""
+    incoming, ground, solution, settings, when = situation
+    out = np.zeros((2, *elevation.shape))
+    known = when.time is not None and when.longitude is not None and when.latitude is not None
+    if not (settings.surface_heat and known and is_lee.any()):
+        return out[0], out[1]
+    line, streams = ground.transect, solution.streams
+    step = float(line.distance[1] - line.distance[0]) * ground.cosine
+    travel = np.cumsum(step / np.maximum(streams.wind[0, 0] * streams.flow.speed_factor[0, 0], SLOWEST))
+    places, levels = int(is_lee.sum()), elevation.shape[1]
+    rows = Here(here.share, here.number, *(getattr(here, f.name)[is_lee] for f in fields(Here)[2:]))
+    height = (elevation[is_lee][:, :, np.newaxis] + PROFILE).reshape(places, -1)
+    air = lee_profile(
+        incoming,
+        rows,
+        height,
+        blocked_top=np.full(places, solution.blocked_top[0]),
+        going_round=np.full(places, solution.going_round[0]),
+        heating=np.zeros_like(height),
+        freezing=settings.freezing,
+    )
+    pressure, temperature, vapour = (
+        values.reshape(places, levels, -1) for values in (air.pressure, air.temperature, air.vapour)
+    )
+    way = np.interp(distance[is_lee], line.distance, travel)[:, np.newaxis] + np.zeros((places, levels))
+    heat = surface_heat(
+        float(when.time or 0.0),
+        float(when.longitude or 0.0),
+        float(when.latitude or 0.0),
+        way,
+        temperature[..., 0],
+        pressure[..., 0],
+    )
+    change = ground_change(heat, PROFILE, pressure, temperature, vapour)
+    inside = float(each(settings.mixing_depth, 1)[0]) * (np.arange(SAMPLES) + 0.5) / SAMPLES
+    weight = np.array([np.interp(inside, PROFILE, row).mean() for row in np.eye(PROFILE.size)])
+    out[:, is_lee] = change.temperature @ weight, change.vapour @ weight
+    return out[0], out[1]
+
+
+def _arriving(
+    incoming: IncomingAir,
+    solution: Solution,
+    here: Here,
+    elevation: Array,
+    is_lee: NDArray[np.bool_],
+    change: tuple[Array, Array],
+    settings: Settings,
+) -> Parcel:
+    """Air of sites at elevations (n, q), as `orolift.crossing.arrival.arrival` mixes it."""
+    places, levels = elevation.shape
+    depth = float(each(settings.mixing_depth, 1)[0])
+    offset = depth * (np.arange(SAMPLES) + 0.5) / SAMPLES
+    bottom = np.maximum(here.height[:, :1], elevation)
+    height = (bottom[:, :, np.newaxis] + offset).reshape(places, -1)
+    own = elevation[:, :, np.newaxis] + offset
+
+    def spread_out(values: Array) -> Array:
+        return values.reshape(places, levels, SAMPLES)
+
+    upwind = interpolated(incoming, elevation.ravel())
+    target = upwind.pressure.reshape(places, levels, 1)
+    reference = np.full_like(here.pressure, REFERENCE_PRESSURE)
+    potential = frozen_temperature(here.pressure, here.temperature, here.vapour, here.cloud, reference)
+    vapour, cloud, potential = (
+        spread_out(sampled(here.height, values, height)) for values in (here.vapour, here.cloud, potential)
+    )
+    arrived = frozen_temperature(np.full_like(potential, REFERENCE_PRESSURE), potential, vapour, cloud, target)
+    weight = spread_out(np.asarray(pressure_at(here, height)))
+    weight = weight / weight.sum(axis=-1, keepdims=True)
+    going = np.where(is_lee, float(solution.going_round[0]), 0.0)[:, np.newaxis, np.newaxis]
+    share = np.where(own < float(solution.blocked_top[0]), going, 0.0)
+    low = interpolated(incoming, own.ravel())
+    low_p, low_t, low_v, low_c = (
+        np.broadcast_to(values, own.size).reshape(own.shape)
+        for values in (low.pressure, low.temperature, low.vapour, low.cloud)
+    )
+    low_t = frozen_temperature(low_p, low_t, low_v, low_c, target)
+    p = np.broadcast_to(target, own.shape)
+    freezing = settings.freezing
+    crossing_heat = enthalpy(Parcel(p, arrived, vapour, cloud), freezing=freezing)
+    low_heat = enthalpy(Parcel(p, low_t, low_v, low_c), freezing=freezing)
+    heat = np.sum(weight * ((1.0 - share) * crossing_heat + share * low_heat), axis=-1)
+    water = np.sum(weight * ((1.0 - share) * (vapour + cloud) + share * (low_v + low_c)), axis=-1)
+    mixed = equilibrium_from_enthalpy(target[:, :, 0], heat, water, freezing=freezing)
+    heated = with_ground(mixed, *change, freezing=freezing)
+    water = heated.vapour + heated.cloud
+    lee_pressure = np.asarray(pressure_at(here, elevation))
+    return equilibrium_from_entropy(lee_pressure, entropy(heated, freezing=freezing), water, freezing=freezing)
+
+
+def _clouds(here: Here) -> tuple[Array, Array]:
+    """Height of the lowest cloud over each place, infinite without any, and the water of all cloud [kg m-2]."""
+    cloudy = here.cloud > LEAST_CLOUD
+    first = np.argmax(cloudy, axis=1)
+    base = np.where(cloudy.any(axis=1), here.height[np.arange(first.size), first], np.inf)
+    mass = -np.diff(here.pressure, axis=1) / GRAVITY
+    water = np.sum(mass * 0.5 * (here.cloud[:, 1:] + here.cloud[:, :-1]), axis=1)
+    return base, water
+
+
+LEAST_CLOUD = 1e-6
+"""Cloud water [kg per kg] from which on there is cloud: far below what can be seen; a judgement."""

@@ -1,0 +1,321 @@
+"""One situation worked out for many members at once, each with its own air and options: plain arrays, members first."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields, replace
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from orolift.air.column import column_vapour, freezing_level, interpolated, vapour_flux, wind_component
+from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
+from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, cloud_bases, low_breaking, pressure_differences
+from orolift.crossing.picture import popular_picture, upwind_ground_air
+from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air
+from orolift.crossing.result import Site, WarmingParts, When
+from orolift.crossing.settings import Settings, checked
+from orolift.crossing.sites import Arrived, arrived
+from orolift.crossing.solve import NOTHING, solve
+from orolift.crossing.sun import sun_height
+from orolift.crossing.wind import winds_at
+from orolift.terrain.features import features
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+
+    from numpy.typing import NDArray
+
+    from orolift.air.column import IncomingAir
+    from orolift.crossing.situation import Situation
+    from orolift.crossing.solve import Ground, Solution
+
+    Array = NDArray[np.float64]
+
+PARTS = tuple(field.name for field in fields(WarmingParts))
+"""Parts of the warming, by name."""
+
+
+@dataclass(frozen=True, eq=False)
+class Variation:
+    """In what the members of a situation differ.
+
+    Attributes
+    ----------
+    incoming : IncomingAir, fields (m, nz)
+    settings : Settings
+        Arrays (m,) or single values.
+    lee : tuple of Lee or None
+        One for each member; None takes the situation's.
+    share : callable or None
+        From the shares that went round as each member gives them, (m,), to those that are used.
+    heat_factor : ndarray (m,) [1]
+        Of the heat from the ground of the lee.
+    """
+
+    incoming: IncomingAir
+    settings: Settings
+    lee: tuple[Lee, ...] | None = None
+    share: Callable[[Array], Array] | None = None
+    heat_factor: Array | None = None
+
+
+@dataclass(frozen=True, eq=False)
+class Members:
+    """What a situation gives in each of its members, SI; NaN where a member has no such value.
+
+    Attributes
+    ----------
+    crosses : ndarray of bool, (m,)
+        Whether the wind component across the range is above 2 m/s; what does not cross has NaN everywhere.
+    values : dict of str to ndarray (m,)
+        Of the crossing.
+    sites : dict of str to ndarray (m, ns)
+        Of each site, in the order of the situation.
+    """
+
+    crosses: NDArray[np.bool_]
+    values: dict[str, Array]
+    sites: dict[str, Array]
+
+
+def alone(situation: Situation) -> Variation:
+    """The situation itself as its only member."""
+    air = situation.incoming
+    names = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
+    return Variation(
+        replace(air, **{name: getattr(air, name)[np.newaxis] for name in names}), situation.settings or Settings()
+    )
+
+
+def members_of(
+    situation: Situation, variation: Variation, *, beside: tuple[Site, ...] = (), streamlines: int = 60
+) -> Members:
+    """What a situation gives in each of its members.
+
+    Parameters
+    ----------
+    situation : Situation
+        The line stays where it is: a wind that turns turns against it.
+    variation : Variation
+    beside : tuple of Site
+        More places on the line; unlike the situation's sites they have no say in what its crest is.
+    streamlines : int
+        How many, 20 or more.
+
+    Returns
+    -------
+    Members
+
+    Raises
+    ------
+    NoCrossingError, TerrainError, OutOfRangeError
+        As `orolift.crossing.crossing.cross`, except that a member with too little wind is no error.
+
+    Notes
+    -----
+    A member is worked out as `cross` does it, all of them marched together; where
+    a root is found by iteration, it is taken a step further when one of the
+    others still needs it, so that members agree with crossings of their own to about 1e-4 K and not to rounding.
+    """
+    settings, when = checked(variation.settings), situation.when or When()
+    sites = situation.sites
+    shape = features(situation.transect, sites[0].distance if sites else None)
+    sites = (*(sites or (Site("Lee foot", shape.lee_foot_distance),)), *beside)
+    ground = ground_under(
+        situation.transect,
+        shape,
+        situation.incoming,
+        situation.normal,
+        when,
+        lowest_pass=situation.lowest_pass,
+        crest_line=situation.crest_line,
+        stagnant_top=situation.stagnant_top,
+    )
+    heights = np.linspace(shape.crest, shape.crest + CREST_LAYER, 21)
+    crest_wind = np.mean(wind_component(interpolated(variation.incoming, heights), ground.normal), axis=-1)
+    crosses = crest_wind > LEAST_CROSSING_WIND
+    values = _of_incoming(variation.incoming) | {"cross_range_wind": crest_wind}
+    if not crosses.any():
+        return Members(crosses, values, {})
+    part = _taken(variation, settings, crosses)
+    count = int(crosses.sum())
+    lee = situation.lee or Lee() if part.lee is None else part.lee
+    solution = solve(ground, part.incoming, part.settings, lee, members=count, streamlines=streamlines)
+    if part.share is not None:
+        blocked = solution.blocked_top > shape.base + NOTHING
+        solution.going_round[:] = np.where(blocked, part.share(solution.going_round), 0.0)
+    known = (lee if isinstance(lee, Lee) else lee[0]).known
+    freezing = settings.freezing
+    flow = _of_flow(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
+    values |= _filled(flow, crosses)
+    values |= _filled(_of_rain(ground, solution, part.incoming, situation.background), crosses)
+    at = [_filled(_of_site(site, ground, solution, part, when, situation.background), crosses) for site in sites]
+    return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})
+
+
+def _taken(variation: Variation, settings: Settings, rows: NDArray[np.bool_]) -> Variation:
+    """Some of the members."""
+
+    def some(value: Any) -> Any:
+        return value[rows] if isinstance(value, np.ndarray) and value.ndim and value.shape[0] == rows.size else value
+
+    air = variation.incoming
+    names = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
+    return Variation(
+        incoming=replace(air, **{name: getattr(air, name)[rows] for name in names}),
+        settings=replace(settings, **{one.name: some(getattr(settings, one.name)) for one in fields(Settings)}),
+        lee=None
+        if variation.lee is None
+        else tuple(one for one, kept in zip(variation.lee, rows, strict=True) if kept),
+        share=None if variation.share is None else (lambda found: _on_rows(variation.share, found, rows)),
+        heat_factor=None if variation.heat_factor is None else variation.heat_factor[rows],
+    )
+
+
+def _on_rows(change: Callable[[Array], Array] | None, found: Array, rows: NDArray[np.bool_]) -> Array:
+    """A change of all members done on some of them."""
+    whole = np.zeros(rows.size)
+    whole[rows] = found
+    return found if change is None else change(whole)[rows]
+
+
+def _filled(found: dict[str, Array], rows: NDArray[np.bool_]) -> dict[str, Array]:
+    """Values of some members among NaN for the others."""
+    out = {}
+    for name, value in found.items():
+        out[name] = np.full(rows.size, np.nan)
+        out[name][rows] = value
+    return out
+
+
+def _of_incoming(air: IncomingAir) -> dict[str, Array]:
+    """The air before the range."""
+    p, t, v = air.pressure[:, 0], air.temperature[:, 0], air.vapour[:, 0]
+    level = freezing_level(air)
+    return {
+        "pressure": p,
+        "temperature": t,
+        "dew_point": _dew_point(p, v),
+        "relative_humidity": relative_humidity_from_mixing_ratio(p, t, v),
+        "wind": np.hypot(air.eastward_wind[:, 0], air.northward_wind[:, 0]),
+        "freezing_level": np.where(level > air.height[0], level, np.nan),
+        "column_vapour": column_vapour(air),
+    }
+
+
+def _of_flow(
+    ground: Ground, solution: Solution, crest_wind: Array, when: When, *, known: bool, freezing: bool
+) -> dict[str, Array]:
+    """How the air of each member meets the range."""
+    blocked = solution.blocking
+    each = np.broadcast_shapes(solution.blocked_top.shape, crest_wind.shape)
+    through = np.array([pool is None for pool in solution.pools], dtype=np.float64)
+    sun = None
+    if when.time is not None and when.longitude is not None and when.latitude is not None:
+        sun = float(sun_height(when.time, when.longitude, when.latitude))
+    chance = through if known else np.array([chance_of_breaking_through(sun, float(wind)) for wind in crest_wind])
+    return {
+        "stability": np.broadcast_to(blocked.stability, each),
+        "nondimensional_height": np.broadcast_to(
+            np.minimum(blocked.nondimensional_height, LARGEST_NONDIMENSIONAL), each
+        ),
+        "dividing_height": np.broadcast_to(blocked.dividing_height, each),
+        "blocked_top": solution.blocked_top,
+        "blocked": (solution.blocked_top > ground.shape.base + NOTHING).astype(np.float64),
+        "going_round_share": solution.going_round,
+        "cloud_base": cloud_bases(solution, ground.shape, ground.transect.distance, freezing=freezing),
+        "breaks_through": chance,
+        "wave_breaking": low_breaking(solution, ground.shape.crest).astype(np.float64),
+        "pressure_difference": pressure_differences(ground, solution),
+    }
+
+
+def _of_rain(ground: Ground, solution: Solution, incoming: IncomingAir, background: float) -> dict[str, Array]:
+    """Water of each member, as `facts.water` and `rainfall.rainfall` give it of one."""
+    streams = solution.streams
+    x = ground.transect.distance[streams.place]
+    rate = streams.falling.landed / _steps(ground, x)[:, np.newaxis]
+    landed = streams.falling.landed
+    total = landed.sum(axis=0)
+    wet = total > 0.0
+    share_of = np.where(wet, total, np.nan)
+    vapour = np.sum(streams.carried * streams.start.vapour, axis=-1)
+    condensed = np.sum(streams.carried * streams.air.condensed.sum(axis=0), axis=-1)
+    column = vapour_flux(incoming, ground.normal)
+    return {
+        "rain_out_share": total / np.where(condensed > 0.0, condensed, np.nan),
+        "drying_ratio": total / vapour,
+        "drying_ratio_full_column": total / np.where(column > 0.0, column, np.nan),
+        "windward_share": landed[x <= ground.shape.crest_distance].sum(axis=0) / share_of,
+        "snow_share": streams.falling.landed_snow.sum(axis=0) / share_of,
+        "peak_rate": rate.max(axis=0) + background,
+        "peak_distance": np.where(wet, x[np.argmax(rate, axis=0)], np.nan),
+        "total": total,
+    }
+
+
+def _steps(ground: Ground, x: Array) -> Array:
+    """Length along the range normal of the step that ends at each place of the march [m]."""
+    return np.diff(x, prepend=x[0] - (x[1] - x[0])) * ground.cosine
+
+
+def _of_site(
+    site: Site, ground: Ground, solution: Solution, variation: Variation, when: When, background: float
+) -> dict[str, Array]:
+    """The air of each member at a site, as `sites.site_air` gives it of one."""
+    settings, incoming = variation.settings, variation.incoming
+    place = arrived(site, ground, incoming, solution, settings, when, heat_factor=variation.heat_factor)
+    upwind = interpolated(incoming, np.array([place.elevation, ground.shape.crest]))
+    p_up, t_up = upwind.pressure[:, 0], upwind.temperature[:, 0]
+    blocked = (place.elevation < solution.blocked_top) & (place.side == "windward")
+    p = np.where(blocked, p_up, place.pressure)
+    t = np.where(blocked, t_up, place.came.air.temperature)
+    v = np.where(blocked, upwind.vapour[:, 0], place.came.air.vapour)
+    pooled = _in_pools(place, solution, t, v)
+    gone = pooled | blocked
+    wind = winds_at(place.here, settings.roughness)
+    nothing = np.where(pooled, np.nan, np.where(blocked, 0.0, 1.0))
+    level = np.where(blocked[:, np.newaxis], place.elevation, place.came.source_level)
+    level[pooled] = np.nan
+    picture = popular_picture(upwind_ground_air(incoming), upwind.pressure[:, 1], p_up, freezing=settings.freezing)
+    x = ground.transect.distance[solution.streams.place]
+    rate = solution.streams.falling.landed / _steps(ground, x)[:, np.newaxis]
+    after = int(np.clip(np.searchsorted(x, site.distance), 1, x.size - 1))
+    return {
+        "pressure": p,
+        "temperature": t,
+        "mixing_ratio": v,
+        "dew_point": _dew_point(p, v),
+        "relative_humidity": relative_humidity_from_mixing_ratio(p, t, v),
+        "wind": np.where(gone, np.nan, wind.mean),
+        "wind_10m": np.where(gone, np.nan, wind.at_10m),
+        "gust": np.where(gone, np.nan, 0.5 * (wind.gust_low + wind.gust_high)),
+        "source_level_low": level[:, 0],
+        "source_level": level[:, 1],
+        "source_level_high": level[:, 2],
+        "warming": t - t_up,
+        **{f"warming_{name}": nothing * getattr(place.came.warming, name) for name in PARTS},
+        "popular_picture": picture.temperature,
+        "descent_only": t_up + nothing * place.came.warming.descent,
+        "went_round": np.where(pooled, 0.0, place.came.went_round),
+        "in_pool": pooled.astype(np.float64),
+        "cloudy": (~gone & (place.came.air.cloud > 0.0)).astype(np.float64),
+        "rain": rate[after] + background,
+    }
+
+
+def _in_pools(place: Arrived, solution: Solution, t: Array, v: Array) -> NDArray[np.bool_]:
+    """Members in which a site lies in cold air that stays; its values are put in."""
+    pooled = np.zeros(t.size, dtype=bool)
+    for i, pool in enumerate(solution.pools):
+        if pool is None or place.side != "lee":
+            continue
+        if place.elevation < min(pool.top, float(place.here.height[i, 0])):
+            pooled[i] = True
+            t[i], v[i] = (float(x) for x in pool_air(pool, place.elevation))
+    return pooled
+
+
+def _dew_point(pressure: Array, vapour: Array) -> Array:
+    return np.asarray(dew_point_from_mixing_ratio(pressure, np.maximum(vapour, LEAST_VAPOUR)))

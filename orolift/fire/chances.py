@@ -1,0 +1,121 @@
+"""Fire weather of the members of a spread: how likely a threshold is, and the range of each index."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.fire.dryness import HIGHEST_TEMPERATURE, LOWEST_TEMPERATURE
+from orolift.fire.indices import site_fire
+from orolift.fire.rules import with_chance
+from orolift.fire.values import INDICES, site_values
+from orolift.fire.weather import LEAST_VAPOUR
+
+if TYPE_CHECKING:
+    from collections.abc import Mapping
+
+    from numpy.typing import ArrayLike, NDArray
+
+    from orolift.fire.sites import FireSettings, SiteFire
+    from orolift.fire.weather import SiteWeather
+
+    Array = NDArray[np.float64]
+
+NEEDED = ("pressure", "temperature", "mixing_ratio", "wind_10m", "gust")
+"""Arrays of members that fire weather takes."""
+TENTHS = (10.0, 90.0)
+"""Ends of a range, per cent of the members."""
+
+
+def with_members(
+    site: SiteFire, members: Mapping[str, ArrayLike], settings: FireSettings, roughness: float
+) -> SiteFire:
+    """Fire weather of a site with chances and ranges from the members of a spread.
+
+    Parameters
+    ----------
+    site : SiteFire
+        The answer.
+    members : mapping of str to array_like (m,)
+        `NEEDED` at the site, in SI: pressure, temperature, mixing ratio, mean wind and gust at 10 m; NaN where a
+        member has none. `source_level` and `warming` are used where they are there.
+    settings : FireSettings
+        Those the site was worked out with.
+    roughness : float [m]
+
+    Returns
+    -------
+    SiteFire
+        Members without air at the site do not count. Without any that has, `site` as it is.
+
+    Raises
+    ------
+    OutOfRangeError
+        If a value is out of the range of an index.
+
+    Notes
+    -----
+    The layer over the site, which Hot-Dry-Windy takes, is moved with each member: by the difference in temperature,
+    and in the ratio of vapour and of wind.
+    """
+    arrays = {name: np.atleast_1d(np.asarray(value, np.float64)) for name, value in members.items()}
+    t = arrays["temperature"]
+    there = np.isfinite(t) & (t > LOWEST_TEMPERATURE) & (t < HIGHEST_TEMPERATURE) & np.isfinite(arrays["mixing_ratio"])
+    if not there.any():
+        return site
+    arrays = {name: value[there] for name, value in arrays.items()}
+    weather = _weather(site.weather, arrays)
+    indices = site_fire(
+        weather,
+        previous_code=settings.previous_code,
+        drought_index=settings.drought_index,
+        rain_duration=settings.rain_duration,
+        hours=(),
+    )
+    thresholds = site.thresholds
+    if settings.rules is not None:
+        others: dict[str, ArrayLike] = {
+            "drought_index": np.nan if settings.drought_index is None else settings.drought_index,
+            "mixing_height": site.night.mixing_height,
+            "source_level": arrays.get("source_level", np.nan),
+            "warming": arrays.get("warming", np.nan),
+        }
+        values = site_values(weather, indices, settings.rules.rules, roughness, others=others)
+        thresholds = tuple(replace(one, judged=with_chance(one.judged, values)) for one in thresholds)
+    ranges = {name: ends for name in INDICES if (ends := _range(getattr(indices, name))) is not None}
+    return replace(site, thresholds=thresholds, ranges=ranges)
+
+
+def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:
+    """The members' air at the site, the layer above moved with it."""
+    wind, gust, vapour = arrays["wind_10m"], arrays["gust"], np.maximum(arrays["mixing_ratio"], LEAST_VAPOUR)
+    warmer = arrays["temperature"] - answer.temperature
+    faster = np.ones_like(wind)
+    if float(np.nan_to_num(answer.wind)) > 0.0:
+        faster = np.where(np.isfinite(wind), wind / answer.wind, 1.0)
+    ratio = (vapour / answer.mixing_ratio)[:, np.newaxis]
+    return replace(
+        answer,
+        pressure=arrays["pressure"],
+        temperature=arrays["temperature"],
+        mixing_ratio=vapour,
+        wind=wind,
+        wind_low=wind,
+        wind_high=wind,
+        gust_low=gust,
+        gust_high=gust,
+        layer_temperature=answer.layer_temperature + warmer[:, np.newaxis],
+        layer_vapour=np.maximum(answer.layer_vapour * ratio, LEAST_VAPOUR),
+        layer_wind=answer.layer_wind * faster[:, np.newaxis],
+    )
+
+
+def _range(values: Array) -> tuple[float, float] | None:
+    """10 % and 90 % of the known values."""
+    known = np.ravel(values)[np.isfinite(np.ravel(values))]
+    if not known.size:
+        return None
+    low, high = np.percentile(known, TENTHS)
+    return float(low), float(high)

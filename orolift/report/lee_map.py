@@ -1,0 +1,87 @@
+"""The lee as a map: what it comes to, in words."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.report.quantities import Amount
+from orolift.report.words import counted
+
+if TYPE_CHECKING:
+    from orolift.report.figures.drawing import Figure
+    from orolift.report.figures.lee_map import LeeMapDrawing
+    from orolift.report.words import Words
+    from orolift.sources.strips import MappedLee
+
+ALIKE = (
+    " apart, each with its own crest and range and the same incoming air, and joined across the wind by a Gaussian of "
+)
+JOINED = (
+    " standard deviation: what is narrower than about twice that, a single pass or summit, is not resolved. Each cell "
+    "has the air of its own height. A site has a line and crest of its own, so its value may differ from that of the "
+    "map."
+)
+
+
+@dataclass(frozen=True)
+class LeeOnMap:
+    """A conclusion, the maps, and how they were made."""
+
+    heading: Words
+    figures: tuple[Figure[LeeMapDrawing], ...]
+    remarks: tuple[Words, ...]
+
+
+def lee_on_map(mapped: MappedLee, figures: tuple[Figure[LeeMapDrawing], ...]) -> LeeOnMap:
+    """The lee as a map.
+
+    Parameters
+    ----------
+    mapped : MappedLee
+    figures : tuple of Figure
+
+    Returns
+    -------
+    LeeOnMap
+    """
+    found = mapped.map
+    behind = found.behind_crest > 0.0
+    humidity = found.relative_humidity[behind & np.isfinite(found.relative_humidity)]
+    warming = found.warming[behind & np.isfinite(found.warming)]
+    if humidity.size:
+        heading: Words = (
+            "Behind the crest half of the ground has a humidity of ",
+            Amount(float(np.median(humidity)), "share"),
+            " or less, and a twentieth ",
+            Amount(float(np.percentile(humidity, 5.0)), "share"),
+            " or less",
+        )
+    else:
+        heading = ("The map does not reach behind the crest",)
+    remarks: list[Words] = []
+    if warming.size:
+        remarks.append(
+            (
+                "Against the incoming air at its height, the middle half of the ground there is at ",
+                Amount(float(np.percentile(warming, 25.0)), "temperature_change", 1),
+                " to ",
+                Amount(float(np.percentile(warming, 75.0)), "temperature_change", 1),
+                ".",
+            )
+        )
+    apart = float(mapped.plan.frame.across[1] - mapped.plan.frame.across[0])
+    remarks.append(
+        (
+            f"{counted(found.strips, 'strip', 'strips').capitalize()} along the wind were worked out, ",
+            Amount(apart, "distance", 1),
+            ALIKE,
+            Amount(mapped.plan.frame.smoothing, "distance", 1),
+            JOINED,
+        )
+    )
+    for reason, count in found.failed[:3]:
+        remarks.append((f"{counted(count, 'strip', 'strips').capitalize()} could not be: {reason}",))
+    return LeeOnMap(heading, figures, tuple(remarks))

@@ -1,0 +1,170 @@
+"""What members say together: ranges, chances, and which input matters most."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
+    from orolift.spread.spread import Spread
+
+    Array = NDArray[np.float64]
+
+LOW, HIGH = 0.1, 0.9
+"""Ends of every range."""
+FEWEST = 5
+"""Members with a value from which on they have a range; a judgement."""
+
+
+def range_of(values: Array) -> tuple[float, float] | None:
+    """10 and 90 % of what members give.
+
+    Parameters
+    ----------
+    values : ndarray (m,)
+        NaN in members without a value, which do not count.
+
+    Returns
+    -------
+    (float, float) or None
+        None where fewer than five members have a value.
+
+    Examples
+    --------
+    >>> range_of(np.arange(11.0))
+    (1.0, 9.0)
+    """
+    there = values[np.isfinite(values)]
+    if there.size < FEWEST:
+        return None
+    low, high = np.quantile(there, [LOW, HIGH])
+    return float(low), float(high)
+
+
+def chance_of(happens: Array) -> float | None:
+    """Share of members in which something happens.
+
+    Parameters
+    ----------
+    happens : ndarray (m,)
+        0 or 1, or a chance in each member; NaN in members that do not count.
+
+    Returns
+    -------
+    float or None [1]
+        None where no member counts.
+    """
+    there = happens[np.isfinite(happens)]
+    return float(there.mean()) if there.size else None
+
+
+def ranks(values: Array) -> Array:
+    """Ranks from 1, the mean rank where values are equal.
+
+    Examples
+    --------
+    >>> ranks(np.array([3.0, 1.0, 3.0]))
+    array([2.5, 1. , 2.5])
+    """
+    _, at, count = np.unique(values, return_inverse=True, return_counts=True)
+    last = np.cumsum(count)
+    return np.asarray((last - 0.5 * (count - 1))[at])
+
+
+def rank_correlation(one: Array, other: Array) -> float:
+    """Correlation of the ranks of two series (Spearman 1904); 0 where one of them does not vary.
+
+    Parameters
+    ----------
+    one, other : ndarray (m,)
+        Pairs with NaN do not count.
+
+    Returns
+    -------
+    float [1]
+
+    Examples
+    --------
+    >>> round(rank_correlation(np.array([1.0, 2.0, 3.0]), np.array([1.0, 8.0, 27.0])), 9)
+    1.0
+    """
+    both = np.isfinite(one) & np.isfinite(other)
+    if both.sum() < FEWEST - 2:
+        return 0.0
+    a, b = ranks(one[both]), ranks(other[both])
+    a, b = a - a.mean(), b - b.mean()
+    size = float(np.sqrt(np.sum(a * a) * np.sum(b * b)))
+    return float(np.sum(a * b) / size) if size > 0.0 else 0.0
+
+
+@dataclass(frozen=True)
+class Influence:
+    """How one input goes with a result.
+
+    Attributes
+    ----------
+    name : str
+        Of the input, or of the error of the method.
+    correlation : float [1]
+        Of ranks; positive when more of the one goes with more of the other.
+    """
+
+    name: str
+    correlation: float
+
+
+def influences(spread: Spread, values: Array, names: tuple[str, ...] | None = None) -> tuple[Influence, ...]:
+    """Inputs by how much they matter for a result, the most important first.
+
+    Parameters
+    ----------
+    spread : Spread
+    values : ndarray (m,)
+        Of the result, with or without the error of the method.
+    names : tuple of str, optional
+        Of the inputs, and of the error of the method, that are looked at; the inputs that vary when left out.
+
+    Returns
+    -------
+    tuple of Influence
+
+    Notes
+    -----
+    With m members a correlation below about 2 / sqrt(m) is chance: see `noise`.
+    """
+    chosen = spread.varied if names is None else names
+    found = [Influence(name, rank_correlation(spread.level[name], values)) for name in chosen]
+    return tuple(sorted(found, key=lambda one: -abs(one.correlation)))
+
+
+def noise(members: int) -> float:
+    """Rank correlation that pure chance exceeds once in about twenty times, among this many members [1]."""
+    return 2.0 / float(np.sqrt(max(members - 1, 1)))
+
+
+def remarks(spread: Spread) -> tuple[str, ...]:
+    """What is doubtful about the members, as cautions: those that do not cross, and those that were lost.
+
+    Parameters
+    ----------
+    spread : Spread
+
+    Returns
+    -------
+    tuple of str
+    """
+    found = []
+    lost = len(spread.failed)
+    still = spread.members - lost - int(spread.crosses.sum())
+    if still:
+        found.append(
+            f"In {still} of {spread.members} members the wind across the crest is 2 m/s or less: the air may not cross "
+            "at all. The ranges are those of the members that cross."
+        )
+    if lost:
+        found.append(f"{lost} of {spread.members} members could not be worked out: {spread.failed[0].reason}")
+    return tuple(found)

@@ -1,0 +1,256 @@
+"""How sure a crossing is: the same situation in many members, with and without the error of the method."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.crossing.members import Members, members_of
+from orolift.errors import OroliftError, OutOfRangeError
+from orolift.spread.at_sites import centred, shadows, with_method_error
+from orolift.spread.draws import draws_of, variation_of, what_varies
+from orolift.spread.engine import in_order, outcomes
+from orolift.spread.uncertainty import COLUMNS, METHOD, Uncertainty, checked, latin_hypercube, normal
+
+if TYPE_CHECKING:
+    from collections.abc import Callable
+    from concurrent.futures import Executor
+
+    from numpy.typing import NDArray
+
+    from orolift.crossing.result import Crossing, Site
+    from orolift.crossing.situation import Situation
+
+    Array = NDArray[np.float64]
+
+USUAL_MEMBERS = 32
+"""Members where nobody says how many: another seed moves a range of 10 to 90 % by about a fifth of itself."""
+LEAST_MEMBERS, MOST_MEMBERS = 10, 100_000
+"""Fewer have no 10 % and 90 %; more do not fit into memory."""
+CHUNK = 50
+"""Members marched together. It is fixed, so that nothing depends on the number of processes."""
+CHANCE_OF_RAIN = 0.1 / 3600.0
+"""Rate [kg m-2 s-1] from which it rains at a place: 0.1 mm/h, what gauges resolve; common practice, no source."""
+
+
+@dataclass(frozen=True)
+class Failed:
+    """A member that could not be worked out.
+
+    Attributes
+    ----------
+    number : int
+        From 0.
+    reason : str
+    """
+
+    number: int
+    reason: str
+
+
+@dataclass(frozen=True, eq=False)
+class Spread:
+    """A situation in members. Arrays (m,) and (m, ns), NaN where a member has no such value.
+
+    Attributes
+    ----------
+    members, seed : int
+    uncertainty : Uncertainty
+    varied : tuple of str
+        Inputs that differ between members and can make a difference.
+    level : dict of str to ndarray (m,) [1]
+        Where each member lies, between 0 and 1, in what each input may be and in what the method gets wrong.
+    crosses : ndarray of bool, (m,)
+    values, sites : dict of str to ndarray
+        As in `orolift.crossing.members.Members`: of the inputs alone.
+    full_sites : dict of str to ndarray (m, ns)
+        `sites` with the error of the method.
+    failed : tuple of Failed
+        Members that could not be worked out; they count nowhere.
+    """
+
+    members: int
+    seed: int
+    uncertainty: Uncertainty
+    varied: tuple[str, ...]
+    level: dict[str, Array]
+    crosses: NDArray[np.bool_]
+    values: dict[str, Array]
+    sites: dict[str, Array]
+    full_sites: dict[str, Array]
+    failed: tuple[Failed, ...]
+
+
+@dataclass(frozen=True, eq=False)
+class _Chunk:
+    """Members that are worked out together."""
+
+    situation: Situation
+    uncertainty: Uncertainty
+    first: int
+    level: Array
+    beside: tuple[Site, ...]
+    streamlines: int
+
+
+def spread_of(
+    situation: Situation,
+    crossing: Crossing,
+    uncertainty: Uncertainty,
+    *,
+    members: int = USUAL_MEMBERS,
+    seed: int = 0,
+    executor: Executor | None = None,
+    told: Callable[[int], object] | None = None,
+    streamlines: int = 60,
+) -> Spread:
+    """A situation in members.
+
+    Parameters
+    ----------
+    situation : Situation
+    crossing : Crossing
+        Its crossing, with the sites that have lines of their own.
+    uncertainty : Uncertainty
+    members : int
+        10 to 100 000.
+    seed : int
+        0 or more.
+    executor : Executor, optional
+        None works here.
+    told : callable, optional
+        Is given the number of members that are done since the last call.
+    streamlines : int
+        As for `crossing.cross`.
+
+    Returns
+    -------
+    Spread
+
+    Raises
+    ------
+    OutOfRangeError
+        If the number of members, the seed or a standard deviation is out of range.
+    WorkersError
+        If a process of the executor is lost.
+
+    Notes
+    -----
+    Everything is drawn before, and members are marched in groups of 50 whatever
+    the executor: the same seed gives the same numbers anywhere. A member that
+    fails is counted and the rest goes on. A site with a line of its own takes the deviations of a
+    place of its height on this line, as far from the crest as it is from its own, around its own answer.
+    """
+    _check_count(members, seed)
+    level = latin_hypercube(members, len(COLUMNS), seed)
+    beside = shadows(crossing)
+    middle = np.full((1, len(COLUMNS)), 0.5)  # what the deviations of those beside the line are from
+    firsts = range(0, members, CHUNK)
+    ends = [min(first + CHUNK, members) for first in firsts]
+    chunks = (
+        _Chunk(
+            situation,
+            checked(uncertainty),
+            first,
+            np.concatenate([level[first:end], middle]) if beside and end == members else level[first:end],
+            beside,
+            streamlines,
+        )
+        for first, end in zip(firsts, ends, strict=True)
+    )
+    found = []
+    for outcome in outcomes(_worked, chunks, executor):
+        found.append(outcome)
+        if told is not None:
+            told(ends[outcome.number] - firsts[outcome.number])
+    parts: list[Members] = []
+    failed: list[Failed] = []
+    for outcome in in_order(found):
+        if outcome.value is None:
+            raise outcome.error or OroliftError("a group of members was lost")
+        parts.append(outcome.value[0])
+        failed += [one for one in outcome.value[1] if one.number < members]
+    whole = _joined(parts, [part.crosses.size for part in parts])
+    if beside:
+        whole = centred(whole, crossing)
+    named = dict(zip(COLUMNS, level.T, strict=True))
+    full = with_method_error(whole.sites, crossing, uncertainty, {name: normal(named[name]) for name in METHOD})
+    return Spread(
+        members=members,
+        seed=seed,
+        uncertainty=uncertainty,
+        varied=what_varies(situation, uncertainty),
+        level=named,
+        crosses=whole.crosses,
+        values=whole.values,
+        sites=whole.sites,
+        full_sites=full,
+        failed=tuple(failed),
+    )
+
+
+def _check_count(members: int, seed: int) -> None:
+    if not LEAST_MEMBERS <= members <= MOST_MEMBERS:
+        raise OutOfRangeError(
+            f"members: {members} is outside {LEAST_MEMBERS} to {MOST_MEMBERS}. Fewer than {LEAST_MEMBERS} have no "
+            "range of 10 to 90 %; a few hundred are plenty. Leave the spread out where no range is wanted."
+        )
+    if seed < 0:
+        raise OutOfRangeError(f"seed: {seed} is below 0. Give a whole number, 0 or more.")
+
+
+def _worked(chunk: _Chunk) -> tuple[Members, list[Failed]]:
+    """Members of a chunk, those that fail apart."""
+    try:
+        return _together(chunk), []
+    except OroliftError as error:
+        if chunk.level.shape[0] == 1:
+            return Members(np.zeros(1, dtype=bool), {}, {}), [Failed(chunk.first, str(error))]
+    parts, failed = [], []
+    for i in range(chunk.level.shape[0]):
+        alone = replace(chunk, first=chunk.first + i, level=chunk.level[i : i + 1])
+        part, lost = _worked(alone)
+        parts.append(part)
+        failed += lost
+    return _joined(parts, [1] * len(parts)), failed
+
+
+def _together(chunk: _Chunk) -> Members:
+    """Members of a chunk, marched together; those without ice apart from the others."""
+    situation, uncertainty = chunk.situation, chunk.uncertainty
+    drawn = draws_of(situation, uncertainty, chunk.level)
+    as_set = situation.settings is None or situation.settings.freezing
+    liquid = (drawn["liquid_cloud"] > 0.0) | (not as_set)
+    parts, rows = [], []
+    for frozen in (True, False):
+        some = np.flatnonzero(liquid != frozen)
+        if some.size:
+            own = {name: value[some] for name, value in drawn.items()}
+            variation = variation_of(situation, uncertainty, own, freezing=frozen)
+            parts.append(members_of(situation, variation, beside=chunk.beside, streamlines=chunk.streamlines))
+            rows.append(some)
+    whole = _joined(parts, [one.size for one in rows])
+    back = np.argsort(np.concatenate(rows))
+    return Members(
+        whole.crosses[back],
+        {name: value[back] for name, value in whole.values.items()},
+        {name: value[back] for name, value in whole.sites.items()},
+    )
+
+
+def _joined(parts: list[Members], sizes: list[int]) -> Members:
+    """Members one after the other; NaN where a part has nothing."""
+
+    def one(part: dict[str, Array], name: str, size: int, shape: tuple[int, ...]) -> Array:
+        return part[name] if name in part else np.full((size, *shape), np.nan)
+
+    values: dict[str, Array] = {}
+    sites: dict[str, Array] = {}
+    for out, dicts in ((values, [part.values for part in parts]), (sites, [part.sites for part in parts])):
+        shapes = {name: value.shape[1:] for found in dicts for name, value in found.items()}
+        for name, shape in shapes.items():
+            rows = [one(found, name, size, shape) for found, size in zip(dicts, sizes, strict=True)]
+            out[name] = np.concatenate(rows)
+    return Members(np.concatenate([part.crosses for part in parts]), values, sites)

@@ -1,0 +1,181 @@
+"""`orolift hours` and `orolift bearings` as their user runs them: files, pages, interruptions, what cannot be written."""
+
+import csv
+import json
+import math
+import re
+from html.parser import HTMLParser
+
+import jsonschema
+import pytest
+
+from orolift.cli import bearings as bearings_command
+from orolift.cli import hours as hours_command
+from orolift.cli.main import exit_code
+from orolift.sources.schemas import bearings_schema, hours_schema
+
+SERIES = """time,temperature_c,dew_point_c,pressure_hpa,wind_from_deg,wind_kt
+2026-11-03T00:00:00+01:00,14.5,9.0,1004.0,235,25
+2026-11-03T01:00:00+01:00,14.5,9.0,1004.0,325,25
+2026-11-03T02:00:00+01:00,14.5,19.0,1004.0,235,25
+2026-11-03T04:00:00+01:00,14.0,13.5,1004.0,235,25
+"""
+ALL = ["--report", "page.html", "--table", "t.csv", "--results", "r.json", "--netcdf", "n.nc"]
+
+
+@pytest.fixture
+def series_folder(case_folder):
+    """The case with its series; the current folder."""
+    (case_folder / "series.csv").write_text(SERIES)
+    return case_folder
+
+
+class Page(HTMLParser):
+    """Ids, alternative texts and what would be loaded."""
+
+    def __init__(self, text):
+        super().__init__()
+        self.ids, self.loads, self.raw = [], [], []
+        self.feed(text)
+
+    def handle_starttag(self, tag, attrs):
+        found = dict(attrs)
+        self.ids += [found["id"]] if "id" in found else []
+        self.loads += [found[key] for key in ("src", "href") if found.get(key, "#")[0] != "#"]
+        self.raw += [float(found["value"])] if tag == "data" else []
+
+
+def checked_page(file, figures):
+    """A page is whole by itself: ids once, nothing loaded, every figure with words for those who do not see it."""
+    text = file.read_text()
+    page = Page(text)
+    assert len(page.ids) == len(set(page.ids))
+    assert page.loads == []
+    assert "<script" not in text
+    assert "not a warning" in text
+    assert text.count("<figure") == figures
+    assert text.count("<desc") == text.count("<svg") == 2 * figures
+    assert all(map(math.isfinite, page.raw))
+    return text
+
+
+def test_hours_write_all_their_files(series_folder, capsys):
+    """Four rows and the hour between the last two make five; one crosses not, one contradicts itself."""
+    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", *ALL]) == 0
+    said = capsys.readouterr().out
+    assert "2 of 5 hours cross" in said
+    results = json.loads((series_folder / "r.json").read_text())
+    assert [*jsonschema.Draft202012Validator(hours_schema()).iter_errors(results)] == []
+    hours = results["sites"][0]["hours"]
+    assert hours["status"] == ["crossing", "no crossing", "missing", "missing", "crossing"]
+    assert hours["time"][0] == "2026-11-02T23:00:00Z"
+    assert hours["temperature_c"][1:4] == [None, None, None]
+    assert hours["arrival_time"][0] > hours["time"][0]
+    assert "line 4" in hours["reason"][2]
+    with (series_folder / "t.csv").open() as stream:
+        rows = list(csv.DictReader(stream))
+    assert [row["status"] for row in rows] == hours["status"]
+    assert float(rows[0]["temperature_c"]) == hours["temperature_c"][0]
+    text = checked_page(series_folder / "page.html", 1)
+    assert "UTC+01:00" in text
+    assert "Lower Tarn" in text
+    assert "has no row for this hour" in hours["reason"][3]
+
+
+def test_netcdf_of_hours_follows_the_conventions(series_folder):
+    """Units, standard names and fill values as CF has them; times in seconds since 1970."""
+    netcdf4 = pytest.importorskip("netCDF4")
+    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", "--quiet", "--netcdf", "n.nc"]) == 0
+    with netcdf4.Dataset(series_folder / "n.nc") as data:
+        assert data.Conventions == "CF-1.11"
+        temperature = data["temperature_c"]
+        assert (temperature.standard_name, temperature.units) == ("air_temperature", "degC")
+        assert temperature.dimensions == ("time", "site")
+        assert temperature[:].mask[:, 0].tolist() == [False, True, True, True, False]
+        assert netcdf4.num2date(data["time"][0], data["time"].units).isoformat() == "2026-11-02T23:00:00"
+        assert data["status"].flag_meanings.split()[int(data["status"][1, 0])] == "no_crossing"
+        assert data["site_name"][0] == "Lower Tarn"
+
+
+@pytest.fixture
+def stopped(monkeypatch):
+    """The person presses Ctrl-C after so many results."""
+
+    def after(module, count):
+        from orolift.spread import engine
+
+        whole = engine.outcomes
+
+        def some(*arguments, **more):
+            for number, outcome in enumerate(whole(*arguments, **more)):
+                if number == count:
+                    raise KeyboardInterrupt
+                yield outcome
+
+        monkeypatch.setattr(engine, "outcomes", some)
+
+    return after
+
+
+def test_finished_hours_are_written_on_ctrl_c(series_folder, stopped, capsys):
+    """The files say that they hold a part, and the exit code that the work was interrupted."""
+    stopped(hours_command, 3)
+    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", "--results", "r.json"]) == 130
+    assert "interrupted after 3 of 5 hours; what was finished is written" in capsys.readouterr().err
+    results = json.loads((series_folder / "r.json").read_text())
+    assert results["interrupted"] is True
+    assert len(results["sites"][0]["hours"]["time"]) == results["series"]["worked"] == 3
+    assert "Interrupted: 3 of 5 hours" in results["notes"][0]
+    assert "The work was interrupted" in (series_folder / "case_hours.html").read_text()
+
+
+def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, capsys):
+    stopped(bearings_command, 0)
+    assert exit_code(["bearings", "case.toml", "--jobs", "1"]) == 130
+    assert not (series_folder / "case_bearings.html").exists()
+    assert "nothing more is written" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize(
+    ("arguments", "message"),
+    [
+        (["hours", "case.toml", "series.csv", "--table", "none/t.csv"], "none is not a folder. Make it first"),
+        (["hours", "case.toml", "series.csv", "--table", "a.x", "--results", "a.x"], "--table and --results both name"),
+        (["hours", "case.toml", "none.csv"], "series: none.csv cannot be found"),
+        (["hours", "case.toml", "case.toml"], "case.toml: line 1"),
+        (["bearings", "case.toml", "--step", "7"], "--step 7: it must divide 360"),
+        (["bearings", "case.toml", "--results", "none/r.json"], "none is not a folder"),
+    ],
+)
+def test_faults_are_said_before_anything_is_worked_out(arguments, message, series_folder, monkeypatch, capsys):
+    """One line on stderr, exit code 2, no file."""
+
+    def never(*_arguments, **_more):
+        raise AssertionError("it was worked out")
+
+    monkeypatch.setattr(hours_command, "worked", never)
+    monkeypatch.setattr(bearings_command, "worked", never)
+    before = sorted(series_folder.iterdir())
+    assert exit_code(arguments) == 2
+    said = capsys.readouterr().err
+    assert re.search(re.escape(message), said)
+    assert said.count("\n") == 1
+    assert sorted(series_folder.iterdir()) == before
+
+
+def test_bearings_write_all_their_files(case_folder, capsys):
+    """Four directions of a ridge that runs from northwest to southeast: two along it do not cross."""
+    (case_folder / "case.toml").write_text((case_folder / "case.toml").read_text().replace("= 235", "= 270"))
+    files = ["--report", "page.html", "--table", "t.csv", "--results", "r.json", "--jobs", "1"]
+    assert exit_code(["bearings", "case.toml", "--step", "90", *files]) == 0
+    assert "air crosses from 2 of 4 directions" in capsys.readouterr().out
+    results = json.loads((case_folder / "r.json").read_text())
+    assert [*jsonschema.Draft202012Validator(bearings_schema()).iter_errors(results)] == []
+    directions = results["sites"][0]["directions"]
+    assert directions["status"] == ["no crossing", "crossing", "no crossing", "crossing"]
+    assert directions["side"] == [None, "windward", None, "lee"]
+    assert results["sites"][0]["worst_for_fire_deg"] in {90.0, 270.0}
+    with (case_folder / "t.csv").open() as stream:
+        assert [row["wind_from_deg"] for row in csv.DictReader(stream)] == ["0.0", "90.0", "180.0", "270.0"]
+    text = checked_page(case_folder / "page.html", 1)
+    assert "Every wind direction" in text

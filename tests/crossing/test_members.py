@@ -1,0 +1,67 @@
+"""Members side by side: what is found for one does not depend on the others."""
+
+import math
+
+import numpy as np
+import pytest
+
+from orolift.air.column_build import air_from_station
+from orolift.air.column_change import with_values
+from orolift.air.humidity import mixing_ratio_from_dew_point
+from orolift.crossing.pool import Lee
+from orolift.crossing.settings import Settings
+from orolift.crossing.solve import Ground, solve
+from orolift.flow import members as members_module
+from orolift.terrain.features import features
+from orolift.terrain.ridge import ridge_transect
+
+WARMER = np.array([-4.0, 0.0, 3.0])
+CRITICAL = np.array([0.8, 1.5, 2.5])
+CLOUD_TIME = np.array([700.0, 1000.0, 1500.0])
+
+
+@pytest.fixture(scope="module")
+def setting():
+    """A range of 1500 m and moist air."""
+    x, h = np.array([0.0, 40e3, 60e3, 70e3, 90e3, 130e3]), np.array([0.0, 100.0, 1100.0, 1500.0, 200.0, 250.0])
+    line = ridge_transect(x, h, bearing=math.pi / 2, spacing=500.0)
+    vapour = float(mixing_ratio_from_dew_point(100500.0, 281.0))
+    air = air_from_station(10.0, 100500.0, 284.0, vapour, 13.0, 1.5 * math.pi)
+    return Ground(line, features(line), math.pi / 2, 1.0), air
+
+
+def settings_of(which):
+    return Settings(cloud_time=CLOUD_TIME[which], critical_value=CRITICAL[which])
+
+
+@pytest.fixture(scope="module")
+def together(setting):
+    """Three members at once."""
+    ground, air = setting
+    many = with_values(air, temperature=air.temperature + WARMER[:, None])
+    return solve(ground, many, settings_of(slice(None)), Lee(), members=3, streamlines=40)
+
+
+@pytest.mark.parametrize("member", range(3))
+def test_a_member_is_as_it_would_be_alone(setting, together, member):
+    """Temperature to 0.02 K, rain to 0.5 %: the waves worked out are those that any of the members needs."""
+    ground, air = setting
+    one = with_values(air, temperature=air.temperature + WARMER[member])
+    alone = solve(ground, one, settings_of(slice(member, member + 1)), Lee(), streamlines=40).streams
+    found = together.streams
+    assert np.array_equal(found.place, alone.place)
+    np.testing.assert_allclose(found.air.temperature[:, member], alone.air.temperature[:, 0], atol=0.02)
+    np.testing.assert_allclose(found.flow.heights[member], alone.flow.heights[0], atol=2.0)
+    rain = found.falling.landed.sum(axis=0)
+    assert rain.min() > 0.0
+    assert rain[member] == pytest.approx(alone.falling.landed.sum(), rel=0.005)
+
+
+def test_flow_in_groups_is_the_flow(together):
+    """Members taken apart and put together again are the same arrays."""
+    flow = together.streams.flow
+    parts = [members_module.some_members(flow, np.array([i])) for i in range(3)]
+    again = members_module.together(parts)
+    for name in ("heights", "start_heights", "breaking", "speed_factor", "top_pressure", "critical_level"):
+        assert np.array_equal(getattr(again, name), getattr(flow, name)), name
+    assert np.array_equal(again.boundary.wave, flow.boundary.wave)

@@ -1,0 +1,105 @@
+"""Chances and ranges from members: shares by hand, the answer as its own member, members without air."""
+
+import math
+
+import numpy as np
+import pytest
+
+from orolift.air.column_build import air_from_station
+from orolift.air.humidity import mixing_ratio_from_dew_point
+from orolift.crossing.crossing import cross
+from orolift.crossing.result import Site, When
+from orolift.fire.chances import NEEDED, with_members
+from orolift.fire.rules import Condition, Rule, RuleSet
+from orolift.fire.sites import FireSettings, fire_at_sites
+from orolift.fire.values import INDICES
+from orolift.fire.winds import WindMeant
+from orolift.terrain import ridge_transect
+
+MEANT = WindMeant(10.0, "sustained", 600.0)
+CODE = 88.0
+
+
+@pytest.fixture(scope="module")
+def crossing():
+    """One site in the lee of a ridge."""
+    ridge = ridge_transect([0.0, 8e3, 25e3, 52e3, 60e3], [40.0, 40.0, 1850.0, 210.0, 210.0], spacing=500.0)
+    vapour = mixing_ratio_from_dew_point(100400.0, 280.15)
+    wind = (14.0, math.radians(270.0), 1850.0)
+    air = air_from_station(40.0, 100400.0, 290.15, vapour, 8.0, math.radians(270.0), crest_wind=wind)
+    return cross(ridge, air, (Site("Lower Tarn", 45e3),), streamlines=40)
+
+
+@pytest.fixture(scope="module")
+def settings(crossing):
+    """A rule that is missed by a little: 1 m/s more wind than there is."""
+    limit = crossing.lee[0].wind.at_10m + 1.0
+    rule = Rule("windy", (Condition(MEANT, at_least=limit), Condition("relative_humidity", at_most=1.0)))
+    return FireSettings(CODE, None, RuleSet("Tarn (invented)", "nobody", "2026-05-01", (rule,)))
+
+
+def members(air, count):
+    """Members that are all the answer."""
+    gust = 0.5 * (air.wind.gust_low + air.wind.gust_high)
+    given = (air.pressure, air.temperature, air.mixing_ratio, air.wind.at_10m, gust)
+    return {name: np.full(count, value) for name, value in zip(NEEDED, given, strict=True)}
+
+
+def test_chance_is_counted(crossing, settings):
+    """Three of four members have two metres a second more than the answer, which alone misses the limit."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    given = members(crossing.lee[0], 4)
+    given["wind_10m"][1:] += 2.0
+    found = with_members(site, given, settings, 0.03)
+    judged = found.thresholds[0].judged
+    assert judged.status == "not met"
+    assert judged.chance == 0.75
+    assert [one.chance for one in judged.conditions] == [0.75, 1.0]
+    assert site.thresholds[0].judged.chance is None
+    assert found.thresholds[0].movers == site.thresholds[0].movers
+
+
+def test_the_answer_as_its_own_member(crossing, settings):
+    """Without any spread each range closes on the answer, the layer's index too."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    found = with_members(site, members(crossing.lee[0], 3), settings, 0.03)
+    for name in INDICES:
+        own = float(getattr(site.indices, name))
+        if np.isfinite(own):
+            np.testing.assert_allclose(found.ranges[name], own, rtol=1e-9, err_msg=name)
+        else:
+            assert name not in found.ranges
+
+
+def test_warmer_and_windier_members_move_the_layer(crossing, settings):
+    """Hot-Dry-Windy of members with twice the wind is twice that of the answer."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    given = members(crossing.lee[0], 3)
+    given["wind_10m"] *= 2.0
+    low, high = with_members(site, given, settings, 0.03).ranges["hot_dry_windy"]
+    np.testing.assert_allclose([low, high], 2.0 * float(site.indices.hot_dry_windy))
+    given = members(crossing.lee[0], 3)
+    given["temperature"] += 3.0
+    assert with_members(site, given, settings, 0.03).ranges["hot_dry_windy"][0] > float(site.indices.hot_dry_windy)
+
+
+def test_members_without_air_do_not_count(crossing, settings):
+    """A member that does not cross is neither met nor missed; none that does leaves the site as it is."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    given = members(crossing.lee[0], 4)
+    given["wind_10m"][:2] += 2.0
+    for name in NEEDED:
+        given[name][3] = np.nan
+    assert with_members(site, given, settings, 0.03).thresholds[0].judged.chance == pytest.approx(2.0 / 3.0)
+    given = {name: np.full(2, np.nan) for name in NEEDED}
+    assert with_members(site, given, settings, 0.03) is site
+
+
+def test_members_without_wind_are_not_judged_by_it(crossing, settings):
+    """In a pool the wind is not known: that member counts for dryness alone."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    given = members(crossing.lee[0], 2)
+    given["wind_10m"][1], given["gust"][1] = np.nan, np.nan
+    judged = with_members(site, given, settings, 0.03).thresholds[0].judged
+    assert judged.chance == 0.0
+    assert [one.chance for one in judged.conditions] == [0.0, 1.0]

@@ -1,0 +1,93 @@
+"""Pages of many crossings: times as people read them, and axes of time from hours to decades."""
+
+from datetime import UTC, datetime, timedelta, timezone
+from itertools import pairwise
+
+import numpy as np
+import pytest
+
+from orolift.report.figures.axes import Scale
+from orolift.report.figures.placing import text_width
+from orolift.report.figures.time_axis import time_ticks
+from orolift.report.hours_page import hours_page
+from orolift.spread.hours import Hour
+from orolift.spread.site_state import SiteState, Travel
+from orolift.spread.timeline import hours_of
+
+HOUR = 3600.0
+START = datetime(2026, 11, 3, 5, 30, tzinfo=UTC).timestamp()
+
+
+@pytest.mark.parametrize("hours", [3, 12, 36, 100, 400, 3000, 8760, 100_000, 350_000])
+@pytest.mark.parametrize("width", [300.0, 880.0])
+def test_marks_of_time_are_round_and_apart(hours, width):
+    """Whole hours, days or months of the zone, whose words do not touch, and not fewer than two of them."""
+    zone = timezone(timedelta(hours=-7))
+    scale = Scale(START, START + hours * HOUR, 40.0, 40.0 + width)
+    marks = time_ticks(scale, zone, 12.5)
+    assert len(marks) >= 2
+    assert all(scale.start <= mark.at <= scale.end for mark in marks)
+    for texts in ([(mark.at, mark.text) for mark in marks], [(mark.at, mark.day) for mark in marks if mark.day]):
+        ends = [(at - 0.5 * text_width(text, 12.5), at + 0.5 * text_width(text, 12.5)) for at, text in texts]
+        assert all(one[1] < other[0] for one, other in pairwise(ends))
+
+
+def test_hours_of_a_mark_are_those_of_the_zone():
+    """05:30 UTC is 22:30 the day before, seven hours west; the first whole hour after it is 23."""
+    marks = time_ticks(Scale(START, START + 4 * HOUR, 0.0, 400.0), timezone(timedelta(hours=-7)), 12.5)
+    assert [mark.text for mark in marks] == ["23", "00", "01", "02"]
+    assert [mark.day for mark in marks] == ["2 Nov", "3 Nov", "", ""]
+    assert marks[0].at == 50.0
+
+
+def page(count, **more):
+    """A page of hours of which every tenth does not cross and every eleventh is missing."""
+    hours = []
+    for number in range(count):
+        state = SiteState(
+            "crossing",
+            side="lee",
+            descending=number % 40 > 20,
+            travel=Travel(HOUR, 60.0),
+            temperature=288.0 + number % 7,
+            dew_point=280.0,
+            relative_humidity=0.4,
+            wind_10m=5.0,
+            gust=8.0,
+            warming=3.0,
+            rain=0.0,
+        )
+        state = SiteState("no crossing", "calm") if number % 10 == 9 else state
+        state = SiteState("missing", "no row") if number % 11 == 10 else state
+        hours.append(Hour(number, START + number * HOUR, (state,)))
+    found = hours_of(hours, ["Tarn"], HOUR, planned=count)
+    return hours_page(
+        found, title="T", zone=UTC, made_at=datetime(2026, 1, 1, tzinfo=UTC), version="0", notes=(), **more
+    )
+
+
+def test_gaps_stay_gaps_in_the_figure():
+    """No line bridges an hour without air: of 30 hours in pieces, each panel has as many lines as there are pieces."""
+    drawing = page(30).sites[0].figure.drawing
+    absent = [number % 10 == 9 or number % 11 == 10 for number in range(30)]
+    pieces = sum(not here and (number == 0 or absent[number - 1]) for number, here in enumerate(absent))
+    assert len([curve for curve in drawing.panels[1].curves if "dew" in curve.kind]) == pieces
+    blanks = [curve.kind for curve in drawing.blanks]
+    assert blanks.count("unknown") + blanks.count("no-crossing") == sum(absent)
+
+
+def test_a_long_series_keeps_the_page_small():
+    """Three months of hours: lines are thinned, the table ends, and what is left out is said."""
+    found = page(2000)
+    site = found.sites[0]
+    assert len(site.rows) == 400
+    assert site.left_out == 2000 - 400
+    assert np.isfinite(site.figure.drawing.layout.height)
+
+
+def test_units_of_the_page_change_words_not_numbers():
+    """US pages show degrees Fahrenheit of the same value."""
+    metric, us = page(5), page(5, units="us")
+    assert metric.sites[0].rows[0].temperature == us.sites[0].rows[0].temperature
+    first = [panel.labels[0].text for panel in us.sites[0].figure.drawing.panels]
+    assert "Temperature and dew point, °F" in first

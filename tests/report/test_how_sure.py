@@ -1,0 +1,116 @@
+"""How sure: ranges as fine as they are wide, what they hold, chances, what matters most."""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from orolift.report.briefing import briefing
+from orolift.report.figures.influences import influences_figure
+from orolift.report.how_sure import how_sure, input_words
+from orolift.report.quantities import Amount
+from orolift.report.spans import Spans, ranged
+from orolift.report.words import plain
+from orolift.spread.ranges import range_of
+from orolift.spread.spread import Failed
+
+
+def text(words, units="metric"):
+    return plain(words, units).replace("\u00a0", " ")
+
+
+RANGES = [
+    (Amount(290.45, "temperature", 1), (289.25, 291.75), "17.3 °C (16.1 to 18.6)"),
+    (Amount(290.45, "temperature", 1), (282.0, 298.0), "17 °C (9 to 25)"),
+    (Amount(290.45, "temperature", 1), (290.44, 290.46), "17.3 °C"),
+    (Amount(912.0, "height", 0), (640.0, 1080.0), "910 m (640 to 1080)"),
+    (Amount(912.0, "height", -1), (240.0, 2080.0), "900 m (200 to 2100)"),
+    (Amount(0.31, "share"), (0.04, 0.36), "31 % (4 to 36)"),
+    (Amount(0.55, "plain", 2), (0.5, 0.61), "0.55 (0.50 to 0.61)"),
+    (Amount(10.0, "wind"), (7.6, 14.4), "10 m/s (8 to 14), 19 kt"),
+    (Amount(10.0, "wind"), None, "10 m/s (19 kt)"),
+]
+
+
+@pytest.mark.parametrize(("amount", "ends", "expected"), RANGES, ids=[row[2] for row in RANGES])
+def test_a_range_has_at_least_ten_steps(amount, ends, expected):
+    """As fine as the range allows, and no finer than the number is known; one number where its ends read alike."""
+    assert text(ranged(amount, ends)) == expected
+
+
+def test_briefing_carries_the_range_of_every_key_number(with_members):
+    """The same ends as the members have, for the numbers that have members."""
+    crossing, spread = with_members
+    spans = Spans(crossing, spread)
+    found = briefing(crossing, 4.7, 2000.0, spans)
+    numbers = {number.name: number for number in found.key_numbers}
+    site = crossing.lee[0]
+    assert site.name == "Lower Tarn"
+    low, high = range_of(spread.full_sites["temperature"][:, 0])
+    ends = [part.value for part in numbers["Lower Tarn, temperature"].span if isinstance(part, Amount)]
+    assert ends == [low, high]
+    for name in ("Lower Tarn, humidity", "Lower Tarn, wind", "Cloud base", "Falls out", "Wind across the crest"):
+        assert any(isinstance(part, Amount) for part in numbers[name].span), name
+    assert f"({low - 273.15:.1f} to {high - 273.15:.1f})" in text(found.sentences[1])
+
+
+def test_says_what_the_ranges_hold(with_members):
+    """How many members, both ranges of the main site, every input that was drawn."""
+    crossing, spread = with_members
+    found = how_sure(Spans(crossing, spread))
+    assert text(found.heading).startswith("Lower Tarn has ")
+    assert "12 crossings" in text(found.remarks[0])
+    assert text(found.remarks[-1]) == "All 12 members cross the range (seed 1)."
+    assert len(found.rows) == len(crossing.lee)
+    row = found.rows[0]
+    inner, outer = (
+        [part.value for part in row_of if isinstance(part, Amount)]
+        for row_of in (row.temperature_inputs, row.temperature)
+    )
+    assert outer[0] < inner[0] < inner[1] < outer[1]
+    assert len(found.inputs) == len(spread.varied)
+    assert "liquid_cloud" not in spread.varied
+    assert text(found.chances[0].event) == "the air crosses the range at all"
+    assert found.chances[0].chance.value == 1.0
+
+
+def test_what_matters_most_comes_first(with_members):
+    """Panels in the order of their correlations; names of the method and of inputs in words; the figure says the same."""
+    crossing, spread = with_members
+    found = how_sure(Spans(crossing, spread))
+    for panel in found.panels:
+        sizes = [abs(one.correlation) for one in panel.influences]
+        assert sizes == sorted(sizes, reverse=True)
+    assert found.panels[0].title == "Temperature at Lower Tarn"
+    assert "the method itself" in [input_words(one.name) for one in found.panels[0].influences]
+    figure = influences_figure(found)
+    strongest = found.panels[0].influences[0]
+    assert (
+        f"{input_words(strongest.name)} {'+' if strongest.correlation > 0 else '−'}{abs(strongest.correlation):.2f}"
+        in figure.alt
+    )
+    for drawing in (figure.drawing, figure.narrow):
+        assert len(drawing.bars) == sum(len(panel.influences) for panel in found.panels)
+        assert all(0.0 <= label.x <= drawing.layout.width for label in drawing.labels)
+
+
+def test_members_that_do_not_count_are_said(with_members):
+    """No crossing, and lost ones."""
+    crossing, spread = with_members
+    crosses = spread.crosses.copy()
+    crosses[:3] = False
+    lost = replace(spread, crosses=crosses, failed=(Failed(0, "temperature: too cold."),))
+    words = text(how_sure(Spans(crossing, lost)).remarks[-1])
+    assert words.startswith("In 2 of 12 members the wind across the crest is 2 m/s or less")
+    assert "1 could not be worked out (temperature: too cold)" in words
+    none = replace(spread, crosses=np.zeros(12, dtype=bool), sites={}, full_sites={})
+    assert text(how_sure(Spans(crossing, none)).heading) == "No member crosses: there is no range"
+
+
+def test_without_members_it_says_so(with_members):
+    """No figure, no table."""
+    crossing, _ = with_members
+    found = how_sure(Spans(crossing, None))
+    assert "switches the members off" in text(found.heading)
+    assert influences_figure(found) is None
+    assert found.rows == found.chances == ()

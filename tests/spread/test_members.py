@@ -1,0 +1,118 @@
+"""Members marched together are what each of them gives alone."""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from orolift.crossing.members import members_of
+from orolift.crossing.pool import Lee
+from orolift.crossing.situation import crossing_of
+from orolift.spread.draws import draws_of, variation_of
+from orolift.spread.uncertainty import COLUMNS, Uncertainty, latin_hypercube
+
+FIELDS = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
+NEAR = {
+    "temperature": 2e-3,
+    "dew_point": 3e-3,
+    "pressure": 2.0,
+    "mixing_ratio": 2e-6,
+    "wind": 0.05,
+    "wind_10m": 0.05,
+    "gust": 0.1,
+    "source_level": 0.5,
+    "warming": 2e-3,
+    "popular_picture": 1e-3,
+    "descent_only": 1e-3,
+}
+"""How near: roots are found to 1e-3 K, and a member may be given a step more for another's sake."""
+
+
+@pytest.fixture(scope="module", params=["no pool", "pool"])
+def both(request, moist):
+    """Members together, and the situations of some of them alone."""
+    whole = replace(moist, lee=Lee(temperature=281.0)) if request.param == "pool" else moist
+    uncertainty = Uncertainty(going_round_share=0.0, surface_heat=0.0, lee_temperature=0.0)
+    drawn = draws_of(whole, uncertainty, latin_hypercube(5, len(COLUMNS), 3))
+    variation = variation_of(whole, uncertainty, drawn, freezing=True)
+    found = members_of(whole, variation)
+    alone = {}
+    for i in (0, 4):
+        air = replace(variation.incoming, **{name: getattr(variation.incoming, name)[i] for name in FIELDS})
+        own = variation.settings
+        settings = replace(
+            own,
+            critical_value=own.critical_value[i],
+            cloud_time=own.cloud_time[i],
+            fall_time=own.fall_time[i],
+            mixing_depth=own.mixing_depth[i],
+        )
+        alone[i] = crossing_of(replace(whole, incoming=air, settings=settings))
+    return found, alone
+
+
+def test_sites_are_those_of_a_crossing_alone(both):
+    """Air, wind, source level and the comparisons, on both sides of the range."""
+    found, alone = both
+    for i, crossing in alone.items():
+        for number, place in enumerate(crossing.lee):
+            wind = place.wind
+            own = {name: getattr(place, name) for name in NEAR if hasattr(place, name) and name != "wind"}
+            if wind is not None:
+                own |= {"wind": wind.wind, "wind_10m": wind.at_10m, "gust": 0.5 * (wind.gust_low + wind.gust_high)}
+            for name, value in own.items():
+                here = found.sites[name][i, number]
+                assert (value is None and np.isnan(here)) or here == pytest.approx(value, abs=NEAR[name]), name
+            assert bool(found.sites["in_pool"][i, number]) == place.in_pool
+
+
+def test_the_budget_is_that_of_a_crossing_alone(both):
+    """Part by part; they add up to the warming."""
+    found, alone = both
+    names = ("descent", "latent", "going_round", "mixing", "surface_heating", "pressure")
+    for i, crossing in alone.items():
+        for number, place in enumerate(crossing.lee):
+            if place.parts is None:
+                continue
+            parts = [found.sites[f"warming_{name}"][i, number] for name in names]
+            assert parts == pytest.approx([getattr(place.parts, name) for name in names], abs=2e-3)
+            assert sum(parts) == pytest.approx(found.sites["warming"][i, number], abs=1e-6)
+
+
+def test_the_whole_is_that_of_a_crossing_alone(both):
+    """Blocking, cloud, rain and pressure."""
+    found, alone = both
+    for i, crossing in alone.items():
+        flow, water, rain = crossing.flow, crossing.water, crossing.rain
+        own = {
+            "cross_range_wind": (flow.crest_wind, 1e-9),
+            "nondimensional_height": (flow.nondimensional_height, 1e-9),
+            "dividing_height": (flow.dividing_height, 1e-6),
+            "blocked_top": (flow.blocked_top, 1e-6),
+            "going_round_share": (flow.going_round_share, 1e-9),
+            "breaks_through": (flow.break_through_chance, 1e-9),
+            "pressure_difference": (flow.pressure_difference, 3.0),
+            "cloud_base": (crossing.cloud.base, 0.5),
+            "rain_out_share": (water.removed / water.condensed, 1e-3),
+            "drying_ratio": (water.removed / water.vapour_in, 1e-4),
+            "drying_ratio_full_column": (water.removed / water.column_vapour_flux, 1e-4),
+            "windward_share": (rain.windward_share, 1e-3),
+            "peak_rate": (rain.peak_rate, 1e-5),
+            "total": (rain.total, 0.05),
+        }
+        for name, (value, near) in own.items():
+            assert found.values[name][i] == pytest.approx(value, abs=near), name
+
+
+def test_a_member_without_enough_wind_is_no_error(calm):
+    """It counts as no crossing, and has no values; the others are as ever."""
+    uncertainty = Uncertainty(wind=1.0)
+    drawn = draws_of(calm, uncertainty, latin_hypercube(8, len(COLUMNS), 1))
+    found = members_of(calm, variation_of(calm, uncertainty, drawn, freezing=True), streamlines=30)
+    assert 0 < found.crosses.sum() < 8
+    assert np.array_equal(found.values["cross_range_wind"] > 2.0, found.crosses)
+    assert np.array_equal(np.isfinite(found.sites["temperature"][:, 0]), found.crosses)
+    drawn["wind"] = np.full(8, 0.2)
+    none = members_of(calm, variation_of(calm, uncertainty, drawn, freezing=True))
+    assert not none.crosses.any()
+    assert none.sites == {}
