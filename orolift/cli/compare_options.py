@@ -17,7 +17,7 @@ if TYPE_CHECKING:
     from orolift.crossing.onset import OnsetRule
     from orolift.sources.observed_places import Placed
     from orolift.spread.compared import Event
-    from orolift.spread.comparison import Estimates
+    from orolift.spread.estimates import Estimates
 
 SECTOR_HALF_WIDTH = math.radians(60.0)
 """Half the sector of lee wind that counts as from over the range, where none is given; a judgement."""
@@ -89,7 +89,7 @@ def event_of(text: str) -> Event:
     """
     from orolift.sources.units import suffix_of, to_si
     from orolift.spread.compared import Event
-    from orolift.spread.comparison import QUANTITIES
+    from orolift.spread.estimates import QUANTITIES
 
     found = EVENT.fullmatch(text)
     parts = None if found is None else suffix_of(found[1])

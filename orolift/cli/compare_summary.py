@@ -4,7 +4,8 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from orolift.report.compare import onset_words, value_rows
+from orolift.report.compare import value_rows
+from orolift.report.compare_onset import onset_words
 from orolift.report.compare_words import ANSWER_NAMES, QUANTITY_KINDS, QUANTITY_NAMES, magnitude, signed
 from orolift.report.quantities import MINUS, NO_BREAK_SPACE, quantity
 from orolift.report.words import plain

@@ -16,7 +16,7 @@ if TYPE_CHECKING:
     from orolift.crossing.situation import Situation
     from orolift.sources.inputs import Inputs
     from orolift.sources.observed_places import Placed
-    from orolift.spread.comparison import Estimates
+    from orolift.spread.estimates import Estimates
     from orolift.spread.explained import Source
 
 FEW = 4
@@ -104,8 +104,8 @@ def cases_estimated(put: Placed, jobs: int | None) -> Estimated:
     from orolift.cli.spreading import Workers, spread_for
     from orolift.crossing.situation import crossing_of
     from orolift.sources.inputs import situation_of
-    from orolift.spread.comparison import estimates_of, ranges_of, site_estimate
     from orolift.spread.engine import in_order, outcomes
+    from orolift.spread.estimates import estimates_of, ranges_of, site_estimate
     from orolift.spread.explained import Source
 
     situations = [situation_of(one) for one in put.cases]

@@ -18,7 +18,8 @@ if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
     from orolift.sources.observed_places import Placed
     from orolift.spread.compared import Compared, ProfileComparison
-    from orolift.spread.comparison import Estimates, Paired, Quantity
+    from orolift.spread.comparison import Paired
+    from orolift.spread.estimates import Estimates, Quantity
     from orolift.spread.explained import Explained
 
 log = logging.getLogger(__name__)

@@ -9,24 +9,25 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.report.compare_explained import Explanation, explanation
+from orolift.report.compare_onset import hour_words, onset_heading, onset_words, rule_words
 from orolift.report.compare_words import ANSWER_NAMES, QUANTITY_KINDS, QUANTITY_NAMES, magnitude, signed
 from orolift.report.figures.compare_scatter import compare_scatter
 from orolift.report.figures.compare_sources import compare_sources
 from orolift.report.figures.compare_timeline import compare_timeline
 from orolift.report.quantities import Amount
 from orolift.report.words import Words, counted, moment
-from orolift.spread.comparison import QUANTITIES, REFERENCES, averaged
+from orolift.spread.comparison import averaged
+from orolift.spread.estimates import QUANTITIES, REFERENCES
 
 if TYPE_CHECKING:
-    from orolift.crossing.onset import OnsetRule, Spell
     from orolift.report.figures.compare_scatter import ScatterDrawing
     from orolift.report.figures.compare_sources import SourcesDrawing
     from orolift.report.figures.compare_timeline import TimelineDrawing
     from orolift.report.figures.drawing import Figure
     from orolift.report.quantities import Units
     from orolift.spread.compared import Compared
-    from orolift.spread.comparison import Reference, Verdict
-    from orolift.spread.onset_series import OnsetAtPlace
+    from orolift.spread.comparison import Verdict
+    from orolift.spread.estimates import Reference
     from orolift.spread.verification import Contingency
 
 MOST_ROWS = 40
@@ -190,7 +191,7 @@ def compare_page(
         scores=tuple(_score_row(one) for one in found.verdicts if one.score.count > 1),
         scores_heading=_scores_heading(found),
         events=tuple(_event_row(words, table) for words, table in found.events),
-        onset_heading=_onset_heading(found),
+        onset_heading=onset_heading(found),
         onset=(rule_words(found.rule), *onset_words(found)),
         explanation=explanation(found),
         sources=compare_sources(found, units),
@@ -236,7 +237,7 @@ def value_rows(found: Compared) -> tuple[ValueRow, ...]:
                     order,
                     ValueRow(
                         name=found.names[place],
-                        time=_time(float(found.estimates[which].arrival[place])),
+                        time=hour_words(float(found.estimates[which].arrival[place])),
                         quantity=QUANTITY_NAMES[quantity],
                         estimate=estimate,
                         observed=(Amount(float(means.observed[i]), kind, digits), several),
@@ -260,10 +261,6 @@ def _farthest(rows: tuple[ValueRow, ...]) -> tuple[ValueRow, ...]:
     """As many rows as the page has room for, in their order: those farthest from the middle of their range."""
     order = sorted(range(len(rows)), key=lambda i: -rows[i].away)
     return tuple(rows[i] for i in sorted(order[:MOST_ROWS]))
-
-
-def _time(time: float) -> str:
-    return "" if np.isnan(time) else f"{datetime.fromtimestamp(time, UTC):%d %b %H:%M}"
 
 
 def _when(found: Compared, observed: str) -> str:
@@ -384,102 +381,6 @@ def _event_row(words: str, table: Contingency) -> EventRow:
         correct_rejections=Amount(float(table.correct_rejections), "plain"),
         detected=share(table.detected),
         false_alarm_ratio=share(table.false_alarm_ratio),
-    )
-
-
-def rule_words(rule: OnsetRule) -> Words:
-    """The rule of the onset test in words."""
-    words: Words = (
-        "Air counts as air from over the crest when its potential temperature is at least that at the crest",
-    )
-    if rule.offset:
-        sign = "less" if rule.offset > 0.0 else "plus"
-        words = (*words, f" {sign} ", Amount(abs(rule.offset), "temperature_difference", 1))
-    words = (*words, " and it blows with at least ", Amount(rule.least_speed, "wind"))
-    if rule.sector is not None:
-        start, end = (Amount(x % (2.0 * np.pi), "bearing") for x in rule.sector)
-        words = (*words, " from between ", start, " and ", end)
-    bridge = Amount(rule.bridge, "hours")
-    return (
-        *words,
-        " (Vergeiner 2004; Drechsel and Mayr 2008). Interruptions of up to ",
-        bridge,
-        " are bridged.",
-    )
-
-
-def onset_words(found: Compared) -> tuple[Words, ...]:
-    """What the onset test says at every place.
-
-    Parameters
-    ----------
-    found : Compared
-
-    Returns
-    -------
-    tuple of Words
-    """
-    return tuple(_onset_at(one, found.names[one.place]) for one in found.onset)
-
-
-def _onset_at(one: OnsetAtPlace, name: str) -> Words:
-    known = one.estimated[np.isfinite(one.estimated)]
-    words: Words
-    if one.estimated.size == 1:
-        excess = Amount(abs(float(one.excess[0])), "temperature_difference", 1)
-        word = "above" if one.excess[0] > 0.0 else "below"
-        holds = "met" if known.size and known[0] > 0.5 else "not met"
-        words = (
-            f"{name}: by the estimate the rule is {holds} (potential temperature ",
-            excess,
-            f" {word} that over the crest)",
-        )
-    else:
-        words = (f"{name}: by the estimates the rule is met at {int((known > 0.5).sum())} of {known.size} times",)
-        words = (*words, *_spell_words(one.estimated_spells))
-    if not one.times:
-        return (*words, "; observations do not tell.")
-    if not one.observed_spells:
-        return (*words, f"; it is met at none of {one.times} observed times.")
-    words = (*words, "; observed, it is met", *_spell_words(one.observed_spells))
-    if one.table is not None and one.table.count > 1:
-        table = one.table
-        words = (
-            *words,
-            (
-                f". Hits {table.hits}, misses {table.misses}, false alarms {table.false_alarms}, "
-                f"rightly not met {table.correct_rejections}"
-            ),
-        )
-    return (*words, ".")
-
-
-def _spell_words(spells: tuple[Spell, ...]) -> Words:
-    parts = []
-    for spell in spells[:6]:
-        start, end = _time(spell.start), _time(spell.end)
-        if spell.start == spell.end:
-            parts.append(f"at {start} UTC")
-            continue
-        first = f"from before {start}" if spell.open_start else f"from {start}"
-        last = f"at least to {end}" if spell.open_end else f"to {end}"
-        parts.append(f"{first} {last} UTC")
-    more = f" and {len(spells) - 6} more times" if len(spells) > 6 else ""
-    return (f" {'; '.join(parts)}{more}",) if parts else ()
-
-
-def _onset_heading(found: Compared) -> Words:
-    met = [one for one in found.onset if np.any(one.estimated > 0.5)]
-    seen = [one for one in found.onset if one.observed_spells]
-    if seen:
-        first = min(one.observed_spells[0].start for one in seen)
-        return (f"Air from over the crest reached the lee at {_time(first)} UTC",)
-    if not found.onset:
-        return ("No place in the lee to test for air from over the crest",)
-    return (
-        "By the estimate air from over the crest reaches the lee"
-        if met
-        else "By the estimate air from over the crest does not reach the lee",
     )
 
 

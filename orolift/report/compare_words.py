@@ -9,7 +9,7 @@ from orolift.report.quantities import Amount
 if TYPE_CHECKING:
     from orolift.report.quantities import Kind
     from orolift.report.words import Words
-    from orolift.spread.comparison import Quantity, Reference
+    from orolift.spread.estimates import Quantity, Reference
 
 
 class Kinds(NamedTuple):

@@ -27,7 +27,7 @@ INPUTS: dict[str, tuple[str, Kind, int, str]] = {
     "pressure": ("pressure of the incoming air", "pressure_difference", 1, ""),
     "wind": ("wind speed", "share", 0, ""),
     "wind_from": ("wind direction", "bearing", 0, ""),
-    "lapse_rate": ("lapse rate of the lowest 5 km", "temperature_difference", 1, " per km"),
+    "lapse_rate": ("lapse rate of the lower air", "lapse_rate", 1, ""),
     "going_round_share": ("share of low air that goes round", "share", 0, " of the air"),
     "critical_value": ("N h/U from which air is blocked", "plain", 2, ""),
     "cloud_time": ("cloud time", "share", 0, ""),
@@ -277,7 +277,7 @@ def _inputs(spread: Spread) -> tuple[InputRow, ...]:
     rows = []
     for name in spread.varied:
         words, kind, digits, unit = INPUTS[name]
-        value = getattr(spread.uncertainty, name) * (1000.0 if name == "lapse_rate" else 1.0)
+        value = getattr(spread.uncertainty, name)
         rows.append(InputRow(words, (Amount(value, kind, digits), unit) if unit else (Amount(value, kind, digits),)))
     return tuple(rows)
 

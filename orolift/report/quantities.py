@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Literal
 
 Units = Literal["metric", "us"]
@@ -79,6 +79,10 @@ class Form:
         A second unit, written in brackets.
     tight : bool
         Whether the unit follows without a space, as the degree of a bearing does.
+    before : str
+        Written before the number: joins it to what stands there.
+    silent : bool
+        Whether nothing is written, where the system of units has no use for it.
     """
 
     unit: str
@@ -88,6 +92,8 @@ class Form:
     signed: bool = False
     beside: Form | None = None
     tight: bool = False
+    before: str = ""
+    silent: bool = False
 
 
 _BEARING = Form("°", 57.29577951308232, tight=True)
@@ -102,7 +108,7 @@ METRIC: dict[Kind, Form] = {
     "distance": Form("km", 1e-3),
     "wind": Form("m/s", beside=_KNOTS),
     "wind_alone": Form("m/s"),
-    "knots": _KNOTS,
+    "knots": replace(_KNOTS, before=", "),
     "pressure": Form("hPa", 0.01),
     "water_depth": Form("mm"),
     "share": Form("%", 100.0),
@@ -131,6 +137,7 @@ US: dict[Kind, Form] = {
     "height": Form("ft", 1.0 / 0.3048),
     "distance": Form("mi", 1.0 / 1609.344),
     "wind": Form("mph", 1.0 / 0.44704),
+    "knots": replace(_KNOTS, silent=True),
     "wind_alone": Form("mph", 1.0 / 0.44704),
     "pressure": Form("inHg", 1.0 / 3386.389, extra_digits=1),
     "pressure_difference": Form("inHg", 1.0 / 3386.389, extra_digits=1),
@@ -259,6 +266,8 @@ def quantity(value: float, kind: Kind, digits: int, units: Units) -> str:
 
 def shown(amount: Amount, units: Units) -> str:
     """An amount with its unit, or without where one beside it names it."""
+    if form(amount.kind, units).silent:
+        return ""
     if amount.bare:
         return first_number(amount.value, amount.kind, amount.digits, units)
     return quantity(amount.value, amount.kind, amount.digits, units)
@@ -271,7 +280,7 @@ def bare(amount: Amount, units: Units) -> str:
 
 def _with_unit(value: float, shape: Form, digits: int) -> str:
     gap = "" if shape.tight or not shape.unit else NO_BREAK_SPACE
-    return f"{_written(value, shape, digits)}{gap}{shape.unit}"
+    return f"{shape.before}{_written(value, shape, digits)}{gap}{shape.unit}"
 
 
 def _written(value: float, shape: Form, digits: int) -> str:

@@ -101,7 +101,7 @@ def ranged(amount: Amount, ends: Ends | None, *, bare: bool = False) -> Words:
         return (Amount(amount.value, amount.kind, digits, bare), " (", low, " to ", high, ")")
     # two units and a range in brackets would be hard to read
     speed, knots = (Amount(amount.value, kind, digits) for kind in _SPEEDS)
-    return (speed, " (", low, " to ", high, "), ", knots)
+    return (speed, " (", low, " to ", high, ")", knots)
 
 
 _SPEEDS: tuple[Kind, Kind] = ("wind_alone", "knots")

@@ -30,6 +30,7 @@ if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
     from orolift.sources.observed import ObservedTable
     from orolift.sources.site_places import SitePlace
+    from orolift.spread.estimates import Values
 
     Array = NDArray[np.float64]
 
@@ -289,13 +290,13 @@ def _observations(
     ]
     if humid.any() and np.isnan(columns["pressure"][humid]).any():
         notes.append("Mixing ratios of rows without pressure are taken at that of the incoming air at the same height.")
-    values = {
+    values: Values = {
         name: columns[name] for name in ("temperature", "dew_point", "relative_humidity", "wind", "gust", "pressure")
     }
     seen = Observations(
         time=table.time[kept],
         place=place,
-        values={**values, "mixing_ratio": mixing, "rain_rate": columns["rain_rate"]},  # type: ignore[dict-item]  # names are quantities
+        values={**values, "mixing_ratio": mixing, "rain_rate": columns["rain_rate"]},
         wind_from=columns["wind_from"],
         elevation=columns["elevation"],
         crest_temperature=columns["crest_temperature"],

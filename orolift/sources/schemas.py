@@ -14,8 +14,8 @@ from typing import TYPE_CHECKING, Any
 from orolift.errors import CaseError
 from orolift.sources.bearings_results import BEARINGS_VERSION, BearingsResults
 from orolift.sources.case_model import Case
+from orolift.sources.compare_blocks import CompareResults
 from orolift.sources.compare_results import SCHEMA_VERSION as COMPARE_VERSION
-from orolift.sources.compare_results import CompareResults
 from orolift.sources.files import write_all
 from orolift.sources.hours_results import HOURS_VERSION, HoursResults
 from orolift.sources.results import SCHEMA_VERSION, Results

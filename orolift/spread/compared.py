@@ -8,7 +8,8 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.air.column import interpolated
-from orolift.spread.comparison import QUANTITIES, event_table, paired, verdict
+from orolift.spread.comparison import event_table, paired, verdict
+from orolift.spread.estimates import QUANTITIES
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -18,7 +19,8 @@ if TYPE_CHECKING:
     from orolift.air.column import IncomingAir
     from orolift.crossing.onset import OnsetRule
     from orolift.crossing.result import LeeAir
-    from orolift.spread.comparison import Estimates, Observations, Paired, Quantity, Verdict
+    from orolift.spread.comparison import Observations, Paired, Verdict
+    from orolift.spread.estimates import Estimates, Quantity
     from orolift.spread.explained import Explained
     from orolift.spread.onset_series import OnsetAtPlace
     from orolift.spread.verification import Contingency

@@ -9,7 +9,7 @@ import numpy as np
 
 from orolift.crossing.situation import crossing_of
 from orolift.errors import OroliftError
-from orolift.spread.comparison import SiteEstimate, estimates_of, site_estimate
+from orolift.spread.estimates import SiteEstimate, estimates_of, site_estimate
 from orolift.spread.explained import Source
 from orolift.spread.hours import when_there
 from orolift.spread.site_state import travel_to
@@ -18,7 +18,7 @@ from orolift.spread.timeline import arrivals
 if TYPE_CHECKING:
     from collections.abc import Sequence
 
-    from orolift.spread.comparison import Estimates
+    from orolift.spread.estimates import Estimates
     from orolift.spread.hours import HourTask
 
 

@@ -18,7 +18,8 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.fire.rules import Rule, RuleSet
-    from orolift.spread.comparison import Estimates, Observations, Values
+    from orolift.spread.comparison import Observations
+    from orolift.spread.estimates import Estimates, Values
     from orolift.spread.verification import Contingency
 
     Array = NDArray[np.float64]

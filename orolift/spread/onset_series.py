@@ -16,7 +16,8 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.crossing.onset import OnsetRule, Spell
-    from orolift.spread.comparison import Estimates, Observations
+    from orolift.spread.comparison import Observations
+    from orolift.spread.estimates import Estimates
     from orolift.spread.verification import Contingency
 
     Array = NDArray[np.float64]

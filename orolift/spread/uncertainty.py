@@ -137,11 +137,11 @@ def latin_hypercube(members: int, columns: int, seed: int) -> Array:
 
     Notes
     -----
-    McKay, Beckman and Conover (1979), Technometrics 21, 239-245; the order in the columns is that of normal
-    scores whose correlation is taken out (Iman and Conover 1982, Commun. Stat. B 11, 311-334), where there are
-    more members than columns: few members then show what an input does and not what chance put beside
-    it. `scipy.stats.qmc` has the first without the second, and importing it takes 0.75 s, twice as long
-    as a whole crossing; the tests compare this with it.
+    McKay, Beckman and Conover (1979), Technometrics 21, 239-245. Where there are more members than columns, the order
+    in the columns is that of normal scores whose correlation is taken out (Iman and Conover 1982, Communications in
+    Statistics B 11, 311-334): few members then show what an input does and not what chance put beside it.
+    `scipy.stats.qmc` has the first without the second, and importing it takes 0.75 s, twice as long as a whole
+    crossing; the tests compare this with it.
 
     Examples
     --------

@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 
-from orolift.sources import compare_results, gauges_csv, observed, ridge_csv, sounding_csv
+from orolift.sources import compare_blocks, gauges_csv, observed, ridge_csv, sounding_csv
 from orolift.sources.case_model import (
     Case,
     FlowTable,
@@ -37,6 +37,7 @@ from orolift.sources.rain_results import (
 )
 from orolift.sources.results import (
     CaseBlock,
+    FailedSiteBlock,
     FlowBlock,
     IncomingBlock,
     LeeBlock,
@@ -90,6 +91,7 @@ RESULTS_TABLES = {
     "lee": LeeBlock,
     "warming_parts_c": WarmingParts,
     "profile": Profile,
+    "failed_sites": FailedSiteBlock,
     "spread": SpreadBlock,
     "influences": InfluencesBlock,
     "influence": InfluenceBlock,
@@ -106,22 +108,22 @@ RESULTS_TABLES = {
 }
 RULE_TABLES = {"Rule file": RulesFile, "rule": RuleTable, "condition": RuleCondition}
 COMPARE_TABLES = {
-    "Top level": compare_results.CompareResults,
-    "scores": compare_results.QuantityBlock,
-    "score": compare_results.ScoreBlock,
-    "simple answer": compare_results.ReferenceBlock,
-    "events": compare_results.EventBlock,
-    "table": compare_results.ContingencyBlock,
-    "rule": compare_results.RuleBlock,
-    "onset": compare_results.OnsetBlock,
-    "spell": compare_results.SpellBlock,
-    "explanation": compare_results.ExplanationBlock,
-    "valleys": compare_results.ValleyBlock,
-    "way": compare_results.WayBlock,
-    "upwind": compare_results.UpwindErrorBlock,
-    "profile": compare_results.ProfileBlock,
-    "layers": compare_results.LayerBlock,
-    "values": compare_results.ValueBlock,
+    "Top level": compare_blocks.CompareResults,
+    "scores": compare_blocks.QuantityBlock,
+    "score": compare_blocks.ScoreBlock,
+    "simple answer": compare_blocks.ReferenceBlock,
+    "events": compare_blocks.EventBlock,
+    "table": compare_blocks.ContingencyBlock,
+    "rule": compare_blocks.RuleBlock,
+    "onset": compare_blocks.OnsetBlock,
+    "spell": compare_blocks.SpellBlock,
+    "explanation": compare_blocks.ExplanationBlock,
+    "valleys": compare_blocks.ValleyBlock,
+    "way": compare_blocks.WayBlock,
+    "upwind": compare_blocks.UpwindErrorBlock,
+    "profile": compare_blocks.ProfileBlock,
+    "layers": compare_blocks.LayerBlock,
+    "values": compare_blocks.ValueBlock,
 }
 CSV_TABLES = {
     "Ridge CSV": ridge_csv.COLUMNS,

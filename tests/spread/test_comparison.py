@@ -15,16 +15,8 @@ from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.winds import WindMeant
 from orolift.spread.compared import all_pairs, profile_comparison
 from orolift.spread.compared_rules import rule_tables
-from orolift.spread.comparison import (
-    Observations,
-    averaged,
-    estimates_of,
-    event_table,
-    nearest_estimates,
-    paired,
-    ranges_of,
-    site_estimate,
-)
+from orolift.spread.comparison import Observations, averaged, event_table, nearest_estimates, paired
+from orolift.spread.estimates import estimates_of, ranges_of, site_estimate
 from orolift.spread.explained import chosen
 from orolift.spread.onset_series import onset_at_places
 from orolift.terrain import ridge_transect

@@ -36,5 +36,5 @@ def test_ranks_and_their_correlation_are_those_of_scipy(pairs):
 
 
 def test_noise_is_what_chance_exceeds_once_in_twenty_times():
-    """Against the table of critical values of Spearman's coefficient, 5 %, two sides: 0.362 for 30 pairs (Zar 1984)."""
+    """Against the table of critical values of Spearman's coefficient, 5 %, two sides: 0.362 for 30 pairs (Siegel and Castellan 1988, table Q, from memory)."""
     assert noise(30) == pytest.approx(0.362, abs=0.02)

@@ -18,7 +18,8 @@ if TYPE_CHECKING:
 
     from orolift.report.quantities import Kind, Units
     from orolift.spread.compared import Compared
-    from orolift.spread.comparison import Paired, Quantity, Reference
+    from orolift.spread.comparison import Paired
+    from orolift.spread.estimates import Quantity, Reference
 
     Array = NDArray[np.float64]
 

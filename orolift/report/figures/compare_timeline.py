@@ -19,7 +19,7 @@ if TYPE_CHECKING:
 
     from orolift.report.quantities import Units
     from orolift.spread.compared import Compared
-    from orolift.spread.comparison import Quantity
+    from orolift.spread.estimates import Quantity
     from orolift.spread.onset_series import OnsetAtPlace
 
     Array = NDArray[np.float64]
