@@ -40,7 +40,7 @@ class Uncertainty:
     lapse_rate : float [K m-1]
         Of the lapse rate in the lowest 5 km.
     going_round_share : float [1]
-        Normal, cut at 0 and 0.8.
+        Normal; what falls beyond 0 or 0.8 is put there.
     critical_value : float [1]
         Log-normal, cut at 0.75 and 3.
     cloud_time, fall_time : float [1]
@@ -223,7 +223,7 @@ def cut_normal(level: Array, center: Array, deviation: float, low: float, high: 
     Examples
     --------
     >>> cut_normal(np.array([0.01, 0.5, 0.99]), np.full(3, 0.4), 0.2, 0.0, 0.8).round(2)
-    array([0.04, 0.4 , 0.76])
+    array([0.03, 0.4 , 0.77])
     """
     if deviation == 0.0:
         return np.array(center, dtype=np.float64)
