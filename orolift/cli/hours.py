@@ -113,8 +113,20 @@ def worked(setup: HourSetup, jobs: int | None, scheduler: str | None, *, quiet: 
                 found.append(hour)
                 bar.update(1)
     except KeyboardInterrupt:
-        return found, True
+        return filled(found, setup), True
     return found, False
+
+
+def filled(found: list[Hour], setup: HourSetup) -> list[Hour]:
+    """Hours that were finished, and those between them that were not, as missing: workers finish in any order."""
+    from orolift.spread.hours import Hour
+    from orolift.spread.site_state import SiteState
+
+    done = {hour.number for hour in found}
+    state = SiteState("missing", "The work was interrupted before this hour.")
+    between = [number for number in range(max(done, default=0)) if number not in done]
+    time = setup.series.time
+    return [*found, *(Hour(number, float(time[number]), (state,) * len(setup.sites)) for number in between)]
 
 
 def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, str | None]) -> dict[Path, bytes]:
@@ -167,7 +179,7 @@ def summary_of(hours: Hours, setup: HourSetup) -> list[str]:
             f"{'the end' if one.end is None else stamp(one.end, zone)}"
             for one in site.dry_winds[:2]
         ]
-        more = f", and {len(site.dry_winds) - 2} more times" if len(site.dry_winds) > 2 else ""
+        more = f", and {len(site.dry_winds) - 2} more" if len(site.dry_winds) > 2 else ""
         dry = f"descending warm dry air from {', from '.join(spells)}{more}" if spells else "no descending warm dry air"
         lines.append(
             f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; "

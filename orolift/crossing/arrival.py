@@ -187,6 +187,7 @@ def arrival(
     blocked_top: Array,
     going_round: Array,
     heating: Array,
+    moistening: Array | None = None,
     freezing: bool,
 ) -> Arrival:
     """Air that reaches a site, and the budget of its warming.
@@ -205,6 +206,8 @@ def arrival(
         Share of the air below the blocked top that went round; 0 on the windward side.
     heating : ndarray (m,) [K]
         By the ground.
+    moistening : ndarray (m,), optional [kg per kg of dry air]
+        By the ground and what it mixes; negative where drier air is mixed down.
     freezing : bool
 
     Returns
@@ -247,8 +250,8 @@ def arrival(
     weighted = mean((1.0 - round_share) * parts.arrived + round_share * low_t)
     p = p_up[:, 0]
     mixed = equilibrium_from_enthalpy(p, heat, water, freezing=freezing)
-    capacity = HEAT_CAPACITY_DRY_AIR + HEAT_CAPACITY_VAPOUR * water
-    heated = equilibrium_from_enthalpy(p, heat + capacity * heating, water, freezing=freezing)
+    heated = with_ground(mixed, heating, moistening, freezing=freezing)
+    water = heated.vapour + heated.cloud
     lee_pressure = pressure_at(here, np.broadcast_to(elevation, (members, 1)))[:, 0]
     air = equilibrium_from_entropy(lee_pressure, entropy(heated, freezing=freezing), water, freezing=freezing)
     warming = Warming(
@@ -270,6 +273,7 @@ def lee_profile(
     blocked_top: Array,
     going_round: Array,
     heating: Array,
+    moistening: Array | None = None,
     freezing: bool,
 ) -> Parcel:
     """Air over a place at its own heights, what went round mixed in.
@@ -282,6 +286,7 @@ def lee_profile(
     blocked_top, going_round : ndarray (m,)
         As for `arrival`.
     heating : ndarray (m, q) [K]
+    moistening : ndarray (m, q), optional [kg per kg of dry air]
     freezing : bool
 
     Returns
@@ -297,8 +302,29 @@ def lee_profile(
     low_heat = enthalpy(Parcel(pressure, low_t, low.vapour, low.cloud), freezing=freezing)
     total = (1.0 - share) * water + share * (low.vapour + low.cloud)
     heat = (1.0 - share) * enthalpy(crossing, freezing=freezing) + share * low_heat
-    heat = heat + (HEAT_CAPACITY_DRY_AIR + HEAT_CAPACITY_VAPOUR * total) * heating
-    return equilibrium_from_enthalpy(pressure, heat, total, freezing=freezing)
+    mixed = equilibrium_from_enthalpy(pressure, heat, total, freezing=freezing)
+    return with_ground(mixed, heating, moistening, freezing=freezing)
+
+
+def with_ground(air: Parcel, warming: Array, moistening: Array | None, *, freezing: bool) -> Parcel:
+    """Air with heat and vapour of the ground added at constant pressure; what it does to cloud follows.
+
+    Parameters
+    ----------
+    air : Parcel, any shape
+    warming : ndarray, broadcast with it [K]
+    moistening : ndarray or None, broadcast with it [kg per kg of dry air]
+    freezing : bool
+
+    Returns
+    -------
+    Parcel, broadcast shape
+    """
+    vapour = air.vapour if moistening is None else np.maximum(air.vapour + moistening, 0.0)
+    raw = Parcel(air.pressure, air.temperature + warming, vapour, air.cloud)
+    return equilibrium_from_enthalpy(
+        air.pressure, enthalpy(raw, freezing=freezing), raw.vapour + raw.cloud, freezing=freezing
+    )
 
 
 @dataclass(frozen=True, eq=False)

@@ -37,6 +37,9 @@ USUAL_FALL_TIME = 1000.0
 MELTING_FROM, MELTING_TO = 273.15, 275.15
 """Falling snow melts between these temperatures [K]; half at 1 degree Celsius, the mean rain-snow threshold of Jennings
 et al. (2018), Nature Comm. 9, 1148."""
+RAINS_FROM = 0.5e-3
+"""Cloud [kg per kg of dry air] that does not turn to falling water: droplets stay small below it (Kessler 1969,
+Meteorol. Monogr. 32: 0.5 g m-3, from memory)."""
 NOTHING_LEFT = 1e-9
 """Falling water [kg m-1 s-1] below which, beyond the last cloud, the rest is counted as carried out of the transect."""
 _HECTOPASCAL = 0.01 * TRIPLE_POINT_PRESSURE
@@ -112,7 +115,8 @@ def march_with_rain(
     Notes
     -----
     Each step: (1) reversible adiabatic move; (2) cloud turns to falling water,
-    ``c (1 - exp(-dt / cloud_time))``; (3) falling water sinks through the layers, implicit and upwind, so
+    of what is above 0.5 g/kg the share
+    ``1 - exp(-dt / cloud_time)``; (3) falling water sinks through the layers, implicit and upwind, so
     that no step is too long: of what is in a layer or falls into it the
     share ``k / (1 + k)`` leaves below, k the fall distance over the layer's depth; what leaves the lowest layer
     lands; (4) in unsaturated layers it evaporates by the law of Kessler (1969) as written by
@@ -156,7 +160,7 @@ def march_with_rain(
         cloud = state.air.water - state.air.vapour
         air = steps.moved(state.air, way.pressure[i], way.log_pressure[i], state.entropy, freezing=freezing)
         now = air.water - air.vapour
-        turned = way.turning[i] * now
+        turned = way.turning[i] * np.maximum(now - RAINS_FROM, 0.0)
         state, (landed[i], snow[i], evaporated[i]) = _rained(air, state, turned, way, i, freezing=freezing)
         for key, value in (
             ("temperature", phase.TRIPLE * state.air.t),

@@ -2,22 +2,22 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, fields
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from orolift.air.column import interpolated
 from orolift.air.parcel import Parcel, enthalpy, entropy, equilibrium_from_enthalpy, equilibrium_from_entropy
-from orolift.constants import GRAVITY, HEAT_CAPACITY_DRY_AIR, HEAT_CAPACITY_VAPOUR, REFERENCE_PRESSURE
-from orolift.crossing.arrival import SAMPLES, Here, frozen_temperature, pressure_at, sampled
+from orolift.constants import GRAVITY, REFERENCE_PRESSURE
+from orolift.crossing.arrival import SAMPLES, Here, frozen_temperature, lee_profile, pressure_at, sampled, with_ground
 from orolift.crossing.crossing import crest_component, ground_under
-from orolift.crossing.heat import surface_heat
+from orolift.crossing.heat import ground_change, surface_heat
 from orolift.crossing.picture import CREST_BAND
 from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import When
 from orolift.crossing.settings import Settings, checked, each
-from orolift.crossing.sites import DENSITY, SLOWEST
+from orolift.crossing.sites import PROFILE, SLOWEST
 from orolift.crossing.solve import solve
 from orolift.crossing.wind import NEAR_GROUND
 from orolift.flow.surface_wind import wind_near_ground
@@ -34,8 +34,6 @@ if TYPE_CHECKING:
 
 LEVELS = (-1500.0, -700.0, -300.0, 0.0, 60.0, 120.0, 200.0, 300.0, 400.0, 550.0, 700.0, 900.0, 1200.0, 1500.0)
 """Heights over the line's own ground [m] at which its air is worked out; close where it is stable."""
-HEAT_TIMES = 25
-"""Travel times for which the heat of the ground is worked out; between them by straight lines."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -143,8 +141,8 @@ def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, s
     beyond = distance - shape.crest_distance
     band = CREST_BAND * shape.half_width
     is_lee = beyond > band
-    heating = np.where(is_lee, _heating(distance, ground, solution, settings, when), 0.0)
-    air = _arriving(incoming, solution, here, height, is_lee, heating, settings)
+    change = _ground_changes(distance, height, here, (incoming, ground, solution, settings, when), is_lee)
+    air = _arriving(incoming, solution, here, height, is_lee, change, settings)
     pool = solution.pools[0]
     still = (None, None) if pool is None else pool_air(pool, height)
     wind = np.mean(sampled(here.height, here.wind, here.height[:, :1] + np.linspace(0.0, NEAR_GROUND, 7)), axis=1)
@@ -187,20 +185,51 @@ def _here(solution: Solution) -> Here:
     )
 
 
-def _heating(distance: Array, ground: Ground, solution: Solution, settings: Settings, when: When) -> Array:
-    """Heat from the ground between crest and each place [K]; 0 where time or place is unknown or it is switched off."""
-    if not settings.surface_heat or when.time is None or when.longitude is None or when.latitude is None:
-        return np.zeros(distance.shape)
+def _ground_changes(
+    distance: Array,
+    elevation: Array,
+    here: Here,
+    situation: tuple[IncomingAir, Ground, Solution, Settings, When],
+    is_lee: NDArray[np.bool_],
+) -> tuple[Array, Array]:
+    """Warming and moistening by the ground over the mixing depth at elevations (n, q), as sites have it; else 0."""
+    incoming, ground, solution, settings, when = situation
+    out = np.zeros((2, *elevation.shape))
+    known = when.time is not None and when.longitude is not None and when.latitude is not None
+    if not (settings.surface_heat and known and is_lee.any()):
+        return out[0], out[1]
     line, streams = ground.transect, solution.streams
-    wind = streams.wind[0, 0] * streams.flow.speed_factor[0, 0]
     step = float(line.distance[1] - line.distance[0]) * ground.cosine
-    way = line.distance >= ground.shape.crest_distance
-    travel = np.cumsum(np.where(way, step / np.maximum(wind, SLOWEST), 0.0))
-    times = np.linspace(0.0, float(travel[-1]), HEAT_TIMES)
-    heat = [surface_heat(when.time, when.longitude, when.latitude, float(time), DENSITY) for time in times]
-    return np.asarray(
-        np.interp(np.interp(distance, line.distance, travel), times, [one.day + one.night for one in heat])
+    travel = np.cumsum(step / np.maximum(streams.wind[0, 0] * streams.flow.speed_factor[0, 0], SLOWEST))
+    places, levels = int(is_lee.sum()), elevation.shape[1]
+    rows = Here(here.share, here.number, *(getattr(here, f.name)[is_lee] for f in fields(Here)[2:]))
+    height = (elevation[is_lee][:, :, np.newaxis] + PROFILE).reshape(places, -1)
+    air = lee_profile(
+        incoming,
+        rows,
+        height,
+        blocked_top=np.full(places, solution.blocked_top[0]),
+        going_round=np.full(places, solution.going_round[0]),
+        heating=np.zeros_like(height),
+        freezing=settings.freezing,
     )
+    pressure, temperature, vapour = (
+        values.reshape(places, levels, -1) for values in (air.pressure, air.temperature, air.vapour)
+    )
+    way = np.interp(distance[is_lee], line.distance, travel)[:, np.newaxis] + np.zeros((places, levels))
+    heat = surface_heat(
+        float(when.time or 0.0),
+        float(when.longitude or 0.0),
+        float(when.latitude or 0.0),
+        way,
+        temperature[..., 0],
+        pressure[..., 0],
+    )
+    change = ground_change(heat, PROFILE, pressure, temperature, vapour)
+    inside = float(each(settings.mixing_depth, 1)[0]) * (np.arange(SAMPLES) + 0.5) / SAMPLES
+    weight = np.array([np.interp(inside, PROFILE, row).mean() for row in np.eye(PROFILE.size)])
+    out[:, is_lee] = change.temperature @ weight, change.vapour @ weight
+    return out[0], out[1]
 
 
 def _arriving(
@@ -209,7 +238,7 @@ def _arriving(
     here: Here,
     elevation: Array,
     is_lee: NDArray[np.bool_],
-    heating: Array,
+    change: tuple[Array, Array],
     settings: Settings,
 ) -> Parcel:
     """Air of sites at elevations (n, q), as `orolift.crossing.arrival.arrival` mixes it."""
@@ -247,10 +276,9 @@ def _arriving(
     low_heat = enthalpy(Parcel(p, low_t, low_v, low_c), freezing=freezing)
     heat = np.sum(weight * ((1.0 - share) * crossing_heat + share * low_heat), axis=-1)
     water = np.sum(weight * ((1.0 - share) * (vapour + cloud) + share * (low_v + low_c)), axis=-1)
-    capacity = HEAT_CAPACITY_DRY_AIR + HEAT_CAPACITY_VAPOUR * water
-    heated = equilibrium_from_enthalpy(
-        target[:, :, 0], heat + capacity * heating[:, np.newaxis], water, freezing=freezing
-    )
+    mixed = equilibrium_from_enthalpy(target[:, :, 0], heat, water, freezing=freezing)
+    heated = with_ground(mixed, *change, freezing=freezing)
+    water = heated.vapour + heated.cloud
     lee_pressure = np.asarray(pressure_at(here, elevation))
     return equilibrium_from_entropy(lee_pressure, entropy(heated, freezing=freezing), water, freezing=freezing)
 

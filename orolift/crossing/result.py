@@ -85,12 +85,15 @@ class LeeProfile:
     vapour : ndarray (n,) [kg per kg of dry air]
     wind : ndarray (n,) [m s-1]
         Of the crossing air, across the range; a calm below it where the site lies in a pool or in blocked air.
+    warming : ndarray (n,) [K], optional
+        What the ground changed; it is in the temperature.
     """
 
     height_above_ground: Array
     temperature: Array
     vapour: Array
     wind: Array
+    warming: Array | None = None
 
 
 @dataclass(frozen=True)

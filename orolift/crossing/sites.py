@@ -9,8 +9,8 @@ import numpy as np
 
 from orolift.air.column import interpolated
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
-from orolift.crossing.arrival import Arrival, Here, arrival, lee_profile, over, pressure_at
-from orolift.crossing.heat import SurfaceHeat, heating_at, surface_heat
+from orolift.crossing.arrival import SAMPLES, Arrival, Here, arrival, lee_profile, over, pressure_at
+from orolift.crossing.heat import GroundChange, SurfaceHeat, ground_change, surface_heat
 from orolift.crossing.picture import popular_picture, side_of, upwind_ground_air
 from orolift.crossing.pool import pool_air
 from orolift.crossing.result import LeeAir, LeeProfile, SimpleAir, WarmingParts
@@ -82,8 +82,8 @@ class Arrived:
         At the site.
     round_share : ndarray (m,) [1]
         Of the low air that went round; 0 but in the lee.
-    heat : SurfaceHeat or None
-        From the ground.
+    ground : GroundChange or None, fields (m, n)
+        What the ground changes at the heights of `PROFILE`.
     came : Arrival
     """
 
@@ -94,7 +94,7 @@ class Arrived:
     here: Here
     pressure: Array
     round_share: Array
-    heat: SurfaceHeat | None
+    ground: GroundChange | None
     came: Arrival
 
 
@@ -132,20 +132,23 @@ def arrived(
     here = over(solution.streams, line.distance, site.distance)
     members = solution.blocked_top.size
     round_share = solution.going_round if side == "lee" else np.zeros(members)
-    heat = _heat(site, ground, solution, settings, when) if side == "lee" else None
-    heating = np.zeros(members)
-    if heat is not None:
-        heating = heat.day + heat.night
-        heating = np.full(members, heating[0]) if heat_factor is None else heating * heat_factor
+    depth = each(settings.mixing_depth, members)
+    change = None
+    if side == "lee":
+        change = _ground_change(
+            site, ground, incoming, solution, settings, when, (here, elevation, round_share), heat_factor
+        )
+    warming, moistening = (_over_depth(values, depth) for values in _both(change, members))
     came = arrival(
         incoming,
         solution.streams,
         here,
         elevation,
-        depth=each(settings.mixing_depth, members),
+        depth=depth,
         blocked_top=solution.blocked_top,
         going_round=round_share,
-        heating=heating,
+        heating=warming,
+        moistening=moistening,
         freezing=settings.freezing,
     )
     return Arrived(
@@ -156,25 +159,76 @@ def arrived(
         here=here,
         pressure=pressure_at(here, np.full((here.height.shape[0], 1), elevation))[:, 0],
         round_share=round_share,
-        heat=heat,
+        ground=change,
         came=came,
     )
 
 
-def _heat(site: Site, ground: Ground, solution: Solution, settings: Settings, when: When) -> SurfaceHeat | None:
-    """Heat from the ground between crest and site, (m,); None where time or place is unknown or it is switched off."""
+def _ground_change(
+    site: Site,
+    ground: Ground,
+    incoming: IncomingAir,
+    solution: Solution,
+    settings: Settings,
+    when: When,
+    place: tuple[Here, float, Array],
+    factor: Array | None,
+) -> GroundChange | None:
+    """What the ground changes over a site, (m, n); None where time or place is unknown or it is switched off."""
     if not settings.surface_heat or when.time is None or when.longitude is None or when.latitude is None:
         return None
+    here, elevation, round_share = place
+    members = solution.blocked_top.size
+    nothing = np.zeros((members, PROFILE.size))
+    air = lee_profile(
+        incoming,
+        here,
+        elevation + PROFILE + nothing,
+        blocked_top=solution.blocked_top,
+        going_round=round_share,
+        heating=nothing,
+        freezing=settings.freezing,
+    )
+    travel = travel_time(site, ground, solution)
+    heat = surface_heat(when.time, when.longitude, when.latitude, travel, air.temperature[:, 0], air.pressure[:, 0])
+    if factor is None:
+        heat = SurfaceHeat(*(np.full(members, getattr(heat, field.name)[0]) for field in fields(SurfaceHeat)))
+    else:
+        heat = heat.times(factor)
+    return ground_change(heat, PROFILE, air.pressure, air.temperature, air.vapour)
+
+
+def travel_time(site: Site, ground: Ground, solution: Solution) -> Array:
+    """Time the lowest crossing air takes from the upwind end of the line to a site, (m,) [s].
+
+    Parameters
+    ----------
+    site : Site
+    ground : Ground
+    solution : Solution
+
+    Returns
+    -------
+    ndarray (m,) [s]
+        Counted with at least 1 m/s.
+    """
     line, streams = ground.transect, solution.streams
     wind = streams.wind[:, :1] * streams.flow.speed_factor[:, 0]
-    way = (line.distance >= ground.shape.crest_distance) & (line.distance <= site.distance)
     step = float(line.distance[1] - line.distance[0]) * ground.cosine
-    travel = np.sum(step / np.maximum(wind[:, way], SLOWEST), axis=-1)
-    return surface_heat(when.time, when.longitude, when.latitude, travel, DENSITY)
+    return np.asarray(np.sum(step / np.maximum(wind[:, line.distance <= site.distance], SLOWEST), axis=-1))
 
 
-DENSITY = 1.2
-"""Density of the heated air [kg m-3]: within a fifth of it for any valley; common practice, no published source."""
+def _both(change: GroundChange | None, members: int) -> tuple[Array, Array]:
+    """Changes of temperature and vapour, (m, n); none without the ground."""
+    if change is None:
+        return np.zeros((members, PROFILE.size)), np.zeros((members, PROFILE.size))
+    return change.temperature, change.vapour
+
+
+def _over_depth(values: Array, depth: Array) -> Array:
+    """Mean of values (m, n) given at `PROFILE` over the mixing depth, (m,)."""
+    inside = depth[:, np.newaxis] * (np.arange(SAMPLES) + 0.5) / SAMPLES
+    return np.array([np.interp(z, PROFILE, row).mean() for z, row in zip(inside, values, strict=True)])
 
 
 def _profile(
@@ -186,16 +240,17 @@ def _profile(
 ) -> LeeProfile:
     """Air over the site up to 3 km, the pool's below its top."""
     members = solution.blocked_top.size
-    here, heat = found.here, found.heat
+    here = found.here
     height = np.broadcast_to(found.elevation + PROFILE, (members, PROFILE.size))
-    heating = np.zeros_like(height) if heat is None else np.broadcast_to(heating_at(heat, PROFILE)[0], height.shape)
+    warming, moistening = _both(found.ground, members)
     air = lee_profile(
         incoming,
         here,
         height,
         blocked_top=solution.blocked_top,
         going_round=found.round_share,
-        heating=heating,
+        heating=warming,
+        moistening=moistening,
         freezing=freezing,
     )
     t, v = air.temperature[0].copy(), air.vapour[0].copy()
@@ -204,7 +259,7 @@ def _profile(
         inside = (height[0] < pool.top) & (height[0] < here.height[0, 0])
         t[inside], v[inside] = (x[inside] for x in pool_air(pool, height[0]))
     wind = np.maximum(np.interp(height[0], here.height[0], here.wind[0]), 0.0)
-    return LeeProfile(PROFILE, t, v, wind)
+    return LeeProfile(PROFILE, t, v, wind, warming[0])
 
 
 def _put_together(

@@ -9,8 +9,8 @@ import numpy as np
 
 from orolift.air.humidity import relative_humidity_from_mixing_ratio
 from orolift.air.temperature import virtual_potential_temperature, virtual_temperature
-from orolift.constants import R_DRY
-from orolift.crossing.heat import DAY_DEPTH, LONGEST, NIGHT_DEPTH, NIGHT_FLUX, surface_heat
+from orolift.constants import HEAT_CAPACITY_DRY_AIR, R_DRY
+from orolift.crossing.heat import LONGEST, NIGHT_DEPTH, surface_heat
 from orolift.crossing.sun import sun_height
 from orolift.fire.mixing_height import mixing_height
 from orolift.fire.night import STILL_DEPTH, humidity_after_cooling, night_cooling
@@ -26,6 +26,11 @@ if TYPE_CHECKING:
 
     Array = NDArray[np.float64]
 
+NIGHT_LOSS = 30.0
+"""Heat [W m-2] that the ground takes from the air of a valley on a clear night; less than on the windy way to it
+(`orolift.crossing.heat`); a judgement."""
+USUAL_GROUND = (288.15, 1.0e5)
+"""Temperature [K] and pressure [Pa] of the air at the ground for the sun's heat of the day: they matter little."""
 USUAL_NIGHT = 12.0 * 3600.0
 """Length of the night [s] where time or place is not known; a judgement."""
 DAY = 86400.0
@@ -82,21 +87,22 @@ def nights_at(weather: SiteWeather, lee: Sequence[LeeAir], crests: ArrayLike, wh
     Notes
     -----
     The air stays that of the crossing all night, its heat from the ground taken off. The floor then loses 30 W/m2: with
-    wind from 800 m for at most 8 hours, as `orolift.crossing.heat` has it; at rest, from `night.STILL_DEPTH` and all
+    wind from 800 m for at most 8 hours; at rest, from `night.STILL_DEPTH` and all
     night. Slope and ridge stay in the free air over the site, without cooling and with their vapour: on a ridge
     humidity can stay low all night. For the depth of mixing, heat of the last 8 hours, none once the sun is down.
     """
     z, vapour = weather.height_above_ground, weather.mixing_ratio
     heating = np.array([0.0 if air.parts is None else air.parts.surface_heating for air in lee])
     base = weather.temperature - heating
-    reached = z <= np.where(heating > 0.0, DAY_DEPTH, NIGHT_DEPTH)[:, np.newaxis]
-    layer = weather.layer_temperature - np.where(reached, heating[:, np.newaxis], 0.0)
+    nothing = np.zeros(np.shape(z)[-1])
+    warming = [nothing if air.profile.warming is None or air.parts is None else air.profile.warming for air in lee]
+    layer = weather.layer_temperature - np.stack(warming)
     density = np.clip(weather.pressure / (R_DRY * virtual_temperature(base, vapour)), 0.3, 1.6)
     length = _night_length(when)
     hours = USUAL_NIGHT if length is None else length
     before = np.minimum(relative_humidity_from_mixing_ratio(weather.pressure, base, vapour), 1.0)
-    windy = humidity_after_cooling(base, before, night_cooling(min(hours, LONGEST), -NIGHT_FLUX, NIGHT_DEPTH, density))
-    still = humidity_after_cooling(base, before, night_cooling(hours, -NIGHT_FLUX, STILL_DEPTH, density))
+    windy = humidity_after_cooling(base, before, night_cooling(min(hours, LONGEST), NIGHT_LOSS, NIGHT_DEPTH, density))
+    still = humidity_after_cooling(base, before, night_cooling(hours, NIGHT_LOSS, STILL_DEPTH, density))
     pressure = layer_pressure(weather)
     over = np.minimum(relative_humidity_from_mixing_ratio(pressure, layer, weather.layer_vapour), 1.0)
     theta = virtual_potential_temperature(pressure, layer, weather.layer_vapour)
@@ -142,6 +148,7 @@ def _heats(when: When) -> tuple[float, float]:
         return 0.0, 0.0
     times = when.time + np.arange(0.0, DAY + 1.0, 7200.0)
     place = (when.longitude, when.latitude)
-    days = [float(surface_heat(float(time), *place, LONGEST, 1.0).day) * DAY_DEPTH for time in times]
+    heats = [surface_heat(float(time), *place, LONGEST, *USUAL_GROUND) for time in times]
+    days = [float(heat.sensible) / HEAT_CAPACITY_DRY_AIR for heat in heats]
     shines = float(sun_height(when.time, *place)) > 0.0
     return days[0] if shines else 0.0, max(days)

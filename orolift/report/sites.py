@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.report.quantities import Amount, Kind
-from orolift.report.spans import Spans, digits_for
+from orolift.report.spans import Spans, digits_for, ranged
 from orolift.report.story import SAME, difference, first_sites, source_words, where_words
 from orolift.report.words import Words, counted, sentence
 
@@ -156,7 +156,7 @@ def sites(crossing: Crossing, spans: Spans | None = None) -> Sites:
         rows=() if many else tuple(_row(air, air.number, spans) for air in crossing.lee),
         short_rows=tuple(_short(air, crossing) for air in by_warmth),
         sides=_sides(crossing.lee) if many else (),
-        panels=tuple(_panel(air, crossing) for air in first_sites(crossing).lee),
+        panels=tuple(_panel(air, spans) for air in first_sites(crossing).lee),
         failed=_failed(crossing),
         remarks=_remarks(crossing),
     )
@@ -207,17 +207,18 @@ def _from_to(values: list[float], kind: Kind, digits: int = 0) -> Words:
     return (Amount(min(values), kind, digits, bare=True), " to ", Amount(max(values), kind, digits, bare=True))
 
 
-def _panel(air: LeeAir, crossing: Crossing) -> Panel:
-    """What matters at one site, in words."""
+def _panel(air: LeeAir, spans: Spans) -> Panel:
+    """What matters at one site, in words, with ranges."""
+    crossing = spans.crossing
     facts: list[tuple[str, Words]] = [
         (
             "Air",
             (
-                Amount(air.temperature, "temperature", 1),
+                *ranged(Amount(air.temperature, "temperature", 1), spans.temperature(air)),
                 ", dew point ",
-                Amount(air.dew_point, "temperature", 1),
+                *ranged(Amount(air.dew_point, "temperature", 1), spans.dew_point(air)),
                 ", ",
-                Amount(air.relative_humidity, "share"),
+                *ranged(Amount(air.relative_humidity, "share"), spans.at(air, "relative_humidity")),
             ),
         ),
         (

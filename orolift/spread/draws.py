@@ -134,7 +134,8 @@ def variation_of(
     level, deviation = drawn["going_round_share"], uncertainty.going_round_share
 
     def share(found: Array) -> Array:
-        return cut_normal(level, found, deviation, 0.0, max(MOST_ROUND, float(found.max())))
+        # what falls beyond an end is at the end: a range without a gap may well have none
+        return np.clip(found + deviation * normal(level), 0.0, np.maximum(MOST_ROUND, found))
 
     return Variation(
         incoming=columns(situation.incoming, drawn, freezing=freezing),

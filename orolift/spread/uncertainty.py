@@ -40,7 +40,7 @@ class Uncertainty:
     lapse_rate : float [K m-1]
         Of the lapse rate in the lowest 5 km.
     going_round_share : float [1]
-        Normal, cut at 0 and 0.8.
+        Normal; what falls beyond 0 or 0.8 is put there.
     critical_value : float [1]
         Log-normal, cut at 0.75 and 3.
     cloud_time, fall_time : float [1]
@@ -137,9 +137,9 @@ def latin_hypercube(members: int, columns: int, seed: int) -> Array:
 
     Notes
     -----
-    McKay, Beckman and Conover (1979), Technometrics 21, 239-245; the order in the columns is that of normal
-    scores whose correlation is taken out (Iman and Conover 1982, Communications in Statistics B 11, 311-334), where
-    there are more members than columns: few members then show what an input does and not what chance put beside it.
+    McKay, Beckman and Conover (1979), Technometrics 21, 239-245. Where there are more members than columns, the order
+    in the columns is that of normal scores whose correlation is taken out (Iman and Conover 1982, Communications in
+    Statistics B 11, 311-334): few members then show what an input does and not what chance put beside it.
     `scipy.stats.qmc` has the first without the second, and importing it takes 0.75 s, twice as long as a whole
     crossing; the tests compare this with it.
 
@@ -223,7 +223,7 @@ def cut_normal(level: Array, center: Array, deviation: float, low: float, high: 
     Examples
     --------
     >>> cut_normal(np.array([0.01, 0.5, 0.99]), np.full(3, 0.4), 0.2, 0.0, 0.8).round(2)
-    array([0.04, 0.4 , 0.76])
+    array([0.03, 0.4 , 0.77])
     """
     if deviation == 0.0:
         return np.array(center, dtype=np.float64)

@@ -9,6 +9,8 @@ ridge_km_m = [[0, 40], [25, 1850], [60, 210]]
 [incoming]
 wind_from_deg = 235
 station = { elevation_m = 40, temperature_c = 14.5, dew_point_c = 11.0, pressure_hpa = 1004.0, wind_kt = 25 }
+[spread]
+members = 10
 [rain]
 removed_share = 0.7
 [[site]]

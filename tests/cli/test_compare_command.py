@@ -25,7 +25,7 @@ HOURS = [
     ]
 ]
 EARLIER = ("valid_time = 2026-11-03T12:00:00Z", "valid_time = 2026-11-03T10:00:00Z")
-NO_MEMBERS = ("[rain]", "[spread]\nmembers = 0\n[rain]")
+NO_MEMBERS = ("members = 10", "members = 0")
 VOID = {"meta", "br", "link", "img", "input", "hr"}
 
 
@@ -74,7 +74,7 @@ def few_crossings(monkeypatch):
 def test_the_whole_of_it(observed, edited, case_folder, capsys):
     """One run: page, results and table agree, the onset is found, the difference is explained or said not to be."""
     name = observed(*HOURS)
-    edited(("[rain]", "[spread]\nmembers = 10\n[rain]"))
+    edited()
     options = ["--results", "r.json", "--table", "t.csv", "--event", "temperature_c >= 15"]
     assert exit_code(["compare", "case.toml", name, *options]) == 0
     said = capsys.readouterr()

@@ -129,6 +129,18 @@ def test_finished_hours_are_written_on_ctrl_c(series_folder, stopped, capsys):
     assert "The work was interrupted" in (series_folder / "case_hours.html").read_text()
 
 
+def test_hours_between_finished_ones_are_missing_after_ctrl_c(series_folder):
+    """Workers finish in any order: a line must not bridge what was not worked out."""
+    from orolift.sources.hours_case import read_hours
+    from orolift.spread.hours import Hour
+
+    setup = read_hours("case.toml", "series.csv")
+    found = hours_command.filled([Hour(n, float(setup.series.time[n]), ()) for n in (3, 0)], setup)
+    assert [hour.number for hour in sorted(found, key=lambda hour: hour.time)] == [0, 1, 2, 3]
+    assert [hour.sites[0].status for hour in found[2:]] == ["missing", "missing"]
+    assert hours_command.filled([], setup) == []
+
+
 def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, capsys):
     stopped(bearings_command, 0)
     assert exit_code(["bearings", "case.toml", "--jobs", "1"]) == 130

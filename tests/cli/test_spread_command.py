@@ -14,7 +14,7 @@ def results(edited):
     """Results of the case with a table [spread]."""
 
     def run(table, *options):
-        case = edited(("[rain]", f"[spread]\n{table}\n[rain]"))
+        case = edited(("members = 10", table))
         assert exit_code(["cross", case, "--results", "r.json", *options]) == 0
         return json.loads(Path("r.json").read_text())
 
@@ -75,7 +75,7 @@ def test_a_scheduler_that_is_not_there_is_one_line(edited, capsys, monkeypatch):
 
 def test_weak_wind_is_counted_and_said(edited, capsys):
     """Members that do not cross stand on the terminal and among the cautions."""
-    case = edited(("wind_kt = 25 }", "wind_kt = 9 }\n[spread]\nmembers = 16\nwind_percent = 80"))
+    case = edited(("wind_kt = 25 }", "wind_kt = 9 }"), ("members = 10", "members = 16\nwind_percent = 80"))
     assert exit_code(["cross", case, "--results", "r.json"]) == 0
     assert re.search(r"16 members, \d+ without a crossing", capsys.readouterr().out)
     found = json.loads(Path("r.json").read_text())

@@ -80,7 +80,7 @@ def test_water_closes(cloud_time, fall_time, humidity, ground, freezing):
     assert (falling.landed_snow <= falling.landed + 1e-15).all()
 
 
-@given(ground=st.floats(265.0, 295.0), cloud=st.floats(0.1e-3, 2e-3), humidity=st.floats(0.2, 0.9))
+@given(ground=st.floats(265.0, 295.0), cloud=st.floats(0.7e-3, 2e-3), humidity=st.floats(0.2, 0.9))
 @example(ground=276.0, cloud=0.0015911151245079948, humidity=0.875)  # a cloudy layer crosses the freezing point
 def test_enthalpy_closes_at_constant_pressure(ground, cloud, humidity):
     """On level streamlines, where no work is done, the enthalpy of air and water in = out, to 1e-9.
@@ -104,6 +104,22 @@ def test_enthalpy_closes_at_constant_pressure(ground, cloud, humidity):
     scale = np.sum(path.carried * np.abs(falling.aloft).max()) * 2.5e6 + abs(came)
     assert went + landed + aloft == pytest.approx(came, abs=1e-9 * scale)
     assert falling.landed.sum() > 0.0
+
+
+def test_thin_cloud_does_not_rain():
+    """Kessler (1969): cloud under about half a gram does not turn to rain; twice as much does."""
+    fallen = []
+    for cloud in (0.45e-3, 0.9e-3):
+        height, start = column(280.0, 0.5)
+        wet = height > 1500.0
+        vapour = np.where(wet, saturation_mixing_ratio(start.pressure, start.temperature), start.vapour)
+        start = Parcel(start.pressure, start.temperature, vapour, np.where(wet, cloud, 0.0)[None])
+        _, path = over_a_hump(start, height, rise=0.0)
+        path = Path(np.broadcast_to(start.pressure, path.pressure.shape), path.height, path.step_time, path.carried)
+        air, _ = march_with_rain(start, path, np.array([800.0]), np.array([1000.0]))
+        fallen.append(float(air.removed.sum()))
+    assert fallen[0] == 0.0
+    assert fallen[1] > 0.0
 
 
 def test_rain_drifts_downwind():

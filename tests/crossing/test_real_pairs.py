@@ -1,55 +1,61 @@
 """Every real pair of soundings with a range between them is worked out (origin and licence beside the data)."""
 
-import csv
-import math
+import importlib.util
+import re
+import sys
 from pathlib import Path
 
 import numpy as np
 import pytest
 
-from orolift.air.column_build import air_from_levels
-from orolift.air.humidity import mixing_ratio_from_dew_point_checked
-from orolift.crossing.crossing import cross
-from orolift.crossing.result import Site
-from orolift.sources.sounding_csv import read_sounding
-from orolift.terrain.ridge import ridge_transect
-
-DATA = Path(__file__).parents[1] / "data" / "real_crossings"
+ROOT = Path(__file__).parents[2]
+DATA = ROOT / "tests" / "data" / "real_crossings"
 PAIRS = sorted(path.name for path in DATA.glob("pair_*"))
-INDEX = {row["pair"]: row for row in csv.DictReader((DATA / "index.csv").read_text().splitlines())}
+RENEW = "Renew docs/accuracy.md with: python docs/make_accuracy.py"
+_SPEC = importlib.util.spec_from_file_location("make_accuracy", ROOT / "docs" / "make_accuracy.py")
+accuracy = importlib.util.module_from_spec(_SPEC)
+sys.modules[_SPEC.name] = accuracy
+_SPEC.loader.exec_module(accuracy)
+INDEX, worked = accuracy.INDEX, accuracy.worked
 
 
-def bearing(start, end) -> float:
-    """Initial bearing of the great circle between two (latitude, longitude)."""
-    (la1, lo1), (la2, lo2) = (tuple(map(math.radians, point)) for point in (start, end))
-    east = math.sin(lo2 - lo1) * math.cos(la2)
-    return math.atan2(east, math.cos(la1) * math.sin(la2) - math.sin(la1) * math.cos(la2) * math.cos(lo2 - lo1))
+@pytest.fixture(scope="module")
+def told():
+    """Errors that docs/accuracy.md gives for every pair."""
+    text = (ROOT / "docs" / "accuracy.md").read_text(encoding="utf-8").replace("−", "-")
+    rows = re.findall(r"^\| (\d\d) \| \w \| \d+ \| [\d.]+ \| (.+?) \|$", text, re.MULTILINE)
+    return {f"pair_{name}": [float(x) for x in cells.split("|")] for name, cells in rows}
 
 
-def worked(pair):
-    """Crossing of a pair: from the upwind station to 60 km beyond the lee one, one setting for all."""
-    sounding = read_sounding(DATA / pair / "upwind.csv")
-    vapour, _ = mixing_ratio_from_dew_point_checked(sounding.pressure, sounding.temperature, sounding.dew_point)
-    air = air_from_levels(
-        sounding.height,
-        sounding.pressure,
-        sounding.temperature,
-        vapour,
-        sounding.eastward_wind,
-        sounding.northward_wind,
-    )
-    rows = list(csv.DictReader((DATA / pair / "transect.csv").read_text().splitlines()))
-    x, z, latitude, longitude = (
-        np.array([float(row[key]) for row in rows])
-        for key in ("distance_km", "elevation_m", "latitude_deg", "longitude_deg")
-    )
-    length = float(INDEX[pair]["distance_km"])
-    first, last = int(np.argmin(np.abs(x))), int(np.argmin(np.abs(x - length)))
-    toward = bearing((latitude[first], longitude[first]), (latitude[last], longitude[last]))
-    end = int(np.argmin(np.abs(x - length - 60.0)))
-    line = ridge_transect(x[first : end + 1] * 1e3, z[first : end + 1], bearing=toward % (2 * math.pi))
-    lee_ground = float(INDEX[pair]["lee_elevation_m"])
-    return cross(line, air, (Site("lee", length * 1e3 - line.origin, lee_ground),))
+@pytest.mark.regression
+@pytest.mark.parametrize("pair", ["pair_10", "pair_41", "pair_58"])
+def test_the_accuracy_page_is_what_the_code_gives(told, pair):
+    """Frozen: three pairs worked out now have the errors on the page."""
+    means = accuracy.layer_means(pair)
+    found = dict.fromkeys(INDEX, means)
+    number = list(INDEX).index(pair)
+    errors = accuracy.errors(found)
+    fresh = [*errors[accuracy.LOW, "orolift"][number], *errors[accuracy.DEEP, "orolift"][number]]
+    assert fresh == pytest.approx(told[pair], abs=0.05), RENEW
+
+
+def test_the_scores_of_the_page_are_those_of_its_pairs(told):
+    """Bias and mean absolute error at the top of the tables follow from the rows pair by pair."""
+    assert len(told) == 66
+    text = (ROOT / "docs" / "accuracy.md").read_text(encoding="utf-8").replace("−", "-")
+    rows = [row.split("|")[4:10] for row in re.findall(r"^\| all \| 66 \| \*\*orolift\*\* .+$", text, re.MULTILINE)]
+    values = np.array(list(told.values()))
+    for row, part in zip(rows, (values[:, :2], values[:, 2:]), strict=True):
+        given = [float(cell) for cell in row]
+        for column, cells in ((0, given[:3]), (1, given[3:])):
+            e = part[:, column]
+            assert cells == pytest.approx([e.mean(), np.abs(e).mean(), np.sqrt(np.mean(e**2))], abs=0.011)
+
+
+def test_simple_estimates_on_the_page_are_those_of_the_data():
+    """The scores of lifted surface air that came with the data: 3.18 K, 1.21 g/kg over all pairs (README of the data)."""
+    text = (ROOT / "docs" / "accuracy.md").read_text(encoding="utf-8")
+    assert "| all | 66 | surface air lifted, all rain out | +0.22 | 3.18 | 4.02 | −0.38 | 1.21 | 1.61 |" in text, RENEW
 
 
 def test_there_are_66_pairs():

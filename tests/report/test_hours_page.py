@@ -6,6 +6,8 @@ from itertools import pairwise
 import numpy as np
 import pytest
 
+from orolift.fire.rules import Condition, Rule, RuleSet
+from orolift.fire.sites import FireSettings
 from orolift.report.figures.axes import Scale
 from orolift.report.figures.placing import text_width
 from orolift.report.figures.time_axis import time_ticks
@@ -91,3 +93,30 @@ def test_units_of_the_page_change_words_not_numbers():
     assert metric.sites[0].rows[0].temperature == us.sites[0].rows[0].temperature
     first = [panel.labels[0].text for panel in us.sites[0].figure.drawing.panels]
     assert "Temperature and dew point, °F" in first
+
+
+def test_thresholds_met_are_marked_and_said():
+    """A rule met in some hours has a row in the figure, a sentence at the head and at its site; one not met has none."""
+    rules = (
+        Rule("dry", (Condition("relative_humidity", at_most=0.3),)),
+        Rule("never", (Condition("relative_humidity", at_most=0.01),)),
+    )
+    states = [
+        SiteState(
+            "crossing",
+            travel=Travel(HOUR, 0.0),
+            temperature=290.0,
+            relative_humidity=u,
+            rule_values={"relative_humidity": u},
+        )
+        for u in (0.5, 0.2, 0.2, 0.5)
+    ]
+    hours = [Hour(i, START + i * HOUR, (state,)) for i, state in enumerate(states)]
+    fire = FireSettings(rules=RuleSet("Tarn", "none", "2026-05-01", rules))
+    found = hours_of(hours, ["Tarn"], HOUR, planned=4, fire=fire)
+    made = hours_page(found, title="T", zone=UTC, made_at=datetime(2026, 1, 1, tzinfo=UTC), version="0", notes=())
+    assert len(made.dangers) == len(made.sites[0].dangers) == 1
+    assert "Threshold met at Tarn: dry" in made.dangers[0][0]
+    drawing = made.sites[0].figure.drawing
+    assert [curve.kind for curve in drawing.states].count("met") == 1
+    assert {"threshold met: dry", "threshold not met: never"} <= {label.text for label in drawing.labels}

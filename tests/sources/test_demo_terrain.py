@@ -1,6 +1,7 @@
 """The invented Varn range and its soundings are what the examples say they are."""
 
 import csv
+import importlib.util
 from pathlib import Path
 
 import numpy as np
@@ -82,3 +83,13 @@ def test_moist_sounding_is_moist_and_windy_at_crest_height_and_the_other_dry():
     below = moist[1] < 3000.0
     assert np.all(moist[2][below] - moist[3][below] <= 2.0)
     assert np.all(dry[2][dry[1] < 3000.0] - dry[3][dry[1] < 3000.0] >= 4.0)
+
+
+def test_hours_are_those_of_the_script():
+    """36 hours of which two did not report, as `make_demo.py` writes them."""
+    spec = importlib.util.spec_from_file_location("make_demo", DEMO / "make_demo.py")
+    script = importlib.util.module_from_spec(spec)
+    spec.loader.exec_module(script)
+    text = (DEMO / "varn_hours.csv").read_text()
+    assert text == script.hours()
+    assert len(text.splitlines()) == 2 + 34

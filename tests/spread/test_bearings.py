@@ -1,6 +1,7 @@
 """Every wind direction in turn: laws of the ridge, of the circular hill, and of turned air."""
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -10,9 +11,10 @@ from orolift.crossing.crossing import crest_component
 from orolift.errors import CaseError, NoCrossingError
 from orolift.sources.bearings_case import bearing_task, read_bearings
 from orolift.sources.bearings_results import bearing_rows, bearings_results
-from orolift.spread.bearings import Direction, bearings_of, turned_air, worked_direction
+from orolift.spread.bearings import Direction, bearings_of, reversed_situation, turned_air, worked_direction
 from orolift.spread.site_state import SiteState
 from orolift.terrain.features import features
+from orolift.terrain.transect import transect_elevation
 
 RIDGE = """
 [terrain]
@@ -71,6 +73,20 @@ def test_a_symmetric_ridge_gives_the_two_sides_each_others_air(ridge):
     assert back[1].temperature == pytest.approx(there[0].temperature, abs=1e-6)
     assert back[1].wind_10m == pytest.approx(there[0].wind_10m, rel=1e-6)
     assert back[1].shelter_distance == pytest.approx(there[0].shelter_distance)
+
+
+def test_a_line_crossed_from_its_other_end_has_the_same_ground(ridge):
+    """Round trip: twice is once; and under every site lies the ground that lay there before."""
+    line = ridge.situation.transect
+    slope = replace(ridge.situation, transect=replace(line, elevation=line.elevation + 0.01 * line.distance))
+    back = reversed_situation(slope)
+    for site, other in zip(slope.sites, back.sites, strict=True):
+        there = transect_elevation(slope.transect, site.distance)
+        assert transect_elevation(back.transect, other.distance) == pytest.approx(float(there))
+    again = reversed_situation(back)
+    np.testing.assert_array_equal(again.transect.elevation, slope.transect.elevation)
+    assert again.transect.bearing == pytest.approx(line.bearing)
+    assert [site.distance for site in again.sites] == pytest.approx([site.distance for site in slope.sites])
 
 
 @pytest.mark.parametrize("angle", [0.3, 2.0, -4.0])

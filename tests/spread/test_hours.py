@@ -5,6 +5,8 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from orolift.air.column import interpolated
+from orolift.air.temperature import potential_temperature
 from orolift.crossing.situation import crossing_of
 from orolift.errors import CaseError, DataFileError
 from orolift.fire.rules import Condition, Rule, RuleSet
@@ -15,7 +17,7 @@ from orolift.rain.over_map import Catchment, map_rain
 from orolift.sources.hours_case import hour_task, hour_tasks, read_hours
 from orolift.sources.inputs import situation_of
 from orolift.spread.hours import MapGround, _catchment_rates, when_there, worked_hour
-from orolift.spread.site_state import states_of
+from orolift.spread.site_state import descending_warm_dry, states_of
 from orolift.terrain.grid import ElevationGrid
 
 CASE = """
@@ -158,3 +160,30 @@ def test_values_for_thresholds_are_those_of_fire_weather(setup):
     judged = fire_at_sites(crossing_of(replace(situation, when=when)), when, fire)[0].thresholds[0].judged
     for one in judged.conditions:
         assert values[one.condition.quantity] == pytest.approx(one.value)
+
+
+def test_air_counts_as_descended_from_halfway_to_the_potential_temperature_of_the_crest(setup):
+    """Just over and just under halfway; and never in a pool, before the crest, moister than beside it, or kept off."""
+    found = setup(
+        "14.5,7.0,1004.0,235,25",
+        case=CASE.replace("wind_from_deg = 235", "wind_from_deg = 235\nlapse_rate_c_per_km = 4"),
+    )
+    _, crossing = states_of(hour_task(found, 0).lines[0].situation)
+    site = crossing.lee[0]
+    air = interpolated(crossing.incoming, np.array([site.elevation, crossing.features.crest]))
+    beside, crest = potential_temperature(air.pressure, air.temperature)
+    exner = float(site.temperature / potential_temperature(site.pressure, site.temperature))
+
+    def descended(theta, **more):
+        changed = {"temperature": theta * exner, "relative_humidity": 0.1, "in_pool": False, **more}
+        return descending_warm_dry(crossing, replace(site, **changed))
+
+    middle = 0.5 * (beside + crest)
+    assert middle > beside + 1.5  # so that warming by 1 K is not what decides
+    assert descended(middle + 0.01)
+    assert not descended(middle - 0.01)
+    assert not descended(crest, in_pool=True)
+    assert not descended(crest, side="windward")
+    assert not descended(crest, relative_humidity=0.99)
+    kept_off = replace(crossing, flow=replace(crossing.flow, breaks_through=False))
+    assert not descending_warm_dry(kept_off, replace(site, temperature=crest * exner, relative_humidity=0.1))

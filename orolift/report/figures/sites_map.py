@@ -34,7 +34,7 @@ if TYPE_CHECKING:
     from orolift.report.figures.placing import Box as Frame
     from orolift.sources.map_inputs import Mapped
 
-DOT = 2.6
+DOT = {"wide": 2.6, "narrow": 1.7}
 """Radius of a dot, drawing units."""
 
 
@@ -140,13 +140,13 @@ def _drawing(
         height=round(frame.bottom - frame.top, 1),
         swath=swath,
         lines=(*divide_on_map(mapped, ground), *drawn_line(line), *marks),
-        dots=_dots(crossing, mapped, ground),
+        dots=_dots(crossing, mapped, ground, DOT[name]),
         labels=labels,
         pins=placed,
     )
 
 
-def _dots(crossing: Crossing, mapped: Mapped, ground: Ground) -> tuple[Dot, ...]:
+def _dots(crossing: Crossing, mapped: Mapped, ground: Ground, radius: float) -> tuple[Dot, ...]:
     """The sites that have no pin."""
     pinned = {air.number for air in first_sites(crossing).lee}
     rest = [air for air in crossing.lee if air.number not in pinned and air.number <= len(mapped.inputs.sites)]
@@ -155,7 +155,7 @@ def _dots(crossing: Crossing, mapped: Mapped, ground: Ground) -> tuple[Dot, ...]
     frame = ground.frame
     inside = (x > frame.left) & (x < frame.right) & (y > frame.top) & (y < frame.bottom)
     return tuple(
-        Dot(round(float(a), 1), round(float(b), 1), DOT, air.side)
+        Dot(round(float(a), 1), round(float(b), 1), radius, air.side)
         for air, a, b, on in zip(rest, x, y, inside, strict=True)
         if on
     )

@@ -148,3 +148,20 @@ def test_maps_are_written_with_units_and_places(straight):
         assert grid_elevation(found.grid, *file.xy(row, column)) == found.grid.elevation[row, column]
     with MemoryFile(files["lee_cloud"]) as memory, memory.open() as file:
         assert file.units == ("m", "kg m-2")
+
+
+def test_strips_on_the_right_of_the_wind_lie_there(straight):
+    """Wind from the west: strips to its right are in the south, and what is added there is found there."""
+    inputs, plan, parts, frame, found = straight
+    warmer = [
+        part
+        if across <= 0.0 or part.values is None
+        else replace(part, values=replace(part.values, temperature=part.values.temperature + 5.0))
+        for part, across in zip(parts, frame.across, strict=True)
+    ]
+    changed = lee_map(warmer, frame, plan.placed.grid, inputs.incoming).temperature - found.temperature
+    inside = middle_rows(found, frame)
+    south = inside & (found.grid.y < NORTHING - 3.0 * frame.smoothing)
+    north = inside & (found.grid.y > NORTHING + 3.0 * frame.smoothing)
+    assert np.nanmedian(changed[south]) == pytest.approx(5.0, abs=0.1)
+    assert np.nanmedian(changed[north]) == pytest.approx(0.0, abs=0.1)

@@ -136,3 +136,19 @@ def test_a_height_far_off_the_terrain_is_flagged(tmp_path, ridge_case):
     cautions = " ".join(read_inputs(path).cautions)
     assert "S0 is given at 4000 m, and the terrain is at" in cautions
     assert "3 more sites are given more than 150 m off their terrain" in cautions
+
+
+def test_lines_pass_near_their_sites(worked):
+    """No line is farther from a site of its than a tenth of the swath, 1 km, and a step along it."""
+    from rasterio.warp import transform
+
+    inputs = worked[0]
+    for group in site_groups(inputs):
+        line = group.situation.transect
+        x, y = transform("OGC:CRS84", "EPSG:32632", line.longitude, line.latitude)
+        for placed, site in zip(group.sites, group.situation.sites, strict=True):
+            place = inputs.places[placed.number - 1]
+            (east,), (north,) = transform("OGC:CRS84", "EPSG:32632", [place.longitude], [place.latitude])
+            away = np.hypot(np.array(x) - east, np.array(y) - north)
+            assert away.min() < 1100.0, placed.name
+            assert line.distance[away.argmin()] == pytest.approx(site.distance, abs=300.0)
