@@ -94,7 +94,7 @@ def test_a_page_is_one_page_and_cautious(made, name):
     assert 1 <= text.count("![") <= 2
     assert "## What to doubt" in text
     assert "estimate for trained people, not a warning" in " ".join(text.split())
-    assert sum(f"({other}.md)" in text for other in NAMES) == 2
+    assert sum(f"({other}.md)" in text for other in NAMES) == 2  # the other two
 
 
 @pytest.mark.parametrize("name", NAMES)
