@@ -243,13 +243,15 @@ def test_danger_is_marked_only_where_the_crossing_doubts_itself(read, any_crossi
 
 
 def test_danger_colour_is_used_for_danger_only():
-    """Doubts of the crossing and breaking waves, nothing else."""
+    """Doubts of the crossing, breaking waves and thresholds met, nothing else."""
     users = re.findall(r"([^{}]+)\{[^{}]*var\(--danger\)", STYLE)
     assert {selector.strip().splitlines()[-1] for selector in users} == {
         ".danger",
         ".danger strong",
         ".breaking",
         "svg text.breaking",
+        ".met",
+        "svg text.danger-words",
     }
 
 
