@@ -12,6 +12,7 @@ from orolift.air.parcel import Parcel, enthalpy, entropy, equilibrium_from_entha
 from orolift.constants import GRAVITY, REFERENCE_PRESSURE
 from orolift.crossing.arrival import SAMPLES, Here, frozen_temperature, lee_profile, pressure_at, sampled, with_ground
 from orolift.crossing.crossing import crest_component, ground_under
+from orolift.crossing.facts import HIGHEST_CLOUD
 from orolift.crossing.heat import ground_change, surface_heat
 from orolift.crossing.picture import CREST_BAND
 from orolift.crossing.pool import Lee, pool_air
@@ -285,7 +286,7 @@ def _arriving(
 
 def _clouds(here: Here) -> tuple[Array, Array]:
     """Height of the lowest cloud over each place, infinite without any, and the water of all cloud [kg m-2]."""
-    cloudy = here.cloud > LEAST_CLOUD
+    cloudy = (here.cloud > LEAST_CLOUD) & (here.pressure >= HIGHEST_CLOUD)
     first = np.argmax(cloudy, axis=1)
     base = np.where(cloudy.any(axis=1), here.height[np.arange(first.size), first], np.inf)
     mass = -np.diff(here.pressure, axis=1) / GRAVITY

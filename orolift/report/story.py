@@ -55,11 +55,6 @@ def crest_index(crossing: Crossing) -> int:
     return int(np.argmin(np.abs(crossing.distance - crossing.features.crest_distance)))
 
 
-def upwind_ground(crossing: Crossing) -> float:
-    """Height of the ground at the upwind end [m]."""
-    return float(crossing.transect.elevation[0])
-
-
 def is_blocked(crossing: Crossing) -> bool:
     """Whether any air is blocked."""
     return crossing.flow.blocked_top > crossing.features.base + 1.0

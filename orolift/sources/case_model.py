@@ -27,7 +27,6 @@ from orolift.sources.fire_model import Fire
 from orolift.sources.incoming_model import Incoming, Station
 from orolift.sources.rain_model import Catchments, GaugesTable, Rain, keys_of_a_map
 from orolift.sources.spread_model import SpreadTable
-from orolift.sources.units import UNITS
 
 __all__ = [
     "Case",
@@ -220,8 +219,3 @@ class Case(Table):
         if needing and not self.rain.map:
             raise ValueError(f"{needing[0]} needs rain over a map, and [rain] map = false leaves that out; drop one")
         return self
-
-
-def described_units() -> dict[str, str]:
-    """Kind of quantity of every unit suffix, for the documentation."""
-    return {suffix: unit.kind for suffix, unit in UNITS.items()}

@@ -63,9 +63,9 @@ class HourSetup:
     own_line : callable or None
         With a raster: the line of a site, by its number, along a bearing [rad]; its first site is that site.
     places : ndarray (ns, 2) [m]
-        Of the sites on the map; empty for a ridge.
+        Of the sites, true east and true north of the origin of the map; empty for a ridge.
     observed : (float, float) or None [m]
-        Where the incoming air is observed, on the map.
+        Where the incoming air is observed, likewise.
     ground : MapGround or None
         Where the case has catchments.
     wind_error : float [1]

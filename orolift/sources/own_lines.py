@@ -46,9 +46,9 @@ def own_lines(
         The situation of a site, by its number, along a bearing [rad]: that site alone, without the ends. Lines are
         kept for the next time.
     places : ndarray (ns, 2) [m]
-        Of the sites on the map.
+        Of the sites, true east and true north of the origin of the map.
     observed : (float, float) or None [m]
-        Where the case says that its air is observed, on the map.
+        Where the case says that its air is observed, likewise.
 
     Raises
     ------
@@ -66,7 +66,34 @@ def own_lines(
         site = Site(sites[number].name, 0.0, sites[number].elevation)
         return replace(situation_through(lines, float(x), float(y), bearing, (site,)), in_full=False)
 
-    return own_line, places, _observed(lines, inputs)
+    observed = _observed(lines, inputs)
+    found = None if observed is None else by_true_north(np.array([observed]), lines.north)[0]
+    return own_line, by_true_north(places, lines.north), None if found is None else (float(found[0]), float(found[1]))
+
+
+def by_true_north(places: Array, north: float) -> Array:
+    """Places on a map (n, 2) turned so that the second axis is true north.
+
+    Parameters
+    ----------
+    places : ndarray (n, 2) [m]
+    north : float [rad]
+        Bearing of true north on the map, clockwise from its second axis.
+
+    Returns
+    -------
+    ndarray (n, 2) [m]
+
+    Examples
+    --------
+    A place 1 km true north, where that is to the right on the map:
+
+    >>> by_true_north(np.array([[1000.0, 0.0]]), math.pi / 2).round(6)
+    array([[   0., 1000.]])
+    """
+    c, s = math.cos(north), math.sin(north)
+    x, y = places[:, 0], places[:, 1]
+    return np.column_stack([x * c - y * s, x * s + y * c])
 
 
 def sites_of(inputs: Inputs) -> tuple[Site, ...]:

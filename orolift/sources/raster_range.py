@@ -134,9 +134,3 @@ def _cell(raster: RasterFile, local: str) -> float:
     corners = map_coordinates(raster, row + np.array([0.0, 1.0, 0.0]), column + np.array([0.0, 0.0, 1.0]))
     east, north = map_positions(raster, *corners, raster.dataset.crs, local)
     return float(np.hypot(east[1:] - east[0], north[1:] - north[0]).max())
-
-
-def crest_position(longitude: Array, latitude: Array, distance: Array, crest: float) -> tuple[float, float]:
-    """Longitude and latitude of the crest on a transect."""
-    i = int(np.argmin(np.abs(distance - crest)))
-    return float(longitude[i]), float(latitude[i])

@@ -157,7 +157,7 @@ def site_estimate(
     """
     return SiteEstimate(
         side=air.side,
-        values={name: _value(crossing, air, name) for name in QUANTITIES},
+        values={name: _value(air, name) for name in QUANTITIES},
         ranges=_ranges(air, ranges or {}),
         references=_simple(crossing, air),
         excess=crest_excess(crossing, air),
@@ -247,16 +247,13 @@ def crest_excess(crossing: Crossing, air: LeeAir) -> float:
     return float(potential_excess([air.temperature], [march.temperature[top, 0]], pressures=pressures)[0])
 
 
-def _value(crossing: Crossing, air: LeeAir, name: Quantity) -> float:
+def _value(air: LeeAir, name: Quantity) -> float:
     if name == "wind":
         return np.nan if air.wind is None else air.wind.at_10m
     if name == "gust":
         return np.nan if air.wind is None else 0.5 * (air.wind.gust_low + air.wind.gust_high)
     if name == "rain_rate":
-        rain = crossing.rain
-        if not crossing.distance[0] <= air.distance <= crossing.distance[-1]:
-            return np.nan
-        return float(np.interp(air.distance, crossing.distance, rain.rate)) + rain.background
+        return air.rain
     return float(getattr(air, name))
 
 

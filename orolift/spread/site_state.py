@@ -216,7 +216,7 @@ def _state(site: LeeAir, crossing: Crossing, observed_at: float) -> SiteState:
         warming=site.warming,
         parts=site.parts,
         source_level=site.source_level,
-        rain=float(np.interp(site.distance, crossing.distance, rain.rate)) + rain.background,
+        rain=site.rain,
         snow=float(np.interp(site.distance, crossing.distance, rain.snow_rate)),
         travel=travel_to(crossing, site, observed_at),
         shelter_height=float(line.elevation[shelter]),

@@ -192,3 +192,9 @@ def test_onset_of_a_made_up_series(estimates):
     assert found.times == 4
     assert found.table.hits + found.table.misses == 2
     assert abs(found.excess[0]) < 3.0
+
+
+def test_rain_of_a_site_is_that_of_its_own_line(crossing):
+    """A site beside the line has a crossing of its own: rain of the case's line at the same distance is not its rain."""
+    air = replace(crossing.lee[0], rain=1.0 / 3600.0)
+    assert site_estimate(crossing, air).values["rain_rate"] == 1.0 / 3600.0
