@@ -1,5 +1,6 @@
 """Ranges as the user of `orolift cross` meets them: page, terminal, results; many members on workers."""
 
+import csv
 import json
 import re
 from pathlib import Path
@@ -43,6 +44,20 @@ def test_every_range_holds_eight_tenths(results, capsys):
     page = Path("case.html").read_text()
     assert 'id="how-sure"' in page
     assert f">{low:.1f}</data> to <data" in page
+
+
+def test_tables_hold_single_values_only(results):
+    """Chances and ends of ranges have columns of their own, under names that a table can have; no block is in a cell."""
+    found = results("members = 12", "--table", "t.csv")
+    site = found["lee"][0]
+    with Path("t.csv").open(newline="") as stream:
+        row = next(csv.DictReader(stream))
+    assert not any("{" in cell for cell in row.values())
+    assert not any("." in name for name in row)
+    assert float(row["chance_rain"]) == site["chance"]["rain"]
+    low, high = site["range"]["warming_parts_c.descent"]
+    assert (float(row["warming_by_descent_c_low"]), float(row["warming_by_descent_c_high"])) == (low, high)
+    assert float(row["source_level_m_low"]) == site["source_level_range_m"][0]
 
 
 def test_no_members_no_ranges(results, capsys):
