@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import logging
+from datetime import datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -82,7 +83,7 @@ def command(
     )
     write_all(contents_of(hours, setup, units, files))
     if not quiet:
-        click.echo("\n".join([*summary_of(hours, setup), f"Report: {files['report']}"]))
+        click.echo("\n".join([*summary_of(hours, setup, units), f"Report: {files['report']}"]))
     if stopped:
         raise click.Abort(
             f"interrupted after {hours.time.size} of {hours.planned} hours; what was finished is written."
@@ -158,24 +159,30 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
     return out
 
 
-def summary_of(hours: Hours, setup: HourSetup) -> list[str]:
-    """What happened, a line a site, at most ten lines."""
-    from orolift.report.hours_page import stamp
+def summary_of(hours: Hours, setup: HourSetup, units: Units) -> list[str]:
+    """What happened, a line a site, at most ten lines; times as fine as their errors allow, as on the page."""
+    from orolift.report.hours_page import about
+    from orolift.report.quantities import NO_BREAK_SPACE, quantity
+    from orolift.report.words import zone_words
 
     zone = setup.series.zone
-    lines = [setup.inputs.case.title or setup.inputs.path.stem]
+
+    def said(time: float | None, error: float | None, open_end: str) -> str:
+        return open_end if time is None else about(time, error or 0.0, zone)
+
+    first = datetime.fromtimestamp(float(hours.time[0]), zone)
+    lines = [f"{setup.inputs.case.title or setup.inputs.path.stem} (times in {zone_words(first)})"]
     lines += [f"Note      {text}" for text in setup.series.notes[:2]]
     for site in hours.sites[:5]:
         spells = [
-            f"{'the start' if one.onset is None else stamp(one.onset, zone)} to "
-            f"{'the end' if one.end is None else stamp(one.end, zone)}"
+            f"{said(one.onset, one.onset_error, 'the start')} to {said(one.end, one.end_error, 'the end')}"
             for one in site.dry_winds[:2]
         ]
         more = f", and {len(site.dry_winds) - 2} more" if len(site.dry_winds) > 2 else ""
         dry = f"descending warm dry air from {', from '.join(spells)}{more}" if spells else "no descending warm dry air"
         lines.append(
             f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; "
-            f"{site.rain:.0f} mm of rain and snow"
+            f"{quantity(site.rain, 'water_depth', 0, units).replace(NO_BREAK_SPACE, ' ')} of rain and snow"
         )
     if len(hours.sites) > 5:
         lines.append(f"          and {len(hours.sites) - 5} more sites: see the report or --table")

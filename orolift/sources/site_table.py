@@ -11,7 +11,7 @@ if TYPE_CHECKING:
     from orolift.sources.results import FailedSiteBlock, LeeBlock, Results
 
 NOT_A_VALUE = {"profile", "range", "input_range", "chance", "warming_parts_c", "source_level_range_m"}
-"""Parts of a block that are no single value; of the profile and the ranges by the inputs alone no table has anything."""
+"""Parts of a block that are no single value; profile and ranges by the inputs alone are in no table at all."""
 PARTS = ("descent", "latent", "going_round", "mixing", "surface_heating", "pressure")
 RANGES = ("source_level_m", "wind_ms", "gust_ms")
 """Ranges that every table has columns for; others are added where they are known."""

@@ -64,6 +64,9 @@ def test_hours_write_all_their_files(series_folder, capsys):
     assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", *ALL]) == 0
     said = capsys.readouterr().out
     assert "2 of 5 hours cross" in said
+    assert re.search(r"\(times in UTC\S*\)", said.splitlines()[0])
+    assert not re.search(r"20\d\d, \d\d:\d[1-9]", said)  # no finer than ten minutes: the air's way is not known so well
+    assert "mm of rain and snow" in said
     results = json.loads((series_folder / "r.json").read_text())
     assert [*jsonschema.Draft202012Validator(hours_schema()).iter_errors(results)] == []
     hours = results["sites"][0]["hours"]
