@@ -210,7 +210,7 @@ def page_of(
         units=units,
         briefing=briefing(line, bearing, freezing, Spans(line, spread)),
         section_heading=section_heading(line, followed),
-        section=section(line, followed, bearing, freezing, units),
+        section=section(line, followed, bearing, freezing, units, Spans(line, spread).of("blocked_top")),
         reading=reading(line, units),
         journey=journey(line, followed),
         path=path(line, followed, units),
@@ -234,7 +234,7 @@ def page_of(
         column=column(line, stagnant_top, units),
         findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),
         method=method(),
-        cautions=cautions(few, valid_time),
+        cautions=cautions(few, valid_time, members=spread is not None),
     )
 
 

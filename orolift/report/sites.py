@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.report.causes import PARTS
+from orolift.report.key_numbers import gusts
 from orolift.report.quantities import Amount, Kind
 from orolift.report.spans import Spans, digits_for, ranged
 from orolift.report.story import SAME, difference, first_sites, source_words, where_words
@@ -252,8 +253,8 @@ def _panel(air: LeeAir, spans: Spans, fire: SiteFire | None) -> Panel:
     if because:
         facts.append(("By", because))
     if air.wind is not None:
-        gusts = Amount(air.wind.gust_low, "wind", bare=True), " to ", Amount(air.wind.gust_high, "wind")
-        facts.append(("Wind", (Amount(air.wind.at_10m, "wind"), " at 10 m, gusts ", *gusts)))
+        at_10m = ranged(Amount(air.wind.at_10m, "wind"), spans.at(air, "wind_10m"))
+        facts.append(("Wind", (*at_10m, " at 10 m, gusts ", *gusts(spans, air.wind, air))))
     if air.source_level is not None:
         facts.append(("Comes from", source_words(air)))
     crest = crossing.features.crest if air.own is None else air.own.crest
