@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option, refuse_files
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -95,8 +95,10 @@ def command(
     from orolift.report.render import render_compare
     from orolift.sources.files import csv_text, write_all
 
-    found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
     page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
+    more = [str(asked[name]) for name in ("series", "lee_sounding") if asked[name]]
+    refuse_files({"report": str(page), "results": results, "table": table}, (*cases, observed, *more))
+    found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
     title = inputs[0].case.title or inputs[0].path.stem
     data = compare_page(
         found, title=title, observed=Path(observed).name, made_at=_made_at(), version=__version__, units=units

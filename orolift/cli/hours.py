@@ -56,17 +56,18 @@ def command(
 
     SERIES is a CSV table of station values or of sounding files, each row with its time, or NetCDF with times.
     """
-    from orolift.sources.files import write_all
+    from orolift.sources.files import refuse_over_read, write_all
     from orolift.sources.hours_case import read_hours
     from orolift.spread.timeline import hours_of
 
     files["report"] = files["report"] or f"{Path(case).stem}_hours.html"
-    refuse_files(files)
+    refuse_files(files, (case, series))
     if files["netcdf"] is not None:
         from orolift.sources.hours_netcdf import refuse_without_netcdf
 
         refuse_without_netcdf("--netcdf")
     setup = read_hours(case, series)
+    refuse_over_read(name for name in files.values() if name is not None)
     log.debug("%s and %s read, %d hours", case, series, setup.series.time.size)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
     if not found:

@@ -210,7 +210,7 @@ def page_of(
         units=units,
         briefing=briefing(line, bearing, freezing, Spans(line, spread)),
         section_heading=section_heading(line, followed),
-        section=section(line, followed, bearing, freezing, units),
+        section=section(line, followed, bearing, freezing, units, blocked_ends=Spans(line, spread).of("blocked_top")),
         reading=reading(line, units),
         journey=journey(line, followed),
         path=path(line, followed, units),

@@ -113,7 +113,13 @@ class SectionDrawing:
 
 
 def section(
-    crossing: Crossing, trace: Trace, bearing: float, freezing_level: float, units: Units
+    crossing: Crossing,
+    trace: Trace,
+    bearing: float,
+    freezing_level: float,
+    units: Units,
+    *,
+    blocked_ends: tuple[float, float] | None = None,
 ) -> Figure[SectionDrawing]:
     """The section through the range, with the wind along the ground under it.
 
@@ -127,13 +133,17 @@ def section(
     freezing_level : float [m]
         Of the incoming air, above sea level.
     units : 'metric' or 'us'
+    blocked_ends : (float, float), optional [m above sea level]
+        Range of the top of the blocked air by members.
 
     Returns
     -------
     Figure of SectionDrawing
     """
     forms = (_forms(crossing, layout) for layout in (WIDE, NARROW))
-    (wide, *wide_panels), (narrow, *narrow_panels) = ((view(crossing, trace, units, f[0]), *f[1:]) for f in forms)
+    (wide, *wide_panels), (narrow, *narrow_panels) = (
+        (view(crossing, trace, units, form[0], blocked_ends), *form[1:]) for form in forms
+    )
     return Figure(
         key="section",
         drawing=_drawing(wide, bearing, freezing_level, *wide_panels),
