@@ -1,4 +1,4 @@
-"""Runs the commands of the pages for the three readers, and renews what they print and draw.
+"""Runs the commands of the pages for the three readers and of the README, and renews what they print and draw.
 
 Each page (`forecaster.md`, `fire_analyst.md`, `hydrologist.md`) has blocks marked `<!-- tour -->`: a command, and what
 it prints. This script runs all of them in one empty folder beside a copy of `demo_terrain`, writes the output back into
@@ -22,6 +22,7 @@ import shutil
 import sys
 import tempfile
 import xml.etree.ElementTree as ET
+from itertools import zip_longest
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -42,6 +43,7 @@ FIGURES = {
     "rain_line": ("storm/varn_moist.html", "rain-line"),
 }
 TOUR = re.compile(r"(?<=<!-- tour -->\n```console\n)\$ orolift ([^\n]*)\n(.*?)(?=^```$)", re.MULTILINE | re.DOTALL)
+NUMBER = re.compile(r"[+−-]?\d+(?:\.\d+)?")
 MANY = ("cross", "hours", "bearings", "compare")  # commands that may use several processes
 
 
@@ -84,8 +86,46 @@ def outputs(folder: Path) -> dict[str, str]:
 
 
 def renewed(text: str, found: dict[str, str]) -> str:
-    """A page with the output of now."""
-    return TOUR.sub(lambda step: f"$ orolift {step[1]}\n{found[step[1]]}", text)
+    """A page with the output of now, and with the numbers that its text quotes from there."""
+    moved = {}
+    for command, shown in TOUR.findall(text):
+        for quoted in quoted_numbers(text):
+            now = counterpart(quoted, shown, found[command])
+            if now is not None:
+                moved.setdefault(quoted, now)
+    new = TOUR.sub(lambda step: f"$ orolift {step[1]}\n{found[step[1]]}", text)
+    return re.sub(r"`([^`\n]*)`", lambda span: f"`{moved.get(span[1], span[1])}`", new)
+
+
+def counterpart(quoted: str, before: str, now: str) -> str | None:
+    """What stands now where a quotation stood, when nothing but numbers has changed in its line."""
+    for old, new in zip(before.splitlines(), now.splitlines(), strict=False):
+        at = re.search(whole(quoted), old)
+        if at is not None and NUMBER.sub("#", old) == NUMBER.sub("#", new):
+            first, last = (len(NUMBER.findall(old[:end])) for end in at.span())
+            fresh = NUMBER.findall(new)[first:last]
+            return "".join(part for pair in zip_longest(NUMBER.split(quoted), fresh, fillvalue="") for part in pair)
+    return None
+
+
+def whole(quoted: str) -> str:
+    """Pattern of a quotation whose first and last numbers are whole ones."""
+    return rf"(?<![\d.]){re.escape(quoted)}(?!\d|\.\d)"
+
+
+def renewed_readme(text: str, folder: Path) -> str:
+    """The README with the output of now: its tour, but for the slip of the pen at its end, and its Python lines."""
+    with working_folder(folder):
+        for command, shown in TOUR.findall(text)[:-1]:
+            printed = io.StringIO()
+            with contextlib.redirect_stdout(printed):
+                exit_code(shlex.split(command))
+            text = text.replace(f"$ orolift {command}\n{shown}", f"$ orolift {command}\n{printed.getvalue()}")
+    lines, shown = re.findall(r"(?ms)^```python\n(.*?)^```\n\n```text\n(.*?)^```$", text)[0]
+    printed = io.StringIO()
+    with contextlib.redirect_stdout(printed):
+        exec(compile(lines, "README.md", "exec"), {})  # noqa: S102 (our own page)
+    return text.replace(f"```text\n{shown}```", f"```text\n{printed.getvalue()}```")
 
 
 def readable(page: Path) -> str:
@@ -106,7 +146,7 @@ def loose_numbers(text: str, found: dict[str, str], folder: Path) -> list[str]:
     for page in re.findall(r"(?:Report|Index): (\S+\.html)", shown):
         shown += " " + readable(folder / page)
     spaced = re.sub(r"\s+([,.;:)])", r"\1", shown)
-    return [one for one in quoted_numbers(text) if not re.search(rf"(?<![\d.]){re.escape(one)}(?![\d]|\.\d)", spaced)]
+    return [one for one in quoted_numbers(text) if not re.search(whole(one), spaced)]
 
 
 def figure(page: Path, name: str) -> str:
@@ -157,6 +197,8 @@ def main() -> None:
         found = outputs(folder)
         pages = {name: renewed(text_of(name), found) for name in PAGES}
         files = {HERE / f"{name}.md": text.encode() for name, text in pages.items()}
+        readme = HERE.parent / "README.md"
+        files[readme] = renewed_readme(readme.read_text(encoding="utf-8"), folder / "readme").encode()
         (HERE / "readers").mkdir(exist_ok=True)
         for name, (report, inside) in FIGURES.items():
             files[HERE / "readers" / f"{name}.svg"] = figure(folder / report, inside).encode()

@@ -161,7 +161,8 @@ def _contents(spread: Spread) -> Words:
     """What a range holds."""
     text = (
         f"A range in brackets holds the middle eight tenths of {spread.members} crossings, each with its own draw of "
-        "every input from what that may be. To temperature, humidity and wind at the sites the error of the method is "
+        "every input from what that may be, and is widened to the answer where that lies outside. To temperature, "
+        "humidity and wind at the sites the error of the method is "
         "added. For rain, cloud and heights no such error is known yet: their ranges are those of the inputs alone, "
         "and too narrow."
     )

@@ -78,7 +78,7 @@ def ranged(amount: Amount, ends: Ends | None, *, bare: bool = False) -> Words:
     amount : Amount
         Its digits are the most that are shown.
     ends : (float, float) or None
-        In SI; None leaves the amount alone.
+        In SI, widened to hold the amount; None leaves the amount alone.
     bare : bool
         Whether the unit of the amount, too, is left out.
 
@@ -93,6 +93,8 @@ def ranged(amount: Amount, ends: Ends | None, *, bare: bool = False) -> Words:
     """
     if ends is None:
         return (Amount(amount.value, amount.kind, amount.digits, bare),)
+    # where the answer is the lowest or highest of several methods, eight tenths of the members may lie beside it
+    ends = min(ends[0], amount.value), max(ends[1], amount.value)
     digits = digits_for(amount, ends)
     low, high = (Amount(value, amount.kind, digits, bare=True) for value in ends)
     if round(_number(low), digits) == round(_number(high), digits):

@@ -1,6 +1,6 @@
 """Reading soundings: time after imports, memory against the size of the file, and a cold check.
 
-Run with: python -m pytest -m speed tests/benchmarks/test_speed_sources.py -s
+Run with: python -m pytest -n 0 -m speed tests/benchmarks/test_speed_sources.py -s
 """
 
 import subprocess

@@ -91,7 +91,9 @@ def _names(view: View, layout: Layout, x: Array, rate: Array) -> tuple[Label, ..
     if rain.peak_distance is not None:
         words = f"peak {quantity(rain.peak_rate, 'rain_rate', 1, units)}"
         at = place(view.across, rain.peak_distance)
-        ends: tuple[tuple[float, Anchor], ...] = ((-10.0, "end"), (10.0, "start"), (0.0, "middle"))
+        ends: tuple[tuple[float, Anchor], ...] = tuple(
+            spot for away in (10.0, 40.0, 80.0, 130.0) for spot in ((-away, "end"), (away, "start"))
+        )
         groups.append([spot for shift, anchor in ends for spot in down(words, at + shift, anchor, "name dew")])
     out: tuple[Label, ...] = ()
     for group in groups:
