@@ -95,7 +95,8 @@ def command(
     from orolift.sources.files import csv_text, write_all
 
     page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
-    refuse_files({"report": str(page), "results": results, "table": table}, (*cases, observed))
+    more = [str(asked[name]) for name in ("series", "lee_sounding") if asked[name]]
+    refuse_files({"report": str(page), "results": results, "table": table}, (*cases, observed, *more))
     found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
     title = inputs[0].case.title or inputs[0].path.stem
     data = compare_page(

@@ -56,7 +56,7 @@ def command(
 
     SERIES is a CSV table of station values or of sounding files, each row with its time, or NetCDF with times.
     """
-    from orolift.sources.files import write_all
+    from orolift.sources.files import refuse_over_read, write_all
     from orolift.sources.hours_case import read_hours
     from orolift.spread.timeline import hours_of
 
@@ -67,6 +67,7 @@ def command(
 
         refuse_without_netcdf("--netcdf")
     setup = read_hours(case, series)
+    refuse_over_read(name for name in files.values() if name is not None)
     log.debug("%s and %s read, %d hours", case, series, setup.series.time.size)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
     if not found:

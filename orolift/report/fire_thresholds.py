@@ -135,6 +135,8 @@ def headline(found: tuple[SiteFire, ...]) -> Headline:
             return Headline(f"{what} met at {where}{how}", names)
     if all(one.status == ORDER[3] for _, one in judged):
         return Headline("No threshold can be judged", ())
+    if any(one.status == ORDER[3] for _, one in judged):
+        return Headline("No threshold is met where it can be judged", ())
     return Headline("No threshold is met", ())
 
 

@@ -221,7 +221,7 @@ def page_of(
         rain_over_map=None if mapped is None else rain_over_map(mapped, units),
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
-        sites=sites(crossing, Spans(crossing, spread)),
+        sites=sites(crossing, Spans(crossing, spread), fire),
         sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
         how_sure=sure,
         influences=influences_figure(sure),

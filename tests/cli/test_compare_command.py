@@ -192,6 +192,12 @@ REFUSED = [
     ),
     (["2026-11-03T12:00Z,Lower Tarn,15"], ["--event", "gust_c > 3"], "--event 'gust_c > 3'"),
     (["2026-11-03T12:00Z,Lower Tarn,15"], ["--onset-sector", "north"], "write two directions of 0 to 360 degrees"),
+    (["2026-11-03T12:00Z,Lower Tarn,15"], ["--table", "obs.csv"], "--table: obs.csv is read by this command"),
+    (
+        ["2026-11-03T12:00Z,Lower Tarn,15"],
+        ["--table", "a.x", "--results", "a.x"],
+        "--results and --table both name a.x",
+    ),
     (["2026-11-03T12:00Z,Lower Tarn,15"], ["--lee-sounding", "none.csv"], "none.csv cannot be found"),
     (
         ["2026-11-03T12:00Z,Lower Tarn,15"],

@@ -113,10 +113,10 @@ def test_members_without_air_do_not_count(crossing, settings):
 
 
 def test_members_without_wind_are_not_judged_by_it(crossing, settings):
-    """In a pool the wind is not known: that member counts for dryness alone."""
+    """In a pool the wind is not known: that member counts for dryness alone, and half such members leave no chance."""
     site = fire_at_sites(crossing, When(), settings)[0]
     given = members(crossing.lee[0], 2)
     given["wind_10m"][1], given["gust"][1] = np.nan, np.nan
     judged = with_members(site, given, settings, 0.03).thresholds[0].judged
-    assert judged.chance == 0.0
+    assert judged.chance is None
     assert [one.chance for one in judged.conditions] == [0.0, 1.0]

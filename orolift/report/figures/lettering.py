@@ -260,6 +260,8 @@ def on_the_way(view: View, board: Board) -> Lettered:
 def freezing_marks(view: View, lines: tuple[Line, ...], level: float, board: Board) -> Lettered:
     """Name of the freezing level: at its line, else where it is."""
     ice = "0 °C" if view.units == "metric" else "32 °F"
+    if not lines and level <= view.crossing.incoming.height[0]:
+        return (), (), board  # all of the air is below freezing: no height to name
     if not lines:
         height = quantity(level, "height", -1, view.units)
         above = ", above this picture" if level >= view.up.high else ""
