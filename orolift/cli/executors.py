@@ -6,16 +6,17 @@ import logging
 import os
 import signal
 import sys
+import threading
 from contextlib import contextmanager
-from typing import TYPE_CHECKING, Protocol
+from typing import TYPE_CHECKING, Any, Protocol
 
 import click
 
 from orolift.errors import MissingExtraError, WorkersError
 
 if TYPE_CHECKING:
-    from collections.abc import Iterator
-    from concurrent.futures import Executor
+    from collections.abc import Callable, Iterator
+    from concurrent.futures import Executor, Future
 
 THREADS = ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS", "VECLIB_MAXIMUM_THREADS")
 """What the libraries of linear algebra read: one thread in each process, for there is a process on each core."""
@@ -81,13 +82,22 @@ def _processes(count: int) -> Iterator[Executor]:
     import multiprocessing
     from concurrent.futures import ProcessPoolExecutor
 
+    class Pool(ProcessPoolExecutor):
+        """Processes that are started whole or not at all: one started half would look for us when we have gone."""
+
+        def submit(self, fn: Callable[..., Any], /, *args: Any, **kwargs: Any) -> Future[Any]:
+            with _interrupt_held():
+                return super().submit(fn, *args, **kwargs)
+
     method = "forkserver" if "forkserver" in multiprocessing.get_all_start_methods() else "spawn"
     context = multiprocessing.get_context(method)
     if method == "forkserver":
         context.set_forkserver_preload(PRELOADED)
     before = {name: os.environ.get(name) for name in THREADS}
     os.environ.update(dict.fromkeys(THREADS, "1"))
-    executor = ProcessPoolExecutor(count, mp_context=context, initializer=worker)
+    if method == "forkserver":
+        _start_server()
+    executor = Pool(count, mp_context=context, initializer=worker)
     try:
         yield executor
     finally:
@@ -97,6 +107,42 @@ def _processes(count: int) -> Iterator[Executor]:
                 del os.environ[name]
             else:
                 os.environ[name] = value
+
+
+def _start_server() -> None:
+    """Start the process that starts the workers, deaf to Ctrl-C from its first moment, and they with it.
+
+    A terminal sends Ctrl-C to all of them; one that is still loading would end with a traceback, and we would wait
+    for it without end.
+    """
+    from multiprocessing import forkserver, resource_tracker
+
+    resource_tracker.ensure_running()  # starting it lifts the block
+    with _interrupt_held():
+        before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})  # which it inherits, and the workers from it
+        try:
+            forkserver.ensure_running()
+        finally:
+            signal.pthread_sigmask(signal.SIG_SETMASK, before)
+
+
+@contextmanager
+def _interrupt_held() -> Iterator[None]:
+    """Ctrl-C within the block is heard at its end.
+
+    By a handler: a signal that one thread blocks goes to another, those of linear algebra among them.
+    """
+    if threading.current_thread() is not threading.main_thread():
+        yield  # Ctrl-C is heard in the main thread alone
+        return
+    heard: list[int] = []
+    before = signal.signal(signal.SIGINT, lambda number, _frame: heard.append(number))
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGINT, before)
+    if heard:
+        raise KeyboardInterrupt
 
 
 def worker() -> None:

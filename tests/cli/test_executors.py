@@ -37,6 +37,31 @@ def test_processes_take_one_thread_and_leave_ctrl_c_to_the_command():
     assert dict(os.environ) == before
 
 
+def test_processes_are_deaf_to_ctrl_c_while_they_load():
+    """They inherit the block: one that a terminal's Ctrl-C ended while loading left the command waiting for ever."""
+    with executor_of(2) as executor:
+        blocked = executor.submit(signal.pthread_sigmask, signal.SIG_BLOCK, []).result()
+    assert signal.SIGINT in blocked
+    assert signal.SIGINT not in signal.pthread_sigmask(signal.SIG_BLOCK, [])
+
+
+def test_ctrl_c_waits_until_a_process_is_started(monkeypatch):
+    """A task is handed out whole; then the command hears of it."""
+    from concurrent.futures import ProcessPoolExecutor
+
+    handed = []
+
+    def interrupted(*_arguments):
+        os.kill(os.getpid(), signal.SIGINT)
+        time.sleep(0.01)
+        handed.append(1)
+
+    monkeypatch.setattr(ProcessPoolExecutor, "submit", interrupted)
+    with executor_of(2) as executor, pytest.raises(KeyboardInterrupt):
+        executor.submit(abs, 3)
+    assert handed == [1]
+
+
 def test_a_lost_process_is_one_error(capfd):
     """One that the system ended stops the run with a sentence, and what was finished is kept."""
     with executor_of(2) as executor:
