@@ -9,14 +9,21 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
+from orolift.cli.options import (
+    JOBS_OPTION,
+    QUIET_OPTION,
+    UNITS_OPTION,
+    VERBOSE_OPTION,
+    file_option,
+    refuse_files,
+)
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
-@click.argument("cases", nargs=-1, required=True, metavar="CASE...")
+@click.argument("cases", nargs=-1, metavar="CASE...")
 @click.argument("observed", metavar="OBSERVED.csv")
 @file_option("--report", "Report to write; default CASE-compared.html in the current folder.")
 @file_option("--results", "Results to write as JSON.")
@@ -93,10 +100,17 @@ def command(
     from orolift.cli.comparing import Asked, compared_of
     from orolift.report.compare import compare_page
     from orolift.report.render import render_compare
-    from orolift.sources.files import csv_text, write_all
+    from orolift.sources.files import csv_text, existing_file, write_all
 
-    found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
+    if not cases:  # the one file given is taken for the last argument
+        missing = "CASE..." if observed.lower().endswith(".csv") else "OBSERVED.csv"
+        raise click.MissingParameter(ctx=click.get_current_context(), param_type="argument", param_hint=f"'{missing}'")
     page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
+    refuse_files({"report": str(page), "results": results, "table": table})
+    for option in ("series", "lee_sounding"):  # the sounding is opened last: what is wrong with it is said first
+        if isinstance(name := asked[option], str):
+            existing_file(name, f"--{option.replace('_', '-')}")
+    found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
     title = inputs[0].case.title or inputs[0].path.stem
     data = compare_page(
         found, title=title, observed=Path(observed).name, made_at=_made_at(), version=__version__, units=units

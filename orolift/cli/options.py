@@ -57,7 +57,7 @@ def file_option(name: str, text: str) -> Callable[[Any], Any]:
 
 
 def refuse_files(files: Mapping[str, str | None]) -> None:
-    """Refuse files that could not be written or are asked for twice, before long work is done.
+    """Refuse files that could not be written, are asked for twice or are read by this run, before long work is done.
 
     Parameters
     ----------
@@ -73,6 +73,7 @@ def refuse_files(files: Mapping[str, str | None]) -> None:
 
     from orolift.errors import CaseError
     from orolift.sources.files import refuse_unwritable
+    from orolift.sources.read_files import to_be_written
 
     seen: dict[Path, str] = {}
     for option, name in files.items():
@@ -83,3 +84,4 @@ def refuse_files(files: Mapping[str, str | None]) -> None:
             raise CaseError(f"--{seen[path]} and --{option} both name {name}. Give each its own file.")
         seen[path] = option
         refuse_unwritable(Path(name))
+    to_be_written({path: f"--{option}" for path, option in seen.items()})

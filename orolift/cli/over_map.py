@@ -79,8 +79,6 @@ def refuse_what_cannot_be(wanted: RainFiles, inputs: Inputs) -> None:
         possible, what = lacks[option]
         if not possible:
             raise CaseError(f"{path}: {option} cannot be written: the case has no {what}.")
-    if wanted.lee_map is not None and not Path(wanted.lee_map).is_dir():  # it takes a minute: say so before
-        raise CaseError(f"--lee-map {wanted.lee_map} is not a folder. Make it first.")
 
 
 def map_inputs_of(inputs: Inputs, *, needed: bool = False) -> tuple[MapInputs | None, tuple[str, ...]]:

@@ -11,6 +11,7 @@ from pathlib import Path
 from typing import TYPE_CHECKING
 
 from orolift.errors import DataFileError, MissingFileError
+from orolift.sources.read_files import note_read, refuse_over_inputs
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping, Sequence
@@ -72,6 +73,8 @@ def existing_file(path: str | Path, where: str, folder: Path | None = None) -> P
         If it is an address, a folder or empty.
     MissingFileError
         If nothing is there or it may not be read.
+    CaseError
+        If this run is going to write it (`orolift.sources.read_files`).
     """
     refuse_address(path, where)
     full = Path(path) if folder is None else folder / path
@@ -84,6 +87,7 @@ def existing_file(path: str | Path, where: str, folder: Path | None = None) -> P
         raise MissingFileError(f"{where}: {full} cannot be found ({_reason(error)}). {hint}") from error
     if size == 0:
         raise DataFileError(f"{where}: {full} is empty.")
+    note_read(full, where)
     return full
 
 
@@ -168,7 +172,10 @@ def write_all(contents: Mapping[Path, bytes]) -> None:
     ------
     MissingFileError
         If a folder is missing, a name is taken by a folder, or the disk is full.
+    CaseError
+        If this run has read one of them (`orolift.sources.read_files`).
     """
+    refuse_over_inputs(dict.fromkeys(contents, "output"))
     waiting: list[tuple[str, Path]] = []
     try:
         for path, data in contents.items():

@@ -175,6 +175,26 @@ def test_faults_are_said_before_anything_is_worked_out(arguments, message, serie
     assert sorted(series_folder.iterdir()) == before
 
 
+@pytest.mark.parametrize(
+    ("arguments", "lost"),
+    [
+        (["hours", "case.toml", "series.csv", "--table", "series.csv"], "series.csv"),
+        (["hours", "case.toml", "series.csv", "--results", "case.toml"], "case.toml"),
+        (["hours", "case.toml", "series.csv", "--netcdf", "./series.csv"], "series.csv"),
+        (["bearings", "case.toml", "--table", "case.toml"], "case.toml"),
+        (["compare", "case.toml", "series.csv", "--table", "series.csv"], "series.csv"),
+        (["compare", "case.toml", "series.csv", "--lee-sounding", "sounding.csv", "--table", "sounding.csv"], "sounding"),
+    ],
+)
+def test_no_output_takes_the_place_of_an_input(series_folder, capsys, arguments, lost):
+    before = {path.name: path.read_bytes() for path in series_folder.iterdir()}
+    assert exit_code([*arguments, "--quiet"]) == 2
+    said = capsys.readouterr().err
+    assert lost in said
+    assert "is an input of this run" in said
+    assert {path.name: path.read_bytes() for path in series_folder.iterdir()} == before
+
+
 def test_bearings_write_all_their_files(case_folder, capsys):
     """Four directions of a ridge that runs from northwest to southeast: two along it do not cross."""
     (case_folder / "case.toml").write_text((case_folder / "case.toml").read_text().replace("= 235", "= 270"))

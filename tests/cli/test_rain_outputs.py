@@ -51,7 +51,7 @@ def rows_of(file):
 
 def test_every_file_and_that_they_agree(varn, capsys):
     """Maps, catchments, gauges, sites and results of one run say the same numbers."""
-    arguments = ["cross", varn(), "--results", "r.json", "--maps", ".", "--catchments", "c.csv", "--gauges", "g.csv"]
+    arguments = ["cross", varn(), "--results", "r.json", "--maps", "maps", "--catchments", "c.csv", "--gauges", "g.csv"]
     assert exit_code([*arguments, "--geojson", "s.geojson"]) == 0, capsys.readouterr().err
     results = json.loads(Path("r.json").read_text())
     over = results["rain"]["map"]
@@ -59,7 +59,7 @@ def test_every_file_and_that_they_agree(varn, capsys):
     assert 0.0 < over["windward_share"] < 1.0
     assert over["drying_ratio"] > 0.0
     assert over["on_line"]["difference"]
-    with rasterio.open("case_rain_total.tif") as total, rasterio.open("case_rain_rate.tif") as rate:
+    with rasterio.open("maps/case_rain_total.tif") as total, rasterio.open("maps/case_rain_rate.tif") as rate:
         assert total.crs.to_epsg() == 32710
         assert (rate.nodata, rate.units, total.units) == (-9999.0, ("mm h-1",), ("mm",))
         assert total.tags()["duration_h"] == "6"
@@ -69,7 +69,7 @@ def test_every_file_and_that_they_agree(varn, capsys):
         assert fell.max() == pytest.approx(6.0 * over["peak_mm_per_h"], rel=1e-6)
         cell = abs(total.transform.a * total.transform.e)
         assert float(fell.sum()) * cell / 1000.0 == pytest.approx(over["volume_m3"], rel=1e-5)
-    with rasterio.open("case_rain_and_snow.tif") as parts:
+    with rasterio.open("maps/case_rain_and_snow.tif") as parts:
         assert parts.count == 3
     rows = rows_of("c.csv")
     assert [row["name"] for row in rows] == ["Kell", "Upper Tarn", "Sarn"]
