@@ -130,6 +130,7 @@ def entry(worked: Worked, report: Path, files: Iterable[Path]) -> Entry:
         valid_time=case.valid_time,
         report=report.name,
         files={_said(path, stem): path.name for path in files},
+        spread=worked.spread,
     )
 
 

@@ -66,7 +66,7 @@ class Outputs:
         self._take(path, what)
         if Path(path).parent not in self._folders:
             refuse_unwritable(Path(path))
-        to_be_written({path: what})
+        to_be_written({Path(path): what})
         self._planned.add(place_of(path))
 
     def plan_folder(self, folder: Path, option: str) -> None:
@@ -113,7 +113,7 @@ class Outputs:
             self._planned.remove(place)
         else:
             self._take(path, what)
-            refuse_over_inputs({path: what})
+            refuse_over_inputs({Path(path): what})
         self.contents[Path(path)] = content
 
     def write(self) -> None:

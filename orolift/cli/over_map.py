@@ -196,7 +196,28 @@ def map_findings(inputs: Inputs) -> list[str]:
     if found.gauges is not None:
         lines += [f"Gauges: {', '.join(found.gauges.name)}."]
         lines += [f"Assumed: {text}" for text in found.gauges.notes]
+    lines += [f"Doubtful: {text}" for text in _off_the_map(found)]
     return lines + [f"Assumed: {text}" for text in found.notes]
+
+
+def _off_the_map(found: MapInputs) -> list[str]:
+    """Gauges and catchments that the report leaves out, wholly or in part, as it will say it."""
+    import numpy as np
+
+    from orolift.rain.catchments import catchment_rain
+    from orolift.rain.gauges import rain_at
+
+    grid, gauges = found.placed.grid, found.gauges
+    nothing = np.where(np.isfinite(grid.elevation), 0.0, np.nan)  # where the map will have values
+    out = []
+    if gauges is not None:
+        known = np.isfinite(rain_at(grid, nothing, gauges.x, gauges.y))
+        off = [name for name, on_map in zip(gauges.name, known, strict=True) if not on_map]
+        out += [f"Gauges not on the map and left out: {', '.join(off)}."] if off else []
+    for one in found.catchments:
+        notes = catchment_rain(one.polygon, grid, nothing, found.duration).notes
+        out += [f"Catchment {one.name}: {note}" for note in notes]
+    return out
 
 
 def rain_files(

@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 from orolift.report.quantities import Amount
 from orolift.report.spans import Spans, ranged
+from orolift.report.story import ROUNDING
 from orolift.report.words import moment, plain
 
 if TYPE_CHECKING:
@@ -116,14 +117,18 @@ def _rain(spans: Spans, said: Said) -> str:
 
 def _site(spans: Spans, site: LeeAir, said: Said) -> str:
     change = said(site.warming, "temperature_change", 1, spans.at(site, "warming"))
-    source = (
-        "in the cold pool"
-        if site.source_level is None
-        else f"from {said(site.source_level, 'height', -1, spans.at(site, 'source_level'))}"
-    )
+    source = "in the cold pool" if site.source_level is None else _from(site, site.source_level, said)
     return (
         f"{site.name[:24]} ({site.side})  {said(site.temperature, 'temperature', 1, spans.temperature(site))}, "
         f"dew point {said(site.dew_point, 'temperature', 1, spans.dew_point(site))}, "
         f"{said(site.relative_humidity, 'share', 0, spans.at(site, 'relative_humidity'))}; "
         f"{change}; air {source}"
     )
+
+
+def _from(site: LeeAir, level: float, said: Said) -> str:
+    """Where the air came from, as on the page: half of it from below a height, eight tenths between two others."""
+    low, high = site.source_level_low, site.source_level_high
+    if low is None or high is None or high - low < ROUNDING:
+        return f"from {said(level, 'height', -1)}"
+    return f"from {said(level, 'height', -1, (low, high))}: eight tenths of the air"

@@ -234,7 +234,7 @@ def page_of(
         column=column(line, stagnant_top, units),
         findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),
         method=method(),
-        cautions=cautions(few, valid_time),
+        cautions=cautions(few, valid_time, spread),
     )
 
 

@@ -183,7 +183,10 @@ def test_faults_are_said_before_anything_is_worked_out(arguments, message, serie
         (["hours", "case.toml", "series.csv", "--netcdf", "./series.csv"], "series.csv"),
         (["bearings", "case.toml", "--table", "case.toml"], "case.toml"),
         (["compare", "case.toml", "series.csv", "--table", "series.csv"], "series.csv"),
-        (["compare", "case.toml", "series.csv", "--lee-sounding", "sounding.csv", "--table", "sounding.csv"], "sounding"),
+        (
+            ["compare", "case.toml", "series.csv", "--lee-sounding", "sounding.csv", "--table", "sounding.csv"],
+            "sounding",
+        ),
     ],
 )
 def test_no_output_takes_the_place_of_an_input(series_folder, capsys, arguments, lost):

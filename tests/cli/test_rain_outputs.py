@@ -128,6 +128,21 @@ def test_snow_cover_makes_a_flag(varn, capsys):
     assert flag.startswith("Rain on snow")
 
 
+def test_check_names_what_the_report_leaves_out(varn, capsys):
+    """A gauge and a catchment far off the map; the ordinary case has none."""
+    basins = json.loads(Path("basins.geojson").read_text())
+    case = varn(gauges__csv=Path("gauges.csv").read_text().rstrip() + "\nFar Hut,20.0,20.0,5.0\n")
+    ring = [[20.0, 20.0], [20.1, 20.0], [20.1, 20.1], [20.0, 20.0]]
+    away = {"type": "Polygon", "coordinates": [ring]}
+    basins["features"].append({"type": "Feature", "properties": {"name": "Far Basin"}, "geometry": away})
+    Path("basins.geojson").write_text(json.dumps(basins))
+    assert exit_code(["check", case]) == 0
+    said = capsys.readouterr().out
+    assert "Doubtful: Gauges not on the map and left out: Far Hut." in said
+    assert "Doubtful: Catchment Far Basin: It lies outside the map" in said
+    assert said.count("Doubtful: ") == 2
+
+
 def test_check_reads_catchments_and_gauges(varn, capsys):
     """`check` names what was read for the map, and computes nothing."""
     assert exit_code(["check", varn()]) == 0

@@ -1,5 +1,6 @@
 """Ranges as the user of `orolift cross` meets them: page, terminal, results; many members on workers."""
 
+import csv
 import json
 import re
 from pathlib import Path
@@ -40,9 +41,30 @@ def test_every_range_holds_eight_tenths(results, capsys):
     assert len(shown.splitlines()) <= 10
     assert f"({low:.1f} to {high:.1f})" in shown
     assert "10 to 90 % of 16 members" in shown
+    low_air, high_air = site["source_level_range_m"]
+    assert f"air from {site['source_level_m']:.0f}"[:-1] in shown
+    assert high_air - low_air < 10.0 or f"{high_air:.0f}"[:-1] + "0): eight tenths of the air" in shown.replace(
+        " ", " "
+    )
     page = Path("case.html").read_text()
     assert 'id="how-sure"' in page
+    assert "The case has no members" not in page
+    assert "and the range that uncertain input" not in page
     assert f">{low:.1f}</data> to <data" in page
+
+
+def test_the_table_has_single_values_only(results):
+    """Ranges and chances stand in columns of their own, with the numbers of the results."""
+    site = results("members = 10", "--table", "t.csv")["lee"][0]
+    with Path("t.csv").open() as stream:
+        row = next(csv.DictReader(stream))
+    assert not [key for key, value in row.items() if "{" in value or "[" in value or "." in key]
+    for key, column in (("temperature_c", "temperature_c"), ("warming_parts_c.descent", "warming_by_descent_c")):
+        for block, more in (("range", ""), ("input_range", "_inputs")):
+            ends = [float(row[f"{column}{more}_{end}"]) for end in ("low", "high")]
+            assert ends == site[block][key]
+    assert float(row["chance_rain"]) == site["chance"]["rain"]
+    assert [float(row[f"source_level_m_{end}"]) for end in ("low", "high")] == site["source_level_range_m"]
 
 
 def test_no_members_no_ranges(results, capsys):
@@ -53,6 +75,16 @@ def test_no_members_no_ranges(results, capsys):
     assert found["lee"][0]["input_range"] == {}
     assert set(found["lee"][0]["range"]) == {"wind_ms", "gust_ms"}
     assert "members" not in capsys.readouterr().out
+    assert "The case has no members: the range of temperatures" in Path("case.html").read_text()
+
+
+def test_the_index_has_the_ranges_of_the_report(edited):
+    """Temperature, and what else carries a range in both."""
+    assert exit_code(["cross", edited(), "--quiet", "--folder", "out"]) == 0
+    low, high = json.loads(Path("out/case.json").read_text())["lee"][0]["range"]["temperature_c"]
+    for name in ("case.html", "index.html"):
+        words = re.sub(r"<[^>]+>", "", Path("out", name).read_text())
+        assert f"({low:.1f} to {high:.1f})" in words
 
 
 def test_workers_change_nothing(results, monkeypatch):
