@@ -83,7 +83,7 @@ def command(
     )
     write_all(contents_of(hours, setup, units, files))
     if not quiet:
-        click.echo("\n".join([*summary_of(hours, setup), f"Report: {files['report']}"]))
+        click.echo("\n".join([*summary_of(hours, setup, units), f"Report: {files['report']}"]))
     if stopped:
         raise click.Abort(
             f"interrupted after {hours.time.size} of {hours.planned} hours; what was finished is written."
@@ -166,17 +166,18 @@ def time_stamp() -> datetime:
     return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
 
 
-def summary_of(hours: Hours, setup: HourSetup) -> list[str]:
-    """What happened, a line a site, at most ten lines."""
-    from orolift.report.hours_page import stamp
+def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[str]:
+    """What happened, a line a site and one for the thresholds met at it, for at most five sites."""
+    from orolift.report.hours_page import about, dangers
+    from orolift.report.words import plain
 
     zone = setup.series.zone
     lines = [setup.inputs.case.title or setup.inputs.path.stem]
     lines += [f"Note      {text}" for text in setup.series.notes[:2]]
     for site in hours.sites[:5]:
         spells = [
-            f"{'the start' if one.onset is None else stamp(one.onset, zone)} to "
-            f"{'the end' if one.end is None else stamp(one.end, zone)}"
+            f"{'the start' if one.onset is None else about(one.onset, one.onset_error or 0.0, zone)} to "
+            f"{'the end' if one.end is None else about(one.end, one.end_error or 0.0, zone)}"
             for one in site.dry_winds[:2]
         ]
         more = f", and {len(site.dry_winds) - 2} more" if len(site.dry_winds) > 2 else ""
@@ -185,6 +186,8 @@ def summary_of(hours: Hours, setup: HourSetup) -> list[str]:
             f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; "
             f"{site.rain:.0f} mm of rain and snow"
         )
+        met = " ".join(plain(words, units) for words in dangers(site, zone)).replace("\u00a0", " ")
+        lines += [f"Fire      {met} A threshold met is not a warning."] if met else []
     if len(hours.sites) > 5:
         lines.append(f"          and {len(hours.sites) - 5} more sites: see the report or --table")
     return lines

@@ -131,4 +131,5 @@ def _from(site: LeeAir, level: float, said: Said) -> str:
     low, high = site.source_level_low, site.source_level_high
     if low is None or high is None or high - low < ROUNDING:
         return f"from {said(level, 'height', -1)}"
-    return f"from {said(level, 'height', -1, (low, high))}: eight tenths of the air"
+    first, last = (said(end, "height", -1) for end in (low, high))
+    return f"from {said(level, 'height', -1)} (eight tenths of it {first.split()[0]} to {last.split()[0]})"

@@ -11,7 +11,7 @@ from orolift.air.column import interpolated, vapour_flux, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio
 from orolift.crossing.facts import clouds, crest_line_notes, flow_facts, remarks, water
 from orolift.crossing.march import March
-from orolift.crossing.pool import Lee
+from orolift.crossing.pool import Lee, humidity_note
 from orolift.crossing.rainfall import rainfall
 from orolift.crossing.result import Crossing, Site, When
 from orolift.crossing.settings import Settings, checked
@@ -153,7 +153,12 @@ def cross(
             )
             for number, site in enumerate(sites, start=1)
         ),
-        notes=(*incoming.notes, *transect.notes, *crest_line_notes(ground, flow.blocked_top)),
+        notes=(
+            *incoming.notes,
+            *transect.notes,
+            *crest_line_notes(ground, flow.blocked_top),
+            *humidity_note(lee, solution.pools[0]),
+        ),
         cautions=remarks(ground, solution, flow),
     )
 

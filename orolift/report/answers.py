@@ -191,11 +191,7 @@ def _ends(crossing: Crossing, site: LeeAir) -> list[Words]:
         return []
     least, most = ends
     if abs(least.temperature - most.temperature) < SAME:
-        return [
-            (
-                "No layer is stopped, so that no blocking and full blocking give the same: blocking decides nothing here.",
-            )
-        ]
+        return [("No layer is stopped, so that no blocking and full blocking give the same: it decides nothing here.",)]
     return [
         (
             f"What blocking may do at {site.name}: ",
