@@ -92,6 +92,8 @@ class SiteState:
         Where that is; None for a hand-entered ridge.
     crest_wind : float or None [m s-1]
         Component across the range.
+    oblique : float or None [rad]
+        Angle between the wind and the direction across the range, 0 to a right angle; None where nobody asked.
     breaks_through : bool or None
     descending : bool or None
         Whether the air there is descending warm dry air; see `descending_warm_dry`.
@@ -120,6 +122,7 @@ class SiteState:
     shelter_longitude: float | None = None
     shelter_latitude: float | None = None
     crest_wind: float | None = None
+    oblique: float | None = None
     breaks_through: bool | None = None
     descending: bool | None = None
     rule_values: Mapping[str | WindMeant, float] | None = None

@@ -5,6 +5,7 @@ import base64
 import hashlib
 import json
 import re
+import sys
 from dataclasses import replace
 from html.parser import HTMLParser
 from itertools import pairwise
@@ -331,6 +332,7 @@ def test_words_stand_out_from_the_paper(light, name):
 
 def test_compiled_templates_are_kept_and_never_trusted(tmp_path, monkeypatch, page_for, crossing):
     """They are used again; spoilt ones, or a folder that cannot be written, change nothing but the time."""
+    monkeypatch.setattr(sys, "dont_write_bytecode", False)
     page = page_for(crossing)
     expected = render(page)
     for folder in (tmp_path / "kept", tmp_path / "file" / "under"):
