@@ -107,9 +107,9 @@ def command(
         raise click.MissingParameter(ctx=click.get_current_context(), param_type="argument", param_hint=f"'{missing}'")
     page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
     refuse_files({"report": str(page), "results": results, "table": table})
-    for option in ("series", "lee_sounding"):  # the sounding is opened last: what is wrong with it is said first
-        if isinstance(name := asked[option], str):
-            existing_file(name, f"--{option.replace('_', '-')}")
+    sounding = asked["lee_sounding"]
+    if isinstance(sounding, str):  # it is opened last: what is wrong with it is said first
+        existing_file(sounding, "--lee-sounding")
     found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
     title = inputs[0].case.title or inputs[0].path.stem
     data = compare_page(

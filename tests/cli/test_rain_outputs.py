@@ -239,7 +239,7 @@ def test_files_that_a_ridge_cannot_give(tmp_path, monkeypatch, capsys, option, m
     """One message for each; nothing is written."""
     monkeypatch.chdir(tmp_path)
     Path("ridge.toml").write_text(RIDGE)
-    assert exit_code(["cross", "ridge.toml", option, "."]) == 2
+    assert exit_code(["cross", "ridge.toml", option, "new"]) == 2
     said = capsys.readouterr().err
     assert re.search(message, said), said
     assert len(said.splitlines()) == 1
