@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.report.key_numbers import gusts
 from orolift.report.quantities import Amount, Kind
 from orolift.report.spans import Spans, digits_for, ranged
 from orolift.report.story import SAME, difference, first_sites, source_words, where_words
@@ -229,8 +230,8 @@ def _panel(air: LeeAir, spans: Spans) -> Panel:
         ),
     ]
     if air.wind is not None:
-        gusts = Amount(air.wind.gust_low, "wind", bare=True), " to ", Amount(air.wind.gust_high, "wind")
-        facts.append(("Wind", (Amount(air.wind.at_10m, "wind"), " at 10 m, gusts ", *gusts)))
+        blows = ranged(Amount(air.wind.at_10m, "wind"), spans.at(air, "wind_10m"))
+        facts.append(("Wind", (*blows, " at 10 m, gusts ", *gusts(spans, air.wind, air))))
     if air.source_level is not None:
         facts.append(("Comes from", source_words(air)))
     crest = crossing.features.crest if air.own is None else air.own.crest
