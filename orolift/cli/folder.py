@@ -158,7 +158,7 @@ def index_html(entries: Iterable[Entry], units: Units) -> str:
     str
     """
     from orolift import __version__
-    from orolift.cli.cross import made_now
+    from orolift.cli.outputs import made_now
     from orolift.report.index import index_of
     from orolift.report.render import render
 

@@ -79,7 +79,7 @@ def refuse_files(files: Mapping[str, str | None]) -> None:
     for option, name in files.items():
         if name is None:
             continue
-        path = Path(name).absolute()
+        path = Path(name).resolve()
         if path in seen:
             raise CaseError(f"--{seen[path]} and --{option} both name {name}. Give each its own file.")
         seen[path] = option

@@ -1,8 +1,10 @@
-"""The files a command is going to write: no two to one path, none over a case."""
+"""The files a command is going to write: no two to one path, none over a case; and the time their pages carry."""
 
 from __future__ import annotations
 
 import logging
+import os
+from datetime import UTC, datetime
 from pathlib import Path
 
 from orolift.errors import CaseError, MissingFileError
@@ -144,6 +146,12 @@ class Outputs:
         if place in self._taken:
             raise CaseError(f"{what}: {path} is already {self._taken[place]}. Nothing is written; give another name.")
         self._taken[place] = f"what {what} writes"
+
+
+def made_now() -> datetime:
+    """The time that pages carry; it honours SOURCE_DATE_EPOCH."""
+    stamp = os.environ.get("SOURCE_DATE_EPOCH")
+    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
 
 
 def refuse_together(given: list[str], cases: int, folder: str | None) -> None:

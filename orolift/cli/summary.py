@@ -6,7 +6,6 @@ from typing import TYPE_CHECKING
 
 from orolift.report.quantities import Amount
 from orolift.report.spans import Spans, ranged
-from orolift.report.story import ROUNDING
 from orolift.report.words import moment, plain
 
 if TYPE_CHECKING:
@@ -101,7 +100,7 @@ def _flow(spans: Spans, said: Said) -> str:
 
 def _rain(spans: Spans, said: Said) -> str:
     crossing, water = spans.crossing, spans.crossing.water
-    if water.condensed == 0.0:
+    if water.condensed == 0.0 or crossing.cloud.base is None:
         return "none: nothing condenses"
     windward = crossing.rain.windward_share
     side = (
@@ -117,7 +116,7 @@ def _rain(spans: Spans, said: Said) -> str:
 
 def _site(spans: Spans, site: LeeAir, said: Said) -> str:
     change = said(site.warming, "temperature_change", 1, spans.at(site, "warming"))
-    source = "in the cold pool" if site.source_level is None else _from(site, site.source_level, said)
+    source = "in the cold pool" if site.source_level is None else f"from {_source(site, said)}"
     return (
         f"{site.name[:24]} ({site.side})  {said(site.temperature, 'temperature', 1, spans.temperature(site))}, "
         f"dew point {said(site.dew_point, 'temperature', 1, spans.dew_point(site))}, "
@@ -126,10 +125,10 @@ def _site(spans: Spans, site: LeeAir, said: Said) -> str:
     )
 
 
-def _from(site: LeeAir, level: float, said: Said) -> str:
-    """Where the air came from, as on the page: half of it from below a height, eight tenths between two others."""
-    low, high = site.source_level_low, site.source_level_high
-    if low is None or high is None or high - low < ROUNDING:
-        return f"from {said(level, 'height', -1)}"
-    first, last = (said(end, "height", -1) for end in (low, high))
-    return f"from {said(level, 'height', -1)} (eight tenths of it {first.split()[0]} to {last.split()[0]})"
+def _source(site: LeeAir, said: Said) -> str:
+    """The median height the air comes from, and where the middle eight tenths of it come from, by mass."""
+    low, high = (
+        said(level or 0.0, "height", -1).split(" ") for level in (site.source_level_low, site.source_level_high)
+    )
+    median = said(site.source_level or 0.0, "height", -1)
+    return median if low == high else f"{median} (eight tenths of it from {low[0]} to {high[0]})"

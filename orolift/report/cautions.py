@@ -1,4 +1,4 @@
-"""What the reader must bear in mind: always, and in this case."""
+"""What the reader must bear in mind: always, in this form of the computation, and in this case."""
 
 from __future__ import annotations
 
@@ -20,7 +20,6 @@ if TYPE_CHECKING:
 
     from orolift.crossing.result import Crossing
     from orolift.report.words import Words
-    from orolift.spread.spread import Spread
 
 WEAK_WIND = 5.0
 """Wind across the crest below this [m s-1] gets a caution; a judgement."""
@@ -29,25 +28,24 @@ _NO_WARNING = (
     "This is an estimate for trained people, not a warning. Official warning services, fire agencies, local codes and "
     "licensed practice decide."
 )
-_DECIDES = (
+_RANGE_OF_FLOW = (
     "How much low air is blocked and how much of it goes round decides the lee temperature, and real ranges scatter "
-    "about the thresholds."
-)
-_OF_MEMBERS = (
-    "A range in brackets holds eight tenths of the members, in which blocking varies with every other input; for rain, "
-    "cloud and heights the error of the method is not in it."
-)
-_OF_BLOCKING = (
-    "The case has no members: the range of temperatures in brackets runs from no blocking to full blocking; errors of "
-    "input and method come on top and are not in it."
+    "about the thresholds. The range in brackets runs from no blocking to full blocking; errors of input and "
+    "method come on top and are not in it."
 )
 _LINEAR = (
     "Streamlines are those of linear waves: position and size of single waves and of the strongest wind are less sure "
     "than how high the air comes from."
 )
-_NOT_WORKED_OUT = "Not worked out: showers, flow along the range and through single gaps."
+_RANGE_OF_MEMBERS = (
+    "How much low air is blocked and how much of it goes round decides the lee temperature, and real ranges scatter "
+    "about the thresholds. The ranges in brackets hold the middle eight tenths of the members, that scatter among "
+    "what they differ in; for rain, cloud and heights the error of the method comes on top and is not in them."
+)
+_NOT_WORKED_OUT = "Not worked out: showers, and flow along the range and through single gaps."
+_NO_MEMBERS = "The range that uncertain input gives the numbers is not worked out: the case has no members."
 ALWAYS: tuple[Words, ...] = ((_NO_WARNING,), (_LINEAR,), (_NOT_WORKED_OUT,))
-"""Cautions of every report."""
+"""Cautions of every report in this form of the computation."""
 
 
 @dataclass(frozen=True)
@@ -70,15 +68,15 @@ class Cautions:
     notes: tuple[str, ...]
 
 
-def cautions(crossing: Crossing, valid_time: datetime | None, spread: Spread | None = None) -> Cautions:
+def cautions(crossing: Crossing, valid_time: datetime | None, *, members: bool = False) -> Cautions:
     """Cautions and notes of a crossing.
 
     Parameters
     ----------
     crossing : Crossing
     valid_time : datetime or None
-    spread : Spread, optional
-        Members, which say what the ranges are.
+    members : bool
+        Whether the ranges are those of members; else they are the ends of blocking.
 
     Returns
     -------
@@ -86,10 +84,10 @@ def cautions(crossing: Crossing, valid_time: datetime | None, spread: Spread | N
     """
     here = (*((text,) for text in crossing.cautions), *_flow(crossing), *_water(crossing))
     if valid_time is None:
-        here = (*here, ("The case names no valid time: sun and night are left out.",))
+        here = (*here, ("The case names no valid time: heat from the ground, by day and by night, is left out.",))
     return Cautions(
         heading=("An estimate, to be judged by a trained reader",),
-        always=(ALWAYS[0], (f"{_DECIDES} {_OF_BLOCKING if spread is None else _OF_MEMBERS}",), *ALWAYS[1:]),
+        always=(*ALWAYS, (_RANGE_OF_MEMBERS,)) if members else (*ALWAYS, (_RANGE_OF_FLOW,), (_NO_MEMBERS,)),
         here=here,
         notes=tuple(dict.fromkeys(crossing.notes)),
     )
