@@ -195,7 +195,7 @@ REFUSED = [
     (
         ["2026-11-03T12:00Z,Lower Tarn,15"],
         ["--table", "obs.csv"],
-        "--table: obs.csv is an input of this run (observed)",
+        "--table: obs.csv is an input of this run (OBSERVED)",
     ),
     (
         ["2026-11-03T12:00Z,Lower Tarn,15"],
