@@ -52,13 +52,12 @@ def command(
 ) -> None:
     """Work out the crossing of CASE for every direction its wind could come from."""
     from orolift.sources.bearings_case import read_bearings
-    from orolift.sources.files import refuse_over_read, write_all
+    from orolift.sources.files import write_all
     from orolift.spread.bearings import bearings_of
 
     files["report"] = files["report"] or f"{Path(case).stem}_bearings.html"
-    refuse_files(files, (case,))
+    refuse_files(files)
     setup = read_bearings(case, step)
-    refuse_over_read(name for name in files.values() if name is not None)
     log.debug("%s read, %d directions", case, setup.directions)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
     if not found:

@@ -7,7 +7,14 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option, refuse_files
+from orolift.cli.options import (
+    JOBS_OPTION,
+    QUIET_OPTION,
+    UNITS_OPTION,
+    VERBOSE_OPTION,
+    file_option,
+    refuse_files,
+)
 from orolift.cli.outputs import made_now
 
 if TYPE_CHECKING:
@@ -15,7 +22,7 @@ if TYPE_CHECKING:
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
-@click.argument("cases", nargs=-1, required=True, metavar="CASE...")
+@click.argument("cases", nargs=-1, metavar="CASE...")
 @click.argument("observed", metavar="OBSERVED.csv")
 @file_option("--report", "Report to write; default CASE-compared.html in the current folder.")
 @file_option("--results", "Results to write as JSON.")
@@ -92,11 +99,16 @@ def command(
     from orolift.cli.comparing import Asked, compared_of
     from orolift.report.compare import compare_page
     from orolift.report.render import render
-    from orolift.sources.files import csv_text, write_all
+    from orolift.sources.files import csv_text, existing_file, write_all
 
+    if not cases:  # the one file given is taken for the last argument
+        missing = "CASE..." if observed.lower().endswith(".csv") else "OBSERVED.csv"
+        raise click.MissingParameter(ctx=click.get_current_context(), param_type="argument", param_hint=f"'{missing}'")
     page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
-    more = [str(asked[name]) for name in ("series", "lee_sounding") if asked[name]]
-    refuse_files({"report": str(page), "results": results, "table": table}, (*cases, observed, *more))
+    refuse_files({"report": str(page), "results": results, "table": table})
+    sounding = asked["lee_sounding"]
+    if isinstance(sounding, str):  # it is opened last: what is wrong with it is said first
+        existing_file(sounding, "--lee-sounding")
     found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
     title = inputs[0].case.title or inputs[0].path.stem
     data = compare_page(

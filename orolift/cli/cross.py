@@ -86,15 +86,16 @@ def command(
     outputs = Outputs()
     for case in cases:
         outputs.keep(case, "a case")
+    wanted = Wanted(report, results, table, files)
+    _plan(cases, wanted, folder, outputs)
     work = Workers(jobs, scheduler, quiet)
     if folder is not None:
         from orolift.cli.folder import into_folder
 
         summaries = into_folder(cases, Path(folder), units, outputs, work)
     else:
-        wanted = Wanted(report, results, table, files)
         summaries = [_one_by_one(case, wanted, units, outputs, work) for case in cases]
-    outputs.write(None if folder is None else Path(folder))
+    outputs.write()
     if not quiet:
         _say(summaries, units)
         if folder is not None:
@@ -111,11 +112,34 @@ class Wanted:
     rain: RainFiles
 
 
+def _plan(cases: tuple[str, ...], wanted: Wanted, folder: str | None, outputs: Outputs) -> None:
+    """Name what is going to be written, so that what cannot be is refused before any work."""
+    if folder is not None:
+        from orolift.cli.folder import plan_folder
+
+        plan_folder(cases, Path(folder), outputs)
+        return
+    rain = wanted.rain.asked()
+    for option in ("--maps", "--lee-map"):
+        if option in rain:
+            outputs.plan_folder(Path(rain.pop(option)), option)
+    for case in cases:
+        outputs.plan(*_page(case, wanted.report))
+    for option, path in {"--results": wanted.results, "--table": wanted.table, **rain}.items():
+        if path is not None:
+            outputs.plan(path, option)
+
+
+def _page(case: str, report: str | None) -> tuple[Path, str]:
+    """The page of a case, and what it is for."""
+    return (Path(report), "--report") if report else (Path(f"{Path(case).stem}.html"), f"the report of {case}")
+
+
 def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work: Workers) -> tuple[Worked, Path]:
     """Work out a case and take in the files asked for."""
     worked = work_out(case, wanted.rain, work)
-    page = Path(wanted.report) if wanted.report else Path(f"{Path(case).stem}.html")
-    outputs.add(page, report_of(worked, units).encode(), "--report" if wanted.report else f"the report of {case}")
+    page, what = _page(case, wanted.report)
+    outputs.add(page, report_of(worked, units).encode(), what)
     add_results(worked, wanted.results, wanted.table, outputs)
     for path, (content, option) in rain_files(wanted.rain, worked.inputs, worked.mapped, worked.results).items():
         outputs.add(path, content, option)
@@ -124,15 +148,21 @@ def _one_by_one(case: str, wanted: Wanted, units: Units, outputs: Outputs, work:
     return worked, page
 
 
-def add_results(worked: Worked, results: str | None, table: str | None, outputs: Outputs) -> None:
+def add_results(
+    worked: Worked,
+    results: str | None,
+    table: str | None,
+    outputs: Outputs,
+    what: tuple[str, str] = ("--results", "--table"),
+) -> None:
     """Take in the results and the table of the sites, each where it is asked for."""
     from orolift.sources.files import csv_text
     from orolift.sources.site_table import site_rows
 
-    if results:
-        outputs.add(results, (worked.results.model_dump_json(indent=2) + "\n").encode(), "--results")
-    if table:
-        outputs.add(table, csv_text(*site_rows(worked.results)).encode(), "--table")
+    if results is not None:
+        outputs.add(results, (worked.results.model_dump_json(indent=2) + "\n").encode(), what[0])
+    if table is not None:
+        outputs.add(table, csv_text(*site_rows(worked.results)).encode(), what[1])
 
 
 def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:

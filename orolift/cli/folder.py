@@ -24,6 +24,24 @@ SAID = {
 }
 
 
+def plan_folder(cases: tuple[str, ...], folder: Path, outputs: Outputs) -> None:
+    """Name the files that every case gives, before any work.
+
+    Parameters
+    ----------
+    cases : tuple of str
+    folder : Path
+    outputs : Outputs
+    """
+    outputs.plan_folder(folder, "--folder")
+    for case in cases:
+        stem = folder / Path(case).stem
+        outputs.plan(Path(f"{stem}.html"), f"the report of {case}")
+        for kind, what in zip(("json", "csv"), _results_of(case), strict=True):
+            outputs.plan(Path(f"{stem}.{kind}"), what)
+    outputs.plan(folder / "index.html", "the index")
+
+
 def into_folder(
     cases: tuple[str, ...], folder: Path, units: Units, outputs: Outputs, work: Workers
 ) -> list[tuple[Worked, Path]]:
@@ -52,7 +70,7 @@ def into_folder(
         stem = folder / worked.inputs.path.stem
         page = Path(f"{stem}.html")
         outputs.add(page, report_of(worked, units).encode(), f"the report of {case}")
-        add_results(worked, f"{stem}.json", f"{stem}.csv", outputs)
+        add_results(worked, f"{stem}.json", f"{stem}.csv", outputs, _results_of(case))
         wanted = all_rain_files(worked, folder)
         for path, (content, _) in rain_files(wanted, worked.inputs, worked.mapped, worked.results).items():
             outputs.add(path, content, f"a file of {case}")
@@ -114,6 +132,11 @@ def entry(worked: Worked, report: Path, files: Iterable[Path]) -> Entry:
         files={_said(path, stem): path.name for path in files},
         spread=worked.spread,
     )
+
+
+def _results_of(case: str) -> tuple[str, str]:
+    """Results and table of a case, for messages."""
+    return f"the results of {case}", f"the table of {case}"
 
 
 def _said(path: Path, stem: str) -> str:

@@ -56,18 +56,17 @@ def command(
 
     SERIES is a CSV table of station values or of sounding files, each row with its time, or NetCDF with times.
     """
-    from orolift.sources.files import refuse_over_read, write_all
+    from orolift.sources.files import write_all
     from orolift.sources.hours_case import read_hours
     from orolift.spread.timeline import hours_of
 
     files["report"] = files["report"] or f"{Path(case).stem}_hours.html"
-    refuse_files(files, (case, series))
+    refuse_files(files)
     if files["netcdf"] is not None:
         from orolift.sources.hours_netcdf import refuse_without_netcdf
 
         refuse_without_netcdf("--netcdf")
     setup = read_hours(case, series)
-    refuse_over_read(name for name in files.values() if name is not None)
     log.debug("%s and %s read, %d hours", case, series, setup.series.time.size)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
     if not found:
@@ -160,11 +159,11 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
     return out
 
 
-def summary_of(hours: Hours, setup: HourSetup, units: Units) -> list[str]:
-    """What happened, a line a site, at most ten lines; times as fine as their errors allow, as on the page."""
-    from orolift.report.hours_page import about
+def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[str]:
+    """What happened, a line a site and one for the thresholds met at it, for at most five sites."""
+    from orolift.report.hours_page import about, dangers
     from orolift.report.quantities import NO_BREAK_SPACE, quantity
-    from orolift.report.words import zone_words
+    from orolift.report.words import plain, zone_words
 
     zone = setup.series.zone
 
@@ -185,6 +184,8 @@ def summary_of(hours: Hours, setup: HourSetup, units: Units) -> list[str]:
             f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; "
             f"{quantity(site.rain, 'water_depth', 0, units).replace(NO_BREAK_SPACE, ' ')} of rain and snow"
         )
+        met = " ".join(plain(words, units) for words in dangers(site, zone)).replace("\u00a0", " ")
+        lines += [f"Fire      {met} A threshold met is not a warning."] if met else []
     if len(hours.sites) > 5:
         lines.append(f"          and {len(hours.sites) - 5} more sites: see the report or --table")
     return lines

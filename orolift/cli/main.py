@@ -65,15 +65,15 @@ def exit_code(arguments: list[str]) -> int:
         0 done, 2 input at fault, 130 interrupted, 1 a fault of orolift.
     """
     from orolift.errors import OroliftError
-    from orolift.sources.files import forget_read
+    from orolift.sources.read_files import inputs_kept
 
-    forget_read()
     try:
-        command.main(arguments, prog_name="orolift", standalone_mode=False)
+        with inputs_kept():
+            command.main(arguments, prog_name="orolift", standalone_mode=False)
         code, message = 0, ""
     except (OroliftError, click.ClickException) as error:
         text = error.format_message() if isinstance(error, click.ClickException) else str(error)
-        hint = " 'orolift --help' lists what there is." if isinstance(error, click.UsageError) else ""
+        hint = _where_help_is(error) if isinstance(error, click.UsageError) else ""
         code, message = 2, f"{text}{hint}"
     except (click.Abort, KeyboardInterrupt) as error:
         code, message = 130, str(error) or "interrupted; nothing more is written."
@@ -94,3 +94,9 @@ def exit_code(arguments: list[str]) -> int:
     if message:
         click.echo(f"orolift: {message}", err=True)
     return code
+
+
+def _where_help_is(error: click.UsageError) -> str:
+    """Where the person finds what the command takes."""
+    path = "orolift" if error.ctx is None else error.ctx.command_path
+    return f" '{path} --help' lists what there is."

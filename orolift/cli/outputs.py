@@ -8,6 +8,7 @@ from datetime import UTC, datetime
 from pathlib import Path
 
 from orolift.errors import CaseError, MissingFileError
+from orolift.sources.read_files import place_of, refuse_over_inputs
 
 log = logging.getLogger(__name__)
 
@@ -24,6 +25,8 @@ class Outputs:
     def __init__(self) -> None:
         self.contents: dict[Path, bytes] = {}
         self._taken: dict[str, str] = {}
+        self._planned: set[str] = set()
+        self._folders: dict[Path, str] = {}
 
     def keep(self, path: str | Path, what: str) -> None:
         """Let nothing be written over a file.
@@ -39,9 +42,58 @@ class Outputs:
         CaseError
             If it is kept already.
         """
-        if _place(path) in self._taken:
+        if place_of(path) in self._taken:
             raise CaseError(f"{path} is given twice. Give each case once.")
-        self._taken[_place(path)] = what
+        self._taken[place_of(path)] = what
+
+    def plan(self, path: str | Path, what: str) -> None:
+        """Say before any work that a file is going to be written.
+
+        Parameters
+        ----------
+        path : str or Path
+        what : str
+            Option or case it is for, as for `add`.
+
+        Raises
+        ------
+        CaseError
+            If another file of this run has the same path, or it is a case or another input.
+        MissingFileError
+            If it could not be written.
+        """
+        from orolift.sources.files import refuse_unwritable
+        from orolift.sources.read_files import to_be_written
+
+        self._take(path, what)
+        if Path(path).parent not in self._folders:
+            refuse_unwritable(Path(path))
+        to_be_written({Path(path): what})
+        self._planned.add(place_of(path))
+
+    def plan_folder(self, folder: Path, option: str) -> None:
+        """Say before any work that files go into a folder; one that is not there is made when they are written.
+
+        Parameters
+        ----------
+        folder : Path
+        option : str
+
+        Raises
+        ------
+        MissingFileError
+            If it is a file, or could not be made.
+        """
+        if folder.is_dir():
+            return
+        if folder.exists():
+            raise MissingFileError(f"{option}: {folder} is a file. Name a folder.")
+        if not folder.absolute().parent.is_dir():
+            raise MissingFileError(
+                f"{option}: {folder} cannot be made: {folder.parent} is not a folder. Name a new folder in one that "
+                "exists."
+            )
+        self._folders[folder] = option
 
     def add(self, path: str | Path, content: bytes, what: str) -> None:
         """Take in a file.
@@ -56,21 +108,18 @@ class Outputs:
         Raises
         ------
         CaseError
-            If another file of this run has the same path, or it is a case.
+            If another file of this run has the same path, or it is a case or another input.
         """
-        place = _place(path)
-        if place in self._taken:
-            raise CaseError(f"{what}: {path} is already {self._taken[place]}. Nothing is written; give another name.")
-        self._taken[place] = f"what {what} writes"
+        place = place_of(path)
+        if place in self._planned:
+            self._planned.remove(place)
+        else:
+            self._take(path, what)
+            refuse_over_inputs({Path(path): what})
         self.contents[Path(path)] = content
 
-    def write(self, folder: Path | None) -> None:
-        """Write all that was taken in, or nothing.
-
-        Parameters
-        ----------
-        folder : Path or None
-            Made for it when it is not there; gone again when nothing is written.
+    def write(self) -> None:
+        """Write all that was taken in, or nothing; folders made for it are gone again when nothing is written.
 
         Raises
         ------
@@ -79,14 +128,24 @@ class Outputs:
         """
         from orolift.sources.files import write_all
 
-        new = folder is not None and _made(folder)
+        made: list[Path] = []
         try:
+            for folder, option in self._folders.items():
+                _make(folder, option)
+                made.append(folder)
             write_all(self.contents)
-        except MissingFileError:
-            if new and folder is not None:
+            made.clear()
+        finally:
+            for folder in made:
                 folder.rmdir()
-            raise
         log.debug("written: %s", ", ".join(map(str, self.contents)))
+
+    def _take(self, path: str | Path, what: str) -> None:
+        """Give a path to one output."""
+        place = place_of(path)
+        if place in self._taken:
+            raise CaseError(f"{what}: {path} is already {self._taken[place]}. Nothing is written; give another name.")
+        self._taken[place] = f"what {what} writes"
 
 
 def made_now() -> datetime:
@@ -118,19 +177,10 @@ def refuse_together(given: list[str], cases: int, folder: str | None) -> None:
             )
 
 
-def _made(folder: Path) -> bool:
-    """Whether a folder had to be made; it is there afterwards."""
-    if folder.is_dir():
-        return False
+def _make(folder: Path, option: str) -> None:
     try:
-        folder.mkdir()
+        folder.mkdir(exist_ok=True)
     except OSError as error:
         raise MissingFileError(
-            f"--folder: {folder} cannot be made ({error.strerror}). Name a new folder in one that exists."
+            f"{option}: {folder} cannot be made ({error.strerror}). Name a new folder in one that exists."
         ) from error
-    return True
-
-
-def _place(path: str | Path) -> str:
-    """A path as one word, however it is written."""
-    return os.path.normcase(os.path.realpath(path))

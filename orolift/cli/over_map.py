@@ -79,8 +79,6 @@ def refuse_what_cannot_be(wanted: RainFiles, inputs: Inputs) -> None:
         possible, what = lacks[option]
         if not possible:
             raise CaseError(f"{path}: {option} cannot be written: the case has no {what}.")
-    if wanted.lee_map is not None and not Path(wanted.lee_map).is_dir():  # it takes a minute: say so before
-        raise CaseError(f"--lee-map {wanted.lee_map} is not a folder. Make it first.")
 
 
 def map_inputs_of(inputs: Inputs, *, needed: bool = False) -> tuple[MapInputs | None, tuple[str, ...]]:
@@ -198,7 +196,28 @@ def map_findings(inputs: Inputs) -> list[str]:
     if found.gauges is not None:
         lines += [f"Gauges: {', '.join(found.gauges.name)}."]
         lines += [f"Assumed: {text}" for text in found.gauges.notes]
+    lines += [f"Doubtful: {text}" for text in _off_the_map(found)]
     return lines + [f"Assumed: {text}" for text in found.notes]
+
+
+def _off_the_map(found: MapInputs) -> list[str]:
+    """Gauges and catchments that the report leaves out, wholly or in part, as it will say it."""
+    import numpy as np
+
+    from orolift.rain.catchments import catchment_rain
+    from orolift.rain.gauges import rain_at
+
+    grid, gauges = found.placed.grid, found.gauges
+    nothing = np.where(np.isfinite(grid.elevation), 0.0, np.nan)  # where the map will have values
+    out = []
+    if gauges is not None:
+        known = np.isfinite(rain_at(grid, nothing, gauges.x, gauges.y))
+        off = [name for name, on_map in zip(gauges.name, known, strict=True) if not on_map]
+        out += [f"Gauges not on the map and left out: {', '.join(off)}."] if off else []
+    for one in found.catchments:
+        notes = catchment_rain(one.polygon, grid, nothing, found.duration).notes
+        out += [f"Catchment {one.name}: {note}" for note in notes]
+    return out
 
 
 def rain_files(

@@ -12,7 +12,7 @@ from orolift.air.humidity import dew_point_from_mixing_ratio
 from orolift.crossing.facts import clouds, crest_line_notes, flow_facts, remarks, water
 from orolift.crossing.heat import heat_cautions, heat_notes
 from orolift.crossing.march import March
-from orolift.crossing.pool import Lee
+from orolift.crossing.pool import Lee, humidity_note
 from orolift.crossing.rainfall import rainfall
 from orolift.crossing.result import Crossing, Site, When
 from orolift.crossing.settings import Settings, checked
@@ -160,6 +160,7 @@ def cross(
             *transect.notes,
             *crest_line_notes(ground, flow.blocked_top),
             *heat_notes(settings, when),
+            *humidity_note(lee, solution.pools[0]),
         ),
         cautions=(*remarks(ground, solution, flow), *heat_cautions(lee_airs, cloudy=cloud.base is not None)),
     )

@@ -20,8 +20,8 @@ if TYPE_CHECKING:
 POOL_STABILITY = 0.010
 """Rise of virtual potential temperature with height in a pool [K m-1]; a judgement."""
 POOL_HUMIDITY = 0.9
-"""Relative humidity [1] of a pool whose dew point nobody gave, at most: it holds no more vapour than the crossing air;
-a judgement."""
+"""Relative humidity [1] of a pool whose dew point nobody gave, at most: it holds no more vapour than the incoming air
+at the height of the lee foot; a judgement."""
 DEEPEST = 3000.0
 """A pool of a lee sounding is not looked for above this height over the lee foot [m]; a judgement."""
 
@@ -47,6 +47,30 @@ class Lee:
     def known(self) -> bool:
         """Whether anything is known."""
         return self.temperature is not None or self.pool_top is not None or self.air is not None
+
+
+def humidity_note(lee: Lee, pool: Pool | None) -> tuple[str, ...]:
+    """What is taken for the humidity of a pool of which it is not known.
+
+    Parameters
+    ----------
+    lee : Lee
+    pool : Pool or None
+        That stays.
+
+    Returns
+    -------
+    tuple of str
+        Empty with a lee sounding, and without a pool.
+    """
+    if pool is None or lee.air is not None:
+        return ()
+    text = (
+        "The humidity of the cold pool is not known: its vapour is taken as that of the incoming air at the height of "
+        f"the lee foot, with a relative humidity of at most {100.0 * POOL_HUMIDITY:.0f} %. A sounding of the lee would "
+        "tell it."
+    )
+    return (text,)
 
 
 @dataclass(frozen=True)
@@ -75,7 +99,9 @@ class Pool:
         return self.top - self.bottom
 
 
-def pool_under(lee: Lee, foot: float, pressure: float, temperature: float, vapour: float) -> Pool:
+def pool_under(
+    lee: Lee, foot: float, pressure: float, temperature: float, vapour: float, most: float | None = None
+) -> Pool:
     """Pool that stays under crossing air, from what is known of the lee.
 
     Parameters
@@ -88,6 +114,9 @@ def pool_under(lee: Lee, foot: float, pressure: float, temperature: float, vapou
         There.
     temperature, vapour : float [K], [kg per kg of dry air]
         Of the crossing air brought down to the lee foot.
+    most : float, optional [kg per kg of dry air]
+        Vapour of the incoming air at the height of the lee foot: a pool of which only temperature or top is known
+        holds no more. It did not cross, so that rain on the way took none of it. By default that of the crossing air.
 
     Returns
     -------
@@ -106,17 +135,18 @@ def pool_under(lee: Lee, foot: float, pressure: float, temperature: float, vapou
     arriving = float(virtual_potential_temperature(pressure, temperature, vapour))
     if lee.air is not None:
         return _from_sounding(lee.air, foot, arriving)
+    most = vapour if most is None else most
     if lee.pool_top is not None:
-        return _sloped(foot, max(lee.pool_top - foot, 0.0), pressure, arriving, vapour)
+        return _sloped(foot, max(lee.pool_top - foot, 0.0), pressure, arriving, most)
     if lee.temperature is not None:
-        humidity = min(vapour, float(mixing_ratio_from_relative_humidity(pressure, lee.temperature, POOL_HUMIDITY)))
+        humidity = min(most, float(mixing_ratio_from_relative_humidity(pressure, lee.temperature, POOL_HUMIDITY)))
         lying = float(virtual_potential_temperature(pressure, lee.temperature, humidity))
-        return _sloped(foot, max(arriving - lying, 0.0) / POOL_STABILITY, pressure, arriving, vapour)
-    return _sloped(foot, 0.0, pressure, arriving, vapour)
+        return _sloped(foot, max(arriving - lying, 0.0) / POOL_STABILITY, pressure, arriving, most)
+    return _sloped(foot, 0.0, pressure, arriving, most)
 
 
 def _sloped(foot: float, depth: float, pressure: float, arriving: float, most: float) -> Pool:
-    """Pool no moister than the crossing air, its virtual potential temperature rising evenly to that at its top."""
+    """Pool with vapour and humidity of at most so much; its virtual potential temperature rises evenly to its top's."""
     height = foot + np.linspace(0.0, depth, 21)
     theta_v = arriving - POOL_STABILITY * (foot + depth - height)
     exner = (pressure / REFERENCE_PRESSURE) ** KAPPA - np.concatenate(

@@ -176,7 +176,7 @@ def solve(
     pools: tuple[Pool | None, ...] = (None,) * members
     known = lee if isinstance(lee, tuple) else (lee,) * members
     if known[0].known:
-        pools = _pools(ground, found, known)
+        pools = _pools(ground, upwind, found, known)
         depth = np.array([0.0 if pool is None else pool.depth for pool in pools])
         if np.any(depth > SHALLOW_POOL):
             foot = shape.lee_foot
@@ -208,14 +208,16 @@ def _going_round(ground: Ground, blocked: Blocking, top: Array, settings: Settin
     return np.full(top.size, DEFAULT_GOING_ROUND)
 
 
-def _pools(ground: Ground, found: Streams, lee: tuple[Lee, ...]) -> tuple[Pool, ...]:
+def _pools(ground: Ground, upwind: Upwind, found: Streams, lee: tuple[Lee, ...]) -> tuple[Pool, ...]:
     """Pools under the air of the members, brought down to the lee foot."""
     foot = ground.shape.lee_foot
     here = over(found, ground.transect.distance, ground.shape.lee_foot_distance)
     p = pressure_at(here, np.full((here.height.shape[0], 1), foot))[:, 0]
     v = here.vapour[:, 0]
     t = frozen_temperature(here.pressure[:, 0], here.temperature[:, 0], v, here.cloud[:, 0], p)
-    return tuple(pool_under(one, foot, float(p[i]), float(t[i]), float(v[i])) for i, one in enumerate(lee))
+    vapour = np.atleast_2d(upwind.air.vapour)
+    most = [float(np.interp(foot, upwind.height, vapour[min(i, len(vapour) - 1)])) for i in range(len(lee))]
+    return tuple(pool_under(one, foot, float(p[i]), float(t[i]), float(v[i]), most[i]) for i, one in enumerate(lee))
 
 
 def _first(settings: Settings) -> Settings:

@@ -191,12 +191,10 @@ def _ends(crossing: Crossing, site: LeeAir) -> list[Words]:
         return []
     least, most = ends
     if abs(least.temperature - most.temperature) < SAME:
-        return [
-            ("No layer is stopped, so that no blocking and full blocking give the same; the range says nothing here.",)
-        ]
+        return [("No layer is stopped, so that no blocking and full blocking give the same: it decides nothing here.",)]
     return [
         (
-            f"The ends of the range for {site.name}: ",
+            f"What blocking may do at {site.name}: ",
             Amount(least.temperature, "temperature", 1),
             " with no blocking (all the low air comes over) and ",
             Amount(most.temperature, "temperature", 1),

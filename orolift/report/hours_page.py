@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from typing import TYPE_CHECKING
@@ -12,7 +11,7 @@ import numpy as np
 from orolift.report.cautions import ALWAYS
 from orolift.report.figures.timeline import timeline_figure
 from orolift.report.quantities import NO_BREAK_SPACE, Amount
-from orolift.report.words import counted, moment, month, zone_words
+from orolift.report.words import counted, moment, month, rounded_time, zone_words
 
 if TYPE_CHECKING:
     from datetime import tzinfo
@@ -215,7 +214,7 @@ def hours_page(
         version=version,
         units=units,
         heading=_heading(hours),
-        dangers=tuple(words for site in hours.sites[:NAMED] for words in _dangers(site, zone)),
+        dangers=tuple(words for site in hours.sites[:NAMED] for words in dangers(site, zone)),
         lead=_lead(hours, zone),
         sites=tuple(_site(hours, number, zone, units) for number in range(len(hours.sites))),
         catchments=_catchments(hours, zone),
@@ -242,8 +241,7 @@ def about(seconds: float, error: float, zone: tzinfo) -> str:
     >>> about(1793741400.0, 5000.0, UTC), about(1793741700.0, 900.0, UTC)
     ('3 November 2026, 21:30', '3 November 2026, 21:40')
     """
-    step = 1800.0 if error >= 3600.0 else 600.0
-    return stamp(math.floor(seconds / step + 0.5) * step, zone)
+    return stamp(rounded_time(seconds, error), zone)
 
 
 def stamp(seconds: float, zone: tzinfo) -> str:
@@ -348,7 +346,7 @@ def _site(hours: Hours, number: int, zone: tzinfo, units: Units) -> SiteHours:
         number=number + 1,
         name=site.name,
         heading=_outcome(site, zone),
-        dangers=_dangers(site, zone),
+        dangers=dangers(site, zone),
         sentences=_counts(site),
         figure=timeline_figure(hours, number, zone, units),
         dry_winds=tuple(_dry_wind(site, one, zone) for one in site.dry_winds[:MOST_ROWS]),
@@ -357,8 +355,20 @@ def _site(hours: Hours, number: int, zone: tzinfo, units: Units) -> SiteHours:
     )
 
 
-def _dangers(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
-    """Thresholds of the region that are met, and when."""
+def dangers(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
+    """Thresholds of the region that are met, and when.
+
+    Parameters
+    ----------
+    site : SiteTimeline
+    zone : tzinfo
+        In which times are said.
+
+    Returns
+    -------
+    tuple of Words
+        A sentence for each that is met.
+    """
     out: list[Words] = []
     for one in site.thresholds:
         found = one.stretches

@@ -10,7 +10,13 @@ from orolift.report.briefing import briefing_heading
 from orolift.report.key_numbers import blocked_with_range, gusts
 from orolift.report.quantities import Amount, Units
 from orolift.report.spans import Spans, ranged
-from orolift.report.story import fallen_share, is_blocked, line_view, rains, source_words
+from orolift.report.story import (
+    fallen_share,
+    is_blocked,
+    line_view,
+    rains,
+    source_words,
+)
 from orolift.report.words import Words, counted, moment, sentence
 
 if TYPE_CHECKING:
@@ -142,21 +148,21 @@ def entry_of(
     files : mapping of str to str
         Names of files beside the index, by what they are.
     spread : Spread, optional
-        Members, for the ranges.
+        Members, for the ranges: those of the report.
 
     Returns
     -------
     Entry
     """
-    spans = Spans(line_view(crossing), spread)
-    site = spans.main
-    base = crossing.cloud.base
+    line = line_view(crossing)
+    spans = Spans(line, spread)
+    site, base = spans.main, line.cloud.base
     return Entry(
         title=title,
         report=quote(report),
         files=tuple(Link(name, quote(file)) for name, file in files.items()),
         valid="" if valid_time is None else moment(valid_time),
-        heading=briefing_heading(crossing),
+        heading=briefing_heading(line),
         doubts=counted(len(crossing.cautions), "caution", "cautions").capitalize() if crossing.cautions else "",
         site=site.name,
         temperature=ranged(Amount(site.temperature, "temperature", 1), spans.temperature(site)),
@@ -164,9 +170,9 @@ def entry_of(
         wind=None if site.wind is None else Amount(site.wind.at_10m, "wind"),
         gusts=() if site.wind is None else gusts(spans, site.wind, site),
         source=source_words(site),
-        blocked=blocked_with_range(spans) if is_blocked(crossing) else (),
-        cloud=() if base is None else (Amount(base, "height", -1),),
-        fallen=Amount(fallen_share(crossing), "share") if rains(crossing) else None,
+        blocked=blocked_with_range(spans) if is_blocked(line) else (),
+        cloud=() if base is None else ranged(Amount(base, "height", -1), spans.of("cloud_base")),
+        fallen=Amount(fallen_share(line), "share") if rains(line) else None,
     )
 
 

@@ -70,6 +70,11 @@ STEPS = (
         "range. Wind at 10 m is by the logarithmic law."
     ),
     (
+        "For the ranges, the same is worked out in members, each with a draw of its own of every uncertain input; to "
+        "temperature, humidity and wind at the sites the error of the method is added. A range is from 10 to 90 % of "
+        "them, widened to the answer where that lies outside."
+    ),
+    (
         "Saturation pressure follows from constant heat capacities and latent heats linear in temperature "
         "(Rankine–Kirchhoff form), so that it agrees exactly with the latent heats, the entropy and the condensation "
         "level. Relative humidity and dew point are over liquid water at all temperatures, as the WMO reports them."

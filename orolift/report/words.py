@@ -174,6 +174,26 @@ def day(date: str) -> str:
     return f"{int(number)}\u00a0{_MONTHS[int(month) - 1]}\u00a0{year}"
 
 
+def rounded_time(seconds: float, error: float) -> float:
+    """A time to the half hour or ten minutes that its error allows.
+
+    Parameters
+    ----------
+    seconds, error : float [s]
+
+    Returns
+    -------
+    float [s]
+
+    Examples
+    --------
+    >>> rounded_time(1000.0, 900.0), rounded_time(1000.0, 5000.0)
+    (1200.0, 1800.0)
+    """
+    step = 1800.0 if error >= 3600.0 else 600.0
+    return math.floor(seconds / step + 0.5) * step
+
+
 def counted(count: int, one: str, many: str) -> str:
     """A count in words up to ten, with the noun in the right number.
 

@@ -11,8 +11,9 @@ if TYPE_CHECKING:
     from orolift.sources.results import FailedSiteBlock, LeeBlock, Results
 
 NOT_A_VALUE = {"profile", "range", "input_range", "chance", "warming_parts_c", "source_level_range_m"}
-"""Parts of a block that are no single value; profile and ranges by the inputs alone are in no table at all."""
+"""Parts of a block that are no single value; those with names are flattened."""
 PARTS = ("descent", "latent", "going_round", "mixing", "surface_heating", "pressure")
+CHANCES = ("in_pool", "cloud", "rain")
 RANGES = ("source_level_m", "wind_ms", "gust_ms")
 """Ranges that every table has columns for; others are added where they are known."""
 
@@ -29,29 +30,30 @@ def flat_site(site: LeeBlock, fire: FireBlock | None = None) -> dict[str, Any]:
     Returns
     -------
     dict
-        Keys of `lee` in the results file; parts of the warming as ``warming_by_descent_c``, chances as
-        ``chance_rain``, ends of ranges as ``wind_ms_low`` and ``wind_ms_high``, of the source level those of the air;
-        then those of fire weather (`fire_results.flat_fire`); last `reason`, None for a site that was worked out.
+        Keys of `lee` in the results file; parts of the warming as ``warming_by_descent_c``, ends of ranges as
+        ``wind_ms_low`` and ``wind_ms_high``, those by the inputs alone as ``wind_ms_inputs_low``; chances as
+        ``chance_rain``; then those of fire weather (`fire_results.flat_fire`); last `reason`,
+        None for a site that was worked out.
     """
     values = site.model_dump()
     flat = {key: value for key, value in values.items() if key not in NOT_A_VALUE}
     parts = values["warming_parts_c"] or {}
     flat |= {f"warming_by_{part}_c": parts.get(part) for part in PARTS}
-    flat |= {f"chance_{event}": value for event, value in values["chance"].items()}
-    spans = {_flat_key(key): ends for key, ends in values["range"].items()}
-    spans.pop("source_level_m", None)  # that of the median between members, and one name cannot have two ranges
+    flat |= {f"chance_{name}": values["chance"].get(name) for name in CHANCES}
+    spans = dict.fromkeys(RANGES, (None, None)) | {_named(key): ends for key, ends in values["range"].items()}
+    spans["source_level_m"] = (None, None)  # that of the median between members, and one name cannot have two ranges
     if values["source_level_range_m"] is not None:
         spans["source_level_m"] = values["source_level_range_m"]
-    for key in (*RANGES, *(key for key in spans if key not in RANGES)):
-        low, high = spans.get(key, (None, None))
+    spans |= {f"{_named(key)}_inputs": ends for key, ends in values["input_range"].items()}
+    for key, (low, high) in spans.items():
         flat[f"{key}_low"], flat[f"{key}_high"] = low, high
     return {**flat, **({} if fire is None else flat_fire(fire)), "reason": None}
 
 
-def _flat_key(key: str) -> str:
-    """Name in a table of a number that may stand in a part of a block."""
-    block, _, part = key.partition(".")
-    return f"warming_by_{part}_c" if part else block
+def _named(key: str) -> str:
+    """Column of a key of a range: parts of the warming are called as their own columns are."""
+    group, _, part = key.partition(".")
+    return f"warming_by_{part}_c" if group == "warming_parts_c" else key
 
 
 def flat_sites(results: Results) -> list[dict[str, Any]]:

@@ -109,7 +109,12 @@ def test_bad_input_is_one_message_and_no_file(changes, message, edited, case_fol
     [
         (["cross", "missing.toml"], "missing.toml cannot be found"),
         (["cross", "."], "is a folder"),
-        (["cross"], "Missing argument 'CASE...'"),
+        (["cross"], "Missing argument 'CASE...'. 'orolift cross --help' lists what there is."),
+        (["cross", "case.toml", "--nothing"], "'orolift cross --help'"),
+        (["hours", "case.toml"], "'orolift hours --help'"),
+        (["compare", "case.toml"], "Missing argument 'OBSERVED.csv'. 'orolift compare --help'"),
+        (["compare", "o.csv"], "Missing argument 'CASE...'. 'orolift compare --help'"),
+        (["nonsense"], "'orolift --help'"),
         (["cross", "case.toml", "--report", "nofolder/x.html"], "nofolder is not a folder"),
         (["cross", "case.toml", "--report", "ridge.csv/x.html"], "is not a folder"),
         (["cross", "case.toml", "--units", "imperial"], "'imperial' is not one of 'metric', 'us'"),

@@ -32,6 +32,47 @@ def test_folder_holds_all_of_every_case_and_an_index(two_cases, case_folder, cap
     assert capsys.readouterr().out.splitlines()[-1] == "Index: out/index.html"
 
 
+def nothing_may_run(monkeypatch):
+    """Fail a test whose refusal comes after the work."""
+    monkeypatch.setattr("orolift.crossing.situation.crossing_of", lambda _: pytest.fail("worked before it refused"))
+
+
+@pytest.mark.parametrize(
+    "arguments",
+    [
+        ["--table", "ridge.csv"],
+        ["--report", "./ridge.csv"],
+        ["--results", "sounding.csv"],
+        ["--folder", "."],
+    ],
+)
+def test_no_output_takes_the_place_of_an_input(case_folder, edited, monkeypatch, capsys, arguments):
+    """The file that would be lost is named with its key, it is as it was, and nothing was worked out."""
+    edited(("ridge_km_m = [[0, 40], [25, 1850], [60, 210]]", 'ridge_file = "ridge.csv"'))
+    text = (case_folder / "case.toml").read_text()
+    text = text.replace("station = {", 'sounding_file = "sounding.csv"\n# {')
+    (case_folder / "case.toml").write_text(text)
+    if "." in arguments:  # the table of a case in the folder of its ridge
+        (case_folder / "ridge.toml").write_text(text)
+    nothing_may_run(monkeypatch)
+    before = {path.name: path.read_bytes() for path in case_folder.iterdir()}
+    case = "ridge.toml" if "." in arguments else "case.toml"
+    assert exit_code(["cross", case, "--quiet", *arguments]) == 2
+    said = capsys.readouterr().err
+    key = "[incoming] sounding_file" if "sounding.csv" in arguments else "[terrain] ridge_file"
+    assert f"is an input of this run ({key})" in said
+    assert {path.name: path.read_bytes() for path in case_folder.iterdir()} == before
+
+
+def test_what_a_run_wrote_may_be_read_and_written_by_the_next(case_folder):
+    """Inputs are kept for one run, no longer."""
+    from orolift.sources.files import read_text
+
+    for _ in range(2):
+        assert exit_code(["cross", "case.toml", "--quiet", "--table", "out.csv"]) == 0
+        assert read_text("out.csv", "--table").startswith('"name"')
+
+
 @pytest.mark.parametrize(
     ("arguments", "said"),
     [
@@ -40,7 +81,7 @@ def test_folder_holds_all_of_every_case_and_an_index(two_cases, case_folder, cap
         (["--results", "case.toml"], "--results: case.toml is already a case"),
         (["--table", "case.html"], "--table: case.html is already what the report of case.toml writes"),
         (["--folder", "out", "--results", "a.json"], "leave --results out"),
-        (["--folder", "case.toml"], "--folder: case.toml cannot be made"),
+        (["--folder", "case.toml"], "--folder: case.toml is a file. Name a folder."),
         (["--folder", "nowhere/out"], "--folder: nowhere/out cannot be made"),
     ],
 )
@@ -49,18 +90,6 @@ def test_two_outputs_never_share_a_path(case_folder, capsys, arguments, said):
     assert exit_code(["cross", "case.toml", "--quiet", *arguments]) == 2
     assert said in capsys.readouterr().err
     assert sorted(case_folder.iterdir()) == before
-
-
-@pytest.mark.parametrize("command", ["cross", "bearings"])
-def test_a_file_that_a_case_names_is_not_written_over(case_folder, edited, capsys, command):
-    """A table under the name of the ridge would end the ridge."""
-    edited(
-        ("ridge_km_m = [[0, 40], [25, 1850], [60, 210]]", 'ridge_file = "ridge.csv"'), ("members = 10", "members = 0")
-    )
-    before = {file: file.read_bytes() for file in case_folder.iterdir()}
-    assert exit_code([command, "case.toml", "--quiet", "--table", "ridge.csv"]) == 2
-    assert "ridge.csv has been read in this run and is not written over" in capsys.readouterr().err
-    assert {file: file.read_bytes() for file in case_folder.iterdir()} == before
 
 
 def test_a_case_called_index_is_refused_in_a_folder(case_folder, capsys):

@@ -156,8 +156,11 @@ def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, ca
     [
         (["hours", "case.toml", "series.csv", "--table", "none/t.csv"], "none is not a folder. Make it first"),
         (["hours", "case.toml", "series.csv", "--table", "a.x", "--results", "a.x"], "--table and --results both name"),
-        (["hours", "case.toml", "series.csv", "--table", "./series.csv"], "./series.csv is read by this command"),
-        (["bearings", "case.toml", "--results", "case.toml"], "case.toml is read by this command"),
+        (
+            ["hours", "case.toml", "series.csv", "--table", "./series.csv"],
+            "series.csv is an input of this run (series)",
+        ),
+        (["bearings", "case.toml", "--results", "case.toml"], "case.toml is an input of this run (case)"),
         (["hours", "case.toml", "none.csv"], "series: none.csv cannot be found"),
         (["hours", "case.toml", "case.toml"], "case.toml: line 1"),
         (["bearings", "case.toml", "--step", "7"], "--step 7: it must divide 360"),
@@ -178,6 +181,29 @@ def test_faults_are_said_before_anything_is_worked_out(arguments, message, serie
     assert re.search(re.escape(message), said)
     assert said.count("\n") == 1
     assert sorted(series_folder.iterdir()) == before
+
+
+@pytest.mark.parametrize(
+    ("arguments", "lost"),
+    [
+        (["hours", "case.toml", "series.csv", "--table", "series.csv"], "series.csv"),
+        (["hours", "case.toml", "series.csv", "--results", "case.toml"], "case.toml"),
+        (["hours", "case.toml", "series.csv", "--netcdf", "./series.csv"], "series.csv"),
+        (["bearings", "case.toml", "--table", "case.toml"], "case.toml"),
+        (["compare", "case.toml", "series.csv", "--table", "series.csv"], "series.csv"),
+        (
+            ["compare", "case.toml", "series.csv", "--lee-sounding", "sounding.csv", "--table", "sounding.csv"],
+            "sounding",
+        ),
+    ],
+)
+def test_no_output_takes_the_place_of_an_input(series_folder, capsys, arguments, lost):
+    before = {path.name: path.read_bytes() for path in series_folder.iterdir()}
+    assert exit_code([*arguments, "--quiet"]) == 2
+    said = capsys.readouterr().err
+    assert lost in said
+    assert "is an input of this run" in said
+    assert {path.name: path.read_bytes() for path in series_folder.iterdir()} == before
 
 
 def test_bearings_write_all_their_files(case_folder, capsys):

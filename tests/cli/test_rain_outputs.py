@@ -51,7 +51,7 @@ def rows_of(file):
 
 def test_every_file_and_that_they_agree(varn, capsys):
     """Maps, catchments, gauges, sites and results of one run say the same numbers."""
-    arguments = ["cross", varn(), "--results", "r.json", "--maps", ".", "--catchments", "c.csv", "--gauges", "g.csv"]
+    arguments = ["cross", varn(), "--results", "r.json", "--maps", "maps", "--catchments", "c.csv", "--gauges", "g.csv"]
     assert exit_code([*arguments, "--geojson", "s.geojson"]) == 0, capsys.readouterr().err
     results = json.loads(Path("r.json").read_text())
     over = results["rain"]["map"]
@@ -59,7 +59,7 @@ def test_every_file_and_that_they_agree(varn, capsys):
     assert 0.0 < over["windward_share"] < 1.0
     assert over["drying_ratio"] > 0.0
     assert over["on_line"]["difference"]
-    with rasterio.open("case_rain_total.tif") as total, rasterio.open("case_rain_rate.tif") as rate:
+    with rasterio.open("maps/case_rain_total.tif") as total, rasterio.open("maps/case_rain_rate.tif") as rate:
         assert total.crs.to_epsg() == 32710
         assert (rate.nodata, rate.units, total.units) == (-9999.0, ("mm h-1",), ("mm",))
         assert total.tags()["duration_h"] == "6"
@@ -69,7 +69,7 @@ def test_every_file_and_that_they_agree(varn, capsys):
         assert fell.max() == pytest.approx(6.0 * over["peak_mm_per_h"], rel=1e-6)
         cell = abs(total.transform.a * total.transform.e)
         assert float(fell.sum()) * cell / 1000.0 == pytest.approx(over["volume_m3"], rel=1e-5)
-    with rasterio.open("case_rain_and_snow.tif") as parts:
+    with rasterio.open("maps/case_rain_and_snow.tif") as parts:
         assert parts.count == 3
     rows = rows_of("c.csv")
     assert [row["name"] for row in rows] == ["Kell", "Upper Tarn", "Sarn"]
@@ -87,7 +87,7 @@ def test_every_file_and_that_they_agree(varn, capsys):
     assert [site["properties"]["name"] for site in sites] == ["Lower Tarn", "Ostrel Flats", "Kell Bridge"]
     assert sites[0]["geometry"]["coordinates"] == [-120.9709, -46.8816]
     assert sites[0]["properties"]["temperature_c"] == results["lee"][0]["temperature_c"]
-    parts = [value for key, value in sites[0]["properties"].items() if key.startswith("warming_by_")]
+    parts = [value for key, value in sites[0]["properties"].items() if re.fullmatch("warming_by_[a-z_]+_c", key)]
     assert sum(parts) == pytest.approx(sites[0]["properties"]["warming_c"], abs=1e-6)
 
 
@@ -126,6 +126,21 @@ def test_snow_cover_makes_a_flag(varn, capsys):
     assert json.loads(Path("a.json").read_text())["flags"] == []
     (flag,) = json.loads(Path("b.json").read_text())["flags"]
     assert flag.startswith("Rain on snow")
+
+
+def test_check_names_what_the_report_leaves_out(varn, capsys):
+    """A gauge and a catchment far off the map; the ordinary case has none."""
+    basins = json.loads(Path("basins.geojson").read_text())
+    case = varn(gauges__csv=Path("gauges.csv").read_text().rstrip() + "\nFar Hut,20.0,20.0,5.0\n")
+    ring = [[20.0, 20.0], [20.1, 20.0], [20.1, 20.1], [20.0, 20.0]]
+    away = {"type": "Polygon", "coordinates": [ring]}
+    basins["features"].append({"type": "Feature", "properties": {"name": "Far Basin"}, "geometry": away})
+    Path("basins.geojson").write_text(json.dumps(basins))
+    assert exit_code(["check", case]) == 0
+    said = capsys.readouterr().out
+    assert "Doubtful: Gauges not on the map and left out: Far Hut." in said
+    assert "Doubtful: Catchment Far Basin: It lies outside the map" in said
+    assert said.count("Doubtful: ") == 2
 
 
 def test_check_reads_catchments_and_gauges(varn, capsys):
@@ -224,7 +239,7 @@ def test_files_that_a_ridge_cannot_give(tmp_path, monkeypatch, capsys, option, m
     """One message for each; nothing is written."""
     monkeypatch.chdir(tmp_path)
     Path("ridge.toml").write_text(RIDGE)
-    assert exit_code(["cross", "ridge.toml", option, "."]) == 2
+    assert exit_code(["cross", "ridge.toml", option, "new"]) == 2
     said = capsys.readouterr().err
     assert re.search(message, said), said
     assert len(said.splitlines()) == 1

@@ -85,7 +85,9 @@ def test_the_page_says_what_is_doubtful(written):
     ("case", "arguments", "message"),
     [
         ("varn_ridge.toml", ["--lee-map", "."], "--lee-map cannot be written: the case has no elevation_file"),
-        ("varn_moist.toml", ["--lee-map", "nowhere"], "--lee-map nowhere is not a folder. Make it first."),
+        ("varn_moist.toml", ["--lee-map", "no/where"], "--lee-map: no/where cannot be made: no is not a folder."),
+        ("varn_moist.toml", ["--maps", "no/where"], "--maps: no/where cannot be made: no is not a folder."),
+        ("varn_ridge.toml", ["--lee-map", "new"], "--lee-map cannot be written: the case has no elevation_file"),
     ],
 )
 def test_a_map_that_cannot_be_is_refused_at_once(case, arguments, message, tmp_path, monkeypatch, capsys):

@@ -41,23 +41,27 @@ def test_every_range_holds_eight_tenths(results, capsys):
     assert len(shown.splitlines()) <= 10
     assert f"({low:.1f} to {high:.1f})" in shown
     assert "10 to 90 % of 16 members" in shown
+    low_air, high_air = (f"{round(end, -1):.0f}" for end in site["source_level_range_m"])
+    assert f"(eight tenths of it from {low_air} to {high_air})" in shown or low_air == high_air
     page = Path("case.html").read_text()
     assert 'id="how-sure"' in page
+    assert "the case has no members" not in page
+    assert "and the range that uncertain input" not in page
     assert f">{low:.1f}</data> to <data" in page
 
 
-def test_tables_hold_single_values_only(results):
-    """Chances and ends of ranges have columns of their own, under names that a table can have; no block is in a cell."""
-    found = results("members = 12", "--table", "t.csv")
-    site = found["lee"][0]
-    with Path("t.csv").open(newline="") as stream:
+def test_the_table_has_single_values_only(results):
+    """Ranges and chances stand in columns of their own, with the numbers of the results."""
+    site = results("members = 10", "--table", "t.csv")["lee"][0]
+    with Path("t.csv").open() as stream:
         row = next(csv.DictReader(stream))
-    assert not any("{" in cell for cell in row.values())
-    assert not any("." in name for name in row)
+    assert not [key for key, value in row.items() if "{" in value or "[" in value or "." in key]
+    for key, column in (("temperature_c", "temperature_c"), ("warming_parts_c.descent", "warming_by_descent_c")):
+        for block, more in (("range", ""), ("input_range", "_inputs")):
+            ends = [float(row[f"{column}{more}_{end}"]) for end in ("low", "high")]
+            assert ends == site[block][key]
     assert float(row["chance_rain"]) == site["chance"]["rain"]
-    low, high = site["range"]["warming_parts_c.descent"]
-    assert (float(row["warming_by_descent_c_low"]), float(row["warming_by_descent_c_high"])) == (low, high)
-    assert float(row["source_level_m_low"]) == site["source_level_range_m"][0]
+    assert [float(row[f"source_level_m_{end}"]) for end in ("low", "high")] == site["source_level_range_m"]
 
 
 def test_no_members_no_ranges(results, capsys):
@@ -68,6 +72,16 @@ def test_no_members_no_ranges(results, capsys):
     assert found["lee"][0]["input_range"] == {}
     assert set(found["lee"][0]["range"]) == {"wind_ms", "gust_ms"}
     assert "members" not in capsys.readouterr().out
+    assert "not worked out: the case has no members" in Path("case.html").read_text()
+
+
+def test_the_index_has_the_ranges_of_the_report(edited):
+    """Temperature, and what else carries a range in both."""
+    assert exit_code(["cross", edited(), "--quiet", "--folder", "out"]) == 0
+    low, high = json.loads(Path("out/case.json").read_text())["lee"][0]["range"]["temperature_c"]
+    for name in ("case.html", "index.html"):
+        words = re.sub(r"<[^>]+>", "", Path("out", name).read_text())
+        assert f"({low:.1f} to {high:.1f})" in words
 
 
 def test_workers_change_nothing(results, monkeypatch):

@@ -1,13 +1,16 @@
 """Cold pools: displaced or not, how deep, and their own air."""
 
+from types import SimpleNamespace
+
 import numpy as np
 import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
 from orolift.air.column import IncomingAir, interpolated
+from orolift.air.humidity import relative_humidity_from_mixing_ratio
 from orolift.air.temperature import virtual_potential_temperature
-from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air, pool_under
+from orolift.crossing.pool import Lee, chance_of_breaking_through, humidity_note, pool_air, pool_under
 
 
 @given(deficit=st.floats(0.5, 15.0), foot=st.floats(0.0, 1500.0))
@@ -26,6 +29,24 @@ def test_warmer_air_than_the_arriving_is_no_pool(excess):
     """Lighter air is displaced whatever its depth."""
     pool = pool_under(Lee(temperature=290.0 + excess + 0.5), 200.0, 95e3, 290.0, 0.001)
     assert pool.depth == pytest.approx(0.0, abs=1e-9)
+
+
+@pytest.mark.parametrize("lee", [Lee(temperature=284.0), Lee(pool_top=900.0)])
+def test_a_pool_did_not_cross_and_keeps_the_vapour_of_the_incoming_air(lee):
+    """Rain took vapour from the crossing air, not from the pool; cold air holds no more than 90 % of humidity."""
+    moist = pool_under(lee, 300.0, 97e3, 291.0, 0.003, 0.006)
+    assert moist.vapour[0] == pytest.approx(0.006)
+    assert "of the incoming air" in humidity_note(lee, moist)[0]
+    cold = pool_under(Lee(temperature=270.0), 300.0, 97e3, 291.0, 0.003, 0.006)
+    assert relative_humidity_from_mixing_ratio(97e3, cold.temperature[0], cold.vapour[0]) == pytest.approx(
+        0.9, abs=0.005
+    )
+
+
+def test_nothing_is_assumed_where_nothing_stays_or_a_sounding_knows():
+    pool = pool_under(Lee(temperature=284.0), 300.0, 97e3, 291.0, 0.003, 0.006)
+    assert humidity_note(Lee(temperature=284.0), None) == ()
+    assert humidity_note(Lee(air=SimpleNamespace()), pool) == ()
 
 
 def test_the_top_of_a_pool_is_neutral_to_what_rides_over_it():

@@ -1,5 +1,6 @@
 """Pages of many crossings: times as people read them, and axes of time from hours to decades."""
 
+import re
 from datetime import UTC, datetime, timedelta, timezone
 from itertools import pairwise
 
@@ -76,6 +77,32 @@ def test_gaps_stay_gaps_in_the_figure():
     assert len([curve for curve in drawing.panels[1].curves if "dew" in curve.kind]) == pieces
     blanks = [curve.kind for curve in drawing.blanks]
     assert blanks.count("unknown") + blanks.count("no-crossing") == sum(absent)
+
+
+def test_the_strip_is_the_stated_spell_without_its_gaps():
+    """Half past the hour before the first to half past the last by hand, and nothing bold where nothing is known."""
+    rows = [False, True, True, None, True, False]
+    hours = [
+        Hour(
+            i,
+            START + i * HOUR,
+            (
+                SiteState("missing", "no row")
+                if dry is None
+                else SiteState("crossing", side="lee", descending=dry, travel=Travel(HOUR, 0.0), temperature=288.0),
+            ),
+        )
+        for i, dry in enumerate(rows)
+    ]
+    found = hours_of(hours, ["Tarn"], HOUR, planned=6)
+    made = hours_page(found, title="T", zone=UTC, made_at=datetime(2026, 1, 1, tzinfo=UTC), version="0", notes=())
+    drawing = made.sites[0].figure.drawing
+    bold = [re.findall(r"[MH]([\d.]+)", curve.path) for curve in drawing.states if curve.kind == "dry-wind"]
+    (a, b), (c, d) = [[float(end) for end in ends] for ends in bold]
+    hour = (drawing.layout.right - drawing.layout.left) / 6.0  # hours arrive at 6:30 to 11:30, half an hour either side
+    assert "from 3 November 2026, 07:00" in "".join(map(str, made.sites[0].heading))
+    ends = np.array([a, b, c, d]) - drawing.layout.left
+    assert ends / hour == pytest.approx([1.0, 3.0, 4.0, 5.0], abs=0.01)
 
 
 def test_a_long_series_keeps_the_page_small():

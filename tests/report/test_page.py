@@ -130,7 +130,7 @@ def test_one_answer_leads_when_the_lee_is_known_or_the_chance_is_good(page_for, 
 def test_cold_pool_leads_the_page(page_for, named):
     crossing = named("cold pool")
     page = page_for(crossing)
-    assert text_of(page.briefing.heading).startswith("A cold pool up to 1510 m keeps Lower Tarn at ")
+    assert text_of(page.briefing.heading).startswith("A cold pool up to 1500 m keeps Lower Tarn at ")
     assert text_of(page.section_heading).startswith("The crossing air rides over cold air")
     assert "cold air stays" in all_text(page.briefing.sentences)
     assert "lies in the cold pool" in text_of(page.briefing.sentences[-1])

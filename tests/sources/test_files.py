@@ -7,7 +7,8 @@ import sys
 import pytest
 
 from orolift.errors import CaseError, DataFileError, MissingFileError
-from orolift.sources.files import csv_text, existing_file, forget_read, read_text, refuse_address, write_all
+from orolift.sources.files import csv_text, existing_file, read_text, refuse_address, write_all
+from orolift.sources.read_files import inputs_kept, to_be_written
 
 
 @pytest.mark.parametrize(
@@ -99,14 +100,18 @@ def test_what_was_read_is_not_written_over(tmp_path):
     """A table asked for under the name of the observations would end them; another spelling of the path is the same."""
     file = tmp_path / "observed.csv"
     file.write_text("a,b\n")
-    forget_read()
-    read_text(file, "observed")
     (tmp_path / "link").symlink_to(tmp_path)
-    for name in (file, tmp_path / "link" / "observed.csv"):
-        with pytest.raises(CaseError, match=r"observed\.csv has been read in this run and is not written over"):
-            write_all({tmp_path / "new.csv": b"x", name: b"y"})
+    with inputs_kept():
+        read_text(file, "observed")
+        for name in (file, tmp_path / "link" / "observed.csv"):
+            with pytest.raises(CaseError, match=r"observed\.csv is an input of this run \(observed\)"):
+                write_all({tmp_path / "new.csv": b"x", name: b"y"})
+    with inputs_kept():
+        to_be_written({tmp_path / "link" / "observed.csv": "--table"})
+        with pytest.raises(CaseError, match=r"--table: .*observed\.csv is an input of this run \(observed\)"):
+            read_text(file, "observed")
     assert file.read_text() == "a,b\n"
     assert not (tmp_path / "new.csv").exists()
-    forget_read()
+    read_text(file, "observed")
     write_all({file: b"y"})
     assert file.read_bytes() == b"y"

@@ -15,7 +15,7 @@ from orolift.report.figures.many_hours import all_of, any_of, means, runs, spans
 from orolift.report.figures.placing import Board, Box, put, text_width
 from orolift.report.figures.time_axis import TimeTick, time_ticks
 from orolift.report.quantities import Kind, Units, displayed, first_unit, from_displayed, quantity
-from orolift.report.words import zone_words
+from orolift.report.words import rounded_time, zone_words
 from orolift.spread.timeline import values_of
 
 if TYPE_CHECKING:
@@ -23,7 +23,7 @@ if TYPE_CHECKING:
 
     from numpy.typing import NDArray
 
-    from orolift.spread.timeline import Hours, SiteTimeline
+    from orolift.spread.timeline import Hours, SiteTimeline, Stretch
 
     Array = NDArray[np.float64]
 
@@ -130,7 +130,8 @@ def timeline_figure(hours: Hours, number: int, zone: tzinfo, units: Units) -> Fi
         alt=_alt(site, units),
         caption=(
             f"Times are those at which the air is at the site, {words}. "
-            "Upper strip: bold where descending warm dry air is there, thin where air crosses. Grey: nothing is known; "
+            "Upper strip: bold where descending warm dry air is there, from onset to end as said, thin where air "
+            "crosses. Grey: nothing is known; "
             f"hatched: no air crosses. All sites have the same scales.{more}"
         ),
     )
@@ -233,7 +234,8 @@ def _drawing(hours: Hours, number: int, zone: tzinfo, units: Units, layout: Layo
     together = together_of(hours.time.size)
     x = means(np.asarray(place(across, site.arrival)), together)
     width = half * together * across.units_per_value
-    dangers, words, below = _dangers(site, x, width, layout)
+    shown = Shown(across, x, width, together)
+    dangers, words, below = _dangers(site, shown, layout)
     top = below + GAP
     panels = []
     for i, plan in enumerate(own):
@@ -244,7 +246,7 @@ def _drawing(hours: Hours, number: int, zone: tzinfo, units: Units, layout: Layo
     bottom = top - GAP
     whole = replace(layout, bottom=bottom, height=bottom + 7.0 + 2.7 * layout.letter)
     marks = time_ticks(across, zone, layout.letter)
-    states, labels = _states(site, x, width, layout)
+    states, labels = _states(site, shown, layout)
     return TimelineDrawing(
         layout=whole,
         blanks=_blanks(site, x, width, layout.top, bottom),
@@ -261,20 +263,56 @@ def _drawing(hours: Hours, number: int, zone: tzinfo, units: Units, layout: Layo
     )
 
 
-def _dangers(
-    site: SiteTimeline, x: Array, half: float, layout: Layout
-) -> tuple[tuple[Curve, ...], tuple[Label, ...], float]:
+@dataclass(frozen=True, eq=False)
+class Shown:
+    """Where hours stand.
+
+    Attributes
+    ----------
+    across : Scale
+        Of the time.
+    x : ndarray (n,)
+        Middle of each hour, or of each `together`, in drawing units.
+    half : float
+        Half of its width.
+    together : int
+        Hours drawn as one.
+    """
+
+    across: Scale
+    x: Array
+    half: float
+    together: int
+
+    def at(self, time: float, error: float | None) -> float:
+        """Place of a time as the words have it, in drawing units."""
+        return float(place(self.across, rounded_time(time, error or 0.0)))
+
+    def bars(self, one: Stretch, known: NDArray[np.bool_]) -> list[tuple[float, float]]:
+        """Ends of a stretch in drawing units: from its onset to its end as they are said, without hours not known."""
+        inside = np.zeros(known.size, dtype=np.bool_)
+        inside[one.first : one.last + 1] = known[one.first : one.last + 1]
+        found = [(self.x[a] - self.half, self.x[b - 1] + self.half) for a, b in runs(any_of(inside, self.together))]
+        ends = [[float(a), float(b)] for a, b in found]
+        if one.onset is not None:
+            ends[0][0] = self.at(one.onset, one.onset_error)
+        if one.end is not None:
+            ends[-1][1] = self.at(one.end, one.end_error)
+        return [(a, max(b, a + 1.0)) for a, b in ends]
+
+
+def _dangers(site: SiteTimeline, shown: Shown, layout: Layout) -> tuple[tuple[Curve, ...], tuple[Label, ...], float]:
     """A row for each threshold of the region, marked where it is met; and where the rows end."""
     curves, labels = [], []
-    together = math.ceil(len(site.states) / x.size)
     bottom = layout.top + STRIP
     for one in site.thresholds:
         bottom += 2.1 * layout.letter
         y = bottom - 0.35 * layout.letter
         curves.append(Curve(f"M{layout.left} {y:.1f}H{layout.right}", "grid"))
         curves += [
-            Curve(f"M{x[first] - half:.1f} {y:.1f}H{x[last - 1] + half:.1f}", "met")
-            for first, last in runs(any_of(one.met.tolist(), together))
+            Curve(f"M{a:.1f} {y:.1f}H{b:.1f}", "met")
+            for stretch in one.stretches
+            for a, b in shown.bars(stretch, one.judged)
         ]
         words = f"threshold met: {one.rule.name}" if one.met.any() else f"threshold not met: {one.rule.name}"
         kind = "note danger-words" if one.met.any() else "note"
@@ -310,19 +348,20 @@ def _hatch(left: float, right: float, top: float, bottom: float) -> str:
     return "".join(strokes)
 
 
-def _states(site: SiteTimeline, x: Array, half: float, layout: Layout) -> tuple[tuple[Curve, ...], tuple[Label, ...]]:
+def _states(site: SiteTimeline, shown: Shown, layout: Layout) -> tuple[tuple[Curve, ...], tuple[Label, ...]]:
     """The strip at the top: thin where air crosses, bold where descending warm dry air arrives."""
     middle = layout.top + 0.5 * STRIP
     out: list[Curve] = []
-    together = math.ceil(len(site.states) / x.size)
+    x, half, together = shown.x, shown.half, shown.together
     crosses = any_of((state.status == "crossing" for state in site.states), together)
     for first, last in runs(crosses):
         out.append(Curve(f"M{x[first] - half:.1f} {middle}H{x[last - 1] + half:.1f}", "crosses"))
     wishes = []
+    known = np.array([state.status != "missing" for state in site.states])
     for one in site.dry_winds:
-        a, b = float(x[one.first // together]) - half, float(x[one.last // together]) + half
-        out.append(Curve(f"M{a:.1f} {middle}H{max(b, a + 1.0):.1f}", "dry-wind"))
-        wishes.append((a, "descending warm dry air", "name warm"))
+        bars = shown.bars(one, known)
+        out += [Curve(f"M{a:.1f} {middle}H{b:.1f}", "dry-wind") for a, b in bars]
+        wishes.append((bars[0][0], "descending warm dry air", "name warm"))
     for status, words in (("no crossing", "no air crosses"), ("missing", "nothing known")):
         flags = all_of((state.status == status for state in site.states), together)
         wishes += [(float(x[first]) - half, words, "note") for first, _ in runs(flags)]
