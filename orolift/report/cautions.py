@@ -38,7 +38,8 @@ _LINEAR = (
     "than how high the air comes from."
 )
 _NOT_WORKED_OUT = (
-    "Not worked out: showers, flow along the "
+    "Heat from the ground is shaded by the raining cloud of the crossing; other cloud is not known: the sky "
+    "elsewhere counts as clear. Not worked out: showers, flow along the "
     "range and through single gaps, and the range that uncertain input gives the numbers."
 )
 ALWAYS: tuple[Words, ...] = ((_NO_WARNING,), (_RANGE_OF_FLOW,), (_LINEAR,), (_NOT_WORKED_OUT,))
