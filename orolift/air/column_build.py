@@ -47,6 +47,7 @@ _BY_LAPSE: Origin = "lapse rate"
 _ABOVE: Origin = "standard lapse above the data"
 
 _STATION_SPACING = 100.0  # m
+_ONE = "station"
 _EXTRAPOLATED_SPACING = 500.0  # m
 _COLDEST = 193.15  # K; no given lapse rate cools the column below -80 degrees Celsius
 _HUMIDITY_KEPT_TO = 50000.0  # Pa
@@ -79,6 +80,7 @@ def air_from_station(
     crest_wind: CrestWind | tuple[ArrayLike, ArrayLike, float] | None = None,
     top: float = HIGHEST_LEVEL,
     freezing: bool = True,
+    station: str = _ONE,
 ) -> IncomingAir:
     """Column above a station, from the values of the station alone.
 
@@ -107,6 +109,8 @@ def air_from_station(
         16000 m to 30000 m.
     freezing : bool
         False: saturation is over liquid at all temperatures.
+    station : str
+        What the notes call it.
 
     Returns
     -------
@@ -168,10 +172,10 @@ def air_from_station(
         return vapour, cloud
 
     p, vapour, cloud = balanced(height, t, p0, moisture)
-    wind, wind_note = _station_wind(height, elevation, speed, direction, crest)
+    wind, wind_note = _station_wind(height, elevation, speed, direction, crest, station)
     notes = [
-        _lapse_note(lapse, bool(np.any(fallen < t))),
-        _humidity_note(humidity0),
+        _lapse_note(lapse, bool(np.any(fallen < t)), station),
+        _humidity_note(humidity0, station),
         wind_note,
         *_fog_note(cloud0),
     ]
@@ -304,14 +308,17 @@ def _checked_crest_wind(crest: CrestWind, elevation: float) -> CrestWind:
 
 
 def _station_wind(
-    height: Array, elevation: float, speed: Array, direction: Array, crest: CrestWind | None
+    height: Array, elevation: float, speed: Array, direction: Array, crest: CrestWind | None, station: str
 ) -> tuple[tuple[Array, Array], str]:
     """Eastward and northward wind of a station column, and the sentence that says how."""
     u, v = -speed * np.sin(direction), -speed * np.cos(direction)
     if crest is None:
+        above = "The wind is the station's at all heights"
+        if station != _ONE:
+            above = f"Above the {station} its wind stays as it is"
         wind = tuple(np.broadcast_to(x[..., np.newaxis], (*x.shape, height.size)).copy() for x in (u, v))
         return (wind[0], wind[1]), (
-            "The wind is the station's at all heights (assumed). The wind at crest height decides whether the air "
+            f"{above} (assumed). The wind at crest height decides whether the air "
             "crosses or is blocked: give it if it is known."
         )
     crest_speed, crest_from = np.asarray(crest.speed, np.float64), np.asarray(crest.from_direction, np.float64)
@@ -324,25 +331,25 @@ def _station_wind(
     eastward = profile(u, -crest_speed * np.sin(crest_from))
     northward = profile(v, -crest_speed * np.cos(crest_from))
     return (eastward, northward), (
-        f"The wind changes evenly from the station to the given wind at {crest.height:.0f} m and is constant above "
+        f"The wind changes evenly from the {station} to the given wind at {crest.height:.0f} m and is constant above "
         "(assumed)."
     )
 
 
-def _lapse_note(lapse: Array, floored: bool) -> str:
+def _lapse_note(lapse: Array, floored: bool, station: str) -> str:
     """How temperature above the station was assumed."""
     rate = float(np.median(lapse)) * 1000.0
     stops = " It is not let fall below -80 °C." if floored else ""
-    return f"Above the station temperature falls by {rate:.1f} °C per km up to 11 km and is constant above.{stops}"
+    return f"Above the {station} temperature falls by {rate:.1f} °C per km up to 11 km and is constant above.{stops}"
 
 
-def _humidity_note(humidity: Array) -> str:
+def _humidity_note(humidity: Array, station: str) -> str:
     """How humidity above the station was assumed."""
     share = float(np.median(humidity))
     if share <= DRY_HUMIDITY:
-        return f"Relative humidity stays as at the station, {share:.0%}, at all heights (assumed)."
+        return f"Relative humidity stays as at the {station}, {share:.0%}, at all heights (assumed)."
     return (
-        f"Relative humidity stays as at the station, {share:.0%}, up to 500 hPa, falls to 10% at 200 hPa and stays "
+        f"Relative humidity stays as at the {station}, {share:.0%}, up to 500 hPa, falls to 10% at 200 hPa and stays "
         "there (assumed); where that would be above saturation over ice, the air is just saturated."
     )
 

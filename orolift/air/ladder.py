@@ -138,6 +138,7 @@ def air_from_ladder(
         crest_wind=None if low_crest else crest_wind,
         top=top,
         freezing=freezing,
+        station="station" if len(rungs) == 1 else "highest station",
     )
     origin = tuple(_STATION if np.min(np.abs(z - level)) < 1e-6 else _BETWEEN for level in height)
     note = (

@@ -65,7 +65,9 @@ def exit_code(arguments: list[str]) -> int:
         0 done, 2 input at fault, 130 interrupted, 1 a fault of orolift.
     """
     from orolift.errors import OroliftError
+    from orolift.sources.files import forget_read
 
+    forget_read()
     try:
         command.main(arguments, prog_name="orolift", standalone_mode=False)
         code, message = 0, ""

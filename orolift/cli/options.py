@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Mapping
+    from collections.abc import Callable, Iterable, Mapping
 
 UNITS_OPTION = click.option(
     "--units",
@@ -56,13 +56,15 @@ def file_option(name: str, text: str) -> Callable[[Any], Any]:
     return click.option(name, type=click.Path(path_type=str), default=None, metavar="FILE", help=text)
 
 
-def refuse_files(files: Mapping[str, str | None]) -> None:
-    """Refuse files that could not be written or are asked for twice, before long work is done.
+def refuse_files(files: Mapping[str, str | None], read: Iterable[str] = ()) -> None:
+    """Refuse files that could not be written, are asked for twice or are read, before long work is done.
 
     Parameters
     ----------
     files : mapping of str to str or None
         By the name of their option.
+    read : iterable of str
+        Files the command reads: none is written over.
 
     Raises
     ------
@@ -74,11 +76,14 @@ def refuse_files(files: Mapping[str, str | None]) -> None:
     from orolift.errors import CaseError
     from orolift.sources.files import refuse_unwritable
 
+    kept = {Path(name).resolve() for name in read}
     seen: dict[Path, str] = {}
     for option, name in files.items():
         if name is None:
             continue
-        path = Path(name).absolute()
+        path = Path(name).resolve()
+        if path in kept:
+            raise CaseError(f"--{option}: {name} is read by this command. Nothing is written; give another name.")
         if path in seen:
             raise CaseError(f"--{seen[path]} and --{option} both name {name}. Give each its own file.")
         seen[path] = option

@@ -16,6 +16,9 @@ if TYPE_CHECKING:
 
 Status = Literal["met", "met at the upper end of the wind", "not met", "cannot be judged"]
 
+MOST_UNJUDGED = 0.1
+"""Share of the members that may not be judged where a chance is still given: it is then at most so much off."""
+
 
 @dataclass(frozen=True)
 class Condition:
@@ -218,14 +221,16 @@ def with_chance(found: JudgedRule, members: Mapping[str | WindMeant, ArrayLike])
     Returns
     -------
     JudgedRule
-        Members that cannot be judged do not count; without any that can, there is no chance.
+        Members that cannot be judged do not count. Those that can be without the unknown value are the ones that
+        miss another limit: where more than `MOST_UNJUDGED` cannot, there is no chance.
     """
     met, known = rule_met(found.rule, members)
+    enough = bool(known.any()) and float((~known).mean()) <= MOST_UNJUDGED
     conditions = tuple(
         replace(one, chance=_share(margins(one.condition, members.get(one.condition.quantity, np.nan))))
         for one in found.conditions
     )
-    return replace(found, conditions=conditions, chance=float(met[known].mean()) if known.any() else None)
+    return replace(found, conditions=conditions, chance=float(met[known].mean()) if enough else None)
 
 
 def _share(margin: NDArray[np.float64]) -> float | None:

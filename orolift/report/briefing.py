@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 from orolift.report.causes import cause_noun, main_cause
 from orolift.report.key_numbers import KeyNumber, blocked_with_range, gusts, key_numbers
 from orolift.report.lee_wind import range_words
-from orolift.report.quantities import Amount
+from orolift.report.quantities import NO_BREAK_SPACE, Amount
 from orolift.report.spans import Spans, ranged
 from orolift.report.story import (
     ROUNDING,
@@ -151,7 +151,7 @@ def _flow(spans: Spans, bearing: float) -> Words:
         Amount(crossing.features.crest, "height"),
         " with ",
         *ranged(Amount(flow.crest_wind, "wind"), spans.of("cross_range_wind")),
-        " across it: N h/U is ",
+        f" across it: N{NO_BREAK_SPACE}h/U is ",
         Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2),
         f", so the flow {_CERTAIN.get(flow.regime, flow.regime)}",
     )
@@ -254,7 +254,7 @@ def _lee(spans: Spans, site: LeeAir) -> Words:
     return (
         *start,
         "air from ",
-        *source_words(site),
+        *_source(site),
         " arrives with ",
         *_values(spans, site),
         ": ",
@@ -263,6 +263,12 @@ def _lee(spans: Spans, site: LeeAir) -> Words:
         *_mainly(crossing, site),
         ".",
     )
+
+
+def _source(site: LeeAir) -> Words:
+    """The height the air comes from; its range is that of the air, not of the members."""
+    first, *rest = source_words(site)
+    return (first, " (eight tenths of it from ", *rest[1:]) if rest else (first,)
 
 
 def _values(spans: Spans, site: LeeAir) -> Words:

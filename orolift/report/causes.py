@@ -154,7 +154,7 @@ def cause_heading(crossing: Crossing, site: LeeAir) -> Words:
             *_plain_end(subject),
             " and ",
             *_plain_end(other),
-            f" explain the {what} together{_rain_clause(crossing, key)}",
+            f" explain the {what} together{'' if second == 'latent' else _rain_clause(crossing, key)}",
         )
     return (*subject, f" explains the {what}{_rain_clause(crossing, key)}")
 

@@ -338,6 +338,8 @@ def _values_heading(rows: tuple[ValueRow, ...]) -> Words:
 
 def _score_row(one: Verdict) -> ScoreRow:
     kind, digits = QUANTITY_KINDS[one.quantity].difference
+    if kind == "wind":
+        kind = "wind_alone"  # knots beside every number would run the table off the page
 
     def against(name: Reference) -> Words:
         other = one.references.get(name)

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, NamedTuple
 
-from orolift.report.quantities import Amount
+from orolift.report.quantities import Amount, displayed
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Kind
@@ -54,4 +54,5 @@ def magnitude(kind: Kind) -> Kind:
 def signed(value: float, kind: Kind, digits: int) -> Words:
     """A difference with its sign, a plus too."""
     amount = Amount(value, kind, digits)
-    return ("+", amount) if value > 0.0 and kind != "temperature_change" else (amount,)
+    plus = kind != "temperature_change" and round(displayed(value, kind, "metric"), digits) > 0.0
+    return ("+", amount) if plus else (amount,)

@@ -135,6 +135,8 @@ def headline(found: tuple[SiteFire, ...]) -> Headline:
             return Headline(f"{what} met at {where}{how}", names)
     if all(one.status == ORDER[3] for _, one in judged):
         return Headline("No threshold can be judged", ())
+    if any(one.status == ORDER[3] for _, one in judged):
+        return Headline("No threshold is met where it can be judged", ())
     return Headline("No threshold is met", ())
 
 
@@ -177,7 +179,10 @@ def _condition(one: JudgedCondition, moves: tuple[Mover, ...]) -> ConditionRow:
         apart = ("met by " if one.margin >= 0.0 else "missed by ", by)
     return ConditionRow(
         what=_what(one.condition.quantity),
-        limit=(f"{limit_words(one.condition)} ", Amount(one.condition.limit, kind, digits)),
+        limit=(
+            f"{limit_words(one.condition)} ",
+            Amount(one.condition.limit, "rain_limit" if kind == "rain_rate" else kind, digits),
+        ),
         value=None if one.value is None else Amount(one.value, kind, digits),
         margin=apart,
         met=one.met is True,

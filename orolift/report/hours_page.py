@@ -11,7 +11,7 @@ import numpy as np
 
 from orolift.report.cautions import ALWAYS
 from orolift.report.figures.timeline import timeline_figure
-from orolift.report.quantities import Amount
+from orolift.report.quantities import NO_BREAK_SPACE, Amount
 from orolift.report.words import counted, moment, month, zone_words
 
 if TYPE_CHECKING:
@@ -220,7 +220,7 @@ def hours_page(
         sites=tuple(_site(hours, number, zone, units) for number in range(len(hours.sites))),
         catchments=_catchments(hours, zone),
         how=HOW,
-        cautions=(ALWAYS[0], ONE_ANSWER, ALWAYS[2]),
+        cautions=(ALWAYS[0], ONE_ANSWER, *ALWAYS[1:]),
         notes=notes,
     )
 
@@ -325,11 +325,19 @@ def _from_to(one: Stretch, zone: tzinfo) -> Words:
     if one.onset is None or one.onset_error is None:
         parts.append("from the first hour that can be judged")
     else:
-        parts += [f"from {about(one.onset, one.onset_error, zone)} (± ", Amount(one.onset_error, "hours", 1), ")"]
+        parts += [
+            f"from {about(one.onset, one.onset_error, zone)} (±{NO_BREAK_SPACE}",
+            Amount(one.onset_error, "hours", 1),
+            ")",
+        ]
     if one.end is None or one.end_error is None:
         parts.append(" to the last that can be judged")
     else:
-        parts += [f" to {about(one.end, one.end_error, zone)} (± ", Amount(one.end_error, "hours", 1), ")"]
+        parts += [
+            f" to {about(one.end, one.end_error, zone)} (±{NO_BREAK_SPACE}",
+            Amount(one.end_error, "hours", 1),
+            ")",
+        ]
     return tuple(parts)
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from typing import TYPE_CHECKING, Literal
 
+import numpy as np
 from pydantic import Field
 
 from orolift.sources.hours_results import QUANTITIES, Flags, Numbers, numbers, said
@@ -46,6 +47,7 @@ class DirectionColumns(Block):
     rain_mm_per_h: Numbers
     snow_mm_per_h: Numbers
     crest_wind_ms: Numbers
+    off_normal_deg: Numbers = Field(description="angle between the line and the direction across the range")
     drying_power_hpa_ms: Numbers = Field(description="vapour pressure deficit times wind at 10 m")
     descending_warm_dry: Flags
 
@@ -122,6 +124,7 @@ def _site(site: SiteBearings, bearings: Bearings) -> SiteBearingsBlock:
             shelter_longitude=numbers(values_of(states, "shelter_longitude")),
             shelter_latitude=numbers(values_of(states, "shelter_latitude")),
             drying_power_hpa_ms=numbers(values_of(states, "drying_power") / 100.0),
+            off_normal_deg=numbers(np.degrees(values_of(states, "oblique"))),
             descending_warm_dry=[state.descending for state in states],
             **found,
         ),

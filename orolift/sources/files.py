@@ -10,13 +10,16 @@ import tempfile
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from orolift.errors import DataFileError, MissingFileError
+from orolift.errors import CaseError, DataFileError, MissingFileError
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping, Sequence
 
 TEXT_LIMIT = 32 * 1024 * 1024
 """Largest text file read, in bytes: a radiosonde ascent at one-second steps is under 1 MB."""
+
+_READ: set[str] = set()
+"""Files this run has read, so that none of them is written over."""
 
 _ADDRESS = re.compile(r"^\s*(?:[a-z][a-z0-9+.-]+://|/vsi|(?:http|https|ftp|s3|gs|az)(?:/|:))", re.IGNORECASE)
 
@@ -84,7 +87,35 @@ def existing_file(path: str | Path, where: str, folder: Path | None = None) -> P
         raise MissingFileError(f"{where}: {full} cannot be found ({_reason(error)}). {hint}") from error
     if size == 0:
         raise DataFileError(f"{where}: {full} is empty.")
+    _READ.add(_real(full))
     return full
+
+
+def forget_read() -> None:
+    """Start a run: no file has been read yet."""
+    _READ.clear()
+
+
+def refuse_over_read(paths: Iterable[str | Path]) -> None:
+    """Refuse to write over a file that this run has read: a table must not take the place of its observations.
+
+    Parameters
+    ----------
+    paths : iterable of str or Path
+
+    Raises
+    ------
+    CaseError
+        That names the file.
+    """
+    for path in paths:
+        if _real(path) in _READ:
+            raise CaseError(f"{path} has been read in this run and is not written over. Give another name.")
+
+
+def _real(path: str | Path) -> str:
+    """One spelling of a path, however it is written."""
+    return os.path.normcase(os.path.realpath(path))
 
 
 def read_text(path: str | Path, where: str, folder: Path | None = None, *, limit: int = TEXT_LIMIT) -> str:
@@ -166,9 +197,12 @@ def write_all(contents: Mapping[Path, bytes]) -> None:
 
     Raises
     ------
+    CaseError
+        If one of them has been read in this run.
     MissingFileError
         If a folder is missing, a name is taken by a folder, or the disk is full.
     """
+    refuse_over_read(contents)
     waiting: list[tuple[str, Path]] = []
     try:
         for path, data in contents.items():

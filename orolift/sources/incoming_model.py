@@ -183,7 +183,7 @@ class Incoming(Table):
         if self.station is not None and self.station.wind_from_deg is None:
             raise ValueError("wind_from_deg is needed: the station has none of its own")
         if self.crest_wind_kt is not None and self.crest_wind_from_deg is None:
-            raise ValueError("crest_wind_kt needs crest_wind_from_deg, or wind_from_deg, beside it")
+            raise ValueError("the wind at the crest needs crest_wind_from_deg, or wind_from_deg, beside it")
         rungs = self.stations or []
         if rungs and any(rung.wind_kt is not None and rung.wind_from_deg is None for rung in rungs):
             raise ValueError("wind_from_deg is needed: a station with wind has no direction of its own")

@@ -31,6 +31,7 @@ WINDOW_CELLS = 8_000_000  # cells read at once when it has none
 CHUNK = 32  # points along a line read with one window, so that a slanting line does not read its whole bounding box
 ONE_WINDOW = 1_000_000  # cells; a bounding box with fewer is read at once
 _NO_GROUND = -12_000.0  # [m] below the deepest trench: a "missing" value nobody declared
+_MISSING, _DEEP = -9999.0, -8000.0  # [m] the first is missing ground, unless the sea beside it is as deep as the second
 _ADDRESS = re.compile(r"(?<![\w.-])/vsi\w+|\b[a-z][a-z0-9+.-]+://", re.IGNORECASE)
 _UNIT_WORDS = {
     "": 1.0,
@@ -319,10 +320,12 @@ def _ground(raster: RasterFile, values: NDArray[np.float64]) -> NDArray[np.float
     ground[np.isinf(ground)] = np.nan
     known = ground[~np.isnan(ground)]
     highest, lowest = known.max(initial=0.0), known.min(initial=0.0)
-    if lowest < _NO_GROUND or highest > 10 * HIGHEST_GROUND:
+    stands_alone = bool((known == _MISSING).any()) and not bool(((known < _DEEP) & (known != _MISSING)).any())
+    if lowest < _NO_GROUND or highest > 10 * HIGHEST_GROUND or stands_alone:
+        found = lowest if lowest < _NO_GROUND or stands_alone else highest
         raise DataFileError(
-            f"{raster.name} holds {lowest if lowest < _NO_GROUND else highest:g} m, which stands for missing cells "
-            "but is not declared. Declare it, for example: gdal_edit.py -a_nodata -32768 FILE"
+            f"{raster.name} holds {found:g} m, which stands for missing cells but is not declared. Declare it, for "
+            f"example: gdal_edit.py -a_nodata {found:g} FILE"
         )
     if highest > HIGHEST_GROUND:
         advice = (

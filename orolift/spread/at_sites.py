@@ -75,7 +75,7 @@ def shadows(crossing: Crossing) -> tuple[Site, ...]:
 
 
 FACTORS = ("mixing_ratio", "wind", "wind_10m", "gust")
-"""Numbers whose deviations are factors; those of the others are differences."""
+"""Numbers whose deviations are factors; those of the others are differences. Rain has factors where there is any."""
 
 
 def centred(whole: Members, crossing: Crossing) -> Members:
@@ -90,10 +90,13 @@ def centred(whole: Members, crossing: Crossing) -> Members:
             value = np.nan if own is None else own
             if name in FACTORS:
                 sites[name][:, column] *= value / middle if middle > 0.0 else np.nan
+            elif name == "rain" and middle > 0.0:
+                sites[name][:, column] *= value / middle
             else:
                 sites[name][:, column] += value - middle
         if sites:
             p, t, v = (sites[name][:, column] for name in ("pressure", "temperature", "mixing_ratio"))
+            v = sites["mixing_ratio"][:, column] = np.minimum(v, _most_vapour(p, t))
             sites["dew_point"][:, column], sites["relative_humidity"][:, column] = _humidity(p, t, v)
     return Members(whole.crosses[:-1], {name: value[:-1] for name, value in whole.values.items()}, sites)
 
@@ -112,6 +115,7 @@ def _answers(air: LeeAir) -> dict[str, float | None]:
         "source_level_low": air.source_level_low,
         "source_level_high": air.source_level_high,
         "warming": air.warming,
+        "rain": air.rain,
         **{f"warming_{name}": None if parts is None else getattr(parts, name) for name in PARTS},
         "popular_picture": air.popular_picture,
         "descent_only": air.descent_only,
@@ -159,10 +163,7 @@ def with_method_error(
     out["temperature"] = sites["temperature"] + sigma_t * z_t
     out["warming"] = sites["warming"] + sigma_t * z_t
     p, t = sites["pressure"], out["temperature"]
-    here = np.isfinite(t)
-    most = np.full(t.shape, np.nan)
-    most[here] = saturation_mixing_ratio(p[here], np.clip(t[here], 160.0, 340.0))
-    v = np.minimum(np.maximum(sites["mixing_ratio"] + sigma_v * z_v, LEAST_VAPOUR), most)
+    v = np.minimum(np.maximum(sites["mixing_ratio"] + sigma_v * z_v, LEAST_VAPOUR), _most_vapour(p, t))
     out["mixing_ratio"] = v
     out["dew_point"], out["relative_humidity"] = _humidity(p, t, v)
     for name, low, high in _wind_ranges(lee):
@@ -180,6 +181,14 @@ def _wind_ranges(lee: tuple[LeeAir, ...]) -> Iterator[tuple[str, Array, Array]]:
     half = [0.0 if w is None else np.log(w.gust_high / max(0.5 * (w.gust_low + w.gust_high), 0.1)) for w in winds]
     less = [0.0 if w is None else np.log(0.5 * (w.gust_low + w.gust_high) / max(w.gust_low, 0.1)) for w in winds]
     yield "gust", np.hypot(low, np.maximum(less, 0.0)), np.hypot(high, np.maximum(half, 0.0))
+
+
+def _most_vapour(p: Array, t: Array) -> Array:
+    """Mixing ratio of saturated air; NaN where there is no air."""
+    here = np.isfinite(t)
+    most = np.full(t.shape, np.nan)
+    most[here] = saturation_mixing_ratio(p[here], np.clip(t[here], 160.0, 340.0))
+    return most
 
 
 def _humidity(p: Array, t: Array, v: Array) -> tuple[Array, Array]:

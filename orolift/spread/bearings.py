@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.crossing.facts import OBLIQUE
 from orolift.spread.site_state import SiteState, states_of
 
 if TYPE_CHECKING:
@@ -66,7 +67,8 @@ class SiteBearings:
         In the order of the directions.
     warmest, driest, fire, rain : int or None
         Numbers of the directions with the strongest warming, the lowest humidity, the largest product of vapour
-        pressure deficit and wind at 10 m, and the most rain; None where there is none.
+        pressure deficit and wind at 10 m, and the most rain; None where there is none. Only directions that are not
+        oblique to the range count, unless all are: see `square_enough`.
     """
 
     name: str
@@ -123,9 +125,10 @@ def worked_direction(task: BearingTask) -> Direction:
     """
     states = list(task.states)
     for line in task.lines:
-        found, _ = states_of(line.situation, line.observed_at)
+        found, crossing = states_of(line.situation, line.observed_at)
+        oblique = None if crossing is None else off_normal(task.wind_from, crossing.flow.normal)
         for number, state in zip(line.numbers, found, strict=True):
-            states[number] = state
+            states[number] = replace(state, oblique=oblique)
     return Direction(task.wind_from, tuple(states))
 
 
@@ -172,9 +175,52 @@ def _site(name: str, states: tuple[SiteState, ...]) -> SiteBearings:
     )
 
 
+def off_normal(wind_from: float, normal: float) -> float:
+    """Angle between a wind and the direction across a range [rad].
+
+    Parameters
+    ----------
+    wind_from : float [rad]
+    normal : float [rad]
+        Toward which the air crosses.
+
+    Returns
+    -------
+    float [rad]
+        0 to a right angle.
+
+    Examples
+    --------
+    >>> round(math.degrees(off_normal(math.radians(235.0), math.radians(75.0))))
+    20
+    """
+    return math.acos(min(max(-math.cos(wind_from - normal), 0.0), 1.0))
+
+
+def square_enough(states: Sequence[SiteState]) -> list[bool]:
+    """Whether the air comes within 45 degrees of the direction across the range; all do where none does.
+
+    Parameters
+    ----------
+    states : sequence of SiteState
+        Of one site, in the order of the directions.
+
+    Returns
+    -------
+    list of bool
+        Air that runs more along the range than across it does not cross it as it is worked out here.
+    """
+    near = [state.oblique is not None and state.oblique <= OBLIQUE for state in states]
+    return near if any(near) else [True] * len(near)
+
+
 def _most(states: Sequence[SiteState], key: str, sign: float) -> int | None:
     """Number of the state with the largest value, times a sign; the first of several, None without any."""
-    known = [(sign * getattr(state, key), -i) for i, state in enumerate(states) if getattr(state, key) is not None]
+    known = [
+        (sign * getattr(state, key), -i)
+        for i, (state, counts) in enumerate(zip(states, square_enough(states), strict=True))
+        if counts and getattr(state, key) is not None
+    ]
     return -max(known)[1] if known else None
 
 

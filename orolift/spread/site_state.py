@@ -36,7 +36,7 @@ Status = Literal["crossing", "no crossing", "missing"]
 SLOWEST = 1.0
 """Wind [m s-1] below which the time on the way is counted with this, as for the heat of the ground."""
 LEAST_WARMING = 1.0
-"""Warming [K] from which lee air counts as warm: half the stated model error; a judgement."""
+"""Warming [K] from which lee air counts as warm: two thirds of the least error of the method; a judgement."""
 HALFWAY = 0.5
 """Share of the way from the potential temperature of the incoming air at the height of a site to that at the crest
 which air come down from the crest has made at least; what is short of the whole is mixing and low air; a judgement."""
@@ -92,6 +92,8 @@ class SiteState:
         Where that is; None for a hand-entered ridge.
     crest_wind : float or None [m s-1]
         Component across the range.
+    oblique : float or None [rad]
+        Angle between the wind and the direction across the range, 0 to a right angle; None where nobody asked.
     breaks_through : bool or None
     descending : bool or None
         Whether the air there is descending warm dry air; see `descending_warm_dry`.
@@ -120,6 +122,7 @@ class SiteState:
     shelter_longitude: float | None = None
     shelter_latitude: float | None = None
     crest_wind: float | None = None
+    oblique: float | None = None
     breaks_through: bool | None = None
     descending: bool | None = None
     rule_values: Mapping[str | WindMeant, float] | None = None

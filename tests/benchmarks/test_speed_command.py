@@ -4,6 +4,7 @@ Memory is the high-water mark that Linux keeps for a process since it was starte
 through the start: it would count the memory of the process that measures.
 """
 
+import shutil
 import subprocess
 import sys
 import time
@@ -40,13 +41,20 @@ def best_of(arguments, folder, times=5) -> tuple[float, float]:
     ("name", "arguments", "seconds", "megabytes"),
     [
         ("help", ["--help"], 0.3, 60.0),
-        ("ridge", ["cross", str(DEMO / "varn_ridge.toml"), "--quiet"], 1.5, 250.0),
-        ("raster", ["cross", str(DEMO / "varn_moist.toml"), "--quiet"], 2.0, 400.0),
-        ("check", ["check", str(DEMO / "varn_ridge.toml")], 1.0, 250.0),
+        ("ridge, 32 members", ["cross", "varn_ridge.toml", "--quiet"], 2.5, 250.0),
+        ("ridge, no members", ["cross", "alone_ridge.toml", "--quiet"], 1.5, 250.0),
+        ("raster, 32 members", ["cross", "varn_moist.toml", "--quiet"], 3.0, 400.0),
+        ("raster, no members", ["cross", "alone_moist.toml", "--quiet"], 2.0, 400.0),
+        ("check", ["check", "varn_ridge.toml"], 1.0, 250.0),
     ],
 )
 def test_cold_command(name, arguments, seconds, megabytes, tmp_path):
     """Seconds are for a quiet machine of two cores; the ratio to a bare start travels better."""
+    for file in DEMO.iterdir():
+        shutil.copy(file, tmp_path)
+    for case in ("ridge", "moist"):
+        text = (DEMO / f"varn_{case}.toml").read_text()
+        (tmp_path / f"alone_{case}.toml").write_text(f"{text}\n[spread]\nmembers = 0\n")
     bare, _ = best_of(["-c", "import numpy"], tmp_path)
     taken, peak = best_of(["-c", MEASURE, *arguments], tmp_path)
     print(f"\n{name}: {taken:.2f} s, {taken / bare:.1f} times a bare start with numpy, peak {peak:.0f} MB")

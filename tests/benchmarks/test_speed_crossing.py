@@ -55,18 +55,18 @@ def test_one_large_crossing(share):
 
 @pytest.mark.speed
 def test_a_hundred_together():
-    """100 columns over 512 points by 80 streamlines, marched together: within 2.5 s."""
+    """100 columns over 512 points by 80 streamlines, marched together: within 3 s."""
     ground, air = setting(512)
     shift = np.linspace(-2.0, 2.0, 100)[:, None]
     many = with_values(air, temperature=air.temperature + shift)
     taken = best(lambda: solve(ground, many, Settings(), Lee(), members=100, streamlines=80, passes=3), times=1)
     print(f"\n100 x 512 x 80: {taken:.2f} s, {taken / bare_fft(512, 80, 100):.0f} bare FFT round trips")
-    assert taken <= 2.5
+    assert taken <= 3.0
 
 
 @pytest.mark.speed
 def test_the_members_of_a_spread():
-    """32 columns with times and critical values of their own, at the usual 60 streamlines and passes: within 0.8 s."""
+    """32 columns with times and critical values of their own, at the usual 60 streamlines and passes: within 1 s."""
     ground, air = setting(512)
     rng = np.random.default_rng(3)
     many = with_values(air, temperature=air.temperature + rng.normal(0.0, 1.0, (32, 1)))
@@ -77,4 +77,4 @@ def test_the_members_of_a_spread():
     )
     taken = best(lambda: solve(ground, many, settings, Lee(), members=32))
     print(f"\n32 x 512 x 60: {taken:.2f} s, {taken / bare_fft(512, 60, 32):.0f} bare FFT round trips")
-    assert taken <= 0.8
+    assert taken <= 1.0

@@ -51,6 +51,18 @@ def test_two_outputs_never_share_a_path(case_folder, capsys, arguments, said):
     assert sorted(case_folder.iterdir()) == before
 
 
+@pytest.mark.parametrize("command", ["cross", "bearings"])
+def test_a_file_that_a_case_names_is_not_written_over(case_folder, edited, capsys, command):
+    """A table under the name of the ridge would end the ridge."""
+    edited(
+        ("ridge_km_m = [[0, 40], [25, 1850], [60, 210]]", 'ridge_file = "ridge.csv"'), ("members = 10", "members = 0")
+    )
+    before = {file: file.read_bytes() for file in case_folder.iterdir()}
+    assert exit_code([command, "case.toml", "--quiet", "--table", "ridge.csv"]) == 2
+    assert "ridge.csv has been read in this run and is not written over" in capsys.readouterr().err
+    assert {file: file.read_bytes() for file in case_folder.iterdir()} == before
+
+
 def test_a_case_called_index_is_refused_in_a_folder(case_folder, capsys):
     (case_folder / "index.toml").write_text((case_folder / "case.toml").read_text())
     assert exit_code(["cross", "index.toml", "--quiet", "--folder", "out"]) == 2

@@ -60,13 +60,16 @@ def test_margins_are_in_the_unit_of_the_quantity():
 
 
 def test_chance_is_the_share_of_members_that_meet_all_conditions():
-    """Two of four; a member that cannot be judged does not count, one that misses a known limit does."""
+    """Two of four; one that misses a known limit counts, and where too many cannot be judged there is no chance."""
     members = values(np.array([0.1, 0.1, 0.2, 0.3]), np.array([12.0, 13.0, 14.0, 15.0]))
     found = judged(RULE, values(0.2, 13.0), members=members)
     assert found.chance == 0.5
     assert [one.chance for one in found.conditions] == [0.5, 1.0]
     members[MEANT] = np.array([12.0, np.nan, np.nan, 15.0])
-    assert judged(RULE, values(0.2, 13.0), members=members).chance == pytest.approx(1.0 / 3.0)
+    # the second meets the humidity and its wind is not known: 1 of 4 or 2 of 4, not 1 of 3
+    assert judged(RULE, values(0.2, 13.0), members=members).chance is None
+    members = values(np.array([0.1] * 11), np.array([12.0] * 5 + [1.0] * 5 + [np.nan]))
+    assert judged(RULE, values(0.2, 13.0), members=members).chance == pytest.approx(0.5)
     members = values(np.full(3, 0.1), np.full(3, np.nan))
     assert judged(RULE, values(0.1, np.nan), members=members).chance is None
 

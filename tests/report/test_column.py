@@ -152,3 +152,12 @@ def test_findings_stand_in_a_table_the_gravest_first(page_for, crossing):
     assert table.index("line 4") < table.index("line 5") < table.index("line 9")
     assert "spike &lt;b&gt;" in table
     assert 'id="findings"' not in render(page_for(crossing))
+
+
+def test_no_class_of_a_drawing_is_styled_for_two_things():
+    """A fill for one figure would hide the stroke of another that goes by the same name."""
+    from orolift.report.render import _environment
+
+    style = _environment().globals["inlined"]["style.css"].text
+    assert style.count("\n.met {") == 1
+    assert style.count("\n.spell {") == 1

@@ -1,6 +1,7 @@
 """Drawings: things stand where their values say, and labels cover neither each other nor the frame."""
 
 import re
+from dataclasses import replace
 from itertools import pairwise
 
 import numpy as np
@@ -17,8 +18,10 @@ from orolift.report.figures.drawing import area, head_along, path_data, polyline
 from orolift.report.figures.low_air import hatch
 from orolift.report.figures.pins import spread
 from orolift.report.figures.placing import box_of, meet
+from orolift.report.figures.section import section
 from orolift.report.figures.wind_panel import near_ground
 from orolift.report.quantities import from_displayed, quantity
+from orolift.report.trace import trace
 
 TENTH = 0.1
 
@@ -275,6 +278,27 @@ def test_blocked_air_is_hatched_up_to_its_top_before_the_crest(page_for, named):
         assert (low, high) == pytest.approx((crossing.flow.blocked_top_low, crossing.flow.blocked_top_high), abs=5.0)
         assert any(label.text.startswith("blocked") for label in drawing.labels)
     assert any("40\u00a0% of it goes round" in label.text for label in page_for(crossing).section.drawing.labels)
+
+
+def test_range_of_the_blocked_top_is_that_of_the_members_where_there_are_some(named):
+    """One page says one range of one number."""
+    crossing = named("blocked")
+    figure = section(crossing, trace(crossing), 4.7, 3000.0, "metric", blocked=(510.0, 1230.0))
+    for drawing in both_forms(figure):
+        bar = next(curve.path for curve in drawing.leaders if curve.kind == "reach")
+        ends = (float(y) for y in re.match(r"M[\d.]+ ([\d.]+)V([\d.]+)", bar).groups())
+        levels = levels_of(drawing.height_ticks)
+        assert [read_off(levels, end) for end in ends] == pytest.approx([510.0, 1230.0], abs=5.0)
+
+
+def test_air_below_freezing_throughout_has_no_freezing_level_on_the_section(named):
+    """The ground is no height at which cold air is at 0 °C."""
+    crossing = named("blocked")
+    ground = float(crossing.incoming.height[0])
+    cold = replace(crossing, air=replace(crossing.air, temperature=crossing.air.temperature - 60.0))
+    for level, said in ((ground, False), (9000.0, True)):
+        drawing = section(cold, trace(cold), 4.7, level, "metric").drawing
+        assert any("0\u00a0°C" in label.text or "0 °C" in label.text for label in drawing.labels) is said
 
 
 def test_low_air_is_drawn_only_where_there_is_some(page_for, any_crossing):

@@ -6,8 +6,8 @@ import sys
 
 import pytest
 
-from orolift.errors import DataFileError, MissingFileError
-from orolift.sources.files import csv_text, existing_file, read_text, refuse_address, write_all
+from orolift.errors import CaseError, DataFileError, MissingFileError
+from orolift.sources.files import csv_text, existing_file, forget_read, read_text, refuse_address, write_all
 
 
 @pytest.mark.parametrize(
@@ -93,3 +93,20 @@ def test_formulas_in_cells_stay_text():
     """Cells that a spreadsheet would run are quoted and led by an apostrophe; numbers stay numbers."""
     rows = [["=cmd()", 1], ["+1", -2.5], ["-x", 3], ["@a", None]]
     assert csv_text(["name", "v"], rows) == ('"name","v"\n"\'=cmd()",1\n"\'+1",-2.5\n"\'-x",3\n"\'@a",""\n')
+
+
+def test_what_was_read_is_not_written_over(tmp_path):
+    """A table asked for under the name of the observations would end them; another spelling of the path is the same."""
+    file = tmp_path / "observed.csv"
+    file.write_text("a,b\n")
+    forget_read()
+    read_text(file, "observed")
+    (tmp_path / "link").symlink_to(tmp_path)
+    for name in (file, tmp_path / "link" / "observed.csv"):
+        with pytest.raises(CaseError, match=r"observed\.csv has been read in this run and is not written over"):
+            write_all({tmp_path / "new.csv": b"x", name: b"y"})
+    assert file.read_text() == "a,b\n"
+    assert not (tmp_path / "new.csv").exists()
+    forget_read()
+    write_all({file: b"y"})
+    assert file.read_bytes() == b"y"

@@ -355,12 +355,24 @@ def test_missing_centre_is_refused_with_advice_about_sea(tmp_path):
         raster_transect(file, wind_from=WEST_WIND)
 
 
-def test_undeclared_missing_values_are_refused(tmp_path):
+@pytest.mark.parametrize("value", [-32768, -9999])
+def test_undeclared_missing_values_are_refused(tmp_path, value):
+    """A hole in the ground is no sea: taken as 0 m it would cut through the range."""
     ground, transform = ridge_cells()
-    ground[:, 150:170] = -32768
+    ground[:, 150:170] = value
     file = written(tmp_path / "void.tif", ground.astype(np.int16), transform)
-    with pytest.raises(DataFileError, match=r"-32768 m, which stands for missing.*gdal_edit"):
+    with pytest.raises(DataFileError, match=rf"{value} m, which stands for missing.*a_nodata {value} "):
         raster_transect(file, wind_from=WEST_WIND, through=MapPoint(*CENTRE))
+
+
+def test_the_deepest_sea_is_no_missing_ground(tmp_path):
+    """A trench that passes 9999 m below the sea has cells as deep beside it."""
+    ground, transform = ridge_cells()
+    ground[:, :30] = np.linspace(-10500.0, -9000.0, 30).round()
+    ground[:, 10] = -9999
+    file = written(tmp_path / "trench.tif", ground.astype(np.int16), transform)
+    line = raster_transect(file, wind_from=WEST_WIND, through=MapPoint(*CENTRE))
+    assert line.elevation.min() >= 0.0
 
 
 def test_flat_ground_is_refused(tmp_path):

@@ -11,7 +11,14 @@ from orolift.crossing.crossing import crest_component
 from orolift.errors import CaseError, NoCrossingError
 from orolift.sources.bearings_case import bearing_task, read_bearings
 from orolift.sources.bearings_results import bearing_rows, bearings_results
-from orolift.spread.bearings import Direction, bearings_of, reversed_situation, turned_air, worked_direction
+from orolift.spread.bearings import (
+    Direction,
+    bearings_of,
+    reversed_situation,
+    square_enough,
+    turned_air,
+    worked_direction,
+)
 from orolift.spread.site_state import SiteState
 from orolift.terrain.features import features
 from orolift.terrain.transect import transect_elevation
@@ -55,6 +62,19 @@ def test_wind_across_a_straight_ridge_follows_the_cosine(ridge, off):
     expected = KNOTS_30 * math.cos(math.radians(off))
     assert crest_wind(ridge, 240 + off) == pytest.approx(expected, rel=1e-9)
     assert crest_wind(ridge, (60 + off) % 360) == pytest.approx(expected, rel=1e-9)
+
+
+def test_air_that_runs_along_the_range_is_no_answer(ridge):
+    """The angle to the range is that of the wind; directions beyond 45 degrees are named for nothing."""
+    degrees = [240, 280, 300, 60, 20]
+    found = [worked_direction(bearing_task(ridge, math.radians(one))) for one in degrees]
+    off = [one.sites[0].oblique for one in found]
+    assert np.degrees(off) == pytest.approx([0.0, 40.0, 60.0, 0.0, 40.0])
+    together = bearings_of(found, ["Tarn", "Kell"], step=math.radians(20.0), given=math.radians(240.0), planned=5)
+    assert square_enough(together.sites[0].states) == [True, True, True, True, False]
+    assert 4 not in {together.sites[0].warmest, together.sites[0].driest, together.sites[0].fire}
+    alone = bearings_of(found[2:3], ["Tarn", "Kell"], step=1.0, given=0.0, planned=1)
+    assert alone.sites[0].warmest == 0
 
 
 @pytest.mark.parametrize("degrees", [150, 330])

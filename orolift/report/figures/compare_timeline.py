@@ -222,7 +222,7 @@ def _spells(onset: OnsetAtPlace | None, across: Scale, layout: Layout) -> tuple[
         a, b = (float(place(across, t)) for t in (spell.start, spell.end))
         middle = 0.5 * (a + b)
         a, b = min(a, middle - 1.5), max(b, middle + 1.5)
-        out.append(Curve(f"M{a:.1f} {layout.top}H{b:.1f}V{layout.bottom}H{a:.1f}Z", "met"))
+        out.append(Curve(f"M{a:.1f} {layout.top}H{b:.1f}V{layout.bottom}H{a:.1f}Z", "spell"))
     return tuple(out)
 
 

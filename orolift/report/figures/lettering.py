@@ -148,13 +148,11 @@ def _blocked(view: View, board: Board) -> Lettered:
     """How high the air is stopped, the range of that as a bar, and what of it goes round."""
     flow, units, layout = view.crossing.flow, view.units, view.layout
     top = quantity(flow.blocked_top, "height", -1, units)
-    low, high = (first_number(v, "height", -1, units) for v in (flow.blocked_top_low, flow.blocked_top_high))
+    low, high = (first_number(v, "height", -1, units) for v in view.blocked)
     share = quantity(flow.going_round_share, "share", 0, units)
     round_words = f"{share} of it goes round" if flow.going_round_share > 0.0 else "none of it goes round"
     x = layout.left + 0.3 * (place(view.across, view.crossing.features.crest_distance) - layout.left)
-    y, low_y, high_y = (
-        round(place(view.up, level), 1) for level in (flow.blocked_top, flow.blocked_top_low, flow.blocked_top_high)
-    )
+    y, low_y, high_y = (round(place(view.up, level), 1) for level in (flow.blocked_top, *view.blocked))
     bar = f"M{x:.1f} {low_y}V{high_y}M{x - 5:.1f} {low_y}h10M{x - 5:.1f} {high_y}h10M{x - 3:.1f} {y}h6"
     letter = board.letter
     groups: list[tuple[Label, ...]] = []
@@ -262,6 +260,8 @@ def on_the_way(view: View, board: Board) -> Lettered:
 def freezing_marks(view: View, lines: tuple[Line, ...], level: float, board: Board) -> Lettered:
     """Name of the freezing level: at its line, else where it is."""
     ice = "0 °C" if view.units == "metric" else "32 °F"
+    if not lines and level <= view.crossing.incoming.height[0]:
+        return (), (), board  # all of the air is below freezing: no height to name
     if not lines:
         height = quantity(level, "height", -1, view.units)
         above = ", above this picture" if level >= view.up.high else ""

@@ -11,6 +11,7 @@ import numpy as np
 from orolift.report.figures.axes import Layout, round_step
 from orolift.report.figures.drawing import Curve, Figure, Label
 from orolift.report.quantities import Kind, Units, displayed, from_displayed, quantity
+from orolift.spread.bearings import square_enough
 from orolift.spread.timeline import values_of
 
 if TYPE_CHECKING:
@@ -91,7 +92,9 @@ def roses_figure(bearings: Bearings, number: int, units: Units) -> Figure[RosesD
         alt=_alt(site, bearings, units),
         caption=(
             "Each bar points to where the wind comes from; north is up. Strokes on the rim: no air crosses from there; "
-            "dots: the map does not reach. The arrow is the wind of the case. All sites have the same scales."
+            "dots: the map does not reach. Pale: the air runs more along the range than across it, more than 45° off, "
+            "and what it does then is not to be trusted; no such direction is named. The arrow is the wind of the "
+            "case. All sites have the same scales."
         ),
     )
 
@@ -99,7 +102,7 @@ def roses_figure(bearings: Bearings, number: int, units: Units) -> Figure[RosesD
 def _alt(site: SiteBearings, bearings: Bearings, units: Units) -> str:
     out = []
     for plan in PLANS:
-        values = values_of(site.states, plan.key)
+        values = np.where(square_enough(site.states), values_of(site.states, plan.key), np.nan)
         if not np.isfinite(values).any():
             continue
         i = int(np.nanargmin(values) if plan.lowest else np.nanargmax(values))
@@ -159,9 +162,13 @@ def _rose(
     rings = tuple(_ring(middle, share * radius) for share in (0.5, 1.0))
     bars, marks = [], []
     half = 0.5 * FILL * bearings.step
-    for bearing, value, state in zip(bearings.wind_from.tolist(), values.tolist(), site.states, strict=True):
+    square = square_enough(site.states)
+    for bearing, value, state, counts in zip(
+        bearings.wind_from.tolist(), values.tolist(), site.states, square, strict=True
+    ):
         if math.isfinite(value):
             kind = "cools" if value < 0.0 and plan.kind == "warms" else plan.kind
+            kind = kind if counts else f"{kind} oblique"
             bars.append(Curve(_wedge(middle, radius * min(abs(value) / full, 1.0), bearing, half), kind))
         elif state.status == "no crossing":
             marks.append(Curve(_arc(middle, radius, bearing, half), "rim"))
@@ -179,7 +186,8 @@ def _rose(
     ]
     whole: Kind = "temperature_difference" if plan.quantity == "temperature_change" else plan.quantity
     rim = f"rim {quantity(full, whole, _digits(full, whole, units), units)}"
-    peak = _peak(values, bearings, plan, units, short=layout.name == "narrow")
+    counted = np.where(square, values, np.nan)
+    peak = _peak(counted, bearings, plan, units, short=layout.name == "narrow")
     labels += [
         Label(peak, x, round(y + radius + 2.4 * letter, 1), "middle", "name ink"),
         Label(rim, x, round(y + radius + 3.6 * letter, 1), "middle", "note"),

@@ -113,7 +113,12 @@ class SectionDrawing:
 
 
 def section(
-    crossing: Crossing, trace: Trace, bearing: float, freezing_level: float, units: Units
+    crossing: Crossing,
+    trace: Trace,
+    bearing: float,
+    freezing_level: float,
+    units: Units,
+    blocked: tuple[float, float] | None = None,
 ) -> Figure[SectionDrawing]:
     """The section through the range, with the wind along the ground under it.
 
@@ -127,20 +132,24 @@ def section(
     freezing_level : float [m]
         Of the incoming air, above sea level.
     units : 'metric' or 'us'
+    blocked : (float, float), optional [m above sea level]
+        Range of the top of the blocked air by the members; else that of the thresholds is drawn.
 
     Returns
     -------
     Figure of SectionDrawing
     """
     forms = (_forms(crossing, layout) for layout in (WIDE, NARROW))
-    (wide, *wide_panels), (narrow, *narrow_panels) = ((view(crossing, trace, units, f[0]), *f[1:]) for f in forms)
+    (wide, *wide_panels), (narrow, *narrow_panels) = (
+        (view(crossing, trace, units, f[0], blocked), *f[1:]) for f in forms
+    )
     return Figure(
         key="section",
         drawing=_drawing(wide, bearing, freezing_level, *wide_panels),
         narrow=_drawing(narrow, bearing, freezing_level, *narrow_panels),
         title="Section through the range along the wind",
         alt=_alt(crossing, units),
-        caption=_caption(crossing, trace, units),
+        caption=_caption(crossing, trace, units, members=blocked is not None),
     )
 
 
@@ -188,7 +197,7 @@ def _cloud_words(crossing: Crossing, units: Units) -> str:
     return f"{words} to {quantity(cloud.end, 'height', -1, units)} in the lee."
 
 
-def _caption(crossing: Crossing, trace: Trace, units: Units) -> str:
+def _caption(crossing: Crossing, trace: Trace, units: Units, *, members: bool) -> str:
     """What the lines and areas stand for."""
     low, high = (quantity(value, "temperature_difference", 0, units) for value in (1.0, 3.0))
     looks = (
@@ -202,7 +211,8 @@ def _caption(crossing: Crossing, trace: Trace, units: Units) -> str:
         "Dotted: equal potential temperature.",
     ]
     if is_blocked(crossing):
-        parts.append("Hatched: air that does not get over; the bar on it is the range of its top.")
+        span = "10 to 90 % of the members" if members else "for thresholds of N h/U from 3 to 0.75"
+        parts.append(f"Hatched: air that does not get over; the bar on it is the range of its top, {span}.")
     if crossing.pool is not None:
         parts.append("Level strokes: cold air that stays in the lee.")
     if crossing.cloud.base is not None:

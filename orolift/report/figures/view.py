@@ -46,6 +46,8 @@ class View:
         Of the streamlines there.
     ground_x, ground_y : ndarray
         The silhouette.
+    blocked : (float, float) [m above sea level]
+        Range of the top of the blocked air.
     """
 
     crossing: Crossing
@@ -59,6 +61,7 @@ class View:
     heights: Array
     ground_x: Array
     ground_y: Array
+    blocked: tuple[float, float]
 
     @property
     def lowest(self) -> Array:
@@ -71,7 +74,9 @@ class View:
         return np.asarray(np.interp(self.x, self.ground_x, self.ground_y))
 
 
-def view(crossing: Crossing, trace: Trace, units: Units, layout: Layout) -> View:
+def view(
+    crossing: Crossing, trace: Trace, units: Units, layout: Layout, blocked: tuple[float, float] | None = None
+) -> View:
     """A crossing on a drawing.
 
     Parameters
@@ -80,6 +85,8 @@ def view(crossing: Crossing, trace: Trace, units: Units, layout: Layout) -> View
     trace : Trace
     units : 'metric' or 'us'
     layout : Layout
+    blocked : (float, float), optional [m above sea level]
+        Range of the top of the blocked air; that of the thresholds when left out.
 
     Returns
     -------
@@ -105,6 +112,7 @@ def view(crossing: Crossing, trace: Trace, units: Units, layout: Layout) -> View
         heights=crossing.height[columns],
         ground_x=ground_x[outline],
         ground_y=ground_y[outline],
+        blocked=blocked or (crossing.flow.blocked_top_low, crossing.flow.blocked_top_high),
     )
 
 
