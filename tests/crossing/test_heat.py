@@ -5,7 +5,7 @@ from datetime import UTC, datetime
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import example, given
 from hypothesis import strategies as st
 
 from orolift.air.column_build import air_from_station
@@ -161,6 +161,7 @@ def test_a_clear_way_is_what_it_was():
         ]
 
 
+@example(hours=-10.0, way=900.0, kelvin=325.0, first=0, more=0)  # low sun on hot ground: cloud would warm it
 @given(
     hours=st.floats(0.0, 24.0),
     way=st.floats(600.0, 1e5),
