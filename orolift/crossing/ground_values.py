@@ -9,7 +9,7 @@ import numpy as np
 
 from orolift.air.column import interpolated
 from orolift.air.parcel import Parcel, enthalpy, entropy, equilibrium_from_enthalpy, equilibrium_from_entropy
-from orolift.constants import GRAVITY, REFERENCE_PRESSURE
+from orolift.constants import REFERENCE_PRESSURE
 from orolift.crossing.arrival import SAMPLES, Here, frozen_temperature, lee_profile, pressure_at, sampled, with_ground
 from orolift.crossing.crossing import crest_component, ground_under
 from orolift.crossing.facts import HIGHEST_CLOUD
@@ -18,8 +18,9 @@ from orolift.crossing.picture import CREST_BAND
 from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import When
 from orolift.crossing.settings import Settings, checked, each
-from orolift.crossing.sites import PROFILE, SLOWEST
+from orolift.crossing.sites import PROFILE
 from orolift.crossing.solve import solve
+from orolift.crossing.way import cloud_water, cover_on_the_way, overcast, travel_times
 from orolift.crossing.wind import NEAR_GROUND
 from orolift.flow.surface_wind import wind_near_ground
 from orolift.terrain.features import features
@@ -199,9 +200,6 @@ def _ground_changes(
     known = when.time is not None and when.longitude is not None and when.latitude is not None
     if not (settings.surface_heat and known and is_lee.any()):
         return out[0], out[1]
-    line, streams = ground.transect, solution.streams
-    step = float(line.distance[1] - line.distance[0]) * ground.cosine
-    travel = np.cumsum(step / np.maximum(streams.wind[0, 0] * streams.flow.speed_factor[0, 0], SLOWEST))
     places, levels = int(is_lee.sum()), elevation.shape[1]
     rows = Here(here.share, here.number, *(getattr(here, f.name)[is_lee] for f in fields(Here)[2:]))
     height = (elevation[is_lee][:, :, np.newaxis] + PROFILE).reshape(places, -1)
@@ -217,14 +215,17 @@ def _ground_changes(
     pressure, temperature, vapour = (
         values.reshape(places, levels, -1) for values in (air.pressure, air.temperature, air.vapour)
     )
-    way = np.interp(distance[is_lee], line.distance, travel)[:, np.newaxis] + np.zeros((places, levels))
+    times, cloudy = travel_times(ground, solution), overcast(ground, solution)
+    way = np.interp(distance[is_lee], ground.transect.distance, times[0])
+    cover = cover_on_the_way(times[:, solution.streams.place], cloudy, way[np.newaxis])[0] if cloudy.any() else None
     heat = surface_heat(
         float(when.time or 0.0),
         float(when.longitude or 0.0),
         float(when.latitude or 0.0),
-        way,
+        way[:, np.newaxis] + np.zeros((places, levels)),
         temperature[..., 0],
         pressure[..., 0],
+        cover=None if cover is None else cover[:, np.newaxis],
     )
     change = ground_change(heat, PROFILE, pressure, temperature, vapour)
     inside = float(each(settings.mixing_depth, 1)[0]) * (np.arange(SAMPLES) + 0.5) / SAMPLES
@@ -289,9 +290,7 @@ def _clouds(here: Here) -> tuple[Array, Array]:
     cloudy = (here.cloud > LEAST_CLOUD) & (here.pressure >= HIGHEST_CLOUD)
     first = np.argmax(cloudy, axis=1)
     base = np.where(cloudy.any(axis=1), here.height[np.arange(first.size), first], np.inf)
-    mass = -np.diff(here.pressure, axis=1) / GRAVITY
-    water = np.sum(mass * 0.5 * (here.cloud[:, 1:] + here.cloud[:, :-1]), axis=1)
-    return base, water
+    return base, cloud_water(here.pressure, here.cloud)
 
 
 LEAST_CLOUD = 1e-6

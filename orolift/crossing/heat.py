@@ -48,7 +48,12 @@ DAY_DEPTH = 3000.0
 LEAST_DEPTH = 100.0
 """The day's heat is mixed over no less than this [m]: wind does that much; a judgement."""
 SPACING = 25.0
-_STEPS = 145
+STEPS = 145
+"""Moments of the way at which fluxes are worked out."""
+SHADE, SHADE_POWER = 0.75, 3.4
+"""A sky with the share N under cloud passes 1 - 0.75 N^3.4 of the sun (Kasten and Czeplak 1980, from memory)."""
+CLOUD_LONGWAVE = 60.0
+"""Longwave radiation [W m-2] from cloud that covers the sky (Holtslag and van Ulden 1983, c2, from memory)."""
 MUCH = 1.0
 """Warming by the sun on the ground [K] from which cloud over the range is worth a caution; a judgement."""
 
@@ -94,10 +99,45 @@ class GroundChange:
     vapour: Array
 
 
+def cloud_shade(cover: ArrayLike) -> Array:
+    """Share of the sun that passes a sky with cloud.
+
+    Parameters
+    ----------
+    cover : array_like [1]
+        Share of the sky under cloud, 0 to 1.
+
+    Returns
+    -------
+    ndarray [1]
+        Of what a clear sky passes: 1 down to 0.25.
+
+    Notes
+    -----
+    ``1 - 0.75 N^3.4`` (Kasten and Czeplak (1980) [1]_, from memory), a mean over all kinds of cloud.
+
+    References
+    ----------
+    .. [1] F. Kasten and G. Czeplak (1980), "Solar and terrestrial radiation dependent on the amount and type of
+       cloud", Solar Energy 24, 177-189.
+
+    Examples
+    --------
+    >>> [round(float(cloud_shade(n)), 2) for n in (0.0, 0.5, 1.0)]
+    [1.0, 0.93, 0.25]
+    """
+    return np.asarray(1.0 - SHADE * np.asarray(cover, np.float64) ** SHADE_POWER)
+
+
 def ground_fluxes(
-    sine: ArrayLike, temperature: ArrayLike, pressure: ArrayLike, moisture: float = MOISTURE
+    sine: ArrayLike,
+    temperature: ArrayLike,
+    pressure: ArrayLike,
+    moisture: float = MOISTURE,
+    *,
+    cover: ArrayLike = 0.0,
 ) -> tuple[Array, Array]:
-    """Sensible heat and evaporation of ground under a clear sky.
+    """Sensible heat and evaporation of the ground.
 
     Parameters
     ----------
@@ -107,6 +147,8 @@ def ground_fluxes(
         Of the air at the ground.
     moisture : float [1]
         0 for dry ground to 1 for moist grass.
+    cover : array_like [1]
+        Share of the sky under cloud, 0 to 1.
 
     Returns
     -------
@@ -117,10 +159,11 @@ def ground_fluxes(
 
     Notes
     -----
-    Holtslag and van Ulden (1983) [1]_ without cloud, coefficients from memory: the sun
-    ``K = 990 sin(height) - 30``; net radiation ``Q = (0.77 K + 5.31e-13 T^6 - sigma T^4) / 1.12``, of which a tenth
-    goes into the ground; ``H = ((1 - a) + g) / (1 + g) 0.9 Q - 20 a`` and ``L E = a / (1 + g) 0.9 Q + 20 a``, g the
-    psychrometric constant over the slope of the saturation pressure. W m-2 and K.
+    Holtslag and van Ulden (1983) [1]_, coefficients from memory: the sun ``K = 990 sin(height) - 30``, times
+    `cloud_shade` of the cover N; net radiation ``Q = (0.77 K + 5.31e-13 T^6 - sigma T^4 + 60 N) / 1.12``, of which a
+    tenth goes into the ground; ``H = ((1 - a) + g) / (1 + g) 0.9 Q - 20 a`` and
+    ``L E = a / (1 + g) 0.9 Q + 20 a``, g the psychrometric constant over the slope of the saturation pressure.
+    W m-2 and K.
 
     References
     ----------
@@ -135,8 +178,8 @@ def ground_fluxes(
     [467, 126]
     """
     up, t, p = (np.asarray(x, np.float64) for x in (sine, temperature, pressure))
-    sun = np.maximum(990.0 * up - 30.0, 0.0)
-    net = (0.77 * sun + 5.31e-13 * t**6 - 5.67e-8 * t**4) / 1.12
+    sun = np.maximum(990.0 * up - 30.0, 0.0) * cloud_shade(cover)
+    net = (0.77 * sun - longwave_loss(t) + CLOUD_LONGWAVE * np.asarray(cover, np.float64)) / 1.12
     latent = latent_heat_of_vaporisation(t)
     slope = latent * saturation_vapour_pressure_over_liquid(t) / (R_VAPOUR * t**2)
     ratio = HEAT_CAPACITY_DRY_AIR * p / (EPSILON * latent) / slope
@@ -146,6 +189,23 @@ def ground_fluxes(
     return np.where(shines, sensible, 0.0), np.where(shines, evaporation, 0.0)
 
 
+def longwave_loss(temperature: ArrayLike) -> Array:
+    """Longwave radiation that leaves the ground under a clear sky, less what comes back.
+
+    Parameters
+    ----------
+    temperature : array_like [K]
+        Of the air at the ground.
+
+    Returns
+    -------
+    ndarray [W m-2]
+        ``sigma T^4 - 5.31e-13 T^6`` (Swinbank's formula, as in Holtslag and van Ulden (1983), from memory).
+    """
+    t = np.asarray(temperature, np.float64)
+    return np.asarray(5.67e-8 * t**4 - 5.31e-13 * t**6)
+
+
 def surface_heat(
     time: float,
     longitude: float,
@@ -153,6 +213,8 @@ def surface_heat(
     travel_time: ArrayLike,
     temperature: ArrayLike,
     pressure: ArrayLike,
+    *,
+    cover: ArrayLike | None = None,
 ) -> SurfaceHeat:
     """What the ground gives the air on its way from where the incoming air was found to a site.
 
@@ -165,6 +227,9 @@ def surface_heat(
         Of the way; at most 24 hours count.
     temperature, pressure : array_like, broadcast with it [K], [Pa]
         Of the air at the ground of the site.
+    cover : array_like (..., 145), optional [1]
+        Share of the sky under cloud, 0 to 1, at even steps of time from the beginning of what counts to arrival
+        (`orolift.crossing.way.cover_on_the_way`); without it the sky is clear.
 
     Returns
     -------
@@ -179,25 +244,43 @@ def surface_heat(
     -----
     By day `ground_fluxes`, by night -60 W m-2 for at most 8 hours, added up over the way by the trapezoidal rule. Only
     the present day or the present night counts in full: incoming air of the same hour has been through what was before
-    as well, so that of the night (day) before no more than ``exp(-t / 2 h)`` is left a time t after the change. Cloud,
-    snow, sea and slope are not known to it.
+    as well, so that of the night (day) before no more than ``exp(-t / 2 h)`` is left a time t after the change. Day
+    and night are those of a clear sky. Under cloud the fluxes are the means, by `cover`, of those of a clear and of an
+    overcast sky, those by day no larger than under a clear one; the night's loss is as much smaller as net longwave
+    radiation is, by 60 W m-2 of `longwave_loss` (a judgement). Snow, sea and slope are not known to it.
     """
     duration = np.clip(np.asarray(travel_time, np.float64), 0.0, LONGEST_WAY)
     t, p = (np.asarray(x, np.float64)[..., np.newaxis] for x in (temperature, pressure))
-    back = duration[..., np.newaxis] * np.linspace(1.0, 0.0, _STEPS)
+    back = duration[..., np.newaxis] * np.linspace(1.0, 0.0, STEPS)
     times = time - back
-    sensible, evaporation = ground_fluxes(np.sin(sun_height(times, longitude, latitude)), t, p)
+    sine = np.sin(sun_height(times, longitude, latitude))
+    sensible, evaporation = ground_fluxes(sine, t, p)
     day = sensible > 0.0
-    present = _since(day == day[..., -1:])
-    before = _since((day != day[..., -1:]) | present) & ~present
-    age = np.max(np.where(present, back, 0.0), axis=-1, keepdims=True)
-    weight = present + before * np.exp(-age / FADING)
+    weight = _remembered(day, back)
 
     def sums(values: Array) -> Array:
         return np.asarray(np.trapezoid(weight * values, times, axis=-1))
 
-    lost = np.maximum(sums(np.where(day, 0.0, NIGHT_FLUX)), NIGHT_FLUX * LONGEST)
+    night = np.where(day, 0.0, NIGHT_FLUX)
+    lost = np.maximum(sums(night), NIGHT_FLUX * LONGEST)
+    if cover is not None and np.any(cover):
+        n = np.asarray(cover, np.float64)
+        shaded = ground_fluxes(sine, t, p, cover=1.0)
+        sensible, evaporation = (
+            clear - n * np.maximum(clear - under, 0.0)
+            for clear, under in zip((sensible, evaporation), shaded, strict=True)
+        )
+        kept = n * CLOUD_LONGWAVE / np.maximum(longwave_loss(t), CLOUD_LONGWAVE)
+        lost = lost * (1.0 - sums(night * kept) / np.minimum(sums(night), -1e-9))
     return SurfaceHeat(sums(sensible), sums(evaporation), lost, duration)
+
+
+def _remembered(day: NDArray[np.bool_], back: Array) -> Array:
+    """How much each moment of the way counts: the present day or night in full, the one before as far as it is left."""
+    present = _since(day == day[..., -1:])
+    before = _since((day != day[..., -1:]) | present) & ~present
+    age = np.max(np.where(present, back, 0.0), axis=-1, keepdims=True)
+    return np.asarray(present + before * np.exp(-age / FADING))
 
 
 def _since(true: NDArray[np.bool_]) -> NDArray[np.bool_]:
@@ -266,7 +349,7 @@ def heat_notes(settings: Settings, when: When) -> tuple[str, ...]:
 
 
 def heat_cautions(lee: Iterable[LeeAir], *, cloudy: bool) -> tuple[str, ...]:
-    """That much heat of the sun is counted under cloud, which `ground_fluxes` does not know.
+    """That much heat of the sun is counted though there is cloud, of which only the raining part shades.
 
     Parameters
     ----------
@@ -281,7 +364,8 @@ def heat_cautions(lee: Iterable[LeeAir], *, cloudy: bool) -> tuple[str, ...]:
     if not cloudy or not any(air.parts is not None and air.parts.surface_heating >= MUCH for air in lee):
         return ()
     text = (
-        f"The sun on the ground is counted as under a clear sky and warms the lee air by more than {MUCH:g} °C, but "
-        "cloud forms over the range: under it the warming is less. surface_heat = false in [heat] leaves it out."
+        f"The sun on the ground warms the lee air by more than {MUCH:g} °C. It is shaded where the crossing rains "
+        "0.5 mm/h or more; elsewhere it is counted as under a clear sky, but cloud forms over the range: under it the "
+        "warming is less. surface_heat = false in [heat] leaves it out."
     )
     return (text,)

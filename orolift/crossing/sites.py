@@ -15,6 +15,7 @@ from orolift.crossing.picture import popular_picture, side_of, upwind_ground_air
 from orolift.crossing.pool import pool_air
 from orolift.crossing.result import LeeAir, LeeProfile, SimpleAir, WarmingParts
 from orolift.crossing.settings import each
+from orolift.crossing.way import cover_on_the_way, overcast, travel_times
 from orolift.crossing.wind import site_wind
 from orolift.terrain.transect import transect_elevation
 
@@ -31,8 +32,6 @@ if TYPE_CHECKING:
 
 PROFILE = np.concatenate([np.arange(0.0, 500.0, 50.0), np.arange(500.0, 3001.0, 100.0)])
 """Heights above ground [m] of the lee profile."""
-SLOWEST = 1.0
-"""Wind [m s-1] below which the travel time is counted with this."""
 
 
 def site_air(
@@ -189,33 +188,17 @@ def _ground_change(
         heating=nothing,
         freezing=settings.freezing,
     )
-    travel = travel_time(site, ground, solution)
-    heat = surface_heat(when.time, when.longitude, when.latitude, travel, air.temperature[:, 0], air.pressure[:, 0])
+    times, line = travel_times(ground, solution), ground.transect
+    travel = times[:, max(int(np.searchsorted(line.distance, site.distance, side="right")) - 1, 0)]
+    cloudy = overcast(ground, solution)
+    cover = cover_on_the_way(times[:, solution.streams.place], cloudy, travel) if cloudy.any() else None
+    low = air.temperature[:, 0], air.pressure[:, 0]
+    heat = surface_heat(when.time, when.longitude, when.latitude, travel, *low, cover=cover)
     if factor is None:
         heat = SurfaceHeat(*(np.full(members, getattr(heat, field.name)[0]) for field in fields(SurfaceHeat)))
     else:
         heat = heat.times(factor)
     return ground_change(heat, PROFILE, air.pressure, air.temperature, air.vapour)
-
-
-def travel_time(site: Site, ground: Ground, solution: Solution) -> Array:
-    """Time the lowest crossing air takes from the upwind end of the line to a site, (m,) [s].
-
-    Parameters
-    ----------
-    site : Site
-    ground : Ground
-    solution : Solution
-
-    Returns
-    -------
-    ndarray (m,) [s]
-        Counted with at least 1 m/s.
-    """
-    line, streams = ground.transect, solution.streams
-    wind = streams.wind[:, :1] * streams.flow.speed_factor[:, 0]
-    step = float(line.distance[1] - line.distance[0]) * ground.cosine
-    return np.asarray(np.sum(step / np.maximum(wind[:, line.distance <= site.distance], SLOWEST), axis=-1))
 
 
 def _both(change: GroundChange | None, members: int) -> tuple[Array, Array]:

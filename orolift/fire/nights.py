@@ -89,7 +89,8 @@ def nights_at(weather: SiteWeather, lee: Sequence[LeeAir], crests: ArrayLike, wh
     The air stays that of the crossing all night, its heat from the ground taken off. The floor then loses 30 W/m2: with
     wind from 800 m for at most 8 hours; at rest, from `night.STILL_DEPTH` and all
     night. Slope and ridge stay in the free air over the site, without cooling and with their vapour: on a ridge
-    humidity can stay low all night. For the depth of mixing, heat of the last 8 hours, none once the sun is down.
+    humidity can stay low all night. For the depth of mixing, heat of the last 8 hours, none once the sun is down, under
+    a clear sky.
     """
     z, vapour = weather.height_above_ground, weather.mixing_ratio
     heating = np.array([0.0 if air.parts is None else air.parts.surface_heating for air in lee])

@@ -42,7 +42,10 @@ _RANGE_OF_MEMBERS = (
     "about the thresholds. The ranges in brackets hold the middle eight tenths of the members, that scatter among "
     "what they differ in; for rain, cloud and heights the error of the method comes on top and is not in them."
 )
-_NOT_WORKED_OUT = "Not worked out: showers, and flow along the range and through single gaps."
+_NOT_WORKED_OUT = (
+    "Not worked out: showers, flow along the range and through single gaps, and the shade of cloud other than the "
+    "crossing's own where it rains."
+)
 _NO_MEMBERS = "The range that uncertain input gives the numbers is not worked out: the case has no members."
 ALWAYS: tuple[Words, ...] = ((_NO_WARNING,), (_LINEAR,), (_NOT_WORKED_OUT,))
 """Cautions of every report in this form of the computation."""

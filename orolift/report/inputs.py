@@ -214,11 +214,16 @@ def _options(crossing: Crossing) -> FactGroup:
             Fact("Mixed before the range", ("lowest ", Amount(settings.inflow_depth, "height"), " of unblocked air")),
             Fact("Mixed at a site", ("lowest ", Amount(number(settings.mixing_depth), "height"))),
             Fact("Roughness length", (Amount(settings.roughness, "height", 2),)),
-            Fact("Heat from the ground", ("on" if settings.surface_heat else "off",)),
+            Fact("Heat from the ground", (_heat_words(on=settings.surface_heat),)),
             Fact("Freezing of cloud", freezing),
             Fact("Streamlines", (f"{crossing.height.shape[1]}, at {crossing.distance.size} places",)),
         ),
     )
+
+
+def _heat_words(*, on: bool) -> str:
+    """Whether the ground gives heat, and under what sky."""
+    return "on; the raining cloud of the crossing shades it, other cloud is not known" if on else "off"
 
 
 def _levels(crossing: Crossing, units: Units) -> tuple[Level, ...]:

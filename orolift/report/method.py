@@ -59,7 +59,8 @@ STEPS = (
     ),
     (
         "Cold air known to lie in the lee stays where the crossing air is lighter; its virtual potential temperature "
-        "falls 10 K per km downward. The ground heats the lee air by day and cools it at night."
+        "falls 10 K per km downward. The ground heats the lee air by day and cools it at night, less "
+        "under the raining cloud of the crossing; elsewhere the sky counts as clear."
     ),
     (
         "At a site the air of the mixing depth is mixed by mass, with what went round. The parts of its warming are "

@@ -148,7 +148,9 @@ class HeatTable(Table):
     """Heat from the ground of the lee."""
 
     surface_heat: bool = Field(
-        default=True, description="by sun and night, where valid_time and a position are known; false leaves it out"
+        default=True,
+        description="by sun and night, shaded by the crossing's raining cloud only, where valid_time and a position "
+        "are known; false leaves it out",
     )
 
 

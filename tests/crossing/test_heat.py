@@ -5,13 +5,21 @@ from datetime import UTC, datetime
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import example, given
 from hypothesis import strategies as st
 
 from orolift.air.column_build import air_from_station
 from orolift.air.humidity import mixing_ratio_from_dew_point
 from orolift.crossing.crossing import cross
-from orolift.crossing.heat import SurfaceHeat, ground_change, ground_fluxes, surface_heat
+from orolift.crossing.heat import (
+    STEPS,
+    SurfaceHeat,
+    cloud_shade,
+    ground_change,
+    ground_fluxes,
+    longwave_loss,
+    surface_heat,
+)
 from orolift.crossing.result import Site, When
 from orolift.crossing.settings import Settings
 from orolift.crossing.sun import sun_height
@@ -113,6 +121,63 @@ def test_the_day_is_forgotten_after_sunset():
     assert lost[0] > lost[1] > lost[2]
     whole, more = (surface_heat(AFTERNOON, 0.0, 0.0, hours * 3600.0, *GROUND) for hours in (9.5, 10.0))
     assert float(more.sensible) == pytest.approx(float(whole.sensible), rel=0.02)
+
+
+@pytest.mark.parametrize(
+    ("cover", "share"),
+    # Kasten and Czeplak (1980), Solar Energy 24, 177-189, 1 - 0.75 N^3.4 (from memory): an overcast sky passes a
+    # quarter; six eighths by hand, 0.75^3.4 = 0.3760.
+    [(0.0, 1.0), (0.75, 0.7180), (1.0, 0.25)],
+)
+def test_cloud_passes_its_published_share_of_the_sun(cover, share):
+    """By cover in eighths."""
+    assert float(cloud_shade(cover)) == pytest.approx(share, abs=1e-4)
+
+
+def test_net_radiation_under_an_overcast_noon():
+    """By hand: 0.9 (0.77 (990 x 0.9 - 30) / 4 + 5.31e-13 T^6 - sigma T^4 + 60) / 1.12, all of it heat of dry ground."""
+    by_hand = 0.9 * (0.77 * 861.0 / 4.0 + 5.31e-13 * 288.15**6 - 5.67e-8 * 288.15**4 + 60.0) / 1.12
+    assert float(ground_fluxes(0.9, *GROUND, 0.0, cover=1.0)[0]) == pytest.approx(by_hand, rel=1e-12)
+    minute = surface_heat(AFTERNOON, 0.0, 0.0, 60.0, *GROUND, cover=np.ones(STEPS))
+    flux = ground_fluxes(math.sin(float(sun_height(AFTERNOON - 30.0, 0.0, 0.0))), *GROUND, cover=1.0)
+    assert float(minute.sensible) / 60.0 == pytest.approx(float(flux[0]), rel=1e-3)
+    assert float(minute.evaporated) / 60.0 == pytest.approx(float(flux[1]), rel=1e-3)
+
+
+def test_a_night_under_cloud_loses_what_its_longwave_leaves():
+    """Net longwave of 87 W m-2 at 15 degrees Celsius less 60 (Holtslag and van Ulden 1983, from memory): 0.31 of it."""
+    assert float(longwave_loss(288.15)) == pytest.approx(87.0, abs=1.0)
+    clear, under = (surface_heat(NIGHT, 0.0, 60.0, 7200.0, *GROUND, cover=np.full(STEPS, n)) for n in (0.0, 1.0))
+    assert float(under.lost / clear.lost) == pytest.approx(27.0 / 87.0, abs=0.01)
+
+
+def test_a_clear_way_is_what_it_was():
+    """No cover and cover 0 are the same to the last digit, by day and by night."""
+    for time in (AFTERNOON, NIGHT):
+        one = surface_heat(time, 0.0, 40.0, 2e4, *GROUND)
+        other = surface_heat(time, 0.0, 40.0, 2e4, *GROUND, cover=np.zeros(STEPS))
+        assert [float(getattr(one, key)) for key in ("sensible", "evaporated", "lost")] == [
+            float(getattr(other, key)) for key in ("sensible", "evaporated", "lost")
+        ]
+
+
+@example(hours=-10.0, way=900.0, kelvin=325.0, first=0, more=0)  # low sun on hot ground: cloud would warm it
+@given(
+    hours=st.floats(0.0, 24.0),
+    way=st.floats(600.0, 1e5),
+    kelvin=st.floats(255.0, 312.0),
+    first=st.integers(0, STEPS),
+    more=st.integers(0, STEPS),
+)
+def test_more_cloud_never_gives_more_heat_by_day_nor_takes_more_by_night(hours, way, kelvin, first, more):
+    """At any hour and place of the cloud on the way."""
+    time, steps = AFTERNOON + 3600.0 * hours, np.arange(STEPS)
+    some, all_of = np.where(steps < first, 1.0, 0.0), np.where((steps < first) | (steps >= more), 1.0, 0.0)
+    less = surface_heat(time, 0.0, 45.0, way, kelvin, 1e5, cover=some)
+    given_more = surface_heat(time, 0.0, 45.0, way, kelvin, 1e5, cover=all_of)
+    assert 0.0 <= float(given_more.sensible) <= float(less.sensible) + 1e-6
+    assert 0.0 <= float(given_more.evaporated) <= float(less.evaporated) + 1e-9
+    assert float(less.lost) - 1e-6 <= float(given_more.lost) <= 0.0
 
 
 @given(lapse=st.floats(0.0, 0.0095), heat=st.floats(2e5, 1e7), vapour=st.floats(0.0, 3.0), lost=st.floats(-1.3e6, 0.0))

@@ -1,0 +1,113 @@
+"""The way of the lowest crossing air to a place: how long it takes, and where the raining cloud shades it."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from orolift.constants import GRAVITY
+from orolift.crossing.heat import LONGEST_WAY, STEPS
+
+if TYPE_CHECKING:
+    from numpy.typing import ArrayLike, NDArray
+
+    from orolift.crossing.solve import Ground, Solution
+
+    Array = NDArray[np.float64]
+
+SLOWEST = 1.0
+"""Wind [m s-1] below which the travel time is counted with this."""
+OVERCAST = 0.05
+"""Cloud water over a place [kg m-2] from which on its sky counts as overcast. Droplets of 10 micrometres then have the
+optical depth 1.5 W / (density radius) = 7.5 (Stephens 1978, from memory), and 2 / (2 + 0.15 depth) = 0.64 of the sun
+passes (Bohren 1987, from memory): halfway between a clear sky and the quarter of an overcast one."""
+STEADY_RAIN = 0.5 / 3600.0
+"""Rain [kg m-2 s-1] from which on the cloud it falls from is taken to cover the sky: 0.5 mm/h, above all but heavy
+drizzle (WMO-No. 8, from memory). Cloud that gives less may be broken, and the crossing does not know how much; on 66
+real pairs of soundings shading by all of it errs 0.2 to 0.5 K more (docs/accuracy.md). A judgement."""
+
+
+def travel_times(ground: Ground, solution: Solution) -> Array:
+    """Time the lowest crossing air takes from the upwind end of the line to every point of it.
+
+    Parameters
+    ----------
+    ground : Ground
+    solution : Solution
+
+    Returns
+    -------
+    ndarray (m, nx) [s]
+        Counted with at least 1 m/s.
+    """
+    line, streams = ground.transect, solution.streams
+    wind = streams.wind[:, :1] * streams.flow.speed_factor[:, 0]
+    step = float(line.distance[1] - line.distance[0]) * ground.cosine
+    return np.asarray(np.cumsum(step / np.maximum(wind, SLOWEST), axis=-1))
+
+
+def cloud_water(pressure: ArrayLike, cloud: ArrayLike) -> Array:
+    """Cloud water of a column.
+
+    Parameters
+    ----------
+    pressure : array_like (..., nz) [Pa]
+        Falling along the last axis.
+    cloud : array_like (..., nz) [kg per kg]
+
+    Returns
+    -------
+    ndarray (...) [kg m-2]
+        By the trapezoidal rule in pressure.
+    """
+    p, c = np.asarray(pressure, np.float64), np.asarray(cloud, np.float64)
+    return np.asarray(np.sum(-np.diff(p, axis=-1) * 0.5 * (c[..., 1:] + c[..., :-1]), axis=-1) / GRAVITY)
+
+
+def overcast(ground: Ground, solution: Solution) -> Array:
+    """Whether the crossing's own raining cloud covers the sky over places of the line.
+
+    Parameters
+    ----------
+    ground : Ground
+    solution : Solution
+
+    Returns
+    -------
+    ndarray (m, nk) [1]
+        Cloud cover over the places of the march: 1 or 0.
+
+    Notes
+    -----
+    A place is overcast where 0.5 mm/h of the crossing's rain or snow land and cloud water is above 0.05 kg m-2. Counted
+    is the cloud of all streamlines over the place, with what the incoming air brought.
+    """
+    streams = solution.streams
+    water = cloud_water(streams.air.pressure, streams.air.cloud).T
+    x = ground.transect.distance[streams.place]
+    step = np.diff(x, prepend=x[0] - (x[1] - x[0])) * ground.cosine
+    rains = (streams.falling.landed / step[:, np.newaxis]).T >= STEADY_RAIN
+    return np.where(rains & (water > OVERCAST), 1.0, 0.0)
+
+
+def cover_on_the_way(times: Array, cover: Array, arrival: Array) -> Array:
+    """Cloud cover over the air at even steps of its way, as `orolift.crossing.heat.surface_heat` takes it.
+
+    Parameters
+    ----------
+    times : ndarray (m, nk) [s]
+        When the air passes places, from the upwind end on; growing.
+    cover : ndarray (m, nk) [1]
+        Over them.
+    arrival : ndarray (m, ...) [s]
+        When it reaches the sites, on the same clock.
+
+    Returns
+    -------
+    ndarray (m, ..., 145) [1]
+        From the beginning of what is followed, at most 24 hours back, to arrival.
+    """
+    back = np.clip(arrival, 0.0, LONGEST_WAY)[..., np.newaxis] * np.linspace(1.0, 0.0, STEPS)
+    at = arrival[..., np.newaxis] - back
+    return np.stack([np.interp(*one) for one in zip(at, times, cover, strict=True)])
