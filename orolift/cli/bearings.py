@@ -10,7 +10,6 @@ from typing import TYPE_CHECKING
 import click
 
 from orolift.cli.executors import executor_of, progress
-from orolift.cli.hours import time_stamp
 from orolift.cli.options import (
     JOBS_OPTION,
     QUIET_OPTION,
@@ -20,6 +19,7 @@ from orolift.cli.options import (
     file_option,
     refuse_files,
 )
+from orolift.cli.outputs import made_now
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -109,19 +109,19 @@ def contents_of(
     """What stands in each file that was asked for."""
     from orolift import __version__
     from orolift.report.bearings_page import bearings_page
-    from orolift.report.render import render_bearings
+    from orolift.report.render import render
     from orolift.sources.bearings_results import bearing_rows, bearings_results
     from orolift.sources.files import csv_text
 
     page = bearings_page(
         bearings,
         title=f"{setup.inputs.case.title or setup.inputs.path.stem}: every wind direction",
-        made_at=time_stamp(),
+        made_at=made_now(),
         version=__version__,
         notes=setup.notes,
         units=units,
     )
-    out = {Path(str(files["report"])): render_bearings(page).encode()}
+    out = {Path(str(files["report"])): render(page, "bearings.html.jinja").encode()}
     results = bearings_results(bearings, setup)
     if files["table"] is not None:
         out[Path(files["table"])] = csv_text(*bearing_rows(results)).encode()

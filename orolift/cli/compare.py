@@ -2,14 +2,13 @@
 
 from __future__ import annotations
 
-import os
-from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 import click
 
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option, refuse_files
+from orolift.cli.outputs import made_now
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -92,7 +91,7 @@ def command(
     from orolift.cli.compare_summary import summary_lines
     from orolift.cli.comparing import Asked, compared_of
     from orolift.report.compare import compare_page
-    from orolift.report.render import render_compare
+    from orolift.report.render import render
     from orolift.sources.files import csv_text, write_all
 
     page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
@@ -101,9 +100,9 @@ def command(
     found, inputs = compared_of(cases, observed, Asked(**asked, quiet=quiet))  # type: ignore[arg-type]  # click has checked the types
     title = inputs[0].case.title or inputs[0].path.stem
     data = compare_page(
-        found, title=title, observed=Path(observed).name, made_at=_made_at(), version=__version__, units=units
+        found, title=title, observed=Path(observed).name, made_at=made_now(), version=__version__, units=units
     )
-    contents = {page: render_compare(data).encode()}
+    contents = {page: render(data, "compare.html.jinja").encode()}
     if results:
         from orolift.sources.compare_results import compare_results
 
@@ -115,9 +114,3 @@ def command(
     write_all(contents)
     if not quiet:
         click.echo("\n".join([*summary_lines(found, title, units), f"Report: {page}"]))
-
-
-def _made_at() -> datetime:
-    """Now, or what SOURCE_DATE_EPOCH says."""
-    stamp = os.environ.get("SOURCE_DATE_EPOCH")
-    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)

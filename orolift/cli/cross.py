@@ -3,9 +3,7 @@
 from __future__ import annotations
 
 import logging
-import os
 from dataclasses import dataclass, replace
-from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -13,7 +11,7 @@ import click
 
 from orolift.cli.lee_map import lee_files, mapped_lee
 from orolift.cli.options import JOBS_OPTION, QUIET_OPTION, SCHEDULER_OPTION, UNITS_OPTION, VERBOSE_OPTION, file_option
-from orolift.cli.outputs import Outputs, refuse_together
+from orolift.cli.outputs import Outputs, made_now, refuse_together
 from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, refuse_what_cannot_be
 from orolift.cli.spreading import Workers, spread_for
 
@@ -240,12 +238,6 @@ def fire_lines(worked: Worked) -> list[str]:
 
     words = headline(worked.fire).words
     return [f"Fire      {words} (a threshold met is not a warning)"] if words else []
-
-
-def made_now() -> datetime:
-    """The time that pages carry; it honours SOURCE_DATE_EPOCH."""
-    stamp = os.environ.get("SOURCE_DATE_EPOCH")
-    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
 
 
 def report_of(worked: Worked, units: Units) -> str:

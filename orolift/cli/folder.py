@@ -112,6 +112,7 @@ def entry(worked: Worked, report: Path, files: Iterable[Path]) -> Entry:
         valid_time=case.valid_time,
         report=report.name,
         files={_said(path, stem): path.name for path in files},
+        spread=worked.spread,
     )
 
 
@@ -134,7 +135,7 @@ def index_html(entries: Iterable[Entry], units: Units) -> str:
     str
     """
     from orolift import __version__
-    from orolift.cli.cross import made_now
+    from orolift.cli.outputs import made_now
     from orolift.report.index import index_of
     from orolift.report.render import render
 

@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 import logging
-import os
-from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING
 
@@ -20,6 +18,7 @@ from orolift.cli.options import (
     file_option,
     refuse_files,
 )
+from orolift.cli.outputs import made_now
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -134,21 +133,20 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
     """What stands in each file that was asked for."""
     from orolift import __version__
     from orolift.report.hours_page import hours_page
-    from orolift.report.render import render_hours
+    from orolift.report.render import render
     from orolift.sources.files import csv_text
     from orolift.sources.hours_results import hour_rows, hours_results, notes_of
 
-    made_at = time_stamp()
     page = hours_page(
         hours,
         title=setup.inputs.case.title or setup.inputs.path.stem,
         zone=setup.series.zone,
-        made_at=made_at,
+        made_at=made_now(),
         version=__version__,
         notes=notes_of(hours, setup),
         units=units,
     )
-    out = {Path(str(files["report"])): render_hours(page).encode()}
+    out = {Path(str(files["report"])): render(page, "hours.html.jinja").encode()}
     results = hours_results(hours, setup)
     if files["table"] is not None:
         out[Path(files["table"])] = csv_text(*hour_rows(results)).encode()
@@ -159,12 +157,6 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
 
         out[Path(files["netcdf"])] = hours_netcdf(hours, setup, __version__)
     return out
-
-
-def time_stamp() -> datetime:
-    """When a page is made; honours SOURCE_DATE_EPOCH."""
-    stamp = os.environ.get("SOURCE_DATE_EPOCH")
-    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
 
 
 def summary_of(hours: Hours, setup: HourSetup) -> list[str]:

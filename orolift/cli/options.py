@@ -56,15 +56,15 @@ def file_option(name: str, text: str) -> Callable[[Any], Any]:
     return click.option(name, type=click.Path(path_type=str), default=None, metavar="FILE", help=text)
 
 
-def refuse_files(files: Mapping[str, str | None], inputs: Iterable[str] = ()) -> None:
-    """Refuse files that could not be written, are asked for twice or are to be read, before long work is done.
+def refuse_files(files: Mapping[str, str | None], read: Iterable[str] = ()) -> None:
+    """Refuse files that could not be written, are asked for twice or are read, before long work is done.
 
     Parameters
     ----------
     files : mapping of str to str or None
         By the name of their option.
-    inputs : iterable of str
-        Files the command line gives to read.
+    read : iterable of str
+        Files the command reads: none is written over.
 
     Raises
     ------
@@ -76,14 +76,14 @@ def refuse_files(files: Mapping[str, str | None], inputs: Iterable[str] = ()) ->
     from orolift.errors import CaseError
     from orolift.sources.files import refuse_unwritable
 
-    read = {Path(name).resolve() for name in inputs}
+    kept = {Path(name).resolve() for name in read}
     seen: dict[Path, str] = {}
     for option, name in files.items():
         if name is None:
             continue
         path = Path(name).resolve()
-        if path in read:
-            raise CaseError(f"--{option}: {name} is a file to read and is not written over. Give another name.")
+        if path in kept:
+            raise CaseError(f"--{option}: {name} is read by this command. Nothing is written; give another name.")
         if path in seen:
             raise CaseError(f"--{seen[path]} and --{option} both name {name}. Give each its own file.")
         seen[path] = option

@@ -1,9 +1,10 @@
-"""The files a command is going to write: no two to one path, none over a case."""
+"""The files a command is going to write: no two to one path, none over a case; and the time their pages carry."""
 
 from __future__ import annotations
 
 import logging
 import os
+from datetime import UTC, datetime
 from pathlib import Path
 
 from orolift.errors import CaseError, MissingFileError
@@ -86,6 +87,12 @@ class Outputs:
                 folder.rmdir()
             raise
         log.debug("written: %s", ", ".join(map(str, self.contents)))
+
+
+def made_now() -> datetime:
+    """The time that pages carry; it honours SOURCE_DATE_EPOCH."""
+    stamp = os.environ.get("SOURCE_DATE_EPOCH")
+    return datetime.fromtimestamp(int(stamp), UTC) if stamp and stamp.isdigit() else datetime.now(UTC)
 
 
 def refuse_together(given: list[str], cases: int, folder: str | None) -> None:

@@ -100,7 +100,7 @@ def _flow(spans: Spans, said: Said) -> str:
 
 def _rain(spans: Spans, said: Said) -> str:
     crossing, water = spans.crossing, spans.crossing.water
-    if water.condensed == 0.0:
+    if water.condensed == 0.0 or crossing.cloud.base is None:
         return "none: nothing condenses"
     windward = crossing.rain.windward_share
     side = (
@@ -116,14 +116,19 @@ def _rain(spans: Spans, said: Said) -> str:
 
 def _site(spans: Spans, site: LeeAir, said: Said) -> str:
     change = said(site.warming, "temperature_change", 1, spans.at(site, "warming"))
-    source = (
-        "in the cold pool"
-        if site.source_level is None
-        else f"from {said(site.source_level, 'height', -1, spans.at(site, 'source_level'))}"
-    )
+    source = "in the cold pool" if site.source_level is None else f"from {_source(site, said)}"
     return (
         f"{site.name[:24]} ({site.side})  {said(site.temperature, 'temperature', 1, spans.temperature(site))}, "
         f"dew point {said(site.dew_point, 'temperature', 1, spans.dew_point(site))}, "
         f"{said(site.relative_humidity, 'share', 0, spans.at(site, 'relative_humidity'))}; "
         f"{change}; air {source}"
     )
+
+
+def _source(site: LeeAir, said: Said) -> str:
+    """The median height the air comes from, and where the middle eight tenths of it come from, by mass."""
+    low, high = (
+        said(level or 0.0, "height", -1).split(" ") for level in (site.source_level_low, site.source_level_high)
+    )
+    median = said(site.source_level or 0.0, "height", -1)
+    return median if low == high else f"{median} (eight tenths of it from {low[0]} to {high[0]})"

@@ -10,6 +10,7 @@ import numpy as np
 from orolift.air.column import interpolated, vapour_flux, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio
 from orolift.crossing.facts import clouds, crest_line_notes, flow_facts, remarks, water
+from orolift.crossing.heat import heat_cautions, heat_notes
 from orolift.crossing.march import March
 from orolift.crossing.pool import Lee
 from orolift.crossing.rainfall import rainfall
@@ -126,6 +127,14 @@ def cross(
     winds = lee_winds(ground, solution, crest_wind, flow.pressure_difference)
     cloud = clouds(solution, transect.distance, shape, freezing=settings.freezing)
     places, rain = transect.distance[streams.place], rainfall(ground, solution, background)
+    lee_airs = tuple(
+        replace(
+            site_air(site, ground, incoming, solution, settings, when, winds),
+            number=number,
+            rain=float(np.interp(site.distance, places, rain.rate)) + rain.background,
+        )
+        for number, site in enumerate(sites, start=1)
+    )
     return Crossing(
         incoming=incoming,
         transect=transect,
@@ -145,16 +154,14 @@ def cross(
         rain=rain,
         pool=solution.pools[0],
         winds=winds,
-        lee=tuple(
-            replace(
-                site_air(site, ground, incoming, solution, settings, when, winds),
-                number=number,
-                rain=float(np.interp(site.distance, places, rain.rate)) + rain.background,
-            )
-            for number, site in enumerate(sites, start=1)
+        lee=lee_airs,
+        notes=(
+            *incoming.notes,
+            *transect.notes,
+            *crest_line_notes(ground, flow.blocked_top),
+            *heat_notes(settings, when),
         ),
-        notes=(*incoming.notes, *transect.notes, *crest_line_notes(ground, flow.blocked_top)),
-        cautions=remarks(ground, solution, flow),
+        cautions=(*remarks(ground, solution, flow), *heat_cautions(lee_airs, cloudy=cloud.base is not None)),
     )
 
 

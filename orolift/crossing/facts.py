@@ -42,6 +42,11 @@ UNSTABLE = 0.2
 """Share of the layer below the crest that may be unstable before it is said; a judgement."""
 
 
+HIGHEST_CLOUD = 2e4
+"""Pressure [Pa] at which air must at least start to count for cloud: above it humidity is assumed, and waves make cloud
+of nothing; a judgement."""
+
+
 def clouds(solution: Solution, distance: Array, shape: Features, *, freezing: bool = True) -> Cloud:
     """Cloud of the crossing air: its base on the windward side and its end in the lee.
 
@@ -61,12 +66,13 @@ def clouds(solution: Solution, distance: Array, shape: Features, *, freezing: bo
     Notes
     -----
     On each streamline the step on which cloud appears is divided at the share
-    of it that the relative humidity needed to reach saturation.
+    of it that the relative humidity needed to reach saturation. Air from above 200 hPa does not count.
     """
     streams = solution.streams
     x = distance[streams.place]
     height = streams.flow.heights[0][:, streams.place].T
     cloud = streams.air.cloud[:, 0, :] + streams.air.condensed[:, 0, :]  # all of it may have fallen out at once
+    cloud = np.where(streams.start.pressure[0] >= HIGHEST_CLOUD, cloud, 0.0)
     crest = int(np.argmin(np.abs(x - shape.crest_distance)))
     excess = _excess(solution, freezing=freezing)
     up = [_edge(x, height, cloud, excess, i, range(crest + 1)) for i in range(cloud.shape[1])]
@@ -107,7 +113,7 @@ def cloud_bases(solution: Solution, shape: Features, distance: Array, *, freezin
     x, air = distance[streams.place], streams.air
     up = slice(0, int(np.argmin(np.abs(x - shape.crest_distance))) + 1)
     height = np.moveaxis(streams.flow.heights[..., streams.place[up]], -1, 0)
-    wet = (air.cloud[up] + air.condensed[up]) > 0.0
+    wet = ((air.cloud[up] + air.condensed[up]) > 0.0) & (streams.start.pressure >= HIGHEST_CLOUD)
     now = np.argmax(wet, axis=0)[np.newaxis]
     before = np.maximum(now - 1, 0)
 

@@ -19,7 +19,12 @@ from orolift.constants import (
 from orolift.crossing.sun import sun_height
 
 if TYPE_CHECKING:
+    from collections.abc import Iterable
+
     from numpy.typing import ArrayLike, NDArray
+
+    from orolift.crossing.result import LeeAir, When
+    from orolift.crossing.settings import Settings
 
     Array = NDArray[np.float64]
 
@@ -44,6 +49,8 @@ LEAST_DEPTH = 100.0
 """The day's heat is mixed over no less than this [m]: wind does that much; a judgement."""
 SPACING = 25.0
 _STEPS = 145
+MUCH = 1.0
+"""Warming by the sun on the ground [K] from which cloud over the range is worth a caution; a judgement."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -248,3 +255,33 @@ def ground_change(
     moistening = layer(v, mass, heat.evaporated[..., np.newaxis])
     back = np.stack([np.interp(height, grid, row, right=0.0) for row in np.eye(grid.size)])
     return GroundChange(warming @ back, moistening @ back)
+
+
+def heat_notes(settings: Settings, when: When) -> tuple[str, ...]:
+    """That heat from the ground is left out because time or place is not known; nothing where it is counted."""
+    if not settings.surface_heat or None not in (when.time, when.longitude, when.latitude):
+        return ()
+    unknown = "time" if when.time is None else "place"
+    return (f"The {unknown} is not known: heat from the ground, by day and by night, is left out.",)
+
+
+def heat_cautions(lee: Iterable[LeeAir], *, cloudy: bool) -> tuple[str, ...]:
+    """That much heat of the sun is counted under cloud, which `ground_fluxes` does not know.
+
+    Parameters
+    ----------
+    lee : iterable of LeeAir
+    cloudy : bool
+        Whether the crossing has cloud.
+
+    Returns
+    -------
+    tuple of str
+    """
+    if not cloudy or not any(air.parts is not None and air.parts.surface_heating >= MUCH for air in lee):
+        return ()
+    text = (
+        f"The sun on the ground is counted as under a clear sky and warms the lee air by more than {MUCH:g} °C, but "
+        "cloud forms over the range: under it the warming is less. surface_heat = false in [heat] leaves it out."
+    )
+    return (text,)

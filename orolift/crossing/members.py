@@ -79,15 +79,6 @@ class Members:
     sites: dict[str, Array]
 
 
-def alone(situation: Situation) -> Variation:
-    """The situation itself as its only member."""
-    air = situation.incoming
-    names = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
-    return Variation(
-        replace(air, **{name: getattr(air, name)[np.newaxis] for name in names}), situation.settings or Settings()
-    )
-
-
 def members_of(
     situation: Situation, variation: Variation, *, beside: tuple[Site, ...] = (), streamlines: int = 60
 ) -> Members:
@@ -282,6 +273,7 @@ def _of_site(
     x = ground.transect.distance[solution.streams.place]
     rate = solution.streams.falling.landed / _steps(ground, x)[:, np.newaxis]
     after = int(np.clip(np.searchsorted(x, site.distance), 1, x.size - 1))
+    way = float(np.clip((site.distance - x[after - 1]) / (x[after] - x[after - 1]), 0.0, 1.0))
     return {
         "pressure": p,
         "temperature": t,
@@ -301,7 +293,7 @@ def _of_site(
         "went_round": np.where(pooled, 0.0, place.came.went_round),
         "in_pool": pooled.astype(np.float64),
         "cloudy": (~gone & (place.came.air.cloud > 0.0)).astype(np.float64),
-        "rain": rate[after] + background,
+        "rain": (1.0 - way) * rate[after - 1] + way * rate[after] + background,
     }
 
 

@@ -25,8 +25,10 @@ if TYPE_CHECKING:
 
 NEEDED = ("pressure", "temperature", "mixing_ratio", "wind_10m", "gust")
 """Arrays of members that fire weather takes."""
-TENTHS = (10.0, 90.0)
-"""Ends of a range, per cent of the members."""
+TENTHS = (0.1, 0.9)
+"""Ends of a range, as shares of the members."""
+FEWEST = 5
+"""Members with a value from which on they have a range; a judgement."""
 
 
 def with_members(
@@ -40,7 +42,7 @@ def with_members(
         The answer.
     members : mapping of str to array_like (m,)
         `NEEDED` at the site, in SI: pressure, temperature, mixing ratio, mean wind and gust at 10 m; NaN where a
-        member has none. `source_level` and `warming` are used where they are there.
+        member has none. `rain`, `source_level` and `warming` are used where they are there.
     settings : FireSettings
         Those the site was worked out with.
     roughness : float [m]
@@ -101,6 +103,7 @@ def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:
         pressure=arrays["pressure"],
         temperature=arrays["temperature"],
         mixing_ratio=vapour,
+        rain=arrays.get("rain", answer.rain),
         wind=wind,
         wind_low=wind,
         wind_high=wind,
@@ -113,9 +116,9 @@ def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:
 
 
 def _range(values: Array) -> tuple[float, float] | None:
-    """10 % and 90 % of the known values."""
+    """10 % and 90 % of the known values; none where hardly any is known."""
     known = np.ravel(values)[np.isfinite(np.ravel(values))]
-    if not known.size:
+    if known.size < FEWEST:
         return None
-    low, high = np.percentile(known, TENTHS)
+    low, high = np.quantile(known, TENTHS)
     return float(low), float(high)

@@ -140,7 +140,7 @@ def bearings_page(
         lead=_lead(bearings),
         sites=tuple(_site(bearings, number, units) for number in range(len(bearings.sites))),
         how=HOW,
-        cautions=(ALWAYS[0], ONE_ANSWER, ALWAYS[2]),
+        cautions=(ALWAYS[0], ONE_ANSWER, *ALWAYS[1:]),
         notes=notes,
     )
 

@@ -254,7 +254,7 @@ def _lee(spans: Spans, site: LeeAir) -> Words:
     return (
         *start,
         "air from ",
-        *source_words(site),
+        *_source(site),
         " arrives with ",
         *_values(spans, site),
         ": ",
@@ -263,6 +263,12 @@ def _lee(spans: Spans, site: LeeAir) -> Words:
         *_mainly(crossing, site),
         ".",
     )
+
+
+def _source(site: LeeAir) -> Words:
+    """The height the air comes from; its range is that of the air, not of the members."""
+    first, *rest = source_words(site)
+    return (first, " (eight tenths of it from ", *rest[1:]) if rest else (first,)
 
 
 def _values(spans: Spans, site: LeeAir) -> Words:

@@ -37,11 +37,14 @@ _LINEAR = (
     "Streamlines are those of linear waves: position and size of single waves and of the strongest wind are less sure "
     "than how high the air comes from."
 )
-_NOT_WORKED_OUT = (
-    "Not worked out: showers, flow along the "
-    "range and through single gaps, and the range that uncertain input gives the numbers."
+_RANGE_OF_MEMBERS = (
+    "How much low air is blocked and how much of it goes round decides the lee temperature, and real ranges scatter "
+    "about the thresholds. The ranges in brackets hold the middle eight tenths of the members, that scatter among "
+    "what they differ in; for rain, cloud and heights the error of the method comes on top and is not in them."
 )
-ALWAYS: tuple[Words, ...] = ((_NO_WARNING,), (_RANGE_OF_FLOW,), (_LINEAR,), (_NOT_WORKED_OUT,))
+_NOT_WORKED_OUT = "Not worked out: showers, and flow along the range and through single gaps."
+_NO_MEMBERS = "The range that uncertain input gives the numbers is not worked out: the case has no members."
+ALWAYS: tuple[Words, ...] = ((_NO_WARNING,), (_LINEAR,), (_NOT_WORKED_OUT,))
 """Cautions of every report in this form of the computation."""
 
 
@@ -65,13 +68,15 @@ class Cautions:
     notes: tuple[str, ...]
 
 
-def cautions(crossing: Crossing, valid_time: datetime | None) -> Cautions:
+def cautions(crossing: Crossing, valid_time: datetime | None, *, members: bool = False) -> Cautions:
     """Cautions and notes of a crossing.
 
     Parameters
     ----------
     crossing : Crossing
     valid_time : datetime or None
+    members : bool
+        Whether the ranges are those of members; else they are the ends of blocking.
 
     Returns
     -------
@@ -79,10 +84,10 @@ def cautions(crossing: Crossing, valid_time: datetime | None) -> Cautions:
     """
     here = (*((text,) for text in crossing.cautions), *_flow(crossing), *_water(crossing))
     if valid_time is None:
-        here = (*here, ("The case names no valid time: sun and night are left out.",))
+        here = (*here, ("The case names no valid time: heat from the ground, by day and by night, is left out.",))
     return Cautions(
         heading=("An estimate, to be judged by a trained reader",),
-        always=ALWAYS,
+        always=(*ALWAYS, (_RANGE_OF_MEMBERS,)) if members else (*ALWAYS, (_RANGE_OF_FLOW,), (_NO_MEMBERS,)),
         here=here,
         notes=tuple(dict.fromkeys(crossing.notes)),
     )

@@ -179,7 +179,10 @@ def _condition(one: JudgedCondition, moves: tuple[Mover, ...]) -> ConditionRow:
         apart = ("met by " if one.margin >= 0.0 else "missed by ", by)
     return ConditionRow(
         what=_what(one.condition.quantity),
-        limit=(f"{limit_words(one.condition)} ", Amount(one.condition.limit, kind, digits)),
+        limit=(
+            f"{limit_words(one.condition)} ",
+            Amount(one.condition.limit, "rain_limit" if kind == "rain_rate" else kind, digits),
+        ),
         value=None if one.value is None else Amount(one.value, kind, digits),
         margin=apart,
         met=one.met is True,

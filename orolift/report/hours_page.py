@@ -220,7 +220,7 @@ def hours_page(
         sites=tuple(_site(hours, number, zone, units) for number in range(len(hours.sites))),
         catchments=_catchments(hours, zone),
         how=HOW,
-        cautions=(ALWAYS[0], ONE_ANSWER, ALWAYS[2]),
+        cautions=(ALWAYS[0], ONE_ANSWER, *ALWAYS[1:]),
         notes=notes,
     )
 

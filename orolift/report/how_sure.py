@@ -164,7 +164,7 @@ def _contents(spread: Spread) -> Words:
         "every input from what that may be, and is widened to the answer where that lies outside. To temperature, "
         "humidity and wind at the sites the error of the method is "
         "added. For rain, cloud and heights no such error is known yet: their ranges are those of the inputs alone, "
-        "and too narrow."
+        "and too narrow. The heights air comes from are no such range, but those of the middle eight tenths of the air."
     )
     return (text,)
 
@@ -264,7 +264,7 @@ def _chances(spans: Spans, spread: Spread) -> tuple[ChanceRow, ...]:
         (("low air is blocked",), chance_of(values["blocked"])),
         (("cloud forms before the crest",), chance_of(cloud)),
         (
-            (f"rain or snow at {site.name}, ", Amount(CHANCE_OF_RAIN, "rain_rate", 1), " or more"),
+            (f"rain or snow at {site.name}, ", Amount(CHANCE_OF_RAIN, "rain_limit", 1), " or more"),
             chance_of(rain),
         ),
         (("waves break less than 3 km above the crest",), chance_of(values["wave_breaking"])),

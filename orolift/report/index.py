@@ -7,25 +7,18 @@ from typing import TYPE_CHECKING
 from urllib.parse import quote
 
 from orolift.report.briefing import briefing_heading
-from orolift.report.lee_wind import range_words
+from orolift.report.key_numbers import blocked_with_range, gusts
 from orolift.report.quantities import Amount, Units
-from orolift.report.story import (
-    blocked_words,
-    fallen_share,
-    is_blocked,
-    main_site,
-    rains,
-    source_words,
-    temperature_ends,
-    with_ends,
-)
+from orolift.report.spans import Spans, ranged
+from orolift.report.story import fallen_share, is_blocked, line_view, rains, source_words
 from orolift.report.words import Words, counted, moment, sentence
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Mapping
     from datetime import datetime
 
-    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.crossing.result import Crossing
+    from orolift.spread.spread import Spread
 
 
 @dataclass(frozen=True)
@@ -129,7 +122,13 @@ def index_of(entries: Iterable[Entry], *, title: str, made_at: datetime, version
 
 
 def entry_of(
-    crossing: Crossing, *, title: str, valid_time: datetime | None, report: str, files: Mapping[str, str]
+    crossing: Crossing,
+    *,
+    title: str,
+    valid_time: datetime | None,
+    report: str,
+    files: Mapping[str, str],
+    spread: Spread | None = None,
 ) -> Entry:
     """One report for the index.
 
@@ -142,12 +141,15 @@ def entry_of(
         Name of the page, beside the index.
     files : mapping of str to str
         Names of files beside the index, by what they are.
+    spread : Spread, optional
+        Members, for the ranges.
 
     Returns
     -------
     Entry
     """
-    site = main_site(crossing)
+    spans = Spans(line_view(crossing), spread)
+    site = spans.main
     base = crossing.cloud.base
     return Entry(
         title=title,
@@ -157,21 +159,15 @@ def entry_of(
         heading=briefing_heading(crossing),
         doubts=counted(len(crossing.cautions), "caution", "cautions").capitalize() if crossing.cautions else "",
         site=site.name,
-        temperature=with_ends(Amount(site.temperature, "temperature", 1), temperature_ends(site)),
+        temperature=ranged(Amount(site.temperature, "temperature", 1), spans.temperature(site)),
         humidity=Amount(site.relative_humidity, "share"),
         wind=None if site.wind is None else Amount(site.wind.at_10m, "wind"),
-        gusts=_gusts(site),
+        gusts=() if site.wind is None else gusts(spans, site.wind, site),
         source=source_words(site),
-        blocked=blocked_words(crossing) if is_blocked(crossing) else (),
+        blocked=blocked_with_range(spans) if is_blocked(crossing) else (),
         cloud=() if base is None else (Amount(base, "height", -1),),
         fallen=Amount(fallen_share(crossing), "share") if rains(crossing) else None,
     )
-
-
-def _gusts(site: LeeAir) -> Words:
-    if site.wind is None:
-        return ()
-    return range_words(site.wind.gust_low, site.wind.gust_high) or (Amount(site.wind.gust_high, "wind"),)
 
 
 def _heading(entries: tuple[Entry, ...]) -> Words:

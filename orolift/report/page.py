@@ -210,7 +210,7 @@ def page_of(
         units=units,
         briefing=briefing(line, bearing, freezing, Spans(line, spread)),
         section_heading=section_heading(line, followed),
-        section=section(line, followed, bearing, freezing, units, blocked_ends=Spans(line, spread).of("blocked_top")),
+        section=section(line, followed, bearing, freezing, units, Spans(line, spread).of("blocked_top")),
         reading=reading(line, units),
         journey=journey(line, followed),
         path=path(line, followed, units),
@@ -221,7 +221,7 @@ def page_of(
         rain_over_map=None if mapped is None else rain_over_map(mapped, units),
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
         gauge_scatter=None if mapped is None else gauge_scatter(mapped.rain, units),
-        sites=sites(crossing, Spans(crossing, spread)),
+        sites=sites(crossing, Spans(crossing, spread), fire),
         sites_map=None if mapped is None else _sites_map(crossing, mapped, units),
         how_sure=sure,
         influences=influences_figure(sure),
@@ -234,7 +234,7 @@ def page_of(
         column=column(line, stagnant_top, units),
         findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),
         method=method(),
-        cautions=cautions(few, valid_time),
+        cautions=cautions(few, valid_time, members=spread is not None),
     )
 
 

@@ -51,15 +51,15 @@ class Inlined:
     hash: str
 
 
-def render(page: Page | IndexPage, template: str = "page.html.jinja") -> str:
+def render(page: Page | IndexPage | ComparePage | HoursPage | BearingsPage, template: str = "page.html.jinja") -> str:
     """A page as one self-contained HTML file.
 
     Parameters
     ----------
-    page : Page or IndexPage
+    page : Page, IndexPage, ComparePage, HoursPage or BearingsPage
         With at least a title, a version, a time it was made and units.
     template : str
-        Name of the template that extends the skeleton.
+        Name of the template that extends the skeleton and is written for this kind of page.
 
     Returns
     -------
@@ -67,30 +67,6 @@ def render(page: Page | IndexPage, template: str = "page.html.jinja") -> str:
         The same text for the same page, whenever and wherever it is made.
     """
     return _environment().get_template(template).render(page=page)
-
-
-def render_compare(page: ComparePage) -> str:
-    """The page of a comparison as one self-contained HTML file.
-
-    Parameters
-    ----------
-    page : ComparePage
-
-    Returns
-    -------
-    str
-    """
-    return _environment().get_template("compare.html.jinja").render(page=page)
-
-
-def render_hours(page: HoursPage) -> str:
-    """The page of a series of hours as one self-contained HTML file, as `render`."""
-    return _environment().get_template("hours.html.jinja").render(page=page)
-
-
-def render_bearings(page: BearingsPage) -> str:
-    """The page of every wind direction as one self-contained HTML file, as `render`."""
-    return _environment().get_template("bearings.html.jinja").render(page=page)
 
 
 class _BesideTemplates(BytecodeCache):

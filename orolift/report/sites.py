@@ -2,11 +2,14 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.report.causes import PARTS
+from orolift.report.key_numbers import gusts
 from orolift.report.quantities import Amount, Kind
 from orolift.report.spans import Spans, digits_for, ranged
 from orolift.report.story import SAME, difference, first_sites, source_words, where_words
@@ -14,11 +17,15 @@ from orolift.report.words import Words, counted, sentence
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
+    from orolift.fire.sites import SiteFire
 
 MOST_FULL = 24
 """Sites from which on the table has one short row for each (design choice)."""
 MOST_FAILED = 12
 """Failed sites that are named for one reason."""
+BAR_WIDTH = 200.0
+SMALL_PART = 0.05
+"""Parts of the warming below this [K] read as nothing."""
 MOST_LOW = 6
 """Sites below the upwind ground that are named."""
 
@@ -103,6 +110,17 @@ class Panel:
     side: str
     remark: str
     facts: tuple[tuple[str, Words], ...]
+    bar: tuple[Part, ...]
+    met: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class Part:
+    """A part of the warming in the bar of a panel, which is 200 wide: parts that cool left of the rest."""
+
+    x: float
+    width: float
+    kind: str
 
 
 @dataclass(frozen=True)
@@ -135,7 +153,7 @@ class Sites:
     remarks: tuple[Words, ...]
 
 
-def sites(crossing: Crossing, spans: Spans | None = None) -> Sites:
+def sites(crossing: Crossing, spans: Spans | None = None, fire: tuple[SiteFire, ...] = ()) -> Sites:
     """The sites of a crossing, in the order of the case.
 
     Parameters
@@ -143,12 +161,15 @@ def sites(crossing: Crossing, spans: Spans | None = None) -> Sites:
     crossing : Crossing
     spans : Spans, optional
         Ranges.
+    fire : tuple of SiteFire
+        For fuel and thresholds met.
 
     Returns
     -------
     Sites
     """
     spans = spans or Spans(crossing, None)
+    by_number = {one.number: one for one in fire}
     many = len(crossing.lee) > MOST_FULL
     by_warmth = sorted(crossing.lee, key=lambda air: -air.warming) if many else []
     return Sites(
@@ -156,7 +177,7 @@ def sites(crossing: Crossing, spans: Spans | None = None) -> Sites:
         rows=() if many else tuple(_row(air, air.number, spans) for air in crossing.lee),
         short_rows=tuple(_short(air, crossing) for air in by_warmth),
         sides=_sides(crossing.lee) if many else (),
-        panels=tuple(_panel(air, spans) for air in first_sites(crossing).lee),
+        panels=tuple(_panel(air, spans, by_number.get(air.number)) for air in first_sites(crossing).lee),
         failed=_failed(crossing),
         remarks=_remarks(crossing),
     )
@@ -207,7 +228,7 @@ def _from_to(values: list[float], kind: Kind, digits: int = 0) -> Words:
     return (Amount(min(values), kind, digits, bare=True), " to ", Amount(max(values), kind, digits, bare=True))
 
 
-def _panel(air: LeeAir, spans: Spans) -> Panel:
+def _panel(air: LeeAir, spans: Spans, fire: SiteFire | None) -> Panel:
     """What matters at one site, in words, with ranges."""
     crossing = spans.crossing
     facts: list[tuple[str, Words]] = [
@@ -228,9 +249,12 @@ def _panel(air: LeeAir, spans: Spans) -> Panel:
             ),
         ),
     ]
+    because = _because(air)
+    if because:
+        facts.append(("By", because))
     if air.wind is not None:
-        gusts = Amount(air.wind.gust_low, "wind", bare=True), " to ", Amount(air.wind.gust_high, "wind")
-        facts.append(("Wind", (Amount(air.wind.at_10m, "wind"), " at 10 m, gusts ", *gusts)))
+        at_10m = ranged(Amount(air.wind.at_10m, "wind"), spans.at(air, "wind_10m"))
+        facts.append(("Wind", (*at_10m, " at 10 m, gusts ", *gusts(spans, air.wind, air))))
     if air.source_level is not None:
         facts.append(("Comes from", source_words(air)))
     crest = crossing.features.crest if air.own is None else air.own.crest
@@ -243,7 +267,45 @@ def _panel(air: LeeAir, spans: Spans) -> Panel:
         if top <= air.own.base + 1.0:
             stopped = ("; nothing is blocked",)
         facts.append(("Own line", (wind, " across its crest", *stopped)))
-    return Panel(air.number, air.name, air.side, where_words(air), tuple(facts))
+    met: tuple[str, ...] = ()
+    if fire is not None:
+        facts.append(("Fuel", _fuel(fire)))
+        met = tuple(one.judged.rule.name for one in fire.thresholds if one.judged.status == "met")
+    return Panel(air.number, air.name, air.side, where_words(air), tuple(facts), _bar(air), met)
+
+
+def _parts(air: LeeAir) -> list[tuple[str, float]]:
+    """Parts of the warming that are not as good as nothing, by name."""
+    if air.parts is None or air.in_blocked_air:
+        return []
+    found = [(name, float(getattr(air.parts, key))) for key, name in PARTS.items()]
+    return [(name, value) for name, value in found if abs(value) >= SMALL_PART]
+
+
+def _because(air: LeeAir) -> Words:
+    out: list[str | Amount] = []
+    for name, value in _parts(air):
+        out += [", " if out else "", f"{name} ", Amount(value, "temperature_change", 1)]
+    return tuple(out)
+
+
+def _bar(air: LeeAir) -> tuple[Part, ...]:
+    """The parts side by side: those that cool end where those that warm begin."""
+    parts = [value for _, value in _parts(air)]
+    whole = sum(abs(value) for value in parts)
+    out, x = [], 0.0
+    for value in [*(v for v in parts if v < 0.0), *(v for v in parts if v > 0.0)]:
+        width = BAR_WIDTH * abs(value) / whole
+        out.append(Part(round(x, 1), round(max(width - 1.0, 0.5), 1), "warms" if value > 0.0 else "cools"))
+        x += width
+    return tuple(out)
+
+
+def _fuel(fire: SiteFire) -> Words:
+    """Moisture of fine dead fuel and the Fosberg index."""
+    moisture = Amount(float(fire.indices.equilibrium_fuel_moisture), "share", 1)
+    index = float(fire.indices.fosberg_index)
+    return (moisture, " moisture", *((", Fosberg index ", Amount(index, "plain")) if math.isfinite(index) else ()))
 
 
 def _failed(crossing: Crossing) -> tuple[tuple[str, str], ...]:

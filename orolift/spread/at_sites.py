@@ -75,7 +75,7 @@ def shadows(crossing: Crossing) -> tuple[Site, ...]:
 
 
 FACTORS = ("mixing_ratio", "wind", "wind_10m", "gust")
-"""Numbers whose deviations are factors; those of the others are differences."""
+"""Numbers whose deviations are factors; those of the others are differences. Rain has factors where there is any."""
 
 
 def centred(whole: Members, crossing: Crossing) -> Members:
@@ -90,6 +90,8 @@ def centred(whole: Members, crossing: Crossing) -> Members:
             value = np.nan if own is None else own
             if name in FACTORS:
                 sites[name][:, column] *= value / middle if middle > 0.0 else np.nan
+            elif name == "rain" and middle > 0.0:
+                sites[name][:, column] *= value / middle
             else:
                 sites[name][:, column] += value - middle
         if sites:
@@ -113,6 +115,7 @@ def _answers(air: LeeAir) -> dict[str, float | None]:
         "source_level_low": air.source_level_low,
         "source_level_high": air.source_level_high,
         "warming": air.warming,
+        "rain": air.rain,
         **{f"warming_{name}": None if parts is None else getattr(parts, name) for name in PARTS},
         "popular_picture": air.popular_picture,
         "descent_only": air.descent_only,

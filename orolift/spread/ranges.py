@@ -7,17 +7,14 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.fire.chances import FEWEST, TENTHS
+
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.spread.spread import Spread
 
     Array = NDArray[np.float64]
-
-LOW, HIGH = 0.1, 0.9
-"""Ends of every range."""
-FEWEST = 5
-"""Members with a value from which on they have a range; a judgement."""
 
 
 def range_of(values: Array) -> tuple[float, float] | None:
@@ -41,7 +38,7 @@ def range_of(values: Array) -> tuple[float, float] | None:
     there = values[np.isfinite(values)]
     if there.size < FEWEST:
         return None
-    low, high = np.quantile(there, [LOW, HIGH])
+    low, high = np.quantile(there, TENTHS)
     return float(low), float(high)
 
 

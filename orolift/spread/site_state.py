@@ -36,7 +36,7 @@ Status = Literal["crossing", "no crossing", "missing"]
 SLOWEST = 1.0
 """Wind [m s-1] below which the time on the way is counted with this, as for the heat of the ground."""
 LEAST_WARMING = 1.0
-"""Warming [K] from which lee air counts as warm: half the stated model error; a judgement."""
+"""Warming [K] from which lee air counts as warm: two thirds of the least error of the method; a judgement."""
 HALFWAY = 0.5
 """Share of the way from the potential temperature of the incoming air at the height of a site to that at the crest
 which air come down from the crest has made at least; what is short of the whole is mixing and low air; a judgement."""

@@ -192,7 +192,7 @@ REFUSED = [
     ),
     (["2026-11-03T12:00Z,Lower Tarn,15"], ["--event", "gust_c > 3"], "--event 'gust_c > 3'"),
     (["2026-11-03T12:00Z,Lower Tarn,15"], ["--onset-sector", "north"], "write two directions of 0 to 360 degrees"),
-    (["2026-11-03T12:00Z,Lower Tarn,15"], ["--table", "obs.csv"], "--table: obs.csv is a file to read"),
+    (["2026-11-03T12:00Z,Lower Tarn,15"], ["--table", "obs.csv"], "--table: obs.csv is read by this command"),
     (
         ["2026-11-03T12:00Z,Lower Tarn,15"],
         ["--table", "a.x", "--results", "a.x"],
@@ -216,6 +216,17 @@ def test_faults_of_the_input_end_with_one_line(observed, case_folder, capsys, ro
     assert message in said.err
     assert len(said.err.splitlines()) == 1
     assert not list(case_folder.glob("*.html"))
+
+
+def test_what_is_read_is_not_written_over(observed, case_folder, capsys):
+    """Nor two results into one file, which would lose one of them."""
+    name = observed("2026-11-03T12:00Z,Lower Tarn,15", head="time,site,temperature_c")
+    before = (case_folder / name).read_text()
+    assert exit_code(["compare", "case.toml", name, "--table", name]) == 2
+    assert "is read by this command" in capsys.readouterr().err
+    assert (case_folder / name).read_text() == before
+    assert exit_code(["compare", "case.toml", name, "--table", "a.x", "--results", "a.x"]) == 2
+    assert "both name a.x" in capsys.readouterr().err
 
 
 def test_several_cases_need_different_times(observed, case_folder, capsys):

@@ -153,8 +153,8 @@ def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, ca
     [
         (["hours", "case.toml", "series.csv", "--table", "none/t.csv"], "none is not a folder. Make it first"),
         (["hours", "case.toml", "series.csv", "--table", "a.x", "--results", "a.x"], "--table and --results both name"),
-        (["hours", "case.toml", "series.csv", "--table", "./series.csv"], "--table: ./series.csv is a file to read"),
-        (["bearings", "case.toml", "--results", "case.toml"], "--results: case.toml is a file to read"),
+        (["hours", "case.toml", "series.csv", "--table", "./series.csv"], "./series.csv is read by this command"),
+        (["bearings", "case.toml", "--results", "case.toml"], "case.toml is read by this command"),
         (["hours", "case.toml", "none.csv"], "series: none.csv cannot be found"),
         (["hours", "case.toml", "case.toml"], "case.toml: line 1"),
         (["bearings", "case.toml", "--step", "7"], "--step 7: it must divide 360"),

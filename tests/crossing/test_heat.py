@@ -8,9 +8,15 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from orolift.air.column_build import air_from_station
+from orolift.air.humidity import mixing_ratio_from_dew_point
+from orolift.crossing.crossing import cross
 from orolift.crossing.heat import SurfaceHeat, ground_change, ground_fluxes, surface_heat
+from orolift.crossing.result import Site, When
+from orolift.crossing.settings import Settings
 from orolift.crossing.sun import sun_height
 from orolift.errors import OutOfRangeError
+from orolift.terrain.ridge import ridge_transect
 
 
 def seconds(*moment) -> float:
@@ -134,3 +140,40 @@ def test_the_mixed_layer_grows_with_the_root_of_the_heat():
     by_hand = math.sqrt(2.0 * 1e6 / (1.18 * 1005.7 * 0.0051))
     assert depths[0] == pytest.approx(by_hand, rel=0.06)
     assert depths[1] == pytest.approx(2.0 * depths[0], rel=0.06)
+
+
+@pytest.fixture(scope="module")
+def sunny():
+    """A crossing with cloud, or without, by dew point, at noon of an equinox."""
+    ridge = ridge_transect([0.0, 60e3, 80e3, 110e3], [50.0, 50.0, 1500.0, 200.0], bearing=math.pi / 2, spacing=1000.0)
+
+    def crossed(dew_point, when, settings=None):
+        vapour = float(mixing_ratio_from_dew_point(1.0e5, dew_point))
+        air = air_from_station(50.0, 1.0e5, 288.15, vapour, 12.0, 1.5 * math.pi)
+        return cross(ridge, air, (Site("Lower Tarn", 105e3),), settings, when=when, streamlines=24, in_full=False)
+
+    return crossed
+
+
+NOON = When(seconds(2026, 3, 20, 13, 0, 0), 0.0, 40.0)
+UNDER_CLOUD = "counted as under a clear sky"
+
+
+def test_much_sun_under_cloud_is_a_caution(sunny):
+    """Only where the crossing has cloud, and the sun warms by much."""
+    wet, dry = sunny(284.15, NOON), sunny(265.15, NOON)
+    assert wet.cloud.base is not None
+    assert dry.cloud.base is None
+    assert min(one.lee[0].parts.surface_heating for one in (wet, dry)) > 1.0
+    assert any(UNDER_CLOUD in text for text in wet.cautions)
+    assert not any(UNDER_CLOUD in text for text in dry.cautions)
+    off = sunny(284.15, NOON, Settings(surface_heat=False))
+    assert not any(UNDER_CLOUD in text for text in off.cautions)
+    assert not any("left out" in text for text in off.notes)
+
+
+def test_heat_left_out_for_want_of_time_or_place_is_a_note(sunny):
+    """It says which of them is missing; nothing where both are there."""
+    assert any("The time is not known" in text for text in sunny(284.15, When(None, 0.0, 40.0)).notes)
+    assert any("The place is not known" in text for text in sunny(284.15, When(NOON.time)).notes)
+    assert not any("is not known: heat" in text for text in sunny(284.15, NOON).notes)

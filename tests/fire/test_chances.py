@@ -62,7 +62,7 @@ def test_chance_is_counted(crossing, settings):
 def test_the_answer_as_its_own_member(crossing, settings):
     """Without any spread each range closes on the answer, the layer's index too."""
     site = fire_at_sites(crossing, When(), settings)[0]
-    found = with_members(site, members(crossing.lee[0], 3), settings, 0.03)
+    found = with_members(site, members(crossing.lee[0], 5), settings, 0.03)
     for name in INDICES:
         own = float(getattr(site.indices, name))
         if np.isfinite(own):
@@ -74,13 +74,30 @@ def test_the_answer_as_its_own_member(crossing, settings):
 def test_warmer_and_windier_members_move_the_layer(crossing, settings):
     """Hot-Dry-Windy of members with twice the wind is twice that of the answer."""
     site = fire_at_sites(crossing, When(), settings)[0]
-    given = members(crossing.lee[0], 3)
+    given = members(crossing.lee[0], 5)
     given["wind_10m"] *= 2.0
     low, high = with_members(site, given, settings, 0.03).ranges["hot_dry_windy"]
     np.testing.assert_allclose([low, high], 2.0 * float(site.indices.hot_dry_windy))
-    given = members(crossing.lee[0], 3)
+    given = members(crossing.lee[0], 5)
     given["temperature"] += 3.0
     assert with_members(site, given, settings, 0.03).ranges["hot_dry_windy"][0] > float(site.indices.hot_dry_windy)
+
+
+def test_rain_of_the_members_counts(crossing, settings):
+    """A rule that asks for hardly any rain is met by the members without; one in four here."""
+    rule = Rule("dry", (Condition("rain_rate", at_most=1e-5),))
+    own = FireSettings(None, None, RuleSet("Tarn (invented)", "nobody", "2026-05-01", (rule,)))
+    site = fire_at_sites(crossing, When(), own)[0]
+    given = members(crossing.lee[0], 4)
+    given["rain"] = np.array([0.0, 1e-4, 1e-4, 1e-4])
+    assert with_members(site, given, own, 0.03).thresholds[0].judged.chance == 0.25
+
+
+def test_hardly_any_member_gives_no_range(crossing, settings):
+    """Four are too few for 10 and 90 %, as everywhere else."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    assert with_members(site, members(crossing.lee[0], 4), settings, 0.03).ranges == {}
+    assert with_members(site, members(crossing.lee[0], 5), settings, 0.03).ranges
 
 
 def test_members_without_air_do_not_count(crossing, settings):

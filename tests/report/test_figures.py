@@ -283,7 +283,7 @@ def test_blocked_air_is_hatched_up_to_its_top_before_the_crest(page_for, named):
 def test_range_of_the_blocked_top_is_that_of_the_members_where_there_are_some(named):
     """One page says one range of one number."""
     crossing = named("blocked")
-    figure = section(crossing, trace(crossing), 4.7, 3000.0, "metric", blocked_ends=(510.0, 1230.0))
+    figure = section(crossing, trace(crossing), 4.7, 3000.0, "metric", blocked=(510.0, 1230.0))
     for drawing in both_forms(figure):
         bar = next(curve.path for curve in drawing.leaders if curve.kind == "reach")
         ends = (float(y) for y in re.match(r"M[\d.]+ ([\d.]+)V([\d.]+)", bar).groups())

@@ -1,5 +1,6 @@
 """How sure: ranges as fine as they are wide, what they hold, chances, what matters most."""
 
+import re
 from dataclasses import replace
 
 import numpy as np
@@ -7,9 +8,13 @@ import pytest
 
 from orolift.report.briefing import briefing
 from orolift.report.figures.influences import influences_figure
+from orolift.report.figures.section import WIDE, section
 from orolift.report.how_sure import how_sure, input_words
+from orolift.report.index import entry_of
 from orolift.report.quantities import Amount
+from orolift.report.sites import sites
 from orolift.report.spans import Spans, ranged
+from orolift.report.trace import trace
 from orolift.report.words import plain
 from orolift.spread.ranges import range_of
 from orolift.spread.spread import Failed
@@ -114,3 +119,54 @@ def test_without_members_it_says_so(with_members):
     assert "switches the members off" in text(found.heading)
     assert influences_figure(found) is None
     assert found.rows == found.chances == ()
+
+
+def test_a_limit_of_rain_is_not_nothing_in_us_units(with_members):
+    """0.1 mm/h is 0.0039 in/h (NIST SP 811: an inch is 25.4 mm), and does not read as none."""
+    found = how_sure(Spans(*with_members))
+    (said,) = (text(row.event, "us") for row in found.chances if "rain or snow at" in text(row.event))
+    assert "0.004 in/h or more" in said
+
+
+def test_cautions_say_which_ranges_the_page_has(with_members, page_for):
+    """With members the ends of blocking are no range of the page, and input is not left out."""
+    crossing, spread = with_members
+    said = " ".join(text(words) for words in page_for(crossing, spread=spread, fresh=True).cautions.always)
+    assert "middle eight tenths of the members" in said
+    assert "full blocking" not in said
+    assert "no members" not in said
+    said = " ".join(text(words) for words in page_for(crossing, fresh=True).cautions.always)
+    assert "from no blocking to full blocking" in said
+    assert "the case has no members" in said
+
+
+def test_cards_and_index_have_the_ranges_of_the_page(with_members):
+    """One number, one range, wherever it stands: wind and gusts of a site card, temperature and gusts of the index."""
+    crossing, spread = with_members
+    spans = Spans(crossing, spread)
+    numbers = {one.name: one for one in briefing(crossing, 4.7, 2000.0, spans).key_numbers}
+    card = dict(sites(crossing, spans).panels[0].facts)
+    wind = numbers["Lower Tarn, wind"]
+    assert text(card["Wind"]) == text((wind.amount, *wind.span, " ", *wind.remark)).replace("; gusts", ", gusts")
+    entry = entry_of(crossing, title="Case", valid_time=None, report="a.html", files={}, spread=spread)
+    warm = numbers["Lower Tarn, temperature"]
+    assert text(entry.temperature) == text((warm.amount, *warm.span))
+    assert text(entry.gusts) in text(wind.remark)
+
+
+def test_the_bar_on_blocked_air_is_the_range_of_the_members(named):
+    """Its ends stand at the heights that are given, else at those of the thresholds; the caption says which."""
+    crossing = named("blocked")
+    flow = crossing.flow
+    for given, said in (
+        (None, "thresholds of N h/U from 3 to 0.75"),
+        ((flow.blocked_top - 50.0, flow.blocked_top + 100.0), "10 to 90 % of the members"),
+    ):
+        drawn = section(crossing, trace(crossing), 4.7, 2000.0, "metric", given)
+        low, high = given or (flow.blocked_top_low, flow.blocked_top_high)
+        (bar,) = (curve.path for curve in drawn.drawing.leaders if curve.kind == "reach")
+        ends = [float(y) for y in re.match(r"M[\d.]+ ([\d.]+)V([\d.]+)M", bar).groups()]
+        scale = drawn.drawing.ruler.high - drawn.drawing.ruler.low
+        per_metre = (WIDE.bottom - WIDE.top) / scale
+        assert ends[0] - ends[1] == pytest.approx(per_metre * (high - low), abs=0.3)
+        assert said in drawn.caption

@@ -488,3 +488,19 @@ def test_page_data_needs_neither_jinja2_nor_contourpy():
     code = "import sys, orolift.report.page as p; print(sorted({'jinja2', 'contourpy'} & set(sys.modules)))"
     done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
     assert done.stdout.strip() == "[]"
+
+
+def test_bar_of_a_panel_is_as_wide_as_the_parts_it_names(page_for, any_crossing):
+    """Widths are in the ratio of the parts of the warming, those that cool on the left, and nothing overlaps."""
+    for panel, air in zip(page_for(any_crossing).sites.panels, any_crossing.lee, strict=False):
+        if air.parts is None or air.in_blocked_air:
+            assert not panel.bar
+            continue
+        values = [value for value in vars(air.parts).values() if abs(value) >= 0.05]
+        assert sum(part.kind == "cools" for part in panel.bar) == sum(value < 0.0 for value in values)
+        if values:
+            longest = max(abs(value) for value in values)
+            widest = max(part.width for part in panel.bar)
+            assert widest == pytest.approx(200.0 * longest / sum(map(abs, values)) - 1.0, abs=0.2)
+        ends = [part.x + part.width for part in panel.bar]
+        assert all(end <= part.x + 0.3 for end, part in zip(ends, panel.bar[1:], strict=False))

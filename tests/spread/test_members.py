@@ -24,6 +24,7 @@ NEAR = {
     "warming": 2e-3,
     "popular_picture": 1e-3,
     "descent_only": 1e-3,
+    "rain": 2e-6,
 }
 """How near: roots are found to 1e-3 K, and a member may be given a step more for another's sake."""
 

@@ -148,12 +148,11 @@ def _blocked(view: View, board: Board) -> Lettered:
     """How high the air is stopped, the range of that as a bar, and what of it goes round."""
     flow, units, layout = view.crossing.flow, view.units, view.layout
     top = quantity(flow.blocked_top, "height", -1, units)
-    ends = view.blocked_ends
-    low, high = (first_number(v, "height", -1, units) for v in ends)
+    low, high = (first_number(v, "height", -1, units) for v in view.blocked)
     share = quantity(flow.going_round_share, "share", 0, units)
     round_words = f"{share} of it goes round" if flow.going_round_share > 0.0 else "none of it goes round"
     x = layout.left + 0.3 * (place(view.across, view.crossing.features.crest_distance) - layout.left)
-    y, low_y, high_y = (round(place(view.up, level), 1) for level in (flow.blocked_top, *ends))
+    y, low_y, high_y = (round(place(view.up, level), 1) for level in (flow.blocked_top, *view.blocked))
     bar = f"M{x:.1f} {low_y}V{high_y}M{x - 5:.1f} {low_y}h10M{x - 5:.1f} {high_y}h10M{x - 3:.1f} {y}h6"
     letter = board.letter
     groups: list[tuple[Label, ...]] = []

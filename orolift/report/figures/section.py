@@ -118,8 +118,7 @@ def section(
     bearing: float,
     freezing_level: float,
     units: Units,
-    *,
-    blocked_ends: tuple[float, float] | None = None,
+    blocked: tuple[float, float] | None = None,
 ) -> Figure[SectionDrawing]:
     """The section through the range, with the wind along the ground under it.
 
@@ -133,8 +132,8 @@ def section(
     freezing_level : float [m]
         Of the incoming air, above sea level.
     units : 'metric' or 'us'
-    blocked_ends : (float, float), optional [m above sea level]
-        Range of the top of the blocked air by members.
+    blocked : (float, float), optional [m above sea level]
+        Range of the top of the blocked air by the members; else that of the thresholds is drawn.
 
     Returns
     -------
@@ -142,7 +141,7 @@ def section(
     """
     forms = (_forms(crossing, layout) for layout in (WIDE, NARROW))
     (wide, *wide_panels), (narrow, *narrow_panels) = (
-        (view(crossing, trace, units, form[0], blocked_ends), *form[1:]) for form in forms
+        (view(crossing, trace, units, f[0], blocked), *f[1:]) for f in forms
     )
     return Figure(
         key="section",
@@ -150,7 +149,7 @@ def section(
         narrow=_drawing(narrow, bearing, freezing_level, *narrow_panels),
         title="Section through the range along the wind",
         alt=_alt(crossing, units),
-        caption=_caption(crossing, trace, units),
+        caption=_caption(crossing, trace, units, members=blocked is not None),
     )
 
 
@@ -198,7 +197,7 @@ def _cloud_words(crossing: Crossing, units: Units) -> str:
     return f"{words} to {quantity(cloud.end, 'height', -1, units)} in the lee."
 
 
-def _caption(crossing: Crossing, trace: Trace, units: Units) -> str:
+def _caption(crossing: Crossing, trace: Trace, units: Units, *, members: bool) -> str:
     """What the lines and areas stand for."""
     low, high = (quantity(value, "temperature_difference", 0, units) for value in (1.0, 3.0))
     looks = (
@@ -212,7 +211,8 @@ def _caption(crossing: Crossing, trace: Trace, units: Units) -> str:
         "Dotted: equal potential temperature.",
     ]
     if is_blocked(crossing):
-        parts.append("Hatched: air that does not get over; the bar on it is the range of its top.")
+        span = "10 to 90 % of the members" if members else "for thresholds of N h/U from 3 to 0.75"
+        parts.append(f"Hatched: air that does not get over; the bar on it is the range of its top, {span}.")
     if crossing.pool is not None:
         parts.append("Level strokes: cold air that stays in the lee.")
     if crossing.cloud.base is not None:

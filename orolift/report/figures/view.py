@@ -46,7 +46,7 @@ class View:
         Of the streamlines there.
     ground_x, ground_y : ndarray
         The silhouette.
-    blocked_ends : (float, float) [m above sea level]
+    blocked : (float, float) [m above sea level]
         Range of the top of the blocked air.
     """
 
@@ -61,7 +61,7 @@ class View:
     heights: Array
     ground_x: Array
     ground_y: Array
-    blocked_ends: tuple[float, float]
+    blocked: tuple[float, float]
 
     @property
     def lowest(self) -> Array:
@@ -75,7 +75,7 @@ class View:
 
 
 def view(
-    crossing: Crossing, trace: Trace, units: Units, layout: Layout, blocked_ends: tuple[float, float] | None = None
+    crossing: Crossing, trace: Trace, units: Units, layout: Layout, blocked: tuple[float, float] | None = None
 ) -> View:
     """A crossing on a drawing.
 
@@ -85,8 +85,8 @@ def view(
     trace : Trace
     units : 'metric' or 'us'
     layout : Layout
-    blocked_ends : (float, float), optional [m above sea level]
-        Range of the top of the blocked air by members; without, its ends by the flow alone.
+    blocked : (float, float), optional [m above sea level]
+        Range of the top of the blocked air; that of the thresholds when left out.
 
     Returns
     -------
@@ -112,7 +112,7 @@ def view(
         heights=crossing.height[columns],
         ground_x=ground_x[outline],
         ground_y=ground_y[outline],
-        blocked_ends=blocked_ends or (crossing.flow.blocked_top_low, crossing.flow.blocked_top_high),
+        blocked=blocked or (crossing.flow.blocked_top_low, crossing.flow.blocked_top_high),
     )
 
 
