@@ -79,13 +79,15 @@ def shape_of(feature: dict[str, Any], place: str) -> Any:
 def source_crs(document: dict[str, Any], name: str) -> Any:
     """Coordinate system of a document: the one its ``crs`` member names, else longitude and latitude."""
     from rasterio.crs import CRS
+    from rasterio.env import Env
     from rasterio.errors import CRSError
 
     member = document.get("crs")
     if member is None:
         return CRS.from_string(LONGITUDE_LATITUDE)
     try:
-        return CRS.from_user_input(str(member["properties"]["name"]))
+        with Env():  # else the library writes a line of its own to stderr
+            return CRS.from_user_input(str(member["properties"]["name"]))
     except (CRSError, KeyError, TypeError) as error:
         raise DataFileError(
             f"{name}: its coordinate system {json.dumps(member)[:80]} is not known. Export it in longitude and "

@@ -214,4 +214,6 @@ def _site(name: str, elevation: float | None, keys: dict[str, float], place: str
     except ValidationError as error:
         fault = error.errors(include_url=False)[0]
         key = str(fault["loc"][-1]) if fault["loc"] else "site"
+        if fault["type"] == "string_too_short":
+            raise DataFileError(f"{place}: {key} is missing. Fill it in or take the row out.") from error
         raise DataFileError(f"{place}: {key}: {fault['msg']}, and {fault['input']!r} is given.") from error

@@ -86,7 +86,7 @@ def test_sites_of_case_and_file_stand_together(read):
         ("name,longitude,latitude\nA,1,\n", r"line 2: latitude is missing"),
         ("name,longitude,latitude\nA,1,95\n", r"line 2: latitude 95 is outside the plausible range"),
         ("name,longitude,latitude,elevation_m\nA,1,2,high\n", r"line 2: elevation 'high' is not a number"),
-        ("name,longitude,latitude\n,1,2\n", r"line 2: name"),
+        ("name,longitude,latitude\n,1,2\n", r"line 2: name is missing"),
         ("name,longitudee,latitude\nA,1,2\n", "Did you mean longitude"),
         ("name,longitude,latitude\n", "has a header and no rows"),
     ],
