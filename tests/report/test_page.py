@@ -492,7 +492,9 @@ def test_page_data_needs_neither_jinja2_nor_contourpy():
 
 def test_bar_of_a_panel_is_as_wide_as_the_parts_it_names(page_for, any_crossing):
     """Widths are in the ratio of the parts of the warming, those that cool on the left, and nothing overlaps."""
-    for panel, air in zip(page_for(any_crossing).sites.panels, any_crossing.lee, strict=False):
+    by_number = {air.number: air for air in any_crossing.lee}
+    for panel in page_for(any_crossing).sites.panels:
+        air = by_number[panel.number]
         if air.parts is None or air.in_blocked_air:
             assert not panel.bar
             continue
