@@ -90,10 +90,12 @@ def _cloud(spans: Spans, said: Said) -> str:
 
 
 def _flow(spans: Spans, said: Said) -> str:
+    from orolift.report.story import regime_words
+
     flow = spans.crossing.flow
     number = f"N h/U {flow.nondimensional_height:.1f}"
     if flow.blocked_top <= spans.crossing.features.base + 1.0:
-        return f"{flow.regime} ({number}); no layer is stopped"
+        return f"{regime_words(spans.crossing)} ({number}); no layer is stopped"
     ends = spans.of("blocked_top") or (flow.blocked_top_low, flow.blocked_top_high)
     return f"{flow.regime} ({number}); blocked up to {said(flow.blocked_top, 'height', -1, ends)}"
 

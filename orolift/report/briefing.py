@@ -21,6 +21,7 @@ from orolift.report.story import (
     main_site,
     rains,
     reaches_the_ground_or_not,
+    regime_words,
     source_words,
     starts_saturated,
 )
@@ -153,7 +154,7 @@ def _flow(spans: Spans, bearing: float) -> Words:
         *ranged(Amount(flow.crest_wind, "wind"), spans.of("cross_range_wind")),
         f" across it: N{NO_BREAK_SPACE}h/U is ",
         Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2),
-        f", so the flow {_CERTAIN.get(flow.regime, flow.regime)}",
+        f", so the flow {_CERTAIN.get(regime_words(crossing), flow.regime)}",
     )
     others = [_POSSIBLE.get(one, one) for one in flow.possible_regimes if one != flow.regime]
     if others:
@@ -183,6 +184,7 @@ _CERTAIN = {
     "flows over with steep waves": "goes over with steep waves",
     "partly blocked": "is partly blocked",
     "blocked": "is blocked",
+    "close to blocked": "is close to being blocked",
 }
 _POSSIBLE = {
     "flows over": "go over quietly",

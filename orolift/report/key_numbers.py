@@ -15,6 +15,7 @@ from orolift.report.story import (
     is_blocked,
     rains,
     reaches_the_ground_or_not,
+    regime_words,
     source_words,
     starts_saturated,
 )
@@ -119,7 +120,7 @@ def _blocked_number(spans: Spans) -> KeyNumber:
     amount = Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2)
     number = ranged(amount, spans.of("nondimensional_height"))
     if not is_blocked(crossing):
-        return KeyNumber("Air stopped below", None, "no layer", (), ("N h/U ", *number, f": {flow.regime}"))
+        return KeyNumber("Air stopped below", None, "no layer", (), ("N h/U ", *number, f": {regime_words(crossing)}"))
     top, *span = blocked_with_range(spans)
     share: Words = (
         "; ",

@@ -60,6 +60,12 @@ def is_blocked(crossing: Crossing) -> bool:
     return crossing.flow.blocked_top > crossing.features.base + 1.0
 
 
+def regime_words(crossing: Crossing) -> str:
+    """What the range does to the air; close to blocked where it should block and yet no layer is stopped."""
+    regime = crossing.flow.regime
+    return "close to blocked" if regime.endswith("blocked") and not is_blocked(crossing) else regime
+
+
 def reaches_the_ground_or_not(crossing: Crossing, site: LeeAir) -> bool:
     """Whether it is open that the crossing air reaches the lee ground, so that two answers must be said."""
     flow = crossing.flow
