@@ -12,6 +12,7 @@ from orolift.fire.fosberg import fosberg_index
 from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.sites import FireSettings
 from orolift.fire.winds import WindMeant
+from orolift.report.figures import lee_map as maps
 from orolift.report.lee_map import lee_on_map
 from orolift.report.words import plain
 from orolift.sources.geotiff import threshold_maps
@@ -125,3 +126,14 @@ def test_a_case_without_rules_has_no_thresholds(found):
     assert _thresholds(SimpleNamespace(fire=FireSettings(), case=case), found) is None
     given = SimpleNamespace(fire=FireSettings(rules=rules(DRY_AND_WINDY)), case=case)
     assert len(_thresholds(given, found).judged) == 1
+
+
+def test_the_figure_marks_what_is_met_in_the_danger_colour(found):
+    """Cells with a threshold met are above its one level; without any there is no figure."""
+    on_map = thresholds_on_map(found, rules(DRY_AND_WINDY), 0.03)
+    (shown,) = maps._thresholds(SimpleNamespace(thresholds=on_map))
+    ((level, kind, _),) = shown.levels
+    assert kind.endswith("danger")
+    assert (shown.values > level).tolist() == [[one == 1.0 for one in MET]]
+    never = Rule("Never", (Condition("temperature", at_least=330.0),))
+    assert maps._thresholds(SimpleNamespace(thresholds=thresholds_on_map(found, rules(never), 0.03))) == ()
