@@ -101,7 +101,7 @@ def _thresholds(mapped: MappedLee) -> tuple[_Shown, ...]:
         _Shown(
             "lee-thresholds",
             "Where a threshold is met",
-            f"Marked: threshold met in the estimate ({names}); not a warning. Elsewhere none is met, or none can be judged.",
+            f"Marked: threshold met in the estimate ({names}); not a warning. Elsewhere: none met, or none judged.",
             np.where(np.isfinite(found.count), np.minimum(found.count, 1.0), np.nan),
             "plain",
             ((0.5, "lee-layer danger", 1.0),),
