@@ -64,6 +64,34 @@ def members_at(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Ar
     return {name: value[:, column] for name, value in spread.full_sites.items()}
 
 
+MANY = 24
+"""Sites beside the line from which on those whose places on it are about the same share one."""
+SAME_DISTANCE, SAME_HEIGHT = 1000.0, 100.0
+"""Steps [m] of distance and height within which they do; deviations of members hardly change over them: a judgement."""
+
+
+def alike(places: tuple[Site, ...]) -> tuple[tuple[Site, ...], NDArray[np.intp]]:
+    """Places without those about the same, and for each place the number of the one that stands for it."""
+    if len(places) <= MANY:
+        return places, np.arange(len(places))
+    kept: dict[tuple[int, int], int] = {}
+    first: list[Site] = []
+    back = []
+    for place in places:
+        key = round(place.distance / SAME_DISTANCE), round((place.elevation or 0.0) / SAME_HEIGHT)
+        if key not in kept:
+            kept[key] = len(first)
+            first.append(place)
+        back.append(kept[key])
+    return tuple(first), np.array(back, dtype=np.intp)
+
+
+def spread_out(whole: Members, first: int, back: NDArray[np.intp]) -> Members:
+    """Members with a column for every site: those on the line, then that of the place that stands for each other."""
+    columns = np.concatenate([np.arange(first), first + back])
+    return Members(whole.crosses, whole.values, {name: value[:, columns] for name, value in whole.sites.items()})
+
+
 def shadows(crossing: Crossing) -> tuple[Site, ...]:
     """For each site with a line of its own, the place on this line that is as far from its crest."""
     length, crest = float(crossing.transect.distance[-1]), crossing.features.crest_distance

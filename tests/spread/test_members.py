@@ -5,9 +5,11 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from orolift.crossing.members import members_of
+from orolift.crossing.members import Members, members_of
 from orolift.crossing.pool import Lee
+from orolift.crossing.result import Site
 from orolift.crossing.situation import crossing_of
+from orolift.spread.at_sites import alike, spread_out
 from orolift.spread.draws import draws_of, variation_of
 from orolift.spread.uncertainty import COLUMNS, Uncertainty, latin_hypercube
 
@@ -117,3 +119,19 @@ def test_a_member_without_enough_wind_is_no_error(calm):
     none = members_of(calm, variation_of(calm, uncertainty, drawn, freezing=True))
     assert not none.crosses.any()
     assert none.sites == {}
+
+
+def test_many_places_that_are_about_the_same_share_one():
+    """Every place keeps one within 1 km and 100 m of it, and its column; a few keep their own."""
+    places = tuple(Site(f"P{i}", 50e3 + 137.0 * i, 300.0 + 11.0 * i) for i in range(60))
+    kept, back = alike(places)
+    assert len(kept) < 30
+    for place, number in zip(places, back, strict=True):
+        assert abs(kept[number].distance - place.distance) <= 1000.0
+        assert abs(kept[number].elevation - place.elevation) <= 100.0
+    few, own = alike(places[:24])
+    assert few == places[:24]
+    assert own.tolist() == list(range(24))
+    columns = np.arange(2.0 + len(kept))[np.newaxis]
+    spread = spread_out(Members(np.ones(1, bool), {}, {"temperature": columns}), 2, back)
+    assert spread.sites["temperature"][0].tolist() == [0.0, 1.0, *(2.0 + back)]
