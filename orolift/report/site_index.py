@@ -148,7 +148,7 @@ def bearings_index(bearings: Bearings, page: BearingsPage, *, report: str, files
         dangers=(),
         lead=page.lead[:1] if bearings.interrupted else (),
         entries=(Linked("Every wind direction", quote(report), _links(files)),),
-        caption="Each site; the direction the wind comes from, and what it brings",
+        caption="Each site; the direction the wind comes from, and what it brings; wind is that at 10 m",
         columns=("Directions that cross", "Warmest", "Worst for fire", "Best for rain"),
         rows=_rows(report, [(site.name, _bearings_cells(site, bearings)) for site in bearings.sites]),
     )
