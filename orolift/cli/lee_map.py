@@ -12,6 +12,8 @@ from orolift.errors import OroliftError
 if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
     from orolift.sources.strips import MappedLee
+    from orolift.spread.lee_map import LeeMap
+    from orolift.spread.lee_thresholds import LeeThresholds
 
 log = logging.getLogger(__name__)
 
@@ -53,11 +55,22 @@ def mapped_lee(
         ):
             parts = air_of_strips(plan.strips, executor, lambda: bar.update(1))
         found = lee_map(parts, plan.frame, plan.placed.grid, inputs.incoming)
+        thresholds = _thresholds(inputs, found)
     except OroliftError as error:
         error.args = (f"{inputs.path}: {error}",)
         raise
     log.debug("map of the lee worked out")
-    return MappedLee(plan, found, sites_on(plan.placed, inputs.places))
+    return MappedLee(plan, found, sites_on(plan.placed, inputs.places), thresholds)
+
+
+def _thresholds(inputs: Inputs, found: LeeMap) -> LeeThresholds | None:
+    """The rules of the case on its map; None without any."""
+    from orolift.spread.lee_thresholds import thresholds_on_map
+
+    fire = inputs.fire
+    if fire.rules is None:
+        return None
+    return thresholds_on_map(found, fire.rules, inputs.case.lee.roughness_m, fire.drought_index)
 
 
 def lee_files(folder: str | None, inputs: Inputs, mapped: MappedLee | None) -> dict[Path, bytes]:
@@ -77,11 +90,13 @@ def lee_files(folder: str | None, inputs: Inputs, mapped: MappedLee | None) -> d
     if folder is None or mapped is None:
         return {}
     from orolift import __version__
-    from orolift.sources.geotiff import lee_maps
+    from orolift.sources.geotiff import lee_maps, threshold_maps
 
     case = inputs.case
     tags = {"title": case.title or inputs.path.stem, "software": f"orolift {__version__}"}
     if case.valid_time is not None:
         tags["valid_time"] = case.valid_time.isoformat()
     maps = lee_maps(mapped.plan.placed, mapped.map, tags)
+    if mapped.thresholds is not None:
+        maps |= threshold_maps(mapped.plan.placed, mapped.thresholds, tags)
     return {Path(folder) / f"{inputs.path.stem}_{name}.tif": content for name, content in maps.items()}

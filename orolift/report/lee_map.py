@@ -7,14 +7,18 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.fire.words import named
 from orolift.report.quantities import Amount
 from orolift.report.words import counted
 
 if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
     from orolift.report.figures.drawing import Figure
     from orolift.report.figures.lee_map import LeeMapDrawing
     from orolift.report.words import Words
     from orolift.sources.strips import MappedLee
+    from orolift.spread.lee_thresholds import LeeThresholds
 
 ALIKE = (
     " apart, each with its own crest and range and the same incoming air, and joined across the wind by a Gaussian of "
@@ -72,6 +76,7 @@ def lee_on_map(mapped: MappedLee, figures: tuple[Figure[LeeMapDrawing], ...]) ->
                 ".",
             )
         )
+    remarks += _thresholds(mapped.thresholds, behind)
     apart = float(mapped.plan.frame.across[1] - mapped.plan.frame.across[0])
     remarks.append(
         (
@@ -85,3 +90,30 @@ def lee_on_map(mapped: MappedLee, figures: tuple[Figure[LeeMapDrawing], ...]) ->
     for reason, count in found.failed[:3]:
         remarks.append((f"{counted(count, 'strip', 'strips').capitalize()} could not be: {reason}",))
     return LeeOnMap(heading, figures, tuple(remarks))
+
+
+def _thresholds(found: LeeThresholds | None, behind: NDArray[np.bool_]) -> list[Words]:
+    """The share of the lee in which each rule is met, and which rules a map cannot judge."""
+    if found is None:
+        return []
+    parts: list[str | Amount] = []
+    long = False
+    for one in found.judged:
+        known = one.met[behind & np.isfinite(one.met)]
+        if known.size:
+            parts += ["; " if parts else "", f"“{one.rule.name}” on ", Amount(float(known.mean()), "share")]
+            long = long or one.rule.hours > 1
+    out: list[Words] = []
+    if parts:
+        lasting = " Whether they are met for the hours they ask for is not judged." if long else ""
+        out.append(
+            (
+                "Threshold met in the estimate, as a share of the ground behind the crest where it can be judged: ",
+                *parts,
+                f". Set by {found.authority}; not a warning.{lasting}",
+            )
+        )
+    for rule, missing in found.unknown:
+        lacks = ", ".join(named(one).words for one in missing)
+        out.append((f"The threshold “{rule.name}” cannot be judged on the map, which does not have: {lacks}.",))
+    return out

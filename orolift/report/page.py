@@ -216,7 +216,7 @@ def page_of(
         path=path(line, followed, units),
         causes=causes(few),
         budget=budget(few, units),
-        rain=rain_on_line(line, flags, units),
+        rain=rain_on_line(line, flags, units, Spans(line, spread)),
         rain_line=rain_line(line, None if mapped is None else mapped.rain.on_line, units),
         rain_over_map=None if mapped is None else rain_over_map(mapped, units),
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),

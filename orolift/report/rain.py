@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from orolift.rain.winter import bands_of_sides
 from orolift.report.quantities import Amount, Units, from_displayed
+from orolift.report.spans import Spans, ranged
 from orolift.report.story import fallen_share, rains, removal_words, snow_words
 from orolift.report.words import fraction_in_words, sentence
 
@@ -52,7 +53,9 @@ class RainOnLine:
     rows: tuple[BandRow, ...]
 
 
-def rain_on_line(crossing: Crossing, flags: tuple[str, ...] = (), units: Units = "metric") -> RainOnLine:
+def rain_on_line(
+    crossing: Crossing, flags: tuple[str, ...] = (), units: Units = "metric", spans: Spans | None = None
+) -> RainOnLine:
     """Rain along the line of a crossing.
 
     Parameters
@@ -62,6 +65,8 @@ def rain_on_line(crossing: Crossing, flags: tuple[str, ...] = (), units: Units =
         From `orolift.rain.winter.winter_flags`.
     units : 'metric' or 'us'
         In which the bands of height are round.
+    spans : Spans, optional
+        Ranges.
 
     Returns
     -------
@@ -71,7 +76,7 @@ def rain_on_line(crossing: Crossing, flags: tuple[str, ...] = (), units: Units =
     return RainOnLine(
         heading=_heading(crossing),
         flags=flags,
-        sentences=_sentences(crossing),
+        sentences=_sentences(crossing, spans or Spans(crossing, None)),
         rows=_rows(crossing, band_step(units)) if falls else (),
     )
 
@@ -90,7 +95,7 @@ def _heading(crossing: Crossing) -> Words:
     return (*words, ", ", Amount(abs(apart), "distance"), " behind it" if apart > 0.0 else " before it")
 
 
-def _sentences(crossing: Crossing) -> tuple[Words, ...]:
+def _sentences(crossing: Crossing, spans: Spans) -> tuple[Words, ...]:
     water, rain = crossing.water, crossing.rain
     if water.condensed <= 0.0:
         return (("Nothing condenses on the way over: the air stays short of saturation.",),)
@@ -99,13 +104,14 @@ def _sentences(crossing: Crossing) -> tuple[Words, ...]:
     out: list[Words] = [
         (
             "Of the vapour that crosses ",
-            Amount(fallen_share(crossing), "share"),
+            *ranged(Amount(fallen_share(crossing), "share"), spans.drying()),
             " reaches the ground, of what condenses ",
-            Amount(water.removed / water.condensed, "share"),
-            " (",
+            *ranged(Amount(water.removed / water.condensed, "share"), spans.of("rain_out_share")),
+            ": ",
             *removal_words(crossing),
-            ").",
-        )
+            ".",
+        ),
+        *_places(crossing, spans),
     ]
     fell = water.removed + water.evaporated + water.beyond
     if water.evaporated > SOME * fell:
@@ -125,6 +131,16 @@ def _sentences(crossing: Crossing) -> tuple[Words, ...]:
             )
         )
     return tuple(out)
+
+
+def _places(crossing: Crossing, spans: Spans) -> tuple[Words, ...]:
+    """The share before the crest and the most, with their ranges."""
+    rain = crossing.rain
+    if rain.windward_share is None:
+        return ()
+    share = ranged(Amount(rain.windward_share, "share"), spans.of("windward_share"))
+    most = ranged(Amount(rain.peak_rate, "rain_rate", 1), spans.of("peak_rate"))
+    return ((*share, f" of the {snow_words(crossing)} falls before the crest; the most anywhere is ", *most, "."),)
 
 
 def band_step(units: Units) -> float:

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.fire.words import named
 from orolift.sources.units import UNITS
 
 if TYPE_CHECKING:
@@ -16,6 +17,7 @@ if TYPE_CHECKING:
 
     from orolift.sources.elevation_map import ElevationMap
     from orolift.spread.lee_map import LeeMap
+    from orolift.spread.lee_thresholds import LeeThresholds
 
     Array = NDArray[np.float64]
 
@@ -148,3 +150,34 @@ def lee_maps(placed: ElevationMap, found: LeeMap, tags: Mapping[str, str]) -> di
         "lee_behind_crest": [Band("distance behind the crest along the wind", "m", found.behind_crest)],
     }
     return {name: geotiff(bands, placed, tags) for name, bands in maps.items()}
+
+
+def threshold_maps(placed: ElevationMap, found: LeeThresholds, tags: Mapping[str, str]) -> dict[str, bytes]:
+    """The map file of thresholds met: how many in each cell, then each rule by itself.
+
+    Parameters
+    ----------
+    placed : ElevationMap
+    found : LeeThresholds
+        On the same grid.
+    tags : mapping of str to str
+
+    Returns
+    -------
+    dict of str to bytes
+        Name of the file without its ending, and the GeoTIFF; rules that a map cannot judge are named in its tags.
+    """
+    bands = [
+        Band("number of thresholds met", "1", found.count),
+        *(Band(f"threshold met: {one.rule.name}", "1", one.met) for one in found.judged),
+    ]
+    own = {
+        "rules": "; ".join(one.rule.name for one in found.judged),
+        "rules_not_judged": "; ".join(
+            f"{rule.name} ({', '.join(named(one).words for one in missing)})" for rule, missing in found.unknown
+        ),
+        "region": found.region,
+        "authority": found.authority,
+    }
+    own = {name: text for name, text in own.items() if text}
+    return {"lee_thresholds": geotiff(bands, placed, {**tags, **own})}

@@ -61,6 +61,8 @@ class _Shown:
     kind : Kind
     levels : tuple of (float, str, float)
         Limits in SI, the class of the area beyond each, and 1 where that is above, -1 where it is below.
+    alt : str
+        What it shows, where that is no range of values; its levels then bear no values.
     """
 
     key: str
@@ -69,10 +71,11 @@ class _Shown:
     values: Array
     kind: Kind
     levels: tuple[tuple[float, str, float], ...]
+    alt: str = ""
 
 
 def lee_map_figures(crossing: Crossing, mapped: MappedLee, units: Units) -> tuple[Figure[LeeMapDrawing], ...]:
-    """The maps of the lee: warming, humidity, wind.
+    """The maps of the lee: warming, humidity, wind, and where a threshold is met.
 
     Parameters
     ----------
@@ -84,7 +87,27 @@ def lee_map_figures(crossing: Crossing, mapped: MappedLee, units: Units) -> tupl
     -------
     tuple of Figure
     """
-    return tuple(_figure(shown, crossing, mapped, units) for shown in _shown(mapped, units))
+    shown = (*_shown(mapped, units), *_thresholds(mapped))
+    return tuple(_figure(one, crossing, mapped, units) for one in shown)
+
+
+def _thresholds(mapped: MappedLee) -> tuple[_Shown, ...]:
+    """Where a threshold is met; nothing where none is."""
+    found = mapped.thresholds
+    if found is None or not np.any(found.count > 0.0):
+        return ()
+    names = ", ".join(f"“{one.rule.name}”" for one in found.judged if np.any(one.met > 0.0))
+    return (
+        _Shown(
+            "lee-thresholds",
+            "Where a threshold is met",
+            f"Marked: threshold met in the estimate ({names}); not a warning. Elsewhere: none met, or none judged.",
+            np.where(np.isfinite(found.count), np.minimum(found.count, 1.0), np.nan),
+            "plain",
+            ((0.5, "lee-layer danger", 1.0),),
+            f"Where a threshold is met: {names}.",
+        ),
+    )
 
 
 def _shown(mapped: MappedLee, units: Units) -> tuple[_Shown, ...]:
@@ -144,7 +167,8 @@ def _figure(shown: _Shown, crossing: Crossing, mapped: MappedLee, units: Units) 
         drawing=_drawing(shown, crossing, mapped, units, "wide"),
         narrow=_drawing(shown, crossing, mapped, units, "narrow"),
         title=shown.title,
-        alt=(
+        alt=shown.alt
+        or (
             f"{shown.title}: on most of the map from {quantity(low, shown.kind, digits, units)} to "
             f"{quantity(high, shown.kind, digits, units)}."
         ),
@@ -207,6 +231,8 @@ def _layers(
         layers.append(area)
         lines = rain_lines(made, at)
         contours += [Curve(path_data(*line), kind.replace("layer", "contour")) for line in lines]
+        if shown.alt:
+            continue
         text = quantity(level, shown.kind, 0 if abs(displayed(level, shown.kind, units)) % 1.0 < 1e-6 else 1, units)
         text = text.split("\u00a0(")[0]
         spots = [
