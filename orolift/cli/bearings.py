@@ -17,9 +17,8 @@ from orolift.cli.options import (
     UNITS_OPTION,
     VERBOSE_OPTION,
     file_option,
-    refuse_files,
 )
-from orolift.cli.outputs import made_now
+from orolift.cli.outputs import Outputs, made_now
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -35,6 +34,7 @@ log = logging.getLogger(__name__)
 @file_option("--report", "Page to write; default CASE_bearings.html in the current folder.")
 @file_option("--table", "Table to write as CSV, one row for each site and direction.")
 @file_option("--results", "Results to write as JSON.")
+@click.option("--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page.")
 @JOBS_OPTION
 @SCHEDULER_OPTION
 @UNITS_OPTION
@@ -44,6 +44,7 @@ def command(
     case: str,
     *,
     step: int,
+    folder: str | None,
     jobs: int | None,
     scheduler: str | None,
     units: Units,
@@ -51,12 +52,12 @@ def command(
     **files: str | None,
 ) -> None:
     """Work out the crossing of CASE for every direction its wind could come from."""
+    from orolift.cli.folder import planned_files, where
     from orolift.sources.bearings_case import read_bearings
-    from orolift.sources.files import write_all
     from orolift.spread.bearings import bearings_of
 
-    files["report"] = files["report"] or f"{Path(case).stem}_bearings.html"
-    refuse_files(files)
+    outputs = Outputs()
+    files = planned_files(files, f"{Path(case).stem}_bearings", folder, outputs)
     setup = read_bearings(case, step)
     log.debug("%s read, %d directions", case, setup.directions)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
@@ -69,9 +70,11 @@ def command(
         given=setup.inputs.wind_from,
         planned=setup.directions,
     )
-    write_all(contents_of(bearings, setup, units, files))
+    for path, content in contents_of(bearings, setup, units, files).items():
+        outputs.add(path, content, str(path))
+    outputs.write()
     if not quiet:
-        click.echo("\n".join([*summary_of(bearings, setup), f"Report: {files['report']}"]))
+        click.echo("\n".join([*summary_of(bearings, setup), *where(files)]))
     if stopped:
         done = f"{bearings.wind_from.size} of {bearings.planned} directions"
         raise click.Abort(f"interrupted after {done}; what was finished is written.")
@@ -107,8 +110,10 @@ def contents_of(
 ) -> dict[Path, bytes]:
     """What stands in each file that was asked for."""
     from orolift import __version__
+    from orolift.cli.folder import beside
     from orolift.report.bearings_page import bearings_page
     from orolift.report.render import render
+    from orolift.report.site_index import bearings_index
     from orolift.sources.bearings_results import bearing_rows, bearings_results
     from orolift.sources.files import csv_text
 
@@ -121,6 +126,9 @@ def contents_of(
         units=units,
     )
     out = {Path(str(files["report"])): render(page, "bearings.html.jinja").encode()}
+    if files.get("index") is not None:
+        index = bearings_index(bearings, page, report=Path(str(files["report"])).name, files=beside(files))
+        out[Path(str(files["index"]))] = render(index, "site_index.html.jinja").encode()
     results = bearings_results(bearings, setup)
     if files["table"] is not None:
         out[Path(files["table"])] = csv_text(*bearing_rows(results)).encode()

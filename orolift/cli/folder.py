@@ -1,14 +1,17 @@
-"""`--folder`: everything of some cases side by side, with an index page that links it."""
+"""`--folder`: everything of some cases side by side, or of many crossings of one, with an index page that links it."""
 
 from __future__ import annotations
 
+from importlib.util import find_spec
 from pathlib import Path
 from typing import TYPE_CHECKING
 
+from orolift.cli.options import refuse_files
+from orolift.cli.outputs import refuse_together
 from orolift.cli.over_map import RainFiles, rain_files
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable
+    from collections.abc import Iterable, Mapping
 
     from orolift.cli.cross import Worked
     from orolift.cli.outputs import Outputs
@@ -22,6 +25,79 @@ SAID = {
     "geojson": "sites on the map",
     "toml": "fitted times",
 }
+
+KINDS = {"report": "html", "results": "json", "table": "csv", "netcdf": "nc"}
+"""Kind of file, by the option that asks for it."""
+
+
+def planned_files(
+    files: Mapping[str, str | None], stem: str, folder: str | None, outputs: Outputs
+) -> dict[str, str | None]:
+    """Name the files of a command that writes one page, before any work.
+
+    Parameters
+    ----------
+    files : mapping of str to str or None
+        Asked for by name, by the name of their option.
+    stem : str
+        Of the names of those that are not.
+    folder : str or None
+        For all of them, with an index: NetCDF only where it can be written.
+    outputs : Outputs
+
+    Returns
+    -------
+    dict of str to str or None
+        As `files`, with the page, and with the index where there is a folder.
+
+    Raises
+    ------
+    CaseError, MissingFileError
+        That names the file, or options that cannot be met together.
+    """
+    refuse_together([f"--{option}" for option, name in files.items() if name is not None], 1, folder)
+    if folder is None:
+        found = {**files, "report": files["report"] or f"{stem}.html"}
+        refuse_files(found)
+        return found
+    outputs.plan_folder(Path(folder), "--folder")
+    wanted = [option for option in files if option != "netcdf" or find_spec("netCDF4") is not None]
+    names = {option: str(Path(folder) / f"{stem}.{KINDS[option]}") for option in wanted}
+    names["index"] = str(Path(folder) / "index.html")
+    for option, name in names.items():
+        outputs.plan(name, f"the {option} in --folder")
+    return {**dict.fromkeys(files), **names}
+
+
+def beside(files: Mapping[str, str | None]) -> dict[str, str]:
+    """Names of the files beside a page and its index, by what they are.
+
+    Parameters
+    ----------
+    files : mapping of str to str or None
+        As `planned_files` gives them.
+
+    Returns
+    -------
+    dict of str to str
+    """
+    said = {"results": "results", "table": "table", "netcdf": "NetCDF"}
+    return {what: Path(name).name for option, what in said.items() if (name := files.get(option)) is not None}
+
+
+def where(files: Mapping[str, str | None]) -> list[str]:
+    """Lines for the terminal: where the page is, and the index.
+
+    Parameters
+    ----------
+    files : mapping of str to str or None
+        As `planned_files` gives them.
+
+    Returns
+    -------
+    list of str
+    """
+    return [f"{option.capitalize()}: {files[option]}" for option in ("report", "index") if files.get(option)]
 
 
 def plan_folder(cases: tuple[str, ...], folder: Path, outputs: Outputs) -> None:

@@ -17,9 +17,8 @@ from orolift.cli.options import (
     UNITS_OPTION,
     VERBOSE_OPTION,
     file_option,
-    refuse_files,
 )
-from orolift.cli.outputs import made_now
+from orolift.cli.outputs import Outputs, made_now
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -37,6 +36,7 @@ log = logging.getLogger(__name__)
 @file_option("--table", "Table to write as CSV, one row for each site and hour.")
 @file_option("--results", "Results to write as JSON.")
 @file_option("--netcdf", "Results to write as NetCDF (needs the extra 'netcdf').")
+@click.option("--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page.")
 @JOBS_OPTION
 @SCHEDULER_OPTION
 @UNITS_OPTION
@@ -46,6 +46,7 @@ def command(
     case: str,
     series: str,
     *,
+    folder: str | None,
     jobs: int | None,
     scheduler: str | None,
     units: Units,
@@ -56,12 +57,12 @@ def command(
 
     SERIES is a CSV table of station values or of sounding files, each row with its time, or NetCDF with times.
     """
-    from orolift.sources.files import write_all
+    from orolift.cli.folder import planned_files, where
     from orolift.sources.hours_case import read_hours
     from orolift.spread.timeline import hours_of
 
-    files["report"] = files["report"] or f"{Path(case).stem}_hours.html"
-    refuse_files(files)
+    outputs = Outputs()
+    files = planned_files(files, f"{Path(case).stem}_hours", folder, outputs)
     if files["netcdf"] is not None:
         from orolift.sources.hours_netcdf import refuse_without_netcdf
 
@@ -81,9 +82,11 @@ def command(
         fire=setup.inputs.fire,
         wind_error=setup.wind_error,
     )
-    write_all(contents_of(hours, setup, units, files))
+    for path, content in contents_of(hours, setup, units, files).items():
+        outputs.add(path, content, str(path))
+    outputs.write()
     if not quiet:
-        click.echo("\n".join([*summary_of(hours, setup, units), f"Report: {files['report']}"]))
+        click.echo("\n".join([*summary_of(hours, setup, units), *where(files)]))
     if stopped:
         raise click.Abort(
             f"interrupted after {hours.time.size} of {hours.planned} hours; what was finished is written."
@@ -132,8 +135,10 @@ def filled(found: list[Hour], setup: HourSetup) -> list[Hour]:
 def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, str | None]) -> dict[Path, bytes]:
     """What stands in each file that was asked for."""
     from orolift import __version__
+    from orolift.cli.folder import beside
     from orolift.report.hours_page import hours_page
     from orolift.report.render import render
+    from orolift.report.site_index import hours_index
     from orolift.sources.files import csv_text
     from orolift.sources.hours_results import hour_rows, hours_results, notes_of
 
@@ -147,6 +152,9 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
         units=units,
     )
     out = {Path(str(files["report"])): render(page, "hours.html.jinja").encode()}
+    if files.get("index") is not None:
+        index = hours_index(hours, page, setup.series.zone, report=Path(str(files["report"])).name, files=beside(files))
+        out[Path(str(files["index"]))] = render(index, "site_index.html.jinja").encode()
     results = hours_results(hours, setup)
     if files["table"] is not None:
         out[Path(files["table"])] = csv_text(*hour_rows(results)).encode()

@@ -31,6 +31,7 @@ if TYPE_CHECKING:
     from orolift.report.hours_page import HoursPage
     from orolift.report.index import IndexPage
     from orolift.report.page import Page
+    from orolift.report.site_index import SiteIndex
 
 INLINED = ("style.css", "reading.js", "sorting.js")
 """Files of the package that pages carry inside them."""
@@ -51,12 +52,14 @@ class Inlined:
     hash: str
 
 
-def render(page: Page | IndexPage | ComparePage | HoursPage | BearingsPage, template: str = "page.html.jinja") -> str:
+def render(
+    page: Page | IndexPage | ComparePage | HoursPage | BearingsPage | SiteIndex, template: str = "page.html.jinja"
+) -> str:
     """A page as one self-contained HTML file.
 
     Parameters
     ----------
-    page : Page, IndexPage, ComparePage, HoursPage or BearingsPage
+    page : Page, IndexPage, ComparePage, HoursPage, BearingsPage or SiteIndex
         With at least a title, a version, a time it was made and units.
     template : str
         Name of the template that extends the skeleton and is written for this kind of page.

@@ -4,7 +4,9 @@ import csv
 import json
 import math
 import re
+import sys
 from html.parser import HTMLParser
+from urllib.parse import unquote
 
 import jsonschema
 import pytest
@@ -165,6 +167,10 @@ def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, ca
         (["hours", "case.toml", "case.toml"], "case.toml: line 1"),
         (["bearings", "case.toml", "--step", "7"], "--step 7: it must divide 360"),
         (["bearings", "case.toml", "--results", "none/r.json"], "none is not a folder"),
+        (["bearings", "case.toml", "--folder", "o", "--table", "t.csv"], "leave --table out, or leave --folder out"),
+        (["hours", "case.toml", "series.csv", "--folder", "o", "--netcdf", "n"], "leave --netcdf out"),
+        (["hours", "case.toml", "series.csv", "--folder", "case.toml"], "case.toml is a file. Name a folder"),
+        (["bearings", "case.toml", "--folder", "none/o"], "none/o cannot be made"),
     ],
 )
 def test_faults_are_said_before_anything_is_worked_out(arguments, message, series_folder, monkeypatch, capsys):
@@ -222,3 +228,71 @@ def test_bearings_write_all_their_files(case_folder, capsys):
         assert [row["wind_from_deg"] for row in csv.DictReader(stream)] == ["0.0", "90.0", "180.0", "270.0"]
     text = checked_page(case_folder / "page.html", 1)
     assert "Every wind direction" in text
+
+
+THREE_HOURS = "".join(SERIES.splitlines(keepends=True)[:4])
+
+
+@pytest.mark.parametrize(
+    ("arguments", "kinds", "heads"),
+    [
+        (
+            ["hours", "case.toml", "series.csv"],
+            {"html", "json", "csv", "nc"},
+            ["Site", "Hours that cross", "Descending warm dry air", "Onset", "End", "Thresholds met"],
+        ),
+        (
+            ["bearings", "case.toml", "--step", "90"],
+            {"html", "json", "csv"},
+            ["Site", "Directions that cross", "Warmest", "Worst for fire", "Best for rain"],
+        ),
+    ],
+)
+def test_folder_holds_all_files_and_an_index(case_folder, capsys, arguments, kinds, heads):
+    """Every link of the index leads to a file that is there; its numbers are those of the results."""
+    pytest.importorskip("netCDF4")
+    (case_folder / "series.csv").write_text(THREE_HOURS)
+    out, stem = case_folder / "out dir", f"case_{arguments[0]}"
+    assert exit_code([*arguments, "--jobs", "1", "--folder", "out dir"]) == 0
+    assert capsys.readouterr().out.splitlines()[-2:] == [
+        f"Report: out dir/{stem}.html",
+        "Index: out dir/index.html",
+    ]
+    names = {path.name for path in out.iterdir()}
+    assert names == {"index.html"} | {f"{stem}.{kind}" for kind in kinds}
+    text = (out / "index.html").read_text()
+    links = re.findall(r'href="([^"]+)"', text)
+    assert {unquote(link).partition("#")[0] for link in links} == names - {"index.html"}
+    assert 'id="site-1"' in (out / f"{stem}.html").read_text()
+    assert f"{stem}.html#site-1" in links
+    assert re.findall(r'<th scope="col">([^<]+)</th>', text) == heads
+    row = re.search(r"<tbody>(.*?)</tbody>", text, re.DOTALL).group(1)
+    row = [re.sub(r"<[^>]+>", "", cell) for cell in re.findall(r"<td>(.*?)</td>", row)]
+    site = json.loads((out / f"{stem}.json").read_text())["sites"][0]
+    states = site["hours" if arguments[0] == "hours" else "directions"]["status"]
+    assert row[0] == f"{states.count('crossing')} of {len(states)}"
+    if arguments[0] == "bearings":
+        fire = site["worst_for_fire_deg"]
+        assert row[2].startswith(f"{fire:.0f}")
+    else:
+        assert row[1:] == (["none", "–", "–", "none given"] if not site["dry_winds"] else [*row[1:4], "none given"])
+    assert "not a warning" in text
+    (out / "index.html").write_text("earlier")
+    assert exit_code([*arguments, "--jobs", "1", "--quiet", "--folder", "out dir"]) == 0
+    assert (out / "index.html").read_text() != "earlier"
+
+
+def test_folder_without_the_extra_leaves_netcdf_out(series_folder, monkeypatch):
+    """What cannot be written is not linked either."""
+    monkeypatch.setitem(sys.modules, "netCDF4", None)
+    (series_folder / "series.csv").write_text(THREE_HOURS)
+    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", "--quiet", "--folder", "out"]) == 0
+    assert {path.suffix for path in (series_folder / "out").iterdir()} == {".html", ".json", ".csv"}
+    assert "NetCDF" not in (series_folder / "out" / "index.html").read_text()
+
+
+@pytest.mark.parametrize("command", [["hours", "case.toml", "series.csv"], ["bearings", "case.toml"]])
+def test_folder_is_not_left_when_nothing_was_finished(series_folder, stopped, command):
+    stopped(hours_command, 0)
+    assert exit_code([*command, "--jobs", "1", "--folder", "out"]) == 130
+    assert not (series_folder / "out").exists()
