@@ -127,8 +127,10 @@ def test_no_bar_where_nobody_looks(capsys):
 
 
 SCRIPT = """
+import signal
 import sys
 import time
+signal.signal(signal.SIGINT, signal.default_int_handler)  # a shell without job control starts what is behind deaf to it
 from orolift.cli.executors import executor_of
 from orolift.spread.engine import outcomes
 try:

@@ -253,6 +253,7 @@ def test_danger_colour_is_used_for_danger_only():
         ".breaking",
         "svg text.breaking",
         ".met",
+        ".lee-layer.danger",
         "svg text.danger-words",
     }
 
