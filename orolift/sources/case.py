@@ -1,4 +1,4 @@
-"""A case file read from disk: TOML to typed tables, or one clear message."""
+"""The text of a case file: TOML to typed tables, or one clear message."""
 
 from __future__ import annotations
 
@@ -9,37 +9,12 @@ from pydantic import BaseModel, ValidationError
 
 from orolift.errors import CaseError
 from orolift.sources.case_model import Case
-from orolift.sources.files import read_text
 from orolift.sources.units import UNITS, alternatives, nearest, suffix_of
 
 if TYPE_CHECKING:
-    from pathlib import Path
-
     from pydantic_core import ErrorDetails
 
 Model = TypeVar("Model", bound=BaseModel)
-
-
-def read_case(path: str | Path) -> Case:
-    """Case of a TOML file.
-
-    Parameters
-    ----------
-    path : str or Path
-
-    Returns
-    -------
-    Case
-
-    Raises
-    ------
-    CaseError
-        If a key is missing, unknown, of the wrong unit or out of range, or the
-        TOML itself is broken; the message names file, key or line.
-    MissingFileError, DataFileError
-        If the file cannot be read as text.
-    """
-    return case_from_text(read_text(path, "case"), str(path))
 
 
 def case_from_text(text: str, name: str) -> Case:
@@ -48,7 +23,8 @@ def case_from_text(text: str, name: str) -> Case:
     Raises
     ------
     CaseError
-        As `read_case`.
+        If a key is missing, unknown, of the wrong unit or out of range, or the
+        TOML itself is broken; the message names file, key or line.
 
     Examples
     --------
