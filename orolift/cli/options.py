@@ -38,6 +38,13 @@ SCHEDULER_OPTION = click.option(
     metavar="ADDRESS",
     help="Work on the cluster of this dask scheduler, as in tcp://HOST:8786 (needs the extra 'cluster').",
 )
+MEMBERS_OPTION = click.option(
+    "--members",
+    type=click.IntRange(min=0),
+    default=None,
+    metavar="M",
+    help="How often each crossing is worked out for the ranges, 10 or more; 0 leaves them out. Default: as [spread].",
+)
 
 
 def show_steps() -> None:

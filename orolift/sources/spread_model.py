@@ -7,9 +7,10 @@ from typing import TYPE_CHECKING, Annotated, ClassVar
 
 from pydantic import Field, field_validator
 
+from orolift.errors import CaseError
 from orolift.sources.case_table import Table
 from orolift.sources.units import UNITS, suffix_of
-from orolift.spread.spread import LEAST_MEMBERS, MOST_MEMBERS, USUAL_MEMBERS
+from orolift.spread.spread import LEAST_MEMBERS, MOST_MEMBERS, USUAL_MEMBERS, Drawn
 from orolift.spread.uncertainty import Uncertainty
 
 if TYPE_CHECKING:
@@ -95,6 +96,36 @@ GIVEN_TIME = 0.3
 """Of a cloud time or fall time that somebody gave; a judgement."""
 GIVEN_SHARE = 0.1
 """Of a share that somebody gave or that follows from the lowest pass; a judgement."""
+
+
+def drawn_of(case: Case, members: int | None = None) -> Drawn | None:
+    """What the members of many crossings of a case are drawn from.
+
+    Parameters
+    ----------
+    case : Case
+    members : int, optional
+        Instead of the number in [spread], as --members gives it; 0 is none.
+
+    Returns
+    -------
+    Drawn or None
+        None without members.
+
+    Raises
+    ------
+    CaseError
+        If the number is out of range.
+    """
+    wanted = case.spread.members if members is None else members
+    if wanted == 0:
+        return None
+    if not LEAST_MEMBERS <= wanted <= MOST_MEMBERS:
+        raise CaseError(
+            f"--members {wanted}: fewer than {LEAST_MEMBERS} have no range of 10 to 90 %, more than {MOST_MEMBERS} do "
+            f"not fit into memory. Give {LEAST_MEMBERS} or more, as 32, or 0 for no ranges."
+        )
+    return Drawn(uncertainty_of(case), wanted, case.spread.seed)
 
 
 def uncertainty_of(case: Case) -> Uncertainty:

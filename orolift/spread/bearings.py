@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from orolift.air.column import IncomingAir
     from orolift.crossing.situation import Situation
     from orolift.spread.hours import OneLine
+    from orolift.spread.spread import Drawn
 
     Array = NDArray[np.float64]
 
@@ -34,11 +35,14 @@ class BearingTask:
         One for each site of the case, with the reason where none of the lines is its own.
     lines : tuple of OneLine
         With the air turned to that direction.
+    drawn : Drawn or None
+        None without members.
     """
 
     wind_from: float
     states: tuple[SiteState, ...]
     lines: tuple[OneLine, ...] = ()
+    drawn: Drawn | None = None
 
 
 @dataclass(frozen=True)
@@ -125,7 +129,7 @@ def worked_direction(task: BearingTask) -> Direction:
     """
     states = list(task.states)
     for line in task.lines:
-        found, crossing = states_of(line.situation, line.observed_at)
+        found, crossing = states_of(line.situation, line.observed_at, drawn=task.drawn)
         oblique = None if crossing is None else off_normal(task.wind_from, crossing.flow.normal)
         for number, state in zip(line.numbers, found, strict=True):
             states[number] = replace(state, oblique=oblique)

@@ -17,6 +17,7 @@ if TYPE_CHECKING:
     from orolift.crossing.situation import Situation
     from orolift.fire.sites import FireSettings
     from orolift.rain.over_map import Catchment
+    from orolift.spread.spread import Drawn
     from orolift.terrain.grid import ElevationGrid
 
 HOUR = 3600.0
@@ -77,6 +78,8 @@ class HourTask:
         None without catchments.
     fire : FireSettings or None
         With the thresholds of a region, where there are any.
+    drawn : Drawn or None
+        None without members.
     """
 
     number: int
@@ -85,6 +88,7 @@ class HourTask:
     lines: tuple[OneLine, ...] = ()
     ground: MapGround | None = None
     fire: FireSettings | None = None
+    drawn: Drawn | None = None
 
 
 @dataclass(frozen=True)
@@ -123,7 +127,7 @@ def worked_hour(task: HourTask) -> Hour:
     first: Crossing | None = None
     for line in task.lines:
         situation = replace(line.situation, when=when_there(line, task.time))
-        found, crossing = states_of(situation, line.observed_at, task.fire)
+        found, crossing = states_of(situation, line.observed_at, task.fire, task.drawn)
         first = first or crossing
         for number, state in zip(line.numbers, found, strict=True):
             states[number] = state

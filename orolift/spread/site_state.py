@@ -10,6 +10,7 @@ import numpy as np
 from orolift.air.column import interpolated
 from orolift.air.humidity import relative_humidity_from_dew_point
 from orolift.air.temperature import potential_temperature
+from orolift.crossing.members import PARTS
 from orolift.crossing.result import When
 from orolift.crossing.situation import crossing_of
 from orolift.errors import NoCrossingError, OroliftError
@@ -18,6 +19,8 @@ from orolift.fire.indices import site_fire
 from orolift.fire.nights import nights_at
 from orolift.fire.values import site_values
 from orolift.fire.weather import site_weather, stacked
+from orolift.spread.at_sites import column_of
+from orolift.spread.spread import Drawn, spread_of
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -40,6 +43,27 @@ LEAST_WARMING = 1.0
 HALFWAY = 0.5
 """Share of the way from the potential temperature of the incoming air at the height of a site to that at the crest
 which air come down from the crest has made at least; what is short of the whole is mixing and low air; a judgement."""
+
+
+KEPT = (
+    *("pressure", "temperature", "dew_point", "relative_humidity", "mixing_ratio", "wind_10m", "gust"),
+    *("source_level", "warming", *(f"warming_{name}" for name in PARTS), "rain", "in_pool"),
+)
+"""Arrays of members that are kept of a site."""
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class SiteMembers:
+    """What members give at a site; NaN where one has no such value, as where it does not cross.
+
+    Attributes
+    ----------
+    inputs, full : mapping of str to ndarray (m,)
+        Those of `KEPT`, in SI: by the inputs alone, and with the error of the method.
+    """
+
+    inputs: Mapping[str, Array]
+    full: Mapping[str, Array]
 
 
 @dataclass(frozen=True, slots=True)
@@ -99,6 +123,8 @@ class SiteState:
         Whether the air there is descending warm dry air; see `descending_warm_dry`.
     rule_values : mapping of quantity to float, or None [SI]
         What the thresholds of a region speak of, NaN where it is not known; None without thresholds.
+    members : SiteMembers or None
+        None where nobody asked for them, and where they could not be worked out.
     """
 
     status: Status
@@ -126,10 +152,11 @@ class SiteState:
     breaks_through: bool | None = None
     descending: bool | None = None
     rule_values: Mapping[str | WindMeant, float] | None = None
+    members: SiteMembers | None = None
 
 
 def states_of(
-    situation: Situation, observed_at: float = 0.0, fire: FireSettings | None = None
+    situation: Situation, observed_at: float = 0.0, fire: FireSettings | None = None, drawn: Drawn | None = None
 ) -> tuple[tuple[SiteState, ...], Crossing | None]:
     """The sites of a situation, whether it crosses or not.
 
@@ -141,6 +168,8 @@ def states_of(
         Where on the transect the incoming air was observed; times on the way are counted from there.
     fire : FireSettings, optional
         With the thresholds of a region.
+    drawn : Drawn, optional
+        What members are drawn from; none are worked out without.
 
     Returns
     -------
@@ -156,11 +185,43 @@ def states_of(
     except OroliftError as error:
         return (SiteState("missing", str(error)),) * len(situation.sites), None
     states = tuple(_state(site, crossing, observed_at) for site in crossing.lee)
+    if drawn is not None:
+        members = members_of_sites(situation, crossing, drawn)
+        states = tuple(replace(state, members=found) for state, found in zip(states, members, strict=True))
     if fire is None or fire.rules is None:
         return states, crossing
     when = situation.when or When()
     values = [rule_values(crossing, site, when, fire) for site in crossing.lee]
     return tuple(replace(state, rule_values=found) for state, found in zip(states, values, strict=True)), crossing
+
+
+def members_of_sites(situation: Situation, crossing: Crossing, drawn: Drawn) -> tuple[SiteMembers | None, ...]:
+    """What members give at the sites of a situation.
+
+    Parameters
+    ----------
+    situation : Situation
+    crossing : Crossing
+        Of the situation.
+    drawn : Drawn
+
+    Returns
+    -------
+    tuple of SiteMembers or None
+        In the order of the sites; None where no member crosses, or none could be worked out.
+    """
+    try:
+        found = spread_of(situation, crossing, drawn.uncertainty, members=drawn.members, seed=drawn.seed)
+    except OroliftError:
+        return (None,) * len(crossing.lee)
+    if not found.full_sites:
+        return (None,) * len(crossing.lee)
+    out = []
+    for site in crossing.lee:
+        column = column_of(crossing, site)
+        inputs, full = ({name: arrays[name][:, column] for name in KEPT} for arrays in (found.sites, found.full_sites))
+        out.append(SiteMembers(inputs, full))
+    return tuple(out)
 
 
 def rule_values(crossing: Crossing, site: LeeAir, when: When, fire: FireSettings) -> dict[str | WindMeant, float]:

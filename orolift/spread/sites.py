@@ -115,7 +115,9 @@ def group_air(group: SiteGroup) -> GroupAir:
     except OroliftError as error:
         return _failed(group, str(error))
     return GroupAir(
-        tuple(_placed(site, air, crossing) for site, air in zip(group.sites, crossing.lee, strict=True)), fire, ()
+        tuple(_placed(site, air, crossing) for site, air in zip(group.sites, crossing.lee, strict=True)),
+        tuple(replace(one, number=site.number) for site, one in zip(group.sites, fire, strict=True)),
+        (),
     )
 
 
@@ -154,7 +156,7 @@ def fire_by_number(crossing: Crossing, own: Iterable[SiteFire], parts: Iterable[
     dict of int to SiteFire
     """
     on_line = crossing.lee if crossing.on_line is None else crossing.on_line
-    found = {air.number: fire for air, fire in zip(on_line, own, strict=True)}
+    found = {air.number: replace(fire, number=air.number) for air, fire in zip(on_line, own, strict=True)}
     for part in parts:
         found |= {air.number: fire for air, fire in zip(part.found, part.fire, strict=True)}
     return found

@@ -36,6 +36,24 @@ CHANCE_OF_RAIN = 0.1 / 3600.0
 
 
 @dataclass(frozen=True)
+class Drawn:
+    """What members are drawn from, for crossings that are many already.
+
+    Attributes
+    ----------
+    uncertainty : Uncertainty
+    members : int
+        10 to 100 000.
+    seed : int
+        The same seed draws the same deviations for every crossing: a member that is too warm is so throughout.
+    """
+
+    uncertainty: Uncertainty
+    members: int = USUAL_MEMBERS
+    seed: int = 0
+
+
+@dataclass(frozen=True)
 class Failed:
     """A member that could not be worked out.
 

@@ -74,6 +74,21 @@ def test_values_are_the_same_in_every_file(written):
         assert point["warming_by_descent_c"] == site["warming_parts_c"]["descent"]
 
 
+def test_fire_weather_carries_the_number_of_its_site(written):
+    """Lines of their own count their sites anew; results and panels name those of the case."""
+    results = json.loads(written["json"].read_text())
+    numbers = {site["name"]: site["number"] for site in results["lee"]}
+    moisture = {}
+    for site in results["fire"]:
+        assert site["number"] == numbers[site["name"]]
+        moisture[site["name"]] = site["equilibrium_fuel_moisture_percent"]
+    panels = written["html"].read_text().split('<div class="panel">')[1:]
+    assert len(panels) == len(moisture)
+    for panel in panels:
+        name = next(name for name in moisture if f"{name} <span" in panel)
+        assert str(moisture[name] / 100.0)[:12] in panel
+
+
 def test_the_page_says_what_is_doubtful(written):
     """The contradiction of heights, and that sites have lines of their own."""
     page = written["html"].read_text()
