@@ -18,6 +18,7 @@ from orolift.constants import (
     R_DRY,
     R_VAPOUR,
 )
+from orolift.flow.members import some_points
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -134,17 +135,16 @@ def over(streams: Streams, distance: Array, where: float) -> Here:
     def between(values: Array) -> Array:
         return np.asarray((1.0 - share) * values[number] + share * values[number + 1])
 
-    first, second = streams.place[number], streams.place[number + 1]
-    flow = streams.flow
-    height = (1.0 - share) * flow.heights[..., first] + share * flow.heights[..., second]
-    factor = (1.0 - share) * flow.speed_factor[..., first] + share * flow.speed_factor[..., second]
+    flow = some_points(streams.flow, streams.place[number : number + 2])
+    height = (1.0 - share) * flow.heights[..., 0] + share * flow.heights[..., 1]
+    factor = (1.0 - share) * flow.speed_factor[..., 0] + share * flow.speed_factor[..., 1]
     air = streams.air
     return Here(
         share=share,
         number=number,
         height=height,
         start_height=flow.start_heights,
-        pressure=np.exp(between(np.log(air.pressure))),
+        pressure=np.exp((1.0 - share) * np.log(air.pressure[number]) + share * np.log(air.pressure[number + 1])),
         entropy=between(air.entropy),
         temperature=between(air.temperature),
         vapour=between(air.vapour),
