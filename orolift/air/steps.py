@@ -224,7 +224,7 @@ def _far(air: Air, dq: Array, clear: NDArray[np.bool_], *, freezing: bool) -> ND
 
 def _replaced(air: Air, far: NDArray[np.intp], some: Air) -> Air:
     """Air with some places put in."""
-    slope, bend = (np.array(np.broadcast_to(x, air.q.shape)) for x in (air.latent_slope, air.latent_bend))
+    slope, bend = (x.copy() if x.ndim else np.full(air.q.shape, x) for x in (air.latent_slope, air.latent_bend))
     for whole, part in (
         (air.q, some.q),
         (air.t, some.t),

@@ -38,8 +38,8 @@ EARLY_SHARE = 0.4
 MOST_PLACES = 256
 """Places of the march in the last pass: the removal of a prescribed share is then good to 0.02 K, and steps of some
 tens of seconds are short against a cloud time of 1000 s."""
-TOGETHER = 16
-"""Members whose flow is worked out together: those whose waves are about equally short."""
+TOGETHER = 18
+"""Most members whose flow is worked out together: those whose waves are about equally short."""
 LOW = 5000.0
 """Depth above the lowest streamline [m] in which they are told apart: that of `flow.waves`."""
 
@@ -191,7 +191,7 @@ def flow_over(setup: Setup, n_squared: Array, at: NDArray[np.intp] | None = None
     height, lowest = upwind.height, setup.heights[:, :1]
     low = (height >= lowest) & (height <= lowest + LOW)
     scorer = np.max(np.where(low, n_squared, 0.0) / np.maximum(upwind.wind, LEAST_WIND) ** 2, axis=-1)
-    rows = np.split(np.argsort(scorer), range(TOGETHER, members, TOGETHER))
+    rows = np.array_split(np.argsort(scorer), -(-members // TOGETHER))
     return together(
         [
             airflow(
