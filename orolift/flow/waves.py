@@ -30,6 +30,7 @@ _FADING = 2.0  # times the largest Scorer wavenumber: waves as short as this fad
 _FRICTION_SHARE = (
     0.3  # of the Scorer wavenumber: longer waves are not damped; between hydrostatic and trapped, a judgement
 )
+_PIECE = 2**18  # multiplications in one product of matrices, for which no library starts threads
 _TAIL = 1e-6  # share of the energy of the boundary that may be left to the shorter parts
 
 
@@ -415,21 +416,33 @@ def _spectrum(
 def _over_transect(
     spectral: NDArray[np.complex128], length: int, points: int | NDArray[np.intp]
 ) -> NDArray[np.float64]:
-    """Values at the first so many points, a few levels at a time so that the padded arrays stay in the cache.
+    """Values at points, or the first so many, a few levels at a time so that the padded arrays stay in the cache.
 
-    At a few points by their numbers the waves are summed up one by one, which is quicker.
+    At a few points a few waves are summed up one by one, which is quicker.
     """
-    if not isinstance(points, int):
-        return np.asarray(spectral.view(np.float64) @ _cosines(spectral.shape[-1], length, points))
-    rows, count = spectral.reshape(-1, spectral.shape[-1]), points
+    rows = spectral.reshape(-1, spectral.shape[-1])
+    wanted: slice | NDArray[np.intp] = slice(points) if isinstance(points, int) else points
+    count = points if isinstance(points, int) else points.size
+    if not isinstance(points, int) and 8 * rows.shape[-1] * count <= _PIECE:
+        return _at_points(spectral, _cosines(rows.shape[-1], length, points))
     values = np.empty((rows.shape[0], count))
     for start in range(0, rows.shape[0], 16):
         some = rows[start : start + 16]
         full = np.zeros((some.shape[0], length // 2 + 1), np.complex128)
         full[:, : rows.shape[1]] = some
         full[:, 0] = some[:, 0].real  # the mean: the limit of very long waves of either sign
-        values[start : start + 16] = np.fft.irfft(full, n=length, axis=-1)[:, :count]
+        values[start : start + 16] = np.fft.irfft(full, n=length, axis=-1)[:, wanted]
     return values.reshape(*spectral.shape[:-1], count)
+
+
+def _at_points(spectral: NDArray[np.complex128], cosines: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Product with the cosines, in small pieces: threads would wait more than they work."""
+    rows = spectral.reshape(-1, spectral.shape[-1]).view(np.float64)
+    values = np.empty((rows.shape[0], cosines.shape[-1]))
+    size = _PIECE // cosines.size
+    for start in range(0, rows.shape[0], size):
+        np.matmul(rows[start : start + size], cosines, out=values[start : start + size])
+    return values.reshape(*spectral.shape[:-1], -1)
 
 
 def _cosines(waves: int, length: int, points: NDArray[np.intp]) -> NDArray[np.float64]:
