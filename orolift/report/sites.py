@@ -11,7 +11,7 @@ import numpy as np
 from orolift.report.causes import PARTS
 from orolift.report.key_numbers import gusts
 from orolift.report.quantities import Amount, Kind
-from orolift.report.spans import Spans, digits_for, ranged
+from orolift.report.spans import Spans, ranged, span_beneath
 from orolift.report.story import SAME, difference, first_sites, source_words, where_words
 from orolift.report.words import Words, counted, sentence
 
@@ -337,7 +337,7 @@ def _row(air: LeeAir, number: int, spans: Spans) -> SiteRow:
         upwind_temperature=Amount(air.upwind_temperature, "temperature", 1),
         upwind_dew_point=Amount(air.upwind_dew_point, "temperature", 1),
         warming=Amount(air.warming, "temperature_change", 1),
-        spans={name: _span(spans.at(air, name), amount) for name, amount in _RANGED.items()}
+        spans={name: span_beneath(amount, spans.at(air, name)) for name, amount in _RANGED.items()}
         | {"source": tuple(source_words(air)[2:5])},
     )
 
@@ -349,15 +349,6 @@ _RANGED = {
     "warming": Amount(0.0, "temperature_change", 1),
 }
 """Columns that carry a range, and how finely it is shown at most."""
-
-
-def _span(ends: tuple[float, float] | None, like: Amount) -> Words:
-    """A range for the second line of a cell; nothing without one."""
-    if ends is None:
-        return ()
-    digits = digits_for(like, ends)
-    low, high = (Amount(value, like.kind, digits, bare=True) for value in ends)
-    return (low, " to ", high)
 
 
 def _heading(lee: tuple[LeeAir, ...]) -> Words:

@@ -106,6 +106,27 @@ def ranged(amount: Amount, ends: Ends | None, *, bare: bool = False) -> Words:
     return (speed, " (", low, " to ", high, ")", knots)
 
 
+def span_beneath(like: Amount, ends: Ends | None) -> Words:
+    """A range without its unit, for the second line of a cell: 16.1 to 18.6; nothing without one.
+
+    Parameters
+    ----------
+    like : Amount
+        How the number above is shown; its digits are the most that the range has.
+    ends : (float, float) or None
+        In SI.
+
+    Returns
+    -------
+    Words
+    """
+    if ends is None:
+        return ()
+    digits = digits_for(like, ends)
+    low, high = (Amount(value, like.kind, digits, bare=True) for value in ends)
+    return (low, " to ", high)
+
+
 _SPEEDS: tuple[Kind, Kind] = ("wind_alone", "knots")
 
 
