@@ -204,8 +204,9 @@ def _worst(site: SiteBearings, bearings: Bearings) -> Words:
         Amount(float(bearings.wind_from[site.fire]), "bearing"),
         ": humidity ",
         *with_range(Amount(state.relative_humidity, "share"), state, "relative_humidity"),
-        ", wind at 10 m ",
+        ", wind ",
         *with_range(Amount(state.wind_10m, "wind", 0), state, "wind_10m"),
+        " at 10 m",
     )
 
 

@@ -107,7 +107,7 @@ def ranged(amount: Amount, ends: Ends | None, *, bare: bool = False) -> Words:
 
 
 def span_beneath(like: Amount, ends: Ends | None) -> Words:
-    """A range without its unit, for the second line of a cell: 16.1 to 18.6; nothing without one.
+    """A range without its unit, for the second line of a cell: 16.1 to 18.6; nothing without one or with equal ends.
 
     Parameters
     ----------
@@ -124,7 +124,7 @@ def span_beneath(like: Amount, ends: Ends | None) -> Words:
         return ()
     digits = digits_for(like, ends)
     low, high = (Amount(value, like.kind, digits, bare=True) for value in ends)
-    return (low, " to ", high)
+    return () if round(_number(low), digits) == round(_number(high), digits) else (low, " to ", high)
 
 
 _SPEEDS: tuple[Kind, Kind] = ("wind_alone", "knots")

@@ -38,7 +38,7 @@ def range_at(state: SiteState, name: str, *, inputs_only: bool = False) -> tuple
 
 
 def lost_members(state: SiteState) -> bool:
-    """Whether members of a crossing could not be worked out, or none of them could where others have theirs.
+    """Whether members of a crossing could not be worked out, some or all of them.
 
     Parameters
     ----------
@@ -50,7 +50,7 @@ def lost_members(state: SiteState) -> bool:
     bool
     """
     if state.members is None:
-        return state.status != "missing"
+        return state.status == "crossing"
     return bool(np.isnan(state.members.crosses).any())
 
 

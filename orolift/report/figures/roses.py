@@ -11,7 +11,7 @@ import numpy as np
 from orolift.report.figures.axes import Layout, round_step
 from orolift.report.figures.drawing import Curve, Figure, Label
 from orolift.report.quantities import Kind, Units, displayed, from_displayed, quantity
-from orolift.spread.bearings import square_enough
+from orolift.spread.bearings import NO_RAIN, square_enough
 from orolift.spread.state_ranges import range_at
 from orolift.spread.timeline import values_of
 
@@ -236,7 +236,7 @@ def _peak(values: Array, bearings: Bearings, plan: RosePlan, units: Units, *, sh
     if not np.isfinite(values).any():
         return "no air crosses"
     i = int(np.nanargmin(values) if plan.lowest else np.nanargmax(values))
-    if plan.quantity == "rain_rate" and displayed(float(values[i]), plan.quantity, units) < 0.05:
+    if plan.quantity == "rain_rate" and values[i] < NO_RAIN:
         return "no rain"
     said = quantity(float(values[i]), plan.quantity, plan.digits, units)
     if short:
