@@ -271,10 +271,9 @@ def _row(bearing: float, state: SiteState) -> DirectionRow:
         "wind_10m": amount(state.wind_10m, "wind", 0),
         "rain": amount(state.rain, "rain_rate", 1),
     }
-    ends = range_at(state, "drying_power")
-    spans = {name: span_beneath(like, range_at(state, name)) for name, like in shown.items() if like is not None}
-    if drying is not None and ends is not None:
-        spans["drying"] = span_beneath(Amount(drying, "plain"), (ends[0] / HPA, ends[1] / HPA))
+    spans = {name: _beneath(like, range_at(state, name)) for name, like in shown.items() if like is not None}
+    if drying is not None and (ends := range_at(state, "drying_power")) is not None:
+        spans["drying"] = _beneath(Amount(drying, "plain"), (ends[0] / HPA, ends[1] / HPA))
     return DirectionRow(
         wind_from=Amount(bearing, "bearing"),
         state=_words(state),
@@ -286,6 +285,13 @@ def _row(bearing: float, state: SiteState) -> DirectionRow:
         spans=spans,
         **shown,
     )
+
+
+def _beneath(amount: Amount, ends: tuple[float, float] | None) -> Words:
+    """A range beneath its number, widened to hold it as in a sentence."""
+    if ends is None:
+        return ()
+    return span_beneath(amount, (min(ends[0], amount.value), max(ends[1], amount.value)))
 
 
 def _words(state: SiteState) -> str:

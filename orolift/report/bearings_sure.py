@@ -108,7 +108,8 @@ def crossing_words(site: SiteBearings) -> Words:
     if some:
         more = " From " if none else "From "
         whole: Words = () if none else (" of ", Amount(total, "plain"))
-        out = (*out, more, Amount(some, "plain"), *whole, " directions it does in some members only.")
+        does = "it does" if none else "air crosses"
+        out = (*out, more, Amount(some, "plain"), *whole, f" directions {does} in some members only.")
     return out
 
 

@@ -10,7 +10,9 @@ import numpy as np
 
 from orolift.report.figures.axes import Layout, round_step
 from orolift.report.figures.drawing import Curve, Figure, Label
-from orolift.report.quantities import Kind, Units, displayed, from_displayed, quantity
+from orolift.report.quantities import Amount, Kind, Units, displayed, from_displayed, quantity
+from orolift.report.spans import ranged
+from orolift.report.words import plain
 from orolift.spread.bearings import NO_RAIN, square_enough
 from orolift.spread.state_ranges import range_at
 from orolift.spread.timeline import values_of
@@ -114,7 +116,8 @@ def _alt(site: SiteBearings, bearings: Bearings, units: Units) -> str:
         if not np.isfinite(values).any():
             continue
         i = int(np.nanargmin(values) if plan.lowest else np.nanargmax(values))
-        said = quantity(float(values[i]), plan.quantity, plan.digits, units)
+        amount = Amount(float(values[i]), plan.quantity, plan.digits)
+        said = plain(ranged(amount, range_at(site.states[i], plan.key)), units)
         out.append(f"{plan.name}: {plan.most} {said} with wind from {_degrees(bearings.wind_from[i])}.")
     return " ".join(out) or "No air crosses to this site from any direction."
 
