@@ -157,7 +157,7 @@ def latin_hypercube(members: int, columns: int, seed: int) -> Array:
     sample = LatinHypercube(columns, seed=np.random.default_rng(seed)).random(members)
     if members > columns:
         sample = np.take_along_axis(np.sort(sample, axis=0), _uncorrelated(sample), axis=0)
-    return np.clip(sample, LEAST, 1.0 - LEAST)
+    return np.asarray(np.clip(sample, LEAST, 1.0 - LEAST))
 
 
 def _uncorrelated(sample: Array) -> NDArray[np.intp]:
