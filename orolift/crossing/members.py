@@ -9,16 +9,19 @@ import numpy as np
 
 from orolift.air.column import column_vapour, freezing_level, interpolated, vapour_flux, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.crossing.cloud import cloud_bases, cloud_ends
 from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
-from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, cloud_bases, low_breaking, pressure_differences
+from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, low_breaking, pressure_differences
 from orolift.crossing.picture import popular_picture, upwind_ground_air
 from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air
+from orolift.crossing.rainfall import in_bands
 from orolift.crossing.result import Site, WarmingParts, When
 from orolift.crossing.settings import Settings, checked
 from orolift.crossing.sites import Arrived, arrived
 from orolift.crossing.solve import NOTHING, solve
 from orolift.crossing.sun import sun_height
 from orolift.crossing.wind import winds_at
+from orolift.flow.scales import deformation_radius, rossby_number
 from orolift.terrain.features import features
 
 if TYPE_CHECKING:
@@ -205,6 +208,7 @@ def _of_flow(
     sun = None
     if when.time is not None and when.longitude is not None and when.latitude is not None:
         sun = float(sun_height(when.time, when.longitude, when.latitude))
+    critical = solution.streams.flow.critical_level
     chance = through if known else np.array([chance_of_breaking_through(sun, float(wind)) for wind in crest_wind])
     return {
         "stability": np.broadcast_to(blocked.stability, each),
@@ -216,9 +220,32 @@ def _of_flow(
         "blocked": (solution.blocked_top > ground.shape.base + NOTHING).astype(np.float64),
         "going_round_share": solution.going_round,
         "cloud_base": cloud_bases(solution, ground.shape, ground.transect.distance, freezing=freezing),
+        "cloud_end": cloud_ends(solution, ground.shape, ground.transect.distance, freezing=freezing),
         "breaks_through": chance,
         "wave_breaking": low_breaking(solution, ground.shape.crest).astype(np.float64),
         "pressure_difference": pressure_differences(ground, solution),
+        "critical_level": np.where(np.isfinite(critical), critical, np.nan),
+        **_of_pools(solution),
+        **_of_rotation(ground, np.broadcast_to(blocked.stability, each), crest_wind, when),
+    }
+
+
+def _of_pools(solution: Solution) -> dict[str, Array]:
+    """Cold air that stays in the lee, and the air that passes over it at the downwind end; NaN where none stays."""
+    streams = solution.streams
+    top = np.array([np.nan if pool is None else pool.top for pool in solution.pools])
+    wind = streams.wind[:, 0] * streams.flow.speed_factor[:, 0, streams.place[-1]]
+    return {"pool_top": top, "wind_over_pool": np.where(np.isfinite(top), wind, np.nan)}
+
+
+def _of_rotation(ground: Ground, stability: Array, crest_wind: Array, when: When) -> dict[str, Array]:
+    """Scales on which the earth's rotation matters; nothing where the latitude is unknown."""
+    if when.latitude is None:
+        return {}
+    shape, latitude = ground.shape, np.radians(when.latitude)
+    return {
+        "rossby_number": rossby_number(crest_wind, shape.half_width, latitude),
+        "deformation_radius": deformation_radius(stability, shape.crest - shape.base, latitude),
     }
 
 
@@ -231,6 +258,7 @@ def _of_rain(ground: Ground, solution: Solution, incoming: IncomingAir, backgrou
     total = landed.sum(axis=0)
     wet = total > 0.0
     share_of = np.where(wet, total, np.nan)
+    fell = total + streams.falling.evaporated.sum(axis=0) + streams.falling.beyond
     vapour = np.sum(streams.carried * streams.start.vapour, axis=-1)
     condensed = np.sum(streams.carried * streams.air.condensed.sum(axis=0), axis=-1)
     column = vapour_flux(incoming, ground.normal)
@@ -243,6 +271,14 @@ def _of_rain(ground: Ground, solution: Solution, incoming: IncomingAir, backgrou
         "peak_rate": rate.max(axis=0) + background,
         "peak_distance": np.where(wet, x[np.argmax(rate, axis=0)], np.nan),
         "total": total,
+        "vapour_in": vapour,
+        "condensed": condensed,
+        "column_vapour_flux": column,
+        "evaporated_share": streams.falling.evaporated.sum(axis=0) / np.where(fell > 0.0, fell, np.nan),
+        **{
+            f"lee_band_{number}": landed / share_of
+            for number, (_, _, landed) in enumerate(in_bands(ground, x, streams.falling.landed))
+        },
     }
 
 
@@ -286,6 +322,8 @@ def _of_site(
         "source_level_low": level[:, 0],
         "source_level": level[:, 1],
         "source_level_high": level[:, 2],
+        "upwind_temperature": t_up,
+        "upwind_dew_point": _dew_point(p_up, upwind.vapour[:, 0]),
         "warming": t - t_up,
         **{f"warming_{name}": nothing * getattr(place.came.warming, name) for name in PARTS},
         "popular_picture": picture.temperature,

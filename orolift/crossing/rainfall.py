@@ -10,10 +10,38 @@ import numpy as np
 from orolift.crossing.result import Rain
 
 if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
     from orolift.crossing.solve import Ground, Solution
+
+    Array = NDArray[np.float64]
 
 BANDS = (0.0, 5e3, 10e3, 20e3, 40e3, 80e3)
 """Edges of the distance bands of the lee [m beyond the crest]."""
+
+
+def in_bands(ground: Ground, distance: Array, landed: Array) -> list[tuple[float, float, Array]]:
+    """What lands in each distance band of the lee.
+
+    Parameters
+    ----------
+    ground : Ground
+    distance : ndarray (nk,) [m]
+        Of the places.
+    landed : ndarray (nk, ...) [kg m-1 s-1]
+        On the step that ends at each of them.
+
+    Returns
+    -------
+    list of (float, float, ndarray (...))
+        From and to beyond the crest [m], along the range normal; bands beyond the transect are left out.
+    """
+    beyond = (distance - ground.shape.crest_distance) * ground.cosine
+    return [
+        (low, high, np.asarray(landed[(beyond > low) & (beyond <= high)].sum(axis=0)))
+        for low, high in pairwise(BANDS)
+        if low < beyond[-1]
+    ]
 
 
 def rainfall(ground: Ground, solution: Solution, background: float) -> Rain:
@@ -42,12 +70,7 @@ def rainfall(ground: Ground, solution: Solution, background: float) -> Rain:
     rate, total = landed / step, float(landed.sum())
     wet = total > 0.0
     peak = int(np.argmax(rate))
-    beyond = (x - crest) * ground.cosine
-    bands = tuple(
-        (low, high, float(landed[(beyond > low) & (beyond <= high)].sum() / total))
-        for low, high in pairwise(BANDS)
-        if wet and low < beyond[-1]
-    )
+    bands = tuple((low, high, float(band / total)) for low, high, band in in_bands(ground, x, landed) if wet)
     vapour = np.sum(streams.carried * streams.start.vapour, axis=-1)
     ratios = streams.falling.landed.sum(axis=0) / np.maximum(vapour, 1e-12)
     return Rain(

@@ -123,6 +123,7 @@ def centred(whole: Members, crossing: Crossing) -> Members:
             else:
                 sites[name][:, column] += value - middle
         if sites:
+            sites["went_round"][:, column] = np.clip(sites["went_round"][:, column], 0.0, 1.0)
             p, t, v = (sites[name][:, column] for name in ("pressure", "temperature", "mixing_ratio"))
             v = sites["mixing_ratio"][:, column] = np.minimum(v, _most_vapour(p, t))
             sites["dew_point"][:, column], sites["relative_humidity"][:, column] = _humidity(p, t, v)
@@ -142,7 +143,10 @@ def _answers(air: LeeAir) -> dict[str, float | None]:
         "source_level": air.source_level,
         "source_level_low": air.source_level_low,
         "source_level_high": air.source_level_high,
+        "upwind_temperature": air.upwind_temperature,
+        "upwind_dew_point": air.upwind_dew_point,
         "warming": air.warming,
+        "went_round": air.went_round,
         "rain": air.rain,
         **{f"warming_{name}": None if parts is None else getattr(parts, name) for name in PARTS},
         "popular_picture": air.popular_picture,
