@@ -7,7 +7,7 @@ import pytest
 
 from orolift.crossing.members import Members, members_of
 from orolift.crossing.pool import Lee
-from orolift.crossing.result import Site
+from orolift.crossing.result import Site, When
 from orolift.crossing.situation import crossing_of
 from orolift.spread.at_sites import alike, spread_out
 from orolift.spread.draws import draws_of, variation_of
@@ -115,17 +115,21 @@ def test_the_whole_is_that_of_a_crossing_alone(both):
             "critical_level": (flow.critical_level, 1.0),
             **{f"lee_band_{i}": (band[2], 1e-3) for i, band in enumerate(rain.lee_bands)},
         }
-        own |= _rotation(found, flow)
         for name, (value, near) in own.items():
             here = found.values[name][i]
             assert (value is None and np.isnan(here)) or here == pytest.approx(value, abs=near), name
 
 
-def _rotation(found, flow):
-    """Scales of rotation, which only a situation with a latitude has."""
-    names = ("rossby_number", "deformation_radius")
-    known = {name: (getattr(flow, name), 1e-6 * abs(getattr(flow, name) or 1.0)) for name in names}
-    return {name: pair for name, pair in known.items() if pair[0] is not None or name in found.values}
+def test_rotation_matters_by_wind_and_stability(moist):
+    """Definitions: the Rossby number goes with the wind across the crest, the deformation radius with N."""
+    placed = replace(moist, when=When(None, None, -46.9))
+    uncertainty = Uncertainty(wind=0.2)
+    drawn = draws_of(placed, uncertainty, latin_hypercube(5, len(COLUMNS), 3))
+    values = members_of(placed, variation_of(placed, uncertainty, drawn, freezing=True), streamlines=24).values
+    flow = crossing_of(placed).flow
+    number, radius = values["rossby_number"], values["deformation_radius"]
+    assert number == pytest.approx(flow.rossby_number * values["cross_range_wind"] / flow.crest_wind)
+    assert radius == pytest.approx(flow.deformation_radius * values["stability"] / flow.stability)
 
 
 def test_a_member_without_enough_wind_is_no_error(calm):
