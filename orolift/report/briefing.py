@@ -111,7 +111,8 @@ def briefing_heading(spans: Spans) -> Words:
             "; the crossing air passes over it",
         )
     if reaches_the_ground_or_not(crossing, site):
-        return (f"{site.name}: ", *here, " if the air breaks through, about ", *before(spans, site), " if a pool stays")
+        cold = before(spans, site)
+        return (f"{site.name}: ", *here, " if the air breaks through, about ", *cold, " if a cold pool stays")
     if site.in_blocked_air:
         return ("Low air is blocked up to ", *blocked_with_range(spans), f"; {site.name} lies in it, at ", *here)
     change = changed(

@@ -269,8 +269,11 @@ def _panel(air: LeeAir, spans: Spans, fire: SiteFire | None) -> Panel:
     where = " behind" if beyond >= 0.0 else " before"
     facts.append(("Crest", (Amount(crest, "height"), ", ", Amount(abs(beyond), "distance", 1), where)))
     if air.own is not None:
-        wind, top = ranged(Amount(air.own.crest_wind, "wind"), spans.own_wind(air)), air.own.blocked_top
-        stopped: Words = ("; blocked below ", *ranged(Amount(top, "height", -1), spans.own_top(air)))
+        wind, top = (
+            ranged(Amount(air.own.crest_wind, "wind"), spans.own_line(air, "cross_range_wind")),
+            air.own.blocked_top,
+        )
+        stopped: Words = ("; blocked below ", *ranged(Amount(top, "height", -1), spans.own_line(air, "blocked_top")))
         if top <= air.own.base + 1.0:
             stopped = ("; nothing is blocked",)
         facts.append(("Own line", (*wind, " across its crest", *stopped)))

@@ -37,6 +37,8 @@ def sites_heading(spans: Spans) -> Words:
     end = "the incoming air at their height"
     ends = [found for found in (spans.warming(air) for air in chosen) if found is not None]
     whole = (min(low for low, _ in ends), max(high for _, high in ends)) if ends else None
+    if whole is not None and max(least - whole[0], whole[1] - most) < SAME:
+        whole = None  # the ranges reach no further than the sites themselves
     if least > SAME or most < -SAME:
         low, high = sorted((abs(least), abs(most)))
         which = "warmer" if least > SAME else "cooler"

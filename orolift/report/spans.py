@@ -16,7 +16,7 @@ from orolift.report.story import (
     main_site,
     temperature_ends,
 )
-from orolift.spread.at_sites import columns_of
+from orolift.spread.at_sites import columns_of, on_its_line
 from orolift.spread.ranges import range_of
 
 if TYPE_CHECKING:
@@ -80,20 +80,12 @@ class Spans:
         one, two = (self.spread.full_sites[key][:, column] for key in (name, other))
         return range_of(one - two)
 
-    def own_wind(self, site: LeeAir) -> Ends | None:
-        """Range of the wind across the crest of a site's own line: as many times its value as on this line."""
-        ends, middle = self.of("cross_range_wind"), self.crossing.flow.crest_wind
-        if ends is None or site.own is None or middle <= 0.0:
+    def own_line(self, site: LeeAir, name: str) -> Ends | None:
+        """Range of a number of the line a site is on, as `orolift.spread.at_sites.on_its_line` has it; None without."""
+        if self.spread is None:
             return None
-        return ends[0] * site.own.crest_wind / middle, ends[1] * site.own.crest_wind / middle
-
-    def own_top(self, site: LeeAir) -> Ends | None:
-        """Range of the blocked top on a site's own line: as far from its value as on this line, not below its base."""
-        ends, middle = self.of("blocked_top"), self.crossing.flow.blocked_top
-        if ends is None or site.own is None:
-            return None
-        low, high = (max(site.own.blocked_top + end - middle, site.own.base) for end in ends)
-        return low, high
+        found = on_its_line(self.spread, self.crossing, site)
+        return range_of(found[name]) if name in found else None
 
     def warming(self, site: LeeAir) -> Ends | None:
         """Range of the warming of a site, or that of its ends without members."""

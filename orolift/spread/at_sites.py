@@ -64,6 +64,37 @@ def members_at(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Ar
     return {name: value[:, column] for name, value in spread.full_sites.items()}
 
 
+def on_its_line(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Array]:
+    """What the members give for the line a site is on.
+
+    Parameters
+    ----------
+    spread : Spread
+    crossing : Crossing
+    site : LeeAir
+
+    Returns
+    -------
+    dict of str to ndarray (m,)
+        ``blocked_top`` and ``cross_range_wind`` in SI; empty where no member crosses.
+
+    Notes
+    -----
+    A line of the site's own takes the deviations of the crossing's line around its own answer: differences of the
+    blocked top, which is not below the base of its line, and factors of the wind.
+    """
+    values, own, flow = spread.values, site.own, crossing.flow
+    if not spread.crosses.any():
+        return {}
+    top, wind = values["blocked_top"], np.where(spread.crosses, values["cross_range_wind"], np.nan)
+    if own is None:
+        return {"blocked_top": top, "cross_range_wind": wind}
+    return {
+        "blocked_top": np.maximum(own.blocked_top + top - flow.blocked_top, own.base),
+        "cross_range_wind": wind * own.crest_wind / flow.crest_wind,
+    }
+
+
 MANY = 24
 """Sites beside the line from which on those whose places on it are about the same share one."""
 SAME_DISTANCE, SAME_HEIGHT = 1000.0, 100.0

@@ -9,7 +9,7 @@ import pytest
 from orolift.report.briefing import briefing
 from orolift.report.figures.influences import influences_figure
 from orolift.report.figures.section import WIDE, section
-from orolift.report.how_sure import how_sure, input_words
+from orolift.report.how_sure import WITH_METHOD, how_sure, input_words
 from orolift.report.index import entry_of
 from orolift.report.quantities import Amount
 from orolift.report.sites import sites
@@ -68,11 +68,15 @@ def test_says_what_the_ranges_hold(with_members):
     assert text(found.remarks[-1]) == "All 12 members cross the range (seed 1)."
     assert len(found.rows) == len(crossing.lee)
     row = found.rows[0]
-    inner, outer = (
-        [part.value for part in row_of if isinstance(part, Amount)]
-        for row_of in (row.temperature_inputs, row.temperature)
-    )
-    assert outer[0] < inner[0] < inner[1] < outer[1]
+    for name in WITH_METHOD:
+        inner, outer = (
+            [part.value for part in words if isinstance(part, Amount)]
+            for words in (row.spans[name], getattr(row, name))
+        )
+        assert inner == list(range_of(spread.sites[name][:, 0])), name
+        assert outer == list(range_of(spread.full_sites[name][:, 0])), name
+        if name in ("temperature", "warming"):
+            assert outer[0] < inner[0] < inner[1] < outer[1], name
     assert len(found.inputs) == len(spread.varied)
     assert "liquid_cloud" not in spread.varied
     assert text(found.chances[0].event) == "the air crosses the range at all"
