@@ -14,7 +14,7 @@ from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VA
 from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, low_breaking, pressure_differences
 from orolift.crossing.picture import popular_picture, upwind_ground_air
 from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air
-from orolift.crossing.rainfall import in_bands
+from orolift.crossing.rainfall import BAND_STEPS, by_height, in_bands
 from orolift.crossing.result import Site, WarmingParts, When
 from orolift.crossing.settings import Settings, checked
 from orolift.crossing.sites import Arrived, arrived
@@ -279,7 +279,25 @@ def _of_rain(ground: Ground, solution: Solution, incoming: IncomingAir, backgrou
             f"lee_band_{number}": landed / share_of
             for number, (_, _, landed) in enumerate(in_bands(ground, x, streams.falling.landed))
         },
+        **_by_height(ground, x, rate + background, streams.falling.landed_snow / _steps(ground, x)[:, np.newaxis]),
     }
+
+
+def _by_height(ground: Ground, x: Array, rate: Array, snow: Array) -> dict[str, Array]:
+    """Rain and snow of each member by side and height of the ground, and the snow of the march in it."""
+    shape, line = ground.shape, ground.transect
+    below = np.interp(x, line.distance, line.elevation)
+    out = {}
+    for step in BAND_STEPS:
+        for name, values in (("rain", rate), ("snow", snow)):
+            means = by_height(x, below, shape.crest_distance, values, step)
+            out |= {band_name(name, step, side, number): value for (side, number), value in means.items()}
+    return out
+
+
+def band_name(name: str, step: float, side: str, number: int) -> str:
+    """Name of the array of ``rain`` or ``snow`` in a band of height, for steps in `rainfall.BAND_STEPS`."""
+    return f"{name}_{side}_{step:.1f}_{number}"
 
 
 def _steps(ground: Ground, x: Array) -> Array:

@@ -5,14 +5,16 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from orolift.crossing.members import band_name
 from orolift.rain.winter import bands_of_sides
 from orolift.report.quantities import Amount, Units, from_displayed
-from orolift.report.spans import Spans, ranged
+from orolift.report.spans import Spans, ranged, span_of
 from orolift.report.story import SOME_SNOW, fallen_share, rains, removal_words, snow_words
 from orolift.report.words import fraction_in_words, sentence
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
+    from orolift.rain.winter import BandOfSide
     from orolift.report.words import Words
 
 SOME_THERE = 0.02
@@ -33,6 +35,7 @@ class BandRow:
     windward_snow: Amount | None
     lee_rate: Amount | None
     lee_snow: Amount | None
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -80,7 +83,7 @@ def rain_on_line(
         heading=_heading(spans),
         flags=flags,
         sentences=_sentences(spans),
-        rows=_rows(crossing, band_step(units)) if falls else (),
+        rows=_rows(spans, band_step(units)) if falls else (),
     )
 
 
@@ -186,9 +189,9 @@ def band_step(units: Units) -> float:
     return from_displayed(200.0 if units == "metric" else 500.0, "height", units)
 
 
-def _rows(crossing: Crossing, step: float) -> tuple[BandRow, ...]:
+def _rows(spans: Spans, step: float) -> tuple[BandRow, ...]:
     """Both sides of each band, from the lowest up."""
-    bands = {(band.lower, band.side): band for band in bands_of_sides(crossing, step=step)}
+    bands = {(band.lower, band.side): band for band in bands_of_sides(spans.crossing, step=step)}
     rows = []
     for lower in sorted({low for low, _ in bands}):
         windward, lee = bands.get((lower, "windward")), bands.get((lower, "lee"))
@@ -201,6 +204,21 @@ def _rows(crossing: Crossing, step: float) -> tuple[BandRow, ...]:
                 windward_snow=None if windward is None else Amount(windward.snow_share, "share"),
                 lee_rate=None if lee is None else Amount(lee.rate, "rain_rate", 1),
                 lee_snow=None if lee is None else Amount(lee.snow_share, "share"),
+                spans=_band_spans(spans, step, windward, lee),
             )
         )
     return tuple(rows)
+
+
+def _band_spans(spans: Spans, step: float, *bands: BandOfSide | None) -> dict[str, Words]:
+    """Ranges of rain and snow, and of the share of snow where no background is in it, in a band on each side."""
+    out: dict[str, Words] = {}
+    for band in bands:
+        if band is None:
+            continue
+        number = round(band.lower / step)
+        rain, snow = (band_name(name, step, band.side, number) for name in ("rain", "snow"))
+        out[f"{band.side}_rate"] = span_of(Amount(band.rate, "rain_rate", 1), spans.of(rain))
+        if spans.crossing.rain.background <= 0.0:
+            out[f"{band.side}_snow"] = span_of(Amount(band.snow_share, "share"), spans.ratio(snow, rain))
+    return out

@@ -7,6 +7,8 @@ from functools import cached_property
 from math import ceil, log10
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from orolift.report.quantities import Amount, displayed
 from orolift.report.story import (
     SAME,
@@ -52,6 +54,13 @@ class Spans:
         if self.spread is None or name not in self.spread.values:
             return None
         return range_of(self.spread.values[name])
+
+    def ratio(self, name: str, over: str) -> Ends | None:
+        """Range of one number of the crossing over another, where that is above zero, by members; None without."""
+        if self.spread is None or not {name, over} <= self.spread.values.keys():
+            return None
+        one, other = self.spread.values[name], self.spread.values[over]
+        return range_of(one / np.where(other > 0.0, other, np.nan))
 
     def at(self, site: LeeAir, name: str, *, inputs_only: bool = False) -> Ends | None:
         """Range of a number of a site; None without."""

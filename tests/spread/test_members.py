@@ -5,10 +5,12 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from orolift.crossing.members import Members, members_of
+from orolift.crossing.members import Members, band_name, members_of
 from orolift.crossing.pool import Lee
+from orolift.crossing.rainfall import BAND_STEPS
 from orolift.crossing.result import Site, When
 from orolift.crossing.situation import crossing_of
+from orolift.rain.winter import bands_of_sides
 from orolift.spread.at_sites import alike, spread_out
 from orolift.spread.draws import draws_of, variation_of
 from orolift.spread.uncertainty import COLUMNS, Uncertainty, latin_hypercube
@@ -113,6 +115,11 @@ def test_the_whole_is_that_of_a_crossing_alone(both):
             "pool_top": (None if crossing.pool is None else crossing.pool.top, 1.0),
             "wind_over_pool": (None if crossing.pool is None else float(crossing.wind[-1, 0]), 0.02),
             "critical_level": (flow.critical_level, 1.0),
+            **{
+                band_name("rain", step, band.side, round(band.lower / step)): (band.rate, 1e-5)
+                for step in BAND_STEPS
+                for band in bands_of_sides(crossing, step=step)
+            },
             **{f"lee_band_{i}": (band[2], 1e-3) for i, band in enumerate(rain.lee_bands)},
         }
         for name, (value, near) in own.items():
