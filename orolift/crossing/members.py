@@ -287,7 +287,7 @@ def _by_height(ground: Ground, x: Array, rate: Array, snow: Array) -> dict[str, 
     """Rain and snow of each member by side and height of the ground, and the snow of the march in it."""
     shape, line = ground.shape, ground.transect
     below = np.interp(x, line.distance, line.elevation)
-    out = {}
+    out: dict[str, Array] = {}
     for step in BAND_STEPS:
         for name, values in (("rain", rate), ("snow", snow)):
             means = by_height(x, below, shape.crest_distance, values, step)
