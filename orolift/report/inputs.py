@@ -197,12 +197,8 @@ def _flow_facts(spans: Spans) -> FactGroup:
         facts.append(Fact("Rossby number", said("rossby_number", "plain", 1)))
         facts.append(Fact("Deformation radius", said("deformation_radius", "distance")))
     if flow.trapped_wavelength is not None:
-        facts.append(
-            Fact(
-                "Trapped lee waves",
-                (Amount(flow.trapped_wavelength, "distance"), " long in the column above, without a range"),
-            )
-        )
+        long = Amount(flow.trapped_wavelength, "distance")
+        facts.append(Fact("Trapped lee waves", (long, " long, in the answer alone")))
     if flow.critical_level is not None:
         facts.append(Fact("Critical level", said("critical_level", "height", -1)))
     return FactGroup("Flow", tuple(facts))
