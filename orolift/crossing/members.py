@@ -7,21 +7,17 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from orolift.air.column import column_vapour, freezing_level, interpolated, vapour_flux, wind_component
+from orolift.air.column import column_vapour, freezing_level, interpolated, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
-from orolift.crossing.cloud import cloud_bases, cloud_ends
 from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
-from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, low_breaking, pressure_differences
+from orolift.crossing.member_values import flow_values, rain_values, steps_across
 from orolift.crossing.picture import popular_picture, upwind_ground_air
-from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air
-from orolift.crossing.rainfall import BAND_STEPS, by_height, in_bands
+from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import Site, WarmingParts, When
 from orolift.crossing.settings import Settings, checked
 from orolift.crossing.sites import Arrived, arrived
 from orolift.crossing.solve import NOTHING, solve
-from orolift.crossing.sun import sun_height
 from orolift.crossing.wind import winds_at
-from orolift.flow.scales import deformation_radius, rossby_number
 from orolift.terrain.features import features
 
 if TYPE_CHECKING:
@@ -113,21 +109,10 @@ def members_of(
     others still needs it, so that members agree with crossings of their own to about 1e-4 K and not to rounding.
     """
     settings, when = checked(variation.settings), situation.when or When()
-    sites = situation.sites
-    shape = features(situation.transect, sites[0].distance if sites else None)
-    sites = (*(sites or (Site("Lee foot", shape.lee_foot_distance),)), *beside)
-    ground = ground_under(
-        situation.transect,
-        shape,
-        situation.incoming,
-        situation.normal,
-        when,
-        lowest_pass=situation.lowest_pass,
-        crest_line=situation.crest_line,
-        stagnant_top=situation.stagnant_top,
-    )
-    heights = np.linspace(shape.crest, shape.crest + CREST_LAYER, 21)
-    crest_wind = np.mean(wind_component(interpolated(variation.incoming, heights), ground.normal), axis=-1)
+    ground = _ground(situation)
+    shape = ground.shape
+    sites = (*(situation.sites or (Site("Lee foot", shape.lee_foot_distance),)), *beside)
+    crest_wind = _crest_wind(ground, variation.incoming)
     crosses = crest_wind > LEAST_CROSSING_WIND
     values = _of_incoming(variation.incoming) | {"cross_range_wind": crest_wind}
     if not crosses.any():
@@ -141,11 +126,53 @@ def members_of(
         solution.going_round[:] = np.where(blocked, part.share(solution.going_round), 0.0)
     known = (lee if isinstance(lee, Lee) else lee[0]).known
     freezing = settings.freezing
-    flow = _of_flow(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
+    flow = flow_values(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
     values |= _filled(flow, crosses)
-    values |= _filled(_of_rain(ground, solution, part.incoming, situation.background), crosses)
+    values |= _filled(rain_values(ground, solution, part.incoming, situation.background), crosses)
     at = [_filled(_of_site(site, ground, solution, part, when, situation.background), crosses) for site in sites]
     return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})
+
+
+def crossing_members(situation: Situation, incoming: IncomingAir) -> NDArray[np.bool_]:
+    """Which members cross, without working them out.
+
+    Parameters
+    ----------
+    situation : Situation
+    incoming : IncomingAir, fields (m, nz)
+
+    Returns
+    -------
+    ndarray of bool, (m,)
+        As `Members.crosses`.
+
+    Raises
+    ------
+    TerrainError, OutOfRangeError
+        As `members_of`.
+    """
+    return _crest_wind(_ground(situation), incoming) > LEAST_CROSSING_WIND
+
+
+def _ground(situation: Situation) -> Ground:
+    """What the air of all members crosses."""
+    sites = situation.sites
+    return ground_under(
+        situation.transect,
+        features(situation.transect, sites[0].distance if sites else None),
+        situation.incoming,
+        situation.normal,
+        situation.when or When(),
+        lowest_pass=situation.lowest_pass,
+        crest_line=situation.crest_line,
+        stagnant_top=situation.stagnant_top,
+    )
+
+
+def _crest_wind(ground: Ground, incoming: IncomingAir) -> Array:
+    """Wind component across the range from the crest to 500 m above it, (m,)."""
+    heights = np.linspace(ground.shape.crest, ground.shape.crest + CREST_LAYER, 21)
+    return np.asarray(np.mean(wind_component(interpolated(incoming, heights), ground.normal), axis=-1))
 
 
 def _taken(variation: Variation, settings: Settings, rows: NDArray[np.bool_]) -> Variation:
@@ -198,113 +225,6 @@ def _of_incoming(air: IncomingAir) -> dict[str, Array]:
     }
 
 
-def _of_flow(
-    ground: Ground, solution: Solution, crest_wind: Array, when: When, *, known: bool, freezing: bool
-) -> dict[str, Array]:
-    """How the air of each member meets the range."""
-    blocked = solution.blocking
-    each = np.broadcast_shapes(solution.blocked_top.shape, crest_wind.shape)
-    through = np.array([pool is None for pool in solution.pools], dtype=np.float64)
-    sun = None
-    if when.time is not None and when.longitude is not None and when.latitude is not None:
-        sun = float(sun_height(when.time, when.longitude, when.latitude))
-    critical = solution.streams.flow.critical_level
-    chance = through if known else np.array([chance_of_breaking_through(sun, float(wind)) for wind in crest_wind])
-    return {
-        "stability": np.broadcast_to(blocked.stability, each),
-        "nondimensional_height": np.broadcast_to(
-            np.minimum(blocked.nondimensional_height, LARGEST_NONDIMENSIONAL), each
-        ),
-        "dividing_height": np.broadcast_to(blocked.dividing_height, each),
-        "blocked_top": solution.blocked_top,
-        "blocked": (solution.blocked_top > ground.shape.base + NOTHING).astype(np.float64),
-        "going_round_share": solution.going_round,
-        "cloud_base": cloud_bases(solution, ground.shape, ground.transect.distance, freezing=freezing),
-        "cloud_end": cloud_ends(solution, ground.shape, ground.transect.distance, freezing=freezing),
-        "breaks_through": chance,
-        "wave_breaking": low_breaking(solution, ground.shape.crest).astype(np.float64),
-        "pressure_difference": pressure_differences(ground, solution),
-        "critical_level": np.where(np.isfinite(critical), critical, np.nan),
-        **_of_pools(solution),
-        **_of_rotation(ground, np.broadcast_to(blocked.stability, each), crest_wind, when),
-    }
-
-
-def _of_pools(solution: Solution) -> dict[str, Array]:
-    """Cold air that stays in the lee, and the air that passes over it at the downwind end; NaN where none stays."""
-    streams = solution.streams
-    top = np.array([np.nan if pool is None else pool.top for pool in solution.pools])
-    wind = streams.wind[:, 0] * streams.flow.speed_factor[:, 0, streams.place[-1]]
-    return {"pool_top": top, "wind_over_pool": np.where(np.isfinite(top), wind, np.nan)}
-
-
-def _of_rotation(ground: Ground, stability: Array, crest_wind: Array, when: When) -> dict[str, Array]:
-    """Scales on which the earth's rotation matters; nothing where the latitude is unknown."""
-    if when.latitude is None:
-        return {}
-    shape, latitude = ground.shape, np.radians(when.latitude)
-    return {
-        "rossby_number": rossby_number(crest_wind, shape.half_width, latitude),
-        "deformation_radius": deformation_radius(stability, shape.crest - shape.base, latitude),
-    }
-
-
-def _of_rain(ground: Ground, solution: Solution, incoming: IncomingAir, background: float) -> dict[str, Array]:
-    """Water of each member, as `facts.water` and `rainfall.rainfall` give it of one."""
-    streams = solution.streams
-    x = ground.transect.distance[streams.place]
-    rate = streams.falling.landed / _steps(ground, x)[:, np.newaxis]
-    landed = streams.falling.landed
-    total = landed.sum(axis=0)
-    wet = total > 0.0
-    share_of = np.where(wet, total, np.nan)
-    fell = total + streams.falling.evaporated.sum(axis=0) + streams.falling.beyond
-    vapour = np.sum(streams.carried * streams.start.vapour, axis=-1)
-    condensed = np.sum(streams.carried * streams.air.condensed.sum(axis=0), axis=-1)
-    column = vapour_flux(incoming, ground.normal)
-    return {
-        "rain_out_share": total / np.where(condensed > 0.0, condensed, np.nan),
-        "drying_ratio": total / vapour,
-        "drying_ratio_full_column": total / np.where(column > 0.0, column, np.nan),
-        "windward_share": landed[x <= ground.shape.crest_distance].sum(axis=0) / share_of,
-        "snow_share": streams.falling.landed_snow.sum(axis=0) / share_of,
-        "peak_rate": rate.max(axis=0) + background,
-        "peak_distance": np.where(wet, x[np.argmax(rate, axis=0)], np.nan),
-        "total": total,
-        "vapour_in": vapour,
-        "condensed": condensed,
-        "column_vapour_flux": column,
-        "evaporated_share": streams.falling.evaporated.sum(axis=0) / np.where(fell > 0.0, fell, np.nan),
-        **{
-            f"lee_band_{number}": landed / share_of
-            for number, (_, _, landed) in enumerate(in_bands(ground, x, streams.falling.landed))
-        },
-        **_by_height(ground, x, rate + background, streams.falling.landed_snow / _steps(ground, x)[:, np.newaxis]),
-    }
-
-
-def _by_height(ground: Ground, x: Array, rate: Array, snow: Array) -> dict[str, Array]:
-    """Rain and snow of each member by side and height of the ground, and the snow of the march in it."""
-    shape, line = ground.shape, ground.transect
-    below = np.interp(x, line.distance, line.elevation)
-    out: dict[str, Array] = {}
-    for step in BAND_STEPS:
-        for name, values in (("rain", rate), ("snow", snow)):
-            means = by_height(x, below, shape.crest_distance, values, step)
-            out |= {band_name(name, step, side, number): value for (side, number), value in means.items()}
-    return out
-
-
-def band_name(name: str, step: float, side: str, number: int) -> str:
-    """Name of the array of ``rain`` or ``snow`` in a band of height, for steps in `rainfall.BAND_STEPS`."""
-    return f"{name}_{side}_{step:.1f}_{number}"
-
-
-def _steps(ground: Ground, x: Array) -> Array:
-    """Length along the range normal of the step that ends at each place of the march [m]."""
-    return np.diff(x, prepend=x[0] - (x[1] - x[0])) * ground.cosine
-
-
 def _of_site(
     site: Site, ground: Ground, solution: Solution, variation: Variation, when: When, background: float
 ) -> dict[str, Array]:
@@ -325,7 +245,7 @@ def _of_site(
     level[pooled] = np.nan
     picture = popular_picture(upwind_ground_air(incoming), upwind.pressure[:, 1], p_up, freezing=settings.freezing)
     x = ground.transect.distance[solution.streams.place]
-    rate = solution.streams.falling.landed / _steps(ground, x)[:, np.newaxis]
+    rate = solution.streams.falling.landed / steps_across(ground, x)[:, np.newaxis]
     after = int(np.clip(np.searchsorted(x, site.distance), 1, x.size - 1))
     way = float(np.clip((site.distance - x[after - 1]) / (x[after] - x[after - 1]), 0.0, 1.0))
     return {

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from orolift.crossing.members import band_name
+from orolift.crossing.member_values import band_name
 from orolift.rain.winter import bands_of_sides
 from orolift.report.quantities import Amount, Units, from_displayed
 from orolift.report.spans import Spans, ranged, span_of

@@ -5,7 +5,8 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from orolift.crossing.members import Members, band_name, members_of
+from orolift.crossing.member_values import band_name
+from orolift.crossing.members import Members, members_of
 from orolift.crossing.pool import Lee
 from orolift.crossing.rainfall import BAND_STEPS
 from orolift.crossing.result import Site, When
