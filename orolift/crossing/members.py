@@ -11,6 +11,7 @@ from orolift.air.column import column_vapour, freezing_level, interpolated, vapo
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
 from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, cloud_bases, low_breaking, pressure_differences
+from orolift.crossing.lee_wind import lee_wind_arrays, lee_winds
 from orolift.crossing.picture import popular_picture, upwind_ground_air
 from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air
 from orolift.crossing.result import Site, WarmingParts, When
@@ -140,6 +141,8 @@ def members_of(
     freezing = settings.freezing
     flow = _of_flow(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
     values |= _filled(flow, crosses)
+    winds = lee_winds(ground, solution, crest_wind[crosses], flow["pressure_difference"])
+    values |= _filled(lee_wind_arrays(winds), crosses)
     values |= _filled(_of_rain(ground, solution, part.incoming, situation.background), crosses)
     at = [_filled(_of_site(site, ground, solution, part, when, situation.background), crosses) for site in sites]
     return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})

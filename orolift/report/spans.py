@@ -36,11 +36,12 @@ class Spans:
     crossing: Crossing
     spread: Spread | None
 
-    def of(self, name: str) -> Ends | None:
+    def of(self, name: str, *, inputs_only: bool = False) -> Ends | None:
         """Range of a number of the whole crossing; None without."""
-        if self.spread is None or name not in self.spread.values:
+        if self.spread is None:
             return None
-        return range_of(self.spread.values[name])
+        arrays = self.spread.values if inputs_only else self.spread.full_values
+        return range_of(arrays[name]) if name in arrays else None
 
     def at(self, site: LeeAir, name: str, *, inputs_only: bool = False) -> Ends | None:
         """Range of a number of a site; None without."""

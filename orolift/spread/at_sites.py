@@ -199,6 +199,31 @@ def with_method_error(
     return out
 
 
+def values_with_method_error(values: dict[str, Array], crossing: Crossing, error: dict[str, Array]) -> dict[str, Array]:
+    """What members give for the crossing as a whole, with the error of the method added where it is stated.
+
+    Parameters
+    ----------
+    values : dict of str to ndarray (m,)
+    crossing : Crossing
+        For the range of the methods of the lee wind.
+    error : dict of str to ndarray (m,)
+        As for `with_method_error`.
+
+    Returns
+    -------
+    dict of str to ndarray (m,)
+        The strongest wind down the lee has the factor that `with_method_error` gives the winds at the sites: without
+        any other doubt its 10 and 90 % are the range of the methods.
+    """
+    if "lee_wind" not in values:
+        return values
+    winds, z = crossing.winds, error["model_wind"]
+    least, strongest, most = (max(wind, 0.1) for wind in (winds.low, winds.strongest, winds.high))
+    width = np.where(z < 0.0, np.log(strongest / least), np.log(most / strongest))
+    return values | {"lee_wind": values["lee_wind"] * np.exp(width * z / TENTH)}
+
+
 def _wind_ranges(lee: tuple[LeeAir, ...]) -> Iterator[tuple[str, Array, Array]]:
     """Logarithm of answer over lower end, and of upper end over answer, by site; 0 where there is no wind."""
     winds = [place.wind for place in lee]
