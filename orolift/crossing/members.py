@@ -111,21 +111,10 @@ def members_of(
     others still needs it, so that members agree with crossings of their own to about 1e-4 K and not to rounding.
     """
     settings, when = checked(variation.settings), situation.when or When()
-    sites = situation.sites
-    shape = features(situation.transect, sites[0].distance if sites else None)
-    sites = (*(sites or (Site("Lee foot", shape.lee_foot_distance),)), *beside)
-    ground = ground_under(
-        situation.transect,
-        shape,
-        situation.incoming,
-        situation.normal,
-        when,
-        lowest_pass=situation.lowest_pass,
-        crest_line=situation.crest_line,
-        stagnant_top=situation.stagnant_top,
-    )
-    heights = np.linspace(shape.crest, shape.crest + CREST_LAYER, 21)
-    crest_wind = np.mean(wind_component(interpolated(variation.incoming, heights), ground.normal), axis=-1)
+    ground = _ground(situation)
+    shape = ground.shape
+    sites = (*(situation.sites or (Site("Lee foot", shape.lee_foot_distance),)), *beside)
+    crest_wind = _crest_wind(ground, variation.incoming)
     crosses = crest_wind > LEAST_CROSSING_WIND
     values = _of_incoming(variation.incoming) | {"cross_range_wind": crest_wind}
     if not crosses.any():
@@ -146,6 +135,48 @@ def members_of(
     values |= _filled(_of_rain(ground, solution, part.incoming, situation.background), crosses)
     at = [_filled(_of_site(site, ground, solution, part, when, situation.background), crosses) for site in sites]
     return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})
+
+
+def crossing_members(situation: Situation, incoming: IncomingAir) -> NDArray[np.bool_]:
+    """Which members cross, without working them out.
+
+    Parameters
+    ----------
+    situation : Situation
+    incoming : IncomingAir, fields (m, nz)
+
+    Returns
+    -------
+    ndarray of bool, (m,)
+        As `Members.crosses`.
+
+    Raises
+    ------
+    TerrainError, OutOfRangeError
+        As `members_of`.
+    """
+    return _crest_wind(_ground(situation), incoming) > LEAST_CROSSING_WIND
+
+
+def _ground(situation: Situation) -> Ground:
+    """What the air of all members crosses."""
+    sites = situation.sites
+    return ground_under(
+        situation.transect,
+        features(situation.transect, sites[0].distance if sites else None),
+        situation.incoming,
+        situation.normal,
+        situation.when or When(),
+        lowest_pass=situation.lowest_pass,
+        crest_line=situation.crest_line,
+        stagnant_top=situation.stagnant_top,
+    )
+
+
+def _crest_wind(ground: Ground, incoming: IncomingAir) -> Array:
+    """Wind component across the range from the crest to 500 m above it, (m,)."""
+    heights = np.linspace(ground.shape.crest, ground.shape.crest + CREST_LAYER, 21)
+    return np.asarray(np.mean(wind_component(interpolated(incoming, heights), ground.normal), axis=-1))
 
 
 def _taken(variation: Variation, settings: Settings, rows: NDArray[np.bool_]) -> Variation:

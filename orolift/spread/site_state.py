@@ -20,7 +20,7 @@ from orolift.fire.nights import nights_at
 from orolift.fire.values import site_values
 from orolift.fire.weather import site_weather, stacked
 from orolift.spread.at_sites import column_of
-from orolift.spread.spread import Drawn, spread_of
+from orolift.spread.spread import Drawn, crosses_of, spread_of
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -59,11 +59,15 @@ class SiteMembers:
     Attributes
     ----------
     inputs, full : mapping of str to ndarray (m,)
-        Those of `KEPT`, in SI: by the inputs alone, and with the error of the method.
+        Those of `KEPT`, in SI: by the inputs alone, and with the error of the method. Empty where the situation itself
+        does not cross.
+    crosses : ndarray (m,) [1]
+        1 in members that cross, 0 in those that do not; NaN in those that could not be worked out.
     """
 
     inputs: Mapping[str, Array]
     full: Mapping[str, Array]
+    crosses: Array
 
 
 @dataclass(frozen=True, slots=True)
@@ -181,7 +185,8 @@ def states_of(
     try:
         crossing = crossing_of(situation)
     except NoCrossingError as error:
-        return (SiteState("no crossing", str(error)),) * len(situation.sites), None
+        still = None if drawn is None else members_without_answer(situation, drawn)
+        return (SiteState("no crossing", str(error), members=still),) * len(situation.sites), None
     except OroliftError as error:
         return (SiteState("missing", str(error)),) * len(situation.sites), None
     states = tuple(_state(site, crossing, observed_at) for site in crossing.lee)
@@ -216,12 +221,33 @@ def members_of_sites(situation: Situation, crossing: Crossing, drawn: Drawn) -> 
         return (None,) * len(crossing.lee)
     if not found.full_sites:
         return (None,) * len(crossing.lee)
+    crosses = found.crosses.astype(np.float64)
+    crosses[[one.number for one in found.failed]] = np.nan
     out = []
     for site in crossing.lee:
         column = column_of(crossing, site)
         inputs, full = ({name: arrays[name][:, column] for name in KEPT} for arrays in (found.sites, found.full_sites))
-        out.append(SiteMembers(inputs, full))
+        out.append(SiteMembers(inputs, full, crosses))
     return tuple(out)
+
+
+def members_without_answer(situation: Situation, drawn: Drawn) -> SiteMembers | None:
+    """Which members of a situation cross that does not do so itself; None where that could not be worked out.
+
+    Parameters
+    ----------
+    situation : Situation
+    drawn : Drawn
+
+    Returns
+    -------
+    SiteMembers or None
+        Without values: a range needs an answer that it belongs to.
+    """
+    try:
+        return SiteMembers({}, {}, crosses_of(situation, drawn).astype(np.float64))
+    except OroliftError:
+        return None
 
 
 def rule_values(crossing: Crossing, site: LeeAir, when: When, fire: FireSettings) -> dict[str | WindMeant, float]:
