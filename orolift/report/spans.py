@@ -119,5 +119,32 @@ def digits_for(amount: Amount, ends: Ends) -> int:
     return min(amount.digits, ceil(-log10(width / PARTS_OF_A_RANGE)))
 
 
+def second_line(like: Amount, ends: Ends | None) -> Words:
+    """A range without unit for the second line of a cell; nothing without one, or where its ends read alike.
+
+    Parameters
+    ----------
+    like : Amount
+        Of the cell: its digits are the most that are shown.
+    ends : (float, float) or None
+        In SI, widened to hold the amount.
+
+    Returns
+    -------
+    Words
+
+    Examples
+    --------
+    >>> [part.digits for part in second_line(Amount(0.2, "share"), (0.1, 0.4)) if isinstance(part, Amount)]
+    [0, 0]
+    """
+    if ends is None:
+        return ()
+    ends = min(ends[0], like.value), max(ends[1], like.value)
+    digits = digits_for(like, ends)
+    low, high = (Amount(value, like.kind, digits, bare=True) for value in ends)
+    return () if round(_number(low), digits) == round(_number(high), digits) else (low, " to ", high)
+
+
 def _number(amount: Amount) -> float:
     return displayed(amount.value, amount.kind, "metric")

@@ -62,6 +62,24 @@ def test_level_ground_and_towering_ground():
     assert over_bell(3.0).steepness == np.inf
 
 
+def test_members_together_are_each_alone():
+    """High and low ridges side by side: one that settles late or never changes nothing for the others."""
+    heights = [0.1, 0.7, 0.84, 1.2, 3.0]
+    ground = np.array([h * U / N / (1.0 + (X / A) ** 2) for h in heights])
+    together = finite_amplitude_wind(ground, STEP, np.full(5, N), np.full(5, U), padding=2e6)
+    for i, h in enumerate(heights):
+        alone = over_bell(h)
+        assert together.settled[i] == alone.settled
+        assert together.steepness[i] == pytest.approx(float(alone.steepness), rel=1e-9)
+        np.testing.assert_allclose(together.speed_factor[i], alone.speed_factor, rtol=1e-9)
+
+
+def test_the_padding_hardly_matters():
+    """Limit: level ground far away says nothing to the ridge."""
+    near, far = (finite_amplitude_wind(500.0 / (1.0 + (X / A) ** 2), STEP, N, U, padding=width) for width in (2e6, 6e6))
+    np.testing.assert_allclose(near.speed_factor, far.speed_factor, atol=2e-3)
+
+
 def test_bad_input_is_named():
     """Knots are not refused, calm is."""
     with pytest.raises(OutOfRangeError, match="wind: 1 of 1"):
