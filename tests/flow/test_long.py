@@ -63,12 +63,13 @@ def test_level_ground_and_towering_ground():
 
 
 def test_members_together_are_each_alone():
-    """High and low ridges side by side: one that settles late or never changes nothing for the others."""
-    heights = [0.1, 0.7, 0.84, 1.2, 3.0]
-    ground = np.array([h * U / N / (1.0 + (X / A) ** 2) for h in heights])
-    together = finite_amplitude_wind(ground, STEP, np.full(5, N), np.full(5, U), padding=2e6)
-    for i, h in enumerate(heights):
-        alone = over_bell(h)
+    """Low and high ridges side by side, and two that settle in the same round: none changes another."""
+    low, high = (h * U / N for h in (0.1, 0.7))
+    heights, places = [low, high, high, 0.84 * U / N, 3.0 * U / N], [0.0, 0.0, 20e3, 0.0, 0.0]
+    ground = np.array([h / (1.0 + ((X - x) / A) ** 2) for h, x in zip(heights, places, strict=True)])
+    together = finite_amplitude_wind(ground, STEP, np.full(5, N), np.full(5, U))
+    for i, row in enumerate(ground):
+        alone = finite_amplitude_wind(row, STEP, N, U)
         assert together.settled[i] == alone.settled
         assert together.steepness[i] == pytest.approx(float(alone.steepness), rel=1e-9)
         np.testing.assert_allclose(together.speed_factor[i], alone.speed_factor, rtol=1e-9)
