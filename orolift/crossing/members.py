@@ -151,7 +151,7 @@ def members_of(
 
 
 def crossing_members(situation: Situation, incoming: IncomingAir) -> NDArray[np.bool_]:
-    """Members whose air crosses at all, without working out any of them.
+    """Which members cross, without working them out.
 
     Parameters
     ----------
@@ -161,17 +161,18 @@ def crossing_members(situation: Situation, incoming: IncomingAir) -> NDArray[np.
     Returns
     -------
     ndarray of bool, (m,)
-        Whether the wind component across the range is above 2 m/s.
+        As `Members.crosses`.
 
     Raises
     ------
-    NoCrossingError, TerrainError, OutOfRangeError
+    TerrainError, OutOfRangeError
         As `members_of`.
     """
-    return np.asarray(_crest_wind(_ground(situation), incoming) > LEAST_CROSSING_WIND)
+    return _crest_wind(_ground(situation), incoming) > LEAST_CROSSING_WIND
 
 
 def _ground(situation: Situation) -> Ground:
+    """What the air of all members crosses."""
     sites = situation.sites
     return ground_under(
         situation.transect,
@@ -186,7 +187,7 @@ def _ground(situation: Situation) -> Ground:
 
 
 def _crest_wind(ground: Ground, incoming: IncomingAir) -> Array:
-    """Wind component across the range over the crest, (m,) [m s-1]."""
+    """Wind component across the range from the crest to 500 m above it, (m,)."""
     heights = np.linspace(ground.shape.crest, ground.shape.crest + CREST_LAYER, 21)
     return np.asarray(np.mean(wind_component(interpolated(incoming, heights), ground.normal), axis=-1))
 

@@ -22,7 +22,7 @@ from orolift.fire.nights import nights_at
 from orolift.fire.values import site_values
 from orolift.fire.weather import site_weather, stacked
 from orolift.spread.at_sites import column_of
-from orolift.spread.spread import Drawn, spread_of
+from orolift.spread.spread import Drawn, crosses_of, spread_of
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -42,6 +42,7 @@ Status = Literal["crossing", "no crossing", "missing"]
 KEPT = (
     *("pressure", "temperature", "dew_point", "relative_humidity", "mixing_ratio", "wind_10m", "gust"),
     *("source_level", "warming", *(f"warming_{name}" for name in PARTS), "rain", "in_pool"),
+    *("way", "kept_off", "potential_beside", "potential_crest", "humidity_beside"),
 )
 """Arrays of members that are kept of a site."""
 
@@ -53,11 +54,18 @@ class SiteMembers:
     Attributes
     ----------
     inputs, full : mapping of str to ndarray (m,)
-        Those of `KEPT`, in SI: by the inputs alone, and with the error of the method.
+        Those of `KEPT`, in SI: by the inputs alone, and with the error of the method. Empty where the situation itself
+        does not cross.
+    crosses : ndarray (m,) [1]
+        1 in members that cross, 0 in those that do not; NaN in those that could not be worked out.
+    line_rain : ndarray (m,) or None [kg m-1 s-1]
+        Rain and snow along the whole line, background left out; None where the situation does not cross.
     """
 
     inputs: Mapping[str, Array]
     full: Mapping[str, Array]
+    crosses: Array
+    line_rain: Array | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -175,12 +183,13 @@ def states_of(
     try:
         crossing = crossing_of(situation)
     except NoCrossingError as error:
-        return (SiteState("no crossing", str(error)),) * len(situation.sites), None
+        still = None if drawn is None else members_without_answer(situation, drawn)
+        return (SiteState("no crossing", str(error), members=still),) * len(situation.sites), None
     except OroliftError as error:
         return (SiteState("missing", str(error)),) * len(situation.sites), None
     states = tuple(_state(site, crossing, observed_at) for site in crossing.lee)
     if drawn is not None:
-        members = members_of_sites(situation, crossing, drawn)
+        members = members_of_sites(situation, crossing, drawn, observed_at)
         states = tuple(replace(state, members=found) for state, found in zip(states, members, strict=True))
     if fire is None or fire.rules is None:
         return states, crossing
@@ -189,7 +198,9 @@ def states_of(
     return tuple(replace(state, rule_values=found) for state, found in zip(states, values, strict=True)), crossing
 
 
-def members_of_sites(situation: Situation, crossing: Crossing, drawn: Drawn) -> tuple[SiteMembers | None, ...]:
+def members_of_sites(
+    situation: Situation, crossing: Crossing, drawn: Drawn, observed_at: float = 0.0
+) -> tuple[SiteMembers | None, ...]:
     """What members give at the sites of a situation.
 
     Parameters
@@ -198,6 +209,8 @@ def members_of_sites(situation: Situation, crossing: Crossing, drawn: Drawn) -> 
     crossing : Crossing
         Of the situation.
     drawn : Drawn
+    observed_at : float [m]
+        As for `states_of`.
 
     Returns
     -------
@@ -205,17 +218,45 @@ def members_of_sites(situation: Situation, crossing: Crossing, drawn: Drawn) -> 
         In the order of the sites; None where no member crosses, or none could be worked out.
     """
     try:
-        found = spread_of(situation, crossing, drawn.uncertainty, members=drawn.members, seed=drawn.seed)
+        found = spread_of(
+            situation,
+            crossing,
+            drawn.uncertainty,
+            members=drawn.members,
+            seed=drawn.seed,
+            observed_at=observed_at,
+        )
     except OroliftError:
         return (None,) * len(crossing.lee)
     if not found.full_sites:
         return (None,) * len(crossing.lee)
+    crosses = found.crosses.astype(np.float64)
+    crosses[[one.number for one in found.failed]] = np.nan
     out = []
     for site in crossing.lee:
         column = column_of(crossing, site)
         inputs, full = ({name: arrays[name][:, column] for name in KEPT} for arrays in (found.sites, found.full_sites))
-        out.append(SiteMembers(inputs, full))
+        out.append(SiteMembers(inputs, full, crosses, found.values["total"]))
     return tuple(out)
+
+
+def members_without_answer(situation: Situation, drawn: Drawn) -> SiteMembers | None:
+    """Which members of a situation cross that does not do so itself; None where that could not be worked out.
+
+    Parameters
+    ----------
+    situation : Situation
+    drawn : Drawn
+
+    Returns
+    -------
+    SiteMembers or None
+        Without values: a range needs an answer that it belongs to.
+    """
+    try:
+        return SiteMembers({}, {}, crosses_of(situation, drawn).astype(np.float64))
+    except OroliftError:
+        return None
 
 
 def rule_values(crossing: Crossing, site: LeeAir, when: When, fire: FireSettings) -> dict[str | WindMeant, float]:

@@ -7,10 +7,10 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.crossing.members import Members, members_of
+from orolift.crossing.members import Members, crossing_members, members_of
 from orolift.errors import OroliftError, OutOfRangeError
 from orolift.spread.at_sites import alike, centred, on_the_line, shadows, spread_out, with_method_error
-from orolift.spread.draws import draws_of, variation_of, what_varies
+from orolift.spread.draws import columns, draws_of, variation_of, what_varies
 from orolift.spread.engine import in_order, outcomes
 from orolift.spread.uncertainty import COLUMNS, METHOD, Uncertainty, checked, latin_hypercube, normal
 
@@ -213,6 +213,33 @@ def spread_of(
         full_sites=full,
         failed=tuple(failed),
     )
+
+
+def crosses_of(situation: Situation, drawn: Drawn) -> NDArray[np.bool_]:
+    """Which members of a situation cross, though it may not do so itself.
+
+    Parameters
+    ----------
+    situation : Situation
+    drawn : Drawn
+
+    Returns
+    -------
+    ndarray of bool, (m,)
+        As in `spread_of` with the same members and seed.
+
+    Raises
+    ------
+    OutOfRangeError
+        If the number of members, the seed or a standard deviation is out of range, or a member is beyond what is
+        physical.
+    TerrainError
+        If the line has no range.
+    """
+    _check_count(drawn.members, drawn.seed)
+    level = latin_hypercube(drawn.members, len(COLUMNS), drawn.seed)
+    changes = draws_of(situation, checked(drawn.uncertainty), level)
+    return crossing_members(situation, columns(situation.incoming, changes, freezing=True))
 
 
 def _check_count(members: int, seed: int) -> None:
