@@ -18,8 +18,10 @@ if TYPE_CHECKING:
 
     from numpy.typing import ArrayLike, NDArray
 
+    from orolift.fire.indices import Indices
     from orolift.fire.sites import FireSettings, SiteFire
     from orolift.fire.weather import SiteWeather
+    from orolift.fire.winds import WindMeant
 
     Array = NDArray[np.float64]
 
@@ -62,32 +64,96 @@ def with_members(
     The layer over the site, which Hot-Dry-Windy takes, is moved with each member: by the difference in temperature,
     and in the ratio of vapour and of wind.
     """
+    arrays, there = _with_air(members)
+    if not there.any():
+        return site
+    indices, values = _values(
+        site.weather, arrays, settings, roughness, mixing_height=site.night.mixing_height, code=settings.previous_code
+    )
+    thresholds = site.thresholds
+    if settings.rules is not None:
+        thresholds = tuple(replace(one, judged=with_chance(one.judged, values)) for one in thresholds)
+    ranges = {name: ends for name in INDICES if (ends := _range(getattr(indices, name))) is not None}
+    return replace(site, thresholds=thresholds, ranges=ranges)
+
+
+def member_values(
+    weather: SiteWeather,
+    members: Mapping[str, ArrayLike],
+    settings: FireSettings,
+    roughness: float,
+    mixing_height: float = np.nan,
+) -> dict[str | WindMeant, Array]:
+    """What the thresholds of a region speak of, for each member at a site.
+
+    Parameters
+    ----------
+    weather : SiteWeather
+        Of the answer there.
+    members : mapping of str to array_like (m,)
+        As for `with_members`.
+    settings : FireSettings
+        With rules.
+    roughness : float [m]
+    mixing_height : float [m]
+        Of the answer; NaN where it is not known.
+
+    Returns
+    -------
+    dict of quantity to ndarray (m,) [SI]
+        NaN in members without air at the site, and where a value is not known; so are codes that are carried from hour
+        to hour.
+
+    Raises
+    ------
+    OutOfRangeError
+        If a value is out of the range of an index.
+    """
+    rules = () if settings.rules is None else settings.rules.rules
+    wanted = {condition.quantity for rule in rules for condition in rule.conditions}
+    arrays, there = _with_air(members)
+    out = {key: np.full(there.size, np.nan) for key in wanted}
+    if there.any():
+        _, values = _values(weather, arrays, settings, roughness, mixing_height=mixing_height, code=None)
+        for key in wanted:
+            out[key][there] = np.asarray(values.get(key, np.nan))
+    return out
+
+
+def _with_air(members: Mapping[str, ArrayLike]) -> tuple[dict[str, Array], NDArray[np.bool_]]:
+    """Arrays of the members that have air at the site, and which those are."""
     arrays = {name: np.atleast_1d(np.asarray(value, np.float64)) for name, value in members.items()}
     t = arrays["temperature"]
     there = np.isfinite(t) & (t > LOWEST_TEMPERATURE) & (t < HIGHEST_TEMPERATURE) & np.isfinite(arrays["mixing_ratio"])
-    if not there.any():
-        return site
-    arrays = {name: value[there] for name, value in arrays.items()}
-    weather = _weather(site.weather, arrays)
+    return {name: value[there] for name, value in arrays.items()}, there
+
+
+def _values(
+    answer: SiteWeather,
+    arrays: Mapping[str, Array],
+    settings: FireSettings,
+    roughness: float,
+    *,
+    mixing_height: float,
+    code: float | None,
+) -> tuple[Indices, dict[str | WindMeant, ArrayLike]]:
+    """Indices and values for rules of members that have air."""
+    weather = _weather(answer, arrays)
     indices = site_fire(
         weather,
-        previous_code=settings.previous_code,
+        previous_code=code,
         drought_index=settings.drought_index,
         rain_duration=settings.rain_duration,
         hours=(),
     )
-    thresholds = site.thresholds
-    if settings.rules is not None:
-        others: dict[str, ArrayLike] = {
-            "drought_index": np.nan if settings.drought_index is None else settings.drought_index,
-            "mixing_height": site.night.mixing_height,
-            "source_level": arrays.get("source_level", np.nan),
-            "warming": arrays.get("warming", np.nan),
-        }
-        values = site_values(weather, indices, settings.rules.rules, roughness, others=others)
-        thresholds = tuple(replace(one, judged=with_chance(one.judged, values)) for one in thresholds)
-    ranges = {name: ends for name in INDICES if (ends := _range(getattr(indices, name))) is not None}
-    return replace(site, thresholds=thresholds, ranges=ranges)
+    others: dict[str, ArrayLike] = {
+        "drought_index": np.nan if settings.drought_index is None else settings.drought_index,
+        "mixing_height": mixing_height,
+        "source_level": arrays.get("source_level", np.nan),
+        "warming": arrays.get("warming", np.nan),
+    }
+    rules = () if settings.rules is None else settings.rules.rules
+    return indices, site_values(weather, indices, rules, roughness, others=others)
 
 
 def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:

@@ -120,6 +120,7 @@ class _Chunk:
     level: Array
     beside: tuple[Site, ...]
     streamlines: int
+    observed_at: float
 
 
 def spread_of(
@@ -132,6 +133,7 @@ def spread_of(
     executor: Executor | None = None,
     told: Callable[[int], object] | None = None,
     streamlines: int = 60,
+    observed_at: float = 0.0,
 ) -> Spread:
     """A situation in members.
 
@@ -151,6 +153,8 @@ def spread_of(
         Is given the number of members that are done since the last call.
     streamlines : int
         As for `crossing.cross`.
+    observed_at : float [m]
+        Where on the line the incoming air was observed; times on the way count from there.
 
     Returns
     -------
@@ -185,6 +189,7 @@ def spread_of(
             np.concatenate([level[first:end], middle]) if beside and end == members else level[first:end],
             beside,
             streamlines,
+            observed_at,
         )
         for first, end in zip(firsts, ends, strict=True)
     )
@@ -285,7 +290,15 @@ def _together(chunk: _Chunk) -> Members:
         if some.size:
             own = {name: value[some] for name, value in drawn.items()}
             variation = variation_of(situation, uncertainty, own, freezing=frozen)
-            parts.append(members_of(situation, variation, beside=chunk.beside, streamlines=chunk.streamlines))
+            parts.append(
+                members_of(
+                    situation,
+                    variation,
+                    beside=chunk.beside,
+                    streamlines=chunk.streamlines,
+                    observed_at=chunk.observed_at,
+                )
+            )
             rows.append(some)
     whole = _joined(parts, [one.size for one in rows])
     back = np.argsort(np.concatenate(rows))
