@@ -44,14 +44,18 @@ def column_of(crossing: Crossing, site: LeeAir) -> int | None:
     return next((i for i, air in enumerate(columns_of(crossing)) if air.number == site.number), None)
 
 
-def members_at(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Array] | None:
-    """What the members give at a site, the error of the method included.
+def members_at(
+    spread: Spread, crossing: Crossing, site: LeeAir, *, inputs_only: bool = False
+) -> dict[str, Array] | None:
+    """What the members give at a site.
 
     Parameters
     ----------
     spread : Spread
     crossing : Crossing
     site : LeeAir
+    inputs_only : bool
+        Whether the error of the method is left out.
 
     Returns
     -------
@@ -59,9 +63,10 @@ def members_at(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Ar
         In SI, NaN where a member has no such value; None for a site that is in no column.
     """
     column = column_of(crossing, site)
-    if column is None or not spread.full_sites:
+    arrays = spread.sites if inputs_only else spread.full_sites
+    if column is None or not arrays:
         return None
-    return {name: value[:, column] for name, value in spread.full_sites.items()}
+    return {name: value[:, column] for name, value in arrays.items()}
 
 
 MANY = 24
