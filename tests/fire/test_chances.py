@@ -73,7 +73,7 @@ def test_the_answer_as_its_own_member(crossing, settings):
             assert name not in found.ranges
 
 
-@pytest.mark.parametrize("when", [When(), When(1793707200.0, -121.0, -46.9)], ids=["unknown time", "noon"])
+@pytest.mark.parametrize("when", [When(), When(1793736000.0, -121.0, -46.9)], ids=["unknown time", "noon"])
 def test_the_night_of_the_answer_as_its_own_member(crossing, settings, when):
     """Without any spread humidity at each height and the depth of mixing close on the answer, and so do codes."""
     site = fire_at_sites(crossing, when, settings)[0]
@@ -113,7 +113,7 @@ def test_more_heat_from_the_ground_leaves_a_colder_night(crossing, settings):
 
 def test_rules_on_the_depth_of_mixing_take_that_of_each_member(crossing):
     """Law: the heat of the ground lifts heavier air less deep; two of five members, 15 % heavier, miss the limit."""
-    when = When(1793707200.0, -121.0, -46.9)
+    when = When(1793736000.0, -121.0, -46.9)
     plain = fire_at_sites(crossing, when, FireSettings())[0]
     depth = plain.night.mixing_height
     rule = Rule("deep", (Condition("mixing_height", at_least=depth - 1.0),))
