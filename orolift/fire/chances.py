@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, TypeVar
 
 import numpy as np
 
@@ -26,6 +26,8 @@ if TYPE_CHECKING:
     from orolift.fire.winds import WindMeant
 
     Array = NDArray[np.float64]
+
+Name = TypeVar("Name", str, "str | WindMeant")
 
 NEEDED = ("pressure", "temperature", "mixing_ratio", "wind_10m", "gust")
 """Arrays of members that fire weather takes."""
@@ -87,20 +89,23 @@ def with_members(
     indices, night = _indices(weather, settings, settings.previous_code, HOURS), _night(site, weather, when or When())
     found = {name: getattr(indices, name) for name in INDICES} | night
     found |= {name: indices.fine_fuel_code_hours[..., number] for number, name in enumerate(CODES_AFTER)}
-    thresholds = site.thresholds
+    thresholds, judged_by = site.thresholds, {}
     if settings.rules is not None:
         values = _values(weather, indices, arrays, settings, roughness, mixing_height=night["mixing_height"])
         full = {key: np.broadcast_to(value, there.sum())[:count] for key, value in values.items()}
         thresholds = tuple(replace(one, judged=with_chance(one.judged, full)) for one in thresholds)
+        asked = {condition.quantity for rule in settings.rules.rules for condition in rule.conditions}
+        judged_by = _ranges({key: full[key] for key in asked if key in full})
     return replace(
         site,
         thresholds=thresholds,
+        rule_ranges=judged_by,
         ranges=_ranges({name: value[:count] for name, value in found.items()}),
         input_ranges=_ranges({name: value[count:] for name, value in found.items()}),
     )
 
 
-def _ranges(found: Mapping[str, Array]) -> dict[str, tuple[float, float]]:
+def _ranges(found: Mapping[Name, Array]) -> dict[Name, tuple[float, float]]:
     """10 and 90 % of what members give, by name, where enough have a value."""
     return {name: ends for name, values in found.items() if (ends := _range(values)) is not None}
 

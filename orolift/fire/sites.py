@@ -80,6 +80,8 @@ class SiteFire:
         number of the night (`nights.NIGHT_VALUES`), in SI; empty without members.
     input_ranges : mapping of str to (float, float)
         The same by the inputs alone.
+    rule_ranges : mapping of quantity to (float, float)
+        As `ranges`, of what the rules speak of.
     """
 
     number: int
@@ -93,6 +95,7 @@ class SiteFire:
     thresholds: tuple[Threshold, ...]
     ranges: Mapping[str, tuple[float, float]] = field(default_factory=dict)
     input_ranges: Mapping[str, tuple[float, float]] = field(default_factory=dict)
+    rule_ranges: Mapping[str | WindMeant, tuple[float, float]] = field(default_factory=dict)
 
 
 def fire_at_sites(crossing: Crossing, when: When, settings: FireSettings | None = None) -> tuple[SiteFire, ...]:

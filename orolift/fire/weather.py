@@ -84,7 +84,6 @@ def site_weather(air: LeeAir) -> SiteWeather:
         The wind of the layer is that across the range, from the streamlines over the site.
     """
     profile = air.profile
-    heated = profile.warming is not None and air.parts is not None
     mean, low, high, gust_low, gust_high = (np.asarray(value) for value in _winds(air.wind))
     return SiteWeather(
         pressure=np.asarray(air.pressure),
@@ -101,7 +100,9 @@ def site_weather(air: LeeAir) -> SiteWeather:
         layer_vapour=np.maximum(profile.vapour, LEAST_VAPOUR),
         layer_wind=profile.wind,
         heating=np.asarray(0.0 if air.parts is None else air.parts.surface_heating),
-        layer_heating=profile.warming if heated else np.zeros_like(profile.height_above_ground),
+        layer_heating=np.zeros_like(profile.height_above_ground)
+        if profile.warming is None or air.parts is None
+        else profile.warming,
     )
 
 

@@ -276,7 +276,7 @@ def _partly_blocked(f: float, m: float) -> LayerFlow:
     def excess(depth: float) -> float:
         speed = upwind(depth)
         flux = max(speed * depth, 0.0)
-        return 0.5 * speed**2 + depth - 1.5 * flux ** (2.0 / 3.0) - m
+        return float(0.5 * speed**2 + depth - 1.5 * flux ** (2.0 / 3.0) - m)
 
     low = 1.0
     high = max(2.0, m + 1.0)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -275,11 +275,11 @@ def _either_way(ends: tuple[float, float] | None, *, lower: bool) -> tuple[float
 
 def _row(site: LeeAir, spans: Spans) -> WindRow:
     wind = site.wind
-    row = {"number": site.number, "name": site.name, "side": site.side, "remark": where_words(site)}
+    nothing = WindRow(site.number, site.name, site.side, where_words(site), None, (), None, (), {})
     if wind is None:
-        return WindRow(**row, wind=None, methods=(), at_10m=None, gusts=(), spans={})
-    return WindRow(
-        **row,
+        return nothing
+    return replace(
+        nothing,
         wind=Amount(wind.wind, "wind_alone"),
         methods=_bare(wind.low, wind.high),
         at_10m=Amount(wind.at_10m, "wind_alone"),

@@ -225,7 +225,8 @@ def values_with_method_error(values: dict[str, Array], crossing: Crossing, error
         return values
     winds, z = crossing.winds, error["model_wind"]
     least, strongest, most = (max(wind, 0.1) for wind in (winds.low, winds.strongest, winds.high))
-    width = np.where(z < 0.0, np.log(strongest / least), np.log(most / strongest))
+    down, up = float(np.log(strongest / least)), float(np.log(most / strongest))
+    width: Array = np.where(z < 0.0, down, up)
     return values | {"lee_wind": values["lee_wind"] * np.exp(width * z / TENTH)}
 
 
