@@ -18,6 +18,7 @@ if TYPE_CHECKING:
     from numpy.typing import ArrayLike
 
     from orolift.fire.sites import SiteFire, Threshold
+    from orolift.fire.winds import WindMeant
     from orolift.fire.words import Measure
 
 _WRITTEN: dict[Measure, tuple[float, float, str]] = {
@@ -61,6 +62,7 @@ class ConditionBlock(Block):
     limit_kind: str = Field(description="at least or at most")
     limit: float
     value: float | None
+    range: tuple[float, float] | None = Field(description="of the value: 10 and 90 % of the members; null without")
     margin: float | None = Field(description="by how much it is met; negative: missed")
     chance_percent: float | None
     movers: list[MoverBlock]
@@ -168,7 +170,7 @@ def _block(site: SiteFire) -> FireBlock:
         mixing_height_m=site.night.mixing_height,
         mixing_height_by_day_m=site.night.mixing_height_by_day,
         night=_night(site),
-        rules=[_rule(threshold) for threshold in site.thresholds],
+        rules=[_rule(threshold, site.rule_ranges) for threshold in site.thresholds],
         range=_ranges(site.ranges),
         input_range=_ranges(site.input_ranges),
     )
@@ -222,13 +224,14 @@ def _night(site: SiteFire) -> NightBlock:
     )
 
 
-def _rule(threshold: Threshold) -> RuleBlock:
+def _rule(threshold: Threshold, ranges: Mapping[str | WindMeant, tuple[float, float]]) -> RuleBlock:
     judged = threshold.judged
     conditions = []
     for judged_one, moves in zip(judged.conditions, threshold.movers, strict=True):
         condition = judged_one.condition
         words, measure, _ = named(condition.quantity)
         factor, offset, unit = _WRITTEN[measure]
+        ends = ranges.get(condition.quantity)
         conditions.append(
             ConditionBlock(
                 quantity=words,
@@ -236,6 +239,7 @@ def _rule(threshold: Threshold) -> RuleBlock:
                 limit_kind=limit_words(condition),
                 limit=condition.limit * factor + offset,
                 value=None if judged_one.value is None else judged_one.value * factor + offset,
+                range=None if ends is None else (ends[0] * factor + offset, ends[1] * factor + offset),
                 margin=None if judged_one.margin is None else judged_one.margin * factor,
                 chance_percent=_percent(judged_one.chance),
                 movers=[MoverBlock(input=move.what, amount=move.amount, unit=MOVER_UNITS[move.what]) for move in moves],
