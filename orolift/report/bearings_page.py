@@ -13,7 +13,7 @@ from orolift.report.cautions import ALWAYS, RANGE_OF_MEMBERS
 from orolift.report.figures.roses import roses_figure
 from orolift.report.hours_page import ONE_ANSWER
 from orolift.report.quantities import Amount
-from orolift.report.spans import span_beneath
+from orolift.report.spans import span_of
 from orolift.report.words import moment
 from orolift.spread.state_ranges import chance_at, range_at
 
@@ -277,9 +277,9 @@ def _row(bearings: Bearings, site: SiteBearings, number: int) -> DirectionRow:
         "wind_10m": amount(state.wind_10m, "wind", 0),
         "rain": amount(state.rain, "rain_rate", 1),
     }
-    spans = {name: _beneath(like, range_at(state, name)) for name, like in shown.items() if like is not None}
+    spans = {name: span_of(like, range_at(state, name)) for name, like in shown.items() if like is not None}
     if drying is not None and (ends := range_at(state, "drying_power")) is not None:
-        spans["drying"] = _beneath(Amount(drying, "plain"), (ends[0] / HPA, ends[1] / HPA))
+        spans["drying"] = span_of(Amount(drying, "plain"), (ends[0] / HPA, ends[1] / HPA))
     return DirectionRow(
         wind_from=Amount(float(bearings.wind_from[number]), "bearing"),
         state=_words(state),
@@ -292,13 +292,6 @@ def _row(bearings: Bearings, site: SiteBearings, number: int) -> DirectionRow:
         spans=spans,
         **shown,
     )
-
-
-def _beneath(amount: Amount, ends: tuple[float, float] | None) -> Words:
-    """A range beneath its number, widened to hold it as in a sentence."""
-    if ends is None:
-        return ()
-    return span_beneath(amount, (min(ends[0], amount.value), max(ends[1], amount.value)))
 
 
 def _words(state: SiteState) -> str:
