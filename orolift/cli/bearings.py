@@ -9,9 +9,10 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.executors import executor_of, progress
+from orolift.cli.gathering import Gathered, gathered, leave_unfinished
 from orolift.cli.options import (
     JOBS_OPTION,
+    MEMBERS_OPTION,
     QUIET_OPTION,
     SCHEDULER_OPTION,
     UNITS_OPTION,
@@ -19,6 +20,7 @@ from orolift.cli.options import (
     file_option,
 )
 from orolift.cli.outputs import Outputs, made_now
+from orolift.cli.spreading import Workers
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -31,6 +33,7 @@ log = logging.getLogger(__name__)
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
 @click.argument("case")
 @click.option("--step", type=int, default=10, show_default=True, metavar="DEGREES", help="Between two directions.")
+@MEMBERS_OPTION
 @file_option("--report", "Page to write; default CASE_bearings.html in the current folder.")
 @file_option("--table", "Table to write as CSV, one row for each site and direction.")
 @file_option("--results", "Results to write as JSON.")
@@ -44,6 +47,7 @@ def command(
     case: str,
     *,
     step: int,
+    members: int | None,
     folder: str | None,
     jobs: int | None,
     scheduler: str | None,
@@ -58,11 +62,11 @@ def command(
 
     outputs = Outputs()
     files = planned_files(files, f"{Path(case).stem}_bearings", folder, outputs)
-    setup = read_bearings(case, step)
+    setup = read_bearings(case, step, members)
     log.debug("%s read, %d directions", case, setup.directions)
-    found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
+    found, work = worked(setup, Workers(jobs, scheduler, quiet))
     if not found:
-        raise click.Abort
+        leave_unfinished(work, "")
     bearings = bearings_of(
         found,
         [site.name for site in setup.sites],
@@ -74,35 +78,27 @@ def command(
         outputs.add(path, content, str(path))
     outputs.write()
     if not quiet:
-        click.echo("\n".join([*summary_of(bearings, setup), *where(files)]))
-    if stopped:
-        done = f"{bearings.wind_from.size} of {bearings.planned} directions"
-        raise click.Abort(f"interrupted after {done}; what was finished is written.")
+        click.echo("\n".join([*summary_of(bearings, setup, units), *where(files)]))
+    if not work.finished:
+        leave_unfinished(work, f"{bearings.wind_from.size} of {bearings.planned} directions")
 
 
-def worked(
-    setup: BearingSetup, jobs: int | None, scheduler: str | None, *, quiet: bool
-) -> tuple[list[Direction], bool]:
-    """Directions worked out, and whether the person stopped the work before its end."""
+def worked(setup: BearingSetup, workers: Workers) -> tuple[list[Direction], Gathered[Direction]]:
+    """Directions worked out, and how that ended."""
     from orolift.sources.bearings_case import bearing_tasks
     from orolift.spread.bearings import Direction, worked_direction
-    from orolift.spread.engine import outcomes
     from orolift.spread.site_state import SiteState
 
-    found: list[Direction] = []
-    try:
-        with executor_of(jobs, scheduler) as executor, progress(setup.directions, "Directions", quiet=quiet) as bar:
-            for outcome in outcomes(worked_direction, bearing_tasks(setup), executor):
-                direction = outcome.value
-                if direction is None:
-                    state = SiteState("missing", f"a fault of orolift itself: {outcome.error}")
-                    wind_from = math.radians(outcome.number * setup.step_deg)
-                    direction = Direction(wind_from, (state,) * len(setup.sites))
-                found.append(direction)
-                bar.update(1)
-    except KeyboardInterrupt:
-        return found, True
-    return found, False
+    work = gathered(worked_direction, bearing_tasks(setup), setup.directions, "Directions", workers)
+    found = []
+    for outcome in work.found:
+        direction = outcome.value
+        if direction is None:
+            state = SiteState("missing", f"a fault of orolift itself: {outcome.error}")
+            wind_from = math.radians(outcome.number * setup.step_deg)
+            direction = Direction(wind_from, (state,) * len(setup.sites))
+        found.append(direction)
+    return found, work
 
 
 def contents_of(
@@ -123,6 +119,7 @@ def contents_of(
         made_at=made_now(),
         version=__version__,
         notes=setup.notes,
+        drawn=setup.drawn,
         units=units,
     )
     out = {Path(str(files["report"])): render(page, "bearings.html.jinja").encode()}
@@ -137,8 +134,11 @@ def contents_of(
     return out
 
 
-def summary_of(bearings: Bearings, setup: BearingSetup) -> list[str]:
-    """What was found, a line a site, at most ten lines."""
+def summary_of(bearings: Bearings, setup: BearingSetup, units: Units) -> list[str]:
+    """What was found, one or, with members, two lines a site; six sites at most."""
+    from orolift.report.bearings_sure import members_line
+    from orolift.report.words import plain
+
     lines = [setup.inputs.case.title or setup.inputs.path.stem]
 
     def said(number: int | None) -> str:
@@ -150,6 +150,8 @@ def summary_of(bearings: Bearings, setup: BearingSetup) -> list[str]:
             f"{site.name[:24]}  air crosses from {crossing} of {len(site.states)} directions; warmest from "
             f"{said(site.warmest)}, worst for fire {said(site.fire)}, best for rain {said(site.rain)}"
         )
+        if setup.drawn is not None and (words := members_line(site, bearings, setup.drawn.members)):
+            lines.append(f"          {plain(words, units)}")
     if len(bearings.sites) > 6:
         lines.append(f"          and {len(bearings.sites) - 6} more sites: see the report or --table")
     return lines
