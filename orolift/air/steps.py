@@ -77,10 +77,10 @@ def moved(air: Air, pressure: Array, log_pressure: Array, entropy: Array, *, fre
     clear = clear._replace(vapour=air.water.copy())
     if not cloudy.size:
         return clear
-    some = _Goal(*(x.reshape(-1)[cloudy] for x in (entropy, log_all, clear_q)))
     there = Air(*(x.reshape(-1)[cloudy] if x.ndim else x for x in air))
-    p, log_p = (x.reshape(-1)[cloudy] for x in (pressure, log_pressure))
-    return _replaced(clear, cloudy, _moved_in_cloud(there, p, log_p, some, freezing=freezing))
+    s, log_v, q, p, log_p = (x.reshape(-1)[cloudy] for x in (entropy, log_all, clear_q, pressure, log_pressure))
+    some = _moved_in_cloud(there, p, log_p, _Goal(s, log_v, q), freezing=freezing)
+    return _replaced(clear, cloudy, some)
 
 
 def _moved_in_cloud(air: Air, pressure: Array, log_pressure: Array, goal: _Goal, *, freezing: bool) -> Air:
