@@ -171,7 +171,11 @@ def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
 
     for worked, page in summaries:
         lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units, worked.spread)
-        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.spread)}"]))
+        click.echo(
+            "\n".join(
+                [*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.crossing, units, worked.spread)}"]
+            )
+        )
 
 
 def work_out(case: str, files: RainFiles | None = None, workers: Workers | None = None) -> Worked:

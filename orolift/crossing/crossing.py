@@ -9,7 +9,8 @@ import numpy as np
 
 from orolift.air.column import interpolated, vapour_flux, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio
-from orolift.crossing.facts import clouds, crest_line_notes, flow_facts, remarks, water
+from orolift.crossing.cloud import clouds
+from orolift.crossing.facts import crest_line_notes, flow_facts, remarks, water
 from orolift.crossing.heat import heat_cautions, heat_notes
 from orolift.crossing.lee_wind import lee_winds
 from orolift.crossing.march import March

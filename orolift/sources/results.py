@@ -27,7 +27,7 @@ from orolift.sources.result_block import Block, Chance, Range
 from orolift.sources.spread_results import SpreadBlock, at_site, ranges_of, site_chances, spread_block
 from orolift.sources.units import UNITS
 from orolift.sources.wind_results import LeeWindBlock, lee_wind_block
-from orolift.spread.at_sites import column_of
+from orolift.spread.at_sites import column_of, on_its_line
 from orolift.spread.ranges import range_of
 
 if TYPE_CHECKING:
@@ -378,8 +378,9 @@ def _lee(site: LeeAir, crossing: Crossing, places: Sequence[SitePlace], spread: 
     ranges: Range = {}
     inputs: Range = {}
     if spread is not None and column is not None:
-        ranges = ranges_of("lee", at_site(spread.full_sites, column))
-        inputs = ranges_of("lee", at_site(spread.sites, column))
+        line = on_its_line(spread, crossing, site)
+        ranges = ranges_of("lee", at_site(spread.full_sites, column) | line)
+        inputs = ranges_of("lee", at_site(spread.sites, column) | line)
     elif wind is not None:
         ranges = {"wind_ms": (wind.low, wind.high), "gust_ms": (wind.gust_low, wind.gust_high)}
     own, shape = site.own, crossing.features

@@ -58,6 +58,7 @@ KEYS: dict[str, dict[str, tuple[str, float, float]]] = {
         "conditions_held": ("windstorm_conditions", 1.0, 0.0),
     },
     "lee": {
+        "blocked_top_m": ("blocked_top", 1.0, 0.0),
         "temperature_c": ("temperature", 1.0, -OFFSET),
         "dew_point_c": ("dew_point", 1.0, -OFFSET),
         "relative_humidity_percent": ("relative_humidity", 100.0, 0.0),

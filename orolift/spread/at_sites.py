@@ -70,6 +70,37 @@ def members_at(
     return {name: value[:, column] for name, value in arrays.items()}
 
 
+def on_its_line(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Array]:
+    """What the members give for the line a site is on.
+
+    Parameters
+    ----------
+    spread : Spread
+    crossing : Crossing
+    site : LeeAir
+
+    Returns
+    -------
+    dict of str to ndarray (m,)
+        ``blocked_top`` and ``cross_range_wind`` in SI; empty where no member crosses.
+
+    Notes
+    -----
+    A line of the site's own takes the deviations of the crossing's line around its own answer: differences of the
+    blocked top, which is not below the base of its line, and factors of the wind.
+    """
+    values, own, flow = spread.values, site.own, crossing.flow
+    if not spread.crosses.any():
+        return {}
+    top, wind = values["blocked_top"], np.where(spread.crosses, values["cross_range_wind"], np.nan)
+    if own is None:
+        return {"blocked_top": top, "cross_range_wind": wind}
+    return {
+        "blocked_top": np.maximum(own.blocked_top + top - flow.blocked_top, own.base),
+        "cross_range_wind": wind * own.crest_wind / flow.crest_wind,
+    }
+
+
 MANY = 24
 """Sites beside the line from which on those whose places on it are about the same share one."""
 SAME_DISTANCE, SAME_HEIGHT = 1000.0, 100.0
@@ -129,6 +160,7 @@ def centred(whole: Members, crossing: Crossing) -> Members:
             else:
                 sites[name][:, column] += value - middle
         if sites:
+            sites["went_round"][:, column] = np.clip(sites["went_round"][:, column], 0.0, 1.0)
             p, t, v = (sites[name][:, column] for name in ("pressure", "temperature", "mixing_ratio"))
             v = sites["mixing_ratio"][:, column] = np.minimum(v, _most_vapour(p, t))
             sites["dew_point"][:, column], sites["relative_humidity"][:, column] = _humidity(p, t, v)
@@ -148,7 +180,10 @@ def _answers(air: LeeAir) -> dict[str, float | None]:
         "source_level": air.source_level,
         "source_level_low": air.source_level_low,
         "source_level_high": air.source_level_high,
+        "upwind_temperature": air.upwind_temperature,
+        "upwind_dew_point": air.upwind_dew_point,
         "warming": air.warming,
+        "went_round": air.went_round,
         "rain": air.rain,
         **{f"warming_{name}": None if parts is None else getattr(parts, name) for name in PARTS},
         "popular_picture": air.popular_picture,

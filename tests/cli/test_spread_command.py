@@ -9,6 +9,9 @@ import pytest
 
 from orolift.cli.main import exit_code
 
+GROUND = {"distance_km", "crest_m", "beyond_crest_km", "elevation_m"}
+"""Numbers without a range: where a site lies."""
+
 
 @pytest.fixture
 def results(edited):
@@ -36,6 +39,8 @@ def test_every_range_holds_eight_tenths(results, capsys):
         assert block["range"].keys() == block["input_range"].keys()
         assert all(low <= high for low, high in block["range"].values())
         assert {key.split(".")[0] for key in block["range"]} <= block.keys()
+        numbers = {key for key, value in block.items() if isinstance(value, float)}
+        assert numbers - GROUND <= block["range"].keys()
     assert "drying_ratio" in found["rain"]["range"]
     low_wind, high_wind = found["lee_wind"]["range"]["strongest_ms"]
     assert low_wind < high_wind
