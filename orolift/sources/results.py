@@ -256,7 +256,7 @@ def results_of(
         lee=[_lee(site, crossing, places, spread) for site in crossing.lee],
         failed_sites=[FailedSiteBlock(**asdict(site)) for site in crossing.failed],
         spread=None if spread is None else spread_block(spread, crossing),
-        catchments=[] if mapped is None else catchment_blocks(mapped.rain),
+        catchments=[] if mapped is None else catchment_blocks(mapped),
         gauges=None if mapped is None else gauges_block(mapped.rain),
         fire=fire_blocks(fire),
         flags=[*flags],
