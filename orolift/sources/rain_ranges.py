@@ -80,6 +80,23 @@ def catchment_ranges(mapped: Mapped, number: int) -> Range:
     )
 
 
+def gauge_ranges(mapped: Mapped) -> list[Range]:
+    """Ranges of the map at every gauge, by the keys of its block.
+
+    Parameters
+    ----------
+    mapped : Mapped
+
+    Returns
+    -------
+    list of dict of str to (float, float)
+        Empty without members.
+    """
+    if mapped.members is None:
+        return []
+    return [_scaled({"map_mm": (values, 1.0)}) for values in mapped.members.gauges.T]
+
+
 def _scaled(arrays: dict[str, tuple[Array, float]]) -> Range:
     """Ranges of arrays (m,), each times a factor; without those that too few members have."""
     found = {key: (range_of(values), factor) for key, (values, factor) in arrays.items()}

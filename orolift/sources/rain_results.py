@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from pydantic import Field
 
-from orolift.sources.rain_ranges import catchment_ranges, map_ranges
+from orolift.sources.rain_ranges import catchment_ranges, gauge_ranges, map_ranges
 from orolift.sources.result_block import Block, Range
 
 if TYPE_CHECKING:
@@ -121,6 +121,8 @@ class GaugeBlock(Block):
     name: str
     observed_mm: float
     map_mm: float | None
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %], by the inputs; empty without members")
+    input_range: Range = Field(default_factory=dict, description="the same: no error of the theory is known")
 
 
 class FittedBlock(Block):
@@ -308,23 +310,30 @@ def _catchment(one: RainOnCatchment, ranges: Range) -> CatchmentBlock:
     )
 
 
-def gauges_block(rain: MapRain) -> GaugesBlock | None:
+def gauges_block(mapped: Mapped) -> GaugesBlock | None:
     """Map against gauges; None without gauges.
 
     Parameters
     ----------
-    rain : MapRain
+    mapped : Mapped
 
     Returns
     -------
     GaugesBlock or None
     """
+    rain = mapped.rain
     gauges, found = rain.gauges, rain.comparison
     if gauges is None or found is None:
         return None
+    ranges = gauge_ranges(mapped) or [{}] * len(gauges.name)
     places = [
-        GaugeBlock(name=name, observed_mm=float(caught), map_mm=None if math.isnan(there) else float(there))
-        for name, caught, there in zip(gauges.name, gauges.total, found.modelled, strict=True)
+        GaugeBlock(
+            name=name,
+            observed_mm=float(caught),
+            map_mm=None if math.isnan(there) else float(there),
+            **_both(ends),
+        )
+        for name, caught, there, ends in zip(gauges.name, gauges.total, found.modelled, ranges, strict=True)
     ]
     return GaugesBlock(
         used=found.used,

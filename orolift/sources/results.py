@@ -257,7 +257,7 @@ def results_of(
         failed_sites=[FailedSiteBlock(**asdict(site)) for site in crossing.failed],
         spread=None if spread is None else spread_block(spread, crossing),
         catchments=[] if mapped is None else catchment_blocks(mapped),
-        gauges=None if mapped is None else gauges_block(mapped.rain),
+        gauges=None if mapped is None else gauges_block(mapped),
         fire=fire_blocks(fire),
         flags=[*flags],
         cautions=[*crossing.cautions],
