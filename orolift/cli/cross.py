@@ -256,7 +256,10 @@ def _with_chances(one: SiteFire, air: LeeAir, inputs: Inputs, crossing: Crossing
     from orolift.spread.at_sites import members_at
 
     arrays = members_at(spread, crossing, air)
-    return one if arrays is None else with_members(one, arrays, inputs.fire, crossing.settings.roughness)
+    if arrays is None:
+        return one
+    alone = members_at(spread, crossing, air, inputs_only=True)
+    return with_members(one, arrays, inputs.fire, crossing.settings.roughness, inputs.when, inputs=alone)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:

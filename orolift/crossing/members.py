@@ -9,14 +9,18 @@ import numpy as np
 
 from orolift.air.column import column_vapour, freezing_level, interpolated, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.air.temperature import potential_temperature
 from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
+from orolift.crossing.layer_above import differences
+from orolift.crossing.lee_wind import lee_wind_arrays, lee_winds
 from orolift.crossing.member_values import flow_values, rain_values, steps_across
 from orolift.crossing.picture import popular_picture, upwind_ground_air
 from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import Site, WarmingParts, When
-from orolift.crossing.settings import Settings, checked
+from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import Arrived, arrived
 from orolift.crossing.solve import NOTHING, solve
+from orolift.crossing.way import way_to
 from orolift.crossing.wind import winds_at
 from orolift.terrain.features import features
 
@@ -79,7 +83,12 @@ class Members:
 
 
 def members_of(
-    situation: Situation, variation: Variation, *, beside: tuple[Site, ...] = (), streamlines: int = 60
+    situation: Situation,
+    variation: Variation,
+    *,
+    beside: tuple[Site, ...] = (),
+    streamlines: int = 60,
+    observed_at: float = 0.0,
 ) -> Members:
     """What a situation gives in each of its members.
 
@@ -92,6 +101,8 @@ def members_of(
         More places on the line; unlike the situation's sites they have no say in what its crest is.
     streamlines : int
         How many, 20 or more.
+    observed_at : float [m]
+        Where on the line the incoming air was observed; times on the way count from there.
 
     Returns
     -------
@@ -128,8 +139,17 @@ def members_of(
     freezing = settings.freezing
     flow = flow_values(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
     values |= _filled(flow, crosses)
+    winds = lee_winds(ground, solution, crest_wind[crosses], flow["pressure_difference"])
+    values |= _filled(lee_wind_arrays(winds), crosses)
     values |= _filled(rain_values(ground, solution, part.incoming, situation.background), crosses)
-    at = [_filled(_of_site(site, ground, solution, part, when, situation.background), crosses) for site in sites]
+    at = [
+        _filled(
+            _of_site(site, ground, solution, part, when, situation.background)
+            | _of_way(site, ground, solution, part, observed_at),
+            crosses,
+        )
+        for site in sites
+    ]
     return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})
 
 
@@ -240,6 +260,7 @@ def _of_site(
     pooled = _in_pools(place, solution, t, v)
     gone = pooled | blocked
     wind = winds_at(place.here, settings.roughness)
+    above = differences(place, incoming, solution, t, place.came.warming.surface_heating)
     nothing = np.where(pooled, np.nan, np.where(blocked, 0.0, 1.0))
     level = np.where(blocked[:, np.newaxis], place.elevation, place.came.source_level)
     level[pooled] = np.nan
@@ -263,7 +284,12 @@ def _of_site(
         "upwind_temperature": t_up,
         "upwind_dew_point": _dew_point(p_up, upwind.vapour[:, 0]),
         "warming": t - t_up,
+        "potential_beside": potential_temperature(p_up, t_up),
+        "potential_crest": potential_temperature(upwind.pressure[:, 1], upwind.temperature[:, 1]),
+        "humidity_beside": relative_humidity_from_mixing_ratio(p_up, t_up, upwind.vapour[:, 0]),
+        "kept_off": np.array([pool is not None for pool in solution.pools], dtype=np.float64),
         **{f"warming_{name}": nothing * getattr(place.came.warming, name) for name in PARTS},
+        **{name: np.where(gone, np.nan, value) for name, value in above.items()},
         "popular_picture": picture.temperature,
         "descent_only": t_up + nothing * place.came.warming.descent,
         "went_round": np.where(pooled, 0.0, place.came.went_round),
@@ -271,6 +297,23 @@ def _of_site(
         "cloudy": (~gone & (place.came.air.cloud > 0.0)).astype(np.float64),
         "rain": (1.0 - way) * rate[after - 1] + way * rate[after] + background,
     }
+
+
+def _of_way(
+    site: Site, ground: Ground, solution: Solution, variation: Variation, observed_at: float
+) -> dict[str, Array]:
+    """Time the air of each member takes to a site, as `site_state.travel_to` gives it of one."""
+    streams = solution.streams
+    mean, _ = way_to(
+        ground.transect.distance[streams.place],
+        streams.flow.heights[..., streams.place],
+        streams.wind[..., np.newaxis] * streams.flow.speed_factor[..., streams.place],
+        site.distance,
+        start=observed_at,
+        depth=each(variation.settings.mixing_depth, solution.blocked_top.size),
+        cosine=ground.cosine,
+    )
+    return {"way": np.broadcast_to(mean, solution.blocked_top.shape)}
 
 
 def _in_pools(place: Arrived, solution: Solution, t: Array, v: Array) -> NDArray[np.bool_]:

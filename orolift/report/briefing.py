@@ -316,8 +316,9 @@ def _wind(spans: Spans, site: LeeAir) -> Words:
     """The wind down the lee and at the site."""
     winds = spans.crossing.winds
     span = range_words(winds.low, winds.high)
-    start: Words = ("The wind down the lee slope reaches ", Amount(winds.strongest, "wind"))
-    if span:
+    ends = spans.of("lee_wind")
+    start: Words = ("The wind down the lee slope reaches ", *ranged(Amount(winds.strongest, "wind"), ends))
+    if span and ends is None:
         start = (*start, ", ", *span, " by all methods")
     if site.wind is None:
         why = "lies in the cold pool" if site.in_pool else "lies in air that hardly moves"

@@ -230,7 +230,7 @@ def page_of(
         fire=fire_weather(crossing, fire, rules) if fire else None,
         answers=answers(first),
         answers_figure=answers_figure(few, units),
-        lee_wind=lee_wind(few),
+        lee_wind=lee_wind(Spans(crossing, spread), few.lee),
         inputs=inputs(on_line, bearing, freezing, case_text, units),
         column=column(line, stagnant_top, units),
         findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),

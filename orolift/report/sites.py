@@ -305,10 +305,15 @@ def _bar(air: LeeAir) -> tuple[Part, ...]:
 
 
 def _fuel(fire: SiteFire) -> Words:
-    """Moisture of fine dead fuel and the Fosberg index."""
-    moisture = Amount(float(fire.indices.equilibrium_fuel_moisture), "share", 1)
-    index = float(fire.indices.fosberg_index)
-    return (moisture, " moisture", *((", Fosberg index ", Amount(index, "plain")) if math.isfinite(index) else ()))
+    """Moisture of fine dead fuel and the Fosberg index, with drought where that is known."""
+    air, ends = fire.indices, fire.ranges
+    moisture = Amount(float(air.equilibrium_fuel_moisture), "share", 1)
+    out: list[str | Amount] = [*ranged(moisture, ends.get("equilibrium_fuel_moisture")), " moisture"]
+    for words, name in ((", Fosberg index ", "fosberg_index"), (", with drought ", "fosberg_index_with_drought")):
+        index = float(getattr(air, name))
+        if math.isfinite(index):
+            out += [words, *ranged(Amount(index, "plain"), ends.get(name))]
+    return tuple(out)
 
 
 def _failed(crossing: Crossing) -> tuple[tuple[str, str], ...]:

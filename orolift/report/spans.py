@@ -49,11 +49,12 @@ class Spans:
     spread: Spread | None
     whole: Crossing | None = None
 
-    def of(self, name: str) -> Ends | None:
+    def of(self, name: str, *, inputs_only: bool = False) -> Ends | None:
         """Range of a number of the whole crossing; None without."""
-        if self.spread is None or name not in self.spread.values:
+        if self.spread is None:
             return None
-        return range_of(self.spread.values[name])
+        arrays = self.spread.values if inputs_only else self.spread.full_values
+        return range_of(arrays[name]) if name in arrays else None
 
     def ratio(self, name: str, over: str) -> Ends | None:
         """Range of one number of the crossing over another, where that is above zero, by members; None without."""
@@ -240,6 +241,33 @@ def digits_for(amount: Amount, ends: Ends) -> int:
     if width == 0.0:
         return amount.digits
     return min(amount.digits, ceil(-log10(width / PARTS_OF_A_RANGE)))
+
+
+def second_line(like: Amount, ends: Ends | None) -> Words:
+    """A range without unit for the second line of a cell; nothing without one, or where its ends read alike.
+
+    Parameters
+    ----------
+    like : Amount
+        Of the cell: its digits are the most that are shown.
+    ends : (float, float) or None
+        In SI, widened to hold the amount.
+
+    Returns
+    -------
+    Words
+
+    Examples
+    --------
+    >>> [part.digits for part in second_line(Amount(0.2, "share"), (0.1, 0.4)) if isinstance(part, Amount)]
+    [0, 0]
+    """
+    if ends is None:
+        return ()
+    ends = min(ends[0], like.value), max(ends[1], like.value)
+    digits = digits_for(like, ends)
+    low, high = (Amount(value, like.kind, digits, bare=True) for value in ends)
+    return () if round(_number(low), digits) == round(_number(high), digits) else (low, " to ", high)
 
 
 def _number(amount: Amount) -> float:

@@ -85,9 +85,8 @@ def test_cloud_depths_are_counted_from_the_crest(with_members):
     crest = crossing.features.crest
     assert crossing.cloud.base < crest
     base = np.linspace(crossing.cloud.base, crest + 500.0, spread.members)
-    heading = section_heading(
-        Spans(crossing, replace(spread, values=spread.values | {"cloud_base": base})), trace(crossing)
-    )
+    spread = replace(spread, full_values=spread.full_values | {"cloud_base": base})
+    heading = section_heading(Spans(crossing, spread), trace(crossing))
     high = crest - np.quantile(base, 0.1)
     amounts = [part.value for part in heading if isinstance(part, Amount)]
     assert amounts[:2] == [crest - crossing.cloud.base, 0.0]

@@ -317,6 +317,30 @@ def test_conditions_may_be_unknown(page_for, crossing):
     assert "no of ten conditions" in text_of(page.lee_wind.heading)
 
 
+def test_the_lee_wind_has_the_ranges_and_chances_of_its_members(page_for, with_members):
+    """Heading, methods, conditions and sites: shares counted by hand; the page without members has none of it."""
+    crossing, spread = with_members
+    wind = page_for(crossing, spread=spread).lee_wind
+    low, high = np.quantile(spread.full_values["lee_wind"], (0.1, 0.9))
+    shown = [amount.value for amount in amounts_in(wind.heading)]
+    assert shown[1:3] == pytest.approx([min(low, crossing.winds.strongest), max(high, crossing.winds.strongest)])
+    for row, one in zip(wind.methods[1:], crossing.winds.estimates, strict=True):
+        given = spread.values[f"lee_wind_{one.key}"]
+        assert row.applies.value == np.isfinite(given).mean()
+        ends = [amount.value for amount in amounts_in(row.spans["wind"])]
+        known = given[np.isfinite(given)]
+        if ends and known.size >= 5:
+            low, high = np.quantile(known, (0.1, 0.9))
+            assert ends == pytest.approx([min(low, one.wind), max(high, one.wind)])
+    for row, one in zip(wind.conditions, crossing.winds.conditions, strict=True):
+        assert row.chance.value == pytest.approx(np.nanmean(spread.values[f"windstorm_{one.key}"]))
+    assert all(row.spans["gusts"] for row in wind.sites if row.wind is not None)
+    bare = page_for(crossing).lee_wind
+    assert not bare.has_members
+    assert all(row.chance is None for row in bare.conditions)
+    assert all(row.applies is None for row in bare.methods)
+
+
 def test_site_winds_are_those_of_the_sites(page_for, any_crossing):
     for row in page_for(any_crossing).lee_wind.sites:
         site = any_crossing.lee[row.number - 1]
@@ -324,12 +348,13 @@ def test_site_winds_are_those_of_the_sites(page_for, any_crossing):
             assert row.at_10m is None
             assert row.remark
         else:
-            assert (row.wind.value, row.low.value, row.high.value) == (site.wind.wind, site.wind.low, site.wind.high)
-            assert (row.at_10m.value, row.gust_low.value, row.gust_high.value) == (
-                site.wind.at_10m,
-                site.wind.gust_low,
-                site.wind.gust_high,
-            )
+            assert (row.wind.value, row.at_10m.value) == (site.wind.wind, site.wind.at_10m)
+            for words, low, high in (
+                (row.methods, site.wind.low, site.wind.high),
+                (row.gusts, site.wind.gust_low, site.wind.gust_high),
+            ):
+                found = [amount.value for amount in amounts_in(words)]
+                assert found == ([low] if round(low) == round(high) else [low, high])
 
 
 # Sites, places, inputs

@@ -5,12 +5,14 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from orolift.crossing.layer_above import own_differences
 from orolift.crossing.member_values import band_name
 from orolift.crossing.members import Members, members_of
 from orolift.crossing.pool import Lee
 from orolift.crossing.rainfall import BAND_STEPS
 from orolift.crossing.result import Site, When
 from orolift.crossing.situation import crossing_of
+from orolift.flow.downslope import ESTIMATES
 from orolift.rain.winter import bands_of_sides
 from orolift.spread.at_sites import alike, spread_out
 from orolift.spread.draws import draws_of, variation_of
@@ -88,6 +90,19 @@ def test_the_budget_is_that_of_a_crossing_alone(both):
             assert sum(parts) == pytest.approx(found.sites["warming"][i, number], abs=1e-6)
 
 
+def test_the_layer_above_a_site_is_that_of_a_crossing_alone(both):
+    """Without the heat of the ground, to the 0.1 K that mixing by temperature instead of heat leaves open."""
+    found, alone = both
+    told = 0
+    for i, crossing in alone.items():
+        for number, place in enumerate(crossing.lee):
+            for name, value in own_differences(place).items():
+                here = found.sites[name][i, number]
+                assert (value is None and np.isnan(here)) or here == pytest.approx(value, abs=0.1), name
+                told += value is not None
+    assert told
+
+
 def test_the_whole_is_that_of_a_crossing_alone(both):
     """Blocking, cloud, rain and pressure."""
     found, alone = both
@@ -138,6 +153,21 @@ def test_rotation_matters_by_wind_and_stability(moist):
     number, radius = values["rossby_number"], values["deformation_radius"]
     assert number == pytest.approx(flow.rossby_number * values["cross_range_wind"] / flow.crest_wind)
     assert radius == pytest.approx(flow.deformation_radius * values["stability"] / flow.stability)
+
+
+def test_the_lee_wind_is_that_of_a_crossing_alone(both):
+    """The strongest, its place, each method and each condition: one solution for all members changes none."""
+    found, alone = both
+    for i, crossing in alone.items():
+        winds = crossing.winds
+        assert found.values["lee_wind"][i] == pytest.approx(winds.strongest, abs=0.05)
+        own = {one.key: one.wind for one in winds.estimates}
+        for key in ESTIMATES:
+            assert found.values[f"lee_wind_{key}"][i] == pytest.approx(own.get(key, np.nan), abs=0.1, nan_ok=True), key
+        for one in winds.conditions:
+            assert found.values[f"windstorm_{one.key}"][i] == one.met, one.key
+        held = sum(one.met is True for one in winds.conditions)
+        assert found.values["windstorm_conditions"][i] == held
 
 
 def test_a_member_without_enough_wind_is_no_error(calm):
