@@ -37,6 +37,14 @@ log = logging.getLogger(__name__)
 @file_option("--results", "Results to write as JSON.")
 @file_option("--netcdf", "Results to write as NetCDF (needs the extra 'netcdf').")
 @click.option("--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page.")
+@click.option(
+    "--members",
+    type=click.IntRange(min=0),
+    default=None,
+    metavar="M",
+    help="How often each hour is worked out for the ranges, 10 or more; 0 leaves them out. Default: as [spread], 32, "
+    "up to 100 hours; none in longer series.",
+)
 @JOBS_OPTION
 @SCHEDULER_OPTION
 @UNITS_OPTION
@@ -47,6 +55,7 @@ def command(
     series: str,
     *,
     folder: str | None,
+    members: int | None,
     jobs: int | None,
     scheduler: str | None,
     units: Units,
@@ -58,7 +67,7 @@ def command(
     SERIES is a CSV table of station values or of sounding files, each row with its time, or NetCDF with times.
     """
     from orolift.cli.folder import planned_files, where
-    from orolift.sources.hours_case import read_hours
+    from orolift.sources.hours_case import read_hours, with_members
     from orolift.spread.timeline import hours_of
 
     outputs = Outputs()
@@ -67,7 +76,7 @@ def command(
         from orolift.sources.hours_netcdf import refuse_without_netcdf
 
         refuse_without_netcdf("--netcdf")
-    setup = read_hours(case, series)
+    setup = with_members(read_hours(case, series), members)
     log.debug("%s and %s read, %d hours", case, series, setup.series.time.size)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
     if not found:
