@@ -178,8 +178,9 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
 
 def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[str]:
     """What happened, a line a site and one for the thresholds met at it, for at most five sites."""
-    from orolift.report.hours_page import about, dangers
-    from orolift.report.quantities import NO_BREAK_SPACE, quantity
+    from orolift.report.hours_words import about, dangers, total_rain
+    from orolift.report.quantities import NO_BREAK_SPACE, Amount
+    from orolift.report.spans import ranged
     from orolift.report.words import plain, zone_words
 
     zone = setup.series.zone
@@ -197,9 +198,11 @@ def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[
         ]
         more = f", and {len(site.dry_winds) - 2} more" if len(site.dry_winds) > 2 else ""
         dry = f"descending warm dry air from {', from '.join(spells)}{more}" if spells else "no descending warm dry air"
+        if site.ranges is not None:
+            dry += f" (in {100.0 * site.ranges.dry_wind.ever:.0f} % of the members)"
+        rain = plain(ranged(Amount(site.rain, "water_depth", 0), total_rain(site)), units).replace(NO_BREAK_SPACE, " ")
         lines.append(
-            f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; "
-            f"{quantity(site.rain, 'water_depth', 0, units).replace(NO_BREAK_SPACE, ' ')} of rain and snow"
+            f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; {rain} of rain and snow"
         )
         met = " ".join(plain(words, units) for words in dangers(site, zone)).replace("\u00a0", " ")
         lines += [f"Fire      {met} A threshold met is not a warning."] if met else []

@@ -77,6 +77,8 @@ class SiteTimeline:
     crossing_hours : int
     overtaken : int
         Hours whose air is caught up by faster air behind it.
+    dry_hours : float [s]
+        With descending warm dry air, all stretches together.
     ranges : SiteRanges or None
         None without members.
     """
@@ -91,6 +93,7 @@ class SiteTimeline:
     rain: float
     crossing_hours: int
     overtaken: int
+    dry_hours: float
     ranges: SiteRanges | None = None
 
 
@@ -212,6 +215,7 @@ def _timeline(
         rain=float(np.nansum(values_of(states, "rain"))) * step,
         crossing_hours=int(crosses.sum()),
         overtaken=int((arrival[crosses] < (time + way)[crosses]).sum()),
+        dry_hours=sum(one.descending is True for one in states) * step,
         ranges=site_ranges(
             [hour.members[number] if hour.members else None for hour in hours],
             [one.status for one in states],

@@ -82,6 +82,7 @@ class SiteRanges:
 
     Attributes
     ----------
+    members : int
     full, inputs : dict of str to ndarray (n, 2) [SI]
         10 and 90 % of `orolift.spread.hour_members.RANGED`, with the error of the method and without; NaN where there
         is none.
@@ -96,6 +97,7 @@ class SiteRanges:
         Of the region.
     """
 
+    members: int
     full: dict[str, Array]
     inputs: dict[str, Array]
     crosses: Array
@@ -161,6 +163,7 @@ def site_ranges(
     blank = np.full((2, len(RANGED), 2), np.nan)
     ends = np.array([blank if one is None or one.ends is None else one.ends for one in hours])
     return SiteRanges(
+        members=count,
         full={name: ends[:, 0, i] for i, name in enumerate(RANGED)},
         inputs={name: ends[:, 1, i] for i, name in enumerate(RANGED)},
         crosses=np.array([np.nan if one is None else _share(one.crosses[one.crosses >= 0]) for one in hours]),
@@ -254,7 +257,8 @@ def _happens(met: Flags, known: Flags, arrival: Array, step: float, answer: tupl
     """Something that holds or not in each hour and member, (n, m)."""
     met = met & known
     counted = known.any(axis=0)
-    sure_enough = known.mean(axis=1) >= 1.0 - MOST_UNJUDGED
+    enough = known.mean(axis=1) >= 1.0 - MOST_UNJUDGED
+    chance = [_share(now[sure]) if few else np.nan for now, sure, few in zip(met, known, enough, strict=True)]
     nothing = np.zeros(met.shape[0])
     each = [
         stretches(met[:, k].tolist(), known[:, k], arrival[:, k], nothing) if met[:, k].any() else ()
@@ -262,9 +266,7 @@ def _happens(met: Flags, known: Flags, arrival: Array, step: float, answer: tupl
     ]
     lasts = range_of(met[:, counted].sum(axis=0) * step)
     return HappensRange(
-        chance=np.array(
-            [_share(now[sure]) if few else np.nan for now, sure, few in zip(met, known, sure_enough, strict=True)]
-        ),
+        chance=np.array(chance),
         ever=_share(np.array([bool(found) for found in each])),
         lasts=lasts or (np.nan, np.nan),
         stretches=tuple(_in_members(one, each) for one in answer),
