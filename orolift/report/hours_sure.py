@@ -120,7 +120,7 @@ def _longest(site: SiteTimeline, ranges: SiteRanges, zone: tzinfo) -> Words:
 
 
 def between(ends: MaybeEnds, zone: tzinfo) -> str:
-    """When something lies between two times, in words, to ten minutes; one that lies before or after what can be judged is said to.
+    """When it is, between two times, in words and to ten minutes; one may lie before or after what can be judged.
 
     Parameters
     ----------

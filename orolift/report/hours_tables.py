@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.report.hours_sure import short_between
-from orolift.report.hours_words import about, stamp
+from orolift.report.hours_words import about, short_stamp, stamp
 from orolift.report.quantities import Amount, displayed
 from orolift.spread.timeline import values_of
 
@@ -163,8 +163,8 @@ def hour_row(hours: Hours, site: SiteTimeline, i: int, zone: tzinfo) -> HourRow:
         share = float(ranges.dry_wind.chance[i])
         chance = None if np.isnan(share) else Amount(share, "share")
     return HourRow(
-        arrival=stamp(site.arrival[i], zone) if np.isfinite(site.arrival_error[i]) else "–",
-        upwind=stamp(hours.time[i], zone),
+        arrival=short_stamp(site.arrival[i], zone) if np.isfinite(site.arrival_error[i]) else "–",
+        upwind=short_stamp(hours.time[i], zone),
         state=_state_words(state),
         code=code,
         chance=chance,

@@ -65,6 +65,28 @@ def stamp(seconds: float, zone: tzinfo) -> str:
     return f"{time.day} {month(time)} {time.year}, {time.hour:02d}:{time.minute:02d}"
 
 
+def short_stamp(seconds: float, zone: tzinfo) -> str:
+    """The same in short, for a table: its day is kept on one line.
+
+    Parameters
+    ----------
+    seconds : float [s]
+    zone : tzinfo
+
+    Returns
+    -------
+    str
+
+    Examples
+    --------
+    >>> short_stamp(1793741400.0, UTC).replace(NO_BREAK_SPACE, " ")
+    '3 Nov 2026, 21:30'
+    """
+    time = datetime.fromtimestamp(round(seconds / 60.0) * 60.0, zone)
+    date = f"{time.day} {month(time)[:3]} {time.year}".replace(" ", NO_BREAK_SPACE)
+    return f"{date}, {time.hour:02d}:{time.minute:02d}"
+
+
 def heading(hours: Hours) -> Words:
     """The whole series in a line.
 
