@@ -178,7 +178,7 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
 
 def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[str]:
     """What happened, a line a site and one for the thresholds met at it, for at most five sites."""
-    from orolift.report.hours_words import about, dangers, total_rain
+    from orolift.report.hours_words import about, dangers, likely_all_the_same, total_rain
     from orolift.report.quantities import NO_BREAK_SPACE, Amount
     from orolift.report.spans import ranged
     from orolift.report.words import plain, zone_words
@@ -206,6 +206,8 @@ def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[
         )
         met = " ".join(plain(words, units) for words in dangers(site, zone)).replace("\u00a0", " ")
         lines += [f"Fire      {met} A threshold met is not a warning."] if met else []
+        doubt = [plain(words, units).replace(NO_BREAK_SPACE, " ") for words in likely_all_the_same(site)]
+        lines += [f"Fire      {' '.join(doubt)}"] if doubt else []
     if len(hours.sites) > 5:
         lines.append(f"          and {len(hours.sites) - 5} more sites: see the report or --table")
     return lines

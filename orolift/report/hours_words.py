@@ -19,6 +19,8 @@ if TYPE_CHECKING:
 
 LEAST_RAIN = 0.1
 """Rain [kg m-2] below which none is said to fall."""
+LIKELY = 0.5
+"""Chance from which on a threshold is named at the head though the answer does not meet it; a judgement."""
 NAMED = 4
 """Sites named one by one at the head of the page."""
 
@@ -140,6 +142,7 @@ def lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
     if len(hours.sites) > NAMED:
         more = len(hours.sites) - NAMED
         out.append((f"{counted(more, 'more site follows', 'more sites follow')} below.".capitalize(),))
+    out += [words for site in hours.sites[:NAMED] for words in likely_all_the_same(site)]
     wettest = max(hours.sites, key=lambda site: site.rain)
     if wettest.rain >= LEAST_RAIN:
         rain = ranged(Amount(wettest.rain, "water_depth", 0), total_rain(wettest))
@@ -170,6 +173,30 @@ def outcome(site: SiteTimeline, zone: tzinfo) -> Words:
         return (f"Descending warm dry air is at {site.name} ", *_from_to(longest, zone))
     times = counted(len(found), "time", "times")
     return (f"Descending warm dry air comes to {site.name} {times}, longest ", *_from_to(longest, zone))
+
+
+def likely_all_the_same(site: SiteTimeline) -> tuple[Words, ...]:
+    """Thresholds that the answer does not meet at a site, and half of its members or more do in an hour or more.
+
+    Parameters
+    ----------
+    site : SiteTimeline
+
+    Returns
+    -------
+    tuple of Words
+        A sentence for each; none without members.
+    """
+    found = () if site.ranges is None else site.ranges.thresholds
+    return tuple(
+        (
+            f"Threshold not met at {site.name}: {one.rule.name}, but in ",
+            Amount(members.ever, "share"),
+            " of the members.",
+        )
+        for one, members in zip(site.thresholds, found, strict=False)
+        if not one.stretches and members.ever >= LIKELY
+    )
 
 
 def longest_of(found: Sequence[Stretch]) -> int:

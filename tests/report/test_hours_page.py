@@ -222,3 +222,18 @@ def test_pages_with_members_say_what_ranges_hold():
     assert len(made.how) > len(bare.how)
     assert "worked out once" in read(bare.cautions)
     assert "worked out once" not in read(made.cautions)
+
+
+def test_a_threshold_that_most_members_meet_is_named_at_the_head():
+    """The answer misses it; 12 of 20 members meet it, then 8: half of them is where it is named, and no warning."""
+    rule = Rule("dry", (Condition("relative_humidity", at_most=0.3),))
+    fire = FireSettings(rules=RuleSet("Tarn", "none", "2026-05-01", (rule,)))
+    state = SiteState("crossing", travel=Travel(HOUR, 0.0), temperature=290.0, rule_values={"relative_humidity": 0.35})
+    for count, named in ((12, True), (8, False)):
+        met = np.where(np.arange(20) < count, 1, -1)[np.newaxis].astype(np.int8)
+        nothing = np.zeros(20, np.bool_)
+        one = HourMembers(np.ones(20, np.int8), None, 1.0, 0.0, nothing, np.full((5, 20), np.nan, np.float32), met)
+        found = hours_of([Hour(0, START, (state,), members=(one,))], ["Tarn"], HOUR, planned=1, fire=fire)
+        made = hours_page(found, title="T", zone=UTC, made_at=datetime(2026, 1, 1, tzinfo=UTC), version="0", notes=())
+        assert ("Threshold not met at Tarn: dry, but in 60 % of the members." in read(made.lead)) is named
+        assert made.dangers == ()
