@@ -12,8 +12,6 @@ from orolift.checks import within
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
-OVERTURNING_BELL = 0.85
-"""N h / U at which the wave over a bell ridge overturns: Huppert and Miles (1969), J. Fluid Mech. 35, 481-496."""
 _ROUNDS = 400
 _CONVERGED = 1e-7
 

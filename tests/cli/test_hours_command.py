@@ -192,7 +192,10 @@ def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, ca
     ("arguments", "message"),
     [
         (["hours", "case.toml", "series.csv", "--table", "none/t.csv"], "none is not a folder. Make it first"),
-        (["hours", "case.toml", "series.csv", "--table", "a.x", "--results", "a.x"], "--table and --results both name"),
+        (
+            ["hours", "case.toml", "series.csv", "--table", "a.x", "--results", "a.x"],
+            "--results: a.x is already what --table writes",
+        ),
         (
             ["hours", "case.toml", "series.csv", "--table", "./series.csv"],
             "series.csv is an input of this run (series)",

@@ -147,7 +147,7 @@ def test_members_without_ice_are_some_of_them(moist, moist_crossing):
     assert liquid.sum() == 5
     change = np.abs(half.values["total"] - frozen.values["total"])
     assert change[~liquid].max() < 1e-2 * frozen.values["total"].max()
-    assert np.all(np.argsort(half.values["column_vapour"]) == np.argsort(frozen.values["column_vapour"]))
+    assert np.array_equal(half.values["column_vapour"][~liquid], frozen.values["column_vapour"][~liquid])
 
 
 def test_the_error_of_the_method_adds_its_variance(moist_crossing):
