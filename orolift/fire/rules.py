@@ -164,7 +164,7 @@ def rule_met(rule: Rule, values: Mapping[str | WindMeant, ArrayLike]) -> tuple[N
 
 
 def rule_parts(
-    rule: Rule, values: Mapping[str | WindMeant, ArrayLike], *, without: Collection[str] = ()
+    rule: Rule, values: Mapping[str | WindMeant, ArrayLike], *, without: Collection[str | WindMeant] = ()
 ) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
     """Whether members or hours meet some conditions of a rule, and whether they miss one of them.
 
@@ -172,8 +172,8 @@ def rule_parts(
     ----------
     rule : Rule
     values : mapping of quantity to array_like (...)
-    without : collection of str
-        Quantities whose conditions are left out.
+    without : collection of quantities
+        Those whose conditions are left out.
 
     Returns
     -------

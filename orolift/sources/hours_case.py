@@ -180,7 +180,7 @@ def with_members(setup: HourSetup, members: int | None = None) -> HourSetup:
     if members is None and count > USUAL_HOURS:
         note = (
             f"Ranges and chances are left out: the series has more than {USUAL_HOURS} hours, and with members every "
-            f"hour takes some ten times as long. --members {USUAL_MEMBERS} works them out."
+            f"hour takes twenty to thirty times as long. --members {USUAL_MEMBERS} works them out."
         )
         return replace(setup, drawn=None, notes=(*setup.notes, note))
     drawn = drawn_of(setup.inputs.case, members)

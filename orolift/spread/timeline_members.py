@@ -18,9 +18,10 @@ from orolift.spread.stretches import arrivals, stretches
 if TYPE_CHECKING:
     from collections.abc import Mapping, Sequence
 
-    from numpy.typing import NDArray
+    from numpy.typing import ArrayLike, NDArray
 
     from orolift.fire.rules import Rule
+    from orolift.fire.winds import WindMeant
     from orolift.spread.hours import LineRain
     from orolift.spread.site_state import Status
     from orolift.spread.stretches import Stretch
@@ -243,7 +244,7 @@ def _rule(
     spread = np.full(codes.shape, np.nan)
     spread[both] = initial_spread_index(codes[both], wind[both])
     others = {one.quantity for one in rule.conditions}.difference(CODES)
-    values = {"fine_fuel_code": codes, "initial_spread_index": spread}
+    values: dict[str | WindMeant, ArrayLike] = {"fine_fuel_code": codes, "initial_spread_index": spread}
     met, missed = rule_parts(rule, values, without=others)
     met, missed = (parts > 0) & met, (parts < 0) | missed
     return met & (state > 0), ((met | missed) & (state > 0)) | (state == 0)
@@ -320,4 +321,5 @@ def total_range(answer: float, rain: Sequence[LineRain | None]) -> Ends | None:
     whole = sum(one.answer for one in lines)
     if whole < LEAST_LINE_RAIN:
         return None
-    return range_of(answer * np.sum([one.members for one in lines], axis=0, dtype=np.float64) / whole)
+    each = np.asarray(np.sum([one.members for one in lines], axis=0, dtype=np.float64))
+    return range_of(answer * each / whole)
