@@ -166,7 +166,8 @@ def with_members(dry, rain=0.0):
         )
         values = np.broadcast_arrays(290.15, 0.4, np.nan, rain * (1.0 + 0.05 * number), HOUR, number)[:-1]
         ends = np.full((2, len(RANGED), 2), np.nan)
-        ends[:, 0] = 288.15, 293.15
+        ends[:, RANGED.index("temperature")] = 288.15, 293.15
+        ends[:, RANGED.index("wind_10m")] = 4.0, 8.0  # of members out of the pool that the answer lies in
         one = HourMembers(np.ones(20, np.int8), ends, 1.0, 0.0, number < count, np.array(values, np.float32))
         hours.append(Hour(i, START + i * HOUR, (state,), members=(one,)))
     found = hours_of(hours, ["Tarn"], HOUR, planned=len(hours))
@@ -207,8 +208,10 @@ def test_rain_of_the_hours_has_the_range_of_the_members():
 
 
 def test_bands_lie_around_their_line_and_only_there():
-    """One band of the temperature, none where there is no answer; and none of them without members."""
-    panel = with_members([0, 20, 20, 0]).sites[0].figure.drawing.panels[1]
+    """One band of the temperature, none of the wind, which has no answer; and none of them without members."""
+    panels = with_members([0, 20, 20, 0]).sites[0].figure.drawing.panels
+    assert not any("between" in curve.kind for curve in panels[3].curves)
+    panel = panels[1]
     bands = [curve for curve in panel.curves if "warm-between" in curve.kind]
     line = next(curve for curve in panel.curves if curve.kind == "warm")
     heights = [[float(y) for y in re.findall(r"[ML][\d.]+[ ,]([\d.]+)", curve.path)] for curve in (bands[0], line)]

@@ -2,6 +2,7 @@
 
 from concurrent.futures import ProcessPoolExecutor
 from dataclasses import fields, replace
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -13,7 +14,7 @@ from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.sites import FireSettings, fire_at_sites
 from orolift.sources.hours_case import USUAL_HOURS, hour_task, hour_tasks, read_hours, with_members
 from orolift.spread.engine import in_order, outcomes
-from orolift.spread.hour_members import RANGED
+from orolift.spread.hour_members import RANGED, descending_members
 from orolift.spread.hours import worked_hour
 from orolift.spread.ranges import range_of
 from orolift.spread.spread import spread_of
@@ -124,6 +125,28 @@ def test_members_with_more_wind_are_there_earlier(constant):
     way = hours[0].members[0].carried[4]
     assert np.corrcoef(one.values["cross_range_wind"], 1.0 / way)[0, 1] > 0.8
     assert way.std() / way.mean() > 0.1
+
+
+def test_members_are_dry_wind_by_the_definition_of_the_answer():
+    """Air as warm as over the crest, and drier; but beside it, in a pool, kept off, moister, or not there it is not."""
+    site = SimpleNamespace(side="lee")
+    names = ("in_pool", "kept_off", "relative_humidity", "warming", "temperature")
+    rows = np.array(
+        [
+            # pool, kept off, humidity, warming, temperature at 1000 hPa
+            [0.0, 0.0, 0.3, 8.0, 298.0],
+            [0.0, 0.0, 0.3, 1.5, 291.5],
+            [1.0, 0.0, 0.3, 8.0, 298.0],
+            [0.0, 1.0, 0.3, 8.0, 298.0],
+            [0.0, 0.0, 0.7, 8.0, 298.0],
+            [np.nan, np.nan, np.nan, np.nan, np.nan],
+        ]
+    )
+    members = dict(zip(names, rows.T, strict=True))
+    beside = {"pressure": 1e5, "potential_beside": 290.0, "potential_crest": 300.0, "humidity_beside": 0.6}
+    members |= {name: np.full(6, value) for name, value in beside.items()}
+    assert descending_members(site, members).tolist() == [True, False, False, False, False, False]
+    assert not descending_members(SimpleNamespace(side="windward"), members).any()
 
 
 def test_thresholds_in_members_are_those_of_fire_weather(constant):
