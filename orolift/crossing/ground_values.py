@@ -11,8 +11,8 @@ from orolift.air.column import interpolated
 from orolift.air.parcel import Parcel, enthalpy, entropy, equilibrium_from_enthalpy, equilibrium_from_entropy
 from orolift.constants import REFERENCE_PRESSURE
 from orolift.crossing.arrival import SAMPLES, Here, frozen_temperature, lee_profile, pressure_at, sampled, with_ground
+from orolift.crossing.cloud import HIGHEST_CLOUD
 from orolift.crossing.crossing import crest_component, ground_under
-from orolift.crossing.facts import HIGHEST_CLOUD
 from orolift.crossing.heat import ground_change, surface_heat
 from orolift.crossing.picture import CREST_BAND
 from orolift.crossing.pool import Lee, pool_air

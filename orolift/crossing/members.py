@@ -7,18 +7,18 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from orolift.air.column import column_vapour, freezing_level, interpolated, vapour_flux, wind_component
+from orolift.air.column import column_vapour, freezing_level, interpolated, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.air.temperature import potential_temperature
 from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
-from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, cloud_bases, low_breaking, pressure_differences
+from orolift.crossing.lee_wind import lee_wind_arrays, lee_winds
+from orolift.crossing.member_values import flow_values, rain_values, steps_across
 from orolift.crossing.picture import popular_picture, upwind_ground_air
-from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air
+from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import Site, WarmingParts, When
 from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import Arrived, arrived
 from orolift.crossing.solve import NOTHING, solve
-from orolift.crossing.sun import sun_height
 from orolift.crossing.way import way_to
 from orolift.crossing.wind import winds_at
 from orolift.terrain.features import features
@@ -136,9 +136,11 @@ def members_of(
         solution.going_round[:] = np.where(blocked, part.share(solution.going_round), 0.0)
     known = (lee if isinstance(lee, Lee) else lee[0]).known
     freezing = settings.freezing
-    flow = _of_flow(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
+    flow = flow_values(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
     values |= _filled(flow, crosses)
-    values |= _filled(_of_rain(ground, solution, part.incoming, situation.background), crosses)
+    winds = lee_winds(ground, solution, crest_wind[crosses], flow["pressure_difference"])
+    values |= _filled(lee_wind_arrays(winds), crosses)
+    values |= _filled(rain_values(ground, solution, part.incoming, situation.background), crosses)
     at = [
         _filled(
             _of_site(site, ground, solution, part, when, situation.background)
@@ -242,62 +244,6 @@ def _of_incoming(air: IncomingAir) -> dict[str, Array]:
     }
 
 
-def _of_flow(
-    ground: Ground, solution: Solution, crest_wind: Array, when: When, *, known: bool, freezing: bool
-) -> dict[str, Array]:
-    """How the air of each member meets the range."""
-    blocked = solution.blocking
-    each = np.broadcast_shapes(solution.blocked_top.shape, crest_wind.shape)
-    through = np.array([pool is None for pool in solution.pools], dtype=np.float64)
-    sun = None
-    if when.time is not None and when.longitude is not None and when.latitude is not None:
-        sun = float(sun_height(when.time, when.longitude, when.latitude))
-    chance = through if known else np.array([chance_of_breaking_through(sun, float(wind)) for wind in crest_wind])
-    return {
-        "stability": np.broadcast_to(blocked.stability, each),
-        "nondimensional_height": np.broadcast_to(
-            np.minimum(blocked.nondimensional_height, LARGEST_NONDIMENSIONAL), each
-        ),
-        "dividing_height": np.broadcast_to(blocked.dividing_height, each),
-        "blocked_top": solution.blocked_top,
-        "blocked": (solution.blocked_top > ground.shape.base + NOTHING).astype(np.float64),
-        "going_round_share": solution.going_round,
-        "cloud_base": cloud_bases(solution, ground.shape, ground.transect.distance, freezing=freezing),
-        "breaks_through": chance,
-        "wave_breaking": low_breaking(solution, ground.shape.crest).astype(np.float64),
-        "pressure_difference": pressure_differences(ground, solution),
-    }
-
-
-def _of_rain(ground: Ground, solution: Solution, incoming: IncomingAir, background: float) -> dict[str, Array]:
-    """Water of each member, as `facts.water` and `rainfall.rainfall` give it of one."""
-    streams = solution.streams
-    x = ground.transect.distance[streams.place]
-    rate = streams.falling.landed / _steps(ground, x)[:, np.newaxis]
-    landed = streams.falling.landed
-    total = landed.sum(axis=0)
-    wet = total > 0.0
-    share_of = np.where(wet, total, np.nan)
-    vapour = np.sum(streams.carried * streams.start.vapour, axis=-1)
-    condensed = np.sum(streams.carried * streams.air.condensed.sum(axis=0), axis=-1)
-    column = vapour_flux(incoming, ground.normal)
-    return {
-        "rain_out_share": total / np.where(condensed > 0.0, condensed, np.nan),
-        "drying_ratio": total / vapour,
-        "drying_ratio_full_column": total / np.where(column > 0.0, column, np.nan),
-        "windward_share": landed[x <= ground.shape.crest_distance].sum(axis=0) / share_of,
-        "snow_share": streams.falling.landed_snow.sum(axis=0) / share_of,
-        "peak_rate": rate.max(axis=0) + background,
-        "peak_distance": np.where(wet, x[np.argmax(rate, axis=0)], np.nan),
-        "total": total,
-    }
-
-
-def _steps(ground: Ground, x: Array) -> Array:
-    """Length along the range normal of the step that ends at each place of the march [m]."""
-    return np.diff(x, prepend=x[0] - (x[1] - x[0])) * ground.cosine
-
-
 def _of_site(
     site: Site, ground: Ground, solution: Solution, variation: Variation, when: When, background: float
 ) -> dict[str, Array]:
@@ -318,7 +264,7 @@ def _of_site(
     level[pooled] = np.nan
     picture = popular_picture(upwind_ground_air(incoming), upwind.pressure[:, 1], p_up, freezing=settings.freezing)
     x = ground.transect.distance[solution.streams.place]
-    rate = solution.streams.falling.landed / _steps(ground, x)[:, np.newaxis]
+    rate = solution.streams.falling.landed / steps_across(ground, x)[:, np.newaxis]
     after = int(np.clip(np.searchsorted(x, site.distance), 1, x.size - 1))
     way = float(np.clip((site.distance - x[after - 1]) / (x[after] - x[after - 1]), 0.0, 1.0))
     return {
@@ -333,6 +279,8 @@ def _of_site(
         "source_level_low": level[:, 0],
         "source_level": level[:, 1],
         "source_level_high": level[:, 2],
+        "upwind_temperature": t_up,
+        "upwind_dew_point": _dew_point(p_up, upwind.vapour[:, 0]),
         "warming": t - t_up,
         "potential_beside": potential_temperature(p_up, t_up),
         "potential_crest": potential_temperature(upwind.pressure[:, 1], upwind.temperature[:, 1]),

@@ -9,7 +9,15 @@ import numpy as np
 
 from orolift.crossing.members import Members, crossing_members, members_of
 from orolift.errors import OroliftError, OutOfRangeError
-from orolift.spread.at_sites import alike, centred, on_the_line, shadows, spread_out, with_method_error
+from orolift.spread.at_sites import (
+    alike,
+    centred,
+    on_the_line,
+    shadows,
+    spread_out,
+    values_with_method_error,
+    with_method_error,
+)
 from orolift.spread.draws import columns, draws_of, variation_of, what_varies
 from orolift.spread.engine import in_order, outcomes
 from orolift.spread.uncertainty import COLUMNS, METHOD, Uncertainty, checked, latin_hypercube, normal
@@ -83,8 +91,8 @@ class Spread:
     crosses : ndarray of bool, (m,)
     values, sites : dict of str to ndarray
         As in `orolift.crossing.members.Members`: of the inputs alone.
-    full_sites : dict of str to ndarray (m, ns)
-        `sites` with the error of the method.
+    full_values, full_sites : dict of str to ndarray (m,) and (m, ns)
+        `values` and `sites` with the error of the method, where it is stated.
     failed : tuple of Failed
         Members that could not be worked out; they count nowhere.
     """
@@ -97,6 +105,7 @@ class Spread:
     crosses: NDArray[np.bool_]
     values: dict[str, Array]
     sites: dict[str, Array]
+    full_values: dict[str, Array]
     full_sites: dict[str, Array]
     failed: tuple[Failed, ...]
 
@@ -200,7 +209,7 @@ def spread_of(
     if beside:
         whole = centred(spread_out(whole, len(on_the_line(crossing)), back), crossing)
     named = dict(zip(COLUMNS, level.T, strict=True))
-    full = with_method_error(whole.sites, crossing, uncertainty, {name: normal(named[name]) for name in METHOD})
+    error = {name: normal(named[name]) for name in METHOD}
     return Spread(
         members=members,
         seed=seed,
@@ -210,7 +219,8 @@ def spread_of(
         crosses=whole.crosses,
         values=whole.values,
         sites=whole.sites,
-        full_sites=full,
+        full_values=values_with_method_error(whole.values, crossing, error),
+        full_sites=with_method_error(whole.sites, crossing, uncertainty, error),
         failed=tuple(failed),
     )
 

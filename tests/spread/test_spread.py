@@ -10,7 +10,7 @@ from orolift.cli.executors import executor_of
 from orolift.crossing.situation import crossing_of
 from orolift.errors import OutOfRangeError
 from orolift.spread import spread as module
-from orolift.spread.at_sites import with_method_error
+from orolift.spread.at_sites import values_with_method_error, with_method_error
 from orolift.spread.ranges import range_of, remarks
 from orolift.spread.spread import spread_of
 from orolift.spread.uncertainty import INPUTS, METHOD, Uncertainty, latin_hypercube, normal
@@ -180,6 +180,18 @@ def test_the_error_of_the_method_adds_its_variance(moist_crossing):
     again = with_method_error(sites, moist_crossing, Uncertainty(model_temperature=0.0, model_vapour=0.0), z)
     np.testing.assert_allclose(again["temperature"], sites["temperature"])
     np.testing.assert_allclose(again["mixing_ratio"], sites["mixing_ratio"])
+
+
+def test_the_lee_wind_without_doubt_about_the_air_is_that_of_the_methods(moist, moist_crossing):
+    """By the inputs its range closes on the answer; in full its 10 and 90 % are the range of the methods."""
+    spread = spread_of(moist, moist_crossing, NONE, members=10, seed=1)
+    winds = moist_crossing.winds
+    np.testing.assert_allclose(spread.values["lee_wind"], winds.strongest, atol=0.02)
+    assert np.all(spread.values["windstorm_conditions"] == sum(one.met is True for one in winds.conditions))
+    z = {"model_wind": normal(latin_hypercube(400, 3, 1)[:, 2])}
+    apart = replace(moist_crossing, winds=replace(winds, strongest=20.0, low=16.0, high=30.0))
+    full = values_with_method_error({"lee_wind": np.full(400, 20.0)}, apart, z)
+    assert range_of(full["lee_wind"]) == pytest.approx((16.0, 30.0), rel=0.02)
 
 
 @pytest.mark.parametrize(
