@@ -39,6 +39,7 @@ def about(seconds: float, error: float, zone: tzinfo) -> str:
 
     Examples
     --------
+    >>> from datetime import UTC
     >>> about(1793741400.0, 5000.0, UTC), about(1793741700.0, 900.0, UTC)
     ('3 November 2026, 21:30', '3 November 2026, 21:40')
     """
@@ -60,6 +61,7 @@ def stamp(seconds: float, zone: tzinfo) -> str:
 
     Examples
     --------
+    >>> from datetime import UTC
     >>> stamp(1793741400.0, UTC)
     '3 November 2026, 21:30'
     """
@@ -81,6 +83,7 @@ def short_stamp(seconds: float, zone: tzinfo) -> str:
 
     Examples
     --------
+    >>> from datetime import UTC
     >>> short_stamp(1793741400.0, UTC).replace(NO_BREAK_SPACE, " ")
     '3 Nov 2026, 21:30'
     """

@@ -21,7 +21,7 @@ if TYPE_CHECKING:
 
     from numpy.typing import NDArray
 
-    from orolift.crossing.result import Crossing, LeeAir
+    from orolift.crossing.result import Crossing, LeeAir, When
     from orolift.fire.sites import FireSettings
     from orolift.spread.site_state import SiteMembers, SiteState
 
@@ -70,7 +70,11 @@ class HourMembers:
 
 
 def hour_members(
-    state: SiteState, site: LeeAir | None, crossing: Crossing | None, fire: FireSettings | None = None
+    state: SiteState,
+    site: LeeAir | None,
+    crossing: Crossing | None,
+    fire: FireSettings | None = None,
+    when: When | None = None,
 ) -> HourMembers | None:
     """What the members of an hour say of a site.
 
@@ -83,6 +87,8 @@ def hour_members(
     crossing : Crossing or None
     fire : FireSettings, optional
         With the thresholds of a region.
+    when : When, optional
+        Time and place, for the depth of mixing.
 
     Returns
     -------
@@ -104,7 +110,7 @@ def hour_members(
         in_pool=_share(inputs["in_pool"]),
         descending=descending_members(site, full),
         carried=np.array([full[name] for name in CARRIED], dtype=np.float32),
-        rules=_rules(state, site, crossing, members, fire),
+        rules=_rules(site, crossing, members, fire, when),
     )
 
 
@@ -145,7 +151,7 @@ def _share(happens: Array) -> float:
 
 
 def _rules(
-    state: SiteState, site: LeeAir, crossing: Crossing, members: SiteMembers, fire: FireSettings | None
+    site: LeeAir, crossing: Crossing, members: SiteMembers, fire: FireSettings | None, when: When | None
 ) -> NDArray[np.int8] | None:
     """Each threshold in each member, its codes apart."""
     if fire is None or fire.rules is None:
@@ -155,7 +161,8 @@ def _rules(
         members.full,
         fire,
         float(np.asarray(crossing.settings.roughness)),
-        (state.rule_values or {}).get("mixing_height", np.nan),
+        (site.elevation, crossing.features.crest),
+        when,
     )
     out = np.zeros((len(fire.rules.rules), members.crosses.size), dtype=np.int8)
     for number, rule in enumerate(fire.rules.rules):

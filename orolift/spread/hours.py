@@ -162,7 +162,7 @@ def worked_hour(task: HourTask) -> Hour:
         sites = (None,) * len(found) if crossing is None else crossing.lee
         for number, state, site in zip(line.numbers, found, sites, strict=True):
             states[number] = replace(state, members=None)
-            members[number] = hour_members(state, site, crossing, task.fire)
+            members[number] = hour_members(state, site, crossing, task.fire, situation.when)
     rates = _catchment_rates(task.ground, first)
     return Hour(task.number, task.time, tuple(states), rates, tuple(members), rain)
 

@@ -12,10 +12,11 @@ from orolift.errors import CaseError
 from orolift.fire.chances import with_members as fire_with_members
 from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.sites import FireSettings, fire_at_sites
+from orolift.fire.winds import WindMeant
 from orolift.sources.hours_case import USUAL_HOURS, hour_task, hour_tasks, read_hours, with_members
 from orolift.spread.engine import in_order, outcomes
 from orolift.spread.hour_members import RANGED, descending_members
-from orolift.spread.hours import worked_hour
+from orolift.spread.hours import when_there, worked_hour
 from orolift.spread.ranges import range_of
 from orolift.spread.spread import spread_of
 from orolift.spread.uncertainty import Uncertainty
@@ -23,6 +24,8 @@ from orolift.spread.uncertainty import Uncertainty
 CASE = """
 [terrain]
 ridge_km_m = [[0, 40], [25, 1250], [60, 210]]
+longitude = -121.1
+latitude = -46.95
 [incoming]
 wind_from_deg = 235
 lapse_rate_c_per_km = 4
@@ -72,21 +75,24 @@ def constant(tmp_path_factory):
     return found, [worked_hour(task) for task in hour_tasks(found)]
 
 
+def alone(task):
+    """The situation of an hour, as one crossing works it out."""
+    return replace(task.lines[0].situation, when=when_there(task.lines[0], task.time))
+
+
 def test_hours_of_a_constant_series_have_the_ranges_of_one_crossing(constant):
-    """Law: the same seed draws the same, whether for one crossing or for any of the hours."""
+    """Law: the same seed draws the same, whether for one crossing or for any of the hours; only the sun differs."""
     found, hours = constant
-    task = hour_task(found, 0)
-    situation = task.lines[0].situation
-    one = spread_of(situation, crossing_of(situation), task.drawn.uncertainty, members=20, seed=5)
-    for hour in hours:
+    for task, hour in zip(hour_tasks(found), hours, strict=True):
+        situation = alone(task)
+        one = spread_of(situation, crossing_of(situation), task.drawn.uncertainty, members=20, seed=5)
         ends = hour.members[0].ends
         for number, arrays in enumerate((one.full_sites, one.sites)):
             expected = np.array([range_of(arrays[name][:, 0]) for name in RANGED])
             assert ends[number] == pytest.approx(expected, rel=1e-12)
         assert hour.members[0].crosses.tolist() == one.crosses.astype(int).tolist()
-        assert hour.line_rain.members == pytest.approx(
-            one.values["total"] / situation.transect.distance[-1], rel=0.02, abs=1e-12
-        )
+        rain = one.values["total"] / situation.transect.distance[-1]
+        assert hour.line_rain.members == pytest.approx(rain, rel=0.02, abs=1e-12)
     assert hours[0].sites[0].members is None  # put in short, and gone
 
 
@@ -150,17 +156,25 @@ def test_members_are_dry_wind_by_the_definition_of_the_answer():
 
 
 def test_thresholds_in_members_are_those_of_fire_weather(constant):
-    """The chance of an hour is the chance that fire weather of the same crossing gives."""
-    found, hours = constant
-    task = hour_task(found, 0)
-    situation = task.lines[0].situation
+    """The chance of an hour is the chance that fire weather of the same crossing gives, the depth of mixing too."""
+    found, _ = constant
+    rules = (
+        Rule("dry", (Condition("relative_humidity", at_most=0.65),)),
+        Rule("deep", (Condition("mixing_height", at_least=1100.0),)),
+        Rule("windy", (Condition(WindMeant(6.1, "gust", 3.0), at_least=23.0),)),
+    )
+    task = replace(hour_task(found, 0), fire=FireSettings(rules=RuleSet("Tarn", "none", "2026-05-01", rules)))
+    situation = alone(task)
     crossing = crossing_of(situation)
     one = spread_of(situation, crossing, task.drawn.uncertainty, members=20, seed=5)
     fire = fire_at_sites(crossing, situation.when, task.fire)[0]
     here = {name: value[:, 0] for name, value in one.full_sites.items()}
-    chance = fire_with_members(fire, here, task.fire, 0.05).thresholds[0].judged.chance
-    assert 0.1 < chance < 1.0
-    assert (hours[0].members[0].rules[0] == 1).mean() == pytest.approx(chance)
+    roughness = float(crossing.settings.roughness)
+    expected = fire_with_members(fire, here, task.fire, roughness, situation.when).thresholds
+    members = worked_hour(task).members[0].rules
+    for number, threshold in enumerate(expected):
+        assert 0.0 < threshold.judged.chance < 1.0
+        assert (members[number] == 1).mean() == pytest.approx(threshold.judged.chance)
 
 
 def test_codes_are_left_to_the_hours(constant):
