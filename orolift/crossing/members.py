@@ -11,6 +11,7 @@ from orolift.air.column import column_vapour, freezing_level, interpolated, wind
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.air.temperature import potential_temperature
 from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
+from orolift.crossing.layer_above import differences
 from orolift.crossing.lee_wind import lee_wind_arrays, lee_winds
 from orolift.crossing.member_values import flow_values, rain_values, steps_across
 from orolift.crossing.picture import popular_picture, upwind_ground_air
@@ -259,6 +260,7 @@ def _of_site(
     pooled = _in_pools(place, solution, t, v)
     gone = pooled | blocked
     wind = winds_at(place.here, settings.roughness)
+    above = differences(place, incoming, solution, t, place.came.warming.surface_heating)
     nothing = np.where(pooled, np.nan, np.where(blocked, 0.0, 1.0))
     level = np.where(blocked[:, np.newaxis], place.elevation, place.came.source_level)
     level[pooled] = np.nan
@@ -287,6 +289,7 @@ def _of_site(
         "humidity_beside": relative_humidity_from_mixing_ratio(p_up, t_up, upwind.vapour[:, 0]),
         "kept_off": np.array([pool is not None for pool in solution.pools], dtype=np.float64),
         **{f"warming_{name}": nothing * getattr(place.came.warming, name) for name in PARTS},
+        **{name: np.where(gone, np.nan, value) for name, value in above.items()},
         "popular_picture": picture.temperature,
         "descent_only": t_up + nothing * place.came.warming.descent,
         "went_round": np.where(pooled, 0.0, place.came.went_round),

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, TypeVar
 
 import numpy as np
 
+from orolift.crossing.layer_above import HEIGHTS, NAMES
 from orolift.crossing.result import When
 from orolift.fire.dryness import HIGHEST_TEMPERATURE, LOWEST_TEMPERATURE
 from orolift.fire.indices import HOURS, site_fire
@@ -14,6 +15,7 @@ from orolift.fire.nights import night_values
 from orolift.fire.rules import with_chance
 from orolift.fire.values import INDICES, site_values
 from orolift.fire.weather import LEAST_VAPOUR
+from orolift.flow.profiles import value_at
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -77,8 +79,9 @@ def with_members(
 
     Notes
     -----
-    The layer over the site, which Hot-Dry-Windy and the night take, is moved with each member: by the difference in
-    temperature, and in the ratio of vapour and of wind; its heat from the ground in the ratio of that of the site.
+    The layer over the site, which Hot-Dry-Windy and the night take, is moved with each member: in temperature by that
+    at the site and by the difference between the two (`crossing.layer_above`), where the members tell it; in the ratio
+    of vapour and of wind; its heat from the ground in the ratio of that of the site.
     """
     both = dict(members) if inputs is None else {name: np.append(members[name], inputs[name]) for name in members}
     arrays, there = _with_air(both)
@@ -208,7 +211,6 @@ def _values(
 def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:
     """The members' air at the site, the layer above moved with it."""
     wind, gust, vapour = arrays["wind_10m"], arrays["gust"], np.maximum(arrays["mixing_ratio"], LEAST_VAPOUR)
-    warmer = arrays["temperature"] - answer.temperature
     faster = np.ones_like(wind)
     if float(np.nan_to_num(answer.wind)) > 0.0:
         faster = np.where(np.isfinite(wind), wind / answer.wind, 1.0)
@@ -217,6 +219,9 @@ def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:
     heating = np.nan_to_num(arrays.get("warming_surface_heating", np.full_like(vapour, answer.heating)))
     heated = abs(float(answer.heating)) > 0.0
     share = heating / float(answer.heating) if heated else np.ones_like(heating)
+    base = arrays["temperature"] - heating
+    own = answer.layer_temperature - answer.layer_heating - (answer.temperature - answer.heating)
+    layer_heating = answer.layer_heating * share[:, np.newaxis]
     return replace(
         answer,
         pressure=arrays["pressure"],
@@ -228,12 +233,25 @@ def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:
         wind_high=wind,
         gust_low=gust,
         gust_high=gust,
-        layer_temperature=answer.layer_temperature + warmer[:, np.newaxis],
+        layer_temperature=base[:, np.newaxis] + own + _less_stable(answer, own, arrays) + layer_heating,
         layer_vapour=np.maximum(answer.layer_vapour * ratio, LEAST_VAPOUR),
         layer_wind=answer.layer_wind * faster[:, np.newaxis],
         heating=heating,
-        layer_heating=answer.layer_heating * share[:, np.newaxis],
+        layer_heating=layer_heating,
     )
+
+
+def _less_stable(answer: SiteWeather, own: Array, arrays: Mapping[str, Array]) -> Array:
+    """By how much more than in the answer the layer over each member is warmer than its ground, (m, nz) [K].
+
+    Nothing where members do not tell, as in a pool.
+    """
+    z, count = answer.height_above_ground, arrays["temperature"].size
+    nothing = np.zeros((count, 1))
+    if not set(NAMES) <= arrays.keys():
+        return nothing
+    found = np.stack([arrays[name] for name in NAMES], axis=-1) - np.interp(HEIGHTS, z, own)
+    return value_at(np.array([0.0, *HEIGHTS]), np.concatenate([nothing, np.nan_to_num(found)], axis=1), z)
 
 
 def _range(values: Array) -> tuple[float, float] | None:

@@ -38,7 +38,7 @@ _LINEAR = (
     "Streamlines are those of linear waves: position and size of single waves and of the strongest wind are less sure "
     "than how high the air comes from."
 )
-_RANGE_OF_MEMBERS = (
+RANGE_OF_MEMBERS = (
     "How much low air is blocked and how much of it goes round decides the lee temperature, and real ranges scatter "
     "about the thresholds. The ranges in brackets hold the middle eight tenths of the members, that scatter among "
     "what they differ in; for rain, cloud and heights the error of the method comes on top and is not in them."
@@ -91,7 +91,7 @@ def cautions(spans: Spans, valid_time: datetime | None) -> Cautions:
         here = (*here, ("The case names no valid time: heat from the ground, by day and by night, is left out.",))
     return Cautions(
         heading=("An estimate, to be judged by a trained reader",),
-        always=(*ALWAYS, (_RANGE_OF_MEMBERS,))
+        always=(*ALWAYS, (RANGE_OF_MEMBERS,))
         if spans.spread is not None
         else (*ALWAYS, (_RANGE_OF_FLOW,), (_NO_MEMBERS,)),
         here=here,

@@ -348,11 +348,6 @@ _NIGHT = (
     "all night. Mixing is by the heat of the ground alone; wind mixes deeper."
 )
 
-_NARROW = (
-    " In each member the layer over a site is as stable as in the answer: the ranges of the depth of mixing are too "
-    "narrow."
-)
-
 
 def _remarks(found: tuple[SiteFire, ...]) -> tuple[Words, ...]:
     """How to read the numbers in this case."""
@@ -374,5 +369,4 @@ def _remarks(found: tuple[SiteFire, ...]) -> tuple[Words, ...]:
 def _night_remark(site: SiteFire) -> Words:
     night = site.night
     how = "" if night.length_known else " (assumed: time or place is not known)"
-    told = _NIGHT + (_NARROW if site.ranges else "")
-    return ("Highest relative humidity of the coming night, ", Amount(night.length, "hours", 1), f" long{how},", told)
+    return ("Highest relative humidity of the coming night, ", Amount(night.length, "hours", 1), f" long{how},", _NIGHT)

@@ -18,8 +18,9 @@ if TYPE_CHECKING:
 
 Ends = list[tuple[float, float] | None]
 Chances = list[float | None]
+Keys = dict[str, tuple[str, float, float]]
 
-RANGED = {
+RANGED: Keys = {
     **{
         key: KEYS["lee"][key]
         for key in ("temperature_c", "dew_point_c", "relative_humidity_percent", "wind_10m_ms", "gust_ms", "warming_c")
@@ -62,27 +63,29 @@ def members_block(drawn: Drawn | None) -> MembersBlock | None:
     return None if drawn is None else MembersBlock(members=drawn.members, seed=drawn.seed)
 
 
-def state_ranges(states: Sequence[SiteState]) -> StateRangesBlock:
+def state_ranges(states: Sequence[SiteState], keys: Keys = RANGED) -> StateRangesBlock:
     """Ranges and chances of one site.
 
     Parameters
     ----------
     states : sequence of SiteState
         In the order of the columns; with members in one of them at least, else everything is null.
+    keys : dict of str to (str, float, float)
+        As `RANGED`.
 
     Returns
     -------
     StateRangesBlock
     """
     return StateRangesBlock(
-        range={key: _ends(states, key) for key in RANGED},
-        input_range={key: _ends(states, key, inputs_only=True) for key in RANGED},
+        range={key: _ends(states, of) for key, of in keys.items()},
+        input_range={key: _ends(states, of, inputs_only=True) for key, of in keys.items()},
         chance={event: [chance_at(state, event) for state in states] for event in EVENTS},
     )
 
 
-def _ends(states: Sequence[SiteState], key: str, *, inputs_only: bool = False) -> Ends:
-    name, factor, offset = RANGED[key]
+def _ends(states: Sequence[SiteState], of: tuple[str, float, float], *, inputs_only: bool = False) -> Ends:
+    name, factor, offset = of
     found = (range_at(state, name, inputs_only=inputs_only) for state in states)
     return [None if one is None else (one[0] * factor + offset, one[1] * factor + offset) for one in found]
 

@@ -8,6 +8,7 @@ import numpy as np
 
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.air.saturation import saturation_mixing_ratio
+from orolift.crossing.layer_above import own_differences
 from orolift.crossing.members import PARTS, Members
 from orolift.crossing.model_error import model_error
 from orolift.crossing.result import Site
@@ -187,6 +188,7 @@ def _answers(air: LeeAir) -> dict[str, float | None]:
         **{f"warming_{name}": None if parts is None else getattr(parts, name) for name in PARTS},
         "popular_picture": air.popular_picture,
         "descent_only": air.descent_only,
+        **own_differences(air),
     }
 
 

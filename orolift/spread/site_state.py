@@ -16,7 +16,7 @@ from orolift.crossing.result import When
 from orolift.crossing.situation import crossing_of
 from orolift.crossing.way import way_to
 from orolift.errors import NoCrossingError, OroliftError
-from orolift.fire.dryness import vapour_pressure_deficit
+from orolift.fire.dryness import HIGHEST_TEMPERATURE, LOWEST_TEMPERATURE, vapour_pressure_deficit
 from orolift.fire.indices import site_fire
 from orolift.fire.nights import nights_at
 from orolift.fire.values import site_values
@@ -54,8 +54,8 @@ class SiteMembers:
     Attributes
     ----------
     inputs, full : mapping of str to ndarray (m,)
-        Those of `KEPT`, in SI: by the inputs alone, and with the error of the method. Empty where the situation itself
-        does not cross.
+        Those of `KEPT` and `drying_power`, in SI: by the inputs alone, and with the error of the method. Empty where
+        the situation itself does not cross.
     crosses : ndarray (m,) [1]
         1 in members that cross, 0 in those that do not; NaN in those that could not be worked out.
     line_rain : ndarray (m,) or None [kg m-1 s-1]
@@ -236,8 +236,19 @@ def members_of_sites(
     for site in crossing.lee:
         column = column_of(crossing, site)
         inputs, full = ({name: arrays[name][:, column] for name in KEPT} for arrays in (found.sites, found.full_sites))
+        for one in (inputs, full):
+            one["drying_power"] = _drying_power(one)
         out.append(SiteMembers(inputs, full, crosses, found.values["total"]))
     return tuple(out)
+
+
+def _drying_power(values: Mapping[str, Array]) -> Array:
+    """Vapour pressure deficit times the wind at 10 m of each member [Pa m s-1], NaN without a wind."""
+    t, u, wind = (values[name] for name in ("temperature", "relative_humidity", "wind_10m"))
+    out = np.full(wind.shape, np.nan)
+    there = np.isfinite(wind) & np.isfinite(u) & (t >= LOWEST_TEMPERATURE) & (t <= HIGHEST_TEMPERATURE)
+    out[there] = vapour_pressure_deficit(t[there], np.clip(u[there], 0.0, 1.0)) * wind[there]
+    return out
 
 
 def members_without_answer(situation: Situation, drawn: Drawn) -> SiteMembers | None:

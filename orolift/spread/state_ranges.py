@@ -22,7 +22,7 @@ def range_at(state: SiteState, name: str, *, inputs_only: bool = False) -> tuple
     ----------
     state : SiteState
     name : str
-        One of `orolift.spread.site_state.KEPT`.
+        One of `orolift.spread.site_state.KEPT`, or `drying_power`.
     inputs_only : bool
         Without the error of the method. For rain no such error is stated: both are the same.
 
@@ -35,6 +35,23 @@ def range_at(state: SiteState, name: str, *, inputs_only: bool = False) -> tuple
         return None
     arrays = state.members.inputs if inputs_only else state.members.full
     return range_of(arrays[name]) if name in arrays else None
+
+
+def lost_members(state: SiteState) -> bool:
+    """Whether members of a crossing could not be worked out, some or all of them.
+
+    Parameters
+    ----------
+    state : SiteState
+        Of a run with members.
+
+    Returns
+    -------
+    bool
+    """
+    if state.members is None:
+        return state.status == "crossing"
+    return bool(np.isnan(state.members.crosses).any())
 
 
 def chance_at(state: SiteState, event: Event) -> float | None:

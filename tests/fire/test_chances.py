@@ -9,6 +9,7 @@ import pytest
 from orolift.air.column_build import air_from_station
 from orolift.air.humidity import mixing_ratio_from_dew_point
 from orolift.crossing.crossing import cross
+from orolift.crossing.layer_above import own_differences
 from orolift.crossing.result import Site, When
 from orolift.fire.chances import CODES_AFTER, NEEDED, with_members
 from orolift.fire.nights import NIGHT_VALUES
@@ -109,6 +110,22 @@ def test_more_heat_from_the_ground_leaves_a_colder_night(crossing, settings):
     found = with_members(site, heated, settings, 0.03, inputs=given | {"warming_surface_heating": np.full(5, 1.0)})
     assert found.ranges["floor_windy"][0] > found.input_ranges["floor_windy"][1]
     assert found.ranges["relative_humidity"] == found.input_ranges["relative_humidity"]
+
+
+def test_less_stable_members_mix_deeper(crossing, settings):
+    """Law: members whose air above is colder than the answer's mix deeper, warmer ones less; their ground is as warm."""
+    when = When(1793736000.0, -121.0, -46.9)
+    site = fire_at_sites(crossing, when, settings)[0]
+    own = own_differences(crossing.lee[0])
+    given = members(crossing.lee[0], 5)
+    depths = []
+    for change in (-1.0, 0.0, 1.0):
+        moved = {name: np.full(5, value + change) for name, value in own.items()}
+        found = with_members(site, given | moved, settings, 0.03, when)
+        depths.append(found.ranges["mixing_height"][0])
+        np.testing.assert_allclose(found.ranges["floor_windy"], site.night.floor_windy)
+    assert depths[0] > depths[1] > depths[2]
+    assert depths[1] == pytest.approx(site.night.mixing_height, rel=1e-9)
 
 
 def test_rules_on_the_depth_of_mixing_take_that_of_each_member(crossing):

@@ -6,6 +6,7 @@ import pytest
 from orolift.sources.state_ranges import RANGED, members_block, range_columns, state_ranges
 from orolift.spread.site_state import KEPT, SiteMembers, SiteState
 from orolift.spread.spread import Drawn
+from orolift.spread.state_ranges import lost_members
 from orolift.spread.uncertainty import Uncertainty
 
 TENS = np.arange(11.0)
@@ -56,3 +57,12 @@ def test_columns_are_called_as_those_of_a_single_crossing():
 def test_members_and_seed_are_said():
     assert members_block(None) is None
     assert members_block(Drawn(Uncertainty(), 32, 5)).model_dump() == {"members": 32, "seed": 5}
+
+
+def test_members_are_lost_only_where_there_is_an_answer():
+    """A line that runs along the range crosses in no member; a member that could not be worked out is missing."""
+    whole = members()
+    assert not lost_members(SiteState("crossing", members=whole))
+    assert not lost_members(SiteState("no crossing", "the line runs along the range"))
+    assert lost_members(SiteState("crossing"))
+    assert lost_members(SiteState("crossing", members=SiteMembers({}, {}, np.array([1.0, np.nan]))))

@@ -5,6 +5,7 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
+from orolift.crossing.layer_above import own_differences
 from orolift.crossing.member_values import band_name
 from orolift.crossing.members import Members, members_of
 from orolift.crossing.pool import Lee
@@ -87,6 +88,19 @@ def test_the_budget_is_that_of_a_crossing_alone(both):
             parts = [found.sites[f"warming_{name}"][i, number] for name in names]
             assert parts == pytest.approx([getattr(place.parts, name) for name in names], abs=2e-3)
             assert sum(parts) == pytest.approx(found.sites["warming"][i, number], abs=1e-6)
+
+
+def test_the_layer_above_a_site_is_that_of_a_crossing_alone(both):
+    """Without the heat of the ground, to the 0.1 K that mixing by temperature instead of heat leaves open."""
+    found, alone = both
+    told = 0
+    for i, crossing in alone.items():
+        for number, place in enumerate(crossing.lee):
+            for name, value in own_differences(place).items():
+                here = found.sites[name][i, number]
+                assert (value is None and np.isnan(here)) or here == pytest.approx(value, abs=0.1), name
+                told += value is not None
+    assert told
 
 
 def test_the_whole_is_that_of_a_crossing_alone(both):

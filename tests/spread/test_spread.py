@@ -7,6 +7,8 @@ import numpy as np
 import pytest
 
 from orolift.cli.executors import executor_of
+from orolift.crossing.layer_above import own_differences
+from orolift.crossing.result import Site, When
 from orolift.crossing.situation import crossing_of
 from orolift.errors import OutOfRangeError
 from orolift.spread import spread as module
@@ -180,6 +182,18 @@ def test_the_error_of_the_method_adds_its_variance(moist_crossing):
     again = with_method_error(sites, moist_crossing, Uncertainty(model_temperature=0.0, model_vapour=0.0), z)
     np.testing.assert_allclose(again["temperature"], sites["temperature"])
     np.testing.assert_allclose(again["mixing_ratio"], sites["mixing_ratio"])
+
+
+def test_the_layer_above_without_doubt_about_the_air_is_that_of_the_answer(stable):
+    """With heat from the ground and air that went round, both taken off or mixed in as in the answer."""
+    noon = When(1793736000.0, -121.0, -46.9)
+    case = replace(stable, sites=(Site("Behind", 78e3),), when=noon)
+    crossing = crossing_of(case)
+    spread = spread_of(case, crossing, NONE, members=10, seed=1)
+    assert spread.sites["warming_surface_heating"].min() > 0.2
+    assert spread.sites["went_round"].min() > 0.1
+    for name, value in own_differences(crossing.lee[0]).items():
+        np.testing.assert_allclose(spread.sites[name][:, 0], value, atol=0.1, err_msg=name)
 
 
 def test_the_lee_wind_without_doubt_about_the_air_is_that_of_the_methods(moist, moist_crossing):
