@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.executors import executor_of, progress
+from orolift.cli.gathering import Gathered, gathered, leave_unfinished
 from orolift.cli.options import (
     JOBS_OPTION,
     QUIET_OPTION,
@@ -19,6 +19,7 @@ from orolift.cli.options import (
     file_option,
 )
 from orolift.cli.outputs import Outputs, made_now
+from orolift.cli.spreading import Workers
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -78,9 +79,9 @@ def command(
         refuse_without_netcdf("--netcdf")
     setup = with_members(read_hours(case, series), members)
     log.debug("%s and %s read, %d hours", case, series, setup.series.time.size)
-    found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
+    found, work = worked(setup, Workers(jobs, scheduler, quiet))
     if not found:
-        raise click.Abort
+        leave_unfinished(work, "")
     ground = setup.ground
     hours = hours_of(
         found,
@@ -96,37 +97,26 @@ def command(
     outputs.write()
     if not quiet:
         click.echo("\n".join([*summary_of(hours, setup, units), *where(files)]))
-    if stopped:
-        raise click.Abort(
-            f"interrupted after {hours.time.size} of {hours.planned} hours; what was finished is written."
-        )
+    if not work.finished:
+        leave_unfinished(work, f"{hours.time.size} of {hours.planned} hours")
 
 
-def worked(setup: HourSetup, jobs: int | None, scheduler: str | None, *, quiet: bool) -> tuple[list[Hour], bool]:
-    """Hours worked out, and whether the person stopped the work before its end."""
+def worked(setup: HourSetup, workers: Workers) -> tuple[list[Hour], Gathered[Hour]]:
+    """Hours worked out, and how that ended."""
     from orolift.sources.hours_case import hour_tasks
-    from orolift.spread.engine import outcomes
     from orolift.spread.hours import Hour, worked_hour
     from orolift.spread.site_state import SiteState
 
-    found: list[Hour] = []
-    count = setup.series.time.size
-    try:
-        with (
-            executor_of(1 if jobs is None and count == 1 and scheduler is None else jobs, scheduler) as executor,
-            progress(count, "Hours", quiet=quiet) as bar,
-        ):
-            for outcome in outcomes(worked_hour, hour_tasks(setup), executor):
-                hour = outcome.value
-                if hour is None:
-                    state = SiteState("missing", f"a fault of orolift itself: {outcome.error}")
-                    time = float(setup.series.time[outcome.number])
-                    hour = Hour(outcome.number, time, (state,) * len(setup.sites))
-                found.append(hour)
-                bar.update(1)
-    except KeyboardInterrupt:
-        return filled(found, setup), True
-    return found, False
+    work = gathered(worked_hour, hour_tasks(setup), setup.series.time.size, "Hours", workers)
+    found = []
+    for outcome in work.found:
+        hour = outcome.value
+        if hour is None:
+            state = SiteState("missing", f"a fault of orolift itself: {outcome.error}")
+            time = float(setup.series.time[outcome.number])
+            hour = Hour(outcome.number, time, (state,) * len(setup.sites))
+        found.append(hour)
+    return (found if work.finished else filled(found, setup)), work
 
 
 def filled(found: list[Hour], setup: HourSetup) -> list[Hour]:
@@ -135,7 +125,7 @@ def filled(found: list[Hour], setup: HourSetup) -> list[Hour]:
     from orolift.spread.site_state import SiteState
 
     done = {hour.number for hour in found}
-    state = SiteState("missing", "The work was interrupted before this hour.")
+    state = SiteState("missing", "The work ended before this hour.")
     between = [number for number in range(max(done, default=0)) if number not in done]
     time = setup.series.time
     return [*found, *(Hour(number, float(time[number]), (state,) * len(setup.sites)) for number in between)]

@@ -169,6 +169,26 @@ def test_finished_hours_are_written_on_ctrl_c(series_folder, stopped, capsys):
     assert "The work was interrupted" in (series_folder / "case_hours.html").read_text()
 
 
+@pytest.mark.parametrize(("command", "given"), [("hours", ["case.toml", "series.csv"]), ("bearings", ["case.toml"])])
+def test_what_was_finished_is_written_when_a_process_is_lost(command, given, series_folder, monkeypatch, capsys):
+    """As when the system ends one for lack of memory: its sentence and exit code 2, but not for nothing."""
+    from orolift.errors import WorkersError
+    from orolift.spread import engine
+
+    whole = engine.outcomes
+
+    def some(*arguments, **more):
+        for number, outcome in enumerate(whole(*arguments, **more)):
+            if number == 3:
+                raise WorkersError("a process that worked ended")
+            yield outcome
+
+    monkeypatch.setattr(engine, "outcomes", some)
+    assert exit_code([command, *given, "--jobs", "1", "--members", "0", "--results", "r.json", "--quiet"]) == 2
+    assert re.search(r"after 3 of \d+ \w+, which are written: a process that worked ended", capsys.readouterr().err)
+    assert json.loads((series_folder / "r.json").read_text())["interrupted"] is True
+
+
 def test_hours_between_finished_ones_are_missing_after_ctrl_c(series_folder):
     """Workers finish in any order: a line must not bridge what was not worked out."""
     from orolift.sources.hours_case import read_hours
