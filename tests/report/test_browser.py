@@ -242,7 +242,8 @@ def test_prints_whole_figures_on_few_pages(opened, html_of, name, paper):
     page = opened(html_of(name))
     page.focus("#reading-place")  # the line is on; it must not print
     pages = [squeezed(one.extract_text()) for one in pypdf.PdfReader(BytesIO(page.pdf(format=paper))).pages]
-    assert len(pages) in {"rain over a map": range(11, 16), "rain that drifts": range(7, 11)}[name]
+    # a range below each number of a table takes a line
+    assert len(pages) in {"rain over a map": range(11, 17), "rain that drifts": range(7, 11)}[name]
     whole = "".join(pages)
     assert "Placealongtheline" not in whole
     assert "Thesectioninnumbers" not in whole
