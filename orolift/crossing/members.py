@@ -34,6 +34,8 @@ if TYPE_CHECKING:
 
 PARTS = tuple(field.name for field in fields(WarmingParts))
 """Parts of the warming, by name."""
+OF_MEMBERS = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
+"""Fields of the incoming air that members have each for itself."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -109,10 +111,71 @@ def members_of(
     a root is found by iteration, it is taken a step further when one of the
     others still needs it, so that members agree with crossings of their own to about 1e-4 K and not to rounding.
     """
+    solved = solved_members(situation, variation, streamlines=streamlines)
+    crosses, ground, when = solved.crosses, solved.ground, solved.when
+    values = _of_incoming(variation.incoming) | {"cross_range_wind": solved.crest_wind}
+    if solved.solution is None or solved.part is None:
+        return Members(crosses, values, {})
+    solution, part = solved.solution, solved.part
+    sites = (*(situation.sites or (Site("Lee foot", ground.shape.lee_foot_distance),)), *beside)
+    flow = _of_flow(
+        ground, solution, solved.crest_wind[crosses], when, known=solved.lee_known, freezing=part.settings.freezing
+    )
+    values |= _filled(flow, crosses)
+    values |= _filled(_of_rain(ground, solution, part.incoming, situation.background), crosses)
+    at = [_filled(_of_site(site, ground, solution, part, when, situation.background), crosses) for site in sites]
+    return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})
+
+
+@dataclass(frozen=True, eq=False)
+class SolvedMembers:
+    """The flow of members over one ground.
+
+    Attributes
+    ----------
+    crosses : ndarray of bool, (m,)
+        Whether the wind component across the range is above 2 m/s.
+    crest_wind : ndarray (m,) [m s-1]
+        That component.
+    ground : Ground
+    when : When
+    lee_known : bool
+        Whether the case says what lies in the lee.
+    part : Variation or None
+        Those that cross; None without any.
+    solution : Solution or None
+        Of those.
+    """
+
+    crosses: NDArray[np.bool_]
+    crest_wind: Array
+    ground: Ground
+    when: When
+    lee_known: bool
+    part: Variation | None
+    solution: Solution | None
+
+
+def solved_members(situation: Situation, variation: Variation, *, streamlines: int = 60) -> SolvedMembers:
+    """The flow of members of a situation, all marched together.
+
+    Parameters
+    ----------
+    situation : Situation
+    variation : Variation
+    streamlines : int
+
+    Returns
+    -------
+    SolvedMembers
+
+    Raises
+    ------
+    NoCrossingError, TerrainError, OutOfRangeError
+        As `members_of`.
+    """
     settings, when = checked(variation.settings), situation.when or When()
-    sites = situation.sites
-    shape = features(situation.transect, sites[0].distance if sites else None)
-    sites = (*(sites or (Site("Lee foot", shape.lee_foot_distance),)), *beside)
+    shape = features(situation.transect, situation.sites[0].distance if situation.sites else None)
     ground = ground_under(
         situation.transect,
         shape,
@@ -126,23 +189,16 @@ def members_of(
     heights = np.linspace(shape.crest, shape.crest + CREST_LAYER, 21)
     crest_wind = np.mean(wind_component(interpolated(variation.incoming, heights), ground.normal), axis=-1)
     crosses = crest_wind > LEAST_CROSSING_WIND
-    values = _of_incoming(variation.incoming) | {"cross_range_wind": crest_wind}
     if not crosses.any():
-        return Members(crosses, values, {})
+        return SolvedMembers(crosses, crest_wind, ground, when, lee_known=False, part=None, solution=None)
     part = _taken(variation, settings, crosses)
-    count = int(crosses.sum())
     lee = situation.lee or Lee() if part.lee is None else part.lee
-    solution = solve(ground, part.incoming, part.settings, lee, members=count, streamlines=streamlines)
+    solution = solve(ground, part.incoming, part.settings, lee, members=int(crosses.sum()), streamlines=streamlines)
     if part.share is not None:
         blocked = solution.blocked_top > shape.base + NOTHING
         solution.going_round[:] = np.where(blocked, part.share(solution.going_round), 0.0)
     known = (lee if isinstance(lee, Lee) else lee[0]).known
-    freezing = settings.freezing
-    flow = _of_flow(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
-    values |= _filled(flow, crosses)
-    values |= _filled(_of_rain(ground, solution, part.incoming, situation.background), crosses)
-    at = [_filled(_of_site(site, ground, solution, part, when, situation.background), crosses) for site in sites]
-    return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})
+    return SolvedMembers(crosses, crest_wind, ground, when, lee_known=known, part=part, solution=solution)
 
 
 def _taken(variation: Variation, settings: Settings, rows: NDArray[np.bool_]) -> Variation:
@@ -152,9 +208,8 @@ def _taken(variation: Variation, settings: Settings, rows: NDArray[np.bool_]) ->
         return value[rows] if isinstance(value, np.ndarray) and value.ndim and value.shape[0] == rows.size else value
 
     air = variation.incoming
-    names = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
     return Variation(
-        incoming=replace(air, **{name: getattr(air, name)[rows] for name in names}),
+        incoming=replace(air, **{name: getattr(air, name)[rows] for name in OF_MEMBERS}),
         settings=replace(settings, **{one.name: some(getattr(settings, one.name)) for one in fields(Settings)}),
         lee=None
         if variation.lee is None
