@@ -13,7 +13,7 @@ from orolift.errors import TerrainError
 from orolift.sources.elevation_map import read_elevation_map
 from orolift.sources.line_axis import Axis, axis_of, too_near_the_edge
 from orolift.sources.lines import PlacedLine, line_through, map_places, read_lines, situation_on
-from orolift.spread.lee_map import Frame
+from orolift.spread.joined import Frame
 from orolift.spread.strips import Strip
 from orolift.terrain.features import features
 from orolift.terrain.range_normal import RangeNormal
