@@ -147,13 +147,13 @@ def pool_top_of(values: GroundValues) -> float:
     return float(values.ground.min()) if values.pool_top is None else values.pool_top
 
 
-_ON_LEVELS = {"temperature", "vapour", "pressure", "pool_temperature", "pool_vapour"}
+ON_LEVELS = {"temperature", "vapour", "pressure", "pool_temperature", "pool_vapour"}
 
 
 def values_along(part: StripAir, name: str, along: Array, count: int) -> Array:
     """Values of a strip at places along the axis, (na,) or (na, q); NaN off its ends and where it has none."""
     if part.values is None or getattr(part.values, name) is None:
-        return np.full((along.size, count) if name in _ON_LEVELS else along.shape, np.nan)
+        return np.full((along.size, count) if name in ON_LEVELS else along.shape, np.nan)
     values, at = np.asarray(getattr(part.values, name)), part.start + part.values.distance
     number = np.clip(np.searchsorted(at, along, side="right") - 1, 0, at.size - 2)
     share = (along - at[number]) / (at[number + 1] - at[number])
