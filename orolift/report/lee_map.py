@@ -118,14 +118,13 @@ def _how_sure(spread: LeeSpread | None) -> list[Words]:
     """What the ranges hold."""
     if spread is None:
         return [("The map has no ranges, because the case has no members.",)]
-    return [
-        (
-            f"Ranges are 10 to 90 % of {spread.members} members, with the error of the method. A member is one map: the "
-            f"same draws everywhere. Members were worked out on {counted(spread.strips, 'strip', 'strips')}, and what they "
-            "differ by was joined across the wind, place by place behind the crest. What a single pass or summit does to "
-            "its lee is in no range.",
-        )
-    ]
+    strips = counted(spread.strips, "strip", "strips")
+    text = (
+        f"Ranges are 10 to 90 % of {spread.members} members, with the error of the method. A member is one map: the "
+        f"same draws everywhere. Members were worked out on {strips}; what they differ by was joined across the wind, "
+        "place by place behind the crest. What a single pass or summit does to its lee is in no range."
+    )
+    return [(text,)]
 
 
 def _thresholds(found: LeeThresholds | None, behind: NDArray[np.bool_], spread: LeeSpread | None = None) -> list[Words]:

@@ -22,7 +22,7 @@ from orolift.spread.lee_thresholds import MapAir, values_on_map
 from orolift.spread.uncertainty import COLUMNS, METHOD, Uncertainty, normal
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Callable, Sequence
 
     from numpy.typing import NDArray
 
@@ -209,8 +209,7 @@ def _rows(cells: Cells, found: Deviations, drawn: MembersDrawn, table: _Table, a
     air = _with_method_error(lying_at(at_cells, *up), own, drawn, low_high)
     t, v, p = air.temperature, air.vapour, air.pressure
     there = np.isfinite(t) & np.isfinite(v) & np.isfinite(p)
-    humidity = np.full(t.shape, np.nan)
-    humidity[there] = relative_humidity_from_mixing_ratio(p[there], t[there], v[there])
+    humidity = _where(there, relative_humidity_from_mixing_ratio, p, t, v)
     values = {
         "temperature": np.where(there, t, np.nan),
         "warming": np.where(there, t - up[0], np.nan),
@@ -283,12 +282,19 @@ def _with_method_error(air: Lying, own: Cells, drawn: MembersDrawn, methods: tup
         sigma_v = np.full_like(sigma_v, drawn.uncertainty.model_vapour)
     t = air.temperature + sigma_t * z_t
     there = np.isfinite(t) & np.isfinite(air.pressure)
-    most = np.full(t.shape, np.nan)
-    most[there] = saturation_mixing_ratio(air.pressure[there], np.clip(t[there], 160.0, 340.0))
+    most = _where(there, saturation_mixing_ratio, air.pressure, np.clip(t, 160.0, 340.0))
     v = np.minimum(np.maximum(air.vapour + sigma_v * z_v, LEAST_VAPOUR), most)
     low, high = -np.log(methods[0]), np.log(methods[1])
     wind = air.wind * np.exp(np.where(z_w < 0.0, low, high) * z_w / TENTH)
     return Lying(t, v, air.pressure, wind)
+
+
+def _where(known: NDArray[np.bool_], function: Callable[..., Array], *given: Array) -> Array:
+    """A function worked out only where all it takes is known."""
+    out = np.full(known.shape, np.nan)
+    if known.any():
+        out[known] = function(*(one[known] for one in given))
+    return out
 
 
 def _judged(

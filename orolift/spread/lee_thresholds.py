@@ -185,7 +185,8 @@ def _where_known(function: Callable[..., Array], *given: Array) -> Array:
     """A function of cells, worked out only where all it takes is known."""
     known = np.all([np.isfinite(one) for one in given], axis=0)
     out = np.full(known.shape, np.nan)
-    out[known] = function(*(one[known] for one in given))
+    if known.any():
+        out[known] = function(*(one[known] for one in given))
     return out
 
 

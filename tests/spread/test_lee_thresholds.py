@@ -95,7 +95,7 @@ def test_the_page_gives_shares_and_names_the_rule_with_a_gust(found):
     """Two of the five known cells behind the crest meet the rule."""
     on_map = thresholds_on_map(found, rules(DRY_AND_WINDY, GUSTY), 0.03)
     frame = SimpleNamespace(across=np.array([0.0, 5e3]), smoothing=2.5e3)
-    mapped = SimpleNamespace(map=found, plan=SimpleNamespace(frame=frame), thresholds=on_map)
+    mapped = SimpleNamespace(map=found, plan=SimpleNamespace(frame=frame), thresholds=on_map, spread=None)
     text = [plain(remark, "metric") for remark in lee_on_map(mapped, ()).remarks]
     said = " ".join(text).replace("\u00a0", " ").replace("\u202f", " ")
     assert "“Dry and windy” on 40 %" in said

@@ -144,8 +144,8 @@ def _dry_end(mapped: MappedLee) -> tuple[_Shown, ...]:
         _Shown(
             "lee-humidity-low",
             "Dry end of the relative humidity",
-            f"Humidity below which a tenth of {spread.members} members lie. The darker, the drier. The steps are those of "
-            "the map before, and lower ones where they are reached.",
+            f"Relative humidity below which a tenth of {spread.members} members lie: it may well be as dry as this. "
+            "The darker, the drier.",
             low,
             "share",
             tuple((level, "lee-layer warm", -1.0) for level in _dry_steps(low)),
@@ -167,7 +167,7 @@ def _width(mapped: MappedLee, name: str, kind: Kind, units: Units) -> str:
         said = [f"{100.0 * value:.0f} points" for value in (middle, most)]
     else:
         said = [quantity(value, kind, 1, units).split("\u00a0(")[0] for value in (middle, most)]
-    return f" Behind the crest half of the ground has a range (10 to 90 %) up to {said[0]} wide, nearly all up to {said[1]}."
+    return f" Range (10 to 90 %) behind the crest: up to {said[0]} wide on half of the ground, {said[1]} on nearly all."
 
 
 def _shown(mapped: MappedLee, units: Units) -> tuple[_Shown, ...]:
