@@ -158,7 +158,7 @@ def test_the_figure_of_chances_has_steps_of_chances(found):
 def test_captions_say_how_wide_ranges_are(found):
     """10 points everywhere."""
     mapped = SimpleNamespace(map=found, spread=in_members(found, np.array([MET])))
-    assert "up to 10 points wide on half of the ground, 10 points on nearly all" in maps._width(
+    assert "up to 10 percentage points wide on half of the ground, 10 percentage points on nearly all" in maps._width(
         mapped, "relative_humidity", "share", "metric"
     )
 

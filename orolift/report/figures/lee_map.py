@@ -89,7 +89,8 @@ def lee_map_figures(crossing: Crossing, mapped: MappedLee, units: Units) -> tupl
     -------
     tuple of Figure
     """
-    shown = (*_shown(mapped, units), *_dry_end(mapped), *_thresholds(mapped), *_chance(mapped))
+    warming, humidity, wind = _shown(mapped, units)
+    shown = (warming, humidity, *_dry_end(mapped), wind, *_thresholds(mapped), *_chance(mapped))
     return tuple(_figure(one, crossing, mapped, units) for one in shown)
 
 
@@ -164,13 +165,14 @@ def _width(mapped: MappedLee, name: str, kind: Kind, units: Units) -> str:
         return ""
     middle, most = (float(np.percentile(width, share)) for share in (50.0, 95.0))
     if kind == "share":
-        said = [f"{100.0 * value:.0f} points" for value in (middle, most)]
+        said = [f"{100.0 * value:.0f} percentage points" for value in (middle, most)]
     else:
         said = [quantity(value, kind, 1, units).split("\u00a0(")[0] for value in (middle, most)]
     return f" Range (10 to 90 %) behind the crest: up to {said[0]} wide on half of the ground, {said[1]} on nearly all."
 
 
-def _shown(mapped: MappedLee, units: Units) -> tuple[_Shown, ...]:
+def _shown(mapped: MappedLee, units: Units) -> tuple[_Shown, _Shown, _Shown]:
+    """Warming, humidity and wind."""
     found = mapped.map
     warming, humidity, wind = found.warming, found.relative_humidity, found.wind_10m
     warm = _steps(np.nanpercentile(warming, 99.5), "temperature_difference", units)

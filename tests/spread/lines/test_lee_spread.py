@@ -30,15 +30,21 @@ RULES = (
 )
 
 
-@pytest.fixture(scope="module")
-def ridge(tmp_path_factory, ridge_case):
-    """A straight ridge of one height: inputs, strips, their answers, the frame, the map."""
+def planned(folder, ridge_case, more=""):
+    """Inputs and strips 5 km apart over a straight ridge of one height."""
     with pytest.MonkeyPatch.context() as patch:
         patch.setattr(plans, "STRIP_SHARE", 0.5)
         patch.setattr("orolift.sources.line_axis.POINTS", 120)
-        folder = tmp_path_factory.mktemp("ridge")
-        inputs = read_inputs(ridge_case(folder, {"foot": (530_000, 0)}, notch=0.0))
-        plan = plans.strip_plan(inputs)
+        path = ridge_case(folder, {"foot": (530_000, 0)}, notch=0.0)
+        path.write_text(path.read_text() + more)
+        inputs = read_inputs(path)
+        return inputs, plans.strip_plan(inputs)
+
+
+@pytest.fixture(scope="module")
+def ridge(tmp_path_factory, ridge_case):
+    """Inputs, strips, their answers, the frame, the map."""
+    inputs, plan = planned(tmp_path_factory.mktemp("ridge"), ridge_case)
     strips = plan.strips[8:-8]
     frame = replace(plan.frame, across=plan.frame.across[8:-8])
     parts = air_of_strips(strips)
@@ -96,6 +102,37 @@ def test_ranges_along_the_line_are_those_of_its_crossing(ridge, spread):
             np.testing.assert_allclose(
                 values[row, columns][here], ends[here], rtol=rtol, atol=atol, err_msg=f"{name} {share}"
             )
+
+
+def test_in_a_cold_pool_ranges_are_those_of_its_crossing(tmp_path, ridge_case):
+    """Cold air known to lie in the lee: some members stay in it, some come over it, as at sites put there.
+
+    Tolerance: as above; where the pool ends, a member more or less lies in it.
+    """
+    inputs, plan = planned(tmp_path, ridge_case, "[lee]\ntemperature_c = 3\n")
+    middle = len(plan.strips) // 2
+    strips = plan.strips[middle - 1 : middle + 2]
+    frame = replace(plan.frame, across=plan.frame.across[middle - 1 : middle + 2])
+    parts = air_of_strips(strips)
+    assert all(part.values.pool_top is not None for part in parts)
+    level = draw(Drawn(Uncertainty(), MEMBERS, 3))
+    drawn = drawn_on((inputs, plan, strips), Uncertainty(), level, (1,))
+    said = lee_spread(parts, frame, plan.placed.grid, drawn)
+    found = lee_map(parts, frame, plan.placed.grid, inputs.incoming)
+    row = int(np.argmin(np.abs(found.grid.y - NORTHING)))
+    columns = np.flatnonzero(np.isfinite(found.temperature[row]) & (found.behind_crest[row] > 6e3))[:-5:6]
+    own = situation_of(inputs)
+    sites = [own.sites[0]]
+    for c in columns:
+        away = 50_000.0 + (float(found.grid.x[c]) - 500_000.0) / 0.9996
+        sites.append(Site(str(c), away, float(found.grid.elevation[row, c])))
+    own = replace(own, sites=tuple(sites))
+    spread = spread_of(own, crossing_of(own), Uncertainty(), members=MEMBERS, seed=3)
+    assert 0.1 < spread.full_sites["in_pool"][:, 1:].mean() < 0.95
+    for share, values in ((0.1, said.low), (0.9, said.high)):
+        for name, near in (("temperature", 0.3), ("relative_humidity", 0.03)):
+            ends = np.nanquantile(spread.full_sites[name][:, 1:], share, axis=0)
+            np.testing.assert_allclose(values[name][row, columns], ends, atol=near, err_msg=f"{name} {share}")
 
 
 def test_a_straight_ridge_has_ranges_without_stripes(ridge, spread):
