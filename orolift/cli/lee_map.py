@@ -55,11 +55,13 @@ def mapped_lee(
         plan = strip_plan(inputs)
         log.debug("%d strips drawn", len(plan.strips))
         with executor_of(jobs, scheduler) as executor:
+            numbers = _with_members(inputs, plan)
             with progress(len(plan.strips), "Strips", quiet=quiet) as bar:
-                parts = air_of_strips(plan.strips, executor, lambda: bar.update(1))
+                parts = air_of_strips(plan.strips, executor, lambda: bar.update(1), numbers)
             found = lee_map(parts, plan.frame, plan.placed.grid, inputs.incoming)
             thresholds = _thresholds(inputs, found)
-            drawn = _members(inputs, plan, parts, executor, quiet=quiet)
+            numbers = tuple(i for i in numbers if parts[i].values is not None)
+            drawn = _members(inputs, plan, numbers, executor, quiet=quiet)
         spread = None if drawn is None else _spread(inputs, plan, parts, drawn, thresholds)
     except OroliftError as error:
         error.args = (f"{inputs.path}: {error}",)
@@ -68,21 +70,29 @@ def mapped_lee(
     return MappedLee(plan, found, sites_on(plan.placed, inputs.places), thresholds, spread)
 
 
+def _with_members(inputs: Inputs, plan: StripPlan) -> tuple[int, ...]:
+    """Numbers of the strips that get members; none where the case has none."""
+    from orolift.spread.strip_members import strips_with_members
+
+    if inputs.case.spread.members == 0:
+        return ()
+    return strips_with_members([strip.situation is not None for strip in plan.strips], plan.frame.across)
+
+
 def _members(
-    inputs: Inputs, plan: StripPlan, parts: Sequence[StripAir], executor: Executor | None, *, quiet: bool
+    inputs: Inputs, plan: StripPlan, numbers: tuple[int, ...], executor: Executor | None, *, quiet: bool
 ) -> MembersDrawn | None:
-    """Members on some of the strips; None where the case has none."""
+    """Members on some of the strips; None where none of them has an answer, or the case no members."""
     from orolift.sources.spread_model import uncertainty_of
     from orolift.spread.lee_spread import MembersDrawn
     from orolift.spread.spread import Drawn
-    from orolift.spread.strip_members import draw, members_of_strips, strips_with_members
+    from orolift.spread.strip_members import draw, members_of_strips
 
     spread = inputs.case.spread
-    if spread.members == 0:
+    if not numbers:
         return None
     drawn = Drawn(uncertainty_of(inputs.case), spread.members, spread.seed)
     level = draw(drawn)
-    numbers = strips_with_members([part.values is not None for part in parts], plan.frame.across)
     with progress(len(numbers), "Members of strips", quiet=quiet) as bar:
         found = members_of_strips(plan.strips, numbers, drawn.uncertainty, level, executor, lambda: bar.update(1))
     log.debug("%d members on %d strips worked out", level.shape[0], len(numbers))

@@ -68,7 +68,7 @@ class GroundValues:
     band : float [m]
         From the crest to where its lee begins, and its windward side ends.
     wind_low, wind_high : float [1]
-        Range of the methods of the lee wind, as shares of `wind`: at most 1, and at least 1.
+        Range of the methods of the lee wind, as shares of `wind`: at most 1, and at least 1; 1 where nobody asked.
     pool_top : float or None [m above sea level]
         Of cold air that stays in the lee.
     pool_temperature, pool_vapour : ndarray (n, q), or None
@@ -98,7 +98,9 @@ class GroundValues:
     pool_vapour: Array | None
 
 
-def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, streamlines: int = 60) -> GroundValues:
+def ground_values(
+    situation: Situation, *, levels: tuple[float, ...] = LEVELS, streamlines: int = 60, methods: bool = False
+) -> GroundValues:
     """Air near the ground all along the line of a situation.
 
     Parameters
@@ -108,6 +110,8 @@ def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, s
     levels : tuple of float [m]
         Heights over the ground of the line.
     streamlines : int
+    methods : bool
+        Whether the range of the methods of the lee wind is worked out, a tenth of the work.
 
     Returns
     -------
@@ -143,9 +147,11 @@ def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, s
     )
     crest_wind = crest_component(incoming, ground.normal, shape.crest)
     solution = solve(ground, incoming, settings, lee, members=1, streamlines=streamlines)
-    winds = lee_winds(ground, solution, crest_wind, float(pressure_differences(ground, solution)[0]))
-    strongest = max(winds.strongest, LEAST_WIND)
-    shares = min(winds.low / strongest, 1.0), max(winds.high / strongest, 1.0)
+    shares = 1.0, 1.0
+    if methods:
+        winds = lee_winds(ground, solution, crest_wind, float(pressure_differences(ground, solution)[0]))
+        strongest = max(winds.strongest, LEAST_WIND)
+        shares = min(winds.low / strongest, 1.0), max(winds.high / strongest, 1.0)
     one = _Member(incoming, ground, solution, settings, when, 0, None)
     return _values(one, np.array(levels), solution.streams.place, shares)
 

@@ -117,7 +117,9 @@ def _of_member(values: Array, share: float) -> float:
 def _how_sure(spread: LeeSpread | None) -> list[Words]:
     """What the ranges hold."""
     if spread is None:
-        return [("The map has no ranges, because the case has no members.",)]
+        return [
+            ("The map has no ranges: the case has no members, or no strip that would have them could be worked out.",)
+        ]
     strips = counted(spread.strips, "strip", "strips")
     text = (
         f"Ranges are 10 to 90 % of {spread.members} members, with the error of the method. A member is one map: the "

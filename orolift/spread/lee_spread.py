@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from contextlib import suppress
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -11,6 +12,7 @@ from orolift.air.column import interpolated
 from orolift.air.humidity import relative_humidity_from_mixing_ratio
 from orolift.air.saturation import saturation_mixing_ratio
 from orolift.crossing.model_error import model_error
+from orolift.errors import OroliftError
 from orolift.fire.chances import FEWEST, TENTHS
 from orolift.fire.rules import rule_met
 from orolift.spread.at_sites import LEAST_VAPOUR, TENTH
@@ -26,7 +28,6 @@ if TYPE_CHECKING:
 
     from numpy.typing import NDArray
 
-    from orolift.air.column import IncomingAir
     from orolift.crossing.situation import Situation
     from orolift.fire.rules import Rule
     from orolift.spread.deviations import Deviations
@@ -173,15 +174,30 @@ class _Table:
     """The incoming air of members at even heights, (nh, m)."""
 
     def __init__(self, drawn: MembersDrawn, grid: ElevationGrid) -> None:
-        situation = drawn.situation
-        draws = draws_of(situation, drawn.uncertainty, drawn.level)
-        freezing = situation.settings is None or situation.settings.freezing
-        air: IncomingAir = columns(situation.incoming, draws, freezing=freezing)
         low, high = float(np.nanmin(grid.elevation)), float(np.nanmax(grid.elevation))
         self.height = np.arange(low, high + 2.0 * TABLE_STEP, TABLE_STEP)
-        at = interpolated(air, self.height)
-        names = ("temperature", "vapour", "pressure")
-        self.values = [np.ascontiguousarray(getattr(at, name).T) for name in names]
+        draws = draws_of(drawn.situation, drawn.uncertainty, drawn.level)
+        try:
+            found = self._looked_up(drawn.situation, draws)
+        except OroliftError:  # a member beyond what is physical: it has no strip either
+            found = self._one_by_one(drawn.situation, draws)
+        self.values = [np.ascontiguousarray(one.T) for one in found]
+
+    def _looked_up(self, situation: Situation, draws: dict[str, Array]) -> Array:
+        """Temperature, vapour and pressure of members, (3, m, nh)."""
+        freezing = situation.settings is None or situation.settings.freezing
+        at = interpolated(columns(situation.incoming, draws, freezing=freezing), self.height)
+        return np.stack([at.temperature, at.vapour, at.pressure])
+
+    def _one_by_one(self, situation: Situation, draws: dict[str, Array]) -> Array:
+        """The same, NaN for members that cannot be."""
+        members = next(iter(draws.values())).size
+        out = np.full((3, members, self.height.size), np.nan)
+        for i in range(members):
+            with suppress(OroliftError):
+                own = {name: value[i : i + 1] for name, value in draws.items()}
+                out[:, i] = self._looked_up(situation, own)[:, 0]
+        return out
 
     def at(self, z: Array) -> tuple[Array, ...]:
         """Temperature, vapour and pressure at heights, each (n, m)."""

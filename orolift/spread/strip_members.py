@@ -68,7 +68,7 @@ def strips_with_members(known: Sequence[bool], across: Array) -> tuple[int, ...]
     Parameters
     ----------
     known : sequence of bool
-        Whether each strip could be worked out.
+        Whether each strip can be drawn.
     across : ndarray (ns,) [m]
         Distance of each from the case's line.
 
@@ -83,7 +83,8 @@ def strips_with_members(known: Sequence[bool], across: Array) -> tuple[int, ...]
     """
     step = max(1, -(-sum(known) // MEMBER_STRIPS))
     own = int(np.argmin(np.abs(across)))
-    return tuple(i for i in range(own % step, len(known), step) if known[i])
+    even = tuple(i for i in range(own % step, len(known), step) if known[i])
+    return even or tuple(sorted((i for i, one in enumerate(known) if one), key=lambda i: abs(i - own))[:1])
 
 
 def draw(drawn: Drawn) -> Array:

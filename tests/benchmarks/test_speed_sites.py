@@ -24,7 +24,7 @@ from orolift.spread.lee_spread import MembersDrawn, lee_spread
 from orolift.spread.sites import group_air
 from orolift.spread.spread import Drawn
 from orolift.spread.strip_members import draw, members_of_strips, strips_with_members
-from orolift.spread.strips import StripAir, strip_air
+from orolift.spread.strips import strip_air
 
 SAMPLED = 12
 """Every so many lines are worked out; the rest is taken as alike."""
@@ -108,18 +108,19 @@ def test_members_of_the_map():
     one = one_crossing(inputs)
     plan = strip_plan(inputs)
     crossed = [i for i, strip in enumerate(plan.strips) if strip.situation is not None]
+    some = crossed[::SAMPLED]
     uncertainty, level = uncertainty_of(inputs.case), draw(Drawn(uncertainty_of(inputs.case)))
     numbers = strips_with_members([strip.situation is not None for strip in plan.strips], plan.frame.across)
     found = []
     work = spent(lambda: found.extend(members_of_strips(plan.strips, numbers[:4], uncertainty, level)))
     work *= len(numbers) / 4.0
-    parts = [StripAir(strip.start, None, "not worked out") for strip in plan.strips]
-    some = numbers[:4] + tuple(crossed[:: 2 * SAMPLED])
-    for i in some:
-        parts[i] = strip_air(plan.strips[i])
-    near = replace(plan.frame, smoothing=10.0 * plan.frame.smoothing)  # so that few strips fill the map
+    known = {i: strip_air(plan.strips[i], methods=True) for i in {*some, *numbers[:4]}}
+    parts = [
+        known[i] if i in known else replace(known[min(some, key=lambda j: abs(i - j))], start=strip.start)
+        for i, strip in enumerate(plan.strips)
+    ]
     drawn = MembersDrawn(tuple(found), plan.strips[numbers[0]].situation, uncertainty, level)
-    ranges = spent(lambda: lee_spread(parts, replace(near, across=plan.frame.across), plan.placed.grid, drawn))
+    ranges = spent(lambda: lee_spread(parts, plan.frame, plan.placed.grid, drawn))
     peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1024.0
     print(
         f"\n{level.shape[0]} members on {len(numbers)} strips: {work:.0f} s of processor, {work / one:.0f} crossings of "

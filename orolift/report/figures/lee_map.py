@@ -141,6 +141,8 @@ def _dry_end(mapped: MappedLee) -> tuple[_Shown, ...]:
     if spread is None:
         return ()
     low = spread.low["relative_humidity"]
+    if not np.isfinite(low).any():
+        return ()
     return (
         _Shown(
             "lee-humidity-low",

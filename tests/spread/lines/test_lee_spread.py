@@ -6,7 +6,7 @@ from types import SimpleNamespace
 import numpy as np
 import pytest
 
-from orolift.cli.lee_map import _members
+from orolift.cli.lee_map import _members, _with_members
 from orolift.crossing.result import Site
 from orolift.crossing.situation import crossing_of
 from orolift.fire.rules import Condition, Rule
@@ -47,7 +47,7 @@ def ridge(tmp_path_factory, ridge_case):
     inputs, plan = planned(tmp_path_factory.mktemp("ridge"), ridge_case)
     strips = plan.strips[8:-8]
     frame = replace(plan.frame, across=plan.frame.across[8:-8])
-    parts = air_of_strips(strips)
+    parts = air_of_strips(strips, methods=range(len(strips)))
     return inputs, plan, strips, parts, frame, lee_map(parts, frame, plan.placed.grid, inputs.incoming)
 
 
@@ -113,7 +113,8 @@ def test_in_a_cold_pool_ranges_are_those_of_its_crossing(tmp_path, ridge_case):
     middle = len(plan.strips) // 2
     strips = plan.strips[middle - 1 : middle + 2]
     frame = replace(plan.frame, across=plan.frame.across[middle - 1 : middle + 2])
-    parts = air_of_strips(strips)
+    parts = air_of_strips(strips, methods=(1,))
+    assert [part.values.wind_low < 1.0 or part.values.wind_high > 1.0 for part in parts] == [False, True, False]
     assert all(part.values.pool_top is not None for part in parts)
     level = draw(Drawn(Uncertainty(), MEMBERS, 3))
     drawn = drawn_on((inputs, plan, strips), Uncertainty(), level, (1,))
@@ -204,6 +205,21 @@ def test_members_that_do_not_cross_count_nowhere(ridge, spread):
     assert np.isnan(said.cloud).all()
 
 
+def test_a_member_beyond_what_is_physical_counts_nowhere(ridge, spread):
+    """One that would be far too cold has no strip and no incoming air; the others go on."""
+    _, plan, _, parts, frame, _ = ridge
+    drawn, before = spread
+    wild = Uncertainty(temperature=15.0)
+    level = drawn.level.copy()
+    level[0, COLUMNS.index("temperature")] = 1e-30
+    own = int(np.argmin(np.abs(frame.across)))
+    lost = drawn_on(ridge, wild, level, (own,))
+    assert lost.strips[0].values[0] is None
+    assert lost.strips[0].values[1] is not None
+    said = lee_spread(parts, frame, plan.placed.grid, lost)
+    assert np.isfinite(said.low["temperature"]).sum() == np.isfinite(before.low["temperature"]).sum()
+
+
 def test_a_member_is_the_same_on_every_strip_and_at_the_sites():
     """The draws of a crossing with as many members; more than 32 are not taken for a map."""
     assert np.array_equal(draw(Drawn(Uncertainty(), 20, 5)), latin_hypercube(20, len(COLUMNS), 5))
@@ -217,6 +233,8 @@ def test_strips_with_members_are_even_and_hold_the_line_of_the_case():
     assert 110 in numbers
     assert min(numbers) > 20
     assert set(np.diff(numbers)) == {15}
+    assert strips_with_members([i in range(43, 200, 10) for i in range(225)], across)
+    assert strips_with_members([i == 7 for i in range(225)], across) == (7,)
 
 
 def test_reading_nodes_changes_nothing_and_leaves_out_what_has_no_weight():
@@ -262,4 +280,5 @@ def test_files_carry_both_ends_and_the_chance_of_cloud(ridge, spread):
 def test_no_members_switch_it_off():
     """`members = 0` in the case."""
     inputs = SimpleNamespace(case=SimpleNamespace(spread=SimpleNamespace(members=0)))
+    assert _with_members(inputs, None) == ()
     assert _members(inputs, None, (), None, quiet=True) is None
