@@ -38,7 +38,7 @@ ROWS: tuple[tuple[str, tuple[str, ...], tuple[str, ...]], ...] = (
     ("layers, boundary, streamlines, speed", ("airflow.py:airflow", "airflow.py:joined"), ("waves.py:waves",)),
     ("pressure", ("passes.py:_pressure",), ()),
     ("column, stability, blocking", ("upwind.py:upwind_column", "upwind.py:blocking"), ()),
-    ("lee wind, trapped waves", ("wind.py:lee_winds", "trapped.py:trapped_waves"), ()),
+    ("lee wind, trapped waves", ("lee_wind.py:lee_winds", "trapped.py:trapped_waves"), ()),
     ("sites: arrival, profile, popular picture", ("sites.py:site_air",), ()),
 )
 

@@ -12,6 +12,7 @@ import click
 from orolift.cli.executors import executor_of, progress
 from orolift.cli.options import (
     JOBS_OPTION,
+    MEMBERS_OPTION,
     QUIET_OPTION,
     SCHEDULER_OPTION,
     UNITS_OPTION,
@@ -31,6 +32,7 @@ log = logging.getLogger(__name__)
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
 @click.argument("case")
 @click.option("--step", type=int, default=10, show_default=True, metavar="DEGREES", help="Between two directions.")
+@MEMBERS_OPTION
 @file_option("--report", "Page to write; default CASE_bearings.html in the current folder.")
 @file_option("--table", "Table to write as CSV, one row for each site and direction.")
 @file_option("--results", "Results to write as JSON.")
@@ -44,6 +46,7 @@ def command(
     case: str,
     *,
     step: int,
+    members: int | None,
     folder: str | None,
     jobs: int | None,
     scheduler: str | None,
@@ -58,7 +61,7 @@ def command(
 
     outputs = Outputs()
     files = planned_files(files, f"{Path(case).stem}_bearings", folder, outputs)
-    setup = read_bearings(case, step)
+    setup = read_bearings(case, step, members)
     log.debug("%s read, %d directions", case, setup.directions)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
     if not found:
@@ -74,7 +77,7 @@ def command(
         outputs.add(path, content, str(path))
     outputs.write()
     if not quiet:
-        click.echo("\n".join([*summary_of(bearings, setup), *where(files)]))
+        click.echo("\n".join([*summary_of(bearings, setup, units), *where(files)]))
     if stopped:
         done = f"{bearings.wind_from.size} of {bearings.planned} directions"
         raise click.Abort(f"interrupted after {done}; what was finished is written.")
@@ -123,6 +126,7 @@ def contents_of(
         made_at=made_now(),
         version=__version__,
         notes=setup.notes,
+        drawn=setup.drawn,
         units=units,
     )
     out = {Path(str(files["report"])): render(page, "bearings.html.jinja").encode()}
@@ -137,8 +141,11 @@ def contents_of(
     return out
 
 
-def summary_of(bearings: Bearings, setup: BearingSetup) -> list[str]:
-    """What was found, a line a site, at most ten lines."""
+def summary_of(bearings: Bearings, setup: BearingSetup, units: Units) -> list[str]:
+    """What was found, one or, with members, two lines a site; six sites at most."""
+    from orolift.report.bearings_sure import members_line
+    from orolift.report.words import plain
+
     lines = [setup.inputs.case.title or setup.inputs.path.stem]
 
     def said(number: int | None) -> str:
@@ -150,6 +157,8 @@ def summary_of(bearings: Bearings, setup: BearingSetup) -> list[str]:
             f"{site.name[:24]}  air crosses from {crossing} of {len(site.states)} directions; warmest from "
             f"{said(site.warmest)}, worst for fire {said(site.fire)}, best for rain {said(site.rain)}"
         )
+        if setup.drawn is not None and (words := members_line(site, bearings, setup.drawn.members)):
+            lines.append(f"          {plain(words, units)}")
     if len(bearings.sites) > 6:
         lines.append(f"          and {len(bearings.sites) - 6} more sites: see the report or --table")
     return lines

@@ -13,9 +13,8 @@ from orolift.cli.options import (
     UNITS_OPTION,
     VERBOSE_OPTION,
     file_option,
-    refuse_files,
 )
-from orolift.cli.outputs import made_now
+from orolift.cli.outputs import Outputs, made_now
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -99,13 +98,16 @@ def command(
     from orolift.cli.comparing import Asked, compared_of
     from orolift.report.compare import compare_page
     from orolift.report.render import render
-    from orolift.sources.files import csv_text, existing_file, write_all
+    from orolift.sources.files import csv_text, existing_file
 
     if not cases:  # the one file given is taken for the last argument
         missing = "CASE..." if observed.lower().endswith(".csv") else "OBSERVED.csv"
         raise click.MissingParameter(ctx=click.get_current_context(), param_type="argument", param_hint=f"'{missing}'")
     page = Path(report) if report else Path(f"{Path(cases[0]).stem}-compared.html")
-    refuse_files({"report": str(page), "results": results, "table": table})
+    outputs = Outputs()
+    for option, path in {"--report": page, "--results": results, "--table": table}.items():
+        if path is not None:
+            outputs.plan(path, option)
     sounding = asked["lee_sounding"]
     if isinstance(sounding, str):  # it is opened last: what is wrong with it is said first
         existing_file(sounding, "--lee-sounding")
@@ -114,15 +116,15 @@ def command(
     data = compare_page(
         found, title=title, observed=Path(observed).name, made_at=made_now(), version=__version__, units=units
     )
-    contents = {page: render(data, "compare.html.jinja").encode()}
-    if results:
+    outputs.add(page, render(data, "compare.html.jinja").encode(), "--report")
+    if results is not None:
         from orolift.sources.compare_results import compare_results
 
-        contents[Path(results)] = (compare_results(found).model_dump_json(indent=2) + "\n").encode()
-    if table:
+        outputs.add(results, (compare_results(found).model_dump_json(indent=2) + "\n").encode(), "--results")
+    if table is not None:
         from orolift.sources.compare_results import value_rows
 
-        contents[Path(table)] = csv_text(*value_rows(found)).encode()
-    write_all(contents)
+        outputs.add(table, csv_text(*value_rows(found)).encode(), "--table")
+    outputs.write()
     if not quiet:
         click.echo("\n".join([*summary_lines(found, title, units), f"Report: {page}"]))

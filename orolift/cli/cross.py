@@ -171,7 +171,11 @@ def _say(summaries: list[tuple[Worked, Path]], units: Units) -> None:
 
     for worked, page in summaries:
         lines = summary_lines(worked.crossing, worked.inputs.case, worked.inputs.path.stem, units, worked.spread)
-        click.echo("\n".join([*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.spread)}"]))
+        click.echo(
+            "\n".join(
+                [*lines, *fire_lines(worked), f"Report: {page}{members_words(worked.crossing, units, worked.spread)}"]
+            )
+        )
 
 
 def work_out(case: str, files: RainFiles | None = None, workers: Workers | None = None) -> Worked:
@@ -247,7 +251,10 @@ def _with_chances(one: SiteFire, air: LeeAir, inputs: Inputs, crossing: Crossing
     from orolift.spread.at_sites import members_at
 
     arrays = members_at(spread, crossing, air)
-    return one if arrays is None else with_members(one, arrays, inputs.fire, crossing.settings.roughness)
+    if arrays is None:
+        return one
+    alone = members_at(spread, crossing, air, inputs_only=True)
+    return with_members(one, arrays, inputs.fire, crossing.settings.roughness, inputs.when, inputs=alone)
 
 
 def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:

@@ -8,7 +8,7 @@ import signal
 import sys
 import threading
 from contextlib import contextmanager
-from typing import TYPE_CHECKING, Any, Protocol
+from typing import TYPE_CHECKING, Any, NoReturn, Protocol
 
 import click
 
@@ -127,20 +127,39 @@ def _start_server() -> None:
 
 
 @contextmanager
+def ended_as_by_ctrl_c() -> Iterator[None]:
+    """Within the block a request to end (SIGTERM), as batch systems and shutdowns send it, does what Ctrl-C does."""
+    if threading.current_thread() is not threading.main_thread():
+        yield  # signals are heard in the main thread alone
+        return
+
+    def interrupt(_number: int, _frame: object) -> NoReturn:
+        raise KeyboardInterrupt
+
+    before = signal.signal(signal.SIGTERM, interrupt)
+    try:
+        yield
+    finally:
+        signal.signal(signal.SIGTERM, before)
+
+
+@contextmanager
 def _interrupt_held() -> Iterator[None]:
-    """Ctrl-C within the block is heard at its end.
+    """Ctrl-C within the block is heard at its end, and a request to end where somebody listens to it.
 
     By a handler: a signal that one thread blocks goes to another, those of linear algebra among them.
     """
     if threading.current_thread() is not threading.main_thread():
-        yield  # Ctrl-C is heard in the main thread alone
+        yield  # signals are heard in the main thread alone
         return
     heard: list[int] = []
-    before = signal.signal(signal.SIGINT, lambda number, _frame: heard.append(number))
+    held = [signal.SIGINT, *([signal.SIGTERM] if callable(signal.getsignal(signal.SIGTERM)) else [])]
+    before = {number: signal.signal(number, lambda number, _frame: heard.append(number)) for number in held}
     try:
         yield
     finally:
-        signal.signal(signal.SIGINT, before)
+        for number, handler in before.items():
+            signal.signal(number, handler)
     if heard:
         raise KeyboardInterrupt
 

@@ -6,7 +6,6 @@ from importlib.util import find_spec
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from orolift.cli.options import refuse_files
 from orolift.cli.outputs import refuse_together
 from orolift.cli.over_map import RainFiles, rain_files
 
@@ -58,7 +57,9 @@ def planned_files(
     refuse_together([f"--{option}" for option, name in files.items() if name is not None], 1, folder)
     if folder is None:
         found = {**files, "report": files["report"] or f"{stem}.html"}
-        refuse_files(found)
+        for option, name in found.items():
+            if name is not None:
+                outputs.plan(name, f"--{option}")
         return found
     outputs.plan_folder(Path(folder), "--folder")
     wanted = [option for option in files if option != "netcdf" or find_spec("netCDF4") is not None]

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 import click
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Mapping
+    from collections.abc import Callable
 
 UNITS_OPTION = click.option(
     "--units",
@@ -61,34 +61,3 @@ def steps_are_shown() -> bool:
 def file_option(name: str, text: str) -> Callable[[Any], Any]:
     """Option that takes the path of a file to write."""
     return click.option(name, type=click.Path(path_type=str), default=None, metavar="FILE", help=text)
-
-
-def refuse_files(files: Mapping[str, str | None]) -> None:
-    """Refuse files that could not be written, are asked for twice or are read by this run, before long work is done.
-
-    Parameters
-    ----------
-    files : mapping of str to str or None
-        By the name of their option.
-
-    Raises
-    ------
-    CaseError, MissingFileError
-        That names the file.
-    """
-    from pathlib import Path
-
-    from orolift.errors import CaseError
-    from orolift.sources.files import refuse_unwritable
-    from orolift.sources.read_files import to_be_written
-
-    seen: dict[Path, str] = {}
-    for option, name in files.items():
-        if name is None:
-            continue
-        path = Path(name).resolve()
-        if path in seen:
-            raise CaseError(f"--{seen[path]} and --{option} both name {name}. Give each its own file.")
-        seen[path] = option
-        refuse_unwritable(Path(name))
-    to_be_written({path: f"--{option}" for path, option in seen.items()})

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from orolift.report.how_sure import span_words
 from orolift.report.quantities import Amount
 from orolift.report.spans import Spans, ranged
 from orolift.report.words import moment, plain
@@ -58,7 +59,8 @@ def summary_lines(crossing: Crossing, case: Case, name: str, units: Units, sprea
             f"lee foot {said(shape.lee_foot, 'height')}"
         ),
         (
-            f"Incoming  {said(float(air.temperature[0]), 'temperature', 1)} at {said(float(air.height[0]), 'height')}; "
+            f"Incoming  {said(float(air.temperature[0]), 'temperature', 1, spans.of('temperature'))} at "
+            f"{said(float(air.height[0]), 'height')}; "
             f"{said(crossing.flow.crest_wind, 'wind', 0, spans.of('cross_range_wind'))} across the crest"
         ),
         f"Flow      {_flow(spans, said)}",
@@ -71,21 +73,24 @@ def summary_lines(crossing: Crossing, case: Case, name: str, units: Units, sprea
     return lines
 
 
-def members_words(spread: Spread | None) -> str:
-    """What the ranges are, for the last line; empty without members."""
+def members_words(crossing: Crossing, units: Units, spread: Spread | None) -> str:
+    """What the ranges are, and that of the main site by the inputs alone, for the last line; empty without members."""
     if spread is None:
         return ""
+    spans = Spans(crossing, spread)
+    alone = span_words("temperature", 1, spans.at(spans.main, "temperature", inputs_only=True))
+    inputs = f"; by the inputs alone {spans.main.name} has {plain(alone, units)}" if alone else ""
     lost = f", {len(spread.failed)} failed" if spread.failed else ""
     still = spread.members - len(spread.failed) - int(spread.crosses.sum())
     calm = f", {still} without a crossing" if still else ""
-    return f"; ranges: 10 to 90 % of {spread.members} members{calm}{lost}"
+    return f"; ranges: 10 to 90 % of {spread.members} members{calm}{lost}{inputs}".replace("\u00a0", " ")
 
 
 def _cloud(spans: Spans, said: Said) -> str:
     cloud = spans.crossing.cloud
     if cloud.base is None:
         return "none forms: the air stays unsaturated all the way"
-    end = "" if cloud.end is None else f", ends at {said(cloud.end, 'height', -1)} in the lee"
+    end = "" if cloud.end is None else f", ends at {said(cloud.end, 'height', -1, spans.of('cloud_end'))} in the lee"
     return f"base at {said(cloud.base, 'height', -1, spans.of('cloud_base'))} on the windward side{end}"
 
 
@@ -93,11 +98,10 @@ def _flow(spans: Spans, said: Said) -> str:
     from orolift.report.story import regime_words
 
     flow = spans.crossing.flow
-    number = f"N h/U {flow.nondimensional_height:.1f}"
+    number = f"N h/U {said(flow.nondimensional_height, 'plain', 1, spans.of('nondimensional_height'))}"
     if flow.blocked_top <= spans.crossing.features.base + 1.0:
-        return f"{regime_words(spans.crossing)} ({number}); no layer is stopped"
-    ends = spans.of("blocked_top") or (flow.blocked_top_low, flow.blocked_top_high)
-    return f"{flow.regime} ({number}); blocked up to {said(flow.blocked_top, 'height', -1, ends)}"
+        return f"{regime_words(spans.crossing)}, {number}; no layer is stopped"
+    return f"{flow.regime}, {number}; blocked up to {said(flow.blocked_top, 'height', -1, spans.blocked_top())}"
 
 
 def _rain(spans: Spans, said: Said) -> str:

@@ -9,8 +9,10 @@ import numpy as np
 
 from orolift.air.column import interpolated, vapour_flux, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio
-from orolift.crossing.facts import clouds, crest_line_notes, flow_facts, remarks, water
+from orolift.crossing.cloud import clouds
+from orolift.crossing.facts import crest_line_notes, flow_facts, remarks, water
 from orolift.crossing.heat import heat_cautions, heat_notes
+from orolift.crossing.lee_wind import lee_winds
 from orolift.crossing.march import March
 from orolift.crossing.pool import Lee, humidity_note
 from orolift.crossing.rainfall import rainfall
@@ -18,7 +20,6 @@ from orolift.crossing.result import Crossing, Site, When
 from orolift.crossing.settings import Settings, checked
 from orolift.crossing.sites import site_air
 from orolift.crossing.solve import CrestLine, Ground, ends, solve
-from orolift.crossing.wind import lee_winds
 from orolift.errors import NoCrossingError
 from orolift.terrain.features import Features, features
 
@@ -124,7 +125,7 @@ def cross(
     air = March(**{key: getattr(streams.air, key)[:, 0, :] for key in March.__dataclass_fields__})
     flow = flow_facts(ground, solution, crest_wind, settings, lee, when, trapped=in_full)
     height = streams.flow.heights[0][:, streams.place].T
-    winds = lee_winds(ground, solution, crest_wind, flow.pressure_difference)
+    (winds,) = lee_winds(ground, solution, [crest_wind], [flow.pressure_difference], members=1)
     cloud = clouds(solution, transect.distance, shape, freezing=settings.freezing)
     places, rain = transect.distance[streams.place], rainfall(ground, solution, background)
     lee_airs = tuple(

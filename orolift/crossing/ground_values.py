@@ -11,9 +11,11 @@ from orolift.air.column import interpolated
 from orolift.air.parcel import Parcel, enthalpy, entropy, equilibrium_from_enthalpy, equilibrium_from_entropy
 from orolift.constants import REFERENCE_PRESSURE
 from orolift.crossing.arrival import SAMPLES, Here, frozen_temperature, lee_profile, pressure_at, sampled, with_ground
+from orolift.crossing.cloud import HIGHEST_CLOUD
 from orolift.crossing.crossing import crest_component, ground_under
-from orolift.crossing.facts import HIGHEST_CLOUD, pressure_differences
+from orolift.crossing.facts import pressure_differences
 from orolift.crossing.heat import ground_change, surface_heat
+from orolift.crossing.lee_wind import lee_winds
 from orolift.crossing.members import OF_MEMBERS, solved_members
 from orolift.crossing.picture import CREST_BAND
 from orolift.crossing.pool import Lee, pool_air
@@ -22,7 +24,7 @@ from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import PROFILE
 from orolift.crossing.solve import solve
 from orolift.crossing.way import cloud_water, cover_on_the_way, overcast, travel_times
-from orolift.crossing.wind import NEAR_GROUND, lee_winds
+from orolift.crossing.wind import NEAR_GROUND
 from orolift.flow.surface_wind import wind_near_ground
 from orolift.terrain.features import features
 
@@ -149,7 +151,7 @@ def ground_values(
     solution = solve(ground, incoming, settings, lee, members=1, streamlines=streamlines)
     shares = 1.0, 1.0
     if methods:
-        winds = lee_winds(ground, solution, crest_wind, float(pressure_differences(ground, solution)[0]))
+        (winds,) = lee_winds(ground, solution, [crest_wind], pressure_differences(ground, solution), members=1)
         strongest = max(winds.strongest, LEAST_WIND)
         shares = min(winds.low / strongest, 1.0), max(winds.high / strongest, 1.0)
     one = _Member(incoming, ground, solution, settings, when, 0, None)

@@ -7,17 +7,20 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from orolift.air.column import column_vapour, freezing_level, interpolated, vapour_flux, wind_component
+from orolift.air.column import column_vapour, freezing_level, interpolated, wind_component
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
+from orolift.air.temperature import potential_temperature
 from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
-from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, cloud_bases, low_breaking, pressure_differences
+from orolift.crossing.layer_above import differences
+from orolift.crossing.lee_wind import lee_wind_arrays, lee_winds
+from orolift.crossing.member_values import flow_values, rain_values, steps_across
 from orolift.crossing.picture import popular_picture, upwind_ground_air
-from orolift.crossing.pool import Lee, chance_of_breaking_through, pool_air
+from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import Site, WarmingParts, When
-from orolift.crossing.settings import Settings, checked
+from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import Arrived, arrived
 from orolift.crossing.solve import NOTHING, solve
-from orolift.crossing.sun import sun_height
+from orolift.crossing.way import way_to
 from orolift.crossing.wind import winds_at
 from orolift.terrain.features import features
 
@@ -82,7 +85,12 @@ class Members:
 
 
 def members_of(
-    situation: Situation, variation: Variation, *, beside: tuple[Site, ...] = (), streamlines: int = 60
+    situation: Situation,
+    variation: Variation,
+    *,
+    beside: tuple[Site, ...] = (),
+    streamlines: int = 60,
+    observed_at: float = 0.0,
 ) -> Members:
     """What a situation gives in each of its members.
 
@@ -95,6 +103,8 @@ def members_of(
         More places on the line; unlike the situation's sites they have no say in what its crest is.
     streamlines : int
         How many, 20 or more.
+    observed_at : float [m]
+        Where on the line the incoming air was observed; times on the way count from there.
 
     Returns
     -------
@@ -118,12 +128,20 @@ def members_of(
         return Members(crosses, values, {})
     solution, part = solved.solution, solved.part
     sites = (*(situation.sites or (Site("Lee foot", ground.shape.lee_foot_distance),)), *beside)
-    flow = _of_flow(
-        ground, solution, solved.crest_wind[crosses], when, known=solved.lee_known, freezing=part.settings.freezing
-    )
+    crest_wind, freezing = solved.crest_wind[crosses], part.settings.freezing
+    flow = flow_values(ground, solution, crest_wind, when, known=solved.lee_known, freezing=freezing)
     values |= _filled(flow, crosses)
-    values |= _filled(_of_rain(ground, solution, part.incoming, situation.background), crosses)
-    at = [_filled(_of_site(site, ground, solution, part, when, situation.background), crosses) for site in sites]
+    winds = lee_winds(ground, solution, crest_wind, flow["pressure_difference"])
+    values |= _filled(lee_wind_arrays(winds), crosses)
+    values |= _filled(rain_values(ground, solution, part.incoming, situation.background), crosses)
+    at = [
+        _filled(
+            _of_site(site, ground, solution, part, when, situation.background)
+            | _of_way(site, ground, solution, part, observed_at),
+            crosses,
+        )
+        for site in sites
+    ]
     return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})
 
 
@@ -175,19 +193,9 @@ def solved_members(situation: Situation, variation: Variation, *, streamlines: i
         As `members_of`.
     """
     settings, when = checked(variation.settings), situation.when or When()
-    shape = features(situation.transect, situation.sites[0].distance if situation.sites else None)
-    ground = ground_under(
-        situation.transect,
-        shape,
-        situation.incoming,
-        situation.normal,
-        when,
-        lowest_pass=situation.lowest_pass,
-        crest_line=situation.crest_line,
-        stagnant_top=situation.stagnant_top,
-    )
-    heights = np.linspace(shape.crest, shape.crest + CREST_LAYER, 21)
-    crest_wind = np.mean(wind_component(interpolated(variation.incoming, heights), ground.normal), axis=-1)
+    ground = _ground(situation)
+    shape = ground.shape
+    crest_wind = _crest_wind(ground, variation.incoming)
     crosses = crest_wind > LEAST_CROSSING_WIND
     if not crosses.any():
         return SolvedMembers(crosses, crest_wind, ground, when, lee_known=False, part=None, solution=None)
@@ -199,6 +207,48 @@ def solved_members(situation: Situation, variation: Variation, *, streamlines: i
         solution.going_round[:] = np.where(blocked, part.share(solution.going_round), 0.0)
     known = (lee if isinstance(lee, Lee) else lee[0]).known
     return SolvedMembers(crosses, crest_wind, ground, when, lee_known=known, part=part, solution=solution)
+
+
+def crossing_members(situation: Situation, incoming: IncomingAir) -> NDArray[np.bool_]:
+    """Which members cross, without working them out.
+
+    Parameters
+    ----------
+    situation : Situation
+    incoming : IncomingAir, fields (m, nz)
+
+    Returns
+    -------
+    ndarray of bool, (m,)
+        As `Members.crosses`.
+
+    Raises
+    ------
+    TerrainError, OutOfRangeError
+        As `members_of`.
+    """
+    return _crest_wind(_ground(situation), incoming) > LEAST_CROSSING_WIND
+
+
+def _ground(situation: Situation) -> Ground:
+    """What the air of all members crosses."""
+    sites = situation.sites
+    return ground_under(
+        situation.transect,
+        features(situation.transect, sites[0].distance if sites else None),
+        situation.incoming,
+        situation.normal,
+        situation.when or When(),
+        lowest_pass=situation.lowest_pass,
+        crest_line=situation.crest_line,
+        stagnant_top=situation.stagnant_top,
+    )
+
+
+def _crest_wind(ground: Ground, incoming: IncomingAir) -> Array:
+    """Wind component across the range from the crest to 500 m above it, (m,)."""
+    heights = np.linspace(ground.shape.crest, ground.shape.crest + CREST_LAYER, 21)
+    return np.asarray(np.mean(wind_component(interpolated(incoming, heights), ground.normal), axis=-1))
 
 
 def _taken(variation: Variation, settings: Settings, rows: NDArray[np.bool_]) -> Variation:
@@ -250,62 +300,6 @@ def _of_incoming(air: IncomingAir) -> dict[str, Array]:
     }
 
 
-def _of_flow(
-    ground: Ground, solution: Solution, crest_wind: Array, when: When, *, known: bool, freezing: bool
-) -> dict[str, Array]:
-    """How the air of each member meets the range."""
-    blocked = solution.blocking
-    each = np.broadcast_shapes(solution.blocked_top.shape, crest_wind.shape)
-    through = np.array([pool is None for pool in solution.pools], dtype=np.float64)
-    sun = None
-    if when.time is not None and when.longitude is not None and when.latitude is not None:
-        sun = float(sun_height(when.time, when.longitude, when.latitude))
-    chance = through if known else np.array([chance_of_breaking_through(sun, float(wind)) for wind in crest_wind])
-    return {
-        "stability": np.broadcast_to(blocked.stability, each),
-        "nondimensional_height": np.broadcast_to(
-            np.minimum(blocked.nondimensional_height, LARGEST_NONDIMENSIONAL), each
-        ),
-        "dividing_height": np.broadcast_to(blocked.dividing_height, each),
-        "blocked_top": solution.blocked_top,
-        "blocked": (solution.blocked_top > ground.shape.base + NOTHING).astype(np.float64),
-        "going_round_share": solution.going_round,
-        "cloud_base": cloud_bases(solution, ground.shape, ground.transect.distance, freezing=freezing),
-        "breaks_through": chance,
-        "wave_breaking": low_breaking(solution, ground.shape.crest).astype(np.float64),
-        "pressure_difference": pressure_differences(ground, solution),
-    }
-
-
-def _of_rain(ground: Ground, solution: Solution, incoming: IncomingAir, background: float) -> dict[str, Array]:
-    """Water of each member, as `facts.water` and `rainfall.rainfall` give it of one."""
-    streams = solution.streams
-    x = ground.transect.distance[streams.place]
-    rate = streams.falling.landed / _steps(ground, x)[:, np.newaxis]
-    landed = streams.falling.landed
-    total = landed.sum(axis=0)
-    wet = total > 0.0
-    share_of = np.where(wet, total, np.nan)
-    vapour = np.sum(streams.carried * streams.start.vapour, axis=-1)
-    condensed = np.sum(streams.carried * streams.air.condensed.sum(axis=0), axis=-1)
-    column = vapour_flux(incoming, ground.normal)
-    return {
-        "rain_out_share": total / np.where(condensed > 0.0, condensed, np.nan),
-        "drying_ratio": total / vapour,
-        "drying_ratio_full_column": total / np.where(column > 0.0, column, np.nan),
-        "windward_share": landed[x <= ground.shape.crest_distance].sum(axis=0) / share_of,
-        "snow_share": streams.falling.landed_snow.sum(axis=0) / share_of,
-        "peak_rate": rate.max(axis=0) + background,
-        "peak_distance": np.where(wet, x[np.argmax(rate, axis=0)], np.nan),
-        "total": total,
-    }
-
-
-def _steps(ground: Ground, x: Array) -> Array:
-    """Length along the range normal of the step that ends at each place of the march [m]."""
-    return np.diff(x, prepend=x[0] - (x[1] - x[0])) * ground.cosine
-
-
 def _of_site(
     site: Site, ground: Ground, solution: Solution, variation: Variation, when: When, background: float
 ) -> dict[str, Array]:
@@ -321,12 +315,13 @@ def _of_site(
     pooled = _in_pools(place, solution, t, v)
     gone = pooled | blocked
     wind = winds_at(place.here, settings.roughness)
+    above = differences(place, incoming, solution, t, place.came.warming.surface_heating)
     nothing = np.where(pooled, np.nan, np.where(blocked, 0.0, 1.0))
     level = np.where(blocked[:, np.newaxis], place.elevation, place.came.source_level)
     level[pooled] = np.nan
     picture = popular_picture(upwind_ground_air(incoming), upwind.pressure[:, 1], p_up, freezing=settings.freezing)
     x = ground.transect.distance[solution.streams.place]
-    rate = solution.streams.falling.landed / _steps(ground, x)[:, np.newaxis]
+    rate = solution.streams.falling.landed / steps_across(ground, x)[:, np.newaxis]
     after = int(np.clip(np.searchsorted(x, site.distance), 1, x.size - 1))
     way = float(np.clip((site.distance - x[after - 1]) / (x[after] - x[after - 1]), 0.0, 1.0))
     return {
@@ -341,8 +336,15 @@ def _of_site(
         "source_level_low": level[:, 0],
         "source_level": level[:, 1],
         "source_level_high": level[:, 2],
+        "upwind_temperature": t_up,
+        "upwind_dew_point": _dew_point(p_up, upwind.vapour[:, 0]),
         "warming": t - t_up,
+        "potential_beside": potential_temperature(p_up, t_up),
+        "potential_crest": potential_temperature(upwind.pressure[:, 1], upwind.temperature[:, 1]),
+        "humidity_beside": relative_humidity_from_mixing_ratio(p_up, t_up, upwind.vapour[:, 0]),
+        "kept_off": np.array([pool is not None for pool in solution.pools], dtype=np.float64),
         **{f"warming_{name}": nothing * getattr(place.came.warming, name) for name in PARTS},
+        **{name: np.where(gone, np.nan, value) for name, value in above.items()},
         "popular_picture": picture.temperature,
         "descent_only": t_up + nothing * place.came.warming.descent,
         "went_round": np.where(pooled, 0.0, place.came.went_round),
@@ -350,6 +352,23 @@ def _of_site(
         "cloudy": (~gone & (place.came.air.cloud > 0.0)).astype(np.float64),
         "rain": (1.0 - way) * rate[after - 1] + way * rate[after] + background,
     }
+
+
+def _of_way(
+    site: Site, ground: Ground, solution: Solution, variation: Variation, observed_at: float
+) -> dict[str, Array]:
+    """Time the air of each member takes to a site, as `site_state.travel_to` gives it of one."""
+    streams = solution.streams
+    mean, _ = way_to(
+        ground.transect.distance[streams.place],
+        streams.flow.heights[..., streams.place],
+        streams.wind[..., np.newaxis] * streams.flow.speed_factor[..., streams.place],
+        site.distance,
+        start=observed_at,
+        depth=each(variation.settings.mixing_depth, solution.blocked_top.size),
+        cosine=ground.cosine,
+    )
+    return {"way": np.broadcast_to(mean, solution.blocked_top.shape)}
 
 
 def _in_pools(place: Arrived, solution: Solution, t: Array, v: Array) -> NDArray[np.bool_]:

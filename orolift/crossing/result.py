@@ -10,10 +10,11 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
+    from orolift.crossing.lee_wind import LeeWinds
     from orolift.crossing.march import March
     from orolift.crossing.pool import Pool
     from orolift.crossing.settings import Settings
-    from orolift.crossing.wind import LeeWinds, SiteWind
+    from orolift.crossing.wind import SiteWind
     from orolift.terrain.features import Features
     from orolift.terrain.transect import Transect
 

@@ -23,10 +23,11 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
+    from orolift.crossing.lee_wind import LeeWinds
     from orolift.crossing.result import Side, Site, When
     from orolift.crossing.settings import Settings
     from orolift.crossing.solve import Ground, Solution
-    from orolift.crossing.wind import LeeWinds, SiteWind
+    from orolift.crossing.wind import SiteWind
 
     Array = NDArray[np.float64]
 

@@ -47,6 +47,57 @@ def travel_times(ground: Ground, solution: Solution) -> Array:
     return np.asarray(np.cumsum(step / np.maximum(wind, SLOWEST), axis=-1))
 
 
+def way_to(
+    x: Array,
+    height: Array,
+    wind: Array,
+    where: float,
+    *,
+    start: float = 0.0,
+    depth: ArrayLike,
+    cosine: float = 1.0,
+) -> tuple[Array, Array]:
+    """Time the air that reaches a place takes from where it was observed.
+
+    Parameters
+    ----------
+    x : ndarray (nk,) [m]
+        Places along the line.
+    height, wind : ndarray (..., nz, nk) [m above sea level], [m s-1]
+        Of the streamlines over them, from the lowest up; the wind across the range.
+    where : float [m]
+        The place.
+    start : float [m]
+        Where on the line the air was observed; a place before it takes no time.
+    depth : array_like (...) [m]
+        The mixing depth.
+    cosine : float [1]
+        Of the angle between the line and the range normal.
+
+    Returns
+    -------
+    mean, spread : ndarray (...) [s]
+        Over the streamlines that arrive; one standard deviation.
+
+    Notes
+    -----
+    Along each streamline dx / u is summed over the places, x along the range normal as u is, with 1 m/s at least. Over
+    the place those count that lie in the mixing depth above its lowest streamline, weighted by the depth of each there
+    times its wind.
+    """
+    way = np.clip(x, min(start, where), where)
+    slowness = 1.0 / np.maximum(wind, SLOWEST)
+    middle = 0.5 * (slowness[..., 1:] + slowness[..., :-1])
+    taken = cosine * np.sum(np.diff(way) * middle, axis=-1)
+    at = int(np.argmin(np.abs(x - where)))
+    over = height[..., at]
+    arrives = over <= over[..., :1] + np.asarray(depth, np.float64)[..., np.newaxis]
+    weight = np.where(arrives, np.gradient(over, axis=-1) * np.maximum(wind[..., at], SLOWEST), 0.0)
+    weight = weight / weight.sum(axis=-1, keepdims=True)
+    mean = np.sum(weight * taken, axis=-1)
+    return mean, np.sqrt(np.sum(weight * (taken - mean[..., np.newaxis]) ** 2, axis=-1))
+
+
 def cloud_water(pressure: ArrayLike, cloud: ArrayLike) -> Array:
     """Cloud water of a column.
 

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.checks import within
+from orolift.flow.profiles import value_at
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
@@ -72,7 +73,7 @@ def mixing_height(
     given = within("heat", heat, 0.0, 2e4, "K m", "Heat over density and heat capacity, 0 or more.")
     extra = float(within("excess", excess, 0.0, 5.0, "K", ""))
     fine = np.linspace(z[0], z[-1], STEPS)
-    profile = _read(z, theta, fine)
+    profile = value_at(z, theta, fine)
     depth = fine - fine[0]
     below = np.concatenate(
         [
@@ -84,7 +85,7 @@ def mixing_height(
     # Air that is colder above than below mixes without any heat: the running maximum takes that in.
     needed = np.maximum.accumulate(profile * depth - below, axis=-1)
     filled = _first_above(needed, given[..., np.newaxis], fine)
-    warm = _value_at(np.maximum.accumulate(profile, axis=-1), filled, fine) + extra
+    warm = value_at(fine, np.maximum.accumulate(profile, axis=-1), filled[..., np.newaxis])[..., 0] + extra
     warm = np.maximum(warm, profile[..., 0] + extra)
     risen = _first_above(profile, warm[..., np.newaxis], fine)
     return np.asarray(np.maximum(filled, risen))[()]
@@ -92,12 +93,6 @@ def mixing_height(
 
 STEPS = 301
 """Levels on which the mixing height is looked for: every 10 m of a profile to 3 km."""
-
-
-def _read(z: Array, values: Array, at: Array) -> Array:
-    """Profiles (..., nz) at other heights by straight lines."""
-    rows = values.reshape(-1, values.shape[-1])
-    return np.stack([np.interp(at, z, row) for row in rows]).reshape(*values.shape[:-1], at.size)
 
 
 def _first_above(values: Array, limit: Array, z: Array) -> Array:
@@ -114,11 +109,3 @@ def _first_above(values: Array, limit: Array, z: Array) -> Array:
     rise = np.where(high > low, high - low, 1.0)
     share = np.where(high > low, np.clip((goal - low) / rise, 0.0, 1.0), 1.0)
     return np.asarray(z[before] + share * (z[number] - z[before]))
-
-
-def _value_at(values: Array, height: Array, z: Array) -> Array:
-    """Values (..., nz) at one height each (...)."""
-    shape = np.broadcast_shapes(values.shape[:-1], height.shape)
-    rows = np.broadcast_to(values, (*shape, values.shape[-1])).reshape(-1, values.shape[-1])
-    heights = np.broadcast_to(height, shape).reshape(-1)
-    return np.array([np.interp(h, z, row) for h, row in zip(heights, rows, strict=True)]).reshape(shape)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -15,6 +16,7 @@ from orolift.crossing.sun import sun_height
 from orolift.fire.mixing_height import mixing_height
 from orolift.fire.night import STILL_DEPTH, humidity_after_cooling, night_cooling
 from orolift.fire.weather import layer_pressure
+from orolift.flow.profiles import value_at
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -68,6 +70,58 @@ class NightAtSite:
     mixing_height_by_day: float
 
 
+NIGHT_VALUES = ("floor_windy", "floor_still", "mid_slope", "ridge", "mixing_height", "mixing_height_by_day")
+"""Numbers of a night that depend on its air."""
+
+
+def night_values(
+    weather: SiteWeather, elevation: ArrayLike, crest: ArrayLike, when: When
+) -> dict[str, NDArray[np.float64]]:
+    """The coming night of sites or members.
+
+    Parameters
+    ----------
+    weather : SiteWeather, leading axes (n,)
+    elevation, crest : array_like (n,) or single values [m above sea level]
+        Of the site, and of the crest of its line.
+    when : When
+
+    Returns
+    -------
+    dict of str to ndarray (n,)
+        By the names in `NIGHT_VALUES`, as in `NightAtSite`.
+
+    Notes
+    -----
+    The air stays that of the crossing all night, its heat from the ground taken off. The floor then loses 30 W/m2: with
+    wind from 800 m for at most 8 hours; at rest, from `night.STILL_DEPTH` and all
+    night. Slope and ridge stay in the free air over the site, without cooling and with their vapour: on a ridge
+    humidity can stay low all night. For the depth of mixing, heat of the last 8 hours, none once the sun is down, under
+    a clear sky.
+    """
+    z, vapour = weather.height_above_ground, weather.mixing_ratio
+    base, layer = weather.temperature - weather.heating, weather.layer_temperature - weather.layer_heating
+    density = np.clip(weather.pressure / (R_DRY * virtual_temperature(base, vapour)), 0.3, 1.6)
+    length = _night_length(when)
+    hours = USUAL_NIGHT if length is None else length
+    before = np.minimum(relative_humidity_from_mixing_ratio(weather.pressure, base, vapour), 1.0)
+    windy = night_cooling(min(hours, LONGEST), NIGHT_LOSS, NIGHT_DEPTH, density)
+    still = night_cooling(hours, NIGHT_LOSS, STILL_DEPTH, density)
+    pressure = layer_pressure(weather)
+    over = np.minimum(relative_humidity_from_mixing_ratio(pressure, layer, weather.layer_vapour), 1.0)
+    theta = virtual_potential_temperature(pressure, layer, weather.layer_vapour)
+    now, by_day = mixing_height(z, theta, heat=np.stack([heat / density for heat in _heats(when)]))
+    up = np.broadcast_to(np.asarray(crest, np.float64) - np.asarray(elevation, np.float64), np.shape(base))
+    return {
+        "floor_windy": np.asarray(humidity_after_cooling(base, before, windy)),
+        "floor_still": np.asarray(humidity_after_cooling(base, before, still)),
+        "mid_slope": _over(0.5 * up, z, over),
+        "ridge": _over(up, z, over),
+        "mixing_height": now,
+        "mixing_height_by_day": by_day,
+    }
+
+
 def nights_at(weather: SiteWeather, lee: Sequence[LeeAir], crests: ArrayLike, when: When) -> tuple[NightAtSite, ...]:
     """The coming night at sites.
 
@@ -83,55 +137,27 @@ def nights_at(weather: SiteWeather, lee: Sequence[LeeAir], crests: ArrayLike, wh
     Returns
     -------
     tuple of NightAtSite, n
-
-    Notes
-    -----
-    The air stays that of the crossing all night, its heat from the ground taken off. The floor then loses 30 W/m2: with
-    wind from 800 m for at most 8 hours; at rest, from `night.STILL_DEPTH` and all
-    night. Slope and ridge stay in the free air over the site, without cooling and with their vapour: on a ridge
-    humidity can stay low all night. For the depth of mixing, heat of the last 8 hours, none once the sun is down, under
-    a clear sky.
+        As `night_values` works them out.
     """
-    z, vapour = weather.height_above_ground, weather.mixing_ratio
-    heating = np.array([0.0 if air.parts is None else air.parts.surface_heating for air in lee])
-    base = weather.temperature - heating
-    nothing = np.zeros(np.shape(z)[-1])
-    warming = [nothing if air.profile.warming is None or air.parts is None else air.profile.warming for air in lee]
-    layer = weather.layer_temperature - np.stack(warming)
-    density = np.clip(weather.pressure / (R_DRY * virtual_temperature(base, vapour)), 0.3, 1.6)
+    ground, crest = np.array([air.elevation for air in lee]), np.asarray(crests, np.float64)
+    found = night_values(weather, ground, crest, when)
     length = _night_length(when)
-    hours = USUAL_NIGHT if length is None else length
-    before = np.minimum(relative_humidity_from_mixing_ratio(weather.pressure, base, vapour), 1.0)
-    windy = humidity_after_cooling(base, before, night_cooling(min(hours, LONGEST), NIGHT_LOSS, NIGHT_DEPTH, density))
-    still = humidity_after_cooling(base, before, night_cooling(hours, NIGHT_LOSS, STILL_DEPTH, density))
-    pressure = layer_pressure(weather)
-    over = np.minimum(relative_humidity_from_mixing_ratio(pressure, layer, weather.layer_vapour), 1.0)
-    theta = virtual_potential_temperature(pressure, layer, weather.layer_vapour)
-    now, by_day = (mixing_height(z, theta, heat=heat / density) for heat in _heats(when))
-    out = []
-    for number, (air, crest) in enumerate(zip(lee, np.asarray(crests, np.float64).tolist(), strict=True)):
-        half = 0.5 * (air.elevation + crest)
-        slope, ridge = (_over(height - air.elevation, z, over[number]) for height in (half, crest))
-        out.append(
-            NightAtSite(
-                length=hours,
-                length_known=length is not None,
-                floor_windy=float(windy[number]),
-                floor_still=float(still[number]),
-                mid_slope=slope,
-                ridge=ridge,
-                mid_slope_height=half,
-                ridge_height=crest,
-                mixing_height=float(now[number]),
-                mixing_height_by_day=float(by_day[number]),
-            )
+    return tuple(
+        NightAtSite(
+            length=USUAL_NIGHT if length is None else length,
+            length_known=length is not None,
+            mid_slope_height=0.5 * float(ground[number] + crest[number]),
+            ridge_height=float(crest[number]),
+            **{name: float(value[number]) for name, value in found.items()},
         )
-    return tuple(out)
+        for number in range(len(lee))
+    )
 
 
-def _over(above: float, z: Array, values: Array) -> float:
-    """Value of a profile at a height above ground, NaN at the ground, below it and above the profile."""
-    return float(np.interp(above, z, values)) if 0.0 < above <= z[-1] else float("nan")
+def _over(above: Array, z: Array, values: Array) -> Array:
+    """Values of profiles (n, nz) at a height above ground each, NaN at the ground, below it and above the profile."""
+    found = value_at(z, values, above[:, np.newaxis])[:, 0]
+    return np.where((above > 0.0) & (above <= z[-1]), found, np.nan)
 
 
 def _night_length(when: When) -> float | None:
@@ -143,6 +169,7 @@ def _night_length(when: When) -> float | None:
     return float(np.mean(down) * DAY)
 
 
+@lru_cache(maxsize=64)
 def _heats(when: When) -> tuple[float, float]:
     """Heat from the sun over heat capacity [kg m-2 K]: now, and the most of the 24 hours from now."""
     if when.time is None or when.longitude is None or when.latitude is None:

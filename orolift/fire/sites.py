@@ -76,7 +76,12 @@ class SiteFire:
     night : NightAtSite
     thresholds : tuple of Threshold
     ranges : mapping of str to (float, float)
-        10 % and 90 % of the members by the name of an index, in SI; empty without members.
+        10 % and 90 % of the members by the name of an index, of the code after hours (`chances.CODES_AFTER`) or of a
+        number of the night (`nights.NIGHT_VALUES`), in SI; empty without members.
+    input_ranges : mapping of str to (float, float)
+        The same by the inputs alone.
+    rule_ranges : mapping of quantity to (float, float)
+        As `ranges`, of what the rules speak of.
     """
 
     number: int
@@ -89,6 +94,8 @@ class SiteFire:
     night: NightAtSite
     thresholds: tuple[Threshold, ...]
     ranges: Mapping[str, tuple[float, float]] = field(default_factory=dict)
+    input_ranges: Mapping[str, tuple[float, float]] = field(default_factory=dict)
+    rule_ranges: Mapping[str | WindMeant, tuple[float, float]] = field(default_factory=dict)
 
 
 def fire_at_sites(crossing: Crossing, when: When, settings: FireSettings | None = None) -> tuple[SiteFire, ...]:

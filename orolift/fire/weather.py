@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -50,6 +50,8 @@ class SiteWeather:
     height_above_ground : ndarray (nz,) [m]
     layer_temperature, layer_vapour, layer_wind : ndarray (..., nz)
         Air over the site; a calm below the lowest air that crosses.
+    heating, layer_heating : ndarray (...) and (..., nz) [K]
+        What of the temperatures is heat from the ground of the lee, for the night.
     """
 
     pressure: Array
@@ -65,6 +67,8 @@ class SiteWeather:
     layer_temperature: Array
     layer_vapour: Array
     layer_wind: Array
+    heating: Array = field(default_factory=lambda: np.zeros(()))
+    layer_heating: Array = field(default_factory=lambda: np.zeros(()))
 
 
 def site_weather(air: LeeAir) -> SiteWeather:
@@ -95,6 +99,10 @@ def site_weather(air: LeeAir) -> SiteWeather:
         layer_temperature=profile.temperature,
         layer_vapour=np.maximum(profile.vapour, LEAST_VAPOUR),
         layer_wind=profile.wind,
+        heating=np.asarray(0.0 if air.parts is None else air.parts.surface_heating),
+        layer_heating=np.zeros_like(profile.height_above_ground)
+        if profile.warming is None or air.parts is None
+        else profile.warming,
     )
 
 

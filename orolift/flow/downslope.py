@@ -125,6 +125,8 @@ class WindEstimate:
 
     Attributes
     ----------
+    key : str
+        Of the method, a word.
     method : str
         In words.
     wind : float [m s-1]
@@ -134,27 +136,34 @@ class WindEstimate:
     source : str
     """
 
+    key: str
     method: str
     wind: float
     kind: Literal["estimate", "upper end", "limit"]
     source: str
 
 
-def finite_amplitude_estimate(ground: ArrayLike, spacing: float, n: float, wind: float) -> WindEstimate | None:
-    """Strongest wind along the ground by Long's equation.
+ESTIMATES = ("finite_amplitude", "plunging_layer", "changing_over", "fall_of_pressure")
+"""Keys of the estimates below."""
+
+
+def finite_amplitude_estimates(
+    ground: ArrayLike, spacing: float, n: ArrayLike, wind: ArrayLike
+) -> tuple[WindEstimate | None, ...]:
+    """Strongest wind along the ground by Long's equation, of each member.
 
     Parameters
     ----------
-    ground : array_like, shape (nx,) [m]
+    ground : array_like, shape (m, nx) [m]
         Equal-ended part of the boundary, above the level upwind; `boundary.Boundary.wave` serves.
     spacing : float [m]
-    n : float [s-1]
-    wind : float [m s-1]
+    n : array_like, shape (m,) [s-1]
+    wind : array_like, shape (m,) [m s-1]
         Both averaged from the lowest streamline to the crest.
 
     Returns
     -------
-    WindEstimate or None
+    tuple of (WindEstimate or None), m
         None when the solution does not settle or overturns.
 
     Raises
@@ -165,14 +174,18 @@ def finite_amplitude_estimate(ground: ArrayLike, spacing: float, n: float, wind:
     Examples
     --------
     >>> x = np.arange(-100e3, 100e3, 500.0)
-    >>> round(finite_amplitude_estimate(500.0 * np.exp(-((x / 12e3) ** 2)), 500.0, 0.01, 10.0).wind)
+    >>> (found,) = finite_amplitude_estimates(500.0 * np.exp(-((x[np.newaxis] / 12e3) ** 2)), 500.0, [0.01], [10.0])
+    >>> round(found.wind)
     14
     """
     flow = finite_amplitude_wind(ground, spacing, n, wind)
-    if not flow.settled or flow.steepness >= 1.0:
-        return None
-    strongest = wind * float(np.max(flow.speed_factor))
-    return WindEstimate("waves of finite amplitude", strongest, "estimate", "Long (1953), Tellus 5, 42-58")
+    strongest = np.asarray(wind, np.float64) * np.max(flow.speed_factor, axis=-1)
+    holds = flow.settled & (flow.steepness < 1.0)
+    method, source = "waves of finite amplitude", "Long (1953), Tellus 5, 42-58"
+    return tuple(
+        WindEstimate("finite_amplitude", method, one, "estimate", source) if good else None
+        for one, good in zip(strongest.tolist(), holds.tolist(), strict=True)
+    )
 
 
 def hydraulic_estimate(inversion: Inversion, wind: float, base: float, crest: float) -> WindEstimate | None:
@@ -208,7 +221,9 @@ def hydraulic_estimate(inversion: Inversion, wind: float, base: float, crest: fl
     if flow.regime not in (LayerRegime.JUMP_ON_SLOPE, LayerRegime.JUMP_DOWNSTREAM):
         return None
     source = "Houghton and Kasahara (1968), Communications on Pure and Applied Mathematics 21, 1-23"
-    return WindEstimate("layer under the inversion plunging", wind * flow.lee_speed, "estimate", source)
+    return WindEstimate(
+        "plunging_layer", "layer under the inversion plunging", wind * flow.lee_speed, "estimate", source
+    )
 
 
 def transitional_estimate(n: float, wind: float, relief: float, mixed_heights: Sequence[float]) -> WindEstimate | None:
@@ -241,7 +256,7 @@ def transitional_estimate(n: float, wind: float, relief: float, mixed_heights: S
         return None
     speed = transitional_flow_smith_1985(ridge).lee_speed
     source = "Smith (1985), J. Atmos. Sci. 42, 2597-2603"
-    return WindEstimate("flow changing over under a mixed layer", wind * speed, "upper end", source)
+    return WindEstimate("changing_over", "flow changing over under a mixed layer", wind * speed, "upper end", source)
 
 
 def pressure_limit(pressure_drop: float, density: float, wind: float) -> WindEstimate:
@@ -272,7 +287,9 @@ def pressure_limit(pressure_drop: float, density: float, wind: float) -> WindEst
     """
     limit = float(pressure_difference_wind(pressure_drop, density, wind))
     source = "Bernoulli; Stull (2015), Practical Meteorology, eq. 17.35"
-    return WindEstimate("fall of pressure across the range, without friction", limit, "limit", source)
+    return WindEstimate(
+        "fall_of_pressure", "fall of pressure across the range, without friction", limit, "limit", source
+    )
 
 
 def lee_wind_range(streamline_wind: float, others: Sequence[WindEstimate]) -> tuple[float, float]:
@@ -292,7 +309,7 @@ def lee_wind_range(streamline_wind: float, others: Sequence[WindEstimate]) -> tu
 
     Examples
     --------
-    >>> others = [WindEstimate("a", 18.0, "estimate", "s"), WindEstimate("b", 16.0, "limit", "s")]
+    >>> others = [WindEstimate("a", "a", 18.0, "estimate", "s"), WindEstimate("b", "b", 16.0, "limit", "s")]
     >>> lee_wind_range(14.0, others)
     (14.0, 16.0)
     """

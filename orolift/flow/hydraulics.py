@@ -6,6 +6,7 @@ The ratio ``U / sqrt(g' H0)`` is called the layer ratio here, not "Froude number
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from enum import Enum
 from typing import TYPE_CHECKING
@@ -269,8 +270,8 @@ def _partly_blocked(f: float, m: float) -> LayerFlow:
     """State behind a bore that runs upwind, with a critical crest and a fast lee side."""
 
     def upwind(depth: float) -> float:
-        bore = np.sqrt(0.5 * depth * (depth + 1.0)) - f
-        return float((f + bore) / depth - bore)
+        bore = math.sqrt(0.5 * depth * (depth + 1.0)) - f
+        return (f + bore) / depth - bore
 
     def excess(depth: float) -> float:
         speed = upwind(depth)
@@ -295,7 +296,7 @@ def _partly_blocked(f: float, m: float) -> LayerFlow:
         upwind_depth=depth,
         upwind_speed=speed,
         lee_speed=lee_speed / f,
-        lee_ratio=lee_speed / float(np.sqrt(lee_depth)),
+        lee_ratio=lee_speed / math.sqrt(lee_depth),
         jump_speed=jump,
     )
 
@@ -304,12 +305,12 @@ def _lee_jump(f: float, speed: float, depth: float) -> float:
     """Speed of the jump that leads from the fast lee side back to the layer downstream, through a rarefaction."""
 
     def moves(behind: float) -> float:
-        return speed - float(np.sqrt(behind * (behind + depth) / (2.0 * depth)))
+        return speed - math.sqrt(behind * (behind + depth) / (2.0 * depth))
 
     def excess(behind: float) -> float:
         jump = moves(behind)
         after = jump + (speed - jump) * depth / behind
-        return after - 2.0 * float(np.sqrt(behind)) - (f - 2.0)
+        return after - 2.0 * math.sqrt(behind) - (f - 2.0)
 
     low, high = depth, 1.0
     while excess(high) > 0.0:
@@ -321,8 +322,8 @@ def _blocked_depth(f: float) -> float:
     """Depth behind a bore that brings the layer to rest."""
 
     def excess(depth: float) -> float:
-        bore = np.sqrt(0.5 * depth * (depth + 1.0)) - f
-        return float((f + bore) / depth - bore)
+        bore = math.sqrt(0.5 * depth * (depth + 1.0)) - f
+        return (f + bore) / depth - bore
 
     high = 2.0
     while excess(high) > 0.0:

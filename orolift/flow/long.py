@@ -10,35 +10,35 @@ import numpy as np
 from orolift.checks import within
 
 if TYPE_CHECKING:
+    from collections.abc import Callable
+
     from numpy.typing import ArrayLike, NDArray
 
-OVERTURNING_BELL = 0.85
-"""N h / U at which the wave over a bell ridge overturns: Huppert and Miles (1969), J. Fluid Mech. 35, 481-496."""
 _ROUNDS = 400
 _CONVERGED = 1e-7
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class FiniteAmplitude:
     """Wind along the ground by Long's equation.
 
     Attributes
     ----------
-    speed_factor : ndarray, shape (nx,) [1]
+    speed_factor : ndarray, shape (..., nx) [1]
         Wind along the ground over the wind upwind.
-    steepness : float [1]
+    steepness : ndarray, shape (...) [1]
         Largest ``d(eta)/dz`` aloft. From 1 on the wave overturns and the solution no longer holds.
-    settled : bool
+    settled : ndarray of bool, shape (...)
         Whether the iteration settled; if not, the numbers mean nothing.
     """
 
     speed_factor: NDArray[np.float64]
-    steepness: float
-    settled: bool
+    steepness: NDArray[np.float64]
+    settled: NDArray[np.bool_]
 
 
 def finite_amplitude_wind(
-    ground: ArrayLike, spacing: float, n: float, wind: float, *, padding: float = 1.0e6
+    ground: ArrayLike, spacing: float, n: ArrayLike, wind: ArrayLike, *, padding: float = 1.0e6
 ) -> FiniteAmplitude:
     """Wind along the ground by Long's equation, hydrostatic, with waves leaving upward.
 
@@ -47,13 +47,13 @@ def finite_amplitude_wind(
 
     Parameters
     ----------
-    ground : array_like, shape (nx,) [m]
-        Height above the level upwind, near 0 at both ends.
+    ground : array_like, shape (..., nx) [m]
+        Height above the level upwind, near 0 at both ends; leading axes are members.
     spacing : float [m]
         1 m to 100 km.
-    n : float [s-1]
+    n : array_like, shape (...) [s-1]
         Buoyancy frequency, 0 to 0.1.
-    wind : float [m s-1]
+    wind : array_like, shape (...) [m s-1]
         Across the range, 0.1 to 200.
     padding : float [m]
         Level ground added, so that nothing wraps round.
@@ -73,6 +73,7 @@ def finite_amplitude_wind(
     with the boundary where it is, ``eta = f cos(lz) - g sin(lz)``, g the Hilbert transform of f (Lilly and
     Klemp 1979), and f is found from ``f cos(lh) - g sin(lh) = h`` by relaxed iteration. Wind along the ground
     over the wind upwind is ``1 + l (f sin(lh) + g cos(lh))``. Boussinesq; no friction.
+    Level ground has no f, so that the transform is asked for over the points of the ground only.
 
     References
     ----------
@@ -85,36 +86,53 @@ def finite_amplitude_wind(
     --------
     >>> x = np.arange(-200e3, 200e3, 500.0)
     >>> flow = finite_amplitude_wind(500.0 / (1.0 + (x / 10e3) ** 2), 500.0, 0.01, 10.0)
-    >>> flow.speed_factor.max().round(2), flow.settled
+    >>> flow.speed_factor.max().round(2), bool(flow.settled)
     (np.float64(1.34), True)
     """
     height = within("ground", ground, -9000.0, 9000.0, "m", "Give metres above the level upwind.")
     step = float(within("spacing", spacing, 1.0, 1e5, "m", "Give metres."))
-    scorer = float(within("n", n, 0.0, 0.1, "s-1")) / float(within("wind", wind, 0.1, 200.0, "m s-1"))
-    count = height.size
-    length = count + int(np.ceil(padding / step))
-    phase = scorer * np.pad(height, (0, length - count))
-    cosine, sine = np.cos(phase), np.sin(phase)
-    if np.min(cosine) < 0.1:  # ground higher than about a quarter wavelength: far beyond overturning
-        return FiniteAmplitude(np.ones(count), np.inf, settled=False)
-    f = phase.copy()
-    g = _hilbert(f)
-    settled = False
+    scorer = within("n", n, 0.0, 0.1, "s-1") / within("wind", wind, 0.1, 200.0, "m s-1")
+    lead, count = height.shape[:-1], height.shape[-1]
+    phase = (np.broadcast_to(scorer, lead)[..., np.newaxis] * height).reshape(-1, count)
+    hilbert = _hilbert(count, count + int(np.ceil(padding / step)))
+    speed, steepness = np.ones_like(phase), np.full(phase.shape[0], np.inf)
+    settled = np.zeros(phase.shape[0], dtype=bool)
+    # ground higher than about a quarter wavelength is far beyond overturning
+    rows = np.flatnonzero(np.min(np.cos(phase), axis=-1) >= 0.1)
+    f = phase[rows]
     for _ in range(_ROUNDS):
-        change = 0.3 * ((phase + g * sine) / cosine - f)
-        f = f + change
-        g = _hilbert(f)
-        largest = float(np.max(np.abs(change)))
-        settled = largest < _CONVERGED
-        if settled or not largest < 10.0:
+        if not rows.size:
             break
-    steepness = float(np.max(np.hypot(f, g)))
-    speed = 1.0 + f * sine + g * cosine
-    return FiniteAmplitude(np.asarray(speed[:count]), steepness, settled)
+        own, g = phase[rows], hilbert(f)
+        sine, cosine = np.sin(own), np.cos(own)
+        change = 0.3 * ((own + g * sine) / cosine - f)
+        f = f + change
+        largest = np.max(np.abs(change), axis=-1)
+        done, going = largest < _CONVERGED, (largest >= _CONVERGED) & (largest < 10.0)
+        if done.any():
+            there = rows[done]
+            last = hilbert(f[done])
+            settled[there] = True
+            steepness[there] = np.max(np.hypot(f[done], last), axis=-1)
+            speed[there] = 1.0 + f[done] * sine[done] + last * cosine[done]
+        rows, f = rows[going], f[going]
+    return FiniteAmplitude(speed.reshape(height.shape), steepness.reshape(lead)[()], settled.reshape(lead)[()])
 
 
-def _hilbert(values: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Hilbert transform, of 1 / (1 + x^2) it is x / (1 + x^2)."""
-    spectrum = np.fft.rfft(values) * -1j
-    spectrum[0] = 0.0
-    return np.asarray(np.fft.irfft(spectrum, n=values.size))
+def _hilbert(count: int, length: int) -> Callable[[NDArray[np.float64]], NDArray[np.float64]]:
+    """Hilbert transform of rows (m, count) that are nothing beyond, of 1 / (1 + x^2) it is x / (1 + x^2).
+
+    The values repeat after `length` points; as a convolution it needs no more than twice `count` of them.
+    """
+    turned = np.full(length // 2 + 1, -1j)
+    turned[0] = 0.0
+    kernel = np.fft.irfft(turned, n=length)
+    size = 1 << (2 * count - 1).bit_length()
+    wrapped = np.zeros(size)
+    wrapped[:count], wrapped[size - count + 1 :] = kernel[:count], kernel[length - count + 1 :]
+    spectrum = np.fft.rfft(wrapped)
+
+    def transform(values: NDArray[np.float64]) -> NDArray[np.float64]:
+        return np.asarray(np.fft.irfft(np.fft.rfft(values, n=size) * spectrum, n=size)[:, :count])
+
+    return transform

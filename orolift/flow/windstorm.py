@@ -12,6 +12,8 @@ class Condition:
 
     Attributes
     ----------
+    key : str
+        A word.
     statement : str
         What favours it, a sentence.
     met : bool or None
@@ -19,6 +21,7 @@ class Condition:
     source : str
     """
 
+    key: str
     statement: str
     met: bool | None
     source: str
@@ -65,6 +68,21 @@ class Setting:
     tropopause_factor: float | None = None
 
 
+CONDITIONS = (
+    "crest_wind",
+    "square_across",
+    "little_shear",
+    "high_crest",
+    "steep_slope",
+    "inversion",
+    "stable_crest",
+    "critical_level",
+    "breaking_ridge",
+    "tropopause",
+)
+"""Keys of the conditions, in their order."""
+
+
 def windstorm_conditions(setting: Setting) -> tuple[Condition, ...]:
     """Conditions that favour a downslope windstorm, and whether they hold.
 
@@ -92,51 +110,61 @@ def windstorm_conditions(setting: Setting) -> tuple[Condition, ...]:
     s = setting
     return (
         Condition(
+            "crest_wind",
             "The wind across the crest is at least 15 m/s.",
             _at_least(s.crest_wind, 15.0),
             "Colman and Dierking (1992), Wea. Forecasting 7, 49-64",
         ),
         Condition(
+            "square_across",
             "The wind at the crest is within 30 degrees of square across the range.",
             _at_most(s.angle_off_normal, math.radians(30.0) + 1e-9),
             "from memory: Brinkmann (1974), Mon. Weather Rev. 102, 592-602",
         ),
         Condition(
+            "little_shear",
             "The wind across the range falls, or hardly grows, from the crest to 3 km above it.",
             _ratio_at_most(s.wind_well_above, s.crest_wind, 1.2),
             "AMS Glossary of Meteorology, downslope windstorm; the factor 1.2 is a judgement",
         ),
         Condition(
+            "high_crest",
             "The crest stands at least 1 km above the lee.",
             _at_least(s.relief, 1000.0),
             "AMS Glossary of Meteorology, downslope windstorm",
         ),
         Condition(
+            "steep_slope",
             "The lee slope is steep: at least 1 in 20 on the whole.",
             _at_least(s.lee_slope, 0.05),
             "AMS Glossary of Meteorology, downslope windstorm; the figure is a judgement",
         ),
         Condition(
+            "inversion",
             "An inversion lies within 600 m of the crest.",
             _at_most(None if s.inversion_above_crest is None else abs(s.inversion_above_crest), 600.0),
             "Colman and Dierking (1992), Wea. Forecasting 7, 49-64; 600 m from memory: Brinkmann (1974)",
         ),
         Condition(
+            "stable_crest",
             "Air near the crest is more stable than the air above it.",
             _ratio_at_most(s.upper_n, s.crest_n, 0.8),
             "AMS Glossary of Meteorology, downslope windstorm; the factor 0.8 is a judgement",
         ),
         Condition(
+            "critical_level",
             "The wind across the range vanishes between 1.5 and 4 km above the crest.",
             _between(s.critical_level_above_crest, 1500.0, 4000.0),
             "Colman and Dierking (1992), Wea. Forecasting 7, 49-64",
         ),
         Condition(
+            "breaking_ridge",
             "The ridge is high enough for its wave to break: N h / U is at least 0.85.",
             _at_least(s.nondimensional_height, 0.85),
             "Huppert and Miles (1969), J. Fluid Mech. 35, 481-496",
         ),
         Condition(
+            "tropopause",
             "The tropopause sends the wave back so that it strengthens the wind by half or more.",
             _at_least(s.tropopause_factor, 1.5),
             "Klemp and Lilly (1975), J. Atmos. Sci. 32, 320-339; the factor 1.5 is a judgement",

@@ -157,26 +157,6 @@ def fit_to_gauges(
     return RainFit(cloud, fall, total, background, n, scores[0], scores[1], scores[2], of_mean, notes)
 
 
-def with_fit(parameters: RainParameters, fit: RainFit) -> RainParameters:
-    """Parameters with the fitted values put in.
-
-    Parameters
-    ----------
-    parameters : RainParameters
-    fit : RainFit
-
-    Returns
-    -------
-    RainParameters
-    """
-    return replace(
-        parameters,
-        cloud_time=fit.cloud_time.value,
-        fall_time=fit.fall_time.value,
-        background=fit.background.value,
-    )
-
-
 def _model_at(
     grid: ElevationGrid, parameters: RainParameters, x: Array, y: Array, floor: float | None, seconds: float
 ) -> Model:

@@ -10,6 +10,7 @@ import numpy as np
 from orolift.air.wet_bulb import wet_bulb_from_mixing_ratio
 from orolift.constants import MELTING_POINT
 from orolift.crossing.pool import pool_air
+from orolift.crossing.rainfall import by_height
 from orolift.rain.snow import snow_share_from_wet_bulb
 
 if TYPE_CHECKING:
@@ -87,17 +88,12 @@ def bands_of_sides(crossing: Crossing, *, step: float = STEP) -> tuple[BandOfSid
     share = snow_share_on_line(crossing)
     whole = crossing.rain.rate + crossing.rain.background
     snow = crossing.rain.snow_rate + crossing.rain.background * share
+    columns = np.stack([whole, snow, share], axis=-1)
+    means = by_height(crossing.distance, ground, crossing.features.crest_distance, columns, step)
     out = []
-    for side, here in (
-        ("windward", crossing.distance <= crossing.features.crest_distance),
-        ("lee", crossing.distance > crossing.features.crest_distance),
-    ):
-        band = np.floor(ground / step).astype(np.intp)
-        for number in np.unique(band[here]):
-            part = here & (band == number)
-            fell = float(whole[part].mean())
-            frozen = float(snow[part].mean() / fell) if fell > 0.0 else float(share[part].mean())
-            out.append(BandOfSide(side, step * float(number), step * float(number + 1), fell, frozen))
+    for (side, number), (fell, frozen, would_be) in means.items():
+        part = float(frozen / fell) if fell > 0.0 else float(would_be)
+        out.append(BandOfSide(side, step * number, step * (number + 1), float(fell), part))
     return tuple(out)
 
 

@@ -6,11 +6,14 @@ from dataclasses import dataclass
 from datetime import UTC
 from typing import TYPE_CHECKING
 
-from orolift.report.cautions import ALWAYS
+from orolift.report.bearings_sure import HOW_MEMBERS, agreement_words, crossing_words, lost_words, with_range
+from orolift.report.cautions import ALWAYS, RANGE_OF_MEMBERS
 from orolift.report.figures.roses import roses_figure
 from orolift.report.hours_page import ONE_ANSWER
 from orolift.report.quantities import Amount
+from orolift.report.spans import span_of
 from orolift.report.words import moment
+from orolift.spread.state_ranges import chance_at, range_at
 
 if TYPE_CHECKING:
     from datetime import datetime
@@ -21,14 +24,21 @@ if TYPE_CHECKING:
     from orolift.report.words import Words
     from orolift.spread.bearings import Bearings, SiteBearings
     from orolift.spread.site_state import SiteState
+    from orolift.spread.spread import Drawn
 
+HPA = 100.0
+"""Pascals in a hectopascal: drying is shown as hPa m/s, a unit that no kind of quantity has."""
 NAMED = 4
 """Sites named one by one at the head of the page."""
 
 
 @dataclass(frozen=True)
 class DirectionRow:
-    """One wind direction at a site; None where there is no number."""
+    """One wind direction at a site; None where there is no number.
+
+    `crosses` and `wet` are the chances that air crosses at all and that it rains, None without members; `spans` has
+    the ranges by field.
+    """
 
     wind_from: Amount
     state: str
@@ -40,6 +50,9 @@ class DirectionRow:
     wind_10m: Amount | None
     drying: Amount | None
     rain: Amount | None
+    crosses: Amount | None
+    wet: Amount | None
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -67,6 +80,8 @@ class BearingsPage:
     units : 'metric' or 'us'
     given, step : Amount
         Direction of the case, and between two directions.
+    members : int
+        0 without.
     lead : tuple of Words
     sites : tuple of SiteRoses
     how : tuple of str
@@ -80,6 +95,7 @@ class BearingsPage:
     units: Units
     given: Amount
     step: Amount
+    members: int
     heading: Words
     lead: tuple[Words, ...]
     sites: tuple[SiteRoses, ...]
@@ -108,6 +124,7 @@ def bearings_page(
     made_at: datetime,
     version: str,
     notes: tuple[str, ...],
+    drawn: Drawn | None = None,
     units: Units = "metric",
 ) -> BearingsPage:
     """The page of every wind direction.
@@ -122,6 +139,8 @@ def bearings_page(
         Of orolift.
     notes : tuple of str
         What was assumed.
+    drawn : Drawn, optional
+        What the members were drawn from.
     units : 'metric' or 'us'
 
     Returns
@@ -136,13 +155,22 @@ def bearings_page(
         units=units,
         given=Amount(bearings.given, "bearing"),
         step=Amount(bearings.step, "bearing"),
+        members=0 if drawn is None else drawn.members,
         heading=_worst(first, bearings),
         lead=_lead(bearings),
         sites=tuple(_site(bearings, number, units) for number in range(len(bearings.sites))),
-        how=HOW,
-        cautions=(ALWAYS[0], ONE_ANSWER, *ALWAYS[1:]),
+        how=HOW if drawn is None else (*HOW, *HOW_MEMBERS),
+        cautions=(ALWAYS[0], *_doubts(bearings, drawn), *ALWAYS[1:]),
         notes=notes,
     )
+
+
+def _doubts(bearings: Bearings, drawn: Drawn | None) -> tuple[Words, ...]:
+    """What the ranges hold, and whether members are missing in them."""
+    if drawn is None:
+        return (ONE_ANSWER,)
+    lost = lost_words(bearings)
+    return ((RANGE_OF_MEMBERS,), lost) if lost else ((RANGE_OF_MEMBERS,),)
 
 
 def _lead(bearings: Bearings) -> tuple[Words, ...]:
@@ -157,6 +185,8 @@ def _lead(bearings: Bearings) -> tuple[Words, ...]:
                 " directions are here.",
             )
         )
+    if sure := agreement_words(bearings.sites[0], bearings):
+        out.append(sure)
     out += [(*_worst(site, bearings), ".") for site in bearings.sites[1:NAMED]]
     if all(site.rain is None for site in bearings.sites):
         return (*out, ("No direction brings rain out of this air.",))
@@ -172,10 +202,10 @@ def _worst(site: SiteBearings, bearings: Bearings) -> Words:
     return (
         f"Worst for fire at {site.name} is wind from ",
         Amount(float(bearings.wind_from[site.fire]), "bearing"),
-        ": ",
-        Amount(state.relative_humidity, "share"),
-        " humidity and ",
-        Amount(state.wind_10m, "wind", 0),
+        ": humidity ",
+        *with_range(Amount(state.relative_humidity, "share"), state, "relative_humidity"),
+        ", wind ",
+        *with_range(Amount(state.wind_10m, "wind", 0), state, "wind_10m"),
         " at 10 m",
     )
 
@@ -188,7 +218,7 @@ def _rain(site: SiteBearings, bearings: Bearings) -> Words:
         f"Most rain falls at {site.name} with wind from ",
         Amount(float(bearings.wind_from[site.rain]), "bearing"),
         ": ",
-        Amount(state.rain, "rain_rate", 1),
+        *with_range(Amount(state.rain, "rain_rate", 1), state, "rain"),
     )
 
 
@@ -215,7 +245,7 @@ def _warmest(site: SiteBearings, bearings: Bearings) -> Words:
         f"{site.name} warms most with wind from ",
         Amount(float(bearings.wind_from[site.warmest]), "bearing"),
         ": by ",
-        Amount(state.warming, "temperature_difference", 1),
+        *with_range(Amount(state.warming, "temperature_difference", 1), state, "warming"),
         ", ",
         Amount(state.shelter_distance, "distance"),
         " behind ground of ",
@@ -225,12 +255,7 @@ def _warmest(site: SiteBearings, bearings: Bearings) -> Words:
 
 def _sentences(site: SiteBearings, bearings: Bearings) -> tuple[Words, ...]:
     out: list[Words] = [(*_worst(site, bearings), "."), (*_rain(site, bearings), ".")]
-    none = sum(state.status == "no crossing" for state in site.states)
-    if none:
-        all_of_them = len(site.states)
-        out.append(
-            ("From ", Amount(none, "plain"), " of ", Amount(all_of_them, "plain"), " directions no air crosses.")
-        )
+    out += [words for words in (agreement_words(site, bearings), crossing_words(site)) if words]
     return tuple(out)
 
 
@@ -238,17 +263,27 @@ def _row(bearing: float, state: SiteState) -> DirectionRow:
     def amount(value: float | None, kind: Kind, digits: int) -> Amount | None:
         return None if value is None else Amount(value, kind, digits)
 
+    drying = None if state.drying_power is None else state.drying_power / HPA
+    shown = {
+        "warming": amount(state.warming, "temperature_change", 1),
+        "temperature": amount(state.temperature, "temperature", 0),
+        "relative_humidity": amount(state.relative_humidity, "share", 0),
+        "wind_10m": amount(state.wind_10m, "wind", 0),
+        "rain": amount(state.rain, "rain_rate", 1),
+    }
+    spans = {name: span_of(like, range_at(state, name)) for name, like in shown.items() if like is not None}
+    if drying is not None and (ends := range_at(state, "drying_power")) is not None:
+        spans["drying"] = span_of(Amount(drying, "plain"), (ends[0] / HPA, ends[1] / HPA))
     return DirectionRow(
         wind_from=Amount(bearing, "bearing"),
         state=_words(state),
         shelter_height=amount(state.shelter_height, "height", 0),
         shelter_distance=amount(state.shelter_distance, "distance", 0),
-        warming=amount(state.warming, "temperature_change", 1),
-        temperature=amount(state.temperature, "temperature", 0),
-        relative_humidity=amount(state.relative_humidity, "share", 0),
-        wind_10m=amount(state.wind_10m, "wind", 0),
-        drying=amount(None if state.drying_power is None else state.drying_power / 100.0, "plain", 0),
-        rain=amount(state.rain, "rain_rate", 1),
+        drying=amount(drying, "plain", 0),
+        crosses=amount(chance_at(state, "crosses"), "share", 0),
+        wet=amount(chance_at(state, "rain"), "share", 0),
+        spans=spans,
+        **shown,
     )
 
 

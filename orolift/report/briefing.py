@@ -5,16 +5,22 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from orolift.report.causes import cause_noun, main_cause
-from orolift.report.key_numbers import KeyNumber, blocked_with_range, gusts, key_numbers
+from orolift.report.causes import cause_noun, main_cause, plain_end
+from orolift.report.key_numbers import (
+    KeyNumber,
+    before,
+    blocked_with_range,
+    gusts,
+    key_numbers,
+    nondimensional_words,
+    pool_top,
+)
 from orolift.report.lee_wind import range_words
 from orolift.report.quantities import NO_BREAK_SPACE, Amount
-from orolift.report.spans import Spans, ranged
+from orolift.report.spans import Spans, changed, inside, ranged
 from orolift.report.story import (
     ROUNDING,
     SAME,
-    blocked_words,
-    difference,
     fallen_share,
     falling,
     is_blocked,
@@ -71,7 +77,7 @@ def briefing(crossing: Crossing, bearing: float, freezing_level: float, spans: S
     spans = spans or Spans(crossing, None)
     both = (_both_answers(spans, site),) if reaches_the_ground_or_not(crossing, site) else ()
     return Briefing(
-        heading=briefing_heading(crossing),
+        heading=briefing_heading(spans),
         sentences=(
             *both,
             (*_flow(spans, bearing), " ", *_cloud(spans)),
@@ -83,42 +89,47 @@ def briefing(crossing: Crossing, bearing: float, freezing_level: float, spans: S
     )
 
 
-def briefing_heading(crossing: Crossing) -> Words:
+def briefing_heading(spans: Spans) -> Words:
     """The conclusion of a crossing in one line.
 
     Parameters
     ----------
-    crossing : Crossing
+    spans : Spans
 
     Returns
     -------
     Words
     """
-    site = main_site(crossing)
-    here = Amount(site.temperature, "temperature", 1)
+    crossing, site = spans.crossing, spans.main
+    here = ranged(Amount(site.temperature, "temperature", 1), spans.temperature(site))
     if site.in_pool and crossing.pool is not None:
         return (
             "A cold pool up to ",
-            Amount(crossing.pool.top, "height", -1),
+            *pool_top(spans, crossing.pool),
             f" keeps {site.name} at ",
-            here,
+            *here,
             "; the crossing air passes over it",
         )
     if reaches_the_ground_or_not(crossing, site):
-        cold = Amount(site.upwind_temperature, "temperature", 1)
-        return (f"{site.name}: ", here, " if the air breaks through, about ", cold, " if a cold pool stays")
+        cold = before(spans, site)
+        return (f"{site.name}: ", *here, " if the air breaks through, about ", *cold, " if a cold pool stays")
     if site.in_blocked_air:
-        return ("Low air is blocked up to ", *blocked_words(crossing)[:1], f"; {site.name} lies in it, at ", here)
-    change = difference(
-        site.warming, "warmer than the incoming air", "cooler than the incoming air", "as the incoming air"
+        return ("Low air is blocked up to ", *blocked_with_range(spans), f"; {site.name} lies in it, at ", *here)
+    change = changed(
+        site.warming,
+        spans.warming(site),
+        "warmer than the incoming air",
+        "cooler than the incoming air",
+        "as the incoming air",
     )
-    return (*_flow_clause(crossing), f"; {site.name} has ", here, ", ", *change)
+    return (*_flow_clause(spans), f"; {site.name} has ", *here, ", ", *change)
 
 
-def _flow_clause(crossing: Crossing) -> Words:
+def _flow_clause(spans: Spans) -> Words:
     """The flow in a few words."""
+    crossing = spans.crossing
     if is_blocked(crossing):
-        return ("Low air is blocked up to ", Amount(crossing.flow.blocked_top, "height", -1))
+        return ("Low air is blocked up to ", *blocked_with_range(spans))
     if rains(crossing):
         return (
             f"The air flows over and {fraction_in_words(fallen_share(crossing))} of its vapour {falling(crossing)}",
@@ -136,7 +147,7 @@ def _both_answers(spans: Spans, site: LeeAir) -> Words:
         f"{site.name} gets ",
         *ranged(Amount(site.temperature, "temperature", 1), spans.temperature(site)),
         "; if a cold pool stays, it keeps roughly the temperature of the incoming air at its height, ",
-        Amount(site.upwind_temperature, "temperature", 1),
+        *before(spans, site),
         ".",
     )
 
@@ -153,14 +164,14 @@ def _flow(spans: Spans, bearing: float) -> Words:
         " with ",
         *ranged(Amount(flow.crest_wind, "wind"), spans.of("cross_range_wind")),
         f" across it: N{NO_BREAK_SPACE}h/U is ",
-        Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2),
+        *nondimensional_words(spans),
         f", so the flow {_CERTAIN.get(regime_words(crossing), flow.regime)}",
     )
     others = [_POSSIBLE.get(one, one) for one in flow.possible_regimes if one != flow.regime]
     if others:
         start = (*start, f"; within the uncertainty it may also {' or '.join(others)}")
     if not is_blocked(crossing):
-        return (*start, *_unblocked(crossing))
+        return (*start, *_unblocked(spans))
     share = flow.going_round_share
     round_words: Words = (", and none of it comes through gaps or round the ends ",)
     if share > 0.0:
@@ -194,10 +205,10 @@ _POSSIBLE = {
 }
 
 
-def _unblocked(crossing: Crossing) -> Words:
+def _unblocked(spans: Spans) -> Words:
     """That nothing is blocked, and how far the range of that reaches."""
-    high = crossing.flow.blocked_top_high
-    if high > crossing.features.base + ROUNDING:
+    _, high = spans.blocked_top() or (0.0, 0.0)
+    if high > spans.crossing.features.base + ROUNDING:
         return (". No layer is stopped, at most the air below ", Amount(high, "height", -1), ".")
     return (". No layer is stopped: air from the ground up comes over.",)
 
@@ -215,7 +226,11 @@ def _cloud(spans: Spans) -> Words:
     if not rains(crossing):
         return (*start, ", and hardly any water falls out.")
     rain, part = crossing.rain, fraction_in_words(share)
-    words: Words = (f", and {part} of the vapour (", *_share_inside(share, spans), f") {falling(crossing)}")
+    words: Words = (
+        f", and {part} of the vapour (",
+        *inside(Amount(share, "share"), spans.drying()),
+        f") {falling(crossing)}",
+    )
     if rain.windward_share is not None:
         windward = ranged(Amount(rain.windward_share, "share"), spans.of("windward_share"))
         words = (*words, ", ", *windward, " of it before the crest")
@@ -226,15 +241,6 @@ def _cloud(spans: Spans) -> Words:
         *ranged(Amount(rain.peak_rate, "rain_rate", 1), spans.of("peak_rate")),
         ".",
     )
-
-
-def _share_inside(share: float, spans: Spans) -> Words:
-    """A share that stands in brackets already: its range follows a comma."""
-    first, *rest = ranged(Amount(share, "share"), spans.drying())
-    if not rest:
-        return (first,)
-    low, high = rest[1], rest[3]
-    return (first, ", ", low, " to ", high)
 
 
 def _lee(spans: Spans, site: LeeAir) -> Words:
@@ -250,7 +256,7 @@ def _lee(spans: Spans, site: LeeAir) -> Words:
         f" {side} the crest) ",
     )
     if site.in_pool:
-        return (*start, "cold air stays: ", *_values(spans, site), ". ", *_above_the_pool(crossing))
+        return (*start, "cold air stays: ", *_values(spans, site), ". ", *_above_the_pool(spans))
     if site.in_blocked_air:
         return (*start, "the air is stopped and stays as it came: ", *_values(spans, site), ".")
     return (
@@ -260,9 +266,9 @@ def _lee(spans: Spans, site: LeeAir) -> Words:
         " arrives with ",
         *_values(spans, site),
         ": ",
-        *difference(site.warming, "warmer than", "cooler than", "as warm as"),
+        *changed(site.warming, spans.warming(site), "warmer than", "cooler than", "as warm as"),
         " the incoming air at the same height",
-        *_mainly(crossing, site),
+        *_mainly(spans, site),
         ".",
     )
 
@@ -283,36 +289,36 @@ def _values(spans: Spans, site: LeeAir) -> Words:
     )
 
 
-def _above_the_pool(crossing: Crossing) -> Words:
+def _above_the_pool(spans: Spans) -> Words:
+    crossing = spans.crossing
     if crossing.pool is None:
         return ()
     at = len(crossing.distance) - 1
     return (
         "Above ",
-        Amount(crossing.pool.top, "height", -1),
+        *pool_top(spans, crossing.pool),
         " the crossing air blows over it with ",
-        Amount(float(crossing.wind[at, 0]), "wind"),
+        *ranged(Amount(float(crossing.wind[at, 0]), "wind"), spans.of("wind_over_pool")),
         ".",
     )
 
 
-def _mainly(crossing: Crossing, site: LeeAir) -> Words:
+def _mainly(spans: Spans, site: LeeAir) -> Words:
     found = main_cause(site)
     if found is None or abs(site.warming) < SAME:
         return ()
     key, part = found
-    noun = cause_noun(crossing, site, key)
-    last = noun[-1]
-    bare = (*noun[:-1], last.rstrip(",") if isinstance(last, str) else last)
-    return (", mainly by ", *bare, " (", Amount(part, "temperature_change", 1), ")")
+    noun = plain_end(cause_noun(spans.crossing, site, key, source=False))
+    return (", mainly by ", *noun, " (", *inside(Amount(part, "temperature_change", 1), spans.part(site, key)), ")")
 
 
 def _wind(spans: Spans, site: LeeAir) -> Words:
     """The wind down the lee and at the site."""
     winds = spans.crossing.winds
     span = range_words(winds.low, winds.high)
-    start: Words = ("The wind down the lee slope reaches ", Amount(winds.strongest, "wind"))
-    if span:
+    ends = spans.of("lee_wind")
+    start: Words = ("The wind down the lee slope reaches ", *ranged(Amount(winds.strongest, "wind"), ends))
+    if span and ends is None:
         start = (*start, ", ", *span, " by all methods")
     if site.wind is None:
         why = "lies in the cold pool" if site.in_pool else "lies in air that hardly moves"

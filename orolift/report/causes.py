@@ -5,8 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from orolift.report.key_numbers import before
 from orolift.report.quantities import Amount
-from orolift.report.story import SAME, difference, main_site, rains, removal_words, where_words
+from orolift.report.spans import Spans, changed, ranged, span_of
+from orolift.report.story import SAME, rains, removal_words, source_words, where_words
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir, WarmingParts
@@ -41,6 +43,8 @@ class CauseRow:
         None in a pool that stays.
     total : Amount
         Site minus incoming air at the same height.
+    spans : dict of str to Words
+        Ranges of the parts by the inputs, and of the total, by their names.
     """
 
     number: int
@@ -54,6 +58,7 @@ class CauseRow:
     surface_heating: Amount | None
     pressure: Amount | None
     total: Amount
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -65,28 +70,29 @@ class Causes:
     rows: tuple[CauseRow, ...]
 
 
-def causes(crossing: Crossing) -> Causes:
+def causes(spans: Spans) -> Causes:
     """Why it is warm or cold at the sites.
 
     Parameters
     ----------
-    crossing : Crossing
+    spans : Spans
 
     Returns
     -------
     Causes
     """
-    rows = tuple(_row(site, site.number) for site in crossing.lee)
-    site = main_site(crossing)
-    return Causes(heading=cause_heading(crossing, site), explanation=_explanation(crossing, site), rows=rows)
+    rows = tuple(_row(site, spans) for site in spans.crossing.lee)
+    site = spans.main
+    return Causes(heading=cause_heading(spans.crossing, site), explanation=_explanation(spans, site), rows=rows)
 
 
-def _row(site: LeeAir, number: int) -> CauseRow:
+def _row(site: LeeAir, spans: Spans) -> CauseRow:
     def part(key: str) -> Amount | None:
         return None if site.parts is None else Amount(getattr(site.parts, key), "temperature_change", 1)
 
+    total = Amount(site.warming, "temperature_change", 1)
     return CauseRow(
-        number=number,
+        number=site.number,
         name=site.name,
         side=site.side,
         remark=where_words(site),
@@ -96,7 +102,9 @@ def _row(site: LeeAir, number: int) -> CauseRow:
         mixing=part("mixing"),
         surface_heating=part("surface_heating"),
         pressure=part("pressure"),
-        total=Amount(site.warming, "temperature_change", 1),
+        total=total,
+        spans={key: span_of(part(key), spans.part(site, key)) for key in PARTS}
+        | {"total": span_of(total, spans.warming(site))},
     )
 
 
@@ -114,13 +122,13 @@ def main_cause(site: LeeAir) -> tuple[str, float] | None:
     return None if abs(part) < SAME else (key, part)
 
 
-def cause_noun(crossing: Crossing, site: LeeAir, key: str) -> Words:
-    """A cause as the subject of a sentence."""
+def cause_noun(crossing: Crossing, site: LeeAir, key: str, *, source: bool = True) -> Words:
+    """A cause as the subject of a sentence; with the height the air comes from where `source` asks for it."""
     if key == "descent" and site.went_round > 0.0:  # its source level is that of both ways together
         return ("descent from aloft",)
     if key == "descent":
         if site.source_level is not None and site.source_level > site.elevation + 50.0:
-            return ("descent from ", Amount(site.source_level, "height", -1))
+            return ("descent from ", *source_words(site)) if source else ("descent",)
         return ("air from other heights",)
     if key == "latent":
         return ("heat of condensation, kept because water fell out," if rains(crossing) else "condensation",)
@@ -151,15 +159,15 @@ def cause_heading(crossing: Crossing, site: LeeAir) -> Words:
     if second is not None:
         other = cause_noun(crossing, site, second)
         return (
-            *_plain_end(subject),
+            *plain_end(subject),
             " and ",
-            *_plain_end(other),
+            *plain_end(other),
             f" explain the {what} together{'' if second == 'latent' else _rain_clause(crossing, key)}",
         )
     return (*subject, f" explains the {what}{_rain_clause(crossing, key)}")
 
 
-def _plain_end(words: Words) -> Words:
+def plain_end(words: Words) -> Words:
     """Words without a comma at their end."""
     last = words[-1]
     return (*words[:-1], last.rstrip(",") if isinstance(last, str) else last)
@@ -184,35 +192,35 @@ def _rain_clause(crossing: Crossing, key: str) -> str:
     return "; rain plays no part" if not rains(crossing) else "; rain plays a small part"
 
 
-def _explanation(crossing: Crossing, site: LeeAir) -> tuple[Words, ...]:
+def _explanation(spans: Spans, site: LeeAir) -> tuple[Words, ...]:
     """The budget of the main site in sentences."""
     if site.parts is None or site.in_blocked_air:
         return ()
     first: Words = (
         f"{site.name} is ",
-        *difference(site.warming, "warmer than", "cooler than", "as warm as"),
+        *changed(site.warming, spans.warming(site), "warmer than", "cooler than", "as warm as"),
         " the incoming air at its height: ",
-        Amount(site.temperature, "temperature", 1),
+        *ranged(Amount(site.temperature, "temperature", 1), spans.temperature(site)),
         " against ",
-        Amount(site.upwind_temperature, "temperature", 1),
+        *before(spans, site),
         ".",
     )
     if site.parts.descent > COUNTS and site.source_level is not None:
-        by = Amount(site.parts.descent, "temperature_difference", 1)
-        first = (*first, " Brought down dry, the air that crosses would be ", by, " warmer than that air.")
-    return (first, *_remarks(crossing, site))
+        by = ranged(Amount(site.parts.descent, "temperature_difference", 1), spans.part(site, "descent"))
+        first = (*first, " Brought down dry, the air that crosses would be ", *by, " warmer than that air.")
+    return (first, *_remarks(spans, site))
 
 
-def _remarks(crossing: Crossing, site: LeeAir) -> list[Words]:
+def _remarks(spans: Spans, site: LeeAir) -> list[Words]:
     """What the parts do not say by themselves."""
-    parts = site.parts
+    crossing, parts = spans.crossing, site.parts
     if parts is None:
         return []
     out: list[Words] = []
     if parts.going_round < -COUNTS:
         out.append(
             (
-                Amount(site.went_round, "share"),
+                *ranged(Amount(site.went_round, "share"), spans.at(site, "went_round")),
                 " of the air there went round the range at its own height, neither lifted nor warmed; that share is ",
                 f"{crossing.flow.going_round_source}.",
             )

@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING
 
 from orolift.report.inputs import PROFILE
 from orolift.report.quantities import Amount
+from orolift.report.spans import Spans, ranged
 from orolift.report.story import (
     is_blocked,
     rains,
@@ -37,7 +38,7 @@ _LINEAR = (
     "Streamlines are those of linear waves: position and size of single waves and of the strongest wind are less sure "
     "than how high the air comes from."
 )
-_RANGE_OF_MEMBERS = (
+RANGE_OF_MEMBERS = (
     "How much low air is blocked and how much of it goes round decides the lee temperature, and real ranges scatter "
     "about the thresholds. The ranges in brackets hold the middle eight tenths of the members, that scatter among "
     "what they differ in; for rain, cloud and heights the error of the method comes on top and is not in them."
@@ -71,45 +72,51 @@ class Cautions:
     notes: tuple[str, ...]
 
 
-def cautions(crossing: Crossing, valid_time: datetime | None, *, members: bool = False) -> Cautions:
+def cautions(spans: Spans, valid_time: datetime | None) -> Cautions:
     """Cautions and notes of a crossing.
 
     Parameters
     ----------
-    crossing : Crossing
+    spans : Spans
+        With its members, where there are any; else the ranges are the ends of blocking.
     valid_time : datetime or None
-    members : bool
-        Whether the ranges are those of members; else they are the ends of blocking.
 
     Returns
     -------
     Cautions
     """
-    here = (*((text,) for text in crossing.cautions), *_flow(crossing), *_water(crossing))
+    crossing = spans.crossing
+    here = (*((text,) for text in crossing.cautions), *_flow(spans), *_water(crossing))
     if valid_time is None:
         here = (*here, ("The case names no valid time: heat from the ground, by day and by night, is left out.",))
     return Cautions(
         heading=("An estimate, to be judged by a trained reader",),
-        always=(*ALWAYS, (_RANGE_OF_MEMBERS,)) if members else (*ALWAYS, (_RANGE_OF_FLOW,), (_NO_MEMBERS,)),
+        always=(*ALWAYS, (RANGE_OF_MEMBERS,))
+        if spans.spread is not None
+        else (*ALWAYS, (_RANGE_OF_FLOW,), (_NO_MEMBERS,)),
         here=here,
         notes=tuple(dict.fromkeys(crossing.notes)),
     )
 
 
-def _flow(crossing: Crossing) -> tuple[Words, ...]:
+def _flow(spans: Spans) -> tuple[Words, ...]:
     """Limits that wind, blocking and the lee set."""
-    flow = crossing.flow
+    crossing, flow = spans.crossing, spans.crossing.flow
     out: list[Words] = []
     if flow.crest_wind < WEAK_WIND:
         out.append(
-            ("The wind across the crest is weak (", Amount(flow.crest_wind, "wind", 1), "): little air comes over.")
+            (
+                "The wind across the crest is weak, ",
+                *ranged(Amount(flow.crest_wind, "wind", 1), spans.of("cross_range_wind")),
+                ": little air comes over.",
+            )
         )
     if is_blocked(crossing) and flow.going_round_source == "assumed":
         out.append(
             (
-                "What share of the low air goes round (",
-                Amount(flow.going_round_share, "share"),
-                ") is assumed; the lowest pass of the range (pass_m) or an elevation raster would tell more.",
+                "What share of the low air goes round, ",
+                *ranged(Amount(flow.going_round_share, "share"), spans.of("going_round_share")),
+                ", is assumed; the lowest pass of the range (pass_m) or an elevation raster would tell more.",
             )
         )
     lee = next((air for air in crossing.lee if air.side == "lee"), None)

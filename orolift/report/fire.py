@@ -8,9 +8,12 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.fire.chances import CODES_AFTER
 from orolift.fire.dryness import angstroem_words
+from orolift.fire.indices import HOURS
 from orolift.report.fire_thresholds import ThresholdRow, headline, threshold_rows
 from orolift.report.quantities import Amount
+from orolift.report.spans import ranged, second_line
 from orolift.report.story import first_sites, where_words
 from orolift.report.words import day
 
@@ -31,6 +34,10 @@ SOME_RAIN = 0.1 / 3600.0
 """Rain at a site [kg m-2 s-1] that is remarked on: a tenth of a millimetre an hour."""
 
 
+Cells = dict[str, "Words"]
+"""Ranges of some of the columns of a row, by their names; empty without members."""
+
+
 @dataclass(frozen=True)
 class FireRow:
     """Dryness and fuel at one site; None where something they need is not known."""
@@ -46,6 +53,7 @@ class FireRow:
     fosberg: Amount | None
     drought: Amount | None
     hot_dry_windy: Amount | None
+    spans: Cells
 
 
 @dataclass(frozen=True)
@@ -62,6 +70,7 @@ class CodeRow:
     hour_3: Amount | None
     hour_6: Amount | None
     hour_12: Amount | None
+    spans: Cells
 
 
 @dataclass(frozen=True)
@@ -80,6 +89,7 @@ class NightRow:
     ridge: Amount | None
     mixing: Amount
     mixing_by_day: Amount
+    spans: Cells
 
 
 @dataclass(frozen=True)
@@ -99,6 +109,8 @@ class FireWeather:
         Empty without yesterday's code.
     has_drought, has_chances : bool
         Whether the drought index was given, and members to say how likely a threshold is.
+    second_line : str
+        What the second line of a cell is; empty without members.
     remarks : tuple of Words
         How to read the numbers.
     night_remark : Words
@@ -114,6 +126,7 @@ class FireWeather:
     codes: tuple[CodeRow, ...]
     has_drought: bool
     has_chances: bool
+    second_line: str
     remarks: tuple[Words, ...]
     night_remark: Words
     cautions: tuple[str, ...]
@@ -149,6 +162,7 @@ def fire_weather(crossing: Crossing, found: tuple[SiteFire, ...], rules: RuleSet
         else (),
         has_drought=any(_known(site.indices.fosberg_index_with_drought) for site in found),
         has_chances=any(one.judged.chance is not None for site in found for one in site.thresholds),
+        second_line=_SECOND_LINE if any(site.ranges for site in found) else "",
         remarks=_remarks(found),
         night_remark=_night_remark(found[0]),
         cautions=CAUTIONS,
@@ -202,67 +216,116 @@ def _heading(found: tuple[SiteFire, ...]) -> Words:
     chosen = [site for site in found if site.name in what.sites]
     chosen = chosen or [site for site in found if site.side == "lee"] or list(found)
     driest = min(chosen, key=lambda site: float(site.indices.relative_humidity))
-    humidity = Amount(float(driest.indices.relative_humidity), "share")
-    fuel = Amount(float(driest.indices.equilibrium_fuel_moisture), "share", 1)
+    air, ends = driest.indices, driest.ranges
+    humidity = ranged(Amount(float(air.relative_humidity), "share"), ends.get("relative_humidity"))
+    fuel = ranged(Amount(float(air.equilibrium_fuel_moisture), "share", 1), ends.get("equilibrium_fuel_moisture"))
     if len(what.sites) == 1:
-        return (f"{what.words}, with a humidity of ", humidity, " and fine dead fuel at ", fuel)
+        return (f"{what.words}, with a humidity of ", *humidity, " and fine dead fuel at ", *fuel)
     start = f"{what.words}; {driest.name}" if what.words else driest.name
-    return (f"{start} has a humidity of ", humidity, " and fine dead fuel at ", fuel)
+    return (f"{start} has a humidity of ", *humidity, " and fine dead fuel at ", *fuel)
+
+
+def _spans(row: dict[str, Amount | None], names: dict[str, str], site: SiteFire) -> Cells:
+    """Second lines of the columns of a row that have a value, from the ranges of the site."""
+    shown = {column: (row[column], site.ranges.get(name)) for column, name in names.items()}
+    return {column: second_line(value, ends) for column, (value, ends) in shown.items() if value is not None}
+
+
+_DRYNESS = {
+    "relative_humidity": "relative_humidity",
+    "deficit": "vapour_pressure_deficit",
+    "angstroem": "angstroem_index",
+    "fuel": "equilibrium_fuel_moisture",
+    "fosberg": "fosberg_index",
+    "drought": "fosberg_index_with_drought",
+    "hot_dry_windy": "hot_dry_windy",
+}
+"""Columns of dryness and fuel, and the ranges they take."""
 
 
 def _row(site: SiteFire, air: LeeAir, number: int) -> FireRow:
     one = site.indices
+    found = {
+        "relative_humidity": Amount(float(one.relative_humidity), "share"),
+        "deficit": Amount(float(one.vapour_pressure_deficit), "vapour_pressure", 1),
+        "angstroem": Amount(float(one.angstroem_index), "plain", 1),
+        "fuel": Amount(float(one.equilibrium_fuel_moisture), "share", 1),
+    }
+    windy = {
+        "fosberg": _amount(one.fosberg_index, "plain"),
+        "drought": _amount(one.fosberg_index_with_drought, "plain"),
+        "hot_dry_windy": _amount(one.hot_dry_windy, "plain"),
+    }
+    spans = _spans({**found, **windy}, _DRYNESS, site)
     return FireRow(
         number=number,
         name=site.name,
         side=site.side,
         remark=where_words(air),
-        relative_humidity=Amount(float(one.relative_humidity), "share"),
-        deficit=Amount(float(one.vapour_pressure_deficit), "vapour_pressure", 1),
-        angstroem=Amount(float(one.angstroem_index), "plain", 1),
-        fuel=Amount(float(one.equilibrium_fuel_moisture), "share", 1),
-        fosberg=_amount(one.fosberg_index, "plain"),
-        drought=_amount(one.fosberg_index_with_drought, "plain"),
-        hot_dry_windy=_amount(one.hot_dry_windy, "plain"),
+        spans=spans,
+        fosberg=windy["fosberg"],
+        drought=windy["drought"],
+        hot_dry_windy=windy["hot_dry_windy"],
+        **found,
     )
+
+
+_CODES_OF = {"day": "fine_fuel_code", "spread": "initial_spread_index"} | {
+    f"hour_{hours}": name for hours, name in zip(HOURS, CODES_AFTER, strict=True)
+}
+"""Columns of codes, and the ranges they take."""
 
 
 def _codes(site: SiteFire, air: LeeAir, number: int) -> CodeRow:
     one = site.indices
-    hours = [_amount(value, "plain", 1) for value in np.ravel(one.fine_fuel_code_hours)]
-    return CodeRow(
-        number=number,
-        name=site.name,
-        side=site.side,
-        remark=where_words(air),
-        day=_amount(one.fine_fuel_code, "plain", 1),
-        spread=_amount(one.initial_spread_index, "plain", 1),
-        hour_1=hours[0],
-        hour_3=hours[1],
-        hour_6=hours[2],
-        hour_12=hours[3],
-    )
+    after = np.ravel(one.fine_fuel_code_hours)
+    found = {
+        "day": _amount(one.fine_fuel_code, "plain", 1),
+        "spread": _amount(one.initial_spread_index, "plain", 1),
+        **{f"hour_{hours}": _amount(value, "plain", 1) for hours, value in zip(HOURS, after, strict=True)},
+    }
+    spans = _spans(found, _CODES_OF, site)
+    return CodeRow(number=number, name=site.name, side=site.side, remark=where_words(air), spans=spans, **found)
+
+
+_NIGHTS = {
+    "windy": "floor_windy",
+    "still": "floor_still",
+    "mid_slope": "mid_slope",
+    "ridge": "ridge",
+    "mixing": "mixing_height",
+    "mixing_by_day": "mixing_height_by_day",
+}
+"""Columns of the night, and the ranges they take."""
 
 
 def _night(site: SiteFire, air: LeeAir, number: int) -> NightRow:
     night = site.night
     slope, ridge = _amount(night.mid_slope, "share"), _amount(night.ridge, "share")
+    found = {
+        "windy": Amount(night.floor_windy, "share"),
+        "still": Amount(night.floor_still, "share"),
+        "mixing": Amount(night.mixing_height, "height", -1),
+        "mixing_by_day": Amount(night.mixing_height_by_day, "height", -1),
+    }
     return NightRow(
         number=number,
         name=site.name,
         side=site.side,
         remark=where_words(air),
-        windy=Amount(night.floor_windy, "share"),
-        still=Amount(night.floor_still, "share"),
         mid_slope_height=None if slope is None else Amount(night.mid_slope_height, "height"),
         mid_slope=slope,
         ridge_height=None if ridge is None else Amount(night.ridge_height, "height"),
         ridge=ridge,
-        mixing=Amount(night.mixing_height, "height", -1),
-        mixing_by_day=Amount(night.mixing_height_by_day, "height", -1),
+        spans=_spans({**found, "mid_slope": slope, "ridge": ridge}, _NIGHTS, site),
+        **found,
     )
 
 
+_SECOND_LINE = (
+    "The second line of a cell is the range: 10 and 90 % of the members, with the error of the method in temperature, "
+    "humidity and wind. No error of the indices themselves is in it."
+)
 _FUEL = (
     "Fuel is the moisture that grass and needles come to in this air (Simard 1968). The Fosberg index adds the wind at "
     "10 m; 100 is bone-dry fuel in 30 mph, and 50 is a lot. Hot-Dry-Windy takes the driest and the windiest air of the "

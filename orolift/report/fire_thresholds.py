@@ -9,6 +9,7 @@ from orolift.fire.movers import REACH
 from orolift.fire.winds import WindMeant
 from orolift.fire.words import limit_words, named, wind_words
 from orolift.report.quantities import Amount
+from orolift.report.spans import second_line
 from orolift.report.story import where_words
 from orolift.report.words import counted
 
@@ -32,11 +33,12 @@ _DIFFERENCES: dict[str, Kind] = {
 
 @dataclass(frozen=True)
 class ConditionRow:
-    """One condition: what, its limit, the value, by how much, what would turn it."""
+    """One condition: what, its limit, the value and its range, by how much, what would turn it."""
 
     what: Words
     limit: Words
     value: Amount | None
+    span: Words
     margin: Words
     met: bool
     movers: Words
@@ -143,7 +145,10 @@ def headline(found: tuple[SiteFire, ...]) -> Headline:
 def _row(
     site: SiteFire, air: LeeAir, number: int, judged: JudgedRule, movers: tuple[tuple[Mover, ...], ...]
 ) -> ThresholdRow:
-    conditions = tuple(_condition(one, moves) for one, moves in zip(judged.conditions, movers, strict=True))
+    conditions = tuple(
+        _condition(one, moves, site.rule_ranges.get(one.condition.quantity))
+        for one, moves in zip(judged.conditions, movers, strict=True)
+    )
     return ThresholdRow(
         number=number,
         name=site.name,
@@ -170,7 +175,7 @@ def _status(judged: JudgedRule) -> str:
     return f"{words}, and lasts {hours} h" if judged.lasts else f"{words} at this hour, not for {hours} h"
 
 
-def _condition(one: JudgedCondition, moves: tuple[Mover, ...]) -> ConditionRow:
+def _condition(one: JudgedCondition, moves: tuple[Mover, ...], ends: tuple[float, float] | None) -> ConditionRow:
     _, measure, digits = named(one.condition.quantity)
     kind: Kind = measure
     apart: Words = ("not known",)
@@ -184,6 +189,7 @@ def _condition(one: JudgedCondition, moves: tuple[Mover, ...]) -> ConditionRow:
             Amount(one.condition.limit, "rain_limit" if kind == "rain_rate" else kind, digits),
         ),
         value=None if one.value is None else Amount(one.value, kind, digits),
+        span=() if one.value is None else second_line(Amount(one.value, kind, digits), ends),
         margin=apart,
         met=one.met is True,
         movers=_movers(moves),

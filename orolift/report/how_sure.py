@@ -10,7 +10,6 @@ import numpy as np
 from orolift.report.quantities import Amount
 from orolift.report.spans import digits_for
 from orolift.report.story import where_words
-from orolift.spread.at_sites import column_of
 from orolift.spread.ranges import Influence, chance_of, influences, noise
 from orolift.spread.spread import CHANCE_OF_RAIN
 
@@ -39,6 +38,16 @@ INPUTS: dict[str, tuple[str, Kind, int, str]] = {
     "lee_temperature": ("air lying in the lee", "temperature_difference", 1, ""),
 }
 """Inputs in words, and how their standard deviation is written."""
+WITH_METHOD: dict[str, tuple[Kind, int]] = {
+    "temperature": ("temperature", 1),
+    "warming": ("temperature_change", 1),
+    "dew_point": ("temperature", 1),
+    "relative_humidity": ("share", 0),
+    "mixing_ratio": ("mixing_ratio", 1),
+    "wind_10m": ("wind_alone", 0),
+    "gust": ("wind_alone", 0),
+}
+"""Numbers of a site for which the error of the method is stated, and how finely they are shown at most."""
 METHOD_NAME = "the method itself"
 MOST_BARS = 6
 """Inputs that a panel of the figure shows at most."""
@@ -46,20 +55,20 @@ MOST_BARS = 6
 
 @dataclass(frozen=True)
 class RangeRow:
-    """Ranges at one site, by the inputs alone and in full."""
+    """Ranges at one site: in full, and in `spans` those by the inputs alone."""
 
     number: int
     name: str
     side: str
     remark: str
-    temperature_inputs: Words
     temperature: Words
-    dew_point_inputs: Words
+    warming: Words
     dew_point: Words
-    humidity_inputs: Words
-    humidity: Words
-    wind_inputs: Words
-    wind: Words
+    relative_humidity: Words
+    mixing_ratio: Words
+    wind_10m: Words
+    gust: Words
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -138,8 +147,8 @@ def how_sure(spans: Spans) -> HowSure:
         )
     return HowSure(
         heading=_heading(spans),
-        remarks=(_contents(spread), *_compared(spans), _counted(spread)),
-        rows=tuple(_row(spans, air) for air in spans.crossing.lee if column_of(spans.crossing, air) is not None),
+        remarks=(*_contents(spread), *_compared(spans), _counted(spread)),
+        rows=tuple(_row(spans, air) for air in spans.crossing.lee if spans.column(air) is not None),
         chances=_chances(spans, spread),
         inputs=_inputs(spread),
         panels=_panels(spans, spread),
@@ -157,16 +166,21 @@ def _heading(spans: Spans) -> Words:
     return (f"{site.name} has ", *span_words("temperature", 1, full), f" eight times in ten; {more}")
 
 
-def _contents(spread: Spread) -> Words:
-    """What a range holds."""
+def _contents(spread: Spread) -> tuple[Words, ...]:
+    """What a range holds, and what has none."""
     text = (
         f"A range in brackets holds the middle eight tenths of {spread.members} crossings, each with its own draw of "
         "every input from what that may be, and is widened to the answer where that lies outside. To temperature, "
-        "humidity and wind at the sites the error of the method is "
-        "added. For rain, cloud and heights no such error is known yet: their ranges are those of the inputs alone, "
-        "and too narrow. The heights air comes from are no such range, but those of the middle eight tenths of the air."
+        "humidity and wind at the sites the error of the method is added. For rain, cloud and heights no such error is "
+        "known yet: their ranges are those of the inputs alone, and too narrow."
     )
-    return (text,)
+    bare = (
+        "The heights air comes from are no such range, but those of the middle eight tenths of the air. Without a "
+        "range stand figures, the way of the air and the section in numbers, which show the answer itself; the ground "
+        "and distances along it; what the case gives or prescribes; rain over the map and on catchments, worked out "
+        "once; the two ends of blocking, which are a range themselves; and chances."
+    )
+    return (text,), (bare,)
 
 
 def _compared(spans: Spans) -> tuple[Words, ...]:
@@ -211,26 +225,17 @@ def span_words(kind: Kind, digits: int, ends: tuple[float, float] | None) -> Wor
 
 
 def _row(spans: Spans, site: LeeAir) -> RangeRow:
-    def both(name: str, kind: Kind, digits: int) -> tuple[Words, Words]:
-        found = (spans.at(site, name, inputs_only=True), spans.at(site, name))
-        alone, full = (span_words(kind, digits, ends) for ends in found)
-        return _without_unit(alone), _without_unit(full)
+    def ends(name: str, *, alone: bool) -> Words:
+        kind, digits = WITH_METHOD[name]
+        return _without_unit(span_words(kind, digits, spans.at(site, name, inputs_only=alone)))
 
-    temperature, dew_point = both("temperature", "temperature", 1), both("dew_point", "temperature", 1)
-    humidity, wind = both("relative_humidity", "share", 0), both("wind_10m", "wind_alone", 0)
     return RangeRow(
         number=site.number,
         name=site.name,
         side=site.side,
         remark=where_words(site),
-        temperature_inputs=temperature[0],
-        temperature=temperature[1],
-        dew_point_inputs=dew_point[0],
-        dew_point=dew_point[1],
-        humidity_inputs=humidity[0],
-        humidity=humidity[1],
-        wind_inputs=wind[0],
-        wind=wind[1],
+        **{name: ends(name, alone=False) for name in WITH_METHOD},
+        spans={name: ends(name, alone=True) for name in WITH_METHOD},
     )
 
 
@@ -251,7 +256,7 @@ def _crossing_row(spread: Spread) -> ChanceRow:
 def _chances(spans: Spans, spread: Spread) -> tuple[ChanceRow, ...]:
     """Chances of what matters most, among the members that cross."""
     values, site = spread.values, spans.main
-    number = column_of(spans.crossing, site) or 0
+    number = spans.column(site) or 0
     known = spans.crossing.flow.breaks_through is not None
     rain = spread.sites["rain"][:, number]
     rain = np.where(np.isfinite(rain), rain >= CHANCE_OF_RAIN, np.nan)
@@ -286,7 +291,7 @@ def _inputs(spread: Spread) -> tuple[InputRow, ...]:
 def _panels(spans: Spans, spread: Spread) -> tuple[Panel, ...]:
     """What matters for temperature and dew point at the main site, and for the rain."""
     site = spans.main
-    number = column_of(spans.crossing, site) or 0
+    number = spans.column(site) or 0
 
     def panel(title: str, values: np.ndarray[tuple[int, ...], np.dtype[np.float64]], method: str = "") -> Panel:
         names = (*spread.varied, method) if method else spread.varied

@@ -9,7 +9,7 @@ from urllib.parse import quote
 from orolift.report.briefing import briefing_heading
 from orolift.report.key_numbers import blocked_with_range, gusts
 from orolift.report.quantities import Amount, Units
-from orolift.report.spans import Spans, ranged
+from orolift.report.spans import Spans, ranged, span_of
 from orolift.report.story import (
     fallen_share,
     is_blocked,
@@ -73,6 +73,8 @@ class Entry:
         Top of the blocked air, and cloud base.
     fallen : Amount or None
         Share of the crossing vapour that falls; None without rain.
+    spans : dict of str to Words
+        Ranges of humidity, wind and share that falls.
     """
 
     title: str
@@ -90,6 +92,7 @@ class Entry:
     blocked: Words
     cloud: Words
     fallen: Amount | None
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -157,22 +160,30 @@ def entry_of(
     line = line_view(crossing)
     spans = Spans(line, spread)
     site, base = spans.main, line.cloud.base
+    humidity = Amount(site.relative_humidity, "share")
+    wind = None if site.wind is None else Amount(site.wind.at_10m, "wind")
+    fallen = Amount(fallen_share(line), "share") if rains(line) else None
     return Entry(
         title=title,
         report=quote(report),
         files=tuple(Link(name, quote(file)) for name, file in files.items()),
         valid="" if valid_time is None else moment(valid_time),
-        heading=briefing_heading(line),
+        heading=briefing_heading(spans),
         doubts=counted(len(crossing.cautions), "caution", "cautions").capitalize() if crossing.cautions else "",
         site=site.name,
         temperature=ranged(Amount(site.temperature, "temperature", 1), spans.temperature(site)),
-        humidity=Amount(site.relative_humidity, "share"),
-        wind=None if site.wind is None else Amount(site.wind.at_10m, "wind"),
+        humidity=humidity,
+        wind=wind,
         gusts=() if site.wind is None else gusts(spans, site.wind, site),
         source=source_words(site),
         blocked=blocked_with_range(spans) if is_blocked(line) else (),
         cloud=() if base is None else ranged(Amount(base, "height", -1), spans.of("cloud_base")),
-        fallen=Amount(fallen_share(line), "share") if rains(line) else None,
+        fallen=fallen,
+        spans={
+            "humidity": span_of(humidity, spans.at(site, "relative_humidity")),
+            "wind": span_of(wind, spans.at(site, "wind_10m")),
+            "fallen": span_of(fallen, spans.drying()),
+        },
     )
 
 
@@ -186,9 +197,9 @@ def _heading(entries: tuple[Entry, ...]) -> Words:
     where = names.pop() if len(names) == 1 else "the main sites"
     return (
         f"{sentence((count,))[0]}: {where} from ",
-        *coolest.temperature[:1],
+        *coolest.temperature,
         f" in “{coolest.title}” to ",
-        *warmest.temperature[:1],
+        *warmest.temperature,
         f" in “{warmest.title}”",
     )
 

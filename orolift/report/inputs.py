@@ -10,7 +10,8 @@ import numpy as np
 
 from orolift.air.column import column_vapour, interpolated
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
-from orolift.report.quantities import Amount, Units, from_displayed
+from orolift.report.quantities import Amount, Kind, Units, from_displayed
+from orolift.report.spans import Spans, ranged
 from orolift.report.story import removal_words
 
 if TYPE_CHECKING:
@@ -86,13 +87,13 @@ class Inputs:
 
 
 def inputs(
-    crossing: Crossing, bearing: float, freezing_level: float, case_text: str | None, units: Units = "metric"
+    spans: Spans, bearing: float, freezing_level: float, case_text: str | None, units: Units = "metric"
 ) -> Inputs:
     """What went in.
 
     Parameters
     ----------
-    crossing : Crossing
+    spans : Spans
     bearing : float [rad]
         Direction the wind comes from.
     freezing_level : float [m]
@@ -104,21 +105,22 @@ def inputs(
     -------
     Inputs
     """
+    crossing = spans.crossing
     levels = _levels(crossing, units)
     ground = levels[0]
     heading: Words = (
         _source(crossing.incoming.origin),
         ": ",
-        ground.temperature,
+        *ranged(ground.temperature, spans.of("temperature")),
         " and ",
-        ground.relative_humidity,
+        *ranged(ground.relative_humidity, spans.of("relative_humidity")),
         " humidity at ",
         ground.height,
     )
     groups = (
-        _air_facts(crossing, ground, freezing_level),
+        _air_facts(spans, ground, freezing_level),
         _range_facts(crossing, bearing),
-        _flow_facts(crossing),
+        _flow_facts(spans),
         _options(crossing),
     )
     return Inputs(heading=heading, groups=groups, levels=levels, case_text=case_text)
@@ -136,18 +138,23 @@ def _source(origin: tuple[str, ...]) -> str:
     return f"{origin.count('measured')} measured levels{fresh}"
 
 
-def _air_facts(crossing: Crossing, ground: Level, freezing_level: float) -> FactGroup:
+def _air_facts(spans: Spans, ground: Level, freezing_level: float) -> FactGroup:
+    crossing = spans.crossing
+    column = Amount(float(column_vapour(crossing.incoming)), "water_depth", 1)
+    carried = Amount(crossing.water.column_vapour_flux, "vapour_flux")
     facts = (
         Fact("Ground", (ground.height,)),
-        Fact("Pressure", (ground.pressure,)),
-        Fact("Temperature", (ground.temperature,)),
-        Fact("Dew point", (ground.dew_point,)),
-        Fact("Humidity", (ground.relative_humidity, " over liquid water")),
-        Fact("Wind", (ground.wind, " from ", ground.wind_from)),
-        Fact("Wind across the crest", (Amount(crossing.flow.crest_wind, "wind", 1),)),
-        Fact("Freezing level", (Amount(freezing_level, "height"),)),
-        Fact("Vapour in the column", (Amount(float(column_vapour(crossing.incoming)), "water_depth", 1), " of water")),
-        Fact("Vapour carried along the line", (Amount(crossing.water.column_vapour_flux, "vapour_flux"),)),
+        Fact("Pressure", ranged(ground.pressure, spans.of("pressure"))),
+        Fact("Temperature", ranged(ground.temperature, spans.of("temperature"))),
+        Fact("Dew point", ranged(ground.dew_point, spans.of("dew_point"))),
+        Fact("Humidity", (*ranged(ground.relative_humidity, spans.of("relative_humidity")), " over liquid water")),
+        Fact("Wind", (*ranged(ground.wind, spans.of("wind")), " from ", ground.wind_from)),
+        Fact(
+            "Wind across the crest", ranged(Amount(crossing.flow.crest_wind, "wind", 1), spans.of("cross_range_wind"))
+        ),
+        Fact("Freezing level", ranged(Amount(freezing_level, "height"), spans.of("freezing_level"))),
+        Fact("Vapour in the column", (*ranged(column, spans.of("column_vapour")), " of water")),
+        Fact("Vapour carried along the line", ranged(carried, spans.of("column_vapour_flux"))),
     )
     return FactGroup("Incoming air (at its ground)", facts)
 
@@ -170,25 +177,30 @@ def _range_facts(crossing: Crossing, bearing: float) -> FactGroup:
     return FactGroup("Range", facts)
 
 
-def _flow_facts(crossing: Crossing) -> FactGroup:
+def _flow_facts(spans: Spans) -> FactGroup:
     """How the range and the column stand to each other."""
-    flow = crossing.flow
+    flow = spans.crossing.flow
+
+    def said(name: str, kind: Kind, digits: int = 0) -> Words:
+        return ranged(Amount(getattr(flow, name), kind, digits), spans.of(name))
+
     facts = [
         Fact("Range normal, upwind", (Amount((flow.normal + math.pi) % (2.0 * math.pi), "bearing"),)),
-        Fact("Stability N, base to crest", (Amount(flow.stability, "stability", 4),)),
-        Fact("N h/U", (Amount(flow.nondimensional_height, "plain", 2), f", {flow.regime}")),
-        Fact("Dividing height (c = 1)", (Amount(flow.dividing_height, "height"),)),
-        Fact("Blocked top", (Amount(flow.blocked_top, "height"),)),
-        Fact("Goes round", (Amount(flow.going_round_share, "share"), f", {flow.going_round_source}")),
-        Fact("Pressure fall to the lee", (Amount(flow.pressure_difference, "pressure_difference", 1),)),
+        Fact("Stability N, base to crest", said("stability", "stability", 4)),
+        Fact("N h/U", (*said("nondimensional_height", "plain", 2), f", {flow.regime}")),
+        Fact("Dividing height (c = 1)", said("dividing_height", "height")),
+        Fact("Blocked top", ranged(Amount(flow.blocked_top, "height"), spans.blocked_top())),
+        Fact("Goes round", (*said("going_round_share", "share"), f", {flow.going_round_source}")),
+        Fact("Pressure fall to the lee", said("pressure_difference", "pressure_difference", 1)),
     ]
     if flow.rossby_number is not None and flow.deformation_radius is not None:
-        facts.append(Fact("Rossby number", (Amount(flow.rossby_number, "plain", 1),)))
-        facts.append(Fact("Deformation radius", (Amount(flow.deformation_radius, "distance"),)))
+        facts.append(Fact("Rossby number", said("rossby_number", "plain", 1)))
+        facts.append(Fact("Deformation radius", said("deformation_radius", "distance")))
     if flow.trapped_wavelength is not None:
-        facts.append(Fact("Trapped lee waves", (Amount(flow.trapped_wavelength, "distance"), " long")))
+        long = Amount(flow.trapped_wavelength, "distance")
+        facts.append(Fact("Trapped lee waves", (long, " long, in the answer alone")))
     if flow.critical_level is not None:
-        facts.append(Fact("Critical level", (Amount(flow.critical_level, "height", -1),)))
+        facts.append(Fact("Critical level", said("critical_level", "height", -1)))
     return FactGroup("Flow", tuple(facts))
 
 

@@ -9,7 +9,7 @@ from orolift.report.lee_wind import range_words
 from orolift.report.quantities import Amount
 from orolift.report.spans import Spans, ranged
 from orolift.report.story import (
-    blocked_words,
+    ROUNDING,
     cloudy_to_the_end,
     fallen_share,
     is_blocked,
@@ -22,6 +22,7 @@ from orolift.report.story import (
 from orolift.report.words import Words, sentence
 
 if TYPE_CHECKING:
+    from orolift.crossing.pool import Pool
     from orolift.crossing.result import LeeAir
     from orolift.crossing.wind import SiteWind
 
@@ -98,10 +99,9 @@ def _number(name: str, amount: Amount, ends: tuple[float, float] | None, remark:
 
 def _temperature_number(spans: Spans, site: LeeAir) -> KeyNumber:
     crossing = spans.crossing
-    before = Amount(site.upwind_temperature, "temperature", 1)
-    remark: Words = sentence(("incoming air at that height: ", before))
+    remark: Words = sentence(("incoming air at that height: ", *before(spans, site)))
     if reaches_the_ground_or_not(crossing, site):
-        remark = ("if the air breaks through; about ", before, " if a cold pool stays")
+        remark = ("if the air breaks through; about ", *before(spans, site), " if a cold pool stays")
     here = Amount(site.temperature, "temperature", 1)
     return _number(f"{site.name}, temperature", here, spans.temperature(site), remark)
 
@@ -117,8 +117,7 @@ def _wind_number(spans: Spans, site: LeeAir) -> KeyNumber:
 
 def _blocked_number(spans: Spans) -> KeyNumber:
     crossing, flow = spans.crossing, spans.crossing.flow
-    amount = Amount(flow.nondimensional_height, "plain", 1 if flow.nondimensional_height >= 1.0 else 2)
-    number = ranged(amount, spans.of("nondimensional_height"))
+    number = nondimensional_words(spans)
     if not is_blocked(crossing):
         return KeyNumber("Air stopped below", None, "no layer", (), ("N h/U ", *number, f": {regime_words(crossing)}"))
     top, *span = blocked_with_range(spans)
@@ -157,7 +156,11 @@ def _cloud_number(spans: Spans) -> KeyNumber:
     if cloudy_to_the_end(crossing):
         remark = (f"{where}; cloud to the downwind end",)
     elif cloud.end is not None:
-        remark = (f"{where}; cloud ends at ", Amount(cloud.end, "height", -1), " in the lee")
+        remark = (
+            f"{where}; cloud ends at ",
+            *ranged(Amount(cloud.end, "height", -1), spans.of("cloud_end")),
+            " in the lee",
+        )
     return _number("Cloud base", Amount(cloud.base, "height", -1), spans.of("cloud_base"), remark)
 
 
@@ -186,15 +189,35 @@ def _freezing_number(spans: Spans, level: float) -> KeyNumber:
         )
     above = level - crossing.features.crest
     where = "above" if above >= 0.0 else "below"
-    remark: Words = ("in the incoming air, ", Amount(abs(above), "height", -1), f" {where} the crest")
-    return _number("Freezing level", Amount(level, "height", -1), spans.of("freezing_level"), remark)
+    ends = spans.of("freezing_level")
+    apart = None
+    if ends is not None:
+        low, high = (end - crossing.features.crest for end in ends)
+        apart = (low, high) if above >= 0.0 else (-high, -low)
+    remark: Words = ("in the incoming air, ", *ranged(Amount(abs(above), "height", -1), apart), f" {where} the crest")
+    return _number("Freezing level", Amount(level, "height", -1), ends, remark)
 
 
 def blocked_with_range(spans: Spans) -> Words:
     """The blocked top with its range."""
-    if spans.spread is None:
-        return blocked_words(spans.crossing)
-    return ranged(Amount(spans.crossing.flow.blocked_top, "height", -1), spans.of("blocked_top"))
+    top, ends = Amount(spans.crossing.flow.blocked_top, "height", -1), spans.blocked_top()
+    return ranged(top, None if ends is None or ends[1] - ends[0] < ROUNDING else ends)
+
+
+def before(spans: Spans, site: LeeAir) -> Words:
+    """Temperature of the incoming air at the height of a site, with its range."""
+    return ranged(Amount(site.upwind_temperature, "temperature", 1), spans.at(site, "upwind_temperature"))
+
+
+def nondimensional_words(spans: Spans) -> Words:
+    """N h/U with its range."""
+    value = spans.crossing.flow.nondimensional_height
+    return ranged(Amount(value, "plain", 1 if value >= 1.0 else 2), spans.of("nondimensional_height"))
+
+
+def pool_top(spans: Spans, pool: Pool) -> Words:
+    """Top of the cold air that stays in the lee, with its range over the members in which any stays."""
+    return ranged(Amount(pool.top, "height", -1), spans.of("pool_top"))
 
 
 def gusts(spans: Spans, wind: SiteWind, site: LeeAir) -> Words:

@@ -200,7 +200,8 @@ def page_of(
     freezing = float(freezing_level(crossing.incoming))
     line, few = line_view(crossing), first_sites(crossing)
     followed = trace(line)
-    sure = how_sure(Spans(few, spread))
+    on_line, first = Spans(line, spread, crossing), Spans(few, spread, crossing)
+    sure = how_sure(first)
     crest = quantity(crossing.features.crest, "height", 0, units)
     return Page(
         title=title or f"Air from the {point_of_compass(bearing)} over a crest at {crest}",
@@ -208,15 +209,15 @@ def page_of(
         made=moment(made_at),
         version=version,
         units=units,
-        briefing=briefing(line, bearing, freezing, Spans(line, spread)),
-        section_heading=section_heading(line, followed),
-        section=section(line, followed, bearing, freezing, units, Spans(line, spread).of("blocked_top")),
+        briefing=briefing(line, bearing, freezing, on_line),
+        section_heading=section_heading(on_line, followed),
+        section=section(line, followed, bearing, freezing, units, on_line.of("blocked_top")),
         reading=reading(line, units),
-        journey=journey(line, followed),
+        journey=journey(on_line, followed),
         path=path(line, followed, units),
-        causes=causes(few),
-        budget=budget(few, units),
-        rain=rain_on_line(line, flags, units, Spans(line, spread)),
+        causes=causes(first),
+        budget=budget(first, units),
+        rain=rain_on_line(line, flags, units, on_line),
         rain_line=rain_line(line, None if mapped is None else mapped.rain.on_line, units),
         rain_over_map=None if mapped is None else rain_over_map(mapped, units),
         rain_map=None if mapped is None or mapped.rain.is_dry else _rain_map(crossing, mapped, units),
@@ -227,14 +228,14 @@ def page_of(
         influences=influences_figure(sure),
         lee_map=None if lee is None else lee_on_map(lee, _lee_maps(crossing, lee, units)),
         fire=fire_weather(crossing, fire, rules) if fire else None,
-        answers=answers(few),
+        answers=answers(first),
         answers_figure=answers_figure(few, units),
-        lee_wind=lee_wind(few),
-        inputs=inputs(line, bearing, freezing, case_text, units),
+        lee_wind=lee_wind(Spans(crossing, spread), few.lee),
+        inputs=inputs(on_line, bearing, freezing, case_text, units),
         column=column(line, stagnant_top, units),
         findings=tuple(sorted(findings, key=lambda finding: SEVERITIES.index(finding.severity))),
         method=method(),
-        cautions=cautions(few, valid_time, members=spread is not None),
+        cautions=cautions(first, valid_time),
     )
 
 

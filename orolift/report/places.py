@@ -9,11 +9,13 @@ import numpy as np
 
 from orolift.air.humidity import relative_humidity_from_mixing_ratio
 from orolift.report.figures.cloud import runs
+from orolift.report.key_numbers import blocked_with_range, pool_top
 from orolift.report.quantities import Amount
+from orolift.report.spans import Spans, ranged
 from orolift.report.story import (
     ROUNDING,
+    SAME,
     cloudy_to_the_end,
-    difference,
     falling,
     is_blocked,
     rains,
@@ -65,100 +67,83 @@ class Journey:
     places: tuple[Place, ...]
 
 
-def journey(crossing: Crossing, trace: Trace) -> Journey:
+def journey(spans: Spans, trace: Trace) -> Journey:
     """The way of the air that reaches the main site.
 
     Parameters
     ----------
-    crossing : Crossing
+    spans : Spans
     trace : Trace
 
     Returns
     -------
     Journey
     """
-    return Journey(heading=_heading(trace), balance=_balance(crossing), places=_places(crossing, trace))
+    return Journey(heading=_heading(spans, trace), balance=_balance(spans), places=_places(spans.crossing, trace))
 
 
-def section_heading(crossing: Crossing, trace: Trace) -> Words:
+def section_heading(spans: Spans, trace: Trace) -> Words:
     """What the section shows, as a conclusion."""
+    crossing = spans.crossing
     name = trace.site.name if trace.site is not None else "the lee foot"
     if crossing.pool is not None:
         return (
             "The crossing air rides over cold air that fills the lee up to ",
-            Amount(crossing.pool.top, "height", -1),
+            *pool_top(spans, crossing.pool),
         )
     if is_blocked(crossing):
         return (
             "Low air is stopped below ",
-            Amount(crossing.flow.blocked_top, "height", -1),
-            "; air from about ",
-            Amount(trace.source, "height", -1),
-            f" comes down to {name}",
+            *blocked_with_range(spans),
+            f"; air from above comes down to {name}",
         )
     if crossing.cloud.base is None:
         return ("The air climbs to the crest at ", Amount(crossing.features.crest, "height"), " and stays clear")
-    return _cloud_heading(crossing)
+    return _cloud_heading(spans)
 
 
-def _cloud_heading(crossing: Crossing) -> Words:
+def _cloud_heading(spans: Spans) -> Words:
     """How far the cloud reaches on both sides."""
+    crossing = spans.crossing
     cloud, crest = crossing.cloud, crossing.features.crest
     if starts_saturated(crossing):
         start: Words = ("Cloud covers the whole windward slope",)
     elif cloud.base is None or cloud.base > crest:
         return ("The air comes over whole; cloud forms only above the crest",)
     else:
-        start = ("Cloud covers the upper ", Amount(crest - cloud.base, "height", -1), " of the windward slope")
+        start = ("Cloud covers the upper ", *_below_crest(spans, cloud.base, "cloud_base"), " of the windward slope")
     if cloudy_to_the_end(crossing):
         return (*start, " and all of the lee")
-    down = 0.0 if cloud.end is None else crest - cloud.end
-    if down < ROUNDING:
+    if cloud.end is None or crest - cloud.end < ROUNDING:
         return (*start, " and ends at the crest")
-    return (*start, " and reaches ", Amount(down, "height", -1), " down the lee side")
+    return (*start, " and reaches ", *_below_crest(spans, cloud.end, "cloud_end"), " down the lee side")
 
 
-def _heading(trace: Trace) -> Words:
-    """What the way does to the temperature, in one line."""
+def _below_crest(spans: Spans, height: float, name: str) -> Words:
+    """How far below the crest a height lies; members in which it lies above count as none."""
+    crest, ends = spans.crossing.features.crest, spans.of(name)
+    below = None if ends is None else (max(crest - ends[1], 0.0), max(crest - ends[0], 0.0))
+    return ranged(Amount(crest - height, "height", -1), below)
+
+
+def _heading(spans: Spans, trace: Trace) -> Words:
+    """What the way does to the temperature, in one line; numbers along one way have no range and stay in the table."""
     where = "the lee foot" if trace.site is None else trace.site.name
     end_height, end = float(trace.height[-1]), float(trace.temperature[-1])
-    sinks = trace.source - end_height
-    if sinks > DEEP and not trace.wet.any():
-        words: Words = (
-            "Air from ",
-            Amount(trace.source, "height", -1),
-            ", ",
-            Amount(float(trace.temperature[0]), "temperature", 1),
-            " there, comes down to ",
-            Amount(end_height, "height", -1),
-            f" at {where} with ",
-            Amount(end, "temperature", 1),
-        )
+    if trace.source - end_height > DEEP and not trace.wet.any():
+        words: Words = (f"Air from aloft warms all the way down to {where}, without cloud",)
         if trace.site is None or trace.site.went_round <= 0.0:
             return words
-        return (*words, "; what went round brings it to ", Amount(trace.site.temperature, "temperature", 1))
+        mixed = ranged(Amount(trace.site.temperature, "temperature", 1), spans.temperature(trace.site))
+        return (*words, "; with what went round it has ", *mixed)
     before = _rising_temperature(trace, end_height)
     if before is None:
         start, top = float(trace.temperature[0]), float(trace.temperature[trace.top])
-        return (
-            f"The air {_verb(top - start)} by ",
-            _size(top - start),
-            " on its way up and ",
-            f"{_verb(end - top)} by ",
-            _size(end - top),
-            f" down to {where}",
-        )
-    return (
-        "Back at ",
-        Amount(end_height, "height", -1),
-        ", the air is ",
-        *difference(
-            end - before,
-            "warmer than it was there on its way up",
-            "cooler than it was there on its way up",
-            "as warm as it was there on its way up",
-        ),
-    )
+        return (f"The air {_verb(top - start)} on its way up and {_verb(end - top)} down to {where}",)
+    if abs(end - before) < SAME:
+        return ("Back down, the air is as warm as it was at the same height on its way up",)
+    which = "warmer" if end > before else "cooler"
+    return (f"Back down, the air is {which} than it was at the same height on its way up",)
 
 
 def _rising_temperature(trace: Trace, level: float) -> float | None:
@@ -176,23 +161,19 @@ def _verb(change: float) -> str:
     return "warms" if change > 0.0 else "cools"
 
 
-def _size(change: float) -> Amount:
-    return Amount(abs(change), "temperature_difference", 1)
-
-
-def _balance(crossing: Crossing) -> Words:
+def _balance(spans: Spans) -> Words:
     """Water of all the crossing air."""
-    water = crossing.water
-    came = Amount(water.vapour_in, "vapour_flux")
+    crossing, water = spans.crossing, spans.crossing.water
+    came = ranged(Amount(water.vapour_in, "vapour_flux"), spans.of("vapour_in"))
     if not rains(crossing):
-        return ("Each metre along the range ", came, " of vapour comes over, and practically none of it falls out.")
+        return ("Each metre along the range ", *came, " of vapour comes over, and practically none of it falls out.")
     return (
         "Of the ",
-        came,
+        *came,
         " of vapour that come over each metre of the range, ",
-        Amount(water.condensed, "vapour_flux"),
+        *ranged(Amount(water.condensed, "vapour_flux"), spans.of("condensed")),
         " condense on the way and ",
-        Amount(water.removed, "vapour_flux"),
+        *ranged(Amount(water.removed, "vapour_flux"), spans.of("total")),
         f" {falling(crossing).replace('falls', 'fall').replace('rains', 'rain')}.",
     )
 

@@ -5,16 +5,20 @@ from __future__ import annotations
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
+from orolift.crossing.member_values import band_name
 from orolift.rain.winter import bands_of_sides
 from orolift.report.quantities import Amount, Units, from_displayed
-from orolift.report.spans import Spans, ranged
-from orolift.report.story import fallen_share, rains, removal_words, snow_words
+from orolift.report.spans import Spans, ranged, span_of
+from orolift.report.story import SOME_SNOW, fallen_share, rains, removal_words, snow_words
 from orolift.report.words import fraction_in_words, sentence
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing
+    from orolift.rain.winter import BandOfSide
     from orolift.report.words import Words
 
+SOME_THERE = 0.02
+"""Share of the rain [1] that falls in a band behind the crest from which on it is said (design choice)."""
 SOME = 0.02
 """Share of the falling water [1] that evaporates from which on it is said (design choice)."""
 NEAR = 500.0
@@ -31,6 +35,7 @@ class BandRow:
     windward_snow: Amount | None
     lee_rate: Amount | None
     lee_snow: Amount | None
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -72,31 +77,36 @@ def rain_on_line(
     -------
     RainOnLine
     """
+    spans = spans or Spans(crossing, None)
     falls = rains(crossing) or crossing.rain.background > 0.0
     return RainOnLine(
-        heading=_heading(crossing),
+        heading=_heading(spans),
         flags=flags,
-        sentences=_sentences(crossing, spans or Spans(crossing, None)),
-        rows=_rows(crossing, band_step(units)) if falls else (),
+        sentences=_sentences(spans),
+        rows=_rows(spans, band_step(units)) if falls else (),
     )
 
 
-def _heading(crossing: Crossing) -> Words:
-    rain, shape = crossing.rain, crossing.features
+def _heading(spans: Spans) -> Words:
+    crossing = spans.crossing
+    rain = crossing.rain
     if not rains(crossing) or rain.windward_share is None or rain.peak_distance is None:
         if rain.background > 0.0:
             return ("The range adds hardly any rain to the background of ", Amount(rain.background, "rain_rate", 1))
         return ("Hardly any rain reaches the ground",)
     part = f"{fraction_in_words(rain.windward_share)} of the {snow_words(crossing)}"
-    apart = rain.peak_distance - shape.crest_distance
-    words: Words = (*sentence((part,)), " falls before the crest; the most, ", Amount(rain.peak_rate, "rain_rate", 1))
-    if abs(apart) < NEAR:
-        return (*words, ", on it")
-    return (*words, ", ", Amount(abs(apart), "distance"), " behind it" if apart > 0.0 else " before it")
+    most = ranged(Amount(rain.peak_rate, "rain_rate", 1), spans.of("peak_rate"))
+    where = _side(rain.peak_distance - crossing.features.crest_distance)
+    return (*sentence((part,)), " falls before the crest; the most, ", *most, f", {where} it")
 
 
-def _sentences(crossing: Crossing, spans: Spans) -> tuple[Words, ...]:
-    water, rain = crossing.water, crossing.rain
+def _side(apart: float) -> str:
+    """Where a peak lies, seen from the crest."""
+    return "on" if abs(apart) < NEAR else "behind" if apart > 0.0 else "before"
+
+
+def _sentences(spans: Spans) -> tuple[Words, ...]:
+    crossing, water, rain = spans.crossing, spans.crossing.water, spans.crossing.rain
     if water.condensed <= 0.0:
         return (("Nothing condenses on the way over: the air stays short of saturation.",),)
     if not rains(crossing):
@@ -111,14 +121,14 @@ def _sentences(crossing: Crossing, spans: Spans) -> tuple[Words, ...]:
             *removal_words(crossing),
             ".",
         ),
-        *_places(crossing, spans),
+        *_places(spans),
     ]
     fell = water.removed + water.evaporated + water.beyond
     if water.evaporated > SOME * fell:
         out.append(
             (
                 "On its way down ",
-                Amount(water.evaporated / fell, "share"),
+                *ranged(Amount(water.evaporated / fell, "share"), spans.of("evaporated_share")),
                 " of the falling water evaporates, below the cloud and in the lee, and cools the air there.",
             )
         )
@@ -133,14 +143,45 @@ def _sentences(crossing: Crossing, spans: Spans) -> tuple[Words, ...]:
     return tuple(out)
 
 
-def _places(crossing: Crossing, spans: Spans) -> tuple[Words, ...]:
-    """The share before the crest and the most, with their ranges."""
-    rain = crossing.rain
-    if rain.windward_share is None:
+def _places(spans: Spans) -> tuple[Words, ...]:
+    """The share before the crest, the most and where, the shares of the bands behind it; with their ranges."""
+    crossing, rain = spans.crossing, spans.crossing.rain
+    if rain.windward_share is None or rain.peak_distance is None:
         return ()
     share = ranged(Amount(rain.windward_share, "share"), spans.of("windward_share"))
     most = ranged(Amount(rain.peak_rate, "rain_rate", 1), spans.of("peak_rate"))
-    return ((*share, f" of the {snow_words(crossing)} falls before the crest; the most anywhere is ", *most, "."),)
+    before: Words = (*share, f" of the {snow_words(crossing)} falls before the crest; the most anywhere is ", *most)
+    return ((*before, ", ", *_peak(spans, rain.peak_distance), "."), *_bands_behind(spans), *_snow(spans))
+
+
+def _peak(spans: Spans, at: float) -> Words:
+    """Where the most falls, seen from the crest; its range counts in that direction."""
+    crest, ends = spans.crossing.features.crest_distance, spans.of("peak_distance")
+    apart = None if ends is None else (ends[0] - crest, ends[1] - crest)
+    if at < crest and apart is not None:
+        apart = -apart[1], -apart[0]
+    side = "before" if at < crest else "behind"
+    return (*ranged(Amount(abs(at - crest), "distance", 1), apart), f" {side} the crest")
+
+
+def _bands_behind(spans: Spans) -> tuple[Words, ...]:
+    """The shares that fall in the bands behind the crest."""
+    out: list[str | Amount] = []
+    for number, (low, high, share) in enumerate(spans.crossing.rain.lee_bands):
+        if share < SOME_THERE:
+            continue
+        edges = (Amount(low, "distance", bare=True), " to ", Amount(high, "distance"))
+        out += [", " if out else "Behind the crest ", *ranged(Amount(share, "share"), spans.of(f"lee_band_{number}"))]
+        out += [" falls within ", edges[2]] if low == 0.0 else [" at ", *edges]
+    return ((*out, "."),) if out else ()
+
+
+def _snow(spans: Spans) -> tuple[Words, ...]:
+    """The share of snow, where it is neither all nor none."""
+    share = spans.crossing.rain.snow_share
+    if share is None or not SOME_SNOW <= share <= 1.0 - SOME_SNOW:
+        return ()
+    return ((*ranged(Amount(share, "share"), spans.of("snow_share")), " of all that falls on the line is snow."),)
 
 
 def band_step(units: Units) -> float:
@@ -148,9 +189,9 @@ def band_step(units: Units) -> float:
     return from_displayed(200.0 if units == "metric" else 500.0, "height", units)
 
 
-def _rows(crossing: Crossing, step: float) -> tuple[BandRow, ...]:
+def _rows(spans: Spans, step: float) -> tuple[BandRow, ...]:
     """Both sides of each band, from the lowest up."""
-    bands = {(band.lower, band.side): band for band in bands_of_sides(crossing, step=step)}
+    bands = {(band.lower, band.side): band for band in bands_of_sides(spans.crossing, step=step)}
     rows = []
     for lower in sorted({low for low, _ in bands}):
         windward, lee = bands.get((lower, "windward")), bands.get((lower, "lee"))
@@ -163,6 +204,21 @@ def _rows(crossing: Crossing, step: float) -> tuple[BandRow, ...]:
                 windward_snow=None if windward is None else Amount(windward.snow_share, "share"),
                 lee_rate=None if lee is None else Amount(lee.rate, "rain_rate", 1),
                 lee_snow=None if lee is None else Amount(lee.snow_share, "share"),
+                spans=_band_spans(spans, step, windward, lee),
             )
         )
     return tuple(rows)
+
+
+def _band_spans(spans: Spans, step: float, *bands: BandOfSide | None) -> dict[str, Words]:
+    """Ranges of rain and snow, and of the share of snow where no background is in it, in a band on each side."""
+    out: dict[str, Words] = {}
+    for band in bands:
+        if band is None:
+            continue
+        number = round(band.lower / step)
+        rain, snow = (band_name(name, step, band.side, number) for name in ("rain", "snow"))
+        out[f"{band.side}_rate"] = span_of(Amount(band.rate, "rain_rate", 1), spans.of(rain))
+        if spans.crossing.rain.background <= 0.0:
+            out[f"{band.side}_snow"] = span_of(Amount(band.snow_share, "share"), spans.ratio(snow, rain))
+    return out

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 from urllib.parse import quote
 
+from orolift.report.bearings_sure import with_range
 from orolift.report.hours_page import about
 from orolift.report.index import Link
 from orolift.report.quantities import NO_BREAK_SPACE, Amount
@@ -193,36 +194,48 @@ def _time(seconds: float | None, error: float | None, zone: tzinfo, unknown: str
 
 def _bearings_cells(site: SiteBearings, bearings: Bearings) -> tuple[Words, ...]:
     """From how many directions air crosses, and which is warmest, worst for fire and best for rain."""
+    sure = site.agreement
     crossing = sum(state.status == "crossing" for state in site.states)
     return (
         _share(crossing, len(site.states)),
-        _direction(site.warmest, site, bearings, _warming),
-        _direction(site.fire, site, bearings, _drying),
-        _direction(site.rain, site, bearings, _rain),
+        _direction(site.warmest, site, bearings, _warming, None if sure is None else sure.warmest),
+        _direction(site.fire, site, bearings, _drying, None if sure is None else sure.fire),
+        _direction(site.rain, site, bearings, _rain, None if sure is None else sure.rain),
     )
 
 
 def _direction(
-    number: int | None, site: SiteBearings, bearings: Bearings, brought: Callable[[SiteState], Words]
+    number: int | None,
+    site: SiteBearings,
+    bearings: Bearings,
+    brought: Callable[[SiteState], Words],
+    agree: float | None,
 ) -> Words:
-    """A direction and what it brings; none where it brings nothing."""
+    """A direction, how many members agree on it, and what it brings; none where it brings nothing."""
     words = () if number is None else brought(site.states[number])
     if number is None or not words:
         return ("none",)
-    return (Amount(float(bearings.wind_from[number]), "bearing"), ": ", *words)
+    sure: Words = () if agree is None else (" (", Amount(agree, "share"), " of members)")
+    return (Amount(float(bearings.wind_from[number]), "bearing"), *sure, ": ", *words)
 
 
 def _warming(state: SiteState) -> Words:
     if state.warming is None or state.warming <= 0.0:
         return ()
-    return ("warmer by ", Amount(state.warming, "temperature_difference", 1))
+    return ("warmer by ", *with_range(Amount(state.warming, "temperature_difference", 1), state, "warming"))
 
 
 def _drying(state: SiteState) -> Words:
     if state.relative_humidity is None or state.wind_10m is None:
         return ()
-    return (Amount(state.relative_humidity, "share"), " humidity, wind ", Amount(state.wind_10m, "wind", 0))
+    humidity, wind = Amount(state.relative_humidity, "share"), Amount(state.wind_10m, "wind", 0)
+    return (
+        "humidity ",
+        *with_range(humidity, state, "relative_humidity"),
+        ", wind ",
+        *with_range(wind, state, "wind_10m"),
+    )
 
 
 def _rain(state: SiteState) -> Words:
-    return () if state.rain is None else (Amount(state.rain, "rain_rate", 1),)
+    return () if state.rain is None else with_range(Amount(state.rain, "rain_rate", 1), state, "rain")

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -11,19 +11,22 @@ import numpy as np
 from orolift.report.causes import PARTS
 from orolift.report.key_numbers import gusts
 from orolift.report.quantities import Amount, Kind
-from orolift.report.spans import Spans, digits_for, ranged
-from orolift.report.story import SAME, difference, first_sites, source_words, where_words
-from orolift.report.words import Words, counted, sentence
+from orolift.report.sites_heading import sites_heading
+from orolift.report.spans import Spans, changed, ranged, span_of
+from orolift.report.story import first_sites, source_words, where_words
 
 if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
     from orolift.fire.sites import SiteFire
+    from orolift.report.words import Words
 
 MOST_FULL = 24
 """Sites from which on the table has one short row for each (design choice)."""
 MOST_FAILED = 12
 """Failed sites that are named for one reason."""
 BAR_WIDTH = 200.0
+BY = "by "
+"""Before the name of a part of the warming."""
 SMALL_PART = 0.05
 """Parts of the warming below this [K] read as nothing."""
 MOST_LOW = 6
@@ -173,7 +176,7 @@ def sites(crossing: Crossing, spans: Spans | None = None, fire: tuple[SiteFire, 
     many = len(crossing.lee) > MOST_FULL
     by_warmth = sorted(crossing.lee, key=lambda air: -air.warming) if many else []
     return Sites(
-        heading=_heading(crossing.lee),
+        heading=sites_heading(spans),
         rows=() if many else tuple(_row(air, air.number, spans) for air in crossing.lee),
         short_rows=tuple(_short(air, crossing) for air in by_warmth),
         sides=_sides(crossing.lee) if many else (),
@@ -244,14 +247,18 @@ def _panel(air: LeeAir, spans: Spans, fire: SiteFire | None) -> Panel:
         ),
         (
             "Warming",
-            difference(
-                air.warming, "warmer than the incoming air", "cooler than the incoming air", "as the incoming air"
+            changed(
+                air.warming,
+                spans.warming(air),
+                "warmer than the incoming air",
+                "cooler than the incoming air",
+                "as the incoming air",
             ),
         ),
     ]
-    because = _because(air)
-    if because:
-        facts.append(("By", because))
+    for key, value in _parts(air):
+        part = ranged(Amount(value, "temperature_change", 1), spans.part(air, key))
+        facts.append((f"{BY}{PARTS[key]}", part))
     if air.wind is not None:
         at_10m = ranged(Amount(air.wind.at_10m, "wind"), spans.at(air, "wind_10m"))
         facts.append(("Wind", (*at_10m, " at 10 m, gusts ", *gusts(spans, air.wind, air))))
@@ -262,11 +269,14 @@ def _panel(air: LeeAir, spans: Spans, fire: SiteFire | None) -> Panel:
     where = " behind" if beyond >= 0.0 else " before"
     facts.append(("Crest", (Amount(crest, "height"), ", ", Amount(abs(beyond), "distance", 1), where)))
     if air.own is not None:
-        wind, top = Amount(air.own.crest_wind, "wind"), air.own.blocked_top
-        stopped: Words = ("; blocked below ", Amount(top, "height", -1))
+        wind, top = (
+            ranged(Amount(air.own.crest_wind, "wind"), spans.own_line(air, "cross_range_wind")),
+            air.own.blocked_top,
+        )
+        stopped: Words = ("; blocked below ", *ranged(Amount(top, "height", -1), spans.own_line(air, "blocked_top")))
         if top <= air.own.base + 1.0:
             stopped = ("; nothing is blocked",)
-        facts.append(("Own line", (wind, " across its crest", *stopped)))
+        facts.append(("Own line", (*wind, " across its crest", *stopped)))
     met: tuple[str, ...] = ()
     if fire is not None:
         facts.append(("Fuel", _fuel(fire)))
@@ -275,18 +285,11 @@ def _panel(air: LeeAir, spans: Spans, fire: SiteFire | None) -> Panel:
 
 
 def _parts(air: LeeAir) -> list[tuple[str, float]]:
-    """Parts of the warming that are not as good as nothing, by name."""
+    """Parts of the warming that are not as good as nothing, by their keys."""
     if air.parts is None or air.in_blocked_air:
         return []
-    found = [(name, float(getattr(air.parts, key))) for key, name in PARTS.items()]
-    return [(name, value) for name, value in found if abs(value) >= SMALL_PART]
-
-
-def _because(air: LeeAir) -> Words:
-    out: list[str | Amount] = []
-    for name, value in _parts(air):
-        out += [", " if out else "", f"{name} ", Amount(value, "temperature_change", 1)]
-    return tuple(out)
+    found = [(key, float(getattr(air.parts, key))) for key in PARTS]
+    return [(key, value) for key, value in found if abs(value) >= SMALL_PART]
 
 
 def _bar(air: LeeAir) -> tuple[Part, ...]:
@@ -302,10 +305,15 @@ def _bar(air: LeeAir) -> tuple[Part, ...]:
 
 
 def _fuel(fire: SiteFire) -> Words:
-    """Moisture of fine dead fuel and the Fosberg index."""
-    moisture = Amount(float(fire.indices.equilibrium_fuel_moisture), "share", 1)
-    index = float(fire.indices.fosberg_index)
-    return (moisture, " moisture", *((", Fosberg index ", Amount(index, "plain")) if math.isfinite(index) else ()))
+    """Moisture of fine dead fuel and the Fosberg index, with drought where that is known."""
+    air, ends = fire.indices, fire.ranges
+    moisture = Amount(float(air.equilibrium_fuel_moisture), "share", 1)
+    out: list[str | Amount] = [*ranged(moisture, ends.get("equilibrium_fuel_moisture")), " moisture"]
+    for words, name in ((", Fosberg index ", "fosberg_index"), (", with drought ", "fosberg_index_with_drought")):
+        index = float(getattr(air, name))
+        if math.isfinite(index):
+            out += [words, *ranged(Amount(index, "plain"), ends.get(name))]
+    return tuple(out)
 
 
 def _failed(crossing: Crossing) -> tuple[tuple[str, str], ...]:
@@ -321,7 +329,7 @@ def _failed(crossing: Crossing) -> tuple[tuple[str, str], ...]:
 
 
 def _row(air: LeeAir, number: int, spans: Spans) -> SiteRow:
-    return SiteRow(
+    row = SiteRow(
         number=number,
         name=air.name,
         side=air.side,
@@ -337,57 +345,23 @@ def _row(air: LeeAir, number: int, spans: Spans) -> SiteRow:
         upwind_temperature=Amount(air.upwind_temperature, "temperature", 1),
         upwind_dew_point=Amount(air.upwind_dew_point, "temperature", 1),
         warming=Amount(air.warming, "temperature_change", 1),
-        spans={name: _span(spans.at(air, name), amount) for name, amount in _RANGED.items()}
-        | {"source": tuple(source_words(air)[2:5])},
+        spans={"source": tuple(source_words(air)[2:5])},
     )
+    found = {name: span_of(getattr(row, name), spans.at(air, name)) for name in _RANGED}
+    return replace(row, spans=row.spans | found)
 
 
-_RANGED = {
-    "temperature": Amount(0.0, "temperature", 1),
-    "dew_point": Amount(0.0, "temperature", 1),
-    "relative_humidity": Amount(0.0, "share"),
-    "warming": Amount(0.0, "temperature_change", 1),
-}
-"""Columns that carry a range, and how finely it is shown at most."""
-
-
-def _span(ends: tuple[float, float] | None, like: Amount) -> Words:
-    """A range for the second line of a cell; nothing without one."""
-    if ends is None:
-        return ()
-    digits = digits_for(like, ends)
-    low, high = (Amount(value, like.kind, digits, bare=True) for value in ends)
-    return (low, " to ", high)
-
-
-def _heading(lee: tuple[LeeAir, ...]) -> Words:
-    """How much warmer or cooler the sites are, one by name, several by their span."""
-    chosen = [air for air in lee if air.side == "lee"] or list(lee)
-    if len(chosen) == 1:
-        air = chosen[0]
-        words = difference(air.warming, "warmer than", "cooler than", "as warm as")
-        return (f"{air.name} is ", *words, " the incoming air at its height")
-    least, most = min(air.warming for air in chosen), max(air.warming for air in chosen)
-    noun = "lee site" if chosen[0].side == "lee" else "site"
-    start = f"{counted(len(chosen), noun, f'{noun}s')} are "
-    end = "the incoming air at their height"
-    if least > SAME or most < -SAME:
-        low, high = sorted((abs(least), abs(most)))
-        which = "warmer" if least > SAME else "cooler"
-        span: Words = (Amount(low, "temperature_difference", 1), " to ", Amount(high, "temperature_difference", 1))
-        if high - low < SAME:
-            span = (Amount(high, "temperature_difference", 1),)
-        return sentence((start, *span, f" {which} than {end}"))
-    return sentence(
-        (
-            start,
-            "between ",
-            *difference(least, "warmer", "cooler", "as warm"),
-            " and ",
-            *difference(most, "warmer than", "cooler than", "as warm as"),
-            f" {end}",
-        )
-    )
+_RANGED = (
+    "temperature",
+    "dew_point",
+    "relative_humidity",
+    "mixing_ratio",
+    "went_round",
+    "upwind_temperature",
+    "upwind_dew_point",
+    "warming",
+)
+"""Columns that carry a range of the members."""
 
 
 def _remarks(crossing: Crossing) -> tuple[Words, ...]:

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 from orolift.errors import CaseError, OroliftError
 from orolift.sources.inputs import read_inputs, situation_of
 from orolift.sources.own_lines import own_lines, sites_of
+from orolift.sources.spread_model import drawn_of
 from orolift.spread.bearings import BearingTask, reversed_situation, turned_air
 from orolift.spread.hours import OneLine
 from orolift.spread.site_state import SiteState
@@ -20,6 +21,7 @@ if TYPE_CHECKING:
     from orolift.crossing.result import Site
     from orolift.crossing.situation import Situation
     from orolift.sources.inputs import Inputs
+    from orolift.spread.spread import Drawn
 
 
 @dataclass(frozen=True, eq=False)
@@ -37,6 +39,8 @@ class BearingSetup:
         As in `orolift.sources.own_lines.own_lines`; None for a hand-entered ridge.
     step_deg : int
     notes : tuple of str
+    drawn : Drawn or None
+        What the members of every direction are drawn from; None without members.
     """
 
     inputs: Inputs
@@ -45,6 +49,7 @@ class BearingSetup:
     own_line: Callable[[int, float], Situation] | None
     step_deg: int
     notes: tuple[str, ...]
+    drawn: Drawn | None = None
 
     @property
     def directions(self) -> int:
@@ -52,7 +57,7 @@ class BearingSetup:
         return 360 // self.step_deg
 
 
-def read_bearings(case: str | Path, step_deg: int) -> BearingSetup:
+def read_bearings(case: str | Path, step_deg: int, members: int | None = None) -> BearingSetup:
     """A case read for every wind direction.
 
     Parameters
@@ -60,6 +65,8 @@ def read_bearings(case: str | Path, step_deg: int) -> BearingSetup:
     case : str or Path
     step_deg : int
         Between two directions, a divisor of 360.
+    members : int, optional
+        Of each direction, 10 or more, or 0 for none; as [spread] of the case says when left out.
 
     Returns
     -------
@@ -68,7 +75,7 @@ def read_bearings(case: str | Path, step_deg: int) -> BearingSetup:
     Raises
     ------
     OroliftError
-        If the case cannot be read, or the step is none.
+        If the case cannot be read, the step is none, or the members are too few or too many.
     """
     if not 1 <= step_deg <= 90 or 360 % step_deg:
         raise CaseError(f"--step {step_deg}: it must divide 360 and be 1 to 90 degrees, for example 10.")
@@ -93,7 +100,14 @@ def read_bearings(case: str | Path, step_deg: int) -> BearingSetup:
             "The ridge is one line: of a wind at an angle to it only the component along it counts, and wind from its "
             "other end crosses it the other way."
         )
-    return BearingSetup(inputs, replace(situation, sites=sites), sites, own_line, step_deg, tuple(notes))
+    drawn = drawn_of(inputs.case, members)
+    if drawn is not None:
+        notes.append(
+            f"Each direction is worked out in {drawn.members} members (seed {drawn.seed}), with the same deviations in "
+            "all of them; the wind of a member turns against the line, which stays. The error of the method is taken "
+            "to be the same from every side: a member whose answer is too warm is so in all directions."
+        )
+    return BearingSetup(inputs, replace(situation, sites=sites), sites, own_line, step_deg, tuple(notes), drawn)
 
 
 def bearing_tasks(setup: BearingSetup) -> Iterator[BearingTask]:
@@ -133,7 +147,8 @@ def bearing_task(setup: BearingSetup, wind_from: float) -> BearingTask:
         along = situation.transect.bearing or 0.0
         if math.cos(bearing - along) < 0.0:
             situation = reversed_situation(situation)
-        return BearingTask(wind_from, tuple(states), (OneLine(replace(situation, incoming=air), every),))
+        line = OneLine(replace(situation, incoming=air), every)
+        return BearingTask(wind_from, tuple(states), (line,), setup.drawn)
     lines = []
     for number in every:
         try:
@@ -142,4 +157,4 @@ def bearing_task(setup: BearingSetup, wind_from: float) -> BearingTask:
             states[number] = SiteState("missing", str(error))
             continue
         lines.append(OneLine(replace(situation, incoming=air, lee=None), (number,)))
-    return BearingTask(wind_from, tuple(states), tuple(lines))
+    return BearingTask(wind_from, tuple(states), tuple(lines), setup.drawn)

@@ -11,6 +11,15 @@ from pydantic import Field
 from orolift.sources.hours_results import QUANTITIES, Flags, Numbers, numbers, said
 from orolift.sources.result_block import Block
 from orolift.sources.results import CaseBlock, Program, case_block, program
+from orolift.sources.state_ranges import (
+    RANGED,
+    MembersBlock,
+    StateRangesBlock,
+    members_block,
+    range_columns,
+    state_ranges,
+)
+from orolift.spread.agreement import reach_of
 from orolift.spread.timeline import values_of
 
 if TYPE_CHECKING:
@@ -18,6 +27,8 @@ if TYPE_CHECKING:
     from orolift.spread.bearings import Bearings, SiteBearings
 
 BEARINGS_VERSION = "1"
+WITH_RANGE = RANGED | {"drying_power_hpa_ms": ("drying_power", 0.01, 0.0)}
+"""Columns that have ranges."""
 
 
 class DirectionColumns(Block):
@@ -52,6 +63,16 @@ class DirectionColumns(Block):
     descending_warm_dry: Flags
 
 
+class AgreementBlock(Block):
+    """Shares of the members, 0 to 1, whose own direction is that of the answer or beside it; null without one."""
+
+    within_deg: float = Field(description="how far beside it still counts: one step, none where that is above 30")
+    worst_for_fire: float | None
+    best_for_rain: float | None = Field(description="of the members that rain in a direction at all")
+    warmest: float | None
+    driest: float | None
+
+
 class SiteBearingsBlock(Block):
     """One site under every wind direction."""
 
@@ -60,7 +81,9 @@ class SiteBearingsBlock(Block):
     best_for_rain_deg: float | None = Field(description="null where no direction brings rain")
     warmest_deg: float | None = Field(description="strongest warming")
     driest_deg: float | None = Field(description="lowest relative humidity")
+    agreement: AgreementBlock | None = Field(description="how many members agree on these; null without members")
     directions: DirectionColumns
+    ranges: StateRangesBlock | None = Field(description="ranges and chances by direction; null without members")
 
 
 class BearingsResults(Block):
@@ -71,6 +94,7 @@ class BearingsResults(Block):
     case: CaseBlock
     step_deg: int
     case_wind_from_deg: float
+    spread: MembersBlock | None = Field(description="the members the ranges come from; null without")
     interrupted: bool = Field(description="whether the work was stopped before its end")
     sites: list[SiteBearingsBlock]
     notes: list[str]
@@ -94,6 +118,7 @@ def bearings_results(bearings: Bearings, setup: BearingSetup) -> BearingsResults
         case=case_block(setup.inputs.case),
         step_deg=setup.step_deg,
         case_wind_from_deg=math.degrees(bearings.given),
+        spread=members_block(setup.drawn),
         interrupted=bearings.interrupted,
         sites=[_site(site, bearings) for site in bearings.sites],
         notes=[*setup.notes],
@@ -114,6 +139,8 @@ def _site(site: SiteBearings, bearings: Bearings) -> SiteBearingsBlock:
         best_for_rain_deg=direction(site.rain),
         warmest_deg=direction(site.warmest),
         driest_deg=direction(site.driest),
+        agreement=_agreement(site, bearings),
+        ranges=None if site.agreement is None else state_ranges(states, WITH_RANGE),
         directions=DirectionColumns(
             wind_from_deg=degrees,
             status=[state.status for state in states],
@@ -128,6 +155,19 @@ def _site(site: SiteBearings, bearings: Bearings) -> SiteBearingsBlock:
             descending_warm_dry=[state.descending for state in states],
             **found,
         ),
+    )
+
+
+def _agreement(site: SiteBearings, bearings: Bearings) -> AgreementBlock | None:
+    found = site.agreement
+    if found is None:
+        return None
+    return AgreementBlock(
+        within_deg=degrees_of(reach_of(bearings.step)),
+        worst_for_fire=found.fire,
+        best_for_rain=found.rain,
+        warmest=found.warmest,
+        driest=found.driest,
     )
 
 
@@ -153,11 +193,15 @@ def bearing_rows(results: BearingsResults) -> tuple[list[str], list[list[object]
     -------
     header : list of str
     rows : list of lists
-        All directions of the first site, then of the next.
+        All directions of the first site, then of the next. Ranges and chances come last, and only with members.
     """
     keys = list(DirectionColumns.model_fields)
     rows: list[list[object]] = []
+    more = range_columns(state_ranges((), WITH_RANGE)) if results.spread is not None else {}
     for site in results.sites:
         columns = [getattr(site.directions, key) for key in keys]
+        if more:
+            empty = dict.fromkeys(more, [None] * len(columns[0]))
+            columns += (empty if site.ranges is None else range_columns(site.ranges)).values()
         rows += [[site.name, *map(said, row)] for row in zip(*columns, strict=True)]
-    return ["site", *keys], rows
+    return ["site", *keys, *more], rows

@@ -8,15 +8,17 @@ from typing import TYPE_CHECKING
 import numpy as np
 from pydantic import Field
 
+from orolift.fire.chances import CODES_AFTER
 from orolift.fire.words import limit_words, named
 from orolift.sources.result_block import Block, Range
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable
+    from collections.abc import Iterable, Mapping
 
     from numpy.typing import ArrayLike
 
     from orolift.fire.sites import SiteFire, Threshold
+    from orolift.fire.winds import WindMeant
     from orolift.fire.words import Measure
 
 _WRITTEN: dict[Measure, tuple[float, float, str]] = {
@@ -60,6 +62,7 @@ class ConditionBlock(Block):
     limit_kind: str = Field(description="at least or at most")
     limit: float
     value: float | None
+    range: tuple[float, float] | None = Field(description="of the value: 10 and 90 % of the members; null without")
     margin: float | None = Field(description="by how much it is met; negative: missed")
     chance_percent: float | None
     movers: list[MoverBlock]
@@ -98,7 +101,12 @@ class FireBlock(Block):
     mixing_height_by_day_m: float
     night: NightBlock
     rules: list[RuleBlock]
-    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %]")
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %], error of the method included")
+    input_range: Range = Field(default_factory=dict, description="the same by the uncertainty of the inputs alone")
+
+
+NOT_FLAT = frozenset({"number", "name", "night", "rules", "range", "input_range"})
+"""Keys of a block that are no values of their own."""
 
 
 def fire_blocks(sites: Iterable[SiteFire]) -> list[FireBlock]:
@@ -125,12 +133,17 @@ def flat_fire(block: FireBlock) -> dict[str, object]:
     Returns
     -------
     dict
-        Keys of `fire`; of the night ``night_valley_floor_still_percent`` and so on; last `thresholds_met`, the names
-        of the rules that are met.
+        Keys of `fire`; of the night ``night_valley_floor_still_percent`` and so on; with members the ends of ranges as
+        ``fosberg_index_low`` and ``fosberg_index_high``, those by the inputs alone as ``fosberg_index_inputs_low``;
+        last `thresholds_met`, the names of the rules that are met.
     """
     values = block.model_dump()
-    flat = {key: value for key, value in values.items() if key not in {"number", "name", "night", "rules", "range"}}
+    flat = {key: value for key, value in values.items() if key not in NOT_FLAT}
     flat |= {f"night_{key}": value for key, value in values["night"].items()}
+    for kind, added in (("range", ""), ("input_range", "_inputs")):
+        for key, (low, high) in values[kind].items():
+            name = key.replace(".", "_") + added
+            flat[f"{name}_low"], flat[f"{name}_high"] = low, high
     flat["thresholds_met"] = "; ".join(rule.name for rule in block.rules if rule.status == "met")
     return flat
 
@@ -157,8 +170,9 @@ def _block(site: SiteFire) -> FireBlock:
         mixing_height_m=site.night.mixing_height,
         mixing_height_by_day_m=site.night.mixing_height_by_day,
         night=_night(site),
-        rules=[_rule(threshold) for threshold in site.thresholds],
-        range=_ranges(site),
+        rules=[_rule(threshold, site.rule_ranges) for threshold in site.thresholds],
+        range=_ranges(site.ranges),
+        input_range=_ranges(site.input_ranges),
     )
 
 
@@ -175,17 +189,24 @@ _RANGES = {
             "fine_fuel_code",
             "initial_spread_index",
             "angstroem_index",
+            *CODES_AFTER,
         )
     },
+    "mixing_height": ("mixing_height_m", 1.0),
+    "mixing_height_by_day": ("mixing_height_by_day_m", 1.0),
+    "floor_windy": ("night.valley_floor_windy_percent", 100.0),
+    "floor_still": ("night.valley_floor_still_percent", 100.0),
+    "mid_slope": ("night.mid_slope_percent", 100.0),
+    "ridge": ("night.ridge_percent", 100.0),
 }
 
 
-def _ranges(site: SiteFire) -> Range:
+def _ranges(found: Mapping[str, tuple[float, float]]) -> Range:
     """Ranges of the members under the keys of the block."""
     return {
-        key: (factor * site.ranges[name][0], factor * site.ranges[name][1])
+        key: (factor * found[name][0], factor * found[name][1])
         for name, (key, factor) in _RANGES.items()
-        if name in site.ranges
+        if name in found
     }
 
 
@@ -203,13 +224,14 @@ def _night(site: SiteFire) -> NightBlock:
     )
 
 
-def _rule(threshold: Threshold) -> RuleBlock:
+def _rule(threshold: Threshold, ranges: Mapping[str | WindMeant, tuple[float, float]]) -> RuleBlock:
     judged = threshold.judged
     conditions = []
     for judged_one, moves in zip(judged.conditions, threshold.movers, strict=True):
         condition = judged_one.condition
         words, measure, _ = named(condition.quantity)
         factor, offset, unit = _WRITTEN[measure]
+        ends = ranges.get(condition.quantity)
         conditions.append(
             ConditionBlock(
                 quantity=words,
@@ -217,6 +239,7 @@ def _rule(threshold: Threshold) -> RuleBlock:
                 limit_kind=limit_words(condition),
                 limit=condition.limit * factor + offset,
                 value=None if judged_one.value is None else judged_one.value * factor + offset,
+                range=None if ends is None else (ends[0] * factor + offset, ends[1] * factor + offset),
                 margin=None if judged_one.margin is None else judged_one.margin * factor,
                 chance_percent=_percent(judged_one.chance),
                 movers=[MoverBlock(input=move.what, amount=move.amount, unit=MOVER_UNITS[move.what]) for move in moves],

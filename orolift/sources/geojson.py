@@ -25,8 +25,15 @@ def geojson_document(
     """The GeoJSON object of a file, and the start of every message about it; `what` it should hold, in words."""
     name = f"{where}: {path}"
     text = read_text(path, where, folder)
+
+    def refuse(literal: str) -> None:
+        line = text[: text.find(literal)].count("\n") + 1
+        raise DataFileError(
+            f"{name}: line {line}: {literal} is no number of JSON (RFC 8259). Export {what} without empty coordinates."
+        )
+
     try:
-        document = json.loads(text)
+        document = json.loads(text, parse_constant=refuse)
     except json.JSONDecodeError as error:
         raise DataFileError(
             f"{name}: line {error.lineno}: not JSON ({error.msg}). Export {what} as GeoJSON."

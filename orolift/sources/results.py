@@ -26,7 +26,8 @@ from orolift.sources.rain_results import (
 from orolift.sources.result_block import Block, Chance, Range
 from orolift.sources.spread_results import SpreadBlock, at_site, ranges_of, site_chances, spread_block
 from orolift.sources.units import UNITS
-from orolift.spread.at_sites import column_of
+from orolift.sources.wind_results import LeeWindBlock, lee_wind_block
+from orolift.spread.at_sites import column_of, on_its_line
 from orolift.spread.ranges import range_of
 
 if TYPE_CHECKING:
@@ -199,6 +200,7 @@ class Results(Block):
     terrain: TerrainBlock
     flow: FlowBlock
     rain: RainBlock
+    lee_wind: LeeWindBlock
     lee: list[LeeBlock]
     failed_sites: list[FailedSiteBlock] = Field(description="sites of which nothing could be worked out, and why")
     spread: SpreadBlock | None = Field(description="the members the ranges come from; null without")
@@ -253,6 +255,7 @@ def results_of(
         terrain=_terrain(crossing),
         flow=_flow(crossing, spread),
         rain=_rain(crossing, mapped, spread),
+        lee_wind=lee_wind_block(crossing, spread),
         lee=[_lee(site, crossing, places, spread) for site in crossing.lee],
         failed_sites=[FailedSiteBlock(**asdict(site)) for site in crossing.failed],
         spread=None if spread is None else spread_block(spread, crossing),
@@ -375,8 +378,9 @@ def _lee(site: LeeAir, crossing: Crossing, places: Sequence[SitePlace], spread: 
     ranges: Range = {}
     inputs: Range = {}
     if spread is not None and column is not None:
-        ranges = ranges_of("lee", at_site(spread.full_sites, column))
-        inputs = ranges_of("lee", at_site(spread.sites, column))
+        line = on_its_line(spread, crossing, site)
+        ranges = ranges_of("lee", at_site(spread.full_sites, column) | line)
+        inputs = ranges_of("lee", at_site(spread.sites, column) | line)
     elif wind is not None:
         ranges = {"wind_ms": (wind.low, wind.high), "gust_ms": (wind.gust_low, wind.gust_high)}
     own, shape = site.own, crossing.features

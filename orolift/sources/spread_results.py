@@ -53,7 +53,12 @@ KEYS: dict[str, dict[str, tuple[str, float, float]]] = {
         "total_kg_per_m_s": ("total", 1.0, 0.0),
         "snow_share": ("snow_share", 1.0, 0.0),
     },
+    "lee_wind": {
+        "strongest_ms": ("lee_wind", 1.0, 0.0),
+        "conditions_held": ("windstorm_conditions", 1.0, 0.0),
+    },
     "lee": {
+        "blocked_top_m": ("blocked_top", 1.0, 0.0),
         "temperature_c": ("temperature", 1.0, -OFFSET),
         "dew_point_c": ("dew_point", 1.0, -OFFSET),
         "relative_humidity_percent": ("relative_humidity", 100.0, 0.0),

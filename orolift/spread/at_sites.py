@@ -8,6 +8,7 @@ import numpy as np
 
 from orolift.air.humidity import dew_point_from_mixing_ratio, relative_humidity_from_mixing_ratio
 from orolift.air.saturation import saturation_mixing_ratio
+from orolift.crossing.layer_above import own_differences
 from orolift.crossing.members import PARTS, Members
 from orolift.crossing.model_error import model_error
 from orolift.crossing.result import Site
@@ -44,8 +45,33 @@ def column_of(crossing: Crossing, site: LeeAir) -> int | None:
     return next((i for i, air in enumerate(columns_of(crossing)) if air.number == site.number), None)
 
 
-def members_at(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Array] | None:
-    """What the members give at a site, the error of the method included.
+def members_at(
+    spread: Spread, crossing: Crossing, site: LeeAir, *, inputs_only: bool = False
+) -> dict[str, Array] | None:
+    """What the members give at a site.
+
+    Parameters
+    ----------
+    spread : Spread
+    crossing : Crossing
+    site : LeeAir
+    inputs_only : bool
+        Whether the error of the method is left out.
+
+    Returns
+    -------
+    dict of str to ndarray (m,) or None
+        In SI, NaN where a member has no such value; None for a site that is in no column.
+    """
+    column = column_of(crossing, site)
+    arrays = spread.sites if inputs_only else spread.full_sites
+    if column is None or not arrays:
+        return None
+    return {name: value[:, column] for name, value in arrays.items()}
+
+
+def on_its_line(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Array]:
+    """What the members give for the line a site is on.
 
     Parameters
     ----------
@@ -55,13 +81,24 @@ def members_at(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, Ar
 
     Returns
     -------
-    dict of str to ndarray (m,) or None
-        In SI, NaN where a member has no such value; None for a site that is in no column.
+    dict of str to ndarray (m,)
+        ``blocked_top`` and ``cross_range_wind`` in SI; empty where no member crosses.
+
+    Notes
+    -----
+    A line of the site's own takes the deviations of the crossing's line around its own answer: differences of the
+    blocked top, which is not below the base of its line, and factors of the wind.
     """
-    column = column_of(crossing, site)
-    if column is None or not spread.full_sites:
-        return None
-    return {name: value[:, column] for name, value in spread.full_sites.items()}
+    values, own, flow = spread.values, site.own, crossing.flow
+    if not spread.crosses.any():
+        return {}
+    top, wind = values["blocked_top"], np.where(spread.crosses, values["cross_range_wind"], np.nan)
+    if own is None:
+        return {"blocked_top": top, "cross_range_wind": wind}
+    return {
+        "blocked_top": np.maximum(own.blocked_top + top - flow.blocked_top, own.base),
+        "cross_range_wind": wind * own.crest_wind / flow.crest_wind,
+    }
 
 
 MANY = 24
@@ -123,6 +160,7 @@ def centred(whole: Members, crossing: Crossing) -> Members:
             else:
                 sites[name][:, column] += value - middle
         if sites:
+            sites["went_round"][:, column] = np.clip(sites["went_round"][:, column], 0.0, 1.0)
             p, t, v = (sites[name][:, column] for name in ("pressure", "temperature", "mixing_ratio"))
             v = sites["mixing_ratio"][:, column] = np.minimum(v, _most_vapour(p, t))
             sites["dew_point"][:, column], sites["relative_humidity"][:, column] = _humidity(p, t, v)
@@ -142,11 +180,15 @@ def _answers(air: LeeAir) -> dict[str, float | None]:
         "source_level": air.source_level,
         "source_level_low": air.source_level_low,
         "source_level_high": air.source_level_high,
+        "upwind_temperature": air.upwind_temperature,
+        "upwind_dew_point": air.upwind_dew_point,
         "warming": air.warming,
+        "went_round": air.went_round,
         "rain": air.rain,
         **{f"warming_{name}": None if parts is None else getattr(parts, name) for name in PARTS},
         "popular_picture": air.popular_picture,
         "descent_only": air.descent_only,
+        **own_differences(air),
     }
 
 
@@ -197,6 +239,32 @@ def with_method_error(
     for name, low, high in _wind_ranges(lee):
         out[name] = sites[name] * np.exp(np.where(z_w < 0.0, low, high) * z_w / TENTH)
     return out
+
+
+def values_with_method_error(values: dict[str, Array], crossing: Crossing, error: dict[str, Array]) -> dict[str, Array]:
+    """What members give for the crossing as a whole, with the error of the method added where it is stated.
+
+    Parameters
+    ----------
+    values : dict of str to ndarray (m,)
+    crossing : Crossing
+        For the range of the methods of the lee wind.
+    error : dict of str to ndarray (m,)
+        As for `with_method_error`.
+
+    Returns
+    -------
+    dict of str to ndarray (m,)
+        The strongest wind down the lee has the factor that `with_method_error` gives the winds at the sites: without
+        any other doubt its 10 and 90 % are the range of the methods.
+    """
+    if "lee_wind" not in values:
+        return values
+    winds, z = crossing.winds, error["model_wind"]
+    least, strongest, most = (max(wind, 0.1) for wind in (winds.low, winds.strongest, winds.high))
+    down, up = float(np.log(strongest / least)), float(np.log(most / strongest))
+    width: Array = np.where(z < 0.0, down, up)
+    return values | {"lee_wind": values["lee_wind"] * np.exp(width * z / TENTH)}
 
 
 def _wind_ranges(lee: tuple[LeeAir, ...]) -> Iterator[tuple[str, Array, Array]]:

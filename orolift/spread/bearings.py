@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.crossing.facts import OBLIQUE
+from orolift.spread.agreement import Agreement, agreeing, reach_of
 from orolift.spread.site_state import SiteState, states_of
 
 if TYPE_CHECKING:
@@ -73,6 +74,8 @@ class SiteBearings:
         Numbers of the directions with the strongest warming, the lowest humidity, the largest product of vapour
         pressure deficit and wind at 10 m, and the most rain; None where there is none. Only directions that are not
         oblique to the range count, unless all are: see `square_enough`.
+    agreement : Agreement or None
+        How many members agree on each; None without members.
     """
 
     name: str
@@ -81,6 +84,7 @@ class SiteBearings:
     driest: int | None
     fire: int | None
     rain: int | None
+    agreement: Agreement | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -157,11 +161,15 @@ def bearings_of(
     Bearings
     """
     directions = sorted(found, key=lambda one: one.wind_from)
+    wind_from = np.array([one.wind_from for one in directions])
+    by_site = [tuple(one.sites[number] for one in directions) for number in range(len(names))]
     return Bearings(
-        wind_from=np.array([one.wind_from for one in directions]),
+        wind_from=wind_from,
         step=step,
         given=given,
-        sites=tuple(_site(name, tuple(one.sites[number] for one in directions)) for number, name in enumerate(names)),
+        sites=tuple(
+            _with_agreement(_site(name, states), wind_from, step) for name, states in zip(names, by_site, strict=True)
+        ),
         planned=planned,
     )
 
@@ -176,6 +184,28 @@ def _site(name: str, states: tuple[SiteState, ...]) -> SiteBearings:
         driest=_most(states, "relative_humidity", -1.0),
         fire=_most(states, "drying_power", 1.0),
         rain=rain if wet else None,
+    )
+
+
+def _with_agreement(site: SiteBearings, wind_from: Array, step: float) -> SiteBearings:
+    """A site with how many of its members agree on each direction that is named."""
+    if all(state.members is None for state in site.states):
+        return site
+    counts = square_enough(site.states)
+
+    def share(name: str, chosen: int | None, sign: float = 1.0, least: float = -math.inf) -> float | None:
+        return agreeing(
+            site.states, counts, wind_from, name=name, chosen=chosen, reach=reach_of(step), sign=sign, least=least
+        )
+
+    return replace(
+        site,
+        agreement=Agreement(
+            warmest=share("warming", site.warmest),
+            driest=share("relative_humidity", site.driest, -1.0),
+            fire=share("drying_power", site.fire),
+            rain=share("rain", site.rain, least=NO_RAIN),
+        ),
     )
 
 

@@ -59,6 +59,25 @@ def chance_of(happens: Array) -> float | None:
     return float(there.mean()) if there.size else None
 
 
+def share_of_members(spread: Spread | None, name: str) -> float | None:
+    """Share of the members that cross in which a number of the crossing has a value.
+
+    Parameters
+    ----------
+    spread : Spread or None
+    name : str
+        In `Spread.values`.
+
+    Returns
+    -------
+    float or None [1]
+        None where no member crosses.
+    """
+    if spread is None or name not in spread.values or not spread.crosses.any():
+        return None
+    return float(np.isfinite(spread.values[name][spread.crosses]).mean())
+
+
 def ranks(values: Array) -> Array:
     """Ranks from 1, the mean rank where values are equal.
 

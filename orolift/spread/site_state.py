@@ -10,17 +10,19 @@ import numpy as np
 from orolift.air.column import interpolated
 from orolift.air.humidity import relative_humidity_from_dew_point
 from orolift.air.temperature import potential_temperature
+from orolift.crossing.descending import warm_and_dry
 from orolift.crossing.members import PARTS
 from orolift.crossing.result import When
 from orolift.crossing.situation import crossing_of
+from orolift.crossing.way import way_to
 from orolift.errors import NoCrossingError, OroliftError
-from orolift.fire.dryness import vapour_pressure_deficit
+from orolift.fire.dryness import HIGHEST_TEMPERATURE, LOWEST_TEMPERATURE, vapour_pressure_deficit
 from orolift.fire.indices import site_fire
 from orolift.fire.nights import nights_at
 from orolift.fire.values import site_values
 from orolift.fire.weather import site_weather, stacked
 from orolift.spread.at_sites import column_of
-from orolift.spread.spread import Drawn, spread_of
+from orolift.spread.spread import Drawn, crosses_of, spread_of
 
 if TYPE_CHECKING:
     from collections.abc import Mapping
@@ -36,18 +38,11 @@ if TYPE_CHECKING:
 
 Status = Literal["crossing", "no crossing", "missing"]
 
-SLOWEST = 1.0
-"""Wind [m s-1] below which the time on the way is counted with this, as for the heat of the ground."""
-LEAST_WARMING = 1.0
-"""Warming [K] from which lee air counts as warm: two thirds of the least error of the method; a judgement."""
-HALFWAY = 0.5
-"""Share of the way from the potential temperature of the incoming air at the height of a site to that at the crest
-which air come down from the crest has made at least; what is short of the whole is mixing and low air; a judgement."""
-
 
 KEPT = (
     *("pressure", "temperature", "dew_point", "relative_humidity", "mixing_ratio", "wind_10m", "gust"),
     *("source_level", "warming", *(f"warming_{name}" for name in PARTS), "rain", "in_pool"),
+    *("way", "kept_off", "potential_beside", "potential_crest", "humidity_beside"),
 )
 """Arrays of members that are kept of a site."""
 
@@ -59,11 +54,18 @@ class SiteMembers:
     Attributes
     ----------
     inputs, full : mapping of str to ndarray (m,)
-        Those of `KEPT`, in SI: by the inputs alone, and with the error of the method.
+        Those of `KEPT` and `drying_power`, in SI: by the inputs alone, and with the error of the method. Empty where
+        the situation itself does not cross.
+    crosses : ndarray (m,) [1]
+        1 in members that cross, 0 in those that do not; NaN in those that could not be worked out.
+    line_rain : ndarray (m,) or None [kg m-1 s-1]
+        Rain and snow along the whole line, background left out; None where the situation does not cross.
     """
 
     inputs: Mapping[str, Array]
     full: Mapping[str, Array]
+    crosses: Array
+    line_rain: Array | None = None
 
 
 @dataclass(frozen=True, slots=True)
@@ -181,12 +183,13 @@ def states_of(
     try:
         crossing = crossing_of(situation)
     except NoCrossingError as error:
-        return (SiteState("no crossing", str(error)),) * len(situation.sites), None
+        still = None if drawn is None else members_without_answer(situation, drawn)
+        return (SiteState("no crossing", str(error), members=still),) * len(situation.sites), None
     except OroliftError as error:
         return (SiteState("missing", str(error)),) * len(situation.sites), None
     states = tuple(_state(site, crossing, observed_at) for site in crossing.lee)
     if drawn is not None:
-        members = members_of_sites(situation, crossing, drawn)
+        members = members_of_sites(situation, crossing, drawn, observed_at)
         states = tuple(replace(state, members=found) for state, found in zip(states, members, strict=True))
     if fire is None or fire.rules is None:
         return states, crossing
@@ -195,7 +198,9 @@ def states_of(
     return tuple(replace(state, rule_values=found) for state, found in zip(states, values, strict=True)), crossing
 
 
-def members_of_sites(situation: Situation, crossing: Crossing, drawn: Drawn) -> tuple[SiteMembers | None, ...]:
+def members_of_sites(
+    situation: Situation, crossing: Crossing, drawn: Drawn, observed_at: float = 0.0
+) -> tuple[SiteMembers | None, ...]:
     """What members give at the sites of a situation.
 
     Parameters
@@ -204,6 +209,8 @@ def members_of_sites(situation: Situation, crossing: Crossing, drawn: Drawn) -> 
     crossing : Crossing
         Of the situation.
     drawn : Drawn
+    observed_at : float [m]
+        As for `states_of`.
 
     Returns
     -------
@@ -211,17 +218,56 @@ def members_of_sites(situation: Situation, crossing: Crossing, drawn: Drawn) -> 
         In the order of the sites; None where no member crosses, or none could be worked out.
     """
     try:
-        found = spread_of(situation, crossing, drawn.uncertainty, members=drawn.members, seed=drawn.seed)
+        found = spread_of(
+            situation,
+            crossing,
+            drawn.uncertainty,
+            members=drawn.members,
+            seed=drawn.seed,
+            observed_at=observed_at,
+        )
     except OroliftError:
         return (None,) * len(crossing.lee)
     if not found.full_sites:
         return (None,) * len(crossing.lee)
+    crosses = found.crosses.astype(np.float64)
+    crosses[[one.number for one in found.failed]] = np.nan
     out = []
     for site in crossing.lee:
         column = column_of(crossing, site)
         inputs, full = ({name: arrays[name][:, column] for name in KEPT} for arrays in (found.sites, found.full_sites))
-        out.append(SiteMembers(inputs, full))
+        for one in (inputs, full):
+            one["drying_power"] = _drying_power(one)
+        out.append(SiteMembers(inputs, full, crosses, found.values["total"]))
     return tuple(out)
+
+
+def _drying_power(values: Mapping[str, Array]) -> Array:
+    """Vapour pressure deficit times the wind at 10 m of each member [Pa m s-1], NaN without a wind."""
+    t, u, wind = (values[name] for name in ("temperature", "relative_humidity", "wind_10m"))
+    out = np.full(wind.shape, np.nan)
+    there = np.isfinite(wind) & np.isfinite(u) & (t >= LOWEST_TEMPERATURE) & (t <= HIGHEST_TEMPERATURE)
+    out[there] = vapour_pressure_deficit(t[there], np.clip(u[there], 0.0, 1.0)) * wind[there]
+    return out
+
+
+def members_without_answer(situation: Situation, drawn: Drawn) -> SiteMembers | None:
+    """Which members of a situation cross that does not do so itself; None where that could not be worked out.
+
+    Parameters
+    ----------
+    situation : Situation
+    drawn : Drawn
+
+    Returns
+    -------
+    SiteMembers or None
+        Without values: a range needs an answer that it belongs to.
+    """
+    try:
+        return SiteMembers({}, {}, crosses_of(situation, drawn).astype(np.float64))
+    except OroliftError:
+        return None
 
 
 def rule_values(crossing: Crossing, site: LeeAir, when: When, fire: FireSettings) -> dict[str | WindMeant, float]:
@@ -306,25 +352,19 @@ def travel_to(crossing: Crossing, site: LeeAir, observed_at: float) -> Travel:
 
     Notes
     -----
-    Along each streamline dx / u is summed over the places of the crossing, x
-    along the range normal as u is, with 1 m/s at least. Over the site those
-    count that lie in the mixing depth above its lowest streamline, weighted by
-    the depth of each there times its wind.
+    As `orolift.crossing.way.way_to` has it.
     """
-    x = crossing.distance
-    way = np.clip(x, min(observed_at, site.distance), site.distance)
     bearing = crossing.transect.bearing
-    cosine = 1.0 if bearing is None else float(np.cos(crossing.flow.normal - bearing))
-    slowness = 1.0 / np.maximum(crossing.wind, SLOWEST)
-    middle = 0.5 * (slowness[1:] + slowness[:-1])
-    taken = cosine * np.sum(np.diff(way)[:, np.newaxis] * middle, axis=0)
-    at = int(np.argmin(np.abs(x - site.distance)))
-    height = crossing.height[at]
-    arrives = height <= height[0] + float(np.asarray(crossing.settings.mixing_depth))
-    weight = np.gradient(height)[arrives] * np.maximum(crossing.wind[at, arrives], SLOWEST)
-    mean = float(np.average(taken[arrives], weights=weight))
-    spread = float(np.sqrt(np.average((taken[arrives] - mean) ** 2, weights=weight)))
-    return Travel(mean, spread)
+    mean, spread = way_to(
+        crossing.distance,
+        crossing.height.T,
+        crossing.wind.T,
+        site.distance,
+        start=observed_at,
+        depth=crossing.settings.mixing_depth,
+        cosine=1.0 if bearing is None else float(np.cos(crossing.flow.normal - bearing)),
+    )
+    return Travel(float(mean), float(spread))
 
 
 def descending_warm_dry(crossing: Crossing, site: LeeAir) -> bool:
@@ -342,18 +382,20 @@ def descending_warm_dry(crossing: Crossing, site: LeeAir) -> bool:
     Notes
     -----
     True where all of this holds: the site lies behind the crest, and neither in cold air that stays nor
-    under air that does not break through; its potential temperature is nearer to that of the incoming
-    air at the crest than to that of the incoming air at its own height; it is 1 K or more warmer than the latter;
-    and its relative humidity is lower. Both numbers are judgements.
+    under air that does not break through; and its own values are those of such air, see
+    `orolift.crossing.descending.warm_and_dry`.
     """
     if site.side != "lee" or site.in_pool or crossing.flow.breaks_through is False:
         return False
     upwind = interpolated(crossing.incoming, np.array([site.elevation, crossing.features.crest]))
-    beside, crest = (float(t) for t in potential_temperature(upwind.pressure, upwind.temperature))
-    theta = float(potential_temperature(site.pressure, site.temperature))
-    humidity = float(relative_humidity_from_dew_point(site.upwind_temperature, site.upwind_dew_point))
-    return (
-        theta >= beside + HALFWAY * (crest - beside)
-        and site.warming >= LEAST_WARMING
-        and site.relative_humidity < humidity
+    beside, crest = potential_temperature(upwind.pressure, upwind.temperature)
+    return bool(
+        warm_and_dry(
+            potential_temperature(site.pressure, site.temperature),
+            beside,
+            crest,
+            warming=site.warming,
+            humidity=site.relative_humidity,
+            humidity_beside=relative_humidity_from_dew_point(site.upwind_temperature, site.upwind_dew_point),
+        )
     )

@@ -7,10 +7,18 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.crossing.members import Members, members_of
+from orolift.crossing.members import Members, crossing_members, members_of
 from orolift.errors import OroliftError, OutOfRangeError
-from orolift.spread.at_sites import alike, centred, on_the_line, shadows, spread_out, with_method_error
-from orolift.spread.draws import variations_of, what_varies
+from orolift.spread.at_sites import (
+    alike,
+    centred,
+    on_the_line,
+    shadows,
+    spread_out,
+    values_with_method_error,
+    with_method_error,
+)
+from orolift.spread.draws import columns, draws_of, variations_of, what_varies
 from orolift.spread.engine import in_order, outcomes
 from orolift.spread.uncertainty import COLUMNS, METHOD, Uncertainty, checked, latin_hypercube, normal
 
@@ -83,8 +91,8 @@ class Spread:
     crosses : ndarray of bool, (m,)
     values, sites : dict of str to ndarray
         As in `orolift.crossing.members.Members`: of the inputs alone.
-    full_sites : dict of str to ndarray (m, ns)
-        `sites` with the error of the method.
+    full_values, full_sites : dict of str to ndarray (m,) and (m, ns)
+        `values` and `sites` with the error of the method, where it is stated.
     failed : tuple of Failed
         Members that could not be worked out; they count nowhere.
     """
@@ -97,6 +105,7 @@ class Spread:
     crosses: NDArray[np.bool_]
     values: dict[str, Array]
     sites: dict[str, Array]
+    full_values: dict[str, Array]
     full_sites: dict[str, Array]
     failed: tuple[Failed, ...]
 
@@ -111,6 +120,7 @@ class _Chunk:
     level: Array
     beside: tuple[Site, ...]
     streamlines: int
+    observed_at: float
 
 
 def spread_of(
@@ -123,6 +133,7 @@ def spread_of(
     executor: Executor | None = None,
     told: Callable[[int], object] | None = None,
     streamlines: int = 60,
+    observed_at: float = 0.0,
 ) -> Spread:
     """A situation in members.
 
@@ -142,6 +153,8 @@ def spread_of(
         Is given the number of members that are done since the last call.
     streamlines : int
         As for `crossing.cross`.
+    observed_at : float [m]
+        Where on the line the incoming air was observed; times on the way count from there.
 
     Returns
     -------
@@ -176,6 +189,7 @@ def spread_of(
             np.concatenate([level[first:end], middle]) if beside and end == members else level[first:end],
             beside,
             streamlines,
+            observed_at,
         )
         for first, end in zip(firsts, ends, strict=True)
     )
@@ -195,7 +209,7 @@ def spread_of(
     if beside:
         whole = centred(spread_out(whole, len(on_the_line(crossing)), back), crossing)
     named = dict(zip(COLUMNS, level.T, strict=True))
-    full = with_method_error(whole.sites, crossing, uncertainty, {name: normal(named[name]) for name in METHOD})
+    error = {name: normal(named[name]) for name in METHOD}
     return Spread(
         members=members,
         seed=seed,
@@ -205,9 +219,37 @@ def spread_of(
         crosses=whole.crosses,
         values=whole.values,
         sites=whole.sites,
-        full_sites=full,
+        full_values=values_with_method_error(whole.values, crossing, error),
+        full_sites=with_method_error(whole.sites, crossing, uncertainty, error),
         failed=tuple(failed),
     )
+
+
+def crosses_of(situation: Situation, drawn: Drawn) -> NDArray[np.bool_]:
+    """Which members of a situation cross, though it may not do so itself.
+
+    Parameters
+    ----------
+    situation : Situation
+    drawn : Drawn
+
+    Returns
+    -------
+    ndarray of bool, (m,)
+        As in `spread_of` with the same members and seed.
+
+    Raises
+    ------
+    OutOfRangeError
+        If the number of members, the seed or a standard deviation is out of range, or a member is beyond what is
+        physical.
+    TerrainError
+        If the line has no range.
+    """
+    _check_count(drawn.members, drawn.seed)
+    level = latin_hypercube(drawn.members, len(COLUMNS), drawn.seed)
+    changes = draws_of(situation, checked(drawn.uncertainty), level)
+    return crossing_members(situation, columns(situation.incoming, changes, freezing=True))
 
 
 def _check_count(members: int, seed: int) -> None:
@@ -240,7 +282,15 @@ def _together(chunk: _Chunk) -> Members:
     """Members of a chunk, marched together; those without ice apart from the others."""
     parts, rows = [], []
     for some, variation in variations_of(chunk.situation, chunk.uncertainty, chunk.level):
-        parts.append(members_of(chunk.situation, variation, beside=chunk.beside, streamlines=chunk.streamlines))
+        parts.append(
+            members_of(
+                chunk.situation,
+                variation,
+                beside=chunk.beside,
+                streamlines=chunk.streamlines,
+                observed_at=chunk.observed_at,
+            )
+        )
         rows.append(some)
     whole = _joined(parts, [one.size for one in rows])
     back = np.argsort(np.concatenate(rows))

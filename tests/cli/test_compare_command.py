@@ -200,7 +200,7 @@ REFUSED = [
     (
         ["2026-11-03T12:00Z,Lower Tarn,15"],
         ["--table", "a.x", "--results", "a.x"],
-        "--results and --table both name a.x",
+        "--table: a.x is already what --results writes",
     ),
     (["2026-11-03T12:00Z,Lower Tarn,15"], ["--lee-sounding", "none.csv"], "none.csv cannot be found"),
     (
@@ -230,7 +230,7 @@ def test_what_is_read_is_not_written_over(observed, case_folder, capsys):
     assert "is an input of this run" in capsys.readouterr().err
     assert (case_folder / name).read_text() == before
     assert exit_code(["compare", "case.toml", name, "--table", "a.x", "--results", "a.x"]) == 2
-    assert "both name a.x" in capsys.readouterr().err
+    assert "a.x is already what --results writes" in capsys.readouterr().err
 
 
 def test_several_cases_need_different_times(observed, case_folder, capsys):

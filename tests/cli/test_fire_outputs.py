@@ -51,6 +51,12 @@ def test_results_table_and_page_say_the_same(fire_case, case_folder, capsys):
         row = list(csv.DictReader(stream))[1]
     assert float(row["hot_dry_windy"]) == tarn["hot_dry_windy"]
     assert row["thresholds_met"] == "windy"
+    for kind, more in (("range", ""), ("input_range", "_inputs")):
+        for key in ("fosberg_index", "mixing_height_m", "night.valley_floor_windy_percent", "fine_fuel_code_after_3_h"):
+            column = key.replace(".", "_") + more
+            assert [float(row[f"{column}_{end}"]) for end in ("low", "high")] == tarn[kind][key]
+    low, high = tarn["rules"][0]["conditions"][0]["range"]
+    assert [low, high] == pytest.approx(results["lee"][1]["range"]["wind_10m_ms"])
     assert "Fire      “windy” is met at" in capsys.readouterr().out
     assert 'id="fire-thresholds"' in (case_folder / "r.html").read_text()
 

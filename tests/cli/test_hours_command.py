@@ -157,7 +157,10 @@ def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, ca
     ("arguments", "message"),
     [
         (["hours", "case.toml", "series.csv", "--table", "none/t.csv"], "none is not a folder. Make it first"),
-        (["hours", "case.toml", "series.csv", "--table", "a.x", "--results", "a.x"], "--table and --results both name"),
+        (
+            ["hours", "case.toml", "series.csv", "--table", "a.x", "--results", "a.x"],
+            "--results: a.x is already what --table writes",
+        ),
         (
             ["hours", "case.toml", "series.csv", "--table", "./series.csv"],
             "series.csv is an input of this run (series)",
@@ -166,6 +169,7 @@ def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, ca
         (["hours", "case.toml", "none.csv"], "series: none.csv cannot be found"),
         (["hours", "case.toml", "case.toml"], "case.toml: line 1"),
         (["bearings", "case.toml", "--step", "7"], "--step 7: it must divide 360"),
+        (["bearings", "case.toml", "--members", "5"], "--members 5: fewer than 10 have no range"),
         (["bearings", "case.toml", "--results", "none/r.json"], "none is not a folder"),
         (["bearings", "case.toml", "--folder", "o", "--table", "t.csv"], "leave --table out, or leave --folder out"),
         (["hours", "case.toml", "series.csv", "--folder", "o", "--netcdf", "n"], "leave --netcdf out"),
@@ -228,6 +232,40 @@ def test_bearings_write_all_their_files(case_folder, capsys):
         assert [row["wind_from_deg"] for row in csv.DictReader(stream)] == ["0.0", "90.0", "180.0", "270.0"]
     text = checked_page(case_folder / "page.html", 1)
     assert "Every wind direction" in text
+
+
+def test_members_of_directions_have_ranges_in_every_file(case_folder, capsys):
+    """Ranges on the page, in both files and on the terminal; none of them without members."""
+    (case_folder / "case.toml").write_text((case_folder / "case.toml").read_text().replace("= 235", "= 270"))
+    files = ["--report", "page.html", "--table", "t.csv", "--results", "r.json", "--jobs", "1"]
+    assert exit_code(["bearings", "case.toml", "--step", "90", "--members", "12", *files]) == 0
+    said = capsys.readouterr().out
+    assert re.search(r"12 members: warmer by [\d.]+\s°C \([\d.−]+ to [\d.]+\); worst for fire as named in \d+\s%", said)
+    results = json.loads((case_folder / "r.json").read_text())
+    assert [*jsonschema.Draft202012Validator(bearings_schema()).iter_errors(results)] == []
+    site = results["sites"][0]
+    low, high = site["ranges"]["range"]["temperature_c"][3]
+    assert low < site["directions"]["temperature_c"][3] < high
+    with (case_folder / "t.csv").open() as stream:
+        west = list(csv.DictReader(stream))[3]
+    assert (float(west["temperature_c_low"]), float(west["temperature_c_high"])) == (low, high)
+    text = checked_page(case_folder / "page.html", 1)
+    assert 'class="range-line"' in text
+    assert "How sure: the worst direction for fire is that named in" in re.sub(r"<[^>]+>", "", text)
+    assert exit_code(["bearings", "case.toml", "--step", "90", "--members", "0", *files]) == 0
+    assert "members" not in capsys.readouterr().out
+    bare = checked_page(case_folder / "page.html", 1)
+    assert 'class="range-line"' not in bare
+    assert "How sure:" not in bare
+    assert json.loads((case_folder / "r.json").read_text())["sites"][0]["ranges"] is None
+
+
+def test_ranges_of_directions_do_not_depend_on_processes(case_folder):
+    files = ["--report", "page.html", "--quiet"]
+    for jobs in ("1", "2"):
+        table = ["--table", f"{jobs}.csv", "--jobs", jobs]
+        assert exit_code(["bearings", "case.toml", "--step", "90", "--members", "10", *files, *table]) == 0
+    assert (case_folder / "1.csv").read_bytes() == (case_folder / "2.csv").read_bytes()
 
 
 THREE_HOURS = "".join(SERIES.splitlines(keepends=True)[:4])

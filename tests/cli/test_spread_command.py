@@ -9,6 +9,9 @@ import pytest
 
 from orolift.cli.main import exit_code
 
+GROUND = {"distance_km", "crest_m", "beyond_crest_km", "elevation_m"}
+"""Numbers without a range: where a site lies."""
+
 
 @pytest.fixture
 def results(edited):
@@ -32,11 +35,18 @@ def test_every_range_holds_eight_tenths(results, capsys):
     inner_low, inner_high = site["input_range"]["temperature_c"]
     assert low < inner_low < inner_high < high
     assert low < site["temperature_c"] < high
-    for block in (found["incoming"], found["flow"], found["rain"], site):
+    for block in (found["incoming"], found["flow"], found["rain"], found["lee_wind"], site, found["fire"][0]):
         assert block["range"].keys() == block["input_range"].keys()
         assert all(low <= high for low, high in block["range"].values())
         assert {key.split(".")[0] for key in block["range"]} <= block.keys()
+        numbers = {key for key, value in block.items() if isinstance(value, float)}
+        assert numbers - GROUND <= block["range"].keys()
     assert "drying_ratio" in found["rain"]["range"]
+    low_wind, high_wind = found["lee_wind"]["range"]["strongest_ms"]
+    assert low_wind < high_wind
+    conditions = found["lee_wind"]["conditions"]
+    assert all(0.0 <= one["chance"] <= 1.0 for one in conditions)
+    assert found["lee_wind"]["conditions_held"] == sum(one["holds"] is True for one in conditions)
     shown = capsys.readouterr().out
     assert len(shown.splitlines()) <= 10
     assert f"({low:.1f} to {high:.1f})" in shown

@@ -1,6 +1,7 @@
 """Chances and ranges from members: shares by hand, the answer as its own member, members without air."""
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -8,8 +9,10 @@ import pytest
 from orolift.air.column_build import air_from_station
 from orolift.air.humidity import mixing_ratio_from_dew_point
 from orolift.crossing.crossing import cross
+from orolift.crossing.layer_above import own_differences
 from orolift.crossing.result import Site, When
-from orolift.fire.chances import NEEDED, with_members
+from orolift.fire.chances import CODES_AFTER, NEEDED, with_members
+from orolift.fire.nights import NIGHT_VALUES
 from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.sites import FireSettings, fire_at_sites
 from orolift.fire.values import INDICES
@@ -69,6 +72,76 @@ def test_the_answer_as_its_own_member(crossing, settings):
             np.testing.assert_allclose(found.ranges[name], own, rtol=1e-9, err_msg=name)
         else:
             assert name not in found.ranges
+
+
+@pytest.mark.parametrize("when", [When(), When(1793736000.0, -121.0, -46.9)], ids=["unknown time", "noon"])
+def test_the_night_of_the_answer_as_its_own_member(crossing, settings, when):
+    """Without any spread humidity at each height and the depth of mixing close on the answer, and so do codes."""
+    site = fire_at_sites(crossing, when, settings)[0]
+    given = members(crossing.lee[0], 5)
+    found = with_members(site, given, settings, 0.03, when, inputs=given)
+    for name in NIGHT_VALUES:
+        np.testing.assert_allclose(found.ranges[name], getattr(site.night, name), rtol=1e-9, err_msg=name)
+    for name, code in zip(CODES_AFTER, site.indices.fine_fuel_code_hours, strict=True):
+        np.testing.assert_allclose(found.ranges[name], code, rtol=1e-9, err_msg=name)
+    assert found.ranges.keys() == found.input_ranges.keys()
+    for name, ends in found.ranges.items():
+        assert found.input_ranges[name] == pytest.approx(ends), name
+
+
+def test_moister_members_recover_more(crossing, settings):
+    """Law: twice the vapour at the same temperature is twice the humidity by night, at each height, up to dew."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    given = members(crossing.lee[0], 5)
+    moist = given | {"mixing_ratio": given["mixing_ratio"] * 2.0}
+    found = with_members(site, moist, settings, 0.03, inputs=given)
+    for name in ("floor_windy", "floor_still", "mid_slope", "ridge"):
+        was, now = getattr(site.night, name), found.ranges[name][0]
+        assert now == pytest.approx(min(2.0 * was, 1.0), rel=0.02), name
+        np.testing.assert_allclose(found.input_ranges[name], was, rtol=1e-9)
+
+
+def test_more_heat_from_the_ground_leaves_a_colder_night(crossing, settings):
+    """Of two members as warm, the one that has more of it from the ground is the more humid once that is gone."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    site = replace(site, weather=replace(site.weather, heating=np.asarray(1.0)))
+    given = members(crossing.lee[0], 5)
+    heated = given | {"warming_surface_heating": np.full(5, 4.0)}
+    found = with_members(site, heated, settings, 0.03, inputs=given | {"warming_surface_heating": np.full(5, 1.0)})
+    assert found.ranges["floor_windy"][0] > found.input_ranges["floor_windy"][1]
+    assert found.ranges["relative_humidity"] == found.input_ranges["relative_humidity"]
+
+
+def test_less_stable_members_mix_deeper(crossing, settings):
+    """Law: members whose air above is colder than the answer's mix deeper, warmer ones less; their ground is as warm."""
+    when = When(1793736000.0, -121.0, -46.9)
+    site = fire_at_sites(crossing, when, settings)[0]
+    own = own_differences(crossing.lee[0])
+    given = members(crossing.lee[0], 5)
+    depths = []
+    for change in (-1.0, 0.0, 1.0):
+        moved = {name: np.full(5, value + change) for name, value in own.items()}
+        found = with_members(site, given | moved, settings, 0.03, when)
+        depths.append(found.ranges["mixing_height"][0])
+        np.testing.assert_allclose(found.ranges["floor_windy"], site.night.floor_windy)
+    assert depths[0] > depths[1] > depths[2]
+    assert depths[1] == pytest.approx(site.night.mixing_height, rel=1e-9)
+
+
+def test_rules_on_the_depth_of_mixing_take_that_of_each_member(crossing):
+    """Law: the heat of the ground lifts heavier air less deep; two of five members, 15 % heavier, miss the limit."""
+    when = When(1793736000.0, -121.0, -46.9)
+    plain = fire_at_sites(crossing, when, FireSettings())[0]
+    depth = plain.night.mixing_height
+    rule = Rule("deep", (Condition("mixing_height", at_least=depth - 1.0),))
+    own = FireSettings(None, None, RuleSet("Tarn (invented)", "nobody", "2026-05-01", (rule,)))
+    site = fire_at_sites(crossing, when, own)[0]
+    given = members(crossing.lee[0], 5)
+    assert with_members(site, given, own, 0.03, when).thresholds[0].judged.chance == 1.0
+    heavy = given | {"pressure": given["pressure"] * np.array([1.0, 1.0, 1.0, 1.15, 1.15])}
+    found = with_members(site, heavy, own, 0.03, when)
+    assert found.thresholds[0].judged.chance == pytest.approx(0.6)
+    assert found.ranges["mixing_height"][0] < depth == pytest.approx(found.ranges["mixing_height"][1])
 
 
 def test_warmer_and_windier_members_move_the_layer(crossing, settings):

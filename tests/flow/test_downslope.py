@@ -8,7 +8,7 @@ from hypothesis import strategies as st
 from orolift.errors import OutOfRangeError
 from orolift.flow.downslope import (
     WindEstimate,
-    finite_amplitude_estimate,
+    finite_amplitude_estimates,
     gap_wind,
     hydraulic_estimate,
     lee_wind_range,
@@ -82,7 +82,8 @@ X = np.arange(-150e3, 150e3, 500.0)
 def test_estimates_use_the_published_theories():
     """Long at N h / U = 0.5: 1.335 U (1 %); Smith at 0.5: 2.975 U; one layer at F = 0.5, M = 0.3: 2.5767 U."""
     bell = 500.0 / (1.0 + (X / 10e3) ** 2)
-    assert finite_amplitude_estimate(bell, 500.0, 0.01, 10.0).wind == pytest.approx(13.35, rel=0.01)
+    (found,) = finite_amplitude_estimates(bell[np.newaxis], 500.0, [0.01], [10.0])
+    assert found.wind == pytest.approx(13.35, rel=0.01)
     assert transitional_estimate(0.01, 10.0, 500.0, [3545.9]).wind == pytest.approx(29.75, rel=1e-3)
     jump = 0.2 * 290.0 / 9.80665
     layer = Inversion(1000.0, 100.0, jump, 290.0)
@@ -93,7 +94,8 @@ def test_estimates_use_the_published_theories():
 
 def test_estimates_keep_silent_outside_their_theory():
     """Overturning waves, no mixed layer where it must be, too high a ridge, a blocked layer."""
-    assert finite_amplitude_estimate(900.0 / (1.0 + (X / 10e3) ** 2), 500.0, 0.01, 10.0) is None
+    high = 900.0 / (1.0 + (X[np.newaxis] / 10e3) ** 2)
+    assert finite_amplitude_estimates(high, 500.0, [0.01], [10.0]) == (None,)
     assert transitional_estimate(0.01, 10.0, 500.0, [500.0]) is None
     assert transitional_estimate(0.01, 10.0, 500.0, []) is None
     assert transitional_estimate(0.01, 10.0, 1500.0, [3500.0]) is None
@@ -103,7 +105,7 @@ def test_estimates_keep_silent_outside_their_theory():
 
 def test_range_spans_estimates_and_stops_at_limits():
     """Estimates widen it both ways, upper ends upward, limits cut it, never below the streamline wind."""
-    estimate, upper = WindEstimate("a", 12.0, "estimate", "s"), WindEstimate("b", 40.0, "upper end", "s")
+    estimate, upper = WindEstimate("a", "a", 12.0, "estimate", "s"), WindEstimate("b", "b", 40.0, "upper end", "s")
     assert lee_wind_range(15.0, []) == (15.0, 15.0)
     assert lee_wind_range(15.0, [estimate, upper]) == (12.0, 40.0)
     assert lee_wind_range(15.0, [upper, pressure_limit(500.0, 1.1, 5.0)])[1] == pytest.approx(30.56, abs=0.01)

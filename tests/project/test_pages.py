@@ -52,6 +52,7 @@ from orolift.sources.rules_file import QUANTITY_KEYS, RuleCondition, RulesFile, 
 from orolift.sources.schemas import case_schema, compare_schema, results_schema, rules_schema
 from orolift.sources.spread_results import InfluenceBlock, InfluencesBlock, SpreadBlock
 from orolift.sources.units import alternatives
+from orolift.sources.wind_results import LeeWindBlock, WindEstimateBlock, WindstormConditionBlock
 
 DOCS = Path(__file__).resolve().parents[2] / "docs"
 CASE_TABLES = {
@@ -88,6 +89,9 @@ RESULTS_TABLES = {
     "on_line": OnLineBlock,
     "estimates": EstimatesBlock,
     "bands": BandBlock,
+    "lee_wind": LeeWindBlock,
+    "methods of the lee wind": WindEstimateBlock,
+    "conditions of a windstorm": WindstormConditionBlock,
     "lee": LeeBlock,
     "warming_parts_c": WarmingParts,
     "profile": Profile,

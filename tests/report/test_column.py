@@ -13,6 +13,7 @@ from orolift.report.figures.placing import box_of, meet
 from orolift.report.inputs import inputs
 from orolift.report.quantities import quantity
 from orolift.report.render import render
+from orolift.report.spans import Spans
 from orolift.report.words import plain
 from orolift.sources.quality import Finding
 
@@ -133,10 +134,10 @@ def test_text_gives_ground_and_crest_in_numbers(crossing):
 )
 def test_profiles_are_not_called_assumed(crossing, kinds, words):
     known = with_origins(crossing, *kinds)
-    heading = inputs(known, 4.7, float(freezing_level(known.incoming)), None).heading
+    heading = inputs(Spans(known, None), 4.7, float(freezing_level(known.incoming)), None).heading
     assert plain(heading, "metric").startswith(f"{words}: ")
-    assert not any(ASSUMED in plain(one, "metric") for one in cautions(known, None).here)
-    assert any(ASSUMED in plain(one, "metric") for one in cautions(crossing, None).here)
+    assert not any(ASSUMED in plain(one, "metric") for one in cautions(Spans(known, None), None).here)
+    assert any(ASSUMED in plain(one, "metric") for one in cautions(Spans(crossing, None), None).here)
 
 
 def test_findings_stand_in_a_table_the_gravest_first(page_for, crossing):

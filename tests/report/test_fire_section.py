@@ -7,10 +7,11 @@ import numpy as np
 import pytest
 
 from orolift.crossing.result import When
+from orolift.fire.chances import NEEDED, with_members
 from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.sites import FireSettings, fire_at_sites
 from orolift.fire.winds import WindMeant
-from orolift.report.fire import CAUTIONS, fire_weather
+from orolift.report.fire import _DRYNESS, CAUTIONS, fire_weather
 from orolift.report.fire_thresholds import headline
 from orolift.report.page import page_of
 from orolift.report.quantities import NO_BREAK_SPACE, Amount, quantity
@@ -117,6 +118,50 @@ def test_columns_come_with_what_they_need(crossing):
     assert "With drought" not in bare
     assert "With drought" in full
     assert "Chance" not in bare
+
+
+def members(air, count):
+    """Members of a site with a spread in temperature and wind, the rest that of the answer."""
+    z = np.linspace(-1.0, 1.0, count)
+    gust = 0.5 * (air.wind.gust_low + air.wind.gust_high)
+    given = (air.pressure, air.temperature, air.mixing_ratio, air.wind.at_10m * (1.0 + 0.3 * z), gust * (1.0 + 0.3 * z))
+    found = {name: np.broadcast_to(np.asarray(value), (count,)) for name, value in zip(NEEDED, given, strict=True)}
+    return found | {"temperature": air.temperature + 2.0 * z}
+
+
+def test_every_number_of_the_tables_has_its_range(crossing):
+    """With members each cell has a second line, the ends of the range of the site; without, none has."""
+    given = rules()
+    settings = FireSettings(88.0, 300.0, given)
+    alone = fire_at_sites(crossing, NIGHT, settings)
+    found = tuple(
+        site if air.wind is None else with_members(site, members(air, 11), settings, 0.03, NIGHT)
+        for site, air in zip(alone, crossing.lee, strict=True)
+    )
+    assert any(site.ranges for site in found)
+    data = fire_weather(crossing, found, given)
+    for row, site in zip(data.rows, found, strict=True):
+        for column, name in _DRYNESS.items() if site.ranges else ():
+            low, high = (one.value for one in row.spans[column] if isinstance(one, Amount))
+            assert (low, high) == site.ranges[name]
+            assert low <= getattr(row, column).value <= high
+    for row, site in zip(data.codes, found, strict=True):
+        if not site.ranges:
+            continue
+        assert {name for name, words in row.spans.items() if words} >= {"day", "spread", "hour_3", "hour_12"}
+        assert row.spans["hour_12"][0].value == site.ranges["fine_fuel_code_after_12_h"][0]
+    for row, site in zip(data.nights, found, strict=True):
+        assert bool(row.spans.get("windy")) is bool(row.spans.get("still")) is bool(site.ranges)
+    html = section(page(crossing, found, given))
+    assert html.count('class="span"') > 15
+    assert "The second line of a cell is the range" in html
+    bare = section(page(crossing, alone, given))
+    assert 'class="span"' not in bare
+    assert "second line" not in bare
+    heading = plain(data.heading, "metric")
+    driest = next(site for site in found if site.ranges)
+    low, high = driest.ranges["relative_humidity"]
+    assert f" % ({100.0 * low:.0f} to {100.0 * high:.0f})".replace(" ", NO_BREAK_SPACE, 1) in heading
 
 
 def test_cautions_of_fire_stand_there(crossing):

@@ -9,11 +9,13 @@ import pytest
 from orolift.report.briefing import briefing
 from orolift.report.figures.influences import influences_figure
 from orolift.report.figures.section import WIDE, section
-from orolift.report.how_sure import how_sure, input_words
+from orolift.report.how_sure import WITH_METHOD, how_sure, input_words
 from orolift.report.index import entry_of
+from orolift.report.places import section_heading
 from orolift.report.quantities import Amount
 from orolift.report.sites import sites
-from orolift.report.spans import Spans, ranged
+from orolift.report.spans import Spans, changed, ranged
+from orolift.report.story import first_sites
 from orolift.report.trace import trace
 from orolift.report.words import plain
 from orolift.spread.ranges import range_of
@@ -59,6 +61,38 @@ def test_briefing_carries_the_range_of_every_key_number(with_members):
     assert f"({low - 273.15:.1f} to {high - 273.15:.1f})" in text(found.sentences[1])
 
 
+def test_a_site_has_its_own_range_where_only_some_are_shown(named, with_members):
+    """Of two dozen sites a dozen are taken one by one; each keeps its column of the members."""
+    crossing, spread = named("many sites"), with_members[1]
+    own = np.tile(np.arange(float(len(crossing.lee))), (12, 1))
+    spans = Spans(first_sites(crossing), replace(spread, full_sites={"temperature": own}), crossing)
+    assert 0 < len(spans.crossing.lee) < len(crossing.lee)
+    for site in spans.crossing.lee:
+        assert spans.at(site, "temperature") == (site.number - 1.0, site.number - 1.0)
+
+
+def test_differences_count_in_their_own_direction():
+    """Cooler by 2: between 3 cooler and half a degree warmer; about nothing keeps its signs."""
+    assert text(changed(-2.0, (-3.0, 0.5), "warmer", "cooler", "as warm")) == "2.0 °C (−0.5 to 3.0) cooler"
+    assert text(changed(1.0, (-0.5, 2.0), "warmer", "cooler", "as warm"), "us") == "1.8 °F (−0.9 to 3.6) warmer"
+    assert text(changed(0.01, (-1.0, 1.5), "warmer", "cooler", "as warm")) == "as warm (−1.0 to +1.5 °C)"
+    assert text(changed(0.01, None, "warmer", "cooler", "as warm")) == "as warm"
+
+
+def test_cloud_depths_are_counted_from_the_crest(with_members):
+    """The heading of the section: where a member's cloud starts above the crest, none of the slope is covered."""
+    crossing, spread = with_members
+    crest = crossing.features.crest
+    assert crossing.cloud.base < crest
+    base = np.linspace(crossing.cloud.base, crest + 500.0, spread.members)
+    spread = replace(spread, full_values=spread.full_values | {"cloud_base": base})
+    heading = section_heading(Spans(crossing, spread), trace(crossing))
+    high = crest - np.quantile(base, 0.1)
+    amounts = [part.value for part in heading if isinstance(part, Amount)]
+    assert amounts[:2] == [crest - crossing.cloud.base, 0.0]
+    assert amounts[2] == pytest.approx(max(high, crest - crossing.cloud.base))
+
+
 def test_says_what_the_ranges_hold(with_members):
     """How many members, both ranges of the main site, every input that was drawn."""
     crossing, spread = with_members
@@ -68,11 +102,15 @@ def test_says_what_the_ranges_hold(with_members):
     assert text(found.remarks[-1]) == "All 12 members cross the range (seed 1)."
     assert len(found.rows) == len(crossing.lee)
     row = found.rows[0]
-    inner, outer = (
-        [part.value for part in row_of if isinstance(part, Amount)]
-        for row_of in (row.temperature_inputs, row.temperature)
-    )
-    assert outer[0] < inner[0] < inner[1] < outer[1]
+    for name in WITH_METHOD:
+        inner, outer = (
+            [part.value for part in words if isinstance(part, Amount)]
+            for words in (row.spans[name], getattr(row, name))
+        )
+        assert inner == list(range_of(spread.sites[name][:, 0])), name
+        assert outer == list(range_of(spread.full_sites[name][:, 0])), name
+        if name in ("temperature", "warming"):
+            assert outer[0] < inner[0] < inner[1] < outer[1], name
     assert len(found.inputs) == len(spread.varied)
     assert "liquid_cloud" not in spread.varied
     assert text(found.chances[0].event) == "the air crosses the range at all"

@@ -10,7 +10,7 @@ import pytest
 from orolift.constants import table
 from orolift.report.causes import PARTS, main_cause
 from orolift.report.quantities import Amount
-from orolift.report.story import cloudy_to_the_end, ends_of, starts_saturated
+from orolift.report.story import cloudy_to_the_end, ends_of, source_words, starts_saturated
 from orolift.report.trace import trace
 from orolift.report.words import plain
 
@@ -62,7 +62,7 @@ def test_blocked_air_is_said_with_its_range(page_for, named):
     crossing = named("blocked")
     page = page_for(crossing)
     flow = crossing.flow
-    assert text_of(page.briefing.heading).startswith("Low air is blocked up to 970 m; Lower Tarn has ")
+    assert text_of(page.briefing.heading).startswith("Low air is blocked up to 1000 m (100 to 1400); Lower Tarn has ")
     words = page.briefing.sentences[0]
     values = [amount.value for amount in amounts_in(words)]
     assert {flow.blocked_top, flow.blocked_top_low, flow.blocked_top_high, flow.going_round_share} <= set(values)
@@ -184,7 +184,8 @@ def test_cause_is_named_in_the_heading(page_for, named):
     site = dry.lee[0]
     assert main_cause(site)[0] == "descent"
     assert text_of(page_for(dry).causes.heading) == "Descent from aloft explains the warmth; rain plays no part"
-    level = text_of((Amount(site.source_level, "height", -1),))
+    level = text_of(source_words(site))
+    assert " to " in level
     whole = page_for(warmed(dry, went_round=0.0))
     assert text_of(whole.causes.heading) == f"Descent from {level} explains the warmth; rain plays no part"
     wet = page_for(named("cloud and rain"))
@@ -211,9 +212,8 @@ def test_cause_heading_follows_the_parts(page_for, crossing, parts, heading):
     site = crossing.lee[0]
     none = dict.fromkeys(PARTS, 0.0)
     changed = replace(site.parts, **(none | parts))
-    crossing = warmed(
-        crossing, parts=changed, temperature=site.upwind_temperature + sum(parts.values()), source_level=1260.0
-    )
+    level = dict.fromkeys(("source_level", "source_level_low", "source_level_high"), 1260.0)
+    crossing = warmed(crossing, parts=changed, temperature=site.upwind_temperature + sum(parts.values()), **level)
     assert text_of(page_for(crossing).causes.heading).startswith(heading)
 
 
@@ -317,6 +317,30 @@ def test_conditions_may_be_unknown(page_for, crossing):
     assert "no of ten conditions" in text_of(page.lee_wind.heading)
 
 
+def test_the_lee_wind_has_the_ranges_and_chances_of_its_members(page_for, with_members):
+    """Heading, methods, conditions and sites: shares counted by hand; the page without members has none of it."""
+    crossing, spread = with_members
+    wind = page_for(crossing, spread=spread).lee_wind
+    low, high = np.quantile(spread.full_values["lee_wind"], (0.1, 0.9))
+    shown = [amount.value for amount in amounts_in(wind.heading)]
+    assert shown[1:3] == pytest.approx([min(low, crossing.winds.strongest), max(high, crossing.winds.strongest)])
+    for row, one in zip(wind.methods[1:], crossing.winds.estimates, strict=True):
+        given = spread.values[f"lee_wind_{one.key}"]
+        assert row.applies.value == np.isfinite(given).mean()
+        ends = [amount.value for amount in amounts_in(row.spans["wind"])]
+        known = given[np.isfinite(given)]
+        if ends and known.size >= 5:
+            low, high = np.quantile(known, (0.1, 0.9))
+            assert ends == pytest.approx([min(low, one.wind), max(high, one.wind)])
+    for row, one in zip(wind.conditions, crossing.winds.conditions, strict=True):
+        assert row.chance.value == pytest.approx(np.nanmean(spread.values[f"windstorm_{one.key}"]))
+    assert all(row.spans["gusts"] for row in wind.sites if row.wind is not None)
+    bare = page_for(crossing).lee_wind
+    assert not bare.has_members
+    assert all(row.chance is None for row in bare.conditions)
+    assert all(row.applies is None for row in bare.methods)
+
+
 def test_site_winds_are_those_of_the_sites(page_for, any_crossing):
     for row in page_for(any_crossing).lee_wind.sites:
         site = any_crossing.lee[row.number - 1]
@@ -324,12 +348,13 @@ def test_site_winds_are_those_of_the_sites(page_for, any_crossing):
             assert row.at_10m is None
             assert row.remark
         else:
-            assert (row.wind.value, row.low.value, row.high.value) == (site.wind.wind, site.wind.low, site.wind.high)
-            assert (row.at_10m.value, row.gust_low.value, row.gust_high.value) == (
-                site.wind.at_10m,
-                site.wind.gust_low,
-                site.wind.gust_high,
-            )
+            assert (row.wind.value, row.at_10m.value) == (site.wind.wind, site.wind.at_10m)
+            for words, low, high in (
+                (row.methods, site.wind.low, site.wind.high),
+                (row.gusts, site.wind.gust_low, site.wind.gust_high),
+            ):
+                found = [amount.value for amount in amounts_in(words)]
+                assert found == ([low] if round(low) == round(high) else [low, high])
 
 
 # Sites, places, inputs
@@ -338,8 +363,10 @@ def test_site_winds_are_those_of_the_sites(page_for, any_crossing):
 def test_air_that_is_cooler_than_it_came_is_said_to_be_cooler(page_for, crossing):
     site = crossing.lee[0]
     page = page_for(warmed(crossing, temperature=site.upwind_temperature - 2.0))
-    assert text_of(page.sites.heading) == "Lower Tarn is 2.0 °C cooler than the incoming air at its height"
-    assert "2.0 °C cooler than" in text_of(page.briefing.sentences[1])
+    assert (
+        text_of(page.sites.heading) == "Lower Tarn is 2.0 °C (−2.0 to 2.0) cooler than the incoming air at its height"
+    )
+    assert "2.0 °C (−2.0 to 2.0) cooler than" in text_of(page.briefing.sentences[1])
 
 
 def test_several_sites_share_one_heading(page_for, crossing):
@@ -348,7 +375,7 @@ def test_several_sites_share_one_heading(page_for, crossing):
         lee = tuple(replace(site, name=f"S{n}", temperature=site.upwind_temperature + c) for n, c in enumerate(changes))
         return text_of(page_for(replace(crossing, lee=lee)).sites.heading)
 
-    assert heading(1.0, 3.1) == "Two lee sites are 1.0 °C to 3.1 °C warmer than the incoming air at their height"
+    assert heading(1.0, 3.1) == "Two lee sites are 1.0 to 3.1 °C warmer than the incoming air at their height"
     assert heading(1.0, 3.1, -1.0) == (
         "Three lee sites are between 1.0 °C cooler and 3.1 °C warmer than the incoming air at their height"
     )

@@ -97,7 +97,7 @@ def test_directions_named_are_the_best_and_the_worst():
     cells = said(tarn)
     assert cells[0] == "4 of 4"
     assert cells[1].startswith("90°: warmer by 6.0 ")
-    assert cells[2].startswith("180°: 25 % humidity, wind 9 m/s")
+    assert cells[2].startswith("180°: humidity 25 %, wind 9 m/s")
     assert cells[3].startswith("270°: 2.0 mm")
     assert said(flats) == ["0 of 4", "none", "none", "none"]
     assert "interrupted" not in render(index, "site_index.html.jinja")

@@ -103,7 +103,7 @@ def test_refuses_a_table(read, text, message):
         (points((500_000.0, 5_000_000.0)), r"feature 1: coordinates 500000, 5e\+06 are no degrees"),
         (points((1.0, 2.0), crs="EPSG:999999"), "coordinate system .* is not known"),
         (points((1.0, "2")), "feature 1: its coordinates are no two numbers"),
-        (points((1.0, float("nan"))), "feature 1: its coordinates are no two numbers"),
+        (points((1.0, float("nan"))), "line 1: NaN is no number of JSON"),
         ({"type": "FeatureCollection", "features": []}, "holds no feature"),
         ({"type": "LineString", "coordinates": [[0, 0], [1, 1]]}, "feature 1: its geometry is LineString"),
         ({"type": "Feature", "properties": {"id": 7}, "geometry": None}, "feature 1: its geometry is missing"),

@@ -23,27 +23,12 @@ from orolift.spread.site_state import SiteState
 from orolift.terrain.features import features
 from orolift.terrain.transect import transect_elevation
 
-RIDGE = """
-[terrain]
-ridge_km_m = [[0, 40], [30, 1250], [60, 40]]
-[incoming]
-wind_from_deg = 240
-station = { elevation_m = 40, temperature_c = 14.5, dew_point_c = 7.0, pressure_hpa = 1004.0, wind_kt = 30 }
-[[site]]
-name = "Tarn"
-distance_km = 50
-[[site]]
-name = "Kell"
-distance_km = 10
-"""
 KNOTS_30 = 30 * 1852 / 3600
 
 
 @pytest.fixture(scope="module")
-def ridge(tmp_path_factory):
-    file = tmp_path_factory.mktemp("ridge") / "case.toml"
-    file.write_text(RIDGE)
-    return read_bearings(file, 10)
+def ridge(straight_ridge):
+    return read_bearings(straight_ridge, 10)
 
 
 def situation(setup, degrees):
@@ -121,52 +106,17 @@ def test_turned_air_keeps_its_speed_and_shear(ridge, angle):
 
 
 @pytest.mark.parametrize("step", [0, 7, 100, -10])
-def test_a_step_that_does_not_divide_the_circle_is_refused(step, tmp_path):
-    (tmp_path / "case.toml").write_text(RIDGE)
+def test_a_step_that_does_not_divide_the_circle_is_refused(step, straight_ridge):
     with pytest.raises(CaseError, match=rf"--step {step}: it must divide 360"):
-        read_bearings(tmp_path / "case.toml", step)
+        read_bearings(straight_ridge, step)
 
 
-def hill(folder, cell=1000.0, half=100):
-    """A circular hill of 1200 m on the central meridian of its zone, and sites 25 km from its middle all round."""
-    import rasterio
-    from rasterio.transform import from_origin
-
-    east, north = 500e3, 5000e3
-    across = (np.arange(2 * half) - half + 0.5) * cell
-    ground = 1200.0 * np.exp(-(across**2 + across[:, np.newaxis] ** 2) / (2.0 * 10e3**2)) + 10.0
-    place = from_origin(east - half * cell, north + half * cell, cell, cell)
-    shape = {"width": 2 * half, "height": 2 * half, "count": 1, "dtype": "float32", "crs": "EPSG:32633"}
-    with rasterio.open(folder / "hill.tif", "w", driver="GTiff", transform=place, **shape) as out:
-        out.write(ground.astype(np.float32), 1)
-    sites = "".join(
-        f'[[site]]\nname = "{bearing}"\neasting_m = {east + 25e3 * math.sin(math.radians(bearing))}\n'
-        f"northing_m = {north + 25e3 * math.cos(math.radians(bearing))}\nelevation_m = 60\n"
-        for bearing in (0, 90, 225)
-    )
-    (folder / "case.toml").write_text(
-        f"""
-[terrain]
-elevation_file = "hill.tif"
-[transect]
-through = {{ easting_m = {east}, northing_m = {north} }}
-upwind_km = 60
-downwind_km = 30
-swath_km = 0
-[incoming]
-wind_from_deg = 270
-station = {{ elevation_m = 10, temperature_c = 14, dew_point_c = 6, pressure_hpa = 1010, wind_kt = 30 }}
-{sites}"""
-    )
-    return folder / "case.toml"
-
-
-def test_every_direction_of_a_circular_hill_is_the_same(tmp_path):
+def test_every_direction_of_a_circular_hill_is_the_same(circular_hill):
     """Law: behind the hill as seen from each wind the air is the same.
 
     Grid error: the raster is sampled along and across its cells, and a diagonal shows other steps of the slope.
     """
-    setup = read_bearings(hill(tmp_path), 45)
+    setup = read_bearings(circular_hill, 45)
     behind = []
     for number, wind_from in enumerate((180, 270, 45)):  # sites north, east and southwest of the hill
         task = bearing_task(setup, math.radians(wind_from))

@@ -12,10 +12,12 @@ from orolift.report.figures.axes import Layout, Scale, place
 from orolift.report.figures.drawing import Curve, Figure, Label
 from orolift.report.figures.pins import shortened
 from orolift.report.figures.placing import text_width
-from orolift.report.quantities import Units, quantity
+from orolift.report.quantities import Amount, Units, quantity
+from orolift.report.spans import Ends, Spans, ranged
+from orolift.report.words import plain
 
 if TYPE_CHECKING:
-    from orolift.crossing.result import Crossing, LeeAir, WarmingParts
+    from orolift.crossing.result import LeeAir, WarmingParts
 
 MOST_SITES = 6
 """Sites that are drawn; the table has all."""
@@ -26,6 +28,10 @@ BAR = 13.0
 HEAD = 44.0
 FOOT = 14.0
 PANEL = HEAD + ROW * (len(PARTS) + 1) + FOOT
+CAP = 3.0
+"""Half the height of the ends of a range."""
+SUM = "total"
+"""Key of the sum of the parts."""
 SMALL = 0.05
 """Parts below this [K] read as zero."""
 
@@ -42,22 +48,39 @@ class Disc:
 
 
 @dataclass(frozen=True)
+class _Shown:
+    """A site that is drawn: its parts, the sum last, each with its range."""
+
+    number: int
+    site: LeeAir
+    parts: WarmingParts
+    ends: dict[str, Ends | None]
+
+    def reach(self, key: str, start: float, end: float) -> Ends:
+        """Lowest and highest value that the bar of a part and its range touch."""
+        ends = self.ends[key]
+        low, high = min(start, end), max(start, end)
+        return (low, high) if ends is None else (min(low, start + ends[0]), max(high, start + ends[1]))
+
+
+@dataclass(frozen=True)
 class BudgetDrawing:
     """Everything the budgets show, from the back to the front."""
 
     layout: Layout
     lines: tuple[Curve, ...]
     bars: tuple[Curve, ...]
+    whiskers: tuple[Curve, ...]
     labels: tuple[Label, ...]
     discs: tuple[Disc, ...]
 
 
-def budget(crossing: Crossing, units: Units) -> Figure[BudgetDrawing] | None:
+def budget(spans: Spans, units: Units) -> Figure[BudgetDrawing] | None:
     """The budgets of the sites.
 
     Parameters
     ----------
-    crossing : Crossing
+    spans : Spans
     units : 'metric' or 'us'
 
     Returns
@@ -66,7 +89,9 @@ def budget(crossing: Crossing, units: Units) -> Figure[BudgetDrawing] | None:
         None when no site has a budget.
     """
     shown = [
-        (site.number, site, site.parts) for site in crossing.lee if site.parts is not None and not site.in_blocked_air
+        _Shown(site.number, site, site.parts, _ends(site, spans))
+        for site in spans.crossing.lee
+        if site.parts is not None and not site.in_blocked_air
     ]
     if not shown:
         return None
@@ -75,6 +100,11 @@ def budget(crossing: Crossing, units: Units) -> Figure[BudgetDrawing] | None:
         "Read from the top: each bar starts where the one above ends; bars to the right warm, hatched bars to the left "
         "cool. The last bar is their sum: the air of the site minus the incoming air at the same height."
     )
+    if any(found is not None for one in shown for found in one.ends.values()):
+        caption += (
+            " Thin lines: the range of each, eight times in ten; those of the parts by the inputs alone, that of the "
+            "sum with the error of the method."
+        )
     if left_out > 0:
         caption += f" The first {MOST_SITES} sites; the table below has all."
     return Figure(
@@ -82,33 +112,43 @@ def budget(crossing: Crossing, units: Units) -> Figure[BudgetDrawing] | None:
         drawing=_drawing(shown[:MOST_SITES], units, 3, "wide", 960.0, 14.0),
         narrow=_drawing(shown[:MOST_SITES], units, 1, "narrow", 344.0, 12.5),
         title="Why it is warm or cold: the parts of the warming",
-        alt=" ".join(_words(site, parts, units) for _, site, parts in shown[:MOST_SITES]),
+        alt=" ".join(_words(one, units) for one in shown[:MOST_SITES]),
         caption=caption,
     )
 
 
-def _words(site: LeeAir, parts: WarmingParts, units: Units) -> str:
+def _ends(site: LeeAir, spans: Spans) -> dict[str, Ends | None]:
+    """Ranges of the parts, and of their sum."""
+    at_site = {key: spans.part(site, key) for key in PARTS}
+    return at_site | {SUM: None if spans.spread is None else spans.warming(site)}
+
+
+def _words(one: _Shown, units: Units) -> str:
+    def said(value: float, key: str) -> str:
+        return plain(ranged(Amount(value, "temperature_change", 1), one.ends[key]), units)
+
     named = [
-        f"{name} {quantity(getattr(parts, key), 'temperature_change', 1, units)}"
+        f"{name} {said(getattr(one.parts, key), key)}"
         for key, name in PARTS.items()
-        if abs(getattr(parts, key)) >= SMALL
+        if abs(getattr(one.parts, key)) >= SMALL
     ]
-    total = quantity(site.warming, "temperature_change", 1, units)
-    return f"{site.name}: {', '.join(named) or 'no part'}; together {total}."
+    return f"{one.site.name}: {', '.join(named) or 'no part'}; together {said(one.site.warming, SUM)}."
 
 
-def _reach(shown: list[tuple[int, LeeAir, WarmingParts]]) -> tuple[float, float]:
-    """Lowest and highest value any bar touches."""
-    low, high = 0.0, 1.0
-    for _, _, parts in shown:
-        running = np.cumsum([getattr(parts, key) for key in PARTS])
-        low, high = min(low, float(running.min())), max(high, float(running.max()))
-    return low, high
+def _reach(shown: list[_Shown]) -> tuple[float, float]:
+    """Lowest and highest value any bar or range touches."""
+    touched = [(0.0, 1.0)]
+    for one in shown:
+        running = 0.0
+        for key in PARTS:
+            part = float(getattr(one.parts, key))
+            touched.append(one.reach(key, running, running + part))
+            running += part
+        touched.append(one.reach(SUM, 0.0, running))
+    return min(low for low, _ in touched), max(high for _, high in touched)
 
 
-def _drawing(
-    shown: list[tuple[int, LeeAir, WarmingParts]], units: Units, beside: int, name: str, width: float, letter: float
-) -> BudgetDrawing:
+def _drawing(shown: list[_Shown], units: Units, beside: int, name: str, width: float, letter: float) -> BudgetDrawing:
     """All panels on one scale, so that sites can be compared."""
     beside = min(beside, max(len(shown), 1))
     gap = 28.0
@@ -119,74 +159,84 @@ def _drawing(
     value = text_width("+10.0 °C", letter)
     lines: list[Curve] = []
     bars: list[Curve] = []
+    whiskers: list[Curve] = []
     labels: list[Label] = []
     discs: list[Disc] = []
-    for count, (number, site, parts) in enumerate(shown):
+    for count, one in enumerate(shown):
         left = 4.0 + (count % beside) * (panel + gap)
         top = (count // beside) * (PANEL + 10.0)
         scale = Scale(low, high, left + names + 14.0, left + panel - value - 8.0)
         if low < 0.0:  # room for the words of bars to the left
             scale = Scale(low, high, left + names + 14.0 + min(value, 46.0), scale.end)
-        made = _panel(number, site, parts, scale, (left, top, panel), units, letter)
-        lines += made[0]
-        bars += made[1]
-        labels += made[2]
-        discs.append(made[3])
+        lines_here, bars_here, whiskers_here, labels_here = _panel(one, scale, (left, top, panel), units, letter)
+        lines += lines_here
+        bars += bars_here
+        whiskers += whiskers_here
+        labels += labels_here
+        discs.append(_disc(one.number, left, top, letter))
     height = rows * (PANEL + 10.0)
     layout = Layout(name, width, height, 4.0, width - 4.0, 0.0, height, letter, 0)
-    return BudgetDrawing(layout, tuple(lines), tuple(bars), tuple(labels), tuple(discs))
+    return BudgetDrawing(layout, tuple(lines), tuple(bars), tuple(whiskers), tuple(labels), tuple(discs))
+
+
+def _disc(number: int, left: float, top: float, letter: float) -> Disc:
+    radius = round(0.68 * letter, 1)
+    return Disc(number, round(left + radius, 1), round(top + 14.0, 1), radius, round(top + 14.0 + 0.34 * letter, 1))
+
+
+def _title(one: _Shown, left: float, top: float, units: Units, letter: float) -> list[Label]:
+    """Name of the site, and from which to which temperature its bars lead."""
+    before, after = (
+        quantity(value, "temperature", 1, units) for value in (one.site.upwind_temperature, one.site.temperature)
+    )
+    x = round(left + 2.0 * round(0.68 * letter, 1) + 7.0, 1)
+    return [
+        Label(shortened(one.site.name), x, round(top + 14.0 + 0.36 * letter, 1), "start", "title"),
+        Label(f"incoming {before}, here {after}", x, round(top + 14.0 + 1.55 * letter, 1), "start", "note"),
+    ]
 
 
 def _panel(
-    number: int,
-    site: LeeAir,
-    parts: WarmingParts,
-    scale: Scale,
-    where: tuple[float, float, float],
-    units: Units,
-    letter: float,
-) -> tuple[list[Curve], list[Curve], list[Label], Disc]:
-    """The bars of one site."""
+    one: _Shown, scale: Scale, where: tuple[float, float, float], units: Units, letter: float
+) -> tuple[list[Curve], list[Curve], list[Curve], list[Label]]:
+    """Lines, bars, ranges and labels of one site."""
     left, top, width = where
-    radius = round(0.68 * letter, 1)
-    disc = Disc(number, round(left + radius, 1), round(top + 14.0, 1), radius, round(top + 14.0 + 0.34 * letter, 1))
-    title = Label(
-        shortened(site.name),
-        round(left + 2.0 * radius + 7.0, 1),
-        round(top + 14.0 + 0.36 * letter, 1),
-        "start",
-        "title",
-    )
     zero = place(scale, 0.0)
-    before = quantity(site.upwind_temperature, "temperature", 1, units)
-    after = quantity(site.temperature, "temperature", 1, units)
     bottom = top + HEAD + ROW * (len(PARTS) + 1)
-    labels = [
-        title,
-        Label(
-            f"incoming {before}, here {after}",
-            round(left + 2.0 * radius + 7.0, 1),
-            round(top + 14.0 + 1.55 * letter, 1),
-            "start",
-            "note",
-        ),
-    ]
+    labels = _title(one, left, top, units, letter)
     lines = [Curve(f"M{zero:.1f} {top + HEAD - 2.0:.1f}V{bottom:.1f}", "zero")]
     bars: list[Curve] = []
+    whiskers: list[Curve] = []
     running = 0.0
     for row, (key, words) in enumerate(PARTS.items()):
-        part = float(getattr(parts, key))
+        part = float(getattr(one.parts, key))
         y = top + HEAD + ROW * row
-        labels += _row_words(words, part, scale, max(running, running + part), (left, y), units, letter)
+        _, right = one.reach(key, running, running + part)
+        labels += _row_words(words, part, scale, right, (left, y), units, letter)
         bars += _bar(place(scale, running), place(scale, running + part), y, "cools" if part < 0.0 else "warms")
+        whiskers += _whisker(one.ends[key], running, scale, y)
         running += part
         at = place(scale, running)
         lines.append(Curve(f"M{at:.1f} {y + BAR:.1f}v{ROW - BAR:.1f}", "step"))
     y = top + HEAD + ROW * len(PARTS)
-    labels += _row_words("together", site.warming, scale, max(running, 0.0), (left, y), units, letter, kind="sum")
+    _, right = one.reach(SUM, 0.0, running)
+    labels += _row_words("together", one.site.warming, scale, right, (left, y), units, letter, kind="sum")
     bars += _bar(zero, place(scale, running), y, "sum")
+    whiskers += _whisker(one.ends[SUM], 0.0, scale, y)
     lines.append(Curve(f"M{left:.1f} {y - 4.0:.1f}H{left + width:.1f}", "rule"))
-    return lines, bars, labels, disc
+    return lines, bars, whiskers, labels
+
+
+def _whisker(ends: Ends | None, start: float, scale: Scale, y: float) -> list[Curve]:
+    """The range of a bar, from where its lowest to where its highest value would end, on a paler line to be seen."""
+    if ends is None:
+        return []
+    low, high = (float(place(scale, start + end)) for end in ends)
+    if high - low < 2.0:
+        return []
+    middle = y + 0.5 * BAR
+    path = f"M{low:.1f} {middle - CAP:.1f}v{2.0 * CAP}M{low:.1f} {middle:.1f}H{high:.1f}m0 {-CAP}v{2.0 * CAP}"
+    return [Curve(path, "whisker under"), Curve(path, "whisker")]
 
 
 def _row_words(

@@ -10,14 +10,18 @@ import numpy as np
 
 from orolift.report.figures.axes import Layout, round_step
 from orolift.report.figures.drawing import Curve, Figure, Label
-from orolift.report.quantities import Kind, Units, displayed, from_displayed, quantity
-from orolift.spread.bearings import square_enough
+from orolift.report.quantities import Amount, Kind, Units, displayed, from_displayed, quantity
+from orolift.report.spans import ranged
+from orolift.report.words import plain
+from orolift.spread.bearings import NO_RAIN, square_enough
+from orolift.spread.state_ranges import range_at
 from orolift.spread.timeline import values_of
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.spread.bearings import Bearings, SiteBearings
+    from orolift.spread.site_state import SiteState
 
     Array = NDArray[np.float64]
 
@@ -25,6 +29,11 @@ WIDE = Layout("wide", 960.0, 308.0, 0.0, 960.0, 40.0, 250.0, 14.0, 4)
 NARROW = Layout("narrow", 344.0, 488.0, 0.0, 344.0, 36.0, 440.0, 12.5, 2)
 FILL = 0.86
 """Share of its sector that a bar fills."""
+RANGES_SAID = (
+    " The thin line along a bar is the range of the middle eight tenths of the members; of one that reaches across "
+    "zero, the part on the side of the bar. Pale bars have none."
+)
+"""What the caption says of ranges, where there are any."""
 LEAST_SPAN = {"temperature_change": 1.0, "share": 1.0, "rain_rate": 1.0 / 3600.0, "height": 100.0}
 """Value [SI] of the outer ring at least."""
 
@@ -56,6 +65,7 @@ class Rose:
 
     rings: tuple[Curve, ...]
     bars: tuple[Curve, ...]
+    ranges: tuple[Curve, ...]
     marks: tuple[Curve, ...]
     labels: tuple[Label, ...]
 
@@ -94,7 +104,7 @@ def roses_figure(bearings: Bearings, number: int, units: Units) -> Figure[RosesD
             "Each bar points to where the wind comes from; north is up. Strokes on the rim: no air crosses from there; "
             "dots: the map does not reach. Pale: the air runs more along the range than across it, more than 45° off, "
             "and what it does then is not to be trusted; no such direction is named. The arrow is the wind of the "
-            "case. All sites have the same scales."
+            f"case. All sites have the same scales.{RANGES_SAID if site.agreement is not None else ''}"
         ),
     )
 
@@ -106,7 +116,8 @@ def _alt(site: SiteBearings, bearings: Bearings, units: Units) -> str:
         if not np.isfinite(values).any():
             continue
         i = int(np.nanargmin(values) if plan.lowest else np.nanargmax(values))
-        said = quantity(float(values[i]), plan.quantity, plan.digits, units)
+        amount = Amount(float(values[i]), plan.quantity, plan.digits)
+        said = plain(ranged(amount, range_at(site.states[i], plan.key)), units)
         out.append(f"{plan.name}: {plan.most} {said} with wind from {_degrees(bearings.wind_from[i])}.")
     return " ".join(out) or "No air crosses to this site from any direction."
 
@@ -136,11 +147,29 @@ def _full(bearings: Bearings, plan: RosePlan, units: Units) -> float:
     """Value of the outer ring: round in the shown unit, over all sites."""
     if plan.quantity == "share":
         return 1.0
-    values = np.concatenate([np.abs(values_of(site.states, plan.key)) for site in bearings.sites])
+    values = np.concatenate(
+        [np.append(np.abs(values_of(site.states, plan.key)), _outer_ends(site, plan)) for site in bearings.sites]
+    )
     most = max(float(np.nanmax(values)) if np.isfinite(values).any() else 0.0, LEAST_SPAN[plan.quantity])
     shown = displayed(most, plan.quantity, units)
     step = round_step(shown, 4)
     return float(from_displayed(step * math.ceil(shown / step - 1e-6), plan.quantity, units))
+
+
+def _outer_ends(site: SiteBearings, plan: RosePlan) -> list[float]:
+    """Outer ends of all ranges of a site that are drawn."""
+    square = square_enough(site.states)
+    ends = [_ends(state, plan) for state, counts in zip(site.states, square, strict=True) if counts]
+    return [one[1] for one in ends if one is not None]
+
+
+def _ends(state: SiteState, plan: RosePlan) -> tuple[float, float] | None:
+    """Range of a bar as distances from the middle, widened to the bar; None without."""
+    value, found = getattr(state, plan.key), range_at(state, plan.key)
+    if value is None or found is None:
+        return None
+    low, high = found if value >= 0.0 else (-found[1], -found[0])
+    return max(min(low, abs(value)), 0.0), max(high, abs(value))
 
 
 def _point(middle: tuple[float, float], radius: float, bearing: float) -> tuple[float, float]:
@@ -160,7 +189,7 @@ def _rose(
     values = values_of(site.states, plan.key)
     x, y = middle
     rings = tuple(_ring(middle, share * radius) for share in (0.5, 1.0))
-    bars, marks = [], []
+    bars, ranges, marks = [], [], []
     half = 0.5 * FILL * bearings.step
     square = square_enough(site.states)
     for bearing, value, state, counts in zip(
@@ -169,7 +198,12 @@ def _rose(
         if math.isfinite(value):
             kind = "cools" if value < 0.0 and plan.kind == "warms" else plan.kind
             kind = kind if counts else f"{kind} oblique"
+            ends = _ends(state, plan) if counts else None
+            kind = kind if ends is None else f"{kind} ranged"
             bars.append(Curve(_wedge(middle, radius * min(abs(value) / full, 1.0), bearing, half), kind))
+            if ends is not None:
+                low, high = (_point(middle, radius * min(end / full, 1.0), bearing) for end in ends)
+                ranges.append(Curve(f"M{low[0]:.1f} {low[1]:.1f}L{high[0]:.1f} {high[1]:.1f}", "range-line"))
         elif state.status == "no crossing":
             marks.append(Curve(_arc(middle, radius, bearing, half), "rim"))
         else:
@@ -192,7 +226,7 @@ def _rose(
         Label(peak, x, round(y + radius + 2.4 * letter, 1), "middle", "name ink"),
         Label(rim, x, round(y + radius + 3.6 * letter, 1), "middle", "note"),
     ]
-    return Rose(rings, tuple(bars), tuple(marks), tuple(labels))
+    return Rose(rings, tuple(bars), tuple(ranges), tuple(marks), tuple(labels))
 
 
 def _digits(value: float, kind: Kind, units: Units) -> int:
@@ -205,7 +239,7 @@ def _peak(values: Array, bearings: Bearings, plan: RosePlan, units: Units, *, sh
     if not np.isfinite(values).any():
         return "no air crosses"
     i = int(np.nanargmin(values) if plan.lowest else np.nanargmax(values))
-    if plan.quantity == "rain_rate" and displayed(float(values[i]), plan.quantity, units) < 0.05:
+    if plan.quantity == "rain_rate" and values[i] < NO_RAIN:
         return "no rain"
     said = quantity(float(values[i]), plan.quantity, plan.digits, units)
     if short:
