@@ -79,7 +79,7 @@ def test_a_thousand_sites(tmp_path):
 
 @pytest.mark.speed
 def test_map_of_the_lee():
-    """More than 200 strips, each about the work of a crossing. Aim: 60 s on two cores, 1 GB."""
+    """More than 200 strips, each about a crossing and a third. Aim: 60 s on two cores with its members, 1 GB."""
     inputs = read_inputs(DEMO / "varn_moist.toml")
     one = one_crossing(inputs)
     plans = []
@@ -97,7 +97,7 @@ def test_map_of_the_lee():
         f"{peak:.0f} MB here"
     )
     assert len(crossed) > 200
-    assert work < 1.3 * len(crossed) * one
+    assert work < 1.6 * len(crossed) * one  # 14 heights at every place; sites have one or two
     assert drawing + joining < 40.0 * one
 
 
