@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -13,7 +13,10 @@ from orolift.constants import REFERENCE_PRESSURE
 from orolift.crossing.arrival import SAMPLES, Here, frozen_temperature, lee_profile, pressure_at, sampled, with_ground
 from orolift.crossing.cloud import HIGHEST_CLOUD
 from orolift.crossing.crossing import crest_component, ground_under
+from orolift.crossing.facts import pressure_differences
 from orolift.crossing.heat import ground_change, surface_heat
+from orolift.crossing.lee_wind import lee_winds
+from orolift.crossing.members import OF_MEMBERS, solved_members
 from orolift.crossing.picture import CREST_BAND
 from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import When
@@ -29,6 +32,7 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
+    from orolift.crossing.members import Variation
     from orolift.crossing.situation import Situation
     from orolift.crossing.solve import Ground, Solution
 
@@ -36,6 +40,8 @@ if TYPE_CHECKING:
 
 LEVELS = (-1500.0, -700.0, -300.0, 0.0, 60.0, 120.0, 200.0, 300.0, 400.0, 550.0, 700.0, 900.0, 1200.0, 1500.0)
 """Heights over the line's own ground [m] at which its air is worked out; close where it is stable."""
+LEAST_WIND = 0.1
+"""Lee wind [m s-1] below which a range in proportion would mean nothing; as at sites."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -63,6 +69,8 @@ class GroundValues:
     crest, crest_distance, base, blocked_top : float [m]
     band : float [m]
         From the crest to where its lee begins, and its windward side ends.
+    wind_low, wind_high : float [1]
+        Range of the methods of the lee wind, as shares of `wind`: at most 1, and at least 1; 1 where nobody asked.
     pool_top : float or None [m above sea level]
         Of cold air that stays in the lee.
     pool_temperature, pool_vapour : ndarray (n, q), or None
@@ -85,12 +93,16 @@ class GroundValues:
     base: float
     blocked_top: float
     band: float
+    wind_low: float
+    wind_high: float
     pool_top: float | None
     pool_temperature: Array | None
     pool_vapour: Array | None
 
 
-def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, streamlines: int = 60) -> GroundValues:
+def ground_values(
+    situation: Situation, *, levels: tuple[float, ...] = LEVELS, streamlines: int = 60, methods: bool = False
+) -> GroundValues:
     """Air near the ground all along the line of a situation.
 
     Parameters
@@ -100,6 +112,8 @@ def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, s
     levels : tuple of float [m]
         Heights over the ground of the line.
     streamlines : int
+    methods : bool
+        Whether the range of the methods of the lee wind is worked out, a tenth of the work.
 
     Returns
     -------
@@ -133,19 +147,98 @@ def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, s
         crest_line=situation.crest_line,
         stagnant_top=situation.stagnant_top,
     )
-    crest_component(incoming, ground.normal, shape.crest)
+    crest_wind = crest_component(incoming, ground.normal, shape.crest)
     solution = solve(ground, incoming, settings, lee, members=1, streamlines=streamlines)
-    here = _here(solution)
-    place = solution.streams.place
-    distance, own = line.distance[place], line.elevation[place]
-    level = np.array(levels)
+    shares = 1.0, 1.0
+    if methods:
+        (winds,) = lee_winds(ground, solution, [crest_wind], pressure_differences(ground, solution), members=1)
+        strongest = max(winds.strongest, LEAST_WIND)
+        shares = min(winds.low / strongest, 1.0), max(winds.high / strongest, 1.0)
+    one = _Member(incoming, ground, solution, settings, when, 0, None)
+    return _values(one, np.array(levels), solution.streams.place, shares)
+
+
+def ground_values_of_members(
+    situation: Situation,
+    variation: Variation,
+    *,
+    levels: tuple[float, ...] = LEVELS,
+    every: int = 1,
+    streamlines: int = 60,
+) -> tuple[GroundValues | None, ...]:
+    """Air near the ground all along the line of a situation, in each of its members.
+
+    Parameters
+    ----------
+    situation : Situation
+    variation : Variation
+    levels : tuple of float [m]
+    every : int
+        Of the places of the march one in so many is worked out.
+    streamlines : int
+
+    Returns
+    -------
+    tuple of (GroundValues or None), (m,)
+        None for a member whose wind component across the range is 2 m/s or less. The range of the methods of the lee
+        wind is left at 1.
+
+    Raises
+    ------
+    NoCrossingError, TerrainError, OutOfRangeError
+        As `orolift.crossing.members.members_of`.
+    """
+    solved = solved_members(situation, variation, streamlines=streamlines)
+    out: list[GroundValues | None] = [None] * solved.crosses.size
+    if solved.solution is None or solved.part is None:
+        return tuple(out)
+    part, place = solved.part, solved.solution.streams.place[::every]
+    for i, number in enumerate(np.flatnonzero(solved.crosses)):
+        factor = None if part.heat_factor is None else float(part.heat_factor[i])
+        air = replace(part.incoming, **{name: getattr(part.incoming, name)[i] for name in OF_MEMBERS})
+        one = _Member(air, solved.ground, solved.solution, part.settings, solved.when, i, factor)
+        out[number] = _values(one, np.array(levels), place, (1.0, 1.0), every)
+    return tuple(out)
+
+
+@dataclass(frozen=True, eq=False)
+class _Member:
+    """One member of a solution, with its own air; `number` counts in the solution."""
+
+    incoming: IncomingAir
+    ground: Ground
+    solution: Solution
+    settings: Settings
+    when: When
+    number: int
+    heat_factor: float | None
+
+    @property
+    def blocked_top(self) -> float:
+        return float(self.solution.blocked_top[self.number])
+
+    @property
+    def going_round(self) -> float:
+        return float(self.solution.going_round[self.number])
+
+    @property
+    def mixing_depth(self) -> float:
+        return float(each(self.settings.mixing_depth, self.solution.blocked_top.size)[self.number])
+
+
+def _values(
+    one: _Member, level: Array, place: NDArray[np.intp], shares: tuple[float, float], every: int = 1
+) -> GroundValues:
+    """Air near the ground of one member at places of its march, every so many of them."""
+    ground, solution, shape = one.ground, one.solution, one.ground.shape
+    here = _here(solution, one.number, every)
+    distance, own = ground.transect.distance[place], ground.transect.elevation[place]
     height = own[:, np.newaxis] + level
-    beyond = distance - shape.crest_distance
     band = CREST_BAND * shape.half_width
-    is_lee = beyond > band
-    change = _ground_changes(distance, height, here, (incoming, ground, solution, settings, when), is_lee)
-    air = _arriving(incoming, solution, here, height, is_lee, change, settings)
-    pool = solution.pools[0]
+    is_lee = distance - shape.crest_distance > band
+    change = _ground_changes(one, distance, height, here, is_lee)
+    air = _arriving(one, here, height, is_lee, change)
+    pool = solution.pools[one.number]
     still = (None, None) if pool is None else pool_air(pool, height)
     wind = np.mean(sampled(here.height, here.wind, here.height[:, :1] + np.linspace(0.0, NEAR_GROUND, 7)), axis=1)
     base, water = _clouds(here)
@@ -157,45 +250,44 @@ def ground_values(situation: Situation, *, levels: tuple[float, ...] = LEVELS, s
         vapour=air.vapour,
         pressure=air.pressure,
         wind=wind,
-        wind_10m=np.asarray(wind_near_ground(wind, 0.5 * NEAR_GROUND, roughness=settings.roughness)),
+        wind_10m=np.asarray(wind_near_ground(wind, 0.5 * NEAR_GROUND, roughness=one.settings.roughness)),
         cloud_base=base,
         cloud_water=water,
         lowest=here.height[:, 0],
         crest=shape.crest,
         crest_distance=shape.crest_distance,
         base=shape.base,
-        blocked_top=float(solution.blocked_top[0]),
+        blocked_top=one.blocked_top,
         band=band,
+        wind_low=shares[0],
+        wind_high=shares[1],
         pool_top=None if pool is None else pool.top,
         pool_temperature=still[0],
         pool_vapour=still[1],
     )
 
 
-def _here(solution: Solution) -> Here:
-    """Streamlines of the first member over all places of the march, the places in the place of members."""
+def _here(solution: Solution, number: int, every: int) -> Here:
+    """Streamlines of a member over places of the march, the places in the place of members."""
     streams, air = solution.streams, solution.streams.air
-    flow = streams.flow
-    first = {key: getattr(air, key)[:, 0, :] for key in ("pressure", "entropy", "temperature", "vapour", "cloud")}
+    flow, place = streams.flow, streams.place[::every]
+    names = ("pressure", "entropy", "temperature", "vapour", "cloud")
+    of_one = {key: np.broadcast_to(getattr(air, key), air.pressure.shape)[::every, number, :] for key in names}
     return Here(
         share=0.0,
         number=0,
-        height=flow.heights[0][:, streams.place].T,
-        start_height=np.broadcast_to(flow.start_heights[0], first["pressure"].shape),
-        wind=(streams.wind[0][:, np.newaxis] * flow.speed_factor[0][:, streams.place]).T,
-        **first,
+        height=flow.heights[number][:, place].T,
+        start_height=np.broadcast_to(flow.start_heights[number], of_one["pressure"].shape),
+        wind=(streams.wind[number][:, np.newaxis] * flow.speed_factor[number][:, place]).T,
+        **of_one,
     )
 
 
 def _ground_changes(
-    distance: Array,
-    elevation: Array,
-    here: Here,
-    situation: tuple[IncomingAir, Ground, Solution, Settings, When],
-    is_lee: NDArray[np.bool_],
+    one: _Member, distance: Array, elevation: Array, here: Here, is_lee: NDArray[np.bool_]
 ) -> tuple[Array, Array]:
     """Warming and moistening by the ground over the mixing depth at elevations (n, q), as sites have it; else 0."""
-    incoming, ground, solution, settings, when = situation
+    solution, settings, when = one.solution, one.settings, one.when
     out = np.zeros((2, *elevation.shape))
     known = when.time is not None and when.longitude is not None and when.latitude is not None
     if not (settings.surface_heat and known and is_lee.any()):
@@ -204,19 +296,20 @@ def _ground_changes(
     rows = Here(here.share, here.number, *(getattr(here, f.name)[is_lee] for f in fields(Here)[2:]))
     height = (elevation[is_lee][:, :, np.newaxis] + PROFILE).reshape(places, -1)
     air = lee_profile(
-        incoming,
+        one.incoming,
         rows,
         height,
-        blocked_top=np.full(places, solution.blocked_top[0]),
-        going_round=np.full(places, solution.going_round[0]),
+        blocked_top=np.full(places, one.blocked_top),
+        going_round=np.full(places, one.going_round),
         heating=np.zeros_like(height),
         freezing=settings.freezing,
     )
     pressure, temperature, vapour = (
         values.reshape(places, levels, -1) for values in (air.pressure, air.temperature, air.vapour)
     )
-    times, cloudy = solution.travel_times, solution.overcast
-    way = np.interp(distance[is_lee], ground.transect.distance, times[0])
+    own = slice(one.number, one.number + 1)
+    times, cloudy = solution.travel_times[own], solution.overcast[own]
+    way = np.interp(distance[is_lee], one.ground.transect.distance, times[0])
     cover = cover_on_the_way(times[:, solution.streams.place], cloudy, way[np.newaxis])[0] if cloudy.any() else None
     heat = surface_heat(
         float(when.time or 0.0),
@@ -227,25 +320,20 @@ def _ground_changes(
         pressure[..., 0],
         cover=None if cover is None else cover[:, np.newaxis],
     )
+    heat = heat if one.heat_factor is None else heat.times(one.heat_factor)
     change = ground_change(heat, PROFILE, pressure, temperature, vapour)
-    inside = float(each(settings.mixing_depth, 1)[0]) * (np.arange(SAMPLES) + 0.5) / SAMPLES
+    inside = one.mixing_depth * (np.arange(SAMPLES) + 0.5) / SAMPLES
     weight = np.array([np.interp(inside, PROFILE, row).mean() for row in np.eye(PROFILE.size)])
     out[:, is_lee] = change.temperature @ weight, change.vapour @ weight
     return out[0], out[1]
 
 
 def _arriving(
-    incoming: IncomingAir,
-    solution: Solution,
-    here: Here,
-    elevation: Array,
-    is_lee: NDArray[np.bool_],
-    change: tuple[Array, Array],
-    settings: Settings,
+    one: _Member, here: Here, elevation: Array, is_lee: NDArray[np.bool_], change: tuple[Array, Array]
 ) -> Parcel:
     """Air of sites at elevations (n, q), as `orolift.crossing.arrival.arrival` mixes it."""
     places, levels = elevation.shape
-    depth = float(each(settings.mixing_depth, 1)[0])
+    incoming, depth = one.incoming, one.mixing_depth
     offset = depth * (np.arange(SAMPLES) + 0.5) / SAMPLES
     bottom = np.maximum(here.height[:, :1], elevation)
     height = (bottom[:, :, np.newaxis] + offset).reshape(places, -1)
@@ -264,8 +352,8 @@ def _arriving(
     arrived = frozen_temperature(np.full_like(potential, REFERENCE_PRESSURE), potential, vapour, cloud, target)
     weight = spread_out(np.asarray(pressure_at(here, height)))
     weight = weight / weight.sum(axis=-1, keepdims=True)
-    going = np.where(is_lee, float(solution.going_round[0]), 0.0)[:, np.newaxis, np.newaxis]
-    share = np.where(own < float(solution.blocked_top[0]), going, 0.0)
+    going = np.where(is_lee, one.going_round, 0.0)[:, np.newaxis, np.newaxis]
+    share = np.where(own < one.blocked_top, going, 0.0)
     low = interpolated(incoming, own.ravel())
     low_p, low_t, low_v, low_c = (
         np.broadcast_to(values, own.size).reshape(own.shape)
@@ -273,7 +361,7 @@ def _arriving(
     )
     low_t = frozen_temperature(low_p, low_t, low_v, low_c, target)
     p = np.broadcast_to(target, own.shape)
-    freezing = settings.freezing
+    freezing = one.settings.freezing
     crossing_heat = enthalpy(Parcel(p, arrived, vapour, cloud), freezing=freezing)
     low_heat = enthalpy(Parcel(p, low_t, low_v, low_c), freezing=freezing)
     heat = np.sum(weight * ((1.0 - share) * crossing_heat + share * low_heat), axis=-1)

@@ -37,6 +37,8 @@ if TYPE_CHECKING:
 
 PARTS = tuple(field.name for field in fields(WarmingParts))
 """Parts of the warming, by name."""
+OF_MEMBERS = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
+"""Fields of the incoming air that members have each for itself."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -119,27 +121,17 @@ def members_of(
     a root is found by iteration, it is taken a step further when one of the
     others still needs it, so that members agree with crossings of their own to about 1e-4 K and not to rounding.
     """
-    settings, when = checked(variation.settings), situation.when or When()
-    ground = _ground(situation)
-    shape = ground.shape
-    sites = (*(situation.sites or (Site("Lee foot", shape.lee_foot_distance),)), *beside)
-    crest_wind = _crest_wind(ground, variation.incoming)
-    crosses = crest_wind > LEAST_CROSSING_WIND
-    values = _of_incoming(variation.incoming) | {"cross_range_wind": crest_wind}
-    if not crosses.any():
+    solved = solved_members(situation, variation, streamlines=streamlines)
+    crosses, ground, when = solved.crosses, solved.ground, solved.when
+    values = _of_incoming(variation.incoming) | {"cross_range_wind": solved.crest_wind}
+    if solved.solution is None or solved.part is None:
         return Members(crosses, values, {})
-    part = _taken(variation, settings, crosses)
-    count = int(crosses.sum())
-    lee = situation.lee or Lee() if part.lee is None else part.lee
-    solution = solve(ground, part.incoming, part.settings, lee, members=count, streamlines=streamlines)
-    if part.share is not None:
-        blocked = solution.blocked_top > shape.base + NOTHING
-        solution.going_round[:] = np.where(blocked, part.share(solution.going_round), 0.0)
-    known = (lee if isinstance(lee, Lee) else lee[0]).known
-    freezing = settings.freezing
-    flow = flow_values(ground, solution, crest_wind[crosses], when, known=known, freezing=freezing)
+    solution, part = solved.solution, solved.part
+    sites = (*(situation.sites or (Site("Lee foot", ground.shape.lee_foot_distance),)), *beside)
+    crest_wind, freezing = solved.crest_wind[crosses], part.settings.freezing
+    flow = flow_values(ground, solution, crest_wind, when, known=solved.lee_known, freezing=freezing)
     values |= _filled(flow, crosses)
-    winds = lee_winds(ground, solution, crest_wind[crosses], flow["pressure_difference"])
+    winds = lee_winds(ground, solution, crest_wind, flow["pressure_difference"])
     values |= _filled(lee_wind_arrays(winds), crosses)
     values |= _filled(rain_values(ground, solution, part.incoming, situation.background), crosses)
     at = [
@@ -151,6 +143,70 @@ def members_of(
         for site in sites
     ]
     return Members(crosses, values, {name: np.stack([one[name] for one in at], axis=-1) for name in at[0]})
+
+
+@dataclass(frozen=True, eq=False)
+class SolvedMembers:
+    """The flow of members over one ground.
+
+    Attributes
+    ----------
+    crosses : ndarray of bool, (m,)
+        Whether the wind component across the range is above 2 m/s.
+    crest_wind : ndarray (m,) [m s-1]
+        That component.
+    ground : Ground
+    when : When
+    lee_known : bool
+        Whether the case says what lies in the lee.
+    part : Variation or None
+        Those that cross; None without any.
+    solution : Solution or None
+        Of those.
+    """
+
+    crosses: NDArray[np.bool_]
+    crest_wind: Array
+    ground: Ground
+    when: When
+    lee_known: bool
+    part: Variation | None
+    solution: Solution | None
+
+
+def solved_members(situation: Situation, variation: Variation, *, streamlines: int = 60) -> SolvedMembers:
+    """The flow of members of a situation, all marched together.
+
+    Parameters
+    ----------
+    situation : Situation
+    variation : Variation
+    streamlines : int
+
+    Returns
+    -------
+    SolvedMembers
+
+    Raises
+    ------
+    NoCrossingError, TerrainError, OutOfRangeError
+        As `members_of`.
+    """
+    settings, when = checked(variation.settings), situation.when or When()
+    ground = _ground(situation)
+    shape = ground.shape
+    crest_wind = _crest_wind(ground, variation.incoming)
+    crosses = crest_wind > LEAST_CROSSING_WIND
+    if not crosses.any():
+        return SolvedMembers(crosses, crest_wind, ground, when, lee_known=False, part=None, solution=None)
+    part = _taken(variation, settings, crosses)
+    lee = situation.lee or Lee() if part.lee is None else part.lee
+    solution = solve(ground, part.incoming, part.settings, lee, members=int(crosses.sum()), streamlines=streamlines)
+    if part.share is not None:
+        blocked = solution.blocked_top > shape.base + NOTHING
+        solution.going_round[:] = np.where(blocked, part.share(solution.going_round), 0.0)
+    known = (lee if isinstance(lee, Lee) else lee[0]).known
+    return SolvedMembers(crosses, crest_wind, ground, when, lee_known=known, part=part, solution=solution)
 
 
 def crossing_members(situation: Situation, incoming: IncomingAir) -> NDArray[np.bool_]:
@@ -202,9 +258,8 @@ def _taken(variation: Variation, settings: Settings, rows: NDArray[np.bool_]) ->
         return value[rows] if isinstance(value, np.ndarray) and value.ndim and value.shape[0] == rows.size else value
 
     air = variation.incoming
-    names = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
     return Variation(
-        incoming=replace(air, **{name: getattr(air, name)[rows] for name in names}),
+        incoming=replace(air, **{name: getattr(air, name)[rows] for name in OF_MEMBERS}),
         settings=replace(settings, **{one.name: some(getattr(settings, one.name)) for one in fields(Settings)}),
         lee=None
         if variation.lee is None

@@ -17,6 +17,7 @@ if TYPE_CHECKING:
 
     from orolift.sources.elevation_map import ElevationMap
     from orolift.spread.lee_map import LeeMap
+    from orolift.spread.lee_spread import LeeSpread
     from orolift.spread.lee_thresholds import LeeThresholds
 
     Array = NDArray[np.float64]
@@ -122,7 +123,9 @@ def rain_maps(
     return {name: geotiff(bands, placed, {**tags, "duration_h": f"{hours:g}"}) for name, bands in maps.items()}
 
 
-def lee_maps(placed: ElevationMap, found: LeeMap, tags: Mapping[str, str]) -> dict[str, bytes]:
+def lee_maps(
+    placed: ElevationMap, found: LeeMap, tags: Mapping[str, str], spread: LeeSpread | None = None
+) -> dict[str, bytes]:
     """The map files of a lee: temperature, warming, humidity, wind, cloud.
 
     Parameters
@@ -131,29 +134,41 @@ def lee_maps(placed: ElevationMap, found: LeeMap, tags: Mapping[str, str]) -> di
     found : LeeMap
         On the same grid.
     tags : mapping of str to str
+    spread : LeeSpread, optional
+        Adds 10 and 90 % of the members as bands, and the chance of cloud.
 
     Returns
     -------
     dict of str to bytes
         Name of the file without its ending, and the GeoTIFF.
     """
-    zero = UNITS["c"].offset
-    maps = {
-        "lee_temperature": [Band("air temperature at the ground", "degC", found.temperature - zero)],
-        "lee_warming": [Band("temperature above the incoming air at the same height", "K", found.warming)],
-        "lee_relative_humidity": [Band("relative humidity at the ground", "%", 100.0 * found.relative_humidity)],
-        "lee_wind_10m": [Band("wind at 10 m across the range", "m s-1", found.wind_10m)],
-        "lee_cloud": [
-            Band("base of the lowest cloud above sea level", "m", found.cloud_base),
-            Band("water of all cloud over the ground", "kg m-2", found.cloud_water),
-        ],
-        "lee_behind_crest": [Band("distance behind the crest along the wind", "m", found.behind_crest)],
+    ranged = {
+        "temperature": ("air temperature at the ground", "degC", 1.0, -UNITS["c"].offset),
+        "warming": ("temperature above the incoming air at the same height", "K", 1.0, 0.0),
+        "relative_humidity": ("relative humidity at the ground", "%", 100.0, 0.0),
+        "wind_10m": ("wind at 10 m across the range", "m s-1", 1.0, 0.0),
     }
+    maps = {}
+    for key, (name, unit, factor, offset) in ranged.items():
+        bands = [Band(name, unit, factor * getattr(found, key) + offset)]
+        if spread is not None:
+            for end, values in (("10 %", spread.low[key]), ("90 %", spread.high[key])):
+                bands.append(Band(f"{name}, {end} of the members", unit, factor * values + offset))
+        maps[f"lee_{key}"] = bands
+    maps["lee_cloud"] = [
+        Band("base of the lowest cloud above sea level", "m", found.cloud_base),
+        Band("water of all cloud over the ground", "kg m-2", found.cloud_water),
+    ]
+    if spread is not None:
+        maps["lee_cloud"].append(Band("chance of cloud over the ground", "1", spread.cloud))
+    maps["lee_behind_crest"] = [Band("distance behind the crest along the wind", "m", found.behind_crest)]
     return {name: geotiff(bands, placed, tags) for name, bands in maps.items()}
 
 
-def threshold_maps(placed: ElevationMap, found: LeeThresholds, tags: Mapping[str, str]) -> dict[str, bytes]:
-    """The map file of thresholds met: how many in each cell, then each rule by itself.
+def threshold_maps(
+    placed: ElevationMap, found: LeeThresholds, tags: Mapping[str, str], spread: LeeSpread | None = None
+) -> dict[str, bytes]:
+    """The map files of thresholds: how many are met in each cell, then each rule by itself; and their chances.
 
     Parameters
     ----------
@@ -161,16 +176,28 @@ def threshold_maps(placed: ElevationMap, found: LeeThresholds, tags: Mapping[str
     found : LeeThresholds
         On the same grid.
     tags : mapping of str to str
+    spread : LeeSpread, optional
+        With the chance that at least one is met, then of each rule.
 
     Returns
     -------
     dict of str to bytes
         Name of the file without its ending, and the GeoTIFF; rules that a map cannot judge are named in its tags.
     """
-    bands = [
-        Band("number of thresholds met", "1", found.count),
-        *(Band(f"threshold met: {one.rule.name}", "1", one.met) for one in found.judged),
-    ]
+    maps = {
+        "lee_thresholds": [
+            Band("number of thresholds met", "1", found.count),
+            *(Band(f"threshold met: {one.rule.name}", "1", one.met) for one in found.judged),
+        ]
+    }
+    if spread is not None and spread.any_met is not None:
+        maps["lee_threshold_chance"] = [
+            Band("chance that a threshold is met", "1", spread.any_met),
+            *(
+                Band(f"chance of the threshold: {one.rule.name}", "1", chance)
+                for one, chance in zip(found.judged, spread.met, strict=True)
+            ),
+        ]
     own = {
         "rules": "; ".join(one.rule.name for one in found.judged),
         "rules_not_judged": "; ".join(
@@ -180,4 +207,4 @@ def threshold_maps(placed: ElevationMap, found: LeeThresholds, tags: Mapping[str
         "authority": found.authority,
     }
     own = {name: text for name, text in own.items() if text}
-    return {"lee_thresholds": geotiff(bands, placed, {**tags, **own})}
+    return {name: geotiff(bands, placed, {**tags, **own}) for name, bands in maps.items()}

@@ -13,7 +13,7 @@ from orolift.errors import TerrainError
 from orolift.sources.elevation_map import read_elevation_map
 from orolift.sources.line_axis import Axis, axis_of, too_near_the_edge
 from orolift.sources.lines import PlacedLine, line_through, map_places, read_lines, situation_on
-from orolift.spread.lee_map import Frame
+from orolift.spread.joined import Frame
 from orolift.spread.strips import Strip
 from orolift.terrain.features import features
 from orolift.terrain.range_normal import RangeNormal
@@ -27,6 +27,7 @@ if TYPE_CHECKING:
     from orolift.sources.inputs import Inputs
     from orolift.sources.site_places import SitePlace
     from orolift.spread.lee_map import LeeMap
+    from orolift.spread.lee_spread import LeeSpread
     from orolift.spread.lee_thresholds import LeeThresholds
 
     Array = NDArray[np.float64]
@@ -205,12 +206,15 @@ class MappedLee:
         Places of the sites of the case on it.
     thresholds : LeeThresholds or None
         The rules of the case on it; None without a rules_file.
+    spread : LeeSpread or None
+        How sure it is; None where the case has no members.
     """
 
     plan: StripPlan
     map: LeeMap
     sites: tuple[tuple[float, float], ...]
     thresholds: LeeThresholds | None = None
+    spread: LeeSpread | None = None
 
 
 def sites_on(placed: ElevationMap, places: Sequence[SitePlace]) -> tuple[tuple[float, float], ...]:

@@ -146,6 +146,40 @@ def variation_of(
     )
 
 
+def variations_of(
+    situation: Situation, uncertainty: Uncertainty, level: Array
+) -> list[tuple[NDArray[np.intp], Variation]]:
+    """Members of a situation in groups that can be marched together: condensate freezes in all of one, or in none.
+
+    Parameters
+    ----------
+    situation : Situation
+    uncertainty : Uncertainty
+    level : ndarray (m, columns) [1]
+        From `uncertainty.latin_hypercube`.
+
+    Returns
+    -------
+    list of (ndarray, Variation)
+        Numbers of the members of a group, and what they differ in.
+
+    Raises
+    ------
+    OutOfRangeError
+        As `variation_of`.
+    """
+    drawn = draws_of(situation, uncertainty, level)
+    as_set = situation.settings is None or situation.settings.freezing
+    liquid = (drawn["liquid_cloud"] > 0.0) | (not as_set)
+    out = []
+    for frozen in (True, False):
+        some = np.flatnonzero(liquid != frozen)
+        if some.size:
+            own = {name: value[some] for name, value in drawn.items()}
+            out.append((some, variation_of(situation, uncertainty, own, freezing=frozen)))
+    return out
+
+
 def columns(air: IncomingAir, drawn: dict[str, Array], *, freezing: bool) -> IncomingAir:
     """The incoming column in members.
 

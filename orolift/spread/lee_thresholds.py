@@ -108,7 +108,8 @@ def thresholds_on_map(
     indices, stay unknown.
     """
     asked = {one.quantity for rule in rules.rules for one in rule.conditions}
-    values = _values(found, asked, roughness, drought_index)
+    air = MapAir(found.temperature, found.relative_humidity, found.wind_10m, found.warming)
+    values = values_on_map(air, asked, roughness, drought_index)
     judged, unknown = [], []
     for rule in rules.rules:
         missing = tuple(dict.fromkeys(one.quantity for one in rule.conditions if one.quantity not in values))
@@ -124,19 +125,42 @@ def thresholds_on_map(
     return LeeThresholds(rules.region, rules.authority, tuple(judged), tuple(unknown), count)
 
 
-def _values(
-    found: LeeMap, asked: Iterable[Quantity], roughness: float, drought_index: float | None
+@dataclass(frozen=True, eq=False)
+class MapAir:
+    """What a map has of the air in cells, any shape: [K], [1], [m s-1] at 10 m, [K]; NaN where it is not known."""
+
+    temperature: Array
+    relative_humidity: Array
+    wind_10m: Array
+    warming: Array
+
+
+def values_on_map(
+    air: MapAir, asked: Iterable[Quantity], roughness: float, drought_index: float | None
 ) -> Mapping[Quantity, Array]:
-    """What the map has of the quantities asked for, each (ny, nx)."""
-    t = found.temperature
-    u = np.minimum(found.relative_humidity, 1.0)
+    """What a map has of the quantities that rules ask for.
+
+    Parameters
+    ----------
+    air : MapAir
+    asked : iterable of str or WindMeant
+    roughness : float [m]
+    drought_index : float or None
+
+    Returns
+    -------
+    mapping of quantity to ndarray
+        Those it does not have are not in it; NaN where the air is unknown or out of the range of the indices.
+    """
+    t = air.temperature
+    u = np.minimum(air.relative_humidity, 1.0)
     fit = (t >= LOWEST_TEMPERATURE) & (t <= HIGHEST_TEMPERATURE) & (u > 0.0)
     t, u = np.where(fit, t, np.nan), np.where(fit, u, np.nan)
-    wind = np.where(fit, np.maximum(found.wind_10m, 0.0), np.nan)
+    wind = np.where(fit, np.maximum(air.wind_10m, 0.0), np.nan)
     values: dict[Quantity, Array] = {
         "temperature": t,
         "relative_humidity": u,
-        "warming": np.where(fit, found.warming, np.nan),
+        "warming": np.where(fit, air.warming, np.nan),
     }
     if drought_index is not None:
         values["drought_index"] = np.where(fit, drought_index, np.nan)
@@ -161,7 +185,8 @@ def _where_known(function: Callable[..., Array], *given: Array) -> Array:
     """A function of cells, worked out only where all it takes is known."""
     known = np.all([np.isfinite(one) for one in given], axis=0)
     out = np.full(known.shape, np.nan)
-    out[known] = function(*(one[known] for one in given))
+    if known.any():
+        out[known] = function(*(one[known] for one in given))
     return out
 
 

@@ -18,7 +18,7 @@ from orolift.spread.at_sites import (
     values_with_method_error,
     with_method_error,
 )
-from orolift.spread.draws import columns, draws_of, variation_of, what_varies
+from orolift.spread.draws import columns, draws_of, variations_of, what_varies
 from orolift.spread.engine import in_order, outcomes
 from orolift.spread.uncertainty import COLUMNS, METHOD, Uncertainty, checked, latin_hypercube, normal
 
@@ -280,26 +280,18 @@ def _worked(chunk: _Chunk) -> tuple[Members, list[Failed]]:
 
 def _together(chunk: _Chunk) -> Members:
     """Members of a chunk, marched together; those without ice apart from the others."""
-    situation, uncertainty = chunk.situation, chunk.uncertainty
-    drawn = draws_of(situation, uncertainty, chunk.level)
-    as_set = situation.settings is None or situation.settings.freezing
-    liquid = (drawn["liquid_cloud"] > 0.0) | (not as_set)
     parts, rows = [], []
-    for frozen in (True, False):
-        some = np.flatnonzero(liquid != frozen)
-        if some.size:
-            own = {name: value[some] for name, value in drawn.items()}
-            variation = variation_of(situation, uncertainty, own, freezing=frozen)
-            parts.append(
-                members_of(
-                    situation,
-                    variation,
-                    beside=chunk.beside,
-                    streamlines=chunk.streamlines,
-                    observed_at=chunk.observed_at,
-                )
+    for some, variation in variations_of(chunk.situation, chunk.uncertainty, chunk.level):
+        parts.append(
+            members_of(
+                chunk.situation,
+                variation,
+                beside=chunk.beside,
+                streamlines=chunk.streamlines,
+                observed_at=chunk.observed_at,
             )
-            rows.append(some)
+        )
+        rows.append(some)
     whole = _joined(parts, [one.size for one in rows])
     back = np.argsort(np.concatenate(rows))
     return Members(

@@ -10,7 +10,7 @@ from orolift.errors import OroliftError
 from orolift.spread.engine import in_order, outcomes
 
 if TYPE_CHECKING:
-    from collections.abc import Callable, Iterable
+    from collections.abc import Callable, Collection, Iterable
     from concurrent.futures import Executor
 
     from orolift.crossing.ground_values import GroundValues
@@ -45,12 +45,14 @@ class StripAir:
     reason: str = ""
 
 
-def strip_air(strip: Strip) -> StripAir:
+def strip_air(strip: Strip, *, methods: bool = False) -> StripAir:
     """The air near the ground of one strip.
 
     Parameters
     ----------
     strip : Strip
+    methods : bool
+        Whether the range of the methods of the lee wind is wanted.
 
     Returns
     -------
@@ -59,13 +61,16 @@ def strip_air(strip: Strip) -> StripAir:
     if strip.situation is None:
         return StripAir(strip.start, None, strip.reason)
     try:
-        return StripAir(strip.start, ground_values(strip.situation))
+        return StripAir(strip.start, ground_values(strip.situation, methods=methods))
     except OroliftError as error:
         return StripAir(strip.start, None, str(error))
 
 
 def air_of_strips(
-    strips: Iterable[Strip], executor: Executor | None = None, told: Callable[[], None] | None = None
+    strips: Iterable[Strip],
+    executor: Executor | None = None,
+    told: Callable[[], None] | None = None,
+    methods: Collection[int] = (),
 ) -> tuple[StripAir, ...]:
     """The air near the ground of strips, in their order.
 
@@ -76,6 +81,8 @@ def air_of_strips(
         None works here.
     told : callable, optional
         Called when one is finished.
+    methods : collection of int
+        Numbers of the strips for which the range of the methods of the lee wind is wanted.
 
     Returns
     -------
@@ -87,10 +94,15 @@ def air_of_strips(
         If a strip fails of anything but its terrain or its air: that is a fault of ours.
     """
     done = []
-    for outcome in outcomes(strip_air, strips, executor):
+    tasks = ((strip, number in methods) for number, strip in enumerate(strips))
+    for outcome in outcomes(_air, tasks, executor):
         if outcome.error is not None:
             raise outcome.error
         done.append(outcome)
         if told is not None:
             told()
     return tuple(one.value for one in in_order(done) if one.value is not None)
+
+
+def _air(task: tuple[Strip, bool]) -> StripAir:
+    return strip_air(task[0], methods=task[1])

@@ -178,7 +178,7 @@ def test_interrupt_leaves_130(case_folder, capsys, monkeypatch):
     assert "interrupted" in capsys.readouterr().err
 
 
-@pytest.mark.parametrize("library", ["rasterio", "shapely", "metar", "scipy.optimize", "matplotlib"])
+@pytest.mark.parametrize("library", ["rasterio", "shapely", "metar", "matplotlib"])
 def test_a_ridge_case_imports_no_heavy_library(library, case_folder):
     """Start-up stays short: what a ridge does not need is not imported."""
     import subprocess

@@ -245,7 +245,7 @@ def test_danger_is_marked_only_where_the_crossing_doubts_itself(read, any_crossi
 
 
 def test_danger_colour_is_used_for_danger_only():
-    """Doubts of the crossing, breaking waves and thresholds met, nothing else."""
+    """Doubts of the crossing, breaking waves, thresholds met and their chance, nothing else."""
     users = re.findall(r"([^{}]+)\{[^{}]*var\(--danger\)", STYLE)
     assert {selector.strip().splitlines()[-1] for selector in users} == {
         ".danger",
@@ -254,6 +254,7 @@ def test_danger_colour_is_used_for_danger_only():
         "svg text.breaking",
         ".met",
         ".lee-layer.danger",
+        ".lee-layer.chance",
         "svg text.danger-words",
     }
 

@@ -95,13 +95,86 @@ def test_the_page_gives_shares_and_names_the_rule_with_a_gust(found):
     """Two of the five known cells behind the crest meet the rule."""
     on_map = thresholds_on_map(found, rules(DRY_AND_WINDY, GUSTY), 0.03)
     frame = SimpleNamespace(across=np.array([0.0, 5e3]), smoothing=2.5e3)
-    mapped = SimpleNamespace(map=found, plan=SimpleNamespace(frame=frame), thresholds=on_map)
+    mapped = SimpleNamespace(map=found, plan=SimpleNamespace(frame=frame), thresholds=on_map, spread=None)
     text = [plain(remark, "metric") for remark in lee_on_map(mapped, ()).remarks]
     said = " ".join(text).replace("\u00a0", " ").replace("\u202f", " ")
     assert "“Dry and windy” on 40 %" in said
     assert "“Gusty” cannot be judged on the map, which does not have: gust at 6.1 m, mean of 3 s." in said
     mapped.thresholds = None
     assert not any("hreshold" in plain(remark, "metric") for remark in lee_on_map(mapped, ()).remarks)
+
+
+def in_members(found, chance):
+    """Three members of the row, and chances in its cells."""
+    behind = found.relative_humidity[0, :6]
+    return SimpleNamespace(
+        members=3,
+        strips=2,
+        low={"relative_humidity": found.relative_humidity - 0.05, "warming": found.warming, "wind_10m": found.wind_10m},
+        high={
+            "relative_humidity": found.relative_humidity + 0.05,
+            "warming": found.warming,
+            "wind_10m": found.wind_10m,
+        },
+        met=(chance,),
+        any_met=chance,
+        humidity=np.array([behind + shift for shift in (-0.05, -0.03, 0.0, 0.02, 0.04)]),
+        warming=np.array([np.full(6, 6.0 + shift) for shift in (-2.0, -1.0, 0.0, 1.0, 3.0)]),
+        share_met=(np.array([0.0, 0.2, 0.4, 0.6, 1.0]),),
+    )
+
+
+def test_numbers_of_the_map_have_the_range_of_its_members(found):
+    """10 and 90 % of what the same number is in each member, by numpy's linear quantiles of five."""
+    on_map = thresholds_on_map(found, rules(DRY_AND_WINDY), 0.03)
+    frame = SimpleNamespace(across=np.array([0.0, 5e3]), smoothing=2.5e3)
+    spread = in_members(found, np.array([MET]))
+    mapped = SimpleNamespace(map=found, plan=SimpleNamespace(frame=frame), thresholds=on_map, spread=spread)
+    said = lee_on_map(mapped, ())
+    text = " ".join(plain(one, "metric") for one in (said.heading, *said.remarks))
+    text = text.replace("\u00a0", " ").replace("\u202f", " ")
+    assert "“Dry and windy” on 40 % (8 to 84)" in text
+    assert "half of the ground has a humidity of 18 % (13 to 21) or less" in text
+    assert "between +8.0 °C (+4.4 to +8.2)" in text
+    assert "Ranges are 10 to 90 % of 3 members" in text
+    assert "two strips" in text
+
+
+def test_the_figure_of_chances_has_steps_of_chances(found):
+    """Named rules are those with more than a tenth somewhere; without any there is no figure."""
+    on_map = thresholds_on_map(found, rules(DRY_AND_WINDY), 0.03)
+    chance = np.array([[0.0, 0.2, 0.4, 0.95, 0.0, 0.0, np.nan, 0.0]])
+    mapped = SimpleNamespace(map=found, thresholds=on_map, spread=in_members(found, chance))
+    (shown,) = maps._chance(mapped)
+    assert [level for level, *_ in shown.levels] == [0.1, 0.3, 0.5, 0.7, 0.9]
+    assert np.array_equal(shown.values, chance, equal_nan=True)
+    assert "“Dry and windy”" in shown.caption
+    mapped.spread = in_members(found, 0.05 * np.ones((1, 8)))
+    assert maps._chance(mapped) == ()
+    mapped.spread = None
+    assert maps._chance(mapped) == maps._dry_end(mapped) == ()
+
+
+def test_captions_say_how_wide_ranges_are(found):
+    """10 points everywhere."""
+    mapped = SimpleNamespace(map=found, spread=in_members(found, np.array([MET])))
+    assert "up to 10 percentage points wide on half of the ground, 10 percentage points on nearly all" in maps._width(
+        mapped, "relative_humidity", "share", "metric"
+    )
+
+
+def test_the_file_of_chances_has_any_and_each(found):
+    """Beside the file of what is met."""
+    from rasterio.io import MemoryFile
+
+    placed = SimpleNamespace(grid=found.grid, crs="EPSG:32632", transform=Affine(500.0, 0.0, 0.0, 0.0, -500.0, 0.0))
+    on_map = thresholds_on_map(found, rules(DRY_AND_WINDY), 0.03)
+    chance = np.array([[0.0, 0.2, 0.4, 0.95, 0.0, 0.0, np.nan, 0.0]])
+    files = threshold_maps(placed, on_map, {}, in_members(found, chance))
+    assert list(files) == ["lee_thresholds", "lee_threshold_chance"]
+    with MemoryFile(files["lee_threshold_chance"]) as memory, memory.open() as file:
+        assert file.descriptions == ("chance that a threshold is met", "chance of the threshold: Dry and windy")
+        np.testing.assert_allclose(file.read(2, masked=True).filled(np.nan), chance, rtol=1e-6)
 
 
 def test_the_file_has_the_number_met_and_each_rule(found):

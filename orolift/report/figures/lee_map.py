@@ -32,6 +32,8 @@ CELLS = 150
 """Cells along the longer side on which steps are drawn."""
 STEPS = 5
 """About how many steps there are."""
+CHANCES = (0.1, 0.3, 0.5, 0.7, 0.9)
+"""Chances between which the steps of that map lie."""
 
 
 @dataclass(frozen=True)
@@ -87,7 +89,8 @@ def lee_map_figures(crossing: Crossing, mapped: MappedLee, units: Units) -> tupl
     -------
     tuple of Figure
     """
-    shown = (*_shown(mapped, units), *_thresholds(mapped))
+    warming, humidity, wind = _shown(mapped, units)
+    shown = (warming, humidity, *_dry_end(mapped), wind, *_thresholds(mapped), *_chance(mapped))
     return tuple(_figure(one, crossing, mapped, units) for one in shown)
 
 
@@ -110,19 +113,79 @@ def _thresholds(mapped: MappedLee) -> tuple[_Shown, ...]:
     )
 
 
-def _shown(mapped: MappedLee, units: Units) -> tuple[_Shown, ...]:
+def _chance(mapped: MappedLee) -> tuple[_Shown, ...]:
+    """How likely it is that a threshold is met; nothing where that is nowhere more than slight."""
+    spread = mapped.spread
+    if mapped.thresholds is None or spread is None or spread.any_met is None:
+        return ()
+    if not np.any(spread.any_met > CHANCES[0]):
+        return ()
+    pairs = zip(mapped.thresholds.judged, spread.met, strict=True)
+    names = ", ".join(f"“{one.rule.name}”" for one, chance in pairs if np.any(chance > CHANCES[0]))
+    return (
+        _Shown(
+            "lee-chance",
+            "Chance that a threshold is met",
+            f"Share of {spread.members} members in which a threshold is met ({names}), in steps from 10 to 90 %; not a "
+            "warning. Blank: under 10 %, or not judged.",
+            spread.any_met,
+            "share",
+            tuple((level, "lee-layer chance", 1.0) for level in CHANCES),
+        ),
+    )
+
+
+def _dry_end(mapped: MappedLee) -> tuple[_Shown, ...]:
+    """How dry it may be; nothing without members."""
+    spread = mapped.spread
+    if spread is None:
+        return ()
+    low = spread.low["relative_humidity"]
+    if not np.isfinite(low).any():
+        return ()
+    return (
+        _Shown(
+            "lee-humidity-low",
+            "Dry end of the relative humidity",
+            f"Relative humidity below which a tenth of {spread.members} members lie: it may well be as dry as this. "
+            "The darker, the drier.",
+            low,
+            "share",
+            tuple((level, "lee-layer warm", -1.0) for level in _dry_steps(low)),
+        ),
+    )
+
+
+def _width(mapped: MappedLee, name: str, kind: Kind, units: Units) -> str:
+    """How wide the range of members is behind the crest, in a sentence; nothing without members."""
+    spread = mapped.spread
+    if spread is None:
+        return ""
+    width = (spread.high[name] - spread.low[name])[mapped.map.behind_crest > 0.0]
+    width = width[np.isfinite(width)]
+    if not width.size:
+        return ""
+    middle, most = (float(np.percentile(width, share)) for share in (50.0, 95.0))
+    if kind == "share":
+        said = [f"{100.0 * value:.0f} percentage points" for value in (middle, most)]
+    else:
+        said = [quantity(value, kind, 1, units).split("\u00a0(")[0] for value in (middle, most)]
+    return f" Range (10 to 90 %) behind the crest: up to {said[0]} wide on half of the ground, {said[1]} on nearly all."
+
+
+def _shown(mapped: MappedLee, units: Units) -> tuple[_Shown, _Shown, _Shown]:
+    """Warming, humidity and wind."""
     found = mapped.map
     warming, humidity, wind = found.warming, found.relative_humidity, found.wind_10m
     warm = _steps(np.nanpercentile(warming, 99.5), "temperature_difference", units)
     cool = _steps(-np.nanpercentile(warming, 0.5), "temperature_difference", units)
-    driest = float(np.nanpercentile(humidity, 0.5))
-    dry = [level for level in np.arange(0.1, 1.0, 0.1) if level > driest][:STEPS]
     strong = _steps(float(np.nanpercentile(wind, 99.8)), "wind", units) if np.isfinite(wind).any() else []
     return (
         _Shown(
             "lee-warming",
             "Warmer or colder than the incoming air at the same height",
-            "Brown in steps: warmer than the incoming air at the height of the ground; blue: colder.",
+            "Brown in steps: warmer than the incoming air at the height of the ground; blue: colder."
+            + _width(mapped, "warming", "temperature_difference", units),
             warming,
             "temperature_change",
             (
@@ -133,20 +196,27 @@ def _shown(mapped: MappedLee, units: Units) -> tuple[_Shown, ...]:
         _Shown(
             "lee-humidity",
             "Relative humidity at the ground",
-            "The darker, the drier the air at the ground.",
+            "The darker, the drier the air at the ground." + _width(mapped, "relative_humidity", "share", units),
             humidity,
             "share",
-            tuple((float(level), "lee-layer warm", -1.0) for level in dry),
+            tuple((level, "lee-layer warm", -1.0) for level in _dry_steps(humidity)),
         ),
         _Shown(
             "lee-wind",
             "Wind at 10 m across the range",
-            "In steps: mean wind at 10 m across the range, of the crossing air; none in blocked air and in cold pools.",
+            "In steps: mean wind at 10 m across the range, of the crossing air; none in blocked air and cold pools."
+            + _width(mapped, "wind_10m", "wind", units),
             wind,
             "wind",
             tuple((level, "lee-layer blow", 1.0) for level in strong),
         ),
     )
+
+
+def _dry_steps(humidity: Array) -> list[float]:
+    """Tenths from the lowest that is reached."""
+    driest = float(np.nanpercentile(humidity, 0.5))
+    return [float(level) for level in np.arange(0.1, 1.0, 0.1) if level > driest][:STEPS]
 
 
 def _steps(most: float, kind: Kind, units: Units) -> list[float]:
