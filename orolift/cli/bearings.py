@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 
 import click
 
-from orolift.cli.executors import executor_of, progress
+from orolift.cli.gathering import Gathered, gathered, leave_unfinished
 from orolift.cli.options import (
     JOBS_OPTION,
     MEMBERS_OPTION,
@@ -20,6 +20,7 @@ from orolift.cli.options import (
     file_option,
 )
 from orolift.cli.outputs import Outputs, made_now
+from orolift.cli.spreading import Workers
 
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
@@ -63,9 +64,9 @@ def command(
     files = planned_files(files, f"{Path(case).stem}_bearings", folder, outputs)
     setup = read_bearings(case, step, members)
     log.debug("%s read, %d directions", case, setup.directions)
-    found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
+    found, work = worked(setup, Workers(jobs, scheduler, quiet))
     if not found:
-        raise click.Abort
+        leave_unfinished(work, "")
     bearings = bearings_of(
         found,
         [site.name for site in setup.sites],
@@ -78,34 +79,26 @@ def command(
     outputs.write()
     if not quiet:
         click.echo("\n".join([*summary_of(bearings, setup, units), *where(files)]))
-    if stopped:
-        done = f"{bearings.wind_from.size} of {bearings.planned} directions"
-        raise click.Abort(f"interrupted after {done}; what was finished is written.")
+    if not work.finished:
+        leave_unfinished(work, f"{bearings.wind_from.size} of {bearings.planned} directions")
 
 
-def worked(
-    setup: BearingSetup, jobs: int | None, scheduler: str | None, *, quiet: bool
-) -> tuple[list[Direction], bool]:
-    """Directions worked out, and whether the person stopped the work before its end."""
+def worked(setup: BearingSetup, workers: Workers) -> tuple[list[Direction], Gathered[Direction]]:
+    """Directions worked out, and how that ended."""
     from orolift.sources.bearings_case import bearing_tasks
     from orolift.spread.bearings import Direction, worked_direction
-    from orolift.spread.engine import outcomes
     from orolift.spread.site_state import SiteState
 
-    found: list[Direction] = []
-    try:
-        with executor_of(jobs, scheduler) as executor, progress(setup.directions, "Directions", quiet=quiet) as bar:
-            for outcome in outcomes(worked_direction, bearing_tasks(setup), executor):
-                direction = outcome.value
-                if direction is None:
-                    state = SiteState("missing", f"a fault of orolift itself: {outcome.error}")
-                    wind_from = math.radians(outcome.number * setup.step_deg)
-                    direction = Direction(wind_from, (state,) * len(setup.sites))
-                found.append(direction)
-                bar.update(1)
-    except KeyboardInterrupt:
-        return found, True
-    return found, False
+    work = gathered(worked_direction, bearing_tasks(setup), setup.directions, "Directions", workers)
+    found = []
+    for outcome in work.found:
+        direction = outcome.value
+        if direction is None:
+            state = SiteState("missing", f"a fault of orolift itself: {outcome.error}")
+            wind_from = math.radians(outcome.number * setup.step_deg)
+            direction = Direction(wind_from, (state,) * len(setup.sites))
+        found.append(direction)
+    return found, work
 
 
 def contents_of(

@@ -210,6 +210,11 @@ def work_out(case: str, files: RainFiles | None = None, workers: Workers | None 
     spread = spread_for(inputs, situation, crossing, workers)
     doubts = (*doubts, *(() if spread is None else remarks(spread)))
     mapped, more = map_of(found, inputs, crossing, needed=needed)
+    if mapped is not None and spread is not None and spread.crosses.any():
+        from orolift.spread.rain_members import rain_members
+
+        north = mapped.inputs.placed.north
+        mapped = replace(mapped, members=rain_members(spread, situation, crossing, mapped.rain, north=north))
     notes = () if mapped is None else (*mapped.inputs.notes, *mapped.rain.notes)
     if inputs.ground_layer.note is not None:
         notes = (inputs.ground_layer.note, *notes)

@@ -38,7 +38,7 @@ class Gathered(Generic[Value]):
     lost: WorkersError | None = None
 
     @property
-    def whole(self) -> bool:
+    def finished(self) -> bool:
         """Whether everything was worked out."""
         return not self.stopped and self.lost is None
 
@@ -97,7 +97,7 @@ def leave_unfinished(work: Gathered[Any], done: str) -> NoReturn:
     ----------
     work : Gathered
     done : str
-        How much was finished, in words.
+        How much was finished, in words; empty when it was nothing.
 
     Raises
     ------
@@ -107,5 +107,9 @@ def leave_unfinished(work: Gathered[Any], done: str) -> NoReturn:
         If a process was lost.
     """
     if work.lost is not None:
+        if not done:
+            raise work.lost
         raise WorkersError(f"after {done}, which are written: {work.lost}") from work.lost
+    if not done:
+        raise click.Abort
     raise click.Abort(f"interrupted after {done}; what was finished is written.")

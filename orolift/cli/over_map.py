@@ -273,15 +273,18 @@ def _maps(folder: Path, inputs: Inputs, mapped: Mapped) -> dict[Path, bytes]:
 
 def _tables(wanted: RainFiles, mapped: Mapped) -> list[tuple[str, Path, bytes]]:
     from orolift.sources.gauges_csv import fitted_rain_toml
+    from orolift.sources.rain_ranges import catchment_ranges, gauge_ranges
     from orolift.sources.rain_tables import catchments_csv, gauges_csv
 
     rain = mapped.rain
     out: list[tuple[str, Path, bytes]] = []
     if wanted.catchments is not None:
         rows = [(one.catchment.name, one.rain) for one in rain.catchments]
-        out.append(("--catchments", Path(wanted.catchments), catchments_csv(rows).encode()))
+        ranges = [catchment_ranges(mapped, i) for i in range(len(rows))]
+        out.append(("--catchments", Path(wanted.catchments), catchments_csv(rows, ranges).encode()))
     if wanted.gauges is not None and rain.gauges is not None and rain.comparison is not None:
-        out.append(("--gauges", Path(wanted.gauges), gauges_csv(rain.gauges, rain.comparison).encode()))
+        table = gauges_csv(rain.gauges, rain.comparison, gauge_ranges(mapped))
+        out.append(("--gauges", Path(wanted.gauges), table.encode()))
     if wanted.fit is not None and rain.fit is not None:
         out.append(("--fit", Path(wanted.fit), fitted_rain_toml(rain.fit).encode()))
     return out

@@ -20,7 +20,7 @@ from orolift.crossing.result import When
 from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import PROFILE
 from orolift.crossing.solve import solve
-from orolift.crossing.way import cloud_water, cover_on_the_way, overcast, travel_times
+from orolift.crossing.way import cloud_water, cover_on_the_way
 from orolift.crossing.wind import NEAR_GROUND
 from orolift.flow.surface_wind import wind_near_ground
 from orolift.terrain.features import features
@@ -215,7 +215,7 @@ def _ground_changes(
     pressure, temperature, vapour = (
         values.reshape(places, levels, -1) for values in (air.pressure, air.temperature, air.vapour)
     )
-    times, cloudy = travel_times(ground, solution), overcast(ground, solution)
+    times, cloudy = solution.travel_times, solution.overcast
     way = np.interp(distance[is_lee], ground.transect.distance, times[0])
     cover = cover_on_the_way(times[:, solution.streams.place], cloudy, way[np.newaxis])[0] if cloudy.any() else None
     heat = surface_heat(

@@ -44,8 +44,8 @@ def flow_values(
     Returns
     -------
     dict of str to ndarray (m,)
-        Under the names of `orolift.crossing.result.Flow`, SI; ``blocked``, ``wave_breaking`` and ``breaks_through``
-        0 to 1; ``cloud_base``, ``cloud_end``, ``pool_top``, ``wind_over_pool``.
+        Under the names of `orolift.crossing.result.Flow` and `Cloud`, SI, with ``pool_top`` and ``wind_over_pool``;
+        ``blocked``, ``wave_breaking`` and ``breaks_through`` 0 to 1.
     """
     blocked = solution.blocking
     each = np.broadcast_shapes(solution.blocked_top.shape, crest_wind.shape)

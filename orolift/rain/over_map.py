@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 
     from numpy.typing import NDArray
 
+    from orolift.air.column import IncomingAir
     from orolift.crossing.result import Crossing
     from orolift.terrain.grid import ElevationGrid
 
@@ -211,7 +212,7 @@ def map_rain(
     bearing = column.parameters.bearing
     border = crest_divide(grid, bearing) if divide is None else line_divide(divide, grid, bearing)
     windward = windward_cells(grid, border)
-    snow = _snow(crossing, grid)
+    snow = snow_over(crossing.incoming, grid)
     snow_share = snow_on_ground(grid.elevation, snow)
     on_line = line_rain(crossing, found, column, line)
     cell = found.spacing[0] * found.spacing[1]
@@ -306,9 +307,18 @@ def _limits(crossing: Crossing, found: RainMap, column: ColumnRain, north: float
     )
 
 
-def _snow(crossing: Crossing, grid: ElevationGrid) -> SnowByHeight:
-    """Share of snow over the range of the ground."""
-    air = crossing.incoming
+def snow_over(air: IncomingAir, grid: ElevationGrid) -> SnowByHeight:
+    """Share of snow over the heights of a map's ground.
+
+    Parameters
+    ----------
+    air : IncomingAir, fields (nz,)
+    grid : ElevationGrid
+
+    Returns
+    -------
+    SnowByHeight
+    """
     lowest = max(float(np.nanmin(grid.elevation)), float(air.height[0]) - BELOW_COLUMN)
     return snow_by_height(air, lowest, max(float(np.nanmax(grid.elevation)), lowest))
 

@@ -6,6 +6,8 @@ from dataclasses import dataclass
 from datetime import UTC
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from orolift.report.bearings_sure import HOW_MEMBERS, agreement_words, crossing_words, lost_words, with_range
 from orolift.report.cautions import ALWAYS, RANGE_OF_MEMBERS
 from orolift.report.figures.roses import roses_figure
@@ -36,8 +38,8 @@ NAMED = 4
 class DirectionRow:
     """One wind direction at a site; None where there is no number.
 
-    `crosses` and `wet` are the chances that air crosses at all and that it rains, None without members; `spans` has
-    the ranges by field.
+    `crosses`, `wet` and `worst` are the shares of the members in which air crosses at all, it rains, and the direction
+    is the worst for fire, None without members; `spans` has the ranges by field.
     """
 
     wind_from: Amount
@@ -52,6 +54,7 @@ class DirectionRow:
     rain: Amount | None
     crosses: Amount | None
     wet: Amount | None
+    worst: Amount | None
     spans: dict[str, Words]
 
 
@@ -230,7 +233,7 @@ def _site(bearings: Bearings, number: int, units: Units) -> SiteRoses:
         heading=_warmest(site, bearings),
         sentences=_sentences(site, bearings),
         figure=roses_figure(bearings, number, units),
-        rows=tuple(_row(float(bearing), state) for bearing, state in zip(bearings.wind_from, site.states, strict=True)),
+        rows=tuple(_row(bearings, site, i) for i in range(len(site.states))),
     )
 
 
@@ -259,7 +262,10 @@ def _sentences(site: SiteBearings, bearings: Bearings) -> tuple[Words, ...]:
     return tuple(out)
 
 
-def _row(bearing: float, state: SiteState) -> DirectionRow:
+def _row(bearings: Bearings, site: SiteBearings, number: int) -> DirectionRow:
+    state = site.states[number]
+    worst = np.nan if site.worst is None else float(site.worst[number])
+
     def amount(value: float | None, kind: Kind, digits: int) -> Amount | None:
         return None if value is None else Amount(value, kind, digits)
 
@@ -275,13 +281,14 @@ def _row(bearing: float, state: SiteState) -> DirectionRow:
     if drying is not None and (ends := range_at(state, "drying_power")) is not None:
         spans["drying"] = span_of(Amount(drying, "plain"), (ends[0] / HPA, ends[1] / HPA))
     return DirectionRow(
-        wind_from=Amount(bearing, "bearing"),
+        wind_from=Amount(float(bearings.wind_from[number]), "bearing"),
         state=_words(state),
         shelter_height=amount(state.shelter_height, "height", 0),
         shelter_distance=amount(state.shelter_distance, "distance", 0),
         drying=amount(drying, "plain", 0),
         crosses=amount(chance_at(state, "crosses"), "share", 0),
         wet=amount(chance_at(state, "rain"), "share", 0),
+        worst=amount(None if np.isnan(worst) else worst, "share", 0),
         spans=spans,
         **shown,
     )

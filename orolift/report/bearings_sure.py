@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+import numpy as np
+
 from orolift.report.quantities import Amount
 from orolift.report.spans import ranged
 from orolift.spread.agreement import reach_of
@@ -14,6 +16,8 @@ if TYPE_CHECKING:
     from orolift.spread.bearings import Bearings, SiteBearings
     from orolift.spread.site_state import SiteState
 
+FEW = 0.1
+"""Share of the members from which on another direction that is worst in them is named; a judgement."""
 HOW_MEMBERS = (
     (
         "A range in brackets holds the middle eight tenths of the members, each with its own draw of every input, the "
@@ -71,7 +75,25 @@ def agreement_words(site: SiteBearings, bearings: Bearings) -> Words:
     for number, (what, share, whose) in enumerate(shares):
         out += ["the ", what, " is", *near, " that named in "] if number == 0 else [", the ", what.split()[0], " in "]
         out += [Amount(share, "share"), whose or ("" if number else " of the members")]
-    return (*out, ".")
+    return (*out, ".", *_next_worst(site, bearings))
+
+
+def _next_worst(site: SiteBearings, bearings: Bearings) -> Words:
+    """The direction that is worst for fire in most of the other members; nothing where they are few."""
+    if site.fire is None or site.worst is None:
+        return ()
+    apart = np.abs((bearings.wind_from - bearings.wind_from[site.fire] + np.pi) % (2.0 * np.pi) - np.pi)
+    others = np.where(apart > reach_of(bearings.step) + 1e-6, np.nan_to_num(site.worst), 0.0)
+    i = int(np.argmax(others))
+    if others[i] < FEW:
+        return ()
+    return (
+        " Next for fire is wind from ",
+        Amount(float(bearings.wind_from[i]), "bearing"),
+        ", worst in ",
+        Amount(float(others[i]), "share"),
+        ".",
+    )
 
 
 def _shares(site: SiteBearings) -> list[tuple[str, float, str]]:

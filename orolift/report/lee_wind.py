@@ -101,10 +101,11 @@ class ConditionRow:
 
 @dataclass(frozen=True)
 class LeeWind:
-    """A conclusion, then methods, sites and conditions."""
+    """A conclusion, how to read it, what is doubtful about the members; then methods, sites and conditions."""
 
     heading: Words
     remarks: tuple[Words, ...]
+    doubt: Words
     methods: tuple[MethodRow, ...]
     sites: tuple[WindRow, ...]
     conditions: tuple[ConditionRow, ...]
@@ -135,6 +136,7 @@ def lee_wind(spans: Spans, sites: tuple[LeeAir, ...] | None = None) -> LeeWind:
     return LeeWind(
         heading=_heading(spans),
         remarks=_remarks(spans),
+        doubt=_beyond_pressure(spans),
         methods=(first, *others),
         sites=tuple(_row(site, spans) for site in sites or spans.crossing.lee),
         conditions=tuple(_condition(one, spans.spread) for one in winds.conditions),
@@ -212,10 +214,12 @@ def _remarks(spans: Spans) -> tuple[Words, ...]:
 
 def _where(spans: Spans) -> Words:
     """What the strongest wind is, where it blows, and what the methods make of it."""
-    winds = spans.crossing.winds
+    winds, origin = spans.crossing.winds, spans.crossing.transect.origin
+    ends = spans.of("lee_wind_distance")
+    place = None if ends is None else (ends[0] + origin, ends[1] + origin)
     where: Words = (
         "That is a mean over the lowest 300 m and over 5 km along the slope, at ",
-        Amount(winds.strongest_distance + spans.crossing.transect.origin, "distance", 1),
+        *ranged(Amount(winds.strongest_distance + origin, "distance", 1), place),
         " on the line. ",
     )
     span = range_words(winds.low, winds.high)
@@ -249,11 +253,11 @@ def _members(spans: Spans) -> tuple[Words, ...]:
         joint = "or" if round(held[1]) - round(held[0]) == 1 else "to"
         many = least if least == most else f"{least} {joint} {most}"
         words = (*words, f" In eight tenths of the members {many} of the conditions for a windstorm hold.")
-    return (words, *_beyond_pressure(spans))
+    return (words,)
 
 
-def _beyond_pressure(spans: Spans) -> tuple[Words, ...]:
-    """A caution where the streamlines of many members give more wind than their fall of pressure drives."""
+def _beyond_pressure(spans: Spans) -> Words:
+    """A doubt where the streamlines of many members give more wind than their fall of pressure drives."""
     values = {} if spans.spread is None else spans.spread.values
     if not {"lee_wind", "lee_wind_fall_of_pressure"} <= values.keys():
         return ()
@@ -265,7 +269,7 @@ def _beyond_pressure(spans: Spans) -> tuple[Words, ...]:
         " of the members the spacing of the streamlines gives more wind than the fall of pressure across the range can "
         "drive: take the upper end of the range with doubt."
     )
-    return (("In ", Amount(share, "share"), told),)
+    return ("In ", Amount(share, "share"), told)
 
 
 def _either_way(ends: tuple[float, float] | None, *, lower: bool) -> tuple[float, float] | None:

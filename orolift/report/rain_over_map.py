@@ -3,13 +3,15 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
 from orolift.rain.over_map import bands_of_map
 from orolift.report.quantities import Amount, Units
 from orolift.report.rain import band_step
+from orolift.report.spans import Ends, ranged, span_of
 from orolift.report.words import counted, fraction_in_words, sentence
+from orolift.spread.ranges import range_of
 
 if TYPE_CHECKING:
     from orolift.rain.catchments import ElevationBands
@@ -17,7 +19,12 @@ if TYPE_CHECKING:
     from orolift.rain.over_map import MapRain, RainOnCatchment
     from orolift.report.words import Words
     from orolift.sources.map_inputs import Mapped
+    from orolift.spread.rain_members import RainMembers
 
+WHAT_RANGES_ARE = (
+    "The ranges are those of the members, worked out on coarser cells around this map; no error of the theory is in "
+    "them. What the map has by height of the ground, and the estimates for the slope, have none."
+)
 FEW_GAUGES = 2
 """Gauges from which on errors are said."""
 
@@ -35,6 +42,7 @@ class CatchmentRow:
     volume: Amount | None
     snow_share: Amount | None
     windward_share: Amount | None
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -45,6 +53,7 @@ class GaugeRow:
     caught: Amount
     on_map: Amount | None
     difference: Amount | None
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -117,12 +126,12 @@ def rain_over_map(mapped: Mapped, units: Units = "metric") -> RainOverMap:
     """
     rain = mapped.rain
     return RainOverMap(
-        heading=_heading(rain),
-        sentences=_sentences(rain, mapped.inputs.placed.north),
+        heading=_heading(mapped),
+        sentences=_sentences(mapped),
         difference=rain.on_line.difference,
         limits=rain.limits,
-        catchments=tuple(_catchment(one) for one in rain.catchments),
-        gauges=_gauges(rain),
+        catchments=tuple(_catchment(one, mapped.members, i) for i, one in enumerate(rain.catchments)),
+        gauges=_gauges(rain, mapped.members),
         gauge_sentences=(*_comparison(rain), *_fit(rain.fit)),
         estimates=() if rain.is_dry else _estimates(rain),
         bands=() if rain.is_dry else _bands(bands_of_map(rain, band_step(units))),
@@ -134,52 +143,63 @@ def _duration(rain: MapRain) -> Amount:
     return Amount(rain.duration, "hours", 0 if rain.duration % 3600.0 == 0.0 else 1)
 
 
-def _heading(rain: MapRain) -> Words:
+def _span(members: RainMembers | None, name: str) -> Ends | None:
+    """Range of a number of the map; None without members."""
+    return None if members is None else range_of(members.values[name])
+
+
+def _heading(mapped: Mapped) -> Words:
+    rain = mapped.rain
     if rain.windward_share is None or rain.is_dry:
         return ("No rain to speak of falls anywhere on the map",)
     part = f"{fraction_in_words(rain.windward_share)} of the rain on the map"
-    most: Words = (" falls on the windward side; the most is ", Amount(rain.peak_rate, "rain_rate", 1))
-    return (*sentence((part,)), *most)
+    most = ranged(Amount(rain.peak_rate, "rain_rate", 1), _span(mapped.members, "peak_rate"))
+    return (*sentence((part,)), " falls on the windward side; the most is ", *most)
 
 
-def _sentences(rain: MapRain, north: float) -> tuple[Words, ...]:
+def _sentences(mapped: Mapped) -> tuple[Words, ...]:
+    rain, members, north = mapped.rain, mapped.members, mapped.inputs.placed.north
     p, column = rain.column.parameters, rain.column
     drift = p.wind_speed * (p.cloud_time + p.fall_time)
     theory: Words = (
         "Linear theory (Smith and Barstad 2004) with one wind, ",
-        Amount(p.wind_speed, "wind"),
+        *ranged(Amount(p.wind_speed, "wind"), _span(members, "wind_speed")),
         " from ",
         Amount((p.bearing - north + math.pi) % (2.0 * math.pi), "bearing"),
         ", and the air of the crossing: vapour ",
-        Amount(p.vapour_height, "distance", 1),
+        *ranged(Amount(p.vapour_height, "distance", 1), _span(members, "vapour_height")),
         " deep, water that drifts ",
-        Amount(drift, "distance"),
+        *ranged(Amount(drift, "distance"), _span(members, "drift")),
         " before it lands. The map takes ",
-        Amount(rain.drying_ratio, "share"),
+        *ranged(Amount(rain.drying_ratio, "share"), _span(members, "drying_ratio")),
         " of the vapour that flows in over its whole width.",
     )
+    if rain.windward_share is not None and not rain.is_dry:
+        share = ranged(Amount(rain.windward_share, "share"), _span(members, "windward_share"))
+        theory = (*theory, " On its windward side falls ", *share, " of the rain.")
     floor: Words = (
         "Ground below ",
-        Amount(rain.reference + column.dry_lift, "height", -1),
+        *ranged(Amount(rain.reference + column.dry_lift, "height", -1), _span(members, "floor")),
         " makes no rain and is taken off: its air stays, or does not condense yet.",
     )
     snow: Words = (
         "In the incoming air half of what falls is snow at ",
-        Amount(rain.snow.snow_level, "height", -1),
+        *ranged(Amount(rain.snow.snow_level, "height", -1), _span(members, "snow_level")),
         ", and snow begins to melt at ",
-        Amount(rain.snow.melting_level, "height", -1),
+        *ranged(Amount(rain.snow.melting_level, "height", -1), _span(members, "melting_level")),
         ".",
     )
-    return (theory, floor, *((snow,) if rain.snowing_share and not rain.is_dry else ()))
+    found = (theory, floor, *((snow,) if rain.snowing_share and not rain.is_dry else ()))
+    return found if members is None else (*found, (WHAT_RANGES_ARE,))
 
 
-def _catchment(one: RainOnCatchment) -> CatchmentRow:
+def _catchment(one: RainOnCatchment, members: RainMembers | None, number: int) -> CatchmentRow:
     rain = one.rain
 
     def maybe(value: float | None, kind: str, digits: int = 0) -> Amount | None:
         return None if value is None else Amount(value, kind, digits)  # type: ignore[arg-type]  # names of kinds
 
-    return CatchmentRow(
+    row = CatchmentRow(
         name=one.catchment.name,
         remark=" ".join(rain.notes),
         area=Amount(rain.area, "area"),
@@ -189,21 +209,42 @@ def _catchment(one: RainOnCatchment) -> CatchmentRow:
         volume=maybe(rain.volume, "volume", 2),
         snow_share=maybe(rain.snow_share, "share"),
         windward_share=maybe(rain.windward_share, "share"),
+        spans={},
     )
+    if members is None or not rain.rate:
+        return row
+    mean = rain.rate
+    rate, snow, windward = (range_of(members.catchments[name][:, number]) for name in _OF_CATCHMENT)
+
+    def grown(whole: float | None) -> Ends | None:
+        return None if whole is None or rate is None else (rate[0] * whole / mean, rate[1] * whole / mean)
+
+    ends = {"rate": rate, "total": grown(rain.total), "volume": grown(rain.volume)}
+    ends |= {"snow_share": snow, "windward_share": windward}
+    return replace(row, spans={name: span_of(getattr(row, name), found) for name, found in ends.items()})
 
 
-def _gauges(rain: MapRain) -> tuple[GaugeRow, ...]:
+_OF_CATCHMENT = ("rate", "snow_share", "windward_share")
+
+
+def _gauges(rain: MapRain, members: RainMembers | None) -> tuple[GaugeRow, ...]:
     if rain.gauges is None or rain.comparison is None:
         return ()
     rows = []
-    for name, caught, there in zip(rain.gauges.name, rain.gauges.total, rain.comparison.modelled, strict=True):
+    places = zip(rain.gauges.name, rain.gauges.total, rain.comparison.modelled, strict=True)
+    for i, (name, caught, there) in enumerate(places):
         known = math.isfinite(there)
+        on_map = Amount(float(there), "water_depth", 1) if known else None
+        ends = None if members is None else range_of(members.gauges[:, i])
+        apart = None if ends is None else (ends[0] - caught, ends[1] - caught)
+        difference = Amount(float(there - caught), "water_depth", 1) if known else None
         rows.append(
             GaugeRow(
                 name=name,
                 caught=Amount(float(caught), "water_depth", 1),
-                on_map=Amount(float(there), "water_depth", 1) if known else None,
-                difference=Amount(float(there - caught), "water_depth", 1) if known else None,
+                on_map=on_map,
+                difference=difference,
+                spans={"on_map": span_of(on_map, ends), "difference": span_of(difference, apart)},
             )
         )
     return tuple(rows)

@@ -24,8 +24,15 @@ from orolift.spread.agreement import reach_of
 from orolift.spread.timeline import values_of
 
 if TYPE_CHECKING:
+    from collections.abc import Sequence
+
+    from numpy.typing import NDArray
+
     from orolift.sources.bearings_case import BearingSetup
     from orolift.spread.bearings import Bearings, SiteBearings
+    from orolift.spread.site_state import SiteState
+
+    Array = NDArray[np.float64]
 
 BEARINGS_VERSION = "1"
 WITH_RANGE = RANGED | {"drying_power_hpa_ms": ("drying_power", 0.01, 0.0)}
@@ -141,7 +148,7 @@ def _site(site: SiteBearings, bearings: Bearings) -> SiteBearingsBlock:
         warmest_deg=direction(site.warmest),
         driest_deg=direction(site.driest),
         agreement=_agreement(site, bearings),
-        ranges=None if site.agreement is None else state_ranges(states, WITH_RANGE),
+        ranges=None if site.worst is None else _ranges(states, site.worst),
         directions=DirectionColumns(
             wind_from_deg=degrees,
             status=[state.status for state in states],
@@ -157,6 +164,12 @@ def _site(site: SiteBearings, bearings: Bearings) -> SiteBearingsBlock:
             **found,
         ),
     )
+
+
+def _ranges(states: Sequence[SiteState], worst: Array) -> StateRangesBlock:
+    """Ranges and chances, with the share of the members for which each direction is the worst for fire."""
+    found = state_ranges(states, WITH_RANGE)
+    return found.model_copy(update={"chance": found.chance | {"worst_for_fire": numbers(worst)}})
 
 
 def _agreement(site: SiteBearings, bearings: Bearings) -> AgreementBlock | None:
@@ -198,11 +211,10 @@ def bearing_rows(results: BearingsResults) -> tuple[list[str], list[list[object]
     """
     keys = list(DirectionColumns.model_fields)
     rows: list[list[object]] = []
-    more = range_columns(state_ranges((), WITH_RANGE)) if results.spread is not None else {}
+    more = [] if results.spread is None else list(range_columns(_ranges((), np.empty(0))))
     for site in results.sites:
         columns = [getattr(site.directions, key) for key in keys]
-        if more:
-            empty = dict.fromkeys(more, [None] * len(columns[0]))
-            columns += (empty if site.ranges is None else range_columns(site.ranges)).values()
+        found = {} if site.ranges is None else range_columns(site.ranges)
+        columns += [found.get(key, [None] * len(columns[0])) for key in more]
         rows += [[site.name, *map(said, row)] for row in zip(*columns, strict=True)]
     return ["site", *keys, *more], rows

@@ -24,6 +24,7 @@ if TYPE_CHECKING:
     from orolift.sources.elevation_map import ElevationMap
     from orolift.sources.inputs import Inputs
     from orolift.sources.site_places import SitePlace
+    from orolift.spread.rain_members import RainMembers
     from orolift.terrain.transect import Transect
 
     Array = NDArray[np.float64]
@@ -78,10 +79,13 @@ class Mapped:
     ----------
     inputs : MapInputs
     rain : MapRain
+    members : RainMembers or None
+        The same in members; None without.
     """
 
     inputs: MapInputs
     rain: MapRain
+    members: RainMembers | None = None
 
 
 def read_map_inputs(inputs: Inputs, most_cells: int = MOST_CELLS) -> MapInputs:

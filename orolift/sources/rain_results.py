@@ -7,7 +7,8 @@ from typing import TYPE_CHECKING
 
 from pydantic import Field
 
-from orolift.sources.result_block import Block
+from orolift.sources.rain_ranges import catchment_ranges, gauge_ranges, map_ranges
+from orolift.sources.result_block import Block, Range
 
 if TYPE_CHECKING:
     from orolift.rain.catchments import ElevationBands
@@ -89,6 +90,8 @@ class MapBlock(Block):
     estimates: EstimatesBlock
     bands: list[BandBlock]
     limits: list[str] = Field(description="where the case breaks the theory")
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %], by the inputs; empty without members")
+    input_range: Range = Field(default_factory=dict, description="the same: no error of the theory is known")
 
 
 class CatchmentBlock(Block):
@@ -108,6 +111,8 @@ class CatchmentBlock(Block):
     highest_m: float | None
     bands: list[BandBlock]
     notes: list[str]
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %], by the inputs; empty without members")
+    input_range: Range = Field(default_factory=dict, description="the same: no error of the theory is known")
 
 
 class GaugeBlock(Block):
@@ -116,6 +121,8 @@ class GaugeBlock(Block):
     name: str
     observed_mm: float
     map_mm: float | None
+    range: Range = Field(default_factory=dict, description="key: [10 %, 90 %], by the inputs; empty without members")
+    input_range: Range = Field(default_factory=dict, description="the same: no error of the theory is known")
 
 
 class FittedBlock(Block):
@@ -193,7 +200,13 @@ def map_block(mapped: Mapped, origin: float) -> MapBlock:
         estimates=_estimates(rain),
         bands=_bands(rain.bands),
         limits=[*rain.limits],
+        **_both(map_ranges(mapped)),
     )
+
+
+def _both(found: Range) -> dict[str, Range]:
+    """Range and input range: no error of the theory is known."""
+    return {"range": found, "input_range": found}
 
 
 def _parameters(rain: MapRain, north: float) -> ParametersBlock:
@@ -262,21 +275,21 @@ def _per_hour(rate: float | None) -> float | None:
     return None if rate is None or math.isnan(rate) else HOUR * rate
 
 
-def catchment_blocks(rain: MapRain) -> list[CatchmentBlock]:
+def catchment_blocks(mapped: Mapped) -> list[CatchmentBlock]:
     """Rain on every catchment, in the order of the file.
 
     Parameters
     ----------
-    rain : MapRain
+    mapped : Mapped
 
     Returns
     -------
     list of CatchmentBlock
     """
-    return [_catchment(one) for one in rain.catchments]
+    return [_catchment(one, catchment_ranges(mapped, i)) for i, one in enumerate(mapped.rain.catchments)]
 
 
-def _catchment(one: RainOnCatchment) -> CatchmentBlock:
+def _catchment(one: RainOnCatchment, ranges: Range) -> CatchmentBlock:
     rain = one.rain
     return CatchmentBlock(
         name=one.catchment.name,
@@ -293,26 +306,34 @@ def _catchment(one: RainOnCatchment) -> CatchmentBlock:
         highest_m=rain.highest,
         bands=_bands(one.bands),
         notes=[*rain.notes],
+        **_both(ranges),
     )
 
 
-def gauges_block(rain: MapRain) -> GaugesBlock | None:
+def gauges_block(mapped: Mapped) -> GaugesBlock | None:
     """Map against gauges; None without gauges.
 
     Parameters
     ----------
-    rain : MapRain
+    mapped : Mapped
 
     Returns
     -------
     GaugesBlock or None
     """
+    rain = mapped.rain
     gauges, found = rain.gauges, rain.comparison
     if gauges is None or found is None:
         return None
+    ranges = gauge_ranges(mapped) or [{}] * len(gauges.name)
     places = [
-        GaugeBlock(name=name, observed_mm=float(caught), map_mm=None if math.isnan(there) else float(there))
-        for name, caught, there in zip(gauges.name, gauges.total, found.modelled, strict=True)
+        GaugeBlock(
+            name=name,
+            observed_mm=float(caught),
+            map_mm=None if math.isnan(there) else float(there),
+            **_both(ends),
+        )
+        for name, caught, there, ends in zip(gauges.name, gauges.total, found.modelled, ranges, strict=True)
     ]
     return GaugesBlock(
         used=found.used,

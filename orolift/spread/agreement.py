@@ -106,20 +106,51 @@ def agreeing(
     """
     if chosen is None:
         return None
+    have, values = _values(states, counts, name, sign)
+    most, there = _most(values, least)
+    if not there.any():
+        return None
+    away = np.abs((wind_from[have] - wind_from[chosen] + math.pi) % (2.0 * math.pi) - math.pi)
+    near = values[away <= reach + 1e-6].max(axis=0, initial=-np.inf)
+    return float(np.mean((near >= most - TIE * np.abs(most))[there]))
+
+
+def shares_by_direction(states: Sequence[SiteState], counts: Sequence[bool], name: str) -> Array:
+    """In what share of the members each direction is the one with the largest value.
+
+    Parameters
+    ----------
+    states, counts, name
+        As for `agreeing`.
+
+    Returns
+    -------
+    ndarray (n,) [1]
+        They add up to 1; NaN in directions that may not be the extreme one or have no members, and in all where no
+        member has a value. Of two directions alike a member has the first.
+    """
+    out = np.full(len(states), np.nan)
+    have, values = _values(states, counts, name, 1.0)
+    _, there = _most(values, -math.inf)
+    if there.any():
+        out[have] = np.bincount(values[:, there].argmax(axis=0), minlength=len(have)) / there.sum()
+    return out
+
+
+def _values(
+    states: Sequence[SiteState], counts: Sequence[bool], name: str, sign: float
+) -> tuple[NDArray[np.intp], Array]:
+    """Numbers of the directions that count and have members, and their values (directions, m); -inf without one."""
     found = {
         i: sign * state.members.full[name]
         for i, (state, there) in enumerate(zip(states, counts, strict=True))
         if there and state.members is not None and name in state.members.full
     }
-    if not found:
-        return None
-    have, values = list(found), np.array(list(found.values()))
-    values = np.where(np.isfinite(values), values, -np.inf)
-    away = np.abs((wind_from[have] - wind_from[chosen] + math.pi) % (2.0 * math.pi) - math.pi)
-    most = values.max(axis=0)
-    there = np.isfinite(most) & (most >= least)
-    if not there.any():
-        return None
-    near = away <= reach + 1e-6
-    best_near = values[near].max(axis=0) if near.any() else np.full(most.shape, -np.inf)
-    return float(np.mean((best_near >= most - TIE * np.abs(most))[there]))
+    values = np.array(list(found.values())) if found else np.empty((0, 0))
+    return np.array(list(found), dtype=np.intp), np.where(np.isfinite(values), values, -np.inf)
+
+
+def _most(values: Array, least: float) -> tuple[Array, NDArray[np.bool_]]:
+    """Largest value of each member, and which members have one that is not below the least."""
+    most = values.max(axis=0, initial=-np.inf)
+    return most, np.isfinite(most) & (most >= least)

@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.crossing.facts import OBLIQUE
-from orolift.spread.agreement import Agreement, agreeing, reach_of
+from orolift.spread.agreement import Agreement, agreeing, reach_of, shares_by_direction
 from orolift.spread.site_state import SiteState, states_of
 
 if TYPE_CHECKING:
@@ -61,7 +61,7 @@ class Direction:
     sites: tuple[SiteState, ...]
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class SiteBearings:
     """One site under every wind direction.
 
@@ -76,6 +76,8 @@ class SiteBearings:
         oblique to the range count, unless all are: see `square_enough`.
     agreement : Agreement or None
         How many members agree on each; None without members.
+    worst : ndarray (n,) or None [1]
+        In what share of the members each direction is the worst for fire; see `shares_by_direction`.
     """
 
     name: str
@@ -85,6 +87,7 @@ class SiteBearings:
     fire: int | None
     rain: int | None
     agreement: Agreement | None = None
+    worst: Array | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -188,7 +191,7 @@ def _site(name: str, states: tuple[SiteState, ...]) -> SiteBearings:
 
 
 def _with_agreement(site: SiteBearings, wind_from: Array, step: float) -> SiteBearings:
-    """A site with how many of its members agree on each direction that is named."""
+    """A site with how many of its members agree on each direction that is named, and which each has for the worst."""
     if all(state.members is None for state in site.states):
         return site
     counts = square_enough(site.states)
@@ -200,6 +203,7 @@ def _with_agreement(site: SiteBearings, wind_from: Array, step: float) -> SiteBe
 
     return replace(
         site,
+        worst=shares_by_direction(site.states, counts, "drying_power"),
         agreement=Agreement(
             warmest=share("warming", site.warmest),
             driest=share("relative_humidity", site.driest, -1.0),

@@ -31,7 +31,7 @@ def stopped_at(number):
 def test_everything_is_gathered(jobs):
     """Whatever the number of processes."""
     work = gathered(abs, range(-5, 0), 5, "Numbers", Workers(jobs, quiet=True))
-    assert work.whole
+    assert work.finished
     assert sorted(one.value for one in work.found) == [1, 2, 3, 4, 5]
 
 
@@ -39,7 +39,7 @@ def test_a_lost_process_leaves_what_was_finished(capfd):
     """The command writes that, then says what was lost."""
     tasks = (number for number in range(200))
     work = gathered(lost_at, tasks, 200, "Numbers", Workers(2, quiet=True))
-    assert not work.whole
+    assert not work.finished
     assert 0 < len(work.found) < 200
     with pytest.raises(WorkersError, match="after 7 of 200 numbers, which are written: a process that worked ended"):
         leave_unfinished(work, "7 of 200 numbers")

@@ -76,7 +76,10 @@ def test_every_file_and_that_they_agree(varn, capsys):
     for row, block in zip(rows, results["catchments"], strict=True):
         assert float(row["total_mm"]) == block["total_mm"]
         assert block["total_mm"] == pytest.approx(6.0 * block["mean_mm_per_h"])
+        assert [float(row[f"total_mm_{end}"]) for end in ("low", "high")] == block["range"]["total_mm"]
+        assert block["range"] == block["input_range"]
         assert block["volume_m3"] == pytest.approx(block["total_mm"] * block["area_km2"] * 1000.0, rel=1e-6)
+    assert {"peak_mm_per_h", "windward_share", "drying_ratio", "volume_m3"} <= over["range"].keys() <= over.keys()
     kell, tarn, _ = results["catchments"]
     assert kell["windward_share"] > 0.5 > tarn["windward_share"]
     assert [float(row["map_mm"]) for row in rows_of("g.csv")] == [

@@ -2,13 +2,14 @@
 
 import math
 import re
+from dataclasses import replace
 from datetime import UTC, datetime
 
 import numpy as np
 import pytest
 
 from orolift.report.bearings_page import bearings_page
-from orolift.report.bearings_sure import members_line
+from orolift.report.bearings_sure import agreement_words, members_line
 from orolift.report.figures.roses import roses_figure
 from orolift.report.render import render
 from orolift.report.words import plain
@@ -106,7 +107,7 @@ def test_sentences_carry_ranges_and_agreement(page, four):
 
 
 def test_table_has_ranges_beneath_and_chances(page):
-    """Rain in 3 of 11 members; 7 of 11 cross from south."""
+    """Rain in 3 of 11 members; 7 of 11 cross from south; all have their worst direction in the east, none obliquely."""
     row = page.sites[0].rows[1]
     assert read(row.spans["warming"]) == "+4.0 to +12.0"
     assert read(row.spans["relative_humidity"]) == "26 to 34"
@@ -114,5 +115,15 @@ def test_table_has_ranges_beneath_and_chances(page):
     assert [one.crosses.value for one in page.sites[0].rows] == pytest.approx([1.0, 1.0, 7 / 11, 1.0])
     text = render(page, "bearings.html.jinja")
     assert text.count('class="range-line"') == 2 * 3 * 3  # wide and narrow, three roses, three directions
-    assert "Rain chance" in text
+    assert [one.worst and one.worst.value for one in page.sites[0].rows] == [0.0, 1.0, 0.0, None]
+    assert ">Worst<br>" in text
     assert "Each crossing is worked out once" not in text
+
+
+def test_another_direction_that_is_worst_in_many_members_is_named(four):
+    """Two tenths have it in the south; a twentieth is too few to be named."""
+    (tarn,) = four.sites
+    split = replace(tarn, worst=np.array([0.1, 0.7, 0.2, np.nan]))
+    assert read(agreement_words(split, four)).endswith("100 %. Next for fire is wind from 180°, worst in 20 %.")
+    assert "Next" not in read(agreement_words(replace(tarn, worst=np.array([0.05, 0.9, 0.05, np.nan])), four))
+    assert "Next" not in read(agreement_words(replace(split, fire=None), four))

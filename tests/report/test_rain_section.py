@@ -14,6 +14,7 @@ import shapely
 from rasterio.errors import NotGeoreferencedWarning
 from rasterio.io import MemoryFile
 
+from orolift.crossing.situation import Situation
 from orolift.rain.gauges import gauges_at, rain_at
 from orolift.rain.line import MapLine
 from orolift.rain.over_map import Catchment, map_rain
@@ -22,12 +23,15 @@ from orolift.report.figures.placing import box_of, meet
 from orolift.report.figures.rain_line import NARROW, WIDE, rain_line
 from orolift.report.figures.rain_map import rain_map_figure
 from orolift.report.figures.relief import SEA, SHADOWS, relief
+from orolift.report.quantities import Amount
 from orolift.report.rain import rain_on_line
 from orolift.report.rain_over_map import rain_over_map
 from orolift.report.render import render
 from orolift.report.words import plain
 from orolift.sources.elevation_map import ElevationMap
 from orolift.sources.map_inputs import MapInputs, Mapped
+from orolift.spread.rain_members import rain_members
+from orolift.spread.ranges import range_of
 from orolift.terrain.grid import ElevationGrid
 
 HOURS = 6 * 3600.0
@@ -352,3 +356,26 @@ def test_bands_are_round_in_the_units_of_the_page(named, over):
         rows = (*rain_on_line(crossing, (), units).rows, *rain_over_map(mapped, units).bands)
         edges = np.array([row.lower.value for row in rows]) / step
         np.testing.assert_allclose(edges, np.round(edges), atol=1e-6)
+
+
+def test_the_map_carries_its_ranges(named, with_members):
+    """Heading and sentences, catchments on the map, gauges; without members nothing says what ranges are."""
+    crossing, spread = with_members
+    _, mapped = mapped_rain(named)
+    situation = Situation(crossing.transect, crossing.incoming, crossing.sites, crossing.settings)
+    members = rain_members(spread, situation, crossing, mapped.rain)
+    found = rain_over_map(replace(mapped, members=members))
+    low, high = range_of(members.values["peak_rate"])
+    shown = [part.value for part in found.heading if isinstance(part, Amount)]
+    assert shown == [mapped.rain.peak_rate, min(low, shown[0]), max(high, shown[0])]
+    assert "of the members" in plain(found.sentences[-1], "metric")
+    near, far = found.catchments
+    assert all(near.spans[name] for name in ("rate", "total", "volume"))
+    assert not far.spans
+    ends = [part.value for part in near.spans["total"] if isinstance(part, Amount)]
+    rate = [part.value for part in near.spans["rate"] if isinstance(part, Amount)]
+    assert ends == pytest.approx([HOURS * value for value in rate])
+    assert all(row.spans["on_map"] and row.spans["difference"] for row in found.gauges)
+    bare = rain_over_map(mapped)
+    assert "of the members" not in plain(bare.sentences[-1], "metric")
+    assert not bare.catchments[0].spans

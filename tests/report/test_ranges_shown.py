@@ -2,20 +2,32 @@
 
 from dataclasses import fields, is_dataclass
 
+import numpy as np
 import pytest
 
 from orolift.crossing.rainfall import BANDS
+from orolift.crossing.result import When
+from orolift.fire.chances import with_members as fire_of_members
+from orolift.fire.sites import FireSettings, fire_at_sites
 from orolift.report.quantities import Amount, bare
 from orolift.report.rain import band_step
+from orolift.spread.at_sites import members_at
 
-OTHER = {"lee_wind", "fire", "reading"}
-"""Parts of the page with ranges of their own, or, as the section in numbers, in the small print."""
+OTHER = {"reading"}
+"""Parts of the page in the small print: the section in numbers."""
 ANSWER_ITSELF = {
     "journey.places": "one path of the answer, said in its caption",
     "inputs.levels": "the incoming air as it was given",
     "method.constants": "constants",
     "how_sure.chances": "chances",
     "how_sure.inputs": "standard deviations themselves",
+    "lee_wind.doubt": "a chance",
+    "lee_wind.methods.applies": "chances",
+    "lee_wind.conditions.chance": "chances",
+    "fire.thresholds": "limits, what is missing to them, and chances; values have ranges of their own",
+    "fire.nights.mid_slope_height": "height of the ground",
+    "fire.nights.ridge_height": "height of the ground",
+    "fire.night_remark": "length of the night",
     "rain.rows.lower": "height of the ground",
     "rain.rows.upper": "height of the ground",
     "sites.rows.distance": "where a site lies",
@@ -86,17 +98,28 @@ def beyond_members(crossing):
     return {crossing.flow.break_through_chance, crossing.flow.trapped_wavelength}
 
 
+def fire_with_members(crossing, spread):
+    """Fire weather of the sites, with all that may be given."""
+    settings = FireSettings(previous_code=85.0, drought_index=300.0)
+    roughness = float(np.asarray(crossing.settings.roughness))
+    return tuple(
+        fire_of_members(site, members_at(spread, crossing, air), settings, roughness)
+        for site, air in zip(fire_at_sites(crossing, When(), settings), crossing.lee, strict=True)
+    )
+
+
 def test_every_number_carries_its_range(with_members, page_for):
-    """In sentences, headings, key numbers, panels and tables; zeroes may have a range that reads as zero alone."""
+    """In sentences, headings, key numbers, panels and tables; zeroes and dew may have a range that reads alike."""
     crossing, spread = with_members
-    page = page_for(crossing, spread=spread, fresh=True)
+    page = page_for(crossing, spread=spread, fire=fire_with_members(crossing, spread), fresh=True)
     known = ground_and_case(crossing) | beyond_members(crossing)
     found = []
     for path, words, row in places_of(page):
         for amount in bare_in(words, row, path.rpartition(".")[2]):
             direction = amount.kind == "bearing"
             nothing = not set(bare(amount, "metric")) - set("0. ()")
-            if not (direction or nothing or amount.value in known):
+            dew = amount.kind == "share" and amount.value == 1.0
+            if not (direction or nothing or dew or amount.value in known):
                 found.append((path, amount.kind, amount.value))
     assert found == []
 

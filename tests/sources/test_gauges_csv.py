@@ -111,7 +111,15 @@ def test_catchments_as_csv():
     cells = first.split(",")
     assert cells[0] == '"\'=Tarn"'
     np.testing.assert_allclose([float(c) for c in cells[1:12]], [25, 100, 2, 12, 3e5, 25, 40, 80, 100, 900, 2000])
-    assert second == '"Far",1.0,0.0,"","","","","","","","","","Outside."'
+    nothing = '"",' * (len(CATCHMENT_HEADER) - 4)
+    assert second == f'"Far",1.0,0.0,{nothing}"Outside."'
+    ranged = catchments_csv([("A", known)], [{"mean_mm_per_h": (1.0, 3.0), "snow_share": (0.1, 0.5)}]).splitlines()[1]
+    row = dict(zip(CATCHMENT_HEADER, ranged.split(","), strict=True))
+    assert [row[f"{name}_{end}"] for name in ("mean_mm_per_h", "snow_percent") for end in ("low", "high")] == [
+        *("1.0", "3.0"),
+        *("10.0", "50.0"),
+    ]
+    assert row["windward_percent_low"] == '""'
 
 
 def test_gauges_as_csv(gauges_from):
@@ -119,5 +127,6 @@ def test_gauges_as_csv(gauges_from):
     gauges = gauges_from("name,easting_m,northing_m,total_mm\nA,1,2,10\nB,100,2,20\n")
     compared = GaugeComparison(np.array([12.0, np.nan]), 1, 2.0, 1.2, 2.0, 2.0, None, ())
     lines = gauges_csv(gauges, compared).splitlines()
-    assert lines[1].endswith("10.0,12.0,2.0")
-    assert lines[2].endswith('20.0,"",""')
+    assert lines[1].endswith('10.0,12.0,2.0,"",""')
+    assert lines[2].endswith('20.0,"","","",""')
+    assert gauges_csv(gauges, compared, [{"map_mm": (9.0, 15.0)}, {}]).splitlines()[1].endswith("12.0,2.0,9.0,15.0")

@@ -5,7 +5,7 @@ import math
 import numpy as np
 import pytest
 
-from orolift.spread.agreement import agreeing, reach_of
+from orolift.spread.agreement import agreeing, reach_of, shares_by_direction
 from orolift.spread.bearings import Direction, bearings_of
 from orolift.spread.site_state import SiteMembers, SiteState
 
@@ -77,3 +77,11 @@ def test_two_directions_alike_are_both_the_largest():
 def test_sites_without_members_have_no_agreement():
     found = [Direction(0.0, (SiteState("crossing", warming=1.0),))]
     assert bearings_of(found, ["Tarn"], step=1.0, given=0.0, planned=1).sites[0].agreement is None
+
+
+def test_shares_of_all_directions_add_up():
+    """Each of the four members votes once, in a direction of its own; the fourth left out gives its vote to the third."""
+    np.testing.assert_allclose(shares_by_direction(FOUR, [True] * 5, "warming"), [0.25, 0.25, 0.25, 0.25, 0.0])
+    found = shares_by_direction(FOUR, [True, True, True, False, True], "warming")
+    np.testing.assert_allclose(found, [0.25, 0.25, 0.5, NAN, 0.0])
+    assert np.isnan(shares_by_direction([SiteState("no crossing")], [True], "warming")).all()
