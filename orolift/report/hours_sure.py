@@ -76,6 +76,10 @@ def how_sure(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
     out = [_at_all(site, ranges, zone)]
     if site.dry_winds:
         out.append(_longest(site, ranges, zone))
+    if ranges.lost:
+        out.append(
+            ("In ", Amount(ranges.lost, "plain"), " hours some members could not be worked out; they count nowhere.")
+        )
     for one, found in zip(site.thresholds, ranges.thresholds, strict=True):
         if not one.stretches and found.ever > 0.0:
             share = Amount(found.ever, "share")

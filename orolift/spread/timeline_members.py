@@ -84,6 +84,8 @@ class SiteRanges:
     Attributes
     ----------
     members : int
+    lost : int
+        Hours in which some members, or all, could not be worked out; they count as missing there.
     full, inputs : dict of str to ndarray (n, 2) [SI]
         10 and 90 % of `orolift.spread.hour_members.RANGED`, with the error of the method and without; NaN where there
         is none.
@@ -99,6 +101,7 @@ class SiteRanges:
     """
 
     members: int
+    lost: int
     full: dict[str, Array]
     inputs: dict[str, Array]
     crosses: Array
@@ -165,6 +168,7 @@ def site_ranges(
     ends = np.array([blank if one is None or one.ends is None else one.ends for one in hours])
     return SiteRanges(
         members=count,
+        lost=sum(said == "crossing" and bool((row < 0).any()) for said, row in zip(status, state, strict=True)),
         full={name: ends[:, 0, i] for i, name in enumerate(RANGED)},
         inputs={name: ends[:, 1, i] for i, name in enumerate(RANGED)},
         crosses=np.array([np.nan if one is None else _share(one.crosses[one.crosses >= 0]) for one in hours]),

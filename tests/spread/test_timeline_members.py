@@ -197,3 +197,13 @@ def test_catchment_total_goes_with_the_rain_on_the_line():
     nothing = LineRain(0.0, np.zeros(COUNT, np.float32))
     assert site((STATE, members()), lines=[nothing]).catchments[0].total_range is None
     assert site((STATE, None), lines=[None]).catchments[0].total_range is None
+
+
+def test_members_that_could_not_be_worked_out_count_nowhere_and_are_told():
+    """Of 20 members two are lost in an hour: nine of the other 18 are dry; an hour without any of them is lost, too."""
+    one = members(9)
+    one.crosses[18:] = -1
+    found = site((STATE, one), (STATE, None), (STATE, members(0))).sites[0].ranges
+    assert found.dry_wind.chance[0] == pytest.approx(0.5)
+    assert np.isnan(found.dry_wind.chance[1])
+    assert found.lost == 2
