@@ -25,6 +25,8 @@ if TYPE_CHECKING:
 
 NEAR, NEAR_CLEAR = 4e-5, 4e-4
 """Changes of q, 0.01 K in cloud and 0.1 K outside, up to which saturation is brought along: to 1e-10 and 1e-7."""
+MANY = 500
+"""Places from which on those without cloud are told apart first: with fewer, numpy's calls cost more than sums."""
 _ROUNDS = 3  # so often places that are still far are stepped by themselves, before Newton's method with its bracket
 _FINE = 1e-8  # last step in q of places that are solved by themselves: what is left is its square
 _ALL_ICE = phase.number(np.log(constants.ALL_ICE_TEMPERATURE / constants.TRIPLE_POINT_TEMPERATURE))
@@ -67,11 +69,26 @@ def air_at(pressure: Array, q: Array, water: Array, *, freezing: bool) -> Air:
 def moved(air: Air, pressure: Array, log_pressure: Array, entropy: Array, *, freezing: bool) -> Air:
     """The same air, of known entropy, at a pressure that is not far from its own."""
     log_all, clear_q = equilibrium.without_cloud(log_pressure, entropy, air.water)
+    goal = _Goal(entropy, log_all, clear_q)
+    if air.q.size < MANY:
+        return _moved_in_cloud(air, pressure, log_pressure, goal, freezing=freezing)
+    clear = _saturated(clear_q, pressure, log_pressure, air.water, freezing=freezing)
+    cloudy = np.flatnonzero(clear.log_saturation < log_all)
+    clear = clear._replace(vapour=air.water.copy())
+    if not cloudy.size:
+        return clear
+    there = Air(*(x.reshape(-1)[cloudy] if x.ndim else x for x in air))
+    s, log_v, q, p, log_p = (x.reshape(-1)[cloudy] for x in (entropy, log_all, clear_q, pressure, log_pressure))
+    some = _moved_in_cloud(there, p, log_p, _Goal(s, log_v, q), freezing=freezing)
+    return _replaced(clear, cloudy, some)
+
+
+def _moved_in_cloud(air: Air, pressure: Array, log_pressure: Array, goal: _Goal, *, freezing: bool) -> Air:
+    """The same air at its goal, where it may be cloud."""
     # first guess: in cloud from the saturation of where it was; cloud only warms
     e = air.pressure * air.saturation / (air.saturation + phase.EPSILON)
     here = air._replace(pressure=pressure, log_pressure=log_pressure, vapour=phase.EPSILON * e / (pressure - e))
-    goal = _Goal(entropy, log_all, clear_q)
-    q = np.maximum(clear_q, air.q + _halley(here, _lack(here, goal)))
+    q = np.maximum(goal.clear_q, air.q + _halley(here, _lack(here, goal)))
     return _settled(_saturated(q, pressure, log_pressure, air.water, freezing=freezing), goal, freezing=freezing)
 
 
@@ -207,7 +224,7 @@ def _far(air: Air, dq: Array, clear: NDArray[np.bool_], *, freezing: bool) -> ND
 
 def _replaced(air: Air, far: NDArray[np.intp], some: Air) -> Air:
     """Air with some places put in."""
-    slope, bend = (np.array(np.broadcast_to(x, air.q.shape)) for x in (air.latent_slope, air.latent_bend))
+    slope, bend = (x.copy() if x.ndim else np.full(air.q.shape, x) for x in (air.latent_slope, air.latent_bend))
     for whole, part in (
         (air.q, some.q),
         (air.t, some.t),

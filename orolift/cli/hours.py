@@ -37,6 +37,14 @@ log = logging.getLogger(__name__)
 @file_option("--results", "Results to write as JSON.")
 @file_option("--netcdf", "Results to write as NetCDF (needs the extra 'netcdf').")
 @click.option("--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page.")
+@click.option(
+    "--members",
+    type=click.IntRange(min=0),
+    default=None,
+    metavar="M",
+    help="How often each hour is worked out for the ranges, 10 or more; 0 leaves them out. Default: as [spread], 32, "
+    "up to 100 hours; none in longer series.",
+)
 @JOBS_OPTION
 @SCHEDULER_OPTION
 @UNITS_OPTION
@@ -47,6 +55,7 @@ def command(
     series: str,
     *,
     folder: str | None,
+    members: int | None,
     jobs: int | None,
     scheduler: str | None,
     units: Units,
@@ -58,7 +67,7 @@ def command(
     SERIES is a CSV table of station values or of sounding files, each row with its time, or NetCDF with times.
     """
     from orolift.cli.folder import planned_files, where
-    from orolift.sources.hours_case import read_hours
+    from orolift.sources.hours_case import read_hours, with_members
     from orolift.spread.timeline import hours_of
 
     outputs = Outputs()
@@ -67,7 +76,7 @@ def command(
         from orolift.sources.hours_netcdf import refuse_without_netcdf
 
         refuse_without_netcdf("--netcdf")
-    setup = read_hours(case, series)
+    setup = with_members(read_hours(case, series), members)
     log.debug("%s and %s read, %d hours", case, series, setup.series.time.size)
     found, stopped = worked(setup, jobs, scheduler, quiet=quiet)
     if not found:
@@ -169,8 +178,9 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
 
 def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[str]:
     """What happened, a line a site and one for the thresholds met at it, for at most five sites."""
-    from orolift.report.hours_page import about, dangers
-    from orolift.report.quantities import NO_BREAK_SPACE, quantity
+    from orolift.report.hours_words import about, dangers, likely_all_the_same, total_rain
+    from orolift.report.quantities import NO_BREAK_SPACE, Amount
+    from orolift.report.spans import ranged
     from orolift.report.words import plain, zone_words
 
     zone = setup.series.zone
@@ -188,12 +198,16 @@ def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[
         ]
         more = f", and {len(site.dry_winds) - 2} more" if len(site.dry_winds) > 2 else ""
         dry = f"descending warm dry air from {', from '.join(spells)}{more}" if spells else "no descending warm dry air"
+        if site.ranges is not None:
+            dry += f" (in {100.0 * site.ranges.dry_wind.ever:.0f} % of the members)"
+        rain = plain(ranged(Amount(site.rain, "water_depth", 0), total_rain(site)), units).replace(NO_BREAK_SPACE, " ")
         lines.append(
-            f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; "
-            f"{quantity(site.rain, 'water_depth', 0, units).replace(NO_BREAK_SPACE, ' ')} of rain and snow"
+            f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; {rain} of rain and snow"
         )
         met = " ".join(plain(words, units) for words in dangers(site, zone)).replace("\u00a0", " ")
         lines += [f"Fire      {met} A threshold met is not a warning."] if met else []
+        doubt = [plain(words, units).replace(NO_BREAK_SPACE, " ") for words in likely_all_the_same(site)]
+        lines += [f"Fire      {' '.join(doubt)}"] if doubt else []
     if len(hours.sites) > 5:
         lines.append(f"          and {len(hours.sites) - 5} more sites: see the report or --table")
     return lines

@@ -18,6 +18,7 @@ from orolift.constants import (
     R_DRY,
     R_VAPOUR,
 )
+from orolift.flow.members import some_points
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -134,17 +135,16 @@ def over(streams: Streams, distance: Array, where: float) -> Here:
     def between(values: Array) -> Array:
         return np.asarray((1.0 - share) * values[number] + share * values[number + 1])
 
-    first, second = streams.place[number], streams.place[number + 1]
-    flow = streams.flow
-    height = (1.0 - share) * flow.heights[..., first] + share * flow.heights[..., second]
-    factor = (1.0 - share) * flow.speed_factor[..., first] + share * flow.speed_factor[..., second]
+    flow = some_points(streams.flow, streams.place[number : number + 2])
+    height = (1.0 - share) * flow.heights[..., 0] + share * flow.heights[..., 1]
+    factor = (1.0 - share) * flow.speed_factor[..., 0] + share * flow.speed_factor[..., 1]
     air = streams.air
     return Here(
         share=share,
         number=number,
         height=height,
         start_height=flow.start_heights,
-        pressure=np.exp(between(np.log(air.pressure))),
+        pressure=np.exp((1.0 - share) * np.log(air.pressure[number]) + share * np.log(air.pressure[number + 1])),
         entropy=between(air.entropy),
         temperature=between(air.temperature),
         vapour=between(air.vapour),
@@ -155,7 +155,11 @@ def over(streams: Streams, distance: Array, where: float) -> Here:
 
 def sampled(levels: Array, values: Array, heights: Array) -> Array:
     """Values (m, nz) given at levels (m, nz), at heights (m, q), by straight lines; ends beyond."""
-    return np.stack([np.interp(z, level, row) for z, level, row in zip(heights, levels, values, strict=True)])
+    above = np.sum(levels[:, np.newaxis, :] <= heights[:, :, np.newaxis], axis=-1)
+    index, rows = np.clip(above, 1, levels.shape[-1] - 1), np.arange(levels.shape[0])[:, np.newaxis]
+    low, high = levels[rows, index - 1], levels[rows, index]
+    share = np.clip((heights - low) / (high - low), 0.0, 1.0)
+    return np.asarray((1.0 - share) * values[rows, index - 1] + share * values[rows, index])
 
 
 def frozen_temperature(pressure: Array, temperature: Array, vapour: Array, cloud: Array, target: Array) -> Array:
@@ -218,8 +222,8 @@ def arrival(
     -----
     The budget is worked out at the height of the site at the pressure of the
     incoming air there, state by state: incoming air, source air brought dry,
-    the same after mixing before the range, after all phase changes (their effect on the temperature
-    at the site added up step by step along the way), parts mixed by mass in enthalpy and water, heated;
+    the same after mixing before the range, after all phase changes on the way (each is counted by what it
+    changes at the site), parts mixed by mass in enthalpy and water, heated;
     last the move to the lee pressure. Each part is the difference that its own
     step makes.
     """
@@ -347,7 +351,7 @@ def _crossing_parts(streams: Streams, here: Here, height: Array, target: Array) 
     )
     low = slice(0, count)
     levels = here.height[:, low]
-    source, start, air = streams.source, streams.start, streams.air
+    source, start = streams.source, streams.start
 
     def brought(parcel: Parcel) -> Array:
         return frozen_temperature(parcel.pressure, parcel.temperature, parcel.vapour, parcel.cloud, target)
@@ -356,21 +360,15 @@ def _crossing_parts(streams: Streams, here: Here, height: Array, target: Array) 
     share = np.where(streams.mixed, streams.mass, 0.0)
     layer = np.sum(share * source_t, axis=-1, keepdims=True) / np.sum(share, axis=-1, keepdims=True)
     source_t = np.where(streams.mixed, layer, source_t)[:, low]
-    way = slice(0, here.number + 1)
-    along = frozen_temperature(
-        air.pressure[way, :, low], air.temperature[way, :, low], air.vapour[way, :, low], air.cloud[way, :, low], target
-    )
-    # the last bit of the way ends between two places of the march
-    last = frozen_temperature(
+    arrived = frozen_temperature(
         here.pressure[:, low], here.temperature[:, low], here.vapour[:, low], here.cloud[:, low], target
     )
-    tally = np.sum(np.diff(np.concatenate([mixed_t[np.newaxis], along, last[np.newaxis]]), axis=0), axis=0)
     return _Parts(
         start=sampled(levels, here.start_height[:, low], height),
         source=sampled(levels, source_t, height),
         mixed=sampled(levels, mixed_t, height),
-        latent=sampled(levels, tally, height),
-        arrived=sampled(levels, last, height),
+        latent=sampled(levels, arrived - mixed_t, height),
+        arrived=sampled(levels, arrived, height),
         vapour=sampled(levels, here.vapour[:, low], height),
         cloud=sampled(levels, here.cloud[:, low], height),
     )

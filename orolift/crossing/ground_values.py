@@ -23,7 +23,7 @@ from orolift.crossing.result import When
 from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import PROFILE
 from orolift.crossing.solve import solve
-from orolift.crossing.way import cloud_water, cover_on_the_way, overcast, travel_times
+from orolift.crossing.way import cloud_water, cover_on_the_way
 from orolift.crossing.wind import NEAR_GROUND
 from orolift.flow.surface_wind import wind_near_ground
 from orolift.terrain.features import features
@@ -308,7 +308,7 @@ def _ground_changes(
         values.reshape(places, levels, -1) for values in (air.pressure, air.temperature, air.vapour)
     )
     own = slice(one.number, one.number + 1)
-    times, cloudy = travel_times(one.ground, solution)[own], overcast(one.ground, solution)[own]
+    times, cloudy = solution.travel_times[own], solution.overcast[own]
     way = np.interp(distance[is_lee], one.ground.transect.distance, times[0])
     cover = cover_on_the_way(times[:, solution.streams.place], cloudy, way[np.newaxis])[0] if cloudy.any() else None
     heat = surface_heat(

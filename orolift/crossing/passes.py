@@ -15,7 +15,8 @@ from orolift.crossing.march import March, march
 from orolift.crossing.settings import each
 from orolift.crossing.start import undisturbed_pressure
 from orolift.flow.airflow import Airflow, airflow, highest_pressure, joined
-from orolift.flow.members import together
+from orolift.flow.members import some_points, together
+from orolift.flow.scales import LEAST_WIND
 from orolift.flow.streamlines import join_weight
 
 if TYPE_CHECKING:
@@ -30,15 +31,17 @@ CREST_CLOUD = 500.0
 """Streamlines that start up to this far above the crest [m] count for where cloud ends in the lee; a judgement."""
 SLOWEST = 1.0
 """Wind [m s-1] below which time along a streamline is counted with this."""
-EARLY_POINTS, EARLY_PLACES = 256, 64
-"""Points of the transect and places of the march in all passes but the last: they only find where cloud is."""
+EARLY_PLACES = 64
+"""Places of the march, and of the flow, in all passes but the last: they only find where cloud is."""
 EARLY_SHARE = 0.4
 """Share of the condensed water that early passes let fall where rain is worked out only in the last; a judgement."""
 MOST_PLACES = 256
 """Places of the march in the last pass: the removal of a prescribed share is then good to 0.02 K, and steps of some
 tens of seconds are short against a cloud time of 1000 s."""
-TOGETHER = 16
-"""Members whose flow is worked out together."""
+TOGETHER = 18
+"""Most members whose flow is worked out together: those whose waves are about equally short."""
+LOW = 5000.0
+"""Depth above the lowest streamline [m] in which they are told apart: that of `flow.waves`."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -57,6 +60,12 @@ class Setup:
     start: Parcel
     saturates: Array
     settings: Settings
+
+    def places(self, *, early: bool) -> NDArray[np.intp]:
+        """Points of the transect at which air is marched, the crest and both ends among them."""
+        size = self.distance.size
+        stride = size // EARLY_PLACES if early else -(-size // MOST_PLACES)
+        return np.union1d(np.arange(0, size, max(1, stride)), [self.crest, size - 1])
 
 
 @dataclass(frozen=True, eq=False)
@@ -121,14 +130,17 @@ def renewed(whole: Pass, some: Pass, which: NDArray[np.intp]) -> Pass:
 
 
 def next_pass(setup: Setup, dry: Airflow, before: Pass, carried: Array, *, early: bool = False) -> Done:
-    """One pass: the flow with the saturation of the pass before, and the air marched through it."""
-    members, size = setup.blocked_top.size, setup.distance.size
+    """One pass: the flow with the saturation of the pass before, and the air marched through it.
+
+    An early pass takes the dry flow at its places, and works out no other.
+    """
+    members = setup.blocked_top.size
     end = np.full(members, setup.distance[setup.crest]) if before.end is None else before.end
-    flow = _flow(setup, dry, before.share, end)
-    stride = size // EARLY_PLACES if early else -(-size // MOST_PLACES)
-    place = np.union1d(np.arange(0, size, max(1, stride)), [setup.crest, size - 1])
-    pressure, change = _pressure(setup, flow, place, before)
-    air, falling = _marched(setup, flow, carried, place, np.moveaxis(pressure, -1, 0), early=early)
+    place = setup.places(early=early)
+    flow = _flow(setup, dry, before.share, end, place if early else None)
+    here = flow if early else some_points(flow, place)
+    pressure, change = _pressure(setup, here, place, before)
+    air, falling = _marched(setup, here, carried, place, np.moveaxis(pressure, -1, 0), early=early)
     first = before.theta_v is None
     found = _saturated_share(air, setup.start, setup.saturates, place <= setup.crest)
     theta_v = virtual_temperature(air.temperature, air.vapour, air.cloud) / air.pressure**KAPPA
@@ -153,10 +165,10 @@ def _marched(
         share = each(EARLY_SHARE if settings.removed_share is None else settings.removed_share, members)
         air = march(setup.start, pressure, share[:, np.newaxis], freezing=settings.freezing)
         return air, None if early else fallen_at_once(air, carried, freezing=settings.freezing)
-    slowness = 1.0 / np.maximum(flow.start_wind[..., np.newaxis] * flow.speed_factor[..., place], SLOWEST)
+    slowness = 1.0 / np.maximum(flow.start_wind[..., np.newaxis] * flow.speed_factor, SLOWEST)
     time = np.zeros(slowness.shape)
     time[..., 1:] = 0.5 * (slowness[..., 1:] + slowness[..., :-1]) * np.diff(setup.distance[place])
-    path = Path(pressure, np.moveaxis(flow.heights[..., place], -1, 0), np.moveaxis(time, -1, 0), carried)
+    path = Path(pressure, np.moveaxis(flow.heights, -1, 0), np.moveaxis(time, -1, 0), carried)
     cloud_time, fall_time = each(settings.cloud_time, members), each(settings.fall_time, members)
     return march_with_rain(setup.start, path, cloud_time, fall_time, freezing=settings.freezing)
 
@@ -169,13 +181,17 @@ def _moved(setup: Setup, heights: Array, before: Array) -> Array:
     return np.asarray(np.max(np.max(change, axis=-1) * low[:, :some], axis=-1))
 
 
-def flow_over(setup: Setup, n_squared: Array) -> Airflow:
+def flow_over(setup: Setup, n_squared: Array, at: NDArray[np.intp] | None = None) -> Airflow:
     """Flow with one profile of stability, for some members at a time: their arrays stay in the processor's cache."""
     upwind, members = setup.upwind, setup.blocked_top.size
 
-    def part(x: Array, which: slice) -> Array:
+    def part(x: Array, which: NDArray[np.intp]) -> Array:
         return x[which] if x.shape[0] == members else x
 
+    height, lowest = upwind.height, setup.heights[:, :1]
+    low = (height >= lowest) & (height <= lowest + LOW)
+    scorer = np.max(np.where(low, n_squared, 0.0) / np.maximum(upwind.wind, LEAST_WIND) ** 2, axis=-1)
+    rows = np.array_split(np.argsort(scorer), -(-members // TOGETHER))
     return together(
         [
             airflow(
@@ -189,20 +205,23 @@ def flow_over(setup: Setup, n_squared: Array) -> Airflow:
                 blocked_top=setup.blocked_top[which],
                 pool_top=None if setup.pool_top is None else setup.pool_top[which],
                 crest=setup.crest,
+                at=at,
             )
-            for which in (slice(first, first + TOGETHER) for first in range(0, members, TOGETHER))
-        ]
+            for which in rows
+        ],
+        rows,
     )
 
 
-def _flow(setup: Setup, dry: Airflow, share: Array, end: Array) -> Airflow:
+def _flow(setup: Setup, dry: Airflow, share: Array, end: Array, at: NDArray[np.intp] | None) -> Airflow:
     """Flow with the stability of a pass: saturated up to the crest, dry from where the cloud ends."""
     upwind = setup.upwind
     if not share.any():
         return dry
     on_levels = np.stack([np.interp(upwind.height, z, s) for z, s in zip(setup.heights, share, strict=True)])
-    moist = flow_over(setup, (1.0 - on_levels) * upwind.dry + on_levels * upwind.moist)
-    return joined(moist, dry, join_weight(setup.distance, np.full(end.shape, setup.distance[setup.crest]), end))
+    moist = flow_over(setup, (1.0 - on_levels) * upwind.dry + on_levels * upwind.moist, at)
+    distance = setup.distance if at is None else setup.distance[at]
+    return joined(moist, dry, join_weight(distance, np.full(end.shape, setup.distance[setup.crest]), end))
 
 
 def _pressure(setup: Setup, flow: Airflow, place: NDArray[np.intp], before: Pass) -> tuple[Array, Array]:
@@ -211,8 +230,7 @@ def _pressure(setup: Setup, flow: Airflow, place: NDArray[np.intp], before: Pass
     Virtual potential temperature, which hardly changes along a streamline, is carried over from the places of the pass
     before, so that heights between them count in full.
     """
-    start = setup.start
-    heights = flow.heights[..., place]
+    start, heights = setup.start, flow.heights
     undisturbed = undisturbed_pressure(setup.levels, setup.log_pressure, heights)
     if before.theta_v is None:
         return undisturbed, np.ones_like(undisturbed)
@@ -222,7 +240,7 @@ def _pressure(setup: Setup, flow: Airflow, place: NDArray[np.intp], before: Pass
     density = start.pressure[:, -1] / (
         R_DRY * virtual_temperature(start.temperature[:, -1], start.vapour[:, -1], start.cloud[:, -1])
     )
-    top = highest_pressure(flow, start.pressure[:, -1], density)[..., place]
+    top = highest_pressure(flow, start.pressure[:, -1], density)
     crossed = _thickness(heights, virtual)
     # what coarse levels miss of the column is taken from the undisturbed one, where the pressure is known
     level = setup.heights[..., np.newaxis]

@@ -15,8 +15,9 @@ from orolift.crossing.picture import popular_picture, side_of, upwind_ground_air
 from orolift.crossing.pool import pool_air
 from orolift.crossing.result import LeeAir, LeeProfile, SimpleAir, WarmingParts
 from orolift.crossing.settings import each
-from orolift.crossing.way import cover_on_the_way, overcast, travel_times
+from orolift.crossing.way import cover_on_the_way
 from orolift.crossing.wind import site_wind
+from orolift.flow.profiles import value_at
 from orolift.terrain.transect import transect_elevation
 
 if TYPE_CHECKING:
@@ -189,9 +190,9 @@ def _ground_change(
         heating=nothing,
         freezing=settings.freezing,
     )
-    times, line = travel_times(ground, solution), ground.transect
+    times, line = solution.travel_times, ground.transect
     travel = times[:, max(int(np.searchsorted(line.distance, site.distance, side="right")) - 1, 0)]
-    cloudy = overcast(ground, solution)
+    cloudy = solution.overcast
     cover = cover_on_the_way(times[:, solution.streams.place], cloudy, travel) if cloudy.any() else None
     low = air.temperature[:, 0], air.pressure[:, 0]
     heat = surface_heat(when.time, when.longitude, when.latitude, travel, *low, cover=cover)
@@ -212,7 +213,7 @@ def _both(change: GroundChange | None, members: int) -> tuple[Array, Array]:
 def _over_depth(values: Array, depth: Array) -> Array:
     """Mean of values (m, n) given at `PROFILE` over the mixing depth, (m,)."""
     inside = depth[:, np.newaxis] * (np.arange(SAMPLES) + 0.5) / SAMPLES
-    return np.array([np.interp(z, PROFILE, row).mean() for z, row in zip(inside, values, strict=True)])
+    return np.asarray(np.mean(value_at(PROFILE, values, inside), axis=-1))
 
 
 def _profile(

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from functools import cached_property
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -12,6 +13,7 @@ from orolift.crossing.pool import Lee, Pool, pool_under
 from orolift.crossing.settings import DEFAULT_GOING_ROUND, each
 from orolift.crossing.streams import PASSES, Streams, streams
 from orolift.crossing.upwind import ROOM_BELOW_CREST, Blocking, Upwind, blocking, upwind_column
+from orolift.crossing.way import overcast, travel_times
 from orolift.flow.gaps import gap_share, gap_share_from_pass, reach_along_crest
 from orolift.flow.scales import deformation_radius
 
@@ -77,6 +79,16 @@ class Solution:
     going_round: Array
     streams: Streams
     pools: tuple[Pool | None, ...]
+
+    @cached_property
+    def travel_times(self) -> Array:
+        """Time the lowest crossing air takes to every point, as `way.travel_times`; the same for all sites."""
+        return travel_times(self.across, self.streams)
+
+    @cached_property
+    def overcast(self) -> Array:
+        """Cloud cover over the places of the march, as `way.overcast`; the same for all sites."""
+        return overcast(self.across, self.streams)
 
 
 @dataclass(frozen=True, eq=False)

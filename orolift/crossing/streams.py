@@ -2,18 +2,18 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 import numpy as np
 
 from orolift.air.condensation import condensation_point
 from orolift.air.parcel import Parcel
-from orolift.crossing.passes import EARLY_POINTS, Pass, Setup, flow_over, next_pass, renewed, some_of
+from orolift.crossing.passes import Pass, Setup, flow_over, next_pass, renewed, some_of
 from orolift.crossing.start import column_pressure, mass_of_streamlines, start_heights, starting_air
 from orolift.crossing.upwind import LEAST_VAPOUR
 from orolift.flow.boundary import start_level
-from orolift.flow.members import some_members
+from orolift.flow.members import some_members, some_points
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -139,22 +139,21 @@ def streams(
         saturates,
         settings,
     )
-    coarse = _thinned(setup, max(1, distance.size // EARLY_POINTS))
-    dry = flow_over(coarse, upwind.dry)
+    dry = flow_over(setup, upwind.dry)
+    early = some_points(dry, setup.places(early=True))
     carried = _carried(upwind, start, heights, dry.start_wind)
     rows = np.broadcast_to(upwind.lifted_share, (heights.shape[0], upwind.height.size))
     lifted = np.stack([np.interp(z, upwind.height, row) for z, row in zip(heights, rows, strict=True)])
-    state = Pass(dry.heights, distance[:1], np.ones((1, 1, 1)), None, lifted, None, np.full(blocked_top.size, np.inf))
+    state = Pass(early.heights, distance[:1], np.ones((1, 1, 1)), None, lifted, None, np.full(blocked_top.size, np.inf))
     left = np.arange(blocked_top.size)
     for _ in range(passes - 1):
-        part, before = some_of(coarse, left), some_of(state, left)
-        some = next_pass(part, some_members(dry, left), before, carried[left], early=True).known
+        part, before = some_of(setup, left), some_of(state, left)
+        some = next_pass(part, some_members(early, left), before, carried[left], early=True).known
         state = some if left.size == blocked_top.size else renewed(state, some, left)
         left = left[some.moved > SETTLED]
         if not left.size:
             break
     settled = (state.moved <= SETTLED) | (passes < 3)
-    dry = dry if coarse.distance.size == distance.size else flow_over(setup, upwind.dry)
     last = next_pass(setup, dry, state, carried)
     if last.falling is None:
         raise ValueError("the last pass lets rain fall")
@@ -174,16 +173,6 @@ def streams(
         last.falling,
         settled,
     )
-
-
-def _thinned(setup: Setup, every: int) -> Setup:
-    """The same on fewer points of the transect, the crest among them."""
-    if every == 1:
-        return setup
-    part = slice(setup.crest % every, None, every)
-    ground = setup.ground[part].copy()
-    ground[0] = setup.ground[0]  # streamlines start at the same height
-    return replace(setup, distance=setup.distance[part], ground=ground, crest=setup.crest // every)
 
 
 def _carried(upwind: Upwind, start: Parcel, heights: Array, wind: Array) -> Array:

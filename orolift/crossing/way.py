@@ -12,7 +12,7 @@ from orolift.crossing.heat import LONGEST_WAY, STEPS
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
 
-    from orolift.crossing.solve import Ground, Solution
+    from orolift.crossing.streams import Streams
 
     Array = NDArray[np.float64]
 
@@ -28,22 +28,22 @@ drizzle (WMO-No. 8, from memory). Cloud that gives less may be broken, and the c
 real pairs of soundings shading by all of it errs 0.2 to 0.5 K more (docs/accuracy.md). A judgement."""
 
 
-def travel_times(ground: Ground, solution: Solution) -> Array:
+def travel_times(across: Array, streams: Streams) -> Array:
     """Time the lowest crossing air takes from the upwind end of the line to every point of it.
 
     Parameters
     ----------
-    ground : Ground
-    solution : Solution
+    across : ndarray (nx,) [m]
+        Points of the transect, evenly spaced, measured along the range normal.
+    streams : Streams
 
     Returns
     -------
     ndarray (m, nx) [s]
         Counted with at least 1 m/s.
     """
-    line, streams = ground.transect, solution.streams
     wind = streams.wind[:, :1] * streams.flow.speed_factor[:, 0]
-    step = float(line.distance[1] - line.distance[0]) * ground.cosine
+    step = float(across[1] - across[0])
     return np.asarray(np.cumsum(step / np.maximum(wind, SLOWEST), axis=-1))
 
 
@@ -116,13 +116,14 @@ def cloud_water(pressure: ArrayLike, cloud: ArrayLike) -> Array:
     return np.asarray(np.sum(-np.diff(p, axis=-1) * 0.5 * (c[..., 1:] + c[..., :-1]), axis=-1) / GRAVITY)
 
 
-def overcast(ground: Ground, solution: Solution) -> Array:
+def overcast(across: Array, streams: Streams) -> Array:
     """Whether the crossing's own raining cloud covers the sky over places of the line.
 
     Parameters
     ----------
-    ground : Ground
-    solution : Solution
+    across : ndarray (nx,) [m]
+        Points of the transect, measured along the range normal.
+    streams : Streams
 
     Returns
     -------
@@ -134,10 +135,9 @@ def overcast(ground: Ground, solution: Solution) -> Array:
     A place is overcast where 0.5 mm/h of the crossing's rain or snow land and cloud water is above 0.05 kg m-2. Counted
     is the cloud of all streamlines over the place, with what the incoming air brought.
     """
-    streams = solution.streams
     water = cloud_water(streams.air.pressure, streams.air.cloud).T
-    x = ground.transect.distance[streams.place]
-    step = np.diff(x, prepend=x[0] - (x[1] - x[0])) * ground.cosine
+    x = across[streams.place]
+    step = np.diff(x, prepend=x[0] - (x[1] - x[0]))
     rains = (streams.falling.landed / step[:, np.newaxis]).T >= STEADY_RAIN
     return np.where(rains & (water > OVERCAST), 1.0, 0.0)
 

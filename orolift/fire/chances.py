@@ -124,7 +124,8 @@ def member_values(
     members: Mapping[str, ArrayLike],
     settings: FireSettings,
     roughness: float,
-    mixing_height: ArrayLike = np.nan,
+    place: tuple[float, float] | None = None,
+    when: When | None = None,
 ) -> dict[str | WindMeant, Array]:
     """What the thresholds of a region speak of, for each member at a site.
 
@@ -137,8 +138,10 @@ def member_values(
     settings : FireSettings
         With rules.
     roughness : float [m]
-    mixing_height : array_like (m,) or a single value [m]
-        NaN where it is not known.
+    place : (float, float), optional [m above sea level]
+        Height of the site, and of the crest before it; without them the depth of mixing is not known.
+    when : When, optional
+        Time and place, for the depth of mixing.
 
     Returns
     -------
@@ -156,7 +159,9 @@ def member_values(
     arrays, there = _with_air(members)
     out = {key: np.full(there.size, np.nan) for key in wanted}
     if there.any():
-        moved, depth = _weather(weather, arrays), np.broadcast_to(np.asarray(mixing_height), there.shape)[there]
+        moved, depth = _weather(weather, arrays), np.full(int(there.sum()), np.nan)
+        if place is not None and "mixing_height" in wanted:
+            depth = night_values(moved, *place, when or When())["mixing_height"]
         indices = _indices(moved, settings, None, ())
         values = _values(moved, indices, arrays, settings, roughness, mixing_height=depth)
         for key in wanted:

@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Literal
 import numpy as np
 
 if TYPE_CHECKING:
-    from collections.abc import Mapping
+    from collections.abc import Collection, Mapping
 
     from numpy.typing import ArrayLike, NDArray
 
@@ -159,11 +159,33 @@ def rule_met(rule: Rule, values: Mapping[str | WindMeant, ArrayLike]) -> tuple[N
     met, judged : ndarray of bool (...)
         A rule can be judged where every value is known, or a known one already misses its limit.
     """
-    each = [margins(one, values.get(one.quantity, np.nan)) for one in rule.conditions]
-    each = list(np.broadcast_arrays(*each))
-    met = np.all([one >= 0.0 for one in each], axis=0)
-    missed = np.any([one < 0.0 for one in each], axis=0)
-    return np.asarray(met), np.asarray(met | missed)
+    met, missed = rule_parts(rule, values)
+    return met, np.asarray(met | missed)
+
+
+def rule_parts(
+    rule: Rule, values: Mapping[str | WindMeant, ArrayLike], *, without: Collection[str | WindMeant] = ()
+) -> tuple[NDArray[np.bool_], NDArray[np.bool_]]:
+    """Whether members or hours meet some conditions of a rule, and whether they miss one of them.
+
+    Parameters
+    ----------
+    rule : Rule
+    values : mapping of quantity to array_like (...)
+    without : collection of quantities
+        Those whose conditions are left out.
+
+    Returns
+    -------
+    met, missed : ndarray of bool (...)
+        Neither where a value is not known. A rule of which nothing is left is met, with the shape ().
+    """
+    met, missed = np.asarray(True), np.asarray(False)  # noqa: FBT003 (an array of one truth)
+    for one in rule.conditions:
+        if one.quantity not in without:
+            margin = margins(one, values.get(one.quantity, np.nan))
+            met, missed = np.asarray(met & (margin >= 0.0)), np.asarray(missed | (margin < 0.0))
+    return met, missed
 
 
 def judged(

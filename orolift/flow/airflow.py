@@ -29,7 +29,7 @@ FADE_ABOVE_CRITICAL = 2000.0
 
 @dataclass(frozen=True)
 class Airflow:
-    """Air over a transect. Leading axes hold members.
+    """Air over a transect, or over some of its points. Leading axes hold members.
 
     Attributes
     ----------
@@ -42,7 +42,8 @@ class Airflow:
     top_pressure : ndarray, shape (..., nx) [Pa]
         Pressure perturbation at the highest streamline; `highest_pressure` turns it into a pressure.
     boundary : Boundary
-        Lower boundary taken apart; `wave_share` below 1 says the range is too high for linear waves.
+        Lower boundary taken apart, at all points of the transect; `wave_share` below 1 says the range is too
+        high for linear waves.
     start_wind : ndarray, shape (..., nz) [m s-1]
         Wind across the range where the streamlines start, at least 2.5: times `speed_factor` it is the wind.
     compression : ndarray, shape (..., nz) [m-1]
@@ -103,6 +104,7 @@ def airflow(
     crest: int | None = None,
     hydrostatic: bool = False,
     find_trapped: bool = False,
+    at: NDArray[np.intp] | None = None,
 ) -> Airflow:
     """Air over a transect, from an upwind column and a ground line.
 
@@ -129,6 +131,8 @@ def airflow(
         Leave vertical acceleration out of the waves.
     find_trapped : bool
         Also look for trapped waves (one column only).
+    at : ndarray of int, shape (n,), optional
+        Numbers of the points at which streamlines are wanted; all nx of them when left out.
 
     Returns
     -------
@@ -167,11 +171,12 @@ def airflow(
     mean_wind = np.maximum(layer_mean(height, wind, line[..., 0], top), LEAST_WIND)
     boundary = split_boundary(line, n, mean_wind, crest=crest, ground=ground)
     column = layers_of_column(height, density, wind, n_squared, start)
-    field = waves(boundary.wave, spacing, column, hydrostatic=hydrostatic)
+    field = waves(boundary.wave, spacing, column, hydrostatic=hydrostatic, at=at)
+    body = boundary.body if at is None else boundary.body[..., at]
     critical_level = np.take_along_axis(column.edge, column.carrying[..., None], axis=-1)[..., 0]
     wave_shift = _faded(field.displacement, column, critical_level)
     carried = carried_share(boundary, start)
-    shift = carried[..., None] * boundary.body[..., None, :]
+    shift = carried[..., None] * body[..., None, :]
     shift += wave_shift
     lines = streamlines(start, shift, wave_displacement=wave_shift)
     expansion = compression(height, density, n_squared, start)
@@ -179,7 +184,7 @@ def airflow(
         start_heights=start,
         heights=lines.heights,
         breaking=lines.breaking,
-        top_pressure=_top_pressure(field.surface_pressure, lines.heights, carried, boundary.body, column),
+        top_pressure=_top_pressure(field.surface_pressure, lines.heights, carried, body, column),
         boundary=boundary,
         start_wind=np.maximum(value_at(height, wind, start), LEAST_WIND),
         compression=expansion,

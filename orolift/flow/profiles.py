@@ -156,6 +156,10 @@ def _along(values: NDArray[np.float64], index: NDArray[np.intp]) -> NDArray[np.f
     """Elements of the last axis, leading axes broadcast."""
     if values.ndim == 1:
         return np.asarray(values[index])
+    if index.ndim == 1:
+        return np.asarray(values[..., index])
+    if values.ndim == index.ndim == 2 and values.shape[0] == index.shape[0]:  # the usual case, without detours
+        return np.asarray(values[np.arange(index.shape[0])[:, None], index])
     lead = np.broadcast_shapes(values.shape[:-1], index.shape[:-1])
     wide = np.broadcast_to(values, (*lead, values.shape[-1]))
     return np.take_along_axis(wide, np.broadcast_to(index, (*lead, index.shape[-1])), axis=-1)

@@ -30,6 +30,7 @@ _FADING = 2.0  # times the largest Scorer wavenumber: waves as short as this fad
 _FRICTION_SHARE = (
     0.3  # of the Scorer wavenumber: longer waves are not damped; between hydrostatic and trapped, a judgement
 )
+_PIECE = 2**18  # multiplications in one product of matrices, for which no library starts threads
 _TAIL = 1e-6  # share of the energy of the boundary that may be left to the shorter parts
 
 
@@ -41,8 +42,8 @@ class Response:
     ----------
     displacement : ndarray of complex, shape (..., nl + 1, nk) [1]
         At the edges, over that at the lowest edge.
-    impedance : ndarray of complex, shape (..., nl + 1, nk) [Pa m-1]
-        Pressure perturbation over displacement, just above each edge.
+    impedance : ndarray of complex, shape (..., nl + 1, nk) or (..., 1, nk) [Pa m-1]
+        Pressure perturbation over displacement, just above each edge, or the lowest alone.
     """
 
     displacement: NDArray[np.complex128]
@@ -55,11 +56,11 @@ class WaveField:
 
     Attributes
     ----------
-    displacement : ndarray, shape (..., nl + 1, nx) [m]
+    displacement : ndarray, shape (..., nl + 1, n) [m]
         Height of each streamline minus its height upwind; at the lowest edge the boundary itself.
-    surface_pressure : ndarray, shape (..., nx) [Pa]
+    surface_pressure : ndarray, shape (..., n) [Pa]
         Perturbation along the lowest streamline.
-    pressure : ndarray, shape (..., nl + 1, nx), or None [Pa]
+    pressure : ndarray, shape (..., nl + 1, n), or None [Pa]
         Perturbation at all edges, when asked for.
     """
 
@@ -69,7 +70,12 @@ class WaveField:
 
 
 def response(
-    column: Layers, wavenumber: ArrayLike, *, friction: ArrayLike = 0.0, hydrostatic: bool = False
+    column: Layers,
+    wavenumber: ArrayLike,
+    *,
+    friction: ArrayLike = 0.0,
+    hydrostatic: bool = False,
+    aloft: bool = True,
 ) -> Response:
     """Answer of a column to ground of unit height at given wavenumbers.
 
@@ -83,6 +89,8 @@ def response(
         damping over ``k U``.
     hydrostatic : bool
         Leave vertical acceleration out.
+    aloft : bool
+        Whether the impedance is wanted at all edges, not only at the lowest.
 
     Returns
     -------
@@ -117,36 +125,46 @@ def response(
     k = np.atleast_1d(np.asarray(wavenumber))
     slowing = np.asarray((1.0 - 1j * np.atleast_2d(np.asarray(friction, np.float64))) ** 2, np.complex128)
     count = column.density.shape[-1]
-    column, rise = _without_expansion(column)
+    column, growth = _without_expansion(column)
     jump = _edge_jump(column)[..., None]
     jumps = bool(np.any(jump))
     lead = np.broadcast_shapes(column.density.shape[:-1], slowing.shape[:-2])
-    impedance = np.zeros((*lead, count + 1, k.size), np.complex128)
-    ratio = np.ones(impedance.shape, np.complex128)
+    ratio = np.empty((*lead, count + 1, k.size), np.complex128)
+    ratio[..., 0, :] = 1.0
+    impedance = np.zeros(ratio.shape if aloft else (*lead, 1, k.size), np.complex128)
     above = np.zeros((*lead, k.size), np.complex128)
     stops = column.carrying[..., None]
     highest = {count - 1, *(int(one) - 1 for one in np.unique(stops))}
-    for block in _blocks(count, impedance[..., 0, :].size):
+    for block in _blocks(count, above.size):
         parts = _layer_parts(column, block, k, slowing, hydrostatic)
         for j in range(block.stop - 1, block.start - 1, -1):
             step, plus, minus, square, admittance = (part[..., j - block.start, :] for part in parts)
             if j in highest:  # nothing comes back from above
                 last = stops <= j + 1 if j == count - 1 else stops == j + 1
                 above = np.where(last, _open_top(column, j, slowing, admittance), above)
-                impedance[..., j + 1, :] = np.where(last, above, impedance[..., j + 1, :])
+                if aloft:
+                    impedance[..., j + 1, :] = np.where(last, above, impedance[..., j + 1, :])
             with np.errstate(divide="ignore", invalid="ignore"):  # at the resonance of a column without friction
-                share = 1.0 / (plus + above * minus)
+                share = above * minus
+                share += plus
+                np.divide(1.0, share, out=share)
                 np.multiply(step, share, out=ratio[..., j + 1, :])
-                below = impedance[..., j, :] = (square + above * plus) * share
+                below = above * plus
+                below += square
+                below *= share
+            if aloft or j == 0:
+                impedance[..., j, :] = below
             above = below + jump[..., j, :] if jumps else below
     outside = np.arange(count + 1) > stops
-    ratio[outside] = 1.0
-    impedance[outside] = 0.0
-    expansion = np.exp(rise)[..., None]
+    if outside.any():
+        ratio[outside] = 1.0
+        if aloft:
+            impedance[outside] = 0.0
+    ratio[..., 1:, :] *= growth[..., None]
     for i in range(1, count + 1):
         ratio[..., i, :] *= ratio[..., i - 1, :]
-    ratio *= expansion
-    impedance /= expansion**2
+    if aloft:
+        impedance[..., 1:, :] /= np.cumprod(growth, axis=-1)[..., None] ** 2
     return Response(ratio, impedance)
 
 
@@ -160,6 +178,7 @@ def waves(
     padding: float = PADDING,
     shortest: float | None = None,
     all_pressure: bool = False,
+    at: NDArray[np.intp] | None = None,
 ) -> WaveField:
     """Waves over a boundary that ends as high as it starts.
 
@@ -179,9 +198,11 @@ def waves(
     padding : float [m]
         Level ground added to the length.
     shortest : float, optional [m]
-        Shortest wave worked out layer by layer.
+        Shortest wave worked out layer by layer; each member's own when left out.
     all_pressure : bool
         Also give the pressure at every edge.
+    at : ndarray of int, shape (n,), optional
+        Numbers of the points at which waves are wanted; all nx of them when left out.
 
     Returns
     -------
@@ -213,23 +234,24 @@ def waves(
     """
     ground = within("boundary", boundary, -9000.0, 9000.0, "m", "Give metres above the lowest edge.")
     step = float(within("spacing", spacing, 1.0, 1e5, "m", "Give metres."))
-    spectrum, wavenumber, length = _spectrum(ground, step, padding, shortest or _shortest(column))
+    spectrum, wavenumber, last, length = _spectrum(ground, step, padding, shortest or _shortest(column))
     friction = _friction(column, wavenumber, friction_length)
-    answer = response(column, wavenumber, friction=friction, hydrostatic=hydrostatic)
-    count = ground.shape[-1]
+    answer = response(column, wavenumber, friction=friction, hydrostatic=hydrostatic, aloft=all_pressure)
+    points = ground.shape[-1] if at is None else at
+    line = ground if at is None else ground[..., at]
 
     known = answer.displacement
     known *= spectrum[..., None, :]
-    displacement = _over_transect(known, length, count)
-    short = ground[..., None, :] - displacement[..., :1, :]
-    fade = np.exp(-wavenumber[-1] * (column.edge - column.edge[..., :1]))
-    suction = (column.density[..., :1] * column.wind[..., :1] ** 2) * wavenumber[-1]
+    displacement = _over_transect(known, length, points)
+    short = line[..., None, :] - displacement[..., :1, :]
+    fade = np.exp(-last * (column.edge - column.edge[..., :1]))
+    suction = (column.density[..., :1] * column.wind[..., :1] ** 2) * last
     displacement += short * fade[..., None]
-    at_ground = _over_transect(known[..., 0, :] * answer.impedance[..., 0, :], length, count)
+    at_ground = _over_transect(known[..., 0, :] * answer.impedance[..., 0, :], length, points)
     return WaveField(
         displacement=displacement,
         surface_pressure=at_ground - suction * short[..., 0, :],
-        pressure=_over_transect(known * answer.impedance, length, count) if all_pressure else None,
+        pressure=_over_transect(known * answer.impedance, length, points) if all_pressure else None,
     )
 
 
@@ -279,11 +301,10 @@ def _open_top(
 
 
 def _without_expansion(column: Layers) -> tuple[Layers, NDArray[np.float64]]:
-    """Column in which displacement is counted without the expansion of rising air, and that expansion's exponent."""
+    """Column in which displacement is counted without the expansion of rising air, and that expansion in each layer."""
     steps = column.compression * np.diff(column.edge, axis=-1)
-    rise = np.concatenate([np.zeros((*steps.shape[:-1], 1)), np.cumsum(steps, axis=-1)], axis=-1)
-    middle = 0.5 * (rise[..., 1:] + rise[..., :-1])
-    return replace(column, density=column.density * np.exp(2.0 * middle)), rise
+    middle = np.cumsum(steps, axis=-1) - 0.5 * steps
+    return replace(column, density=column.density * np.exp(2.0 * middle)), np.exp(steps)
 
 
 def _blocks(count: int, width: int) -> list[slice]:
@@ -355,10 +376,10 @@ def _low_scorer(column: Layers) -> tuple[NDArray[np.float64], NDArray[np.float64
     return np.where(low, depth, 0.0), np.where(low, np.sqrt(column.n_squared) / column.wind, 0.0)
 
 
-def _shortest(column: Layers) -> float:
-    """Shortest wave to work out layer by layer, for all members."""
-    largest = float(np.max(_low_scorer(column)[1]))
-    return float(np.clip(2.0 * np.pi / max(_FADING * largest, 1e-9), *SHORTEST_WAVE))
+def _shortest(column: Layers) -> NDArray[np.float64]:
+    """Shortest wave to work out layer by layer, (..., 1): each member has its own."""
+    largest = np.max(_low_scorer(column)[1], axis=-1, keepdims=True)
+    return np.asarray(np.clip(2.0 * np.pi / np.maximum(_FADING * largest, 1e-9), *SHORTEST_WAVE))
 
 
 def _friction(column: Layers, wavenumber: NDArray[np.float64], length: float) -> NDArray[np.float64]:
@@ -371,33 +392,67 @@ def _friction(column: Layers, wavenumber: NDArray[np.float64], length: float) ->
 
 
 def _spectrum(
-    ground: NDArray[np.float64], step: float, padding: float, shortest: float
-) -> tuple[NDArray[np.complex128], NDArray[np.float64], int]:
-    """Spectrum of the padded boundary, the wavenumbers worth keeping, and the padded length."""
+    ground: NDArray[np.float64], step: float, padding: float, shortest: ArrayLike
+) -> tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.float64], int]:
+    """Spectrum of the padded boundary, its wavenumbers, the last worth keeping (..., 1), and the padded length.
+
+    Each member keeps its own, so that it does not depend on the others; beyond them its spectrum is zero.
+    """
     length = _fast_length(ground.shape[-1] + int(np.ceil(padding / step)))
     spectrum = np.fft.rfft(ground, n=length, axis=-1)
     wavenumber = np.asarray(2.0 * np.pi * np.fft.rfftfreq(length, step), np.float64)
     energy = np.abs(spectrum) ** 2
     energy = energy / np.maximum(np.sum(energy, axis=-1, keepdims=True), 1e-300)
     tail = np.cumsum(energy[..., ::-1], axis=-1)[..., ::-1]
-    worth = np.any(np.reshape(tail > _TAIL, (-1, tail.shape[-1])), axis=0)
-    count = max(int(np.sum(worth & (wavenumber <= 2.0 * np.pi / shortest))), 2)
-    kept = wavenumber[:count].copy()
+    worth = (tail > _TAIL) & (wavenumber * np.asarray(shortest) <= 2.0 * np.pi)
+    worth[..., :2] = True
+    counts = np.sum(worth, axis=-1, keepdims=True)
+    most = int(np.max(counts))
+    kept = wavenumber[:most].copy()
     kept[0] = 1e-3 * kept[1]
-    return spectrum[..., :count], kept, length
+    return np.where(worth, spectrum, 0.0)[..., :most], kept, kept[counts - 1], length
 
 
-def _over_transect(spectral: NDArray[np.complex128], length: int, count: int) -> NDArray[np.float64]:
-    """Values at the points of the transect, a few levels at a time so that the padded arrays stay in the cache."""
+def _over_transect(
+    spectral: NDArray[np.complex128], length: int, points: int | NDArray[np.intp]
+) -> NDArray[np.float64]:
+    """Values at points, or the first so many, a few levels at a time so that the padded arrays stay in the cache.
+
+    At a few points a few waves are summed up one by one, which is quicker.
+    """
     rows = spectral.reshape(-1, spectral.shape[-1])
+    wanted: slice | NDArray[np.intp] = slice(points) if isinstance(points, int) else points
+    count = points if isinstance(points, int) else points.size
+    if not isinstance(points, int) and 8 * rows.shape[-1] * count <= _PIECE:
+        return _at_points(spectral, _cosines(rows.shape[-1], length, points))
     values = np.empty((rows.shape[0], count))
     for start in range(0, rows.shape[0], 16):
         some = rows[start : start + 16]
         full = np.zeros((some.shape[0], length // 2 + 1), np.complex128)
         full[:, : rows.shape[1]] = some
         full[:, 0] = some[:, 0].real  # the mean: the limit of very long waves of either sign
-        values[start : start + 16] = np.fft.irfft(full, n=length, axis=-1)[:, :count]
+        values[start : start + 16] = np.fft.irfft(full, n=length, axis=-1)[:, wanted]
     return values.reshape(*spectral.shape[:-1], count)
+
+
+def _at_points(spectral: NDArray[np.complex128], cosines: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Product with the cosines, in small pieces: threads would wait more than they work."""
+    rows = spectral.reshape(-1, spectral.shape[-1]).view(np.float64)
+    values = np.empty((rows.shape[0], cosines.shape[-1]))
+    size = _PIECE // cosines.size
+    for start in range(0, rows.shape[0], size):
+        np.matmul(rows[start : start + size], cosines, out=values[start : start + size])
+    return values.reshape(*spectral.shape[:-1], -1)
+
+
+def _cosines(waves: int, length: int, points: NDArray[np.intp]) -> NDArray[np.float64]:
+    """What each real and imaginary part of a spectrum adds at points, (2 nk, n)."""
+    phase = (2.0 * np.pi / length) * (np.outer(np.arange(waves), points) % length)
+    parts = np.stack([np.cos(phase), -np.sin(phase)], axis=1) * (2.0 / length)
+    parts[0] = [[1.0 / length], [0.0]]  # the mean: the limit of very long waves of either sign
+    if 2 * (waves - 1) == length:
+        parts[-1] *= 0.5  # the shortest wave stands for both signs
+    return np.asarray(parts.reshape(2 * waves, -1))
 
 
 def _fast_length(least: int) -> int:

@@ -37,6 +37,10 @@ if TYPE_CHECKING:
     from orolift.crossing.result import Crossing, LeeAir
 
 
+LEAST_SHARE = 0.005
+"""A share below this reads as none."""
+
+
 @dataclass(frozen=True)
 class Briefing:
     """The first thing on the page.
@@ -172,12 +176,12 @@ def _flow(spans: Spans, bearing: float) -> Words:
         start = (*start, f"; within the uncertainty it may also {' or '.join(others)}")
     if not is_blocked(crossing):
         return (*start, *_unblocked(spans))
-    share = flow.going_round_share
+    share, ends = flow.going_round_share, spans.of("going_round_share")
     round_words: Words = (", and none of it comes through gaps or round the ends ",)
-    if share > 0.0:
+    if share > 0.0 or (ends is not None and ends[1] > LEAST_SHARE):
         round_words = (
             "; of the low air behind the range ",
-            *ranged(Amount(share, "share"), spans.of("going_round_share")),
+            *ranged(Amount(share, "share"), ends),
             " comes through gaps or round the ends ",
         )
     return (

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 from urllib.parse import quote
 
 from orolift.report.bearings_sure import with_range
-from orolift.report.hours_page import about
+from orolift.report.hours_words import about
 from orolift.report.index import Link
 from orolift.report.quantities import NO_BREAK_SPACE, Amount
 from orolift.report.words import counted
@@ -171,15 +171,17 @@ def _share(part: int, whole: int) -> Words:
 
 def _hours_cells(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
     """How many hours cross, when descending warm dry air is there, and which thresholds are met."""
+    ranges = site.ranges
     met = [one.rule.name for one in site.thresholds if one.stretches]
+    likely: Words = () if ranges is None else ("; any in ", Amount(ranges.dry_wind.ever, "share"), " of the members")
     named: Words = ("; ".join(met) if met else "none" if site.thresholds else "none given",)
     crossing = _share(site.crossing_hours, len(site.states))
     if not site.dry_winds:
-        return crossing, ("none",), (), (), named
+        return crossing, ("none", *likely), (), (), named
     longest = max(site.dry_winds, key=lambda one: one.last - one.first)
     return (
         crossing,
-        (counted(len(site.dry_winds), "time", "times"),),
+        (counted(len(site.dry_winds), "time", "times"), *likely),
         _time(longest.onset, longest.onset_error, zone, "before what can be judged"),
         _time(longest.end, longest.end_error, zone, "after what can be judged"),
         named,

@@ -8,7 +8,8 @@ from typing import TYPE_CHECKING, Literal
 import numpy as np
 from pydantic import Field
 
-from orolift.sources.hours_results import QUANTITIES, Flags, Numbers, numbers, said
+from orolift.sources.hours_blocks import Flags, Numbers  # noqa: TC001 (pydantic reads them when the models are made)
+from orolift.sources.hours_results import QUANTITIES, numbers, said
 from orolift.sources.result_block import Block
 from orolift.sources.results import CaseBlock, Program, case_block, program
 from orolift.sources.state_ranges import (

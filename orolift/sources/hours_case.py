@@ -17,9 +17,10 @@ from orolift.sources.inputs import read_inputs, situation_of
 from orolift.sources.own_lines import own_lines, sites_of
 from orolift.sources.series import read_series
 from orolift.sources.series_air import reading_of_row, refuse_unfit, table_of_row
-from orolift.sources.spread_model import uncertainty_of
+from orolift.sources.spread_model import drawn_of, uncertainty_of
 from orolift.spread.hours import HourTask, MapGround, OneLine
 from orolift.spread.site_state import SiteState
+from orolift.spread.spread import USUAL_MEMBERS
 from orolift.terrain.features import features
 
 if TYPE_CHECKING:
@@ -34,12 +35,15 @@ if TYPE_CHECKING:
     from orolift.sources.incoming import IncomingReading
     from orolift.sources.inputs import Inputs
     from orolift.sources.series import Series
+    from orolift.spread.spread import Drawn
     from orolift.terrain.features import Features
 
     Array = NDArray[np.float64]
 
 MAP_CELLS = 192
 """Cells of the map of rain along its longer side; one map an hour, and means over catchments need no finer one."""
+USUAL_HOURS = 100
+"""Hours up to which a series has members where nobody says it: four days take a minute or two; a judgement."""
 TURN = math.radians(5.0)
 """Lines over a raster are cut at multiples of this; the wind off the line counts by its component, so that at most
 0.1 % of it is lost."""
@@ -71,6 +75,9 @@ class HourSetup:
     wind_error : float [1]
         Standard deviation of the wind, as a share of it: as [spread] says, else by the kind of the series.
     notes : tuple of str
+    drawn : Drawn or None
+        Members of every hour, with the uncertainty of the case; that of an hour follows from its own row. None for
+        none; see `with_members`.
     """
 
     inputs: Inputs
@@ -84,6 +91,7 @@ class HourSetup:
     ground: MapGround | None
     wind_error: float
     notes: tuple[str, ...]
+    drawn: Drawn | None = None
 
 
 def read_hours(case: str | Path, series: str | Path) -> HourSetup:
@@ -147,6 +155,49 @@ def hours_over(inputs: Inputs, rows: Series) -> HourSetup:
     )
     _refuse_nothing(setup)
     return setup
+
+
+def with_members(setup: HourSetup, members: int | None = None) -> HourSetup:
+    """The hours of a series with members.
+
+    Parameters
+    ----------
+    setup : HourSetup
+    members : int, optional
+        How many; 0 is none. When left out, what [spread] says for series of at most `USUAL_HOURS`, else none.
+
+    Returns
+    -------
+    HourSetup
+        With a note where there are none.
+
+    Raises
+    ------
+    CaseError
+        If the number is out of range.
+    """
+    count = setup.series.time.size
+    if members is None and count > USUAL_HOURS:
+        note = (
+            f"Ranges and chances are left out: the series has more than {USUAL_HOURS} hours, and with members every "
+            f"hour takes twenty to thirty times as long. --members {USUAL_MEMBERS} works them out."
+        )
+        return replace(setup, drawn=None, notes=(*setup.notes, note))
+    drawn = drawn_of(setup.inputs.case, members)
+    if drawn is None:
+        said = "[spread] members = 0" if members is None else "--members 0"
+        note = f"Ranges and chances are left out, as {said} says. --members {USUAL_MEMBERS} works them out."
+        return replace(setup, drawn=None, notes=(*setup.notes, note))
+    return replace(setup, drawn=drawn)
+
+
+def _drawn(setup: HourSetup, row: int) -> Drawn | None:
+    """Members of a row, with the uncertainty of its own kind of air."""
+    if setup.drawn is None:
+        return None
+    table, _ = table_of_row(setup.inputs, setup.series, row)
+    own = setup.inputs.case.model_copy(update={"incoming": table})
+    return replace(setup.drawn, uncertainty=uncertainty_of(own))
 
 
 def _wind_error(inputs: Inputs, series: Series) -> float:
@@ -223,7 +274,7 @@ def hour_task(setup: HourSetup, row: int) -> HourTask:
             tuple(range(len(setup.sites))),
             _distance_on_ridge(setup, reading),
         )
-        return HourTask(row, time, states, (line,), setup.ground, setup.inputs.fire)
+        return HourTask(row, time, states, (line,), setup.ground, setup.inputs.fire, _drawn(setup, row))
     return _over_map(setup, incoming, row)
 
 
@@ -243,7 +294,7 @@ def _over_map(setup: HourSetup, incoming: IncomingAir, row: int) -> HourTask:
         state, line = _line_of_site(setup, incoming, row, number, bearing)
         states.append(state)
         lines += [] if line is None else [line]
-    return HourTask(row, time, tuple(states), tuple(lines), setup.ground, setup.inputs.fire)
+    return HourTask(row, time, tuple(states), tuple(lines), setup.ground, setup.inputs.fire, _drawn(setup, row))
 
 
 def _line_of_site(

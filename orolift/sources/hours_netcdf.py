@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.errors import MissingExtraError
-from orolift.sources.hours_results import QUANTITIES, columns_of, notes_of
+from orolift.sources.hours_results import QUANTITIES, RANGED_KEYS, chances_of, columns_of, notes_of
 
 if TYPE_CHECKING:
     from typing import Any
@@ -18,6 +18,12 @@ if TYPE_CHECKING:
 EPOCH = "seconds since 1970-01-01 00:00:00"
 FILL = 9.96921e36
 """Value of what is missing: the usual one of NetCDF for floats."""
+CHANCES = {
+    "crosses": "share of the members that cross",
+    "rain": "share of the members that cross with 0.1 mm/h or more at the site",
+    "in_pool": "share of the members that cross with the site in a cold pool",
+    "descending_warm_dry": "share of the members with descending warm dry air",
+}
 STATUS = ("crossing", "no crossing", "missing")
 
 
@@ -80,6 +86,7 @@ def hours_netcdf(hours: Hours, setup: HourSetup, version: str) -> bytes:
     name[:] = np.array([site.name for site in hours.sites], dtype=object)
     _numbers(data, hours)
     _flags(data, hours)
+    _ranges(data, hours)
     if hours.catchments:
         data.createDimension("catchment", len(hours.catchments))
         label = data.createVariable("catchment_name", str, ("catchment",))
@@ -118,6 +125,37 @@ def _numbers(data: Any, hours: Hours) -> None:
         made[:] = _filled(np.column_stack([column[one.key] for column in columns]))
     code = _variable(data, "fine_fuel_code", shape, "1", "hourly Fine Fuel Moisture Code")
     code[:] = _filled(np.column_stack([column["fine_fuel_code"] for column in columns]))
+
+
+def _ranges(data: Any, hours: Hours) -> None:
+    """Ends of the ranges and chances of the members; nothing where no site has any."""
+    if all(site.ranges is None for site in hours.sites):
+        return
+    shape = ("time", "site")
+    nothing = np.full((hours.time.size, 2), np.nan)
+
+    def ends(key: str, unit: str, words: str, each: list[Any]) -> None:
+        for i, (end, share) in enumerate((("low", "10"), ("high", "90"))):
+            made = _variable(data, f"{key}_{end}", shape, unit, f"{words}: {share} % of the members")
+            made[:] = _filled(np.column_stack([values[:, i] for values in each]))
+
+    for one, name in RANGED_KEYS:
+        for part, words in (("full", ""), ("inputs", ", by the inputs alone")):
+            each = [
+                nothing if site.ranges is None else getattr(site.ranges, part)[name] * one.factor + one.offset
+                for site in hours.sites
+            ]
+            ends(one.key if part == "full" else f"{one.key}_inputs", one.unit, f"{one.words}{words}", each)
+        data[one.key].ancillary_variables = f"{one.key}_low {one.key}_high"
+    codes = [nothing if site.ranges is None else site.ranges.fine_fuel_code for site in hours.sites]
+    ends("fine_fuel_code", "1", "hourly Fine Fuel Moisture Code", codes)
+    for key, words in CHANCES.items():
+        made = _variable(data, f"chance_{key}", shape, "1", words)
+        made[:] = _filled(
+            np.column_stack(
+                [nothing[:, 0] if site.ranges is None else chances_of(site.ranges)[key] for site in hours.sites]
+            )
+        )
 
 
 def _flags(data: Any, hours: Hours) -> None:

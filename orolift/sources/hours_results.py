@@ -4,26 +4,37 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from datetime import UTC, datetime
-from typing import TYPE_CHECKING, Literal
+from typing import TYPE_CHECKING
 
 import numpy as np
-from pydantic import Field
 
-from orolift.sources.result_block import Block
-from orolift.sources.results import CaseBlock, Program, case_block, program
+from orolift.sources.hours_blocks import (
+    CatchmentHoursBlock,
+    HourColumns,
+    HoursResults,
+    Numbers,
+    SeriesBlock,
+    SiteHoursBlock,
+    StretchBlock,
+    ThresholdBlock,
+    Times,
+)
+from orolift.sources.results import case_block, program
+from orolift.sources.state_ranges import StateRangesBlock, members_block, range_columns
+from orolift.spread.hour_members import RANGED
 from orolift.spread.timeline import values_of
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.sources.hours_case import HourSetup
-    from orolift.spread.timeline import Hours, SiteTimeline, Stretch
+    from orolift.spread.stretches import Stretch
+    from orolift.spread.timeline import Hours, RuleStretches, SiteTimeline
+    from orolift.spread.timeline_members import HappensRange, MaybeEnds, SiteRanges, StretchRange
 
     Array = NDArray[np.float64]
 
 HOURS_VERSION = "1"
-Numbers = list[float | None]
-Flags = list[bool | None]
 
 
 @dataclass(frozen=True)
@@ -82,104 +93,8 @@ QUANTITIES = (
     Quantity("crest_wind_ms", "crest_wind", "m s-1", "wind component across the range at the crest"),
 )
 """Numbers of a site and hour; the fine fuel code and the times come from the timeline."""
-
-
-class SeriesBlock(Block):
-    """The series of incoming air."""
-
-    file: str
-    kind: Literal["station", "sounding", "model"]
-    first_time: str | None
-    last_time: str | None
-    step_s: float = Field(description="usual time between two hours")
-    hours: int = Field(description="hours from the first to the last, gaps included")
-    worked: int = Field(description="hours worked out; fewer when interrupted")
-
-
-class StretchBlock(Block):
-    """A stretch of time in which something holds at a site."""
-
-    first_hour: int = Field(description="number of its first hour in the arrays, from 0")
-    last_hour: int
-    onset: str | None = Field(description="null when it holds from the first hour that is known")
-    onset_error_h: float | None = Field(description="one standard deviation")
-    end: str | None = Field(description="null when it holds to the last hour that is known")
-    end_error_h: float | None
-    unknown_hours: int = Field(description="hours in it of which nothing is known")
-
-
-class ThresholdBlock(Block):
-    """A threshold of the region at a site."""
-
-    rule: str
-    hours_asked: int = Field(description="for how long in a row it must be met")
-    met: Flags = Field(description="hour by hour; null where it cannot be judged")
-    stretches: list[StretchBlock]
-
-
-class HourColumns(Block):
-    """Arrays, one value for each hour, in the order of `time`."""
-
-    time: list[str] = Field(description="upwind, ISO 8601 in UTC")
-    status: list[Literal["crossing", "no crossing", "missing"]]
-    reason: list[str] = Field(description="why there is no crossing; empty where there is one")
-    arrival_time: list[str | None] = Field(description="when the air is at the site; null where it does not arrive")
-    arrival_error_h: Numbers
-    side: list[Literal["windward", "crest", "lee"] | None]
-    temperature_c: Numbers
-    dew_point_c: Numbers
-    relative_humidity_percent: Numbers
-    wind_10m_ms: Numbers
-    gust_ms: Numbers
-    warming_c: Numbers
-    warming_descent_c: Numbers
-    warming_latent_c: Numbers
-    warming_going_round_c: Numbers
-    warming_mixing_c: Numbers
-    warming_surface_heating_c: Numbers
-    warming_pressure_c: Numbers
-    source_level_m: Numbers
-    rain_mm_per_h: Numbers
-    snow_mm_per_h: Numbers
-    crest_wind_ms: Numbers
-    in_cold_pool: Flags
-    breaks_through: Flags = Field(description="null when nothing is known of the lee")
-    descending_warm_dry: Flags
-    fine_fuel_code: Numbers = Field(description="hourly Fine Fuel Moisture Code, carried on; null where not known")
-
-
-class SiteHoursBlock(Block):
-    """One site through the hours."""
-
-    name: str
-    hours: HourColumns
-    dry_winds: list[StretchBlock] = Field(description="with descending warm dry air")
-    thresholds: list[ThresholdBlock] = Field(description="of the rule file; empty without one")
-    rain_mm: float = Field(description="over the hours that cross")
-    crossing_hours: int
-    caught_up_hours: int = Field(description="hours whose air is caught up by faster air behind it")
-
-
-class CatchmentHoursBlock(Block):
-    """One catchment through the hours."""
-
-    name: str
-    rain_mm_per_h: Numbers = Field(description="mean over it, by upwind hour")
-    rain_mm: float = Field(description="over the hours that are known")
-    known_hours: int
-
-
-class HoursResults(Block):
-    """The whole file of hours."""
-
-    schema_version: str
-    orolift: Program
-    case: CaseBlock
-    series: SeriesBlock
-    interrupted: bool = Field(description="whether the work was stopped before its end")
-    sites: list[SiteHoursBlock]
-    catchments: list[CatchmentHoursBlock]
-    notes: list[str]
+RANGED_KEYS = tuple((one, name) for one in QUANTITIES if (name := one.of.replace("parts.", "warming_")) in RANGED)
+"""Of them those with ranges, and the name of each among the members."""
 
 
 def hours_results(hours: Hours, setup: HourSetup) -> HoursResults:
@@ -208,11 +123,16 @@ def hours_results(hours: Hours, setup: HourSetup) -> HoursResults:
             hours=hours.planned,
             worked=time.size,
         ),
+        members=members_block(setup.drawn),
         interrupted=hours.interrupted,
         sites=[_site(site, hours) for site in hours.sites],
         catchments=[
             CatchmentHoursBlock(
-                name=one.name, rain_mm_per_h=numbers(3600.0 * one.rate), rain_mm=one.total, known_hours=one.known_hours
+                name=one.name,
+                rain_mm_per_h=numbers(3600.0 * one.rate),
+                rain_mm=one.total,
+                rain_range_mm=one.total_range,
+                known_hours=one.known_hours,
             )
             for one in hours.catchments
         ],
@@ -266,8 +186,9 @@ def columns_of(site: SiteTimeline) -> dict[str, Array]:
 
 
 def _site(site: SiteTimeline, hours: Hours) -> SiteHoursBlock:
-    states = site.states
+    states, ranges = site.states, site.ranges
     arrives = np.isfinite(site.arrival_error).tolist()
+    lasts = None if ranges is None else ranges.dry_wind.lasts
     return SiteHoursBlock(
         name=site.name,
         hours=HourColumns(
@@ -282,25 +203,73 @@ def _site(site: SiteTimeline, hours: Hours) -> SiteHoursBlock:
             descending_warm_dry=[state.descending for state in states],
             **{key: numbers(values) for key, values in columns_of(site).items()},
         ),
-        dry_winds=[_stretch(one) for one in site.dry_winds],
+        dry_winds=_stretches(site.dry_winds, None if ranges is None else ranges.dry_wind),
         thresholds=[
-            ThresholdBlock(
-                rule=one.rule.name,
-                hours_asked=one.rule.hours,
-                met=[
-                    met if judged else None for met, judged in zip(one.met.tolist(), one.judged.tolist(), strict=True)
-                ],
-                stretches=[_stretch(stretch) for stretch in one.stretches],
-            )
-            for one in site.thresholds
+            _threshold(one, None if ranges is None else ranges.thresholds[number])
+            for number, one in enumerate(site.thresholds)
         ],
+        dry_wind_hours=site.dry_hours / 3600.0,
+        dry_wind_hours_range=None if lasts is None else (lasts[0] / 3600.0, lasts[1] / 3600.0),
+        dry_wind_chance=None if ranges is None else ranges.dry_wind.ever,
         rain_mm=site.rain,
+        rain_range_mm=None if ranges is None else ranges.total_rain,
         crossing_hours=site.crossing_hours,
         caught_up_hours=site.overtaken,
+        ranges=None if ranges is None else _ranges(ranges),
     )
 
 
-def _stretch(one: Stretch) -> StretchBlock:
+def _threshold(one: RuleStretches, ranges: HappensRange | None) -> ThresholdBlock:
+    return ThresholdBlock(
+        rule=one.rule.name,
+        hours_asked=one.rule.hours,
+        met=[met if judged else None for met, judged in zip(one.met.tolist(), one.judged.tolist(), strict=True)],
+        stretches=_stretches(one.stretches, ranges),
+        chance=None if ranges is None else numbers(ranges.chance),
+        chance_of_any=None if ranges is None else ranges.ever,
+    )
+
+
+def _ranges(ranges: SiteRanges) -> StateRangesBlock:
+    full, inputs = (
+        {one.key: _pairs(found[name] * one.factor + one.offset) for one, name in RANGED_KEYS}
+        for found in (ranges.full, ranges.inputs)
+    )
+    return StateRangesBlock(
+        range={**full, "fine_fuel_code": _pairs(ranges.fine_fuel_code)},
+        input_range=inputs,
+        chance={key: numbers(values) for key, values in chances_of(ranges).items()},
+    )
+
+
+def chances_of(ranges: SiteRanges) -> dict[str, Array]:
+    """Chances of every hour, by their names in the files; NaN where there is none.
+
+    Parameters
+    ----------
+    ranges : SiteRanges
+
+    Returns
+    -------
+    dict of str to ndarray (n,) [1]
+    """
+    return {
+        "crosses": ranges.crosses,
+        "rain": ranges.rain,
+        "in_pool": ranges.in_pool,
+        "descending_warm_dry": ranges.dry_wind.chance,
+    }
+
+
+def _pairs(ends: Array) -> list[tuple[float, float] | None]:
+    return [None if low != low else (low, high) for low, high in ends.tolist()]  # noqa: PLR0124 (NaN is not itself)
+
+
+def _stretches(found: tuple[Stretch, ...], ranges: HappensRange | None) -> list[StretchBlock]:
+    return [_stretch(one, None if ranges is None else ranges.stretches[i]) for i, one in enumerate(found)]
+
+
+def _stretch(one: Stretch, members: StretchRange | None) -> StretchBlock:
     return StretchBlock(
         first_hour=one.first,
         last_hour=one.last,
@@ -309,7 +278,17 @@ def _stretch(one: Stretch) -> StretchBlock:
         end=None if one.end is None else iso(one.end),
         end_error_h=None if one.end_error is None else one.end_error / 3600.0,
         unknown_hours=one.unknown,
+        chance=None if members is None else members.chance,
+        onset_range=None if members is None else _times(members.onset),
+        end_range=None if members is None else _times(members.end),
     )
+
+
+def _times(ends: MaybeEnds | None) -> Times | None:
+    if ends is None:
+        return None
+    low, high = (None if end is None else iso(end) for end in ends)
+    return low, high
 
 
 def hour_rows(results: HoursResults) -> tuple[list[str], list[list[object]]]:
@@ -323,16 +302,28 @@ def hour_rows(results: HoursResults) -> tuple[list[str], list[list[object]]]:
     -------
     header : list of str
     rows : list of lists
-        All hours of the first site, then of the next.
+        All hours of the first site, then of the next; columns of ranges and chances where one of them has any.
     """
     keys = list(HourColumns.model_fields)
-    header = ["site", "upwind_time", *keys[1:], "thresholds_met"]
+    more = next((list(range_columns(site.ranges)) for site in results.sites if site.ranges is not None), [])
+    header = ["site", "upwind_time", *keys[1:], "thresholds_met", *more, *(["threshold_chances"] if more else [])]
     rows: list[list[object]] = []
     for site in results.sites:
-        columns = [getattr(site.hours, key) for key in keys]
-        met = ["; ".join(one.rule for one in site.thresholds if one.met[i]) for i in range(len(columns[0]))]
-        rows += [[site.name, *map(said, row)] for row in zip(*columns, met, strict=True)]
+        columns: list[list[object]] = [getattr(site.hours, key) for key in keys]
+        count = len(columns[0])
+        columns.append(["; ".join(one.rule for one in site.thresholds if one.met[i]) for i in range(count)])
+        found = {} if site.ranges is None else range_columns(site.ranges)
+        columns += [list(found.get(key, [None] * count)) for key in more]
+        if more:
+            columns.append([_threshold_chances(site, i) for i in range(count)])
+        rows += [[site.name, *map(said, row)] for row in zip(*columns, strict=True)]
     return header, rows
+
+
+def _threshold_chances(site: SiteHoursBlock, i: int) -> str:
+    """Chance of each threshold in an hour, as text."""
+    found = [(one.rule, one.chance[i]) for one in site.thresholds if one.chance is not None]
+    return "; ".join(f"{rule}: {chance:.3f}" for rule, chance in found if chance is not None)
 
 
 def said(value: object) -> object:

@@ -17,7 +17,8 @@ from orolift.sources.case_model import Case
 from orolift.sources.compare_blocks import CompareResults
 from orolift.sources.compare_results import SCHEMA_VERSION as COMPARE_VERSION
 from orolift.sources.files import write_all
-from orolift.sources.hours_results import HOURS_VERSION, HoursResults
+from orolift.sources.hours_blocks import HoursResults
+from orolift.sources.hours_results import HOURS_VERSION
 from orolift.sources.results import SCHEMA_VERSION, Results
 from orolift.sources.rules_file import RulesFile
 from orolift.sources.spread_model import SpreadTable

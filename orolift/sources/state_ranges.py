@@ -44,8 +44,8 @@ class StateRangesBlock(Block):
     range: dict[str, Ends] = Field(description="key of a column: [10 %, 90 %] of the members")
     input_range: dict[str, Ends] = Field(description="the same by the uncertainty of the inputs alone")
     chance: dict[str, Chances] = Field(
-        description="crosses: of all members; rain (0.1 mm/h or more), in_pool: of those that cross; 0 to 1. "
-        "For wind directions worst_for_fire, too: share of the members whose worst direction it is"
+        description="crosses, of hours descending_warm_dry, of wind directions worst_for_fire (share of the members "
+        "whose worst direction it is): of all members; rain (0.1 mm/h or more), in_pool: of those that cross; 0 to 1"
     )
 
 

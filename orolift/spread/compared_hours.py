@@ -13,7 +13,7 @@ from orolift.spread.estimates import SiteEstimate, estimates_of, site_estimate
 from orolift.spread.explained import Source
 from orolift.spread.hours import when_there
 from orolift.spread.site_state import travel_to
-from orolift.spread.timeline import arrivals
+from orolift.spread.stretches import arrivals
 
 if TYPE_CHECKING:
     from collections.abc import Sequence

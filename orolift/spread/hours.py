@@ -5,14 +5,19 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
+import numpy as np
+
 from orolift.crossing.crossing import crest_component, toward
 from orolift.errors import OroliftError
 from orolift.rain.catchments import catchment_rain
 from orolift.rain.over_map import rates_over_map
+from orolift.spread.hour_members import HourMembers, hour_members
 from orolift.spread.site_state import SiteState, states_of
 from orolift.terrain.features import features
 
 if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
     from orolift.crossing.result import Crossing
     from orolift.crossing.situation import Situation
     from orolift.fire.sites import FireSettings
@@ -91,7 +96,22 @@ class HourTask:
     drawn: Drawn | None = None
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, slots=True, eq=False)
+class LineRain:
+    """Mean rain and snow on the first line of an hour that crosses [kg m-2 s-1], background included.
+
+    Attributes
+    ----------
+    answer : float
+    members : ndarray of float32, (m,)
+        The background alone in members that do not cross.
+    """
+
+    answer: float
+    members: NDArray[np.float32]
+
+
+@dataclass(frozen=True, eq=False)
 class Hour:
     """An hour worked out.
 
@@ -103,12 +123,19 @@ class Hour:
         In the order of the case.
     catchments : tuple of float or None [kg m-2 s-1]
         Mean rate on each; None where it is not known.
+    members : tuple of HourMembers or None
+        Of each site; None in those that were asked for none, or have none. Their states have none: they are put in
+        short here.
+    line_rain : LineRain or None
+        None without members.
     """
 
     number: int
     time: float
     sites: tuple[SiteState, ...]
     catchments: tuple[float | None, ...] = ()
+    members: tuple[HourMembers | None, ...] = ()
+    line_rain: LineRain | None = None
 
 
 def worked_hour(task: HourTask) -> Hour:
@@ -124,14 +151,32 @@ def worked_hour(task: HourTask) -> Hour:
         Hours that cannot be worked out or do not cross say so at their sites.
     """
     states = list(task.states)
+    members: list[HourMembers | None] = [None] * len(states)
     first: Crossing | None = None
+    rain: LineRain | None = None
     for line in task.lines:
         situation = replace(line.situation, when=when_there(line, task.time))
         found, crossing = states_of(situation, line.observed_at, task.fire, task.drawn)
-        first = first or crossing
-        for number, state in zip(line.numbers, found, strict=True):
-            states[number] = state
-    return Hour(task.number, task.time, tuple(states), _catchment_rates(task.ground, first))
+        if first is None and crossing is not None:
+            first, rain = crossing, _line_rain(found[0], crossing)
+        sites = (None,) * len(found) if crossing is None else crossing.lee
+        for number, state, site in zip(line.numbers, found, sites, strict=True):
+            states[number] = replace(state, members=None)
+            members[number] = hour_members(state, site, crossing, task.fire, situation.when)
+    rates = _catchment_rates(task.ground, first)
+    return Hour(task.number, task.time, tuple(states), rates, tuple(members), rain)
+
+
+def _line_rain(state: SiteState, crossing: Crossing) -> LineRain | None:
+    """Mean rain on the line of a crossing, and in its members."""
+    if state.members is None or state.members.line_rain is None:
+        return None
+    rain, x = crossing.rain, crossing.distance
+    length = float(x[-1] - x[0])
+    if crossing.transect.bearing is not None:
+        length *= float(np.cos(crossing.flow.normal - crossing.transect.bearing))
+    each = np.nan_to_num(state.members.line_rain) / length + rain.background
+    return LineRain(rain.total / length + rain.background, each.astype(np.float32))
 
 
 def when_there(line: OneLine, time: float) -> Any:

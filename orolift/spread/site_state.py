@@ -10,6 +10,7 @@ import numpy as np
 from orolift.air.column import interpolated
 from orolift.air.humidity import relative_humidity_from_dew_point
 from orolift.air.temperature import potential_temperature
+from orolift.crossing import layer_above
 from orolift.crossing.descending import warm_and_dry
 from orolift.crossing.members import PARTS
 from orolift.crossing.result import When
@@ -43,6 +44,7 @@ KEPT = (
     *("pressure", "temperature", "dew_point", "relative_humidity", "mixing_ratio", "wind_10m", "gust"),
     *("source_level", "warming", *(f"warming_{name}" for name in PARTS), "rain", "in_pool"),
     *("way", "kept_off", "potential_beside", "potential_crest", "humidity_beside"),
+    *layer_above.NAMES,
 )
 """Arrays of members that are kept of a site."""
 

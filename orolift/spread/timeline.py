@@ -8,8 +8,10 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 
 from orolift.fire.fine_fuel import fine_fuel_code_hourly, initial_spread_index
-from orolift.fire.night import lasting, spells
+from orolift.fire.night import lasting
 from orolift.fire.rules import rule_met
+from orolift.spread.stretches import Stretch, arrivals, stretches
+from orolift.spread.timeline_members import SiteRanges, site_ranges, total_range
 
 if TYPE_CHECKING:
     from collections.abc import Iterable, Sequence
@@ -29,32 +31,6 @@ WIND_ERROR = 0.15
 START_CODE = 85.0
 """Fine Fuel Moisture Code before the first hour when nothing says otherwise: the usual start of a season."""
 HOUR = 3600.0
-
-
-@dataclass(frozen=True)
-class Stretch:
-    """A stretch of time in which something holds at a site.
-
-    Attributes
-    ----------
-    first, last : int
-        Numbers of its first and last hour among those of the timeline.
-    onset, end : float or None [s]
-        Halfway between the arrival of the last hour without and the first with it, and the other way round; None where
-        no hour before or after it is known.
-    onset_error, end_error : float or None [s]
-        One standard deviation.
-    unknown : int
-        Hours in it of which nothing is known.
-    """
-
-    first: int
-    last: int
-    onset: float | None
-    onset_error: float | None
-    end: float | None
-    end_error: float | None
-    unknown: int
 
 
 @dataclass(frozen=True, eq=False)
@@ -101,6 +77,10 @@ class SiteTimeline:
     crossing_hours : int
     overtaken : int
         Hours whose air is caught up by faster air behind it.
+    dry_hours : float [s]
+        With descending warm dry air, all stretches together.
+    ranges : SiteRanges or None
+        None without members.
     """
 
     name: str
@@ -113,6 +93,8 @@ class SiteTimeline:
     rain: float
     crossing_hours: int
     overtaken: int
+    dry_hours: float
+    ranges: SiteRanges | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -127,12 +109,15 @@ class CatchmentTimeline:
     total : float [kg m-2]
         Over the hours that are known.
     known_hours : int
+    total_range : (float, float) or None [kg m-2]
+        10 and 90 % of the total, by the rain on the line; None without members, and where hardly any falls there.
     """
 
     name: str
     rate: Array
     total: float
     known_hours: int
+    total_range: tuple[float, float] | None = None
 
 
 @dataclass(frozen=True, eq=False)
@@ -199,45 +184,47 @@ def hours_of(
     return Hours(
         time=time,
         step=step,
-        sites=tuple(
-            _timeline(name, time, step, tuple(hour.sites[i] for hour in hours), fire, wind_error)
-            for i, name in enumerate(names)
-        ),
-        catchments=tuple(
-            _catchment(name, [hour.catchments[i] if hour.catchments else None for hour in hours], step)
-            for i, name in enumerate(catchments)
-        ),
+        sites=tuple(_timeline(name, i, hours, step, fire, wind_error) for i, name in enumerate(names)),
+        catchments=tuple(_catchment(name, i, hours, step) for i, name in enumerate(catchments)),
         planned=planned,
     )
 
 
 def _timeline(
-    name: str,
-    time: Array,
-    step: float,
-    states: tuple[SiteState, ...],
-    fire: FireSettings | None,
-    wind_error: float,
+    name: str, number: int, hours: Sequence[Hour], step: float, fire: FireSettings | None, wind_error: float
 ) -> SiteTimeline:
+    time, states = np.array([hour.time for hour in hours]), tuple(hour.sites[number] for hour in hours)
     way = values_of(states, "travel.time")
     crosses = np.isfinite(way)
     arrival = arrivals(time, way)
     error = np.hypot(wind_error * way, values_of(states, "travel.spread"))
-    given = None if fire is None else fire.previous_code
-    codes = _codes(states, step, START_CODE if given is None else given)
+    start = START_CODE if fire is None or fire.previous_code is None else fire.previous_code
+    codes = _codes(states, step, start)
     known = np.array([one.status != "missing" for one in states], dtype=np.bool_)
     rules = () if fire is None or fire.rules is None else fire.rules.rules
+    dry_winds = stretches([one.descending is True for one in states], known, arrival, error)
+    thresholds = tuple(_threshold(rule, states, codes, step, arrival, error) for rule in rules)
     return SiteTimeline(
         name=name,
         states=states,
         arrival=arrival,
         arrival_error=error,
         fine_fuel_code=codes,
-        dry_winds=stretches([one.descending is True for one in states], known, arrival, error),
-        thresholds=tuple(_threshold(rule, states, codes, step, arrival, error) for rule in rules),
+        dry_winds=dry_winds,
+        thresholds=thresholds,
         rain=float(np.nansum(values_of(states, "rain"))) * step,
         crossing_hours=int(crosses.sum()),
         overtaken=int((arrival[crosses] < (time + way)[crosses]).sum()),
+        dry_hours=sum(one.descending is True for one in states) * step,
+        ranges=site_ranges(
+            [hour.members[number] if hour.members else None for hour in hours],
+            [one.status for one in states],
+            time,
+            step,
+            start_code=start,
+            dry_winds=dry_winds,
+            rules=[(one.rule, one.stretches) for one in thresholds],
+        ),
     )
 
 
@@ -263,38 +250,6 @@ def _threshold(
     return RuleStretches(rule, enough, judged, stretches(enough.tolist(), judged, arrival, error))
 
 
-def arrivals(time: Array, way: Array) -> Array:
-    """When the air of each hour is at a site, in the order of the hours.
-
-    Parameters
-    ----------
-    time : ndarray (n,) [s]
-        Upwind, increasing.
-    way : ndarray (n,) [s]
-        Time on the way; NaN for air that does not arrive.
-
-    Returns
-    -------
-    ndarray (n,) [s]
-        Never decreasing.
-
-    Notes
-    -----
-    Air that faster air behind it would overtake is pushed by that and arrives with it. Hours whose air does
-    not arrive stand where it would, with the time on the way of the hours around them.
-
-    Examples
-    --------
-    >>> arrivals(np.array([0.0, 3600.0, 7200.0]), np.array([9000.0, 3600.0, np.nan]))
-    array([ 7200.,  7200., 10800.])
-    """
-    known = np.isfinite(way)
-    if not known.any():
-        return np.array(time)
-    there = time + np.interp(time, time[known], way[known])
-    return np.minimum.accumulate(there[::-1])[::-1]
-
-
 def values_of(states: Iterable[SiteState], key: str) -> Array:
     """One number of every state, NaN where there is none.
 
@@ -316,57 +271,6 @@ def values_of(states: Iterable[SiteState], key: str) -> Array:
         return np.nan if found is None else float(found)
 
     return np.array([value(state) for state in states])
-
-
-def stretches(met: Sequence[bool], known: NDArray[np.bool_], arrival: Array, error: Array) -> tuple[Stretch, ...]:
-    """Stretches of time in which something holds at a site, with onset and end.
-
-    Parameters
-    ----------
-    met : sequence of bool, length n
-        Whether it holds in each hour.
-    known : ndarray of bool, (n,)
-        Whether that is known.
-    arrival, error : ndarray (n,) [s]
-        As in `SiteTimeline`.
-
-    Returns
-    -------
-    tuple of Stretch
-        In order.
-
-    Notes
-    -----
-    Hours of which nothing is known neither begin nor end a stretch. The error of onset and end joins half the time
-    between the two hours with that of the travel time: its share that the wind is uncertain by, and its spread between
-    the streamlines that arrive.
-    """
-    order = np.flatnonzero(known)
-    flags = np.asarray(met, dtype=bool)[order]
-
-    def change(before: int, after: int) -> tuple[float, float]:
-        a, b = order[before], order[after]
-        ways = [value for value in (error[a], error[b]) if np.isfinite(value)]
-        way = float(max(ways, default=0.0))
-        return 0.5 * float(arrival[a] + arrival[b]), float(np.hypot(0.5 * (arrival[b] - arrival[a]), way))
-
-    out = []
-    for one in spells(flags):
-        onset = None if one.open_start else change(one.start - 1, one.start)
-        end = None if one.open_end else change(one.end - 1, one.end)
-        first, last = int(order[one.start]), int(order[one.end - 1])
-        out.append(
-            Stretch(
-                first=first,
-                last=last,
-                onset=None if onset is None else onset[0],
-                onset_error=None if onset is None else onset[1],
-                end=None if end is None else end[0],
-                end_error=None if end is None else end[1],
-                unknown=int((~known[first : last + 1]).sum()),
-            )
-        )
-    return tuple(out)
 
 
 def _codes(states: Sequence[SiteState], step: float, start_code: float) -> Array:
@@ -397,6 +301,10 @@ def _codes(states: Sequence[SiteState], step: float, start_code: float) -> Array
     return codes
 
 
-def _catchment(name: str, rates: Sequence[float | None], step: float) -> CatchmentTimeline:
-    rate = np.array([np.nan if one is None else one for one in rates], dtype=np.float64)
-    return CatchmentTimeline(name, rate, float(np.nansum(rate)) * step, int(np.isfinite(rate).sum()))
+def _catchment(name: str, number: int, hours: Sequence[Hour], step: float) -> CatchmentTimeline:
+    found = [hour.catchments[number] if hour.catchments else None for hour in hours]
+    rate = np.array([np.nan if one is None else one for one in found], dtype=np.float64)
+    known = np.isfinite(rate)
+    total = float(np.nansum(rate)) * step
+    lines = [hour.line_rain for hour, sure in zip(hours, known, strict=True) if sure]
+    return CatchmentTimeline(name, rate, total, int(known.sum()), total_range(total, lines))

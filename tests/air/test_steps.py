@@ -50,6 +50,25 @@ def alike(found, expected):
     assert ((found.water > found.vapour) <= (expected.cloud > -1e-10)).all()
 
 
+@pytest.mark.parametrize("freezing", [True, False])
+def test_many_places_are_solved_as_few_are(freezing):
+    """Told apart into cloud and none first, or not: up and down through cloud base; what was given stays as it was."""
+    parcel, air = scaled(parcels(272.0, 1.0), freezing)
+    times = -(-steps.MANY // PLACES)
+    many = steps.Air(*(np.tile(x, times) if x.ndim else x for x in air))
+    s = entropy(parcel, freezing=freezing) * equilibrium.PER_RV
+    for rise in (-3000.0, -300.0, 300.0):
+        p = (parcel.pressure + rise) * equilibrium.PER_TRIPLE_PRESSURE
+        few = steps.moved(air, p, np.log(p), s, freezing=freezing)
+        p, water = np.tile(p, times), many.water.copy()
+        found = steps.moved(many, p, np.log(p), np.tile(s, times), freezing=freezing)
+        assert 0 < np.sum(few.water > few.vapour) < PLACES
+        assert np.array_equal(many.water, water)
+        for name in ("q", "vapour"):
+            np.testing.assert_allclose(getattr(found, name), np.tile(getattr(few, name), times), atol=1e-11, rtol=0.0)
+        np.testing.assert_allclose(found.log_saturation, np.tile(few.log_saturation, times), atol=1e-6, rtol=0.0)
+
+
 @settings(max_examples=40)
 @given(**MARCH)
 def test_a_move_keeps_entropy(warm, humidity, rise, freezing):

@@ -1,5 +1,6 @@
 """Hours of a series: what one costs beside a crossing with its ends, and memory that does not grow with their number."""
 
+import pickle
 import subprocess
 import sys
 import time
@@ -9,7 +10,7 @@ from pathlib import Path
 import pytest
 
 from orolift.crossing.situation import crossing_of
-from orolift.sources.hours_case import hour_task, read_hours
+from orolift.sources.hours_case import hour_task, read_hours, with_members
 from orolift.spread.hours import worked_hour
 
 pytestmark = pytest.mark.speed
@@ -56,6 +57,20 @@ def test_an_hour_beside_a_crossing_with_its_ends():
     )
     print(f"{1 / hour:.1f} hours a second on one core; a year on two cores {8760 * hour / 2 / 60:.1f} min")
     assert hour <= 1.2 * whole
+
+
+def test_members_of_an_hour():
+    """32 members, marched together, cost no more than 48 hours on a busy machine; and what is kept of them is a few kilobytes a site."""
+    setup = read_hours(DEMO / "varn_hours.toml", DEMO / "varn_hours.csv")
+    rows = [row for row in range(setup.series.time.size) if row not in setup.series.faults][8:14]
+    alone, many = ([hour_task(one, row) for row in rows] for one in (setup, with_members(setup, 32)))
+    worked_hour(alone[0])
+    hour, members = cpu(worked_hour, alone), cpu(worked_hour, many)
+    size = len(pickle.dumps(worked_hour(many[0]))) / len(setup.sites)
+    print(f"\nan hour {hour:.3f} s of processor, with 32 members {members:.2f} s: {members / hour:.0f} times as much")
+    print(f"{size / 1000:.1f} kB a site and hour")
+    assert members <= 48 * hour
+    assert size < 4000
 
 
 def test_memory_does_not_grow_with_the_hours():

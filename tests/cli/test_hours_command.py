@@ -63,12 +63,12 @@ def checked_page(file, figures):
 
 def test_hours_write_all_their_files(series_folder, capsys):
     """Four rows and the hour between the last two make five; one crosses not, one contradicts itself."""
-    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", *ALL]) == 0
+    assert exit_code(["hours", "case.toml", "series.csv", "--members", "10", "--jobs", "1", *ALL]) == 0
     said = capsys.readouterr().out
     assert "2 of 5 hours cross" in said
     assert re.search(r"\(times in UTC\S*\)", said.splitlines()[0])
     assert not re.search(r"20\d\d, \d\d:\d[1-9]", said)  # no finer than ten minutes: the air's way is not known so well
-    assert "mm of rain and snow" in said
+    assert re.search(r"mm( \(\d+ to \d+\))? of rain and snow", said)
     results = json.loads((series_folder / "r.json").read_text())
     assert [*jsonschema.Draft202012Validator(hours_schema()).iter_errors(results)] == []
     hours = results["sites"][0]["hours"]
@@ -85,12 +85,28 @@ def test_hours_write_all_their_files(series_folder, capsys):
     assert "UTC+01:00" in text
     assert "Lower Tarn" in text
     assert "has no row for this hour" in hours["reason"][3]
+    ranges = results["sites"][0]["ranges"]
+    low, high = ranges["range"]["temperature_c"][0]
+    assert low < hours["temperature_c"][0] < high
+    inside = ranges["input_range"]["temperature_c"][0]
+    assert low <= inside[0] < inside[1] <= high
+    assert ranges["range"]["temperature_c"][1:4] == [None, None, None]
+    assert ranges["chance"]["crosses"][0] == 1.0
+    assert ranges["chance"]["crosses"][2:4] == [None, None]
+    assert (float(rows[0]["temperature_c_low"]), float(rows[0]["temperature_c_inputs_high"])) == (low, inside[1])
+    assert rows[2]["temperature_c_low"] == rows[2]["chance_rain"] == ""
+    assert results["members"] == {"members": 10, "seed": 1}
+    assert "of 10 members" in re.sub("<[^>]+>", "", text)
+    assert "members)" in said
 
 
 def test_netcdf_of_hours_follows_the_conventions(series_folder):
     """Units, standard names and fill values as CF has them; times in seconds since 1970."""
     netcdf4 = pytest.importorskip("netCDF4")
-    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", "--quiet", "--netcdf", "n.nc"]) == 0
+    assert (
+        exit_code(["hours", "case.toml", "series.csv", "--members", "10", "--jobs", "1", "--quiet", "--netcdf", "n.nc"])
+        == 0
+    )
     with netcdf4.Dataset(series_folder / "n.nc") as data:
         assert data.Conventions == "CF-1.11"
         temperature = data["temperature_c"]
@@ -100,6 +116,23 @@ def test_netcdf_of_hours_follows_the_conventions(series_folder):
         assert netcdf4.num2date(data["time"][0], data["time"].units).isoformat() == "2026-11-02T23:00:00"
         assert data["status"].flag_meanings.split()[int(data["status"][1, 0])] == "no_crossing"
         assert data["site_name"][0] == "Lower Tarn"
+        low, high = (data[name][0, 0] for name in temperature.ancillary_variables.split())
+        assert low < temperature[0, 0] < high
+        assert data["temperature_c_low"][:].mask[:, 0].tolist() == [False, True, True, True, False]
+        assert 0.0 <= data["chance_descending_warm_dry"][0, 0] <= 1.0
+
+
+def test_without_members_no_file_speaks_of_them(series_folder, capsys):
+    """No columns, null in JSON, a note on the page that says how to have them, and the old caution."""
+    files = ["--table", "t.csv", "--results", "r.json", "--report", "page.html"]
+    assert exit_code(["hours", "case.toml", "series.csv", "--members", "0", "--jobs", "1", *files]) == 0
+    results = json.loads((series_folder / "r.json").read_text())
+    assert results["members"] is results["sites"][0]["ranges"] is None
+    assert "_low" not in (series_folder / "t.csv").read_text().splitlines()[0]
+    text = (series_folder / "page.html").read_text()
+    assert "--members 32 works them out" in text
+    assert "Each crossing is worked out once" in text
+    assert "members" not in capsys.readouterr().out
 
 
 @pytest.fixture
@@ -125,7 +158,9 @@ def stopped(monkeypatch):
 def test_finished_hours_are_written_on_ctrl_c(series_folder, stopped, capsys):
     """The files say that they hold a part, and the exit code that the work was interrupted."""
     stopped(hours_command, 3)
-    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", "--results", "r.json"]) == 130
+    assert (
+        exit_code(["hours", "case.toml", "series.csv", "--members", "10", "--jobs", "1", "--results", "r.json"]) == 130
+    )
     assert "interrupted after 3 of 5 hours; what was finished is written" in capsys.readouterr().err
     results = json.loads((series_folder / "r.json").read_text())
     assert results["interrupted"] is True
@@ -166,6 +201,7 @@ def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, ca
             "series.csv is an input of this run (series)",
         ),
         (["bearings", "case.toml", "--results", "case.toml"], "case.toml is an input of this run (case)"),
+        (["hours", "case.toml", "series.csv", "--members", "5"], "--members 5: fewer than 10 have no range"),
         (["hours", "case.toml", "none.csv"], "series: none.csv cannot be found"),
         (["hours", "case.toml", "case.toml"], "case.toml: line 1"),
         (["bearings", "case.toml", "--step", "7"], "--step 7: it must divide 360"),
@@ -275,7 +311,7 @@ THREE_HOURS = "".join(SERIES.splitlines(keepends=True)[:4])
     ("arguments", "kinds", "heads"),
     [
         (
-            ["hours", "case.toml", "series.csv"],
+            ["hours", "case.toml", "series.csv", "--members", "0"],
             {"html", "json", "csv", "nc"},
             ["Site", "Hours that cross", "Descending warm dry air", "Onset", "End", "Thresholds met"],
         ),
@@ -324,7 +360,10 @@ def test_folder_without_the_extra_leaves_netcdf_out(series_folder, monkeypatch):
     """What cannot be written is not linked either."""
     monkeypatch.setitem(sys.modules, "netCDF4", None)
     (series_folder / "series.csv").write_text(THREE_HOURS)
-    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", "--quiet", "--folder", "out"]) == 0
+    assert (
+        exit_code(["hours", "case.toml", "series.csv", "--members", "0", "--jobs", "1", "--quiet", "--folder", "out"])
+        == 0
+    )
     assert {path.suffix for path in (series_folder / "out").iterdir()} == {".html", ".json", ".csv"}
     assert "NetCDF" not in (series_folder / "out" / "index.html").read_text()
 

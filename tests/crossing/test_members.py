@@ -8,10 +8,12 @@ import pytest
 from orolift.air.column_build import air_from_station
 from orolift.air.column_change import with_values
 from orolift.air.humidity import mixing_ratio_from_dew_point
+from orolift.crossing.arrival import sampled
 from orolift.crossing.pool import Lee
 from orolift.crossing.settings import Settings
 from orolift.crossing.solve import Ground, solve
 from orolift.flow import members as members_module
+from orolift.flow.airflow import highest_pressure
 from orolift.terrain.features import features
 from orolift.terrain.ridge import ridge_transect
 
@@ -44,24 +46,42 @@ def together(setting):
 
 @pytest.mark.parametrize("member", range(3))
 def test_a_member_is_as_it_would_be_alone(setting, together, member):
-    """Temperature to 0.02 K, rain to 0.5 %: the waves worked out are those that any of the members needs."""
+    """Temperature to 1e-4 K, rain to 1e-5: each member has its own shortest wave, and settles by itself."""
     ground, air = setting
     one = with_values(air, temperature=air.temperature + WARMER[member])
     alone = solve(ground, one, settings_of(slice(member, member + 1)), Lee(), streamlines=40).streams
     found = together.streams
     assert np.array_equal(found.place, alone.place)
-    np.testing.assert_allclose(found.air.temperature[:, member], alone.air.temperature[:, 0], atol=0.02)
-    np.testing.assert_allclose(found.flow.heights[member], alone.flow.heights[0], atol=2.0)
+    np.testing.assert_allclose(found.air.temperature[:, member], alone.air.temperature[:, 0], atol=1e-4)
+    np.testing.assert_allclose(found.flow.heights[member], alone.flow.heights[0], atol=1e-3)
     rain = found.falling.landed.sum(axis=0)
     assert rain.min() > 0.0
-    assert rain[member] == pytest.approx(alone.falling.landed.sum(), rel=0.005)
+    assert rain[member] == pytest.approx(alone.falling.landed.sum(), rel=1e-5)
 
 
 def test_flow_in_groups_is_the_flow(together):
     """Members taken apart and put together again are the same arrays."""
     flow = together.streams.flow
     parts = [members_module.some_members(flow, np.array([i])) for i in range(3)]
-    again = members_module.together(parts)
+    again = members_module.together(parts, [np.array([i]) for i in range(3)])
     for name in ("heights", "start_heights", "breaking", "speed_factor", "top_pressure", "critical_level"):
         assert np.array_equal(getattr(again, name), getattr(flow, name)), name
     assert np.array_equal(again.boundary.wave, flow.boundary.wave)
+
+
+def test_flow_at_some_points_is_the_flow_there(together):
+    """Round trip: streamlines, wind and pressure at every seventh point."""
+    flow, at = together.streams.flow, np.arange(3, together.across.size, 7)
+    some = members_module.some_points(flow, at)
+    assert np.array_equal(some.heights, flow.heights[..., at])
+    assert np.array_equal(some.speed_factor, flow.speed_factor[..., at])
+    assert np.array_equal(highest_pressure(some, 10e3, 0.16), highest_pressure(flow, 10e3, 0.16)[..., at])
+
+
+def test_sampling_is_by_straight_lines():
+    """Against numpy's own, row by row, beyond both ends too."""
+    rng = np.random.default_rng(1)
+    levels, values = np.cumsum(rng.uniform(10.0, 90.0, (3, 9)), axis=-1), rng.normal(size=(3, 9))
+    heights = rng.uniform(-50.0, 700.0, (3, 20))
+    expected = [np.interp(*row) for row in zip(heights, levels, values, strict=True)]
+    np.testing.assert_allclose(sampled(levels, values, heights), expected, atol=1e-12)

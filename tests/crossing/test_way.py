@@ -5,7 +5,7 @@ import pytest
 
 from orolift.air.column_build import air_from_station
 from orolift.air.humidity import mixing_ratio_from_relative_humidity
-from orolift.crossing import sites as site_module
+from orolift.crossing import solve as solve_module
 from orolift.crossing.crossing import cross
 from orolift.crossing.result import Site, When
 from orolift.crossing.way import cloud_water, cover_on_the_way
@@ -26,15 +26,15 @@ def heating(monkeypatch, humidity, when):
     """Warming by the ground at the lee foot with the cloud's shade, without it, and the most cover on the line."""
     seen = []
     with monkeypatch.context() as patch:
-        plain = site_module.overcast
+        plain = solve_module.overcast
 
         def spy(*given):
             seen.append(plain(*given))
             return seen[-1]
 
-        patch.setattr(site_module, "overcast", spy)
+        patch.setattr(solve_module, "overcast", spy)
         shaded = cross(RIDGE, air(humidity), (LEE,), when=when, streamlines=30)
-        patch.setattr(site_module, "overcast", lambda *given: np.zeros_like(plain(*given)))
+        patch.setattr(solve_module, "overcast", lambda *given: np.zeros_like(plain(*given)))
         clear = cross(RIDGE, air(humidity), (LEE,), when=when, streamlines=30)
     return shaded.lee[0].parts.surface_heating, clear.lee[0].parts.surface_heating, float(seen[0][0].max())
 

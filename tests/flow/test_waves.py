@@ -6,6 +6,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from orolift.errors import OutOfRangeError
+from orolift.flow import waves as waves_module
 from orolift.flow.layers import layers, layers_of_column, least_richardson_number
 from orolift.flow.waves import response, wave_drag, waves
 
@@ -327,3 +328,33 @@ def test_bad_input_is_named():
         layers([0.0, 0.0], 1.0, 10.0, 1e-4)
     with pytest.raises(OutOfRangeError, match="boundary: 1 of 2"):
         waves([0.0, np.nan], 500.0, SHEARED)
+
+
+@pytest.mark.parametrize("shortest", [1000.0, 8000.0])
+def test_waves_at_some_points_are_those_of_all(shortest):
+    """Round trip: summed up wave by wave where they are few, by the transform where they are many."""
+    at = np.union1d(np.arange(0, RIDGE_X.size, 6), [RIDGE_X.size - 1])
+    ground = ridge(400.0, 3e3)
+    whole = waves(ground, 500.0, SHEARED, shortest=shortest, all_pressure=True)
+    some = waves(ground, 500.0, SHEARED, shortest=shortest, all_pressure=True, at=at)
+    for name in ("displacement", "surface_pressure", "pressure"):
+        np.testing.assert_allclose(getattr(some, name), getattr(whole, name)[..., at], atol=1e-9)
+
+
+def test_the_shortest_wave_of_the_transform_counts_once():
+    """Law: a zigzag of one point to the next is its own transform, summed up with a half the weight of the others."""
+    line = 10.0 * (-1.0) ** np.arange(16)
+    spectrum = np.fft.rfft(line)
+    np.testing.assert_allclose(waves_module._over_transect(spectrum, 16, np.array([0, 3])), [10.0, -10.0], atol=1e-12)
+
+
+def test_a_member_does_not_depend_on_the_others():
+    """Law: beside a slow column, which needs shorter waves, a fast one makes the same waves."""
+    wind = np.stack([np.full(60, 6.0), np.full(60, 25.0)])
+    column = layers(np.linspace(0.0, 12e3, 61), 1.0, wind, 1e-4)
+    ground = np.stack([ridge(300.0, 3e3)] * 2)
+    both = waves(ground, 500.0, column)
+    for i in range(2):
+        alone = waves(ground[i], 500.0, layers(column.edge[i], 1.0, wind[i], 1e-4))
+        np.testing.assert_allclose(both.displacement[i], alone.displacement, atol=1e-9)
+        np.testing.assert_allclose(both.surface_pressure[i], alone.surface_pressure, atol=1e-9)

@@ -21,6 +21,7 @@ from orolift.report.figures.placing import box_of, meet
 from orolift.report.figures.section import section
 from orolift.report.figures.wind_panel import near_ground
 from orolift.report.quantities import from_displayed, quantity
+from orolift.report.spans import Spans
 from orolift.report.trace import trace
 
 TENTH = 0.1
@@ -587,6 +588,31 @@ def test_budget_bars_start_where_the_last_ended_and_sum_up(page_for, named):
                     assert (float(end or start) - float(start)) / unit == pytest.approx(abs(part), abs=1.2 / unit)
                 labels = [label.text for label in drawing.labels]
                 assert quantity(site.warming, "temperature_change", 1, "metric") in labels
+
+
+def test_whiskers_of_the_budget_are_its_ranges(page_for, with_members):
+    """From where a bar would end at the lowest to where it would at the highest; none without members."""
+    crossing, spread = with_members
+    page = page_for(crossing, spread=spread, fresh=True)
+    site, spans = crossing.lee[0], Spans(crossing, spread)
+    for drawing in (page.budget.drawing, page.budget.narrow):
+        zero = float(re.match(r"M([\d.]+)", drawing.lines[0].path)[1])
+        start, end = (float(x) for x in re.match(r"M([\d.]+) [\d.]+H([\d.]+)", _sum_bar(drawing)).groups())
+        unit = (end - start) / abs(site.warming)
+        assert zero == pytest.approx(start if site.warming > 0.0 else end, abs=0.1)
+        low, high = (zero + unit * value for value in spans.warming(site))
+        own = [curve.path for curve in drawing.whiskers if curve.kind == "whisker"]
+        ends = [[float(x) for x in re.search(r"M([\d.]+) [\d.]+H([\d.]+)", path).groups()] for path in own]
+        assert any(pair == pytest.approx([low, high], rel=0.03) for pair in ends)
+        assert all(0.0 <= a < b <= drawing.layout.width for a, b in ends)
+    assert "with the error of the method" in page.budget.caption
+    bare = page_for(crossing, fresh=True).budget
+    assert bare.drawing.whiskers == ()
+    assert "Thin lines" not in bare.caption
+
+
+def _sum_bar(drawing):
+    return next(curve.path for curve in drawing.bars if curve.kind == "sum")
 
 
 def test_cooling_parts_are_hatched(page_for, named):

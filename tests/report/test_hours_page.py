@@ -13,6 +13,8 @@ from orolift.report.figures.axes import Scale
 from orolift.report.figures.placing import text_width
 from orolift.report.figures.time_axis import time_ticks
 from orolift.report.hours_page import hours_page
+from orolift.report.words import plain
+from orolift.spread.hour_members import RANGED, HourMembers
 from orolift.spread.hours import Hour
 from orolift.spread.site_state import SiteState, Travel
 from orolift.spread.timeline import hours_of
@@ -147,3 +149,94 @@ def test_thresholds_met_are_marked_and_said():
     drawing = made.sites[0].figure.drawing
     assert [curve.kind for curve in drawing.states].count("met") == 1
     assert {"threshold met: dry", "threshold not met: never"} <= {label.text for label in drawing.labels}
+
+
+def with_members(dry, rain=0.0):
+    """A page of four hours, of whose 20 members so many are dry in each; the answer is so in the two in the middle."""
+    number, hours = np.arange(20), []
+    for i, count in enumerate(dry):
+        state = SiteState(
+            "crossing",
+            side="lee",
+            descending=i in {1, 2},
+            travel=Travel(HOUR, 0.0),
+            temperature=290.15,
+            relative_humidity=0.4,
+            rain=rain,
+        )
+        values = np.broadcast_arrays(290.15, 0.4, np.nan, rain * (1.0 + 0.05 * number), HOUR, number)[:-1]
+        ends = np.full((2, len(RANGED), 2), np.nan)
+        ends[:, RANGED.index("temperature")] = 288.15, 293.15
+        ends[:, RANGED.index("wind_10m")] = 4.0, 8.0  # of members out of the pool that the answer lies in
+        one = HourMembers(np.ones(20, np.int8), ends, 1.0, 0.0, number < count, np.array(values, np.float32))
+        hours.append(Hour(i, START + i * HOUR, (state,), members=(one,)))
+    found = hours_of(hours, ["Tarn"], HOUR, planned=len(hours))
+    return hours_page(found, title="T", zone=UTC, made_at=datetime(2026, 1, 1, tzinfo=UTC), version="0", notes=())
+
+
+def read(sentences):
+    """Sentences as read, without the spaces that do not break."""
+    return " ".join(plain(words, "metric") for words in sentences).replace("\u00a0", " ")
+
+
+def test_the_site_says_what_its_members_say():
+    """Half past the hour before and after by hand: ten begin an hour before the other ten; two of 20 never do."""
+    site = with_members([9, 18, 18, 0]).sites[0]
+    said = read(site.sentences)
+    assert "Descending warm dry air comes in 90 % of 20 members, most likely at 3 November 2026, 07:30 (90 %)" in said
+    assert "in all it lasts 2 h" in said
+    assert "It is there in 90 % of the members" in said
+    assert "before 3 November 2026, 07:00" in said  # those that begin with the first hour may have begun before it
+    assert "ends between 09:00 and 09:00 on 3 November 2026" in said
+
+
+def test_rows_have_their_ranges_below():
+    row = with_members([0, 20, 20, 0]).sites[0].rows[1]
+    assert [part if isinstance(part, str) else part.value for part in row.spans["temperature"]] == [
+        288.15,
+        " to ",
+        293.15,
+    ]
+    assert row.chance.value == 1.0
+    assert "dew_point" not in row.spans
+    assert page(5).sites[0].rows[0].spans == {}
+
+
+def test_rain_of_the_hours_has_the_range_of_the_members():
+    """Four hours of 1 mm, and of 1 mm times 1 to 1.95 in the members: 4.4 to 7.4 mm."""
+    assert "4.0 mm (4.0 to 7.4) of rain and snow" in read(with_members([0, 0, 0, 0], 1.0 / HOUR).sites[0].sentences)
+
+
+def test_bands_lie_around_their_line_and_only_there():
+    """One band of the temperature, none of the wind, which has no answer; and none of them without members."""
+    panels = with_members([0, 20, 20, 0]).sites[0].figure.drawing.panels
+    assert not any("between" in curve.kind for curve in panels[3].curves)
+    panel = panels[1]
+    bands = [curve for curve in panel.curves if "warm-between" in curve.kind]
+    line = next(curve for curve in panel.curves if curve.kind == "warm")
+    heights = [[float(y) for y in re.findall(r"[ML][\d.]+[ ,]([\d.]+)", curve.path)] for curve in (bands[0], line)]
+    assert len(bands) == 1
+    assert min(heights[0]) < min(heights[1]) <= max(heights[1]) < max(heights[0])
+    assert not any("between" in c.kind for panel in page(5).sites[0].figure.drawing.panels for c in panel.curves)
+
+
+def test_pages_with_members_say_what_ranges_hold():
+    made, bare = with_members([0, 20, 20, 0]), page(5)
+    assert len(made.how) > len(bare.how)
+    assert "worked out once" in read(bare.cautions)
+    assert "worked out once" not in read(made.cautions)
+
+
+def test_a_threshold_that_most_members_meet_is_named_at_the_head():
+    """The answer misses it; 12 of 20 members meet it, then 8: half of them is where it is named, and no warning."""
+    rule = Rule("dry", (Condition("relative_humidity", at_most=0.3),))
+    fire = FireSettings(rules=RuleSet("Tarn", "none", "2026-05-01", (rule,)))
+    state = SiteState("crossing", travel=Travel(HOUR, 0.0), temperature=290.0, rule_values={"relative_humidity": 0.35})
+    for count, named in ((12, True), (8, False)):
+        met = np.where(np.arange(20) < count, 1, -1)[np.newaxis].astype(np.int8)
+        nothing = np.zeros(20, np.bool_)
+        one = HourMembers(np.ones(20, np.int8), None, 1.0, 0.0, nothing, np.full((5, 20), np.nan, np.float32), met)
+        found = hours_of([Hour(0, START, (state,), members=(one,))], ["Tarn"], HOUR, planned=1, fire=fire)
+        made = hours_page(found, title="T", zone=UTC, made_at=datetime(2026, 1, 1, tzinfo=UTC), version="0", notes=())
+        assert ("Threshold not met at Tarn: dry, but in 60 % of the members." in read(made.lead)) is named
+        assert made.dangers == ()

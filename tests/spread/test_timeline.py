@@ -10,7 +10,8 @@ from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.sites import FireSettings
 from orolift.spread.hours import Hour
 from orolift.spread.site_state import SiteState, Travel
-from orolift.spread.timeline import arrivals, hours_of, stretches
+from orolift.spread.stretches import arrivals, stretches
+from orolift.spread.timeline import hours_of
 
 HOUR = 3600.0
 
