@@ -25,7 +25,7 @@ if TYPE_CHECKING:
     from orolift.report.quantities import Units
     from orolift.sources.hours_case import HourSetup
     from orolift.spread.hours import Hour
-    from orolift.spread.timeline import Hours
+    from orolift.spread.timeline import Hours, SiteTimeline
 
 log = logging.getLogger(__name__)
 
@@ -44,7 +44,7 @@ log = logging.getLogger(__name__)
     default=None,
     metavar="M",
     help="How often each hour is worked out for the ranges, 10 or more; 0 leaves them out. Default: as [spread], 32, "
-    "up to 100 hours; none in longer series.",
+    "up to 48 hours; none in longer series.",
 )
 @JOBS_OPTION
 @SCHEDULER_OPTION
@@ -168,24 +168,24 @@ def contents_of(hours: Hours, setup: HourSetup, units: Units, files: dict[str, s
 
 def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[str]:
     """What happened, a line a site and one for the thresholds met at it, for at most five sites."""
-    from orolift.report.hours_words import about, dangers, likely_all_the_same, total_rain
+    from orolift.report.hours_times import times_of
+    from orolift.report.hours_words import dangers, likely_all_the_same, total_rain
     from orolift.report.quantities import NO_BREAK_SPACE, Amount
     from orolift.report.spans import ranged
     from orolift.report.words import plain, zone_words
 
     zone = setup.series.zone
 
-    def said(time: float | None, error: float | None, open_end: str) -> str:
-        return open_end if time is None else about(time, error or 0.0, zone)
+    def said(site: SiteTimeline, number: int) -> str:
+        members = None if site.ranges is None else site.ranges.dry_wind.stretches[number]
+        onset, end = times_of(site.dry_winds[number], members, zone)
+        return f"{plain(onset or ('the start',), units)} to {plain(end or ('the end',), units)}"
 
     first = datetime.fromtimestamp(float(hours.time[0]), zone)
     lines = [f"{setup.inputs.case.title or setup.inputs.path.stem} (times in {zone_words(first)})"]
     lines += [f"Note      {text}" for text in setup.series.notes[:2]]
     for site in hours.sites[:5]:
-        spells = [
-            f"{said(one.onset, one.onset_error, 'the start')} to {said(one.end, one.end_error, 'the end')}"
-            for one in site.dry_winds[:2]
-        ]
+        spells = [said(site, number).replace(NO_BREAK_SPACE, " ") for number in range(len(site.dry_winds))[:2]]
         more = f", and {len(site.dry_winds) - 2} more" if len(site.dry_winds) > 2 else ""
         dry = f"descending warm dry air from {', from '.join(spells)}{more}" if spells else "no descending warm dry air"
         if site.ranges is not None:

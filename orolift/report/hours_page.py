@@ -10,7 +10,8 @@ from orolift.report.cautions import ALWAYS
 from orolift.report.figures.timeline import timeline_figure
 from orolift.report.hours_sure import HOW_SURE, NOT_HELD, how_sure, members_of
 from orolift.report.hours_tables import CatchmentRow, HourRow, StretchRow, catchment_rows, hour_row, stretch_row
-from orolift.report.hours_words import NAMED, counts, dangers, heading, lead, outcome, stamp
+from orolift.report.hours_times import stamp
+from orolift.report.hours_words import NAMED, counts, dangers, heading, lead, outcome
 from orolift.report.words import moment, zone_words
 
 if TYPE_CHECKING:

@@ -2,22 +2,22 @@
 
 from __future__ import annotations
 
-from datetime import datetime
 from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.report.hours_words import longest_of, stamp
+from orolift.report.hours_times import stamp
+from orolift.report.hours_words import longest_of
 from orolift.report.quantities import Amount
 from orolift.report.spans import ranged
-from orolift.report.words import month, rounded_time
+from orolift.report.words import rounded_time
 
 if TYPE_CHECKING:
     from datetime import tzinfo
 
     from orolift.report.words import Words
     from orolift.spread.timeline import Hours, SiteTimeline
-    from orolift.spread.timeline_members import MaybeEnds, SiteRanges
+    from orolift.spread.timeline_members import SiteRanges
 
 HOW_SURE = (
     (
@@ -75,7 +75,7 @@ def how_sure(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
         return ()
     out = [_at_all(site, ranges, zone)]
     if site.dry_winds:
-        out.append(_longest(site, ranges, zone))
+        out.append(_longest(site, ranges))
     if ranges.lost:
         out.append(
             ("In ", Amount(ranges.lost, "plain"), " hours some members could not be worked out; they count nowhere.")
@@ -112,67 +112,11 @@ def _at_all(site: SiteTimeline, ranges: SiteRanges, zone: tzinfo) -> Words:
     )
 
 
-def _longest(site: SiteTimeline, ranges: SiteRanges, zone: tzinfo) -> Words:
-    """When the longest stretch begins and ends in the members that have it."""
+def _longest(site: SiteTimeline, ranges: SiteRanges) -> Words:
+    """In how many members the longest stretch is there, and what the times in brackets are."""
     one = ranges.dry_wind.stretches[longest_of(site.dry_winds)]
     which = "It is" if len(site.dry_winds) == 1 else "The longest stretch is"
     start: Words = (f"{which} there in ", Amount(one.chance, "share"), " of the members")
     if one.onset is None or one.end is None:
         return (*start, ".")
-    onset, end = between(one.onset, zone), between(one.end, zone)
-    return (*start, f"; in eight tenths of these it begins {onset}, and ends {end}.")
-
-
-def between(ends: MaybeEnds, zone: tzinfo) -> str:
-    """When it is, between two times, in words and to ten minutes; one may lie before or after what can be judged.
-
-    Parameters
-    ----------
-    ends : (float or None, float or None) [s]
-    zone : tzinfo
-
-    Returns
-    -------
-    str
-    """
-    low, high = (None if end is None else rounded_time(end, 0.0) for end in ends)
-    if low is None and high is None:
-        return "outside what can be judged"
-    if low is None or high is None:
-        return f"before {stamp(high, zone)}" if high is not None else f"after {stamp(low or 0.0, zone)}"
-    first, last = (datetime.fromtimestamp(end, zone) for end in (low, high))
-    if first.date() == last.date():
-        return f"between {first:%H:%M} and {last:%H:%M} on {first.day} {month(first)} {first.year}"
-    return f"between {stamp(low, zone)} and {stamp(high, zone)}"
-
-
-def short_between(ends: MaybeEnds, zone: tzinfo) -> str:
-    """The same in short, for a table.
-
-    Parameters
-    ----------
-    ends : (float or None, float or None) [s]
-    zone : tzinfo
-
-    Returns
-    -------
-    str
-
-    Examples
-    --------
-    >>> from datetime import UTC
-    >>> short_between((1793741400.0, 1793745000.0), UTC), short_between((None, 1793745000.0), UTC)
-    ('3 Nov 21:30 to 22:30', 'before 3 Nov 22:30')
-    """
-    first, last = (None if end is None else datetime.fromtimestamp(rounded_time(end, 0.0), zone) for end in ends)
-    if first is None and last is None:
-        return "outside what can be judged"
-    if first is None or last is None:
-        word, one = ("before", last) if first is None else ("after", first)
-        return f"{word} {_short(one)}" if one is not None else ""
-    same = first.date() == last.date()
-    return f"{_short(first)} to {f'{last:%H:%M}' if same else _short(last)}"
-
-
-def _short(time: datetime) -> str:
-    return f"{time.day} {month(time)[:3]} {time:%H:%M}"
+    return (*start, "; the times in brackets hold onset and end in eight tenths of these.")

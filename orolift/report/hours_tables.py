@@ -7,8 +7,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.report.hours_sure import short_between
-from orolift.report.hours_words import about, short_stamp, stamp
+from orolift.report.hours_times import about, short_between, short_stamp, stamp
 from orolift.report.quantities import Amount, displayed
 from orolift.spread.timeline import values_of
 

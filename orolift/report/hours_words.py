@@ -1,13 +1,13 @@
-"""What is said of a series of hours: times as their error allows, what each site gets and when."""
+"""What is said of a series of hours: what each site gets and when."""
 
 from __future__ import annotations
 
-from datetime import datetime
 from typing import TYPE_CHECKING
 
-from orolift.report.quantities import NO_BREAK_SPACE, Amount
+from orolift.report.hours_times import times_of
+from orolift.report.quantities import Amount
 from orolift.report.spans import ranged
-from orolift.report.words import counted, month, rounded_time
+from orolift.report.words import counted
 
 if TYPE_CHECKING:
     from collections.abc import Sequence
@@ -16,6 +16,7 @@ if TYPE_CHECKING:
     from orolift.report.words import Words
     from orolift.spread.stretches import Stretch
     from orolift.spread.timeline import Hours, SiteTimeline
+    from orolift.spread.timeline_members import StretchRange
 
 LEAST_RAIN = 0.1
 """Rain [kg m-2] below which none is said to fall."""
@@ -23,73 +24,6 @@ LIKELY = 0.5
 """Chance from which on a threshold is named at the head though the answer does not meet it; a judgement."""
 NAMED = 4
 """Sites named one by one at the head of the page."""
-
-
-def about(seconds: float, error: float, zone: tzinfo) -> str:
-    """A time for people, to the half hour or ten minutes that its error allows.
-
-    Parameters
-    ----------
-    seconds, error : float [s]
-    zone : tzinfo
-
-    Returns
-    -------
-    str
-
-    Examples
-    --------
-    >>> from datetime import UTC
-    >>> about(1793741400.0, 5000.0, UTC), about(1793741700.0, 900.0, UTC)
-    ('3 November 2026, 21:30', '3 November 2026, 21:40')
-    """
-    return stamp(rounded_time(seconds, error), zone)
-
-
-def stamp(seconds: float, zone: tzinfo) -> str:
-    """A time for people, short, in a zone that is named beside it.
-
-    Parameters
-    ----------
-    seconds : float [s]
-        Since 1970-01-01T00:00:00 UTC.
-    zone : tzinfo
-
-    Returns
-    -------
-    str
-
-    Examples
-    --------
-    >>> from datetime import UTC
-    >>> stamp(1793741400.0, UTC)
-    '3 November 2026, 21:30'
-    """
-    time = datetime.fromtimestamp(round(seconds / 60.0) * 60.0, zone)
-    return f"{time.day} {month(time)} {time.year}, {time.hour:02d}:{time.minute:02d}"
-
-
-def short_stamp(seconds: float, zone: tzinfo) -> str:
-    """The same in short, for a table: its day is kept on one line.
-
-    Parameters
-    ----------
-    seconds : float [s]
-    zone : tzinfo
-
-    Returns
-    -------
-    str
-
-    Examples
-    --------
-    >>> from datetime import UTC
-    >>> short_stamp(1793741400.0, UTC).replace(NO_BREAK_SPACE, " ")
-    '3 Nov 2026, 21:30'
-    """
-    time = datetime.fromtimestamp(round(seconds / 60.0) * 60.0, zone)
-    date = f"{time.day} {month(time)[:3]} {time.year}".replace(" ", NO_BREAK_SPACE)
-    return f"{date}, {time.hour:02d}:{time.minute:02d}"
 
 
 def heading(hours: Hours) -> Words:
@@ -171,11 +105,13 @@ def outcome(site: SiteTimeline, zone: tzinfo) -> Words:
         return (f"No air crosses to {site.name} in these hours",)
     if not found:
         return (f"No descending warm dry air reaches {site.name}",)
-    longest = max(found, key=lambda one: one.last - one.first)
+    longest = longest_of(found)
+    members = None if site.ranges is None else site.ranges.dry_wind.stretches[longest]
+    when = _from_to(found[longest], members, zone)
     if len(found) == 1:
-        return (f"Descending warm dry air is at {site.name} ", *_from_to(longest, zone))
+        return (f"Descending warm dry air is at {site.name} ", *when)
     times = counted(len(found), "time", "times")
-    return (f"Descending warm dry air comes to {site.name} {times}, longest ", *_from_to(longest, zone))
+    return (f"Descending warm dry air comes to {site.name} {times}, longest ", *when)
 
 
 def likely_all_the_same(site: SiteTimeline) -> tuple[Words, ...]:
@@ -207,11 +143,9 @@ def longest_of(found: Sequence[Stretch]) -> int:
     return max(range(len(found)), key=lambda i: found[i].last - found[i].first)
 
 
-def _as_likely(site: SiteTimeline, number: int, stretch: int) -> Words:
+def _as_likely(members: StretchRange | None) -> Words:
     """In how many members a threshold is met in a stretch too; nothing without members."""
-    if site.ranges is None:
-        return ()
-    return ("; in ", Amount(site.ranges.thresholds[number].stretches[stretch].chance, "share"), " of the members")
+    return () if members is None else ("; in ", Amount(members.chance, "share"), " of the members")
 
 
 def total_rain(site: SiteTimeline) -> tuple[float, float] | None:
@@ -234,25 +168,13 @@ def _rain(site: SiteTimeline) -> Words:
     return ("; no rain to speak of falls.",)
 
 
-def _from_to(one: Stretch, zone: tzinfo) -> Words:
-    parts: list[str | Amount] = []
-    if one.onset is None or one.onset_error is None:
-        parts.append("from the first hour that can be judged")
-    else:
-        parts += [
-            f"from {about(one.onset, one.onset_error, zone)} (±{NO_BREAK_SPACE}",
-            Amount(one.onset_error, "hours", 1),
-            ")",
-        ]
-    if one.end is None or one.end_error is None:
-        parts.append(" to the last that can be judged")
-    else:
-        parts += [
-            f" to {about(one.end, one.end_error, zone)} (±{NO_BREAK_SPACE}",
-            Amount(one.end_error, "hours", 1),
-            ")",
-        ]
-    return tuple(parts)
+def _from_to(one: Stretch, members: StretchRange | None, zone: tzinfo) -> Words:
+    """From when to when."""
+    onset, end = times_of(one, members, zone)
+    return (
+        *(("from the first hour that can be judged",) if onset is None else ("from ", *onset)),
+        *((" to the last that can be judged",) if end is None else (" to ", *end)),
+    )
 
 
 def dangers(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
@@ -274,10 +196,11 @@ def dangers(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
         found = one.stretches
         if not found:
             continue
-        longest = max(found, key=lambda stretch: stretch.last - stretch.first)
+        longest = longest_of(found)
+        members = None if site.ranges is None else site.ranges.thresholds[number].stretches[longest]
         often = "" if len(found) == 1 else f" {counted(len(found), 'time', 'times')}, longest"
         start = f"Threshold met at {site.name}: {one.rule.name},{often} "
-        out.append((start, *_from_to(longest, zone), *_as_likely(site, number, found.index(longest)), "."))
+        out.append((start, *_from_to(found[longest], members, zone), *_as_likely(members), "."))
     return tuple(out)
 
 

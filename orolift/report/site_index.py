@@ -7,9 +7,10 @@ from typing import TYPE_CHECKING
 from urllib.parse import quote
 
 from orolift.report.bearings_sure import with_range
-from orolift.report.hours_words import about
+from orolift.report.hours_times import times_of
+from orolift.report.hours_words import longest_of
 from orolift.report.index import Link
-from orolift.report.quantities import NO_BREAK_SPACE, Amount
+from orolift.report.quantities import Amount
 from orolift.report.words import counted
 
 if TYPE_CHECKING:
@@ -115,8 +116,8 @@ def hours_index(hours: Hours, page: HoursPage, zone: tzinfo, *, report: str, fil
         lead=page.lead[:1] if hours.interrupted else (),
         entries=(Linked("Every hour", quote(report), _links(files), f"{page.span}, {page.zone}"),),
         caption=(
-            f"Each site; onset and end are those of the longest descending warm dry air, with one standard deviation; "
-            f"times in {page.zone}; a threshold met is not a warning"
+            f"Each site; onset and end are those of the longest descending warm dry air, with 10 to 90 % of members "
+            f"or else one standard deviation; times in {page.zone}; a threshold met is not a warning"
         ),
         columns=("Hours that cross", "Descending warm dry air", "Onset", "End", "Thresholds met"),
         rows=_rows(report, [(site.name, _hours_cells(site, zone)) for site in hours.sites]),
@@ -178,20 +179,16 @@ def _hours_cells(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
     crossing = _share(site.crossing_hours, len(site.states))
     if not site.dry_winds:
         return crossing, ("none", *likely), (), (), named
-    longest = max(site.dry_winds, key=lambda one: one.last - one.first)
+    longest = longest_of(site.dry_winds)
+    members = None if ranges is None else ranges.dry_wind.stretches[longest]
+    onset, end = times_of(site.dry_winds[longest], members, zone)
     return (
         crossing,
         (counted(len(site.dry_winds), "time", "times"), *likely),
-        _time(longest.onset, longest.onset_error, zone, "before what can be judged"),
-        _time(longest.end, longest.end_error, zone, "after what can be judged"),
+        onset or ("before what can be judged",),
+        end or ("after what can be judged",),
         named,
     )
-
-
-def _time(seconds: float | None, error: float | None, zone: tzinfo, unknown: str) -> Words:
-    if seconds is None or error is None:
-        return (unknown,)
-    return (f"{about(seconds, error, zone)} (±{NO_BREAK_SPACE}", Amount(error, "hours", 1), ")")
 
 
 def _bearings_cells(site: SiteBearings, bearings: Bearings) -> tuple[Words, ...]:

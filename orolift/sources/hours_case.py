@@ -42,8 +42,8 @@ if TYPE_CHECKING:
 
 MAP_CELLS = 192
 """Cells of the map of rain along its longer side; one map an hour, and means over catchments need no finer one."""
-USUAL_HOURS = 100
-"""Hours up to which a series has members where nobody says it: four days take a minute or two; a judgement."""
+USUAL_HOURS = 48
+"""Hours up to which a series has members where nobody says it: two days take a minute of processor; a judgement."""
 TURN = math.radians(5.0)
 """Lines over a raster are cut at multiples of this; the wind off the line counts by its component, so that at most
 0.1 % of it is lost."""

@@ -43,7 +43,7 @@ def best_of(arguments, folder, times=5) -> tuple[float, float]:
         ("help", ["--help"], 0.3, 60.0),
         ("ridge, 32 members", ["cross", "varn_ridge.toml", "--quiet"], 2.5, 250.0),
         ("ridge, no members", ["cross", "alone_ridge.toml", "--quiet"], 1.5, 250.0),
-        ("raster, 32 members", ["cross", "varn_moist.toml", "--quiet"], 3.0, 400.0),
+        ("raster, 32 members", ["cross", "varn_moist.toml", "--quiet"], 4.0, 400.0),
         ("raster, no members", ["cross", "alone_moist.toml", "--quiet"], 2.0, 400.0),
         ("check", ["check", "varn_ridge.toml"], 1.0, 250.0),
     ],
