@@ -25,7 +25,7 @@ from orolift.cli.spreading import Workers
 if TYPE_CHECKING:
     from orolift.report.quantities import Units
     from orolift.sources.bearings_case import BearingSetup
-    from orolift.spread.bearings import Bearings, Direction
+    from orolift.spread.bearings import Bearings, Direction, SiteBearings
 
 log = logging.getLogger(__name__)
 
@@ -137,18 +137,24 @@ def contents_of(
 def summary_of(bearings: Bearings, setup: BearingSetup, units: Units) -> list[str]:
     """What was found, one or, with members, two lines a site; six sites at most."""
     from orolift.report.bearings_sure import members_line
-    from orolift.report.words import plain
+    from orolift.report.words import plain, short_name
 
     lines = [setup.inputs.case.title or setup.inputs.path.stem]
 
     def said(number: int | None) -> str:
         return "none" if number is None else f"{math.degrees(bearings.wind_from[number]):.0f} degrees"
 
+    def warmest(site: SiteBearings) -> str:
+        state = None if site.warmest is None else site.states[site.warmest]
+        if state is None or state.warming is None or state.warming <= 0.0:
+            return "no direction warms it"  # as the page says
+        return f"warmest from {said(site.warmest)}"
+
     for site in bearings.sites[:6]:
         crossing = sum(state.status == "crossing" for state in site.states)
         lines.append(
-            f"{site.name[:24]}  air crosses from {crossing} of {len(site.states)} directions; warmest from "
-            f"{said(site.warmest)}, worst for fire {said(site.fire)}, best for rain {said(site.rain)}"
+            f"{short_name(site.name)}  air crosses from {crossing} of {len(site.states)} directions; "
+            f"{warmest(site)}, worst for fire {said(site.fire)}, best for rain {said(site.rain)}"
         )
         if setup.drawn is not None and (words := members_line(site, bearings, setup.drawn.members)):
             lines.append(f"          {plain(words, units)}")

@@ -165,9 +165,20 @@ def _interrupt_held() -> Iterator[None]:
 
 
 def worker() -> None:
-    """What a process does first: leave Ctrl-C to the process that started it, and take one thread."""
+    """What a process does first: leave Ctrl-C to the process that started it, take one thread, and end with it."""
     signal.signal(signal.SIGINT, signal.SIG_IGN)
     os.environ.update(dict.fromkeys(THREADS, "1"))
+    threading.Thread(target=_end_with_parent, daemon=True).start()
+
+
+def _end_with_parent() -> None:
+    """End this process once the one that gives it work is gone, killed without a word: nobody else would end it."""
+    import multiprocessing
+
+    parent = multiprocessing.parent_process()
+    if parent is not None:
+        parent.join()
+        os._exit(1)
 
 
 @contextmanager

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any, Generic, NoReturn, TypeVar
 
 import click
 
-from orolift.cli.executors import ended_as_by_ctrl_c, executor_of, progress
+from orolift.cli.executors import executor_of, progress
 from orolift.errors import WorkersError
 
 if TYPE_CHECKING:
@@ -62,7 +62,7 @@ def gathered(
     Returns
     -------
     Gathered
-        Ctrl-C, the request to end (SIGTERM) and a lost process leave what was finished.
+        Ctrl-C and a lost process leave what was finished.
 
     Raises
     ------
@@ -75,7 +75,6 @@ def gathered(
     jobs = 1 if workers.jobs is None and count == 1 and workers.scheduler is None else workers.jobs
     try:
         with (
-            ended_as_by_ctrl_c(),
             executor_of(jobs, workers.scheduler) as executor,
             progress(count, label, quiet=workers.quiet) as bar,
         ):

@@ -16,6 +16,7 @@ from orolift.cli.options import (
     SCHEDULER_OPTION,
     UNITS_OPTION,
     VERBOSE_OPTION,
+    WholeNumber,
     file_option,
 )
 from orolift.cli.outputs import Outputs, made_now
@@ -40,7 +41,7 @@ log = logging.getLogger(__name__)
 @click.option("--folder", default=None, metavar="FOLDER", help="Folder for all of it, with an index page.")
 @click.option(
     "--members",
-    type=click.IntRange(min=0),
+    type=WholeNumber(min=0),
     default=None,
     metavar="M",
     help="How often each hour is worked out for the ranges, 10 or more; 0 leaves them out. Default: as [spread], 32, "
@@ -172,7 +173,7 @@ def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[
     from orolift.report.hours_words import dangers, likely_all_the_same, total_rain
     from orolift.report.quantities import NO_BREAK_SPACE, Amount
     from orolift.report.spans import ranged
-    from orolift.report.words import plain, zone_words
+    from orolift.report.words import plain, short_name, zone_words
 
     zone = setup.series.zone
 
@@ -192,7 +193,7 @@ def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[
             dry += f" (in {100.0 * site.ranges.dry_wind.ever:.0f} % of the members)"
         rain = plain(ranged(Amount(site.rain, "water_depth", 0), total_rain(site)), units).replace(NO_BREAK_SPACE, " ")
         lines.append(
-            f"{site.name[:24]}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; {rain} of rain and snow"
+            f"{short_name(site.name)}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; {rain} of rain and snow"
         )
         met = " ".join(plain(words, units) for words in dangers(site, zone)).replace("\u00a0", " ")
         lines += [f"Fire      {met} A threshold met is not a warning."] if met else []

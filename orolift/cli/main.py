@@ -64,11 +64,12 @@ def exit_code(arguments: list[str]) -> int:
     int
         0 done, 2 input at fault, 130 interrupted, 1 a fault of orolift.
     """
+    from orolift.cli.executors import ended_as_by_ctrl_c
     from orolift.errors import OroliftError
     from orolift.sources.read_files import inputs_kept
 
     try:
-        with inputs_kept():
+        with ended_as_by_ctrl_c(), inputs_kept():
             command.main(arguments, prog_name="orolift", standalone_mode=False)
         code, message = 0, ""
     except (OroliftError, click.ClickException) as error:

@@ -10,6 +10,13 @@ import click
 if TYPE_CHECKING:
     from collections.abc import Callable
 
+
+class WholeNumber(click.IntRange):
+    """Whole number in a range, named so in what is said of text that is none."""
+
+    name = "whole number"
+
+
 UNITS_OPTION = click.option(
     "--units",
     type=click.Choice(["metric", "us"]),
@@ -27,7 +34,7 @@ VERBOSE_OPTION = click.option(
 )
 JOBS_OPTION = click.option(
     "--jobs",
-    type=click.IntRange(min=1, max=1024),
+    type=WholeNumber(min=1, max=1024),
     default=None,
     metavar="N",
     help="Processes to work with; default: one for each usable core. 1 uses none but this.",
@@ -40,7 +47,7 @@ SCHEDULER_OPTION = click.option(
 )
 MEMBERS_OPTION = click.option(
     "--members",
-    type=click.IntRange(min=0),
+    type=WholeNumber(min=0),
     default=None,
     metavar="M",
     help="How often each crossing is worked out for the ranges, 10 or more; 0 leaves them out. Default: as [spread].",

@@ -124,7 +124,7 @@ def _site(spans: Spans, site: LeeAir, said: Said) -> str:
     change = said(site.warming, "temperature_change", 1, spans.at(site, "warming"))
     source = "in the cold pool" if site.source_level is None else f"from {_source(site, said)}"
     return (
-        f"{site.name[:24]} ({site.side})  {said(site.temperature, 'temperature', 1, spans.temperature(site))}, "
+        f"{short_name(site.name)} ({site.side})  {said(site.temperature, 'temperature', 1, spans.temperature(site))}, "
         f"dew point {said(site.dew_point, 'temperature', 1, spans.dew_point(site))}, "
         f"{said(site.relative_humidity, 'share', 0, spans.at(site, 'relative_humidity'))}; "
         f"{change}; air {source}"

@@ -34,6 +34,10 @@ NAMED = 4
 """Sites named one by one at the head of the page."""
 
 
+NEAR = 1000.0
+"""Distance [m] within which the highest ground before a site is its own and shelters nothing; a judgement."""
+
+
 @dataclass(frozen=True)
 class DirectionRow:
     """One wind direction at a site; None where there is no number.
@@ -244,15 +248,20 @@ def _warmest(site: SiteBearings, bearings: Bearings) -> Words:
         return (f"No air crosses to {site.name}",)
     if state.warming <= 0.0 or state.shelter_height is None or state.shelter_distance is None:
         return (f"No direction warms {site.name}",)
+    behind: Words = (
+        ", ",
+        Amount(state.shelter_distance, "distance"),
+        " behind ground of ",
+        Amount(state.shelter_height, "height"),
+    )
+    if state.shelter_distance < NEAR:
+        behind = (", with no higher ground before it",)
     return (
         f"{site.name} warms most with wind from ",
         Amount(float(bearings.wind_from[site.warmest]), "bearing"),
         ": by ",
         *with_range(Amount(state.warming, "temperature_difference", 1), state, "warming"),
-        ", ",
-        Amount(state.shelter_distance, "distance"),
-        " behind ground of ",
-        Amount(state.shelter_height, "height"),
+        *behind,
     )
 
 

@@ -24,7 +24,8 @@ HOW_SURE = (
         "Ranges hold 10 to 90 % of the members, in small figures and as bands. Each hour is worked out in every "
         "member, with its own draw of the incoming air, the options and the error of the method. A member is one "
         "story: what is too warm, too moist or too weak in it is so in every hour. Errors that change from hour to "
-        "hour would leave single hours as uncertain as they are, and even out in sums and in stretches."
+        "hour would leave single hours as uncertain as they are, and even out in sums and in stretches. "
+        "A range is widened to the answer where that lies outside; files have it as it is."
     ),
     (
         "Chances are shares of the members. Crossing, descending warm dry air and thresholds count among all "
@@ -115,7 +116,7 @@ def _at_all(site: SiteTimeline, ranges: SiteRanges, zone: tzinfo) -> Words:
 def _longest(site: SiteTimeline, ranges: SiteRanges) -> Words:
     """In how many members the longest stretch is there, and what the times in brackets are."""
     one = ranges.dry_wind.stretches[longest_of(site.dry_winds)]
-    which = "It is" if len(site.dry_winds) == 1 else "The longest stretch is"
+    which = "This stretch is" if len(site.dry_winds) == 1 else "The longest stretch is"
     start: Words = (f"{which} there in ", Amount(one.chance, "share"), " of the members")
     if one.onset is None or one.end is None:
         return (*start, ".")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import TYPE_CHECKING
 
 from orolift.report.hours_times import times_of
@@ -75,7 +76,7 @@ def lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
                 " hours are here.",
             )
         )
-    out += [(*outcome(site, zone), ".") for site in hours.sites[:NAMED]]
+    out += [(*outcome(site, zone), *_any(site), ".") for site in hours.sites[:NAMED]]
     if len(hours.sites) > NAMED:
         more = len(hours.sites) - NAMED
         out.append((f"{counted(more, 'more site follows', 'more sites follow')} below.".capitalize(),))
@@ -85,6 +86,12 @@ def lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
         rain = ranged(Amount(wettest.rain, "water_depth", 0), total_rain(wettest))
         out.append((f"Most rain falls at {wettest.name}: ", *rain, " in all."))
     return tuple(out)
+
+
+def _any(site: SiteTimeline) -> Words:
+    """In how many members descending warm dry air comes to a site at all; nothing without members."""
+    ever = math.nan if site.ranges is None else site.ranges.dry_wind.ever
+    return () if math.isnan(ever) else ("; some comes in ", Amount(ever, "share"), " of the members")
 
 
 def outcome(site: SiteTimeline, zone: tzinfo) -> Words:

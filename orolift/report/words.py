@@ -206,6 +206,17 @@ def counted(count: int, one: str, many: str) -> str:
     return f"{names[count] if count < len(names) else count} {one if count == 1 else many}"
 
 
+def short_name(name: str) -> str:
+    """A name for a line on the terminal, cut with three dots after 24 letters.
+
+    Examples
+    --------
+    >>> short_name("Lower Tarn"), short_name("Long Reach aerodrome and the land south of it")
+    ('Lower Tarn', 'Long Reach aerodrome an…')
+    """
+    return name if len(name) <= 24 else f"{name[:23].rstrip()}…"
+
+
 def plain(words: Words, units: Units) -> str:
     r"""A sentence as plain text.
 

@@ -74,7 +74,7 @@ class SpreadTable(Table):
     def _enough(cls, members: int) -> int:
         if 0 < members < LEAST_MEMBERS:
             raise ValueError(
-                f"{members} members have no range of 10 to 90 %; give {LEAST_MEMBERS} or more, or 0 for no ranges"
+                f"{members} is too few for a range of 10 to 90 %; give {LEAST_MEMBERS} or more, or 0 for no ranges"
             )
         return members
 

@@ -94,8 +94,8 @@ def outcomes(
                 yield Outcome(number, None if error else future.result(), error)
     except (BrokenExecutor, CancelledError) as error:
         raise WorkersError(
-            "a process that worked ended before its work was done, most likely for lack of memory; what was finished "
-            "is kept. Work with fewer at once, for example --jobs 1."
+            "a process that worked ended before its work was done, most likely for lack of memory. "
+            "Work with fewer at once, for example --jobs 1."
         ) from error
     finally:
         for future in running:

@@ -5,6 +5,7 @@ import signal
 import subprocess
 import sys
 import time
+from pathlib import Path
 
 import click
 import pytest
@@ -156,3 +157,39 @@ def test_ctrl_c_ends_it_without_a_word_of_the_workers():
     _, err = run.communicate(timeout=20)
     assert run.returncode == 130
     assert err == ""
+
+
+ORPHANS = """
+import os, sys, time
+from orolift.cli.executors import executor_of
+if __name__ == "__main__":
+    with executor_of(2) as executor:
+        print(executor.submit(os.getpid).result(), flush=True)
+        time.sleep(60)
+"""
+
+
+@pytest.mark.skipif(not Path("/proc/self").exists(), reason="reads the list of processes of Linux")
+def test_workers_end_when_the_command_is_killed():
+    """Kill -9 leaves nobody who could end them; a worker that waits for work would wait for ever."""
+    run = subprocess.Popen([sys.executable, "-c", ORPHANS], stdout=subprocess.PIPE, text=True, start_new_session=True)
+    worker = int(run.stdout.readline())
+    assert _runs(worker)
+    run.kill()
+    run.wait()  # the worker holds the pipe open, so not until its end
+    until = time.monotonic() + 10.0
+    while _runs(worker) and time.monotonic() < until:
+        time.sleep(0.05)
+    left = _runs(worker)
+    if left:
+        os.kill(worker, signal.SIGKILL)
+    run.stdout.close()
+    assert not left
+
+
+def _runs(pid):
+    """Whether a process is there and has not ended."""
+    try:
+        return Path(f"/proc/{pid}/stat").read_text().rpartition(")")[2].split()[0] != "Z"
+    except OSError:
+        return False

@@ -8,6 +8,7 @@ import sys
 import click
 import pytest
 
+from orolift.cli.executors import ended_as_by_ctrl_c
 from orolift.cli.gathering import gathered, leave_unfinished
 from orolift.cli.spreading import Workers
 from orolift.errors import WorkersError
@@ -48,7 +49,8 @@ def test_a_lost_process_leaves_what_was_finished(capfd):
 def test_a_request_to_end_is_heard_as_ctrl_c():
     """What was finished is kept, and the signal means what it did before."""
     before = signal.getsignal(signal.SIGTERM)
-    work = gathered(stopped_at, range(9), 9, "Numbers", Workers(1, quiet=True))
+    with ended_as_by_ctrl_c():
+        work = gathered(stopped_at, range(9), 9, "Numbers", Workers(1, quiet=True))
     assert work.stopped
     assert [one.value for one in work.found] == [0, 1, 2]
     assert signal.getsignal(signal.SIGTERM) is before
@@ -58,10 +60,12 @@ def test_a_request_to_end_is_heard_as_ctrl_c():
 
 SCRIPT = """
 import time
+from orolift.cli.executors import ended_as_by_ctrl_c
 from orolift.cli.gathering import gathered
 from orolift.cli.spreading import Workers
 print("started", flush=True)
-work = gathered(time.sleep, [0.01] * 3 + [0.3] * 1000, 1003, "Naps", Workers(2, quiet=True))
+with ended_as_by_ctrl_c():
+    work = gathered(time.sleep, [0.01] * 3 + [0.3] * 1000, 1003, "Naps", Workers(2, quiet=True))
 print(len(work.found), work.stopped or work.lost is not None, flush=True)
 """
 

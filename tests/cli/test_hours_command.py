@@ -222,6 +222,7 @@ def test_nothing_is_written_when_nothing_was_finished(series_folder, stopped, ca
         ),
         (["bearings", "case.toml", "--results", "case.toml"], "case.toml is an input of this run (case)"),
         (["hours", "case.toml", "series.csv", "--members", "5"], "--members 5: fewer than 10 have no range"),
+        (["hours", "case.toml", "series.csv", "--members", "1e9"], "'1e9' is not a valid whole number"),
         (["hours", "case.toml", "none.csv"], "series: none.csv cannot be found"),
         (["hours", "case.toml", "case.toml"], "case.toml: line 1"),
         (["bearings", "case.toml", "--step", "7"], "--step 7: it must divide 360"),

@@ -58,6 +58,10 @@ def four():
 
 @pytest.fixture(scope="module")
 def page(four):
+    return page_of(four)
+
+
+def page_of(four):
     made = datetime(2026, 1, 1, tzinfo=UTC)
     return bearings_page(four, title="T", made_at=made, version="0", notes=(), drawn=Drawn(Uncertainty(), 11, 1))
 
@@ -104,6 +108,13 @@ def test_sentences_carry_ranges_and_agreement(page, four):
     assert said[3] == "From 1 of 4 directions air crosses in some members only."
     line = read(members_line(four.sites[0], four, 11))
     assert line == "11 members: warmer by 8.0 °C (4.0 to 12.0); worst for fire as named in 100 %, warmest in 100 %"
+
+
+def test_ground_of_its_own_shelters_nothing(four):
+    """The highest ground before a site that lies highest itself is no kilometre away."""
+    site = four.sites[0]
+    bare = replace(four, sites=(replace(site, states=tuple(replace(s, shelter_distance=200.0) for s in site.states)),))
+    assert read(page_of(bare).sites[0].heading).endswith("by 8.0 °C (4.0 to 12.0), with no higher ground before it")
 
 
 def test_table_has_ranges_beneath_and_chances(page):

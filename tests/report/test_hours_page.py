@@ -12,6 +12,7 @@ from orolift.fire.sites import FireSettings
 from orolift.report.figures.axes import Scale
 from orolift.report.figures.placing import text_width
 from orolift.report.figures.time_axis import time_ticks
+from orolift.report.figures.timeline_panels import _holding
 from orolift.report.hours_page import hours_page
 from orolift.report.words import plain
 from orolift.spread.hour_members import RANGED, HourMembers
@@ -185,7 +186,8 @@ def test_the_site_says_what_its_members_say():
     said = read(site.sentences)
     assert "Descending warm dry air comes in 90 % of 20 members, most likely at 3 November 2026, 07:30 (90 %)" in said
     assert "in all it lasts 2 h" in said
-    assert "It is there in 90 % of the members" in said
+    assert "This stretch is there in 90 % of the members" in said
+    assert "; some comes in 90 % of the members." in read(with_members([9, 18, 18, 0]).lead)
     said = read([site.heading])
     assert "(before 3 Nov 07:00)" in said  # those that begin with the first hour may have begun before it
     assert "to 3 November 2026, 09:00 (3 Nov 09:00)" in said  # all end alike
@@ -219,6 +221,12 @@ def test_bands_lie_around_their_line_and_only_there():
     assert len(bands) == 1
     assert min(heights[0]) < min(heights[1]) <= max(heights[1]) < max(heights[0])
     assert not any("between" in c.kind for panel in page(5).sites[0].figure.drawing.panels for c in panel.curves)
+
+
+def test_a_range_is_widened_to_the_answer_as_in_words():
+    """Of the members 289 to 292 K: the answer above it is its upper end, and where there is no answer there is none."""
+    held = _holding(np.array([290.0, 295.0, np.nan]), np.array([[289.0, 292.0]] * 3))
+    np.testing.assert_array_equal(held, [[289.0, 292.0], [289.0, 295.0], [np.nan, np.nan]])
 
 
 def test_pages_with_members_say_what_ranges_hold():

@@ -93,7 +93,7 @@ model_vapour_g_per_kg = 0.6
 @pytest.mark.parametrize(
     ("text", "message"),
     [
-        ("members = 1", r"\[spread\] members: 1 members have no range of 10 to 90 %; give 10 or more, or 0"),
+        ("members = 1", r"\[spread\] members: 1 is too few for a range of 10 to 90 %; give 10 or more, or 0"),
         ("members = -1", r"\[spread\] members: -1 is outside 0 to 100000"),
         ("members = 1000000", r"members: 1e\+06 is outside 0 to 100000"),
         ("members = 12.5", r"members: a whole number is needed|members: .*12.5"),

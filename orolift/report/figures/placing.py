@@ -47,6 +47,21 @@ def text_width(text: str, letter: float) -> float:
     return letter * sum(widths)
 
 
+def shortened(text: str, room: float, letter: float) -> str:
+    """A text cut, with three dots at its end, so that it is no wider than the room for it.
+
+    Examples
+    --------
+    >>> shortened("threshold met: dry", 200.0, 10.0), shortened("threshold met: dry and windy", 100.0, 10.0)
+    ('threshold met: dry', 'threshold met:…')
+    """
+    if text_width(text, letter) <= room:
+        return text
+    while text and text_width(f"{text}…", letter) > room:
+        text = text[:-1]
+    return f"{text.rstrip()}…"
+
+
 def box_of(label: Label, letter: float) -> Box:
     """The room a label takes."""
     width = text_width(label.text, letter)

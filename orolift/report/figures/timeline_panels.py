@@ -103,8 +103,7 @@ def plans(site: SiteTimeline) -> tuple[PanelPlan, ...]:
         """Ranges where there is an answer that they belong to."""
         if ranges is None:
             return ()
-        known = {key: np.isfinite(values_of(site.states, key))[:, np.newaxis] for key in kinds}
-        return tuple(Band(np.where(known[key], ranges.full[key], np.nan), kind) for key, kind in kinds.items())
+        return tuple(Band(_holding(values_of(site.states, key), ranges.full[key]), kind) for key, kind in kinds.items())
 
     found = [
         PanelPlan(
@@ -158,7 +157,7 @@ def plans(site: SiteTimeline) -> tuple[PanelPlan, ...]:
         found.insert(0, PanelPlan(name, "share", 34.0, (chance,), floor=0.0, least=1.0, filled="chance-fill"))
     if np.isfinite(site.fine_fuel_code).any():
         code = Line(site.fine_fuel_code, "ink-line", "code")
-        carried = () if ranges is None else (Band(ranges.fine_fuel_code, "between"),)
+        carried = () if ranges is None else (Band(_holding(site.fine_fuel_code, ranges.fine_fuel_code), "between"),)
         name = "Fine Fuel Moisture Code, carried on"
         found.append(PanelPlan(name, "plain", 56.0, (code,), least=20.0, bands=carried))
     return tuple(found)
@@ -267,6 +266,11 @@ def panel_of(
         curves=tuple(curves),
         labels=tuple(labels),
     )
+
+
+def _holding(answer: Array, ends: Array) -> Array:
+    """Ranges (n, 2) widened to the answers (n,) that lie outside, as in words and tables; NaN without an answer."""
+    return np.column_stack([np.minimum(ends[:, 0], answer), np.maximum(ends[:, 1], answer)])
 
 
 def _between(x: Array, band: Band, up: Scale, together: int) -> list[Curve]:

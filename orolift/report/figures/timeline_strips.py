@@ -10,7 +10,7 @@ import numpy as np
 from orolift.report.figures.axes import Layout, Scale, place
 from orolift.report.figures.drawing import Curve, Label
 from orolift.report.figures.many_hours import all_of, any_of, runs
-from orolift.report.figures.placing import text_width
+from orolift.report.figures.placing import shortened, text_width
 from orolift.report.words import rounded_time
 
 if TYPE_CHECKING:
@@ -93,6 +93,7 @@ def threshold_rows(
             for a, b in shown.bars(stretch, one.judged)
         ]
         words = f"threshold met: {one.rule.name}" if one.met.any() else f"threshold not met: {one.rule.name}"
+        words = shortened(words, layout.right - layout.left, layout.letter)
         kind = "note danger-words" if one.met.any() else "note"
         labels.append(Label(words, layout.left, round(y - 0.5 * layout.letter, 1), "start", kind))
     return tuple(curves), tuple(labels), bottom
