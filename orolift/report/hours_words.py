@@ -134,7 +134,7 @@ def likely_all_the_same(site: SiteTimeline) -> tuple[Words, ...]:
             " of the members.",
         )
         for one, members in zip(site.thresholds, found, strict=False)
-        if not one.stretches and members.ever >= LIKELY
+        if not one.stretches and members.ever is not None and members.ever >= LIKELY
     )
 
 
@@ -145,7 +145,9 @@ def longest_of(found: Sequence[Stretch]) -> int:
 
 def _as_likely(members: StretchRange | None) -> Words:
     """In how many members a threshold is met in a stretch too; nothing without members."""
-    return () if members is None else ("; in ", Amount(members.chance, "share"), " of the members")
+    if members is None or members.chance is None:
+        return ()
+    return ("; in ", Amount(members.chance, "share"), " of the members")
 
 
 def total_rain(site: SiteTimeline) -> tuple[float, float] | None:
