@@ -75,7 +75,7 @@ def lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
                 " hours are here.",
             )
         )
-    out += [(*outcome(site, zone), ".") for site in hours.sites[:NAMED]]
+    out += [(*outcome(site, zone), *_as_likely(_longest(site)), ".") for site in hours.sites[:NAMED]]
     if len(hours.sites) > NAMED:
         more = len(hours.sites) - NAMED
         out.append((f"{counted(more, 'more site follows', 'more sites follow')} below.".capitalize(),))
@@ -105,9 +105,7 @@ def outcome(site: SiteTimeline, zone: tzinfo) -> Words:
         return (f"No air crosses to {site.name} in these hours",)
     if not found:
         return (f"No descending warm dry air reaches {site.name}",)
-    longest = longest_of(found)
-    members = None if site.ranges is None else site.ranges.dry_wind.stretches[longest]
-    when = _from_to(found[longest], members, zone)
+    when = _from_to(found[longest_of(found)], _longest(site), zone)
     if len(found) == 1:
         return (f"Descending warm dry air is at {site.name} ", *when)
     times = counted(len(found), "time", "times")
@@ -143,8 +141,15 @@ def longest_of(found: Sequence[Stretch]) -> int:
     return max(range(len(found)), key=lambda i: found[i].last - found[i].first)
 
 
+def _longest(site: SiteTimeline) -> StretchRange | None:
+    """The longest stretch of descending warm dry air in the members; None without one or without members."""
+    if site.ranges is None or not site.dry_winds:
+        return None
+    return site.ranges.dry_wind.stretches[longest_of(site.dry_winds)]
+
+
 def _as_likely(members: StretchRange | None) -> Words:
-    """In how many members a threshold is met in a stretch too; nothing without members."""
+    """In how many members something holds in a stretch too; nothing without members."""
     if members is None or members.chance is None:
         return ()
     return ("; in ", Amount(members.chance, "share"), " of the members")
