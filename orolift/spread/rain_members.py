@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.crossing.rainfall import LEAST_RAIN
 from orolift.errors import OroliftError
 from orolift.rain.catchments import catchment_rain
 from orolift.rain.gauges import gauge_comparison
@@ -52,7 +53,8 @@ class RainMembers:
     ----------
     values : dict of str to ndarray (m,)
         ``peak_rate``, ``mean_rate``, ``windward_share``, ``snow_share``, ``drying_ratio`` of the map; ``wind_speed``,
-        ``vapour_height``, ``drift``, ``floor`` of the theory; ``snow_level`` and ``melting_level``.
+        ``vapour_height``, ``drift``, ``floor`` of the theory; ``snow_level`` and ``melting_level``; ``rain_up_to``, the
+        highest cell on which 0.1 mm/h or more falls as rain, as `orolift.spread.winter_chances` takes it.
     catchments : dict of str to ndarray (m, nc)
         ``rate``, ``snow_share``, ``windward_share`` of each catchment.
     gauges : ndarray (m, ng) [kg m-2]
@@ -175,6 +177,7 @@ def _made(
             "floor": floor,
             "snow_level": snow.snow_level,
             "melting_level": snow.melting_level,
+            "rain_up_to": _rain_up_to(grid, rate * (1.0 - share)),
         },
         catchments={
             name: np.array([_or_nan(getattr(one, name)) for one in catchments])
@@ -182,6 +185,12 @@ def _made(
         },
         gauges=caught,
     )
+
+
+def _rain_up_to(grid: ElevationGrid, rain: Array) -> float:
+    """Highest cell with rain that counts; NaN without any."""
+    wet = np.isfinite(grid.elevation) & (np.nan_to_num(rain) >= LEAST_RAIN)
+    return float(grid.elevation[wet].max()) if wet.any() else np.nan
 
 
 def _or_nan(value: float | None) -> float:
@@ -203,6 +212,7 @@ def _around(rain: MapRain, middle: _Made, found: list[_Made | None]) -> RainMemb
         "floor": rain.reference + rain.column.dry_lift,
         "snow_level": rain.snow.snow_level,
         "melting_level": rain.snow.melting_level,
+        "rain_up_to": _rain_up_to(rain.found.grid, rain.rain),
     }
     answers = {
         name: np.array([_or_nan(getattr(one.rain, name)) for one in rain.catchments]) for name in middle.catchments
@@ -241,7 +251,8 @@ def _moved(name: str, answer: Array | np.float64, middle: Array | float, each: A
     at = np.asarray(middle, dtype=np.float64)
     if name in FACTORS:
         return np.asarray(np.where(at > 0.0, answer * each / np.where(at > 0.0, at, 1.0), each))
-    moved = np.asarray(answer + each - at)
+    known = np.isfinite(answer) & np.isfinite(at)
+    moved = np.asarray(each + np.where(known, answer - at, 0.0))
     return np.clip(moved, 0.0, 1.0) if name in SHARES else moved
 
 
