@@ -70,6 +70,7 @@ def test_lines_along_the_bars_reach_from_10_to_90_percent(four):
     """Warming 8 (4 to 12) from east and -6 (-10 to -2) from north, on a rim of 12 or more; the oblique bar has none."""
     figure = roses_figure(four, 0, "metric")
     assert "Warming: most +8.0 °C (+4.0 to +12.0) with wind from 90°." in figure.alt.replace("\u00a0", " ")
+    assert "Rain and snow: most 0.0 mm/h (0.0 to 3.0) with wind from 0°." in figure.alt.replace("\u00a0", " ")
     drawing = figure.drawing
     lines = drawing.roses[0].ranges
     assert len(lines) == 3
