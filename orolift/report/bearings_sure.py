@@ -108,7 +108,7 @@ def _other_worst(site: SiteBearings, bearings: Bearings) -> tuple[int, float] | 
 def _near(bearings: Bearings, number: int) -> NDArray[np.bool_]:
     """Directions that count as the same answer as one of them."""
     apart = np.abs((bearings.wind_from - bearings.wind_from[number] + np.pi) % (2.0 * np.pi) - np.pi)
-    return apart <= reach_of(bearings.step) + 1e-6
+    return np.asarray(apart <= reach_of(bearings.step) + 1e-6, dtype=np.bool_)
 
 
 def though_words(site: SiteBearings, bearings: Bearings) -> Words:
