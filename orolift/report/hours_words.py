@@ -20,6 +20,8 @@ if TYPE_CHECKING:
 
 LEAST_RAIN = 0.1
 """Rain [kg m-2] below which none is said to fall."""
+MENTIONED_RAIN = 0.5
+"""Rain [kg m-2] from which on the heading has it; it reads as 1 mm."""
 LIKELY = 0.5
 """Chance from which on a threshold is named at the head though the answer does not meet it; a judgement."""
 NAMED = 4
@@ -39,7 +41,7 @@ def heading(hours: Hours) -> Words:
     """
     sites = len(hours.sites)
     dry = sum(bool(site.dry_winds) for site in hours.sites)
-    rain = max(site.rain for site in hours.sites)
+    wettest = max(hours.sites, key=lambda site: site.rain)
     where = f"{counted(dry, 'site has', 'sites have')} descending warm dry air"
     if not dry:
         where = "no descending warm dry air"
@@ -47,7 +49,12 @@ def heading(hours: Hours) -> Words:
         where = "descending warm dry air comes through"
     elif dry == sites:
         where = "descending warm dry air at every site"
-    wet: Words = (", and ", Amount(rain, "water_depth", 0), " of rain at most") if rain >= 0.5 else (", and no rain",)
+    ends = total_rain(wettest)
+    wet: Words = (", and no rain",)
+    if wettest.rain >= MENTIONED_RAIN:
+        wet = (", and ", *ranged(Amount(wettest.rain, "water_depth", 0), ends), " of rain at most")
+    elif ends is not None and ends[1] >= MENTIONED_RAIN:
+        wet = (", and hardly any rain",)
     return (f"{where[:1].upper()}{where[1:]}", *wet)
 
 

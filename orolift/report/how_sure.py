@@ -182,7 +182,8 @@ def _contents(spread: Spread) -> tuple[Words, ...]:
         "The heights air comes from are no such range, but those of the middle eight tenths of the air. Without a "
         "range stand figures, the way of the air and the section in numbers, which show the answer itself; the ground "
         "and distances along it; what the case gives or prescribes; the map by height of the ground and the simple "
-        "estimates of rain; the two ends of blocking, which are a range themselves; and chances."
+        "estimates of rain; the levels of the incoming air and the wavelength of trapped waves, which are the answer's "
+        "alone; the two ends of blocking, which are a range themselves; and chances."
     )
     return (text,), (bare,)
 
