@@ -182,8 +182,8 @@ def _contents(spread: Spread) -> tuple[Words, ...]:
         "The heights air comes from are no such range, but those of the middle eight tenths of the air. Of the answer "
         "alone, and without a range, are most figures, the way of the air, the section in numbers, the levels of the "
         "incoming air, the wavelength of trapped waves, the map by height of the ground and the simple estimates of "
-        "rain. The ground, distances along it and what the case gives or prescribes have none. Chances and the two ends "
-        "of blocking need none: those ends are a range themselves."
+        "rain. The ground, distances along it and what the case gives or prescribes have none. Chances and the two "
+        "ends of blocking need none: those ends are a range themselves."
     )
     return (text,), (bare,)
 
