@@ -124,6 +124,7 @@ def members_of(
     solved = solved_members(situation, variation, streamlines=streamlines)
     crosses, ground, when = solved.crosses, solved.ground, solved.when
     values = _of_incoming(variation.incoming) | {"cross_range_wind": solved.crest_wind}
+    values = {name: np.where(crosses, value, np.nan) for name, value in values.items()}
     if solved.solution is None or solved.part is None:
         return Members(crosses, values, {})
     solution, part = solved.solution, solved.part

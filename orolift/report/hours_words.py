@@ -82,7 +82,7 @@ def lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
                 " hours are here.",
             )
         )
-    out += [(*outcome(site, zone), ".") for site in hours.sites[:NAMED]]
+    out += [(*outcome(site, zone), *_as_likely(_longest(site)), ".") for site in hours.sites[:NAMED]]
     if len(hours.sites) > NAMED:
         more = len(hours.sites) - NAMED
         out.append((f"{counted(more, 'more site follows', 'more sites follow')} below.".capitalize(),))
@@ -112,9 +112,7 @@ def outcome(site: SiteTimeline, zone: tzinfo) -> Words:
         return (f"No air crosses to {site.name} in these hours",)
     if not found:
         return (f"No descending warm dry air reaches {site.name}",)
-    longest = longest_of(found)
-    members = None if site.ranges is None else site.ranges.dry_wind.stretches[longest]
-    when = _from_to(found[longest], members, zone)
+    when = _from_to(found[longest_of(found)], _longest(site), zone)
     if len(found) == 1:
         return (f"Descending warm dry air is at {site.name} ", *when)
     times = counted(len(found), "time", "times")
@@ -141,7 +139,7 @@ def likely_all_the_same(site: SiteTimeline) -> tuple[Words, ...]:
             " of the members.",
         )
         for one, members in zip(site.thresholds, found, strict=False)
-        if not one.stretches and members.ever >= LIKELY
+        if not one.stretches and members.ever is not None and members.ever >= LIKELY
     )
 
 
@@ -150,9 +148,18 @@ def longest_of(found: Sequence[Stretch]) -> int:
     return max(range(len(found)), key=lambda i: found[i].last - found[i].first)
 
 
+def _longest(site: SiteTimeline) -> StretchRange | None:
+    """The longest stretch of descending warm dry air in the members; None without one or without members."""
+    if site.ranges is None or not site.dry_winds:
+        return None
+    return site.ranges.dry_wind.stretches[longest_of(site.dry_winds)]
+
+
 def _as_likely(members: StretchRange | None) -> Words:
-    """In how many members a threshold is met in a stretch too; nothing without members."""
-    return () if members is None else ("; in ", Amount(members.chance, "share"), " of the members")
+    """In how many members something holds in a stretch too; nothing without members."""
+    if members is None or members.chance is None:
+        return ()
+    return ("; in ", Amount(members.chance, "share"), " of the members")
 
 
 def total_rain(site: SiteTimeline) -> tuple[float, float] | None:

@@ -193,6 +193,11 @@ def test_the_site_says_what_its_members_say():
     assert "to 3 November 2026, 09:00 (3 Nov 09:00)" in said  # all end alike
 
 
+def test_the_head_says_how_likely_the_longest_stretch_is():
+    """Six of twenty members share it: the answer is not what most of them say."""
+    assert read(with_members([0, 6, 6, 0]).lead).split(". ")[0].rstrip(".").endswith("; in 30 % of the members")
+
+
 def test_rows_have_their_ranges_below():
     row = with_members([0, 20, 20, 0]).sites[0].rows[1]
     assert [part if isinstance(part, str) else part.value for part in row.spans["temperature"]] == [

@@ -205,6 +205,7 @@ def test_a_member_without_enough_wind_is_no_error(calm):
     found = members_of(calm, variation_of(calm, uncertainty, drawn, freezing=True), streamlines=30)
     assert 0 < found.crosses.sum() < 8
     assert np.array_equal(found.values["cross_range_wind"] > 2.0, found.crosses)
+    assert np.array_equal(np.isfinite(found.values["temperature"]), found.crosses)
     assert np.array_equal(np.isfinite(found.sites["temperature"][:, 0]), found.crosses)
     drawn["wind"] = np.full(8, 0.2)
     none = members_of(calm, variation_of(calm, uncertainty, drawn, freezing=True))
