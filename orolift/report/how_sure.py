@@ -179,11 +179,11 @@ def _contents(spread: Spread) -> tuple[Words, ...]:
         "known yet: their ranges are those of the inputs alone, and too narrow."
     )
     bare = (
-        "The heights air comes from are no such range, but those of the middle eight tenths of the air. Without a "
-        "range stand figures, the way of the air and the section in numbers, which show the answer itself; the ground "
-        "and distances along it; what the case gives or prescribes; the map by height of the ground and the simple "
-        "estimates of rain; the levels of the incoming air and the wavelength of trapped waves, which are the answer's "
-        "alone; the two ends of blocking, which are a range themselves; and chances."
+        "The heights air comes from are no such range, but those of the middle eight tenths of the air. Of the answer "
+        "alone, and without a range, are most figures, the way of the air, the section in numbers, the levels of the "
+        "incoming air, the wavelength of trapped waves, the map by height of the ground and the simple estimates of "
+        "rain. The ground, distances along it and what the case gives or prescribes have none. Chances and the two "
+        "ends of blocking need none: those ends are a range themselves."
     )
     return (text,), (bare,)
 

@@ -169,7 +169,7 @@ def test_a_nearly_calm_answer_does_not_blow_up_what_is_aloft(crossing, settings)
     low, high = with_members(replace(site, weather=calm), given, settings, 0.03).ranges["hot_dry_windy"]
     strongest = weather.layer_wind[height <= 500.0].max()
     factor = (strongest + 0.98 * weather.layer_wind[near].mean()) / strongest
-    assert low == high == pytest.approx(factor * float(site.indices.hot_dry_windy))
+    assert 1.0 < low / float(site.indices.hot_dry_windy) == high / float(site.indices.hot_dry_windy) <= factor
 
 
 def test_rain_of_the_members_counts(crossing, settings):
