@@ -236,7 +236,7 @@ def _values(
     height = own[:, np.newaxis] + level
     band = CREST_BAND * shape.half_width
     is_lee = distance - shape.crest_distance > band
-    change = _ground_changes(one, distance, height, here, is_lee)
+    change = _ground_changes(one, distance, own, level, here, is_lee)
     air = _arriving(one, here, height, is_lee, change)
     pool = solution.pools[one.number]
     still = (None, None) if pool is None else pool_air(pool, height)
@@ -284,28 +284,28 @@ def _here(solution: Solution, number: int, every: int) -> Here:
 
 
 def _ground_changes(
-    one: _Member, distance: Array, elevation: Array, here: Here, is_lee: NDArray[np.bool_]
+    one: _Member, distance: Array, own: Array, level: Array, here: Here, is_lee: NDArray[np.bool_]
 ) -> tuple[Array, Array]:
-    """Warming and moistening by the ground over the mixing depth at elevations (n, q), as sites have it; else 0."""
+    """Warming and moistening by the ground over the mixing depth, (n, q), as sites at levels over it have it; else 0."""
     solution, settings, when = one.solution, one.settings, one.when
-    out = np.zeros((2, *elevation.shape))
+    out = np.zeros((2, own.size, level.size))
     known = when.time is not None and when.longitude is not None and when.latitude is not None
     if not (settings.surface_heat and known and is_lee.any()):
         return out[0], out[1]
-    places, levels = int(is_lee.sum()), elevation.shape[1]
+    places = int(is_lee.sum())
     rows = Here(here.share, here.number, *(getattr(here, f.name)[is_lee] for f in fields(Here)[2:]))
-    height = (elevation[is_lee][:, :, np.newaxis] + PROFILE).reshape(places, -1)
+    # the profiles over the levels of a place have most of their heights in common: each is worked out once
+    above, where = np.unique((level[:, np.newaxis] + PROFILE).ravel(), return_inverse=True)
     air = lee_profile(
         one.incoming,
         rows,
-        height,
+        own[is_lee][:, np.newaxis] + above,
         blocked_top=np.full(places, one.blocked_top),
         going_round=np.full(places, one.going_round),
-        heating=np.zeros_like(height),
         freezing=settings.freezing,
     )
     pressure, temperature, vapour = (
-        values.reshape(places, levels, -1) for values in (air.pressure, air.temperature, air.vapour)
+        values[:, where].reshape(places, level.size, -1) for values in (air.pressure, air.temperature, air.vapour)
     )
     own = slice(one.number, one.number + 1)
     times, cloudy = solution.travel_times[own], solution.overcast[own]
@@ -315,7 +315,7 @@ def _ground_changes(
         float(when.time or 0.0),
         float(when.longitude or 0.0),
         float(when.latitude or 0.0),
-        way[:, np.newaxis] + np.zeros((places, levels)),
+        way[:, np.newaxis],
         temperature[..., 0],
         pressure[..., 0],
         cover=None if cover is None else cover[:, np.newaxis],
