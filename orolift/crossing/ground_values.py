@@ -16,13 +16,13 @@ from orolift.crossing.crossing import crest_component, ground_under
 from orolift.crossing.facts import pressure_differences
 from orolift.crossing.heat import ground_change, surface_heat
 from orolift.crossing.lee_wind import lee_winds
-from orolift.crossing.members import OF_MEMBERS, solved_members
+from orolift.crossing.members import solved_members
 from orolift.crossing.picture import CREST_BAND
 from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import When
 from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import PROFILE
-from orolift.crossing.solve import solve
+from orolift.crossing.solve import OF_MEMBERS, solve
 from orolift.crossing.way import cloud_water, cover_on_the_way
 from orolift.crossing.wind import NEAR_GROUND
 from orolift.flow.surface_wind import wind_near_ground
@@ -286,7 +286,7 @@ def _here(solution: Solution, number: int, every: int) -> Here:
 def _ground_changes(
     one: _Member, distance: Array, own: Array, level: Array, here: Here, is_lee: NDArray[np.bool_]
 ) -> tuple[Array, Array]:
-    """Warming and moistening by the ground over the mixing depth, (n, q), as sites at levels over it have it; else 0."""
+    """Warming and moistening by the ground over the mixing depth, (n, q), as sites at these levels have it; else 0."""
     solution, settings, when = one.solution, one.settings, one.when
     out = np.zeros((2, own.size, level.size))
     known = when.time is not None and when.longitude is not None and when.latitude is not None

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from dataclasses import dataclass, fields, replace
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -13,7 +13,7 @@ from orolift.crossing.passes import Pass, Setup, flow_over, next_pass, renewed, 
 from orolift.crossing.start import column_pressure, mass_of_streamlines, start_heights, starting_air
 from orolift.crossing.upwind import LEAST_VAPOUR
 from orolift.flow.boundary import start_level
-from orolift.flow.members import some_members, some_points
+from orolift.flow.members import some_members, some_points, together
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
@@ -72,6 +72,37 @@ class Streams:
     carried: Array
     falling: Falling
     settled: NDArray[np.bool_]
+
+    def renewed(self, some: Streams, which: NDArray[np.intp]) -> Streams:
+        """The same with some members worked out anew: their flow and what it does to the air that set out."""
+        if which.size == self.settled.size:
+            return some
+        rest = np.setdiff1d(np.arange(self.settled.size), which)
+
+        def put(old: Array, new: Array, where: Any) -> Array:
+            out = np.array(old)
+            out[where] = new
+            return out
+
+        marched = (slice(None), which)
+        air, falling = (
+            replace(
+                old,
+                **{
+                    one.name: put(getattr(old, one.name), getattr(new, one.name), marched)
+                    for one in fields(old)
+                    if one.name != "beyond"
+                },
+            )
+            for old, new in ((self.air, some.air), (self.falling, some.falling))
+        )
+        return replace(
+            self,
+            flow=together([some_members(self.flow, rest), some.flow], [rest, which]),
+            air=air,
+            falling=replace(falling, beyond=put(self.falling.beyond, some.falling.beyond, which)),
+            settled=put(self.settled, some.settled, which),
+        )
 
 
 def streams(
