@@ -307,8 +307,8 @@ def _ground_changes(
     pressure, temperature, vapour = (
         values[:, where].reshape(places, level.size, -1) for values in (air.pressure, air.temperature, air.vapour)
     )
-    own = slice(one.number, one.number + 1)
-    times, cloudy = solution.travel_times[own], solution.overcast[own]
+    this = slice(one.number, one.number + 1)
+    times, cloudy = solution.travel_times[this], solution.overcast[this]
     way = np.interp(distance[is_lee], one.ground.transect.distance, times[0])
     cover = cover_on_the_way(times[:, solution.streams.place], cloudy, way[np.newaxis])[0] if cloudy.any() else None
     heat = surface_heat(

@@ -9,6 +9,8 @@ import numpy as np
 
 from orolift.air.condensation import condensation_point
 from orolift.air.parcel import Parcel
+from orolift.crossing.falling import Falling
+from orolift.crossing.march import March
 from orolift.crossing.passes import Pass, Setup, flow_over, next_pass, renewed, some_of
 from orolift.crossing.start import column_pressure, mass_of_streamlines, start_heights, starting_air
 from orolift.crossing.upwind import LEAST_VAPOUR
@@ -19,8 +21,6 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
-    from orolift.crossing.falling import Falling
-    from orolift.crossing.march import March
     from orolift.crossing.settings import Settings
     from orolift.crossing.upwind import Upwind
     from orolift.flow.airflow import Airflow
@@ -78,31 +78,27 @@ class Streams:
         if which.size == self.settled.size:
             return some
         rest = np.setdiff1d(np.arange(self.settled.size), which)
-
-        def put(old: Array, new: Array, where: Any) -> Array:
-            out = np.array(old)
-            out[where] = new
-            return out
-
-        marched = (slice(None), which)
-        air, falling = (
-            replace(
-                old,
-                **{
-                    one.name: put(getattr(old, one.name), getattr(new, one.name), marched)
-                    for one in fields(old)
-                    if one.name != "beyond"
-                },
-            )
-            for old, new in ((self.air, some.air), (self.falling, some.falling))
-        )
+        beyond = _put(self.falling.beyond, some.falling.beyond, which)
         return replace(
             self,
             flow=together([some_members(self.flow, rest), some.flow], [rest, which]),
-            air=air,
-            falling=replace(falling, beyond=put(self.falling.beyond, some.falling.beyond, which)),
-            settled=put(self.settled, some.settled, which),
+            air=March(**_over_places(self.air, some.air, which)),
+            falling=Falling(beyond=beyond, **_over_places(self.falling, some.falling, which)),
+            settled=_put(self.settled, some.settled, which),
         )
+
+
+def _over_places(old: March | Falling, new: March | Falling, which: NDArray[np.intp]) -> dict[str, Any]:
+    """Fields (nk, m, ...) with some members anew."""
+    names = [one.name for one in fields(old) if one.name != "beyond"]
+    return {name: _put(getattr(old, name), getattr(new, name), (slice(None), which)) for name in names}
+
+
+def _put(old: NDArray[Any], new: NDArray[Any], where: Any) -> NDArray[Any]:
+    """An array with some of it anew."""
+    out = np.array(old)
+    out[where] = new
+    return out
 
 
 def streams(
