@@ -19,7 +19,7 @@ from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import Site, WarmingParts, When
 from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import Arrived, arrived
-from orolift.crossing.solve import NOTHING, solve
+from orolift.crossing.solve import NOTHING, OF_MEMBERS, solve
 from orolift.crossing.way import way_to
 from orolift.crossing.wind import winds_at
 from orolift.terrain.features import features
@@ -37,8 +37,6 @@ if TYPE_CHECKING:
 
 PARTS = tuple(field.name for field in fields(WarmingParts))
 """Parts of the warming, by name."""
-OF_MEMBERS = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
-"""Fields of the incoming air that members have each for itself."""
 
 
 @dataclass(frozen=True, eq=False)

@@ -9,8 +9,8 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.crossing.members import OF_MEMBERS
 from orolift.crossing.rainfall import LEAST_RAIN
+from orolift.crossing.solve import OF_MEMBERS
 from orolift.errors import OroliftError
 from orolift.rain.catchments import catchment_rain
 from orolift.rain.gauges import gauge_comparison
