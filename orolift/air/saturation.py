@@ -154,7 +154,7 @@ def saturation_vapour_pressure_over_liquid(temperature: ArrayLike) -> NDArray[np
     array([ 611.7, 2338. ])
     """
     t = checked_temperature(temperature) / phase.TRIPLE
-    log_e, _, _ = phase.condensate(np.log(t), t, freezing=False)
+    log_e = phase.log_saturation(np.log(t), t, freezing=False)
     return np.asarray(phase.TRIPLE_PRESSURE * np.exp(log_e))
 
 
@@ -255,7 +255,7 @@ def saturation_vapour_pressure(temperature: ArrayLike, *, freezing: bool = True)
     array([1227.8,  266.6,   38. ])
     """
     t = checked_temperature(temperature) / phase.TRIPLE
-    log_e, _, _ = phase.condensate(np.log(t), t, freezing=freezing)
+    log_e = phase.log_saturation(np.log(t), t, freezing=freezing)
     return np.asarray(phase.TRIPLE_PRESSURE * np.exp(log_e))
 
 

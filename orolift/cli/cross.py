@@ -16,6 +16,8 @@ from orolift.cli.over_map import RainFiles, map_inputs_of, map_of, rain_files, r
 from orolift.cli.spreading import Workers, spread_for
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     from orolift.crossing.result import Crossing, LeeAir
     from orolift.crossing.situation import Situation
     from orolift.fire.sites import SiteFire
@@ -43,6 +45,7 @@ class Worked:
     lee: MappedLee | None
     results: Results
     spread: Spread | None
+    winter: Mapping[str, float]
 
 
 @click.command(context_settings={"help_option_names": ["-h", "--help"]})
@@ -224,11 +227,18 @@ def work_out(case: str, files: RainFiles | None = None, workers: Workers | None 
     lee = None
     if files.lee_map is not None:
         lee = mapped_lee(inputs, jobs=workers.jobs, scheduler=workers.scheduler, quiet=workers.quiet)
-    flags = flags_of(inputs, crossing, mapped)
+    from orolift.spread.winter_chances import winter_chances
+
+    winter = winter_chances(
+        spread,
+        snow_cover_above=inputs.case.rain.snow_cover_above_m,
+        mapped=None if mapped is None else mapped.members,
+    )
+    flags = flags_of(inputs, crossing, mapped, winter)
     fire, reached, to_know = fire_of(inputs, own, crossing, parts, spread)
     crossing = replace(crossing, cautions=(*crossing.cautions, *to_know))
-    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread)
-    return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results, spread)
+    results = results_of(crossing, inputs.case, mapped, (*flags, *reached), fire, inputs.places, spread, winter)
+    return Worked(inputs, situation, crossing, mapped, flags, fire, lee, results, spread, winter)
 
 
 def fire_of(
@@ -262,7 +272,7 @@ def _with_chances(one: SiteFire, air: LeeAir, inputs: Inputs, crossing: Crossing
     return with_members(one, arrays, inputs.fire, crossing.settings.roughness, inputs.when, inputs=alone)
 
 
-def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple[str, ...]:
+def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None, winter: Mapping[str, float]) -> tuple[str, ...]:
     """Danger thresholds reached, in sentences."""
     from orolift.rain.winter import winter_flags
 
@@ -271,6 +281,7 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None) -> tuple
         snow_cover_above=inputs.case.rain.snow_cover_above_m,
         grid=None if mapped is None else mapped.inputs.placed.grid,
         rain_on_map=None if mapped is None else mapped.rain.rain,
+        chances=winter,
     )
 
 
@@ -303,6 +314,7 @@ def report_of(worked: Worked, units: Units) -> str:
         findings=worked.inputs.findings,
         stagnant_top=worked.situation.stagnant_top,
         spread=worked.spread,
+        winter=worked.winter,
         fire=worked.fire,
         rules=worked.inputs.fire.rules,
     )

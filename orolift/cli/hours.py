@@ -189,11 +189,12 @@ def summary_of(hours: Hours, setup: HourSetup, units: Units = "metric") -> list[
         spells = [said(site, number).replace(NO_BREAK_SPACE, " ") for number in range(len(site.dry_winds))[:2]]
         more = f", and {len(site.dry_winds) - 2} more" if len(site.dry_winds) > 2 else ""
         dry = f"descending warm dry air from {', from '.join(spells)}{more}" if spells else "no descending warm dry air"
-        if site.ranges is not None:
+        if site.ranges is not None and site.ranges.dry_wind.ever is not None:
             dry += f" (in {100.0 * site.ranges.dry_wind.ever:.0f} % of the members)"
         rain = plain(ranged(Amount(site.rain, "water_depth", 0), total_rain(site)), units).replace(NO_BREAK_SPACE, " ")
         lines.append(
-            f"{short_name(site.name)}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; {rain} of rain and snow"
+            f"{short_name(site.name)}  {site.crossing_hours} of {len(site.states)} hours cross; {dry}; "
+            f"{rain} of rain and snow"
         )
         met = " ".join(plain(words, units) for words in dangers(site, zone)).replace("\u00a0", " ")
         lines += [f"Fire      {met} A threshold met is not a warning."] if met else []

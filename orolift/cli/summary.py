@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 from orolift.report.how_sure import span_words
 from orolift.report.quantities import Amount
 from orolift.report.spans import Spans, ranged
-from orolift.report.words import moment, plain
+from orolift.report.words import moment, plain, short_name
 
 if TYPE_CHECKING:
     from typing import Protocol

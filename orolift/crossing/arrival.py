@@ -23,7 +23,7 @@ from orolift.flow.members import some_points
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
-    from orolift.air.column import IncomingAir
+    from orolift.air.column import AirAtHeights, IncomingAir
     from orolift.crossing.streams import Streams
 
     Array = NDArray[np.float64]
@@ -155,11 +155,7 @@ def over(streams: Streams, distance: Array, where: float) -> Here:
 
 def sampled(levels: Array, values: Array, heights: Array) -> Array:
     """Values (m, nz) given at levels (m, nz), at heights (m, q), by straight lines; ends beyond."""
-    above = np.sum(levels[:, np.newaxis, :] <= heights[:, :, np.newaxis], axis=-1)
-    index, rows = np.clip(above, 1, levels.shape[-1] - 1), np.arange(levels.shape[0])[:, np.newaxis]
-    low, high = levels[rows, index - 1], levels[rows, index]
-    share = np.clip((heights - low) / (high - low), 0.0, 1.0)
-    return np.asarray((1.0 - share) * values[rows, index - 1] + share * values[rows, index])
+    return np.stack([np.interp(*row) for row in zip(heights, levels, values, strict=True)])
 
 
 def frozen_temperature(pressure: Array, temperature: Array, vapour: Array, cloud: Array, target: Array) -> Array:
@@ -276,7 +272,7 @@ def lee_profile(
     *,
     blocked_top: Array,
     going_round: Array,
-    heating: Array,
+    heating: Array | None = None,
     moistening: Array | None = None,
     freezing: bool,
 ) -> Parcel:
@@ -289,7 +285,8 @@ def lee_profile(
     height : ndarray (m, q) [m above sea level]
     blocked_top, going_round : ndarray (m,)
         As for `arrival`.
-    heating : ndarray (m, q) [K]
+    heating : ndarray (m, q), optional [K]
+        By the ground; None leaves the ground out.
     moistening : ndarray (m, q), optional [kg per kg of dry air]
     freezing : bool
 
@@ -300,14 +297,30 @@ def lee_profile(
     pressure = pressure_at(here, height)
     share = np.where(height < blocked_top[:, np.newaxis], going_round[:, np.newaxis], 0.0)
     s, water = (sampled(here.height, x, height) for x in (here.entropy, here.vapour + here.cloud))
-    crossing = equilibrium_from_entropy(pressure, s, water, freezing=freezing)
-    low = interpolated(incoming, height)
-    low_t = frozen_temperature(low.pressure, low.temperature, low.vapour, low.cloud, pressure)
-    low_heat = enthalpy(Parcel(pressure, low_t, low.vapour, low.cloud), freezing=freezing)
-    total = (1.0 - share) * water + share * (low.vapour + low.cloud)
-    heat = (1.0 - share) * enthalpy(crossing, freezing=freezing) + share * low_heat
-    mixed = equilibrium_from_enthalpy(pressure, heat, total, freezing=freezing)
-    return with_ground(mixed, heating, moistening, freezing=freezing)
+    air = equilibrium_from_entropy(pressure, s, water, freezing=freezing)
+    if share.any():
+        air = _mixed_in(air, interpolated(incoming, height), share, freezing=freezing)
+    return air if heating is None else with_ground(air, heating, moistening, freezing=freezing)
+
+
+def _mixed_in(air: Parcel, low: AirAtHeights, share: Array, *, freezing: bool) -> Parcel:
+    """Air with a share of what went round mixed in, in enthalpy and water; worked out only where there is a share."""
+    some = share > 0.0
+    part = share[some]
+    p, t, v, cloud = (x[some] for x in (air.pressure, air.temperature, air.vapour, air.cloud))
+    low_p, low_t, low_v, low_cloud = (
+        np.broadcast_to(x, share.shape)[some] for x in (low.pressure, low.temperature, low.vapour, low.cloud)
+    )
+    beside = Parcel(p, frozen_temperature(low_p, low_t, low_v, low_cloud, p), low_v, low_cloud)
+    heat = (1.0 - part) * enthalpy(Parcel(p, t, v, cloud), freezing=freezing) + part * enthalpy(
+        beside, freezing=freezing
+    )
+    water = (1.0 - part) * (v + cloud) + part * (low_v + low_cloud)
+    mixed = equilibrium_from_enthalpy(p, heat, water, freezing=freezing)
+    out = [np.array(x) for x in (air.temperature, air.vapour, air.cloud)]
+    for whole, new in zip(out, (mixed.temperature, mixed.vapour, mixed.cloud), strict=True):
+        whole[some] = new
+    return Parcel(air.pressure, *out)
 
 
 def with_ground(air: Parcel, warming: Array, moistening: Array | None, *, freezing: bool) -> Parcel:

@@ -16,13 +16,13 @@ from orolift.crossing.crossing import crest_component, ground_under
 from orolift.crossing.facts import pressure_differences
 from orolift.crossing.heat import ground_change, surface_heat
 from orolift.crossing.lee_wind import lee_winds
-from orolift.crossing.members import OF_MEMBERS, solved_members
+from orolift.crossing.members import solved_members
 from orolift.crossing.picture import CREST_BAND
 from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import When
 from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import PROFILE
-from orolift.crossing.solve import solve
+from orolift.crossing.solve import OF_MEMBERS, solve
 from orolift.crossing.way import cloud_water, cover_on_the_way
 from orolift.crossing.wind import NEAR_GROUND
 from orolift.flow.surface_wind import wind_near_ground
@@ -236,7 +236,7 @@ def _values(
     height = own[:, np.newaxis] + level
     band = CREST_BAND * shape.half_width
     is_lee = distance - shape.crest_distance > band
-    change = _ground_changes(one, distance, height, here, is_lee)
+    change = _ground_changes(one, distance, own, level, here, is_lee)
     air = _arriving(one, here, height, is_lee, change)
     pool = solution.pools[one.number]
     still = (None, None) if pool is None else pool_air(pool, height)
@@ -284,38 +284,38 @@ def _here(solution: Solution, number: int, every: int) -> Here:
 
 
 def _ground_changes(
-    one: _Member, distance: Array, elevation: Array, here: Here, is_lee: NDArray[np.bool_]
+    one: _Member, distance: Array, own: Array, level: Array, here: Here, is_lee: NDArray[np.bool_]
 ) -> tuple[Array, Array]:
-    """Warming and moistening by the ground over the mixing depth at elevations (n, q), as sites have it; else 0."""
+    """Warming and moistening by the ground over the mixing depth, (n, q), as sites at these levels have it; else 0."""
     solution, settings, when = one.solution, one.settings, one.when
-    out = np.zeros((2, *elevation.shape))
+    out = np.zeros((2, own.size, level.size))
     known = when.time is not None and when.longitude is not None and when.latitude is not None
     if not (settings.surface_heat and known and is_lee.any()):
         return out[0], out[1]
-    places, levels = int(is_lee.sum()), elevation.shape[1]
+    places = int(is_lee.sum())
     rows = Here(here.share, here.number, *(getattr(here, f.name)[is_lee] for f in fields(Here)[2:]))
-    height = (elevation[is_lee][:, :, np.newaxis] + PROFILE).reshape(places, -1)
+    # the profiles over the levels of a place have most of their heights in common: each is worked out once
+    above, where = np.unique((level[:, np.newaxis] + PROFILE).ravel(), return_inverse=True)
     air = lee_profile(
         one.incoming,
         rows,
-        height,
+        own[is_lee][:, np.newaxis] + above,
         blocked_top=np.full(places, one.blocked_top),
         going_round=np.full(places, one.going_round),
-        heating=np.zeros_like(height),
         freezing=settings.freezing,
     )
     pressure, temperature, vapour = (
-        values.reshape(places, levels, -1) for values in (air.pressure, air.temperature, air.vapour)
+        values[:, where].reshape(places, level.size, -1) for values in (air.pressure, air.temperature, air.vapour)
     )
-    own = slice(one.number, one.number + 1)
-    times, cloudy = solution.travel_times[own], solution.overcast[own]
+    this = slice(one.number, one.number + 1)
+    times, cloudy = solution.travel_times[this], solution.overcast[this]
     way = np.interp(distance[is_lee], one.ground.transect.distance, times[0])
     cover = cover_on_the_way(times[:, solution.streams.place], cloudy, way[np.newaxis])[0] if cloudy.any() else None
     heat = surface_heat(
         float(when.time or 0.0),
         float(when.longitude or 0.0),
         float(when.latitude or 0.0),
-        way[:, np.newaxis] + np.zeros((places, levels)),
+        way[:, np.newaxis],
         temperature[..., 0],
         pressure[..., 0],
         cover=None if cover is None else cover[:, np.newaxis],

@@ -50,6 +50,8 @@ LEAST_DEPTH = 100.0
 SPACING = 25.0
 STEPS = 145
 """Moments of the way at which fluxes are worked out."""
+_TRAPEZOIDS = np.concatenate([[0.5], np.ones(STEPS - 2), [0.5]])
+"""Weights of even steps by the trapezoidal rule, but for the length of a step."""
 SHADE, SHADE_POWER = 0.75, 3.4
 """A sky with the share N under cloud passes 1 - 0.75 N^3.4 of the sun (Kasten and Czeplak 1980, from memory)."""
 CLOUD_LONGWAVE = 60.0
@@ -60,7 +62,7 @@ MUCH = 1.0
 
 @dataclass(frozen=True, eq=False)
 class SurfaceHeat:
-    """What the ground gave the air. Arrays of the shape of the travel time.
+    """What the ground gave the air. Arrays of one shape: travel time and air broadcast.
 
     Attributes
     ----------
@@ -224,7 +226,7 @@ def surface_heat(
         Arrival, seconds since 1970-01-01T00:00:00 UTC.
     longitude, latitude : float [degrees east, degrees north]
     travel_time : array_like, any shape [s]
-        Of the way; at most 24 hours count.
+        Of the way; at most 24 hours count. The sun is worked out once for each.
     temperature, pressure : array_like, broadcast with it [K], [Pa]
         Of the air at the ground of the site.
     cover : array_like (..., 145), optional [1]
@@ -252,14 +254,14 @@ def surface_heat(
     duration = np.clip(np.asarray(travel_time, np.float64), 0.0, LONGEST_WAY)
     t, p = (np.asarray(x, np.float64)[..., np.newaxis] for x in (temperature, pressure))
     back = duration[..., np.newaxis] * np.linspace(1.0, 0.0, STEPS)
-    times = time - back
-    sine = np.sin(sun_height(times, longitude, latitude))
+    sine = np.sin(sun_height(time - back, longitude, latitude))
     sensible, evaporation = ground_fluxes(sine, t, p)
     day = sensible > 0.0
-    weight = _remembered(day, back)
+    weight = _remembered(day, back) * _TRAPEZOIDS
+    step = duration / (STEPS - 1.0)
 
     def sums(values: Array) -> Array:
-        return np.asarray(np.trapezoid(weight * values, times, axis=-1))
+        return np.asarray(step * np.einsum("...i,...i->...", weight, values))
 
     night = np.where(day, 0.0, NIGHT_FLUX)
     lost = np.maximum(sums(night), NIGHT_FLUX * LONGEST)
@@ -272,7 +274,7 @@ def surface_heat(
         )
         kept = n * CLOUD_LONGWAVE / np.maximum(longwave_loss(t), CLOUD_LONGWAVE)
         lost = lost * (1.0 - sums(night * kept) / np.minimum(sums(night), -1e-9))
-    return SurfaceHeat(sums(sensible), sums(evaporation), lost, duration)
+    return SurfaceHeat(sums(sensible), sums(evaporation), lost, np.broadcast_to(duration, lost.shape))
 
 
 def _remembered(day: NDArray[np.bool_], back: Array) -> Array:

@@ -7,10 +7,13 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.air.column import vapour_flux
+from orolift.air.snow_share import snow_share_from_wet_bulb
+from orolift.air.wet_bulb import wet_bulb_from_mixing_ratio
+from orolift.constants import MELTING_POINT
 from orolift.crossing.cloud import cloud_bases, cloud_ends
 from orolift.crossing.facts import LARGEST_NONDIMENSIONAL, low_breaking, pressure_differences
-from orolift.crossing.pool import chance_of_breaking_through
-from orolift.crossing.rainfall import BAND_STEPS, by_height, in_bands
+from orolift.crossing.pool import chance_of_breaking_through, pool_air
+from orolift.crossing.rainfall import BAND_STEPS, LEAST_RAIN, by_height, in_bands
 from orolift.crossing.solve import NOTHING
 from orolift.crossing.sun import sun_height
 from orolift.flow.scales import deformation_radius, rossby_number
@@ -143,6 +146,41 @@ def rain_values(ground: Ground, solution: Solution, incoming: IncomingAir, backg
             ground, x, rate + background, streams.falling.landed_snow / steps_across(ground, x)[:, np.newaxis]
         ),
     }
+
+
+def winter_values(ground: Ground, solution: Solution, background: float) -> dict[str, Array]:
+    """Where the rain of each member can do harm on cold ground, as `orolift.rain.winter` judges it of one.
+
+    Parameters
+    ----------
+    ground : Ground
+    solution : Solution
+    background : float [kg m-2 s-1]
+
+    Returns
+    -------
+    dict of str to ndarray (m,)
+        ``rain_up_to``, the highest ground on the line on which 0.1 mm/h or more falls as rain [m above sea level], NaN
+        without any; ``freezing_rain``, 1 where it falls on the ground of a pool below freezing, else 0.
+    """
+    streams, shape = solution.streams, ground.shape
+    x = ground.transect.distance[streams.place]
+    below = np.interp(x, ground.transect.distance, ground.transect.elevation)
+    falling = streams.falling
+    rain = (falling.landed - falling.landed_snow) / steps_across(ground, x)[:, np.newaxis]
+    if background > 0.0:
+        lowest = (getattr(streams.air, name)[..., 0] for name in ("pressure", "temperature", "vapour"))
+        p, t, v = np.broadcast_arrays(*lowest)
+        wet_bulb = wet_bulb_from_mixing_ratio(p, t, np.maximum(v, 1e-8))
+        rain = rain + background * (1.0 - snow_share_from_wet_bulb(wet_bulb))
+    wet = rain >= LEAST_RAIN
+    highest = np.max(np.where(wet, below[:, np.newaxis], -np.inf), axis=0)
+    freezes = np.zeros(wet.shape[1])
+    for i, pool in enumerate(solution.pools):
+        if pool is not None and pool.depth > 0.0:
+            under = (x > shape.crest_distance) & (below < pool.top)
+            freezes[i] = np.any(under & wet[:, i] & (pool_air(pool, below)[0] < MELTING_POINT))
+    return {"rain_up_to": np.where(np.isfinite(highest), highest, np.nan), "freezing_rain": freezes}
 
 
 def _by_height(ground: Ground, x: Array, rate: Array, snow: Array) -> dict[str, Array]:

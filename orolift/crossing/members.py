@@ -13,13 +13,13 @@ from orolift.air.temperature import potential_temperature
 from orolift.crossing.crossing import CREST_LAYER, LEAST_CROSSING_WIND, LEAST_VAPOUR, ground_under
 from orolift.crossing.layer_above import differences
 from orolift.crossing.lee_wind import lee_wind_arrays, lee_winds
-from orolift.crossing.member_values import flow_values, rain_values, steps_across
+from orolift.crossing.member_values import flow_values, rain_values, steps_across, winter_values
 from orolift.crossing.picture import popular_picture, upwind_ground_air
 from orolift.crossing.pool import Lee, pool_air
 from orolift.crossing.result import Site, WarmingParts, When
 from orolift.crossing.settings import Settings, checked, each
 from orolift.crossing.sites import Arrived, arrived
-from orolift.crossing.solve import NOTHING, solve
+from orolift.crossing.solve import NOTHING, OF_MEMBERS, solve
 from orolift.crossing.way import way_to
 from orolift.crossing.wind import winds_at
 from orolift.terrain.features import features
@@ -37,8 +37,6 @@ if TYPE_CHECKING:
 
 PARTS = tuple(field.name for field in fields(WarmingParts))
 """Parts of the warming, by name."""
-OF_MEMBERS = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
-"""Fields of the incoming air that members have each for itself."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -124,6 +122,7 @@ def members_of(
     solved = solved_members(situation, variation, streamlines=streamlines)
     crosses, ground, when = solved.crosses, solved.ground, solved.when
     values = _of_incoming(variation.incoming) | {"cross_range_wind": solved.crest_wind}
+    values = {name: np.where(crosses, value, np.nan) for name, value in values.items()}
     if solved.solution is None or solved.part is None:
         return Members(crosses, values, {})
     solution, part = solved.solution, solved.part
@@ -134,6 +133,7 @@ def members_of(
     winds = lee_winds(ground, solution, crest_wind, flow["pressure_difference"])
     values |= _filled(lee_wind_arrays(winds), crosses)
     values |= _filled(rain_values(ground, solution, part.incoming, situation.background), crosses)
+    values |= _filled(winter_values(ground, solution, situation.background), crosses)
     at = [
         _filled(
             _of_site(site, ground, solution, part, when, situation.background)

@@ -17,6 +17,8 @@ if TYPE_CHECKING:
 
     Array = NDArray[np.float64]
 
+LEAST_RAIN = 0.1 / 3600.0
+"""Rain [kg m-2 s-1] that counts: 0.1 mm/h, the least a gauge shows in an hour; common practice, no source."""
 BAND_STEPS = (200.0, 152.4)
 """Heights of the bands by which members keep their rain [m]: round in metres, and 500 feet."""
 BANDS = (0.0, 5e3, 10e3, 20e3, 40e3, 80e3)

@@ -180,14 +180,12 @@ def _ground_change(
         return None
     here, elevation, round_share = place
     members = solution.blocked_top.size
-    nothing = np.zeros((members, PROFILE.size))
     air = lee_profile(
         incoming,
         here,
-        elevation + PROFILE + nothing,
+        np.broadcast_to(elevation + PROFILE, (members, PROFILE.size)),
         blocked_top=solution.blocked_top,
         going_round=round_share,
-        heating=nothing,
         freezing=settings.freezing,
     )
     times, line = solution.travel_times, ground.transect

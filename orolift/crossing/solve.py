@@ -2,15 +2,15 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, fields, replace
 from functools import cached_property
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from orolift.crossing.arrival import frozen_temperature, over, pressure_at
 from orolift.crossing.pool import Lee, Pool, pool_under
-from orolift.crossing.settings import DEFAULT_GOING_ROUND, each
+from orolift.crossing.settings import DEFAULT_GOING_ROUND, Settings, each
 from orolift.crossing.streams import PASSES, Streams, streams
 from orolift.crossing.upwind import ROOM_BELOW_CREST, Blocking, Upwind, blocking, upwind_column
 from orolift.crossing.way import overcast, travel_times
@@ -21,12 +21,14 @@ if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
-    from orolift.crossing.settings import Settings
     from orolift.terrain.features import Features
     from orolift.terrain.transect import Transect
 
     Array = NDArray[np.float64]
 
+OF_MEMBERS = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
+"""Fields of the incoming air that members may have each for itself."""
+OF_UPWIND = ("wind", "density", "dry", "moist", "lifted_share", "lifted")
 NO_BLOCKING = 9.9
 """Critical value from which on nothing is blocked."""
 LEAST_CREST_POINTS = 5
@@ -149,7 +151,7 @@ def solve(
     Notes
     -----
     The pool is found with the air brought down to the lee foot as if there
-    were none; where it is deeper than 20 m the flow is worked out again over its top.
+    were none; of members where it is deeper than 20 m the flow is worked out again over its top.
     """
     shape, transect = ground.shape, ground.transect
     upwind = upwind_column(incoming, ground.normal, shape.base, shape.crest, freezing=settings.freezing)
@@ -170,31 +172,56 @@ def solve(
     if ground.stagnant_top is not None:
         bottom = np.maximum(top, min(ground.stagnant_top, shape.crest - ROOM_BELOW_CREST))
 
-    def worked(pool_top: Array | None) -> Streams:
+    def worked(which: NDArray[np.intp], pool_top: Array | None = None) -> Streams:
+        own = _Inputs(incoming, upwind, settings).of(which, members)
         return streams(
-            incoming,
-            upwind,
+            own.incoming,
+            own.upwind,
             across,
             transect.elevation,
             crest,
-            bottom,
-            settings,
+            bottom[which],
+            own.settings,
             pool_top=pool_top,
             count=streamlines,
             passes=passes,
         )
 
-    found = worked(None)
+    found = worked(np.arange(members))
     pools: tuple[Pool | None, ...] = (None,) * members
     known = lee if isinstance(lee, tuple) else (lee,) * members
     if known[0].known:
         pools = _pools(ground, upwind, found, known)
         depth = np.array([0.0 if pool is None else pool.depth for pool in pools])
-        if np.any(depth > SHALLOW_POOL):
-            foot = shape.lee_foot
-            found = worked(np.where(depth > SHALLOW_POOL, foot + depth, -1000.0))
+        deep = np.flatnonzero(depth > SHALLOW_POOL)
+        if deep.size:
+            found = found.renewed(worked(deep, shape.lee_foot + depth[deep]), deep)
         pools = tuple(pool if pool is not None and pool.depth > SHALLOW_POOL else None for pool in pools)
     return Solution(across, crest, upwind, blocked, top, going_round(ground, blocked, top, settings), found, pools)
+
+
+@dataclass(frozen=True, eq=False)
+class _Inputs:
+    """What members differ by."""
+
+    incoming: IncomingAir
+    upwind: Upwind
+    settings: Settings
+
+    def of(self, which: NDArray[np.intp], members: int) -> _Inputs:
+        """Of some members."""
+        if which.size == members:
+            return self
+
+        def some(value: Any) -> Any:
+            return value[which] if np.ndim(value) and np.shape(value)[0] == members else value
+
+        def taken(whole: Any, names: tuple[str, ...]) -> Any:
+            profiles = {name: getattr(whole, name) for name in names}
+            return replace(whole, **{name: x if x.ndim < 2 else some(x) for name, x in profiles.items()})
+
+        own = {one.name: some(getattr(self.settings, one.name)) for one in fields(Settings)}
+        return _Inputs(taken(self.incoming, OF_MEMBERS), taken(self.upwind, OF_UPWIND), replace(self.settings, **own))
 
 
 def going_round(ground: Ground, blocked: Blocking, top: Array, settings: Settings) -> Array:

@@ -2,25 +2,25 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from dataclasses import dataclass, fields, replace
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
 from orolift.air.condensation import condensation_point
 from orolift.air.parcel import Parcel
+from orolift.crossing.falling import Falling
+from orolift.crossing.march import March
 from orolift.crossing.passes import Pass, Setup, flow_over, next_pass, renewed, some_of
 from orolift.crossing.start import column_pressure, mass_of_streamlines, start_heights, starting_air
 from orolift.crossing.upwind import LEAST_VAPOUR
 from orolift.flow.boundary import start_level
-from orolift.flow.members import some_members, some_points
+from orolift.flow.members import some_members, some_points, together
 
 if TYPE_CHECKING:
     from numpy.typing import NDArray
 
     from orolift.air.column import IncomingAir
-    from orolift.crossing.falling import Falling
-    from orolift.crossing.march import March
     from orolift.crossing.settings import Settings
     from orolift.crossing.upwind import Upwind
     from orolift.flow.airflow import Airflow
@@ -72,6 +72,33 @@ class Streams:
     carried: Array
     falling: Falling
     settled: NDArray[np.bool_]
+
+    def renewed(self, some: Streams, which: NDArray[np.intp]) -> Streams:
+        """The same with some members worked out anew: their flow and what it does to the air that set out."""
+        if which.size == self.settled.size:
+            return some
+        rest = np.setdiff1d(np.arange(self.settled.size), which)
+        beyond = _put(self.falling.beyond, some.falling.beyond, which)
+        return replace(
+            self,
+            flow=together([some_members(self.flow, rest), some.flow], [rest, which]),
+            air=March(**_over_places(self.air, some.air, which)),
+            falling=Falling(beyond=beyond, **_over_places(self.falling, some.falling, which)),
+            settled=_put(self.settled, some.settled, which),
+        )
+
+
+def _over_places(old: March | Falling, new: March | Falling, which: NDArray[np.intp]) -> dict[str, Any]:
+    """Fields (nk, m, ...) with some members anew."""
+    names = [one.name for one in fields(old) if one.name != "beyond"]
+    return {name: _put(getattr(old, name), getattr(new, name), (slice(None), which)) for name in names}
+
+
+def _put(old: NDArray[Any], new: NDArray[Any], where: Any) -> NDArray[Any]:
+    """An array with some of it anew."""
+    out = np.array(old)
+    out[where] = new
+    return out
 
 
 def streams(

@@ -9,7 +9,8 @@ import numpy as np
 
 from orolift.crossing.layer_above import HEIGHTS, NAMES
 from orolift.crossing.result import When
-from orolift.fire.dryness import HIGHEST_TEMPERATURE, LOWEST_TEMPERATURE
+from orolift.crossing.wind import NEAR_GROUND
+from orolift.fire.dryness import HIGHEST_TEMPERATURE, HIGHEST_WIND, LOWEST_TEMPERATURE
 from orolift.fire.indices import HOURS, site_fire
 from orolift.fire.nights import night_values
 from orolift.fire.rules import with_chance
@@ -81,7 +82,8 @@ def with_members(
     -----
     The layer over the site, which Hot-Dry-Windy and the night take, is moved with each member: in temperature by that
     at the site and by the difference between the two (`crossing.layer_above`), where the members tell it; in the ratio
-    of vapour and of wind; its heat from the ground in the ratio of that of the site.
+    of vapour; in wind by the difference near the ground, from 0 to the 130 m/s that indices take;
+    its heat from the ground in the ratio of that of the site.
     """
     both = dict(members) if inputs is None else {name: np.append(members[name], inputs[name]) for name in members}
     arrays, there = _with_air(both)
@@ -211,9 +213,6 @@ def _values(
 def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:
     """The members' air at the site, the layer above moved with it."""
     wind, gust, vapour = arrays["wind_10m"], arrays["gust"], np.maximum(arrays["mixing_ratio"], LEAST_VAPOUR)
-    faster = np.ones_like(wind)
-    if float(np.nan_to_num(answer.wind)) > 0.0:
-        faster = np.where(np.isfinite(wind), wind / answer.wind, 1.0)
     ratio = (vapour / answer.mixing_ratio)[:, np.newaxis]
     # where a member has no part of the warming it lies in a pool or in blocked air, which the ground does not heat
     heating = np.nan_to_num(arrays.get("warming_surface_heating", np.full_like(vapour, answer.heating)))
@@ -235,10 +234,25 @@ def _weather(answer: SiteWeather, arrays: Mapping[str, Array]) -> SiteWeather:
         gust_high=gust,
         layer_temperature=base[:, np.newaxis] + own + _less_stable(answer, own, arrays) + layer_heating,
         layer_vapour=np.maximum(answer.layer_vapour * ratio, LEAST_VAPOUR),
-        layer_wind=answer.layer_wind * faster[:, np.newaxis],
+        layer_wind=_layer_wind(answer, wind),
         heating=heating,
         layer_heating=layer_heating,
     )
+
+
+def _layer_wind(answer: SiteWeather, wind: Array) -> Array:
+    """Wind of each member in the layer over the site, (m, nz) [m s-1]: as much stronger as it is near the ground.
+
+    By the logarithmic law the means of the lowest 300 m differ as the winds at 10 m do, times the ratio of the
+    answer's. A ratio instead of a difference would blow up what is aloft where the answer is nearly calm.
+    """
+    at_10m = float(np.nan_to_num(answer.wind))
+    if at_10m <= 0.0:
+        return answer.layer_wind + np.zeros((wind.size, 1))
+    near = answer.height_above_ground <= NEAR_GROUND
+    ratio = float(np.mean(answer.layer_wind[near])) / at_10m
+    stronger = ratio * np.where(np.isfinite(wind), wind - at_10m, 0.0)
+    return np.clip(answer.layer_wind + stronger[:, np.newaxis], 0.0, HIGHEST_WIND)
 
 
 def _less_stable(answer: SiteWeather, own: Array, arrays: Mapping[str, Array]) -> Array:

@@ -16,6 +16,9 @@ if TYPE_CHECKING:
 LOWEST_TEMPERATURE, HIGHEST_TEMPERATURE = 173.15, 338.15
 """Air temperatures [K] that indices of fire weather are given for; in hard frost they are formulas carried on."""
 
+HIGHEST_WIND = 130.0
+"""Wind speed [m s-1] that no index is given beyond: stronger than any measured near the ground outside a tornado."""
+
 _KELVIN = "orolift works in kelvin; add 273.15 to degrees Celsius."
 _SHARE = "Give a share; divide per cent by 100."
 
@@ -50,7 +53,7 @@ def fire_wind(wind: ArrayLike) -> NDArray[np.float64]:
     OutOfRangeError
         If any value is NaN, negative or above 130 m/s.
     """
-    return within("wind", wind, 0.0, 130.0, "m s-1", "Give a speed in metres per second, never negative.")
+    return within("wind", wind, 0.0, HIGHEST_WIND, "m s-1", "Give a speed in metres per second, never negative.")
 
 
 def vapour_pressure_deficit(temperature: ArrayLike, relative_humidity: ArrayLike) -> NDArray[np.float64]:

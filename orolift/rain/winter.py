@@ -7,13 +7,15 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.air.snow_share import snow_share_from_wet_bulb
 from orolift.air.wet_bulb import wet_bulb_from_mixing_ratio
 from orolift.constants import MELTING_POINT
 from orolift.crossing.pool import pool_air
-from orolift.crossing.rainfall import by_height
-from orolift.rain.snow import snow_share_from_wet_bulb
+from orolift.crossing.rainfall import LEAST_RAIN, by_height
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     from numpy.typing import NDArray
 
     from orolift.crossing.result import Crossing
@@ -21,7 +23,6 @@ if TYPE_CHECKING:
 
     Array = NDArray[np.float64]
 
-LEAST_RAIN = 0.1 / 3600.0  # [kg m-2 s-1] a tenth of a millimetre an hour, the least a gauge shows in that time
 STEP = 200.0  # [m] of an elevation band
 _RUNS_OFF = "It can melt snow and run off at once."
 
@@ -103,6 +104,7 @@ def winter_flags(
     snow_cover_above: float | None = None,
     grid: ElevationGrid | None = None,
     rain_on_map: Array | None = None,
+    chances: Mapping[str, float] | None = None,
 ) -> tuple[str, ...]:
     """Rain on snow cover and freezing rain, where they threaten.
 
@@ -115,6 +117,8 @@ def winter_flags(
         Of a map.
     rain_on_map : ndarray, shape (ny, nx), optional [kg m-2 s-1]
         Rain, snow left out, on that map.
+    chances : mapping of str to float, optional [1]
+        ``rain_on_snow`` and ``freezing_rain``: share of the members in which each threatens.
 
     Returns
     -------
@@ -132,9 +136,16 @@ def winter_flags(
     ground = np.interp(crossing.distance, crossing.transect.distance, crossing.transect.elevation)
     flags = []
     if snow_cover_above is not None:
-        flags += _on_snow(ground, rain, snow_cover_above, grid, rain_on_map)
-    flags += _freezing(crossing, ground, rain)
+        found = _on_snow(ground, rain, snow_cover_above, grid, rain_on_map)
+        flags += [flag + _likely("Rain falls on snow", chances, "rain_on_snow") for flag in found]
+    flags += [flag + _likely("Rain freezes", chances, "freezing_rain") for flag in _freezing(crossing, ground, rain)]
     return tuple(flags)
+
+
+def _likely(what: str, chances: Mapping[str, float] | None, name: str) -> str:
+    """In how many members it does so, as one more sentence; nothing where that is not known."""
+    chance = (chances or {}).get(name)
+    return "" if chance is None else f" {what} in {100.0 * chance:.0f} % of the members."
 
 
 def _on_snow(

@@ -8,7 +8,14 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 
-from orolift.report.bearings_sure import HOW_MEMBERS, agreement_words, crossing_words, lost_words, with_range
+from orolift.report.bearings_sure import (
+    HOW_MEMBERS,
+    agreement_words,
+    crossing_words,
+    lost_words,
+    though_words,
+    with_range,
+)
 from orolift.report.cautions import ALWAYS, RANGE_OF_MEMBERS
 from orolift.report.figures.roses import roses_figure
 from orolift.report.hours_page import ONE_ANSWER
@@ -209,6 +216,7 @@ def _worst(site: SiteBearings, bearings: Bearings) -> Words:
     return (
         f"Worst for fire at {site.name} is wind from ",
         Amount(float(bearings.wind_from[site.fire]), "bearing"),
+        *though_words(site, bearings),
         ": humidity ",
         *with_range(Amount(state.relative_humidity, "share"), state, "relative_humidity"),
         ", wind ",

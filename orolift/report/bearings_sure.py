@@ -12,12 +12,16 @@ from orolift.spread.agreement import reach_of
 from orolift.spread.state_ranges import chance_at, lost_members, range_at
 
 if TYPE_CHECKING:
+    from numpy.typing import NDArray
+
     from orolift.report.words import Words
     from orolift.spread.bearings import Bearings, SiteBearings
     from orolift.spread.site_state import SiteState
 
 FEW = 0.1
 """Share of the members from which on another direction that is worst in them is named; a judgement."""
+HALF = 0.5
+"""Share of the members below which they do not agree with the direction named."""
 HOW_MEMBERS = (
     (
         "A range in brackets holds the middle eight tenths of the members, each with its own draw of every input, the "
@@ -80,20 +84,60 @@ def agreement_words(site: SiteBearings, bearings: Bearings) -> Words:
 
 def _next_worst(site: SiteBearings, bearings: Bearings) -> Words:
     """The direction that is worst for fire in most of the other members; nothing where they are few."""
+    found = _other_worst(site, bearings)
+    if found is None or found[1] < FEW:
+        return ()
+    number, share = found
+    reach, there = reach_of(bearings.step), Amount(float(bearings.wind_from[number]), "bearing")
+    near: Words = ("within ", Amount(reach, "bearing"), " of ") if reach > 0.0 else ()
+    return (" In ", Amount(share, "share"), " the worst for fire is ", *near, there, ".")
+
+
+def _other_worst(site: SiteBearings, bearings: Bearings) -> tuple[int, float] | None:
+    """The direction apart from that named which is worst for fire in most members, and their share.
+
+    The directions beside it count with it, as beside that named, but none counts for both.
+    """
     if site.fire is None or site.worst is None:
+        return None
+    others = np.where(_near(bearings, site.fire), 0.0, np.nan_to_num(site.worst))
+    number = int(np.argmax(others))
+    return number, float(others[_near(bearings, number)].sum())
+
+
+def _near(bearings: Bearings, number: int) -> NDArray[np.bool_]:
+    """Directions that count as the same answer as one of them."""
+    apart = np.abs((bearings.wind_from - bearings.wind_from[number] + np.pi) % (2.0 * np.pi) - np.pi)
+    return np.asarray(apart <= reach_of(bearings.step) + 1e-6, dtype=np.bool_)
+
+
+def though_words(site: SiteBearings, bearings: Bearings) -> Words:
+    """That more members have another direction as their worst for fire than the one named; nothing otherwise.
+
+    Parameters
+    ----------
+    site : SiteBearings
+    bearings : Bearings
+
+    Returns
+    -------
+    Words
+        To stand behind the direction named, with a comma before them.
+
+    Notes
+    -----
+    Said where fewer than half of the members agree with the answer and more have another direction, either counted
+    with the directions beside it, see `orolift.spread.agreement.reach_of`.
+    """
+    found, agreement = _other_worst(site, bearings), site.agreement
+    if found is None or agreement is None or agreement.fire is None or agreement.fire >= HALF:
         return ()
-    apart = np.abs((bearings.wind_from - bearings.wind_from[site.fire] + np.pi) % (2.0 * np.pi) - np.pi)
-    others = np.where(apart > reach_of(bearings.step) + 1e-6, np.nan_to_num(site.worst), 0.0)
-    i = int(np.argmax(others))
-    if others[i] < FEW:
+    number, share = found
+    if share <= agreement.fire:
         return ()
-    return (
-        " Next for fire is wind from ",
-        Amount(float(bearings.wind_from[i]), "bearing"),
-        ", worst in ",
-        Amount(float(others[i]), "share"),
-        ".",
-    )
+    many = "most" if share > HALF else "more"
+    about = "about " if reach_of(bearings.step) > 0.0 else ""
+    return (f", though in {many} members from {about}", Amount(float(bearings.wind_from[number]), "bearing"))
 
 
 def _shares(site: SiteBearings) -> list[tuple[str, float, str]]:

@@ -72,17 +72,17 @@ def how_sure(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
     tuple of Words
     """
     ranges = site.ranges
-    if ranges is None or not np.isfinite(ranges.dry_wind.ever):
+    if ranges is None or ranges.dry_wind.ever is None:
         return ()
-    out = [_at_all(site, ranges, zone)]
+    out = [_at_all(site, ranges, ranges.dry_wind.ever, zone)]
     if site.dry_winds:
-        out.append(_longest(site, ranges))
+        out += _longest(site, ranges)
     if ranges.lost:
         out.append(
             ("In ", Amount(ranges.lost, "plain"), " hours some members could not be worked out; they count nowhere.")
         )
     for one, found in zip(site.thresholds, ranges.thresholds, strict=True):
-        if not one.stretches and found.ever > 0.0:
+        if not one.stretches and found.ever:
             share = Amount(found.ever, "share")
             out.append(
                 (f"Threshold not met: {one.rule.name}; in ", share, " of the members it is, in one hour or more.")
@@ -90,10 +90,10 @@ def how_sure(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
     return tuple(out)
 
 
-def _at_all(site: SiteTimeline, ranges: SiteRanges, zone: tzinfo) -> Words:
+def _at_all(site: SiteTimeline, ranges: SiteRanges, ever: float, zone: tzinfo) -> Words:
     """In how many members descending warm dry air comes at all, when most likely, and for how long."""
     found = ranges.dry_wind
-    if found.ever == 0.0:
+    if ever == 0.0:
         return ("In none of ", Amount(ranges.members, "plain"), " members descending warm dry air comes.")
     likeliest = ""
     chances = np.nan_to_num(found.chance)
@@ -102,7 +102,7 @@ def _at_all(site: SiteTimeline, ranges: SiteRanges, zone: tzinfo) -> Words:
         likeliest = f", most likely at {stamp(rounded_time(float(site.arrival[peak]), 0.0), zone)} ("
     return (
         "Descending warm dry air comes in ",
-        Amount(found.ever, "share"),
+        Amount(ever, "share"),
         " of ",
         Amount(ranges.members, "plain"),
         " members",
@@ -113,11 +113,13 @@ def _at_all(site: SiteTimeline, ranges: SiteRanges, zone: tzinfo) -> Words:
     )
 
 
-def _longest(site: SiteTimeline, ranges: SiteRanges) -> Words:
+def _longest(site: SiteTimeline, ranges: SiteRanges) -> tuple[Words, ...]:
     """In how many members the longest stretch is there, and what the times in brackets are."""
     one = ranges.dry_wind.stretches[longest_of(site.dry_winds)]
+    if one.chance is None:
+        return ()
     which = "This stretch is" if len(site.dry_winds) == 1 else "The longest stretch is"
     start: Words = (f"{which} there in ", Amount(one.chance, "share"), " of the members")
     if one.onset is None or one.end is None:
-        return (*start, ".")
-    return (*start, "; the times in brackets hold onset and end in eight tenths of these.")
+        return ((*start, "."),)
+    return ((*start, "; the times in brackets hold onset and end in eight tenths of these."),)

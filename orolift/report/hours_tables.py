@@ -112,7 +112,7 @@ def stretch_row(site: SiteTimeline, number: int, zone: tzinfo) -> StretchRow:
         driest=extreme("driest", "relative_humidity", "share", most=False),
         windiest=extreme("windiest", "gust", "wind", most=True),
         unknown=Amount(one.unknown, "plain"),
-        chance=None if members is None else Amount(members.chance, "share"),
+        chance=None if members is None or members.chance is None else Amount(members.chance, "share"),
         onset_range="" if members is None or members.onset is None else short_between(members.onset, zone),
         end_range="" if members is None or members.end is None else short_between(members.end, zone),
         spans=spans,

@@ -64,7 +64,7 @@ def _with_doubt(seconds: float | None, error: float, ends: MaybeEnds | None, zon
         return None
     if ends is None:
         return (f"{about(seconds, error, zone)} (±{NO_BREAK_SPACE}", Amount(error, "hours", 1), ")")
-    return (f"{about(seconds, error, zone)} ({short_between(ends, zone)})",)
+    return (about(seconds, error, zone), " (", short_between(ends, zone), ")")
 
 
 def stamp(seconds: float, zone: tzinfo) -> str:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from typing import TYPE_CHECKING
 
 from orolift.report.hours_times import times_of
@@ -21,6 +20,8 @@ if TYPE_CHECKING:
 
 LEAST_RAIN = 0.1
 """Rain [kg m-2] below which none is said to fall."""
+MENTIONED_RAIN = 0.5
+"""Rain [kg m-2] from which on the heading has it; it reads as 1 mm."""
 LIKELY = 0.5
 """Chance from which on a threshold is named at the head though the answer does not meet it; a judgement."""
 NAMED = 4
@@ -40,7 +41,7 @@ def heading(hours: Hours) -> Words:
     """
     sites = len(hours.sites)
     dry = sum(bool(site.dry_winds) for site in hours.sites)
-    rain = max(site.rain for site in hours.sites)
+    wettest = max(hours.sites, key=lambda site: site.rain)
     where = f"{counted(dry, 'site has', 'sites have')} descending warm dry air"
     if not dry:
         where = "no descending warm dry air"
@@ -48,7 +49,12 @@ def heading(hours: Hours) -> Words:
         where = "descending warm dry air comes through"
     elif dry == sites:
         where = "descending warm dry air at every site"
-    wet: Words = (", and ", Amount(rain, "water_depth", 0), " of rain at most") if rain >= 0.5 else (", and no rain",)
+    ends = total_rain(wettest)
+    wet: Words = (", and no rain",)
+    if wettest.rain >= MENTIONED_RAIN:
+        wet = (", and ", *ranged(Amount(wettest.rain, "water_depth", 0), ends), " of rain at most")
+    elif ends is not None and ends[1] >= MENTIONED_RAIN:
+        wet = (", and hardly any rain",)
     return (f"{where[:1].upper()}{where[1:]}", *wet)
 
 
@@ -76,7 +82,7 @@ def lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
                 " hours are here.",
             )
         )
-    out += [(*outcome(site, zone), *_any(site), ".") for site in hours.sites[:NAMED]]
+    out += [(*outcome(site, zone), *_as_likely(_longest(site)), ".") for site in hours.sites[:NAMED]]
     if len(hours.sites) > NAMED:
         more = len(hours.sites) - NAMED
         out.append((f"{counted(more, 'more site follows', 'more sites follow')} below.".capitalize(),))
@@ -86,12 +92,6 @@ def lead(hours: Hours, zone: tzinfo) -> tuple[Words, ...]:
         rain = ranged(Amount(wettest.rain, "water_depth", 0), total_rain(wettest))
         out.append((f"Most rain falls at {wettest.name}: ", *rain, " in all."))
     return tuple(out)
-
-
-def _any(site: SiteTimeline) -> Words:
-    """In how many members descending warm dry air comes to a site at all; nothing without members."""
-    ever = math.nan if site.ranges is None else site.ranges.dry_wind.ever
-    return () if math.isnan(ever) else ("; some comes in ", Amount(ever, "share"), " of the members")
 
 
 def outcome(site: SiteTimeline, zone: tzinfo) -> Words:
@@ -112,9 +112,7 @@ def outcome(site: SiteTimeline, zone: tzinfo) -> Words:
         return (f"No air crosses to {site.name} in these hours",)
     if not found:
         return (f"No descending warm dry air reaches {site.name}",)
-    longest = longest_of(found)
-    members = None if site.ranges is None else site.ranges.dry_wind.stretches[longest]
-    when = _from_to(found[longest], members, zone)
+    when = _from_to(found[longest_of(found)], _longest(site), zone)
     if len(found) == 1:
         return (f"Descending warm dry air is at {site.name} ", *when)
     times = counted(len(found), "time", "times")
@@ -141,7 +139,7 @@ def likely_all_the_same(site: SiteTimeline) -> tuple[Words, ...]:
             " of the members.",
         )
         for one, members in zip(site.thresholds, found, strict=False)
-        if not one.stretches and members.ever >= LIKELY
+        if not one.stretches and members.ever is not None and members.ever >= LIKELY
     )
 
 
@@ -150,9 +148,18 @@ def longest_of(found: Sequence[Stretch]) -> int:
     return max(range(len(found)), key=lambda i: found[i].last - found[i].first)
 
 
+def _longest(site: SiteTimeline) -> StretchRange | None:
+    """The longest stretch of descending warm dry air in the members; None without one or without members."""
+    if site.ranges is None or not site.dry_winds:
+        return None
+    return site.ranges.dry_wind.stretches[longest_of(site.dry_winds)]
+
+
 def _as_likely(members: StretchRange | None) -> Words:
-    """In how many members a threshold is met in a stretch too; nothing without members."""
-    return () if members is None else ("; in ", Amount(members.chance, "share"), " of the members")
+    """In how many members something holds in a stretch too; nothing without members."""
+    if members is None or members.chance is None:
+        return ()
+    return ("; in ", Amount(members.chance, "share"), " of the members")
 
 
 def total_rain(site: SiteTimeline) -> tuple[float, float] | None:

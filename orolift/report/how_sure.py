@@ -14,6 +14,8 @@ from orolift.spread.ranges import Influence, chance_of, influences, noise
 from orolift.spread.spread import CHANCE_OF_RAIN
 
 if TYPE_CHECKING:
+    from collections.abc import Mapping
+
     from orolift.crossing.result import LeeAir
     from orolift.report.quantities import Kind
     from orolift.report.spans import Spans
@@ -121,12 +123,14 @@ class HowSure:
     noise: float = 0.0
 
 
-def how_sure(spans: Spans) -> HowSure:
+def how_sure(spans: Spans, winter: Mapping[str, float] | None = None) -> HowSure:
     """How sure the numbers of a crossing are.
 
     Parameters
     ----------
     spans : Spans
+    winter : mapping of str to float, optional
+        Chances of the dangers of cold ground, from `orolift.spread.winter_chances.winter_chances`.
 
     Returns
     -------
@@ -149,7 +153,7 @@ def how_sure(spans: Spans) -> HowSure:
         heading=_heading(spans),
         remarks=(*_contents(spread), *_compared(spans), _counted(spread)),
         rows=tuple(_row(spans, air) for air in spans.crossing.lee if spans.column(air) is not None),
-        chances=_chances(spans, spread),
+        chances=(*_chances(spans, spread), *_winter_rows(winter or {})),
         inputs=_inputs(spread),
         panels=_panels(spans, spread),
         noise=noise(int(spread.crosses.sum())),
@@ -175,10 +179,11 @@ def _contents(spread: Spread) -> tuple[Words, ...]:
         "known yet: their ranges are those of the inputs alone, and too narrow."
     )
     bare = (
-        "The heights air comes from are no such range, but those of the middle eight tenths of the air. Without a "
-        "range stand figures, the way of the air and the section in numbers, which show the answer itself; the ground "
-        "and distances along it; what the case gives or prescribes; the map by height of the ground and the simple "
-        "estimates of rain; the two ends of blocking, which are a range themselves; and chances."
+        "The heights air comes from are no such range, but those of the middle eight tenths of the air. Of the answer "
+        "alone, and without a range, are most figures, the way of the air, the section in numbers, the levels of the "
+        "incoming air, the wavelength of trapped waves, the map by height of the ground and the simple estimates of "
+        "rain. The ground, distances along it and what the case gives or prescribes have none. Chances and the two "
+        "ends of blocking need none: those ends are a range themselves."
     )
     return (text,), (bare,)
 
@@ -276,6 +281,16 @@ def _chances(spans: Spans, spread: Spread) -> tuple[ChanceRow, ...]:
     ]
     rows = tuple(ChanceRow(event, Amount(value, "share")) for event, value in found if value is not None)
     return (_crossing_row(spread), *rows)
+
+
+def _winter_rows(winter: Mapping[str, float]) -> tuple[ChanceRow, ...]:
+    """Dangers of cold ground that threaten in any member."""
+    events = {"rain_on_snow": "rain falls on snow cover", "freezing_rain": "rain freezes on the ground of the lee"}
+    return tuple(
+        ChanceRow((event,), Amount(winter[name], "share"))
+        for name, event in events.items()
+        if winter.get(name, 0.0) > 0.0
+    )
 
 
 def _inputs(spread: Spread) -> tuple[InputRow, ...]:

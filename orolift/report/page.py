@@ -38,7 +38,7 @@ from orolift.report.trace import trace
 from orolift.report.words import Words, moment, point_of_compass
 
 if TYPE_CHECKING:
-    from collections.abc import Iterable
+    from collections.abc import Iterable, Mapping
     from datetime import datetime
 
     from orolift.crossing.result import Crossing
@@ -158,6 +158,7 @@ def page_of(
     fire: tuple[SiteFire, ...] = (),
     rules: RuleSet | None = None,
     spread: Spread | None = None,
+    winter: Mapping[str, float] | None = None,
 ) -> Page:
     """The page of a crossing.
 
@@ -191,6 +192,8 @@ def page_of(
         Thresholds it was judged by.
     spread : Spread, optional
         Members, for the ranges.
+    winter : mapping of str to float, optional
+        Chances of the dangers of cold ground, from `orolift.spread.winter_chances.winter_chances`.
 
     Returns
     -------
@@ -201,7 +204,7 @@ def page_of(
     line, few = line_view(crossing), first_sites(crossing)
     followed = trace(line)
     on_line, first = Spans(line, spread, crossing), Spans(few, spread, crossing)
-    sure = how_sure(first)
+    sure = how_sure(first, winter)
     crest = quantity(crossing.features.crest, "height", 0, units)
     return Page(
         title=title or f"Air from the {point_of_compass(bearing)} over a crest at {crest}",

@@ -174,7 +174,8 @@ def _hours_cells(site: SiteTimeline, zone: tzinfo) -> tuple[Words, ...]:
     """How many hours cross, when descending warm dry air is there, and which thresholds are met."""
     ranges = site.ranges
     met = [one.rule.name for one in site.thresholds if one.stretches]
-    likely: Words = () if ranges is None else ("; any in ", Amount(ranges.dry_wind.ever, "share"), " of the members")
+    ever = None if ranges is None else ranges.dry_wind.ever
+    likely: Words = () if ever is None else ("; any in ", Amount(ever, "share"), " of the members")
     named: Words = ("; ".join(met) if met else "none" if site.thresholds else "none given",)
     crossing = _share(site.crossing_hours, len(site.states))
     if not site.dry_winds:

@@ -77,7 +77,7 @@ class SiteRow:
 
 @dataclass(frozen=True)
 class ShortRow:
-    """One of very many sites."""
+    """One of very many sites; `spans` as in `SiteRow`."""
 
     number: int
     name: str
@@ -90,6 +90,7 @@ class ShortRow:
     warming: Amount
     wind_10m: Amount | None
     source: Amount | None
+    spans: dict[str, Words]
 
 
 @dataclass(frozen=True)
@@ -178,7 +179,7 @@ def sites(crossing: Crossing, spans: Spans | None = None, fire: tuple[SiteFire, 
     return Sites(
         heading=sites_heading(spans),
         rows=() if many else tuple(_row(air, air.number, spans) for air in crossing.lee),
-        short_rows=tuple(_short(air, crossing) for air in by_warmth),
+        short_rows=tuple(_short(air, spans) for air in by_warmth),
         sides=_sides(crossing.lee) if many else (),
         panels=tuple(_panel(air, spans, by_number.get(air.number)) for air in first_sites(crossing).lee),
         failed=_failed(crossing),
@@ -191,20 +192,23 @@ def _beyond(air: LeeAir, crossing: Crossing) -> float:
     return air.distance - crossing.features.crest_distance if air.own is None else air.own.beyond_crest
 
 
-def _short(air: LeeAir, crossing: Crossing) -> ShortRow:
-    return ShortRow(
+def _short(air: LeeAir, spans: Spans) -> ShortRow:
+    row = ShortRow(
         number=air.number,
         name=air.name,
         side=air.side,
         remark=where_words(air),
-        beyond_crest=Amount(_beyond(air, crossing), "distance", 1),
+        beyond_crest=Amount(_beyond(air, spans.crossing), "distance", 1),
         elevation=Amount(air.elevation, "height"),
         temperature=Amount(air.temperature, "temperature", 1),
         relative_humidity=Amount(air.relative_humidity, "share"),
         warming=Amount(air.warming, "temperature_change", 1),
         wind_10m=None if air.wind is None else Amount(air.wind.at_10m, "wind"),
         source=None if air.source_level is None else Amount(air.source_level, "height", -1),
+        spans={"source": tuple(source_words(air)[2:5])},
     )
+    found = {name: span_of(getattr(row, name), spans.at(air, name)) for name in _SHORT_RANGED}
+    return replace(row, spans=row.spans | found)
 
 
 def _sides(lee: tuple[LeeAir, ...]) -> tuple[SideRow, ...]:
@@ -362,6 +366,8 @@ _RANGED = (
     "warming",
 )
 """Columns that carry a range of the members."""
+_SHORT_RANGED = ("temperature", "relative_humidity", "warming", "wind_10m")
+"""The same where there are very many sites."""
 
 
 def _remarks(crossing: Crossing) -> tuple[Words, ...]:

@@ -75,7 +75,7 @@ class RuleBlock(Block):
     status: str
     hours: int
     lasts: bool | None = Field(description="null where it cannot be judged, as from one hour")
-    chance_percent: float | None = Field(description="share of members that meet it; null without members")
+    chance_percent: float | None = Field(description="of the members that cross; null without members")
     conditions: list[ConditionBlock]
 
 

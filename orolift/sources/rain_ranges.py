@@ -4,10 +4,12 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+import numpy as np
+
+from orolift.rain.catchments import WATER_DENSITY
 from orolift.spread.ranges import range_of
 
 if TYPE_CHECKING:
-    import numpy as np
     from numpy.typing import NDArray
 
     from orolift.sources.map_inputs import Mapped
@@ -33,11 +35,12 @@ def map_ranges(mapped: Mapped) -> Range:
     if mapped.members is None:
         return {}
     rain, values = mapped.rain, mapped.members.values
-    whole = rain.total / rain.mean_rate if rain.mean_rate > 0.0 else 0.0
+    cell = rain.found.spacing[0] * rain.found.spacing[1]
+    whole = cell * float(np.count_nonzero(np.isfinite(rain.found.rate)))  # what `total` is a sum over
     return _scaled(
         {
             "total_kg_per_s": (values["mean_rate"], whole),
-            "volume_m3": (values["mean_rate"], whole * rain.duration / 1000.0),
+            "volume_m3": (values["mean_rate"], whole * rain.duration / WATER_DENSITY),
             "mean_mm_per_h": (values["mean_rate"], HOUR),
             "peak_mm_per_h": (values["peak_rate"], HOUR),
             "windward_share": (values["windward_share"], 1.0),
@@ -69,11 +72,12 @@ def catchment_ranges(mapped: Mapped, number: int) -> Range:
         mapped.members.catchments[key][:, number] for key in ("rate", "snow_share", "windward_share")
     )
     seconds = mapped.rain.duration
+    whole = rain.volume / rain.rate if rain.rate > 0.0 else rain.area * rain.covered_share * seconds / WATER_DENSITY
     return _scaled(
         {
             "mean_mm_per_h": (rate, HOUR),
             "total_mm": (rate, seconds),
-            "volume_m3": (rate, rain.volume / rain.rate if rain.rate > 0.0 else 0.0),
+            "volume_m3": (rate, whole),
             "snow_share": (snow, 1.0),
             "windward_share": (windward, 1.0),
         }

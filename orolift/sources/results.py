@@ -31,7 +31,7 @@ from orolift.spread.at_sites import column_of, on_its_line
 from orolift.spread.ranges import range_of
 
 if TYPE_CHECKING:
-    from collections.abc import Sequence
+    from collections.abc import Mapping, Sequence
 
     from orolift.crossing.result import Crossing, LeeAir
     from orolift.fire.sites import SiteFire
@@ -225,6 +225,7 @@ def results_of(
     fire: tuple[SiteFire, ...] = (),
     places: Sequence[SitePlace] = (),
     spread: Spread | None = None,
+    winter: Mapping[str, float] | None = None,
 ) -> Results:
     """Results of a crossing, unrounded.
 
@@ -242,6 +243,8 @@ def results_of(
         Of all sites of the case, for their positions.
     spread : Spread, optional
         Members, for the ranges.
+    winter : mapping of str to float, optional
+        From `orolift.spread.winter_chances.winter_chances`.
 
     Returns
     -------
@@ -258,7 +261,7 @@ def results_of(
         lee_wind=lee_wind_block(crossing, spread),
         lee=[_lee(site, crossing, places, spread) for site in crossing.lee],
         failed_sites=[FailedSiteBlock(**asdict(site)) for site in crossing.failed],
-        spread=None if spread is None else spread_block(spread, crossing),
+        spread=None if spread is None else spread_block(spread, crossing, winter or {}),
         catchments=[] if mapped is None else catchment_blocks(mapped),
         gauges=None if mapped is None else gauges_block(mapped),
         fire=fire_blocks(fire),

@@ -99,7 +99,10 @@ class SpreadBlock(Block):
     crossing_members: int = Field(description="of them, those with more than 2 m/s across the range; ranges are theirs")
     failed_members: int = Field(description="those that could not be worked out; they count nowhere")
     failures: list[str] = Field(description="why, each reason once")
-    chance: Chance = Field(description="crosses, breaks_through, blocked, cloud, wave_breaking: 0 to 1")
+    chance: Chance = Field(
+        description="crosses, breaks_through, blocked, cloud, wave_breaking, freezing_rain, and with "
+        "snow_cover_above_m rain_on_snow: 0 to 1"
+    )
     influences: InfluencesBlock | None = Field(description="null where no member crosses")
 
 
@@ -139,13 +142,15 @@ def site_chances(spread: Spread, number: int) -> Chance:
     return {name: value for name, value in found.items() if value is not None}
 
 
-def spread_block(spread: Spread, crossing: Crossing) -> SpreadBlock:
+def spread_block(spread: Spread, crossing: Crossing, winter: Mapping[str, float]) -> SpreadBlock:
     """What the results say of the spread as a whole.
 
     Parameters
     ----------
     spread : Spread
     crossing : Crossing
+    winter : mapping of str to float
+        From `orolift.spread.winter_chances.winter_chances`.
 
     Returns
     -------
@@ -159,7 +164,7 @@ def spread_block(spread: Spread, crossing: Crossing) -> SpreadBlock:
         crossing_members=across,
         failed_members=len(spread.failed),
         failures=sorted({one.reason for one in spread.failed}),
-        chance=chances(spread),
+        chance={**chances(spread), **winter},
         influences=_influences(spread, site, line[site].name) if across else None,
     )
 

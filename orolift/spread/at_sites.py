@@ -92,7 +92,7 @@ def on_its_line(spread: Spread, crossing: Crossing, site: LeeAir) -> dict[str, A
     values, own, flow = spread.values, site.own, crossing.flow
     if not spread.crosses.any():
         return {}
-    top, wind = values["blocked_top"], np.where(spread.crosses, values["cross_range_wind"], np.nan)
+    top, wind = values["blocked_top"], values["cross_range_wind"]
     if own is None:
         return {"blocked_top": top, "cross_range_wind": wind}
     return {

@@ -104,7 +104,7 @@ class LineRain:
     ----------
     answer : float
     members : ndarray of float32, (m,)
-        The background alone in members that do not cross.
+        The background alone in members that do not cross; the answer in those that could not be worked out.
     """
 
     answer: float
@@ -175,8 +175,10 @@ def _line_rain(state: SiteState, crossing: Crossing) -> LineRain | None:
     length = float(x[-1] - x[0])
     if crossing.transect.bearing is not None:
         length *= float(np.cos(crossing.flow.normal - crossing.transect.bearing))
+    answer = rain.total / length + rain.background
     each = np.nan_to_num(state.members.line_rain) / length + rain.background
-    return LineRain(rain.total / length + rain.background, each.astype(np.float32))
+    each[np.isnan(state.members.crosses)] = answer
+    return LineRain(answer, each.astype(np.float32))
 
 
 def when_there(line: OneLine, time: float) -> Any:

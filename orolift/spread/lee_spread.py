@@ -14,7 +14,7 @@ from orolift.air.saturation import saturation_mixing_ratio
 from orolift.crossing.model_error import model_error
 from orolift.errors import OroliftError
 from orolift.fire.chances import FEWEST, TENTHS
-from orolift.fire.rules import rule_met
+from orolift.fire.rules import MOST_UNJUDGED, rule_met
 from orolift.spread.at_sites import LEAST_VAPOUR, TENTH
 from orolift.spread.deviations import deviations, read, reading
 from orolift.spread.draws import columns, draws_of
@@ -62,9 +62,10 @@ class LeeSpread:
     cloud : ndarray [1]
         Chance of cloud over the cell.
     met : tuple of ndarray [1]
-        Chance that each rule is met, in the order of the rules given.
+        Chance that each rule is met, in the order of the rules given; as at sites NaN where more than a tenth of the
+        members with air there cannot be judged.
     any_met : ndarray or None [1]
-        Chance that at least one of them is; None without rules.
+        Chance that at least one of them is, in the same way; None without rules.
     humidity, warming : ndarray (m, cells)
         Of each member behind the crest, at some of the cells.
     share_met : tuple of ndarray (m,) [1]
@@ -322,15 +323,15 @@ def _judged(
     quantities = values_on_map(air, names, asked.roughness, asked.drought_index)
     maps: dict[str, Array] = {}
     counts: list[tuple[Array, Array]] = []
-    any_met = np.zeros(air.temperature.shape, dtype=bool)
-    any_known = np.zeros(air.temperature.shape, dtype=bool)
+    there = np.isfinite(air.temperature)
+    any_met, all_known = np.zeros(there.shape, dtype=bool), np.ones(there.shape, dtype=bool)
     for i, rule in enumerate(asked.rules):
         met, known = rule_met(rule, quantities)
-        maps[f"met_{i}"] = _chance(met, known)
+        maps[f"met_{i}"] = _rule_chance(met, known, there)
         counts.append(((met & known)[behind].sum(axis=0) * 1.0, known[behind].sum(axis=0) * 1.0))
         any_met |= met & known
-        any_known |= known
-    maps["any_met"] = _chance(any_met, any_known)
+        all_known &= known
+    maps["any_met"] = _rule_chance(any_met, any_met | all_known, there)
     return maps, counts
 
 
@@ -338,6 +339,12 @@ def _chance(happens: NDArray[np.bool_], known: NDArray[np.bool_]) -> Array:
     """Share of the members that know, (n,); NaN where fewer than five do."""
     count = known.sum(axis=1)
     return np.where(count >= FEWEST, (happens & known).sum(axis=1) / np.maximum(count, 1), np.nan)
+
+
+def _rule_chance(met: NDArray[np.bool_], known: NDArray[np.bool_], there: NDArray[np.bool_]) -> Array:
+    """The same of a rule: those that can be judged without an unknown value are the ones that miss another limit."""
+    unjudged = (there & ~known).sum(axis=1)
+    return np.where(unjudged <= MOST_UNJUDGED * there.sum(axis=1), _chance(met & there, known & there), np.nan)
 
 
 def _tenths(values: Array) -> tuple[Array, Array]:

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from contextlib import suppress
 from dataclasses import dataclass, replace
 from functools import partial
 from typing import TYPE_CHECKING
 
 import numpy as np
 
+from orolift.crossing.rainfall import LEAST_RAIN
+from orolift.crossing.solve import OF_MEMBERS
 from orolift.errors import OroliftError
 from orolift.rain.catchments import catchment_rain
 from orolift.rain.gauges import gauge_comparison
@@ -16,7 +19,7 @@ from orolift.rain.parameters import column_rain
 from orolift.rain.rain_map import map_drying_ratio, rain_map
 from orolift.rain.snow import snow_on_ground
 from orolift.rain.windward import windward_cells, windward_share
-from orolift.spread.draws import draws_of, variation_of
+from orolift.spread.draws import variations_of
 from orolift.spread.uncertainty import COLUMNS
 from orolift.terrain.grid import ElevationGrid
 
@@ -27,6 +30,7 @@ if TYPE_CHECKING:
 
     from orolift.air.column import IncomingAir
     from orolift.crossing.result import Crossing
+    from orolift.crossing.settings import Settings
     from orolift.crossing.situation import Situation
     from orolift.rain.over_map import MapRain
     from orolift.rain.parameters import ColumnRain
@@ -52,7 +56,8 @@ class RainMembers:
     ----------
     values : dict of str to ndarray (m,)
         ``peak_rate``, ``mean_rate``, ``windward_share``, ``snow_share``, ``drying_ratio`` of the map; ``wind_speed``,
-        ``vapour_height``, ``drift``, ``floor`` of the theory; ``snow_level`` and ``melting_level``.
+        ``vapour_height``, ``drift``, ``floor`` of the theory; ``snow_level`` and ``melting_level``; ``rain_up_to``, the
+        highest cell on which 0.1 mm/h or more falls as rain, as `orolift.spread.winter_chances` takes it.
     catchments : dict of str to ndarray (m, nc)
         ``rate``, ``snow_share``, ``windward_share`` of each catchment.
     gauges : ndarray (m, ng) [kg m-2]
@@ -104,44 +109,27 @@ def rain_members(
     grid = _coarser(rain.found.grid)
     windward = windward_cells(grid, rain.divide)
     level = np.stack([spread.level[name] for name in COLUMNS], axis=-1)
-    drawn = draws_of(situation, spread.uncertainty, level)
-    freezing = crossing.settings.freezing
-    variation = variation_of(situation, spread.uncertainty, drawn, freezing=freezing)
     lowest = max(crossing.features.base, float(crossing.incoming.height[0]))
-    times = tuple(np.asarray(getattr(variation.settings, name)) for name in ("cloud_time", "fall_time"))
 
-    def made(air: IncomingAir, top: float, cloud_time: float, fall_time: float, *, freezing: bool) -> _Made:
+    def made(air: IncomingAir, top: float, settings: Settings) -> _Made:
         reference = max(top, lowest)
         column = column_rain(
             air,
             reference,
-            cloud_time=cloud_time,
-            fall_time=fall_time,
+            cloud_time=float(np.ravel(settings.cloud_time)[0]),
+            fall_time=float(np.ravel(settings.fall_time)[0]),
             background=crossing.rain.background,
             grid_turn=north,
-            freezing=freezing,
+            freezing=settings.freezing,
         )
         return _made(rain, grid, air, windward, (column, reference + column.dry_lift))
 
-    own = (float(np.asarray(getattr(crossing.settings, name))) for name in ("cloud_time", "fall_time"))
-    middle = made(crossing.incoming, crossing.flow.blocked_top, *own, freezing=freezing)
-    found: list[_Made | None] = []
-    for i in range(spread.members):
-        liquid = bool(drawn["liquid_cloud"][i] > 0.0)
-        try:
-            found.append(
-                made(
-                    _column(variation.incoming, i),
-                    float(spread.values["blocked_top"][i]),
-                    float(times[0][i]),
-                    float(times[1][i]),
-                    freezing=freezing and not liquid,
-                )
-                if spread.crosses[i]
-                else None
-            )
-        except OroliftError:
-            found.append(None)
+    middle = made(crossing.incoming, crossing.flow.blocked_top, crossing.settings)
+    found: list[_Made | None] = [None] * spread.members
+    for i in np.flatnonzero(spread.crosses):
+        with suppress(OroliftError):
+            ((_, one),) = variations_of(situation, spread.uncertainty, level[i : i + 1])
+            found[i] = made(_first_column(one.incoming), float(spread.values["blocked_top"][i]), one.settings)
     return _around(rain, middle, found)
 
 
@@ -175,6 +163,7 @@ def _made(
             "floor": floor,
             "snow_level": snow.snow_level,
             "melting_level": snow.melting_level,
+            "rain_up_to": _rain_up_to(grid, rate * (1.0 - share)),
         },
         catchments={
             name: np.array([_or_nan(getattr(one, name)) for one in catchments])
@@ -182,6 +171,12 @@ def _made(
         },
         gauges=caught,
     )
+
+
+def _rain_up_to(grid: ElevationGrid, rain: Array) -> float:
+    """Highest cell with rain that counts; NaN without any."""
+    wet = np.isfinite(grid.elevation) & (np.nan_to_num(rain) >= LEAST_RAIN)
+    return float(grid.elevation[wet].max()) if wet.any() else np.nan
 
 
 def _or_nan(value: float | None) -> float:
@@ -203,6 +198,7 @@ def _around(rain: MapRain, middle: _Made, found: list[_Made | None]) -> RainMemb
         "floor": rain.reference + rain.column.dry_lift,
         "snow_level": rain.snow.snow_level,
         "melting_level": rain.snow.melting_level,
+        "rain_up_to": _rain_up_to(rain.found.grid, rain.rain),
     }
     answers = {
         name: np.array([_or_nan(getattr(one.rain, name)) for one in rain.catchments]) for name in middle.catchments
@@ -241,14 +237,14 @@ def _moved(name: str, answer: Array | np.float64, middle: Array | float, each: A
     at = np.asarray(middle, dtype=np.float64)
     if name in FACTORS:
         return np.asarray(np.where(at > 0.0, answer * each / np.where(at > 0.0, at, 1.0), each))
-    moved = np.asarray(answer + each - at)
+    known = np.isfinite(answer) & np.isfinite(at)
+    moved = np.asarray(each + np.where(known, answer - at, 0.0))
     return np.clip(moved, 0.0, 1.0) if name in SHARES else moved
 
 
-def _column(air: IncomingAir, i: int) -> IncomingAir:
-    """The column of one member."""
-    names = ("pressure", "temperature", "vapour", "cloud", "eastward_wind", "northward_wind")
-    return replace(air, **{name: getattr(air, name)[i] for name in names})
+def _first_column(air: IncomingAir) -> IncomingAir:
+    """The column of the first member."""
+    return replace(air, **{name: getattr(air, name)[0] for name in OF_MEMBERS})
 
 
 def _coarser(grid: ElevationGrid) -> ElevationGrid:

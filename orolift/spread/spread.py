@@ -8,6 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.crossing.members import Members, crossing_members, members_of
+from orolift.crossing.rainfall import LEAST_RAIN
 from orolift.errors import OroliftError, OutOfRangeError
 from orolift.spread.at_sites import (
     alike,
@@ -39,8 +40,8 @@ LEAST_MEMBERS, MOST_MEMBERS = 10, 100_000
 """Fewer have no 10 % and 90 %; more do not fit into memory."""
 CHUNK = 50
 """Members marched together. It is fixed, so that nothing depends on the number of processes."""
-CHANCE_OF_RAIN = 0.1 / 3600.0
-"""Rate [kg m-2 s-1] from which it rains at a place: 0.1 mm/h, what gauges resolve; common practice, no source."""
+CHANCE_OF_RAIN = LEAST_RAIN
+"""Rate [kg m-2 s-1] from which it rains at a place."""
 
 
 @dataclass(frozen=True)

@@ -222,6 +222,7 @@ def _timeline(
             time,
             step,
             start_code=start,
+            rain=values_of(states, "rain"),
             dry_winds=dry_winds,
             rules=[(one.rule, one.stretches) for one in thresholds],
         ),

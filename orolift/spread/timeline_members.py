@@ -43,14 +43,14 @@ class StretchRange:
 
     Attributes
     ----------
-    chance : float [1]
-        Share of the members that have one.
+    chance : float or None [1]
+        Share of the members that have one, of those that can be judged; None where none can.
     onset, end : (float or None, float or None) or None [s]
         10 and 90 % of those members; None at an end that lies before or after what can be judged, and as a whole where
         fewer than five have one.
     """
 
-    chance: float
+    chance: float | None
     onset: MaybeEnds | None
     end: MaybeEnds | None
 
@@ -63,17 +63,18 @@ class HappensRange:
     ----------
     chance : ndarray (n,) [1]
         Of each hour: share of all members that can be judged; NaN where more than a tenth of them cannot.
-    ever : float [1]
-        Share of the members in which it happens in any of the hours.
-    lasts : (float, float) [s]
-        10 and 90 % of the time in which it holds, all stretches together.
+    ever : float or None [1]
+        Share of the members in which it happens in any of the hours, of those that can be judged in one of them; None
+        where none can, as with a threshold of which a value is never known.
+    lasts : (float, float) or None [s]
+        10 and 90 % of the time in which it holds, all stretches together; None where fewer than five can be judged.
     stretches : tuple of StretchRange
         Of those of the answer, in their order.
     """
 
     chance: Array
-    ever: float
-    lasts: Ends
+    ever: float | None
+    lasts: Ends | None
     stretches: tuple[StretchRange, ...]
 
 
@@ -120,6 +121,7 @@ def site_ranges(
     step: float,
     *,
     start_code: float,
+    rain: Array,
     dry_winds: tuple[Stretch, ...],
     rules: Sequence[tuple[Rule, tuple[Stretch, ...]]] = (),
 ) -> SiteRanges | None:
@@ -135,6 +137,8 @@ def site_ranges(
     step : float [s]
     start_code : float [1]
         Fine Fuel Moisture Code before the first hour.
+    rain : ndarray (n,) [kg m-2 s-1]
+        Of the answer; NaN in hours that do not cross.
     dry_winds : tuple of Stretch
         Of the answer.
     rules : sequence of (Rule, tuple of Stretch)
@@ -150,7 +154,8 @@ def site_ranges(
     Member number k is the same story in every hour: what is too warm, too moist or too weak in it is so throughout, the
     error of the method too. In each member arrival, stretches, codes and sums are those of its own hours. A member that
     does not cross in an hour has neither descending air nor a threshold met in it; one that could not be worked out
-    counts as a missing hour. Hours whose own answer does not cross count as not crossing in every member.
+    counts as a missing hour, and in the sum of rain has that of the answer, so that no rain is lost. Hours whose own
+    answer does not cross count as not crossing in every member.
     """
     count = max((one.crosses.size for one in hours if one is not None), default=0)
     if not count:
@@ -175,7 +180,7 @@ def site_ranges(
         rain=np.array([np.nan if one is None else one.rain for one in hours]),
         in_pool=np.array([np.nan if one is None else one.in_pool for one in hours]),
         fine_fuel_code=np.array([range_of(row) or (np.nan, np.nan) for row in codes]),
-        total_rain=range_of(np.nansum(values["rain"], axis=0) * step),
+        total_rain=range_of(np.nansum(np.where(known, values["rain"], rain[:, np.newaxis]), axis=0) * step),
         dry_wind=_happens(dry, known, arrival, step, dry_winds),
         thresholds=tuple(thresholds),
     )
@@ -269,11 +274,10 @@ def _happens(met: Flags, known: Flags, arrival: Array, step: float, answer: tupl
         stretches(met[:, k].tolist(), known[:, k], arrival[:, k], nothing) if met[:, k].any() else ()
         for k in np.flatnonzero(counted)
     ]
-    lasts = range_of(met[:, counted].sum(axis=0) * step)
     return HappensRange(
         chance=np.array(chance),
-        ever=_share(np.array([bool(found) for found in each])),
-        lasts=lasts or (np.nan, np.nan),
+        ever=float(np.mean([bool(found) for found in each])) if each else None,
+        lasts=range_of(met[:, counted].sum(axis=0) * step),
         stretches=tuple(_in_members(one, each) for one in answer),
     )
 
@@ -283,7 +287,7 @@ def _in_members(answer: Stretch, each: list[tuple[Stretch, ...]]) -> StretchRang
     same = [[one for one in found if one.first <= answer.last and one.last >= answer.first] for found in each]
     same = [found for found in same if found]
     return StretchRange(
-        chance=len(same) / len(each) if each else np.nan,
+        chance=len(same) / len(each) if each else None,
         onset=_times([found[0].onset for found in same], -np.inf),
         end=_times([found[-1].end for found in same], np.inf),
     )

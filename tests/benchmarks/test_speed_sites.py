@@ -79,7 +79,7 @@ def test_a_thousand_sites(tmp_path):
 
 @pytest.mark.speed
 def test_map_of_the_lee():
-    """More than 200 strips, each about a crossing and a third. Aim: 60 s on two cores with its members, 1 GB."""
+    """More than 200 strips, each less than a crossing with its ends. Aim: 60 s on two cores with its members, 1 GB."""
     inputs = read_inputs(DEMO / "varn_moist.toml")
     one = one_crossing(inputs)
     plans = []
@@ -97,7 +97,7 @@ def test_map_of_the_lee():
         f"{peak:.0f} MB here"
     )
     assert len(crossed) > 200
-    assert work < 1.6 * len(crossed) * one  # 14 heights at every place; sites have one or two
+    assert work < 1.2 * len(crossed) * one  # 14 heights at every place; sites have one or two
     assert drawing + joining < 40.0 * one
 
 
@@ -127,7 +127,7 @@ def test_members_of_the_map():
         f"{one:.2f} s; their ranges in {plan.placed.grid.elevation.size} cells: {ranges:.1f} s; {peak:.0f} MB here"
     )
     assert 8 < len(numbers) < 20
-    assert work < 0.8 * len(crossed) * one
+    assert work < 0.55 * len(crossed) * one
     assert ranges < 80.0 * one
 
 

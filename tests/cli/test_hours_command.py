@@ -100,6 +100,20 @@ def test_hours_write_all_their_files(series_folder, capsys):
     assert "members)" in said
 
 
+def test_a_threshold_that_cannot_be_judged_is_null(series_folder):
+    """It asks for a drought index that the case does not give, in a series of which every hour crosses."""
+    (series_folder / "rules.toml").write_text(
+        'region = "Tarn"\nauthority = "none"\ntaken = 2026-05-01\n[[rule]]\nname = "Drought"\n'
+        '[[rule.condition]]\nquantity = "drought_index"\nat_least = 400\n'
+    )
+    case = series_folder / "case.toml"
+    case.write_text(case.read_text().replace("[rain]", '[fire]\nrules_file = "rules.toml"\n[rain]'))
+    (series_folder / "series.csv").write_text("".join(SERIES.splitlines(keepends=True)[:2]))
+    assert exit_code(["hours", "case.toml", "series.csv", "--jobs", "1", "--quiet", *ALL]) == 0
+    threshold = json.loads((series_folder / "r.json").read_text())["sites"][0]["thresholds"][0]
+    assert (threshold["met"], threshold["chance"], threshold["chance_of_any"]) == ([None], [None], None)
+
+
 def test_netcdf_of_hours_follows_the_conventions(series_folder):
     """Units, standard names and fill values as CF has them; times in seconds since 1970."""
     netcdf4 = pytest.importorskip("netCDF4")

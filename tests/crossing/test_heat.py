@@ -242,3 +242,17 @@ def test_heat_left_out_for_want_of_time_or_place_is_a_note(sunny):
     assert any("The time is not known" in text for text in sunny(284.15, When(None, 0.0, 40.0)).notes)
     assert any("The place is not known" in text for text in sunny(284.15, When(NOON.time)).notes)
     assert not any("is not known: heat" in text for text in sunny(284.15, NOON).notes)
+
+
+@pytest.mark.parametrize("cover", [None, 0.6])
+def test_one_way_for_several_airs_is_that_way_for_each(cover):
+    """The sun is worked out once for a way: heights over a place that share it have what each would have alone."""
+    way, kelvin = np.array([[3e3], [2e4], [7e4]]), np.array([[280.0, 285.0], [270.0, 290.0], [283.0, 262.0]])
+    sky = None if cover is None else np.linspace(0.0, cover, STEPS)
+    found = surface_heat(AFTERNOON, 0.0, 45.0, way, kelvin, 9e4, cover=sky)
+    for row in range(3):
+        for column in range(2):
+            alone = surface_heat(AFTERNOON, 0.0, 45.0, way[row, 0], kelvin[row, column], 9e4, cover=sky)
+            for name in ("sensible", "evaporated", "lost", "duration"):
+                assert getattr(found, name)[row, column] == pytest.approx(float(getattr(alone, name)), rel=1e-12)
+    assert np.ptp(found.sensible[:, 0]) > 0.0

@@ -59,6 +59,27 @@ def test_a_member_is_as_it_would_be_alone(setting, together, member):
     assert rain[member] == pytest.approx(alone.falling.landed.sum(), rel=1e-5)
 
 
+@pytest.mark.parametrize("pooled", [(1,), (0, 2)])
+def test_members_with_a_pool_leave_the_others_as_they_are(setting, together, pooled):
+    """One without a pool is as if none had any; one with a pool is as it would be alone, all that is kept of it."""
+    ground, air = setting
+    many = with_values(air, temperature=air.temperature + WARMER[:, None])
+    lee = tuple(Lee(pool_top=1000.0 if i in pooled else 0.0) for i in range(3))
+    found = solve(ground, many, settings_of(slice(None)), lee, members=3, streamlines=40)
+    assert [pool is not None for pool in found.pools] == [i in pooled for i in range(3)]
+    for i in range(3):
+        one = with_values(air, temperature=air.temperature + WARMER[i])
+        alone = solve(ground, one, settings_of(slice(i, i + 1)), lee[i], streamlines=40).streams
+        expected, number = (alone, 0) if i in pooled else (together.streams, i)
+        for name in ("pressure", "temperature", "vapour", "cloud", "condensed", "removed", "entropy"):
+            values, known = (getattr(x.air, name) for x in (found.streams, expected))
+            np.testing.assert_allclose(values[:, i], known[:, number], rtol=1e-5, atol=1e-8)
+        np.testing.assert_allclose(found.streams.flow.heights[i], expected.flow.heights[number], atol=1e-3)
+        assert found.streams.falling.landed[:, i].sum() == pytest.approx(expected.falling.landed[:, number].sum())
+        assert found.streams.falling.beyond[i] == pytest.approx(expected.falling.beyond[number], rel=1e-4, abs=1e-9)
+        assert found.streams.settled[i] == expected.settled[number]
+
+
 def test_flow_in_groups_is_the_flow(together):
     """Members taken apart and put together again are the same arrays."""
     flow = together.streams.flow

@@ -145,15 +145,31 @@ def test_rules_on_the_depth_of_mixing_take_that_of_each_member(crossing):
 
 
 def test_warmer_and_windier_members_move_the_layer(crossing, settings):
-    """Hot-Dry-Windy of members with twice the wind is twice that of the answer."""
+    """Hot-Dry-Windy goes with the strongest wind of 500 m, which gains as much as the mean of the lowest 300 m."""
     site = fire_at_sites(crossing, When(), settings)[0]
+    height, wind = site.weather.height_above_ground, site.weather.layer_wind
     given = members(crossing.lee[0], 5)
     given["wind_10m"] *= 2.0
     low, high = with_members(site, given, settings, 0.03).ranges["hot_dry_windy"]
-    np.testing.assert_allclose([low, high], 2.0 * float(site.indices.hot_dry_windy))
+    strongest = wind[height <= 500.0].max()
+    factor = (strongest + wind[height <= 300.0].mean()) / strongest
+    np.testing.assert_allclose([low, high], factor * float(site.indices.hot_dry_windy))
     given = members(crossing.lee[0], 5)
     given["temperature"] += 3.0
     assert with_members(site, given, settings, 0.03).ranges["hot_dry_windy"][0] > float(site.indices.hot_dry_windy)
+
+
+def test_a_nearly_calm_answer_does_not_blow_up_what_is_aloft(crossing, settings):
+    """Members with fifty times the wind near the ground: aloft they gain that difference, not fifty times the wind."""
+    site = fire_at_sites(crossing, When(), settings)[0]
+    weather, height = site.weather, site.weather.height_above_ground
+    near = height <= 300.0
+    calm = replace(weather, wind=0.02 * weather.wind, layer_wind=weather.layer_wind * np.where(near, 0.02, 1.0))
+    given = members(crossing.lee[0], 5)
+    low, high = with_members(replace(site, weather=calm), given, settings, 0.03).ranges["hot_dry_windy"]
+    strongest = weather.layer_wind[height <= 500.0].max()
+    factor = (strongest + 0.98 * weather.layer_wind[near].mean()) / strongest
+    assert 1.0 < low / float(site.indices.hot_dry_windy) == high / float(site.indices.hot_dry_windy) <= factor
 
 
 def test_rain_of_the_members_counts(crossing, settings):

@@ -4,11 +4,11 @@ import numpy as np
 import pytest
 
 from orolift.air.column_build import air_from_station
+from orolift.air.snow_share import snow_share_from_wet_bulb
 from orolift.errors import OutOfRangeError
 from orolift.rain.snow import (
     snow_by_height,
     snow_on_ground,
-    snow_share_from_wet_bulb,
     snow_share_jennings_2018,
 )
 

@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from orolift.report.bearings_page import bearings_page
-from orolift.report.bearings_sure import agreement_words, members_line
+from orolift.report.bearings_sure import agreement_words, members_line, though_words
 from orolift.report.figures.roses import roses_figure
 from orolift.report.render import render
 from orolift.report.words import plain
@@ -74,6 +74,7 @@ def test_lines_along_the_bars_reach_from_10_to_90_percent(four):
     """Warming 8 (4 to 12) from east and -6 (-10 to -2) from north, on a rim of 12 or more; the oblique bar has none."""
     figure = roses_figure(four, 0, "metric")
     assert "Warming: most +8.0 °C (+4.0 to +12.0) with wind from 90°." in figure.alt.replace("\u00a0", " ")
+    assert "Rain and snow: most 0.0 mm/h (0.0 to 3.0) with wind from 0°." in figure.alt.replace("\u00a0", " ")
     drawing = figure.drawing
     lines = drawing.roses[0].ranges
     assert len(lines) == 3
@@ -135,6 +136,37 @@ def test_another_direction_that_is_worst_in_many_members_is_named(four):
     """Two tenths have it in the south; a twentieth is too few to be named."""
     (tarn,) = four.sites
     split = replace(tarn, worst=np.array([0.1, 0.7, 0.2, np.nan]))
-    assert read(agreement_words(split, four)).endswith("100 %. Next for fire is wind from 180°, worst in 20 %.")
-    assert "Next" not in read(agreement_words(replace(tarn, worst=np.array([0.05, 0.9, 0.05, np.nan])), four))
-    assert "Next" not in read(agreement_words(replace(split, fire=None), four))
+    assert read(agreement_words(split, four)).endswith("100 %. In 20 % the worst for fire is 180°.")
+    assert "In " not in read(agreement_words(replace(tarn, worst=np.array([0.05, 0.9, 0.05, np.nan])), four))
+    assert "In " not in read(agreement_words(replace(split, fire=None), four))
+
+
+def test_the_heading_says_where_more_members_have_another_direction(four):
+    """Named by 0.3 of the members: 0.7 in the south are most, 0.4 more; half agreeing, or a smaller rest, says nothing."""
+    (tarn,) = four.sites
+    assert tarn.agreement is not None
+
+    def though(agree, worst):
+        site = replace(tarn, agreement=replace(tarn.agreement, fire=agree), worst=np.array([*worst, np.nan]))
+        page = bearings_page(
+            replace(four, sites=(site,)), title="T", made_at=datetime(2026, 1, 1, tzinfo=UTC), version="0", notes=()
+        )
+        assert plain(though_words(site, four), "metric") in plain(page.heading, "metric")
+        return read(page.heading).removeprefix("Worst for fire at Tarn is wind from 90°").partition(": ")[0]
+
+    assert though(0.3, [0.0, 0.3, 0.7]) == ", though in most members from 180°"
+    assert though(0.3, [0.3, 0.3, 0.4]) == ", though in more members from 180°"
+    assert though(0.5, [0.0, 0.5, 0.5]) == ""
+    assert though(0.4, [0.3, 0.4, 0.3]) == ""
+
+
+def test_directions_beside_one_another_count_together():
+    """With steps of 20 degrees 0.3 and 0.25 side by side are more than the 0.45 of the one named, and most."""
+    states = [direction(w, 0.3) for w in (8.0, 7.0, 6.0, 5.0)]
+    found = [Direction(math.radians(20.0 * i), (state,)) for i, state in enumerate(states)]
+    bearings = bearings_of(found, ["Tarn"], step=math.radians(20.0), given=0.0, planned=4)
+    (tarn,) = bearings.sites
+    assert tarn.agreement is not None
+    site = replace(tarn, agreement=replace(tarn.agreement, fire=0.45), worst=np.array([0.45, 0.0, 0.25, 0.3]))
+    assert read(though_words(site, bearings)) == ", though in most members from about 60°"
+    assert read(agreement_words(site, bearings)).endswith("In 55 % the worst for fire is within 20° of 60°.")

@@ -93,6 +93,20 @@ def test_no_fault_of_accessibility_in_light_and_dark(opened, html_of, axe, name)
         assert found[1] > (20 if light == "light" else 0)
 
 
+def test_tables_sort_by_the_number_and_not_by_its_range(opened, page_for, with_members):
+    """100 with 77 to 100 beneath it is below 150, put there without a range: the digits are not joined."""
+    crossing, spread = with_members
+    page = opened(render(page_for(crossing, spread=spread, fresh=True)))
+    page.evaluate("document.querySelector('#site-values tbody tr').cells[5].innerHTML = '<data>150</data>'")
+    page.locator("#site-values thead tr:last-child button").nth(4).click()
+    cells = "[...document.querySelectorAll('#site-values tbody tr')].map((row) => row.cells[5].firstChild.textContent)"
+    shown = [float(text) for text in page.evaluate(cells)]
+    assert len(shown) > 1
+    assert shown == sorted(shown)
+    assert shown[-1] == 150.0
+    assert page.locator("#site-values tbody .span").count() > 0
+
+
 @pytest.mark.parametrize("units", ["metric", "us"])
 def test_keyboard_moves_the_reading_line(opened, page_for, named, units):
     """Arrow keys step along the line and from path to path; what is said equals the crossing there."""

@@ -3,6 +3,7 @@
 import re
 from datetime import UTC, datetime, timedelta, timezone
 from itertools import pairwise
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -14,6 +15,7 @@ from orolift.report.figures.placing import text_width
 from orolift.report.figures.time_axis import time_ticks
 from orolift.report.figures.timeline_panels import _holding
 from orolift.report.hours_page import hours_page
+from orolift.report.hours_words import heading
 from orolift.report.words import plain
 from orolift.spread.hour_members import RANGED, HourMembers
 from orolift.spread.hours import Hour
@@ -187,10 +189,14 @@ def test_the_site_says_what_its_members_say():
     assert "Descending warm dry air comes in 90 % of 20 members, most likely at 3 November 2026, 07:30 (90 %)" in said
     assert "in all it lasts 2 h" in said
     assert "This stretch is there in 90 % of the members" in said
-    assert "; some comes in 90 % of the members." in read(with_members([9, 18, 18, 0]).lead)
     said = read([site.heading])
     assert "(before 3 Nov 07:00)" in said  # those that begin with the first hour may have begun before it
     assert "to 3 November 2026, 09:00 (3 Nov 09:00)" in said  # all end alike
+
+
+def test_the_head_says_how_likely_the_longest_stretch_is():
+    """Six of twenty members share it: the answer is not what most of them say."""
+    assert read(with_members([0, 6, 6, 0]).lead).split(". ")[0].rstrip(".").endswith("; in 30 % of the members")
 
 
 def test_rows_have_their_ranges_below():
@@ -249,3 +255,20 @@ def test_a_threshold_that_most_members_meet_is_named_at_the_head():
         made = hours_page(found, title="T", zone=UTC, made_at=datetime(2026, 1, 1, tzinfo=UTC), version="0", notes=())
         assert ("Threshold not met at Tarn: dry, but in 60 % of the members." in read(made.lead)) is named
         assert made.dangers == ()
+
+
+@pytest.mark.parametrize(
+    ("rain", "ends", "said"),
+    [
+        (12.0, (4.0, 21.0), "and 12 mm (4 to 21) of rain at most"),
+        (12.0, None, "and 12 mm of rain at most"),
+        (0.2, (0.0, 3.0), "and hardly any rain"),
+        (0.2, (0.0, 0.3), "and no rain"),
+        (0.2, None, "and no rain"),
+    ],
+)
+def test_rain_in_the_heading_has_its_range(rain, ends, said):
+    """And none is said only where the members have none to speak of."""
+    ranges = None if ends is None else SimpleNamespace(total_rain=ends)
+    hours = SimpleNamespace(sites=(SimpleNamespace(dry_winds=(), rain=rain, ranges=ranges),))
+    assert read([heading(hours)]).strip() == f"No descending warm dry air, {said}"

@@ -16,8 +16,9 @@ from orolift.fire.winds import WindMeant
 from orolift.sources.hours_case import USUAL_HOURS, hour_task, hour_tasks, read_hours, with_members
 from orolift.spread.engine import in_order, outcomes
 from orolift.spread.hour_members import RANGED, descending_members
-from orolift.spread.hours import when_there, worked_hour
+from orolift.spread.hours import _line_rain, when_there, worked_hour
 from orolift.spread.ranges import range_of
+from orolift.spread.site_state import states_of
 from orolift.spread.spread import spread_of
 from orolift.spread.uncertainty import Uncertainty
 
@@ -193,6 +194,21 @@ def test_an_hour_that_hardly_crosses_says_how_likely_it_is(tmp_path):
     assert hour.sites[0].status == "no crossing"
     assert 0.0 < hour.members[0].crosses.mean() < 0.5
     assert hour.members[0].ends is None
+
+
+def test_lost_members_have_the_rain_of_the_answer(constant):
+    """On the line, for sums over catchments: a member that could not be worked out does not make them drier."""
+    found, _ = constant
+    task = hour_task(found, 0)
+    line = task.lines[0]
+    (state,), crossing = states_of(line.situation, line.observed_at, drawn=task.drawn)
+    crosses = state.members.crosses.copy()
+    crosses[0] = np.nan
+    lost = replace(state.members, crosses=crosses, line_rain=np.where(np.isnan(crosses), np.nan, 0.0))
+    rain = _line_rain(replace(state, members=lost), crossing)
+    assert rain.answer > 0.0
+    assert rain.members[0] == pytest.approx(rain.answer, rel=1e-6)
+    assert rain.members[1:] == pytest.approx(0.0)
 
 
 def test_missing_hours_have_no_members(tmp_path):

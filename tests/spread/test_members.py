@@ -13,7 +13,7 @@ from orolift.crossing.rainfall import BAND_STEPS
 from orolift.crossing.result import Site, When
 from orolift.crossing.situation import crossing_of
 from orolift.flow.downslope import ESTIMATES
-from orolift.rain.winter import bands_of_sides
+from orolift.rain.winter import bands_of_sides, winter_flags
 from orolift.spread.at_sites import alike, spread_out
 from orolift.spread.draws import draws_of, variation_of
 from orolift.spread.uncertainty import COLUMNS, Uncertainty, latin_hypercube
@@ -143,6 +143,34 @@ def test_the_whole_is_that_of_a_crossing_alone(both):
             assert (value is None and np.isnan(here)) or here == pytest.approx(value, abs=near), name
 
 
+@pytest.mark.parametrize("background", [0.0, 0.3 / 3600.0], ids=["no background", "background"])
+@pytest.mark.parametrize("lee", [None, Lee(temperature=268.0)], ids=["no pool", "cold pool"])
+def test_dangers_of_cold_ground_are_those_of_a_crossing_alone(moist, background, lee):
+    """Rain on snow is flagged up to the highest ground with rain and no higher; freezing rain where a member has it."""
+    whole = replace(moist, lee=lee, background=background)
+    uncertainty = Uncertainty(going_round_share=0.0, surface_heat=0.0, lee_temperature=0.0)
+    drawn = draws_of(whole, uncertainty, latin_hypercube(3, len(COLUMNS), 3))
+    variation = variation_of(whole, uncertainty, drawn, freezing=True)
+    found = members_of(whole, variation)
+    names = ("critical_value", "cloud_time", "fall_time", "mixing_depth")
+    told = []
+    for i in range(3):
+        own = replace(variation.settings, **{name: getattr(variation.settings, name)[i] for name in names})
+        air = replace(variation.incoming, **{name: getattr(variation.incoming, name)[i] for name in FIELDS})
+        crossing = crossing_of(replace(whole, incoming=air, settings=own))
+        highest = found.values["rain_up_to"][i]
+        assert np.isfinite(highest)
+
+        def flagged(cover, what, crossing=crossing):
+            return [flag for flag in winter_flags(crossing, snow_cover_above=cover) if flag.startswith(what)]
+
+        assert flagged(highest - 1.0, "Rain on snow")
+        assert not flagged(highest + 1.0, "Rain on snow")
+        assert bool(flagged(None, "Freezing rain")) == bool(found.values["freezing_rain"][i])
+        told.append(found.values["freezing_rain"][i])
+    assert any(told) == (lee is not None)
+
+
 def test_rotation_matters_by_wind_and_stability(moist):
     """Definitions: the Rossby number goes with the wind across the crest, the deformation radius with N."""
     placed = replace(moist, when=When(None, None, -46.9))
@@ -177,6 +205,7 @@ def test_a_member_without_enough_wind_is_no_error(calm):
     found = members_of(calm, variation_of(calm, uncertainty, drawn, freezing=True), streamlines=30)
     assert 0 < found.crosses.sum() < 8
     assert np.array_equal(found.values["cross_range_wind"] > 2.0, found.crosses)
+    assert np.array_equal(np.isfinite(found.values["temperature"]), found.crosses)
     assert np.array_equal(np.isfinite(found.sites["temperature"][:, 0]), found.crosses)
     drawn["wind"] = np.full(8, 0.2)
     none = members_of(calm, variation_of(calm, uncertainty, drawn, freezing=True))

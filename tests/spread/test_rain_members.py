@@ -90,6 +90,18 @@ def test_a_member_that_does_not_cross_has_no_map(members):
     assert spread.members == 10
 
 
+def test_a_member_beyond_what_is_physical_has_no_map(members, moist, moist_crossing, mapped):
+    """One that would be far too cold fails in the crossing and here, and the others go on."""
+    _, spread = members(NOTHING)
+    level = {name: value.copy() for name, value in spread.level.items()}
+    level["temperature"][:] = 0.5
+    level["temperature"][0] = 1e-30
+    wild = replace(spread, uncertainty=replace(NOTHING, temperature=15.0), level=level)
+    found = rain_members(wild, moist, moist_crossing, mapped)
+    assert np.isnan(found.values["mean_rate"][0])
+    assert found.values["mean_rate"][1:] == pytest.approx(mapped.mean_rate, rel=1e-3)
+
+
 def test_coarser_cells_keep_mean_and_place():
     """Of whole cells; missing ground does not count."""
     rng = np.random.default_rng(1)

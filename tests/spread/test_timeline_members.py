@@ -69,6 +69,42 @@ def test_rain_that_takes_turns_is_no_surer_in_sums_than_it_is():
     assert found.total_rain == pytest.approx((2.0, 2.0), rel=1e-6)
 
 
+def test_a_lost_member_has_the_rain_of_the_answer_in_that_hour():
+    """All have 3 mm/h where they are known: a lost hour takes no rain out of the sum, whether some are lost or all."""
+    wet = replace(STATE, rain=3.0 / HOUR)
+    whole = members(rain=3.0 / HOUR)
+    some = replace(
+        whole,
+        crosses=np.where(np.arange(COUNT) < 8, -1, 1).astype(np.int8),
+        carried=np.where(np.arange(COUNT) < 8, np.nan, whole.carried).astype(np.float32),
+    )
+    for lost in (some, None):
+        found = site((wet, whole), (wet, lost), (SiteState("missing"), None)).sites[0]
+        assert found.rain == pytest.approx(6.0)
+        assert found.ranges.total_rain == pytest.approx((6.0, 6.0), rel=1e-6)
+
+
+def test_a_threshold_that_is_never_judged_has_no_chance():
+    """No drought index is known in any hour, and all hours cross: no share of no members, and no number that is none."""
+    rule = Rule("Drought", (Condition("drought_index", at_least=400.0),))
+    fire = FireSettings(rules=RuleSet("Tarn", "none", "2026-05-01", (rule,)))
+    unknown = members(rules=np.zeros(COUNT))
+    found = site((STATE, unknown), (STATE, unknown), fire=fire).sites[0].ranges.thresholds[0]
+    assert found.ever is None
+    assert found.lasts is None
+    assert np.isnan(found.chance).all()
+
+
+def test_few_members_that_are_known_have_a_chance_but_no_range():
+    """Four of twenty: fewer than five have no 10 and 90 %."""
+    few = members(2)
+    few = replace(few, crosses=np.where(np.arange(COUNT) < 4, 1, -1).astype(np.int8))
+    found = site((DRY, few), (DRY, few)).sites[0].ranges.dry_wind
+    assert found.ever == 0.5
+    assert found.lasts is None
+    assert found.stretches[0].chance == 0.5
+
+
 def test_fuel_code_is_carried_in_each_member():
     """Two hours of the published form from the same code, with the humidity of each member; a gap does not reset it."""
     humidity = np.linspace(0.2, 0.6, COUNT)

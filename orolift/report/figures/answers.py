@@ -77,7 +77,7 @@ def _words(site: LeeAir, units: Units) -> str:
 
     only = "" if site.descent_only is None else f", descent only {said(site.descent_only)}"
     ends = temperature_ends(site)
-    span = "" if ends is None else f" ({said(ends[0])} to {said(ends[1])})"
+    span = "" if ends is None else f", from no to full blocking {said(ends[0])} to {said(ends[1])}"
     return f"{site.name}: popular picture {said(site.popular_picture)}{only}, this page {said(site.temperature)}{span}."
 
 

@@ -53,7 +53,7 @@ def shortened(text: str, room: float, letter: float) -> str:
     Examples
     --------
     >>> shortened("threshold met: dry", 200.0, 10.0), shortened("threshold met: dry and windy", 100.0, 10.0)
-    ('threshold met: dry', 'threshold met:…')
+    ('threshold met: dry', 'threshold met: dr…')
     """
     if text_width(text, letter) <= room:
         return text

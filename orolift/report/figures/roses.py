@@ -116,8 +116,11 @@ def _alt(site: SiteBearings, bearings: Bearings, units: Units) -> str:
         if not np.isfinite(values).any():
             continue
         i = int(np.nanargmin(values) if plan.lowest else np.nanargmax(values))
-        amount = Amount(float(values[i]), plan.quantity, plan.digits)
-        said = plain(ranged(amount, range_at(site.states[i], plan.key)), units)
+        ends = range_at(site.states[i], plan.key)
+        if plan.quantity == "rain_rate" and max(values[i], *(ends or (0.0,))) < NO_RAIN:
+            out.append(f"{plan.name}: none.")
+            continue
+        said = plain(ranged(Amount(float(values[i]), plan.quantity, plan.digits), ends), units)
         out.append(f"{plan.name}: {plan.most} {said} with wind from {_degrees(bearings.wind_from[i])}.")
     return " ".join(out) or "No air crosses to this site from any direction."
 

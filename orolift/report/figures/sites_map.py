@@ -110,10 +110,11 @@ def _alt(crossing: Crossing, mapped: Mapped, units: Units) -> str:
     wind = point_of_compass(bearing - mapped.inputs.placed.north + np.pi)
     of_sides = [
         f"{counted(count, 'site', 'sites')} {where}"
-        for side, where in (("windward", "before the crest"), ("crest", "on it"), ("lee", "behind it"))
+        for side, where in (("windward", "before the crest"), ("crest", "on the crest"), ("lee", "behind the crest"))
         if (count := sum(air.side == side for air in crossing.lee))
     ]
-    return f"Map of {size}; wind from the {wind}. {', '.join(of_sides)}."
+    where = ", ".join(of_sides)
+    return f"Map of {size}; wind from the {wind}. {where[:1].upper()}{where[1:]}."
 
 
 def _drawing(

@@ -7,7 +7,7 @@
     return found ? Number(found[0]) : null;
   };
   const valued = (cell) => {
-    const text = cell.textContent.trim();
+    const text = (cell.firstChild ? cell.firstChild.textContent : "").trim(); // what follows is its range
     const value = number(text);
     return value === null ? text : value;
   };

@@ -15,7 +15,7 @@ from orolift.sources.geotiff import lee_maps
 from orolift.sources.inputs import read_inputs, situation_of
 from orolift.spread.deviations import read
 from orolift.spread.lee_map import lee_map
-from orolift.spread.lee_spread import RANGED, MembersDrawn, RulesAsked, _tenths, lee_spread
+from orolift.spread.lee_spread import RANGED, MembersDrawn, RulesAsked, _judged, _tenths, lee_spread
 from orolift.spread.spread import Drawn, spread_of
 from orolift.spread.strip_members import draw, members_of_strips, strips_with_members
 from orolift.spread.strips import air_of_strips
@@ -193,6 +193,21 @@ def test_a_chance_fits_the_range(spread):
     assert hardly.any()
     assert (said.met[2][surely] >= 0.8).all()
     assert (said.met[2][hardly] <= 0.2).all()
+
+
+def test_a_rule_that_many_members_cannot_judge_has_no_chance():
+    """As at sites: of members that lack one value only those too moist for the rule are judged, no share of all."""
+    humidity = np.tile(np.where(np.arange(20) < 8, 0.6, 0.2), (3, 1))
+    warming = np.full((3, 20), 2.0)
+    warming[0, 8:] = np.nan
+    warming[1, 8:10] = np.nan
+    both = Rule("both", (Condition("relative_humidity", at_most=0.3), Condition("warming", at_least=1.0)))
+    values = {"temperature": np.full((3, 20), 290.0), "warming": warming, "relative_humidity": humidity}
+    values["wind_10m"] = np.full((3, 20), 5.0)
+    maps, _ = _judged(values, RulesAsked((both, RULES[1])), np.ones(3, dtype=bool))
+    assert maps["met_0"] == pytest.approx([np.nan, 10 / 18, 0.6], nan_ok=True)
+    assert maps["met_1"] == pytest.approx([0.0, 0.0, 0.0])
+    assert maps["any_met"] == pytest.approx([np.nan, 10 / 18, 0.6], nan_ok=True)
 
 
 def test_members_that_do_not_cross_count_nowhere(ridge, spread):
