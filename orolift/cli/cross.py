@@ -287,10 +287,11 @@ def flags_of(inputs: Inputs, crossing: Crossing, mapped: Mapped | None, winter: 
 
 def fire_lines(worked: Worked) -> list[str]:
     """What the fire thresholds of the case come to, a line; none without a rule file."""
-    from orolift.report.fire_thresholds import headline
+    from orolift.report.fire_thresholds import headline, likeliest
 
-    words = headline(worked.fire).words
-    return [f"Fire      {words} (a threshold met is not a warning)"] if words else []
+    words, chance = headline(worked.fire).words, likeliest(worked.fire)
+    most = f"; likeliest {chance}" if chance else ""
+    return [f"Fire      {words}{most} (a threshold met is not a warning)"] if words else []
 
 
 def report_of(worked: Worked, units: Units) -> str:

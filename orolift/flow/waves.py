@@ -14,6 +14,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 
 from orolift.checks import within
+from orolift.flow.spectra import over_transect, spectrum_of
 
 if TYPE_CHECKING:
     from numpy.typing import ArrayLike, NDArray
@@ -30,8 +31,6 @@ _FADING = 2.0  # times the largest Scorer wavenumber: waves as short as this fad
 _FRICTION_SHARE = (
     0.3  # of the Scorer wavenumber: longer waves are not damped; between hydrostatic and trapped, a judgement
 )
-_PIECE = 2**18  # multiplications in one product of matrices, for which no library starts threads
-_TAIL = 1e-6  # share of the energy of the boundary that may be left to the shorter parts
 
 
 @dataclass(frozen=True)
@@ -234,7 +233,7 @@ def waves(
     """
     ground = within("boundary", boundary, -9000.0, 9000.0, "m", "Give metres above the lowest edge.")
     step = float(within("spacing", spacing, 1.0, 1e5, "m", "Give metres."))
-    spectrum, wavenumber, last, length = _spectrum(ground, step, padding, shortest or _shortest(column))
+    spectrum, wavenumber, last, length = spectrum_of(ground, step, padding, shortest or _shortest(column))
     friction = _friction(column, wavenumber, friction_length)
     answer = response(column, wavenumber, friction=friction, hydrostatic=hydrostatic, aloft=all_pressure)
     points = ground.shape[-1] if at is None else at
@@ -242,16 +241,16 @@ def waves(
 
     known = answer.displacement
     known *= spectrum[..., None, :]
-    displacement = _over_transect(known, length, points)
+    displacement = over_transect(known, length, points)
     short = line[..., None, :] - displacement[..., :1, :]
     fade = np.exp(-last * (column.edge - column.edge[..., :1]))
     suction = (column.density[..., :1] * column.wind[..., :1] ** 2) * last
     displacement += short * fade[..., None]
-    at_ground = _over_transect(known[..., 0, :] * answer.impedance[..., 0, :], length, points)
+    at_ground = over_transect(known[..., 0, :] * answer.impedance[..., 0, :], length, points)
     return WaveField(
         displacement=displacement,
         surface_pressure=at_ground - suction * short[..., 0, :],
-        pressure=_over_transect(known * answer.impedance, length, points) if all_pressure else None,
+        pressure=over_transect(known * answer.impedance, length, points) if all_pressure else None,
     )
 
 
@@ -389,80 +388,3 @@ def _friction(column: Layers, wavenumber: NDArray[np.float64], length: float) ->
     limit = np.maximum(_FRICTION_SHARE * scorer, 1e-5)[..., None, None]
     sharp = (wavenumber / limit) ** 4
     return np.asarray(sharp / (1.0 + sharp) / (wavenumber * length))
-
-
-def _spectrum(
-    ground: NDArray[np.float64], step: float, padding: float, shortest: ArrayLike
-) -> tuple[NDArray[np.complex128], NDArray[np.float64], NDArray[np.float64], int]:
-    """Spectrum of the padded boundary, its wavenumbers, the last worth keeping (..., 1), and the padded length.
-
-    Each member keeps its own, so that it does not depend on the others; beyond them its spectrum is zero.
-    """
-    length = _fast_length(ground.shape[-1] + int(np.ceil(padding / step)))
-    spectrum = np.fft.rfft(ground, n=length, axis=-1)
-    wavenumber = np.asarray(2.0 * np.pi * np.fft.rfftfreq(length, step), np.float64)
-    energy = np.abs(spectrum) ** 2
-    energy = energy / np.maximum(np.sum(energy, axis=-1, keepdims=True), 1e-300)
-    tail = np.cumsum(energy[..., ::-1], axis=-1)[..., ::-1]
-    worth = (tail > _TAIL) & (wavenumber * np.asarray(shortest) <= 2.0 * np.pi)
-    worth[..., :2] = True
-    counts = np.sum(worth, axis=-1, keepdims=True)
-    most = int(np.max(counts))
-    kept = wavenumber[:most].copy()
-    kept[0] = 1e-3 * kept[1]
-    return np.where(worth, spectrum, 0.0)[..., :most], kept, kept[counts - 1], length
-
-
-def _over_transect(
-    spectral: NDArray[np.complex128], length: int, points: int | NDArray[np.intp]
-) -> NDArray[np.float64]:
-    """Values at points, or the first so many, a few levels at a time so that the padded arrays stay in the cache.
-
-    At a few points a few waves are summed up one by one, which is quicker.
-    """
-    rows = spectral.reshape(-1, spectral.shape[-1])
-    wanted: slice | NDArray[np.intp] = slice(points) if isinstance(points, int) else points
-    count = points if isinstance(points, int) else points.size
-    if not isinstance(points, int) and 8 * rows.shape[-1] * count <= _PIECE:
-        return _at_points(spectral, _cosines(rows.shape[-1], length, points))
-    values = np.empty((rows.shape[0], count))
-    for start in range(0, rows.shape[0], 16):
-        some = rows[start : start + 16]
-        full = np.zeros((some.shape[0], length // 2 + 1), np.complex128)
-        full[:, : rows.shape[1]] = some
-        full[:, 0] = some[:, 0].real  # the mean: the limit of very long waves of either sign
-        values[start : start + 16] = np.fft.irfft(full, n=length, axis=-1)[:, wanted]
-    return values.reshape(*spectral.shape[:-1], count)
-
-
-def _at_points(spectral: NDArray[np.complex128], cosines: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Product with the cosines, in small pieces: threads would wait more than they work."""
-    rows = spectral.reshape(-1, spectral.shape[-1]).view(np.float64)
-    values = np.empty((rows.shape[0], cosines.shape[-1]))
-    size = _PIECE // cosines.size
-    for start in range(0, rows.shape[0], size):
-        np.matmul(rows[start : start + size], cosines, out=values[start : start + size])
-    return values.reshape(*spectral.shape[:-1], -1)
-
-
-def _cosines(waves: int, length: int, points: NDArray[np.intp]) -> NDArray[np.float64]:
-    """What each real and imaginary part of a spectrum adds at points, (2 nk, n)."""
-    phase = (2.0 * np.pi / length) * (np.outer(np.arange(waves), points) % length)
-    parts = np.stack([np.cos(phase), -np.sin(phase)], axis=1) * (2.0 / length)
-    parts[0] = [[1.0 / length], [0.0]]  # the mean: the limit of very long waves of either sign
-    if 2 * (waves - 1) == length:
-        parts[-1] *= 0.5  # the shortest wave stands for both signs
-    return np.asarray(parts.reshape(2 * waves, -1))
-
-
-def _fast_length(least: int) -> int:
-    """Smallest even number of at least `least` with no prime factor above 5, for a fast transform."""
-    length = least + least % 2
-    while True:
-        rest = length
-        for prime in (2, 3, 5):
-            while rest % prime == 0:
-                rest //= prime
-        if rest == 1:
-            return length
-        length += 2

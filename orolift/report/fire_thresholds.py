@@ -142,6 +142,27 @@ def headline(found: tuple[SiteFire, ...]) -> Headline:
     return Headline("No threshold is met", ())
 
 
+def likeliest(found: tuple[SiteFire, ...]) -> str:
+    """Which threshold is met in most members, where and in how many; empty where no chance is known or all are none.
+
+    Parameters
+    ----------
+    found : tuple of SiteFire
+
+    Returns
+    -------
+    str
+    """
+    known = [
+        (one.judged.chance, one.judged.rule.name, site.name)
+        for site in found
+        for one in site.thresholds
+        if one.judged.chance is not None
+    ]
+    chance, rule, site = max(known, key=lambda one: one[0], default=(0.0, "", ""))
+    return f"“{rule}” at {site} in {100.0 * chance:.0f} % of the members" if chance > 0.0 else ""
+
+
 def _row(
     site: SiteFire, air: LeeAir, number: int, judged: JudgedRule, movers: tuple[tuple[Mover, ...], ...]
 ) -> ThresholdRow:

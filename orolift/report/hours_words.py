@@ -52,7 +52,8 @@ def heading(hours: Hours) -> Words:
     ends = total_rain(wettest)
     wet: Words = (", and no rain",)
     if wettest.rain >= MENTIONED_RAIN:
-        wet = (", and ", *ranged(Amount(wettest.rain, "water_depth", 0), ends), " of rain at most")
+        where_most = " of rain" if sites == 1 else f" of rain at {wettest.name}, the most"
+        wet = (", and ", *ranged(Amount(wettest.rain, "water_depth", 0), ends), where_most)
     elif ends is not None and ends[1] >= MENTIONED_RAIN:
         wet = (", and hardly any rain",)
     return (f"{where[:1].upper()}{where[1:]}", *wet)
@@ -239,7 +240,7 @@ def counts(site: SiteTimeline) -> tuple[Words, ...]:
             Amount(len(states), "plain"),
             " hours",
             *((", in ", Amount(still, "plain"), " it does not") if still else ()),
-            *((", and ", Amount(missing, "plain"), " are missing") if missing else ()),
+            *((", and ", Amount(missing, "plain"), f" {'is' if missing == 1 else 'are'} missing") if missing else ()),
             *_rain(site),
         )
     ]

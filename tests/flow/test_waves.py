@@ -6,8 +6,8 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from orolift.errors import OutOfRangeError
-from orolift.flow import waves as waves_module
 from orolift.flow.layers import layers, layers_of_column, least_richardson_number
+from orolift.flow.spectra import over_transect
 from orolift.flow.waves import response, wave_drag, waves
 
 N, U, HM, A, RHO = 0.01, 10.0, 500.0, 10e3, 1.2
@@ -345,7 +345,7 @@ def test_the_shortest_wave_of_the_transform_counts_once():
     """Law: a zigzag of one point to the next is its own transform, summed up with a half the weight of the others."""
     line = 10.0 * (-1.0) ** np.arange(16)
     spectrum = np.fft.rfft(line)
-    np.testing.assert_allclose(waves_module._over_transect(spectrum, 16, np.array([0, 3])), [10.0, -10.0], atol=1e-12)
+    np.testing.assert_allclose(over_transect(spectrum, 16, np.array([0, 3])), [10.0, -10.0], atol=1e-12)
 
 
 def test_a_member_does_not_depend_on_the_others():

@@ -1,6 +1,7 @@
 """The section on fire weather: a conclusion, thresholds with margins, dryness, the night, cautions."""
 
 import re
+from dataclasses import replace
 from datetime import UTC, datetime
 
 import numpy as np
@@ -12,7 +13,7 @@ from orolift.fire.rules import Condition, Rule, RuleSet
 from orolift.fire.sites import FireSettings, fire_at_sites
 from orolift.fire.winds import WindMeant
 from orolift.report.fire import _DRYNESS, CAUTIONS, fire_weather
-from orolift.report.fire_thresholds import headline
+from orolift.report.fire_thresholds import headline, likeliest
 from orolift.report.page import page_of
 from orolift.report.quantities import NO_BREAK_SPACE, Amount, quantity
 from orolift.report.render import render
@@ -67,7 +68,20 @@ def test_heading_is_what_is_met(crossing):
     found = judged(crossing, None)
     heading = plain(fire_weather(crossing, found, None).heading, "metric")
     assert heading.startswith("Lower Tarn has a humidity of ")
-    assert headline(found).words == ""
+    assert headline(found).words == likeliest(found) == ""
+
+
+def test_the_likeliest_threshold_is_named(crossing):
+    """By its chance over the members, whether the answer meets it or not; nothing without members or chances."""
+    found = judged(crossing, rules())
+    assert likeliest(found) == ""
+    first = found[0].thresholds
+    chances = [0.2, 0.47] + [0.0] * (len(first) - 2)
+    sure = tuple(replace(one, judged=replace(one.judged, chance=c)) for one, c in zip(first, chances, strict=True))
+    named = likeliest((replace(found[0], thresholds=sure), *found[1:]))
+    assert named == f"“{sure[1].judged.rule.name}” at {found[0].name} in 47 % of the members"
+    never = tuple(replace(one, judged=replace(one.judged, chance=0.0)) for one in first)
+    assert likeliest((replace(found[0], thresholds=never),)) == ""
 
 
 def test_numbers_are_those_of_the_computation(crossing):

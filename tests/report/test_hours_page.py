@@ -260,8 +260,8 @@ def test_a_threshold_that_most_members_meet_is_named_at_the_head():
 @pytest.mark.parametrize(
     ("rain", "ends", "said"),
     [
-        (12.0, (4.0, 21.0), "and 12 mm (4 to 21) of rain at most"),
-        (12.0, None, "and 12 mm of rain at most"),
+        (12.0, (4.0, 21.0), "and 12 mm (4 to 21) of rain"),
+        (12.0, None, "and 12 mm of rain"),
         (0.2, (0.0, 3.0), "and hardly any rain"),
         (0.2, (0.0, 0.3), "and no rain"),
         (0.2, None, "and no rain"),
