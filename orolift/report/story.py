@@ -197,9 +197,3 @@ def source_words(site: LeeAir) -> Words:
     if site.source_level is None or site.source_level_low is None or site.source_level_high is None:
         return ()
     return height_with_ends(site.source_level, site.source_level_low, site.source_level_high)
-
-
-def blocked_words(crossing: Crossing) -> Words:
-    """The blocked top with its range."""
-    flow = crossing.flow
-    return height_with_ends(flow.blocked_top, flow.blocked_top_low, flow.blocked_top_high)
