@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import gc
 import logging
 import os
 import signal
@@ -191,6 +192,7 @@ def _cluster(scheduler: str) -> Iterator[Executor]:
             "--scheduler needs dask.distributed: install the extra for clusters, pip install 'orolift[cluster]'."
         ) from error
     logging.getLogger("distributed").setLevel(logging.CRITICAL)  # what it has to say, we say in one line
+    gc.collect()  # a client left behind closes when it is collected: amid the start of another it would wait for ever
     try:
         client = Client(scheduler, timeout=PATIENCE, set_as_default=False)
     except (OSError, ValueError, TypeError) as error:
